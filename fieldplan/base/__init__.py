@@ -1,0 +1,1 @@
+"""Words and tools that every room shares: errors, working, documents, files, draws."""

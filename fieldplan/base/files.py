@@ -1,0 +1,45 @@
+"""Whole files or none: a write that is cut short leaves what stood there before."""
+
+import os
+import secrets
+from pathlib import Path
+
+from fieldplan.base.errors import FieldplanError
+
+
+def write_atomically(path: Path, content: bytes | str) -> Path:
+    """Write ``content`` under a passing name, then move it over ``path`` in one step.
+
+    Parameters
+    ----------
+    path : Path
+        Where the file shall stand; its folder must exist.
+    content : bytes or str
+        Text is written as UTF-8 with line feeds only.
+
+    Returns
+    -------
+    Path
+        ``path``.
+
+    Raises
+    ------
+    FieldplanError
+        The folder cannot be written, or the file is open in another program.
+    """
+    data = content.encode("utf-8") if isinstance(content, str) else content
+    passing = path.with_name(f".{path.name}.{secrets.token_hex(4)}.part")
+    try:
+        with passing.open("xb") as stream:
+            stream.write(data)
+            stream.flush()
+            os.fsync(stream.fileno())
+        passing.replace(path)
+    except OSError as fault:
+        passing.unlink(missing_ok=True)
+        message = (
+            f"{path} cannot be written ({fault.strerror or fault}); "
+            "close it elsewhere, or name another folder."
+        )
+        raise FieldplanError(message) from fault
+    return path

@@ -1,0 +1,1 @@
+"""What is asked: the campaign file, read and checked."""

@@ -1,0 +1,69 @@
+"""The command line: each command parses, calls one function and prints."""
+
+import sys
+from importlib import import_module
+
+import click
+
+from fieldplan import __version__
+from fieldplan.base.errors import FieldplanError
+
+COMMANDS: dict[str, dict[str, str]] = {
+    "Every day": {
+        "new": "Answer a few questions and get a campaign file.",
+        "check": "Read a campaign file and say what is wrong or still to fill in.",
+        "size": "Say how many locations the target needs.",
+        "pack": "Write the packet for crew and office.",
+        "issue": "Mark a packet as issued; it never changes again.",
+        "estimate": "Meet laboratory results with their packet: mean and interval.",
+    },
+    "Look closer": {
+        "locate": "Draw locations and look at them, without a packet.",
+        "redraw": "Draw an old packet again from its record and compare.",
+        "demo": "Run the whole job on an invented site.",
+    },
+}
+
+
+class CommandTable(click.Group):
+    """A group that knows its commands by name and imports one only when it is called."""
+
+    def list_commands(self, ctx: click.Context) -> list[str]:
+        """Name all commands in the order of the job."""
+        return [name for section in COMMANDS.values() for name in section]
+
+    def get_command(self, ctx: click.Context, cmd_name: str) -> click.Command | None:
+        """Import one command; None when there is none of that name."""
+        if cmd_name not in self.list_commands(ctx):
+            return None
+        command: click.Command = import_module(f"fieldplan.cli.{cmd_name}").command
+        return command
+
+    def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:
+        """Write the commands by section without importing any."""
+        for title, section in COMMANDS.items():
+            with formatter.section(title):
+                formatter.write_dl(list(section.items()))
+
+
+@click.group(cls=CommandTable, context_settings={"help_option_names": ["-h", "--help"]})
+@click.version_option(__version__, prog_name="fieldplan")
+def entry() -> None:
+    """Plan field sampling from one campaign file: how many, where, and the mean at the end.
+
+    Start with: fieldplan demo. Add --help to any command for its options.
+    """
+
+
+def main() -> None:
+    """Run the command line; errors a person can mend become lines, never a traceback."""
+    for stream in (sys.stdout, sys.stderr):
+        reconfigure = getattr(stream, "reconfigure", None)
+        if reconfigure is not None:
+            reconfigure(encoding="utf-8", errors="replace")
+    try:
+        entry.main(standalone_mode=True)
+    except FieldplanError as fault:
+        for problem in fault.problems:
+            click.echo(problem, err=True)
+        sys.exit(fault.exit_code)

@@ -1,0 +1,1 @@
+"""What the crew is warned of, and what holds the work until somebody clears it."""

@@ -1,0 +1,183 @@
+"""Locations, and what a layout must be able to do."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from typing import Literal, Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldplan.frame.model import Frame
+
+LocationClass = Literal["random", "alternate", "targeted"]
+
+
+@dataclass(frozen=True)
+class Location:
+    """One place, as issued.
+
+    Parameters
+    ----------
+    location_id : str
+        ``HL-A-01`` style for drawn places; the user's own id for list units and targeted places.
+    short_name : str
+        At most 6 characters that every receiver keeps; unique ignoring case.
+    location_class : str
+        ``random``, ``alternate`` or ``targeted``.
+    stratum : str
+    easting, northing : float
+        Site metres, rounded to the centimetre.
+    latitude, longitude : float
+        Degrees, WGS 84, rounded to 7 decimals.
+    list_order : int
+        Position in the stratum's drawn list, from 1; 0 for targeted places.
+    inclusion_probability : float
+        n/N for a list; n/area per square metre for an area; 0 for targeted places.
+    weight : float
+        Stratum weight / number of planned random locations in it; 0 for other classes.
+    alternate_for : str
+        For an alternate: ``any in STRATUM``; else empty.
+    """
+
+    location_id: str
+    short_name: str
+    location_class: LocationClass
+    stratum: str
+    easting: float
+    northing: float
+    latitude: float
+    longitude: float
+    list_order: int
+    inclusion_probability: float
+    weight: float
+    alternate_for: str = ""
+
+
+@dataclass(frozen=True)
+class Locations:
+    """All places of one design, in print order: random by stratum, alternates, targeted.
+
+    ``asked`` and ``realised`` differ only for a grid that was not redrawn to an exact count.
+    ``notes`` say what bent equal probability or the count.
+    """
+
+    layout: str
+    seed: int
+    version: int
+    places: tuple[Location, ...]
+    asked: int
+    realised: int
+    notes: tuple[str, ...] = ()
+
+    def of_class(self, location_class: LocationClass) -> tuple[Location, ...]:
+        """Return the places of one class, order kept."""
+        return tuple(p for p in self.places if p.location_class == location_class)
+
+
+@dataclass(frozen=True)
+class StratumCount:
+    """How many locations to draw in one stratum: ``planned`` random ones, then alternates."""
+
+    stratum: str
+    planned: int
+    alternates: int
+
+
+@dataclass(frozen=True)
+class StratumValues:
+    """Results of one stratum as the estimator sees them.
+
+    ``values`` has shape (n,), one per location; ``population`` is N of a list, None for an area.
+    """
+
+    stratum: str
+    weight: float
+    values: NDArray[np.float64]
+    population: int | None = None
+
+
+@dataclass(frozen=True)
+class StratumEstimate:
+    """n, mean, s and weight of one stratum; ``variance_borrowed`` when s came from the others."""
+
+    stratum: str
+    n: int
+    mean: float
+    sd: float
+    weight: float
+    variance_of_mean: float
+    variance_borrowed: bool = False
+
+
+@dataclass(frozen=True)
+class MeanEstimate:
+    """The mean of the population by the recorded design.
+
+    ``degrees_of_freedom`` is n − 1, or Satterthwaite's for strata; infinite for a census.
+    ``method`` and ``caution`` are sentences for the sheet.
+    """
+
+    n: int
+    mean: float
+    standard_error: float
+    degrees_of_freedom: float
+    strata: tuple[StratumEstimate, ...]
+    method: str
+    caution: str = ""
+
+
+class Layout(Protocol):
+    """One way to lay out locations; drawing, predicting and estimating live side by side."""
+
+    name: str
+
+    def predict_variance(
+        self,
+        *,
+        weights: NDArray[np.float64],
+        sigmas: NDArray[np.float64],
+        counts: NDArray[np.int64],
+        populations: Sequence[int | None],
+    ) -> float:
+        """Variance of the estimated mean before any result."""
+        ...
+
+    def draw(
+        self,
+        frame: Frame,
+        counts: Sequence[StratumCount],
+        *,
+        seed: int,
+        design: str,
+        minimum_spacing_m: float = 0.0,
+        exact_count: bool = True,
+    ) -> "DrawnPlaces":
+        """Draw places for every stratum."""
+        ...
+
+    def estimate(
+        self, strata: Sequence[StratumValues], *, single_result: str = "refuse"
+    ) -> MeanEstimate:
+        """Estimate the mean and its standard error from results drawn by this layout."""
+        ...
+
+
+@dataclass(frozen=True)
+class DrawnPlace:
+    """A drawn place before it is named; ``unit_id`` is the list unit, if it is one."""
+
+    stratum: str
+    list_order: int
+    location_class: LocationClass
+    easting: float
+    northing: float
+    unit_id: str = ""
+
+
+@dataclass(frozen=True)
+class DrawnPlaces:
+    """What ``Layout.draw`` yields, with notes in sentences."""
+
+    places: tuple[DrawnPlace, ...]
+    realised: int
+    notes: tuple[str, ...] = ()

@@ -1,0 +1,90 @@
+"""What the results say, by the recorded design and rules."""
+
+from dataclasses import dataclass
+
+from fieldplan.base.working import Step
+from fieldplan.design.model import MeanEstimate
+from fieldplan.returns.model import Returns
+
+
+@dataclass(frozen=True)
+class Interval:
+    """An interval or a limit for the mean; the open end of a limit is None."""
+
+    kind: str
+    confidence: float
+    low: float | None
+    high: float | None
+
+
+@dataclass(frozen=True)
+class Bracket:
+    """The whole answer with non-detects at 0, half and the limit."""
+
+    mean_low: float
+    mean_half: float
+    mean_high: float
+    interval_low: Interval
+    interval_half: Interval
+    interval_high: Interval
+
+
+@dataclass(frozen=True)
+class Change:
+    """A rule overridden after results were seen: both answers, printed as such."""
+
+    rule: str
+    recorded: str
+    used: str
+    interval_recorded: Interval
+    mean_recorded: float
+
+
+@dataclass(frozen=True)
+class Estimate:
+    """The site mean, how well it is known, and whether the campaign kept its promise.
+
+    Parameters
+    ----------
+    analyte, unit : str
+    mean : MeanEstimate
+        With non-detects at half their limit when there are any; ``bracket`` has the bounds.
+    interval : Interval
+        As declared before results.
+    other_interval : Interval
+        The other kind, shown on request.
+    bracket : Bracket or None
+        None when everything was detected.
+    planned_standard_error, achieved_standard_error : float
+    why_different : tuple of str
+        Sentences that split the difference into n, spread and weights.
+    level_sentence : str
+        The interval against the action level; empty without a level.
+    population_sentence : str
+        What the mean speaks for after losses.
+    coverage_sentence : str
+        What this kind of interval delivers at this n and skewness.
+    steps : tuple of Step
+    changes : tuple of Change
+        Empty when nothing was changed after results.
+    returns : Returns
+    sentences : tuple of str
+        The answer in words, most important first.
+    """
+
+    analyte: str
+    unit: str
+    mean: MeanEstimate
+    interval: Interval
+    other_interval: Interval
+    bracket: Bracket | None
+    planned_standard_error: float
+    achieved_standard_error: float
+    why_different: tuple[str, ...]
+    level_sentence: str
+    population_sentence: str
+    coverage_sentence: str
+    steps: tuple[Step, ...]
+    changes: tuple[Change, ...]
+    returns: Returns
+    sentences: tuple[str, ...]

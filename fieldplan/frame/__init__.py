@@ -1,0 +1,1 @@
+"""What population: areas and lists, with strata and measure."""

@@ -1,0 +1,1 @@
+"""What laboratories said, and the spread of a pilot."""

@@ -1,0 +1,137 @@
+"""What laboratories said, cell by cell, and what a pilot says about spread."""
+
+from dataclasses import dataclass
+
+
+@dataclass(frozen=True)
+class LabRow:
+    """One result as reported, with what was read from it.
+
+    Parameters
+    ----------
+    row : int
+        Row in the file as a spreadsheet counts it (the header is row 1).
+    location_id, sample_id : str
+        As written; empty when the column is absent.
+    analyte : str
+        The campaign's analyte id.
+    as_reported : str
+        The cell's text, untouched.
+    result : float or None
+        The number in the campaign's unit; None for a non-detect.
+    detected : bool
+        False for ``<0.5``, ND and their kin.
+    reporting_limit : float or None
+        In the campaign's unit; always given where ``detected`` is False.
+    unit : str
+        The campaign's unit, after conversion.
+    role : str
+        ``field sample``, ``field duplicate``, ``equipment blank`` …
+    duplicate_of : str
+        Sample or location that this one duplicates; empty otherwise.
+    stratum : str
+        As written; empty when absent.
+    latitude, longitude : float or None
+    qualifier_lab : str
+        Letters that the laboratory put beside the number.
+    """
+
+    row: int
+    location_id: str
+    sample_id: str
+    analyte: str
+    as_reported: str
+    result: float | None
+    detected: bool
+    reporting_limit: float | None
+    unit: str
+    role: str = "field sample"
+    duplicate_of: str = ""
+    stratum: str = ""
+    latitude: float | None = None
+    longitude: float | None = None
+    qualifier_lab: str = ""
+
+
+@dataclass(frozen=True)
+class LabTable:
+    """All rows of one file, in file order, with the file's name, its hash and reading notes."""
+
+    file_name: str
+    sha256: str
+    rows: tuple[LabRow, ...]
+    notes: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
+class StratumSpread:
+    """Sigma of one analyte in one stratum (or the site), and how well it is known.
+
+    Parameters
+    ----------
+    analyte, stratum : str
+        ``stratum`` is ``site`` for the whole.
+    sigma : float
+        What sizing uses: the largest s over non-detects at 0, half and the limit.
+    mean : float or None
+        Of the values behind ``sigma``, or the expected mean typed in the file.
+    results : int or None
+        Number of results n0 behind sigma; None when it was typed without one.
+    source : str
+        The pilot file, the typed source, or ``ASSUMED``.
+    assumed : bool
+        True stamps the sheet.
+    values : tuple of float
+        Location values (duplicates averaged), non-detects at half the limit; empty when typed.
+    detected : tuple of bool
+        Which of ``values`` were detected.
+    sigma_at_zero, sigma_at_half, sigma_at_limit : float or None
+    skewness : float or None
+        Sample skewness g1 (bias-corrected G1 is not used here), or as typed.
+    skewness_ceiling : float or None
+        The largest skewness that n0 values can show, (n0 − 2)/√(n0 − 1).
+    """
+
+    analyte: str
+    stratum: str
+    sigma: float
+    mean: float | None
+    results: int | None
+    source: str
+    assumed: bool = False
+    values: tuple[float, ...] = ()
+    detected: tuple[bool, ...] = ()
+    sigma_at_zero: float | None = None
+    sigma_at_half: float | None = None
+    sigma_at_limit: float | None = None
+    skewness: float | None = None
+    skewness_ceiling: float | None = None
+
+    @property
+    def degrees_of_freedom(self) -> int | None:
+        """n0 − 1, or None when sigma was typed without a number of results."""
+        return None if self.results is None else self.results - 1
+
+
+@dataclass(frozen=True)
+class Spread:
+    """Sigma for every stratum of the deciding analyte, and what the pilot says in sentences.
+
+    ``strata`` is in the frame's order, one entry per stratum. ``site`` is the whole (always
+    present where a pilot or a site-wide value was given). ``sentences`` and ``notes`` print.
+    """
+
+    analyte: str
+    unit: str
+    strata: tuple[StratumSpread, ...]
+    site: StratumSpread | None = None
+    others: tuple[StratumSpread, ...] = ()
+    sentences: tuple[str, ...] = ()
+    notes: tuple[str, ...] = ()
+
+    def stratum(self, name: str) -> StratumSpread:
+        """Return the spread of the stratum called ``name``; KeyError when there is none."""
+        for entry in self.strata:
+            if entry.stratum == name:
+                return entry
+        raise KeyError(name)

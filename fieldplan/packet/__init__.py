@@ -1,0 +1,1 @@
+"""What people hold: point files, maps, sheets, forms, and the folder they come in."""

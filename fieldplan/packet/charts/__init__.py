@@ -1,0 +1,1 @@
+"""Charts as SVG strings; the same drawing serves page and paper."""

@@ -1,0 +1,1 @@
+"""Point files: GPX, KML, CSV, GeoPackage, GeoJSON, workbook; each read back by another parser."""

@@ -1,0 +1,1 @@
+"""Maps: one for the screen that needs no network, one for paper."""

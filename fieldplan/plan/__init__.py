@@ -1,0 +1,1 @@
+"""Everything decided before the field, and its record."""

@@ -1,0 +1,1 @@
+"""What is taken, under which ids, with which control samples."""

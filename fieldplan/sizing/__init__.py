@@ -1,0 +1,1 @@
+"""How many locations, with the working shown."""

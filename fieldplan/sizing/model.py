@@ -1,0 +1,144 @@
+"""How many, per stratum, with its working and with how sure that number is."""
+
+from dataclasses import dataclass
+
+from fieldplan.base.working import Step
+
+
+@dataclass(frozen=True)
+class StratumSize:
+    """The number of locations in one stratum.
+
+    Parameters
+    ----------
+    stratum : str
+    weight : float
+        Share of the population.
+    sigma : float
+        Standard deviation used, in the laboratory's unit.
+    needed : int
+        Results that the target needs.
+    planned : int
+        Locations to visit: ``needed`` with the loss allowance, never above N of a list.
+    alternates : int
+        Ranked substitutes drawn at the same time.
+    population : int or None
+        N of a list; None for an area.
+    floor_applied : bool
+        The floor, not the allocation, decided ``needed``.
+    """
+
+    stratum: str
+    weight: float
+    sigma: float
+    needed: int
+    planned: int
+    alternates: int
+    population: int | None = None
+    floor_applied: bool = False
+
+
+@dataclass(frozen=True)
+class CurvePoint:
+    """Precision and cost at one total n; the band is sigma −25 % and +25 %.
+
+    ``chance`` is the chance that this n meets the target given the pilot; None where sigma was
+    typed without a number of results or there is no precision target.
+    """
+
+    n: int
+    standard_error: float
+    standard_error_low: float
+    standard_error_high: float
+    half_width: float
+    cost: float | None
+    chance: float | None
+
+
+@dataclass(frozen=True)
+class AssuredSize:
+    """The total n that meets the target with the stated chance."""
+
+    assurance: float
+    n: int
+
+
+@dataclass(frozen=True)
+class QualityControlCount:
+    """Control samples of one kind, counted apart from n, with the source of the rate."""
+
+    kind: str
+    count: int
+    source: str
+
+
+@dataclass(frozen=True)
+class Size:
+    """The answer to "how many", with all that must be said beside it.
+
+    Parameters
+    ----------
+    design, analyte, unit : str
+    target : str
+        The target in words, e.g. ``standard error of the mean ≤ 9 mg/kg``.
+    target_standard_error : float or None
+        The target as a standard error (None for a budget).
+    target_half_width : float or None
+    strata : tuple of StratumSize
+    plain_n : int
+        Results needed with sigma taken at face value.
+    needed : int
+        Results needed at the chosen assurance; equals the sum over strata.
+    planned : int
+        Locations to visit, loss allowance in.
+    standard_error, half_width : float
+        Expected at ``needed`` with the sigma used.
+    confidence : float
+    interval : str
+        ``two-sided``, ``upper-limit`` or ``lower-limit``.
+    assurance : float or None
+        None when the user chose ``"plain"``.
+    assurance_chosen_by : str
+    chance_plain, chance_needed : float or None
+        Chance that ``plain_n`` and ``needed`` meet the target, given n0 pilot results.
+    assured : tuple of AssuredSize
+        n at 0.67, 0.80 and 0.90 (and the chosen assurance).
+    steps : tuple of Step
+        Numbered working.
+    curve : tuple of CurvePoint
+        From half to twice the plain n.
+    qc : tuple of QualityControlCount
+    cost, currency
+        Total for ``planned`` locations with QC; None without a cost table.
+    sentences : tuple of str
+        The answer in words, most important first.
+    conditions : tuple of str
+        Under what the interval may be trusted (normality, skewness).
+    """
+
+    design: str
+    analyte: str
+    unit: str
+    target: str
+    target_standard_error: float | None
+    target_half_width: float | None
+    strata: tuple[StratumSize, ...]
+    plain_n: int
+    needed: int
+    planned: int
+    standard_error: float
+    half_width: float
+    confidence: float
+    interval: str
+    assurance: float | None
+    assurance_chosen_by: str
+    chance_plain: float | None
+    chance_needed: float | None
+    assured: tuple[AssuredSize, ...]
+    steps: tuple[Step, ...]
+    curve: tuple[CurvePoint, ...]
+    qc: tuple[QualityControlCount, ...]
+    cost: float | None
+    currency: str
+    sentences: tuple[str, ...]
+    conditions: tuple[str, ...]

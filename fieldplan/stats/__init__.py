@@ -1,0 +1,1 @@
+"""What mathematics says: arrays in, numbers out."""
