@@ -1,0 +1,1 @@
+"""Pages in headless Chromium with the network off."""
