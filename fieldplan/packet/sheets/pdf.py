@@ -71,8 +71,24 @@ def _facts(document: Document, paper: str) -> dict[str, Any]:
         "revision": printable(document.revision_name),
         "status": printable(document.status),
         "paper": {"A4": "a4", "Letter": "us-letter"}[paper],
-        "blocks": [_block(block, serial) for block in document.blocks],
+        "blocks": _led([_block(block, serial) for block in document.blocks]),
     }
+
+
+def _led(blocks: list[dict[str, Any]]) -> list[dict[str, Any]]:
+    """Hand each table the heading and sentences that lead into it, so that they turn together."""
+    led: list[dict[str, Any]] = []
+    for block in blocks:
+        if block["kind"] == "Table":
+            start = len(led)
+            while start and led[start - 1]["kind"] in {"Heading", "Paragraph"}:
+                start -= 1
+            while start < len(led) and led[start]["kind"] == "Paragraph":
+                start += 1
+            block["lead"] = led[start:]
+            del led[start:]
+        led.append(block)
+    return led
 
 
 def _block(block: Block, serial: Any) -> dict[str, Any]:
