@@ -1,0 +1,66 @@
+"""What this version cannot do yet, refused by its name rather than as an unknown key."""
+
+_LATER_VALUES: dict[tuple[str, str], dict[str, str]] = {
+    ("frame", "kind"): {
+        "line": "frames along lines such as shores and reaches",
+        "volume": "frames of volumes such as stockpiles and water bodies",
+        "time": "frames of time such as days of discharge",
+    },
+    ("design", "layout"): {
+        "spatially-balanced": "spatially balanced layouts",
+        "ranked-set": "ranked set sampling",
+        "transect": "transects",
+        "cluster": "cluster layouts",
+        "adaptive-cluster": "adaptive cluster layouts",
+        "two-start-grid": "grids with two random starts",
+        "composite": "composite samples",
+        "incremental": "incremental samples",
+    },
+    ("objective", "question"): {
+        "mean-and-level": "comparing the mean with a level by a test",
+        "upper-share": "limits for an upper share of the population",
+        "all-clear": "the question whether anything was missed",
+        "smallest-patch": "finding a patch of a given size",
+        "change": "change between rounds",
+    },
+    ("sigma", "part"): {
+        "between-locations": "spread split into parts",
+        "sampling": "spread split into parts",
+        "laboratory": "spread split into parts",
+    },
+    ("rules", "non_detects"): {
+        "censored": "estimates that model non-detects",
+    },
+}
+
+_LATER_KEYS: dict[str, str] = {
+    "composite": "composite samples",
+    "composites": "composite samples",
+    "increment": "incremental samples",
+    "increments": "incremental samples",
+    "replicates": "incremental samples",
+    "crew": "visit schedules of several crews",
+    "crews": "visit schedules of several crews",
+    "schedule": "visit schedules",
+    "route": "routes",
+}
+
+MANY = {
+    "frame": "several frames in one campaign",
+    "design": "several designs in one campaign",
+    "event": "several rounds of field work in one campaign",
+}
+"""Tables of which this version takes one."""
+
+
+def later_value(table: str, key: str, value: object) -> str | None:
+    """Name what a value stands for that is not done yet; None when it is not known either."""
+    if not isinstance(value, str):
+        return None
+    known = _LATER_VALUES.get((table, key), {})
+    return known.get(value.strip().lower().replace(" ", "-").replace("_", "-"))
+
+
+def later_key(key: str) -> str | None:
+    """Name what a key stands for that is not done yet; None when it is not known either."""
+    return _LATER_KEYS.get(key.lower())
