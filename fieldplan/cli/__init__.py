@@ -28,7 +28,7 @@ COMMANDS: dict[str, dict[str, str]] = {
 class CommandTable(click.Group):
     """A group that knows its commands by name and imports one only when it is called."""
 
-    def list_commands(self, ctx: click.Context) -> list[str]:
+    def list_commands(self, ctx: click.Context) -> list[str]:  # noqa: ARG002
         """Name all commands in the order of the job."""
         return [name for section in COMMANDS.values() for name in section]
 
@@ -39,7 +39,7 @@ class CommandTable(click.Group):
         command: click.Command = import_module(f"fieldplan.cli.{cmd_name}").command
         return command
 
-    def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:
+    def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:  # noqa: ARG002
         """Write the commands by section without importing any."""
         for title, section in COMMANDS.items():
             with formatter.section(title):

@@ -1,0 +1,34 @@
+"""The attachment that tells a reviewer what a second drawing gave."""
+
+from pathlib import Path
+
+from fieldplan.base.files import write_atomically
+from fieldplan.packet.sheets.pdf import set_pdf
+from fieldplan.packet.sheets.redraw_sheet import redraw_sheet
+from fieldplan.plan.model import Plan
+from fieldplan.plan.redraw import Comparison
+
+
+def write_redraw(plan: Plan, comparison: Comparison, parent: Path) -> Path:
+    """Write the one-page attachment, under the next free number.
+
+    Parameters
+    ----------
+    plan : Plan
+    comparison : Comparison
+        From ``plan.redraw``.
+    parent : Path
+        An existing folder, or one that can be made.
+
+    Returns
+    -------
+    Path
+        e.g. ``HL-r01-redrawn-01.pdf``.
+    """
+    parent.mkdir(parents=True, exist_ok=True)
+    stems = {path.stem for path in parent.glob(f"{plan.revision_name}-redrawn-*.pdf")}
+    number = 1
+    while f"{plan.revision_name}-redrawn-{number:02d}" in stems:
+        number += 1
+    content = set_pdf(redraw_sheet(plan, comparison), paper=plan.campaign.paper.size)
+    return write_atomically(parent / f"{plan.revision_name}-redrawn-{number:02d}.pdf", content)
