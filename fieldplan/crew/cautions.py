@@ -128,7 +128,7 @@ def reason(topic: Topic, raised: dict[str, str], campaign: Campaign) -> str:
     if reasons:
         return "; ".join(reasons)
     if ALWAYS in topic.raised_by:
-        return "every campaign"
+        return "every campaign needs it"
     if clearances_for(topic, campaign):
         return "a clearance was typed for it"
     return ""
