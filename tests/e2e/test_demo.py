@@ -1,0 +1,34 @@
+"""The demo runs the whole job from an empty folder."""
+
+from pathlib import Path
+
+import pytest
+
+from tests.e2e.conftest import PLAN_IDS, SITES, run
+
+
+@pytest.mark.parametrize("name", SITES)
+def test_the_demo_ends_with_an_issued_packet_and_a_results_sheet(
+    name: str, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """It is the first thing a stranger runs."""
+    monkeypatch.chdir(tmp_path)
+    outcome = run("demo", name)
+    assert outcome.exit_code == 0, outcome.output
+    site = tmp_path / "fieldplan-demo" / name
+    packet = site / f"{PLAN_IDS[name]}-r01"
+    assert "ISSUED" in (packet / "START_HERE.html").read_text(encoding="utf-8")
+    assert (site / f"{packet.name}-results-01" / "results_sheet.pdf").is_file()
+    for stage in range(1, 6):
+        assert f"[{stage}/5]" in outcome.stderr
+    again = run("demo", name)
+    assert again.exit_code == 0, again.output
+    assert (site / f"{PLAN_IDS[name]}-r02").is_dir()
+
+
+def test_an_unknown_demo_is_answered_with_the_known_ones(tmp_path: Path) -> None:
+    """A near miss must not end in a traceback."""
+    outcome = run("demo", "hobbin", "--out", tmp_path / "x")
+    assert outcome.exit_code == 2
+    assert "take one of: hobbin-ley, quern-flat" in outcome.output
+    assert not (tmp_path / "x").exists()
