@@ -1,5 +1,15 @@
 """What is asked: the campaign file, read and checked."""
 
+from fieldplan.campaign.alarms import alarms
+from fieldplan.campaign.inputs import fingerprint, input_files
 from fieldplan.campaign.read import Inspection, OpenEntry, inspect_campaign, read_campaign
 
-__all__ = ["Inspection", "OpenEntry", "inspect_campaign", "read_campaign"]
+__all__ = [
+    "Inspection",
+    "OpenEntry",
+    "alarms",
+    "fingerprint",
+    "input_files",
+    "inspect_campaign",
+    "read_campaign",
+]

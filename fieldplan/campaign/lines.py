@@ -8,7 +8,7 @@ KeyPath = tuple[str | int, ...]
 
 
 def line_map(text: str) -> dict[KeyPath, int]:
-    """Map each path of a TOML text to the line on which it first stands.
+    r"""Map each path of a TOML text to the line on which it first stands.
 
     Parameters
     ----------
@@ -23,7 +23,7 @@ def line_map(text: str) -> dict[KeyPath, int]:
 
     Examples
     --------
-    >>> line_map('[[analyte]]\\nid = "a"\\n[[analyte]]\\nid = "b"')[("analyte", 1, "id")]
+    >>> line_map('[[analyte]]\nid = "a"\n[[analyte]]\nid = "b"')[("analyte", 1, "id")]
     4
     """
     found: dict[KeyPath, int] = {}

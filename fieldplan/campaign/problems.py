@@ -62,7 +62,7 @@ def near_miss(word: str, known: Sequence[str]) -> str:
 
 def meaning(table: str, key: str) -> str:
     """Say what a key is, in the words that editors and the reference show."""
-    return MEANING.get(f"{table}.{key}", key)
+    return MEANING.get(f"{table}.{key}", key).split(";")[0]
 
 
 @cache
@@ -74,9 +74,23 @@ def _schema() -> dict[str, Any]:
 
 def accepted(model_name: str, key: str) -> str:
     """Say what a key accepts, e.g. ``a number above 0``."""
+    return _accepted(_property(model_name, key))
+
+
+def choices(model_name: str, key: str) -> list[str]:
+    """List the words that a key accepts; empty where it accepts more than a few words."""
+    schema = _property(model_name, key)
+    parts = [schema, *schema.get("anyOf", [])]
+    words = [word for part in parts for word in part.get("enum", [part.get("const")])]
+    return [word for word in words if isinstance(word, str)]
+
+
+def _property(model_name: str, key: str) -> dict[str, Any]:
+    """Find the JSON Schema of one key."""
     schema = _schema()
     table = schema if model_name == "Campaign" else schema["$defs"][model_name]
-    return _accepted(table["properties"][key])
+    found: dict[str, Any] = table["properties"][key]
+    return found
 
 
 def _accepted(schema: dict[str, Any]) -> str:

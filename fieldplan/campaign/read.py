@@ -15,6 +15,7 @@ from fieldplan.campaign.model import Campaign, ReadCampaign
 from fieldplan.campaign.problems import (
     Problem,
     accepted,
+    choices,
     key_name,
     meaning,
     near_miss,
@@ -129,6 +130,8 @@ def _validate(screened: Screened, known: list[Problem]) -> tuple[Campaign | None
         problems: dict[KeyPath, Problem] = {}
         for error in fault.errors(include_url=False, include_context=False):
             path, model, key = _owner(error["loc"])
+            if error["type"] == "too_short" and error["input"]:
+                continue  # its members are reported one by one
             if any(path[:end] in told for end in range(1, len(path) + 1)) or path in problems:
                 continue
             text = _word(error["type"], error["input"], model, path, key)
@@ -165,8 +168,8 @@ def _word(kind: str, value: Any, model: type[BaseModel], path: KeyPath, key: str
         return f'missing; {meaning(table, key)}. Takes {takes}; "FILL IN" while it is not known.'
     later = later_value(table, key, value)
     if later:
-        return f"{later} are not done yet (got {shown(value)}). This version takes {takes}."
-    remedy = _remedy(value, takes)
+        return f"{shown(value)} ({later}) is not done yet. This version takes {takes}."
+    remedy = _remedy(value, takes, choices(model.__name__, key))
     return f"{meaning(table, key)}; takes {takes} (got {shown(value)}).{remedy}"
 
 
@@ -180,7 +183,7 @@ def _word_missing_table(kind: str, value: Any, path: KeyPath) -> str:
     return f"not a table (got {shown(value)}). Write {header} on a line of its own."
 
 
-def _remedy(value: Any, takes: str) -> str:
+def _remedy(value: Any, takes: str, words: list[str]) -> str:
     """Say what to do about a value that was refused."""
     if not isinstance(value, str):
         return ""
@@ -193,4 +196,4 @@ def _remedy(value: Any, takes: str) -> str:
         return f" Take the quotes off: {plain}."
     if takes.startswith("true"):
         return " Take the quotes off."
-    return near_miss(value, [word.strip('" ') for word in takes.split(",")])
+    return near_miss(value, words)

@@ -77,7 +77,7 @@ def _unknown(key: str, known: list[str], path: KeyPath) -> str:
     """Word an unknown key: not done yet, a near miss, or the list of what there is."""
     later = later_key(key)
     if later:
-        return f"{later} are not done yet in this version. Take it out."
+        return f"not done yet in this version ({later}). Take it out."
     where = f"[{table_name(path)}]" if path else "the file"
     near = near_miss(key, known)
     listed = "" if near else f" It takes {', '.join(known)}."
