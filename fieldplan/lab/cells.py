@@ -1,0 +1,214 @@
+"""One reported cell: a number, a non-detect, or a sentence on why it is neither."""
+
+import re
+import unicodedata
+from dataclasses import dataclass
+from decimal import Decimal
+
+from fieldplan.base.errors import LabError
+
+SMALLEST, LARGEST = Decimal("1e-30"), Decimal("1e30")
+_NUMBER = re.compile(r"\+?(?:\d{1,40}(?:\.\d{0,40})?|\.\d{1,40})(?:[eE][+-]?\d{1,3})?")
+_CELL = re.compile(
+    rf"(?P<less><=?|≤)?\s*(?P<number>{_NUMBER.pattern})\s*(?P<letters>[A-Za-z*^][A-Za-z*^+\-,/ ]*)?"
+)
+_THOUSANDS = re.compile(r"\+?[1-9]\d{0,2}(?:,\d{3})+(?:\.\d+)?")
+_DECIMAL_COMMA = re.compile(r"\+?(?:\d+,\d+)(?:[eE][+-]?\d+)?")
+_NOT_DETECTED = {
+    "nd", "n.d.", "n.d", "n/d", "not detected", "none detected", "non-detect", "bdl", "bql", "brl",
+    "u", "uj", "<", "<dl", "<rl", "<lod", "<loq", "<mdl", "<lor", "below detection limit",
+    "below reporting limit", "present below quantification limit",
+}  # fmt: skip
+_BLANK = {"", "-", "--", "---", "–", "—", "na", "n/a", "n.a.", "null", "none", "nil", "."}
+_QUALIFIERS = {
+    "u", "uj", "j", "j+", "j-", "jb", "bj", "b", "d", "e", "h", "n", "nj", "jn", "q", "k", "l",
+    "r", "*", "^", "jd", "dj", "nd",
+}  # fmt: skip
+_CENSORING = {"u", "uj", "nd", "bdl"}
+
+
+@dataclass(frozen=True)
+class Reading:
+    """What one cell says, in the unit of its row.
+
+    Parameters
+    ----------
+    number : Decimal or None
+        The result; None for a non-detect.
+    limit : Decimal or None
+        The limit that the cell itself states; None when it states none.
+    detected : bool
+    letters : str
+        Qualifiers as written beside the number.
+    """
+
+    number: Decimal | None
+    limit: Decimal | None
+    detected: bool
+    letters: str = ""
+
+
+def tidy(text: str) -> str:
+    """Take away what cannot be seen: odd spaces, zero-width marks, spaces at the ends.
+
+    Parameters
+    ----------
+    text : str
+
+    Examples
+    --------
+    >>> tidy("\u00a0<\u2009 0.5\u200b ")
+    '< 0.5'
+    """
+    seen = "".join(c for c in text if unicodedata.category(c) not in {"Cf", "Cc"} or c in "\t\n")
+    return " ".join(seen.split())
+
+
+def read_cell(text: str, *, decimal_comma: bool = False) -> Reading:
+    """Read what the laboratory reported, strictly.
+
+    Parameters
+    ----------
+    text : str
+        The cell as written.
+    decimal_comma : bool
+        Whether ``8,6`` means 8.6; the reader of the file decides it once for all cells.
+
+    Returns
+    -------
+    Reading
+
+    Raises
+    ------
+    LabError
+        With a sentence that gives the rule and the remedy, without file and row.
+
+    Notes
+    -----
+    Accepted: ``12``, ``1.2E3``, ``<0.5``, ``0.5U`` (not detected, limit 0.5), ``3.1 J``, and
+    ``ND``, ``n.d.``, ``BDL``, ``U`` or a bare ``<``, whose limit another column must give.
+    Refused: blanks, ``0``, numbers below 0, ``>``, words, commas that could mean two things.
+
+    Examples
+    --------
+    >>> read_cell("3.1 J").letters, read_cell("< 0.5").limit, read_cell("n.d.").detected
+    ('J', Decimal('0.5'), False)
+    """
+    plain = tidy(text).replace("−", "-").replace("＜", "<")
+    lower = plain.casefold()
+    if lower in _BLANK:
+        raise _refusal("is no result", "Type ND with a reporting_limit, or leave the row out")
+    if lower.replace("< ", "<") in _NOT_DETECTED:
+        return Reading(None, None, False, plain if lower in {"u", "uj"} else "")
+    plain = _without_comma(plain, decimal_comma)
+    match = _CELL.fullmatch(plain)
+    if match is None:
+        raise _unreadable(plain)
+    return _from_match(match)
+
+
+def _without_comma(plain: str, decimal_comma: bool) -> str:
+    body = re.match(r"[<≤=\s]*([+\d][\d.,]*)", plain)
+    if body is None or "," not in body[1]:
+        return plain
+    number = body[1].rstrip(",.")
+    if "," not in number:
+        return plain
+    if _THOUSANDS.fullmatch(number):
+        bare = number.replace(",", "")
+        raise _refusal(
+            "has a comma that may part thousands or decimals",
+            f"Type {bare} or {number.replace(',', '.', 1)}",
+        )
+    if not decimal_comma or not _DECIMAL_COMMA.fullmatch(number):
+        raise _refusal(
+            "has a comma; decimal commas are read only in files cut by semicolons or tabs "
+            "that use no decimal point",
+            f"Type {number.replace(',', '.', 1)}",
+        )
+    return plain.replace(",", ".", 1)
+
+
+def _from_match(match: re.Match[str]) -> Reading:
+    number = Decimal(match["number"])
+    letters = (match["letters"] or "").strip(" ,/")
+    marks = qualifier_marks(letters)
+    unknown = [mark for mark in marks if mark not in _QUALIFIERS]
+    if unknown:
+        raise _refusal(
+            f"has {letters!r} beside the number",
+            "Put a unit into 'unit' and the laboratory's letters into 'qualifier_lab'",
+        )
+    if number == 0:
+        raise _refusal(
+            "is zero, which no laboratory can measure",
+            "Type ND with a reporting_limit if nothing was detected",
+        )
+    if not SMALLEST <= number <= LARGEST:
+        raise _refusal("is outside 1e-30 to 1e30", "Check the exponent")
+    if match["less"] or not _CENSORING.isdisjoint(marks):
+        return Reading(None, number, False, letters)
+    return Reading(number, None, True, letters)
+
+
+def qualifier_marks(letters: str) -> tuple[str, ...]:
+    """Part qualifiers at spaces, commas and slashes, in lower case.
+
+    Parameters
+    ----------
+    letters : str
+
+    Examples
+    --------
+    >>> qualifier_marks("J, B")
+    ('j', 'b')
+    """
+    return tuple(part for part in re.split(r"[ ,/;]+", letters.casefold()) if part)
+
+
+def says_not_detected(letters: str) -> bool:
+    """Whether a laboratory qualifier means "not detected at the stated limit".
+
+    Parameters
+    ----------
+    letters : str
+
+    Examples
+    --------
+    >>> says_not_detected("UJ"), says_not_detected("J")
+    (True, False)
+    """
+    return not _CENSORING.isdisjoint(qualifier_marks(letters))
+
+
+def says_rejected(letters: str) -> bool:
+    """Whether a laboratory qualifier means that the result must not be used.
+
+    Parameters
+    ----------
+    letters : str
+
+    Examples
+    --------
+    >>> says_rejected("R"), says_rejected("J")
+    (True, False)
+    """
+    return "r" in qualifier_marks(letters) or "rejected" in qualifier_marks(letters)
+
+
+def _unreadable(plain: str) -> LabError:
+    if plain.startswith((">", "≥")):
+        return _refusal(
+            "is above what the laboratory can measure; a mean cannot use it",
+            "Ask for a dilution and type its result",
+        )
+    if re.match(r"-\s*[\d.]", plain):
+        return _refusal(
+            "is below 0, which a concentration cannot be",
+            "Type ND with a reporting_limit if nothing was detected",
+        )
+    return _refusal("is not a number, <number or ND", "Type what the laboratory reported")
+
+
+def _refusal(rule: str, remedy: str) -> LabError:
+    return LabError(f"{rule}. {remedy}.")

@@ -1,0 +1,248 @@
+"""What a pilot says of the spread between locations, one value a location."""
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+from fieldplan.base.errors import LabError
+from fieldplan.lab.duplicates import merge_results
+from fieldplan.lab.model import LabRow, LabTable, StratumSpread
+from fieldplan.lab.roles import IN_THE_MEAN
+from fieldplan.lab.words import counted, figure, listed
+from fieldplan.stats.summary import sample_mean, sample_sd, sample_skewness, skewness_ceiling
+
+MOST_NON_DETECTS = 0.40
+"""Above this share of non-detects s says more of the limit than of the site (house rule)."""
+
+
+@dataclass(frozen=True)
+class PilotLocation:
+    """One pilot location: its value at the three bounds and what the file says of its place."""
+
+    file_name: str
+    location_id: str
+    stratum: str
+    latitude: float | None
+    longitude: float | None
+    low: float
+    half: float
+    high: float
+    detected: bool
+
+
+def pilot_locations(
+    table: LabTable, analyte: str, *, duplicates: str
+) -> tuple[tuple[PilotLocation, ...], tuple[str, ...]]:
+    """Bring the rows of one analyte down to one value a location.
+
+    Parameters
+    ----------
+    table : LabTable
+    analyte : str
+        The campaign's id.
+    duplicates : str
+        ``average`` or ``first``.
+
+    Returns
+    -------
+    locations : tuple of PilotLocation
+        In file order.
+    notes : tuple of str
+
+    Raises
+    ------
+    LabError
+        One sample has two different results, a duplicate names no location of the file, or one
+        location stands in two strata.
+    """
+    rows = [row for row in table.rows if row.analyte == analyte and row.role in IN_THE_MEAN]
+    left_out = sum(row.analyte == analyte for row in table.rows) - len(rows)
+    rows, problems = _without_copies(table.file_name, rows)
+    groups, lost = _by_location(table.file_name, rows)
+    problems += lost
+    for name, group in groups.items():
+        if len({row.stratum.casefold() for row in group if row.stratum}) > 1:
+            problems.append(f"{table.file_name}: location '{name}' stands in two strata; keep one.")
+    if problems:
+        raise LabError(*problems)
+    notes = []
+    extra = len(rows) - len(groups)
+    if extra:
+        done = "averaged with their location" if duplicates == "average" else "left out"
+        notes.append(f"{table.file_name}: {counted(extra, 'duplicate')} {done}; n does not grow.")
+    if left_out:
+        notes.append(f"{table.file_name}: {counted(left_out, 'control sample')} left out.")
+    locations = tuple(
+        _location(table.file_name, name, group, duplicates) for name, group in groups.items()
+    )
+    return locations, tuple(notes)
+
+
+def _without_copies(name: str, rows: Sequence[LabRow]) -> tuple[list[LabRow], list[str]]:
+    """Keep one of rows that repeat the same sample; two different results are a question."""
+    kept: dict[tuple[str, str], LabRow] = {}
+    unnamed: list[LabRow] = []
+    problems = []
+    for row in rows:
+        key = (row.sample_id.casefold(), row.role)
+        if not row.sample_id:
+            unnamed.append(row)
+        elif key not in kept:
+            kept[key] = row
+        elif (kept[key].result, kept[key].reporting_limit) != (row.result, row.reporting_limit):
+            problems.append(
+                f"{name} row {row.row}: sample '{row.sample_id}' has a second result "
+                f"'{row.as_reported.strip()}' beside '{kept[key].as_reported.strip()}' in row "
+                f"{kept[key].row}. Keep the one that counts."
+            )
+    return sorted([*kept.values(), *unnamed], key=lambda row: row.row), problems
+
+
+def _by_location(name: str, rows: Sequence[LabRow]) -> tuple[dict[str, list[LabRow]], list[str]]:
+    places = {row.location_id.casefold(): row.location_id for row in rows if row.location_id}
+    samples = {row.sample_id.casefold(): row for row in rows if row.sample_id}
+    groups: dict[str, list[LabRow]] = {}
+    problems = []
+    for row in sorted(rows, key=lambda row: row.role == "field duplicate"):
+        parent = row.duplicate_of.casefold()
+        if parent in samples and samples[parent] is not row:
+            place = samples[parent].location_id or samples[parent].sample_id
+        elif parent and parent not in places:
+            problems.append(
+                f"{name} row {row.row}: duplicate_of '{row.duplicate_of}' names no location or "
+                "sample of this file. Correct it."
+            )
+            continue
+        else:
+            place = places.get(parent) or row.location_id or row.sample_id
+        groups.setdefault(places.get(place.casefold(), place), []).append(row)
+    return groups, problems
+
+
+def _location(name: str, place: str, rows: Sequence[LabRow], duplicates: str) -> PilotLocation:
+    merged = merge_results(rows, duplicates)
+    placed = next((r for r in rows if r.latitude is not None and r.longitude is not None), rows[0])
+    return PilotLocation(
+        file_name=name,
+        location_id=place,
+        stratum=next((row.stratum for row in rows if row.stratum), ""),
+        latitude=placed.latitude,
+        longitude=placed.longitude,
+        low=merged.low,
+        half=merged.half,
+        high=merged.high,
+        detected=merged.detected,
+    )
+
+
+def measured_spread(
+    locations: Sequence[PilotLocation], analyte: str, stratum: str, *, refuse: bool = True
+) -> StratumSpread:
+    """Give sigma from pilot locations: the largest s over non-detects at 0, half and the limit.
+
+    Parameters
+    ----------
+    locations : sequence of PilotLocation
+    analyte, stratum : str
+    refuse : bool
+        Whether many non-detects and nil spread are errors; False for a value that is only shown.
+
+    Returns
+    -------
+    StratumSpread
+
+    Raises
+    ------
+    LabError
+        Fewer than 2 locations, more than 40 % non-detects, or no spread at all.
+    """
+    files = listed(sorted({place.file_name for place in locations}))
+    if len(locations) < 2:
+        message = (
+            f"{files or 'the pilot'}: stratum '{stratum}' has "
+            f"{counted(len(locations), 'result')}; a sigma needs 2. {_REMEDY.format(stratum)}"
+        )
+        raise LabError(message)
+    ends = {at: [getattr(place, at) for place in locations] for at in ("low", "half", "high")}
+    sigmas = {at: sample_sd(values) for at, values in ends.items()}
+    missing = sum(not place.detected for place in locations)
+    largest = max(sigmas, key=lambda at: sigmas[at])
+    if refuse and missing > MOST_NON_DETECTS * len(locations):
+        message = (
+            f"{files}: {missing} of {len(locations)} results in stratum '{stratum}' are "
+            "non-detects; above 40 % their s says more of the limit than of the site. "
+            f"{_REMEDY.format(stratum)}"
+        )
+        raise LabError(message)
+    if refuse and sigmas[largest] <= 1e-12 * max(map(abs, ends[largest])):
+        message = (
+            f"{files}: all {len(locations)} results in stratum '{stratum}' are "
+            f"{figure(ends[largest][0])}; a spread of 0 cannot size a campaign. "
+            f"{_REMEDY.format(stratum)}"
+        )
+        raise LabError(message)
+    return StratumSpread(
+        analyte=analyte,
+        stratum=stratum,
+        sigma=sigmas[largest],
+        mean=sample_mean(ends[largest]),
+        results=len(locations),
+        source=files,
+        values=tuple(ends["half"]),
+        detected=tuple(place.detected for place in locations),
+        sigma_at_zero=sigmas["low"],
+        sigma_at_half=sigmas["half"],
+        sigma_at_limit=sigmas["high"],
+        skewness=sample_skewness(ends["half"]),
+        skewness_ceiling=skewness_ceiling(len(locations)),
+    )
+
+
+_REMEDY = 'Type one in the campaign file: a [[sigma]] table with stratum = "{}", value, source.'
+
+
+def spread_sentences(entry: StratumSpread, unit: str, counts: Mapping[str, int]) -> list[str]:
+    """Say in sentences what is known of one stratum's spread.
+
+    Parameters
+    ----------
+    entry : StratumSpread
+    unit : str
+    counts : mapping of str to int
+        Unused names are ignored; ``strata`` is how many strata the frame has.
+
+    Returns
+    -------
+    list of str
+    """
+    head = "" if counts.get("strata", 1) == 1 else f"{entry.stratum}: "
+    if not entry.values:
+        return [head + _typed_sentence(entry, unit)]
+    missing = entry.detected.count(False)
+    mean = sample_mean(entry.values)
+    smallest, largest = min(entry.values), max(entry.values)
+    ratio = entry.sigma / entry.mean if entry.mean else 0.0
+    lines = [
+        f"{head}{entry.results} pilot locations ({entry.source}) have a mean of {figure(mean)} "
+        f"{unit} and s = {figure(entry.sigma)} {unit} (CV {ratio:.2f}), from {figure(smallest)} "
+        f"to {figure(largest)} {unit}; {counted(missing, 'non-detect')}."
+    ]
+    if missing:
+        lines.append(
+            f"{head}s is {figure(entry.sigma_at_zero or 0)} with non-detects at 0, "
+            f"{figure(entry.sigma_at_half or 0)} at half and {figure(entry.sigma_at_limit or 0)} "
+            "at the limit; the largest is used. Mean and range above have them at half."
+        )
+    lines.append(
+        f"{head}the skewness of these results is {entry.skewness or 0.0:.2f}; {entry.results} "
+        f"results can show no more than {entry.skewness_ceiling or 0.0:.2f}, so they do not "
+        "prove that the population is symmetric."
+    )
+    return lines
+
+
+def _typed_sentence(entry: StratumSpread, unit: str) -> str:
+    value = f"sigma = {figure(entry.sigma)} {unit}"
+    if entry.assumed:
+        return f"{value} is ASSUMED, not measured."
+    known = f", from {entry.results} results" if entry.results else ""
+    return f"{value} was typed in the campaign file (source: {entry.source}{known})."

@@ -1,0 +1,262 @@
+"""Sigma for every stratum, from pilots and typed values, as the campaign file says."""
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field, replace
+from typing import TYPE_CHECKING
+
+from fieldplan.base.errors import FieldplanError, LabError
+from fieldplan.campaign.inputs import resolve_file
+from fieldplan.campaign.model import Campaign, ReadCampaign, Sigma
+from fieldplan.lab.model import LabTable, Spread, StratumSpread
+from fieldplan.lab.pilot import PilotLocation, measured_spread, pilot_locations, spread_sentences
+from fieldplan.lab.reader import read_lab
+from fieldplan.lab.strata import sort_into_strata
+from fieldplan.lab.words import figure, listed
+
+if TYPE_CHECKING:
+    from fieldplan.frame.model import Frame
+
+
+def read_spread(read: ReadCampaign, frame: "Frame") -> Spread:
+    """Read the pilot files that a campaign names and say how far its results spread.
+
+    Parameters
+    ----------
+    read : ReadCampaign
+    frame : Frame
+
+    Returns
+    -------
+    Spread
+        One sigma for each stratum of the frame, for the deciding analyte.
+
+    Raises
+    ------
+    LabError
+        A pilot cannot be read, or a stratum has no sigma; all such strata at once.
+    """
+    tables: list[LabTable | None] = []
+    problems: list[str] = []
+    for sigma in read.campaign.sigma:
+        if sigma.pilot is None:
+            tables.append(None)
+            continue
+        try:
+            place = resolve_file(read, sigma.pilot)
+            tables.append(read_lab(place, read.campaign, columns=sigma.columns))
+        except LabError as fault:
+            problems += [line for line in fault.problems if line not in problems]
+    if problems:
+        raise LabError(*problems)
+    return spread(tables, read.campaign, frame)
+
+
+def spread(tables: Sequence[LabTable | None], campaign: Campaign, frame: "Frame") -> Spread:
+    """Say how far results spread in each stratum.
+
+    Parameters
+    ----------
+    tables : sequence of (LabTable or None)
+        One for each ``[[sigma]]`` table of the campaign, None where its value is typed.
+    campaign : Campaign
+    frame : Frame
+
+    Returns
+    -------
+    Spread
+
+    Raises
+    ------
+    LabError
+        A stratum has no sigma: fewer than 2 pilot results, too many non-detects, no spread, and
+        no typed value; all such strata at once.
+
+    Notes
+    -----
+    A value typed for a stratum comes before its pilot, its pilot before a value typed for the
+    site, and that before one sigma pooled from a pilot that does not tell strata apart. Pooling
+    needs a reason, typed as the ``source`` of its ``[[sigma]]`` table.
+    """
+    analyte = campaign.deciding_analyte
+    gathered = _gather(tables, campaign, frame, analyte.id)
+    entries: list[StratumSpread] = []
+    problems: list[str] = []
+    for stratum in frame.strata:
+        try:
+            entries.append(gathered.choose(stratum.name))
+        except LabError as fault:
+            problems += fault.problems
+    if problems:
+        raise LabError(*problems)
+    site = gathered.site()
+    shown = entries if len(frame.strata) > 1 else entries[:1]
+    count = {"strata": len(frame.strata)}
+    sentences: list[str] = []
+    for entry in shown:
+        sentences += spread_sentences(entry, analyte.unit, count)
+    others, more = _others(tables, campaign, frame, analyte.id)
+    file_notes = [note for table in tables if table for note in table.notes]
+    notes = [*file_notes, *gathered.notes, *more]
+    return Spread(
+        analyte=analyte.id,
+        unit=analyte.unit,
+        strata=tuple(entries),
+        site=site,
+        others=tuple(others),
+        sentences=tuple(sentences),
+        notes=tuple(dict.fromkeys(notes)),
+    )
+
+
+@dataclass
+class _Gathered:
+    """All that the campaign file says of one analyte's sigma, before a stratum chooses."""
+
+    analyte: str
+    unit: str
+    strata: tuple[str, ...]
+    typed: dict[str, Sigma] = field(default_factory=dict)
+    typed_site: Sigma | None = None
+    measured: dict[str, list[PilotLocation]] = field(default_factory=dict)
+    unplaced: list[PilotLocation] = field(default_factory=list)
+    reason: str = ""
+    notes: list[str] = field(default_factory=list)
+
+    def choose(self, name: str) -> StratumSpread:
+        """Give one stratum its sigma."""
+        places = self.measured.get(name, [])
+        sigma = self.typed.get(name)
+        if sigma is None and len(self.strata) == 1:
+            sigma = self.typed_site
+        if sigma is not None:
+            self._compare(name, places, sigma)
+            return _typed_entry(self.analyte, name, sigma)
+        fault: LabError | None = None
+        if places or not self.unplaced:
+            try:
+                return measured_spread(places, self.analyte, name)
+            except LabError as found:
+                fault = found
+        if self.typed_site is not None:
+            self.notes.append(f"{name}: the sigma typed for the whole site is used.")
+            return _typed_entry(self.analyte, name, self.typed_site)
+        if fault is not None:
+            raise fault
+        return self._pooled(name)
+
+    def _pooled(self, name: str) -> StratumSpread:
+        file_name = self.unplaced[0].file_name
+        if not self.reason:
+            message = (
+                f"{file_name} does not say in which stratum its locations lie, so stratum "
+                f"'{name}' has no sigma. Fill in the column 'stratum' or the positions; or say "
+                'why one pooled sigma is fair, as source = "…" in its [[sigma]] table.'
+            )
+            raise LabError(message)
+        self.notes.append(
+            f"One sigma pooled from {file_name} is used in every stratum; reason given: "
+            f"{self.reason}. It holds the differences between strata too, so it is usually "
+            "larger than the sigma inside one."
+        )
+        return measured_spread(self.unplaced, self.analyte, name)
+
+    def _compare(self, name: str, places: Sequence[PilotLocation], sigma: Sigma) -> None:
+        if len(places) < 2 or sigma.value is None:
+            return
+        pilot = measured_spread(places, self.analyte, name, refuse=False)
+        self.notes.append(
+            f"{name}: the typed sigma of {figure(sigma.value)} {self.unit} is used; the pilot "
+            f"({pilot.source}, {pilot.results} results) has s = {figure(pilot.sigma)} {self.unit}."
+        )
+
+    def site(self) -> StratumSpread | None:
+        """Give the whole site's sigma: typed for it, or pooled over every pilot location."""
+        if self.typed_site is not None:
+            return _typed_entry(self.analyte, "site", self.typed_site)
+        places = [place for name in self.strata for place in self.measured.get(name, [])]
+        places += self.unplaced
+        if len(places) < 2:
+            return None
+        return measured_spread(places, self.analyte, "site", refuse=False)
+
+
+def _gather(
+    tables: Sequence[LabTable | None], campaign: Campaign, frame: "Frame", analyte: str
+) -> _Gathered:
+    unit = next(a.unit for a in campaign.analyte if a.id == analyte)
+    known = {s.name.casefold(): s.name for s in frame.strata}
+    gathered = _Gathered(analyte, unit, tuple(s.name for s in frame.strata))
+    deciding = campaign.deciding_analyte.id
+    for sigma, table in zip(campaign.sigma, tables, strict=True):
+        if (sigma.analyte or deciding) != analyte:
+            continue
+        named = _named_stratum(sigma, known)
+        if table is not None:
+            _add_pilot(gathered, sigma, table, frame, named, campaign.rules.duplicates)
+        elif named:
+            gathered.typed[named] = sigma
+        else:
+            gathered.typed_site = sigma
+    return gathered
+
+
+def _named_stratum(sigma: Sigma, known: Mapping[str, str]) -> str:
+    written = (sigma.stratum or "").casefold()
+    if not written or (written == "site" and "site" not in known):
+        return ""
+    if written not in known:
+        message = (
+            f"campaign file: [[sigma]] names the stratum '{sigma.stratum}'; the site has "
+            f"{listed(list(known.values()))}. Correct it, or leave it out for the whole site."
+        )
+        raise LabError(message)
+    return known[written]
+
+
+def _add_pilot(
+    gathered: _Gathered,
+    sigma: Sigma,
+    table: LabTable,
+    frame: "Frame",
+    named: str,
+    duplicates: str,
+) -> None:
+    locations, notes = pilot_locations(table, gathered.analyte, duplicates=duplicates)
+    by_stratum, unplaced, more = sort_into_strata(locations, frame, fixed=named)
+    for name, places in by_stratum.items():
+        gathered.measured.setdefault(name, []).extend(places)
+    gathered.unplaced += unplaced
+    gathered.reason = gathered.reason or sigma.source.strip()
+    gathered.notes += [*notes, *more]
+
+
+def _typed_entry(analyte: str, stratum: str, sigma: Sigma) -> StratumSpread:
+    source = sigma.source.strip()
+    return StratumSpread(
+        analyte=analyte,
+        stratum=stratum,
+        sigma=float(sigma.value or 0.0),
+        mean=sigma.expected_mean,
+        results=sigma.from_results,
+        source=source,
+        assumed=source.casefold() == "assumed",
+        skewness=sigma.skewness,
+    )
+
+
+def _others(
+    tables: Sequence[LabTable | None], campaign: Campaign, frame: "Frame", deciding: str
+) -> tuple[list[StratumSpread], list[str]]:
+    """Give what is known of analytes that do not decide n; what is not known is only noted."""
+    entries: list[StratumSpread] = []
+    notes: list[str] = []
+    for analyte in {s.analyte: None for s in campaign.sigma if s.analyte not in {None, deciding}}:
+        try:
+            gathered = _gather(tables, campaign, frame, analyte or deciding)
+            notes += gathered.notes
+            for stratum in frame.strata:
+                entry = gathered.choose(stratum.name)
+                entries.append(replace(entry, stratum=stratum.name))
+        except FieldplanError as fault:
+            notes += [f"{analyte}: {line}" for line in fault.problems]
+    return entries, notes

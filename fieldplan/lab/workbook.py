@@ -1,0 +1,181 @@
+"""A workbook's visible sheets as text, with every cell that is not what it shows pointed out."""
+
+import hashlib
+import io
+import math
+import re
+import warnings
+import zipfile
+from datetime import date, datetime, time
+from typing import TYPE_CHECKING, Any
+
+from fieldplan.base.errors import LabError
+from fieldplan.lab.tables import CellFault, TextTable
+
+if TYPE_CHECKING:
+    from openpyxl.worksheet.worksheet import Worksheet
+
+LARGEST_UNPACKED = 256 * 1024 * 1024
+_ERRORS = {"#N/A", "#DIV/0!", "#VALUE!", "#REF!", "#NAME?", "#NUM!", "#NULL!"}
+
+
+def workbook_tables(name: str, content: bytes) -> tuple[TextTable, ...]:
+    """Read each visible sheet that holds anything.
+
+    Parameters
+    ----------
+    name : str
+        The file's name, for messages.
+    content : bytes
+        The .xlsx file.
+
+    Returns
+    -------
+    tuple of TextTable
+
+    Raises
+    ------
+    LabError
+        The workbook is damaged, of another kind, or shows nothing.
+
+    Notes
+    -----
+    Cells are read one by one and never through the size that the sheet declares for itself,
+    which some programs write wrongly. Values come from the last save; a formula without a
+    saved value is a fault, not a blank.
+    """
+    _check_size(name, content)
+    values, formulas = _opened(name, content, True), _opened(name, content, False)
+    digest = hashlib.sha256(content).hexdigest()
+    tables, hidden = [], []
+    for title in values.sheetnames:
+        sheet = values[title]
+        if getattr(sheet, "sheet_state", "") != "visible":
+            hidden.append(title)
+        elif hasattr(sheet, "iter_rows"):
+            table = _sheet_table(name, digest, sheet, formulas[title])
+            tables += [table] if table else []
+    if not tables:
+        extra = f" Its hidden sheets ({', '.join(hidden)}) are not read." if hidden else ""
+        message = (
+            f"{name} shows no sheet with cells in it; save it again as an ordinary .xlsx "
+            f"workbook, or as CSV.{extra}"
+        )
+        raise LabError(message)
+    return tuple(tables)
+
+
+def _check_size(name: str, content: bytes) -> None:
+    try:
+        with zipfile.ZipFile(io.BytesIO(content)) as archive:
+            unpacked = sum(entry.file_size for entry in archive.infolist())
+            names = set(archive.namelist())
+    except (zipfile.BadZipFile, OSError, ValueError, NotImplementedError) as fault:
+        message = f"{name} is a damaged workbook ({fault}); save or fetch it again."
+        raise LabError(message) from fault
+    if unpacked > LARGEST_UNPACKED:
+        message = f"{name} unpacks to {unpacked / 1e6:.0f} MB; save the one sheet needed as CSV."
+        raise LabError(message)
+    if "[Content_Types].xml" not in names:
+        message = f"{name} is an archive but no .xlsx workbook; save it as .xlsx or CSV."
+        raise LabError(message)
+
+
+def _opened(name: str, content: bytes, saved_values: bool) -> Any:
+    from openpyxl import load_workbook
+
+    try:
+        with warnings.catch_warnings():
+            warnings.simplefilter("ignore")
+            return load_workbook(io.BytesIO(content), data_only=saved_values)
+    except Exception as fault:  # noqa: BLE001 - a damaged part raises whatever it provokes
+        message = f"{name} is a damaged workbook ({type(fault).__name__}); save it again."
+        raise LabError(message) from fault
+
+
+def _sheet_table(
+    name: str, digest: str, values: "Worksheet", formulas: "Worksheet"
+) -> TextTable | None:
+    rows: list[tuple[int, tuple[str, ...]]] = []
+    faults: dict[tuple[int, int], CellFault] = {}
+    for cells in values.iter_rows():
+        texts = []
+        for cell in cells:
+            formula = formulas.cell(cell.row or 1, cell.column or 1)
+            text, fault = _cell_text(cell, formula)
+            texts.append(text)
+            if fault:
+                faults[(cell.row or 1, (cell.column or 1) - 1)] = fault
+        number = cells[0].row if cells else None
+        if number and (any(t.strip() for t in texts) or any(r == number for r, _ in faults)):
+            rows.append((number, tuple(texts)))
+    if not rows:
+        return None
+    _add_merged(values, faults)
+    notes = []
+    unseen = sum(1 for number, _ in rows if values.row_dimensions[number].hidden)
+    if unseen:
+        notes.append(f"{name}: {unseen} rows that the sheet hides were read too.")
+    header_row, header = rows[0]
+    return TextTable(
+        file_name=name,
+        sha256=digest,
+        header=header,
+        header_row=header_row,
+        rows=tuple(rows[1:]),
+        sheet=values.title,
+        faults=faults,
+        notes=tuple(notes),
+    )
+
+
+def _cell_text(cell: Any, formula: Any) -> tuple[str, CellFault | None]:
+    """Write one cell as text; give a fault when it is not a plain text or number."""
+    value = cell.value
+    place = f"{cell.coordinate}"
+    if value is None:
+        if isinstance(formula.value, str) and formula.data_type == "f":
+            sentence = (
+                f"cell {place} holds a formula without a saved value; open the workbook, save "
+                "it, or paste the values in place of the formulas"
+            )
+            return "", CellFault("other", sentence)
+        return "", None
+    if isinstance(value, bool):
+        return str(value).upper(), None
+    if isinstance(value, datetime | date | time):
+        sentence = (
+            f"cell {place} is a date for the spreadsheet ({value}); set the column to text and "
+            "type what was meant"
+        )
+        return str(value), CellFault("date", sentence)
+    if isinstance(value, int | float):
+        return _number_text(value, cell.number_format or "General", place)
+    text = str(value)
+    if cell.data_type == "e" or text in _ERRORS:
+        return text, CellFault("other", f"cell {place} holds the error {text}; put the value in")
+    return text, None
+
+
+def _number_text(value: float, number_format: str, place: str) -> tuple[str, CellFault | None]:
+    if isinstance(value, float) and not math.isfinite(value):
+        return str(value), CellFault("other", f"cell {place} holds no number; put the value in")
+    whole = float(value).is_integer() and abs(value) < 1e15
+    text = str(int(value)) if whole else repr(float(value))
+    if re.search(r'[<>%]|"[^"]*[A-Za-z][^"]*"', number_format):
+        sentence = (
+            f"cell {place} holds {text} but its number format ({number_format}) shows something "
+            "else; set the column to text and type what the laboratory reported"
+        )
+        return text, CellFault("other", sentence)
+    if whole and re.fullmatch(r"0+", number_format):
+        text = text.zfill(len(number_format))
+    return text, None
+
+
+def _add_merged(sheet: "Worksheet", faults: dict[tuple[int, int], CellFault]) -> None:
+    """Point at cells under a merge that runs over several rows: they look blank but are not."""
+    for area in sheet.merged_cells.ranges:
+        for row in range(area.min_row + 1, min(area.max_row, area.min_row + 2000) + 1):
+            sentence = f"cell {area.coord} is merged over several rows; unmerge it and fill each"
+            faults[(row, area.min_col - 1)] = CellFault("other", sentence)
