@@ -1,0 +1,41 @@
+"""The layouts by the names that a campaign file uses."""
+
+from difflib import get_close_matches
+
+from fieldplan.base.errors import DesignError
+from fieldplan.design.census import Census
+from fieldplan.design.grid import SQUARE_GRID, TRIANGULAR_GRID
+from fieldplan.design.model import Layout
+from fieldplan.design.simple_random import SimpleRandom
+from fieldplan.design.stratified import Stratified
+
+LAYOUTS: tuple[Layout, ...] = (
+    SimpleRandom(),
+    Stratified(),
+    SQUARE_GRID,
+    TRIANGULAR_GRID,
+    Census(),
+)
+
+
+def layout_named(name: str) -> Layout:
+    """Return the layout called ``name`` in a campaign file.
+
+    Raises
+    ------
+    DesignError
+        There is none of that name.
+
+    Examples
+    --------
+    >>> layout_named("stratified").name
+    'stratified'
+    """
+    for layout in LAYOUTS:
+        if layout.name == name:
+            return layout
+    names = [layout.name for layout in LAYOUTS]
+    near = get_close_matches(name, names, n=1)
+    hint = f' Did you mean "{near[0]}"?' if near else ""
+    message = f'layout "{name}" is unknown; the layouts are {", ".join(names)}.{hint}'
+    raise DesignError(message)
