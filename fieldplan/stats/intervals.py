@@ -1,11 +1,9 @@
 """Student's interval or limit for a mean, and the quantiles it stands on."""
 
-import math
 from typing import Literal
 
-from scipy.special import ndtri, stdtrit
-
 from fieldplan.base.errors import DesignError
+from fieldplan.stats.distributions import student_quantile
 
 IntervalKind = Literal["two-sided", "upper-limit", "lower-limit"]
 """An interval with two ends, or a limit on one side that leaves the other end open."""
@@ -37,7 +35,8 @@ def t_quantile(degrees_of_freedom: float, *, confidence: float, kind: IntervalKi
     --------
     >>> round(t_quantile(9, confidence=0.95, kind="two-sided"), 4)
     2.2622
-    >>> round(t_quantile(math.inf, confidence=0.95, kind="upper-limit"), 4)
+    >>> from math import inf
+    >>> round(t_quantile(inf, confidence=0.95, kind="upper-limit"), 4)
     1.6449
     """
     if not 0 < confidence < 1:
@@ -50,9 +49,7 @@ def t_quantile(degrees_of_freedom: float, *, confidence: float, kind: IntervalKi
         )
         raise DesignError(message)
     level = (1 + confidence) / 2 if kind == "two-sided" else confidence
-    if math.isinf(degrees_of_freedom):
-        return float(ndtri(level))
-    return float(stdtrit(degrees_of_freedom, level))
+    return student_quantile(level, float(degrees_of_freedom))
 
 
 def t_interval(
@@ -86,7 +83,8 @@ def t_interval(
     >>> low, high = t_interval(5.4875, 0.5383, 7, confidence=0.95, kind="two-sided")
     >>> round(low, 2), round(high, 2)
     (4.21, 6.76)
-    >>> t_interval(10.0, 0.0, math.inf, confidence=0.95, kind="upper-limit")
+    >>> from math import inf
+    >>> t_interval(10.0, 0.0, inf, confidence=0.95, kind="upper-limit")
     (None, 10.0)
     """
     reach = t_quantile(degrees_of_freedom, confidence=confidence, kind=kind) * standard_error

@@ -1,57 +1,90 @@
 """The mean of a population in parts: its variance before and after the results."""
 
 import math
-from collections.abc import Sequence
-
-import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from collections.abc import Iterable, Sequence
 
 from fieldplan.base.errors import DesignError
 
-Numbers = NDArray[np.float64]
 
-
-def sampled_shares(counts: ArrayLike, populations: Sequence[int | None]) -> Numbers:
+def sampled_shares(
+    counts: Iterable[float], populations: Sequence[int | None] | None = None
+) -> list[float]:
     """Give n/N for every stratum, 0 where the population is endless.
 
     Parameters
     ----------
-    counts : array_like, shape (h,)
+    counts : iterable of float, length h
         Results per stratum.
-    populations : sequence of (int or None), length h
+    populations : sequence of (int or None), length h, optional
         N of a list; None for an area.
 
-    Returns
-    -------
-    ndarray, shape (h,)
+    Raises
+    ------
+    DesignError
+        More results than the list has units.
 
     Examples
     --------
-    >>> sampled_shares([8, 5], [14, None]).round(3).tolist()
+    >>> [round(share, 3) for share in sampled_shares([8, 5], [14, None])]
     [0.571, 0.0]
     """
-    numbers = np.asarray(counts, dtype=float)
-    sizes = np.array([math.inf if size is None else float(size) for size in populations])
-    if (numbers > sizes).any():
-        at = int(np.argmax(numbers > sizes))
-        message = f"{numbers[at]:g} results cannot come from a list of {sizes[at]:g}."
-        raise DesignError(message)
-    return numbers / sizes
+    numbers = [float(count) for count in counts]
+    sizes = populations if populations is not None else [None] * len(numbers)
+    shares = []
+    for number, size in zip(numbers, sizes, strict=True):
+        if size is not None and number > size:
+            message = f"{number:g} results cannot come from a list of {size}."
+            raise DesignError(message)
+        shares.append(0.0 if size is None else number / size)
+    return shares
+
+
+def variance_factors(
+    weights: Iterable[float],
+    counts: Iterable[float],
+    populations: Sequence[int | None] | None = None,
+) -> list[float]:
+    """Give what each stratum's variance is multiplied by in the variance of the mean.
+
+    Parameters
+    ----------
+    weights : iterable of float, length h
+        Shares of the population (sum 1).
+    counts : iterable of float, length h
+        Results per stratum, each above 0; need not be whole.
+    populations : sequence of (int or None), length h, optional
+        N of a list; None for an area.
+
+    Notes
+    -----
+    W² (1 − n/N) / n: Cochran (1977), Sampling Techniques, 3rd ed., theorem 5.3.
+
+    Examples
+    --------
+    >>> variance_factors([0.5, 0.5], [5, 10], [None, 20])
+    [0.05, 0.0125]
+    """
+    numbers = [float(count) for count in counts]
+    shares = sampled_shares(numbers, populations)
+    return [
+        weight**2 * (1 - share) / number
+        for weight, share, number in zip(weights, shares, numbers, strict=True)
+    ]
 
 
 def predicted_variance(
-    weights: ArrayLike,
-    sigmas: ArrayLike,
-    counts: ArrayLike,
+    weights: Iterable[float],
+    sigmas: Iterable[float],
+    counts: Iterable[float],
     populations: Sequence[int | None] | None = None,
 ) -> float:
     """Predict the variance of a stratified mean before any result.
 
     Parameters
     ----------
-    weights, sigmas : array_like, shape (h,)
+    weights, sigmas : iterable of float, length h
         Shares of the population (sum 1) and standard deviations of single results.
-    counts : array_like, shape (h,)
+    counts : iterable of float, length h
         Results per stratum, each above 0; need not be whole.
     populations : sequence of (int or None), length h, optional
         N of a list; None for an area.
@@ -70,20 +103,20 @@ def predicted_variance(
     >>> round(predicted_variance([0.64, 0.22, 0.14], [18, 45, 90], [5, 4, 6]) ** 0.5, 2)
     8.8
     """
-    numbers = np.asarray(counts, dtype=float)
-    shares = sampled_shares(numbers, populations or [None] * numbers.size)
-    spread = np.asarray(weights, dtype=float) * np.asarray(sigmas, dtype=float)
-    return float(np.sum(spread**2 * (1 - shares) / numbers))
+    factors = variance_factors(weights, counts, populations)
+    return math.fsum(
+        factor * float(sigma) ** 2 for factor, sigma in zip(factors, sigmas, strict=True)
+    )
 
 
-def satterthwaite(parts: ArrayLike, degrees_of_freedom: ArrayLike) -> float:
+def satterthwaite(parts: Iterable[float], degrees_of_freedom: Iterable[float]) -> float:
     """Give the effective degrees of freedom of a sum of independent estimated variances.
 
     Parameters
     ----------
-    parts : array_like, shape (h,)
+    parts : iterable of float, length h
         The terms of the sum.
-    degrees_of_freedom : array_like, shape (h,)
+    degrees_of_freedom : iterable of float, length h
         Of each term; a term of 0 does not count.
 
     Returns
@@ -100,22 +133,23 @@ def satterthwaite(parts: ArrayLike, degrees_of_freedom: ArrayLike) -> float:
     >>> satterthwaite([1.0, 1.0], [4, 4])
     8.0
     """
-    terms, known = np.asarray(parts, dtype=float), np.asarray(degrees_of_freedom, dtype=float)
-    counted = terms > 0
-    if not counted.any():
+    pairs = zip(parts, degrees_of_freedom, strict=True)
+    counted = [(float(part), float(known)) for part, known in pairs if part > 0]
+    if not counted:
         return math.inf
-    terms = terms[counted] / terms[counted].max()
-    return float(np.sum(terms) ** 2 / np.sum(terms**2 / known[counted]))
+    largest = max(part for part, _ in counted)
+    total = math.fsum(part / largest for part, _ in counted)
+    return total**2 / math.fsum((part / largest) ** 2 / known for part, known in counted)
 
 
-def pooled_variance(variances: ArrayLike, counts: ArrayLike) -> float:
+def pooled_variance(variances: Iterable[float], counts: Iterable[float]) -> float:
     """Pool the variances of the strata that have at least 2 results.
 
     Parameters
     ----------
-    variances : array_like, shape (h,)
+    variances : iterable of float, length h
         s² per stratum; ignored where the count is below 2.
-    counts : array_like, shape (h,)
+    counts : iterable of float, length h
 
     Returns
     -------
@@ -132,32 +166,34 @@ def pooled_variance(variances: ArrayLike, counts: ArrayLike) -> float:
     >>> pooled_variance([4.0, float("nan"), 10.0], [5, 1, 3])
     6.0
     """
-    known = np.asarray(counts, dtype=float) - 1
-    usable = known > 0
-    if not usable.any():
+    usable = [
+        (float(variance), float(count) - 1)
+        for variance, count in zip(variances, counts, strict=True)
+        if count > 1
+    ]
+    if not usable:
         message = "no stratum has 2 results, so no variance can be had from them; collect more."
         raise DesignError(message)
-    spread = np.asarray(variances, dtype=float)
-    return float(np.sum(known[usable] * spread[usable]) / np.sum(known[usable]))
+    return math.fsum(v * known for v, known in usable) / math.fsum(known for _, known in usable)
 
 
 def stratified_mean(
-    means: ArrayLike,
-    variances: ArrayLike,
-    counts: ArrayLike,
-    weights: ArrayLike,
+    means: Iterable[float],
+    variances: Iterable[float],
+    counts: Iterable[float],
+    weights: Iterable[float],
     populations: Sequence[int | None],
 ) -> tuple[float, float, float]:
     """Weigh the stratum means into one, with its standard error and degrees of freedom.
 
     Parameters
     ----------
-    means, variances : array_like, shape (h,)
+    means, variances : iterable of float, length h
         Mean and s² of each stratum. The variance of a stratum with one result is not read:
         that stratum borrows the pooled variance of the others (unless its list has one unit).
-    counts : array_like of int, shape (h,)
+    counts : iterable of int, length h
         Results per stratum, at least 1.
-    weights : array_like, shape (h,)
+    weights : iterable of float, length h
         Shares of the population, sum 1.
     populations : sequence of (int or None), length h
         N of a list; None for an area.
@@ -184,18 +220,23 @@ def stratified_mean(
     >>> mean, round(error**2, 5)
     (55.0, 1.91125)
     """
-    numbers, shares = np.asarray(counts, dtype=float), np.asarray(weights, dtype=float)
-    if (numbers < 1).any():
-        message = f"stratum {int(np.argmax(numbers < 1)) + 1} has no result, so no mean."
-        raise DesignError(message)
-    mean = float(np.sum(shares * np.asarray(means, dtype=float)))
-    factors = shares**2 * (1 - sampled_shares(numbers, populations)) / numbers
-    known = numbers - 1
-    borrowed = float(np.sum(factors[known == 0]))
+    numbers, shares = [float(n) for n in counts], [float(w) for w in weights]
+    spread = [float(variance) for variance in variances]
+    for position, number in enumerate(numbers, start=1):
+        if number < 1:
+            message = f"stratum {position} of {len(numbers)} has no result, so no mean."
+            raise DesignError(message)
+    mean = math.fsum(w * float(m) for w, m in zip(shares, means, strict=True))
+    factors = variance_factors(shares, numbers, populations)
+    known = [number - 1 for number in numbers]
+    borrowed = math.fsum(f for f, free in zip(factors, known, strict=True) if free == 0)
     if borrowed > 0:
-        pooled_variance(variances, counts)  # refuses when there is nothing to borrow from
-        factors = factors + borrowed * known / np.sum(known)
-    spread = np.where(known > 0, np.asarray(variances, dtype=float), 0.0)
-    parts = factors * spread
-    error = math.sqrt(float(np.sum(parts)))
-    return mean, error, satterthwaite(parts, np.maximum(known, 1))
+        pooled_variance(spread, numbers)  # refuses when there is nothing to borrow from
+        total = math.fsum(known)
+        factors = [f + borrowed * free / total for f, free in zip(factors, known, strict=True)]
+    parts = [
+        factor * variance if free > 0 else 0.0
+        for factor, variance, free in zip(factors, spread, known, strict=True)
+    ]
+    error = math.sqrt(math.fsum(parts))
+    return mean, error, satterthwaite(parts, [max(free, 1.0) for free in known])
