@@ -129,7 +129,10 @@ class MeanEstimate:
 class Layout(Protocol):
     """One way to lay out locations; drawing, predicting and estimating live side by side."""
 
-    name: str
+    @property
+    def name(self) -> str:
+        """What a campaign file calls it."""
+        ...
 
     def predict_variance(
         self,
