@@ -78,10 +78,10 @@ class _Serials:
         while number in self._taken:
             number = first + stream.below(count)
         self._taken.add(number)
-        return f"{self.campaign.prefix}-{number}{check_digit(number)}"
+        return f"{self.campaign.prefix}-{number}{check_digit(str(number))}"
 
 
-def check_digit(number: int) -> int:
+def check_digit(digits: str) -> int:
     """Give the digit that makes one wrong digit show itself.
 
     Notes
@@ -90,11 +90,11 @@ def check_digit(number: int) -> int:
 
     Examples
     --------
-    >>> check_digit(794)
+    >>> check_digit("0794")
     5
     """
     product = 10
-    for digit in str(number):
+    for digit in digits:
         product = ((product + int(digit)) % 10 or 10) * 2 % 11
     return (11 - product) % 10
 
