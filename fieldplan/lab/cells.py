@@ -4,6 +4,7 @@ import re
 import unicodedata
 from dataclasses import dataclass
 from decimal import Decimal
+from typing import NoReturn
 
 from fieldplan.base.errors import LabError
 
@@ -97,13 +98,13 @@ def read_cell(text: str, *, decimal_comma: bool = False) -> Reading:
     plain = tidy(text).replace("−", "-").replace("＜", "<")
     lower = plain.casefold()
     if lower in _BLANK:
-        raise _refusal("is no result", "Type ND with a reporting_limit, or leave the row out")
+        _refuse("is no result", "Type ND with a reporting_limit, or leave the row out")
     if lower.replace("< ", "<") in _NOT_DETECTED:
         return Reading(None, None, False, plain if lower in {"u", "uj"} else "")
     plain = _without_comma(plain, decimal_comma)
     match = _CELL.fullmatch(plain)
     if match is None:
-        raise _unreadable(plain)
+        _refuse_unreadable(plain)
     return _from_match(match)
 
 
@@ -116,12 +117,12 @@ def _without_comma(plain: str, decimal_comma: bool) -> str:
         return plain
     if _THOUSANDS.fullmatch(number):
         bare = number.replace(",", "")
-        raise _refusal(
+        _refuse(
             "has a comma that may part thousands or decimals",
             f"Type {bare} or {number.replace(',', '.', 1)}",
         )
     if not decimal_comma or not _DECIMAL_COMMA.fullmatch(number):
-        raise _refusal(
+        _refuse(
             "has a comma; decimal commas are read only in files cut by semicolons or tabs "
             "that use no decimal point",
             f"Type {number.replace(',', '.', 1)}",
@@ -135,17 +136,17 @@ def _from_match(match: re.Match[str]) -> Reading:
     marks = qualifier_marks(letters)
     unknown = [mark for mark in marks if mark not in _QUALIFIERS]
     if unknown:
-        raise _refusal(
+        _refuse(
             f"has {letters!r} beside the number",
             "Put a unit into 'unit' and the laboratory's letters into 'qualifier_lab'",
         )
     if number == 0:
-        raise _refusal(
+        _refuse(
             "is zero, which no laboratory can measure",
             "Type ND with a reporting_limit if nothing was detected",
         )
     if not SMALLEST <= number <= LARGEST:
-        raise _refusal("is outside 1e-30 to 1e30", "Check the exponent")
+        _refuse("is outside 1e-30 to 1e30", "Check the exponent")
     if match["less"] or not _CENSORING.isdisjoint(marks):
         return Reading(None, number, False, letters)
     return Reading(number, None, True, letters)
@@ -196,19 +197,35 @@ def says_rejected(letters: str) -> bool:
     return "r" in qualifier_marks(letters) or "rejected" in qualifier_marks(letters)
 
 
-def _unreadable(plain: str) -> LabError:
+def letters_beside(text: str) -> str:
+    """Give what stands behind the number of a cell, without reading the number.
+
+    Parameters
+    ----------
+    text : str
+
+    Examples
+    --------
+    >>> letters_beside("< 3.1 R")
+    'R'
+    """
+    return tidy(text).lstrip("<>=≤+-0123456789., ")
+
+
+def _refuse_unreadable(plain: str) -> NoReturn:
     if plain.startswith((">", "≥")):
-        return _refusal(
+        _refuse(
             "is above what the laboratory can measure; a mean cannot use it",
             "Ask for a dilution and type its result",
         )
     if re.match(r"-\s*[\d.]", plain):
-        return _refusal(
+        _refuse(
             "is below 0, which a concentration cannot be",
             "Type ND with a reporting_limit if nothing was detected",
         )
-    return _refusal("is not a number, <number or ND", "Type what the laboratory reported")
+    _refuse("is not a number, <number or ND", "Type what the laboratory reported")
 
 
-def _refusal(rule: str, remedy: str) -> LabError:
-    return LabError(f"{rule}. {remedy}.")
+def _refuse(rule: str, remedy: str) -> NoReturn:
+    message = f"{rule}. {remedy}."
+    raise LabError(message)

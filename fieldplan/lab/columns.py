@@ -66,30 +66,38 @@ def find_columns(
     LabError
         All that is missing, doubled or wrongly renamed, at once.
     """
-    problems: list[str] = []
-    found: dict[str, int] = {}
     theirs = [plain_name(cell) for cell in table.header]
-    for ours, wanted in (renamed or {}).items():
+    found, problems = _renamed_columns(table, theirs, known, renamed or {})
+    for ours in known:
+        if ours in found or ours in (renamed or {}) or ours not in theirs:
+            continue
+        if theirs.count(ours) > 1:
+            problems.append(f"{table.file_name} has {theirs.count(ours)} columns '{ours}'; keep 1.")
+        if theirs.index(ours) not in found.values():
+            found[ours] = theirs.index(ours)
+    given = {*found, *(renamed or {})}
+    missing = [need for need in required if given.isdisjoint(need.split("|"))]
+    problems += [_missing(table, need, theirs) for need in missing]
+    if problems:
+        raise LabError(*problems, *_header_elsewhere(table, known))
+    return found
+
+
+def _renamed_columns(
+    table: TextTable, theirs: Sequence[str], known: Sequence[str], renamed: Mapping[str, str]
+) -> tuple[dict[str, int], list[str]]:
+    found: dict[str, int] = {}
+    problems = []
+    for ours, wanted in renamed.items():
         if ours not in known:
             problems.append(_no_such_name(table, ours, known))
         elif theirs.count(plain_name(wanted)) != 1:
             problems.append(_renamed_wrongly(table, ours, wanted, theirs))
+        elif theirs.index(plain_name(wanted)) in found.values():
+            problems.append(f"{table.file_name}: '{wanted}' cannot serve for two columns of ours.")
         else:
             found[ours] = theirs.index(plain_name(wanted))
-    for ours in known:
-        if ours in found or ours in (renamed or {}):
-            continue
-        if theirs.count(ours) > 1:
-            problems.append(f"{table.file_name} has {theirs.count(ours)} columns '{ours}'; keep 1.")
-        elif ours in theirs and theirs.index(ours) not in found.values():
-            found[ours] = theirs.index(ours)
-    given = set(found) | set(renamed or {})
-    for need in required:
-        if given.isdisjoint(need.split("|")) and not any(theirs.count(n) for n in need.split("|")):
-            problems.append(_missing(table, need, theirs))
-    if problems:
-        raise LabError(*problems, *_header_elsewhere(table, known))
-    return found
+    return found, problems
 
 
 def _no_such_name(table: TextTable, ours: str, known: Sequence[str]) -> str:

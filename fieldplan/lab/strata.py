@@ -97,11 +97,12 @@ def _inside_site(
 
     if frame.kind != "area":
         return list(locations), []
-    inside, outside = [], []
+    inside: list[PilotLocation] = []
+    outside: list[PilotLocation] = []
     for place in locations:
         known = place.latitude is not None and place.longitude is not None
         point = shapely.Point(*_point(place, frame))
-        far = known and shapely.distance(frame.boundary, point) > 0.01
+        far = known and not shapely.distance(frame.boundary, point) <= 0.01
         (outside if far else inside).append(place)
     if not outside:
         return inside, []

@@ -88,7 +88,7 @@ def _opened(name: str, content: bytes, saved_values: bool) -> Any:
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")
             return load_workbook(io.BytesIO(content), data_only=saved_values)
-    except Exception as fault:  # noqa: BLE001 - a damaged part raises whatever it provokes
+    except Exception as fault:  # a damaged part raises whatever it provokes
         message = f"{name} is a damaged workbook ({type(fault).__name__}); save it again."
         raise LabError(message) from fault
 
