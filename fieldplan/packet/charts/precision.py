@@ -1,0 +1,149 @@
+"""Precision and cost against the number of results, with how far off sigma may be."""
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from fieldplan.base.document import Figure
+from fieldplan.packet.drawing import BLUE, INK, LINE, SOFT, VERMILION, new_figure, pens, svg_text
+from fieldplan.packet.sheets.wording import number
+from fieldplan.sizing.model import Size
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+    from matplotlib.figure import Figure as Canvas
+
+
+def precision_curve(size: Size) -> Figure:
+    """Draw precision against n with a band for sigma off by 25 %, the target, and the n needed.
+
+    Parameters
+    ----------
+    size : Size
+        Its ``curve`` is drawn: the half-width of the interval where that was the target, else
+        the standard error. A second panel shows cost where the campaign has one.
+
+    Returns
+    -------
+    Figure
+        165 mm wide, with its caption and its words.
+
+    Raises
+    ------
+    ValueError
+        ``size.curve`` is empty.
+    """
+    if not size.curve:
+        message = f"the size of design {size.design!r} has no curve to draw"
+        raise ValueError(message)
+    with pens():
+        drawing = svg_text(_drawing(size))
+    return Figure(drawing, _caption(size), _words(size))
+
+
+def _caption(size: Size) -> str:
+    """Say what is drawn and what the band means."""
+    what = "Standard error" if size.target_half_width is None else "Half-width of the interval"
+    cost = " and cost" if size.curve[0].cost is not None else ""
+    return (
+        f"{what}{cost} against the number of results. The band shows what happens when "
+        "the true sigma is a quarter smaller or larger than the one used."
+    )
+
+
+def _words(size: Size) -> str:
+    """Say the curve in words for those who cannot see it."""
+    first, last = size.curve[0], size.curve[-1]
+    name, low, high = "standard error", first.standard_error, last.standard_error
+    if size.target_half_width is not None:
+        name, low, high = "half-width", first.half_width, last.half_width
+    return (
+        f"Curve: the {name} falls from {number(float(f'{low:.3g}'))} {size.unit} at "
+        f"{first.n} results to {number(float(f'{high:.3g}'))} {size.unit} at {last.n}; "
+        f"{size.needed} are needed. Target: {size.target}."
+    )
+
+
+def _drawing(size: Size) -> "Canvas":
+    """Lay out one panel, or two when there is a cost."""
+    priced = all(point.cost is not None for point in size.curve)
+    figure = new_figure(165, 98 if priced else 72)
+    if priced:
+        upper = figure.add_axes((0.11, 0.40, 0.86, 0.56))
+        lower = figure.add_axes((0.11, 0.11, 0.86, 0.21), sharex=upper)
+        _cost(lower, size)
+        upper.tick_params(labelbottom=False)
+    else:
+        upper = lower = figure.add_axes((0.11, 0.16, 0.86, 0.78))
+    _precision(upper, size)
+    lower.set_xlabel("number of results, n")
+    return figure
+
+
+def _precision(axes: "Axes", size: Size) -> None:
+    """Draw the curve, its band, the target line and the chosen n."""
+    n = np.array([point.n for point in size.curve])
+    error = np.array([point.standard_error for point in size.curve])
+    low = np.array([point.standard_error_low for point in size.curve])
+    high = np.array([point.standard_error_high for point in size.curve])
+    target, name = size.target_standard_error, "standard error of the mean"
+    if size.target_half_width is not None:
+        # at a given n the half-width is proportional to the standard error
+        widths = np.array([point.half_width for point in size.curve])
+        ratio = widths / error
+        error, low, high = widths, low * ratio, high * ratio
+        target, name = size.target_half_width, "half-width of the interval"
+    axes.fill_between(n, low, high, color=BLUE, alpha=0.18, linewidth=0)
+    axes.plot(n, error, color=BLUE, marker="o", markersize=3)
+    axes.plot(n, high, color=BLUE, linewidth=0.7, linestyle=(0, (4, 2)))
+    axes.plot(n, low, color=BLUE, linewidth=0.7, linestyle=(0, (4, 2)))
+    axes.annotate(
+        "band: sigma 25 % smaller or larger", (0.012, 0.04), xycoords="axes fraction",
+        va="bottom", color=SOFT, fontsize=7.5,
+    )  # fmt: skip
+    axes.set_ylabel(f"{name}\n({size.unit})")
+    axes.set_ylim(0, max(float(high.max()), target or 0.0) * 1.15)
+    axes.set_xlim(n.min() - 0.5, n.max() + 0.5)
+    axes.grid(axis="y", color=LINE, alpha=0.35, linewidth=0.4)
+    if target is not None:
+        axes.axhline(target, color=VERMILION, linewidth=1.0, linestyle=(0, (6, 2)))
+        axes.annotate(
+            f"target {number(target)} {size.unit}", (n.max() + 0.5, target), (0, 2),
+            textcoords="offset points", ha="right", va="bottom", color=VERMILION,
+        )  # fmt: skip
+    _mark(axes, size)
+
+
+def _mark(axes: "Axes", size: Size, *, words: bool = True) -> None:
+    """Mark the n that was chosen, and the plain n where it is another."""
+    marks = [(size.needed, "-", f"n = {size.needed} needed", 0)]
+    if size.plain_n != size.needed:
+        marks.append((size.plain_n, ":", f"n = {size.plain_n} with sigma at face value", 9))
+    for n, style, text, drop in marks:
+        if not size.curve[0].n <= n <= size.curve[-1].n:
+            continue
+        axes.axvline(n, color=INK, linewidth=0.9, linestyle=style)
+        late = n > (size.curve[0].n + size.curve[-1].n) / 2
+        if words:
+            axes.annotate(
+                text, (n, 1.0), (-3 if late else 3, -1 - drop), xycoords=("data", "axes fraction"),
+                textcoords="offset points", ha="right" if late else "left", va="top",
+            )  # fmt: skip
+
+
+def _cost(axes: "Axes", size: Size) -> None:
+    """Draw what each n costs."""
+    axes.plot(
+        [point.n for point in size.curve],
+        [point.cost or 0.0 for point in size.curve],
+        color=INK,
+        marker="s",
+        markersize=2.5,
+    )
+    axes.set_ylabel(f"cost ({size.currency})" if size.currency else "cost")
+    axes.set_ylim(bottom=0)
+    axes.locator_params(axis="x", integer=True)
+    axes.locator_params(axis="y", nbins=4)
+    axes.ticklabel_format(style="plain", useOffset=False)
+    axes.grid(axis="y", color=LINE, alpha=0.35, linewidth=0.4)
+    _mark(axes, size, words=False)
