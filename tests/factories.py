@@ -22,7 +22,8 @@ from fieldplan.campaign.model import (
     Rules,
     Sigma,
 )
-from fieldplan.design.model import Location, Locations
+from fieldplan.design.model import Location, Locations, MeanEstimate, StratumEstimate
+from fieldplan.estimate.model import Bracket, Estimate, Interval
 from fieldplan.frame.model import (
     ExcludedArea,
     Frame,
@@ -34,6 +35,7 @@ from fieldplan.frame.model import (
 )
 from fieldplan.lab.model import Spread, StratumSpread
 from fieldplan.plan.model import Plan
+from fieldplan.returns.model import LocationResult, LostLocation, Returns
 from fieldplan.samples.model import Sample, Samples
 from fieldplan.sizing.model import (
     AssuredSize,
@@ -353,3 +355,119 @@ def make_plan(**changes: object) -> Plan:
     }
     parts.update(changes)
     return Plan(**parts)  # type: ignore[arg-type]
+
+
+def make_returns() -> Returns:
+    """Nine planned results back: one lost, one moved, one non-detect, one not used, a tank."""
+    values = {
+        "QF-A-01": 41.0, "QF-A-02": 66.5, "QF-A-03": 22.0, "QF-A-05": 58.0, "QF-B-01": 120.0,
+        "QF-B-02": 187.0, "QF-B-03": 95.0, "QF-B-04": 2.5, "QF-B-05": 143.0, "TANK": 910.0,
+    }  # fmt: skip
+    sample_ids = {s.location_id: s.sample_id for s in make_samples().samples if not s.qc_of}
+    results = []
+    for place in make_locations().places:
+        name = place.location_id
+        if name not in values:
+            continue
+        detected, moved = name != "QF-B-04", name == "QF-B-03"
+        why_not = {
+            "TANK": "Targeted places never enter the mean.",
+            "QF-B-05": "The jar arrived broken; the laboratory reported it all the same.",
+        }.get(name, "")
+        latitude, longitude = degrees(place.easting + 9, place.northing - 6)
+        results.append(
+            LocationResult(
+                location_id=name,
+                stratum=place.stratum,
+                location_class=place.location_class,
+                sample_ids=(sample_ids[name],),
+                as_reported=(f"{values[name]:g}" if detected else "<5",),
+                low=values[name] if detected else 0.0,
+                half=values[name],
+                high=values[name] if detected else 5.0,
+                detected=detected,
+                used=not why_not,
+                why_not=why_not,
+                latitude=place.latitude,
+                longitude=place.longitude,
+                actual_latitude=latitude if moved else None,
+                actual_longitude=longitude if moved else None,
+                moved_m=10.8 if moved else None,
+                stands_in_for="QF-A-04" if name == "QF-A-05" else "",
+            )
+        )
+    return Returns(
+        analyte="lead",
+        results=tuple(results),
+        lost=(LostLocation("QF-A-04", "meadow", "no-access", "QF-A-05"),),
+        matched=11,
+        planned_samples=11,
+        extra=0,
+        needs_you=(),
+        lab_file="results.csv",
+        lab_sha256="1" * 64,
+        field_file="field_return.csv",
+        field_sha256="2" * 64,
+        duplicate_pairs=(("QF-A-02", 64.0, 69.0),),
+        notes=("QF-B-03 was taken 10.8 m from its planned place.",),
+    )
+
+
+def make_estimate(**changes: object) -> Estimate:
+    """The estimate that goes with ``make_returns``, worked by hand in the comments.
+
+    meadow (41, 66.5, 22, 58): mean 46.875, s² 387.396; yard (120, 187, 95, 2.5): mean 101.125,
+    s² 5831.729; weights 0.711864 and 0.288136. SE² = Σ w² s²/n = 49.0783 + 121.0406.
+    """
+    strata = (
+        StratumEstimate("meadow", 4, 46.875, 19.6824, 16800 / 23600, 49.0783),
+        StratumEstimate("yard", 4, 101.125, 76.3658, 6800 / 23600, 121.0406),
+    )
+    parts: dict[str, object] = {
+        "analyte": "lead",
+        "unit": "mg/kg",
+        "mean": MeanEstimate(
+            n=8,
+            mean=62.506,
+            standard_error=13.043,
+            degrees_of_freedom=5.089,
+            strata=strata,
+            method="Weighted mean of the strata; Satterthwaite degrees of freedom.",
+        ),
+        "interval": Interval("two-sided", 0.95, 29.15, 95.86),
+        "other_interval": Interval("upper-limit", 0.95, None, 88.69),
+        "bracket": Bracket(
+            mean_low=62.326,
+            mean_half=62.506,
+            mean_high=62.686,
+            interval_low=Interval("two-sided", 0.95, 28.56, 96.10),
+            interval_half=Interval("two-sided", 0.95, 29.15, 95.86),
+            interval_high=Interval("two-sided", 0.95, 29.75, 95.63),
+        ),
+        "planned_standard_error": 8.8,
+        "achieved_standard_error": 13.043,
+        "why_different": ("The yard spread more than was assumed: s 76 instead of 45.",),
+        "level_sentence": "The interval lies below the action level of 150 mg/kg.",
+        "population_sentence": "The mean speaks for 98.3 % of the site.",
+        "coverage_sentence": "At this n a t interval assumes a mean near normal.",
+        "steps": (
+            Step(
+                symbol="SE",
+                meaning="Standard error of the weighted mean",
+                formula="SE = √(Σ w²·s²/n)",
+                inputs=(
+                    Quantity("s meadow", "standard deviation in the meadow", 19.6824, "mg/kg"),
+                    Quantity("s yard", "standard deviation in the yard", 76.3658, "mg/kg"),
+                ),
+                unrounded=13.043,
+                rounded=13.0,
+                unit="mg/kg",
+                source="Cochran 1977, Sampling Techniques, ch. 5",
+            ),
+        ),
+        "changes": (),
+        "returns": make_returns(),
+        "sentences": ("The site mean of lead is 62.5 mg/kg; 95 % interval 29.15 to 95.86.",),
+    }
+    parts.update(changes)
+    return Estimate(**parts)  # type: ignore[arg-type]
