@@ -49,7 +49,7 @@ def read_geojson(path: Path) -> list[ReadPoint]:
     """
     from pyogrio import read_dataframe
 
-    table = read_dataframe(path, columns=["short_name", "location_id"])
+    table = read_dataframe(path, columns=["short_name", "location_id"], DATE_AS_STRING="YES")
     columns = (table["short_name"], table["location_id"], table.geometry)
     return [
         ReadPoint(name, location, point.y, point.x)

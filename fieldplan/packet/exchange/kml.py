@@ -132,7 +132,7 @@ def _add_location(folder: ET.Element, row: PointRow) -> None:
     cells = row.cells()
     placemark = ET.SubElement(folder, "Placemark")
     _text(placemark, "name", str(cells["short_name"]))
-    told = [(name, text_of(cells[name])) for name in CREW_COLUMNS]
+    told = [(name, text_of(name, cells[name])) for name in CREW_COLUMNS]
     lines = [f"{name}: {escape(text)}" for name, text in told if text]
     _text(placemark, "description", "<br>".join(lines))
     _text(placemark, "styleUrl", f"#{row.location.location_class}")

@@ -98,7 +98,10 @@ def _csv_bytes(columns: Sequence[str], rows: Iterable[Sequence[Cell]]) -> bytes:
     writer = csv.writer(text)
     writer.writerow(columns)
     for row in rows:
-        writer.writerow([spreadsheet_cell(v) if isinstance(v, str) else text_of(v) for v in row])
+        named = zip(columns, row, strict=True)
+        writer.writerow(
+            [spreadsheet_cell(v) if isinstance(v, str) else text_of(name, v) for name, v in named]
+        )
     return text.getvalue().encode("utf-8-sig")
 
 

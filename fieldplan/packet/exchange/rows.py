@@ -1,6 +1,7 @@
 """What every point file says of a location: one row, made once from the plan."""
 
 from dataclasses import dataclass
+from decimal import Decimal
 
 from fieldplan.design.model import Location
 from fieldplan.frame.projection import dms, site_zone, utm
@@ -18,6 +19,8 @@ CREW_COLUMNS = (
 
 OFFICE_COLUMNS = (*CREW_COLUMNS, "inclusion_probability", "weight")
 """The crew's columns and what the estimate needs."""
+
+DECIMALS = {"latitude": 7, "longitude": 7, "easting": 1, "northing": 1}
 
 Cell = str | int | float | None
 
@@ -64,7 +67,7 @@ class PointRow:
             "short_name": plain(place.short_name),
             "class": place.location_class,
             "stratum": plain(place.stratum),
-            "list_order": place.list_order or None,
+            "list_order": place.list_order,
             "alternate_for": plain(place.alternate_for),
             "latitude": place.latitude,
             "longitude": place.longitude,
@@ -128,16 +131,21 @@ def point_rows(plan: Plan) -> tuple[PointRow, ...]:
     return tuple(rows)
 
 
-def text_of(value: Cell) -> str:
-    """Write a cell as text: degrees, metres and shares without exponents, nothing as empty.
+def text_of(column: str, value: Cell) -> str:
+    """Write a cell as text: coordinates with fixed decimals, no exponents, nothing as empty.
 
     Examples
     --------
-    >>> text_of(None), text_of(3), text_of(0.0000123), text_of("a")
-    ('', '3', '0.0000123', 'a')
+    >>> text_of("latitude", 52.1), text_of("easting", 575365.8), text_of("reason", None)
+    ('52.1000000', '575365.8', '')
+    >>> text_of("list_order", 3), text_of("depth_top_m", 0.0), text_of("weight", 1.23e-05)
+    ('3', '0', '0.0000123')
     """
     if value is None:
         return ""
+    if column in DECIMALS:
+        return f"{value:.{DECIMALS[column]}f}"
     if isinstance(value, float):
-        return f"{value:.12f}".rstrip("0").rstrip(".")
+        digits = f"{Decimal(repr(value)):f}"
+        return digits.removesuffix(".0")
     return str(value)
