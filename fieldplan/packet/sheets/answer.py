@@ -1,0 +1,120 @@
+"""Page one: how many, where, how sure, and what is still open."""
+
+from fieldplan.base.document import Block, Bullets, Heading, Paragraph, Table
+from fieldplan.packet.sheets.amounts import counted, percent, rounded
+from fieldplan.packet.sheets.plan_words import (
+    assumed_lines,
+    by_stratum,
+    chance_sentence,
+    jars,
+    level_words,
+    mean_of,
+    several_strata,
+    target_sentence,
+)
+from fieldplan.plan.model import Plan
+
+
+def answer_blocks(plan: Plan) -> list[Block]:
+    """Compose page one."""
+    blocks: list[Block] = [Paragraph(visit_sentence(plan), tone="answer")]
+    stamps = (*alarm_lines(plan), *assumed_lines(plan))
+    if stamps:
+        blocks.append(Bullets(stamps))
+    blocks += [Paragraph(target_sentence(plan)), Paragraph(chance_sentence(plan))]
+    blocks += [Paragraph(sentence) for sentence in plan.frame.population.sentences[:1]]
+    blocks += [stratum_table(plan), *extra_lines(plan), *open_blocks(plan)]
+    blocks.append(
+        Paragraph(
+            "This sheet is a summary. It is no substitute for the documents that a regulator "
+            "requires, for a health and safety plan, or for a permit.",
+            tone="note",
+        )
+    )
+    return blocks
+
+
+def visit_sentence(plan: Plan) -> str:
+    """Say how many locations to visit, for what."""
+    size = plan.size
+    where = by_stratum(plan)
+    visit = f"Visit {counted(size.planned, 'location')}" + (f": {where}" if where else "")
+    aim = f"{visit}. They serve to estimate the {mean_of(plan.campaign)}"
+    level = level_words(plan.campaign)
+    aim += f", to be set against {level}." if level else "."
+    spare = size.planned - size.needed
+    if spare > 0:
+        aim += f" {size.needed} results are needed; {spare} more allow for losses."
+    elif spare == 0:
+        aim += f" {size.needed} results are needed; nothing is added for losses."
+    return aim
+
+
+def alarm_lines(plan: Plan) -> tuple[str, ...]:
+    """Return what the campaign raises an alarm about, such as a limit above the level."""
+    from fieldplan.campaign.alarms import alarms
+
+    return tuple(alarms(plan.campaign))
+
+
+def stratum_table(plan: Plan) -> Table:
+    """Set how many locations go where, and for how much each part counts."""
+    unit = plan.size.unit
+    name = "Stratum" if several_strata(plan) else "Population"
+    columns = (
+        name,
+        "Share",
+        f"Standard deviation ({unit})",
+        "Results needed",
+        "Locations",
+        "Alternates",
+    )
+    rows = [
+        (
+            entry.stratum,
+            percent(entry.weight),
+            rounded(entry.sigma) + (" ASSUMED" if is_assumed(plan, entry.stratum) else ""),
+            f"{entry.needed}" + (" (floor)" if entry.floor_applied else ""),
+            str(entry.planned),
+            str(entry.alternates),
+        )
+        for entry in plan.size.strata
+    ]
+    if several_strata(plan):
+        alternates = sum(entry.alternates for entry in plan.size.strata)
+        rows.append(
+            ("All", "100 %", "", str(plan.size.needed), str(plan.size.planned), str(alternates))
+        )
+    return Table(columns, tuple(rows), numeric=columns[1:])
+
+
+def is_assumed(plan: Plan, stratum: str) -> bool:
+    """Tell whether the spread of a stratum was assumed."""
+    return any(s.stratum == stratum and s.assumed for s in plan.spread.strata)
+
+
+def extra_lines(plan: Plan) -> list[Block]:
+    """Say how many jars, targeted places and how much money."""
+    lines = [f"To take at the planned locations: {jars(plan)}."]
+    targeted = plan.locations.of_class("targeted")
+    if targeted:
+        lines.append(
+            f"{counted(len(targeted), 'targeted place')} besides, chosen by judgement: "
+            "visited and reported, never in the mean."
+        )
+    if plan.size.cost is not None:
+        lines.append(f"Expected cost: {plan.size.currency} {plan.size.cost:.0f}.")
+    return [Bullets(tuple(lines))]
+
+
+def open_blocks(plan: Plan) -> list[Block]:
+    """List what is still open, hold points first."""
+    holding = [c for c in plan.open_items if c.holds_work]
+    others = [c for c in plan.open_items if not c.holds_work]
+    blocks: list[Block] = [Heading("Still open", level=2)]
+    if not plan.open_items:
+        return [*blocks, Paragraph("Nothing: a reference was typed for every topic raised.")]
+    items = [f"HOLD POINT, no work before it is settled: {c.topic}. {c.status}." for c in holding]
+    if others:
+        items.append("To settle before field work: " + "; ".join(c.topic for c in others) + ".")
+    return [*blocks, Bullets(tuple(items))]

@@ -1,0 +1,110 @@
+"""The printable field return: one line a sample, blanks for what the crew writes."""
+
+from fieldplan.base.document import Block, Bullets, Document, Facts, Heading, Paragraph, Table
+from fieldplan.design.model import Location, LocationClass
+from fieldplan.packet.sheets.amounts import days
+from fieldplan.packet.sheets.field_section import deviation_rule, reason_table
+from fieldplan.packet.sheets.plan_sheet import subtitle
+from fieldplan.packet.sheets.plan_words import several_strata
+from fieldplan.plan.model import Plan
+from fieldplan.samples.model import Sample
+
+COLUMNS = (
+    "Location",
+    "Sample",
+    "Planned position",
+    "Taken?",
+    "Date and time",
+    "Actual position",
+    "Replaced by",
+    "Reason",
+    "Initials",
+)
+
+TITLES: dict[LocationClass, str] = {
+    "random": "Locations to visit",
+    "targeted": "Targeted places",
+    "alternate": "Alternates: only in place of a location that cannot be sampled",
+}
+
+
+def field_form(plan: Plan) -> Document:
+    """Compose the form; nothing on it tells a duplicate from any other sample.
+
+    Parameters
+    ----------
+    plan : Plan
+
+    Returns
+    -------
+    Document
+        Planned and targeted locations first, alternates apart, then the rule and the codes.
+    """
+    blocks: list[Block] = [*hold_blocks(plan), Facts(head_rows(plan))]
+    for location_class, title in TITLES.items():
+        places = plan.locations.of_class(location_class)
+        if places:
+            blocks += [Heading(title), sample_table(plan, places)]
+    blocks += blank_blocks(plan)
+    blocks += [
+        Heading("When a location cannot be sampled as planned"),
+        Bullets(deviation_rule(plan), numbered=True),
+        reason_table(),
+        Paragraph(
+            "Correct with a single line through, initials and date; nothing is overwritten.",
+            tone="note",
+        ),
+    ]
+    return Document(
+        title=plan.campaign.plan.title,
+        subtitle=subtitle(plan, "Field return"),
+        plan_id=plan.campaign.plan.id,
+        revision_name=plan.revision_name,
+        status=plan.status,
+        blocks=tuple(blocks),
+    )
+
+
+def hold_blocks(plan: Plan) -> list[Block]:
+    """Set the open hold points at the head, so that nobody starts without seeing them."""
+    return [c for c in plan.open_items if c.holds_work]
+
+
+def head_rows(plan: Plan) -> tuple[tuple[str, str], ...]:
+    """Set what the crew needs at hand, and blanks for who was there."""
+    field, table = plan.campaign.field, plan.campaign.plan
+    return (
+        ("Days", days(table.fieldwork_from, table.fieldwork_to)),
+        ("Method", field.method or "ask the office"),
+        ("Contact", field.contact or "ask the office"),
+        ("Clock", f"UTC{field.utc_offset}" if field.utc_offset else "UTC offset: ________"),
+        ("Crew and receiver", "______________________________"),
+    )
+
+
+def sample_table(plan: Plan, places: tuple[Location, ...]) -> Table:
+    """Set one line for each sample of the places, in the order of its id."""
+    rows = []
+    for place in places:
+        samples = sorted(plan.samples.at(place.location_id), key=lambda s: s.sample_id)
+        rows += [sample_row(plan, place, sample) for sample in samples]
+    return Table(COLUMNS, tuple(rows))
+
+
+def sample_row(plan: Plan, place: Location, sample: Sample) -> tuple[str, ...]:
+    """Set one sample with blanks."""
+    name = place.location_id
+    if several_strata(plan):
+        name += f" ({place.stratum})"
+    position = f"{place.latitude:.6f}, {place.longitude:.6f}"
+    return (name, sample.sample_id, position, *("",) * 6)
+
+
+def blank_blocks(plan: Plan) -> list[Block]:
+    """Set the samples that belong to no location: blanks, whose kind the crew must know."""
+    blanks = [sample for sample in plan.samples.samples if not sample.location_id]
+    if not blanks:
+        return []
+    columns = ("Sample", "Kind", "Taken?", "Date and time", "Initials")
+    rows = tuple((sample.sample_id, sample.role, "", "", "") for sample in blanks)
+    return [Heading("Blanks"), Table(columns, rows)]

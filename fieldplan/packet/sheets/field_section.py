@@ -1,0 +1,69 @@
+"""What the crew may change, how it is recorded, and what has to be settled first."""
+
+from fieldplan.base.document import Block, Bullets, Facts, Heading, Paragraph, Table
+from fieldplan.packet.sheets.amounts import BLANK, days
+from fieldplan.packet.sheets.plan_words import REASONS
+from fieldplan.packet.sheets.wording import number
+from fieldplan.plan.model import Plan
+
+
+def field_blocks(plan: Plan) -> list[Block]:
+    """Set the deviation rule with its reason codes."""
+    field, table = plan.campaign.field, plan.campaign.plan
+    accuracy = f"{number(field.position_accuracy_m)} m" if field.position_accuracy_m else BLANK
+    facts = Facts(
+        (
+            ("Days", days(table.fieldwork_from, table.fieldwork_to)),
+            ("Position accuracy of the receiver", accuracy),
+            ("Contact", field.contact or BLANK),
+            ("Clock", f"UTC{field.utc_offset}" if field.utc_offset else BLANK),
+        )
+    )
+    return [
+        facts,
+        Heading("When a location cannot be sampled as planned", level=2),
+        Bullets(deviation_rule(plan), numbered=True),
+        reason_table(),
+    ]
+
+
+def deviation_rule(plan: Plan) -> tuple[str, ...]:
+    """Say how far a location may move, what replaces it and what is written down."""
+    field = plan.campaign.field
+    if plan.frame.kind == "list":
+        first = "A unit of the list is never moved."
+    elif field.offset_within_m:
+        first = f"The location may move by up to {number(field.offset_within_m)} m."
+    else:
+        first = "The location may not be moved."
+    steps = [f"{first} {field.offset_rule}".strip()]
+    if plan.locations.of_class("alternate"):
+        steps.append(
+            "Where that is not enough, take the next unused alternate of the same stratum, in "
+            "its order; never the nearest convenient spot."
+        )
+    steps += [
+        "The crew's judgement that a place is unfit to work at always comes before the design.",
+        "Write the actual position, the time, the reason code and initials on the return. "
+        "Targeted places are not replaced.",
+        f"In doubt, stop and call: {field.contact or 'the contact is not typed yet'}.",
+    ]
+    return tuple(steps)
+
+
+def reason_table() -> Table:
+    """Set the reason codes of the field return."""
+    return Table(("Reason code", "Use it when"), tuple(REASONS.items()))
+
+
+def caution_blocks(plan: Plan) -> list[Block]:
+    """Set every caution that the facts raise; none instructs, each defers."""
+    blocks: list[Block] = [
+        Paragraph(
+            "Raised by facts of the campaign. Each is open until a reference, its date and its "
+            "expiry are typed in the campaign file, and open again when it has expired. The "
+            "rules named are examples of where to ask; which of them apply is for the user and "
+            "the authority to say."
+        )
+    ]
+    return [*blocks, *plan.cautions]

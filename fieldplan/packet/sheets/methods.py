@@ -1,0 +1,172 @@
+"""What the design can and cannot tell, and a paragraph for the report."""
+
+from math import sqrt
+
+from fieldplan.base.document import Block, Bullets, Heading, Paragraph
+from fieldplan.packet.sheets.amounts import counted, listed, percent, rounded
+from fieldplan.packet.sheets.plan_words import LAYOUTS, mean_of, several_strata
+from fieldplan.packet.sheets.rules import NON_DETECTS, rules_fingerprint
+from fieldplan.plan.model import Plan
+
+
+def limits_blocks(plan: Plan) -> list[Block]:
+    """Say what the results will be able to say and what not."""
+    return [
+        Heading("It will tell", level=2),
+        Bullets(can_tell(plan)),
+        Heading("It will not tell", level=2),
+        Bullets(cannot_tell(plan)),
+    ]
+
+
+def can_tell(plan: Plan) -> tuple[str, ...]:
+    """List what the design supports."""
+    lines = [
+        f"The {mean_of(plan.campaign)} over the population of section 3, and how far from the "
+        "true mean it may lie."
+    ]
+    if plan.campaign.deciding_analyte.action_level is not None:
+        lines.append(
+            "Whether the interval for the mean lies below, spans or lies above the action level. "
+            "What follows from that is for "
+            f"{plan.campaign.plan.decides or 'whoever decides'} to say."
+        )
+    if several_strata(plan):
+        lines.append("A mean for each stratum, with a wider interval than the site's.")
+    return tuple(lines)
+
+
+def cannot_tell(plan: Plan) -> tuple[str, ...]:
+    """List what the design does not support."""
+    depth = plan.campaign.frame[0].depth_bottom_m is not None
+    lines = [
+        "The highest value, or the share of the site above a level.",
+        "Anything outside the population: "
+        + listed(
+            [
+                "beyond the list" if plan.frame.kind == "list" else "beyond the boundary",
+                *(["in the parts left out"] if plan.frame.excluded else []),
+                *(["at other depths"] if depth else []),
+                "at other times",
+            ]
+        )
+        + ".",
+        patch_line(plan),
+    ]
+    if plan.locations.of_class("targeted"):
+        lines.append("The mean from targeted places: they were chosen because they differ.")
+    return tuple(lines)
+
+
+def patch_line(plan: Plan) -> str:
+    """Say which patches, or which units, can be missed."""
+    if plan.frame.kind == "list":
+        missed = round(plan.frame.population.net) - plan.size.planned
+        if missed <= 0:
+            return "What a unit would give at another time: place error is nil, the others remain."
+        return f"Any single unit that was not drawn: {missed} of the list are not visited."
+    spacing = sqrt(plan.frame.population.net / plan.size.planned)
+    return (
+        f"Where a small patch lies: locations are about {rounded(spacing, digits=2)} m apart on "
+        "average, and a patch smaller than that can be missed altogether."
+    )
+
+
+def methods_blocks(plan: Plan) -> list[Block]:
+    """Set the methods paragraph."""
+    return [Paragraph("Ready to paste into the report:"), Paragraph(methods_paragraph(plan))]
+
+
+def methods_paragraph(plan: Plan) -> str:
+    """Write how the campaign was planned as one paragraph in the past tense."""
+    sentences = (
+        drawn_sentence(plan),
+        number_sentence(plan),
+        spread_sentence(plan),
+        quality_sentence(plan),
+        rules_sentence(plan),
+        f"The plan is {plan.revision_name}; it was drawn with seed {plan.locations.seed} by "
+        f"version {plan.locations.version} of the procedure of fieldplan {plan.fieldplan_version}.",
+    )
+    return " ".join(sentence for sentence in sentences if sentence)
+
+
+def drawn_sentence(plan: Plan) -> str:
+    """Say how locations were drawn, from what."""
+    design = plan.campaign.design[0]
+    count = counted(plan.size.planned, "location")
+    if plan.frame.kind == "list":
+        total = round(plan.frame.population.net)
+        if design.layout == "census":
+            return f"All {total} units of the list were to be sampled."
+        how = "by simple random sampling without replacement"
+        return f"{count} were drawn {how} from a list of {total} units."
+    how = {
+        "simple-random": "by simple random sampling",
+        "stratified": "by stratified random sampling",
+    }.get(design.layout, f"as a {LAYOUTS[design.layout]}")
+    hectares = plan.frame.population.net / 1e4
+    share = percent(plan.frame.population.share)
+    line = f"{count} were drawn {how} from {hectares:.2f} ha ({share} of the site"
+    if several_strata(plan):
+        parts = [f"{entry.stratum} {entry.planned}" for entry in plan.size.strata]
+        return f"{line}; {', '.join(parts)}; {design.allocation} allocation)."
+    return f"{line})."
+
+
+def number_sentence(plan: Plan) -> str:
+    """Say for which target, and how sure."""
+    size = plan.size
+    line = f"The number was chosen for a target of {size.target}"
+    if size.assurance is None:
+        return f"{line}, taking the spread at face value."
+    chance = percent(size.assurance)
+    return f"{line}, met with a chance of {chance} given the results behind the spread."
+
+
+def spread_sentence(plan: Plan) -> str:
+    """Say where the standard deviation came from."""
+    entries = plan.spread.strata
+    values = listed([f"{rounded(e.sigma)} {plan.size.unit} ({e.stratum})" for e in entries])
+    if len(entries) == 1:
+        values = f"{rounded(entries[0].sigma)} {plan.size.unit}"
+    if all(entry.assumed for entry in entries):
+        return f"The standard deviation was assumed, not measured: {values}."
+    return f"The standard deviation was taken as {values}, from {sources(plan)}."
+
+
+def sources(plan: Plan) -> str:
+    """Name the sources of the spread once each, with the number of results."""
+    total = sum(entry.results or 0 for entry in plan.spread.strata)
+    named = listed(list(dict.fromkeys(entry.source for entry in plan.spread.strata)))
+    return f"{named} ({total} results)" if total else named
+
+
+def quality_sentence(plan: Plan) -> str:
+    """Say which control samples were planned."""
+    if not plan.size.qc:
+        return ""
+    counts = [counted(entry.count, entry.kind) for entry in plan.size.qc]
+    return f"Quality control samples, counted apart: {listed(counts)}."
+
+
+def rules_sentence(plan: Plan) -> str:
+    """Say that the rules were fixed before results, and which interval they ask for."""
+    rules = plan.campaign.rules
+    by = f" by {rules.fixed_by}" if rules.fixed_by else ""
+    on = f" on {rules.fixed_on}" if rules.fixed_on else ""
+    kind = {
+        "two-sided": "two-sided interval",
+        "upper-limit": "upper limit",
+        "lower-limit": "lower limit",
+    }[rules.interval]
+    repeated = {
+        "average": "duplicates are averaged",
+        "first": "the first sample of a location alone counts",
+    }[rules.duplicates]
+    return (
+        f"These rules were fixed{by}{on}, before any result was seen: the "
+        f"{percent(rules.confidence)} {kind} for the mean is given; "
+        f"{NON_DETECTS[rules.non_detects].replace('; ', ' and ')}; {repeated} "
+        f"(fingerprint {rules_fingerprint(rules)})."
+    )

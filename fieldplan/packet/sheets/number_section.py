@@ -1,0 +1,91 @@
+"""How uneven the site is, and how many results the target takes."""
+
+from fieldplan.base.document import Block, Bullets, Facts, Heading, Table, Working
+from fieldplan.packet.sheets.amounts import percent, rounded
+from fieldplan.packet.sheets.plan_words import assumed_lines
+from fieldplan.plan.model import Plan
+
+
+def spread_blocks(plan: Plan) -> list[Block]:
+    """Say what the pilot says, with its dot plot, or that the spread was typed."""
+    spread = plan.spread
+    blocks: list[Block] = []
+    if spread.sentences:
+        blocks.append(Bullets(spread.sentences))
+    if assumed_lines(plan):
+        blocks.append(Bullets(assumed_lines(plan)))
+    if any(entry.values for entry in spread.strata) or (spread.site and spread.site.values):
+        from fieldplan.packet.charts import pilot_dots
+
+        blocks.append(pilot_dots(spread))
+    blocks.append(spread_table(plan))
+    if spread.notes:
+        blocks.append(Bullets(spread.notes))
+    return blocks
+
+
+def spread_table(plan: Plan) -> Table:
+    """Set the standard deviation that sizing used, and where it comes from."""
+    columns = ("Part", f"Standard deviation ({plan.size.unit})", "Results behind it", "Source")
+    rows = tuple(
+        (
+            entry.stratum,
+            rounded(entry.sigma),
+            "–" if entry.results is None else str(entry.results),
+            entry.source,
+        )
+        for entry in plan.spread.strata
+    )
+    return Table(columns, rows, numeric=columns[1:3])
+
+
+def number_blocks(plan: Plan) -> list[Block]:
+    """Show the working, how sure the number is, the curve, and the conditions."""
+    from fieldplan.packet.charts import precision_curve
+
+    size = plan.size
+    blocks: list[Block] = [Facts(promise_rows(plan))]
+    if size.assured:
+        blocks.append(assurance_table(plan))
+    if size.curve:
+        blocks.append(precision_curve(size))
+    blocks += [
+        Heading("The working", level=2),
+        Working(size.steps),
+        Heading("Under what condition", level=2),
+        Bullets(size.conditions),
+    ]
+    return blocks if size.conditions else blocks[:-2]
+
+
+def promise_rows(plan: Plan) -> tuple[tuple[str, str], ...]:
+    """Set target, counts, loss and chooser as label and value."""
+    size, loss = plan.size, plan.campaign.loss
+    chosen = "plain count" if size.assurance is None else percent(size.assurance)
+    rows = [
+        ("Target", size.target),
+        ("Assurance", f"{chosen}, chosen by {size.assurance_chosen_by or 'nobody named'}"),
+        ("Results by the plain formula", str(size.plain_n)),
+        ("Results needed", str(size.needed)),
+        ("Locations to visit", str(size.planned)),
+    ]
+    if loss.share or loss.by_stratum:
+        shares = [percent(loss.share)] if loss.share else []
+        shares += [f"{percent(share)} in {name}" for name, share in loss.by_stratum.items()]
+        why = f" ({loss.reason})" if loss.reason else ""
+        rows.append(("Allowance for losses", ", ".join(shares) + why))
+    return tuple(rows)
+
+
+def assurance_table(plan: Plan) -> Table:
+    """Set the number of results against the chance that it meets the target."""
+    size = plan.size
+    rows = [(str(entry.n), percent(entry.assurance)) for entry in size.assured]
+    if size.chance_plain is not None:
+        rows.insert(0, (str(size.plain_n), f"{percent(size.chance_plain)} (the plain formula)"))
+    return Table(
+        ("Results", "Chance that they meet the target"),
+        tuple(rows),
+        caption="How sure the number is, given how few results stand behind the spread",
+        numeric=("Results",),
+    )

@@ -1,0 +1,155 @@
+"""What a plan is called in the sentences of its sheets."""
+
+from fieldplan.campaign.model import Analyte, Campaign
+from fieldplan.packet.sheets.amounts import counted, listed, percent, rounded
+from fieldplan.packet.sheets.wording import number
+from fieldplan.plan.model import Plan
+
+LAYOUTS = {
+    "simple-random": "simple random",
+    "stratified": "stratified random",
+    "square-grid": "systematic square grid with a random origin and rotation",
+    "triangular-grid": "systematic triangular grid with a random origin and rotation",
+    "census": "every unit of the list (census)",
+}
+
+CLASSES = {
+    "random": "drawn at random",
+    "alternate": "alternate, ranked",
+    "targeted": "targeted, never in the mean",
+}
+
+REASONS = {
+    "no-access": "the way there is barred, or the owner refused",
+    "obstructed": "something stands or lies there",
+    "unsafe": "the crew judged it unfit to work at; this always outweighs the design",
+    "outside": "the place is not part of the population",
+    "dry": "no water",
+    "frozen": "ground or water is frozen",
+    "no-recovery": "refusal, or too little material came up",
+    "broken": "the jar broke or leaked",
+    "lost": "the jar or the place cannot be found",
+    "other": "anything else; write it in the note",
+}
+
+
+def several_strata(plan: Plan) -> bool:
+    """Tell whether the population is split into more than one stratum."""
+    return len(plan.frame.strata) > 1
+
+
+def analyte_name(analyte: Analyte) -> str:
+    """Name the analyte as in running text.
+
+    Examples
+    --------
+    >>> analyte_name(Analyte(id="lead", name="Lead", unit="mg/kg", matrix="soil"))
+    'lead'
+    >>> analyte_name(Analyte(id="x", name="PCB-180", unit="mg/kg"))
+    'PCB-180'
+    """
+    name = analyte.name or analyte.id
+    return name[0].lower() + name[1:] if name[1:].islower() else name
+
+
+def mean_of(campaign: Campaign) -> str:
+    """Say which mean is estimated.
+
+    Examples
+    --------
+    >>> from tests.factories import make_campaign
+    >>> mean_of(make_campaign())
+    'mean lead in soil (dry weight)'
+    """
+    analyte = campaign.deciding_analyte
+    matrix = f" in {analyte.matrix}" if analyte.matrix else ""
+    kinds = [kind for kind in (analyte.basis, analyte.fraction) if kind]
+    return f"mean {analyte_name(analyte)}{matrix}" + (f" ({', '.join(kinds)})" if kinds else "")
+
+
+def places_word(plan: Plan) -> str:
+    """Name what n counts, in the plural."""
+    return "units of the list" if plan.frame.kind == "list" else "locations"
+
+
+def by_stratum(plan: Plan) -> str:
+    """Say how many locations go to each stratum; empty where there is one."""
+    if not several_strata(plan):
+        return ""
+    return listed([f"{entry.planned} in {entry.stratum}" for entry in plan.size.strata])
+
+
+def target_sentence(plan: Plan) -> str:
+    """Say what is promised: the target, and what is expected with the spread used."""
+    size = plan.size
+    expected = (
+        f"With the spread used here, {size.needed} results give a standard error of "
+        f"{rounded(size.standard_error)} {size.unit}{interval_words(plan)}."
+    )
+    return f"Target: {size.target}. {expected}"
+
+
+def interval_words(plan: Plan) -> str:
+    """Say how far the interval or limit is expected to reach."""
+    size = plan.size
+    reach = f"{rounded(size.half_width)} {size.unit}"
+    share = percent(size.confidence)
+    if size.interval == "two-sided":
+        return f" and a {share} interval of about ± {reach}"
+    side = "above" if size.interval == "upper-limit" else "below"
+    return f" and a {share} {size.interval.replace('-', ' ')} about {reach} {side} the mean"
+
+
+def chance_sentence(plan: Plan) -> str:
+    """Say how sure it is that the number of locations is enough, and who chose that."""
+    size = plan.size
+    chooser = size.assurance_chosen_by or "nobody named"
+    if size.assurance is None:
+        chosen = f"The plain count of {size.plain_n} results was chosen by {chooser}."
+        if size.chance_plain is None:
+            return (
+                f"{chosen} Nothing says how well the spread is known, so the chance that the "
+                "count is enough cannot be given; with a measured spread a plain count is enough "
+                "in about half of campaigns."
+            )
+        return f"{chosen} The chance that it is enough is {percent(size.chance_plain)}."
+    if size.chance_needed is None or size.chance_plain is None:
+        return f"An assurance of {percent(size.assurance)} was chosen by {chooser}."
+    return (
+        f"The chance that {size.needed} results meet the target is "
+        f"{percent(size.chance_needed)}; {chooser} chose an assurance of "
+        f"{percent(size.assurance)}. The plain count of {size.plain_n} would be enough with a "
+        f"chance of only {percent(size.chance_plain)}."
+    )
+
+
+def level_words(campaign: Campaign) -> str:
+    """Name the action level with its source; empty without one."""
+    analyte = campaign.deciding_analyte
+    if analyte.action_level is None:
+        return ""
+    source = f" ({analyte.action_level_source})" if analyte.action_level_source else ""
+    return f"{number(analyte.action_level)} {analyte.unit}{source}"
+
+
+def assumed_lines(plan: Plan) -> tuple[str, ...]:
+    """List all that was assumed and not measured, one stamped line each."""
+    lines = []
+    for entry in plan.spread.strata:
+        if entry.assumed:
+            lines.append(
+                f"ASSUMED: the standard deviation of {number(entry.sigma)} {plan.size.unit} in "
+                f"{entry.stratum} is a guess, not a measurement."
+            )
+    if plan.frame.boundary_assumed:
+        lines.append("ASSUMED: the boundary is a sketch, not a survey.")
+    return tuple(lines)
+
+
+def jars(plan: Plan) -> str:
+    """Count the samples of planned locations and the control samples beside them."""
+    planned = {place.location_id for place in plan.locations.of_class("random")}
+    taken = [s for s in plan.samples.samples if s.location_id in planned and not s.qc_of]
+    control = sum(entry.count for entry in plan.size.qc)
+    line = counted(len(taken), "sample")
+    return f"{line} and {counted(control, 'control sample')}" if control else line

@@ -1,0 +1,162 @@
+"""The results sheet: the mean and its interval first, then how it came about."""
+
+from fieldplan.base.document import (
+    Block,
+    Bullets,
+    Document,
+    Facts,
+    Heading,
+    PageBreak,
+    Paragraph,
+    SignOff,
+    Verbatim,
+    Working,
+)
+from fieldplan.estimate.model import Estimate
+from fieldplan.packet.sheets.plan_sheet import subtitle
+from fieldplan.packet.sheets.results_tables import (
+    bracket_table,
+    change_blocks,
+    promise_table,
+    result_rows,
+    stratum_table,
+)
+from fieldplan.packet.sheets.returned import field_blocks, location_table, match_sentence
+from fieldplan.packet.sheets.rules import rules_blocks
+from fieldplan.plan.model import Plan
+
+
+def results_sheet(plan: Plan, estimate: Estimate) -> Document:
+    """Compose the results sheet.
+
+    Parameters
+    ----------
+    plan : Plan
+        Read from the packet.
+    estimate : Estimate
+
+    Returns
+    -------
+    Document
+        "Changes made after results" is always there, even when there were none.
+    """
+    sections: tuple[tuple[str, list[Block]], ...] = (
+        ("Planned against achieved", promise_blocks(estimate)),
+        ("By stratum", [stratum_table(plan, estimate)]),
+        ("Location by location", location_blocks(plan, estimate)),
+        ("What happened in the field", field_blocks(plan, estimate.returns)),
+        ("Changes made after results", change_blocks(estimate)),
+        ("The working", working_blocks(estimate)),
+        ("Rules fixed before results", rules_blocks(plan.campaign.rules)),
+        ("For the report", report_blocks(plan, estimate)),
+        ("What these results were made from", source_blocks(plan, estimate)),
+    )
+    blocks: list[Block] = [*answer_blocks(plan, estimate), PageBreak()]
+    for number, (title, content) in enumerate(sections, start=1):
+        blocks += [Heading(f"{number}. {title}"), *content]
+    blocks += [Heading(f"{len(sections) + 1}. Sign-off"), sign_off(plan)]
+    return Document(
+        title=f"{plan.campaign.plan.title}: results",
+        subtitle=subtitle(plan, "Results sheet"),
+        plan_id=plan.campaign.plan.id,
+        revision_name=plan.revision_name,
+        status=plan.status,
+        blocks=tuple(blocks),
+    )
+
+
+def answer_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
+    """Compose page one: the mean, its interval, the level, the population, the promise."""
+    from fieldplan.packet.charts import interval_figure
+
+    first, *others = estimate.sentences
+    blocks: list[Block] = [Paragraph(first, tone="answer")]
+    said = [*others, estimate.level_sentence, estimate.population_sentence]
+    blocks += [
+        Paragraph(sentence) for sentence in dict.fromkeys(said) if sentence != first and sentence
+    ]
+    if estimate.changes:
+        blocks.append(
+            Paragraph(
+                "CHANGED AFTER RESULTS: a rule was overridden after results were seen; see "
+                "section 5 for both answers.",
+                tone="answer",
+            )
+        )
+    blocks += [Facts(result_rows(plan, estimate)), interval_figure(estimate)]
+    if estimate.bracket is not None:
+        blocks.append(bracket_table(estimate))
+    if estimate.coverage_sentence and estimate.coverage_sentence not in said:
+        blocks.append(Paragraph(estimate.coverage_sentence, tone="note"))
+    return blocks
+
+
+def promise_blocks(estimate: Estimate) -> list[Block]:
+    """Set the planned and the achieved precision and why they differ."""
+    blocks: list[Block] = [promise_table(estimate)]
+    if estimate.why_different:
+        blocks.append(Bullets(estimate.why_different))
+    return blocks
+
+
+def location_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
+    """Set every result as reported and what became of it."""
+    return [
+        Paragraph(match_sentence(estimate.returns)),
+        location_table(plan, estimate.returns),
+        Paragraph(
+            "As reported is the laboratory's cell, untouched. Non-detects enter the value at half "
+            "their limit; page one shows the mean with 0 and with the limit in their place.",
+            tone="note",
+        ),
+    ]
+
+
+def working_blocks(estimate: Estimate) -> list[Block]:
+    """Set the method in words and the arithmetic."""
+    blocks: list[Block] = [Paragraph(estimate.mean.method)]
+    if estimate.mean.caution:
+        blocks.append(Paragraph(estimate.mean.caution))
+    return [*blocks, Working(estimate.steps)]
+
+
+def report_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
+    """Set the results paragraph."""
+    from fieldplan.estimate.text import results_paragraph
+
+    return [Paragraph("Ready to paste:"), Paragraph(results_paragraph(plan, estimate))]
+
+
+def source_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
+    """Set the files and their fingerprints."""
+    returns = estimate.returns
+    files = [(returns.lab_sha256, returns.lab_file)]
+    if returns.field_file:
+        files.append((returns.field_sha256, returns.field_file))
+    return [
+        Paragraph("SHA-256 of the laboratory's and the crew's files:"),
+        Verbatim("\n".join(f"{digest}  {name}" for digest, name in files)),
+        Facts(
+            (
+                ("Plan", f"{plan.revision_name}, {plan.status}"),
+                ("Planned with", f"fieldplan {plan.fieldplan_version}".strip()),
+            )
+        ),
+        Paragraph(
+            "This sheet checks that what was ordered came back and computes by the recorded "
+            "rules. Whether the data are fit for their use is for a qualified reviewer to say.",
+            tone="note",
+        ),
+    ]
+
+
+def sign_off(plan: Plan) -> SignOff:
+    """Leave blanks for those who prepare, review and decide."""
+    decides = plan.campaign.plan.decides
+    return SignOff(
+        (
+            "Prepared by",
+            "Data reviewed by",
+            f"Accepted by ({decides})" if decides else "Accepted by",
+        )
+    )

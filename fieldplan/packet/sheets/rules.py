@@ -1,0 +1,94 @@
+"""The rules fixed before results: in words, as recorded, and with a fingerprint."""
+
+import hashlib
+
+from fieldplan.base.document import Block, Facts, Paragraph, Table
+from fieldplan.campaign.model import Rules
+from fieldplan.packet.sheets.amounts import BLANK, percent
+
+NON_DETECTS = {
+    "bounds": "non-detects are set to 0, to half and to their limit; the mean is shown for all "
+    "three, with half in the middle",
+}
+DUPLICATES = {
+    "average": "the results of one location are averaged; a duplicate is never a further n",
+    "first": "the first sample of a location counts; its duplicate is for quality control only",
+}
+INTERVALS = {
+    "two-sided": "an interval with two ends, from Student's t",
+    "upper-limit": "one upper limit, from Student's t",
+    "lower-limit": "one lower limit, from Student's t",
+}
+SINGLES = {
+    "refuse": "a stratum left with fewer than 2 results yields no estimate",
+    "borrow-spread": "a stratum left with 1 result borrows the pooled spread of the others, and "
+    "the results sheet says so",
+}
+
+
+def rule_lines(rules: Rules) -> tuple[str, ...]:
+    """Write the rules as ``key = value`` lines in the order of the alphabet.
+
+    Examples
+    --------
+    >>> rule_lines(Rules())[0]
+    'confidence = 0.95'
+    """
+    recorded = rules.model_dump(mode="json")
+    return tuple(
+        f"{key} = {'' if recorded[key] is None else recorded[key]}" for key in sorted(recorded)
+    )
+
+
+def rules_fingerprint(rules: Rules) -> str:
+    """Shorten the SHA-256 of the rule lines to 16 characters; it changes with every rule.
+
+    Parameters
+    ----------
+    rules : Rules
+
+    Returns
+    -------
+    str
+        The first 16 hexadecimal digits for the lines joined by line feeds, in UTF-8.
+    """
+    return hashlib.sha256("\n".join(rule_lines(rules)).encode()).hexdigest()[:16]
+
+
+def rules_table(rules: Rules) -> Table:
+    """Set every rule with its recorded value and what it means."""
+    return Table(
+        columns=("Rule", "Recorded", "Meaning"),
+        rows=(
+            ("non_detects", rules.non_detects, NON_DETECTS[rules.non_detects]),
+            ("duplicates", rules.duplicates, DUPLICATES[rules.duplicates]),
+            ("interval", rules.interval, INTERVALS[rules.interval]),
+            ("confidence", f"{rules.confidence:g}", f"{percent(rules.confidence)} in the long run"),
+            (
+                "promised_for",
+                rules.promised_for or BLANK,
+                "the class of populations for which the confidence is promised",
+            ),
+            ("single_result", rules.single_result, SINGLES[rules.single_result]),
+        ),
+    )
+
+
+def rules_blocks(rules: Rules) -> list[Block]:
+    """Set the table, who fixed it and when, and how to check its fingerprint."""
+    return [
+        rules_table(rules),
+        Facts(
+            (
+                ("Fixed by", rules.fixed_by or BLANK),
+                ("Fixed on", str(rules.fixed_on or BLANK)),
+                ("Fingerprint of the rules", rules_fingerprint(rules)),
+            )
+        ),
+        Paragraph(
+            "The fingerprint is the start of the SHA-256 of the [rules] table, written as "
+            "lines “key = value” in the order of the alphabet (fixed_by and fixed_on among them; "
+            "what was not typed is left empty) and joined by line feeds.",
+            tone="note",
+        ),
+    ]

@@ -1,0 +1,95 @@
+"""START_HERE: one page that says what each file is for, what comes next and what is open."""
+
+from fieldplan.base.document import Block, Bullets, Document, Facts, Heading, Paragraph
+from fieldplan.packet.sheets.answer import open_blocks, visit_sentence
+from fieldplan.packet.sheets.plan_sheet import subtitle
+from fieldplan.plan.model import Plan
+
+
+def start_here(plan: Plan) -> Document:
+    """Compose the first page of a packet.
+
+    Parameters
+    ----------
+    plan : Plan
+
+    Returns
+    -------
+    Document
+        The crew's files come first.
+    """
+    blocks: list[Block] = [
+        Paragraph(visit_sentence(plan), tone="answer"),
+        Heading("Three things to do next"),
+        Bullets(next_steps(plan), numbered=True),
+        *open_blocks(plan),
+        Heading("For the crew: folder crew"),
+        Facts(crew_files(plan)),
+        Heading("For the office: folder office"),
+        Facts(office_files(plan)),
+    ]
+    return Document(
+        title=plan.campaign.plan.title,
+        subtitle=subtitle(plan, "Start here"),
+        plan_id=plan.campaign.plan.id,
+        revision_name=plan.revision_name,
+        status=plan.status,
+        blocks=tuple(blocks),
+    )
+
+
+def next_steps(plan: Plan) -> tuple[str, ...]:
+    """Say the three things to do next, for a draft or for an issued packet."""
+    name = plan.revision_name
+    returned = (
+        f"When results are back, run: fieldplan estimate {name} LAB_FILE --field field_return.csv"
+    )
+    if plan.issued_by:
+        return (
+            "Load the point file into the receiver and open the map once before leaving; it works "
+            "without a signal.",
+            "In the field, fill in field_return.csv or the printed form: what was taken, where, "
+            "when, and why if it was changed.",
+            returned,
+        )
+    settle = (
+        "Settle what is open below, type its reference and dates in the campaign file, and pack "
+        "again."
+        if plan.open_items
+        else "Nothing is open; read the plan sheet once more."
+    )
+    return (
+        "Read office/plan_sheet.pdf: the answer is on its first page.",
+        settle,
+        f"When all agree, run: fieldplan issue {name} --by NAME. Then hand over folder crew.",
+    )
+
+
+def crew_files(plan: Plan) -> tuple[tuple[str, str], ...]:
+    """Say what each of the crew's files is for."""
+    name = plan.revision_name
+    return (
+        (f"{name}-points.gpx", "for a GPS receiver: all locations, and the boundary as a track"),
+        (f"{name}-points.kml", "for a phone or a globe viewer"),
+        (f"{name}-points.csv", "all locations in degrees, degrees-minutes-seconds and UTM"),
+        (f"{name}-map.html", "the map for phone or laptop; works without a signal"),
+        (f"{name}-map.pdf", "the map to print; the same as a picture in .png"),
+        ("field_form.pdf", "the form to print and fill in by hand"),
+        ("field_return.csv", "the same form for a spreadsheet; send it back to the office"),
+    )
+
+
+def office_files(plan: Plan) -> tuple[tuple[str, str], ...]:
+    """Say what each of the office's files is for."""
+    name = plan.revision_name
+    return (
+        ("plan_sheet.pdf, .html", "the plan for review and sign-off"),
+        (
+            f"{name}-locations.gpkg",
+            "all layers with their styles, for a GIS; .geojson has them too",
+        ),
+        (f"{name}-locations.xlsx", "all locations for a spreadsheet"),
+        ("campaign.toml, inputs", "what the plan was made from, as it was"),
+        ("samples_key.csv", "which sample repeats which; never for the crew or the laboratory"),
+        ("record.json", "all that is needed to draw again and to estimate; the key is in it too"),
+    )
