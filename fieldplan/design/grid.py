@@ -67,7 +67,7 @@ class Grid:
         >>> TRIANGULAR_GRID.spacing(10_000.0, 20), SQUARE_GRID.spacing(10_000.0, 25)
         (24.028, 20.0)
         """
-        return round(math.sqrt(area / (self.row_distance * count)), 3)
+        return round(1000.0 * math.sqrt(area / (self.row_distance * count))) / 1000.0
 
     def predict_variance(
         self,
