@@ -1,0 +1,60 @@
+"""Units as people write them: square metres, hectares and acres side by side."""
+
+SQUARE_METRES_PER_HECTARE = 10_000.0
+SQUARE_METRES_PER_ACRE = 4046.8564224
+"""The international acre: 4840 square yards of 0.9144 m."""
+
+
+def hectares(square_metres: float) -> float:
+    """Turn square metres into hectares.
+
+    Examples
+    --------
+    >>> hectares(23600.0)
+    2.36
+    """
+    return square_metres / SQUARE_METRES_PER_HECTARE
+
+
+def acres(square_metres: float) -> float:
+    """Turn square metres into international acres.
+
+    Examples
+    --------
+    >>> round(acres(10_000.0), 4)
+    2.4711
+    """
+    return square_metres / SQUARE_METRES_PER_ACRE
+
+
+def significant(value: float, digits: int = 3) -> str:
+    """Write a number with so many significant digits, thousands apart, never as a power of ten.
+
+    Examples
+    --------
+    >>> significant(12345.6), significant(2.36), significant(0.00423), significant(0.0)
+    ('12,300', '2.36', '0.00423', '0')
+    """
+    if value == 0:
+        return "0"
+    rounded = float(f"{value:.{digits - 1}e}")
+    exponent = int(f"{rounded:e}".partition("e")[2])
+    return f"{rounded:,.{max(digits - 1 - exponent, 0)}f}"
+
+
+def area_in_words(square_metres: float, digits: int = 4) -> str:
+    """Write an area in the unit that fits it, with acres beside hectares.
+
+    Examples
+    --------
+    >>> area_in_words(23600.0)
+    '2.360 ha (5.832 acres)'
+    >>> area_in_words(412.04)
+    '412.0 m²'
+    """
+    if square_metres < 1000:
+        return f"{significant(square_metres, digits)} m²"
+    return (
+        f"{significant(hectares(square_metres), digits)} ha "
+        f"({significant(acres(square_metres), digits)} acres)"
+    )

@@ -1,0 +1,99 @@
+"""An area as population: boundary, strata, exclusions and inset put together and measured."""
+
+import shapely
+from shapely.geometry.base import BaseGeometry
+
+from fieldplan.base.errors import FrameError
+from fieldplan.base.units import area_in_words
+from fieldplan.campaign.model import FrameTable, Targeted
+from fieldplan.frame.exclusions import read_exclusions
+from fieldplan.frame.ground import FrameFiles, read_ground
+from fieldplan.frame.model import ExcludedArea, Frame, Stratum
+from fieldplan.frame.places import read_targeted
+from fieldplan.frame.plane import merged
+from fieldplan.frame.population import area_population
+from fieldplan.frame.tiling import Pieces, read_strata
+
+SMALLEST_STRATUM_M2 = 1.0
+
+
+def read_area(files: FrameFiles, targeted: tuple[Targeted, ...]) -> Frame:
+    """Read an area frame and measure it.
+
+    Parameters
+    ----------
+    files : FrameFiles
+        The frame table and where its files are.
+    targeted : tuple of Targeted
+        Files of places chosen by judgement.
+
+    Returns
+    -------
+    Frame
+        ``gross - exclusions - inset == net`` to the rounding of a float.
+
+    Raises
+    ------
+    FrameError
+        A file cannot serve, or nothing is left of the site or of a stratum.
+    """
+    ground = read_ground(files)
+    pieces, gaps, ground = read_strata(files, ground)
+    excluded, ground = read_exclusions(files, ground, gaps)
+    net = _net(pieces, ground.boundary, excluded, files.table)
+    places, ground = read_targeted(files, ground, targeted)
+    total = sum(float(piece.area) for piece in net.values())
+    gross = float(ground.boundary.area)
+    if not files.table.inset_m:
+        # Without an inset the parts are the whole; the millimetre grid moves it by a hair.
+        gross = total + sum(area.area_m2 for area in excluded)
+    population = area_population(files.table, gross=gross, excluded=excluded, net=total)
+    strata = tuple(
+        Stratum(name, float(piece.area), float(piece.area) / total, piece)
+        for name, piece in net.items()
+    )
+    assumed = ("The boundary is ASSUMED.",) if files.table.boundary_assumed else ()
+    return Frame(
+        kind="area",
+        projection=ground.projection,
+        strata=strata,
+        boundary=ground.boundary,
+        population=population,
+        excluded=excluded,
+        targeted=places,
+        sources=ground.sources,
+        notes=(*assumed, *ground.notes),
+        boundary_assumed=files.table.boundary_assumed,
+    )
+
+
+def _net(
+    pieces: Pieces,
+    boundary: BaseGeometry,
+    excluded: tuple[ExcludedArea, ...],
+    table: FrameTable,
+) -> Pieces:
+    """Cut exclusions and inset out of each stratum; one that vanishes is an error by name."""
+    # The inset follows the boundary and its holes. Borders between strata have none, and
+    # exclusions have their own buffers.
+    inner = shapely.buffer(boundary, -table.inset_m, quad_segs=16) if table.inset_m else None
+    out = shapely.union_all([area.geometry for area in excluded]) if excluded else None
+    net: Pieces = {}
+    for name, piece in pieces.items():
+        left = piece if inner is None else shapely.intersection(piece, inner)
+        left = left if out is None else shapely.difference(left, out)
+        net[name] = merged(left)
+    gone = [
+        f"Nothing is left of {_called(name)}: of {area_in_words(pieces[name].area)} the inset "
+        f"of {table.inset_m:g} m and the exclusions leave {piece.area:.2f} m². Take a smaller "
+        "inset or buffer, merge the stratum with a neighbour, or leave it out."
+        for name, piece in net.items()
+        if piece.area < SMALLEST_STRATUM_M2
+    ]
+    if gone:
+        raise FrameError(*gone)
+    return net
+
+
+def _called(name: str) -> str:
+    return "the site" if name == "site" else f"stratum {name!r}"

@@ -1,0 +1,72 @@
+"""One door for all vector files: what a file is is seen from its first bytes, not its name."""
+
+from pathlib import Path
+
+from fieldplan.base.errors import FrameError
+from fieldplan.campaign.text import near_names
+from fieldplan.frame.geojson import read_geojson
+from fieldplan.frame.layer import Layer, check_layer
+
+LARGEST_FILE = 300_000_000
+
+
+def read_layer(folder: Path, typed: str, *, wanted: str = "polygon") -> Layer:
+    """Read the file that a campaign names.
+
+    Parameters
+    ----------
+    folder : Path
+        Where relative paths start.
+    typed : str
+        As in the campaign file: a path, with ``#layer`` behind it for one layer of a GeoPackage.
+    wanted : str
+        ``polygon``, ``point`` or ``any``: which layer of several is meant.
+
+    Returns
+    -------
+    Layer
+        Not empty; all coordinates finite.
+
+    Raises
+    ------
+    FrameError
+        Missing, unreadable, too large, of another kind, damaged, or empty.
+    """
+    path, _layer_name = split_layer(folder, typed)
+    content = read_bytes(path, typed)
+    return check_layer(read_geojson(content, typed))
+
+
+def split_layer(folder: Path, typed: str) -> tuple[Path, str]:
+    """Part ``site.gpkg#parcels`` into the path and the layer; a file so named goes first."""
+    whole = folder / typed
+    if "#" not in typed or whole.exists():
+        return whole, ""
+    path, _, layer = typed.rpartition("#")
+    return folder / path, layer
+
+
+def read_bytes(path: Path, typed: str) -> bytes:
+    """Read a file whole, or say why it cannot be read."""
+    try:
+        if path.is_dir():
+            message = f"{typed} is a folder; name the file in it."
+            raise FrameError(message)
+        size = path.stat().st_size
+        if size > LARGEST_FILE:
+            most = LARGEST_FILE / 1e6
+            message = f"{typed} has {size / 1e6:,.0f} MB, more than {most:.0f} MB; simplify it."
+            raise FrameError(message)
+        content = path.read_bytes()
+    except FileNotFoundError as fault:
+        near = " or ".join(near_names(path))
+        hint = f"did you mean {near}?" if near else f"looked for it in {path.parent.name or '.'}/."
+        message = f"{typed} is not there; {hint}"
+        raise FrameError(message) from fault
+    except (OSError, ValueError) as fault:
+        message = f"{typed} cannot be read ({getattr(fault, 'strerror', None) or fault})."
+        raise FrameError(message) from fault
+    if not content.strip():
+        message = f"{typed} is empty; export it again."
+        raise FrameError(message)
+    return content

@@ -1,0 +1,183 @@
+"""A list as population: wells, outfalls or plots with the ids their owners gave them."""
+
+import numpy as np
+import shapely
+from shapely.geometry.base import BaseGeometry
+
+from fieldplan.base.errors import FrameError
+from fieldplan.campaign.model import Targeted
+from fieldplan.frame.ground import (
+    FrameFiles,
+    Ground,
+    Overlay,
+    distance_in_words,
+    points_of,
+    read_ground,
+)
+from fieldplan.frame.layer import raise_all
+from fieldplan.frame.model import Frame, ListUnit, Stratum
+from fieldplan.frame.places import NamedPlaces, named_places, read_targeted
+from fieldplan.frame.plane import check_extent, merged
+from fieldplan.frame.population import list_population
+from fieldplan.frame.projection import centre_of, to_site
+
+_SMALLEST_MARGIN_M = 20.0
+_FAR_M = 100_000.0
+
+
+def read_list(files: FrameFiles, targeted: tuple[Targeted, ...], *, census: bool) -> Frame:
+    """Read a list frame: N units, each with id and place, shared among strata if it says so.
+
+    Parameters
+    ----------
+    files : FrameFiles
+        The frame table and where its files are.
+    targeted : tuple of Targeted
+        Files of places chosen by judgement.
+    census : bool
+        All units are visited.
+
+    Returns
+    -------
+    Frame
+        Its boundary is that of the campaign file, or a hull of the units for the map.
+
+    Raises
+    ------
+    FrameError
+        No list, or one whose ids, places or strata cannot serve.
+    """
+    table = files.table
+    if not table.list_file:
+        message = '[frame] has no list; name the file of its units as list_file = "…".'
+        raise FrameError(message)
+    _refuse_area_keys(files)
+    overlay = files.open(table.list_file, wanted="point")
+    found = named_places(overlay)
+    ground = _ground(files, overlay, found)
+    names = _stratum_names(overlay, found, table.stratum_column)
+    easting, northing = to_site(ground.projection, found.latitude, found.longitude)
+    units = [
+        ListUnit(identifier, name, float(e), float(n), float(lat), float(lon))
+        for identifier, name, e, n, lat, lon in zip(
+            found.ids, names, easting, northing, found.latitude, found.longitude, strict=True
+        )
+    ]
+    places, ground = read_targeted(files, ground, targeted)
+    strata = tuple(
+        Stratum(name, float(len(members)), len(members) / len(units), None, members)
+        for name in sorted(set(names))
+        if (members := tuple(unit for unit in units if unit.stratum == name))
+    )
+    return Frame(
+        kind="list",
+        projection=ground.projection,
+        strata=strata,
+        boundary=ground.boundary,
+        population=list_population(table, len(units), census=census),
+        targeted=places,
+        sources=ground.sources,
+        notes=ground.notes,
+        boundary_assumed=table.boundary_assumed,
+    )
+
+
+def _refuse_area_keys(files: FrameFiles) -> None:
+    """Refuse what has no meaning for a list, rather than ignore it."""
+    table = files.table
+    given = {
+        "strata": table.strata,
+        "exclusion": table.exclusion,
+        "inset_m": table.inset_m,
+    }
+    raise_all(
+        f"frame.{key} has no meaning for a list; take it out (a list gives the stratum of a unit "
+        "in its own column, and a unit is left out by leaving out its row)."
+        for key, value in given.items()
+        if value
+    )
+
+
+def _ground(files: FrameFiles, overlay: Overlay, found: NamedPlaces) -> Ground:
+    """Take the boundary of the campaign file, or make a hull that is for maps only."""
+    notes = (*overlay.layer.notes, *overlay.shift.notes)
+    if not files.table.boundary:
+        projection = centre_of(found.latitude, found.longitude)
+        easting, northing = to_site(projection, found.latitude, found.longitude)
+        places = np.column_stack([easting, northing])
+        _check_strays(overlay, found, places)
+        extent = check_extent(places, overlay.layer.name)
+        return Ground(projection, hull(places), (overlay.shift.source,), (*notes, *extent))
+    ground = read_ground(files)
+    points = points_of(ground.projection, found.latitude, found.longitude)
+    ground.check_near(overlay, shapely.MultiPoint(list(points)))
+    away = np.asarray(shapely.distance(ground.boundary, points))
+    outside = [
+        f"{identifier} ({distance_in_words(float(metres))})"
+        for identifier, metres in zip(found.ids, away, strict=True)
+        if metres > 0
+    ]
+    if outside:
+        notes = (*notes, f"{overlay.layer.name}: outside the boundary: {', '.join(outside)}.")
+    return ground.noting(*notes, source=overlay.shift.source)
+
+
+def hull(places: np.ndarray) -> BaseGeometry:
+    """Draw an outline round points: their convex hull, widened so that one or two have one too.
+
+    Examples
+    --------
+    >>> outline = hull(np.array([[0.0, 0.0], [100.0, 0.0]]))
+    >>> [round(float(edge)) for edge in outline.bounds]
+    [-20, -20, 120, 20]
+    """
+    extent = float(np.ptp(places, axis=0).max())
+    margin = max(_SMALLEST_MARGIN_M, 0.05 * extent)
+    return merged(shapely.MultiPoint(places).convex_hull.buffer(margin))
+
+
+def _check_strays(overlay: Overlay, found: NamedPlaces, places: np.ndarray) -> None:
+    """Refuse units that lie far from the others, and say when swapped axes are the reason."""
+    middle = np.median(places, axis=0)
+    away = np.hypot(*(places - middle).T)
+    typical = float(np.median(away))
+    faults = []
+    for index in np.flatnonzero(away > max(_FAR_M, 20 * typical)):
+        coordinates = shapely.get_coordinates(found.features[index].geometry)[:, ::-1]
+        remedy = "correct its coordinates."
+        if not overlay.shift.crs.is_geographic or abs(coordinates[0, 1]) <= 90:
+            projection = centre_of(found.latitude, found.longitude)
+            swapped = np.array(to_site(projection, *overlay.shift.degrees(coordinates)))[:, 0]
+            if np.hypot(*(swapped - middle)) < away[index] / 10:
+                remedy = "its axes are the other way round: if swapped it falls among the others."
+        faults.append(
+            f"{overlay.layer.name} {found.features[index].label}: {found.ids[index]!r} lies "
+            f"{distance_in_words(float(away[index]))} from the others; {remedy}"
+        )
+    raise_all(faults)
+
+
+def _stratum_names(overlay: Overlay, found: NamedPlaces, column: str) -> list[str]:
+    """Give the stratum of each unit; ``site`` when the list has no such column."""
+    layer = overlay.layer
+    known = {name.lower(): name for name in layer.columns}
+    if column.lower() not in known:
+        if column != "stratum":
+            there = ", ".join(layer.columns) or "none"
+            message = f"{layer.name} has no column {column!r} (its columns: {there})."
+            raise FrameError(message)
+        return ["site"] * len(found.ids)
+    names = [feature.values.get(known[column.lower()], "") for feature in found.features]
+    raise_all(
+        f"{layer.name} {feature.label}: the stratum of {identifier!r} is empty; name it."
+        for feature, identifier, name in zip(found.features, found.ids, names, strict=True)
+        if not name and any(names)
+    )
+    spellings: dict[str, str] = {}
+    raise_all(
+        f"{layer.name}: strata {spellings[name.casefold()]!r} and {name!r} differ in capital "
+        "letters only; write one spelling."
+        for name in dict.fromkeys(names)
+        if spellings.setdefault(name.casefold(), name) != name
+    )
+    return [name or "site" for name in names]

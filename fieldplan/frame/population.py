@@ -1,0 +1,104 @@
+"""For what the mean speaks, in sentences ready to print."""
+
+from fieldplan.base.units import area_in_words
+from fieldplan.campaign.model import FrameTable
+from fieldplan.frame.model import ExcludedArea, Population
+
+_CENSUS = (
+    "Every unit is visited (a census): the choice of places adds no error to the mean; "
+    "differences in time, in sampling and in the laboratory remain."
+)
+
+
+def area_population(
+    table: FrameTable, *, gross: float, excluded: tuple[ExcludedArea, ...], net: float
+) -> Population:
+    """State the population of an area: gross, each exclusion, inset, net.
+
+    Parameters
+    ----------
+    table : FrameTable
+        For the inset, what one n is, and whether the boundary is assumed.
+    gross, net : float
+        Square metres before and after exclusions and inset.
+    excluded : tuple of ExcludedArea
+        In the order in which they were taken out; none counted twice.
+
+    Returns
+    -------
+    Population
+    """
+    inset_loss = gross - sum(area.area_m2 for area in excluded) - net
+    share = net / gross
+    sentences = [f"The mean speaks for {_percent(share)} of the site: {_of(net, gross)}."]
+    for area in excluded:
+        edge = f", with {area.buffer_m:g} m around it" if area.buffer_m else ""
+        sentences.append(
+            f"Left out: {area.reason}{edge}: {area_in_words(area.area_m2)}, "
+            f"{_percent(area.area_m2 / gross)} of the site."
+        )
+    if table.inset_m:
+        sentences.append(
+            f"Left out: a strip of {table.inset_m:g} m along the boundary and its holes: "
+            f"{area_in_words(inset_loss)}, {_percent(inset_loss / gross)} of the site."
+        )
+    if excluded or table.inset_m:
+        sentences.append("Nothing is said about what was left out.")
+    if table.boundary_assumed:
+        sentences.append("The boundary is ASSUMED; so is every area here.")
+    sentences.append(one_is(table))
+    return Population("m²", gross, inset_loss, net, share, tuple(sentences))
+
+
+def list_population(table: FrameTable, count: int, *, census: bool) -> Population:
+    """State the population of a list: all its units.
+
+    Parameters
+    ----------
+    table : FrameTable
+        For what one n is.
+    count : int
+        N, the number of units.
+    census : bool
+        All units are visited.
+
+    Returns
+    -------
+    Population
+    """
+    whole = f"all {count} units" if count > 1 else "the one unit"
+    sentences = [f"The mean speaks for 100 % of the list: {whole}, and for nothing between them."]
+    if census:
+        sentences.append(_CENSUS)
+    sentences.append(one_is(table))
+    return Population("units", float(count), 0.0, float(count), 1.0, tuple(sentences))
+
+
+def one_is(table: FrameTable) -> str:
+    """Say what one n is.
+
+    Examples
+    --------
+    >>> one_is(FrameTable(kind="area"))
+    'One n is: one location.'
+    """
+    told = table.unit_is.strip().rstrip(".")
+    return f"One n is: one location ({told})." if told else "One n is: one location."
+
+
+def _percent(share: float) -> str:
+    """Write a share so that 99.97 % never reads 100 % and 0.02 % never reads 0 %."""
+    percent = 100 * share
+    if percent in (0.0, 100.0):
+        return f"{percent:.0f} %"
+    for digits in (1, 2, 3, 4):
+        text = f"{percent:.{digits}f}"
+        if 0 < float(text) < 100:
+            return f"{text} %"
+    return "less than 0.0001 %" if percent < 50 else "over 99.9999 %"
+
+
+def _of(net: float, gross: float) -> str:
+    if net == gross:
+        return f"all of {area_in_words(gross)}"
+    return f"{area_in_words(net)} of {area_in_words(gross)}"
