@@ -1,10 +1,12 @@
 """Rules that hold between keys and tables of a campaign file."""
 
 from collections.abc import Callable, Iterator
-from typing import Any
+from typing import Any, TypeGuard
 
-from fieldplan.campaign.problems import Problem, shown
+from fieldplan.campaign.facts import FACTS
+from fieldplan.campaign.problems import Problem, near_miss, shown
 from fieldplan.campaign.references import tables
+from fieldplan.campaign.screen import is_fill_in
 
 TARGETS = ("standard_error", "half_width", "relative_half_width", "budget")
 """The forms that a target may take; an objective has exactly one."""
@@ -193,10 +195,10 @@ def _without_strata(data: Data, path: tuple[str | int, ...], given: bool) -> Ite
 
 
 def _deciding(data: Data) -> Iterator[Problem]:
-    """The objective that decides n needs a sigma, and one that its assurance can use."""
+    """Ask a sigma for the objective that decides n, and one that its assurance can use."""
     objectives = tables(data, "objective")
     marked = [i for i, objective in enumerate(objectives) if objective.get("decides_n") is True]
-    if not objectives or len(objectives) > 1 and len(marked) != 1:
+    if not objectives or (len(objectives) > 1 and len(marked) != 1):
         return
     i = marked[0] if marked else 0
     analyte = objectives[i].get("analyte")
@@ -237,11 +239,20 @@ def _clearances(data: Data) -> Iterator[Problem]:
             yield Problem(("clearance", i, "expires_on"), text)
 
 
-def _is_number(value: object) -> bool:
+def _facts(data: Data) -> Iterator[Problem]:
+    for field in tables(data, "field"):
+        facts = field.get("facts")
+        for i, fact in enumerate(facts if isinstance(facts, list) else []):
+            if isinstance(fact, str) and fact not in FACTS and not is_fill_in(fact):
+                near = near_miss(fact, list(FACTS)) or f" Takes {', '.join(FACTS)}."
+                yield Problem(("field", "facts", i), f"no fact code (got {shown(fact)}).{near}")
+
+
+def _is_number(value: object) -> TypeGuard[float]:
     return isinstance(value, int | float) and not isinstance(value, bool)
 
 
-def _is_date(value: object) -> bool:
+def _is_date(value: object) -> TypeGuard[str]:
     """Tell ISO text of a date, as the screen leaves it."""
     return isinstance(value, str) and len(value) == 10 and value[4:5] == "-"
 
@@ -261,5 +272,6 @@ _RULES: tuple[Callable[[Data], Iterator[Problem]], ...] = (
     _deciding,
     _qc,
     _loss,
+    _facts,
     _clearances,
 )

@@ -16,7 +16,17 @@ _SHAPEFILE_PARTS = (".shx", ".dbf", ".prj", ".cpg")
 
 def resolve_file(read: ReadCampaign, written: str) -> Path:
     """Return the place of a file as the campaign names it: relative to the campaign file."""
-    return read.folder / written
+    return read.folder / file_part(read.folder, written)
+
+
+def file_part(folder: Path, written: str) -> str:
+    """Drop the layer from ``site.gpkg#parcels``; a file that is so named goes first."""
+    if "#" not in written:
+        return written
+    try:
+        return written if (folder / written).exists() else written.rpartition("#")[0]
+    except (OSError, ValueError):
+        return written
 
 
 def input_files(read: ReadCampaign) -> dict[str, Path]:
@@ -30,8 +40,8 @@ def input_files(read: ReadCampaign) -> dict[str, Path]:
     Returns
     -------
     dict
-        In the order of the campaign's tables. The side files of a shapefile follow it under
-        names of their own, as far as they exist.
+        In the order of the campaign's tables; a layer named behind ``#`` is left out. The side
+        files of a shapefile follow it under names of their own, as far as they exist.
 
     Raises
     ------
@@ -47,9 +57,10 @@ def input_files(read: ReadCampaign) -> dict[str, Path]:
             what = meaning(table_name(path[:-1]), str(path[-1]))
             problems.append(Problem(path, f'{what}; {fault} (got "{written}").{_near(place)}'))
             continue
-        files[written] = place
+        name = file_part(read.folder, written)
+        files[name] = place
         if place.suffix.lower() == ".shp":
-            files.update(_side_files(written, place))
+            files.update(_side_files(name, place))
     if problems:
         data = read.campaign.model_dump(mode="json", exclude_unset=True)
         raise CampaignError(*render(problems, name=str(read.path), text=read.text, data=data))

@@ -93,7 +93,11 @@ def inspect_campaign(path: Path) -> Inspection:
     CampaignError
         The file cannot be read at all: missing, no text, no TOML.
     """
-    text = read_text(path)
+    return inspect_text(read_text(path), path)
+
+
+def inspect_text(text: str, path: Path) -> Inspection:
+    """Inspect the text of a campaign file that stands, or shall stand, at ``path``."""
     content = parse(text, str(path))
     screened = screen(content)
     problems = list(screened.problems)

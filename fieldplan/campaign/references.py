@@ -48,11 +48,12 @@ def resolve(data: dict[str, Any]) -> list[Problem]:
 def _name_only_analyte(data: dict[str, Any]) -> None:
     """Give the only analyte an id made from its name when it has none."""
     members = tables(data, "analyte")
-    if len(members) == 1 and "id" not in members[0]:
-        name = members[0].get("name")
-        if isinstance(name, str) and name.strip() and not is_fill_in(name):
-            slug = re.sub(r"[^A-Za-z0-9]+", "-", name).strip("-").lower()
-            members[0]["id"] = slug[:35].strip("-") or "analyte"
+    if len(members) != 1 or "id" in members[0]:
+        return
+    name = members[0].get("name")
+    if isinstance(name, str) and name.strip():
+        slug = "" if is_fill_in(name) else re.sub(r"[^A-Za-z0-9]+", "-", name).strip("-").lower()
+        members[0]["id"] = slug[:35].strip("-") or "analyte"
 
 
 def _twice(data: dict[str, Any], name: str) -> list[Problem]:

@@ -106,8 +106,16 @@ def _value(value: Any, shape: Shape, path: KeyPath, found: Screened) -> Any:
 
 
 def _finite(value: Any) -> Any:
-    """Keep infinities out of JSON; they are already reported."""
-    return None if isinstance(value, float) and not math.isfinite(value) else value
+    """Keep out of JSON what it cannot hold; it is already reported."""
+    return None if _not_finite(value) or _too_large(value) else value
+
+
+def _not_finite(value: object) -> bool:
+    return isinstance(value, float) and not math.isfinite(value)
+
+
+def _too_large(value: object) -> bool:
+    return isinstance(value, int) and abs(value) >= 2**63
 
 
 def _tables(value: Any, model: type[BaseModel], path: KeyPath, found: Screened) -> Any:
@@ -140,8 +148,10 @@ def _one_table(value: Any, model: type[BaseModel], path: KeyPath, found: Screene
 
 def _scalar_problem(value: Any, shape: Shape, path: KeyPath) -> str | None:
     """Say what is wrong with one value that the models would not see or word badly."""
-    if isinstance(value, float) and not math.isfinite(value):
+    if _not_finite(value):
         return f"not a finite number (got {value}). Write a number."
+    if _too_large(value):
+        return "a whole number of 2^63 or more. Write a smaller one."
     if isinstance(value, datetime | time):
         return f"a time of day (got {value}). Write the date alone, such as 2026-11-02."
     if isinstance(value, date) and shape.kind != "date":
