@@ -25,6 +25,8 @@ COARSEST_ACCURACY_M = 5.0
 """Handheld receivers under open sky reach 3 to 5 m (common practice, no source)."""
 
 _FAR_OUTSIDE_DEGREES = 10.0
+_DEGREES_BY_RULE = ("GeoJSON", "KML", "GPX")
+_TYPED = "frame.crs"
 
 
 @dataclass(frozen=True)
@@ -142,10 +144,12 @@ def _crs(
     """Find the CRS: the file's own, the typed one, or WGS 84 where the format promises it."""
     if layer.crs is not None:
         crs, crs_from = layer.crs, layer.crs_from
-    elif _promises_degrees(layer) and (typed_crs is None or _within_degrees(coordinates)):
-        crs, crs_from = WGS84, layer.crs_from or f"WGS 84 by the rule of {layer.format}"
+    elif layer.format in _DEGREES_BY_RULE and (typed_crs is None or _within_degrees(coordinates)):
+        crs, crs_from = WGS84, f"the rule of {layer.format}"
+    elif layer.crs_from and (typed_crs is None or parse_crs(typed_crs, _TYPED).is_projected):
+        crs, crs_from = WGS84, f"{layer.crs_from}, taken as WGS 84"
     elif typed_crs is not None:
-        crs, crs_from = parse_crs(typed_crs, "frame.crs"), "crs in the campaign file"
+        crs, crs_from = parse_crs(typed_crs, _TYPED), "crs in the campaign file"
     else:
         x, y = coordinates[0]
         message = (
@@ -154,10 +158,6 @@ def _crs(
         )
         raise FrameError(message)
     return _flat(crs, layer.name), crs_from
-
-
-def _promises_degrees(layer: Layer) -> bool:
-    return layer.format in ("GeoJSON", "KML", "GPX")
 
 
 def _within_degrees(coordinates: NDArray[np.float64]) -> bool:

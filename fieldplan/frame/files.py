@@ -6,8 +6,17 @@ from fieldplan.base.errors import FrameError
 from fieldplan.campaign.text import near_names
 from fieldplan.frame.geojson import read_geojson
 from fieldplan.frame.layer import Layer, check_layer
+from fieldplan.frame.markup import read_gpx, read_kml, read_kmz, root_name
+from fieldplan.frame.packed import (
+    GEOPACKAGE_MAGIC,
+    SHAPEFILE_MAGIC,
+    read_geopackage,
+    read_shapefile,
+)
+from fieldplan.frame.rows import read_rows
 
 LARGEST_FILE = 300_000_000
+_ACCEPTED = "export it as GeoJSON, GeoPackage, Shapefile, KML, GPX or CSV."
 
 
 def read_layer(folder: Path, typed: str, *, wanted: str = "polygon") -> Layer:
@@ -32,9 +41,36 @@ def read_layer(folder: Path, typed: str, *, wanted: str = "polygon") -> Layer:
     FrameError
         Missing, unreadable, too large, of another kind, damaged, or empty.
     """
-    path, _layer_name = split_layer(folder, typed)
+    path, layer = split_layer(folder, typed)
     content = read_bytes(path, typed)
-    return check_layer(read_geojson(content, typed))
+    if content.startswith(GEOPACKAGE_MAGIC):
+        return check_layer(read_geopackage(path, typed, layer=layer, wanted=wanted))
+    if layer:
+        message = f"{typed}: only a GeoPackage has layers to name with '#'; take it out."
+        raise FrameError(message)
+    if content.startswith(SHAPEFILE_MAGIC):
+        return check_layer(read_shapefile(path, typed))
+    return check_layer(_read_text(content, path, typed))
+
+
+def _read_text(content: bytes, path: Path, typed: str) -> Layer:
+    """Read a format that is text, or KML in a zip archive."""
+    root = root_name(content)
+    if content.startswith(b"PK"):
+        return read_kmz(content, typed)
+    if root == "kml":
+        return read_kml(content, typed)
+    if root == "gpx":
+        return read_gpx(content, typed)
+    if root:
+        message = f"{typed} is XML of another kind (<{root}>); {_ACCEPTED}"
+        raise FrameError(message)
+    if content.lstrip(b"\xef\xbb\xbf \t\r\n").startswith((b"{", b"[")):
+        return read_geojson(content, typed)
+    if path.suffix.lower() in (".csv", ".txt", ".tsv"):
+        return read_rows(content, typed)
+    message = f"{typed} is not a map file that can be read, whatever its name says; {_ACCEPTED}"
+    raise FrameError(message)
 
 
 def split_layer(folder: Path, typed: str) -> tuple[Path, str]:

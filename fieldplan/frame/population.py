@@ -1,6 +1,6 @@
 """For what the mean speaks, in sentences ready to print."""
 
-from fieldplan.base.units import area_in_words
+from fieldplan.base.units import acres, area_in_words, hectares, significant
 from fieldplan.campaign.model import FrameTable
 from fieldplan.frame.model import ExcludedArea, Population
 
@@ -101,4 +101,9 @@ def _percent(share: float) -> str:
 def _of(net: float, gross: float) -> str:
     if net == gross:
         return f"all of {area_in_words(gross)}"
-    return f"{area_in_words(net)} of {area_in_words(gross)}"
+    if gross < 1000:
+        return f"{significant(net, 4)} of {significant(gross, 4)} m²"
+    parts = [
+        significant(measure(area), 4) for measure in (hectares, acres) for area in (net, gross)
+    ]
+    return f"{parts[0]} of {parts[1]} ha ({parts[2]} of {parts[3]} acres)"
