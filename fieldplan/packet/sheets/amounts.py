@@ -24,6 +24,18 @@ def rounded(value: float, *, digits: int = 3) -> str:
     return f"{value:.{decimals}f}".replace("-", "−")
 
 
+def trimmed(value: float, *, digits: int = 4) -> str:
+    """Write a result with so many significant digits at most, without zeros at its end.
+
+    Examples
+    --------
+    >>> trimmed(41.0), trimmed(66.46667), trimmed(1240.0)
+    ('41', '66.47', '1240')
+    """
+    text = rounded(value, digits=digits)
+    return text.rstrip("0").rstrip(".") if "." in text else text
+
+
 def decimals_for(standard_error: float) -> int:
     """Count the decimals that show a mean to two significant digits of its standard error.
 

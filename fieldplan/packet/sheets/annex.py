@@ -25,7 +25,7 @@ def inputs_blocks(plan: Plan) -> list[Block]:
     ]
 
 
-def annex_blocks(plan: Plan) -> list[Block]:
+def annex_blocks() -> list[Block]:
     """Set the drawing procedure line by line."""
     from fieldplan.design.procedure import procedure_pseudocode
 

@@ -14,12 +14,12 @@ COLUMNS = (
     "Sample",
     "Planned position",
     "Taken?",
-    "Date and time",
-    "Actual position",
-    "Replaced by",
-    "Reason",
+    "Date, time",
+    "Actual latitude, longitude",
+    "Reason, replaced by",
     "Initials",
 )
+BLANKS = ("☐", "__________", "____________ ____________", "______________", "_____")
 
 TITLES: dict[LocationClass, str] = {
     "random": "Locations to visit",
@@ -97,7 +97,7 @@ def sample_row(plan: Plan, place: Location, sample: Sample) -> tuple[str, ...]:
     if several_strata(plan):
         name += f" ({place.stratum})"
     position = f"{place.latitude:.6f}, {place.longitude:.6f}"
-    return (name, sample.sample_id, position, *("",) * 6)
+    return (name, sample.sample_id, position, *BLANKS)
 
 
 def blank_blocks(plan: Plan) -> list[Block]:
@@ -105,6 +105,8 @@ def blank_blocks(plan: Plan) -> list[Block]:
     blanks = [sample for sample in plan.samples.samples if not sample.location_id]
     if not blanks:
         return []
-    columns = ("Sample", "Kind", "Taken?", "Date and time", "Initials")
-    rows = tuple((sample.sample_id, sample.role, "", "", "") for sample in blanks)
+    columns = ("Sample", "Kind", "Taken?", "Date, time", "Initials")
+    rows = tuple(
+        (sample.sample_id, sample.role, "☐", "____________________", "_____") for sample in blanks
+    )
     return [Heading("Blanks"), Table(columns, rows)]

@@ -15,6 +15,7 @@ def field_blocks(plan: Plan) -> list[Block]:
         (
             ("Days", days(table.fieldwork_from, table.fieldwork_to)),
             ("Position accuracy of the receiver", accuracy),
+            ("Order of visits", "left to the protocol and the field lead"),
             ("Contact", field.contact or BLANK),
             ("Clock", f"UTC{field.utc_offset}" if field.utc_offset else BLANK),
         )

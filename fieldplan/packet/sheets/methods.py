@@ -4,7 +4,7 @@ from math import sqrt
 
 from fieldplan.base.document import Block, Bullets, Heading, Paragraph
 from fieldplan.packet.sheets.amounts import counted, listed, percent, rounded
-from fieldplan.packet.sheets.plan_words import LAYOUTS, mean_of, several_strata
+from fieldplan.packet.sheets.plan_words import ALLOCATIONS, LAYOUTS, mean_of, several_strata
 from fieldplan.packet.sheets.rules import NON_DETECTS, rules_fingerprint
 from fieldplan.plan.model import Plan
 
@@ -110,7 +110,7 @@ def drawn_sentence(plan: Plan) -> str:
     line = f"{count} were drawn {how} from {hectares:.2f} ha ({share} of the site"
     if several_strata(plan):
         parts = [f"{entry.stratum} {entry.planned}" for entry in plan.size.strata]
-        return f"{line}; {', '.join(parts)}; {design.allocation} allocation)."
+        return f"{line}; {', '.join(parts)}; {ALLOCATIONS[design.allocation]})."
     return f"{line})."
 
 

@@ -2,7 +2,6 @@
 
 from fieldplan.base.document import Block, Bullets, Facts, Heading, Table, Working
 from fieldplan.packet.sheets.amounts import percent, rounded
-from fieldplan.packet.sheets.plan_words import assumed_lines
 from fieldplan.plan.model import Plan
 
 
@@ -12,8 +11,6 @@ def spread_blocks(plan: Plan) -> list[Block]:
     blocks: list[Block] = []
     if spread.sentences:
         blocks.append(Bullets(spread.sentences))
-    if assumed_lines(plan):
-        blocks.append(Bullets(assumed_lines(plan)))
     if any(entry.values for entry in spread.strata) or (spread.site and spread.site.values):
         from fieldplan.packet.charts import pilot_dots
 

@@ -2,7 +2,7 @@
 
 from fieldplan.base.document import Block, Bullets, Facts, Paragraph, Table
 from fieldplan.design.model import Location
-from fieldplan.packet.sheets.plan_words import CLASSES, LAYOUTS, several_strata
+from fieldplan.packet.sheets.plan_words import ALLOCATIONS, CLASSES, LAYOUTS, several_strata
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
 
@@ -16,7 +16,12 @@ def draw_blocks(plan: Plan) -> list[Block]:
     if design.why:
         rows.append(("Why", design.why))
     if several_strata(plan):
-        rows.append(("Shared between strata", f"{design.allocation}, at least {design.floor} each"))
+        rows.append(
+            (
+                "Shared between strata",
+                f"{ALLOCATIONS[design.allocation]}; at least {design.floor} each",
+            )
+        )
     if design.minimum_spacing_m:
         rows.append(("Minimum spacing", f"{number(design.minimum_spacing_m)} m"))
     rows += [

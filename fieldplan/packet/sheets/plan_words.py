@@ -13,6 +13,11 @@ LAYOUTS = {
     "census": "every unit of the list (census)",
 }
 
+ALLOCATIONS = {
+    "proportional": "proportional to size",
+    "neyman": "Neyman allocation, by size and spread",
+}
+
 CLASSES = {
     "random": "drawn at random",
     "alternate": "alternate, ranked",

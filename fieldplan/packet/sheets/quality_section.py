@@ -19,6 +19,11 @@ def quality_blocks(plan: Plan) -> list[Block]:
                     "Containers, preservation, holding",
                     "as the laboratory and the method say; this sheet sets nothing",
                 ),
+                (
+                    "Labels and chain of custody",
+                    "on the laboratory's own forms; none are made here",
+                ),
+                ("Limits for control samples", "as the quality plan of the campaign says"),
             )
         )
     ]
@@ -48,7 +53,7 @@ def name_lines(plan: Plan) -> tuple[str, ...]:
     ]
     if any(sample.qc_of for sample in plan.samples.samples):
         lines.append(
-            "Duplicates are blind. Their key is in office/samples_key.csv and office/record.json, and "
-            "in no file of the crew."
+            "Duplicates are blind. Their key is in office/samples_key.csv and office/record.json, "
+            "and in no file of the crew."
         )
     return tuple(lines)

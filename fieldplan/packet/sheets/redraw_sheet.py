@@ -3,7 +3,16 @@
 import platform
 from importlib.metadata import version
 
-from fieldplan.base.document import Block, Bullets, Document, Facts, Heading, Paragraph, SignOff
+from fieldplan.base.document import (
+    Block,
+    Bullets,
+    Document,
+    Facts,
+    Heading,
+    Paragraph,
+    SignOff,
+    Verbatim,
+)
 from fieldplan.packet.sheets.plan_sheet import subtitle
 from fieldplan.packet.sheets.plan_words import LAYOUTS
 from fieldplan.plan.model import Plan
@@ -41,11 +50,12 @@ def redraw_sheet(plan: Plan, comparison: Comparison) -> Document:
                 ("Layout", LAYOUTS[plan.locations.layout]),
                 ("Seed", str(plan.locations.seed)),
                 ("Version of the drawing procedure", str(plan.locations.version)),
-                ("Keys of the draw", keys(plan)),
                 ("Recorded with", f"fieldplan {plan.fieldplan_version}".strip()),
                 ("Drawn again with", libraries()),
             )
         ),
+        Paragraph("Keys of the random numbers:"),
+        Verbatim("\n".join(keys(plan))),
         Paragraph(
             "Only office/record.json was read. Targeted places are chosen by people and are not "
             "drawn. The plan sheet's annex tells how to draw without this program.",
@@ -65,11 +75,18 @@ def redraw_sheet(plan: Plan, comparison: Comparison) -> Document:
     )
 
 
-def keys(plan: Plan) -> str:
-    """Name what the random numbers are keyed by."""
-    strata = ", ".join(stratum.name for stratum in plan.frame.strata)
-    design = plan.campaign.design[0].id
-    return f"seed, design “{design}”, stratum ({strata}), place in the stratum's list"
+def keys(plan: Plan) -> tuple[str, ...]:
+    """Write the key lines of the draw: one a stratum, or one a unit of a list (the first shown)."""
+    from fieldplan.base.draws import key_text
+
+    design, draw = plan.campaign.design[0], plan.locations
+    purpose = "grid" if draw.layout.endswith("grid") else "places"
+    lines = []
+    for stratum in plan.frame.strata:
+        what = f"unit {stratum.units[0].unit_id}" if stratum.units else purpose
+        more = f"    and so on for {len(stratum.units)} units" if stratum.units else ""
+        lines.append(key_text(draw.seed, design.id, stratum.name, what) + more)
+    return tuple(lines)
 
 
 def libraries() -> str:

@@ -69,6 +69,7 @@ def answer_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
     """Compose page one: the mean, its interval, the level, the population, the promise."""
     from fieldplan.packet.charts import interval_figure
 
+    level = plan.campaign.deciding_analyte.action_level
     first, *others = estimate.sentences
     blocks: list[Block] = [Paragraph(first, tone="answer")]
     said = [*others, estimate.level_sentence, estimate.population_sentence]
@@ -83,7 +84,7 @@ def answer_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
                 tone="answer",
             )
         )
-    blocks += [Facts(result_rows(plan, estimate)), interval_figure(estimate)]
+    blocks += [Facts(result_rows(plan, estimate)), interval_figure(estimate, action_level=level)]
     if estimate.bracket is not None:
         blocks.append(bracket_table(estimate))
     if estimate.coverage_sentence and estimate.coverage_sentence not in said:

@@ -1,7 +1,7 @@
 """What came back: results by location, and what happened in the field."""
 
 from fieldplan.base.document import Block, Bullets, Heading, Paragraph, Table
-from fieldplan.packet.sheets.amounts import counted, rounded
+from fieldplan.packet.sheets.amounts import counted, trimmed
 from fieldplan.packet.sheets.plan_words import REASONS, several_strata
 from fieldplan.plan.model import Plan
 from fieldplan.returns.model import LocationResult, LostLocation, Returns
@@ -30,15 +30,15 @@ def location_table(plan: Plan, returns: Returns) -> Table:
 
 def location_row(result: LocationResult) -> tuple[str, ...]:
     """Set one location."""
-    used = "yes" if result.used else f"no: {result.why_not.rstrip('.')}"
+    used = "Yes" if result.used else f"No. {result.why_not}".strip()
     if result.stands_in_for:
-        used += f", stands in for {result.stands_in_for}"
+        used += f"; stands in for {result.stands_in_for}"
     return (
         result.location_id,
         result.stratum,
         result.location_class,
         ", ".join(cell.strip() for cell in result.as_reported),
-        rounded(result.half, digits=4),
+        trimmed(result.half),
         used,
     )
 
@@ -125,7 +125,7 @@ def duplicate_blocks(plan: Plan, returns: Returns) -> list[Block]:
 
 def shown(value: float | None) -> str:
     """Write a result of a pair, or that it was a non-detect."""
-    return "non-detect" if value is None else rounded(value, digits=4)
+    return "non-detect" if value is None else trimmed(value)
 
 
 def relative_difference(first: float | None, second: float | None) -> str:

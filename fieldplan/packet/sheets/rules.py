@@ -4,7 +4,7 @@ import hashlib
 
 from fieldplan.base.document import Block, Facts, Paragraph, Table
 from fieldplan.campaign.model import Rules
-from fieldplan.packet.sheets.amounts import BLANK, percent
+from fieldplan.packet.sheets.amounts import BLANK
 
 NON_DETECTS = {
     "bounds": "non-detects are set to 0, to half and to their limit; the mean is shown for all "
@@ -19,6 +19,7 @@ INTERVALS = {
     "upper-limit": "one upper limit, from Student's t",
     "lower-limit": "one lower limit, from Student's t",
 }
+LONG_RUN = "in the long run this share of such intervals or limits holds the true mean"
 SINGLES = {
     "refuse": "a stratum left with fewer than 2 results yields no estimate",
     "borrow-spread": "a stratum left with 1 result borrows the pooled spread of the others, and "
@@ -63,7 +64,7 @@ def rules_table(rules: Rules) -> Table:
             ("non_detects", rules.non_detects, NON_DETECTS[rules.non_detects]),
             ("duplicates", rules.duplicates, DUPLICATES[rules.duplicates]),
             ("interval", rules.interval, INTERVALS[rules.interval]),
-            ("confidence", f"{rules.confidence:g}", f"{percent(rules.confidence)} in the long run"),
+            ("confidence", f"{rules.confidence:g}", LONG_RUN),
             (
                 "promised_for",
                 rules.promised_for or BLANK,

@@ -1,0 +1,283 @@
+"""The plan sheet says everything a reviewer asks for, and no verdict."""
+
+import hashlib
+import re
+from dataclasses import replace
+from datetime import date
+
+import pytest
+
+from fieldplan.base.document import Caution, Figure, PageBreak, SignOff, Table
+from fieldplan.campaign.model import Analyte, DesignTable, FieldTable, Objective, Rules
+from fieldplan.packet.sheets.methods import methods_paragraph, patch_line
+from fieldplan.packet.sheets.plan_sheet import plan_sheet
+from fieldplan.packet.sheets.rules import rule_lines, rules_fingerprint
+from fieldplan.plan.model import Plan
+from tests.factories import (
+    make_campaign,
+    make_frame,
+    make_list_frame,
+    make_locations,
+    make_plan,
+    make_size,
+    make_spread,
+)
+from tests.unit.packet.sheet_text import headings_of, text_of, words_of
+
+VERDICTS = re.compile(r"\b(safe|clean|pass(es|ed)?|compliant|approved|certified)\b", re.IGNORECASE)
+
+
+def page_one(plan: Plan) -> str:
+    """All that stands before the first page break."""
+    blocks = list(plan_sheet(plan).blocks)
+    end = next(i for i, block in enumerate(blocks) if isinstance(block, PageBreak))
+    return "\n".join(text_of(block) for block in blocks[:end])
+
+
+def make_list_plan() -> Plan:
+    """A plan over fourteen wells."""
+    frame = make_list_frame()
+    size = make_size()
+    only = replace(size.strata[0], stratum="site", weight=1.0, needed=7, planned=9, population=14)
+    spread = make_spread()
+    return make_plan(
+        frame=frame,
+        size=replace(size, strata=(only,)),
+        spread=replace(spread, strata=(replace(spread.strata[0], stratum="site"),)),
+        campaign=make_campaign(
+            design=(DesignTable(layout="simple-random"),), field=FieldTable(offset_within_m=5.0)
+        ),
+        locations=replace(make_locations(), layout="simple-random"),
+    )
+
+
+def test_page_one_says_how_many_where_how_precise_and_what_is_open():
+    """A reader who stops after page one has the answer."""
+    text = page_one(make_plan())
+    assert "Visit 9 locations: 4 in meadow and 5 in yard." in text
+    assert "7 results are needed; 2 more allow for losses." in text
+    assert "standard error of the mean ≤ 9 mg/kg" in text
+    assert "The mean speaks for 98.3 % of the site" in text
+    assert "HOLD POINT, no work before it is settled: underground utilities." in text
+    assert "no substitute for the documents that a regulator requires" in text
+
+
+def test_page_one_names_who_chose_the_plain_count():
+    """An assurance is somebody's choice, with a name."""
+    assert "The plain count of 7 results was chosen by L. Fenn." in page_one(make_plan())
+
+
+def test_page_one_gives_the_chance_and_the_name_behind_the_assurance():
+    """Numbers of a pilot of 8 with s 27.57 and a target of 6: 22 at 45.9 %, 39 at 80 %.
+
+    The two numbers are those of the chi-square limit on sigma; see tests/reference/values.csv.
+    """
+    size = replace(
+        make_size(), plain_n=22, needed=39, assurance=0.80, chance_plain=0.459, chance_needed=0.803
+    )
+    text = page_one(make_plan(size=size))
+    assert "The chance that 39 results meet the target is 80.3 %" in text
+    assert "L. Fenn chose an assurance of 80 %" in text
+    assert "The plain count of 22 would be enough with a chance of only 45.9 %" in text
+
+
+def test_a_missing_chooser_is_said():
+    """Nobody's choice must not look like somebody's."""
+    text = page_one(make_plan(size=replace(make_size(), assurance_chosen_by="")))
+    assert "chosen by nobody named" in text
+
+
+def test_assumed_sigma_and_boundary_are_stamped_on_page_one():
+    """A guess keeps its stamp wherever its number is used."""
+    text = page_one(make_plan(frame=replace(make_frame(), boundary_assumed=True)))
+    assert "ASSUMED: the standard deviation of 18 mg/kg in meadow" in text
+    assert "45.0 ASSUMED" in text
+    assert "ASSUMED: the boundary" in text
+
+
+def test_a_measured_sigma_has_no_stamp():
+    """The stamp would mean nothing if all had it."""
+    spread = make_spread()
+    measured = tuple(replace(s, assumed=False, source="pilot.csv") for s in spread.strata)
+    plan = make_plan(spread=replace(spread, strata=measured, sentences=()))
+    assert "ASSUMED" not in words_of(plan_sheet(plan))
+
+
+def test_a_reporting_limit_above_the_level_is_an_alarm_on_page_one():
+    """Results below such a limit could not be set against the level."""
+    lead = Analyte(
+        id="lead", unit="mg/kg", reporting_limit=200.0, action_level=150.0, action_level_source="x"
+    )
+    text = page_one(make_plan(campaign=make_campaign(analyte=(lead,))))
+    assert re.search(r"200.*150", text)
+
+
+def test_every_location_stands_in_the_table_with_its_coordinates():
+    """The table is the plan; a location left out would not be reviewed."""
+    plan = make_plan()
+    tables = [b for b in plan_sheet(plan).blocks if isinstance(b, Table)]
+    table = next(t for t in tables if "Latitude" in t.columns)
+    rows = {row[0]: row for row in table.rows}
+    assert len(rows) == len(plan.locations.places) == 14
+    for place in plan.locations.places:
+        row = rows[place.location_id]
+        assert {place.short_name, place.location_class, place.stratum} <= set(row)
+        assert f"{place.latitude:.7f}" in row
+        assert f"{place.longitude:.7f}" in row
+    assert rows["QF-A-02"][-1] == "2"
+
+
+def test_a_site_without_strata_has_no_column_for_them():
+    """A column that says the same in every row is noise."""
+    tables = [b for b in plan_sheet(make_list_plan()).blocks if isinstance(b, Table)]
+    assert "Stratum" not in next(t for t in tables if "Latitude" in t.columns).columns
+
+
+def test_every_section_of_the_checklist_is_there_in_order():
+    """The order is the one in which a reviewer asks."""
+    assert headings_of(plan_sheet(make_plan())) == [
+        "What is asked",
+        "What the plan will and will not tell",
+        "For what the mean speaks",
+        "How uneven the site is",
+        "How many",
+        "How the locations are drawn",
+        "Locations",
+        "Samples and quality control",
+        "Rules fixed before results",
+        "In the field",
+        "Cautions and hold points",
+        "For the report",
+        "What this plan was made from",
+        "Sign-off",
+        "The drawing procedure, line by line",
+    ]
+
+
+def test_the_sheet_is_a_draft_until_somebody_issues_it():
+    """The status stands on the document, so the setters print it on every page."""
+    assert plan_sheet(make_plan()).status == "DRAFT"
+    issued = plan_sheet(make_plan(issued_by="L. Fenn", issued_on=date(2026, 11, 4)))
+    assert issued.status == "ISSUED by L. Fenn on 2026-11-04"
+
+
+@pytest.mark.parametrize("plan", [make_plan(), make_list_plan()], ids=["area", "list"])
+def test_no_word_of_the_sheet_is_a_verdict(plan):
+    """The tool estimates; people decide."""
+    assert not VERDICTS.findall(words_of(plan_sheet(plan)).replace("passed over", ""))
+
+
+def test_every_caution_is_printed_once():
+    """A caution that is lost between rooms warns nobody."""
+    plan = make_plan()
+    printed = [block for block in plan_sheet(plan).blocks if isinstance(block, Caution)]
+    assert tuple(printed) == plan.cautions
+
+
+def test_sign_off_has_a_line_for_everyone_named():
+    """Blanks for those who prepare, review, accept and lead."""
+    blocks = plan_sheet(make_plan()).blocks
+    roles = next(block for block in blocks if isinstance(block, SignOff)).roles
+    assert roles == (
+        "Prepared by (R. Amadi)",
+        "Reviewed by",
+        "Accepted by (L. Fenn)",
+        "Field lead",
+        "Distribution",
+    )
+
+
+def test_a_pilot_is_drawn_where_there_is_one():
+    """No figure without data behind it."""
+    without = [b for b in plan_sheet(make_plan()).blocks if isinstance(b, Figure)]
+    spread = make_spread()
+    values = (12.0, 30.0, 48.0)
+    piloted = tuple(
+        replace(s, values=values, detected=(True,) * 3, assumed=False, results=3)
+        for s in spread.strata
+    )
+    plan = make_plan(spread=replace(spread, strata=piloted))
+    with_pilot = [b for b in plan_sheet(plan).blocks if isinstance(b, Figure)]
+    assert len(with_pilot) == len(without) + 1
+
+
+def test_wells_are_never_moved_whatever_the_offset_says():
+    """A list unit sampled elsewhere is another unit."""
+    text = words_of(plan_sheet(make_list_plan()))
+    assert "A unit of the list is never moved." in text
+    assert "may move by up to" not in text
+
+
+def test_the_offset_rule_and_the_codes_are_printed():
+    """The crew's freedom ends where the rule says."""
+    text = words_of(plan_sheet(make_plan()))
+    assert "The location may move by up to 5 m." in text
+    assert "no-access | " in text
+    assert "never the nearest convenient spot" in text
+
+
+def test_patches_smaller_than_the_spacing_can_be_missed():
+    """23600 m² and 9 locations: √(23600/9) = 51.2 m, worked by hand."""
+    assert "about 51 m apart" in patch_line(make_plan())
+
+
+def test_a_list_says_how_many_units_are_not_visited():
+    """14 wells less 9 drawn."""
+    assert "5 of the list are not visited" in patch_line(make_list_plan())
+
+
+def test_the_methods_paragraph_says_layout_number_spread_rules_and_seed():
+    """A report needs no more to be drawn again."""
+    text = methods_paragraph(make_plan())
+    assert text.startswith("9 locations were drawn by stratified random sampling from 2.36 ha")
+    assert "meadow 4, yard 5" in text
+    assert "was assumed, not measured" in text
+    assert "1 field duplicate" in text
+    assert "seed 20261102" in text
+    assert rules_fingerprint(make_plan().campaign.rules) in text
+    assert "  " not in text
+
+
+def test_the_fingerprint_is_what_its_note_says():
+    """A reviewer recomputes it with any SHA-256 program from the lines alone."""
+    rules = Rules(fixed_by="L. Fenn", fixed_on=date(2026, 11, 2))
+    lines = (
+        "confidence = 0.95\nduplicates = average\nfixed_by = L. Fenn\nfixed_on = 2026-11-02\n"
+        "interval = two-sided\nnon_detects = bounds\npromised_for = \nsingle_result = refuse"
+    )
+    assert "\n".join(rule_lines(rules)) == lines
+    assert rules_fingerprint(rules) == hashlib.sha256(lines.encode()).hexdigest()[:16]
+
+
+@pytest.mark.parametrize(
+    "change",
+    [
+        {"duplicates": "first"},
+        {"interval": "upper-limit"},
+        {"confidence": 0.90},
+        {"promised_for": "skewness up to 2"},
+        {"single_result": "borrow-spread"},
+        {"fixed_on": date(2026, 11, 3)},
+    ],
+)
+def test_the_fingerprint_changes_with_every_rule(change):
+    """Otherwise a rule could be changed after results without anybody noticing."""
+    assert rules_fingerprint(Rules(**change)) != rules_fingerprint(Rules())
+
+
+def test_inputs_stand_with_their_whole_fingerprints():
+    """A shortened one cannot be checked by a program."""
+    assert f"{'0' * 64}  boundary.geojson" in words_of(plan_sheet(make_plan()))
+
+
+def test_typed_text_is_printed_as_typed():
+    """Markup is for the setters to keep inert; the sheet must not alter it."""
+    campaign = make_campaign(
+        objective=(
+            Objective(question="mean", standard_error=9.0, assurance="plain", design="main"),
+        ),
+        field=FieldTable(method="<b>=SUM(A1)</b>", contact="#let x"),
+    )
+    text = words_of(plan_sheet(make_plan(campaign=campaign)))
+    assert "<b>=SUM(A1)</b>" in text
+    assert "#let x" in text

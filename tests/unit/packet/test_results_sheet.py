@@ -1,0 +1,109 @@
+"""The results sheet: the answer first, every result accounted for, every change said."""
+
+import re
+from dataclasses import replace
+
+from fieldplan.base.document import Paragraph, Table
+from fieldplan.estimate.model import Change, Interval
+from fieldplan.packet.sheets.results_sheet import results_sheet
+from fieldplan.packet.sheets.returned import relative_difference
+from tests.factories import make_estimate, make_plan, make_returns
+from tests.unit.packet.sheet_text import headings_of, words_of
+
+
+def sheet_text(**changes: object) -> str:
+    """All words of the sheet for a changed estimate."""
+    return words_of(results_sheet(make_plan(), make_estimate(**changes)))
+
+
+def test_the_first_words_are_the_answer():
+    """Whoever opens the sheet asks for the mean."""
+    first = results_sheet(make_plan(), make_estimate()).blocks[0]
+    assert isinstance(first, Paragraph)
+    assert first.tone == "answer"
+    assert first.text == make_estimate().sentences[0]
+
+
+def test_level_population_and_coverage_are_said_once():
+    """A sentence said twice is read as two things."""
+    text = sheet_text()
+    for sentence in (
+        make_estimate().level_sentence,
+        make_estimate().population_sentence,
+        make_estimate().coverage_sentence,
+    ):
+        assert text.count(sentence) == 1
+
+
+def test_sentences_that_the_estimate_repeats_are_not_repeated():
+    """The level sentence may stand among the sentences already."""
+    level = make_estimate().level_sentence
+    assert sheet_text(sentences=(make_estimate().sentences[0], level)).count(level) == 1
+
+
+def test_changes_made_after_results_has_a_section_even_when_there_were_none():
+    """Its absence could hide a change."""
+    sheet = results_sheet(make_plan(), make_estimate())
+    assert "Changes made after results" in headings_of(sheet)
+    assert "None. Every rule is the one recorded before results." in words_of(sheet)
+
+
+def test_a_change_is_printed_with_both_answers_and_on_page_one():
+    """The reader must see what the recorded rule would have said."""
+    change = Change("confidence", "0.95", "0.8", Interval("two-sided", 0.95, 29.15, 95.86), 62.506)
+    text = sheet_text(changes=(change,), interval=Interval("two-sided", 0.8, 43.0, 82.0))
+    assert text.count("CHANGED AFTER RESULTS") == 2
+    assert "29 to 96 mg/kg" in text
+    assert "43 to 82 mg/kg" in text
+    assert "None. Every rule" not in text
+
+
+def test_every_result_stands_as_reported_with_what_became_of_it():
+    """A result that is not used needs its reason beside it."""
+    tables = [b for b in results_sheet(make_plan(), make_estimate()).blocks if isinstance(b, Table)]
+    table = next(t for t in tables if "As reported" in t.columns)
+    rows = {row[0]: row for row in table.rows}
+    assert set(rows) == {r.location_id for r in make_returns().results}
+    assert "<5" in rows["QF-B-04"]
+    assert rows["TANK"][-1] == "No. Targeted places never enter the mean."
+    assert rows["QF-A-05"][-1] == "Yes; stands in for QF-A-04"
+
+
+def test_lost_and_moved_locations_are_accounted_for():
+    """What happened in the field decides for what the mean speaks."""
+    text = sheet_text()
+    assert "QF-A-04 | meadow | no-access: " in text
+    assert re.search(r"QF-B-03 \| 10\.8 \| ", text)
+
+
+def test_without_a_field_return_the_sheet_says_so():
+    """Planned positions are then taken on trust."""
+    bare = replace(make_returns(), field_file="", field_sha256="")
+    assert "No field return was given" in sheet_text(returns=bare)
+
+
+def test_files_stand_with_their_fingerprints():
+    """The laboratory's file and the crew's file are evidence."""
+    text = sheet_text()
+    assert f"{'1' * 64}  results.csv" in text
+    assert f"{'2' * 64}  field_return.csv" in text
+
+
+def test_relative_difference_is_the_usual_one():
+    """RPD = 100·|x1 − x2| / ((x1 + x2)/2), the definition in laboratory guidance: 8.0 % here."""
+    assert relative_difference(64.0, 69.0) == "8 %"
+    assert relative_difference(None, 5.0) == "–"
+
+
+def test_borrowed_spread_is_marked():
+    """A stratum with one result has no spread of its own."""
+    mean = make_estimate().mean
+    strata = (replace(mean.strata[0], n=1, variance_borrowed=True), mean.strata[1])
+    assert "19.7 borrowed" in sheet_text(mean=replace(mean, strata=strata))
+
+
+def test_no_word_of_the_sheet_is_a_verdict():
+    """The interval lies somewhere; what follows is for people."""
+    assert not re.search(
+        r"\b(safe|clean|pass(es|ed)?|compliant|approved|certified)\b", sheet_text(), re.IGNORECASE
+    )
