@@ -1,0 +1,254 @@
+"""The map for a screen: one file, every tool inside, works with the network off."""
+
+from typing import Any
+
+import folium
+import shapely
+from folium.utilities import JsCode
+
+from fieldplan.design.model import LocationClass
+from fieldplan.frame.projection import site_zone, utm
+from fieldplan.packet.exchange.outlines import Outline, outlines
+from fieldplan.packet.exchange.rows import PointRow, point_rows
+from fieldplan.packet.maps.offline import (
+    TILES,
+    Call,
+    OfflineMap,
+    Raw,
+    add_head,
+    polar_crs,
+    render_offline,
+)
+from fieldplan.packet.maps.palette import (
+    BOUNDARY_LINE,
+    EXCLUDED_LINE,
+    GRID_LINE,
+    MARKS,
+    stratum_fill,
+)
+from fieldplan.packet.maps.screen_page import (
+    layer_titles,
+    north_arrow,
+    pattern_definitions,
+    title_block,
+    foot,
+)
+from fieldplan.plan.model import Plan
+
+WEB_PROJECTION_ENDS = 84.0
+
+
+def screen_map(plan: Plan) -> str:
+    """Draw the offline map of a plan.
+
+    Boundary, strata, exclusions with their reasons, locations by class with popups, a coordinate
+    grid, coordinates under the pointer, a measuring tool. Alternates and the online base map are
+    layers that start switched off; without a press on the latter nothing is requested.
+
+    Parameters
+    ----------
+    plan : Plan
+
+    Returns
+    -------
+    str
+        One HTML page; the same plan gives the same text.
+    """
+    rows, shapes = point_rows(plan), outlines(plan)
+    page = _empty_map(plan)
+    titles = layer_titles(plan, shapes)
+    shown = [shape for shape in shapes if shape.kind != "boundary"]
+    for kind in ("stratum", "excluded", "boundary"):
+        if kind in titles:
+            _outline_layer(plan, shapes, kind, titles[kind]).add_to(page)
+    grid = folium.FeatureGroup(name=titles["grid"]).add_to(page)
+    layers = [
+        _location_layer(plan, rows, name, titles[name]).add_to(page)
+        for name in ("random", "targeted", "alternate")
+        if name in titles
+    ]
+    parts: dict[str, Any] = {"grid": grid, "locations": layers}
+    if page.crs == "EPSG3857":
+        parts["online"] = _online_layer(titles["online"]).add_to(page)
+    parts["panel"] = folium.LayerControl(collapsed=False).add_to(page)
+    Call("fieldplanMap", _facts(plan, rows, shapes, shown), parts).add_to(page)
+    return render_offline(page)
+
+
+def _empty_map(plan: Plan) -> OfflineMap:
+    centre = plan.frame.projection
+    name, script = "EPSG3857", ""
+    if abs(centre.latitude) > WEB_PROJECTION_ENDS:
+        name, script = polar_crs(centre.latitude)
+    page = OfflineMap(
+        location=[centre.latitude, centre.longitude],
+        tiles=None,
+        crs=name,
+        zoom_start=15,
+        zoom_snap=0.25,
+        zoom_delta=0.5,
+        wheel_px_per_zoom_level=90,
+    )
+    add_head(page, title=f"{plan.revision_name} map, {plan.status}", scripts=script)
+    body = page.get_root().html
+    body.add_child(Raw(title_block(plan)), name="title_block", index=0)
+    body.add_child(Raw(pattern_definitions() + north_arrow()), name="patterns", index=1)
+    # folium puts the map after this when it renders; the styles set both in their places.
+    body.add_child(Raw(foot(plan)), name="foot")
+    return page
+
+
+def _outline_layer(
+    plan: Plan, shapes: tuple[Outline, ...], kind: str, title: str
+) -> folium.GeoJson:
+    features = []
+    chosen = [shape for shape in shapes if shape.kind == kind]
+    for number, shape in enumerate(chosen):
+        features.append(
+            {
+                "type": "Feature",
+                "id": f"{kind}-{number}",
+                "geometry": shapely.geometry.mapping(shape.geometry),
+                "properties": {"style": _outline_style(plan, shape, number)},
+            }
+        )
+    collection = {"type": "FeatureCollection", "features": features}
+    return folium.GeoJson(collection, name=title, smooth_factor=0.3)
+
+
+def _outline_style(plan: Plan, shape: Outline, number: int) -> dict[str, Any]:
+    if shape.kind == "boundary":
+        dashes = "9 6" if plan.frame.boundary_assumed or plan.frame.kind == "list" else None
+        return {"color": BOUNDARY_LINE, "weight": 3, "fill": False, "dashArray": dashes,
+                "interactive": False, "className": "boundary-line"}  # fmt: skip
+    if shape.kind == "excluded":
+        return {"color": EXCLUDED_LINE, "weight": 1.5, "fillColor": "url(#hatch)",
+                "fillOpacity": 1, "interactive": False, "className": "excluded-area"}  # fmt: skip
+    fill = stratum_fill(number)
+    return {"color": fill.line, "weight": 2, "fillColor": f"url(#{fill.pattern}-{number % 8})",
+            "fillOpacity": 0.9, "interactive": False, "className": "stratum-area"}  # fmt: skip
+
+
+def _location_layer(
+    plan: Plan, rows: tuple[PointRow, ...], name: LocationClass, title: str
+) -> folium.GeoJson:
+    centre = plan.frame.projection.longitude
+    features = [
+        {
+            "type": "Feature",
+            "id": row.location.short_name,
+            "geometry": {
+                "type": "Point",
+                "coordinates": [_near(row.location.longitude, centre), row.location.latitude],
+            },
+            "properties": _told(plan, row),
+        }
+        for row in rows
+        if row.location.location_class == name
+    ]
+    return folium.GeoJson(
+        {"type": "FeatureCollection", "features": features},
+        name=title,
+        show=name != "alternate",
+        on_each_feature=JsCode("fieldplanPopup"),
+        point_to_layer=JsCode("fieldplanPoint"),
+    )
+
+
+def _near(longitude: float, centre: float) -> float:
+    """Let longitudes run on past 180° with the site."""
+    return round(centre + (longitude - centre + 180) % 360 - 180, 7)
+
+
+def _told(plan: Plan, row: PointRow) -> dict[str, Any]:
+    """Everything a popup says of a location, as plain text."""
+    cells, place = row.cells(), row.location
+    mark = MARKS[place.location_class]
+    lead = {
+        "random": f"Random location {place.list_order} of stratum {cells['stratum']}.",
+        "alternate": f"Alternate {place.list_order}, for {cells['alternate_for']}. Visit it only "
+        "instead of a location that cannot be sampled, lowest number first, and write down why.",
+        "targeted": "Targeted place: chosen by judgement, not in the mean.",
+    }
+    table = [
+        ("Location id", str(cells["location_id"])),
+        ("Stratum", str(cells["stratum"])),
+        ("Latitude", f"{place.latitude:.7f}°"),
+        ("Longitude", f"{place.longitude:.7f}°"),
+        (f"Grid {row.utm_zone}", f"{row.easting:.1f} E {row.northing:.1f} N"),
+        ("Samples", str(cells["sample_ids"])),
+        ("Depth", _depth(row)),
+        ("Reason", str(cells["reason"])),
+        ("If blocked", _offset_rule(plan) if place.location_class == "random" else ""),
+    ]
+    return {
+        "short_name": str(cells["short_name"]),
+        "class": place.location_class,
+        "mark": {"shape": mark.shape, "fill": mark.fill, "edge": mark.edge},
+        "title": str(cells["short_name"]),
+        "lead": [lead[place.location_class]],
+        "rows": [[name, value] for name, value in table if value],
+    }
+
+
+def _depth(row: PointRow) -> str:
+    if row.depth_top_m is None or row.depth_bottom_m is None:
+        return ""
+    return f"{row.depth_top_m:g} to {row.depth_bottom_m:g} m"
+
+
+def _offset_rule(plan: Plan) -> str:
+    field = plan.campaign.field
+    within = f"move up to {field.offset_within_m:g} m" if field.offset_within_m else ""
+    rule = ". ".join(part for part in (within, field.offset_rule) if part)
+    return rule or "do not move it; take the next alternate of its stratum"
+
+
+def _online_layer(title: str) -> folium.TileLayer:
+    credit = (
+        '&copy; <a href="https://www.openstreetmap.org/copyright">OpenStreetMap</a> contributors'
+    )
+    return folium.TileLayer(
+        tiles=f"{TILES}/{{z}}/{{x}}/{{y}}.png",
+        attr=credit,
+        name=title,
+        overlay=True,
+        show=False,
+        max_zoom=23,
+        max_native_zoom=19,
+    )
+
+
+def _facts(
+    plan: Plan, rows: tuple[PointRow, ...], shapes: tuple[Outline, ...], shown: list[Outline]
+) -> dict[str, Any]:
+    centre = plan.frame.projection
+    zone = site_zone(centre)
+    west, south, east, north = shapely.total_bounds([shape.geometry for shape in shapes])
+    longitudes = [_near(row.location.longitude, centre.longitude) for row in rows]
+    latitudes = [row.location.latitude for row in rows]
+    corners = [
+        [min([south, *latitudes]), min([west, *longitudes])],
+        [max([north, *latitudes]), max([east, *longitudes])],
+    ]
+    labels = []
+    for shape in shown:
+        spot = shapely.maximum_inscribed_circle(shape.geometry).coords[0]
+        longitude, latitude = (round(float(value), 7) for value in spot)
+        labels.append(
+            {
+                "kind": shape.kind,
+                "text": shape.name,
+                "latitude": latitude,
+                "longitude": longitude,
+            }
+        )
+    return {
+        "bounds": [[float(value) for value in corner] for corner in corners],
+        "zone": zone,
+        "zoneName": utm(centre.latitude, centre.longitude, zone=zone).zone_name,
+        "south": centre.latitude < 0,
+        "longitude": centre.longitude,
+        "gridColour": GRID_LINE,
+        "areaLabels": labels if len(plan.frame.strata) > 1 or plan.frame.excluded else [],
+    }
