@@ -4,10 +4,11 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 from fieldplan.base.errors import LabError
+from fieldplan.base.units import significant
 from fieldplan.lab.duplicates import merge_results
 from fieldplan.lab.model import LabRow, LabTable, StratumSpread
 from fieldplan.lab.roles import IN_THE_MEAN
-from fieldplan.lab.words import counted, figure, listed
+from fieldplan.lab.words import counted, listed
 from fieldplan.stats.summary import sample_mean, sample_sd, sample_skewness, skewness_ceiling
 
 MOST_NON_DETECTS = 0.40
@@ -176,7 +177,7 @@ def measured_spread(
     if refuse and sigmas[largest] <= 1e-12 * max(map(abs, ends[largest])):
         message = (
             f"{files}: all {len(locations)} results in stratum '{stratum}' are "
-            f"{figure(ends[largest][0])}; a spread of 0 cannot size a campaign. "
+            f"{significant(ends[largest][0])}; a spread of 0 cannot size a campaign. "
             f"{_REMEDY.format(stratum)}"
         )
         raise LabError(message)
@@ -218,19 +219,23 @@ def spread_sentences(entry: StratumSpread, unit: str, counts: Mapping[str, int])
     if not entry.values:
         return [head + _typed_sentence(entry, unit)]
     missing = entry.detected.count(False)
-    mean = sample_mean(entry.values)
-    smallest, largest = min(entry.values), max(entry.values)
     ratio = entry.sigma / entry.mean if entry.mean else 0.0
+    mean, low, high = sample_mean(entry.values), min(entry.values), max(entry.values)
     lines = [
-        f"{head}{entry.results} pilot locations ({entry.source}) have a mean of {figure(mean)} "
-        f"{unit} and s = {figure(entry.sigma)} {unit} (CV {ratio:.2f}), from {figure(smallest)} "
-        f"to {figure(largest)} {unit}; {counted(missing, 'non-detect')}."
+        f"{head}{entry.results} pilot locations ({entry.source}) have a mean of "
+        f"{significant(mean)} {unit} and s = {significant(entry.sigma)} {unit} (CV {ratio:.2f}), "
+        f"from {significant(low)} to {significant(high)} {unit}; "
+        f"{counted(missing, 'non-detect')}."
     ]
     if missing:
+        at_zero, at_half = (
+            significant(entry.sigma_at_zero or 0),
+            significant(entry.sigma_at_half or 0),
+        )
         lines.append(
-            f"{head}s is {figure(entry.sigma_at_zero or 0)} with non-detects at 0, "
-            f"{figure(entry.sigma_at_half or 0)} at half and {figure(entry.sigma_at_limit or 0)} "
-            "at the limit; the largest is used. Mean and range above have them at half."
+            f"{head}s is {at_zero} with non-detects at 0, {at_half} at half and "
+            f"{significant(entry.sigma_at_limit or 0)} at the limit; the largest is used. Mean "
+            "and range above have them at half."
         )
     lines.append(
         f"{head}the skewness of these results is {entry.skewness or 0.0:.2f}; {entry.results} "
@@ -241,7 +246,7 @@ def spread_sentences(entry: StratumSpread, unit: str, counts: Mapping[str, int])
 
 
 def _typed_sentence(entry: StratumSpread, unit: str) -> str:
-    value = f"sigma = {figure(entry.sigma)} {unit}"
+    value = f"sigma = {significant(entry.sigma)} {unit}"
     if entry.assumed:
         return f"{value} is ASSUMED, not measured."
     known = f", from {entry.results} results" if entry.results else ""

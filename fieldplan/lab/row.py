@@ -1,10 +1,10 @@
 """One row of a laboratory file: every cell checked, every fault of the row said at once."""
 
 import math
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 from decimal import Decimal
-from typing import NoReturn
+from typing import NoReturn, TypeVar
 
 from fieldplan.base.errors import LabError
 from fieldplan.campaign.model import Analyte
@@ -15,6 +15,7 @@ from fieldplan.lab.roles import plain_role
 from fieldplan.lab.tables import TextTable
 from fieldplan.lab.units import AMBIGUOUS, conversion_factor, plain_basis, plain_unit, split_basis
 
+Result = TypeVar("Result")
 _NO_LIMIT = {"", "-", "--", "na", "n/a", "nd"}
 
 
@@ -61,6 +62,21 @@ class FileMemory:
     limits_differ: list[int] = field(default_factory=list)
     converted: set[str] = field(default_factory=set)
     meanings: dict[tuple[str, str], set[str]] = field(default_factory=dict)
+
+
+class Attempts:
+    """Calls checks one after another and keeps what each has to say, so that all is said."""
+
+    def __init__(self) -> None:
+        self.problems: list[str] = []
+
+    def call(self, check: Callable[[], Result], otherwise: Result) -> Result:
+        """Return what a check returns; note its problems and return ``otherwise`` if it fails."""
+        try:
+            return check()
+        except LabError as fault:
+            self.problems += fault.problems
+            return otherwise
 
 
 @dataclass(frozen=True)
@@ -114,30 +130,18 @@ def _checked(row: RowCells, analyte: Analyte, memory: FileMemory, decimal_comma:
     faults = row.faults()
     if faults:
         raise LabError(*faults)
-    problems: list[str] = []
-    value, role = _Value(None, None, True, ""), ""
-    degrees: dict[str, float | None] = {}
-    try:
-        _check_meaning(row, analyte, memory)
-        value = _value(row, analyte, memory, decimal_comma)
-    except LabError as fault:
-        problems += fault.problems
-    try:
-        role = plain_role(row.text("role"), row.table.file_name, row.number)
-    except LabError as fault:
-        problems += fault.problems
-    for column, largest in (("latitude", 90), ("longitude", 180)):
-        try:
-            degrees[column] = read_degrees(row, column, largest, decimal_comma=decimal_comma)
-        except LabError as fault:
-            problems += fault.problems
-    if not row.tidy("location_id") and not row.tidy("sample_id"):
-        problems.append(
-            f"{row.table.file_name} row {row.number}: location_id and sample_id are blank. "
-            "Fill in one of them."
-        )
-    if problems:
-        raise LabError(*problems)
+    tried = Attempts()
+    tried.call(lambda: _check_meaning(row, analyte, memory), None)
+    tried.call(lambda: _check_ids(row), None)
+    value = tried.call(
+        lambda: _value(row, analyte, memory, decimal_comma), _Value(None, None, True, "")
+    )
+    role = tried.call(lambda: plain_role(row.text("role"), row.table.file_name, row.number), "")
+    comma = decimal_comma
+    latitude = tried.call(lambda: read_degrees(row, "latitude", 90, decimal_comma=comma), None)
+    longitude = tried.call(lambda: read_degrees(row, "longitude", 180, decimal_comma=comma), None)
+    if tried.problems:
+        raise LabError(*tried.problems)
     parent = row.tidy("duplicate_of")
     return LabRow(
         row=row.number,
@@ -152,10 +156,15 @@ def _checked(row: RowCells, analyte: Analyte, memory: FileMemory, decimal_comma:
         role="field duplicate" if parent and role == "field sample" else role,
         duplicate_of=parent,
         stratum=row.tidy("stratum"),
-        latitude=degrees["latitude"],
-        longitude=degrees["longitude"],
+        latitude=latitude,
+        longitude=longitude,
         qualifier_lab=row.tidy("qualifier_lab") or value.letters,
     )
+
+
+def _check_ids(row: RowCells) -> None:
+    if not row.tidy("location_id") and not row.tidy("sample_id"):
+        row.refuse("location_id", "and sample_id are blank. Fill in one of them.")
 
 
 def _check_meaning(row: RowCells, analyte: Analyte, memory: FileMemory) -> None:

@@ -5,13 +5,14 @@ from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
 from fieldplan.base.errors import FieldplanError, LabError
+from fieldplan.base.units import significant
 from fieldplan.campaign.inputs import resolve_file
 from fieldplan.campaign.model import Campaign, ReadCampaign, Sigma
 from fieldplan.lab.model import LabTable, Spread, StratumSpread
 from fieldplan.lab.pilot import PilotLocation, measured_spread, pilot_locations, spread_sentences
 from fieldplan.lab.reader import read_lab
 from fieldplan.lab.strata import sort_into_strata
-from fieldplan.lab.words import figure, listed
+from fieldplan.lab.words import listed
 
 if TYPE_CHECKING:
     from fieldplan.frame.model import Frame
@@ -164,9 +165,10 @@ class _Gathered:
         if len(places) < 2 or sigma.value is None:
             return
         pilot = measured_spread(places, self.analyte, name, refuse=False)
+        typed, found = significant(sigma.value), significant(pilot.sigma)
         self.notes.append(
-            f"{name}: the typed sigma of {figure(sigma.value)} {self.unit} is used; the pilot "
-            f"({pilot.source}, {pilot.results} results) has s = {figure(pilot.sigma)} {self.unit}."
+            f"{name}: the typed sigma of {typed} {self.unit} is used; the pilot "
+            f"({pilot.source}, {pilot.results} results) has s = {found} {self.unit}."
         )
 
     def site(self) -> StratumSpread | None:

@@ -1,0 +1,236 @@
+"""Which laboratory row belongs to which planned sample; likeness is proposed, never applied."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+from difflib import get_close_matches
+
+from fieldplan.base.errors import LabError
+from fieldplan.lab.model import LabRow
+from fieldplan.plan.model import Plan
+from fieldplan.returns.ids import likeness, plain_id
+from fieldplan.returns.model import NearMatch
+from fieldplan.samples.model import Sample
+
+LABORATORY_ROLES = ("laboratory duplicate", "laboratory control", "method blank", "matrix spike")
+"""Rows that the laboratory made for itself; they belong to no planned sample."""
+
+
+@dataclass(frozen=True)
+class ConfirmedMatch:
+    """One line of ``matches.csv``: what the user says of one proposal; None while unanswered."""
+
+    row: int
+    as_written: str
+    proposed: str
+    confirmed: bool | None
+
+
+@dataclass
+class Matching:
+    """Rows by the sample they belong to, and those that belong to none or are not sure."""
+
+    by_sample: dict[str, list[LabRow]] = field(default_factory=dict)
+    extra: list[LabRow] = field(default_factory=list)
+    near: list[NearMatch] = field(default_factory=list)
+
+    def add(self, sample_id: str, row: LabRow) -> None:
+        """Note that a row is the result of a sample."""
+        self.by_sample.setdefault(sample_id, []).append(row)
+
+    @property
+    def matched(self) -> int:
+        """Number of rows that belong to a planned sample."""
+        return sum(len(rows) for rows in self.by_sample.values())
+
+    @property
+    def undecided(self) -> int:
+        """Number of rows that wait for the user, however many proposals each has."""
+        return len({match.row for match in self.near})
+
+
+def id_as_written(row: LabRow) -> str:
+    """Give the id that a row is known by: the sample's, else the location's.
+
+    Parameters
+    ----------
+    row : LabRow
+    """
+    return row.sample_id or row.location_id
+
+
+def match_rows(
+    plan: Plan,
+    rows: Sequence[LabRow],
+    *,
+    analyte: str,
+    confirmed: Sequence[ConfirmedMatch] = (),
+) -> Matching:
+    """Set laboratory rows against planned samples.
+
+    Parameters
+    ----------
+    plan : Plan
+    rows : sequence of LabRow
+        Of one analyte, the laboratory's own control rows left out.
+    analyte : str
+        Only samples that are to be analysed for it count.
+    confirmed : sequence of ConfirmedMatch
+
+    Returns
+    -------
+    Matching
+
+    Raises
+    ------
+    LabError
+        A confirmed match does not fit the file or the plan.
+
+    Notes
+    -----
+    In this order: the exact sample id; what the user confirmed; the exact location id where it
+    leaves one sample. Whatever is left is compared by likeness and proposed.
+    """
+    return _Matcher(plan, analyte).match(rows, confirmed)
+
+
+class _Matcher:
+    def __init__(self, plan: Plan, analyte: str) -> None:
+        self.samples = {s.sample_id: s for s in plan.samples.samples if analyte in s.analytes}
+        self.at: dict[str, list[Sample]] = {}
+        for sample in self.samples.values():
+            self.at.setdefault(sample.location_id, []).append(sample)
+        self.location_named = {p.location_id: p.location_id for p in plan.locations.places}
+        for place in plan.locations.places:
+            self.location_named.setdefault(place.short_name, place.location_id)
+        self.rule = plan.campaign.rules.duplicates
+        self.matching = Matching()
+
+    def match(self, rows: Sequence[LabRow], confirmed: Sequence[ConfirmedMatch]) -> Matching:
+        decided = self._decided(rows, confirmed)
+        waiting = []
+        for row in rows:
+            sample_id = plain_id(row.sample_id)
+            if sample_id in self.samples:
+                self.matching.add(sample_id, row)
+            elif decided.get(row.row):
+                self.matching.add(decided[row.row], row)
+            else:
+                waiting.append(row)
+        for row in self._by_location(waiting):
+            proposals = self._proposals(row) if row.row not in decided else []
+            if proposals:
+                self.matching.near += proposals
+            else:
+                self.matching.extra.append(row)
+        return self.matching
+
+    def _decided(
+        self, rows: Sequence[LabRow], confirmed: Sequence[ConfirmedMatch]
+    ) -> dict[int, str]:
+        """Map a row's number to its sample; to an empty text when the user said no."""
+        by_number = {row.row: row for row in rows}
+        decided: dict[int, str] = {}
+        problems = []
+        for match in confirmed:
+            row = by_number.get(match.row)
+            head = f"matches.csv: row {match.row} '{match.as_written}'"
+            if row is None or plain_id(id_as_written(row)) != plain_id(match.as_written):
+                problems.append(
+                    f"{head} is not in this laboratory file. Delete matches.csv, run the command "
+                    "again and confirm anew."
+                )
+            elif match.confirmed:
+                sample_id = self._sample_named(match.proposed)
+                if not sample_id:
+                    problems.append(
+                        f"{head}: proposed '{match.proposed}' is no sample of the plan, nor a "
+                        "location with one sample."
+                    )
+                elif decided.get(match.row):
+                    problems.append(f"{head} is confirmed twice; say yes to one proposal.")
+                decided[match.row] = sample_id
+            elif match.confirmed is False:
+                decided.setdefault(match.row, "")
+        if problems:
+            raise LabError(*problems)
+        return decided
+
+    def _sample_named(self, written: str) -> str:
+        name = plain_id(written)
+        if name in self.samples:
+            return name
+        at_place = self.at.get(self.location_named.get(name, ""), [])
+        return at_place[0].sample_id if len(at_place) == 1 else ""
+
+    def _by_location(self, rows: Sequence[LabRow]) -> list[LabRow]:
+        """Match what a location id settles; return the rest."""
+        groups: dict[str, list[LabRow]] = {}
+        rest = []
+        for row in rows:
+            place = self._place_of(row)
+            if place and not self._sample_elsewhere(row, place):
+                groups.setdefault(place, []).append(row)
+            else:
+                rest.append(row)
+        for place, group in groups.items():
+            rest += self._share_out(place, group)
+        return sorted(rest, key=lambda row: row.row)
+
+    def _place_of(self, row: LabRow) -> str:
+        for written in (row.location_id, row.sample_id):
+            place = self.location_named.get(plain_id(written), "")
+            if place in self.at:
+                return place
+        return ""
+
+    def _sample_elsewhere(self, row: LabRow, place: str) -> bool:
+        """Whether the row's sample id looks like one of another location."""
+        if not row.sample_id or plain_id(row.sample_id) in self.location_named:
+            return False
+        wanted = likeness(row.sample_id)
+        alike = [s for s in self.samples.values() if likeness(s.sample_id) == wanted]
+        return any(s.location_id != place for s in alike)
+
+    def _share_out(self, place: str, rows: Sequence[LabRow]) -> list[LabRow]:
+        """Give the rows of one location to its samples, where that leaves no doubt."""
+        free = [s for s in self.at[place] if s.sample_id not in self.matching.by_sample]
+        if len(self.at[place]) == 1:
+            free = self.at[place]
+        if len(free) == 1:
+            for row in rows:
+                self.matching.add(free[0].sample_id, row)
+            return []
+        by_role = {s.role: s for s in free}
+        if len({row.role for row in rows}) == len(rows) and all(r.role in by_role for r in rows):
+            named = len(rows) > 1 or rows[0].role == "field duplicate"
+            if named or self.rule == "average":
+                for row in rows:
+                    self.matching.add(by_role[row.role].sample_id, row)
+                return []
+        if len(rows) <= len(free) and self.rule == "average":
+            for sample, row in zip(free, rows, strict=False):
+                self.matching.add(sample.sample_id, row)
+            return []
+        return list(rows)
+
+    def _proposals(self, row: LabRow) -> list[NearMatch]:
+        written = id_as_written(row)
+        free = [s for s in self.samples if s not in self.matching.by_sample]
+        names = {name: name for name in free}
+        for name, place in self.location_named.items():
+            at_place = [s for s in self.at.get(place, []) if s.sample_id in names]
+            if len(at_place) == 1:
+                names.setdefault(name, at_place[0].sample_id)
+        tried = [plain_id(text) for text in (row.sample_id, row.location_id) if text]
+        place = self._place_of(row)
+        alike = {names[n] for n in names for t in tried if likeness(n) == likeness(t)}
+        if alike:
+            why = "same but for case, dashes, spaces, zeros or look-alike letters"
+            return [NearMatch(row.row, written, name, why) for name in sorted(alike)]
+        if place:
+            rest = [s.sample_id for s in self.at[place] if s.sample_id in names]
+            why = f"one of the samples of {place}"
+            return [NearMatch(row.row, written, name, why) for name in rest]
+        keys = {likeness(name): sample for name, sample in names.items()}
+        near = [m for t in tried for m in get_close_matches(likeness(t), keys, n=1, cutoff=0.75)]
+        return [NearMatch(row.row, written, keys[n], "nearest spelling") for n in near[:1]]

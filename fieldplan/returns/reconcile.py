@@ -1,0 +1,252 @@
+"""The returned campaign against its plan: what came, what is missing, what stands in for what."""
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+from fieldplan.base.errors import LabError
+from fieldplan.design.model import Location
+from fieldplan.lab.model import LabRow, LabTable
+from fieldplan.lab.roles import IN_THE_MEAN
+from fieldplan.lab.tables import capped
+from fieldplan.lab.words import counted, listed
+from fieldplan.plan.model import Plan
+from fieldplan.returns.field import FieldReturn
+from fieldplan.returns.field_facts import FieldFacts, field_facts
+from fieldplan.returns.location_values import LocationValue, location_values, one_row_a_sample
+from fieldplan.returns.matching import (
+    LABORATORY_ROLES,
+    ConfirmedMatch,
+    Matching,
+    id_as_written,
+    match_rows,
+)
+from fieldplan.returns.model import FieldRow, LocationResult, LostLocation, Returns
+from fieldplan.returns.substitutes import Substitution, substitute
+
+TARGETED = "Targeted places were chosen by judgement and never enter the mean."
+OUTSIDE = "The crew found that the place lies outside the population."
+NOT_NEEDED = "Alternate that stands in for no lost location of its stratum."
+
+
+def reconcile(
+    plan: Plan,
+    lab_table: LabTable,
+    field_rows: FieldReturn | Sequence[FieldRow] = (),
+    *,
+    confirmed: Sequence[ConfirmedMatch] = (),
+) -> Returns:
+    """Meet laboratory results and the crew's return with the plan.
+
+    Parameters
+    ----------
+    plan : Plan
+    lab_table : LabTable
+    field_rows : FieldReturn or sequence of FieldRow
+        Empty when the crew returned nothing.
+    confirmed : sequence of ConfirmedMatch
+        From ``read_matches``.
+
+    Returns
+    -------
+
+    Returns
+    -------
+        With ``needs_you`` not empty while a laboratory id is only like a planned one.
+
+    Raises
+    ------
+    LabError
+        No row belongs to the plan; a sample has two different results; the return says that a
+        location was not taken and the laboratory reports it; a confirmed match does not fit.
+
+    Notes
+    -----
+    A location that moved keeps the stratum and weight with which it was drawn, since its chance
+    of being drawn was that of its planned place.
+    """
+    name, analyte = lab_table.file_name, plan.campaign.deciding_analyte.id
+    rows = [row for row in lab_table.rows if row.analyte == analyte]
+    own = [row for row in rows if row.role not in LABORATORY_ROLES]
+    matching = match_rows(plan, own, analyte=analyte, confirmed=confirmed)
+    if not matching.by_sample and not matching.near:
+        raise LabError(_nothing_matched(plan, name, own))
+    given = _as_return(field_rows)
+    by_sample, problems, notes = one_row_a_sample(name, matching.by_sample)
+    facts, moves = field_facts(plan, given.rows, given.file_name)
+    values = location_values(plan, by_sample)
+    problems += _contradictions(facts, values, name)
+    if problems:
+        raise LabError(*capped(problems))
+    usable = {n for n in values if not facts.get(n, FieldFacts()).outside}
+    met = _Met(plan, facts, values, substitute(plan, facts, usable))
+    expected = met.expected_samples(analyte)
+    counts = _counts(matching, [s for s in expected if s not in by_sample], len(rows) - len(own))
+    said = [*lab_table.notes, *notes, *counts, *met.pairs.notes, *moves]
+    said += [*met.control_notes(by_sample), *met.silence_notes(bool(given.rows))]
+    return Returns(
+        analyte=analyte,
+        results=met.results(),
+        lost=met.lost(),
+        matched=matching.matched,
+        planned_samples=len(expected),
+        extra=len(matching.extra),
+        needs_you=tuple(matching.near),
+        lab_file=name,
+        lab_sha256=lab_table.sha256,
+        field_file=given.file_name if given.sha256 else "",
+        field_sha256=given.sha256,
+        duplicate_pairs=met.duplicate_pairs(),
+        notes=tuple(said),
+    )
+
+
+def _as_return(rows: FieldReturn | Sequence[FieldRow]) -> FieldReturn:
+    return rows if isinstance(rows, FieldReturn) else FieldReturn("field return", "", tuple(rows))
+
+
+def _nothing_matched(plan: Plan, file_name: str, rows: Sequence[LabRow]) -> str:
+    seen = listed([f"'{id_as_written(row)}'" for row in rows], limit=4)
+    planned = listed([f"'{s.sample_id}'" for s in plan.samples.samples], limit=3)
+    return (
+        f"{file_name}: none of its ids ({seen}) belongs to {plan.revision_name}, whose samples are "
+        f"{planned}. Check that the file and the packet belong together, and which column holds "
+        "the sample ids."
+    )
+
+
+def _contradictions(
+    facts: Mapping[str, FieldFacts], values: Mapping[str, LocationValue], file_name: str
+) -> list[str]:
+    return [
+        f"{file_name} row {value.rows[0].row}: the laboratory reports sample "
+        f"'{value.sample_ids[0]}' of {name}, but the field return says that {name} was not taken. "
+        "Correct the return, or delete the row if the jar was mixed up."
+        for name, value in values.items()
+        if facts.get(name, FieldFacts()).taken is False
+    ]
+
+
+def _counts(matching: Matching, missing: Sequence[str], laboratory: int) -> list[str]:
+    notes = []
+    if missing:
+        notes.append(f"No result came for {counted(len(missing), 'sample')}: {listed(missing)}.")
+    if matching.extra:
+        names = [f"'{id_as_written(row)}' (row {row.row})" for row in matching.extra]
+        word = counted(len(names), "laboratory row")
+        notes.append(f"{word} of no planned sample, not used: {listed(names)}.")
+    if laboratory:
+        notes.append(f"{counted(laboratory, 'row')} of the laboratory's own controls not used.")
+    return notes
+
+
+@dataclass(frozen=True)
+class _Met:
+    """Plan, field and laboratory side by side."""
+
+    plan: Plan
+    facts: Mapping[str, FieldFacts]
+    values: Mapping[str, LocationValue]
+    pairs: Substitution
+
+    def results(self) -> tuple[LocationResult, ...]:
+        """Give every location that has a value, in the plan's order."""
+        return tuple(
+            self._result(place, self.values[place.location_id])
+            for place in self.plan.locations.places
+            if place.location_id in self.values
+        )
+
+    def _result(self, place: Location, value: LocationValue) -> LocationResult:
+        fact = self.facts.get(place.location_id, FieldFacts())
+        why_not = self._why_not(place, fact)
+        return LocationResult(
+            location_id=place.location_id,
+            stratum=place.stratum,
+            location_class=place.location_class,
+            sample_ids=value.sample_ids,
+            as_reported=tuple(row.as_reported.strip() for row in value.rows),
+            low=value.merged.low,
+            half=value.merged.half,
+            high=value.merged.high,
+            detected=value.merged.detected,
+            used=not why_not,
+            why_not=why_not,
+            latitude=place.latitude,
+            longitude=place.longitude,
+            actual_latitude=fact.latitude,
+            actual_longitude=fact.longitude,
+            moved_m=fact.moved_m,
+            stands_in_for=self.pairs.stands_in_for.get(place.location_id, ""),
+        )
+
+    def _why_not(self, place: Location, fact: FieldFacts) -> str:
+        if place.location_class == "targeted":
+            return TARGETED
+        if fact.outside:
+            return OUTSIDE
+        if place.location_class == "alternate":
+            return "" if place.location_id in self.pairs.stands_in_for else NOT_NEEDED
+        return ""
+
+    def lost(self) -> tuple[LostLocation, ...]:
+        """Give the random locations without a value in the mean."""
+        lost = []
+        for place in self.plan.locations.of_class("random"):
+            fact = self.facts.get(place.location_id, FieldFacts())
+            if place.location_id in self.values and not fact.outside:
+                continue
+            replaced_by = self.pairs.replacement_of(place.location_id)
+            lost.append(
+                LostLocation(place.location_id, place.stratum, _why_lost(fact), replaced_by)
+            )
+        return tuple(lost)
+
+    def expected_samples(self, analyte: str) -> list[str]:
+        """Name the samples a result is expected for; alternates only where one was taken."""
+        unused = {
+            place.location_id
+            for place in self.plan.locations.of_class("alternate")
+            if place.location_id not in self.values
+            and not self.facts.get(place.location_id, FieldFacts()).taken
+        }
+        return [
+            sample.sample_id
+            for sample in self.plan.samples.samples
+            if analyte in sample.analytes and sample.location_id not in unused
+        ]
+
+    def duplicate_pairs(self) -> tuple[tuple[str, float | None, float | None], ...]:
+        """Give both results of every location that has two."""
+        return tuple(
+            (name, value.rows[0].result, value.rows[1].result)
+            for name, value in self.values.items()
+            if len(value.rows) > 1
+        )
+
+    def control_notes(self, by_sample: Mapping[str, Sequence[LabRow]]) -> list[str]:
+        """Say what the blanks showed; they never enter the mean."""
+        return [
+            f"{sample.role} {sample.sample_id}: {by_sample[sample.sample_id][0].as_reported.strip()}"
+            f" as reported; not in the mean."
+            for sample in self.plan.samples.samples
+            if sample.role not in IN_THE_MEAN and sample.sample_id in by_sample
+        ]
+
+    def silence_notes(self, has_return: bool) -> list[str]:
+        """Say which locations have a result but no word of the crew."""
+        if not has_return:
+            return ["No field return was given: moved and replaced locations could not be checked."]
+        silent = [name for name in self.values if self.facts.get(name, FieldFacts()).taken is None]
+        if not silent:
+            return []
+        return [f"The field return does not say whether {listed(silent)} was taken; used."]
+
+
+def _why_lost(fact: FieldFacts) -> str:
+    if fact.outside:
+        return "outside"
+    if fact.taken:
+        return fact.reason or "taken, but no result came from the laboratory"
+    if fact.taken is False:
+        return fact.reason or "not taken, no reason given"
+    return fact.reason or "no result, and the field return does not say why"
