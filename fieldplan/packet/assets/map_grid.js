@@ -92,9 +92,9 @@ function fieldplanGridLabel(grid, value, axis, step) {
 }
 
 function fieldplanGridLayer(map, grid, layer, colour) {
-  map.createPane("grid").style.zIndex = 350;
+  map.createPane("grid").style.zIndex = 450;
   map.createPane("gridLabels").style.zIndex = 640;
-  map.getPane("gridLabels").style.pointerEvents = "none";
+  ["grid", "gridLabels"].forEach((name) => { map.getPane(name).style.pointerEvents = "none"; });
   const renderer = L.svg({pane: "grid", padding: 0.3});
 
   function line(start, end) {
@@ -121,9 +121,18 @@ function fieldplanGridLayer(map, grid, layer, colour) {
     return null;
   }
 
+  /* Clear of the buttons on the left and of the scale and the credits at the bottom. */
+  function free(axis, at, size) {
+    const corner = (name) => map.getContainer().querySelector(name);
+    if (axis) {
+      return at > corner(".leaflet-top.leaflet-left").offsetHeight + 16 && at < size.y - 60;
+    }
+    return at > corner(".leaflet-bottom.leaflet-left").offsetWidth + 45
+      && at < size.x - corner(".leaflet-bottom.leaflet-right").offsetWidth - 40;
+  }
+
   function label(text, axis, at, size) {
-    const free = axis ? at > 100 && at < size.y - 60 : at > 150 && at < size.x - 30;
-    if (at === null || !free) { return; }
+    if (at === null || !free(axis, at, size)) { return; }
     const spot = axis ? L.point(3, at) : L.point(at, size.y - 4);
     const element = document.createElement("span");
     element.textContent = text;

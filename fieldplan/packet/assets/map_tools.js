@@ -81,7 +81,7 @@ function fieldplanMeasure(map) {
   const spots = [], drawn = L.layerGroup();
   const bar = document.getElementById("measure");
   const output = bar.querySelector("output");
-  const button = fieldplanElement("a", "measure-button", "\u21a6");
+  const button = fieldplanElement("a", "measure-button");
   let active = false;
 
   function show() {
@@ -107,6 +107,7 @@ function fieldplanMeasure(map) {
   const Control = L.Control.extend({onAdd() {
     const holder = fieldplanElement("div", "leaflet-bar");
     button.href = "#";
+    button.append(document.getElementById("ruler").content.cloneNode(true));
     button.title = "Measure distance and area";
     button.setAttribute("role", "button");
     button.setAttribute("aria-label", button.title);

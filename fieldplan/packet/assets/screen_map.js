@@ -83,19 +83,28 @@ function fieldplanNorth(map) {
   new Control({position: "topleft"}).addTo(map);
 }
 
-function fieldplanPrint(map, bounds) {
+/* Paper has a size of its own: the page takes it before the browser lays the print out. */
+function fieldplanPrint(map, bounds, panel) {
   let before = null;
   window.addEventListener("beforeprint", () => {
     before = {centre: map.getCenter(), zoom: map.getZoom()};
     document.body.classList.add("printing");
     map.invalidateSize({animate: false});
-    map.fitBounds(bounds, {animate: false, padding: [24, 24]});
+    fieldplanFit(map, bounds, panel);
   });
   window.addEventListener("afterprint", () => {
     document.body.classList.remove("printing");
     map.invalidateSize({animate: false});
     if (before) { map.setView(before.centre, before.zoom, {animate: false}); }
   });
+}
+
+/* The whole site, clear of the buttons and of an open panel where the window is wide. */
+function fieldplanFit(map, bounds, panel) {
+  const container = panel.getContainer();
+  const open = container.offsetHeight > 100;
+  map.fitBounds(bounds, {animate: false, paddingTopLeft: [window.innerWidth < 700 ? 24 : 80, 24],
+    paddingBottomRight: [open ? container.offsetWidth + 30 : 24, 44]});
 }
 
 function fieldplanMap(map, facts, parts) {
@@ -114,8 +123,8 @@ function fieldplanMap(map, facts, parts) {
   }
   const areaLabels = fieldplanAreaLabels(map, facts.areaLabels);
   const arrange = fieldplanLabels(map, parts.locations, areaLabels);
-  fieldplanPrint(map, bounds);
-  map.fitBounds(bounds, {animate: false, padding: [28, 28]});
+  fieldplanPrint(map, bounds, parts.panel);
+  fieldplanFit(map, bounds, parts.panel);
   drawGrid();
   arrange();
   window.fieldplanShown = {map, grid, facts, parts, leg: fieldplanLeg, area: fieldplanArea};

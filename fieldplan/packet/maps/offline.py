@@ -1,10 +1,10 @@
 """A map page with everything inside: no script, style or image from anywhere else."""
 
 from html import escape
-from typing import Any, ClassVar
+from typing import Any
 
 import folium
-from branca.element import Element, MacroElement
+from branca.element import Element, Figure, MacroElement
 from jinja2 import Template
 
 from fieldplan.packet.assets import LEAFLET, leaflet_script, leaflet_styles, read_asset
@@ -28,8 +28,10 @@ _POLAR_CRS = """L.CRS.Fieldplan%(name)s = L.extend({}, L.CRS.EPSG4326, {code: "l
 class OfflineMap(folium.Map):
     """A folium map whose lists of remote scripts and styles are empty."""
 
-    default_js: ClassVar[list[tuple[str, str]]] = []
-    default_css: ClassVar[list[tuple[str, str]]] = []
+    def __init__(self, **options: Any) -> None:
+        super().__init__(**options)
+        self.default_js = []
+        self.default_css = []
 
 
 class Raw(Element):
@@ -62,7 +64,7 @@ class Call(MacroElement):
     )
 
     def __init__(self, function: str, facts: dict[str, Any], layers: dict[str, Any]) -> None:
-        super().__init__()
+        super().__init__()  # type: ignore[no-untyped-call]
         self._name = "Call"
         self.function = function
         self.facts = facts
@@ -79,6 +81,13 @@ def _names(value: Any) -> str:
     return str(value.get_name())
 
 
+def figure_of(page: OfflineMap) -> Figure:
+    """Give the page that a map stands on."""
+    figure = page.get_root()
+    assert isinstance(figure, Figure)
+    return figure
+
+
 def add_head(page: OfflineMap, *, title: str, scripts: str = "") -> None:
     """Put the map library, our own scripts and styles, and a policy against requests in the head.
 
@@ -90,7 +99,7 @@ def add_head(page: OfflineMap, *, title: str, scripts: str = "") -> None:
     scripts : str
         Further script text, run after the map library.
     """
-    root = page.get_root()
+    root = figure_of(page)
     root.title = escape(title)
     policy = (
         f"default-src 'none'; script-src 'unsafe-inline'; style-src 'unsafe-inline'; "
@@ -131,7 +140,7 @@ def render_offline(page: OfflineMap) -> str:
     str
         HTML.
     """
-    root = page.get_root()
+    root = figure_of(page)
     _number_elements(root)
     html = str(root.render())
     return html.replace("<html>", '<html lang="en">', 1)

@@ -16,6 +16,7 @@ from fieldplan.packet.maps.offline import (
     OfflineMap,
     Raw,
     add_head,
+    figure_of,
     polar_crs,
     render_offline,
 )
@@ -27,11 +28,11 @@ from fieldplan.packet.maps.palette import (
     stratum_fill,
 )
 from fieldplan.packet.maps.screen_page import (
+    drawings,
+    foot,
     layer_titles,
-    north_arrow,
     pattern_definitions,
     title_block,
-    foot,
 )
 from fieldplan.plan.model import Plan
 
@@ -90,9 +91,9 @@ def _empty_map(plan: Plan) -> OfflineMap:
         wheel_px_per_zoom_level=90,
     )
     add_head(page, title=f"{plan.revision_name} map, {plan.status}", scripts=script)
-    body = page.get_root().html
+    body = figure_of(page).html
     body.add_child(Raw(title_block(plan)), name="title_block", index=0)
-    body.add_child(Raw(pattern_definitions() + north_arrow()), name="patterns", index=1)
+    body.add_child(Raw(pattern_definitions() + drawings()), name="patterns", index=1)
     # folium puts the map after this when it renders; the styles set both in their places.
     body.add_child(Raw(foot(plan)), name="foot")
     return page
@@ -231,18 +232,6 @@ def _facts(
         [min([south, *latitudes]), min([west, *longitudes])],
         [max([north, *latitudes]), max([east, *longitudes])],
     ]
-    labels = []
-    for shape in shown:
-        spot = shapely.maximum_inscribed_circle(shape.geometry).coords[0]
-        longitude, latitude = (round(float(value), 7) for value in spot)
-        labels.append(
-            {
-                "kind": shape.kind,
-                "text": shape.name,
-                "latitude": latitude,
-                "longitude": longitude,
-            }
-        )
     return {
         "bounds": [[float(value) for value in corner] for corner in corners],
         "zone": zone,
@@ -250,5 +239,17 @@ def _facts(
         "south": centre.latitude < 0,
         "longitude": centre.longitude,
         "gridColour": GRID_LINE,
-        "areaLabels": labels if len(plan.frame.strata) > 1 or plan.frame.excluded else [],
+        "areaLabels": [_area_label(shape) for shape in shown],
+    }
+
+
+def _area_label(shape: Outline) -> dict[str, Any]:
+    """Put the name of an area where most room is: the centre of its largest inner circle."""
+    widest = max(shapely.get_parts(shape.geometry), key=shapely.area)
+    longitude, latitude = shapely.get_coordinates(shapely.maximum_inscribed_circle(widest))[0]
+    return {
+        "kind": shape.kind,
+        "text": shape.name,
+        "latitude": round(float(latitude), 7),
+        "longitude": round(float(longitude), 7),
     }

@@ -60,12 +60,15 @@ def foot(plan: Plan) -> str:
 <span class="sources">{"Sources: " + said(sources) if sources else ""}</span></footer>"""
 
 
-def north_arrow() -> str:
-    """Give the arrow as a template that the script puts on the map."""
+def drawings() -> str:
+    """Give the north arrow and the ruler as templates that the script puts on the map."""
     return """<template id="north-arrow"><svg viewBox="0 0 30 46" role="img" \
 aria-label="North is up"><path d="M15 3 L25 31 L15 25 L5 31 Z" fill="#fff" stroke="#111" \
 stroke-width="1.6"/><path d="M15 3 L15 25 L5 31 Z" fill="#111"/><text x="15" y="45" \
-text-anchor="middle" font-size="14" font-weight="700" fill="#111">N</text></svg></template>"""
+text-anchor="middle" font-size="14" font-weight="700" fill="#111">N</text></svg></template>
+<template id="ruler"><svg viewBox="0 0 24 24" width="24" height="24" aria-hidden="true">\
+<path d="M2 16 L16 2 L22 8 L8 22 Z M6 12 l2.5 2.5 M9 9 l3.5 3.5 M12 6 l2.5 2.5" fill="none" \
+stroke="currentColor" stroke-width="1.6"/></svg></template>"""
 
 
 def pattern_definitions() -> str:
@@ -107,7 +110,7 @@ def layer_titles(plan: Plan, shapes: tuple[Outline, ...]) -> dict[str, str]:
     dict of str to str
         HTML with typed text escaped; a layer without content has no entry.
     """
-    titles = {}
+    titles: dict[str, str] = {}
     for name, mark in MARKS.items():
         count = len(plan.locations.of_class(name))
         if count:
@@ -129,13 +132,13 @@ def _outline_titles(plan: Plan, shapes: tuple[Outline, ...]) -> dict[str, str]:
             for n, shape in enumerate(strata)
             for fill in [stratum_fill(n)]
         ]
-        titles["stratum"] = f"{'Strata' if len(strata) > 1 else 'Sampled area'}{''.join(rows)}"
+        titles["stratum"] = _group("Strata" if len(strata) > 1 else "Sampled area", rows)
     if excluded:
         rows = [
             _row(_box_swatch("hatch", EXCLUDED_LINE), f"{said(s.name)}, {_hectares(s.area_m2)}")
             for s in excluded
         ]
-        titles["excluded"] = f"Excluded{''.join(rows)}"
+        titles["excluded"] = _group("Excluded", rows)
     return titles
 
 
@@ -155,6 +158,10 @@ def _hectares(square_metres: float) -> str:
     if square_metres < 10_000:
         return f"{square_metres:.0f} m²"
     return f"{square_metres / 10_000:.2f} ha"
+
+
+def _group(title: str, rows: list[str]) -> str:
+    return f'<span class="group">{title}{"".join(rows)}</span>'
 
 
 def _row(swatch: str, words: str) -> str:
