@@ -48,9 +48,7 @@ def reconcile(
 
     Returns
     -------
-
-    Returns
-    -------
+    what_came_back : Returns
         With ``needs_you`` not empty while a laboratory id is only like a planned one.
 
     Raises
@@ -226,8 +224,8 @@ class _Met:
     def control_notes(self, by_sample: Mapping[str, Sequence[LabRow]]) -> list[str]:
         """Say what the blanks showed; they never enter the mean."""
         return [
-            f"{sample.role} {sample.sample_id}: {by_sample[sample.sample_id][0].as_reported.strip()}"
-            f" as reported; not in the mean."
+            f"{sample.role} {sample.sample_id}, not in the mean, was reported as "
+            f"'{by_sample[sample.sample_id][0].as_reported.strip()}'."
             for sample in self.plan.samples.samples
             if sample.role not in IN_THE_MEAN and sample.sample_id in by_sample
         ]
