@@ -2,7 +2,7 @@
 
 from fieldplan.base.document import Block, Bullets, Facts, Paragraph, Table
 from fieldplan.campaign.model import Analyte
-from fieldplan.packet.sheets.amounts import BLANK, area, days
+from fieldplan.packet.sheets.amounts import BLANK, area, days, percent
 from fieldplan.packet.sheets.plan_words import mean_of, several_strata
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
@@ -53,16 +53,18 @@ def population_blocks(plan: Plan) -> list[Block]:
     """Set the population in sentences, then what was taken out of it."""
     frame, population = plan.frame, plan.frame.population
     blocks: list[Block] = [Bullets(population.sentences)]
-    blocks.append(measure_table(plan) if frame.kind == "area" else list_table(plan))
+    if several_strata(plan):
+        blocks.append(measure_table(plan))
     asked = plan.campaign.frame[0]
     facts = [
-        ("One n is", asked.unit_is),
         ("Depth", depth(plan)),
         ("Fraction", asked.size_fraction),
         ("Time", asked.time_window),
         ("Why this is averaged as one", asked.why_this_area),
     ]
-    blocks.append(Facts(tuple((label, value) for label, value in facts if value)))
+    typed_facts = tuple((label, value) for label, value in facts if value)
+    if typed_facts:
+        blocks.append(Facts(typed_facts))
     if frame.notes:
         blocks.append(Bullets(frame.notes))
     return blocks
@@ -78,29 +80,17 @@ def depth(plan: Plan) -> str:
 
 
 def measure_table(plan: Plan) -> Table:
-    """Set gross area, each exclusion, the strip at the edge, and what is left."""
-    population = plan.frame.population
-    rows = [("Inside the boundary", area(population.gross), "")]
-    for part in plan.frame.excluded:
-        buffer = f" (with {number(part.buffer_m)} m around it)" if part.buffer_m else ""
-        rows.append((f"Left out: {part.reason}{buffer}", "− " + area(part.area_m2), part.source))
-    if population.inset_loss:
-        inset = number(plan.campaign.frame[0].inset_m)
-        rows.append(
-            (f"Left out: strip of {inset} m at the edge", "− " + area(population.inset_loss), "")
-        )
-    if several_strata(plan):
-        rows += [(f"Stratum {s.name}", area(s.measure), "") for s in plan.frame.strata]
-    rows.append(("Population", area(population.net), ""))
-    return Table(("Part", "Area", "File"), tuple(rows), numeric=("Area",))
+    """Set the strata with their size and their weight in the mean."""
+    frame = plan.frame
+    unit = "Area" if frame.kind == "area" else "Units"
+    rows = [
+        (stratum.name, measured(plan, stratum.measure), percent(stratum.weight))
+        for stratum in frame.strata
+    ]
+    rows.append(("All", measured(plan, frame.population.net), "100 %"))
+    return Table(("Stratum", unit, "Weight"), tuple(rows), numeric=(unit, "Weight"))
 
 
-def list_table(plan: Plan) -> Table:
-    """Set the number of units, by stratum where there are strata."""
-    rows = [(f"Stratum {s.name}", str(s.count or 0)) for s in plan.frame.strata]
-    total = ("Population", str(round(plan.frame.population.net)))
-    return Table(
-        ("Part", "Units"),
-        (*rows, total) if several_strata(plan) else (total,),
-        numeric=("Units",),
-    )
+def measured(plan: Plan, measure: float) -> str:
+    """Write square metres of an area, or the number of units of a list."""
+    return area(measure) if plan.frame.kind == "area" else str(round(measure))

@@ -2,8 +2,9 @@
 
 import re
 from dataclasses import replace
+from functools import cache
 
-from fieldplan.base.document import Paragraph, Table
+from fieldplan.base.document import Document, Paragraph, Table
 from fieldplan.estimate.model import Change, Interval
 from fieldplan.packet.sheets.results_sheet import results_sheet
 from fieldplan.packet.sheets.returned import relative_difference
@@ -11,14 +12,22 @@ from tests.factories import make_estimate, make_plan, make_returns
 from tests.unit.packet.sheet_text import headings_of, words_of
 
 
+@cache
+def standard() -> Document:
+    """The sheet of the hand-made estimate, drawn once."""
+    return results_sheet(make_plan(), make_estimate())
+
+
 def sheet_text(**changes: object) -> str:
     """All words of the sheet for a changed estimate."""
+    if not changes:
+        return words_of(standard())
     return words_of(results_sheet(make_plan(), make_estimate(**changes)))
 
 
 def test_the_first_words_are_the_answer():
     """Whoever opens the sheet asks for the mean."""
-    first = results_sheet(make_plan(), make_estimate()).blocks[0]
+    first = standard().blocks[0]
     assert isinstance(first, Paragraph)
     assert first.tone == "answer"
     assert first.text == make_estimate().sentences[0]
@@ -43,7 +52,7 @@ def test_sentences_that_the_estimate_repeats_are_not_repeated():
 
 def test_changes_made_after_results_has_a_section_even_when_there_were_none():
     """Its absence could hide a change."""
-    sheet = results_sheet(make_plan(), make_estimate())
+    sheet = standard()
     assert "Changes made after results" in headings_of(sheet)
     assert "None. Every rule is the one recorded before results." in words_of(sheet)
 
@@ -60,7 +69,7 @@ def test_a_change_is_printed_with_both_answers_and_on_page_one():
 
 def test_every_result_stands_as_reported_with_what_became_of_it():
     """A result that is not used needs its reason beside it."""
-    tables = [b for b in results_sheet(make_plan(), make_estimate()).blocks if isinstance(b, Table)]
+    tables = [b for b in standard().blocks if isinstance(b, Table)]
     table = next(t for t in tables if "As reported" in t.columns)
     rows = {row[0]: row for row in table.rows}
     assert set(rows) == {r.location_id for r in make_returns().results}
