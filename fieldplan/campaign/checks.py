@@ -90,7 +90,8 @@ def _designs(data: Data) -> Iterator[Problem]:
         layout = design.get("layout")
         kind = frame.get("kind")
         allowed = {"area": AREA_LAYOUTS, "list": LIST_LAYOUTS}.get(str(kind), ())
-        if allowed and layout in {*AREA_LAYOUTS, *LIST_LAYOUTS} - set(allowed):
+        known = (*AREA_LAYOUTS, *LIST_LAYOUTS)
+        if allowed and layout in known and layout not in allowed:
             text = (
                 f"this layout does not suit a frame of kind {shown(kind)} (got {shown(layout)}). "
                 f"Takes {', '.join(allowed)}."
@@ -203,13 +204,15 @@ def _deciding(data: Data) -> Iterator[Problem]:
     i = marked[0] if marked else 0
     analyte = objectives[i].get("analyte")
     entries = _sigma_of(data, analyte)
-    if not entries and tables(data, "sigma") and analyte is not None:
+    ids = [known.get("id") for known in tables(data, "analyte")]
+    resolved = all(entry.get("analyte") in ids for entry in tables(data, "sigma"))
+    if not entries and tables(data, "sigma") and analyte in ids and resolved:
         text = f"no [[sigma]] for {shown(analyte)}, whose objective decides n. Add one."
         yield Problem(("sigma",), text)
     assurance = objectives[i].get("assurance")
     if not _is_number(assurance) or not entries:
         return
-    if not any("pilot" in entry or "from_results" in entry for entry in entries):
+    if all("value" in entry and not {"pilot", "from_results"} & set(entry) for entry in entries):
         text = (
             f"the chance that n is enough can be had only from a pilot or from_results beside "
             f"the typed sigma (got {shown(assurance)}). "

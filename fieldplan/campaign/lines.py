@@ -57,7 +57,7 @@ def _statements(text: str) -> Iterator[tuple[int, str, dict[str, Any]]]:
     """Yield (line, text, content) of every header and every key with its value."""
     waiting: list[str] = []
     start = 1
-    for number, line in enumerate(text.split("\n"), start=1):
+    for number, line in enumerate(text.replace("\r\n", "\n").split("\n"), start=1):
         if not waiting:
             start = number
             if not line.strip() or line.lstrip().startswith("#"):

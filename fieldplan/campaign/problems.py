@@ -62,7 +62,7 @@ def near_miss(word: str, known: Sequence[str]) -> str:
 
 def meaning(table: str, key: str) -> str:
     """Say what a key is, in the words that editors and the reference show."""
-    return MEANING.get(f"{table}.{key}", key).split(";")[0]
+    return MEANING.get(f"{table}.{key}".lstrip("."), key).split(";")[0]
 
 
 @cache

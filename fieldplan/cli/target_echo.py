@@ -165,6 +165,6 @@ def _chance(answers: Answers, sigma: KnownSigma, target: float, n: int) -> str:
             pilot_n=sigma.results,
         )
     return (
-        f"The chance that {n} are enough is {chance * 100:.0f} %, since sigma is itself an estimate from "
-        f"{sigma.results} results; for a chance of {wanted * 100:.0f} % it takes {more}."
+        f"The chance that {n} are enough is {chance * 100:.0f} %, since sigma is itself an "
+        f"estimate from {sigma.results} results; for a chance of {wanted * 100:.0f} % it takes {more}."
     )
