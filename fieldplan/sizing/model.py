@@ -106,7 +106,7 @@ class Size:
     steps : tuple of Step
         Numbered working.
     curve : tuple of CurvePoint
-        From half to twice the plain n.
+        From half the plain n to twice the needed n.
     qc : tuple of QualityControlCount
     cost, currency
         Total for ``planned`` locations with QC; None without a cost table.
@@ -114,6 +114,8 @@ class Size:
         The answer in words, most important first.
     conditions : tuple of str
         Under what the interval may be trusted (normality, skewness).
+    unrounded : float or None
+        The plain total before rounding, floors and Student's t; None without a target.
     """
 
     design: str
@@ -142,3 +144,4 @@ class Size:
     currency: str
     sentences: tuple[str, ...]
     conditions: tuple[str, ...]
+    unrounded: float | None = None

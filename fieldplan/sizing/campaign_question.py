@@ -1,0 +1,150 @@
+"""From campaign, frame and spread to the question that sizing answers."""
+
+import math
+from typing import TYPE_CHECKING
+
+from fieldplan.base.errors import CampaignError, DesignError
+from fieldplan.sizing.question import ControlRate, Part, Prices, Question, TargetKind
+from fieldplan.sizing.words import typed
+
+if TYPE_CHECKING:
+    from fieldplan.campaign.model import Campaign, Objective
+    from fieldplan.frame.model import Frame
+    from fieldplan.lab.model import Spread, StratumSpread
+
+TARGETS: tuple[TargetKind, ...] = (
+    "standard_error",
+    "half_width",
+    "relative_half_width",
+    "budget",
+)
+
+
+def question_of(campaign: "Campaign", spread: "Spread", frame: "Frame") -> Question:
+    """Ask how many for the objective that decides n.
+
+    Parameters
+    ----------
+    campaign : Campaign
+    spread : Spread
+        One sigma for every stratum of the frame.
+    frame : Frame
+
+    Returns
+    -------
+    Question
+
+    Raises
+    ------
+    CampaignError
+        The objective has no target, or one that lacks its mean or prices.
+    DesignError
+        A stratum has no sigma.
+    """
+    objective = campaign.deciding_objective
+    design = next((d for d in campaign.design if d.id == objective.design), campaign.design[0])
+    kind, value = _target(objective)
+    mean = _expected_mean(spread, frame)
+    _check_support(campaign, kind, value, mean)
+    cost = campaign.cost
+    assurance = objective.assurance
+    return Question(
+        parts=_parts(campaign, spread, frame),
+        target=kind,
+        value=value,
+        mean=mean,
+        assurance=None if isinstance(assurance, str) else assurance,
+        assurance_chosen_by=objective.assurance_chosen_by,
+        confidence=campaign.rules.confidence,
+        interval=campaign.rules.interval,
+        allocation=design.allocation,
+        floor=design.floor,
+        alternates=design.alternates,
+        locations=design.locations,
+        census=design.layout == "census",
+        grid=design.layout.endswith("-grid"),
+        prices=None
+        if cost is None
+        else Prices(cost.currency, cost.mobilisation, cost.per_location, cost.per_analysis),
+        controls=tuple(ControlRate(qc.kind, qc.share, qc.count, qc.source) for qc in campaign.qc),
+        design=design.id,
+        analyte=spread.analyte,
+        unit=spread.unit,
+    )
+
+
+def _target(objective: "Objective") -> tuple[TargetKind, float]:
+    given = [(kind, getattr(objective, kind)) for kind in TARGETS]
+    typed_ones = [(kind, value) for kind, value in given if value is not None]
+    if len(typed_ones) != 1:
+        found = " and ".join(kind for kind, _ in typed_ones) or "none of them"
+        message = (
+            f"[[objective]] has {found}; it needs exactly one of standard_error, half_width, "
+            "relative_half_width or budget."
+        )
+        raise CampaignError(message)
+    return typed_ones[0]
+
+
+def _check_support(
+    campaign: "Campaign", kind: TargetKind, value: float, mean: float | None
+) -> None:
+    if kind == "relative_half_width" and mean is None:
+        message = (
+            f"[[objective]] relative_half_width = {typed(value)} needs an expected mean to be a "
+            "share of; write expected_mean in every [[sigma]] table, or name a pilot file there."
+        )
+        raise CampaignError(message)
+    if kind == "relative_half_width" and mean is not None and mean <= 0:
+        message = (
+            f"[[objective]] relative_half_width = {typed(value)} cannot be a share of an expected "
+            f"mean of {mean:g}; use half_width instead."
+        )
+        raise CampaignError(message)
+    if kind == "budget" and campaign.cost is None:
+        message = (
+            f"[[objective]] budget = {typed(value)} needs prices; add a [cost] table with "
+            "currency, mobilisation, per_location and per_analysis."
+        )
+        raise CampaignError(message)
+
+
+def _expected_mean(spread: "Spread", frame: "Frame") -> float | None:
+    """Weigh the strata's means; fall back on the site's where one is missing."""
+    means = {entry.stratum: entry.mean for entry in spread.strata}
+    known = [(s.weight, means.get(s.name)) for s in frame.strata]
+    if all(mean is not None for _, mean in known):
+        return math.fsum(weight * (mean or 0.0) for weight, mean in known)
+    return spread.site.mean if spread.site is not None else None
+
+
+def _parts(campaign: "Campaign", spread: "Spread", frame: "Frame") -> tuple[Part, ...]:
+    entries = {entry.stratum: entry for entry in spread.strata}
+    missing = [s.name for s in frame.strata if s.name not in entries]
+    if missing:
+        message = (
+            f"stratum {', '.join(missing)} has no sigma; add a [[sigma]] table for it with a value "
+            "and its source, or a pilot with at least 2 results there."
+        )
+        raise DesignError(message)
+    losses = campaign.loss.by_stratum
+    return tuple(
+        Part(
+            name=stratum.name,
+            weight=stratum.weight,
+            sigma=entries[stratum.name].sigma,
+            results=entries[stratum.name].results,
+            population=stratum.count,
+            loss=losses.get(stratum.name, campaign.loss.share),
+            pilot=_pilot(entries[stratum.name]),
+            source=entries[stratum.name].source,
+            assumed=entries[stratum.name].assumed,
+            skewness=entries[stratum.name].skewness,
+        )
+        for stratum in frame.strata
+    )
+
+
+def _pilot(entry: "StratumSpread") -> str:
+    """Name the pilot behind a sigma: equal values from one source are one pilot, used twice."""
+    return f"{entry.source} {entry.sigma!r} {entry.results} {entry.values!r}"

@@ -1,0 +1,190 @@
+"""The counts themselves: plain, at an assurance, for a budget, typed; then losses and money."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from fieldplan.base.errors import DesignError
+from fieldplan.sizing.model import QualityControlCount
+from fieldplan.sizing.precision import Precision
+from fieldplan.sizing.question import Question
+from fieldplan.stats.allocation import check_total, first_that, share_total, smallest_total
+from fieldplan.stats.distributions import normal_quantile
+from fieldplan.stats.precision import meets, smallest, whole
+
+
+@dataclass(frozen=True)
+class Counts:
+    """Results by stratum: by the plain formula, and those that the campaign goes for.
+
+    ``planned`` are locations to visit. ``plain`` is None where there is no precision target.
+    """
+
+    plain: tuple[int, ...] | None
+    needed: tuple[int, ...]
+    planned: tuple[int, ...]
+
+
+def count(question: Question) -> Counts:
+    """Count results and locations for a question.
+
+    Parameters
+    ----------
+    question : Question
+
+    Returns
+    -------
+    Counts
+
+    Raises
+    ------
+    DesignError
+        The target, budget or typed number cannot be had.
+    """
+    if question.census:
+        return _census(question)
+    plain = None if question.target == "budget" else tuple(plain_counts(question))
+    if question.locations is not None:
+        return _typed(question, plain, question.locations)
+    if plain is None:
+        needed = tuple(affordable_counts(question))
+    else:
+        needed = tuple(assured_counts(question, question.assurance) or plain)
+    return Counts(plain, needed, planned_counts(question, needed))
+
+
+def _census(question: Question) -> Counts:
+    everything = tuple(part.population or 0 for part in question.parts)
+    if 0 in everything:
+        message = (
+            "a census visits every unit of a list, and this frame is an area without units; "
+            'write kind = "list" with a list_file, or choose another layout.'
+        )
+        raise DesignError(message)
+    return Counts(everything, everything, everything)
+
+
+def _typed(question: Question, plain: tuple[int, ...] | None, locations: int) -> Counts:
+    """Share a typed number of locations; the results expected are what losses leave."""
+    check_total(question.strata, locations)
+    planned = share_total(question.strata, locations, allocation=question.allocation)
+    needed = tuple(
+        max(min(2, visits), int(visits * (1 - part.loss) + 1e-9))
+        for visits, part in zip(planned, question.parts, strict=True)
+    )
+    return Counts(plain, needed, tuple(planned))
+
+
+def plain_counts(question: Question) -> list[int]:
+    """Count the results that meet the target with sigma taken at face value."""
+    strata, allocation = question.strata, question.allocation
+    if question.target_half_width is None:
+        return smallest_total(strata, question.value**2, allocation=allocation)
+    wanted = question.target_half_width
+    confidence = question.confidence
+    level = (1 + confidence) / 2 if question.interval == "two-sided" else confidence
+    precision = Precision(question)
+    # Every t is above the normal quantile, so no variance above this one can do.
+    return first_that(
+        strata,
+        lambda counts: meets(precision.half_width(counts), wanted),
+        never_above=(wanted / normal_quantile(level)) ** 2,
+        allocation=allocation,
+    )
+
+
+def assured_counts(question: Question, assurance: float | None) -> list[int] | None:
+    """Count the results that meet the target with the stated chance.
+
+    Parameters
+    ----------
+    question : Question
+    assurance : float or None
+
+    Returns
+    -------
+    list of int or None
+        None when there is no assurance to hold to: none was chosen, the target is a budget, or
+        nobody said how many results stand behind sigma. With a half-width target the last case
+        still counts the luck of the coming results, sigma taken as exact (Kupper & Hafner 1989).
+    """
+    if assurance is None or question.target == "budget":
+        return None
+    known = question.pilots is None
+    if known and question.target_half_width is None:
+        return None
+    precision, strata, wanted = Precision(question), question.strata, assurance
+
+    def shared(total: int) -> list[int]:
+        return share_total(strata, total, allocation=question.allocation)
+
+    def fits(total: int) -> bool:
+        return (precision.chance(shared(total), sigma_known=known) or 0.0) >= wanted
+
+    low = sum(plain_counts(question))
+    total = smallest(fits, low, strata.most, back=2 * len(question.parts) + 1)
+    if question.total_population is None and not fits(total):
+        message = (
+            f"an assurance of {assurance:g} asks for more than {strata.most} results; "
+            "choose a lower one, or learn sigma from a larger pilot."
+        )
+        raise DesignError(message)
+    return shared(total)
+
+
+def affordable_counts(question: Question) -> list[int]:
+    """Count the most results that the budget buys, shared for the smallest standard error."""
+    strata, prices = question.strata, question.prices
+    if prices is None or prices.per_location + prices.per_analysis <= 0:
+        message = (
+            "a budget sets no number while per_location and per_analysis are both 0; "
+            "type what a location and an analysis cost in the [cost] table."
+        )
+        raise DesignError(message)
+
+    def cost(total: int) -> float:
+        counts = share_total(strata, total, allocation=question.allocation)
+        return total_cost(question, planned_counts(question, counts)) or 0.0
+
+    least, most = sum(strata.floors), strata.most
+    if not meets(cost(least), question.value):
+        message = (
+            f"a budget of {question.value:g} {prices.currency} is too small: the smallest design "
+            f"({least} results) costs {cost(least):g} {prices.currency}."
+        )
+        raise DesignError(message)
+    if meets(cost(most), question.value):
+        total = most
+    else:
+        total = smallest(lambda n: not meets(cost(n), question.value), least, most, back=0) - 1
+    return share_total(strata, total, allocation=question.allocation)
+
+
+def planned_counts(question: Question, needed: Sequence[int]) -> tuple[int, ...]:
+    """Add the loss allowance n / (1 − share) to every stratum; a list gives no more than N."""
+    planned = []
+    for results, part in zip(needed, question.parts, strict=True):
+        visits = whole(results / (1 - part.loss))
+        planned.append(visits if part.population is None else min(visits, part.population))
+    return tuple(planned)
+
+
+def control_counts(question: Question, planned: Sequence[int]) -> tuple[QualityControlCount, ...]:
+    """Count control samples apart from n: shares of the samples are rounded up."""
+    return tuple(
+        QualityControlCount(
+            rate.kind,
+            rate.count if rate.count is not None else whole((rate.share or 0.0) * sum(planned)),
+            rate.source,
+        )
+        for rate in question.controls
+    )
+
+
+def total_cost(question: Question, planned: Sequence[int]) -> float | None:
+    """Add up mobilisation, locations, their analyses and those of control samples."""
+    prices = question.prices
+    if prices is None:
+        return None
+    visits = sum(planned)
+    analyses = visits + sum(entry.count for entry in control_counts(question, planned))
+    return prices.mobilisation + visits * prices.per_location + analyses * prices.per_analysis

@@ -1,0 +1,174 @@
+"""What is asked of sizing, free of files: parts, target, prices. Bare numbers make one as well."""
+
+from dataclasses import dataclass, field
+from typing import Literal
+
+from fieldplan.base.errors import DesignError
+from fieldplan.stats.allocation import Allocation, Strata
+from fieldplan.stats.assurance import check_assurance
+from fieldplan.stats.intervals import IntervalKind
+
+TargetKind = Literal["standard_error", "half_width", "relative_half_width", "budget"]
+
+
+@dataclass(frozen=True)
+class Part:
+    """One stratum, or the whole where there is only one.
+
+    Parameters
+    ----------
+    name : str
+    weight : float
+        Share of the population.
+    sigma : float
+        Standard deviation of single results.
+    results : int or None
+        How many results stand behind sigma; None when nobody said.
+    population : int or None
+        N of a list; None for an area.
+    loss : float
+        Share of locations expected to yield no result.
+    pilot : str
+        Parts with the same word share one pilot, whose error is then common to them.
+    source : str
+        Where sigma comes from.
+    assumed : bool
+        Sigma was ASSUMED.
+    skewness : float or None
+        Of the pilot's results, or typed.
+    """
+
+    name: str
+    weight: float
+    sigma: float
+    results: int | None = None
+    population: int | None = None
+    loss: float = 0.0
+    pilot: str = ""
+    source: str = ""
+    assumed: bool = False
+    skewness: float | None = None
+
+
+@dataclass(frozen=True)
+class Prices:
+    """Money per campaign, per location and per analysed sample."""
+
+    currency: str
+    mobilisation: float = 0.0
+    per_location: float = 0.0
+    per_analysis: float = 0.0
+
+
+@dataclass(frozen=True)
+class ControlRate:
+    """Control samples of one kind: a share of the samples, or a count."""
+
+    kind: str
+    share: float | None
+    count: int | None
+    source: str
+
+
+@dataclass(frozen=True)
+class Question:
+    """All that the number of locations depends on.
+
+    Parameters
+    ----------
+    parts : tuple of Part
+        Weights sum to 1.
+    target : str
+        ``standard_error``, ``half_width``, ``relative_half_width`` or ``budget``.
+    value : float
+        The target's number: the analyte's unit, a share of the mean, or money.
+    mean : float or None
+        Expected mean; needed for a relative half-width.
+    assurance : float or None
+        Chance that n shall be enough; None takes sigma at face value.
+    locations : int or None
+        Typed number of locations; it then fixes n, and the target only compares.
+    census : bool
+        Every unit of the list is visited.
+    grid : bool
+        A systematic layout, which is sized without credit.
+    """
+
+    parts: tuple[Part, ...]
+    target: TargetKind
+    value: float
+    mean: float | None = None
+    assurance: float | None = None
+    assurance_chosen_by: str = ""
+    confidence: float = 0.95
+    interval: IntervalKind = "two-sided"
+    allocation: Allocation = "proportional"
+    floor: int = 2
+    alternates: int = 0
+    locations: int | None = None
+    census: bool = False
+    grid: bool = False
+    prices: Prices | None = None
+    controls: tuple[ControlRate, ...] = ()
+    design: str = "main"
+    analyte: str = ""
+    unit: str = ""
+    notes: tuple[str, ...] = field(default=())
+
+    def __post_init__(self) -> None:
+        """Refuse what no arithmetic can answer."""
+        if self.assurance is not None:
+            check_assurance(self.assurance)
+        if not 0.5 < self.confidence < 1:
+            message = f"confidence is {self.confidence!r}; it must be above 0.5 and below 1."
+            raise DesignError(message)
+        if self.target == "relative_half_width" and self.mean is None:
+            message = (
+                "a relative half-width needs an expected mean to be a share of; "
+                "write expected_mean in the [[sigma]] table, or name a pilot file there."
+            )
+            raise DesignError(message)
+        if self.target == "budget" and self.prices is None:
+            message = (
+                f"a budget of {self.value:g} needs prices; add a [cost] table with currency, "
+                "mobilisation, per_location and per_analysis."
+            )
+            raise DesignError(message)
+
+    @property
+    def strata(self) -> Strata:
+        """The parts as the allocation sees them."""
+        return Strata(
+            weights=tuple(part.weight for part in self.parts),
+            sigmas=tuple(part.sigma for part in self.parts),
+            populations=tuple(part.population for part in self.parts),
+            floor=self.floor,
+        )
+
+    @property
+    def target_standard_error(self) -> float | None:
+        """The target, where it is a standard error."""
+        return self.value if self.target == "standard_error" else None
+
+    @property
+    def target_half_width(self) -> float | None:
+        """The target, where it is a half-width; a relative one times the expected mean."""
+        if self.target == "relative_half_width" and self.mean is not None:
+            return self.value * self.mean
+        return self.value if self.target == "half_width" else None
+
+    @property
+    def total_population(self) -> int | None:
+        """N of the whole list; None when a part is an area."""
+        sizes = [part.population for part in self.parts if part.population is not None]
+        return sum(sizes) if len(sizes) == len(self.parts) else None
+
+    @property
+    def pilots(self) -> tuple[tuple[int, ...], ...] | None:
+        """Positions of the parts by the pilot they share; None when one has no known results."""
+        if any(part.results is None for part in self.parts):
+            return None
+        groups: dict[str, list[int]] = {}
+        for position, part in enumerate(self.parts):
+            groups.setdefault(part.pilot or f"part {position}", []).append(position)
+        return tuple(tuple(group) for group in groups.values())

@@ -1,0 +1,178 @@
+"""The answer first, then how sure it is, then what it buys."""
+
+from dataclasses import replace
+
+from fieldplan.sizing.counting import Counts, assured_counts, plain_counts, total_cost
+from fieldplan.sizing.model import AssuredSize
+from fieldplan.sizing.precision import Precision
+from fieldplan.sizing.question import Question
+from fieldplan.sizing.words import (
+    counted,
+    figure,
+    listed,
+    percent,
+    target_words,
+    typed_percent,
+    with_unit,
+)
+
+
+def sentences(
+    question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
+) -> tuple[str, ...]:
+    """Say the answer in words, most important first.
+
+    Parameters
+    ----------
+    question : Question
+    counts : Counts
+    assured : tuple of AssuredSize
+
+    Returns
+    -------
+    tuple of str
+    """
+    lines = [_answer(question, counts), _chance(question, counts, assured)]
+    lines += [_precision(question, counts), _floor(question, counts), _money(question, counts)]
+    lines += _short_lists(question, counts)
+    return tuple(line for line in lines if line)
+
+
+def _answer(question: Question, counts: Counts) -> str:
+    needed, planned = sum(counts.needed), sum(counts.planned)
+    where = ""
+    if len(question.parts) > 1:
+        pairs = zip(counts.planned, question.parts, strict=True)
+        where = ": " + listed([f"{n} in {part.name}" for n, part in pairs])
+    if question.census:
+        return f"All {planned} units of the list are visited{where}."
+    if question.locations is not None:
+        return f"The campaign file fixes {counted(planned, 'location')}{where}{_left(counts)}."
+    if question.target == "budget":
+        buys = f"A budget of {_money_words(question, question.value)} buys "
+        return f"{buys}{counted(planned, 'location')}{where}{_left(counts)}."
+    if planned == needed:
+        return f"{counted(needed, 'result')} are needed for a {target_words(question)}{where}."
+    return (
+        f"Visit {counted(planned, 'location')}{where}. {counted(needed, 'result')} are needed for "
+        f"a {target_words(question)}; {planned - needed} more allow for losses."
+    )
+
+
+def _left(counts: Counts) -> str:
+    needed, planned = sum(counts.needed), sum(counts.planned)
+    return "" if needed == planned else f"; after losses about {counted(needed, 'result')} remain"
+
+
+def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]) -> str:
+    """Say how sure the number is; that the plain formula fails often is said every time."""
+    if question.census or counts.plain is None:
+        return ""
+    plain, needed = sum(counts.plain), sum(counts.needed)
+    precision = Precision(question)
+    chance = precision.chance(counts.needed)
+    if chance is None:
+        return _no_chance(question, counts)
+    if question.locations is not None:
+        return (
+            f"The chance that this meets the target ({target_words(question)}) is "
+            f"{percent(chance)}; the plain formula asks for {plain}."
+        )
+    known = sorted({part.results for part in question.parts if part.results is not None})
+    behind = " to ".join(str(n) for n in {known[0]: 0, known[-1]: 0})
+    if len(question.parts) > 1:
+        behind += " a stratum"
+    if needed != plain or question.assurance is not None:
+        plain_chance = precision.chance(counts.plain) or 0.0
+        return (
+            f"The chance that {needed} are enough is {percent(chance)}, sigma being known from "
+            f"{behind} results only; the plain formula ({plain}) would be enough in "
+            f"{percent(plain_chance)} of campaigns."
+        )
+    more = listed([str(entry.n) for entry in assured])
+    shares = listed([percent(entry.assurance) for entry in assured])
+    return (
+        f"The chance that {needed} are enough is {percent(chance)}: the plain formula is enough in "
+        f"only about half of campaigns, and sigma is known from {behind} results only. For a "
+        f"chance of {shares} it takes {more}."
+    )
+
+
+def _no_chance(question: Question, counts: Counts) -> str:
+    line = (
+        "Nobody said how many results stand behind sigma, so no chance can be given that this is "
+        "enough; the plain formula is enough in only about half of campaigns."
+    )
+    if question.assurance is None or question.locations is not None:
+        return line
+    if question.target_half_width is None:
+        return (
+            f"{line} The assurance of {typed_percent(question.assurance)} has nothing to hold "
+            "to; give from_results beside sigma, or a pilot."
+        )
+    return (
+        f"{line} The {sum(counts.needed)} results keep the half-width in "
+        f"{typed_percent(question.assurance)} of campaigns only if sigma is exactly right; the "
+        f"plain formula asks for {sum(counts.plain or ())}."
+    )
+
+
+def _precision(question: Question, counts: Counts) -> str:
+    if question.census:
+        return "The mean of the list then has no error from choosing units."
+    precision = Precision(question)
+    error = with_unit(figure(precision.standard_error(counts.needed)), question.unit)
+    reach = with_unit(figure(precision.half_width(counts.needed)), question.unit)
+    share = typed_percent(question.confidence)
+    if question.interval == "two-sided":
+        width = f"a {share} interval of ± {reach}"
+    else:
+        side = "above" if question.interval == "upper-limit" else "below"
+        width = f"a {share} {question.interval.replace('-', ' ')} {reach} {side} the mean"
+    line = f"If sigma is right, expect a standard error of {error} and {width}."
+    if question.locations is not None and counts.plain is not None:
+        line += f" The target ({target_words(question)}) would take {sum(counts.plain)} results."
+    return line
+
+
+def _floor(question: Question, counts: Counts) -> str:
+    """Say what the floor costs, where it decided the number."""
+    if question.census or question.floor <= 2 or counts.plain is None:
+        return ""
+    if question.locations is not None or question.target == "budget":
+        return ""
+    free = replace(question, floor=2)
+    without = sum(assured_counts(free, free.assurance) or plain_counts(free))
+    extra = sum(counts.needed) - without
+    if extra <= 0:
+        return ""
+    return f"The floor of {question.floor} in every stratum costs {extra} more than {without}."
+
+
+def _money_words(question: Question, amount: float) -> str:
+    currency = question.prices.currency if question.prices else ""
+    return f"{amount:.0f} {currency}" if amount == round(amount) else f"{amount:.2f} {currency}"
+
+
+def _money(question: Question, counts: Counts) -> str:
+    cost = total_cost(question, counts.planned)
+    if cost is None:
+        return ""
+    line = f"Expected cost: {_money_words(question, cost)}, control samples included."
+    if question.target == "budget" and question.locations is not None:
+        side = "within" if cost <= question.value else "above"
+        line += f" That is {side} the budget of {_money_words(question, question.value)}."
+    return line
+
+
+def _short_lists(question: Question, counts: Counts) -> list[str]:
+    """Say where a list is too short for its loss allowance."""
+    lines = []
+    for results, visits, part in zip(counts.needed, counts.planned, question.parts, strict=True):
+        asked = results / (1 - part.loss)
+        if part.population == visits and asked > visits + 1e-9 and not question.census:
+            lines.append(
+                f"{part.name} has only {visits} units: all are visited, and a loss of "
+                f"{typed_percent(part.loss)} would leave fewer than the {results} results needed."
+            )
+    return lines

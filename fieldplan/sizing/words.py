@@ -1,0 +1,108 @@
+"""The answer in sentences, and under what condition it holds."""
+
+import math
+
+from fieldplan.sizing.question import Question
+
+
+def figure(value: float, digits: int = 3) -> str:
+    """Write a number with so many significant digits and no exponent.
+
+    Examples
+    --------
+    >>> figure(8.8213), figure(27.5), figure(16800.4), figure(0.0004567), figure(6.0)
+    ('8.82', '27.5', '16800', '0.000457', '6')
+    """
+    if value == 0 or not math.isfinite(value):
+        return f"{value:g}"
+    text = f"{value:.{max(0, digits - 1 - math.floor(math.log10(abs(value))))}f}"
+    return text.rstrip("0").rstrip(".") if "." in text else text
+
+
+def typed(value: float) -> str:
+    """Write a number as a person typed it.
+
+    Examples
+    --------
+    >>> typed(9.0), typed(27.57), typed(4250.0)
+    ('9', '27.57', '4250')
+    """
+    return f"{value:.10g}"
+
+
+def percent(share: float) -> str:
+    """Write a computed share as a whole percentage, with one decimal near the ends.
+
+    Examples
+    --------
+    >>> percent(0.459), percent(0.95), percent(0.9987), percent(0.004)
+    ('46 %', '95 %', '99.9 %', '0.4 %')
+    """
+    if share >= 0.9995:
+        return "over 99.9 %" if share < 1 else "100 %"
+    return f"{100 * share:.0f} %" if 0.015 < share < 0.985 else f"{100 * share:.1f} %"
+
+
+def typed_percent(share: float) -> str:
+    """Write a share that a person typed, with all its digits.
+
+    Examples
+    --------
+    >>> typed_percent(0.975), typed_percent(0.9)
+    ('97.5 %', '90 %')
+    """
+    return f"{typed(100 * share)} %"
+
+
+def counted(number: int, word: str) -> str:
+    """Write a count with its noun.
+
+    Examples
+    --------
+    >>> counted(1, "location"), counted(22, "location")
+    ('1 location', '22 locations')
+    """
+    return f"{number} {word}" + ("" if number == 1 else "s")
+
+
+def listed(items: list[str]) -> str:
+    """Join words as a sentence does.
+
+    Examples
+    --------
+    >>> listed(["5 in a", "4 in b", "6 in c"])
+    '5 in a, 4 in b and 6 in c'
+    """
+    return items[0] if len(items) == 1 else ", ".join(items[:-1]) + " and " + items[-1]
+
+
+def with_unit(value: str, unit: str) -> str:
+    """Set a number before its unit, if it has one."""
+    return f"{value} {unit}" if unit else value
+
+
+def target_words(question: Question) -> str:
+    """Say the target as the sheet prints it.
+
+    Examples
+    --------
+    >>> from fieldplan.sizing.question import Part
+    >>> target_words(Question((Part("site", 1.0, 20.0),), "standard_error", 9.0, unit="mg/kg"))
+    'standard error of the mean ≤ 9 mg/kg'
+    """
+    if question.target == "standard_error":
+        return f"standard error of the mean ≤ {with_unit(typed(question.value), question.unit)}"
+    if question.target == "budget":
+        currency = question.prices.currency if question.prices else ""
+        return f"the smallest standard error that {typed(question.value)} {currency} buys"
+    width = question.target_half_width or 0.0
+    reach = with_unit(figure(width, 4), question.unit)
+    if question.target == "relative_half_width":
+        mean = with_unit(figure(question.mean or 0.0, 4), question.unit)
+        reach += f" ({typed_percent(question.value)} of an expected mean of {mean})"
+    share = typed_percent(question.confidence)
+    if question.interval == "two-sided":
+        return f"half-width of the two-sided {share} interval ≤ {reach}"
+    side = "above" if question.interval == "upper-limit" else "below"
+    name = question.interval.replace("-", " ")
+    return f"{share} {name} no more than {reach} {side} the mean"
