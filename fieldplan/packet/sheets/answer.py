@@ -3,25 +3,22 @@
 from fieldplan.base.document import Block, Bullets, Heading, Paragraph, Table
 from fieldplan.packet.sheets.amounts import counted, percent, rounded
 from fieldplan.packet.sheets.plan_words import (
+    aim_sentence,
     assumed_lines,
-    by_stratum,
-    chance_sentence,
     jars,
-    level_words,
-    mean_of,
     several_strata,
-    target_sentence,
 )
 from fieldplan.plan.model import Plan
 
 
 def answer_blocks(plan: Plan) -> list[Block]:
     """Compose page one."""
-    blocks: list[Block] = [Paragraph(visit_sentence(plan), tone="answer")]
+    first, *others = plan.size.sentences
+    blocks: list[Block] = [Paragraph(first, tone="answer"), Paragraph(aim_sentence(plan))]
     stamps = (*alarm_lines(plan), *assumed_lines(plan))
     if stamps:
         blocks.append(Bullets(stamps))
-    blocks += [Paragraph(target_sentence(plan)), Paragraph(chance_sentence(plan))]
+    blocks += [Paragraph(sentence) for sentence in others]
     blocks += [Paragraph(sentence) for sentence in plan.frame.population.sentences[:1]]
     blocks += [stratum_table(plan), *extra_lines(plan), *open_blocks(plan)]
     blocks.append(
@@ -32,22 +29,6 @@ def answer_blocks(plan: Plan) -> list[Block]:
         )
     )
     return blocks
-
-
-def visit_sentence(plan: Plan) -> str:
-    """Say how many locations to visit, for what."""
-    size = plan.size
-    where = by_stratum(plan)
-    visit = f"Visit {counted(size.planned, 'location')}" + (f": {where}" if where else "")
-    aim = f"{visit}. They serve to estimate the {mean_of(plan.campaign)}"
-    level = level_words(plan.campaign)
-    aim += f", to be set against {level}." if level else "."
-    spare = size.planned - size.needed
-    if spare > 0:
-        aim += f" {size.needed} results are needed; {spare} more allow for losses."
-    elif spare == 0:
-        aim += f" {size.needed} results are needed; nothing is added for losses."
-    return aim
 
 
 def alarm_lines(plan: Plan) -> tuple[str, ...]:
@@ -94,7 +75,7 @@ def is_assumed(plan: Plan, stratum: str) -> bool:
 
 
 def extra_lines(plan: Plan) -> list[Block]:
-    """Say how many jars, targeted places and how much money."""
+    """Say how many jars, and how many places besides."""
     lines = [f"To take at the planned locations: {jars(plan)}."]
     targeted = plan.locations.of_class("targeted")
     if targeted:
@@ -102,8 +83,6 @@ def extra_lines(plan: Plan) -> list[Block]:
             f"{counted(len(targeted), 'targeted place')} besides, chosen by judgement: "
             "visited and reported, never in the mean."
         )
-    if plan.size.cost is not None:
-        lines.append(f"Expected cost: {plan.size.currency} {plan.size.cost:.0f}.")
     return [Bullets(tuple(lines))]
 
 

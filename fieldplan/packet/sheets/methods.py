@@ -74,7 +74,7 @@ def patch_line(plan: Plan) -> str:
 
 def methods_blocks(plan: Plan) -> list[Block]:
     """Set the methods paragraph."""
-    return [Paragraph("Ready to paste into the report:"), Paragraph(methods_paragraph(plan))]
+    return [Paragraph("Ready to paste:"), Paragraph(methods_paragraph(plan))]
 
 
 def methods_paragraph(plan: Plan) -> str:

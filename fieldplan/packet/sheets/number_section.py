@@ -3,6 +3,7 @@
 from fieldplan.base.document import Block, Bullets, Facts, Heading, Table, Working
 from fieldplan.packet.sheets.amounts import percent, rounded
 from fieldplan.plan.model import Plan
+from fieldplan.sizing.words import percent as chance_words
 
 
 def spread_blocks(plan: Plan) -> list[Block]:
@@ -79,7 +80,9 @@ def assurance_table(plan: Plan) -> Table:
     size = plan.size
     rows = [(str(entry.n), percent(entry.assurance)) for entry in size.assured]
     if size.chance_plain is not None:
-        rows.insert(0, (str(size.plain_n), f"{percent(size.chance_plain)} (the plain formula)"))
+        rows.insert(
+            0, (str(size.plain_n), f"{chance_words(size.chance_plain)} (the plain formula)")
+        )
     return Table(
         ("Results", "Chance that they meet the target"),
         tuple(rows),

@@ -1,7 +1,7 @@
 """What a plan is called in the sentences of its sheets."""
 
 from fieldplan.campaign.model import Analyte, Campaign
-from fieldplan.packet.sheets.amounts import counted, listed, percent, rounded
+from fieldplan.packet.sheets.amounts import counted, percent
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
 
@@ -72,60 +72,21 @@ def mean_of(campaign: Campaign) -> str:
     return f"mean {analyte_name(analyte)}{matrix}" + (f" ({', '.join(kinds)})" if kinds else "")
 
 
-def places_word(plan: Plan) -> str:
-    """Name what n counts, in the plural."""
-    return "units of the list" if plan.frame.kind == "list" else "locations"
-
-
-def by_stratum(plan: Plan) -> str:
-    """Say how many locations go to each stratum; empty where there is one."""
-    if not several_strata(plan):
-        return ""
-    return listed([f"{entry.planned} in {entry.stratum}" for entry in plan.size.strata])
-
-
-def target_sentence(plan: Plan) -> str:
-    """Say what is promised: the target, and what is expected with the spread used."""
-    size = plan.size
-    expected = (
-        f"With the spread used here, {size.needed} results give a standard error of "
-        f"{rounded(size.standard_error)} {size.unit}{interval_words(plan)}."
-    )
-    return f"Target: {size.target}. {expected}"
-
-
-def interval_words(plan: Plan) -> str:
-    """Say how far the interval or limit is expected to reach."""
-    size = plan.size
-    reach = f"{rounded(size.half_width)} {size.unit}"
-    share = percent(size.confidence)
-    if size.interval == "two-sided":
-        return f" and a {share} interval of about ± {reach}"
-    side = "above" if size.interval == "upper-limit" else "below"
-    return f" and a {share} {size.interval.replace('-', ' ')} about {reach} {side} the mean"
-
-
-def chance_sentence(plan: Plan) -> str:
-    """Say how sure it is that the number of locations is enough, and who chose that."""
+def aim_sentence(plan: Plan) -> str:
+    """Say what the results are for, and who chose how sure the number has to be."""
     size = plan.size
     chooser = size.assurance_chosen_by or "nobody named"
-    if size.assurance is None:
-        chosen = f"The plain count of {size.plain_n} results was chosen by {chooser}."
-        if size.chance_plain is None:
-            return (
-                f"{chosen} Nothing says how well the spread is known, so the chance that the "
-                "count is enough cannot be given; with a measured spread a plain count is enough "
-                "in about half of campaigns."
-            )
-        return f"{chosen} The chance that it is enough is {percent(size.chance_plain)}."
-    if size.chance_needed is None or size.chance_plain is None:
-        return f"An assurance of {percent(size.assurance)} was chosen by {chooser}."
-    return (
-        f"The chance that {size.needed} results meet the target is "
-        f"{percent(size.chance_needed)}; {chooser} chose an assurance of "
-        f"{percent(size.assurance)}. The plain count of {size.plain_n} would be enough with a "
-        f"chance of only {percent(size.chance_plain)}."
+    level = level_words(plan.campaign)
+    against = f", to be set against {level}" if level else ""
+    chosen = (
+        "The plain count, without an assurance,"
+        if size.assurance is None
+        else f"The assurance of {percent(size.assurance)}"
     )
+    aim = f"The aim is the {mean_of(plan.campaign)}{against}."
+    if plan.locations.layout == "census":
+        return aim
+    return f"{aim} {chosen} was chosen by {chooser}."
 
 
 def level_words(campaign: Campaign) -> str:

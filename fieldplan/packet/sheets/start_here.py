@@ -1,7 +1,7 @@
 """START_HERE: one page that says what each file is for, what comes next and what is open."""
 
 from fieldplan.base.document import Block, Bullets, Document, Facts, Heading, Paragraph
-from fieldplan.packet.sheets.answer import open_blocks, visit_sentence
+from fieldplan.packet.sheets.answer import open_blocks
 from fieldplan.packet.sheets.plan_sheet import subtitle
 from fieldplan.plan.model import Plan
 
@@ -19,7 +19,7 @@ def start_here(plan: Plan) -> Document:
         The crew's files come first.
     """
     blocks: list[Block] = [
-        Paragraph(visit_sentence(plan), tone="answer"),
+        Paragraph(plan.size.sentences[0], tone="answer"),
         Heading("Three things to do next"),
         Bullets(next_steps(plan), numbered=True),
         *open_blocks(plan),
