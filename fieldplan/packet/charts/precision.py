@@ -90,7 +90,8 @@ def _precision(axes: "Axes", size: Size) -> None:
     if size.target_half_width is not None:
         # at a given n the half-width is proportional to the standard error
         widths = np.array([point.half_width for point in size.curve])
-        ratio = widths / error
+        # (a whole list leaves no error to scale)
+        ratio = np.divide(widths, error, out=np.zeros_like(error), where=error > 0)
         error, low, high = widths, low * ratio, high * ratio
         target, name = size.target_half_width, "half-width of the interval"
     axes.fill_between(n, low, high, color=BLUE, alpha=0.18, linewidth=0)
