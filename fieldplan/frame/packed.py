@@ -77,8 +77,10 @@ def read_geopackage(path: Path, name: str, *, layer: str, wanted: str) -> Layer:
             beside = path.with_name(path.name + suffix)
             if beside.is_file():
                 _copy(beside, copy.with_name(copy.name + suffix), name)
-        chosen = _choose(_layers(copy, name), name, layer, wanted)
-        return _read(copy, name, "GeoPackage", layer=chosen, notes=())
+        layers = _layers(copy, name)
+        chosen = _choose(layers, name, layer, wanted)
+        label = name if layer or len(layers) == 1 else f"{name}#{chosen}"
+        return _read(copy, label, "GeoPackage", layer=chosen, notes=())
 
 
 def read_shapefile(path: Path, name: str) -> Layer:
@@ -192,8 +194,7 @@ def _read(copy: Path, name: str, kind: str, *, layer: str | None, notes: tuple[s
         missing = len(shapes) - len(features)
         notes = (*notes, f"{name}: {missing} feature(s) without a geometry were skipped.")
     crs, crs_from = _crs(meta, name)
-    label = f"{name}#{layer}" if layer and "#" not in name else name
-    return Layer(label, kind, features, crs, crs_from, columns, notes)
+    return Layer(name, kind, features, crs, crs_from, columns, notes)
 
 
 def _crs(meta: dict[str, Any], name: str) -> tuple[pyproj.CRS | None, str]:

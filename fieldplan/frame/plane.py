@@ -141,7 +141,8 @@ def repaired(
     change = abs(float(mended.area) - area)
     reason = _crossing(whole, projection)
     if mended.area <= 0 or (change >= REPAIR_LIMIT * area and change > 0):
-        share = f"{significant(100 * change / area)} %" if area > 0 else "all of it"
+        known = area > 0 and change <= area
+        share = f"{significant(100 * change / area)} %" if known else "more than all of it"
         message = (
             f"{label} {reason}; to repair it would change its area by {share} (limit 0.01 %), "
             "so what is meant is not certain. Correct it in the file."
@@ -184,8 +185,8 @@ def _crossing(geometry: BaseGeometry, projection: SiteProjection) -> str:
     text = str(shapely.is_valid_reason(geometry))
     kind, _, place = text.partition("[")
     words = {
-        "Self-intersection": "crosses itself",
-        "Ring Self-intersection": "touches itself",
+        "Self-intersection": "crosses or touches itself",
+        "Ring Self-intersection": "crosses or touches itself",
         "Interior is disconnected": "is cut in two by a hole",
         "Hole lies outside shell": "has a hole outside its outline",
         "Holes are nested": "has a hole inside a hole",

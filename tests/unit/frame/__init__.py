@@ -1,0 +1,1 @@
+"""Tests of boundaries, strata, exclusions and lists."""
