@@ -120,7 +120,9 @@ def text_width_mm(text: str, points: float, *, bold: bool = False) -> float:
     return float(width) / POINTS_PER_MM
 
 
-def wrapped(text: str, points: float, width_mm: float, *, most: int = 99) -> list[str]:
+def wrapped(
+    text: str, points: float, width_mm: float, *, most: int = 99, bold: bool = False
+) -> list[str]:
     """Break text into lines that fit a width; what does not fit in ``most`` lines ends in ``…``.
 
     Parameters
@@ -131,6 +133,8 @@ def wrapped(text: str, points: float, width_mm: float, *, most: int = 99) -> lis
         Size of the face, and the room.
     most : int
         Largest number of lines.
+    bold : bool
+        In the bold face.
 
     Returns
     -------
@@ -139,16 +143,16 @@ def wrapped(text: str, points: float, width_mm: float, *, most: int = 99) -> lis
     """
     lines = [""]
     for word in printable(text).split():
-        for piece in _pieces(word, points, width_mm):
+        for piece in _pieces(word, points, width_mm, bold):
             longer = f"{lines[-1]} {piece}".strip()
-            if text_width_mm(longer, points) <= width_mm:
+            if text_width_mm(longer, points, bold=bold) <= width_mm:
                 lines[-1] = longer
             else:
                 lines.append(piece)
     lines = [line for line in lines if line] or [""]
     if len(lines) > most:
         lines = lines[:most]
-        lines[-1] = shortened(lines[-1] + " …", points, width_mm)
+        lines[-1] = shortened(lines[-1] + " …", points, width_mm, bold=bold)
     return lines
 
 
@@ -163,13 +167,13 @@ def shortened(text: str, points: float, width_mm: float, *, bold: bool = False) 
     return stem + "…"
 
 
-def _pieces(word: str, points: float, width_mm: float) -> list[str]:
+def _pieces(word: str, points: float, width_mm: float, bold: bool) -> list[str]:
     """Cut a word that alone is wider than the room."""
-    if text_width_mm(word, points) <= width_mm:
+    if text_width_mm(word, points, bold=bold) <= width_mm:
         return [word]
     pieces = [""]
     for sign in word:
-        if pieces[-1] and text_width_mm(pieces[-1] + sign, points) > width_mm:
+        if pieces[-1] and text_width_mm(pieces[-1] + sign, points, bold=bold) > width_mm:
             pieces.append(sign)
         else:
             pieces[-1] += sign

@@ -1,0 +1,145 @@
+"""The ground of a map: boundary, strata and exclusions, told apart by hatching alone."""
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+import shapely
+from shapely.geometry.base import BaseGeometry
+
+from fieldplan.frame.model import Frame
+from fieldplan.packet.drawing import INK
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+    from matplotlib.path import Path
+
+_HATCHES = ("", "//", "..", "\\\\", "--", "oo", "||", "++")
+_TINTS = ("#ffffff", "#eef3f7", "#f7f3ea", "#edf5ee", "#f5eef4", "#f3f3f3", "#fdf1ec", "#ebf4f4")
+_FAINT = "#9aa4ad"
+
+
+@dataclass(frozen=True)
+class Ground:
+    """One sort of ground, as drawn on the map and in its legend."""
+
+    geometry: BaseGeometry | None
+    words: str
+    brief: str
+    style: dict[str, Any]
+
+
+def grounds(frame: Frame) -> tuple[Ground, ...]:
+    """List what is drawn under the marks, in drawing order.
+
+    Parameters
+    ----------
+    frame : Frame
+        Of an area: strata, exclusions, the boundary. Of a list: the outline of its units.
+
+    Returns
+    -------
+    tuple of Ground
+        With the words for the legend.
+    """
+    layers = []
+    many = len(frame.strata) > 1
+    for number, stratum in enumerate(frame.strata):
+        if stratum.geometry is None:
+            continue
+        words = f"stratum: {stratum.name}" if many else "population, net of what is left out"
+        brief = stratum.name if many else "population"
+        style = _stratum_style(number + 1 if many else 0)
+        layers.append(Ground(stratum.geometry, words, brief, style))
+    for number, (reason, geometry) in enumerate(_excluded(frame).items()):
+        style = _LEFT_OUT | {"hatch": _CROSSED[number % len(_CROSSED)]}
+        layers.append(Ground(geometry, f"left out: {reason}", f"out: {reason}", style))
+    return (*layers, _outline(frame))
+
+
+def _stratum_style(number: int) -> dict[str, Any]:
+    """Choose hatch and tint; after eight strata hatches come again, twice as dense."""
+    hatch = _HATCHES[number % 8] * (1 + number // 8)
+    return {
+        "facecolor": _TINTS[number % 8], "edgecolor": _FAINT, "hatch": hatch, "linewidth": 0.5,
+        "zorder": 1.0,
+    }  # fmt: skip
+
+
+_CROSSED = ("xxxx", "++++", "////", "****")
+_LEFT_OUT: dict[str, Any] = {
+    "facecolor": "#d4d8dc", "edgecolor": INK, "linewidth": 0.6, "zorder": 2.0,
+}  # fmt: skip
+
+
+def _excluded(frame: Frame) -> dict[str, BaseGeometry]:
+    """Join exclusions that have one reason, as far as they lie on the site."""
+    reasons = dict.fromkeys(entry.reason for entry in frame.excluded)
+    return {
+        reason: shapely.intersection(
+            shapely.union_all([e.geometry for e in frame.excluded if e.reason == reason]),
+            frame.boundary,
+        )
+        for reason in reasons
+    }
+
+
+def _outline(frame: Frame) -> Ground:
+    """Choose the line round the site and what the legend says of it."""
+    style: dict[str, Any] = {"facecolor": "none", "edgecolor": INK, "linewidth": 1.4, "zorder": 3.0}
+    if frame.kind == "list":
+        style |= {"linewidth": 0.8, "linestyle": (0, (2, 2))}
+        return Ground(frame.boundary, "outline of the list, for orientation only", "outline", style)
+    if frame.boundary_assumed:
+        style |= {"linestyle": (0, (6, 3))}
+        return Ground(frame.boundary, "ASSUMED boundary", "ASSUMED boundary", style)
+    return Ground(frame.boundary, "site boundary", "site boundary", style)
+
+
+def draw_grounds(axes: "Axes", layers: tuple[Ground, ...], *, metres_per_mm: float) -> None:
+    """Draw grounds on axes in site metres; vertices finer than the eye are left out.
+
+    Parameters
+    ----------
+    axes : matplotlib Axes
+    layers : tuple of Ground
+    metres_per_mm : float
+        The scale, so that nothing above 0.05 mm on paper is lost.
+    """
+    from matplotlib.patches import PathPatch
+
+    for layer in layers:
+        if layer.geometry is None or layer.geometry.is_empty:
+            continue
+        seen = shapely.simplify(layer.geometry, 0.05 * metres_per_mm, preserve_topology=True)
+        axes.add_patch(PathPatch(compound_path(seen), **layer.style))
+
+
+def compound_path(geometry: BaseGeometry) -> "Path":
+    """Turn polygons with holes into one path; holes run against their shells, so they stay open.
+
+    Parameters
+    ----------
+    geometry : BaseGeometry
+        Polygon or multipolygon; lines and points in a collection are left out.
+
+    Returns
+    -------
+    matplotlib Path
+    """
+    from matplotlib.path import Path
+
+    vertices: list[np.ndarray] = []
+    codes: list[np.ndarray] = []
+    for part in shapely.get_parts(geometry):
+        if part.geom_type != "Polygon" or part.is_empty:
+            continue
+        for ring in shapely.get_rings(shapely.orient_polygons(part)):
+            corners = shapely.get_coordinates(ring)
+            code = np.full(len(corners), Path.LINETO, dtype=Path.code_type)
+            code[0], code[-1] = Path.MOVETO, Path.CLOSEPOLY
+            vertices.append(corners)
+            codes.append(code)
+    if not vertices:
+        return Path(np.empty((0, 2)))
+    return Path(np.concatenate(vertices), np.concatenate(codes))

@@ -1,0 +1,175 @@
+"""The panels of a page: title and status, scale and north, sources and open items, page number."""
+
+from typing import TYPE_CHECKING
+
+from fieldplan.frame.projection import projection_in_words, utm_in_words
+from fieldplan.packet.drawing import INK, SOFT, shortened, text_width_mm, wrapped
+from fieldplan.packet.maps.content import MapContent
+from fieldplan.packet.maps.grid import GridLines
+from fieldplan.packet.maps.paper import Box
+from fieldplan.packet.maps.tiles import PageSpec
+from fieldplan.plan.model import Plan
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+
+_LINE_MM = 2.75
+
+
+def draw_title(page: "Axes", plan: Plan, title: str, spec: PageSpec) -> None:
+    """Write title, plan, date and status at the head; plan, status and page at the foot."""
+    box, foot = spec.layout.title, spec.layout.footer
+    status_width = min(text_width_mm(plan.status, 11, bold=True) + 5, box.width * 0.5)
+    room = box.width - status_width - 4
+    points = 13 if text_width_mm(title, 13, bold=True) <= room else 10
+    lines = wrapped(title, points, room, most=2, bold=True)
+    for number, line in enumerate(lines):
+        y = box.top - 3 - 4.4 * number
+        page.text(box.left, y, line, fontsize=points, weight="bold", va="center")
+    parts = [f"plan {plan.campaign.plan.id}", f"revision {plan.revision_name}", f"{plan.made_on}"]
+    if plan.campaign.plan.site:
+        parts.insert(0, plan.campaign.plan.site)
+    words = shortened(" · ".join(parts), 8, room)
+    page.text(box.left, box.top - 11.8, words, fontsize=8, va="center", color=SOFT)
+    page.text(
+        box.right - 2, box.top - 5, shortened(plan.status, 11, status_width - 4, bold=True),
+        fontsize=11, weight="bold", ha="right", va="center",
+        bbox={"facecolor": "white", "edgecolor": INK, "linewidth": 1.2, "pad": 3.5},
+    )  # fmt: skip
+    page.plot([foot.left, foot.right], [foot.top, foot.top], color=INK, linewidth=0.5)
+    words = f"{plan.revision_name} · page {spec.page} of {spec.pages}"
+    page.text(foot.left, foot.bottom + 1.5, words, fontsize=7.5, va="center")
+    status = shortened(plan.status, 7.5, foot.width / 2)
+    page.text(foot.right, foot.bottom + 1.5, status, fontsize=7.5, ha="right", va="center")
+
+
+def bar_length(denominator: int, *, longest_mm: float = 56.0) -> int:
+    """Choose the ground length of the scale bar: 1, 2 or 5 × 10ᵏ metres that fits.
+
+    Examples
+    --------
+    >>> bar_length(1000), bar_length(2500), bar_length(20)
+    (50, 100, 1)
+    """
+    longest = longest_mm * denominator / 1000
+    lengths = [m * 10**power for power in range(8) for m in (1, 2, 5)]
+    return max((length for length in lengths if length <= longest), default=1)
+
+
+def draw_scale(page: "Axes", plan: Plan, spec: PageSpec, grid: GridLines) -> None:
+    """Draw the fraction, the bar, the north arrow, and say the coordinate systems in words."""
+    box = spec.layout.scale
+    scale = f"1 : {spec.denominator:,}".replace(",", "\u00a0")
+    page.text(box.left + 1, box.top - 3.5, scale, fontsize=12, weight="bold", va="center")
+    paper = plan.campaign.paper.size
+    words = f"true on {paper} printed at 100 %"
+    page.text(box.left + 1, box.top - 7.8, words, fontsize=6.2, va="center", color=SOFT)
+    _draw_bar(page, box.left + 1, box.top - 15.5, spec.denominator)
+    _draw_north(page, box.right - 5, box.top - 7)
+    lines = [
+        "Drawn in: " + projection_in_words(plan.frame.projection) + " (no EPSG code).",
+        "Ticks and crosses: " + utm_in_words(grid.reference) + ".",
+        "Corners: latitude and longitude, WGS 84 (EPSG:4326).",
+        _north_words(grid),
+    ]
+    draw_lines(page, lines, Box(box.left + 1, box.bottom, box.width - 1, box.height - 18), 5.9)
+
+
+def _draw_bar(page: "Axes", left: float, bottom: float, denominator: int) -> None:
+    """Draw the bar in four parts of alternate black and white, with its lengths."""
+    from matplotlib.patches import Rectangle
+
+    length = bar_length(denominator)
+    whole = length * 1000 / denominator
+    for part in range(4):
+        page.add_patch(
+            Rectangle(
+                (left + part * whole / 4, bottom),
+                whole / 4,
+                1.5,
+                linewidth=0.6,
+                edgecolor=INK,
+                facecolor=INK if part % 2 == 0 else "white",
+                gid="scale-bar",
+            )  # fmt: skip
+        )
+    shown = (length / 1000, "km") if length >= 2000 else (length, "m")
+    for share in (0.0, 0.5, 1.0):
+        words = f"{shown[0] * share:g}" + (f" {shown[1]}" if share == 1.0 else "")
+        page.text(left + share * whole, bottom + 3.2, words, fontsize=6, ha="center", va="center")
+
+
+def _draw_north(page: "Axes", x: float, y: float) -> None:
+    """Draw an arrow up the page: the north of the site's plane."""
+    from matplotlib.patches import Polygon
+
+    low, high = y - 6, y + 5
+    for side, face in ((-2.6, INK), (2.6, "white")):
+        page.add_patch(
+            Polygon(
+                [(x, high), (x + side, low), (x, low + 2.4)],
+                closed=True,
+                facecolor=face,
+                edgecolor=INK,
+                linewidth=0.7,
+            )  # fmt: skip
+        )
+    page.text(x, low - 1.8, "N", fontsize=8, weight="bold", ha="center", va="center")
+
+
+def _north_words(grid: GridLines) -> str:
+    """Say which north the arrow shows, and how far the others lie from it."""
+    name = "UTM grid north" if grid.reference.zone else "polar grid north"
+    return (
+        "Arrow: grid north of the site plane. True north lies "
+        f"{_turned(grid.true_turn)}, {name} {_turned(grid.turn)} of it. "
+        "Magnetic north is not shown."
+    )
+
+
+def _turned(angle: float) -> str:
+    """Write an angle with its side."""
+    if abs(angle) < 0.005:
+        return "0.00°"
+    return f"{abs(angle):.2f}° {'east' if angle > 0 else 'west'}"
+
+
+def draw_notes(
+    page: "Axes", plan: Plan, content: MapContent, spec: PageSpec, unplaced: tuple[str, ...]
+) -> None:
+    """Write what is open, what the map does not show, names without a place, and the sources."""
+    lines = []
+    if plan.open_items:
+        held = [
+            item.topic + (" (hold point)" if item.holds_work else "") for item in plan.open_items
+        ]
+        lines.append("OPEN: " + "; ".join(held) + ". See the plan sheet.")
+    lines += content.lines
+    if unplaced:
+        lines.append("Too close together to name on the map: " + ", ".join(unplaced) + ".")
+    if plan.frame.boundary_assumed:
+        lines.append("The boundary is ASSUMED: areas and locations hang on it.")
+    lines += [f"Source: {source}" for source in plan.frame.sources]
+    draw_lines(page, lines, spec.layout.notes, 6.2)
+
+
+def draw_lines(page: "Axes", lines: list[str], box: Box, points: float) -> None:
+    """Write sentences into a box from the top; one that starts with OPEN is set bold.
+
+    What does not fit is cut with ``…``; the plan sheet has all of it.
+    """
+    room = int(box.height / _LINE_MM)
+    y = box.top - _LINE_MM / 2
+    for index, line in enumerate(lines):
+        most = room - min(len(lines) - index - 1, room - 1)  # leave a line for each that follows
+        bold = line.startswith(("OPEN", "ASSUMED"))
+        pieces = wrapped(line, points, box.width, most=max(most, 1), bold=bold)
+        for piece in pieces:
+            if room <= 0:
+                return
+            page.text(
+                box.left, y, piece, fontsize=points, va="center",
+                weight="bold" if bold else "normal", color=INK if bold else SOFT,
+            )  # fmt: skip
+            y -= _LINE_MM
+            room -= 1
