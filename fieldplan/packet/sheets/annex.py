@@ -1,6 +1,15 @@
-"""Inputs with their fingerprints, and the annex that tells how to draw again."""
+"""Inputs with their fingerprints, and the annexes: the working, and how to draw again."""
 
-from fieldplan.base.document import Block, Bullets, Facts, Heading, PageBreak, Paragraph, Verbatim
+from fieldplan.base.document import (
+    Block,
+    Bullets,
+    Facts,
+    Heading,
+    PageBreak,
+    Paragraph,
+    Verbatim,
+    Working,
+)
 from fieldplan.plan.model import Plan
 
 
@@ -25,13 +34,16 @@ def inputs_blocks(plan: Plan) -> list[Block]:
     ]
 
 
-def annex_blocks() -> list[Block]:
-    """Set the drawing procedure line by line."""
+def annex_blocks(plan: Plan) -> list[Block]:
+    """Set the working and the drawing procedure, line by line."""
     from fieldplan.design.procedure import procedure_pseudocode
 
     return [
         PageBreak(),
-        Heading("Annex A. The drawing procedure, line by line"),
+        Heading("Annex A. The working"),
+        Working(plan.size.steps),
+        PageBreak(),
+        Heading("Annex B. The drawing procedure, line by line"),
         Paragraph("For a reviewer who wants to draw the locations again without this program."),
         Verbatim(procedure_pseudocode()),
     ]

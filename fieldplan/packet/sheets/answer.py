@@ -1,5 +1,7 @@
 """Page one: how many, where, how sure, and what is still open."""
 
+from dataclasses import replace
+
 from fieldplan.base.document import Block, Bullets, Heading, Paragraph, Table
 from fieldplan.packet.sheets.amounts import counted, percent, rounded
 from fieldplan.packet.sheets.plan_words import (
@@ -10,9 +12,14 @@ from fieldplan.packet.sheets.plan_words import (
 )
 from fieldplan.plan.model import Plan
 
+FIGURE_MM = 120.0
+"""Width that leaves page one room for the words."""
+
 
 def answer_blocks(plan: Plan) -> list[Block]:
     """Compose page one."""
+    from fieldplan.packet.charts import site_figure
+
     first, *others = plan.size.sentences
     blocks: list[Block] = [Paragraph(first, tone="answer"), Paragraph(aim_sentence(plan))]
     stamps = (*alarm_lines(plan), *assumed_lines(plan))
@@ -21,6 +28,7 @@ def answer_blocks(plan: Plan) -> list[Block]:
     blocks += [Paragraph(sentence) for sentence in others]
     blocks += [Paragraph(sentence) for sentence in plan.frame.population.sentences[:1]]
     blocks += [stratum_table(plan), *extra_lines(plan), *open_blocks(plan)]
+    blocks += [replace(site_figure(plan), width_mm=FIGURE_MM)]
     blocks.append(
         Paragraph(
             "This sheet is a summary. It is no substitute for the documents that a regulator "

@@ -1,6 +1,6 @@
 """What the crew may change, how it is recorded, and what has to be settled first."""
 
-from fieldplan.base.document import Block, Bullets, Facts, Heading, Paragraph, Table
+from fieldplan.base.document import Block, Bullets, Caution, Facts, Heading, Paragraph, Table
 from fieldplan.packet.sheets.amounts import BLANK, days
 from fieldplan.packet.sheets.plan_words import REASONS
 from fieldplan.packet.sheets.wording import number
@@ -58,7 +58,7 @@ def reason_table() -> Table:
 
 
 def caution_blocks(plan: Plan) -> list[Block]:
-    """Set every caution that the facts raise; none instructs, each defers."""
+    """Set hold points one by one and the other topics as a table; none instructs, each defers."""
     blocks: list[Block] = [
         Paragraph(
             "Raised by facts of the campaign. Each is open until a reference, its date and its "
@@ -67,4 +67,20 @@ def caution_blocks(plan: Plan) -> list[Block]:
             "the authority to say."
         )
     ]
-    return [*blocks, *plan.cautions]
+    blocks += [caution for caution in plan.cautions if caution.holds_work]
+    others = [caution for caution in plan.cautions if not caution.holds_work]
+    if others:
+        rows = tuple((f"{c.topic}: {c.because}", c.defers_to, short_status(c)) for c in others)
+        blocks.append(Table(("Topic, raised because", "Decided by", "Reference"), rows))
+    return blocks
+
+
+def short_status(caution: Caution) -> str:
+    """Write OPEN alone where nothing was typed; the paragraph above says what is missing.
+
+    Examples
+    --------
+    >>> short_status(Caution("t", "b", "d", "OPEN: no reference, date and expiry typed", True))
+    'OPEN'
+    """
+    return "OPEN" if caution.status.startswith("OPEN: no reference") else caution.status

@@ -1,6 +1,6 @@
 """How uneven the site is, and how many results the target takes."""
 
-from fieldplan.base.document import Block, Bullets, Facts, Heading, Table, Working
+from fieldplan.base.document import Block, Bullets, Facts, Heading, Paragraph, Table
 from fieldplan.packet.sheets.amounts import percent, rounded
 from fieldplan.plan.model import Plan
 from fieldplan.sizing.words import percent as chance_words
@@ -16,7 +16,8 @@ def spread_blocks(plan: Plan) -> list[Block]:
         from fieldplan.packet.charts import pilot_dots
 
         blocks.append(pilot_dots(spread))
-    blocks.append(spread_table(plan))
+    if not all(entry.values for entry in spread.strata):
+        blocks.append(spread_table(plan))
     if spread.notes:
         blocks.append(Bullets(spread.notes))
     return blocks
@@ -38,7 +39,7 @@ def spread_table(plan: Plan) -> Table:
 
 
 def number_blocks(plan: Plan) -> list[Block]:
-    """Show the working, how sure the number is, the curve, and the conditions."""
+    """Show what is promised, how sure the number is, the curve, and the conditions."""
     from fieldplan.packet.charts import precision_curve
 
     size = plan.size
@@ -47,13 +48,9 @@ def number_blocks(plan: Plan) -> list[Block]:
         blocks.append(assurance_table(plan))
     if size.curve:
         blocks.append(precision_curve(size))
-    blocks += [
-        Heading("The working", level=2),
-        Working(size.steps),
-        Heading("Under what condition", level=2),
-        Bullets(size.conditions),
-    ]
-    return blocks if size.conditions else blocks[:-2]
+    if size.conditions:
+        blocks += [Heading("Under what condition", level=2), Bullets(size.conditions)]
+    return [*blocks, Paragraph("The working is in annex A.", tone="note")]
 
 
 def promise_rows(plan: Plan) -> tuple[tuple[str, str], ...]:

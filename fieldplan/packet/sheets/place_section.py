@@ -32,7 +32,7 @@ def draw_blocks(plan: Plan) -> list[Block]:
     blocks: list[Block] = [Facts(tuple(rows))]
     if draw.notes:
         blocks.append(Bullets(draw.notes))
-    blocks.append(Paragraph("In words (annex A has it line by line):"))
+    blocks.append(Paragraph("In words (annex B has it line by line):"))
     return [
         *blocks,
         Bullets(tuple(procedure_in_words(plan.campaign, plan.locations)), numbered=True),
@@ -40,10 +40,8 @@ def draw_blocks(plan: Plan) -> list[Block]:
 
 
 def location_blocks(plan: Plan) -> list[Block]:
-    """Set the figure of the site and every location."""
-    from fieldplan.packet.charts import site_figure
-
-    return [site_figure(plan), location_table(plan), Paragraph(table_note(plan), tone="note")]
+    """Set every location, and explain the columns."""
+    return [location_table(plan), Paragraph(table_note(plan), tone="note")]
 
 
 def location_table(plan: Plan) -> Table:
@@ -88,5 +86,6 @@ def table_note(plan: Plan) -> str:
     return (
         f"Coordinates are degrees on WGS 84. {meanings}. Order is the order of drawing within the "
         "stratum; alternates are used in that order. A jar is one sample; duplicates are among "
-        "them. UTM and degrees-minutes-seconds are in the crew's CSV file."
+        "them. UTM and degrees-minutes-seconds are in the crew's CSV file; the map to scale is in "
+        "folder crew."
     )

@@ -43,7 +43,7 @@ def plan_sheet(plan: Plan) -> Document:
     blocks: list[Block] = [*answer_blocks(plan), PageBreak()]
     for number, (title, content) in enumerate(sections, start=1):
         blocks += [Heading(f"{number}. {title}"), *content]
-    blocks += [Heading(f"{len(sections) + 1}. Sign-off"), sign_off(plan), *annex_blocks()]
+    blocks += [Heading(f"{len(sections) + 1}. Sign-off"), sign_off(plan), *annex_blocks(plan)]
     return Document(
         title=plan.campaign.plan.title,
         subtitle=subtitle(plan, "Plan sheet"),

@@ -11,12 +11,14 @@ import pytest
 from fieldplan.base.document import Caution, Document, Figure, PageBreak, SignOff, Table
 from fieldplan.campaign.model import Analyte, DesignTable, FieldTable, FrameTable, Objective, Rules
 from fieldplan.packet.sheets.answer import answer_blocks
+from fieldplan.packet.sheets.field_section import caution_blocks
 from fieldplan.packet.sheets.methods import methods_paragraph, patch_line
 from fieldplan.packet.sheets.plan_sheet import plan_sheet
 from fieldplan.packet.sheets.rules import rule_lines, rules_fingerprint
 from fieldplan.plan.model import Plan
 from tests.factories import (
     make_campaign,
+    make_cautions,
     make_frame,
     make_list_frame,
     make_locations,
@@ -169,6 +171,7 @@ def test_every_section_of_the_checklist_is_there_in_order():
         "For the report",
         "What this plan was made from",
         "Sign-off",
+        "The working",
         "The drawing procedure, line by line",
     ]
 
@@ -186,11 +189,13 @@ def test_no_word_of_the_sheet_is_a_verdict():
         assert not VERDICTS.findall(words_of(sheet).replace("passed over", ""))
 
 
-def test_every_caution_is_printed_once():
+def test_every_caution_is_printed_once_with_its_deferral():
     """A caution that is lost between rooms warns nobody."""
-    plan = make_plan()
-    printed = [block for block in standard().blocks if isinstance(block, Caution)]
-    assert tuple(printed) == plan.cautions
+    lone = Caution("lone work", "one person works alone", "the employer", "OPEN: none", True)
+    blocks = caution_blocks(make_plan(cautions=(*make_cautions(), lone)))
+    assert [b for b in blocks if isinstance(b, Caution)] == list(make_cautions())
+    table = next(b for b in blocks if isinstance(b, Table))
+    assert table.rows == (("lone work: one person works alone", "the employer", "OPEN: none"),)
 
 
 def test_sign_off_has_a_line_for_everyone_named():
