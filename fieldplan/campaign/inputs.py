@@ -11,6 +11,7 @@ from fieldplan.campaign.problems import Problem, meaning, render
 from fieldplan.campaign.screen import table_name
 from fieldplan.campaign.text import near_names
 
+_FOLDER = "this is a folder"
 _SHAPEFILE_PARTS = (".shx", ".dbf", ".prj", ".cpg")
 
 
@@ -55,7 +56,8 @@ def input_files(read: ReadCampaign) -> dict[str, Path]:
         fault = _fault(place)
         if fault:
             what = meaning(table_name(path[:-1]), str(path[-1]))
-            problems.append(Problem(path, f'{what}; {fault} (got "{written}").{_near(place)}'))
+            remedy = " Name a file in it." if fault == _FOLDER else _near(place)
+            problems.append(Problem(path, f'{what}; {fault} (got "{written}").{remedy}'))
             continue
         name = file_part(read.folder, written)
         files[name] = place
@@ -104,7 +106,7 @@ def _fault(place: Path) -> str | None:
     try:
         if place.is_file():
             return None
-        return "this is a folder" if place.is_dir() else "there is no such file"
+        return _FOLDER if place.is_dir() else "there is no such file"
     except (OSError, ValueError):
         return "the name cannot be looked up"
 

@@ -166,5 +166,6 @@ def _chance(answers: Answers, sigma: KnownSigma, target: float, n: int) -> str:
         )
     return (
         f"The chance that {n} are enough is {chance * 100:.0f} %, since sigma is itself an "
-        f"estimate from {sigma.results} results; for a chance of {wanted * 100:.0f} % it takes {more}."
+        f"estimate from {sigma.results} results; for a chance of {wanted * 100:.0f} % it takes "
+        f"{more}."
     )

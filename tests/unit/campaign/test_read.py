@@ -438,7 +438,7 @@ def test_lines_count_through_lists_of_tables_and_long_texts(tmp_path):
 
 
 def test_fill_in_is_listed_by_line_and_key_and_nothing_else_is_told(tmp_path):
-    """ "Don't know" is always an answer, for a number as for a text, in any letters."""
+    """Not to know is always an answer, for a number as for a text, in any letters."""
     text = bent(
         ("6.0", '"FILL IN"'),
         ("12\n", '"fill in"\n'),

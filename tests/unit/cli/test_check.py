@@ -1,0 +1,157 @@
+"""``fieldplan check``: what was understood, all that is wrong, and what is still open."""
+
+import json
+
+import pytest
+from click.testing import CliRunner, Result
+
+from fieldplan.cli.check import command
+from tests.unit.campaign.files import PLAIN, bent
+
+BOUNDARY = {
+    "type": "Polygon",
+    "coordinates": [[[-1.9, 52.1], [-1.899, 52.1], [-1.899, 52.101], [-1.9, 52.101], [-1.9, 52.1]]],
+}
+PILOT = "location_id,analyte,as_reported,unit\n" + "".join(
+    f"P{k},Lead,{value},mg/kg\n" for k, value in enumerate((12, 40, 25, 61, 33, 18, 55, 90))
+)
+
+
+@pytest.fixture
+def folder(tmp_path, monkeypatch):
+    """A folder with a boundary of about 0.76 ha and a pilot of 8."""
+    monkeypatch.chdir(tmp_path)
+    (tmp_path / "boundary.geojson").write_text(json.dumps(BOUNDARY))
+    (tmp_path / "pilot.csv").write_text(PILOT)
+    return tmp_path
+
+
+def check(folder, text: str, *options: str) -> Result:
+    """Write a campaign file and check it."""
+    (folder / "campaign.toml").write_text(text, encoding="utf-8")
+    return CliRunner().invoke(command, ["campaign.toml", *options], catch_exceptions=False)
+
+
+def words(text: str) -> str:
+    """Put wrapped output on one line."""
+    return " ".join(text.split())
+
+
+def test_sound_campaign_is_told_in_sentences(folder):
+    """The reader sees whether the tool understood what the author meant."""
+    result = check(folder, PLAIN)
+    text = words(result.stdout)
+    assert result.exit_code == 0
+    assert "Quarry Field, lead in topsoil (QF)." in text
+    assert "the mean of Lead with a standard error of at most 6 mg/kg; locations drawn" in text
+    assert "n shall be enough with a chance of 80 % (L. Fenn)." in text
+    assert "The mean speaks for 100 % of the site" in text
+    assert "8 pilot locations (pilot.csv)" in text
+    assert text.endswith("Nothing is left to fill in. Next: fieldplan size, then fieldplan pack.")
+    assert max(map(len, result.stdout.splitlines())) <= 80
+
+
+@pytest.mark.parametrize("word", ["valid", "pass", "safe", "compliant", "approved", " ok"])
+def test_check_gives_no_verdict(folder, word):
+    """It says what was understood; whether that is right is for people to say."""
+    assert word not in check(folder, PLAIN).stdout.lower().replace("passing", "")
+
+
+@pytest.mark.parametrize(
+    ("changes", "words_said"),
+    [
+        ([("standard_error", "half_width")], "a half-width of at most 6 mg/kg (95 %, two-sided)"),
+        (
+            [("standard_error = 6.0", "relative_half_width = 0.2")],
+            "a half-width of at most 20 % of the mean (95 %, two-sided)",
+        ),
+        (
+            [
+                ("standard_error = 6.0", "budget = 900"),
+                ("[draw]", '[cost]\ncurrency = "EUR"\nper_analysis = 9\n[draw]'),
+            ],
+            "the mean of Lead with what 900 EUR can buy",
+        ),
+        ([("0.80", '"plain"')], "The bare formula decides n (L. Fenn): it is enough in about half"),
+    ],
+)
+def test_each_target_is_said_in_words(folder, changes, words_said):
+    """A half-width read as a standard error doubles the work."""
+    assert words_said in words(check(folder, bent(*changes)).stdout)
+
+
+def test_all_problems_are_listed_and_the_exit_code_is_2(folder):
+    """Typed wrong."""
+    result = check(folder, bent(("6.0", '"6"'), ("seed = 12", "seed = -1")))
+    assert result.exit_code == 2
+    lines = result.stderr.splitlines()
+    assert [line.split(": ")[:2] for line in lines] == [
+        ["campaign.toml:20", "objective.standard_error"],
+        ["campaign.toml:28", "draw.seed"],
+    ]
+
+
+def test_text_that_is_no_toml_has_exit_code_2(folder):
+    """Typed wrong, before anything can be understood."""
+    result = check(folder, bent(("6.0", "6,5")))
+    assert result.exit_code == 2
+    assert "write 6.5" in result.stderr
+    assert result.stdout == ""
+
+
+def test_what_is_open_comes_last_and_is_no_error(folder):
+    """Not to know is an answer."""
+    result = check(folder, bent(("6.0", '"FILL IN"')))
+    assert result.exit_code == 0
+    assert result.stdout.splitlines()[0] == "Still to fill in:"
+    assert "line 20: objective.standard_error: the largest standard error" in result.stdout
+
+
+def test_missing_input_file_is_typed_wrong(folder):
+    """The name is in the campaign file."""
+    (folder / "pilot.csv").rename(folder / "pilots.csv")
+    result = check(folder, PLAIN)
+    assert result.exit_code == 2
+    assert 'no such file (got "pilot.csv"). Did you mean pilots.csv?' in result.stderr
+
+
+def test_boundary_that_cannot_serve_has_exit_code_1(folder):
+    """The campaign is typed right but cannot be done."""
+    line = {"type": "LineString", "coordinates": [[-1.9, 52.1], [-1.8, 52.1]]}
+    (folder / "boundary.geojson").write_text(json.dumps(line))
+    result = check(folder, PLAIN)
+    assert result.exit_code == 1
+    assert "boundary.geojson" in result.stderr
+    assert "Nothing is left" not in result.stdout
+
+
+def test_pilot_that_cannot_serve_keeps_what_was_understood_of_the_site(folder):
+    """One fault must not hide what was read before it."""
+    (folder / "pilot.csv").write_text("location_id,analyte,as_reported,unit\nP1,Lead,x,mg/kg\n")
+    result = check(folder, PLAIN)
+    assert result.exit_code == 1
+    assert "The mean speaks for" in result.stdout
+    assert "pilot.csv" in result.stderr
+
+
+def test_alarm_is_printed(folder):
+    """A limit above the level makes non-detects say nothing about the level."""
+    level = 'unit = "mg/kg"\naction_level = 5\naction_level_source = "x"\nreporting_limit = 9'
+    result = check(folder, bent(('unit = "mg/kg"', level)))
+    assert "ALARM: Lead: the reporting limit of 9 mg/kg lies above the action level of 5" in words(
+        result.stdout
+    )
+
+
+@pytest.mark.parametrize(
+    ("changes", "code"),
+    [([], 0), ([("6.0", '"FILL IN"')], 0), ([("6.0", "-6")], 2), ([("6.0", "6,")], 2)],
+)
+def test_json_holds_the_same_and_nothing_else_is_printed(folder, changes, code):
+    """For scripts."""
+    result = check(folder, bent(*changes), "--json")
+    assert result.exit_code == code
+    found = json.loads(result.stdout)
+    assert list(found) == ["campaign", "understood", "alarms", "problems", "fill_in"]
+    assert bool(found["problems"]) == (code == 2)
+    assert result.stderr == ""
