@@ -125,7 +125,7 @@ def _precision(question: Question, counts: Counts) -> str:
     reach = with_unit(figure(precision.half_width(counts.needed)), question.unit)
     share = typed_percent(question.confidence)
     if question.interval == "two-sided":
-        width = f"a {share} interval of ± {reach}"
+        width = f"a {share} interval of ±{reach}"
     else:
         side = "above" if question.interval == "upper-limit" else "below"
         width = f"a {share} {question.interval.replace('-', ' ')} {reach} {side} the mean"

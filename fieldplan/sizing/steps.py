@@ -4,7 +4,8 @@ import math
 from collections.abc import Iterator
 
 from fieldplan.base.working import Quantity, Step
-from fieldplan.sizing.counting import Counts, control_counts, total_cost
+from fieldplan.sizing.closing_steps import COCHRAN, closing_steps
+from fieldplan.sizing.counting import Counts
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
 from fieldplan.stats.allocation import unrounded_shares, unrounded_total
@@ -16,8 +17,6 @@ from fieldplan.stats.precision import (
     unrounded_for_standard_error,
     whole,
 )
-
-COCHRAN = "Cochran 1977, Sampling Techniques, 3rd ed."
 
 
 def steps(question: Question, counts: Counts) -> tuple[Step, ...]:
@@ -42,9 +41,7 @@ def steps(question: Question, counts: Counts) -> tuple[Step, ...]:
         else:
             working += _stratified(question, counts.plain)
         working += _chances(question, counts)
-    working += [*_losses(question, counts), *_precision(question, counts)]
-    working += _money(question, counts)
-    return tuple(working)
+    return (*working, *closing_steps(question, counts))
 
 
 def _sigma(question: Question) -> Quantity:
@@ -250,6 +247,9 @@ def _chances(question: Question, counts: Counts) -> Iterator[Step]:
             chance = Precision(question).chance(chosen)
             if chance is not None:
                 yield _chance(question, chosen, chance)
+            elif question.assurance is not None and question.target_half_width is not None:
+                luck_only = Precision(question).chance(chosen, sigma_known=True) or 0.0
+                yield _chance(question, chosen, luck_only)
     part = question.parts[0]
     simple = len(question.parts) == 1 and question.target == "standard_error"
     if not simple or question.assurance is None or part.results is None:
@@ -308,125 +308,19 @@ def _chance(question: Question, chosen: tuple[int, ...], chance: float) -> Step:
         main = precision.degrees_of_freedom(chosen)
         formula = f"chance = P(F ≤ h² / (t² · {factor}V)), F with df of the coming results and df"
         source = "predictive F: Hahn & Meeker 1991, Statistical Intervals"
+        if pilot is None:
+            formula = "chance = P(χ² ≤ df' · h² / (t² · V)), df' of the coming results"
+            source = "Kupper & Hafner 1989, The American Statistician 43:101"
         if math.isfinite(main):
             t = t_quantile(main, confidence=question.confidence, kind=question.interval)
             inputs.append(Quantity("t", f"Student quantile at {main:.4g} degrees of freedom", t))
     return Step(
         symbol="chance",
-        meaning=f"Chance that {sum(chosen)} results meet the target",
+        meaning=f"Chance that {sum(chosen)} results meet the target"
+        + (", were sigma exactly right" if pilot is None else ""),
         formula=formula,
         inputs=tuple(inputs),
         unrounded=chance,
         rounded=round(chance, 3),
         source=source,
-    )
-
-
-def _losses(question: Question, counts: Counts) -> Iterator[Step]:
-    if question.locations is not None or question.census:
-        return
-    for part, results, visits in zip(question.parts, counts.needed, counts.planned, strict=True):
-        if part.loss:
-            where = f" in {part.name}" if len(question.parts) > 1 else ""
-            yield Step(
-                symbol="visits" if not where else f"visits({part.name})",
-                meaning=f"Locations to visit{where}, with the loss allowance",
-                formula="visits = n / (1 − loss)"
-                + ("" if part.population is None else ", at most N"),
-                inputs=(
-                    Quantity("n", "results needed", results, "results"),
-                    Quantity("loss", "share of locations without a result", part.loss),
-                ),
-                unrounded=results / (1 - part.loss),
-                rounded=float(visits),
-                unit="locations",
-                source="campaign choice",
-            )
-
-
-def _precision(question: Question, counts: Counts) -> Iterator[Step]:
-    if question.census:
-        return
-    precision = Precision(question)
-    error = precision.standard_error(counts.needed)
-    strata = len(question.parts) > 1
-    listed = any(part.population is not None for part in question.parts)
-    inputs = []
-    for part, results in zip(question.parts, counts.needed, strict=True):
-        where = f"({part.name})" if strata else ""
-        inputs += [
-            Quantity(f"s{where}", "standard deviation", part.sigma, question.unit),
-            Quantity(f"n{where}", "results", results, "results"),
-        ]
-        if part.population is not None:
-            inputs.append(Quantity(f"N{where}", "units in the list", part.population, "units"))
-    inside = "s² (1 − n/N) / n" if listed else "s² / n"
-    yield Step(
-        symbol="SE",
-        meaning="Standard error to expect if sigma is right",
-        formula=f"SE = √(Σ W² {inside})" if strata else f"SE = √({inside})",
-        inputs=tuple(inputs),
-        unrounded=error,
-        rounded=error,
-        unit=question.unit,
-        source=f"{COCHRAN}, theorem {'5.3' if strata else '2.2'}",
-    )
-    known = precision.degrees_of_freedom(counts.needed)
-    if error == 0 or not math.isfinite(known):
-        return
-    t = t_quantile(known, confidence=question.confidence, kind=question.interval)
-    yield Step(
-        symbol="half-width",
-        meaning=f"Reach of the {question.confidence:g} {question.interval.replace('-', ' ')} "
-        "interval or limit to expect",
-        formula="half-width = t · SE",
-        inputs=(
-            Quantity("t", f"Student quantile at {known:.4g} degrees of freedom", t),
-            Quantity("SE", "standard error to expect", error, question.unit),
-        ),
-        unrounded=t * error,
-        rounded=t * error,
-        unit=question.unit,
-        source=f"{COCHRAN}, ch. 2" + ("; df Satterthwaite 1946" if strata else ""),
-    )
-
-
-def _money(question: Question, counts: Counts) -> Iterator[Step]:
-    visits = sum(counts.planned)
-    for rate, entry in zip(
-        question.controls, control_counts(question, counts.planned), strict=True
-    ):
-        if rate.share is not None:
-            yield Step(
-                symbol=rate.kind,
-                meaning=f"Control samples, {rate.kind}, counted apart from n",
-                formula="count = share · locations",
-                inputs=(
-                    Quantity("share", "share of the samples", rate.share),
-                    Quantity("locations", "locations to visit", visits, "locations"),
-                ),
-                unrounded=rate.share * visits,
-                rounded=float(entry.count),
-                unit="samples",
-                source=rate.source,
-            )
-    cost, prices = total_cost(question, counts.planned), question.prices
-    if cost is None or prices is None:
-        return
-    controls = sum(entry.count for entry in control_counts(question, counts.planned))
-    yield Step(
-        symbol="cost",
-        meaning="Cost of the round",
-        formula="cost = mobilisation + locations · (visit + analysis) + controls · analysis",
-        inputs=(
-            Quantity("mobilisation", "once", prices.mobilisation, prices.currency),
-            Quantity("locations", "locations to visit", visits, "locations"),
-            Quantity("visit", "per location", prices.per_location, prices.currency),
-            Quantity("analysis", "per analysed sample", prices.per_analysis, prices.currency),
-            Quantity("controls", "control samples", controls, "samples"),
-        ),
-        unrounded=cost,
-        rounded=cost,
-        unit=prices.currency,
-        source="prices typed in the campaign file",
     )

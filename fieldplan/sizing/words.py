@@ -6,17 +6,17 @@ from fieldplan.sizing.question import Question
 
 
 def figure(value: float, digits: int = 3) -> str:
-    """Write a number with so many significant digits and no exponent.
+    """Write a computed number with so many significant digits and no exponent.
 
     Examples
     --------
-    >>> figure(8.8213), figure(27.5), figure(16800.4), figure(0.0004567), figure(6.0)
-    ('8.82', '27.5', '16800', '0.000457', '6')
+    >>> figure(8.7972), figure(27.5), figure(16800.4), figure(0.0004567), figure(9.999)
+    ('8.80', '27.5', '16800', '0.000457', '10.0')
     """
     if value == 0 or not math.isfinite(value):
         return f"{value:g}"
-    text = f"{value:.{max(0, digits - 1 - math.floor(math.log10(abs(value))))}f}"
-    return text.rstrip("0").rstrip(".") if "." in text else text
+    shown = float(f"{value:.{digits}g}")
+    return f"{shown:.{max(0, digits - 1 - math.floor(math.log10(abs(shown))))}f}"
 
 
 def typed(value: float) -> str:
@@ -96,9 +96,9 @@ def target_words(question: Question) -> str:
         currency = question.prices.currency if question.prices else ""
         return f"the smallest standard error that {typed(question.value)} {currency} buys"
     width = question.target_half_width or 0.0
-    reach = with_unit(figure(width, 4), question.unit)
+    reach = with_unit(typed(float(f"{width:.4g}")), question.unit)
     if question.target == "relative_half_width":
-        mean = with_unit(figure(question.mean or 0.0, 4), question.unit)
+        mean = with_unit(typed(float(f"{question.mean or 0.0:.4g}")), question.unit)
         reach += f" ({typed_percent(question.value)} of an expected mean of {mean})"
     share = typed_percent(question.confidence)
     if question.interval == "two-sided":

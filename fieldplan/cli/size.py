@@ -1,0 +1,138 @@
+"""``fieldplan size``: how many, for a campaign file or for bare numbers."""
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from fieldplan.cli.options import (
+    explain_option,
+    json_option,
+    print_json,
+    print_sentences,
+    print_steps,
+    quiet_option,
+    say,
+    wrapped,
+)
+from fieldplan.cli.size_options import BadOption, BareNumbers, bare_number_options, given_names
+
+if TYPE_CHECKING:
+    from fieldplan.sizing.model import Size
+
+
+@click.command("size")
+@click.argument(
+    "campaign_file",
+    type=click.Path(path_type=Path, dir_okay=False),
+    required=False,
+    metavar="[CAMPAIGN]",
+)
+@bare_number_options
+@json_option
+@explain_option
+@quiet_option
+def command(
+    campaign_file: Path | None, as_json: bool, explain: bool, quiet: bool, **typed: Any
+) -> None:
+    """Say how many locations the target needs.
+
+    Give a campaign file, or bare numbers:
+
+    \b
+      fieldplan size campaign.toml
+      fieldplan size --sigma 27.57 --standard-error 6 --pilot-n 8
+      fieldplan size --stratum 0.64,18 --stratum 0.36,45 --standard-error 6
+    """
+    answer = _of_campaign(campaign_file, typed) if campaign_file else _of_numbers(typed)
+    if as_json:
+        print_json(as_mapping(answer))
+    elif quiet:
+        click.echo(wrapped(answer.sentences[0]))
+    else:
+        print_answer(answer, explain=explain)
+
+
+def _of_campaign(path: Path, typed: dict[str, Any]) -> "Size":
+    """Size a campaign file; bare numbers beside it would contradict it."""
+    names = given_names(typed)
+    if names:
+        message = f"{names[0]} beside a campaign file: write it into {path}, or leave the file out."
+        raise BadOption(message)
+    from fieldplan.campaign import read_campaign
+    from fieldplan.frame import read_frame
+    from fieldplan.lab import read_spread
+    from fieldplan.sizing import size
+
+    read = read_campaign(path)
+    frame = read_frame(read)
+    return size(read.campaign, read_spread(read, frame), frame)
+
+
+def _of_numbers(typed: dict[str, Any]) -> "Size":
+    from fieldplan.sizing.answer import answer
+
+    return answer(BareNumbers(**typed).question())
+
+
+def print_answer(answer: "Size", *, explain: bool) -> None:
+    """Print the answer in sentences; with ``explain`` the working and the conditions too."""
+    click.echo(wrapped(answer.sentences[0]))
+    click.echo()
+    print_sentences(answer.sentences[1:])
+    if not explain:
+        say("\n--explain shows the working, and under what condition it holds.")
+        return
+    click.echo("\nThe working\n")
+    print_steps(answer.steps)
+    click.echo("\nUnder what condition\n")
+    print_sentences(answer.conditions)
+
+
+def as_mapping(answer: "Size") -> dict[str, Any]:
+    """Arrange the answer for ``--json``: n first, chances rounded to three decimals."""
+    return {
+        "n": answer.needed,
+        "locations": answer.planned,
+        "target": answer.target,
+        "chance_enough": _three(answer.chance_needed),
+        "n_by_assurance": {_share(entry.assurance): entry.n for entry in answer.assured},
+        "assurance": answer.assurance if answer.assurance is not None else "plain",
+        "plain_n": answer.plain_n,
+        "plain_unrounded": answer.unrounded,
+        "plain_chance_enough": _three(answer.chance_plain),
+        "standard_error": answer.standard_error,
+        "half_width": answer.half_width,
+        "confidence": answer.confidence,
+        "interval": answer.interval,
+        "unit": answer.unit,
+        "strata": [
+            {
+                "stratum": entry.stratum,
+                "weight": entry.weight,
+                "sigma": entry.sigma,
+                "n": entry.needed,
+                "locations": entry.planned,
+                "alternates": entry.alternates,
+                "population": entry.population,
+                "floor_applied": entry.floor_applied,
+            }
+            for entry in answer.strata
+        ],
+        "qc": answer.qc,
+        "cost": answer.cost,
+        "currency": answer.currency,
+        "sentences": answer.sentences,
+        "conditions": answer.conditions,
+        "steps": answer.steps,
+        "curve": answer.curve,
+    }
+
+
+def _three(chance: float | None) -> float | None:
+    return None if chance is None else round(chance, 3)
+
+
+def _share(assurance: float) -> str:
+    """Write a share with two decimals, or with all that were typed."""
+    return f"{assurance:.2f}" if round(assurance, 2) == assurance else f"{assurance:g}"
