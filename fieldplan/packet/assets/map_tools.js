@@ -167,9 +167,18 @@ function fieldplanLabels(map, layers, areaLabels) {
     label.className = side ? `label ${side[0]}` : "label waiting";
     if (side) { taken.add(side[1]); }
   }
+  /* Small marks where there is little room: by the pixels that each one has in the window. */
+  function sizeMarks(markers, bounds) {
+    const size = map.getSize();
+    const inside = markers.filter((marker) => bounds.contains(marker.getLatLng())).length;
+    const room = size.x * size.y / Math.max(1, inside);
+    map.getContainer().classList.toggle("dense", room < 2500);
+    map.getContainer().classList.toggle("crowded", room < 800);
+  }
   function arrange() {
     const taken = occupied(), bounds = map.getBounds().pad(0.05);
     const shown = layers.filter((layer) => map.hasLayer(layer)).flatMap((l) => l.getLayers());
+    sizeMarks(shown, map.getBounds());
     shown.forEach((marker) => {
       const spot = map.latLngToContainerPoint(marker.getLatLng());
       taken.add([spot.x - 7, spot.y - 7, spot.x + 7, spot.y + 7]);

@@ -44,7 +44,8 @@ function fieldplanPopup(feature, layer) {
     });
     box.append(table);
     return box;
-  }, {maxWidth: 300, minWidth: 200});
+  }, {maxWidth: 280, minWidth: 180, autoPanPaddingTopLeft: [62, 62],
+    autoPanPaddingBottomRight: [12, 12]});
 }
 
 function fieldplanAreaLabels(map, labels) {

@@ -31,7 +31,7 @@ def write_points_csv(plan: Plan) -> bytes:
     -------
     bytes
     """
-    rows = ([row.cells()[name] for name in CREW_COLUMNS] for row in point_rows(plan))
+    rows = (row.values(CREW_COLUMNS) for row in point_rows(plan))
     return _csv_bytes(CREW_COLUMNS, rows)
 
 

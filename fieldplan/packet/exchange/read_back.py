@@ -19,6 +19,7 @@ from fieldplan.packet.exchange.workbook import read_workbook
 from fieldplan.plan.model import Plan
 
 TOLERANCE_M = 0.2
+_ELLIPSOID = Geod(ellps="WGS84")
 SAMPLES_KEY = "samples_key.csv"
 
 Reader = Callable[[Path], list[ReadPoint]]
@@ -125,7 +126,6 @@ def distance_m(
     Examples
     --------
     >>> round(distance_m(52.1, -1.9, 52.1, -1.899))
-    68
+    69
     """
-    geodesic = Geod(ellps="WGS84")
-    return float(geodesic.inv(longitude, latitude, other_longitude, other_latitude)[2])
+    return float(_ELLIPSOID.inv(longitude, latitude, other_longitude, other_latitude)[2])

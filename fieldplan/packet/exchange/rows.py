@@ -1,5 +1,6 @@
 """What every point file says of a location: one row, made once from the plan."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from decimal import Decimal
 
@@ -86,6 +87,11 @@ class PointRow:
             "inclusion_probability": place.inclusion_probability,
             "weight": place.weight,
         }
+
+    def values(self, columns: Sequence[str]) -> list[Cell]:
+        """Give the cells of some columns, in their order."""
+        cells = self.cells()
+        return [cells[name] for name in columns]
 
 
 def point_rows(plan: Plan) -> tuple[PointRow, ...]:

@@ -43,7 +43,7 @@ def write_workbook(plan: Plan) -> bytes:
 
     book = Workbook()
     book.remove(book.worksheets[0])
-    rows = [[row.cells()[name] for name in OFFICE_COLUMNS] for row in point_rows(plan)]
+    rows = [row.values(OFFICE_COLUMNS) for row in point_rows(plan)]
     _fill_sheet(book.create_sheet("locations"), OFFICE_COLUMNS, rows)
     _fill_sheet(book.create_sheet("samples"), KEY_COLUMNS, sample_rows(plan))
     _fill_sheet(book.create_sheet("notes"), ("about", "what to know"), _notes(plan))

@@ -30,6 +30,7 @@ from fieldplan.packet.maps.palette import (
 from fieldplan.packet.maps.screen_page import (
     drawings,
     foot,
+    hectares,
     layer_titles,
     pattern_definitions,
     title_block,
@@ -59,15 +60,15 @@ def screen_map(plan: Plan) -> str:
     page = _empty_map(plan)
     titles = layer_titles(plan, shapes)
     shown = [shape for shape in shapes if shape.kind != "boundary"]
+    layers = [
+        _location_layer(plan, rows, name, titles[name]).add_to(page)
+        for name in MARKS
+        if name in titles
+    ]
     for kind in ("stratum", "excluded", "boundary"):
         if kind in titles:
             _outline_layer(plan, shapes, kind, titles[kind]).add_to(page)
     grid = folium.FeatureGroup(name=titles["grid"]).add_to(page)
-    layers = [
-        _location_layer(plan, rows, name, titles[name]).add_to(page)
-        for name in ("random", "targeted", "alternate")
-        if name in titles
-    ]
     parts: dict[str, Any] = {"grid": grid, "locations": layers}
     if page.crs == "EPSG3857":
         parts["online"] = _online_layer(titles["online"]).add_to(page)
@@ -110,11 +111,16 @@ def _outline_layer(
                 "type": "Feature",
                 "id": f"{kind}-{number}",
                 "geometry": shapely.geometry.mapping(shape.geometry),
-                "properties": {"style": _outline_style(plan, shape, number)},
+                "properties": _outline_told(shape) | {"style": _outline_style(plan, shape, number)},
             }
         )
     collection = {"type": "FeatureCollection", "features": features}
-    return folium.GeoJson(collection, name=title, smooth_factor=0.3)
+    told = JsCode("fieldplanPopup") if kind == "excluded" else None
+    return folium.GeoJson(collection, name=title, smooth_factor=0.3, on_each_feature=told)
+
+
+def _outline_told(shape: Outline) -> dict[str, Any]:
+    return {"title": shape.title, "lead": [hectares(shape.area_m2)], "rows": []}
 
 
 def _outline_style(plan: Plan, shape: Outline, number: int) -> dict[str, Any]:
@@ -124,7 +130,7 @@ def _outline_style(plan: Plan, shape: Outline, number: int) -> dict[str, Any]:
                 "interactive": False, "className": "boundary-line"}  # fmt: skip
     if shape.kind == "excluded":
         return {"color": EXCLUDED_LINE, "weight": 1.5, "fillColor": "url(#hatch)",
-                "fillOpacity": 1, "interactive": False, "className": "excluded-area"}  # fmt: skip
+                "fillOpacity": 1, "className": "excluded-area"}  # fmt: skip
     fill = stratum_fill(number)
     return {"color": fill.line, "weight": 2, "fillColor": f"url(#{fill.pattern}-{number % 8})",
             "fillOpacity": 0.9, "interactive": False, "className": "stratum-area"}  # fmt: skip

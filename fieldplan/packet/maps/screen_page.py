@@ -135,7 +135,7 @@ def _outline_titles(plan: Plan, shapes: tuple[Outline, ...]) -> dict[str, str]:
         titles["stratum"] = _group("Strata" if len(strata) > 1 else "Sampled area", rows)
     if excluded:
         rows = [
-            _row(_box_swatch("hatch", EXCLUDED_LINE), f"{said(s.name)}, {_hectares(s.area_m2)}")
+            _row(_box_swatch("hatch", EXCLUDED_LINE), f"{said(s.name)}, {hectares(s.area_m2)}")
             for s in excluded
         ]
         titles["excluded"] = _group("Excluded", rows)
@@ -145,7 +145,7 @@ def _outline_titles(plan: Plan, shapes: tuple[Outline, ...]) -> dict[str, str]:
 def _stratum_words(shape: Outline, counts: dict[str, int]) -> str:
     count = counts.get(shape.name)
     planned = f", {count} locations" if count is not None else ""
-    return f"{said(shape.name)}, {_hectares(shape.area_m2)}{planned}"
+    return f"{said(shape.name)}, {hectares(shape.area_m2)}{planned}"
 
 
 def _boundary_words(plan: Plan) -> str:
@@ -154,7 +154,14 @@ def _boundary_words(plan: Plan) -> str:
     return "Boundary, ASSUMED" if plan.frame.boundary_assumed else "Boundary"
 
 
-def _hectares(square_metres: float) -> str:
+def hectares(square_metres: float) -> str:
+    """Write an area in the unit that suits it.
+
+    Examples
+    --------
+    >>> hectares(400.4), hectares(23600.0)
+    ('400 m²', '2.36 ha')
+    """
     if square_metres < 10_000:
         return f"{square_metres:.0f} m²"
     return f"{square_metres / 10_000:.2f} ha"
