@@ -1,1 +1,5 @@
 """What the results say."""
+
+from fieldplan.estimate.answer import estimate
+
+__all__ = ["estimate"]

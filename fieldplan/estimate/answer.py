@@ -1,0 +1,161 @@
+"""The mean of the population and its interval, by the recorded design and rules only."""
+
+from collections.abc import Mapping
+
+from fieldplan.base.errors import DesignError, LabError
+from fieldplan.campaign.model import Rules
+from fieldplan.estimate.coverage import coverage_sentence
+from fieldplan.estimate.difference import difference_sentences, split_difference
+from fieldplan.estimate.level import level_sentence
+from fieldplan.estimate.means import Means, means_by
+from fieldplan.estimate.model import Change, Estimate
+from fieldplan.estimate.population import population_sentence
+from fieldplan.estimate.sentences import answer_sentences
+from fieldplan.estimate.working import working
+from fieldplan.plan.model import Plan
+from fieldplan.returns.model import Returns
+
+CHANGEABLE = ("interval", "confidence", "single_result", "duplicates")
+"""Rules that may be changed after results, each with both answers printed."""
+
+
+def estimate(
+    plan: Plan,
+    returns: Returns,
+    *,
+    overrides: Mapping[str, str | float] | None = None,
+    returns_changed: Returns | None = None,
+) -> Estimate:
+    """Estimate the mean by the design and the rules that were recorded before any result.
+
+    Parameters
+    ----------
+    plan : Plan
+    returns : Returns
+        Reconciled by the recorded rules.
+    overrides : mapping of str to (str or float), optional
+        Rules to change after results: ``interval``, ``confidence``, ``single_result``,
+        ``duplicates``. The recorded answer is kept beside the changed one.
+    returns_changed : Returns, optional
+        Reconciled with the changed rule for duplicates; needed when that rule is changed.
+
+    Returns
+    -------
+    Estimate
+
+    Raises
+    ------
+    LabError
+        A match still waits for the user, or no result is in the mean.
+    DesignError
+        A stratum has too few results for the recorded rule, or an override is none.
+
+    Notes
+    -----
+    Non-detects stand as bounds: everything is computed with them at 0, at half and at their
+    limit. The mean and interval reported are those at half; the bracket holds all three, and
+    the comparison with the action level uses the envelope of the three intervals.
+    """
+    _refuse_undecided(returns)
+    rules, changed = changed_rules(plan.campaign.rules, overrides or {})
+    basis = returns
+    if "duplicates" in changed:
+        if returns_changed is None:
+            message = "the rule for duplicates was changed; reconcile the results by it first."
+            raise DesignError(message)
+        basis = returns_changed
+    means = means_by(plan, basis, rules)
+    changes = _changes(plan, returns, rules, changed)
+    level = level_sentence(plan, means)
+    population = population_sentence(plan, basis)
+    parts = split_difference(plan, means.half)
+    return Estimate(
+        analyte=basis.analyte,
+        unit=plan.size.unit,
+        mean=means.half,
+        interval=means.interval,
+        other_interval=means.other_interval,
+        bracket=means.bracket,
+        planned_standard_error=plan.size.standard_error,
+        achieved_standard_error=means.half.standard_error,
+        why_different=difference_sentences(plan, means.half, parts),
+        level_sentence=level,
+        population_sentence=population,
+        coverage_sentence=coverage_sentence(plan, means),
+        steps=working(means, plan.size.unit),
+        changes=changes,
+        returns=basis,
+        sentences=answer_sentences(plan, means, changes, level=level, population=population),
+    )
+
+
+def _refuse_undecided(returns: Returns) -> None:
+    if returns.needs_you:
+        rows = {match.row for match in returns.needs_you}
+        message = (
+            f"{returns.lab_file}: {len(rows)} rows wait for your answer in matches.csv; "
+            "no mean is computed before."
+        )
+        raise LabError(message)
+    if not any(result.used for result in returns.results):
+        message = f"{returns.lab_file}: no result belongs to the mean; check file and packet."
+        raise LabError(message)
+
+
+def changed_rules(
+    recorded: Rules, overrides: Mapping[str, str | float]
+) -> tuple[Rules, tuple[str, ...]]:
+    """Apply rules changed after results.
+
+    Parameters
+    ----------
+    recorded : Rules
+    overrides : mapping of str to (str or float)
+
+    Returns
+    -------
+    rules : Rules
+    changed : tuple of str
+        Names of those that differ from the record.
+
+    Raises
+    ------
+    DesignError
+        A name or a value is not known.
+    """
+    unknown = [name for name in overrides if name not in CHANGEABLE]
+    if unknown:
+        message = f"'{unknown[0]}' cannot be changed; what can is {', '.join(CHANGEABLE)}."
+        raise DesignError(message)
+    different = {name: v for name, v in overrides.items() if v != getattr(recorded, name)}
+    try:
+        rules = Rules.model_validate({**recorded.model_dump(), **different})
+    except ValueError as fault:
+        given = ", ".join(f"{name} = {value}" for name, value in different.items())
+        message = (
+            f"{given}: this cannot stand in place of the recorded rule. confidence lies between "
+            "0.5 and 1; interval is two-sided, upper-limit or lower-limit; duplicates is average "
+            "or first; single_result is refuse or borrow-spread."
+        )
+        raise DesignError(message) from fault
+    return rules, tuple(different)
+
+
+def _changes(
+    plan: Plan, returns: Returns, rules: Rules, changed: tuple[str, ...]
+) -> tuple[Change, ...]:
+    """Keep the recorded answer beside every rule that was changed."""
+    if not changed:
+        return ()
+    recorded = plan.campaign.rules
+    before: Means = means_by(plan, returns, recorded)
+    return tuple(
+        Change(
+            rule=name,
+            recorded=str(getattr(recorded, name)),
+            used=str(getattr(rules, name)),
+            interval_recorded=before.interval,
+            mean_recorded=before.half.mean,
+        )
+        for name in changed
+    )

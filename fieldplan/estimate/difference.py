@@ -1,0 +1,150 @@
+"""Planned against achieved standard error, split into parts that multiply to their ratio."""
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+
+from fieldplan.base.units import significant
+from fieldplan.design.model import MeanEstimate
+from fieldplan.lab.words import counted, listed
+from fieldplan.plan.model import Plan
+from fieldplan.stats.stratified import predicted_variance
+
+
+@dataclass(frozen=True)
+class DifferenceParts:
+    """Factors whose product is achieved / planned standard error.
+
+    Parameters
+    ----------
+    number : float
+        From the total number of results, their shares among strata kept.
+    sharing : float
+        From how the results are shared among strata, with the weights these have.
+    spread : float
+        From the standard deviations found instead of those assumed.
+    rest : float
+        What the formula of the plan does not hold, such as a borrowed spread.
+    """
+
+    number: float
+    sharing: float
+    spread: float
+    rest: float
+
+    @property
+    def ratio(self) -> float:
+        """Achieved / planned standard error."""
+        return self.number * self.sharing * self.spread * self.rest
+
+
+def split_difference(plan: Plan, mean: MeanEstimate) -> DifferenceParts | None:
+    """Split achieved / planned standard error into number, sharing, spread and rest.
+
+    Parameters
+    ----------
+    plan : Plan
+    mean : MeanEstimate
+
+    Returns
+    -------
+    DifferenceParts or None
+        None where either standard error is 0, as for a census.
+
+    Notes
+    -----
+    The plan's variance formula is evaluated four times, each time with one more of its inputs
+    replaced by what came back: the total n, the n of each stratum, the s of each stratum. Each
+    factor is the square root of the ratio of two neighbours, so that the product telescopes.
+    """
+    planned = plan.size.standard_error
+    if not (planned > 0 and mean.standard_error > 0):
+        return None
+    sizes = {entry.stratum: entry for entry in plan.size.strata}
+    found = {entry.stratum: entry for entry in mean.strata}
+    names = [stratum.name for stratum in plan.frame.strata]
+    weights = np.array([stratum.weight for stratum in plan.frame.strata])
+    populations = [stratum.count for stratum in plan.frame.strata]
+    sigmas = np.array([sizes[name].sigma for name in names])
+    achieved_sigmas = np.array([found[name].sd for name in names])
+    needed = np.array([float(sizes[name].needed) for name in names])
+    came = np.array([float(found[name].n) for name in names])
+    scaled = needed * came.sum() / needed.sum()
+    if any(n is not None and count > n for count, n in zip(scaled, populations, strict=True)):
+        scaled = came
+
+    def error(spread: np.ndarray, counts: np.ndarray) -> float:
+        return math.sqrt(predicted_variance(weights, spread, counts, populations))
+
+    ladder = [
+        error(sigmas, needed),
+        error(sigmas, scaled),
+        error(sigmas, came),
+        error(achieved_sigmas, came),
+    ]
+    if min(ladder) <= 0:
+        return None
+    return DifferenceParts(
+        number=ladder[1] / ladder[0],
+        sharing=ladder[2] / ladder[1],
+        spread=ladder[3] / ladder[2],
+        rest=ladder[0] / planned * (mean.standard_error / ladder[3]),
+    )
+
+
+def difference_sentences(
+    plan: Plan, mean: MeanEstimate, parts: DifferenceParts | None
+) -> tuple[str, ...]:
+    """Say in sentences whether the campaign kept its promise, and why not.
+
+    Parameters
+    ----------
+    plan : Plan
+    mean : MeanEstimate
+    parts : DifferenceParts or None
+
+    Returns
+    -------
+    tuple of str
+    """
+    planned, achieved, unit = plan.size.standard_error, mean.standard_error, plan.size.unit
+    needed = plan.size.needed
+    lines = [
+        f"Planned: a standard error of {significant(planned)} {unit} from "
+        f"{counted(needed, 'result')}. Achieved: {significant(achieved)} {unit} from {mean.n}."
+    ]
+    target = plan.size.target_standard_error
+    if target is not None:
+        kept = "kept" if achieved <= target * (1 + 1e-9) else "missed"
+        lines.append(f"The target, {plan.size.target}, was {kept}.")
+    if parts is None:
+        return tuple(lines)
+    lines.append(
+        f"Achieved is {parts.ratio:.2f} times planned: {parts.number:.2f} from the number of "
+        f"results, times {parts.sharing:.2f} from their sharing among strata and its weights, "
+        f"times {parts.spread:.2f} from the spread found"
+        + (
+            f", times {parts.rest:.2f} from a spread borrowed or planned otherwise."
+            if _says(parts.rest)
+            else "."
+        )
+    )
+    spread = _spread_found(plan, mean)
+    return (*lines, spread) if spread else tuple(lines)
+
+
+def _says(factor: float) -> bool:
+    return abs(factor - 1) > 0.005
+
+
+def _spread_found(plan: Plan, mean: MeanEstimate) -> str:
+    """Name the strata whose s is a tenth or more off what was assumed."""
+    assumed = {entry.stratum: entry.sigma for entry in plan.size.strata}
+    off = [
+        f"{significant(entry.sd)} instead of {significant(assumed[entry.stratum])}"
+        + (f" in {entry.stratum}" if len(mean.strata) > 1 else "")
+        for entry in mean.strata
+        if entry.n > 1 and abs(entry.sd / assumed[entry.stratum] - 1) > 0.1
+    ]
+    return f"The standard deviation was {listed(off)} ({plan.size.unit})." if off else ""

@@ -1,0 +1,140 @@
+"""The mean under one set of rules, with non-detects at 0, at half and at their limit."""
+
+from dataclasses import dataclass
+from typing import Literal
+
+import numpy as np
+
+from fieldplan.campaign.model import Rules
+from fieldplan.design import layout_named
+from fieldplan.design.model import MeanEstimate, StratumValues
+from fieldplan.estimate.model import Bracket, Interval
+from fieldplan.plan.model import Plan
+from fieldplan.returns.model import Returns
+from fieldplan.stats.intervals import IntervalKind, t_interval
+
+Bound = Literal["low", "half", "high"]
+
+
+@dataclass(frozen=True)
+class Means:
+    """Three means by the recorded layout, and the intervals that the rules ask for.
+
+    Parameters
+    ----------
+    low, half, high : MeanEstimate
+        With non-detects at 0, at half and at their limit; all the same without non-detects.
+    values : tuple of StratumValues
+        What went into ``half``.
+    rules : Rules
+    censored : int
+        Number of location values in the mean with a non-detect behind them.
+    """
+
+    low: MeanEstimate
+    half: MeanEstimate
+    high: MeanEstimate
+    values: tuple[StratumValues, ...]
+    rules: Rules
+    censored: int
+
+    def interval_about(self, mean: MeanEstimate, kind: IntervalKind) -> Interval:
+        """Set an interval of this kind about one of the means."""
+        low, high = t_interval(
+            mean.mean,
+            mean.standard_error,
+            mean.degrees_of_freedom,
+            confidence=self.rules.confidence,
+            kind=kind,
+        )
+        return Interval(kind, self.rules.confidence, low, high)
+
+    @property
+    def interval(self) -> Interval:
+        """The interval of the kind that the rules declare."""
+        return self.interval_about(self.half, self.rules.interval)
+
+    @property
+    def other_interval(self) -> Interval:
+        """A limit where an interval was declared, an interval where a limit was."""
+        two_sided = self.rules.interval == "two-sided"
+        return self.interval_about(self.half, "upper-limit" if two_sided else "two-sided")
+
+    @property
+    def bracket(self) -> Bracket | None:
+        """The answer at 0, half and the limit; None when everything was detected."""
+        if not self.censored:
+            return None
+        kind = self.rules.interval
+        return Bracket(
+            mean_low=self.low.mean,
+            mean_half=self.half.mean,
+            mean_high=self.high.mean,
+            interval_low=self.interval_about(self.low, kind),
+            interval_half=self.interval_about(self.half, kind),
+            interval_high=self.interval_about(self.high, kind),
+        )
+
+
+def means_by(plan: Plan, returns: Returns, rules: Rules) -> Means:
+    """Estimate the mean by the plan's layout at the three bounds.
+
+    Parameters
+    ----------
+    plan : Plan
+    returns : Returns
+    rules : Rules
+        The recorded ones, or those changed after results.
+
+    Returns
+    -------
+    Means
+
+    Raises
+    ------
+    DesignError
+        A stratum has too few results for the rule.
+    """
+    layout = layout_named(plan.campaign.design[0].layout)
+
+    def mean_at(bound: Bound) -> MeanEstimate:
+        values = stratum_values(plan, returns, bound)
+        return layout.estimate(values, single_result=rules.single_result)
+
+    return Means(
+        low=mean_at("low"),
+        half=mean_at("half"),
+        high=mean_at("high"),
+        values=stratum_values(plan, returns, "half"),
+        rules=rules,
+        censored=sum(result.used and not result.detected for result in returns.results),
+    )
+
+
+def stratum_values(plan: Plan, returns: Returns, bound: Bound) -> tuple[StratumValues, ...]:
+    """Give the used results of every stratum, one a location, at one bound.
+
+    Parameters
+    ----------
+    plan : Plan
+    returns : Returns
+    bound : str
+        ``low``, ``half`` or ``high``.
+
+    Returns
+    -------
+    tuple of StratumValues
+        In the frame's order, empty ones included.
+    """
+    used = [result for result in returns.results if result.used]
+    return tuple(
+        StratumValues(
+            stratum=stratum.name,
+            weight=stratum.weight,
+            values=np.array(
+                [getattr(r, bound) for r in used if r.stratum == stratum.name], dtype=np.float64
+            ),
+            population=stratum.count,
+        )
+        for stratum in plan.frame.strata
+    )

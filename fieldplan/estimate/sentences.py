@@ -1,0 +1,132 @@
+"""The answer in words, most important first."""
+
+from collections.abc import Sequence
+
+from fieldplan.base.units import significant
+from fieldplan.estimate.means import Means
+from fieldplan.estimate.model import Change, Interval
+from fieldplan.plan.model import Plan
+
+
+def interval_in_words(interval: Interval, unit: str) -> str:
+    """Write an interval or limit with its confidence.
+
+    Parameters
+    ----------
+    interval : Interval
+    unit : str
+
+    Examples
+    --------
+    >>> interval_in_words(Interval("two-sided", 0.95, 4.2142, 6.7608), "mg/L")
+    '95 % interval 4.21 to 6.76 mg/L'
+    """
+    share = f"{100 * interval.confidence:g} %"
+    if interval.low is None:
+        return f"{share} upper limit {significant(interval.high or 0.0)} {unit}"
+    if interval.high is None:
+        return f"{share} lower limit {significant(interval.low)} {unit}"
+    return f"{share} interval {significant(interval.low)} to {significant(interval.high)} {unit}"
+
+
+def where(plan: Plan) -> str:
+    """Name the site as the campaign does.
+
+    Parameters
+    ----------
+    plan : Plan
+    """
+    return plan.campaign.plan.site or plan.campaign.plan.title
+
+
+def analyte_name(plan: Plan) -> str:
+    """Name the analyte in running text.
+
+    Parameters
+    ----------
+    plan : Plan
+    """
+    analyte = plan.campaign.deciding_analyte
+    return (analyte.name or analyte.id).lower() if len(analyte.name) > 3 else analyte.id
+
+
+def answer_sentences(
+    plan: Plan, means: Means, changes: Sequence[Change], *, level: str, population: str
+) -> tuple[str, ...]:
+    """Say the answer, then what bounds it.
+
+    Parameters
+    ----------
+    plan : Plan
+    means : Means
+    changes : sequence of Change
+    level, population : str
+        Sentences made elsewhere; empty ones are left out.
+
+    Returns
+    -------
+    tuple of str
+    """
+    unit = plan.size.unit
+    error, mean = means.half.standard_error, means.half
+    answer = (
+        f"The mean of {analyte_name(plan)} over {where(plan)} is {significant(mean.mean)} {unit}, "
+        f"{interval_in_words(means.interval, unit)} ({mean.n} results, standard error "
+        f"{significant(error)} {unit})."
+    )
+    lines = [
+        answer,
+        _changed_sentence(changes, unit),
+        _bracket_sentence(means, unit),
+        level,
+        population,
+        mean.caution,
+        _below_zero(means.interval),
+        _no_width(means),
+    ]
+    return tuple(line for line in lines if line)
+
+
+def _changed_sentence(changes: Sequence[Change], unit: str) -> str:
+    if not changes:
+        return ""
+    rules = "; ".join(f"{c.rule} was {c.recorded}, is {c.used}" for c in changes)
+    before = changes[0]
+    return (
+        f"CHANGED AFTER RESULTS: {rules}. By the recorded rules the mean is "
+        f"{significant(before.mean_recorded)} {unit}, "
+        f"{interval_in_words(before.interval_recorded, unit)}."
+    )
+
+
+def _bracket_sentence(means: Means, unit: str) -> str:
+    bracket = means.bracket
+    if bracket is None:
+        return ""
+    low = interval_in_words(bracket.interval_low, unit)
+    high = interval_in_words(bracket.interval_high, unit)
+    verb = "holds a non-detect" if means.censored == 1 else "hold non-detects"
+    return (
+        f"{means.censored} of {means.half.n} values {verb}, put at half the limit above. At 0 "
+        f"the mean is {significant(bracket.mean_low)} {unit} ({low}), at the limit "
+        f"{significant(bracket.mean_high)} {unit} ({high})."
+    )
+
+
+def _below_zero(interval: Interval) -> str:
+    if interval.low is None or interval.low >= 0:
+        return ""
+    return (
+        "The low end is below 0, which no concentration can be: the results are too few or too "
+        "skewed for a t interval to fit well."
+    )
+
+
+def _no_width(means: Means) -> str:
+    whole = all(s.population == s.values.size for s in means.values)
+    if means.half.standard_error > 0 or whole:
+        return ""
+    return (
+        "The results do not differ at all inside their strata, so the interval has no width. "
+        "Check that they are measurements and not one value copied."
+    )

@@ -1,0 +1,171 @@
+"""The arithmetic of the estimate, step by step."""
+
+import math
+from collections.abc import Sequence
+
+from fieldplan.base.working import Quantity, Step
+from fieldplan.design.model import StratumEstimate, StratumValues
+from fieldplan.estimate.means import Means
+from fieldplan.stats.intervals import t_quantile
+
+_RANDOM = "Cochran 1977, Sampling Techniques, 3rd ed., ch. 2"
+_STRATA = "Cochran 1977, Sampling Techniques, 3rd ed., ch. 5"
+
+
+def working(means: Means, unit: str) -> tuple[Step, ...]:
+    """Show how the mean and its interval come from the results.
+
+    Parameters
+    ----------
+    means : Means
+    unit : str
+
+    Returns
+    -------
+    tuple of Step
+        Non-detects stand at half their limit throughout.
+    """
+    several = len(means.values) > 1
+    steps: list[Step] = []
+    for values, found in zip(means.values, means.half.strata, strict=True):
+        steps += _stratum_steps(values, found, unit, label=values.stratum if several else "")
+    if several:
+        steps.append(_weighted_mean(means, unit))
+    steps.append(_standard_error(means, unit))
+    if means.half.standard_error > 0:
+        steps += _interval_steps(means, unit)
+    return tuple(steps)
+
+
+def _stratum_steps(
+    values: StratumValues, found: StratumEstimate, unit: str, *, label: str
+) -> list[Step]:
+    mark = f" {label}" if label else ""
+    of = f" in {label}" if label else ""
+    total, n = float(values.values.sum()), int(values.values.size)
+    steps = [
+        Step(
+            symbol=f"x̄{mark}",
+            meaning=f"Mean of the results{of}",
+            formula="x̄ = Σ x / n",
+            inputs=(
+                Quantity("Σ x", f"sum of the results{of}", total, unit),
+                Quantity("n", f"results{of}, one a location", n),
+            ),
+            unrounded=found.mean,
+            rounded=found.mean,
+            unit=unit,
+            source=_RANDOM,
+        )
+    ]
+    if n < 2:
+        return steps
+    squares = float(((values.values - found.mean) ** 2).sum())
+    spread = Step(
+        symbol=f"s{mark}",
+        meaning=f"Standard deviation of the results{of}",
+        formula="s = √(Σ (x − x̄)² / (n − 1))",
+        inputs=(
+            Quantity("Σ (x − x̄)²", "sum of squared distances from the mean", squares, f"({unit})²"),
+            Quantity("n", f"results{of}", n),
+        ),
+        unrounded=found.sd,
+        rounded=found.sd,
+        unit=unit,
+        source=_RANDOM,
+    )
+    return [*steps, spread]
+
+
+def _weighted_mean(means: Means, unit: str) -> Step:
+    inputs = [
+        quantity
+        for entry in means.half.strata
+        for quantity in (
+            Quantity(f"W {entry.stratum}", "share of the population", entry.weight),
+            Quantity(f"x̄ {entry.stratum}", "mean of the stratum", entry.mean, unit),
+        )
+    ]
+    mean = means.half.mean
+    return Step(
+        "x̄", "Mean of the population", "x̄ = Σ W·x̄", tuple(inputs), mean, mean, unit, _STRATA
+    )
+
+
+def _standard_error(means: Means, unit: str) -> Step:
+    listed = any(values.population is not None for values in means.values)
+    several = len(means.values) > 1
+    inputs: list[Quantity] = []
+    for values, entry in zip(means.values, means.half.strata, strict=True):
+        mark = f" {entry.stratum}" if several else ""
+        borrowed = ", borrowed from the other strata" if entry.variance_borrowed else ""
+        inputs += [Quantity(f"W{mark}", "share of the population", entry.weight)] if several else []
+        inputs.append(Quantity(f"s{mark}", f"standard deviation{borrowed}", entry.sd, unit))
+        inputs.append(Quantity(f"n{mark}", "results", entry.n))
+        if values.population is not None:
+            inputs.append(Quantity(f"N{mark}", "units on the list", values.population))
+    finite = "·(1 − n/N)" if listed else ""
+    formula = f"SE = √(Σ W²·s²/n{finite})" if several else f"SE = √(s²/n{finite})"
+    error = means.half.standard_error
+    return Step(
+        symbol="SE",
+        meaning="Standard error of the mean",
+        formula=formula,
+        inputs=tuple(inputs),
+        unrounded=error,
+        rounded=error,
+        unit=unit,
+        source=_STRATA if several else _RANDOM,
+    )
+
+
+def _interval_steps(means: Means, unit: str) -> list[Step]:
+    known, rules = means.half.degrees_of_freedom, means.rules
+    t = t_quantile(known, confidence=rules.confidence, kind=rules.interval)
+    mean, error = means.half.mean, means.half.standard_error
+    level = (1 + rules.confidence) / 2 if rules.interval == "two-sided" else rules.confidence
+    steps = [_freedom_step(means.half.strata, known)] if math.isfinite(known) else []
+    steps.append(
+        Step(
+            symbol="t",
+            meaning="Student's quantile",
+            formula="t(p, df)",
+            inputs=(
+                Quantity("p", f"share for a confidence of {rules.confidence:g}", level),
+                Quantity("df", "degrees of freedom", known),
+            ),
+            unrounded=t,
+            rounded=t,
+            source="Student 1908, Biometrika 6:1",
+        )
+    )
+    inputs = (
+        Quantity("x̄", "mean", mean, unit),
+        Quantity("t", "Student's quantile", t),
+        Quantity("SE", "standard error", error, unit),
+    )
+    interval = means.interval
+    for end, sign, name in ((interval.low, "−", "Low"), (interval.high, "+", "High")):
+        if end is not None:
+            meaning = f"{name} end at {100 * rules.confidence:g} % confidence"
+            formula = f"x̄ {sign} t·SE"
+            steps.append(Step(name.lower(), meaning, formula, inputs, end, end, unit, _RANDOM))
+    return steps
+
+
+def _freedom_step(strata: Sequence[StratumEstimate], known: float) -> Step:
+    if len(strata) == 1:
+        inputs: tuple[Quantity, ...] = (Quantity("n", "results", strata[0].n),)
+        return Step("df", "Degrees of freedom", "df = n − 1", inputs, known, known, "", _RANDOM)
+    inputs = tuple(
+        Quantity(f"n {entry.stratum}", "results of the stratum", entry.n) for entry in strata
+    )
+    return Step(
+        symbol="df",
+        meaning="Degrees of freedom by Satterthwaite, from the parts W²·s²/n of the variance",
+        formula="df = (Σ part)² / Σ (part² / (n − 1))",
+        inputs=inputs,
+        unrounded=known,
+        rounded=known,
+        source="Satterthwaite 1946, Biometrics Bulletin 2:110",
+    )
