@@ -1,13 +1,14 @@
 """From typed words to answers: targets, assurance, files, numbers; each refused with a remedy."""
 
 import os
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Literal
 
 from fieldplan.base.errors import CampaignError
 from fieldplan.campaign.inputs import file_part
 from fieldplan.campaign.new import Answers, TargetKind
+from fieldplan.campaign.outline import circle_geojson, corners_geojson, read_corners
 from fieldplan.campaign.text import near_names
 
 OUTLINE_NAME = "boundary.geojson"
@@ -15,10 +16,35 @@ OUTLINE_NAME = "boundary.geojson"
 
 @dataclass(frozen=True)
 class Start:
-    """Answers, and the outline that has to be written beside the campaign file."""
+    """Answers, and the outline that has to be written beside the campaign file.
+
+    ``outline_words`` says how the outline was understood, for the author to compare.
+    """
 
     answers: Answers
     outline: str | None = None
+    outline_words: str = ""
+
+
+def circle_start(answers: Answers, centre: tuple[float, float], radius_m: float) -> Start:
+    """Start from a circle round a point, stamped as assumed."""
+    outline = circle_geojson(*centre, radius_m=radius_m)
+    words = (
+        f"ASSUMED boundary: a circle of {radius_m:g} m round latitude {centre[0]:g}, "
+        f"longitude {centre[1]:g}."
+    )
+    return Start(replace(answers, boundary=OUTLINE_NAME, boundary_assumed=True), outline, words)
+
+
+def corners_start(answers: Answers, text: str) -> Start:
+    """Start from corners as typed."""
+    corners = read_corners(text)
+    latitude, longitude = corners[0]
+    words = (
+        f"Boundary of {len(corners)} corners; the first lies at latitude {latitude:g}, "
+        f"longitude {longitude:g}."
+    )
+    return Start(replace(answers, boundary=OUTLINE_NAME), corners_geojson(corners), words)
 
 
 def read_number(text: str, *, what: str = "a number above 0") -> float:

@@ -9,15 +9,11 @@ import click
 
 from fieldplan.base.errors import FieldplanError
 from fieldplan.campaign.new import Answers, initials
-from fieldplan.campaign.outline import (
-    circle_geojson,
-    corners_geojson,
-    read_corners,
-    read_position,
-)
+from fieldplan.campaign.outline import read_position
 from fieldplan.cli.answers import (
-    OUTLINE_NAME,
     Start,
+    circle_start,
+    corners_start,
     read_assurance,
     read_count,
     read_file,
@@ -52,8 +48,11 @@ def converse(start: Answers, folder: Path) -> Start:
 
 def _ask(question: str, read: Callable[[str], Answer]) -> Answer | None:
     """Ask until the answer can be read; None when it is left open."""
+    end = " " if question.endswith("?") else ": "
     while True:
-        typed = click.prompt(wrapped(question), default="", show_default=False, err=True).strip()
+        typed = click.prompt(
+            wrapped(question), default="", show_default=False, prompt_suffix=end, err=True
+        ).strip()
         if typed in ("", "?"):
             return None
         try:
@@ -85,7 +84,9 @@ def _about_the_place(answers: Answers, folder: Path) -> Start:
             return _from_circle(answers)
         return _from_file(answers, read_file(typed, folder))
 
-    return _ask(question, read) or Start(answers)
+    start = _ask(question, read) or Start(answers)
+    say(wrapped(start.outline_words, indent="  "), quiet=not start.outline_words)
+    return start
 
 
 def _from_file(answers: Answers, path: str) -> Start:
@@ -110,8 +111,7 @@ def _from_corners(answers: Answers) -> Start:
         lines.append(corner)
     if not lines:
         return Start(answers)
-    outline = corners_geojson(read_corners("\n".join(lines)))
-    return Start(replace(answers, boundary=OUTLINE_NAME), outline)
+    return corners_start(answers, "\n".join(lines))
 
 
 def _position_text(typed: str) -> str:
@@ -125,8 +125,7 @@ def _from_circle(answers: Answers) -> Start:
     radius = _ask("Radius in metres", read_number) if centre else None
     if centre is None or radius is None:
         return Start(answers)
-    outline = circle_geojson(*centre, radius_m=radius)
-    return Start(replace(answers, boundary=OUTLINE_NAME, boundary_assumed=True), outline)
+    return circle_start(answers, centre, radius)
 
 
 def _about_the_analyte(answers: Answers) -> Answers:

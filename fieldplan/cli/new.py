@@ -11,15 +11,17 @@ import click
 from fieldplan.base.errors import CampaignError, FieldplanError
 from fieldplan.base.files import write_atomically
 from fieldplan.campaign.new import Answers, campaign_text
-from fieldplan.campaign.outline import (
-    circle_geojson,
-    corners_geojson,
-    read_corners,
-    read_position,
-)
+from fieldplan.campaign.outline import read_position
 from fieldplan.campaign.read import Inspection, inspect_text
 from fieldplan.campaign.schema import SCHEMA_NAME, TITLE, schema_text
-from fieldplan.cli.answers import OUTLINE_NAME, Start, read_assurance, read_file
+from fieldplan.cli.answers import (
+    OUTLINE_NAME,
+    Start,
+    circle_start,
+    corners_start,
+    read_assurance,
+    read_file,
+)
 from fieldplan.cli.options import say, wrapped
 
 SEED_BELOW = 10**9
@@ -33,18 +35,35 @@ _OPTIONS = (
     click.option("--stations", metavar="FILE", help="CSV of all stations; the frame is a list."),
     click.option("--corners", metavar="TEXT", help="'LAT, LON; LAT, LON; ...' round the site."),
     click.option("--around", metavar="LAT,LON", help="Centre of a circle; needs --radius-m."),
-    click.option("--radius-m", type=_positive, help="Radius of the circle in metres."),
+    click.option(
+        "--radius-m", type=_positive, metavar="NUMBER", help="Radius of the circle in metres."
+    ),
     click.option("--analyte", help="What the laboratory measures."),
     click.option("--unit", help="The laboratory's unit."),
-    click.option("--standard-error", type=_positive, help="Largest standard error of the mean."),
-    click.option("--half-width", type=_positive, help="Largest half-width of the interval."),
-    click.option("--relative-half-width", type=_positive, help="The same as a share: 0.20."),
-    click.option("--budget", type=_positive, help="Money that may be spent."),
+    click.option(
+        "--standard-error",
+        type=_positive,
+        metavar="NUMBER",
+        help="Largest standard error of the mean.",
+    ),
+    click.option(
+        "--half-width", type=_positive, metavar="NUMBER", help="Largest half-width of the interval."
+    ),
+    click.option(
+        "--relative-half-width", type=_positive, metavar="NUMBER", help="The same as a share: 0.20."
+    ),
+    click.option("--budget", type=_positive, metavar="NUMBER", help="Money that may be spent."),
     click.option("--pilot", metavar="FILE", help="Pilot results, CSV or XLSX."),
-    click.option("--sigma", type=_positive, help="Standard deviation of single results."),
+    click.option(
+        "--sigma", type=_positive, metavar="NUMBER", help="Standard deviation of single results."
+    ),
     click.option("--sigma-source", help="Where sigma comes from; ASSUMED for a guess."),
-    click.option("--sigma-results", type=click.IntRange(min=2), help="Results behind sigma."),
-    click.option("--expected-mean", type=_positive, help="The mean that is expected."),
+    click.option(
+        "--sigma-results", type=click.IntRange(min=2), metavar="COUNT", help="Results behind sigma."
+    ),
+    click.option(
+        "--expected-mean", type=_positive, metavar="NUMBER", help="The mean that is expected."
+    ),
     click.option("--assurance", help="Chance that n is enough, such as 0.80, or plain."),
     click.option("--chosen-by", help="Who chose the assurance."),
 )
@@ -60,7 +79,9 @@ def _all_options(function: Any) -> Any:
 
 @click.command("new")
 @_all_options
-@click.option("--seed", type=click.IntRange(0, 2**63 - 1), help="Seed of the draw.")
+@click.option(
+    "--seed", type=click.IntRange(0, 2**63 - 1), metavar="NUMBER", help="Seed of the draw."
+)
 @click.option(
     "--out",
     type=click.Path(path_type=Path),
@@ -80,6 +101,7 @@ def command(seed: int | None, out: Path, **given: Any) -> None:
     known = Answers(seed=chosen, prepared_on=date.today())
     if any(value is not None for value in given.values()):
         start = _from_options(known, target.parent, given)
+        say(wrapped(start.outline_words), quiet=not start.outline_words)
         _echo(start.answers, target.parent)
     else:
         from fieldplan.cli.conversation import converse
@@ -138,11 +160,9 @@ def _placed(answers: Answers, folder: Path, place: Any, given: dict[str, Any]) -
     if place == "stations":
         return Start(replace(answers, list_file=read_file(given[place], folder)))
     if place == "corners":
-        outline = corners_geojson(read_corners(given[place]))
-        return Start(replace(answers, boundary=OUTLINE_NAME), outline)
+        return corners_start(answers, given[place])
     if place == "around":
-        outline = circle_geojson(*read_position(given[place]), radius_m=given["radius_m"])
-        return Start(replace(answers, boundary=OUTLINE_NAME, boundary_assumed=True), outline)
+        return circle_start(answers, read_position(given[place]), given["radius_m"])
     return Start(answers)
 
 

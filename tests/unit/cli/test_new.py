@@ -1,6 +1,7 @@
 """``fieldplan new``: every path by options and by questions; nothing is replaced or made up."""
 
 import json
+import math
 import statistics
 import tomllib
 from pathlib import Path
@@ -87,7 +88,9 @@ def test_relative_target_of_a_typed_sigma_asks_for_the_mean(folder):
 
 def test_circle_is_written_and_marked_as_assumed(folder):
     """A circle is nobody's boundary."""
-    new("--around", "52.1,-1.9", "--radius-m", "150")
+    result = new("--around", "52.1,-1.9", "--radius-m", "150")
+    words = "ASSUMED boundary: a circle of 150 m round latitude 52.1, longitude -1.9."
+    assert words in said(result)
     frame = written()["frame"][0]
     assert (frame["boundary"], frame["boundary_assumed"]) == ("boundary.geojson", True)
     assert json.loads((folder / "boundary.geojson").read_text())["features"]
@@ -139,16 +142,21 @@ def test_what_is_not_given_is_listed_as_still_to_fill_in(folder):
 def test_echo_says_half_width_standard_error_n_and_the_chance(folder):
     """All four belong together: n alone looks surer than it is.
 
-    For s = 27.57 from 8 results and SE 6 tests/reference/values.csv has n = 22, a chance of 46 %
-    and 39 for 80 %; with t(21) = 2.0796 the half-width is 2.0796 · 27.57 / √22 = 12.2.
+    By hand: n = (27.57 / 6)² = 21.1, so 22, and SE = 27.57 / √22. Oracles: scipy's t for the
+    half-width, and its chi-square for P(χ² ≥ 7 · 27.57² / (22 · 6²)) and for n at 80 %.
     """
+    from scipy.stats import chi2, t
+
+    width = t.ppf(0.975, 21) * 27.57 / 22**0.5
+    chance = chi2.sf(7 * 27.57**2 / (22 * 6**2), 7)
+    more = math.ceil(27.57**2 * 7 / chi2.ppf(0.20, 7) / 6**2)
     result = new(
         "--sigma", "27.57", "--sigma-results", "8", "--standard-error", "6", "--unit", "mg/kg"
     )  # fmt: skip
     assert (
-        "that asks for 22 results: standard error 5.88 mg/kg, half-width 12.2 mg/kg (95 % "
-        "interval). The chance that 22 are enough is 46 %, since sigma is itself an estimate "
-        "from 8 results; for a chance of 80 % it takes 39."
+        f"that asks for 22 results: standard error 5.88 mg/kg, half-width {width:.1f} mg/kg (95 % "
+        f"interval). The chance that 22 are enough is {chance * 100:.0f} %, since sigma is itself "
+        f"an estimate from 8 results; for a chance of 80 % it takes {more}."
     ) in said(result)
 
 
