@@ -24,6 +24,8 @@ from fieldplan.stats.stratified import predicted_variance
 HALF_ROOT_3 = 0.8660254037844386
 """Distance between the rows of a triangular grid of spacing 1."""
 MOST_TRIES = 1000
+FINEST_M = 0.02
+"""Nodes at least this far apart stay apart when they are rounded to the centimetre."""
 
 CAUTION = (
     "The grid gets no credit in this interval: it is computed by the formula for random places, "
@@ -142,11 +144,12 @@ class Grid:
             message = f"stratum '{stratum.name}' would get {count.planned} places on a grid."
             raise DesignError(message)
         side = self.spacing(stratum.measure, count.planned)
-        if side < minimum_spacing_m:
+        least = "minimum_spacing_m" if minimum_spacing_m > FINEST_M else "the finest grid"
+        if side < max(minimum_spacing_m, FINEST_M):
             message = (
                 f"{count.planned} places on a {self.name} in '{stratum.name}' stand {side:g} m "
-                f"apart, closer than minimum_spacing_m = {minimum_spacing_m:g}. Lower the spacing "
-                "or ask for fewer locations."
+                f"apart, closer than {least} = {max(minimum_spacing_m, FINEST_M):g} m. Ask for "
+                "fewer locations."
             )
             raise DesignError(message)
         return side

@@ -4,7 +4,7 @@ A short name is the campaign's prefix, a letter for the stratum and a number: ``
 """
 
 import re
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from itertools import product
 
@@ -79,11 +79,14 @@ class Naming:
         The letter, or letters, of each stratum.
     digits : int
         2, or 3 when a stratum's list is longer than 99.
+    targeted_code : str
+        Stands where the stratum's letter stands in the names of targeted places.
     """
 
     prefix: str
-    codes: dict[str, str]
+    codes: Mapping[str, str]
     digits: int
+    targeted_code: str
 
     def short_name(self, stratum: str, order: int) -> str:
         """Name a drawn place, e.g. ``QFA01``."""
@@ -95,8 +98,7 @@ class Naming:
 
     def targeted_name(self, number: int) -> str:
         """Name a targeted place, e.g. ``QFT01``."""
-        code = TARGETED_LETTER * len(next(iter(self.codes.values())))
-        return f"{self.prefix}{code}{number:0{self.digits}d}"
+        return f"{self.prefix}{self.targeted_code}{number:0{self.digits}d}"
 
 
 def naming(prefix: str, strata: Sequence[str], longest_list: int) -> Naming:
@@ -140,14 +142,22 @@ def naming(prefix: str, strata: Sequence[str], longest_list: int) -> Naming:
             f"{LONGEST} characters after the prefix '{prefix}'. " + _remedy(prefix, width, digits)
         )
         raise DesignError(message)
-    return Naming(prefix, dict(zip(strata, codes, strict=False)), digits)
+    targeted = _targeted_code(prefix, width)
+    return Naming(prefix, dict(zip(strata, codes, strict=False)), digits, targeted)
 
 
 def _codes(prefix: str, width: int) -> Iterator[str]:
+    kept_back = _targeted_code(prefix, width)
     for letters in product(LETTERS, repeat=width):
         code = "".join(letters)
-        if not is_date_like(f"{prefix}{code}01"):
+        if code != kept_back and not is_date_like(f"{prefix}{code}01"):
             yield code
+
+
+def _targeted_code(prefix: str, width: int) -> str:
+    """Return T, or X after a prefix with which T would read as a month (OC, SE)."""
+    code = TARGETED_LETTER * width
+    return "X" * width if is_date_like(f"{prefix}{code}01") else code
 
 
 def _remedy(prefix: str, width: int, digits: int) -> str:

@@ -192,8 +192,8 @@ Field duplicates:
 Sample ids, T samples in all: first those of every location in print order, then of
 the duplicates by location_id, then of the blanks:
   S = STREAM(seed, design, "", "id of " role " " location_id); for a blank its kind
-  and number stand for role and location. D = digits of 10 T, at least 4, less 1.
-  number = 10^(D-1) + BELOW(9 * 10^(D-1)) until it is free
+  and number stand for role and location.
+  F = 100, times 10 until 9 F >= 10 T; number = F + BELOW(9 F), again until it is free.
   The id is prefix "-" number, with its check digit of ISO/IEC 7064 MOD 11,10.
 """
 

@@ -71,12 +71,13 @@ class _Serials:
     _taken: set[int] = field(default_factory=set)
 
     def next_for(self, location_id: str, role: str) -> str:
-        digits = max(len(str(10 * self.total)), 4) - 1
-        first, count = 10 ** (digits - 1), 9 * 10 ** (digits - 1)
+        first = 100
+        while 9 * first < 10 * self.total:
+            first *= 10
         stream = _stream(self.campaign, f"id of {role} {location_id}".rstrip())
-        number = first + stream.below(count)
+        number = first + stream.below(9 * first)
         while number in self._taken:
-            number = first + stream.below(count)
+            number = first + stream.below(9 * first)
         self._taken.add(number)
         return f"{self.campaign.prefix}-{number}{check_digit(str(number))}"
 

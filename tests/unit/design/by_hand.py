@@ -171,14 +171,16 @@ def sample_ids(
     seed: int, design: str, prefix: str, wanted: list[str], total: int
 ) -> dict[str, str]:
     """Give an id to each "role location" in turn."""
-    digits = max(len(str(10 * total)), 4) - 1
+    first = 100
+    while 9 * first < 10 * total:
+        first *= 10
     given: dict[str, str] = {}
     taken: set[int] = set()
     for name in wanted:
         numbers = Numbers(seed, design, "", f"id of {name}")
-        number = 10 ** (digits - 1) + numbers.below(9 * 10 ** (digits - 1))
+        number = first + numbers.below(9 * first)
         while number in taken:
-            number = 10 ** (digits - 1) + numbers.below(9 * 10 ** (digits - 1))
+            number = first + numbers.below(9 * first)
         taken.add(number)
         given[name] = f"{prefix}-{number}{check_digit(str(number))}"
     return given
