@@ -46,6 +46,8 @@ class Story:
     broken : tuple of (stratum, place in its list)
         Jars that reached the laboratory broken.
     moved : tuple of (stratum, place in its list, metres north, reason, note)
+    traces : tuple of (stratum, place in its list)
+        Where the laboratory finds nothing.
     renamed : tuple of (stratum, place in its list, kind)
         Ids that the laboratory retyped.
     analyte_name, unit : str
@@ -61,6 +63,7 @@ class Story:
     lost: tuple[tuple[str, int, str, str], ...]
     broken: tuple[tuple[str, int], ...]
     moved: tuple[tuple[str, int, float, str, str], ...]
+    traces: tuple[tuple[str, int], ...]
     renamed: tuple[tuple[str, int, str], ...]
     analyte_name: str
     unit: str
@@ -76,6 +79,7 @@ STORIES = {
         lost=(("tip", 3, "no-recovery", "slag from the turf down, three tries"),),
         broken=(("pasture", 2),),
         moved=(("yard", 2, 2.6, "obstructed", "stack of pallets"),),
+        traces=(("pasture", 11),),
         renamed=(("yard", 1, "case"), ("pasture", 4, "dash")),
         analyte_name="Lead, total",
         unit="mg/Kg",
@@ -89,6 +93,7 @@ STORIES = {
         lost=(("site", 4, "dry", "no water above the pump"),),
         broken=(),
         moved=(),
+        traces=(("site", 9),),
         renamed=(("site", 2, "case"),),
         analyte_name="Arsenic",
         unit="ug/L",
@@ -218,13 +223,12 @@ def lab_rows(plan: Plan, story: Story, taken: set[str]) -> Iterator[list[str]]:
     limit = plan.campaign.deciding_analyte.reporting_limit or 1.0
     values: dict[str, float] = {}
     serial = 4100
-    for sample in plan.samples.samples:
-        value = invented(plan, story, sample, values, chance)
-        if sample.sample_id not in taken or not sample.analytes:
-            continue
+    truth = {s.sample_id: invented(plan, story, s, values, chance) for s in plan.samples.samples}
+    analysed = {s.sample_id for s in plan.samples.samples if s.analytes}
+    for sample_id in sorted(taken & analysed):
         serial += 1
-        text, flag = as_written(value, limit, chance)
-        name = names.get(sample.sample_id, sample.sample_id)
+        text, flag = as_written(truth[sample_id], limit, chance)
+        name = names.get(sample_id, sample_id)
         yield lab_row(story, name, serial, text, limit, flag, "")
     spiked = f"{20 * limit * chance.uniform(0.93, 1.06):.3g}"
     yield lab_row(story, "LCS-1", serial + 1, spiked, limit, "", "laboratory control")
@@ -242,6 +246,9 @@ def invented(
     if sample.qc_of:
         return values[sample.qc_of] * wobble
     place = next(p for p in plan.locations.places if p.location_id == sample.location_id)
+    if (place.stratum, place.list_order) in story.traces:
+        values[sample.sample_id] = 0.0
+        return 0.0
     median, spread = story.values[place.stratum]
     if place.location_class == "targeted":
         median *= 3.0
@@ -258,7 +265,7 @@ def as_written(value: float, limit: float, chance: random.Random) -> tuple[str, 
     """Write a value as laboratories do, with its qualifier."""
     if value < limit:
         return (f"<{limit:g}", "U") if chance.random() < 0.7 else ("ND", "")
-    text = f"{value:.3g}" if value < 1000 else f"{value:,.0f}"
+    text = f"{value:.3g}" if value < 1000 else f"{value:.0f}"
     draw = chance.random()
     if value < 3 * limit:
         return f"{text} J", ""

@@ -36,30 +36,6 @@ def trimmed(value: float, *, digits: int = 4) -> str:
     return text.rstrip("0").rstrip(".") if "." in text else text
 
 
-def decimals_for(standard_error: float) -> int:
-    """Count the decimals that show a mean to two significant digits of its standard error.
-
-    Examples
-    --------
-    >>> decimals_for(0.5411), decimals_for(8.8), decimals_for(41.0)
-    (2, 1, 0)
-    """
-    if standard_error <= 0 or not math.isfinite(standard_error):
-        return 2
-    return max(0, 1 - math.floor(math.log10(standard_error)))
-
-
-def fixed(value: float, decimals: int) -> str:
-    """Write a number with so many decimals.
-
-    Examples
-    --------
-    >>> fixed(-4.206, 2)
-    '−4.21'
-    """
-    return f"{value:.{decimals}f}".replace("-", "−")
-
-
 def percent(share: float) -> str:
     """Write a share of 1 as a percentage, three significant digits at most.
 

@@ -52,8 +52,5 @@ def name_lines(plan: Plan) -> tuple[str, ...]:
         "Sample ids are made by this plan and are unique in it. Short names fit every receiver.",
     ]
     if any(sample.qc_of for sample in plan.samples.samples):
-        lines.append(
-            "Duplicates are blind. Their key is in office/samples_key.csv and office/record.json, "
-            "and in no file of the crew."
-        )
+        lines.append("The key to blind duplicates is office/samples_key.csv; the crew has none.")
     return tuple(lines)

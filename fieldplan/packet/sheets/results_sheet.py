@@ -13,12 +13,12 @@ from fieldplan.base.document import (
     Working,
 )
 from fieldplan.estimate.model import Estimate
+from fieldplan.estimate.sentences import interval_in_words
 from fieldplan.packet.sheets.plan_sheet import subtitle
 from fieldplan.packet.sheets.results_tables import (
-    bracket_table,
     change_blocks,
+    degrees_words,
     promise_table,
-    result_rows,
     stratum_table,
 )
 from fieldplan.packet.sheets.returned import field_blocks, location_table, match_sentence
@@ -66,30 +66,28 @@ def results_sheet(plan: Plan, estimate: Estimate) -> Document:
 
 
 def answer_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
-    """Compose page one: the mean, its interval, the level, the population, the promise."""
+    """Compose page one: the answer in sentences, each once, and its figure."""
     from fieldplan.packet.charts import interval_figure
 
-    level = plan.campaign.deciding_analyte.action_level
     first, *others = estimate.sentences
     blocks: list[Block] = [Paragraph(first, tone="answer")]
     said = [*others, estimate.level_sentence, estimate.population_sentence]
-    blocks += [
-        Paragraph(sentence) for sentence in dict.fromkeys(said) if sentence != first and sentence
-    ]
-    if estimate.changes:
-        blocks.append(
-            Paragraph(
-                "CHANGED AFTER RESULTS: a rule was overridden after results were seen; see "
-                "section 5 for both answers.",
-                tone="answer",
-            )
-        )
-    blocks += [Facts(result_rows(plan, estimate)), interval_figure(estimate, action_level=level)]
-    if estimate.bracket is not None:
-        blocks.append(bracket_table(estimate))
-    if estimate.coverage_sentence and estimate.coverage_sentence not in said:
-        blocks.append(Paragraph(estimate.coverage_sentence, tone="note"))
+    for sentence in dict.fromkeys(said):
+        if sentence and sentence != first:
+            changed = sentence.startswith("CHANGED AFTER RESULTS")
+            blocks.append(Paragraph(sentence, tone="answer" if changed else "plain"))
+    level = plan.campaign.deciding_analyte.action_level
+    blocks.append(interval_figure(estimate, action_level=level))
+    if estimate.coverage_sentence and estimate.coverage_sentence not in estimate.sentences:
+        blocks.append(Paragraph(estimate.coverage_sentence))
+    blocks.append(Paragraph(other_interval(estimate), tone="note"))
     return blocks
+
+
+def other_interval(estimate: Estimate) -> str:
+    """Say the kind of interval that was not declared, so that nobody has to work it out."""
+    words = interval_in_words(estimate.other_interval, estimate.unit)
+    return f"Not the declared answer, for those who ask: {words}."
 
 
 def promise_blocks(estimate: Estimate) -> list[Block]:
@@ -106,8 +104,8 @@ def location_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
         Paragraph(match_sentence(estimate.returns)),
         location_table(plan, estimate.returns),
         Paragraph(
-            "As reported is the laboratory's cell, untouched. Non-detects enter the value at half "
-            "their limit; page one shows the mean with 0 and with the limit in their place.",
+            "As reported is the laboratory's cell, untouched. A value with non-detects in it has "
+            "them at half their limit; page one says what 0 and the limit would give.",
             tone="note",
         ),
     ]
@@ -118,7 +116,8 @@ def working_blocks(estimate: Estimate) -> list[Block]:
     blocks: list[Block] = [Paragraph(estimate.mean.method)]
     if estimate.mean.caution:
         blocks.append(Paragraph(estimate.mean.caution))
-    return [*blocks, Working(estimate.steps)]
+    freedom = degrees_words(estimate.mean.degrees_of_freedom)
+    return [*blocks, Paragraph(f"Degrees of freedom: {freedom}."), Working(estimate.steps)]
 
 
 def report_blocks(plan: Plan, estimate: Estimate) -> list[Block]:

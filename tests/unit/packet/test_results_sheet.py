@@ -6,10 +6,10 @@ from functools import cache
 
 from fieldplan.base.document import Document, Paragraph, Table
 from fieldplan.estimate.model import Change, Interval
-from fieldplan.packet.sheets.results_sheet import results_sheet
+from fieldplan.packet.sheets.results_sheet import answer_blocks, results_sheet
 from fieldplan.packet.sheets.returned import relative_difference
 from tests.factories import make_estimate, make_plan, make_returns
-from tests.unit.packet.sheet_text import headings_of, words_of
+from tests.unit.packet.sheet_text import headings_of, text_of, words_of
 
 
 @cache
@@ -33,21 +33,21 @@ def test_the_first_words_are_the_answer():
     assert first.text == make_estimate().sentences[0]
 
 
-def test_level_population_and_coverage_are_said_once():
+def page_one(**changes: object) -> str:
+    """All that stands before the first page break."""
+    blocks = answer_blocks(make_plan(), make_estimate(**changes))
+    return "\n".join(text_of(block) for block in blocks)
+
+
+def test_page_one_says_level_population_and_coverage_once():
     """A sentence said twice is read as two things."""
-    text = sheet_text()
-    for sentence in (
-        make_estimate().level_sentence,
-        make_estimate().population_sentence,
-        make_estimate().coverage_sentence,
-    ):
-        assert text.count(sentence) == 1
-
-
-def test_sentences_that_the_estimate_repeats_are_not_repeated():
-    """The level sentence may stand among the sentences already."""
-    level = make_estimate().level_sentence
-    assert sheet_text(sentences=(make_estimate().sentences[0], level)).count(level) == 1
+    estimate = make_estimate()
+    wanted = (
+        estimate.level_sentence, estimate.population_sentence, estimate.coverage_sentence
+    )  # fmt: skip
+    for text in (page_one(), page_one(sentences=(*estimate.sentences, *wanted))):
+        for sentence in wanted:
+            assert text.count(sentence) == 1
 
 
 def test_changes_made_after_results_has_a_section_even_when_there_were_none():
@@ -60,11 +60,19 @@ def test_changes_made_after_results_has_a_section_even_when_there_were_none():
 def test_a_change_is_printed_with_both_answers_and_on_page_one():
     """The reader must see what the recorded rule would have said."""
     change = Change("confidence", "0.95", "0.8", Interval("two-sided", 0.95, 29.15, 95.86), 62.506)
-    text = sheet_text(changes=(change,), interval=Interval("two-sided", 0.8, 43.0, 82.0))
-    assert text.count("CHANGED AFTER RESULTS") == 2
-    assert "29 to 96 mg/kg" in text
-    assert "43 to 82 mg/kg" in text
+    warning = "CHANGED AFTER RESULTS: confidence was 0.95, is 0.8."
+    changes: dict[str, object] = {
+        "changes": (change,),
+        "interval": Interval("two-sided", 0.8, 43.0, 82.0),
+        "sentences": (make_estimate().sentences[0], warning),
+    }
+    text = sheet_text(**changes)
+    assert "CHANGED AFTER RESULTS: confidence\n" in text
+    assert "mean 62.5 mg/kg, 95 % interval 29.1 to 95.9 mg/kg" in text
+    assert "mean 62.5 mg/kg, 80 % interval 43.0 to 82.0 mg/kg" in text
     assert "None. Every rule" not in text
+    blocks = results_sheet(make_plan(), make_estimate(**changes)).blocks
+    assert Paragraph(warning, tone="answer") in blocks
 
 
 def test_every_result_stands_as_reported_with_what_became_of_it():
