@@ -107,18 +107,17 @@ STORIES = {
 def main(names: Sequence[str]) -> None:
     """Write the returns of the named sites, or of all."""
     for name in names or sorted(STORIES):
-        make_returns(HERE / name, STORIES[name])
+        make_returns(HERE / name, STORIES[name], HERE / name / "returned")
         print(f"{name}: returned/ written")
 
 
-def make_returns(folder: Path, story: Story) -> None:
+def make_returns(folder: Path, story: Story, returned: Path) -> None:
     """Draw the site, invent what came back, and write it."""
     from fieldplan.lab import read_lab
     from fieldplan.returns.matches import matches_csv, propose_matches
 
     read = read_campaign(folder / "campaign.toml")
     plan = make_plan(read, made_on=read.campaign.plan.prepared_on or date(2026, 1, 1))
-    returned = folder / "returned"
     returned.mkdir(exist_ok=True)
     field = field_rows(plan, story)
     write_csv(returned / "field_return.csv", field)

@@ -10,7 +10,7 @@ from fieldplan.plan.model import Plan
 from fieldplan.samples.model import Sample
 
 COLUMNS = (
-    "Location",
+    "Location (on the receiver)",
     "Sample",
     "Planned position",
     "Taken?",
@@ -92,10 +92,12 @@ def sample_table(plan: Plan, places: tuple[Location, ...]) -> Table:
 
 
 def sample_row(plan: Plan, place: Location, sample: Sample) -> tuple[str, ...]:
-    """Set one sample with blanks."""
+    """Set one sample with blanks; the short name is what the receiver shows."""
     name = place.location_id
-    if several_strata(plan):
-        name += f" ({place.stratum})"
+    if place.short_name != name:
+        name += f" ({place.short_name})"
+    if place.location_class == "alternate" and several_strata(plan):
+        name += f", {place.stratum}"
     position = f"{place.latitude:.6f}, {place.longitude:.6f}"
     return (name, sample.sample_id, position, *BLANKS)
 

@@ -55,9 +55,9 @@ def plan_sheet(plan: Plan) -> Document:
 
 
 def subtitle(plan: Plan, kind: str) -> str:
-    """Name the kind of sheet, the site, the revision and the day it was made."""
+    """Name the kind of sheet, the site, the revision and the day of the plan."""
     site = plan.campaign.plan.site
-    parts = [kind, *([site] if site else []), plan.revision_name, f"made on {plan.made_on}"]
+    parts = [kind, *([site] if site else []), plan.revision_name, f"plan of {plan.made_on}"]
     return " · ".join(parts)
 
 

@@ -66,7 +66,7 @@ def redraw_sheet(plan: Plan, comparison: Comparison) -> Document:
         blocks += [Heading("Places that differ"), Bullets((", ".join(comparison.differing),))]
     blocks += [Heading("Sign-off"), SignOff(("Drawn again by", "Reviewed by"))]
     return Document(
-        title=f"{plan.campaign.plan.title}: drawn again",
+        title=f"Drawn again: {plan.campaign.plan.title}",
         subtitle=subtitle(plan, "Attachment to the plan"),
         plan_id=plan.campaign.plan.id,
         revision_name=plan.revision_name,

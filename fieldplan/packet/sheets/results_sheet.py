@@ -18,7 +18,6 @@ from fieldplan.packet.sheets.plan_sheet import subtitle
 from fieldplan.packet.sheets.results_tables import (
     change_blocks,
     degrees_words,
-    promise_table,
     stratum_table,
 )
 from fieldplan.packet.sheets.returned import field_blocks, location_table, match_sentence
@@ -41,7 +40,7 @@ def results_sheet(plan: Plan, estimate: Estimate) -> Document:
         "Changes made after results" is always there, even when there were none.
     """
     sections: tuple[tuple[str, list[Block]], ...] = (
-        ("Planned against achieved", promise_blocks(estimate)),
+        ("Planned against achieved", [Bullets(estimate.why_different)]),
         ("By stratum", [stratum_table(plan, estimate)]),
         ("Location by location", location_blocks(plan, estimate)),
         ("What happened in the field", field_blocks(plan, estimate.returns)),
@@ -56,7 +55,7 @@ def results_sheet(plan: Plan, estimate: Estimate) -> Document:
         blocks += [Heading(f"{number}. {title}"), *content]
     blocks += [Heading(f"{len(sections) + 1}. Sign-off"), sign_off(plan)]
     return Document(
-        title=f"{plan.campaign.plan.title}: results",
+        title=f"Results: {plan.campaign.plan.title}",
         subtitle=subtitle(plan, "Results sheet"),
         plan_id=plan.campaign.plan.id,
         revision_name=plan.revision_name,
@@ -88,14 +87,6 @@ def other_interval(estimate: Estimate) -> str:
     """Say the kind of interval that was not declared, so that nobody has to work it out."""
     words = interval_in_words(estimate.other_interval, estimate.unit)
     return f"Not the declared answer, for those who ask: {words}."
-
-
-def promise_blocks(estimate: Estimate) -> list[Block]:
-    """Set the planned and the achieved precision and why they differ."""
-    blocks: list[Block] = [promise_table(estimate)]
-    if estimate.why_different:
-        blocks.append(Bullets(estimate.why_different))
-    return blocks
 
 
 def location_blocks(plan: Plan, estimate: Estimate) -> list[Block]:

@@ -23,22 +23,6 @@ def degrees_words(degrees_of_freedom: float) -> str:
     return text.removesuffix(".0")
 
 
-def promise_table(estimate: Estimate) -> Table:
-    """Set the planned beside the achieved standard error."""
-    unit = estimate.unit
-    return Table(
-        ("", "Planned", "Achieved"),
-        (
-            (
-                f"Standard error ({unit})",
-                significant(estimate.planned_standard_error),
-                significant(estimate.achieved_standard_error),
-            ),
-        ),
-        numeric=("Planned", "Achieved"),
-    )
-
-
 def stratum_table(plan: Plan, estimate: Estimate) -> Table:
     """Set n, mean, s and weight of every stratum beside what was planned."""
     unit = estimate.unit

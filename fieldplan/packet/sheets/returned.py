@@ -11,7 +11,8 @@ def match_sentence(returns: Returns) -> str:
     """Say how many samples came back."""
     line = f"{returns.matched} of {returns.planned_samples} planned samples were matched"
     if returns.extra:
-        return f"{line}; {counted(returns.extra, 'row')} of the file belong to none of them."
+        belong = "belongs" if returns.extra == 1 else "belong"
+        return f"{line}; {counted(returns.extra, 'row')} of the file {belong} to none of them."
     return f"{line}; no row of the file was left over."
 
 
