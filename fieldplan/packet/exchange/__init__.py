@@ -8,7 +8,7 @@ from fieldplan.packet.exchange.geopackage import write_geopackage
 from fieldplan.packet.exchange.gpx import write_gpx
 from fieldplan.packet.exchange.kml import write_kml
 from fieldplan.packet.exchange.points_csv import write_points_csv, write_samples_key
-from fieldplan.packet.exchange.read_back import SAMPLES_KEY, read_back
+from fieldplan.packet.exchange.reading import SAMPLES_KEY, read_back
 from fieldplan.packet.exchange.workbook import write_workbook
 from fieldplan.plan.model import Plan
 
