@@ -5,9 +5,13 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldplan.design.model import Location
-from fieldplan.packet.drawing import BLUE, INK, LINE, ORANGE
+from fieldplan.design.model import Location, LocationClass
+from fieldplan.packet.drawing import LINE
+from fieldplan.packet.maps.palette import MARKS
 from fieldplan.plan.model import Plan
+
+ARROW = "->"
+"""The marker of a legend entry that explains arrows."""
 
 
 @dataclass(frozen=True)
@@ -86,14 +90,20 @@ class MapContent:
         return replace(self, marks=small)
 
 
-CLASS_PENS = {
-    "random": Pen("o", BLUE, INK),
-    "alternate": Pen("^", "white", INK, 2.5, 1.0),
-    "targeted": Pen("s", ORANGE, INK),
+_SHAPES = {"circle": "o", "square": "s", "diamond": "D"}
+CLASS_PENS: dict[LocationClass, Pen] = {
+    name: Pen(
+        _SHAPES[mark.shape],
+        mark.fill,
+        mark.edge,
+        2.3 if mark.shape != "diamond" else 2.0,
+        1.1 if mark.fill == "#ffffff" else 0.5,
+    )
+    for name, mark in MARKS.items()
 }
-"""Shape tells the class in grey too: dark disc, hollow triangle, light square."""
+"""Disc, ring and diamond: shape and fill tell the class in grey too."""
 
-CLASS_WORDS = {
+CLASS_WORDS: dict[LocationClass, str] = {
     "random": "random location: enters the mean",
     "alternate": "alternate: only in place of a lost one",
     "targeted": "targeted place: never in the mean",
@@ -116,7 +126,7 @@ def plan_content(plan: Plan) -> MapContent:
     """
     marks = list(unit_marks(plan))
     marks += [_mark(place) for place in plan.locations.places]
-    present = [name for name in CLASS_PENS if plan.locations.of_class(name)]  # type: ignore[arg-type]
+    present = [name for name in CLASS_PENS if plan.locations.of_class(name)]
     legend = [
         Entry(
             CLASS_PENS[name],

@@ -47,7 +47,8 @@ def grid_step(extent: Extent, denominator: int, *, wanted_mm: float = 38.0) -> i
     50
     """
     wanted = min(wanted_mm * denominator / 1000, max(extent.width, extent.height) / 2)
-    return min(_STEPS, key=lambda step: abs(math.log(step / max(wanted, 1.0))))
+    nearest: int = min(_STEPS, key=lambda step: abs(math.log(step / max(wanted, 1.0))))
+    return nearest
 
 
 def grid_lines(projection: SiteProjection, extent: Extent, *, step: int) -> GridLines:
@@ -145,8 +146,7 @@ def _true_turn(projection: SiteProjection, extent: Extent) -> float:
     latitude, longitude = to_degrees(projection, easting, northing)
     step = 0.001 if latitude < 89.99 else -0.001
     x, y = to_site(projection, latitude + step, longitude)
-    angle = math.degrees(math.atan2((x - easting) * step, (y - northing) * step))
-    return angle
+    return math.degrees(math.atan2((x - easting) * step, (y - northing) * step))
 
 
 @lru_cache(maxsize=32)

@@ -9,14 +9,16 @@ from shapely.geometry.base import BaseGeometry
 
 from fieldplan.frame.model import Frame
 from fieldplan.packet.drawing import INK
+from fieldplan.packet.maps.palette import stratum_fill
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.path import Path
 
-_HATCHES = ("", "//", "..", "\\\\", "--", "oo", "||", "++")
-_TINTS = ("#ffffff", "#eef3f7", "#f7f3ea", "#edf5ee", "#f5eef4", "#f3f3f3", "#fdf1ec", "#ebf4f4")
-_FAINT = "#9aa4ad"
+_HATCHES = {
+    "plain": "", "dots": "..", "rising": "//", "level": "--", "upright": "||", "falling": "\\\\",
+    "crosses": "++", "rings": "oo",
+}  # fmt: skip
 
 
 @dataclass(frozen=True)
@@ -49,7 +51,7 @@ def grounds(frame: Frame) -> tuple[Ground, ...]:
             continue
         words = f"stratum: {stratum.name}" if many else "population, net of what is left out"
         brief = stratum.name if many else "population"
-        style = _stratum_style(number + 1 if many else 0)
+        style = _stratum_style(number) if many else _WHOLE
         layers.append(Ground(stratum.geometry, words, brief, style))
     for number, (reason, geometry) in enumerate(_excluded(frame).items()):
         style = _LEFT_OUT | {"hatch": _CROSSED[number % len(_CROSSED)]}
@@ -58,14 +60,26 @@ def grounds(frame: Frame) -> tuple[Ground, ...]:
 
 
 def _stratum_style(number: int) -> dict[str, Any]:
-    """Choose hatch and tint; after eight strata hatches come again, twice as dense."""
-    hatch = _HATCHES[number % 8] * (1 + number // 8)
+    """Choose ground and hatch; after eight strata they come again, the hatch twice as dense."""
+    fill = stratum_fill(number)
     return {
-        "facecolor": _TINTS[number % 8], "edgecolor": _FAINT, "hatch": hatch, "linewidth": 0.5,
+        "facecolor": fill.ground,
+        "edgecolor": _paled(fill.line),
+        "hatch": _HATCHES[fill.pattern] * (1 + number // 8),
+        "linewidth": 0.6,
         "zorder": 1.0,
-    }  # fmt: skip
+    }
 
 
+def _paled(colour: str) -> str:
+    """Mix a colour with as much white, so that names above the hatch stay readable."""
+    parts = (int(colour[at : at + 2], 16) for at in (1, 3, 5))
+    return "#" + "".join(f"{(part + 255) // 2:02x}" for part in parts)
+
+
+_WHOLE: dict[str, Any] = {
+    "facecolor": "#f4f5f6", "edgecolor": "#c9cfd5", "linewidth": 0.4, "zorder": 1.0,
+}  # fmt: skip
 _CROSSED = ("xxxx", "++++", "////", "****")
 _LEFT_OUT: dict[str, Any] = {
     "facecolor": "#d4d8dc", "edgecolor": INK, "linewidth": 0.6, "zorder": 2.0,

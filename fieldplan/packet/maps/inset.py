@@ -1,4 +1,4 @@
-"""The inset: where the site lies among latitudes and longitudes, or where a page lies in the map."""
+"""The inset: where the site lies among latitudes and longitudes, or a page in the map."""
 
 import math
 from typing import TYPE_CHECKING
@@ -115,7 +115,7 @@ def _draw_key(axes: "Axes", spec: PageSpec) -> None:
                 facecolor="white" if own else "none",
                 alpha=1.0,
                 zorder=3 if own else 2,
-            )  # fmt: skip
+            )
         )
         axes.text(
             *ground.centre, str(tile.page), fontsize=8 if own else 6, ha="center", va="center",
@@ -134,17 +134,18 @@ def _draw_where(axes: "Axes", site: Extent) -> None:
 def _draw_graticule(axes: "Axes", plan: Plan, extent: Extent) -> None:
     """Draw round parallels and meridians with their degrees."""
     projection = plan.frame.projection
-    easting, northing = (v.ravel() for v in np.meshgrid(
-        np.linspace(extent.west, extent.east, 9), np.linspace(extent.south, extent.north, 9)
-    ))  # fmt: skip
-    latitude, longitude = to_degrees(projection, easting, northing)
+    columns = np.linspace(extent.west, extent.east, 9)
+    rows = np.linspace(extent.south, extent.north, 9)
+    easting, northing = np.meshgrid(columns, rows)
+    latitude, longitude = to_degrees(projection, easting.ravel(), northing.ravel())
     middle = projection.longitude
     longitude = middle + (np.asarray(longitude) - middle + 180.0) % 360.0 - 180.0
     for values, level in ((np.asarray(latitude), True), (longitude, False)):
         low, high = float(values.min()), float(values.max())
         step = next((s for s in _DEGREE_STEPS if (high - low) / s <= 4.5), 30.0)
         first, last = math.ceil(low / step), math.floor(high / step)
-        other = np.linspace(*((longitude if level else latitude).min(), (longitude if level else latitude).max()), 40)  # fmt: skip
+        across = longitude if level else np.asarray(latitude)
+        other = np.linspace(across.min(), across.max(), 40)
         for number in range(first, last + 1):
             value = number * step
             fixed = np.full_like(other, value)
@@ -168,7 +169,7 @@ def _name_line(axes: "Axes", extent: Extent, line: np.ndarray, words: str) -> No
     across, up = line[min(at + 1, len(line) - 1)] - line[at]
     angle = math.degrees(math.atan2(up, across))
     axes.text(
-        *line[at], words, fontsize=5.2, color=SOFT, ha="center", va="center", rotation=angle,
+        line[at, 0], line[at, 1], words, fontsize=5.2, color=SOFT, ha="center", va="center", rotation=angle,
         rotation_mode="anchor", bbox={"facecolor": "white", "edgecolor": "none", "pad": 0.4},
     )  # fmt: skip
 

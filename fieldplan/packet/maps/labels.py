@@ -12,11 +12,11 @@ from numpy.typing import NDArray
 Rectangles = NDArray[np.float64]
 """Shape (n, 4): left, bottom, right, top."""
 
-_RINGS_MM = (2.5, 4.5, 7.0, 10.0, 14.0, 19.0, 25.0, 32.0)
-_TURNS = 24
+_RINGS_MM = (2.0, 3.5, 5.5, 8.0, 11.0, 14.5, 18.5, 23.0, 28.0, 34.0)
+_TURNS = 32
 _CLEAR_MM = 0.35
 _NEIGHBOUR_MM = 12.0
-_TRIES = 8
+_TRIES = 4
 
 
 @dataclass(frozen=True)
@@ -56,7 +56,7 @@ def place_labels(
     Returns
     -------
     list of Placed or None
-        In the order of ``anchors``; None where no free place is left within 32 mm.
+        In the order of ``anchors``; None where no free place is left within 34 mm.
     """
     order = _crowded_first(anchors)
     best: list[Placed | None] = []
@@ -98,20 +98,26 @@ def _place_in(
         free = _inside(near, frame) & ~_hits(near, blocked) & ~_crossed(near, lines)
         if free.any():
             box = near[int(np.argmax(free))]
-            placed[index] = Placed(box[0], box[1], *sizes[index], leads=False)
+            placed[index] = _at(box, leads=False)
         else:
             far, starts = _standing_off(anchors[index], sizes[index], radii[index])
             free = _inside(far, frame) & ~_hits(far, blocked) & ~_crossed(far, lines)
             some = np.flatnonzero(free)
-            others = np.delete(blocked, len(taken) + index, axis=0)
+            others = blocked[_apart(blocked, markers[index])]
             some = some[~_meet(starts[some][:, None, :], others[None, :, :]).any(axis=1)]
             if not len(some):
                 continue
             box = far[some[0]]
-            placed[index] = Placed(box[0], box[1], *sizes[index], leads=True)
+            placed[index] = _at(box, leads=True)
             lines = np.vstack([lines, starts[some[0]]])
         blocked = np.vstack([blocked, box])
     return placed
+
+
+def _at(box: NDArray[np.float64], *, leads: bool) -> Placed:
+    """Turn a rectangle's edges into corner and size."""
+    left, bottom, right, top = (float(edge) for edge in box)
+    return Placed(left, bottom, right - left, top - bottom, leads)
 
 
 def _crowded_first(anchors: NDArray[np.float64]) -> list[int]:
@@ -129,18 +135,10 @@ def _touching(anchor: NDArray[np.float64], size: NDArray[np.float64], radius: fl
     gap = radius + _CLEAR_MM + 0.05
     right, left, above, below = x + gap, x - gap - width, y + gap, y - gap - height
     middle_x, middle_y = x - width / 2, y - height / 2
-    corners = np.array(
-        [
-            (right, y),
-            (right, y - height),
-            (left, y),
-            (left, y - height),
-            (middle_x, above),
-            (middle_x, below),
-            (right, middle_y),
-            (left, middle_y),
-        ]  # fmt: skip
-    )
+    corners = np.array([
+        (right, y), (right, y - height), (left, y), (left, y - height),
+        (middle_x, above), (middle_x, below), (right, middle_y), (left, middle_y),
+    ])  # fmt: skip
     return np.column_stack([corners, corners + size])
 
 
@@ -174,11 +172,18 @@ def _hits(boxes: Rectangles, blocked: Rectangles) -> NDArray[np.bool_]:
     return np.asarray((~apart).any(axis=1))
 
 
+def _apart(boxes: Rectangles, marker: NDArray[np.float64]) -> NDArray[np.bool_]:
+    """Tell which rectangles do not touch a marker: not itself, and not one it overlaps."""
+    return np.asarray(
+        (boxes[:, :2] > marker[2:]).any(axis=1) | (boxes[:, 2:] < marker[:2]).any(axis=1)
+    )
+
+
 def _crossed(boxes: Rectangles, lines: Rectangles) -> NDArray[np.bool_]:
     """Tell which rectangles an existing leading line runs through."""
     if not len(lines):
         return np.zeros(len(boxes), dtype=bool)
-    return _meet(lines[None, :, :], boxes[:, None, :]).any(axis=1)
+    return np.asarray(_meet(lines[None, :, :], boxes[:, None, :]).any(axis=1))
 
 
 def _meet(lines: Rectangles, boxes: Rectangles) -> NDArray[np.bool_]:

@@ -3,7 +3,7 @@
 from typing import TYPE_CHECKING
 
 from fieldplan.packet.drawing import INK, POINTS_PER_MM, SOFT, shortened
-from fieldplan.packet.maps.content import Entry, MapContent, Pen
+from fieldplan.packet.maps.content import ARROW, Entry, MapContent, Pen
 from fieldplan.packet.maps.grid import GridLines
 from fieldplan.packet.maps.ground import Ground
 from fieldplan.packet.maps.paper import Box
@@ -33,7 +33,13 @@ def draw_legend(
     box : Box
     grid : GridLines
     """
-    entries: list[Entry | Ground] = [*content.legend, *layers, _crossing(grid)]
+    draw_entries(page, [*content.legend, *layers, _crossing(grid)], box)
+
+
+def draw_entries(
+    page: "Axes", entries: list[Entry | Ground], box: Box, *, brief: bool = False
+) -> None:
+    """Draw entries in one to three columns inside a box, framed to their number."""
     columns = 1
     while columns < 3 and len(entries) > columns * int((box.height - 3) / _LEAST_ROW_MM):
         columns += 1
@@ -51,7 +57,7 @@ def draw_legend(
         x = box.left + 2 + (index // rows) * width
         y = box.top - 1.5 - (index % rows + 0.5) * height
         _sample(page, entry, x, y)
-        words = entry.words if columns == 1 else entry.brief
+        words = entry.brief if brief or columns > 1 else entry.words
         points = 6.6 if columns == 1 else 5.8
         page.text(x + 7.5, y, shortened(words, points, width - 8.5), fontsize=points, va="center")
 
@@ -78,14 +84,19 @@ def _sample(page: "Axes", entry: Entry | Ground, x: float, y: float) -> None:
     if isinstance(entry, Ground):
         if entry.style["facecolor"] == "none":
             page.plot(
-                [x, x + 6], [y, y], color=INK, linewidth=entry.style["linewidth"],
+                [x, x + 6],
+                [y, y],
+                color=INK,
+                linewidth=entry.style["linewidth"],
                 linestyle=entry.style.get("linestyle", "-"),
-            )  # fmt: skip
+            )
             return
         page.add_patch(Rectangle((x, y - 1.6), 6, 3.2, **entry.style))
         return
     pen = entry.pen
-    if pen.marker:
+    if pen.marker == ARROW:
+        page.annotate("", (x + 6, y), (x, y), arrowprops={"arrowstyle": "-|>", "color": INK})
+    elif pen.marker:
         page.plot(
             [x + 3], [y], marker=pen.marker, markersize=pen.size_mm * POINTS_PER_MM,
             markerfacecolor=pen.face, markeredgecolor=pen.edge, markeredgewidth=pen.edge_width,

@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldplan.packet.drawing import INK, POINTS_PER_MM, SOFT, text_width_mm
-from fieldplan.packet.maps.content import Mark, MapContent
+from fieldplan.packet.maps.content import MapContent, Mark
 from fieldplan.packet.maps.labels import Placed, place_labels
 from fieldplan.packet.maps.tiles import PageSpec
 

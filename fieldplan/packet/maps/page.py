@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldplan.packet.drawing import INK, POINTS_PER_MM, mm_axes, new_figure
-from fieldplan.packet.maps.content import Mark, MapContent
+from fieldplan.packet.maps.content import MapContent, Mark
 from fieldplan.packet.maps.grid import grid_lines, grid_step
 from fieldplan.packet.maps.ground import draw_grounds, grounds
 from fieldplan.packet.maps.inset import draw_inset
@@ -45,7 +45,7 @@ def draw_page(plan: Plan, content: MapContent, spec: PageSpec) -> tuple["Figure"
     figure = new_figure(layout.width, layout.height)
     page = mm_axes(figure)
     shown = content.without_names() if spec.is_key else content
-    axes = _ground_axes(figure, spec)
+    axes = ground_axes(figure, spec)
     layers = grounds(plan.frame)
     draw_grounds(axes, layers, metres_per_mm=spec.denominator / 1000)
     step = grid_step(spec.extent, spec.denominator)
@@ -66,7 +66,7 @@ def draw_page(plan: Plan, content: MapContent, spec: PageSpec) -> tuple["Figure"
     return figure, unplaced
 
 
-def _ground_axes(figure: "Figure", spec: PageSpec) -> "Axes":
+def ground_axes(figure: "Figure", spec: PageSpec) -> "Axes":
     """Make axes over the map's box whose units are site metres at the exact scale."""
     layout, box, extent = spec.layout, spec.layout.ground, spec.extent
     axes = figure.add_axes(
@@ -165,7 +165,7 @@ def _draw_tiles(axes: "Axes", atlas: Atlas) -> None:
                 linewidth=0.8,
                 linestyle=(0, (5, 2)),
                 zorder=3.5,
-            )  # fmt: skip
+            )
         )
         axes.text(
             *ground.centre, str(tile.page), fontsize=18, weight="bold", ha="center",

@@ -64,8 +64,8 @@ def draw_scale(page: "Axes", plan: Plan, spec: PageSpec, grid: GridLines) -> Non
     paper = plan.campaign.paper.size
     words = f"true on {paper} printed at 100 %"
     page.text(box.left + 1, box.top - 7.8, words, fontsize=6.2, va="center", color=SOFT)
-    _draw_bar(page, box.left + 1, box.top - 15.5, spec.denominator)
-    _draw_north(page, box.right - 5, box.top - 7)
+    draw_bar(page, box.left + 1, box.top - 15.5, spec.denominator)
+    draw_north(page, box.right - 5, box.top - 7)
     lines = [
         "Drawn in: " + projection_in_words(plan.frame.projection) + " (no EPSG code).",
         "Ticks and crosses: " + utm_in_words(grid.reference) + ".",
@@ -75,11 +75,13 @@ def draw_scale(page: "Axes", plan: Plan, spec: PageSpec, grid: GridLines) -> Non
     draw_lines(page, lines, Box(box.left + 1, box.bottom, box.width - 1, box.height - 18), 5.9)
 
 
-def _draw_bar(page: "Axes", left: float, bottom: float, denominator: int) -> None:
+def draw_bar(
+    page: "Axes", left: float, bottom: float, denominator: int, *, longest_mm: float = 56.0
+) -> None:
     """Draw the bar in four parts of alternate black and white, with its lengths."""
     from matplotlib.patches import Rectangle
 
-    length = bar_length(denominator)
+    length = bar_length(denominator, longest_mm=longest_mm)
     whole = length * 1000 / denominator
     for part in range(4):
         page.add_patch(
@@ -91,7 +93,7 @@ def _draw_bar(page: "Axes", left: float, bottom: float, denominator: int) -> Non
                 edgecolor=INK,
                 facecolor=INK if part % 2 == 0 else "white",
                 gid="scale-bar",
-            )  # fmt: skip
+            )
         )
     shown = (length / 1000, "km") if length >= 2000 else (length, "m")
     for share in (0.0, 0.5, 1.0):
@@ -99,7 +101,7 @@ def _draw_bar(page: "Axes", left: float, bottom: float, denominator: int) -> Non
         page.text(left + share * whole, bottom + 3.2, words, fontsize=6, ha="center", va="center")
 
 
-def _draw_north(page: "Axes", x: float, y: float) -> None:
+def draw_north(page: "Axes", x: float, y: float) -> None:
     """Draw an arrow up the page: the north of the site's plane."""
     from matplotlib.patches import Polygon
 
@@ -112,7 +114,7 @@ def _draw_north(page: "Axes", x: float, y: float) -> None:
                 facecolor=face,
                 edgecolor=INK,
                 linewidth=0.7,
-            )  # fmt: skip
+            )
         )
     page.text(x, low - 1.8, "N", fontsize=8, weight="bold", ha="center", va="center")
 
@@ -168,8 +170,13 @@ def draw_lines(page: "Axes", lines: list[str], box: Box, points: float) -> None:
             if room <= 0:
                 return
             page.text(
-                box.left, y, piece, fontsize=points, va="center",
-                weight="bold" if bold else "normal", color=INK if bold else SOFT,
-            )  # fmt: skip
+                box.left,
+                y,
+                piece,
+                fontsize=points,
+                va="center",
+                weight="bold" if bold else "normal",
+                color=INK if bold else SOFT,
+            )
             y -= _LINE_MM
             room -= 1

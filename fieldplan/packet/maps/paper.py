@@ -147,7 +147,8 @@ def fitting_denominator(extent: Extent, ground: Box, *, clear_mm: float = 9.0) -
     """
     room = ground.shrunk(clear_mm)
     wanted = 1000 * max(extent.width / room.width, extent.height / room.height)
-    return next((d for d in DENOMINATORS if d >= wanted), DENOMINATORS[-1])
+    fitting: int = next((d for d in DENOMINATORS if d >= wanted), DENOMINATORS[-1])
+    return fitting
 
 
 def extent_around(centre: tuple[float, float], ground: Box, denominator: int) -> Extent:

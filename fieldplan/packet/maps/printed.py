@@ -1,4 +1,4 @@
-"""The printed map: one page at a round scale, or a key and an atlas where one page is too little."""
+"""The printed map: one page at a round scale, or a key and an atlas where one is too little."""
 
 import io
 from dataclasses import dataclass

@@ -19,7 +19,7 @@ _FINEST = 50
 
 @dataclass(frozen=True)
 class Tile:
-    """One page of an atlas: the ground it shows, and the cell of the grid of pages it stands for."""
+    """One page of an atlas: the ground it shows, and its place in the grid of pages."""
 
     page: int
     extent: Extent
@@ -99,7 +99,7 @@ def crowded(places: NDArray[np.float64], metres_per_mm: float) -> bool:
     >>> crowded(nest, 10.0), crowded(nest, 0.5), crowded(nest[:3], 10.0)
     (True, False, False)
     """
-    points = shapely.points(np.unique(np.round(places, 2), axis=0))
+    points = np.atleast_1d(shapely.points(np.unique(np.round(places, 2), axis=0)))
     _, centres = shapely.STRtree(points).query(
         points, predicate="dwithin", distance=2.0 * metres_per_mm
     )
