@@ -3,9 +3,10 @@
 import json
 
 import pytest
-from click.testing import CliRunner, Result
+from click.testing import Result
 
 from fieldplan.cli.check import command
+from tests.command_runner import command_runner
 from tests.unit.campaign.files import PLAIN, bent
 
 BOUNDARY = {
@@ -29,7 +30,7 @@ def folder(tmp_path, monkeypatch):
 def check(folder, text: str, *options: str) -> Result:
     """Write a campaign file and check it."""
     (folder / "campaign.toml").write_text(text, encoding="utf-8")
-    return CliRunner().invoke(command, ["campaign.toml", *options], catch_exceptions=False)
+    return command_runner().invoke(command, ["campaign.toml", *options], catch_exceptions=False)
 
 
 def words(text: str) -> str:
