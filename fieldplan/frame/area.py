@@ -10,7 +10,7 @@ from fieldplan.frame.exclusions import read_exclusions
 from fieldplan.frame.ground import FrameFiles, read_ground
 from fieldplan.frame.model import ExcludedArea, Frame, Stratum
 from fieldplan.frame.places import read_targeted
-from fieldplan.frame.plane import merged
+from fieldplan.frame.plane import ARC_SEGMENTS, merged
 from fieldplan.frame.population import area_population
 from fieldplan.frame.tiling import Pieces, read_strata
 
@@ -43,10 +43,9 @@ def read_area(files: FrameFiles, targeted: tuple[Targeted, ...]) -> Frame:
     net = _net(pieces, ground.boundary, excluded, files.table)
     places, ground = read_targeted(files, ground, targeted)
     total = sum(float(piece.area) for piece in net.values())
-    gross = float(ground.boundary.area)
-    if not files.table.inset_m:
-        # Without an inset the parts are the whole; the millimetre grid moves it by a hair.
-        gross = total + sum(area.area_m2 for area in excluded)
+    parts = total + sum(area.area_m2 for area in excluded)
+    # Without an inset the parts are the whole; the millimetre grid moves it by a hair.
+    gross = max(float(ground.boundary.area), parts) if files.table.inset_m else parts
     population = area_population(files.table, gross=gross, excluded=excluded, net=total)
     strata = tuple(
         Stratum(name, float(piece.area), float(piece.area) / total, piece)
@@ -76,7 +75,9 @@ def _net(
     """Cut exclusions and inset out of each stratum; one that vanishes is an error by name."""
     # The inset follows the boundary and its holes. Borders between strata have none, and
     # exclusions have their own buffers.
-    inner = shapely.buffer(boundary, -table.inset_m, quad_segs=16) if table.inset_m else None
+    inner = (
+        shapely.buffer(boundary, -table.inset_m, quad_segs=ARC_SEGMENTS) if table.inset_m else None
+    )
     out = shapely.union_all([area.geometry for area in excluded]) if excluded else None
     net: Pieces = {}
     for name, piece in pieces.items():

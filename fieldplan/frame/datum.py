@@ -17,7 +17,6 @@ from pyproj.exceptions import CRSError, ProjError
 from pyproj.transformer import TransformerGroup
 
 from fieldplan.base.errors import FrameError
-from fieldplan.base.units import significant
 from fieldplan.frame.layer import Layer
 
 WGS84 = pyproj.CRS.from_epsg(4326)
@@ -332,7 +331,7 @@ def _notes(name: str, shift: Shift, position_accuracy_m: float | None) -> tuple[
         )
     if position_accuracy_m and shift.accuracy_m > position_accuracy_m:
         return (
-            f"{name}: its datum shift to WGS 84 is good to {significant(shift.accuracy_m)} m, "
-            f"coarser than the receiver's {significant(position_accuracy_m)} m.",
+            f"{name}: its datum shift to WGS 84 is good to {shift.accuracy_m:g} m, "
+            f"coarser than the receiver's {position_accuracy_m:g} m.",
         )
     return ()

@@ -3,10 +3,11 @@
 import shapely
 from shapely.geometry.base import BaseGeometry
 
+from fieldplan.base.errors import FrameError
 from fieldplan.campaign.model import Exclusion
 from fieldplan.frame.ground import FrameFiles, Ground, Overlay, distance_in_words
 from fieldplan.frame.model import ExcludedArea
-from fieldplan.frame.plane import SitePlane, merged, polygons_of
+from fieldplan.frame.plane import ARC_SEGMENTS, SitePlane, merged, polygons_of
 
 _FAR_M = 1000.0
 
@@ -71,6 +72,12 @@ def _shape(
         return shapely.union_all([feature.geometry for feature in features]), notes
     areas = [feature for feature in layer.features if polygons_of(feature.geometry)]
     others = [feature for feature in layer.features if not polygons_of(feature.geometry)]
+    if not areas and exclusion.buffer_m == 0 and layer.format not in ("CSV", "GPX"):
+        message = (
+            f"{layer.name} holds lines or points and no polygon, and they take no ground; give "
+            "their exclusion a buffer_m, or draw a polygon."
+        )
+        raise FrameError(message)
     shapes: list[BaseGeometry] = []
     notes = []
     if areas or exclusion.buffer_m == 0:
@@ -81,7 +88,7 @@ def _shape(
         shapes += [plane.place(feature.geometry) for feature in others]
         notes = []
     whole = shapely.union_all(shapes)
-    return shapely.buffer(whole, exclusion.buffer_m, quad_segs=16), notes
+    return shapely.buffer(whole, exclusion.buffer_m, quad_segs=ARC_SEGMENTS), notes
 
 
 def _elsewhere(exclusion: Exclusion, overlay: Overlay, ground: Ground, shape: BaseGeometry) -> str:

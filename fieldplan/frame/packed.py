@@ -174,7 +174,8 @@ def _read(copy: Path, name: str, kind: str, *, layer: str | None, notes: tuple[s
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")
             meta, _, geometry, fields = pyogrio.raw.read(copy, layer=layer, force_2d=True)
-        shapes = shapely.force_2d(shapely.from_wkb(np.asarray(geometry, dtype=object)))
+        with np.errstate(all="ignore"):
+            shapes = shapely.force_2d(shapely.from_wkb(np.asarray(geometry, dtype=object)))
     except _FAULTS as fault:
         raise _damaged(name, fault) from fault
     columns = tuple(str(column) for column in meta["fields"])

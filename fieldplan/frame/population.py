@@ -28,7 +28,7 @@ def area_population(
     -------
     Population
     """
-    inset_loss = gross - sum(area.area_m2 for area in excluded) - net
+    inset_loss = max(gross - (net + sum(area.area_m2 for area in excluded)), 0.0)
     share = net / gross
     sentences = [f"The mean speaks for {_percent(share)} of the site: {_of(net, gross)}."]
     for area in excluded:
