@@ -9,12 +9,12 @@ from typing import NoReturn
 from fieldplan.base.errors import LabError
 
 SMALLEST, LARGEST = Decimal("1e-30"), Decimal("1e30")
-_NUMBER = re.compile(r"\+?(?:\d{1,40}(?:\.\d{0,40})?|\.\d{1,40})(?:[eE][+-]?\d{1,3})?")
+_NUMBER = re.compile(r"\+?(?:[0-9]{1,40}(?:\.[0-9]{0,40})?|\.[0-9]{1,40})(?:[eE][+-]?[0-9]{1,3})?")
 _CELL = re.compile(
     rf"(?P<less><=?|≤)?\s*(?P<number>{_NUMBER.pattern})\s*(?P<letters>[A-Za-z*^][A-Za-z*^+\-,/ ]*)?"
 )
-_THOUSANDS = re.compile(r"\+?[1-9]\d{0,2}(?:,\d{3})+(?:\.\d+)?")
-_DECIMAL_COMMA = re.compile(r"\+?(?:\d+,\d+)(?:[eE][+-]?\d+)?")
+_THOUSANDS = re.compile(r"\+?[1-9][0-9]{0,2}(?:,[0-9]{3})+(?:\.[0-9]+)?")
+_DECIMAL_COMMA = re.compile(r"\+?(?:[0-9]+,[0-9]+)(?:[eE][+-]?[0-9]+)?")
 _NOT_DETECTED = {
     "nd", "n.d.", "n.d", "n/d", "not detected", "none detected", "non-detect", "bdl", "bql", "brl",
     "u", "uj", "<", "<dl", "<rl", "<lod", "<loq", "<mdl", "<lor", "below detection limit",
@@ -109,7 +109,7 @@ def read_cell(text: str, *, decimal_comma: bool = False) -> Reading:
 
 
 def _without_comma(plain: str, decimal_comma: bool) -> str:
-    body = re.match(r"[<≤=\s]*([+\d][\d.,]*)", plain)
+    body = re.match(r"[<≤=\s]*([+0-9][0-9.,]*)", plain)
     if body is None or "," not in body[1]:
         return plain
     number = body[1].rstrip(",.")

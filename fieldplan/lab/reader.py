@@ -140,7 +140,8 @@ def _nothing_found(name: str, analytes: Mapping[str, Analyte], memory: FileMemor
         return f"{name} has a header but no rows; export it again."
     seen = listed([f"'{other}'" for other in memory.other_analytes])
     folded = {other.casefold(): other for other in memory.other_analytes}
-    near = [match for own in analytes for match in get_close_matches(own, folded, n=1)]
+    near = [other for other in folded for own in analytes if own in other]
+    near += [match for own in analytes for match in get_close_matches(own, folded, n=1)]
     which = f"'{folded[near[0]]}'" if near else "the laboratory's name"
     return (
         f"{name} has no row of {known}; it has {seen}. Add {which} to laboratory_names of the "

@@ -1,0 +1,279 @@
+"""Laboratory files read whole: columns, analytes, units, basis, roles, and every fault at once."""
+
+import csv
+import io
+import json
+import random
+from collections.abc import Callable
+from pathlib import Path
+
+import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
+
+from fieldplan.base.errors import FieldplanError, LabError
+from fieldplan.campaign.model import Analyte
+from fieldplan.lab import read_lab
+from fieldplan.lab.model import LabTable
+from fieldplan.stats.summary import sample_mean, sample_sd
+from tests.factories import make_campaign
+
+HEAD = "location_id,analyte,as_reported,unit"
+Reader = Callable[..., LabTable]
+REFERENCE = Path(__file__).parents[2] / "reference" / "values.csv"
+
+
+def problems_of(read: Reader, content: str | bytes, **options: object) -> tuple[str, ...]:
+    """Read a file that must be refused; give the lines."""
+    with pytest.raises(LabError) as caught:
+        read(content, **options)
+    return caught.value.problems
+
+
+def test_results_are_converted_and_the_cell_is_kept(read: Reader) -> None:
+    """12000 µg/kg is 12 mg/kg; the laboratory's own text stays beside it, and it is said."""
+    table = read(f"{HEAD}\nA,Lead,12000,µg/kg\nB,lead,<5000,ug/kg\n")
+    first, second = table.rows
+    assert (first.result, first.unit, first.as_reported) == (12.0, "mg/kg", "12000")
+    assert (second.result, second.reporting_limit, second.detected) == (None, 5.0, False)
+    assert table.notes == ("labs.csv: converted from ug/kg to mg/kg and µg/kg to mg/kg.",)
+
+
+def test_ids_that_look_like_numbers_or_nothing_stay_text(read: Reader) -> None:
+    """1e5, 007, NA and 3-5 are names of wells; a reader of tables turns them into something."""
+    ids = ["1e5", "007", "NA", "3-5", "None", "73928e03", "TRUE", "1_000"]
+    table = read(HEAD + "\n" + "".join(f"{name},lead,1,mg/kg\n" for name in ids))
+    assert [row.location_id for row in table.rows] == ids
+
+
+def test_a_limit_comes_from_its_column_in_its_own_unit(read: Reader) -> None:
+    """A limit in µg/kg beside a result in mg/kg is one of the usual traps."""
+    table = read(
+        f"{HEAD},reporting_limit,reporting_limit_unit\nA,lead,ND,mg/kg,500,ug/kg\n"
+        "B,lead,ND,mg/kg,0.5,\n"
+    )
+    assert [row.reporting_limit for row in table.rows] == [0.5, 0.5]
+
+
+def test_a_limit_in_the_cell_wins_and_is_said(read: Reader) -> None:
+    """A dilution raises the limit of one sample; the cell is what the laboratory says of it."""
+    table = read(f"{HEAD},reporting_limit\nA,lead,<5,mg/kg,0.5\n")
+    assert table.rows[0].reporting_limit == 5.0
+    assert "row 2" in table.notes[0]
+
+
+def test_a_qualifier_column_makes_non_detects_and_drops_rejected_rows(read: Reader) -> None:
+    """U: not detected at the number stated. R: not usable, whatever the cell holds."""
+    table = read(
+        f"{HEAD},qualifier_lab\nA,lead,0.5,mg/kg,U\nB,lead,7,mg/kg,J\nC,lead,,mg/kg,R\n"
+        "D,lead,9 R,mg/kg,\n"
+    )
+    assert [(r.location_id, r.result, r.reporting_limit) for r in table.rows] == [
+        ("A", None, 0.5),
+        ("B", 7.0, None),
+    ]
+    assert "row 4 and 5" in table.notes[0]
+
+
+def test_every_fault_is_said_at_once_with_row_value_and_remedy(read: Reader) -> None:
+    """One run must be enough to mend a file."""
+    lines = problems_of(
+        read,
+        f"{HEAD},role,latitude\nA,lead,0,mg/kg,feild sample,95\n,lead,12,,,\nC,,7,mg/kg,,\n",
+    )
+    assert lines == (
+        "labs.csv row 2: as_reported '0' is zero, which no laboratory can measure. Type ND with "
+        "a reporting_limit if nothing was detected.",
+        "labs.csv row 2: role 'feild sample' is not known; did you mean 'field sample'?",
+        "labs.csv row 2: latitude '95' must be decimal degrees from -90 to 90, such as 52.1.",
+        "labs.csv row 3: location_id '' and sample_id are blank. Fill in one of them.",
+        "labs.csv row 3: unit '' is blank. Type the unit; mg/kg is planned.",
+        "labs.csv row 4: analyte '' is blank. Fill it in, or delete the row if it is a footer.",
+    )
+
+
+@pytest.mark.parametrize(
+    ("cells", "says"),
+    [
+        ("A,lead,12,mg/L", "cannot be turned into the campaign's mg/kg"),
+        ("A,lead,12,ppm", "can mean several things"),
+        ("A,lead,12,%", "can mean several things"),
+        ("A,lead,12,�g/kg", "lost a character"),
+        ("A,lead,12,æg/kg", "lost a character"),
+        ("A,lead,12,mg/kg ww", "means wet weight, the campaign dry weight"),
+        ("A,lead,ND,mg/kg", "is a non-detect with no number"),
+        ("A,lead,<,mg/kg", "is a non-detect with no number"),
+        ("A,lead,1e29,g/kg", "outside 1e-30 to 1e30"),
+    ],
+)
+def test_a_unit_or_limit_that_needs_a_guess_is_refused(read: Reader, cells: str, says: str) -> None:
+    """A factor of 1000, or the water in the soil, is not guessed."""
+    (line,) = problems_of(read, f"{HEAD}\n{cells}\n")
+    assert line.startswith("labs.csv row 2: ")
+    assert says in line
+
+
+def test_another_fraction_or_a_mixture_of_bases_is_refused(
+    lab_file: Callable[[str], Path],
+) -> None:
+    """Dissolved is not total; and wet beside dry cannot be averaged."""
+    analyte = Analyte(id="zinc", unit="ug/L", fraction="dissolved")
+    campaign = make_campaign(analyte=(analyte, make_campaign().analyte[0]))
+    path = lab_file(f"{HEAD},fraction\nA,zinc,3,ug/L,Total\n")
+    with pytest.raises(LabError, match="means total, the campaign dissolved"):
+        read_lab(path, campaign)
+    open_basis = make_campaign(analyte=(Analyte(id="lead", unit="mg/kg"),))
+    path = lab_file(f"{HEAD},basis\nA,lead,3,mg/kg,dry\nB,lead,3,mg/kg,W\n")
+    with pytest.raises(LabError, match="mixes dry weight and wet weight"):
+        read_lab(path, open_basis)
+
+
+def test_all_missing_columns_are_named_with_what_may_be_meant(read: Reader) -> None:
+    """A laboratory's own headers are renamed by a column map, and the message writes it out."""
+    lines = problems_of(read, "Station,Parameter,Result,UOM\nA,lead,1,mg/kg\n")
+    assert len(lines) == 4
+    assert '--column "as_reported=Result"' in lines[1]
+    assert 'columns = { as_reported = "Result" }' in lines[1]
+
+
+def test_a_column_map_renames_and_is_itself_checked(read: Reader) -> None:
+    """A wrong name in the map is found, with the nearest one offered."""
+    content = "Station,analyte,Result,unit\nA,lead,1,mg/kg\n"
+    table = read(content, columns={"location_id": "Station", "as_reported": "result"})
+    assert (table.rows[0].location_id, table.rows[0].result) == ("A", 1.0)
+    lines = problems_of(read, content, columns={"as_reportd": "Result", "location_id": "Statoin"})
+    assert "did you mean 'as_reported'?" in lines[0]
+    assert "did you mean 'Station'?" in lines[1]
+
+
+def test_a_doubled_column_and_a_title_above_the_header_are_pointed_out(read: Reader) -> None:
+    """Two units columns cannot both be right; a title row hides the header."""
+    assert "2 columns 'unit'" in problems_of(read, f"{HEAD},unit\nA,lead,1,mg/kg,ug/kg\n")[0]
+    lines = problems_of(read, f"Report 17,,,\n{HEAD}\nA,lead,1,mg/kg\n")
+    assert lines[-1] == "Row 2 of labs.csv looks like the header; delete the rows above."
+
+
+def test_rows_of_other_analytes_are_counted_and_a_near_name_is_offered(read: Reader) -> None:
+    """A report holds forty metals; one planned analyte must be found by its own name."""
+    table = read(f"{HEAD}\nA,lead,1,mg/kg\nA,zinc,2,mg/kg\nB,zinc,2,mg/kg\n")
+    assert len(table.rows) == 1
+    assert table.notes == ("labs.csv: 2 rows of other analytes not read (zinc).",)
+    (line,) = problems_of(read, f"{HEAD}\nA,lead (total),1,mg/kg\n")
+    assert "Add 'lead (total)' to laboratory_names" in line
+
+
+def test_decimal_commas_are_read_in_semicolon_files_and_said(read: Reader) -> None:
+    """Where semicolons part cells and no number has a point, commas are decimal."""
+    table = read(
+        f"{HEAD};reporting_limit".replace(",", ";") + "\nA;lead;8,6;mg/kg;\nB;lead;ND;mg/kg;0,5\n"
+    )
+    assert [row.result or row.reporting_limit for row in table.rows] == [8.6, 0.5]
+    assert table.notes == ("labs.csv: commas were read as decimal commas.",)
+    mixed = HEAD.replace(",", ";") + "\nA;lead;8,6;mg/kg\nB;lead;7.1;mg/kg\n"
+    (line,) = problems_of(read, mixed)
+    assert "row 2: as_reported '8,6' has a comma" in line
+
+
+def test_a_file_without_rows_or_with_all_rejected_is_refused(read: Reader) -> None:
+    """An empty answer is no answer."""
+    assert "has a header but no rows" in problems_of(read, f"{HEAD}\n")[0]
+    content = f"{HEAD},qualifier_lab\nA,lead,1,mg/kg,R\n"
+    assert "every result of lead is rejected" in problems_of(read, content)[0]
+
+
+def reference_rows() -> dict[str, dict[str, str]]:
+    """Read the published values by their id."""
+    with REFERENCE.open(encoding="utf-8", newline="") as stream:
+        return {row["id"]: row for row in csv.DictReader(stream)}
+
+
+@pytest.mark.parametrize(
+    ("kind", "mean_row", "sd_row"),
+    [(1, "A13-020", "A13-021"), (2, "A13-022", "A13-023"), (3, "A13-024", "A13-025")],
+)
+def test_mean_and_sd_reach_the_certified_digits(
+    read: Reader, kind: int, mean_row: str, sd_row: str
+) -> None:
+    """NIST StRD NumAcc1 to 3, generated by definition and read through a file of text.
+
+    NumAcc1: 10000001, 10000003, 10000002. NumAcc2 and 3: one middle value, then 500 pairs of
+    middle − 0.1 and middle + 0.1, with 1.2 and 1000000.2 in the middle. Certified values as in
+    tests/reference/values.csv.
+    """
+    values = {
+        1: ["10000001", "10000003", "10000002"],
+        2: ["1.2", *["1.1", "1.3"] * 500],
+        3: ["1000000.2", *["1000000.1", "1000000.3"] * 500],
+    }[kind]
+    lines = (f"P{number},lead,{value},mg/kg\n" for number, value in enumerate(values))
+    table = read(f"{HEAD}\n" + "".join(lines))
+    results = [row.result for row in table.rows if row.result is not None]
+    rows = reference_rows()
+    assert sample_mean(results) == pytest.approx(float(rows[mean_row]["published_num"]), rel=1e-14)
+    certified = float(rows[sd_row]["published_num"])
+    assert sample_sd(results) == pytest.approx(certified, rel=1e-9)
+
+
+def test_the_hardest_certified_set_keeps_eight_digits(read: Reader) -> None:
+    """NIST StRD NumAcc4 (from memory): 10000000.2 in the middle, certified SD 0.1.
+
+    The values themselves are rounded to 1.9e-9 when stored, hence 8 digits and not more.
+    """
+    values = ["10000000.2", *["10000000.1", "10000000.3"] * 500]
+    lines = (f"P{number},lead,{value},mg/kg\n" for number, value in enumerate(values))
+    results = [row.result for row in read(f"{HEAD}\n" + "".join(lines)).rows if row.result]
+    assert sample_sd(results) == pytest.approx(0.1, rel=5e-8)
+    assert sample_mean(results) == pytest.approx(10000000.2, rel=1e-15)
+
+
+def test_a_published_data_set_keeps_its_mean(read: Reader) -> None:
+    """Copper in flour, 24 results, mean 4.28: Analytical Methods Committee 1989 (A13-031)."""
+    row = reference_rows()["A13-031"]
+    values = json.loads(row["inputs"])["x"]
+    lines = "".join(f"P{i},lead,{value},mg/kg\n" for i, value in enumerate(values))
+    results = [r.result for r in read(f"{HEAD}\n{lines}").rows if r.result is not None]
+    assert sample_mean(results) == pytest.approx(float(row["exact"]), rel=1e-14)
+
+
+@settings(
+    max_examples=150, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture]
+)
+@given(st.lists(st.lists(st.text(max_size=8), min_size=1, max_size=6), max_size=6))
+def test_any_table_is_read_or_refused_in_words(
+    lab_file: Callable[[bytes], Path], rows: list[list[str]]
+) -> None:
+    """A file from anywhere gives results or a FieldplanError, never a traceback."""
+    text = io.StringIO(newline="")
+    csv.writer(text).writerows([HEAD.split(","), *rows])
+    path = lab_file(text.getvalue().encode("utf-8", "replace"))
+    try:
+        table = read_lab(path, make_campaign())
+    except FieldplanError as fault:
+        assert fault.problems  # noqa: PT017 - both outcomes are right, a third is not
+    else:
+        assert table.rows
+
+
+@pytest.mark.parametrize("seed", range(40))
+def test_a_damaged_file_is_read_or_refused_in_words(
+    lab_file: Callable[..., Path], seed: int
+) -> None:
+    """Bytes flipped, cut and repeated in CSV and workbook alike."""
+    from openpyxl import Workbook
+
+    dice = random.Random(seed)
+    workbook, packed = Workbook(), io.BytesIO()
+    sheet = workbook.active
+    assert sheet is not None
+    for row in (HEAD.split(","), ["A", "lead", 12, "mg/kg"], ["B", "lead", "<5", "mg/kg"]):
+        sheet.append(row)
+    workbook.save(packed)
+    text = f"{HEAD}\nA,lead,12,mg/kg\nB,lead,<5,µg/kg\n".encode()
+    for content in (bytearray(packed.getvalue()), bytearray(text)):
+        for _ in range(dice.randint(1, 8)):
+            content[dice.randrange(len(content))] = dice.randrange(256)
+        path = lab_file(bytes(content[: dice.randint(1, len(content))]))
+        try:
+            read_lab(path, make_campaign())
+        except FieldplanError as fault:
+            assert all(line.strip() for line in fault.problems)  # noqa: PT017
