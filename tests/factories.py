@@ -1,6 +1,8 @@
 """Small whole objects for tests, built by hand and not by the code under test."""
 
 from datetime import date
+from functools import cache
+from typing import Any
 
 import shapely
 
@@ -48,12 +50,16 @@ from fieldplan.sizing.model import (
 PROJECTION = SiteProjection(latitude=52.10, longitude=-1.90)
 
 
-def degrees(easting: float, northing: float) -> tuple[float, float]:
-    """Turn site metres into (latitude, longitude) with pyproj, as a second opinion."""
+@cache
+def _transformer() -> Any:
     from pyproj import Transformer
 
-    transformer = Transformer.from_crs(PROJECTION.definition, "EPSG:4326", always_xy=True)
-    longitude, latitude = transformer.transform(easting, northing)
+    return Transformer.from_crs(PROJECTION.definition, "EPSG:4326", always_xy=True)
+
+
+def degrees(easting: float, northing: float) -> tuple[float, float]:
+    """Turn site metres into (latitude, longitude) with pyproj, as a second opinion."""
+    longitude, latitude = _transformer().transform(easting, northing)
     return round(latitude, 7), round(longitude, 7)
 
 

@@ -12,14 +12,26 @@ from fieldplan.packet.sheets.plan_words import (
 )
 from fieldplan.plan.model import Plan
 
-FIGURE_MM = 120.0
+FIGURE_MM = 130.0
 """Width that leaves page one room for the words."""
 
 
+SUMMARY = (
+    "This sheet is a summary. It is no substitute for the documents that a regulator requires, for "
+    "a health and safety plan, or for a permit."
+)
+
+
 def answer_blocks(plan: Plan) -> list[Block]:
-    """Compose page one."""
+    """Compose page one: the answer in words, the site, and what the sheet is not."""
     from fieldplan.packet.charts import site_figure
 
+    figure = replace(site_figure(plan), width_mm=FIGURE_MM)
+    return [*answer_words(plan), figure, Paragraph(SUMMARY, tone="note")]
+
+
+def answer_words(plan: Plan) -> list[Block]:
+    """Say how many, for what, how sure, where, and what is open."""
     first, *others = plan.size.sentences
     blocks: list[Block] = [Paragraph(first, tone="answer"), Paragraph(aim_sentence(plan))]
     stamps = (*alarm_lines(plan), *assumed_lines(plan))
@@ -27,16 +39,7 @@ def answer_blocks(plan: Plan) -> list[Block]:
         blocks.append(Bullets(stamps))
     blocks += [Paragraph(sentence) for sentence in others]
     blocks += [Paragraph(sentence) for sentence in plan.frame.population.sentences[:1]]
-    blocks += [stratum_table(plan), *extra_lines(plan), *open_blocks(plan)]
-    blocks += [replace(site_figure(plan), width_mm=FIGURE_MM)]
-    blocks.append(
-        Paragraph(
-            "This sheet is a summary. It is no substitute for the documents that a regulator "
-            "requires, for a health and safety plan, or for a permit.",
-            tone="note",
-        )
-    )
-    return blocks
+    return [*blocks, stratum_table(plan), *extra_lines(plan), *open_blocks(plan)]
 
 
 def alarm_lines(plan: Plan) -> tuple[str, ...]:

@@ -34,9 +34,9 @@ def deviation_rule(plan: Plan) -> tuple[str, ...]:
     if plan.frame.kind == "list":
         first = "A unit of the list is never moved."
     elif field.offset_within_m:
-        first = f"The location may move by up to {number(field.offset_within_m)} m."
+        first = f"The field lead may move a location by up to {number(field.offset_within_m)} m."
     else:
-        first = "The location may not be moved."
+        first = "No location may be moved."
     steps = [f"{first} {field.offset_rule}".strip()]
     if plan.locations.of_class("alternate"):
         steps.append(

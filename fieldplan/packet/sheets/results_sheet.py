@@ -68,6 +68,13 @@ def answer_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
     """Compose page one: the answer in sentences, each once, and its figure."""
     from fieldplan.packet.charts import interval_figure
 
+    level = plan.campaign.deciding_analyte.action_level
+    figure = interval_figure(estimate, action_level=level)
+    return [*answer_words(estimate), figure, *after_figure(estimate)]
+
+
+def answer_words(estimate: Estimate) -> list[Block]:
+    """Say the answer, the level and the population, each once."""
     first, *others = estimate.sentences
     blocks: list[Block] = [Paragraph(first, tone="answer")]
     said = [*others, estimate.level_sentence, estimate.population_sentence]
@@ -75,12 +82,15 @@ def answer_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
         if sentence and sentence != first:
             changed = sentence.startswith("CHANGED AFTER RESULTS")
             blocks.append(Paragraph(sentence, tone="answer" if changed else "plain"))
-    level = plan.campaign.deciding_analyte.action_level
-    blocks.append(interval_figure(estimate, action_level=level))
+    return blocks
+
+
+def after_figure(estimate: Estimate) -> list[Block]:
+    """Say what such an interval delivers, and the kind that was not declared."""
+    blocks: list[Block] = []
     if estimate.coverage_sentence and estimate.coverage_sentence not in estimate.sentences:
         blocks.append(Paragraph(estimate.coverage_sentence))
-    blocks.append(Paragraph(other_interval(estimate), tone="note"))
-    return blocks
+    return [*blocks, Paragraph(other_interval(estimate), tone="note")]
 
 
 def other_interval(estimate: Estimate) -> str:

@@ -6,8 +6,9 @@ from functools import cache
 
 from fieldplan.base.document import Document, Paragraph, Table
 from fieldplan.estimate.model import Change, Interval
-from fieldplan.packet.sheets.results_sheet import answer_blocks, results_sheet
-from fieldplan.packet.sheets.returned import relative_difference
+from fieldplan.packet.sheets.results_sheet import after_figure, answer_words, results_sheet
+from fieldplan.packet.sheets.results_tables import change_blocks, stratum_table
+from fieldplan.packet.sheets.returned import field_blocks, relative_difference
 from tests.factories import make_estimate, make_plan, make_returns
 from tests.unit.packet.sheet_text import headings_of, text_of, words_of
 
@@ -18,11 +19,9 @@ def standard() -> Document:
     return results_sheet(make_plan(), make_estimate())
 
 
-def sheet_text(**changes: object) -> str:
-    """All words of the sheet for a changed estimate."""
-    if not changes:
-        return words_of(standard())
-    return words_of(results_sheet(make_plan(), make_estimate(**changes)))
+def sheet_text() -> str:
+    """All words of the sheet."""
+    return words_of(standard())
 
 
 def test_the_first_words_are_the_answer():
@@ -34,8 +33,9 @@ def test_the_first_words_are_the_answer():
 
 
 def page_one(**changes: object) -> str:
-    """All that stands before the first page break."""
-    blocks = answer_blocks(make_plan(), make_estimate(**changes))
+    """The words of page one."""
+    estimate = make_estimate(**changes)
+    blocks = [*answer_words(estimate), *after_figure(estimate)]
     return "\n".join(text_of(block) for block in blocks)
 
 
@@ -66,13 +66,12 @@ def test_a_change_is_printed_with_both_answers_and_on_page_one():
         "interval": Interval("two-sided", 0.8, 43.0, 82.0),
         "sentences": (make_estimate().sentences[0], warning),
     }
-    text = sheet_text(**changes)
-    assert "CHANGED AFTER RESULTS: confidence\n" in text
+    estimate = make_estimate(**changes)
+    text = "\n".join(text_of(block) for block in change_blocks(estimate))
+    assert text.startswith("CHANGED AFTER RESULTS: confidence\n")
     assert "mean 62.5 mg/kg, 95 % interval 29.1 to 95.9 mg/kg" in text
     assert "mean 62.5 mg/kg, 80 % interval 43.0 to 82.0 mg/kg" in text
-    assert "None. Every rule" not in text
-    blocks = results_sheet(make_plan(), make_estimate(**changes)).blocks
-    assert Paragraph(warning, tone="answer") in blocks
+    assert Paragraph(warning, tone="answer") in answer_words(estimate)
 
 
 def test_every_result_stands_as_reported_with_what_became_of_it():
@@ -96,7 +95,8 @@ def test_lost_and_moved_locations_are_accounted_for():
 def test_without_a_field_return_the_sheet_says_so():
     """Planned positions are then taken on trust."""
     bare = replace(make_returns(), field_file="", field_sha256="")
-    assert "No field return was given" in sheet_text(returns=bare)
+    text = "\n".join(text_of(block) for block in field_blocks(make_plan(), bare))
+    assert "No field return was given" in text
 
 
 def test_files_stand_with_their_fingerprints():
@@ -116,7 +116,8 @@ def test_borrowed_spread_is_marked():
     """A stratum with one result has no spread of its own."""
     mean = make_estimate().mean
     strata = (replace(mean.strata[0], n=1, variance_borrowed=True), mean.strata[1])
-    assert "19.7 borrowed" in sheet_text(mean=replace(mean, strata=strata))
+    table = stratum_table(make_plan(), make_estimate(mean=replace(mean, strata=strata)))
+    assert "19.7 borrowed" in table.rows[0]
 
 
 def test_no_word_of_the_sheet_is_a_verdict():
