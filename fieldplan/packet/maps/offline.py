@@ -25,6 +25,35 @@ _POLAR_CRS = """L.CRS.Fieldplan%(name)s = L.extend({}, L.CRS.EPSG4326, {code: "l
   transformation: new L.Transformation(%(scale).10f / 180, 1, -1 / 180, 0.5)});"""
 
 
+# A character of private use that stands for "{" while folium renders, see ``inert``.
+_BRACE = "\ue000"
+
+
+def inert(value: Any) -> Any:
+    """Take the meaning from braces in data that goes through folium.
+
+    folium renders a layer and then reads the result as a template once more, so that typed
+    ``{{ … }}`` would be run while the page is written. ``render_offline`` puts the braces back.
+
+    Parameters
+    ----------
+    value : str, list, dict or anything else
+        Data of a layer; keys of dicts are ours and stay.
+
+    Examples
+    --------
+    >>> inert({"name": ["{{ 7 * 7 }}", 1]})
+    {'name': ['\ue000\ue000 7 * 7 }}', 1]}
+    """
+    if isinstance(value, str):
+        return value.replace(_BRACE, "\ufffd").replace("{", _BRACE)
+    if isinstance(value, dict):
+        return {key: inert(held) for key, held in value.items()}
+    if isinstance(value, list):
+        return [inert(held) for held in value]
+    return value
+
+
 class OfflineMap(folium.Map):
     """A folium map whose lists of remote scripts and styles are empty."""
 
@@ -67,7 +96,7 @@ class Call(MacroElement):
         super().__init__()  # type: ignore[no-untyped-call]
         self._name = "Call"
         self.function = function
-        self.facts = facts
+        self.facts = inert(facts)
         self._layers = layers
 
     def layers(self) -> str:
@@ -142,7 +171,7 @@ def render_offline(page: OfflineMap) -> str:
     """
     root = figure_of(page)
     _number_elements(root)
-    html = str(root.render())
+    html = str(root.render()).replace("\\ue000", "\\u007b").replace(_BRACE, "{")
     return html.replace("<html>", '<html lang="en">', 1)
 
 

@@ -17,6 +17,7 @@ from fieldplan.packet.maps.offline import (
     Raw,
     add_head,
     figure_of,
+    inert,
     polar_crs,
     render_offline,
 )
@@ -58,7 +59,7 @@ def screen_map(plan: Plan) -> str:
     """
     rows, shapes = point_rows(plan), outlines(plan)
     page = _empty_map(plan)
-    titles = layer_titles(plan, shapes)
+    titles = inert(layer_titles(plan, shapes))
     shown = [shape for shape in shapes if shape.kind != "boundary"]
     layers = [
         _location_layer(plan, rows, name, titles[name]).add_to(page)
@@ -114,7 +115,7 @@ def _outline_layer(
                 "properties": _outline_told(shape) | {"style": _outline_style(plan, shape, number)},
             }
         )
-    collection = {"type": "FeatureCollection", "features": features}
+    collection = {"type": "FeatureCollection", "features": inert(features)}
     told = JsCode("fieldplanPopup") if kind == "excluded" else None
     return folium.GeoJson(collection, name=title, smooth_factor=0.3, on_each_feature=told)
 
@@ -154,7 +155,7 @@ def _location_layer(
         if row.location.location_class == name
     ]
     return folium.GeoJson(
-        {"type": "FeatureCollection", "features": features},
+        {"type": "FeatureCollection", "features": inert(features)},
         name=title,
         show=name != "alternate",
         on_each_feature=JsCode("fieldplanPopup"),
