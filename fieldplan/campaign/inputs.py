@@ -21,7 +21,13 @@ def resolve_file(read: ReadCampaign, written: str) -> Path:
 
 
 def file_part(folder: Path, written: str) -> str:
-    """Drop the layer from ``site.gpkg#parcels``; a file that is so named goes first."""
+    """Drop the layer behind ``#``; a file that is so named goes first.
+
+    Examples
+    --------
+    >>> file_part(Path("no-such-folder"), "site.gpkg#parcels")
+    'site.gpkg'
+    """
     if "#" not in written:
         return written
     try:

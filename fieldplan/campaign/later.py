@@ -54,7 +54,13 @@ MANY = {
 
 
 def later_value(table: str, key: str, value: object) -> str | None:
-    """Name what a value stands for that is not done yet; None when it is not known either."""
+    """Name what a value stands for that is not done yet; None when it is not known either.
+
+    Examples
+    --------
+    >>> later_value("frame", "kind", "line"), later_value("frame", "kind", "site")
+    ('frames along lines such as shores and reaches', None)
+    """
     if not isinstance(value, str):
         return None
     known = _LATER_VALUES.get((table, key), {})
@@ -62,5 +68,11 @@ def later_value(table: str, key: str, value: object) -> str | None:
 
 
 def later_key(key: str) -> str | None:
-    """Name what a key stands for that is not done yet; None when it is not known either."""
+    """Name what a key stands for that is not done yet; None when it is not known either.
+
+    Examples
+    --------
+    >>> later_key("composites"), later_key("titel")
+    ('composite samples', None)
+    """
     return _LATER_KEYS.get(key.lower())

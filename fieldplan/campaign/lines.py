@@ -40,7 +40,13 @@ def line_map(text: str) -> dict[KeyPath, int]:
 
 
 def line_of(path: KeyPath, lines: dict[KeyPath, int]) -> int:
-    """Return the line of a path, or of the nearest table above it; 1 when there is none."""
+    """Return the line of a path, or of the nearest table above it; 1 when there is none.
+
+    Examples
+    --------
+    >>> line_of(("plan", "title"), {("plan",): 3}), line_of(("draw",), {("plan",): 3})
+    (3, 1)
+    """
     for end in range(len(path), 0, -1):
         line = lines.get(path[:end]) or lines.get(_without_index(path[:end]))
         if line is not None:

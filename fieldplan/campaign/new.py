@@ -83,9 +83,9 @@ def campaign_text(answers: Answers) -> str:
 
     Examples
     --------
-    >>> text = campaign_text(Answers(seed=7, analyte="Lead", unit="mg/kg"))
-    >>> [line for line in text.splitlines() if line.startswith("unit")]
-    ['unit = "mg/kg"']
+    >>> text = campaign_text(Answers(seed=7, analyte="Lead"))
+    >>> [line for line in text.splitlines() if line.startswith("name")]
+    ['name = "Lead"']
     """
     parts = (
         [f"#:schema ./{SCHEMA_NAME}"],

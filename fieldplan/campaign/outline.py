@@ -91,7 +91,14 @@ def read_position(text: str) -> tuple[float, float]:
 
 
 def corners_geojson(corners: Sequence[tuple[float, float]]) -> str:
-    """Write corners as a GeoJSON polygon (RFC 7946: longitude first, counter-clockwise)."""
+    """Write corners as a GeoJSON polygon (RFC 7946: longitude first, counter-clockwise).
+
+    Examples
+    --------
+    >>> collection = json.loads(corners_geojson([(52.1, -1.9), (52.1, -1.8), (52.2, -1.8)]))
+    >>> collection["features"][0]["geometry"]["coordinates"]
+    [[[-1.9, 52.1], [-1.8, 52.1], [-1.8, 52.2], [-1.9, 52.1]]]
+    """
     ring = [(longitude, latitude) for latitude, longitude in corners]
     doubled_area = sum(
         x0 * y1 - x1 * y0 for (x0, y0), (x1, y1) in zip(ring, ring[1:] + ring[:1], strict=True)

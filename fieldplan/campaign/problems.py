@@ -21,7 +21,13 @@ class Problem:
 
 
 def shown(value: object) -> str:
-    """Show a value as it is typed in the file, shortened to one short line."""
+    """Show a value as it is typed in the file, shortened to one short line.
+
+    Examples
+    --------
+    >>> shown("a b"), shown(True), shown({"a": 1})
+    ('"a b"', 'true', 'a table')
+    """
     if isinstance(value, dict):
         return "a table"
     if isinstance(value, list):
@@ -37,7 +43,13 @@ def shown(value: object) -> str:
 
 
 def key_name(path: KeyPath, data: Any) -> str:
-    """Name a key as in ``objective.analyte``, or ``analyte[2].unit`` where there are several."""
+    """Name a key as in ``objective.analyte``, or ``analyte[2].unit`` where there are several.
+
+    Examples
+    --------
+    >>> key_name(("analyte", 1, "unit"), {"analyte": [{}, {"unit": 3}]})
+    'analyte[2].unit'
+    """
     name = ""
     here = data
     for step in path:
@@ -54,14 +66,26 @@ def key_name(path: KeyPath, data: Any) -> str:
 
 
 def near_miss(word: str, known: Sequence[str]) -> str:
-    """Return `` Did you mean "x"?`` with a leading blank, or nothing."""
+    """Return `` Did you mean "x"?`` with a leading blank, or nothing.
+
+    Examples
+    --------
+    >>> near_miss("titel", ["id", "title"]), near_miss("xyz", ["id", "title"])
+    (' Did you mean "title"?', '')
+    """
     by_small_letters = {name.lower(): name for name in known}
     near = get_close_matches(word.lower(), list(by_small_letters), n=1, cutoff=0.6)
     return f' Did you mean "{by_small_letters[near[0]]}"?' if near else ""
 
 
 def meaning(table: str, key: str) -> str:
-    """Say what a key is, in the words that editors and the reference show."""
+    """Say what a key is, in the words that editors and the reference show.
+
+    Examples
+    --------
+    >>> meaning("draw", "seed")
+    'a whole number'
+    """
     return MEANING.get(f"{table}.{key}".lstrip("."), key).split(";")[0]
 
 
@@ -73,12 +97,24 @@ def _schema() -> dict[str, Any]:
 
 
 def accepted(model_name: str, key: str) -> str:
-    """Say what a key accepts, e.g. ``a number above 0``."""
+    """Say what a key accepts.
+
+    Examples
+    --------
+    >>> accepted("Objective", "half_width"), accepted("Paper", "size")
+    ('a number above 0', 'one of "A4", "Letter"')
+    """
     return _accepted(_property(model_name, key))
 
 
 def choices(model_name: str, key: str) -> list[str]:
-    """List the words that a key accepts; empty where it accepts more than a few words."""
+    """List the words that a key accepts; empty where it accepts more than a few words.
+
+    Examples
+    --------
+    >>> choices("Objective", "assurance"), choices("Draw", "seed")
+    (['plain'], [])
+    """
     schema = _property(model_name, key)
     parts = [schema, *schema.get("anyOf", [])]
     words = [word for part in parts for word in part.get("enum", [part.get("const")])]

@@ -2,6 +2,7 @@
 
 import json
 from importlib.resources import files
+from pathlib import Path
 from typing import Any
 
 from pydantic import BaseModel
@@ -50,6 +51,14 @@ def campaign_schema() -> dict[str, Any]:
 def schema_text() -> str:
     """Return the schema as shipped: JSON with two blanks of indent and a last line feed."""
     return (files("fieldplan.campaign") / "schema.json").read_text(encoding="utf-8")
+
+
+def is_our_schema(path: Path) -> bool:
+    """Tell whether a file is a schema that this or another version of fieldplan wrote."""
+    try:
+        return f'"title": "{TITLE}"' in path.read_text(encoding="utf-8")[:500]
+    except (OSError, ValueError):
+        return False
 
 
 def generated_text() -> str:

@@ -26,7 +26,13 @@ class Screened:
 
 
 def is_fill_in(value: object) -> bool:
-    """Tell whether a value stands for "not known yet", in any letters and spacing."""
+    """Tell whether a value stands for "not known yet", in any letters and spacing.
+
+    Examples
+    --------
+    >>> is_fill_in("Fill-in"), is_fill_in("FILL IN the form"), is_fill_in(3)
+    (True, False, False)
+    """
     if not isinstance(value, str):
         return False
     return " ".join(value.replace("-", " ").replace("_", " ").upper().split()) == FILL_IN
@@ -57,7 +63,13 @@ def screen(content: dict[str, Any]) -> Screened:
 
 
 def table_name(path: KeyPath) -> str:
-    """Name the table of a path without positions: ``frame.exclusion``."""
+    """Name the table of a path without positions.
+
+    Examples
+    --------
+    >>> table_name(("frame", 0, "exclusion", 1))
+    'frame.exclusion'
+    """
     return ".".join(step for step in path if isinstance(step, str))
 
 

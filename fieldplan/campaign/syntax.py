@@ -42,6 +42,13 @@ def parse(text: str, name: str) -> dict[str, Any]:
     ------
     CampaignError
         One line for each faulty line of the text, with what to do about it.
+
+    Examples
+    --------
+    >>> parse("sigma = 27,5", "c.toml")
+    Traceback (most recent call last):
+    fieldplan.base.errors.CampaignError: c.toml:1: sigma = 27,5: expected newline or end of
+    document after a statement. Numbers take a point, not a comma: write 27.5.
     """
     faults: list[str] = []
     lines = text.split("\n")

@@ -54,6 +54,11 @@ def read_number(text: str, *, what: str = "a number above 0") -> float:
     ------
     CampaignError
         No number, a decimal comma, or not above 0.
+
+    Examples
+    --------
+    >>> read_number(" 27.5 ")
+    27.5
     """
     plain = text.strip()
     try:
@@ -69,7 +74,13 @@ def read_number(text: str, *, what: str = "a number above 0") -> float:
 
 
 def read_count(text: str) -> int:
-    """Read a number of results: whole, at least 2."""
+    """Read a number of results: whole, at least 2.
+
+    Examples
+    --------
+    >>> read_count("8")
+    8
+    """
     plain = text.strip()
     if not plain.isascii() or not plain.isdigit() or len(plain) > 9 or int(plain) < 2:
         message = f"a whole number of at least 2 is accepted (got '{plain}'). Write digits only."

@@ -13,7 +13,7 @@ from fieldplan.base.files import write_atomically
 from fieldplan.campaign.new import Answers, campaign_text
 from fieldplan.campaign.outline import read_position
 from fieldplan.campaign.read import Inspection, inspect_text
-from fieldplan.campaign.schema import SCHEMA_NAME, TITLE, schema_text
+from fieldplan.campaign.schema import SCHEMA_NAME, is_our_schema, schema_text
 from fieldplan.cli.answers import (
     OUTLINE_NAME,
     Start,
@@ -202,7 +202,7 @@ def _write(target: Path, text: str, outline: str | None) -> None:
         _refuse_to_replace(folder / OUTLINE_NAME)
         files[folder / OUTLINE_NAME] = outline
     schema = folder / SCHEMA_NAME
-    if schema.exists() and not _is_our_schema(schema):
+    if schema.exists() and not is_our_schema(schema):
         message = f"{schema} is there already and is no schema of fieldplan. Move it away."
         raise FieldplanError(message)
     try:
@@ -213,14 +213,6 @@ def _write(target: Path, text: str, outline: str | None) -> None:
     for path, content in files.items():
         write_atomically(path, content)
     write_atomically(target, text)
-
-
-def _is_our_schema(path: Path) -> bool:
-    """Tell a schema that an earlier ``new`` wrote."""
-    try:
-        return f'"title": "{TITLE}"' in path.read_text(encoding="utf-8")[:500]
-    except (OSError, ValueError):
-        return False
 
 
 def _say_what_next(path: Path, seed: int, inspection: Inspection) -> None:
