@@ -79,21 +79,21 @@ def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
             f"{percent(chance)}; the plain formula asks for {plain}."
         )
     known = sorted({part.results for part in question.parts if part.results is not None})
-    behind = " to ".join(str(n) for n in {known[0]: 0, known[-1]: 0})
+    behind = " to ".join(str(n) for n in {known[0]: 0, known[-1]: 0}) + " results"
     if len(question.parts) > 1:
         behind += " a stratum"
     if needed != plain or question.assurance is not None:
         plain_chance = precision.chance(counts.plain) or 0.0
         return (
             f"The chance that {needed} are enough is {percent(chance)}, sigma being known from "
-            f"{behind} results only; the plain formula ({plain}) would be enough in "
+            f"{behind} only; the plain formula ({plain}) would be enough in "
             f"{percent(plain_chance)} of campaigns."
         )
     more = listed([str(entry.n) for entry in assured])
     shares = listed([percent(entry.assurance) for entry in assured])
     return (
         f"The chance that {needed} are enough is {percent(chance)}: the plain formula is enough in "
-        f"only about half of campaigns, and sigma is known from {behind} results only. For a "
+        f"only about half of campaigns, and sigma is known from {behind} only. For a "
         f"chance of {shares} it takes {more}."
     )
 

@@ -98,7 +98,7 @@ def chi_square_share(value: float, degrees_of_freedom: float) -> float:
     >>> round(chi_square_share(14.067, 7), 4)
     0.95
     """
-    if value <= 0:
+    if value < 1e-300:
         return 0.0
     if math.isinf(value):
         return 1.0
