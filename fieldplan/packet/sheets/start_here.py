@@ -45,9 +45,11 @@ def next_steps(plan: Plan) -> tuple[str, ...]:
         f"When results are back, run: fieldplan estimate {name} LAB_FILE --field field_return.csv"
     )
     if plan.issued_by:
+        held = any(caution.holds_work for caution in plan.open_items)
+        first = "No work before the hold points below are settled. " if held else ""
         return (
-            "Load the point file into the receiver and open the map once before leaving; it works "
-            "without a signal.",
+            f"{first}Load the point file into the receiver and open the map once before leaving; "
+            "it works without a signal.",
             "In the field, fill in field_return.csv or the printed form: what was taken, where, "
             "when, and why if it was changed.",
             returned,
@@ -91,5 +93,6 @@ def office_files(plan: Plan) -> tuple[tuple[str, str], ...]:
         (f"{name}-locations.xlsx", "all locations for a spreadsheet"),
         ("campaign.toml, inputs", "what the plan was made from, as it was"),
         ("samples_key.csv", "which sample repeats which; never for the crew or the laboratory"),
+        ("manifest.json", "the fingerprint of every file of the packet"),
         ("record.json", "all that is needed to draw again and to estimate; the key is in it too"),
     )

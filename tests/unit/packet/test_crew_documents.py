@@ -75,6 +75,7 @@ def test_start_here_of_an_issued_packet_leads_to_the_estimate():
     text = words_of(start_here(plan))
     assert "fieldplan estimate QF-r01 LAB_FILE" in text
     assert "fieldplan issue" not in text
+    assert "No work before the hold points below are settled." in text
 
 
 def test_start_here_says_when_nothing_is_open():
