@@ -7,6 +7,10 @@ from typing import Any
 KeyPath = tuple[str | int, ...]
 
 
+_MOST_CHARACTERS = 2_000_000
+"""Read again and again while a list of thousands of lines is not closed; then lines are guessed."""
+
+
 def line_map(text: str) -> dict[KeyPath, int]:
     r"""Map each path of a TOML text to the line on which it first stands.
 
@@ -63,6 +67,7 @@ def _statements(text: str) -> Iterator[tuple[int, str, dict[str, Any]]]:
     """Yield (line, text, content) of every header and every key with its value."""
     waiting: list[str] = []
     start = 1
+    budget = _MOST_CHARACTERS
     for number, line in enumerate(text.replace("\r\n", "\n").split("\n"), start=1):
         if not waiting:
             start = number
@@ -72,6 +77,9 @@ def _statements(text: str) -> Iterator[tuple[int, str, dict[str, Any]]]:
         if len(waiting) > 1 and not any(end in line for end in ('"""', "'''", "]", "}")):
             continue
         statement = "\n".join(waiting)
+        budget -= len(statement)
+        if budget < 0:
+            return
         try:
             content = tomllib.loads(statement)
         except (ValueError, RecursionError):

@@ -11,7 +11,7 @@ from fieldplan.campaign.later import MANY, later_key
 from fieldplan.campaign.lines import KeyPath
 from fieldplan.campaign.model import FILL_IN, Campaign
 from fieldplan.campaign.problems import Problem, meaning, near_miss, shown
-from fieldplan.campaign.shape import Shape, shapes
+from fieldplan.campaign.shape import Shape, key_homes, shapes
 
 _TEXT_CONTROLS = "\n\r\t"
 
@@ -86,11 +86,14 @@ def _table(content: Any, model: type[BaseModel], path: KeyPath, found: Screened)
 
 
 def _unknown(key: str, known: list[str], path: KeyPath) -> str:
-    """Word an unknown key: not done yet, a near miss, or the list of what there is."""
+    """Word an unknown key: not done yet, of another table, a near miss, or what there is."""
     later = later_key(key)
     if later:
         return f"not done yet in this version ({later}). Take it out."
     where = f"[{table_name(path)}]" if path else "the file"
+    homes = key_homes().get(key, [])
+    if homes:
+        return f"this key does not belong in {where}. Write it below {' or '.join(homes)}."
     near = near_miss(key, known)
     listed = "" if near else f" It takes {', '.join(known)}."
     return f"unknown key in {where}.{near}{listed}"

@@ -9,6 +9,8 @@ from typing import Any, Literal, Union, get_args, get_origin
 
 from pydantic import BaseModel
 
+from fieldplan.campaign.model import Campaign
+
 PATH_KEYS = frozenset({"boundary", "strata", "list_file", "file", "pilot"})
 """Keys whose value names a file, relative to the campaign file."""
 
@@ -30,6 +32,33 @@ def shapes(model: type[BaseModel]) -> dict[str, Shape]:
         name: Shape("file") if name in PATH_KEYS else _shape(field.annotation)
         for name, field in model.model_fields.items()
     }
+
+
+@cache
+def key_homes() -> dict[str, list[str]]:
+    """Map each key that is not a table to the headers of the tables that take it.
+
+    Examples
+    --------
+    >>> key_homes()["seed"], key_homes()["pilot"]
+    (['[draw]'], ['[[sigma]]'])
+    """
+    homes: dict[str, list[str]] = {}
+    _note_homes(Campaign, "", homes)
+    return homes
+
+
+def _note_homes(model: type[BaseModel], above: str, homes: dict[str, list[str]]) -> None:
+    """Note the keys of the tables below one table."""
+    for name, shape in shapes(model).items():
+        if shape.model is None:
+            continue
+        dotted = f"{above}{name}"
+        header = f"[[{dotted}]]" if shape.kind == "tables" else f"[{dotted}]"
+        for key, inner in shapes(shape.model).items():
+            if inner.model is None:
+                homes.setdefault(key, []).append(header)
+        _note_homes(shape.model, f"{dotted}.", homes)
 
 
 def _shape(annotation: Any) -> Shape:

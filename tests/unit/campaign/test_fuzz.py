@@ -121,3 +121,19 @@ def test_line_map_ignores_what_only_looks_like_a_key(ends):
         ("b", 0, "c"): 11,
         ("b", 0, "c", "y"): 12,
     }
+
+
+def test_list_of_thousands_of_lines_is_mapped_with_bounded_work(monkeypatch):
+    """Each line might close the list; reading it again at each grows with the square."""
+    read = []
+
+    def counting(text: str) -> dict:
+        read.append(len(text))
+        return loads(text)
+
+    loads = tomllib.loads
+    monkeypatch.setattr(tomllib, "loads", counting)
+    lines = line_map("x = 0\na = [\n" + "[1],\n" * 5_000 + "]\n")
+    assert lines[("x",)] == 1
+    # 5 000 lines of 5 characters: 62 million characters without the bound of 2 million.
+    assert sum(read) < 2_100_000

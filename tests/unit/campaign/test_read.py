@@ -314,6 +314,15 @@ VALUES = [
         '5: plan.titel: unknown key in [plan]. Did you mean "title"?',
     ),
     (
+        ("seed = 12", 'seed = 12\nboundary = "b.geojson"'),
+        "29: draw.boundary: this key does not belong in [draw]. Write it below [[frame]].",
+    ),
+    (
+        ("format = 1", 'format = 1\nreason = "x"'),
+        "2: reason: this key does not belong in the file. Write it below [[frame.exclusion]] or "
+        "[[targeted]] or [loss].",
+    ),
+    (
         ("[[sigma]]", "[[sigmas]]"),
         '24: sigmas: unknown key in the file. Did you mean "sigma"?',
     ),
