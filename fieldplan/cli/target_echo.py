@@ -1,5 +1,6 @@
 """What a typed target means: as half-width, standard error, n, and the chance that n is enough."""
 
+import os
 from dataclasses import replace
 from math import sqrt
 from pathlib import Path
@@ -86,7 +87,9 @@ def _pilot_spread(answers: Answers, folder: Path) -> "StratumSpread | None":
         return None
     campaign = read.campaign
     analyte = campaign.deciding_analyte.id
-    table = read_lab(folder / answers.pilot, campaign)
+    # The folder may not be there yet, so the system cannot follow ".." out of it.
+    place = Path(os.path.normpath(folder.resolve() / answers.pilot))
+    table = read_lab(place, campaign)
     places, _ = pilot_locations(table, analyte, duplicates=campaign.rules.duplicates)
     return measured_spread(places, analyte, "site")
 

@@ -117,7 +117,8 @@ def test_stations_make_a_list(folder):
 
 def test_paths_are_written_from_the_campaign_file(folder):
     """The folder can then be moved as a whole."""
-    new(*FULL, "--out", "plans/2026")
+    result = new(*FULL, "--out", "plans/2026")
+    assert "With the pilot's standard deviation" in said(result)
     place = folder / "plans" / "2026" / "campaign.toml"
     assert written(place)["frame"][0]["boundary"] == "../../site.geojson"
     assert read_campaign(place).campaign.sigma[0].pilot == "../../pilot.csv"
