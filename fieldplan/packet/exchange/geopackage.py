@@ -19,6 +19,8 @@ if TYPE_CHECKING:
     from geopandas import GeoDataFrame
 
 LAYERS = {"boundary": "boundary", "stratum": "strata", "excluded": "exclusions"}
+# Older programs warn about files of the current 1.4, which we have no need of.
+STANDARD_VERSION = "1.2"
 _ENVELOPE_BYTES = (0, 32, 48, 48, 64)
 
 
@@ -40,7 +42,13 @@ def write_geopackage(plan: Plan) -> bytes:
     shapes = outlines(plan)
     with tempfile.TemporaryDirectory() as folder, _stamped(plan):
         path = Path(folder) / "locations.gpkg"
-        write_dataframe(_locations(plan), path, layer="locations", geometry_type="Point")
+        write_dataframe(
+            _locations(plan),
+            path,
+            layer="locations",
+            geometry_type="Point",
+            dataset_options={"VERSION": STANDARD_VERSION},
+        )
         for kind, layer in LAYERS.items():
             chosen = [shape for shape in shapes if shape.kind == kind]
             write_dataframe(

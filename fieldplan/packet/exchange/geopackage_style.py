@@ -81,14 +81,14 @@ def _locations_document() -> ET.Element:
         (name, mark.title, _marker_symbol(str(number), mark.shape, mark.fill, mark.edge))
         for number, (name, mark) in enumerate(MARKS.items())
     ]
-    document = _sorted_document("class", [*classes])
+    document = _sorted_document("class", classes)
     labelling = ET.SubElement(document, "labeling", type="simple")
     settings = ET.SubElement(labelling, "settings")
     written = ET.SubElement(settings, "text-style", fieldName="short_name", fontSize="9")
     ET.SubElement(
         written, "text-buffer", bufferDraw="1", bufferSize="0.8", bufferColor="255,255,255,255"
     )
-    ET.SubElement(settings, "placement", placement="6", dist="0")
+    ET.SubElement(settings, "placement", placement="6", dist="2", distUnits="MM")
     return document
 
 

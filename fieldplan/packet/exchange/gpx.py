@@ -2,12 +2,18 @@
 
 from datetime import UTC, datetime, time
 from pathlib import Path
+from typing import TYPE_CHECKING
+
+import numpy as np
 
 from fieldplan.packet.exchange.outlines import outlines, rings, within_180
 from fieldplan.packet.exchange.plain_text import plain
 from fieldplan.packet.exchange.read_points import ReadPoint
 from fieldplan.packet.exchange.rows import DATUM, PointRow, point_rows
 from fieldplan.plan.model import Plan
+
+if TYPE_CHECKING:
+    from gpxpy.gpx import GPXTrack, GPXWaypoint
 
 SYMBOLS = {"random": "Waypoint", "alternate": "Dot", "targeted": "Flag"}
 
@@ -41,7 +47,7 @@ def write_gpx(plan: Plan) -> bytes:
     return str(document.to_xml(version="1.1")).encode("utf-8")
 
 
-def _waypoint(row: PointRow):  # type: ignore[no-untyped-def]
+def _waypoint(row: PointRow) -> "GPXWaypoint":
     from gpxpy.gpx import GPXWaypoint
 
     cells = row.cells()
@@ -61,7 +67,7 @@ def _waypoint(row: PointRow):  # type: ignore[no-untyped-def]
     )
 
 
-def _track(title: str, ring):  # type: ignore[no-untyped-def]
+def _track(title: str, ring: np.ndarray) -> "GPXTrack":
     from gpxpy.gpx import GPXTrack, GPXTrackPoint, GPXTrackSegment
 
     track = GPXTrack(name=title)
