@@ -1,5 +1,7 @@
 """Units as people write them: square metres, hectares and acres side by side."""
 
+import math
+
 SQUARE_METRES_PER_HECTARE = 10_000.0
 SQUARE_METRES_PER_ACRE = 4046.8564224
 """The international acre: 4840 square yards of 0.9144 m."""
@@ -35,8 +37,8 @@ def significant(value: float, digits: int = 3) -> str:
     >>> significant(12345.6), significant(2.36), significant(0.00423), significant(0.0)
     ('12,300', '2.36', '0.00423', '0')
     """
-    if value == 0:
-        return "0"
+    if value == 0 or not math.isfinite(value):
+        return f"{value:g}"
     rounded = float(f"{value:.{digits - 1}e}")
     exponent = int(f"{rounded:e}".partition("e")[2])
     return f"{rounded:,.{max(digits - 1 - exponent, 0)}f}"

@@ -10,7 +10,7 @@ from fieldplan.frame.exclusions import read_exclusions
 from fieldplan.frame.ground import FrameFiles, read_ground
 from fieldplan.frame.model import ExcludedArea, Frame, Stratum
 from fieldplan.frame.places import read_targeted
-from fieldplan.frame.plane import ARC_SEGMENTS, merged
+from fieldplan.frame.plane import merged, widened
 from fieldplan.frame.population import area_population
 from fieldplan.frame.tiling import Pieces, read_strata
 
@@ -51,7 +51,6 @@ def read_area(files: FrameFiles, targeted: tuple[Targeted, ...]) -> Frame:
         Stratum(name, float(piece.area), float(piece.area) / total, piece)
         for name, piece in net.items()
     )
-    assumed = ("The boundary is ASSUMED.",) if files.table.boundary_assumed else ()
     return Frame(
         kind="area",
         projection=ground.projection,
@@ -61,9 +60,21 @@ def read_area(files: FrameFiles, targeted: tuple[Targeted, ...]) -> Frame:
         excluded=excluded,
         targeted=places,
         sources=ground.sources,
-        notes=(*assumed, *ground.notes),
+        notes=(*_edge_notes(files), *ground.notes),
         boundary_assumed=files.table.boundary_assumed,
     )
+
+
+def _edge_notes(files: FrameFiles) -> list[str]:
+    """Say what is weak about the edge of the site."""
+    table, receiver = files.table, files.position_accuracy_m
+    notes = ["The boundary is ASSUMED."] if table.boundary_assumed else []
+    if receiver and table.inset_m < receiver:
+        notes.append(
+            f"The receiver is good to {receiver:g} m and the inset is {table.inset_m:g} m: near "
+            "the boundary a sample may be taken outside the site."
+        )
+    return notes
 
 
 def _net(
@@ -75,9 +86,7 @@ def _net(
     """Cut exclusions and inset out of each stratum; one that vanishes is an error by name."""
     # The inset follows the boundary and its holes. Borders between strata have none, and
     # exclusions have their own buffers.
-    inner = (
-        shapely.buffer(boundary, -table.inset_m, quad_segs=ARC_SEGMENTS) if table.inset_m else None
-    )
+    inner = widened(boundary, -table.inset_m) if table.inset_m else None
     out = shapely.union_all([area.geometry for area in excluded]) if excluded else None
     net: Pieces = {}
     for name, piece in pieces.items():

@@ -1,13 +1,17 @@
 """What is taken out of the site: exclusions with their buffers, none counted twice."""
 
+from dataclasses import replace
+
 import shapely
 from shapely.geometry.base import BaseGeometry
 
 from fieldplan.base.errors import FrameError
 from fieldplan.campaign.model import Exclusion
 from fieldplan.frame.ground import FrameFiles, Ground, Overlay, distance_in_words
+from fieldplan.frame.layer import Feature, Layer
 from fieldplan.frame.model import ExcludedArea
-from fieldplan.frame.plane import ARC_SEGMENTS, SitePlane, merged, polygons_of
+from fieldplan.frame.places import ID_COLUMNS
+from fieldplan.frame.plane import SitePlane, merged, polygons_of, widened
 
 _FAR_M = 1000.0
 
@@ -67,28 +71,50 @@ def _shape(
 ) -> tuple[BaseGeometry, list[str]]:
     """Give the ground that an exclusion covers, buffer included."""
     layer = overlay.layer
-    if layer.format == "CSV" and "part" not in layer.columns and exclusion.buffer_m == 0:
-        features, notes = ground.polygons(overlay)
-        return shapely.union_all([feature.geometry for feature in features]), notes
-    areas = [feature for feature in layer.features if polygons_of(feature.geometry)]
-    others = [feature for feature in layer.features if not polygons_of(feature.geometry)]
-    if not areas and exclusion.buffer_m == 0 and layer.format not in ("CSV", "GPX"):
+    outlines, others = _parted(layer, exclusion.buffer_m)
+    if others and not outlines and exclusion.buffer_m == 0:
         message = (
             f"{layer.name} holds lines or points and no polygon, and they take no ground; give "
             "their exclusion a buffer_m, or draw a polygon."
         )
         raise FrameError(message)
     shapes: list[BaseGeometry] = []
-    notes = []
-    if areas or exclusion.buffer_m == 0:
-        features, notes = ground.polygons(overlay)
+    notes: list[str] = []
+    if outlines:
+        part = replace(overlay, layer=replace(layer, features=outlines))
+        features, notes = ground.polygons(part)
         shapes = [feature.geometry for feature in features]
-    if others and exclusion.buffer_m > 0:
+    if exclusion.buffer_m > 0:
         plane = SitePlane(ground.projection, overlay.shift)
         shapes += [plane.place(feature.geometry) for feature in others]
-        notes = []
+    elif others:
+        notes.append(
+            f"{layer.name}: {len(others)} line(s) or point(s) take no ground without a buffer_m "
+            "and were left out."
+        )
     whole = shapely.union_all(shapes)
-    return shapely.buffer(whole, exclusion.buffer_m, quad_segs=ARC_SEGMENTS), notes
+    return widened(whole, exclusion.buffer_m), notes
+
+
+def _parted(layer: Layer, buffer_m: float) -> tuple[tuple[Feature, ...], tuple[Feature, ...]]:
+    """Part what is an outline from what takes ground by its buffer alone.
+
+    Rows of a table are corners, unless they have ids and a buffer: then each is a place. A
+    walked track is an outline, waypoints are places.
+    """
+    if layer.format == "CSV":
+        named = any(column in layer.columns for column in ID_COLUMNS)
+        each_a_place = named and buffer_m > 0 and "part" not in layer.columns
+        return ((), layer.features) if each_a_place else (layer.features, ())
+    if layer.format == "GPX":
+        is_outline = [shapely.get_dimensions(f.geometry) == 1 for f in layer.features]
+    else:
+        is_outline = [bool(polygons_of(f.geometry)) for f in layer.features]
+    paired = list(zip(layer.features, is_outline, strict=True))
+    return (
+        tuple(feature for feature, outline in paired if outline),
+        tuple(feature for feature, outline in paired if not outline),
+    )
 
 
 def _elsewhere(exclusion: Exclusion, overlay: Overlay, ground: Ground, shape: BaseGeometry) -> str:

@@ -15,7 +15,7 @@ from fieldplan.frame.packed import (
 )
 from fieldplan.frame.rows import read_rows
 
-LARGEST_FILE = 300_000_000
+LARGEST_FILE = 100_000_000
 _ACCEPTED = "export it as GeoJSON, GeoPackage, Shapefile, KML, GPX or CSV."
 
 

@@ -10,7 +10,7 @@ from shapely.geometry.base import BaseGeometry
 
 from fieldplan.base.errors import FrameError
 
-LARGEST_VERTEX_COUNT = 5_000_000
+LARGEST_VERTEX_COUNT = 2_000_000
 SHOWN_PROBLEMS = 12
 
 
@@ -70,7 +70,7 @@ def check_layer(layer: Layer) -> Layer:
     Raises
     ------
     FrameError
-        No geometry, NaN or infinite coordinates, or more vertices than five million.
+        No geometry, NaN or infinite coordinates, or more vertices than two million.
     """
     if not layer.features:
         message = f"{layer.name} holds no geometry; export it again with at least one feature."

@@ -16,7 +16,7 @@ from fieldplan.frame.ground import (
 )
 from fieldplan.frame.layer import raise_all
 from fieldplan.frame.model import Frame, ListUnit, Stratum
-from fieldplan.frame.places import NamedPlaces, named_places, read_targeted
+from fieldplan.frame.places import NamedPlaces, check_strays, named_places, read_targeted
 from fieldplan.frame.plane import check_extent, merged
 from fieldplan.frame.population import list_population
 from fieldplan.frame.projection import centre_of, to_site
@@ -105,12 +105,17 @@ def _ground(files: FrameFiles, overlay: Overlay, found: NamedPlaces) -> Ground:
         projection = centre_of(found.latitude, found.longitude)
         easting, northing = to_site(projection, found.latitude, found.longitude)
         places = np.column_stack([easting, northing])
-        _check_strays(overlay, found, places)
+        middle = np.median(places, axis=0)
+        spread = float(np.median(np.hypot(*(places - middle).T)))
+        check_strays(overlay, found, projection, middle, max(_FAR_M, 20 * spread))
         extent = check_extent(places, overlay.layer.name)
         return Ground(projection, hull(places), (overlay.shift.source,), (*notes, *extent))
     ground = read_ground(files)
     points = points_of(ground.projection, found.latitude, found.longitude)
     ground.check_near(overlay, shapely.MultiPoint(list(points)))
+    middle = np.asarray(ground.boundary.centroid.coords)[0]
+    west, south, east, north = ground.boundary.bounds
+    check_strays(overlay, found, ground.projection, middle, _FAR_M + east - west + north - south)
     away = np.asarray(shapely.distance(ground.boundary, points))
     outside = [
         f"{identifier} ({distance_in_words(float(metres))})"
@@ -134,27 +139,6 @@ def hull(places: np.ndarray) -> BaseGeometry:
     extent = float(np.ptp(places, axis=0).max())
     margin = max(_SMALLEST_MARGIN_M, 0.05 * extent)
     return merged(shapely.MultiPoint(places).convex_hull.buffer(margin))
-
-
-def _check_strays(overlay: Overlay, found: NamedPlaces, places: np.ndarray) -> None:
-    """Refuse units that lie far from the others, and say when swapped axes are the reason."""
-    middle = np.median(places, axis=0)
-    away = np.hypot(*(places - middle).T)
-    typical = float(np.median(away))
-    faults = []
-    for index in np.flatnonzero(away > max(_FAR_M, 20 * typical)):
-        coordinates = shapely.get_coordinates(found.features[index].geometry)[:, ::-1]
-        remedy = "correct its coordinates."
-        if not overlay.shift.crs.is_geographic or abs(coordinates[0, 1]) <= 90:
-            projection = centre_of(found.latitude, found.longitude)
-            swapped = np.array(to_site(projection, *overlay.shift.degrees(coordinates)))[:, 0]
-            if np.hypot(*(swapped - middle)) < away[index] / 10:
-                remedy = "its axes are the other way round: if swapped it falls among the others."
-        faults.append(
-            f"{overlay.layer.name} {found.features[index].label}: {found.ids[index]!r} lies "
-            f"{distance_in_words(float(away[index]))} from the others; {remedy}"
-        )
-    raise_all(faults)
 
 
 def _stratum_names(overlay: Overlay, found: NamedPlaces, column: str) -> list[str]:

@@ -10,7 +10,7 @@ from fieldplan.base.errors import FrameError
 from fieldplan.campaign.model import Targeted
 from fieldplan.frame.ground import FrameFiles, Ground, Overlay, distance_in_words, points_of
 from fieldplan.frame.layer import Feature, Layer, raise_all
-from fieldplan.frame.model import TargetedPlace
+from fieldplan.frame.model import SiteProjection, TargetedPlace
 from fieldplan.frame.projection import to_site
 
 ID_COLUMNS = ("location_id", "name", "id", "title")
@@ -91,8 +91,10 @@ def read_targeted(
         easting, northing = to_site(ground.projection, found.latitude, found.longitude)
         points = points_of(ground.projection, found.latitude, found.longitude)
         away = np.asarray(shapely.distance(ground.boundary, points))
-        if away.min() > 0:
-            _check_targeted(ground, overlay, points, float(away.min()))
+        if away.min() > _FARTHEST_TARGETED_M or (away.min() > 0 and ground.swapped_inside(overlay)):
+            ground.check_near(overlay, shapely.MultiPoint(list(points)))
+        middle = np.asarray(ground.boundary.centroid.coords)[0]
+        check_strays(overlay, found, ground.projection, middle, _FARTHEST_TARGETED_M)
         outside = [
             f"{identifier} ({distance_in_words(float(metres))})"
             for identifier, metres in zip(found.ids, away, strict=True)
@@ -112,12 +114,49 @@ def read_targeted(
     return tuple(places), ground
 
 
-def _check_targeted(
-    ground: Ground, overlay: Overlay, points: NDArray[np.object_], away: float
+def check_strays(
+    overlay: Overlay,
+    found: NamedPlaces,
+    projection: SiteProjection,
+    middle: NDArray[np.float64],
+    limit_m: float,
 ) -> None:
-    """Refuse targeted places that are swapped or in another part of the country."""
-    if away > _FARTHEST_TARGETED_M or ground.swapped_inside(overlay):
-        ground.check_near(overlay, shapely.MultiPoint(list(points)))
+    """Refuse places far from the middle of things; say when swapped axes are the reason.
+
+    Parameters
+    ----------
+    overlay : Overlay
+        The file.
+    found : NamedPlaces
+        Its places.
+    projection : SiteProjection
+        The plane.
+    middle : array of float, shape (2,)
+        Easting and northing of what they should be near.
+    limit_m : float
+        The farthest that is believed.
+
+    Raises
+    ------
+    FrameError
+        One line for each stray.
+    """
+    places = np.column_stack(to_site(projection, found.latitude, found.longitude))
+    away = np.hypot(*(places - middle).T)
+    faults = []
+    for index in np.flatnonzero(~(away <= limit_m)):
+        feature = found.features[index]
+        swapped = shapely.get_coordinates(feature.geometry)[:, ::-1]
+        remedy = "correct its coordinates."
+        if not overlay.shift.crs.is_geographic or abs(swapped[0, 1]) <= 90:
+            there = np.array(to_site(projection, *overlay.shift.degrees(swapped)))[:, 0]
+            if np.hypot(*(there - middle)) < away[index] / 10:
+                remedy = "its axes are the other way round: if swapped they fall inside your site."
+        faults.append(
+            f"{overlay.layer.name} {feature.label}: {found.ids[index]!r} lies "
+            f"{distance_in_words(float(away[index]))} away; {remedy}"
+        )
+    raise_all(faults)
 
 
 def _as_point(feature: Feature) -> Feature:

@@ -35,8 +35,8 @@ def gross(folder: Path, ring: list[list[float]]) -> float:
     return frame_of(folder).population.gross
 
 
-@pytest.mark.parametrize("south", [-89.8, -75.0, -45.5, -0.05, 0.0, 23.4, 51.9, 66.6, 80.0, 89.8])
-@pytest.mark.parametrize("west", [-179.9, -0.05, 5.99, 12.0, 179.95])
+@pytest.mark.parametrize("south", [-89.8, -75.0, -45.5, -0.05, 23.4, 51.9, 66.6, 80.0, 89.8])
+@pytest.mark.parametrize("west", [-0.05, 5.99, 179.95])
 @pytest.mark.parametrize("width", [0.004, 0.1, 2.0])
 def test_a_box_of_degrees_has_the_area_of_the_ellipsoid_between_its_parallels(
     tmp_path: Path, south: float, west: float, width: float
@@ -87,12 +87,20 @@ def test_a_site_across_the_date_line_is_one_site_however_it_is_written(tmp_path:
     jumping = [[x if x <= 180 else x - 360, y] for x, y in whole]
     cut = [box(179.95, -16.85, 180.0, -16.80), box(-180.0, -16.85, -179.95, -16.80)]
     expected = area_between_parallels(179.95, -16.85, 180.05, -16.80)
-    for rings in ([whole], [jumping], cut):
-        write_geojson(tmp_path / "boundary.geojson", *(polygon(ring) for ring in rings))
+    in_one = polygon(whole)
+    in_one["geometry"] = {"type": "MultiPolygon", "coordinates": [[ring] for ring in cut]}
+    for features in (
+        [polygon(whole)],
+        [polygon(jumping)],
+        [polygon(ring) for ring in cut],
+        [in_one],
+    ):
+        write_geojson(tmp_path / "boundary.geojson", *features)
         frame = frame_of(tmp_path)
         assert frame.population.gross == pytest.approx(expected, rel=1e-6)
         assert frame.projection.longitude in (180.0, -180.0)
         assert frame.boundary.geom_type == "Polygon"
+        assert frame.notes == ()
 
 
 def test_a_site_round_the_pole_has_the_area_of_its_cap(tmp_path: Path) -> None:

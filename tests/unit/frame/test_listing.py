@@ -161,8 +161,17 @@ def test_one_swapped_row_is_told_so_by_the_others(tmp_path: Path) -> None:
     message = refusal(tmp_path)
     assert message.startswith("wells.csv row 5: 'MW-9' lies ")
     assert message.endswith(
-        "its axes are the other way round: if swapped it falls among the others."
+        "its axes are the other way round: if swapped they fall inside your site."
     )
+
+
+def test_one_swapped_place_among_good_ones_is_told_so_with_its_row(tmp_path: Path) -> None:
+    """The others being right must not hide it, with a boundary or as targeted places."""
+    standard_site(tmp_path)
+    write_list(tmp_path, plain([*WELLS, ("MW-9", -1.9, 52.1)]))
+    assert "wells.csv row 5: 'MW-9' lies 7,3" in refusal(tmp_path, boundary="boundary.geojson")
+    with pytest.raises(FrameError, match=r"row 5: 'MW-9'.*if swapped they fall inside your site"):
+        frame_of(tmp_path, targeted=[("wells.csv", "old wells")])
 
 
 def test_latitudes_that_are_none_are_refused(tmp_path: Path) -> None:

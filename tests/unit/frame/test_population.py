@@ -1,5 +1,6 @@
 """Gross, each exclusion, inset, net: the sums and the sentences that say them."""
 
+import math
 from pathlib import Path
 
 import pyproj
@@ -18,6 +19,7 @@ from tests.unit.frame.sites import (
     point,
     polygon,
     standard_site,
+    write_csv,
     write_geojson,
 )
 
@@ -110,6 +112,40 @@ def test_lines_and_points_without_a_buffer_take_nothing_and_are_refused(
     write_geojson(site / "x.geojson", feature)
     with pytest.raises(FrameError, match=r"and no polygon.*buffer_m"):
         frame_of(site, exclusions=[("x.geojson", 0.0, "main")])
+
+
+def test_a_table_of_wells_with_a_buffer_takes_a_circle_round_each(site: Path) -> None:
+    """Rows with ids and a buffer are places; without either they are corners."""
+    rows = [["location_id", "latitude", "longitude"], ["a", 52.1, -1.9], ["b", 52.1003, -1.9005]]
+    rows.append(["c", 52.0997, -1.9005])
+    write_csv(site / "wells.csv", rows)
+    frame = frame_of(site, exclusions=[("wells.csv", 5.0, "wells")])
+    assert frame.excluded[0].area_m2 == pytest.approx(3 * math.pi * 25 * 0.9996, rel=1e-4)
+    triangle = frame_of(site, exclusions=[("wells.csv", 0.0, "between wells")])
+    assert triangle.excluded[0].area_m2 == pytest.approx(
+        0.5 * (WIDTH * 0.0005 / (E - W)) * (HEIGHT * 0.0006 / (N - S)), rel=1e-3
+    )
+
+
+def test_a_walked_outline_with_a_buffer_takes_its_inside_too(site: Path) -> None:
+    """A pond walked round: its square of 0.0004° and 5 m outside, not the shore alone."""
+    ring = box(-1.9002, 52.0998, -1.8998, 52.1002)
+    points = "".join(f'<trkpt lat="{y}" lon="{x}"/>' for x, y in ring)
+    (site / "pond.gpx").write_text(f"<gpx><trk><trkseg>{points}</trkseg></trk></gpx>")
+    a, b = WIDTH / 10, HEIGHT / 5
+    frame = frame_of(site, exclusions=[("pond.gpx", 5.0, "pond")])
+    expected = a * b + 2 * (a + b) * 5 + math.pi * 25
+    assert frame.excluded[0].area_m2 == pytest.approx(expected, rel=1e-4)
+
+
+def test_an_inset_narrower_than_the_receiver_is_noted(site: Path) -> None:
+    """Keep locations at least the position error inside the line, or say so."""
+    frame = frame_of(site, inset_m=2.0, position_accuracy_m=5.0)
+    assert frame.notes == (
+        "The receiver is good to 5 m and the inset is 2 m: near the boundary a sample may be "
+        "taken outside the site.",
+    )
+    assert frame_of(site, inset_m=5.0, position_accuracy_m=5.0).notes == ()
 
 
 def test_an_exclusion_that_just_misses_the_site_is_noted(site: Path) -> None:
