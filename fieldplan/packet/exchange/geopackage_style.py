@@ -1,5 +1,6 @@
 """How a desktop GIS shall draw the layers: style documents for the table ``layer_styles``."""
 
+from collections.abc import Sequence
 from datetime import date
 from xml.etree import ElementTree as ET
 
@@ -64,7 +65,7 @@ def _single_document(symbol: ET.Element) -> ET.Element:
     return _document(renderer)
 
 
-def _sorted_document(attribute: str, classes: list[tuple[str, str, ET.Element]]) -> ET.Element:
+def _sorted_document(attribute: str, classes: Sequence[tuple[str, str, ET.Element]]) -> ET.Element:
     """Draw by the value of one column: (value, label, symbol) for each."""
     renderer = ET.Element("renderer-v2", type="categorizedSymbol", attr=attribute)
     categories = ET.SubElement(renderer, "categories")
