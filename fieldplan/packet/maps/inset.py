@@ -169,8 +169,9 @@ def _name_line(axes: "Axes", extent: Extent, line: np.ndarray, words: str) -> No
     across, up = line[min(at + 1, len(line) - 1)] - line[at]
     angle = math.degrees(math.atan2(up, across))
     axes.text(
-        line[at, 0], line[at, 1], words, fontsize=5.2, color=SOFT, ha="center", va="center", rotation=angle,
-        rotation_mode="anchor", bbox={"facecolor": "white", "edgecolor": "none", "pad": 0.4},
+        line[at, 0], line[at, 1], words, fontsize=5.2, color=SOFT, ha="center", va="center",
+        rotation=angle, rotation_mode="anchor",
+        bbox={"facecolor": "white", "edgecolor": "none", "pad": 0.4},
     )  # fmt: skip
 
 

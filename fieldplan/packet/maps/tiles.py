@@ -3,6 +3,7 @@
 import math
 from collections.abc import Callable
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 import shapely
@@ -99,7 +100,7 @@ def crowded(places: NDArray[np.float64], metres_per_mm: float) -> bool:
     >>> crowded(nest, 10.0), crowded(nest, 0.5), crowded(nest[:3], 10.0)
     (True, False, False)
     """
-    points = np.atleast_1d(shapely.points(np.unique(np.round(places, 2), axis=0)))
+    points: Any = shapely.points(np.unique(np.round(places, 2), axis=0))
     _, centres = shapely.STRtree(points).query(
         points, predicate="dwithin", distance=2.0 * metres_per_mm
     )
