@@ -231,11 +231,12 @@ class BareNumbers:
         shared = {"--allocation": self.allocation, "--floor": self.floor}
         for name, value in (alone if self.stratum else shared).items():
             if value is not None:
+                shown = f"{name} {value:g}" if isinstance(value, float) else f"{name} {value}"
                 message = (
-                    f"{name} {value} speaks of one whole, and --stratum of its parts; give sigma "
+                    f"{shown} speaks of one whole, and --stratum of its parts; give sigma "
                     "and the pilot's n inside each --stratum, a list in a campaign file."
                     if self.stratum
-                    else f"{name} {value} shares n between strata; add a --stratum for each."
+                    else f"{shown} shares n between strata; add a --stratum for each."
                 )
                 raise BadOption(message)
 

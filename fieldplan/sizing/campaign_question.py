@@ -1,6 +1,8 @@
 """From campaign, frame and spread to the question that sizing answers."""
 
 import math
+from collections.abc import Mapping
+from difflib import get_close_matches
 from typing import TYPE_CHECKING
 
 from fieldplan.base.errors import CampaignError, DesignError
@@ -127,7 +129,7 @@ def _parts(campaign: "Campaign", spread: "Spread", frame: "Frame") -> tuple[Part
             "and its source, or a pilot with at least 2 results there."
         )
         raise DesignError(message)
-    losses = campaign.loss.by_stratum
+    losses = _losses(campaign, list(entries))
     return tuple(
         Part(
             name=stratum.name,
@@ -143,6 +145,21 @@ def _parts(campaign: "Campaign", spread: "Spread", frame: "Frame") -> tuple[Part
         )
         for stratum in frame.strata
     )
+
+
+def _losses(campaign: "Campaign", names: list[str]) -> Mapping[str, float]:
+    """Take the losses typed by stratum; a name that the frame does not have is refused."""
+    losses = campaign.loss.by_stratum
+    for name, share in losses.items():
+        if name not in names:
+            near = get_close_matches(name, names, n=1)
+            hint = f"did you mean '{near[0]}'?" if near else "correct it or leave it out."
+            message = (
+                f"[loss] by_stratum has {typed(share)} for '{name}', which is no stratum of the "
+                f"frame ({', '.join(names)}); {hint}"
+            )
+            raise CampaignError(message)
+    return losses
 
 
 def _pilot(entry: "StratumSpread") -> str:
