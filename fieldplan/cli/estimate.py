@@ -178,7 +178,7 @@ def _ask(returns: "Returns", confirmed: "tuple[ConfirmedMatch, ...]", folder: Pa
         path = folder / f"matches-{number:02d}.csv"
     content = matches_csv(returns.needs_you, confirmed=confirmed)
     folder.mkdir(parents=True, exist_ok=True)
-    write_atomically(path, content)
+    write_atomically(path, f"\ufeff{content}")
     lines = [
         f"  row {match.row} '{match.as_written}' may be {match.proposed}: {match.why}"
         for match in returns.needs_you

@@ -9,6 +9,7 @@ from fieldplan.base.units import significant
 from fieldplan.design.model import MeanEstimate
 from fieldplan.lab.words import counted, listed
 from fieldplan.plan.model import Plan
+from fieldplan.stats.intervals import IntervalKind, t_quantile
 from fieldplan.stats.stratified import predicted_variance
 
 
@@ -114,10 +115,7 @@ def difference_sentences(
         f"Planned: a standard error of {significant(planned)} {unit} from "
         f"{counted(needed, 'result')}. Achieved: {significant(achieved)} {unit} from {mean.n}."
     ]
-    target = plan.size.target_standard_error
-    if target is not None:
-        kept = "kept" if achieved <= target * (1 + 1e-9) else "missed"
-        lines.append(f"The target, {plan.size.target}, was {kept}.")
+    lines += _target_sentence(plan, mean)
     if parts is None:
         return tuple(lines)
     lines.append(
@@ -132,6 +130,23 @@ def difference_sentences(
     )
     spread = _spread_found(plan, mean)
     return (*lines, spread) if spread else tuple(lines)
+
+
+def _target_sentence(plan: Plan, mean: MeanEstimate) -> list[str]:
+    """Say whether the target was kept, by the confidence that it was set at."""
+    size = plan.size
+    if size.target_standard_error is not None:
+        target, reached = size.target_standard_error, mean.standard_error
+    elif size.target_half_width is not None:
+        kind: IntervalKind = plan.campaign.rules.interval
+        t = t_quantile(mean.degrees_of_freedom, confidence=size.confidence, kind=kind)
+        target, reached = size.target_half_width, t * mean.standard_error
+    else:
+        return []
+    kept = "kept" if reached <= target * (1 + 1e-9) else "missed"
+    return [
+        f"The target, {size.target}, was {kept}: it came to {significant(reached)} {size.unit}."
+    ]
 
 
 def _says(factor: float) -> bool:

@@ -124,7 +124,7 @@ def _interval_steps(means: Means, unit: str) -> list[Step]:
     t = t_quantile(known, confidence=rules.confidence, kind=rules.interval)
     mean, error = means.half.mean, means.half.standard_error
     level = (1 + rules.confidence) / 2 if rules.interval == "two-sided" else rules.confidence
-    steps = [_freedom_step(means.half.strata, known)] if math.isfinite(known) else []
+    steps = [_freedom_step(means.half.strata, known, unit)] if math.isfinite(known) else []
     steps.append(
         Step(
             symbol="t",
@@ -153,12 +153,22 @@ def _interval_steps(means: Means, unit: str) -> list[Step]:
     return steps
 
 
-def _freedom_step(strata: Sequence[StratumEstimate], known: float) -> Step:
+def _freedom_step(strata: Sequence[StratumEstimate], known: float, unit: str) -> Step:
     if len(strata) == 1:
         inputs: tuple[Quantity, ...] = (Quantity("n", "results", strata[0].n),)
         return Step("df", "Degrees of freedom", "df = n − 1", inputs, known, known, "", _RANDOM)
     inputs = tuple(
-        Quantity(f"n {entry.stratum}", "results of the stratum", entry.n) for entry in strata
+        quantity
+        for entry in strata
+        for quantity in (
+            Quantity(
+                f"part {entry.stratum}",
+                "part of the variance of the mean",
+                entry.weight**2 * entry.variance_of_mean,
+                f"({unit})²",
+            ),
+            Quantity(f"n {entry.stratum}", "results of the stratum", entry.n),
+        )
     )
     return Step(
         symbol="df",

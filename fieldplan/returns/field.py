@@ -15,7 +15,7 @@ from fieldplan.lab.tables import TextTable, capped, read_tables
 from fieldplan.lab.words import listed
 from fieldplan.plan.model import Plan
 from fieldplan.returns.form import FIELD_COLUMNS
-from fieldplan.returns.ids import plain_id
+from fieldplan.returns.ids import nearest, plain_id
 from fieldplan.returns.model import FieldRow, ReasonCode
 
 REASONS: tuple[str, ...] = get_args(ReasonCode)
@@ -127,7 +127,7 @@ class _LineReader:
         sample = self.samples.get(sample_id)
         place = self.spellings.get(written.casefold())
         if sample is None and sample_id:
-            near = get_close_matches(sample_id, self.samples, n=1)
+            near = nearest(sample_id, self.samples)
             hint = f"did you mean '{near[0]}'?" if near else "check that it is this packet's form."
             row.refuse("sample_id", f"is no sample of the plan; {hint}")
         if sample is not None and place is not None and sample.location_id != place.location_id:
@@ -149,7 +149,7 @@ class _LineReader:
         place = self.spellings.get(written.casefold())
         if place is None or place.location_class != "alternate":
             names = [p.location_id for p in self.places.values() if p.location_class == "alternate"]
-            near = get_close_matches(written, names, n=1)
+            near = nearest(written, names)
             hint = f"did you mean '{near[0]}'?" if near else f"alternates are {listed(names)}."
             row.refuse("replaced_by", f"is no alternate of the plan; {hint}")
         return self._same_stratum(row, place)

@@ -1,6 +1,8 @@
 """Ids as people and laboratories write them, and when two spellings mean the same."""
 
 import re
+from collections.abc import Iterable
+from difflib import SequenceMatcher
 
 from fieldplan.lab.cells import tidy
 
@@ -44,3 +46,36 @@ def likeness(text: str) -> str:
     folded = plain_id(text).casefold().translate(_LOOK_ALIKE)
     parts = re.findall(r"\d+|[^\W\d_]+", folded)
     return "·".join(part.lstrip("0") or "0" if part.isdigit() else part for part in parts)
+
+
+def nearest(text: str, names: Iterable[str], *, cutoff: float = 0.75) -> list[str]:
+    """List the names that come nearest to an id, all of them where several are as near.
+
+    Parameters
+    ----------
+    text : str
+    names : iterable of str
+    cutoff : float
+        Least share of letters in common, by ``difflib``.
+
+    Returns
+    -------
+    list of str
+        Empty when none is near. Between equals, the same letters in another order count more,
+        then letters that agree place by place.
+
+    Examples
+    --------
+    >>> nearest("QF-732", ["QF-872", "QF-731"]), nearest("X", ["QF-872"])
+    (['QF-731'], [])
+    """
+    wanted = likeness(text)
+    scores: dict[str, tuple[float, bool, int]] = {}
+    for name in names:
+        other = likeness(name)
+        share = SequenceMatcher(None, wanted, other, autojunk=False).ratio()
+        if share >= cutoff:
+            in_place = sum(a == b for a, b in zip(wanted, other, strict=False))
+            scores[name] = (share, sorted(wanted) == sorted(other), in_place)
+    best = max(scores.values(), default=None)
+    return [name for name, score in scores.items() if score == best]

@@ -2,12 +2,11 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field
-from difflib import get_close_matches
 
 from fieldplan.base.errors import LabError
 from fieldplan.lab.model import LabRow
 from fieldplan.plan.model import Plan
-from fieldplan.returns.ids import likeness, plain_id
+from fieldplan.returns.ids import likeness, nearest, plain_id
 from fieldplan.returns.model import NearMatch
 from fieldplan.samples.model import Sample
 
@@ -231,6 +230,5 @@ class _Matcher:
             rest = [s.sample_id for s in self.at[place] if s.sample_id in names]
             why = f"one of the samples of {place}"
             return [NearMatch(row.row, written, name, why) for name in rest]
-        keys = {likeness(name): sample for name, sample in names.items()}
-        near = [m for t in tried for m in get_close_matches(likeness(t), keys, n=1, cutoff=0.75)]
-        return [NearMatch(row.row, written, keys[n], "nearest spelling") for n in near[:1]]
+        near = {names[name] for text in tried for name in nearest(text, names)}
+        return [NearMatch(row.row, written, name, "nearest spelling") for name in sorted(near)[:3]]
