@@ -190,5 +190,11 @@ def test_pseudocode_fits_a_page_and_a_terminal() -> None:
     assert max(map(len, procedure_pseudocode().splitlines())) <= 88
 
 
+def test_documentation_holds_the_same_lines() -> None:
+    """A reviewer reads docs/drawing.md or the annex; both must be the procedure that was tested."""
+    page = Path(__file__).parents[3] / "docs" / "drawing.md"
+    assert f"```text\n{procedure_pseudocode()}```" in page.read_text(encoding="utf-8")
+
+
 if __name__ == "__main__":
     print(json.dumps(all_by_hand(), indent=1))

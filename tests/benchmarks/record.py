@@ -1,0 +1,28 @@
+"""Print the figures of docs/performance.md: ``python -m tests.benchmarks.record placement``."""
+
+import sys
+from collections.abc import Callable, Iterator
+
+from tests.benchmarks.placement import COUNTS, VERTICES, measured
+
+
+def placement() -> Iterator[str]:
+    """Yield the table of the section "Placing points"."""
+    yield "| corners | points | simulated | issued | geopandas | ratio simulated | ratio issued |"
+    yield "| --- | --- | --- | --- | --- | --- | --- |"
+    for vertices in VERTICES:
+        for count in COUNTS:
+            row = measured(vertices, count)
+            yield (
+                f"| {vertices:,} | {count:,} | {row.simulated * 1000:.1f} ms "
+                f"| {row.issued * 1000:.1f} ms | {row.peer * 1000:.0f} ms "
+                f"| {row.peer / row.simulated:.0f} | {row.peer / row.issued:.0f} |"
+            )
+
+
+SECTIONS: dict[str, Callable[[], Iterator[str]]] = {"placement": placement}
+
+if __name__ == "__main__":
+    for name in sys.argv[1:] or SECTIONS:
+        for line in SECTIONS[name]():
+            print(line, flush=True)
