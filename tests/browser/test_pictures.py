@@ -7,7 +7,7 @@ import matplotlib.image
 import numpy as np
 import pytest
 
-from docs.make_pictures import PICTURES, draw_pictures
+from tests.browser.make_pictures import PICTURES, draw_pictures
 
 README = Path(__file__).parents[2] / "README.md"
 

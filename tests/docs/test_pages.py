@@ -12,9 +12,9 @@ import shutil
 from pathlib import Path
 
 import pytest
-from click.testing import CliRunner
 
 from fieldplan.cli import entry
+from tests.command_runner import command_runner
 
 ROOT = Path(__file__).parents[2]
 PAGES = [ROOT / "README.md", *sorted((ROOT / "docs").glob("*.md"))]
@@ -61,7 +61,7 @@ def test_console_blocks_print_what_they_show(
                 monkeypatch.chdir(words[1])
                 continue
             assert words[0] == "fieldplan", f"{page.name}: only our own commands run: {command}"
-            outcome = CliRunner().invoke(entry, words[1:], catch_exceptions=False)
+            outcome = command_runner().invoke(entry, words[1:], catch_exceptions=False)
             printed = [line.rstrip() for line in outcome.stdout.splitlines()]
             while expected and not expected[-1]:
                 expected.pop()

@@ -5,10 +5,11 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import pytest
-from click.testing import CliRunner, Result
+from click.testing import Result
 
 from fieldplan.cli import entry
 from fieldplan.cli.demo import demo_folder
+from tests.command_runner import command_runner
 
 SITES = ("hobbin-ley", "quern-flat")
 PLAN_IDS = {"hobbin-ley": "HL", "quern-flat": "QF"}
@@ -18,7 +19,7 @@ def run(*words: str | Path) -> Result:
     """Run one command as a user would; errors of ours come back as exit codes."""
     from fieldplan.base.errors import FieldplanError
 
-    outcome = CliRunner().invoke(entry, [str(word) for word in words])
+    outcome = command_runner().invoke(entry, [str(word) for word in words])
     if isinstance(outcome.exception, FieldplanError):
         outcome.exit_code = outcome.exception.exit_code
     elif outcome.exception is not None and not isinstance(outcome.exception, SystemExit):
