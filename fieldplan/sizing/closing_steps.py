@@ -52,21 +52,29 @@ def _losses(question: Question, counts: Counts) -> Iterator[Step]:
 def _precision(question: Question, counts: Counts) -> Iterator[Step]:
     if question.census:
         return
-    precision = Precision(question)
-    error = precision.standard_error(counts.needed)
+    yield _error(question, counts)
+    known = Precision(question).degrees_of_freedom(counts.needed)
+    if math.isfinite(known):
+        yield _reach(question, counts, known)
+
+
+def _error(question: Question, counts: Counts) -> Step:
     strata = len(question.parts) > 1
-    listed = any(part.population is not None for part in question.parts)
     inputs = []
     for part, results in zip(question.parts, counts.needed, strict=True):
         where = f"({part.name})" if strata else ""
+        if strata:
+            inputs.append(Quantity(f"W{where}", "share of the population", part.weight))
         inputs += [
             Quantity(f"s{where}", "standard deviation", part.sigma, question.unit),
             Quantity(f"n{where}", "results", results, "results"),
         ]
         if part.population is not None:
             inputs.append(Quantity(f"N{where}", "units in the list", part.population, "units"))
+    listed = any(part.population is not None for part in question.parts)
     inside = "s² (1 − n/N) / n" if listed else "s² / n"
-    yield Step(
+    error = Precision(question).standard_error(counts.needed)
+    return Step(
         symbol="SE",
         meaning="Standard error to expect if sigma is right",
         formula=f"SE = √(Σ W² {inside})" if strata else f"SE = √({inside})",
@@ -76,13 +84,15 @@ def _precision(question: Question, counts: Counts) -> Iterator[Step]:
         unit=question.unit,
         source=f"{COCHRAN}, theorem {'5.3' if strata else '2.2'}",
     )
-    known = precision.degrees_of_freedom(counts.needed)
-    if error == 0 or not math.isfinite(known):
-        return
+
+
+def _reach(question: Question, counts: Counts, known: float) -> Step:
+    error = Precision(question).standard_error(counts.needed)
     t = t_quantile(known, confidence=question.confidence, kind=question.interval)
     two_sided = question.interval == "two-sided"
     name = "interval" if two_sided else question.interval.replace("-", " ")
-    yield Step(
+    strata = len(question.parts) > 1
+    return Step(
         symbol="half-width",
         meaning=f"Reach of the {typed_percent(question.confidence)} {name} to expect",
         formula="half-width = t · SE",

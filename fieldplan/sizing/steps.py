@@ -77,26 +77,32 @@ def _absolute(question: Question) -> Step:
 
 def _single(question: Question, plain: int) -> Iterator[Step]:
     """Show one population: first pass, list, t, floor."""
-    part = question.parts[0]
+    size = question.parts[0].population
+    first = _first_pass(question)
+    yield first
+    if size is not None:
+        yield _listed(first.unrounded, size)
+    if question.target_half_width is not None:
+        yield _iterated(question, plain)
+    elif plain > whole(_corrected(question, first.unrounded)):
+        yield _floored(question, plain)
+
+
+def _first_pass(question: Question) -> Step:
+    sigma = question.parts[0].sigma
+    formula = "n0 = (s / SE)²"
+    inputs: tuple[Quantity, ...] = (_sigma(question), _target(question))
     if question.target_half_width is None:
-        first = unrounded_for_standard_error(part.sigma, question.value)
-        formula = "n0 = (s / SE)²"
-        inputs: tuple[Quantity, ...] = (_sigma(question), _target(question))
+        first = unrounded_for_standard_error(sigma, question.value)
     else:
+        confidence, kind = question.confidence, question.interval
         first = unrounded_for_half_width(
-            part.sigma,
-            question.target_half_width,
-            confidence=question.confidence,
-            kind=question.interval,
+            sigma, question.target_half_width, confidence=confidence, kind=kind
         )
-        z = t_quantile(math.inf, confidence=question.confidence, kind=question.interval)
+        z = t_quantile(math.inf, confidence=confidence, kind=kind)
         formula = "n0 = (z · s / h)²"
-        inputs = (
-            Quantity("z", f"normal quantile, {question.interval}, {question.confidence:g}", z),
-            _sigma(question),
-            _target(question),
-        )
-    yield Step(
+        inputs = (Quantity("z", f"normal quantile, {kind}, {confidence:g}", z), *inputs)
+    return Step(
         symbol="n0",
         meaning="Results needed with sigma at face value, first pass",
         formula=formula,
@@ -106,12 +112,6 @@ def _single(question: Question, plain: int) -> Iterator[Step]:
         unit="results",
         source=f"{COCHRAN}, sec. 4.6",
     )
-    if part.population is not None:
-        yield _listed(first, part.population)
-    if question.target_half_width is not None:
-        yield _iterated(question, plain)
-    elif plain > whole(first if part.population is None else _corrected(question, first)):
-        yield _floored(question, plain)
 
 
 def _corrected(question: Question, first: float) -> float:
@@ -250,14 +250,18 @@ def _chances(question: Question, counts: Counts) -> Iterator[Step]:
             elif question.assurance is not None and question.target_half_width is not None:
                 luck_only = Precision(question).chance(chosen, sigma_known=True) or 0.0
                 yield _chance(question, chosen, luck_only)
-    part = question.parts[0]
     simple = len(question.parts) == 1 and question.target == "standard_error"
-    if not simple or question.assurance is None or part.results is None:
-        return
-    if question.locations is not None:
+    if simple and question.assurance is not None and question.locations is None:
+        yield from _raised(question, counts, question.assurance)
+
+
+def _raised(question: Question, counts: Counts, assurance: float) -> Iterator[Step]:
+    """Show how the upper limit of sigma gives the number at an assurance."""
+    part = question.parts[0]
+    if part.results is None:
         return
     known = part.results - 1
-    quantile = chi_square_quantile(1 - question.assurance, known)
+    quantile = chi_square_quantile(1 - assurance, known)
     upper = part.sigma * math.sqrt(known / quantile)
     yield Step(
         symbol="s_u",
@@ -266,7 +270,7 @@ def _chances(question: Question, counts: Counts) -> Iterator[Step]:
         inputs=(
             _sigma(question),
             Quantity("df", "pilot results − 1", known),
-            Quantity("χ²", f"chi-square quantile at {1 - question.assurance:.4g}", quantile),
+            Quantity("χ²", f"chi-square quantile at {1 - assurance:.4g}", quantile),
         ),
         unrounded=upper,
         rounded=upper,

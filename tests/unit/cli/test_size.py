@@ -85,7 +85,7 @@ def test_explain_shows_the_working_and_the_condition() -> None:
     result = run("--sigma", "58", "--half-width", "20", "--explain")
     assert "1. Results needed with sigma at face value, first pass" in result.stdout
     assert "n0 = 32.3067, rounded 33 results" in result.stdout
-    assert "n = 34.7336, rounded 35 results" in result.stdout
+    assert "n = 34.7334, rounded 35 results" in result.stdout
     assert "Source: Cochran 1977" in result.stdout
     assert "common practice for data that are not normal (no source)" in result.stdout
     assert max(len(line) for line in result.stdout.splitlines()) <= 79
