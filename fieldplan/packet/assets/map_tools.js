@@ -122,8 +122,8 @@ function fieldplanMeasure(map) {
   set(false);
 }
 
-/* Labels: each tries right, left, above, below of its mark; one that would cover a mark or
-   another label waits for a closer zoom. Marks themselves always stay. */
+/* Labels: each tries eight places round its mark; one that would cover a mark or another label,
+   or leave the window, waits for a closer zoom. Marks themselves always stay. */
 function fieldplanLabels(map, layers, areaLabels) {
   const cell = 40;
   function occupied() {
@@ -151,19 +151,24 @@ function fieldplanLabels(map, layers, areaLabels) {
     };
   }
   function boxes(spot, width, height) {
-    const gap = 9, half = height / 2;
+    const gap = 9, half = height / 2, near = 5;
     return {
       right: [spot.x + gap, spot.y - half, spot.x + gap + width, spot.y + half],
       left: [spot.x - gap - width, spot.y - half, spot.x - gap, spot.y + half],
       above: [spot.x - width / 2, spot.y - gap - height, spot.x + width / 2, spot.y - gap],
       below: [spot.x - width / 2, spot.y + gap, spot.x + width / 2, spot.y + gap + height],
+      "upper-right": [spot.x + near, spot.y - near - height, spot.x + near + width, spot.y - near],
+      "lower-right": [spot.x + near, spot.y + near, spot.x + near + width, spot.y + near + height],
+      "upper-left": [spot.x - near - width, spot.y - near - height, spot.x - near, spot.y - near],
+      "lower-left": [spot.x - near - width, spot.y + near, spot.x - near, spot.y + near + height],
     };
   }
-  function place(marker, taken, bounds) {
+  function place(marker, taken, size) {
     const label = marker.getElement().querySelector(".label");
     const spot = map.latLngToContainerPoint(marker.getLatLng());
-    const side = bounds.contains(marker.getLatLng()) && Object.entries(
-      boxes(spot, marker.labelWidth, 15)).find(([, box]) => taken.free(box));
+    const inside = (box) => box[0] >= 0 && box[1] >= 0 && box[2] <= size.x && box[3] <= size.y;
+    const side = Object.entries(boxes(spot, marker.labelWidth, 15))
+      .find(([, box]) => inside(box) && taken.free(box));
     label.className = side ? `label ${side[0]}` : "label waiting";
     if (side) { taken.add(side[1]); }
   }
@@ -176,14 +181,14 @@ function fieldplanLabels(map, layers, areaLabels) {
     map.getContainer().classList.toggle("crowded", room < 800);
   }
   function arrange() {
-    const taken = occupied(), bounds = map.getBounds().pad(0.05);
+    const taken = occupied(), size = map.getSize();
     const shown = layers.filter((layer) => map.hasLayer(layer)).flatMap((l) => l.getLayers());
     sizeMarks(shown, map.getBounds());
     shown.forEach((marker) => {
       const spot = map.latLngToContainerPoint(marker.getLatLng());
       taken.add([spot.x - 7, spot.y - 7, spot.x + 7, spot.y + 7]);
     });
-    shown.forEach((marker) => place(marker, taken, bounds));
+    shown.forEach((marker) => place(marker, taken, size));
     areaLabels.eachLayer((marker) => {
       const text = marker.getElement() && marker.getElement().firstElementChild;
       if (!text) { return; }

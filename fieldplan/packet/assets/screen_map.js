@@ -23,11 +23,11 @@ function fieldplanSymbol(mark) {
 function fieldplanPoint(feature, latlng) {
   const said = feature.properties;
   const holder = fieldplanElement("div", "location");
-  holder.append(fieldplanSymbol(said.mark), fieldplanElement("span", "label", said.short_name));
+  holder.append(fieldplanSymbol(said.mark), fieldplanElement("span", "label", said.label));
   const icon = L.divIcon({className: `mark ${said.class}`, html: holder, iconSize: [30, 30]});
   const marker = L.marker(latlng, {icon, alt: said.short_name, riseOnHover: true,
     zIndexOffset: said.class === "alternate" ? 0 : 1000});
-  marker.labelWidth = 8 * said.short_name.length + 6;
+  marker.labelWidth = 7.5 * said.label.length + 6;
   return marker;
 }
 
@@ -90,6 +90,7 @@ function fieldplanPrint(map, bounds, panel) {
   window.addEventListener("beforeprint", () => {
     before = {centre: map.getCenter(), zoom: map.getZoom()};
     document.body.classList.add("printing");
+    document.querySelectorAll("details").forEach((part) => { part.open = true; });
     map.invalidateSize({animate: false});
     fieldplanFit(map, bounds, panel);
   });

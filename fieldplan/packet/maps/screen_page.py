@@ -51,13 +51,14 @@ Datum WGS 84 (EPSG:4326). Grid: {escape(utm_in_words(grid))}. Up is true north.<
 
 def foot(plan: Plan) -> str:
     """Write the bars below the map: measuring, coordinates, and where the outlines come from."""
-    sources = "; ".join(plan.frame.sources)
+    lines = "".join(f"<li>{said(line)}</li>" for line in plan.frame.sources)
+    sources = f"<details><summary>Sources</summary><ul>{lines}</ul></details>" if lines else ""
     return f"""<div id="measure" role="group" aria-label="Measuring" hidden>
 <output aria-live="polite"></output>
 <button type="button" name="undo">Undo</button><button type="button" name="clear">Clear</button>\
 <button type="button" name="end">End</button></div>
 <footer class="foot"><span id="readout">Point at the map, or press it, to read coordinates.</span>
-<span class="sources">{"Sources: " + said(sources) if sources else ""}</span></footer>"""
+{sources}</footer>"""
 
 
 def drawings() -> str:

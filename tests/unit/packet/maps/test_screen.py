@@ -158,7 +158,7 @@ def test_a_list_has_a_map_without_strata() -> None:
     html = screen_map(plans.list_plan())
     assert "Extent of the list, for the map only" in html
     assert "Sampled area" not in html
-    assert "MAR-01" in html
+    assert '"label": "QW1 (MAR-01)"' in html
 
 
 def test_two_thousand_places_stay_a_small_file() -> None:
