@@ -148,14 +148,20 @@ def _changes(
     if not changed:
         return ()
     recorded = plan.campaign.rules
-    before: Means = means_by(plan, returns, recorded)
+    before: Means | None = None
+    refusal = ""
+    try:
+        before = means_by(plan, returns, recorded)
+    except DesignError as fault:
+        refusal = " ".join(fault.problems)
     return tuple(
         Change(
             rule=name,
             recorded=str(getattr(recorded, name)),
             used=str(getattr(rules, name)),
-            interval_recorded=before.interval,
-            mean_recorded=before.half.mean,
+            interval_recorded=before.interval if before else None,
+            mean_recorded=before.half.mean if before else None,
+            refusal_recorded=refusal,
         )
         for name in changed
     )

@@ -31,13 +31,18 @@ class Bracket:
 
 @dataclass(frozen=True)
 class Change:
-    """A rule overridden after results were seen: both answers, printed as such."""
+    """A rule overridden after results were seen: both answers, printed as such.
+
+    Where the recorded rule gives no answer, ``interval_recorded`` and ``mean_recorded`` are None
+    and ``refusal_recorded`` says why.
+    """
 
     rule: str
     recorded: str
     used: str
-    interval_recorded: Interval
-    mean_recorded: float
+    interval_recorded: Interval | None
+    mean_recorded: float | None
+    refusal_recorded: str = ""
 
 
 @dataclass(frozen=True)

@@ -91,12 +91,27 @@ def _changed_sentence(changes: Sequence[Change], unit: str) -> str:
     if not changes:
         return ""
     rules = "; ".join(f"{c.rule} was {c.recorded}, is {c.used}" for c in changes)
-    before = changes[0]
-    return (
-        f"CHANGED AFTER RESULTS: {rules}. By the recorded rules the mean is "
-        f"{significant(before.mean_recorded)} {unit}, "
-        f"{interval_in_words(before.interval_recorded, unit)}."
-    )
+    return f"CHANGED AFTER RESULTS: {rules}. By the recorded rules: {recorded_answer(changes[0], unit)}."
+
+
+def recorded_answer(change: Change, unit: str) -> str:
+    """Give the answer of the recorded rules beside a change, or why they give none.
+
+    Parameters
+    ----------
+    change : Change
+    unit : str
+
+    Examples
+    --------
+    >>> recorded_answer(Change("confidence", "0.95", "0.9",
+    ...                        Interval("upper-limit", 0.95, None, 6.5), 5.49), "mg/L")
+    'mean 5.49 mg/L, 95 % upper limit 6.50 mg/L'
+    """
+    if change.mean_recorded is None or change.interval_recorded is None:
+        return f"no mean, since {change.refusal_recorded.rstrip('.')}"
+    mean = significant(change.mean_recorded)
+    return f"mean {mean} {unit}, {interval_in_words(change.interval_recorded, unit)}"
 
 
 def _bracket_sentence(means: Means, unit: str) -> str:

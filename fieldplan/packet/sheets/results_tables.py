@@ -5,7 +5,7 @@ from math import isinf
 from fieldplan.base.document import Block, Facts, Heading, Paragraph, Table
 from fieldplan.base.units import significant
 from fieldplan.estimate.model import Change, Estimate
-from fieldplan.estimate.sentences import interval_in_words
+from fieldplan.estimate.sentences import interval_in_words, recorded_answer
 from fieldplan.plan.model import Plan
 
 
@@ -69,8 +69,7 @@ def change_blocks(estimate: Estimate) -> list[Block]:
 def one_change(estimate: Estimate, change: Change) -> list[Block]:
     """Set one change."""
     unit = estimate.unit
-    old, new = significant(change.mean_recorded), significant(estimate.mean.mean)
-    before = interval_in_words(change.interval_recorded, unit)
+    new = significant(estimate.mean.mean)
     after = interval_in_words(estimate.interval, unit)
     return [
         Heading(f"CHANGED AFTER RESULTS: {change.rule}", level=2),
@@ -78,10 +77,7 @@ def one_change(estimate: Estimate, change: Change) -> list[Block]:
             (
                 ("Recorded before results", change.recorded),
                 ("Used instead", change.used),
-                (
-                    "By the recorded rule",
-                    f"mean {old} {unit}, {before}",
-                ),
+                ("By the recorded rule", recorded_answer(change, unit)),
                 ("As changed", f"mean {new} {unit}, {after}"),
             )
         ),

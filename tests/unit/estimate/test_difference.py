@@ -1,0 +1,84 @@
+"""Planned against achieved: parts that multiply to the whole, and a target kept or missed."""
+
+import numpy as np
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from fieldplan.estimate import estimate
+from fieldplan.estimate.difference import split_difference
+from tests.unit.estimate.known import WELLS, list_plan, result, returned, strata_plan
+
+COUNTS = st.integers(2, 12)
+
+
+@given(COUNTS, COUNTS, COUNTS, COUNTS, st.floats(0.05, 0.95), st.integers(0, 10**6))
+def test_the_parts_multiply_to_achieved_over_planned(
+    planned_a: int, planned_b: int, came_a: int, came_b: int, weight: float, seed: int
+) -> None:
+    """Whatever came back, number × sharing × spread × rest is the ratio, by telescoping."""
+    noise = np.random.default_rng(seed)
+    plan = strata_plan(
+        {"a": weight, "b": 1 - weight},
+        {"a": 18.0, "b": 45.0},
+        {"a": planned_a, "b": planned_b},
+        standard_error=7.7,
+    )
+    results = [
+        result(f"{name}{n}", value, stratum=name)
+        for name, count in (("a", came_a), ("b", came_b))
+        for n, value in enumerate(noise.lognormal(3, 1, count))
+    ]
+    answer = estimate(plan, returned(results))
+    parts = split_difference(plan, answer.mean)
+    assert parts is not None
+    assert parts.ratio == pytest.approx(answer.mean.standard_error / 7.7, rel=1e-9)
+
+
+def test_each_part_is_what_it_is_called() -> None:
+    """Half the results: √2. Twice the spread: 2. Same shares: 1. The formula holds: 1."""
+    plan = strata_plan(
+        {"a": 0.5, "b": 0.5}, {"a": 1.0, "b": 1.0}, {"a": 4, "b": 4}, standard_error=8**-0.5
+    )
+    # two results at ±√2 have s = 2
+    results = [
+        result(f"{s}{n}", 50 + sign * 2**0.5, stratum=s)
+        for s in "ab"
+        for n, sign in enumerate((-1, 1))
+    ]
+    parts = split_difference(plan, estimate(plan, returned(results)).mean)
+    assert parts is not None
+    assert parts.number == pytest.approx(2**0.5)
+    assert parts.sharing == pytest.approx(1.0)
+    assert parts.spread == pytest.approx(2.0)
+    assert parts.rest == pytest.approx(1.0)
+
+
+def test_a_list_uses_its_finite_population_in_every_part() -> None:
+    """Eight wells for seven: √((1 − 8/14)/8) against √((1 − 7/14)/7) is 0.866 times."""
+    plan = list_plan()
+    returns = returned([result(f"MW-{n}", value) for n, value in enumerate(WELLS)])
+    answer = estimate(plan, returns)
+    parts = split_difference(plan, answer.mean)
+    assert parts is not None
+    assert parts.number == pytest.approx(((6 / 14 / 8) / (7 / 14 / 7)) ** 0.5)
+    assert parts.spread == pytest.approx(2.340597 / 3.1, rel=1e-6)
+    text = " ".join(answer.why_different)
+    assert "The target, standard error of the mean ≤ 0.9 mg/kg, was kept: it came to 0.542" in text
+    assert "The standard deviation was 2.34 instead of 3.10" in text
+
+
+def test_a_missed_target_is_said_to_be_missed() -> None:
+    """The plan of the factories allows 9; these results scatter far more."""
+    plan = strata_plan({"site": 1.0}, {"site": 8.0}, {"site": 3})
+    returns = returned([result(f"P{n}", v) for n, v in enumerate((1.0, 60.0, 140.0))])
+    assert "was missed: it came to 40.3 mg/kg" in " ".join(estimate(plan, returns).why_different)
+
+
+def test_a_census_has_nothing_to_split() -> None:
+    """Zero over zero is no ratio."""
+    plan = list_plan(layout="census", units=8)
+    returns = returned([result(f"MW-{n}", value) for n, value in enumerate(WELLS)])
+    answer = estimate(plan, returns)
+    assert split_difference(plan, answer.mean) is None
+    assert answer.why_different
