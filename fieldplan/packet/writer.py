@@ -103,9 +103,11 @@ def _fill(plan: Plan, folder: Path, inputs: Mapping[str, bytes], progress: Progr
 
 
 def _write_inputs(plan: Plan, office: Path, inputs: Mapping[str, bytes]) -> None:
-    (office / "campaign.toml").write_text(plan.campaign_text, encoding="utf-8")
+    kept = office / "inputs"
+    kept.mkdir()
+    (kept / "campaign.toml").write_text(plan.campaign_text, encoding="utf-8")
     for name, content in inputs.items():
-        path = office / "inputs" / safe_input_name(name)
+        path = kept / safe_input_name(name)
         path.parent.mkdir(parents=True, exist_ok=True)
         path.write_bytes(content)
 
@@ -255,7 +257,7 @@ def _packed_inputs(folder: Path) -> dict[str, bytes]:
     return {
         path.relative_to(kept).as_posix(): path.read_bytes()
         for path in sorted(kept.rglob("*"))
-        if path.is_file()
+        if path.is_file() and path != kept / "campaign.toml"
     }
 
 

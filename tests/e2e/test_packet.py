@@ -21,7 +21,7 @@ def test_a_packet_holds_what_crew_and_office_need(packed: Packed) -> None:
     office |= {
         "office/plan_sheet.html",
         "office/plan_sheet.pdf",
-        "office/campaign.toml",
+        "office/inputs/campaign.toml",
         "office/record.json",
     }
     assert {"START_HERE.html"} | crew | office <= names
@@ -134,6 +134,16 @@ def test_a_packet_is_drawn_again_from_its_record_alone(packed: Packed, tmp_path:
     attachment = Path(answer["attachment"])
     assert attachment.read_bytes().startswith(b"%PDF")
     assert changed_files(site.packet) == ()
+
+
+def test_the_inputs_kept_in_a_packet_give_the_same_packet_again(
+    packed: Packed, tmp_path: Path
+) -> None:
+    """A packet that can be packed again from itself needs no archive beside it."""
+    kept = packed.packet / "office" / "inputs" / "campaign.toml"
+    outcome = run("pack", kept, "--out", tmp_path, "--date", "2026-09-21")
+    assert outcome.exit_code == 0, outcome.output
+    assert file_hashes(tmp_path / packed.packet.name) == file_hashes(packed.packet)
 
 
 @pytest.mark.parametrize("command", ["issue", "redraw", "estimate"])
