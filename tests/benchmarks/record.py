@@ -1,8 +1,9 @@
-"""Print the figures of docs/performance.md: ``python -m tests.benchmarks.record placement``."""
+"""Print the figures of docs/performance.md: ``python -m tests.benchmarks.record [SECTION]``."""
 
 import sys
 from collections.abc import Callable, Iterator
 
+from tests.benchmarks.commands import timed_commands
 from tests.benchmarks.placement import COUNTS, VERTICES, measured
 
 
@@ -20,7 +21,18 @@ def placement() -> Iterator[str]:
             )
 
 
-SECTIONS: dict[str, Callable[[], Iterator[str]]] = {"placement": placement}
+def commands() -> Iterator[str]:
+    """Yield the table of the section "Commands as whole processes"."""
+    yield "| command | aim | median | bare interpreter | ratio |"
+    yield "| --- | --- | --- | --- | --- |"
+    for row in timed_commands():
+        yield (
+            f"| {row.name} | {row.aim_s:g} s | {row.seconds:.3f} s | {row.bare_s:.3f} s "
+            f"| {row.ratio:.0f} |"
+        )
+
+
+SECTIONS: dict[str, Callable[[], Iterator[str]]] = {"placement": placement, "commands": commands}
 
 if __name__ == "__main__":
     for name in sys.argv[1:] or SECTIONS:
