@@ -71,7 +71,7 @@ def command(
         return
     from fieldplan.plan.make import make_plan
 
-    plan = make_plan(read, made_on=date.today(), progress=lambda stage: say(stage, quiet=True))
+    plan = make_plan(read, made_on=date.today())
     to_stdout = csv_file is not None and str(csv_file) == "-"
     _write_files(plan, csv_file=None if to_stdout else csv_file, map_file=map_file, quiet=quiet)
     if as_json:

@@ -72,7 +72,7 @@ class Census:
         places = tuple(
             place
             for stratum, _ in pairs
-            for place in list_places(stratum.name, stratum.units, "random")
+            for place in list_places(stratum.name, stratum.units, location_class="random")
         )
         spare = sum(count.alternates for _, count in pairs)
         notes = ("A census leaves no alternates: every unit is visited.",) if spare else ()

@@ -111,7 +111,7 @@ class Grid:
             notes += _count_notes(stratum, count, len(nodes), tries)
             order = Stream(seed, design, stratum.name, "grid order").permutation(len(nodes))
             chosen = nodes[order]
-            places += area_places(stratum.name, chosen.tolist(), "random")
+            places += area_places(stratum.name, chosen.tolist(), location_class="random")
             spare = draw_places(
                 ground,
                 count.alternates,
@@ -119,7 +119,9 @@ class Grid:
                 spacing_m=minimum_spacing_m,
                 taken=[(east, north) for east, north in chosen.tolist()],
             )
-            places += area_places(stratum.name, spare.tolist(), "alternate", first=len(chosen) + 1)
+            places += area_places(
+                stratum.name, spare.tolist(), location_class="alternate", first=len(chosen) + 1
+            )
         realised = sum(place.location_class == "random" for place in places)
         return DrawnPlaces(tuple(places), realised, tuple(notes))
 

@@ -73,7 +73,9 @@ class SimpleRandom:
                 f'({names}). Write layout = "stratified", or leave the strata out of the frame.'
             )
             raise DesignError(message)
-        return draw_strata(frame, counts, seed, design, minimum_spacing_m)
+        return draw_strata(
+            frame, counts, seed=seed, design=design, minimum_spacing_m=minimum_spacing_m
+        )
 
     def estimate(
         self, strata: Sequence[StratumValues], *, single_result: str = "refuse"
@@ -92,6 +94,7 @@ class SimpleRandom:
 def draw_strata(
     frame: Frame,
     counts: Sequence[StratumCount],
+    *,
     seed: int,
     design: str,
     minimum_spacing_m: float,
@@ -116,9 +119,12 @@ def _draw_area(
     stream = Stream(seed, design, stratum.name, "places")
     ground = ground_of(stratum, "simple-random")
     drawn = draw_places(ground, count.planned + count.alternates, stream, spacing_m=spacing_m)
-    chosen = area_places(stratum.name, drawn[: count.planned].tolist(), "random")
+    chosen = area_places(stratum.name, drawn[: count.planned].tolist(), location_class="random")
     rest = area_places(
-        stratum.name, drawn[count.planned :].tolist(), "alternate", first=count.planned + 1
+        stratum.name,
+        drawn[count.planned :].tolist(),
+        location_class="alternate",
+        first=count.planned + 1,
     )
     notes = [SPACING_NOTE.format(spacing=spacing_m, stratum=stratum.name)] if spacing_m else []
     return chosen + rest, notes
@@ -135,9 +141,12 @@ def _draw_list(
         raise DesignError(message)
     order = units_in_drawn_order(stratum.units, seed=seed, design=design, stratum=stratum.name)
     last = count.planned + count.alternates
-    chosen = list_places(stratum.name, order[: count.planned], "random")
+    chosen = list_places(stratum.name, order[: count.planned], location_class="random")
     rest = list_places(
-        stratum.name, order[count.planned : last], "alternate", first=count.planned + 1
+        stratum.name,
+        order[count.planned : last],
+        location_class="alternate",
+        first=count.planned + 1,
     )
     if len(rest) == count.alternates:
         return chosen + rest, []

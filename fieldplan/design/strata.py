@@ -79,8 +79,8 @@ def ground_of(stratum: Stratum, layout: str) -> Ground:
 def area_places(
     stratum: str,
     places_cm: Iterable[Sequence[int]],
-    location_class: LocationClass,
     *,
+    location_class: LocationClass,
     first: int = 1,
 ) -> tuple[DrawnPlace, ...]:
     """Turn places in whole centimetres into drawn places numbered from ``first``."""
@@ -93,8 +93,8 @@ def area_places(
 def list_places(
     stratum: str,
     units: Iterable[ListUnit],
-    location_class: LocationClass,
     *,
+    location_class: LocationClass,
     first: int = 1,
 ) -> tuple[DrawnPlace, ...]:
     """Turn list units into drawn places numbered from ``first``."""

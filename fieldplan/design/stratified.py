@@ -45,7 +45,9 @@ class Stratified:
         DesignError
             A count is missing or too large, or the places do not fit.
         """
-        return draw_strata(frame, counts, seed, design, minimum_spacing_m)
+        return draw_strata(
+            frame, counts, seed=seed, design=design, minimum_spacing_m=minimum_spacing_m
+        )
 
     def estimate(
         self, strata: Sequence[StratumValues], *, single_result: str = "refuse"
