@@ -34,8 +34,8 @@ CAUTION = (
 )
 EXACT_NOTE = (
     "The grid of '{stratum}' was started anew {tries} times until exactly {count} places fell "
-    "inside. Among grids this makes places along the edge slightly less likely than others, most "
-    "so on narrow sites with few places."
+    "inside. Keeping only such starts can make places along the edge slightly less likely than "
+    "others, most so on narrow sites with few places."
 )
 
 

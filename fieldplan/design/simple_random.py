@@ -27,9 +27,10 @@ from fieldplan.frame.model import Frame, Stratum
 from fieldplan.stats.stratified import predicted_variance
 
 SPACING_NOTE = (
-    "A minimum spacing of {spacing:g} m was kept within '{stratum}'. It passes over places near "
-    "those already drawn, so that places are no longer exactly equally likely; the interval is "
-    "computed as if they were, and tends to be a little wide."
+    "A minimum spacing of {spacing:g} m was kept within '{stratum}'. Places are then no longer "
+    "exactly equally likely: those along the edge have fewer neighbours and are drawn more often, "
+    "the more so the wider the spacing. The mean and its interval are computed as if all were "
+    "equally likely."
 )
 
 

@@ -366,3 +366,25 @@ def test_simple_random_places_have_the_predicted_variance() -> None:
     assert abs(np.mean(means) - 50) < 4 * math.sqrt(variance / seeds)
     # The mean of 8 uniforms is near normal, so its sample variance has SE v √(2/(k - 1)).
     assert abs(np.var(means, ddof=1) - variance) < 4 * variance * math.sqrt(2 / (seeds - 1))
+
+
+def test_a_minimum_spacing_favours_the_edge_as_its_note_says() -> None:
+    """The warning must be true: share within 6 m of the edge against its share of the area."""
+    site, seeds, n = shapely.box(0, 0, 100, 60), 150, 15
+    inner, layout = shapely.box(6, 6, 94, 54), layout_named("simple-random")
+    share = 1 - inner.area / site.area
+    found = {}
+    for spacing in (0.0, 14.0):
+        drawn = [
+            place
+            for seed in range(seeds)
+            for place in layout.draw(
+                area_frame(field=site), [StratumCount("field", n, 0)], seed=seed, design="main",
+                minimum_spacing_m=spacing,
+            ).places
+        ]  # fmt: skip
+        inside = shapely.contains_xy(inner, [p.easting for p in drawn], [p.northing for p in drawn])
+        found[spacing] = 1 - inside.mean()
+    tolerance = 4 * math.sqrt(share * (1 - share) / (seeds * n))
+    assert abs(found[0.0] - share) < tolerance
+    assert found[14.0] > share + tolerance
