@@ -229,11 +229,11 @@ def test_grid_gets_no_credit() -> None:
 
 @pytest.mark.parametrize("interval", ["two-sided", "upper-limit"])
 def test_conditions_name_what_skewness_asks_for(interval: str) -> None:
-    """G1 = 1.8: 25·3.24 = 81 and 121·3.24 = 391 or 392; 8 results can show 2.27 at most."""
+    """G1 = 1.8: 25·3.24 = 81 and 121·3.24 = 392.04, so 393; 8 results can show 2.27 at most."""
     parts = whole(results=8, skewness=1.8, pilot="pilot.csv")
     text = " ".join(answer(ask(parts, 6.0, interval=interval)).conditions)
     assert "needs about 81 results (n > 25·G1², Cochran 1977)" in text
-    assert "an upper limit alone needs several times that, about 39" in text
+    assert "an upper limit alone needs several times that, about 393." in text
     assert "8 results can show a skewness of 2.27 at most" in text
     assert "common practice for data that are not normal (no source)" in text
     assert "a normal population needs no minimum" in text

@@ -51,7 +51,7 @@ def test_stated_chance_is_kept_for_strata(
     Satterthwaite's degrees of freedom and the factor for Neyman are approximations; 3 points are
     allowed for them beside 4 standard errors of the simulation.
     """
-    generator, assurance, campaigns = np.random.default_rng(23), 0.8, 600
+    generator, assurance, campaigns = np.random.default_rng(23), 0.8, 300
     kept = 0
     for _ in range(campaigns):
         question = _after_pilot(

@@ -133,6 +133,7 @@ def test_one_sided_rule_is_the_first_edgeworth_term() -> None:
     z = stats.norm.ppf(0.95)
     n = ((2 * z * z + 1) * stats.norm.pdf(z) / 6 / 0.01) ** 2
     assert n_for_one_sided(1.0) == round(n) == 121
+    assert n_for_one_sided(-2.0) == 4 * 121
     # Hesterberg 2015 (A10-003): errors within 10 % of 2.5 % on either side for an exponential.
     z = stats.norm.ppf(0.975)
     hesterberg = (2 * (2 * z * z + 1) * stats.norm.pdf(z) / 6 / 0.0025) ** 2
