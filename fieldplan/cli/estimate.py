@@ -1,5 +1,6 @@
 """``fieldplan estimate``: laboratory results meet their packet."""
 
+import os
 from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -122,16 +123,22 @@ def command(
     say(_received(returns), quiet=quiet)
     for note in returns.notes:
         say(wrapped(f"- {note}"), quiet=quiet)
-    folder = packet.parent.parent if packet.is_file() else packet
+    folder = (packet.parent.parent if packet.is_file() else packet).absolute()
     sources = [path for path in (lab_file, field_file, matches_file) if path]
     results = write_results(
         plan,
         answer,
-        out or folder.parent,
+        out or _beside(folder),
         sources=sources,
         progress=lambda stage: say(f"  {stage} …", quiet=quiet),
     )
     _print(answer, results, options)
+
+
+def _beside(packet: Path) -> Path:
+    """Name the folder that holds the packet, short where it is the current one."""
+    parent = Path(os.path.normpath(packet)).parent
+    return parent.relative_to(Path.cwd()) if parent.is_relative_to(Path.cwd()) else parent
 
 
 def _overrides(options: dict[str, Any]) -> dict[str, str | float]:

@@ -91,7 +91,8 @@ def _changed_sentence(changes: Sequence[Change], unit: str) -> str:
     if not changes:
         return ""
     rules = "; ".join(f"{c.rule} was {c.recorded}, is {c.used}" for c in changes)
-    return f"CHANGED AFTER RESULTS: {rules}. By the recorded rules: {recorded_answer(changes[0], unit)}."
+    before = recorded_answer(changes[0], unit)
+    return f"CHANGED AFTER RESULTS: {rules}. By the recorded rules: {before}."
 
 
 def recorded_answer(change: Change, unit: str) -> str:
