@@ -18,12 +18,14 @@ from pyproj.transformer import TransformerGroup
 
 from fieldplan.base.errors import FrameError
 from fieldplan.frame.layer import Layer
+from fieldplan.frame.projection import transformed
 
 WGS84 = pyproj.CRS.from_epsg(4326)
 COARSEST_ACCURACY_M = 5.0
 """Handheld receivers under open sky reach 3 to 5 m (common practice, no source)."""
 
 _FAR_OUTSIDE_DEGREES = 10.0
+_MARGIN_DEGREES = 0.01
 _DEGREES_BY_RULE = ("GeoJSON", "KML", "GPX")
 _TYPED = "frame.crs"
 
@@ -56,9 +58,7 @@ class Shift:
         self, coordinates: NDArray[np.float64]
     ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
         """Turn an (n, 2) array of x, y into arrays of latitude and longitude."""
-        longitude, latitude = self.transformer.transform(
-            coordinates[:, 0].copy(), coordinates[:, 1].copy()
-        )
+        longitude, latitude = transformed(self.transformer, coordinates[:, 0], coordinates[:, 1])
         return np.asarray(latitude, dtype=float), np.asarray(longitude, dtype=float)
 
 
@@ -98,10 +98,8 @@ def shift_for(
     crs, crs_from = _crs(layer, coordinates, typed_crs)
     _check_numbers(layer.name, crs, coordinates)
     transformer, better = _operation(layer.name, crs, coordinates)
-    accuracy = -1.0 if transformer.accuracy is None else float(transformer.accuracy)
-    shift = Shift(
-        crs, transformer, accuracy, _source(layer, crs, crs_from, transformer.description, accuracy)
-    )
+    steps, accuracy = _datum_steps(transformer)
+    shift = Shift(crs, transformer, accuracy, _source(layer, crs, crs_from, steps, accuracy))
     _check_place(layer.name, shift, coordinates)
     allowed = max(COARSEST_ACCURACY_M, position_accuracy_m or 0.0, accepted_m or 0.0)
     _check_accuracy(layer.name, shift, allowed, accepted_m, better)
@@ -153,7 +151,7 @@ def _crs(
         x, y = coordinates[0]
         message = (
             f"{layer.name} does not say which CRS its coordinates ({x:g}, {y:g}) are in; "
-            'write it as crs = "EPSG:…" in [frame], or export the file again with its CRS.'
+            'write it as crs = "EPSG:…" in [[frame]], or export the file again with its CRS.'
         )
         raise FrameError(message)
     return _flat(crs, layer.name), crs_from
@@ -207,7 +205,7 @@ def _check_numbers(name: str, crs: pyproj.CRS, coordinates: NDArray[np.float64])
         raise FrameError(message)
     message = (
         f"{name} says degrees, {crs_in_words(crs)}, but its coordinates {seen} look like metres or "
-        'feet of a map grid; name that grid as crs = "EPSG:…" in [frame], or set it in the file.'
+        'feet of a map grid; name that grid as crs = "EPSG:…" in [[frame]], or set it in the file.'
     )
     raise FrameError(message)
 
@@ -218,16 +216,17 @@ def _operation(
     """Fix the best operation that is at hand for this place, and name a better one that is not."""
     rough = _group(name, crs, None).transformers[0]
     probe = np.vstack([coordinates.min(axis=0), coordinates.max(axis=0), coordinates[0]])
-    longitude, latitude = rough.transform(probe[:, 0].copy(), probe[:, 1].copy())
+    longitude, latitude = transformed(rough, probe[:, 0], probe[:, 1])
     area = None
     if np.isfinite(longitude).all() and np.isfinite(latitude).all():
         wrapped = (np.asarray(longitude) + 180) % 360 - 180
         if np.ptp(wrapped) < 180 and np.abs(latitude).max() <= 90:
+            # PROJ before 9.5 finds nothing for an area without extent: a point, a straight line.
             area = AreaOfInterest(
-                float(wrapped.min()),
-                float(min(latitude)),
-                float(wrapped.max()),
-                float(max(latitude)),
+                max(float(wrapped.min()) - _MARGIN_DEGREES, -180.0),
+                max(float(np.min(latitude)) - _MARGIN_DEGREES, -90.0),
+                min(float(wrapped.max()) + _MARGIN_DEGREES, 180.0),
+                min(float(np.max(latitude)) + _MARGIN_DEGREES, 90.0),
             )
     group = _group(name, crs, area)
     better = [o for o in group.unavailable_operations if o.accuracy and o.accuracy > 0]
@@ -306,20 +305,37 @@ def _check_accuracy(
     message = (
         f"{name}: the datum shift from {crs_in_words(shift.crs)} to WGS 84 that is at hand is {has}"
         f" (limit {allowed:g} m).{grid} Export the file in WGS 84 with a program that has the "
-        f"grid, or write accept_shift_accuracy_m = {wanted} in [frame] to accept it."
+        f"grid, or write accept_shift_accuracy_m = {wanted} in [[frame]] to accept it."
     )
     raise FrameError(message)
 
 
-def _source(layer: Layer, crs: pyproj.CRS, crs_from: str, operation: str, accuracy: float) -> str:
+def _datum_steps(transformer: pyproj.Transformer) -> tuple[str, float]:
+    """Name the steps that change the datum, and add up their accuracies; -1 when one is unknown.
+
+    A conversion (grid to degrees on one datum, order of axes) moves nothing. Some versions of PROJ
+    report -1 for it, others 0, so the steps are asked and not the whole.
+    """
+    operations = transformer.operations or ()
+    moving = [step for step in operations if step.type_name != "Conversion"]
+    if operations and not moving:
+        return "", 0.0
+    if moving:
+        known = all(step.accuracy >= 0 for step in moving)
+        accuracy = sum(step.accuracy for step in moving) if known else -1.0
+        return " + ".join(step.name for step in moving), float(accuracy)
+    alone = -1.0 if transformer.accuracy is None else float(transformer.accuracy)
+    return transformer.description, alone
+
+
+def _source(layer: Layer, crs: pyproj.CRS, crs_from: str, steps: str, accuracy: float) -> str:
     """Write the line for map and sheet."""
     told = f", from {crs_from}" if crs_from else ""
     head = f"{layer.name} ({layer.format}): {crs_in_words(crs)}{told}"
     if accuracy == 0.0:
         return f"{head}; no datum shift needed"
-    steps = [step for step in operation.split(" + ") if not step.startswith("axis order")]
     known = "of unknown accuracy" if accuracy < 0 else f"good to {accuracy:g} m"
-    return f"{head}; datum shift {' + '.join(steps)}, {known}"
+    return f"{head}; datum shift {steps}, {known}"
 
 
 def _notes(name: str, shift: Shift, position_accuracy_m: float | None) -> tuple[str, ...]:

@@ -41,7 +41,7 @@ class FrameFiles:
     folder : Path
         Where relative paths start.
     table : FrameTable
-        ``[frame]`` of the campaign.
+        ``[[frame]]`` of the campaign.
     position_accuracy_m : float or None
         Of the receiver that the crew carries.
     """
@@ -139,7 +139,7 @@ def read_ground(files: FrameFiles) -> Ground:
     """
     typed = files.table.boundary
     if not typed:
-        message = '[frame] has no boundary; name the file of the outline as boundary = "…".'
+        message = '[[frame]] has no boundary; name the file of the outline as boundary = "…".'
         raise FrameError(message)
     overlay = files.open(typed)
     features, notes = polygon_features(overlay.layer)

@@ -49,7 +49,7 @@ def read_list(files: FrameFiles, targeted: tuple[Targeted, ...], *, census: bool
     """
     table = files.table
     if not table.list_file:
-        message = '[frame] has no list; name the file of its units as list_file = "…".'
+        message = '[[frame]] has no list; name the file of its units as list_file = "…".'
         raise FrameError(message)
     _refuse_area_keys(files)
     overlay = files.open(table.list_file, wanted="point")

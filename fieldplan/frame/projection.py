@@ -13,6 +13,7 @@ import numpy as np
 import pyproj
 import pyproj.network
 from numpy.typing import ArrayLike, NDArray
+from pyproj.enums import TransformDirection
 
 from fieldplan.frame.model import SiteProjection
 
@@ -75,9 +76,7 @@ def to_site(
     >>> abs(round(easting, 3)), abs(round(northing, 3))
     (0.0, 0.0)
     """
-    easting, northing = _site_transformer(projection.definition).transform(
-        _plain(longitude), _plain(latitude)
-    )
+    easting, northing = transformed(_site_transformer(projection.definition), longitude, latitude)
     return easting, northing
 
 
@@ -105,12 +104,13 @@ def to_degrees(
     (52.10899, -1.9)
     """
     transformer = _site_transformer(projection.definition)
-    x, y = _plain(easting), _plain(northing)
-    longitude, latitude = transformer.transform(x, y, direction="INVERSE")
+    longitude, latitude = transformed(transformer, easting, northing, inverse=True)
     # PROJ's inverse ends a series early (up to 1.6 mm in 9.5); its forward is closed, so one
     # correction brings both together and makes the answer the same in every version.
-    x1, y1 = transformer.transform(longitude, latitude)
-    longitude, latitude = transformer.transform(2 * x - x1, 2 * y - y1, direction="INVERSE")
+    x, y = transformed(transformer, longitude, latitude)
+    longitude, latitude = transformed(
+        transformer, 2 * np.asarray(easting) - x, 2 * np.asarray(northing) - y, inverse=True
+    )
     return latitude, longitude
 
 
@@ -268,9 +268,34 @@ def centre_of(latitude: NDArray[np.float64], longitude: NDArray[np.float64]) -> 
     return SiteProjection(centre_latitude + 0.0, centre_longitude + 0.0)
 
 
-def _plain(values: ArrayLike) -> Any:
-    """Hand pyproj floats and float arrays only, so that it never converts in place or guesses."""
-    return float(values) if np.ndim(values) == 0 else np.array(values, dtype=float)  # type: ignore[arg-type]
+def transformed(
+    transformer: pyproj.Transformer, x: ArrayLike, y: ArrayLike, *, inverse: bool = False
+) -> tuple[Coordinates, Coordinates]:
+    """Apply a transformer to floats or arrays, leaving what was given as it was.
+
+    Parameters
+    ----------
+    transformer : pyproj.Transformer
+        Made with ``always_xy=True``.
+    x, y : float or array of float
+        Easting or longitude, northing or latitude.
+    inverse : bool
+        Go the other way.
+
+    Returns
+    -------
+    x, y : float or array of float
+        As many as were given; an array of one stays an array.
+    """
+    direction = TransformDirection.INVERSE if inverse else TransformDirection.FORWARD
+    given = np.array(x, dtype=float), np.array(y, dtype=float)
+    if given[0].size != 1:
+        return transformer.transform(*given, direction=direction)
+    # pyproj 3.7 takes an array of one for a number, and numpy warns about that.
+    single = transformer.transform(given[0].item(), given[1].item(), direction=direction)
+    if given[0].ndim == 0:
+        return single
+    return np.full(given[0].shape, single[0]), np.full(given[0].shape, single[1])
 
 
 def _angle(degrees: float, letters: str, *, width: int) -> str:

@@ -78,7 +78,7 @@ def _column(layer: Layer, wanted: str) -> str:
     there = ", ".join(layer.columns) or "none"
     message = (
         f"{layer.name} has no column {wanted!r} (its columns: {there}); name the one with the "
-        'strata as stratum_column = "…" in [frame].'
+        'strata as stratum_column = "…" in [[frame]].'
     )
     raise FrameError(message)
 

@@ -64,7 +64,7 @@ def frame_of(
     census: bool = False,
     **table: Any,
 ) -> Frame:
-    """Read a frame from files in ``folder``; ``table`` are keys of ``[frame]``."""
+    """Read a frame from files in ``folder``; ``table`` are keys of ``[[frame]]``."""
     table.setdefault("kind", "area")
     if table["kind"] == "area":
         table.setdefault("boundary", "boundary.geojson")

@@ -10,6 +10,7 @@ import pytest
 import shapely
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
+from shapely import affinity
 
 from tests.unit.frame.sites import box, frame_of, polygon, write_geojson
 
@@ -145,7 +146,7 @@ def test_a_site_keeps_its_area_when_it_is_moved_and_turned(
     to_degrees = pyproj.Transformer.from_crs(
         "+proj=laea +lat_0=48.3 +lon_0=11.2 +datum=WGS84", "EPSG:4326", always_xy=True
     )
-    moved = shapely.affinity.translate(shapely.affinity.rotate(shape, turn), east, north)
+    moved = affinity.translate(affinity.rotate(shape, turn), east, north)
     ring = np.column_stack(to_degrees.transform(*np.asarray(moved.exterior.coords).T))
     assert gross(tmp_path, ring.tolist()) == pytest.approx(shape.area, rel=1e-4)
 

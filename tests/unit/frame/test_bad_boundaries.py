@@ -44,7 +44,7 @@ def test_a_missing_boundary_is_named_with_a_near_miss(tmp_path: Path) -> None:
 
 def test_an_area_without_a_boundary_is_refused(tmp_path: Path) -> None:
     """Nothing can be drawn in an area that is not given."""
-    assert refusal(tmp_path, boundary=None).startswith("[frame] has no boundary")
+    assert refusal(tmp_path, boundary=None).startswith("[[frame]] has no boundary")
 
 
 def test_a_folder_is_no_boundary(tmp_path: Path) -> None:
@@ -254,7 +254,7 @@ def test_a_shapefile_without_prj_asks_for_its_crs(tmp_path: Path) -> None:
     (tmp_path / "site.prj").unlink()
     message = refusal(tmp_path, boundary="site.shp")
     assert message.startswith("site.shp does not say which CRS its coordinates (575")
-    assert 'crs = "EPSG:…" in [frame]' in message
+    assert 'crs = "EPSG:…" in [[frame]]' in message
     frame = frame_of(tmp_path, boundary="site.shp", crs="EPSG:32630")
     assert frame.population.gross == pytest.approx(UTM_SITE.area, rel=1e-3)
 

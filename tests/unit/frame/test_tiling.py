@@ -127,7 +127,7 @@ def test_a_missing_column_lists_those_that_are_there(site: Path) -> None:
     write_geojson(site / "strata.geojson", half)
     assert refusal(site) == (
         "strata.geojson has no column 'stratum' (its columns: soil, id); name the one with the "
-        'strata as stratum_column = "…" in [frame].'
+        'strata as stratum_column = "…" in [[frame]].'
     )
     frame = frame_of(site, strata="strata.geojson", stratum_column="soil")
     assert frame.strata[0].name == "clay"
