@@ -72,7 +72,7 @@ def command(
     plan = make_plan(read, made_on=day(on), revision=revision, progress=progress)
     packet = write_packet(plan, parent, inputs, progress=progress)
     start = packet / "START_HERE.html"
-    still_open = [f"{c.topic}: {c.defers_to}" for c in plan.open_items if c.holds_work]
+    held = [c.topic for c in plan.open_items if c.holds_work]
     if as_json:
         print_json(
             {
@@ -85,12 +85,12 @@ def command(
                 "alternates": len(plan.locations.of_class("alternate")),
                 "targeted": len(plan.locations.of_class("targeted")),
                 "samples": len(plan.samples.samples),
-                "holds_open": [c.topic for c in plan.open_items if c.holds_work],
+                "holds_open": held,
                 "open": [c.topic for c in plan.open_items],
             }
         )
     else:
-        _say_what_matters(plan_sentences(plan), start, still_open)
+        _say_what_matters(plan_sentences(plan), start, held)
     if open_it:
         click.launch(str(start))
 
@@ -109,11 +109,9 @@ def plan_sentences(plan: "Plan") -> list[str]:
     ]
 
 
-def _say_what_matters(sentences: list[str], start: Path, still_open: list[str]) -> None:
+def _say_what_matters(sentences: list[str], start: Path, held: list[str]) -> None:
     for sentence in sentences:
         click.echo(wrapped(sentence))
     click.echo(f"Open first: {start}")
-    if still_open:
-        click.echo(f"Work is held until these are cleared ({len(still_open)} OPEN):")
-        for item in still_open:
-            click.echo(wrapped(f"- {item}", indent="  "))
+    if held:
+        click.echo(wrapped(f"Work is held until these are cleared: {'; '.join(held)}."))
