@@ -5,6 +5,15 @@ from fieldplan.sizing.words import counted, figure, listed, percent, typed_perce
 from fieldplan.stats.shape import n_for_one_sided, n_for_two_sided, t_coverage
 from fieldplan.stats.summary import skewness_ceiling
 
+LITTLE = 0.5
+"""A skewness below this is called little: its rule would ask for a handful of results."""
+
+RULE = (
+    "For skewed data a two-sided 95 % interval needs n above 25·G1², with G1 the skewness of the "
+    "population (Cochran 1977); an upper limit alone needs several times that, about 121·G1². At "
+    "a skewness of 2 that is 100 and 484."
+)
+
 
 def conditions(question: Question, needed: tuple[int, ...]) -> tuple[str, ...]:
     """Say under what condition the interval and the number may be trusted.
@@ -67,19 +76,18 @@ def _lean(question: Question, needed: tuple[int, ...]) -> list[str]:
     """Say what skewness asks for: by the pilot where there is one, else as a rule."""
     known = [part for part in question.parts if part.skewness is not None]
     if not known:
-        return [
-            "For skewed data a two-sided 95 % interval needs n above 25·G1², with G1 the skewness "
-            "of the population (Cochran 1977); an upper limit alone needs several times that, "
-            "about 121·G1². At a skewness of 2 that is 100 and 484."
-        ]
+        return [RULE]
     worst = max(known, key=lambda part: abs(part.skewness or 0.0))
     lean = worst.skewness or 0.0
     where = "" if len(question.parts) == 1 else f" in {worst.name}"
-    two, one = max(2, n_for_two_sided(lean)), max(2, n_for_one_sided(lean))
+    shown = figure(lean, 2).replace("-", "−")
+    if abs(lean) < LITTLE:
+        little = f"The results behind sigma show little skewness{where} (G1 = {shown})."
+        return [little, *_ceiling(worst), RULE]
     lines = [
-        f"At a skewness G1 of {figure(lean, 2)}{where} a two-sided 95 % interval needs about "
-        f"{two} results (n > 25·G1², Cochran 1977); an upper limit alone needs several times "
-        f"that, about {one}."
+        f"At a skewness G1 of {shown}{where} a two-sided 95 % interval needs about "
+        f"{n_for_two_sided(lean)} results (n > 25·G1², Cochran 1977); an upper limit alone needs "
+        f"several times that, about {n_for_one_sided(lean)}."
     ]
     lines += _ceiling(worst)
     if len(question.parts) == 1 and question.confidence <= 0.99:

@@ -199,7 +199,7 @@ def _stratified(question: Question, plain: tuple[int, ...]) -> Iterator[Step]:
     yield Step(
         symbol="n",
         meaning=f"Results needed with sigma at face value, {allocation.capitalize()} allocation",
-        formula=f"n = {symbol} / ({below}{' + Σ W²·s²/N' if listed else ''})",
+        formula=f"n = {symbol} / ({below} + Σ W²·s²/N)" if listed else f"n = {symbol} / {below}",
         inputs=tuple(inputs),
         unrounded=total,
         rounded=float(sum(plain)),

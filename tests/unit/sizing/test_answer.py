@@ -241,6 +241,16 @@ def test_conditions_name_what_skewness_asks_for(interval: str) -> None:
     assert f"a nominal 95 % {name} from 22 results holds the true mean in about" in text
 
 
+def test_little_skewness_proves_no_symmetry() -> None:
+    """A pilot of 10 with G1 = −0.03: no number from it, but the rule and what 10 can show."""
+    parts = whole(results=10, skewness=-0.03, pilot="pilot.csv")
+    text = " ".join(answer(ask(parts, 6.0)).conditions)
+    assert "show little skewness (G1 = −0.030)" in text
+    assert "a small pilot never proves symmetry" in text
+    assert "At a skewness of 2 that is 100 and 484." in text
+    assert "needs about" not in text
+
+
 def test_conditions_give_the_rule_where_no_skewness_is_known() -> None:
     """The rule with one worked value: 25·4 and 121·4."""
     text = " ".join(answer(ask(three(), 9.0)).conditions)
