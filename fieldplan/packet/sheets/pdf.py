@@ -32,7 +32,7 @@ def set_pdf(document: Document, *, paper: Literal["A4", "Letter"]) -> bytes:
 
     with tempfile.TemporaryDirectory(prefix="fieldplan-") as name:
         folder = Path(name)
-        facts = _facts(document, paper)
+        facts = sheet_facts(document, paper)
         for number, figure in enumerate(_figures(document), start=1):
             (folder / f"figure-{number}.svg").write_text(figure.svg, encoding="utf-8")
         (folder / "sheet.json").write_text(json.dumps(facts), encoding="utf-8")
@@ -62,17 +62,24 @@ def _figures(document: Document) -> list[Figure]:
     return [block for block in document.blocks if isinstance(block, Figure)]
 
 
-def _facts(document: Document, paper: str) -> dict[str, Any]:
+def sheet_facts(document: Document, paper: str) -> dict[str, Any]:
     """Turn a document into plain values for the template."""
     serial = iter(range(1, len(document.blocks) + 1))
     return {
         "title": printable(document.title),
+        "head": _cut(printable(document.title), 48),
         "subtitle": printable(document.subtitle),
         "revision": printable(document.revision_name),
         "status": printable(document.status),
         "paper": {"A4": "a4", "Letter": "us-letter"}[paper],
         "blocks": _led([_block(block, serial) for block in document.blocks]),
     }
+
+
+def _cut(text: str, most: int) -> str:
+    """Cut the title that runs at the head of each page; it stands whole on the first."""
+    line = " ".join(text.split())
+    return line if len(line) <= most else line[: most - 1].rstrip() + "…"
 
 
 def _led(blocks: list[dict[str, Any]]) -> list[dict[str, Any]]:
