@@ -71,9 +71,11 @@ def nearest(text: str, names: Iterable[str], *, cutoff: float = 0.75) -> list[st
     """
     wanted = likeness(text)
     scores: dict[str, tuple[float, bool, int]] = {}
+    matcher = SequenceMatcher(None, "", wanted, autojunk=False)
     for name in names:
         other = likeness(name)
-        share = SequenceMatcher(None, wanted, other, autojunk=False).ratio()
+        matcher.set_seq1(other)
+        share = matcher.ratio() if matcher.quick_ratio() >= cutoff else 0.0
         if share >= cutoff:
             in_place = sum(a == b for a, b in zip(wanted, other, strict=False))
             scores[name] = (share, sorted(wanted) == sorted(other), in_place)
