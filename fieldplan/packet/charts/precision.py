@@ -13,6 +13,8 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure as Canvas
 
+_PLATE = {"facecolor": "white", "edgecolor": "none", "pad": 0.8}
+
 
 def precision_curve(size: Size) -> Figure:
     """Draw precision against n with a band for sigma off by 25 %, the target, and the n needed.
@@ -100,7 +102,7 @@ def _precision(axes: "Axes", size: Size) -> None:
     axes.plot(n, low, color=BLUE, linewidth=0.7, linestyle=(0, (4, 2)))
     axes.annotate(
         "band: sigma 25 % smaller or larger", (0.012, 0.04), xycoords="axes fraction",
-        va="bottom", color=SOFT, fontsize=7.5,
+        va="bottom", color=SOFT, fontsize=7.5, bbox=_PLATE,
     )  # fmt: skip
     axes.set_ylabel(f"{name}\n({size.unit})")
     axes.set_ylim(0, max(float(high.max()), target or 0.0) * 1.15)
@@ -128,7 +130,7 @@ def _mark(axes: "Axes", size: Size, *, words: bool = True) -> None:
         if words:
             axes.annotate(
                 text, (n, 1.0), (-3 if late else 3, -1 - drop), xycoords=("data", "axes fraction"),
-                textcoords="offset points", ha="right" if late else "left", va="top",
+                textcoords="offset points", ha="right" if late else "left", va="top", bbox=_PLATE,
             )  # fmt: skip
 
 

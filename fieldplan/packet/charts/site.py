@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from fieldplan.base.document import Figure
-from fieldplan.packet.drawing import INK, mm_axes, new_figure, pens, svg_text
+from fieldplan.packet.drawing import INK, mm_axes, new_figure, pens, shortened, svg_text
 from fieldplan.packet.maps.content import MapContent, plan_content
 from fieldplan.packet.maps.ground import draw_grounds, grounds
 from fieldplan.packet.maps.legend import draw_entries
@@ -79,7 +79,7 @@ def _drawing(plan: Plan, content: MapContent, spec: PageSpec) -> "Canvas":
     axes = ground_axes(figure, spec)
     layers = grounds(plan.frame)
     draw_grounds(axes, layers, metres_per_mm=spec.denominator / 1000)
-    draw_marks(axes, content)
+    draw_marks(axes, content, metres_per_mm=spec.denominator / 1000)
     over = mm_axes(figure)
     taken = []
     if plan.frame.boundary_assumed:
@@ -97,5 +97,6 @@ def _drawing(plan: Plan, content: MapContent, spec: PageSpec) -> "Canvas":
     )
     draw_bar(over, panel.left + 2, 4.0, spec.denominator, longest_mm=36.0)
     draw_north(over, panel.right - 4, 9.0)
-    over.text(panel.left + 2, 12, plan.status, fontsize=7, weight="bold", color=INK)
+    status = shortened(plan.status, 7, panel.width - 11, bold=True)
+    over.text(panel.left + 2, 12, status, fontsize=7, weight="bold", color=INK)
     return figure

@@ -1,5 +1,6 @@
 """What a printed map shows: marks with their names, arrows, legend and lines of text."""
 
+import math
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -53,6 +54,13 @@ class Arrow:
     from_northing: float
     to_easting: float
     to_northing: float
+
+    @property
+    def length(self) -> float:
+        """Metres from tail to head."""
+        return math.hypot(
+            self.to_easting - self.from_easting, self.to_northing - self.from_northing
+        )
 
 
 @dataclass(frozen=True)

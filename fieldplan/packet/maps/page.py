@@ -53,7 +53,7 @@ def draw_page(plan: Plan, content: MapContent, spec: PageSpec) -> tuple["Figure"
     draw_ticks(page, axes, plan, spec, grid)
     if spec.is_key and spec.atlas is not None:
         _draw_tiles(axes, spec.atlas)
-    draw_marks(axes, shown)
+    draw_marks(axes, shown, metres_per_mm=spec.denominator / 1000)
     over = mm_axes(figure)  # names lie above the ground
     centres = mark_centres(shown.marks, spec)
     taken = _draw_stamp(over, plan, spec, centres) + _draw_neighbours(over, spec, centres)
@@ -88,9 +88,11 @@ def ground_axes(figure: "Figure", spec: PageSpec) -> "Axes":
     return axes
 
 
-def draw_marks(axes: "Axes", content: MapContent) -> None:
-    """Draw arrows, then the marks of one pen together, those in front last."""
+def draw_marks(axes: "Axes", content: MapContent, *, metres_per_mm: float) -> None:
+    """Draw arrows of 3 mm and more, then the marks of one pen together, those in front last."""
     for arrow in content.arrows:
+        if arrow.length < 3.0 * metres_per_mm:
+            continue
         axes.annotate(
             "",
             (arrow.to_easting, arrow.to_northing),

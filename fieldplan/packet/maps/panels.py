@@ -151,7 +151,8 @@ def draw_notes(
         lines.append("Too close together to name on the map: " + ", ".join(unplaced) + ".")
     if plan.frame.boundary_assumed:
         lines.append("The boundary is ASSUMED: areas and locations hang on it.")
-    lines += [f"Source: {source}" for source in plan.frame.sources]
+    if plan.frame.sources:
+        lines.append("Sources: " + "; ".join(s.rstrip(".") for s in plan.frame.sources) + ".")
     draw_lines(page, lines, spec.layout.notes, 6.2)
 
 

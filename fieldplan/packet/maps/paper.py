@@ -113,11 +113,11 @@ def page_layout(paper: Literal["A4", "Letter"], *, landscape: bool) -> PageLayou
         inset = Box(panel.left, scale.bottom - 38, 66, 36)
         notes = Box(panel.left, panel.bottom, 66, inset.bottom - 2 - panel.bottom)
         return PageLayout(width, height, title, ground, legend, scale, inset, notes, footer)
-    notes = Box(edge, bottom, inner, 15)
+    notes = Box(edge, bottom, inner, 17.5)
     row = notes.top + 2
-    legend = Box(edge, row, inner - 122, 46)
-    scale = Box(legend.right + 3, row, 70, 46)
-    inset = Box(scale.right + 3, row, 46, 46)
+    legend = Box(edge, row, inner - 122, 45)
+    scale = Box(legend.right + 3, row, 70, 45)
+    inset = Box(scale.right + 3, row, 46, 45)
     low = legend.top + 2 + ticks
     ground = Box(edge + ticks, low, inner - 2 * ticks, title.bottom - 1 - ticks - low)
     return PageLayout(width, height, title, ground, legend, scale, inset, notes, footer)

@@ -112,7 +112,7 @@ def _legend(
     """Explain classes and signs that the map uses."""
     returns = estimate.returns
     entries = [
-        Entry(_class_pen(number, len(bounds) + 1), words, words)
+        Entry(_class_pen(number, len(bounds) + 1), words, _brief(words, number, estimate.unit))
         for number, words in enumerate(class_words(bounds, estimate.unit, level))
         if any(r.detected for r in returns.results)
     ]
@@ -124,8 +124,18 @@ def _legend(
     if returns.lost:
         entries.append(Entry(_LOST, "hollow square: lost, no result", "lost"))
     if any(r.moved_m for r in returns.results):
-        entries.append(Entry(_MOVED, "from planned to actual place", "planned to actual"))
+        entries.append(
+            Entry(
+                _MOVED, "from planned to actual place, if 3 mm or more", "moved (if 3 mm or more)"
+            )
+        )
     return tuple(entries)
+
+
+def _brief(words: str, number: int, unit: str) -> str:
+    """Shorten the words of a class; the first keeps the unit."""
+    short = words.replace(" (action level)", "")
+    return short if number == 0 else short.replace(f" {unit}", "")
 
 
 def _lines(estimate: Estimate, level: float | None) -> tuple[str, ...]:

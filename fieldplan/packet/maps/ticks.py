@@ -78,5 +78,5 @@ def _draw_corners(page: "Axes", plan: Plan, spec: PageSpec) -> float:
             latitude, longitude = to_degrees(plan.frame.projection, easting, northing)
             words = degree_words(float(latitude), float(longitude))
             page.text(x, y, words, fontsize=_POINTS, ha=side, va="center", color=SOFT)
-            room = max(room, text_width_mm(words, _POINTS) + 1.5)
+            room = max(room, text_width_mm(words, _POINTS) + 4.0)
     return room
