@@ -64,8 +64,7 @@ def _fill(
 
     kept = folder / "inputs"
     kept.mkdir()
-    for source in sources:
-        shutil.copyfile(source, kept / source.name)
+    _keep(sources, kept)
     content = json.dumps(estimate_json(estimate), indent=2, ensure_ascii=False)
     (folder / "results.json").write_text(content + "\n", encoding="utf-8")
     (folder / "results.csv").write_text(
@@ -79,3 +78,12 @@ def _fill(
     sheet = results_sheet(plan, estimate)
     (folder / "results_sheet.html").write_text(set_html(sheet), encoding="utf-8")
     (folder / "results_sheet.pdf").write_bytes(set_pdf(sheet, paper=plan.campaign.paper.size))
+
+
+def _keep(sources: Sequence[Path], folder: Path) -> None:
+    """Copy the files behind the results; a second file of the same name gets a number."""
+    for number, source in enumerate(sources, start=1):
+        target = folder / source.name
+        if target.exists():
+            target = folder / f"{number}-{source.name}"
+        shutil.copyfile(source, target)

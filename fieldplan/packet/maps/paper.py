@@ -7,10 +7,10 @@ PAPERS = {"A4": (210.0, 297.0), "Letter": (215.9, 279.4)}
 """Width and height in millimetres, ISO 216 and ANSI/ASME Y14.1."""
 
 _MANTISSAS = (1.0, 1.25, 1.5, 2.0, 2.5, 3.0, 4.0, 5.0, 6.0, 7.5)
-DENOMINATORS = tuple(
-    round(mantissa * 10**power) for power in range(1, 8) for mantissa in _MANTISSAS
+DENOMINATORS = (20, 25, 30, 40, 50, 60, 75) + tuple(
+    round(mantissa * 10**power) for power in range(2, 8) for mantissa in _MANTISSAS
 )
-"""Round scales from 1 : 10 to 1 : 75 000 000."""
+"""Round scales from 1 : 20 to 1 : 75 000 000."""
 
 
 @dataclass(frozen=True)

@@ -91,7 +91,7 @@ def office_files(plan: Plan) -> tuple[tuple[str, str], ...]:
             "all layers with their styles, for a GIS; .geojson has them too",
         ),
         (f"{name}-locations.xlsx", "all locations for a spreadsheet"),
-        ("inputs", "the campaign file and all it names, as they were: the plan was made from these"),
+        ("inputs", "the campaign file and all it names, as they were when packed"),
         ("samples_key.csv", "which sample repeats which; never for the crew or the laboratory"),
         ("manifest.json", "the fingerprint of every file of the packet"),
         ("record.json", "all that is needed to draw again and to estimate; the key is in it too"),
