@@ -39,6 +39,17 @@ class Facts:
 
 
 @dataclass(frozen=True)
+class Files:
+    """Files that lie in ``folder`` beside the sheet, each with what it is for; a page links them.
+
+    A row is the file's name (with its sub-folder, if any) and a sentence.
+    """
+
+    folder: str
+    rows: tuple[tuple[str, str], ...]
+
+
+@dataclass(frozen=True)
 class Table:
     """A table of text cells; ``numeric`` names the columns set flush right."""
 
@@ -107,6 +118,7 @@ Block = (
     | Paragraph
     | Bullets
     | Facts
+    | Files
     | Table
     | Figure
     | Caution

@@ -3,6 +3,7 @@
 import json
 import re
 from pathlib import Path
+from urllib.parse import unquote
 
 import pytest
 
@@ -158,3 +159,12 @@ def test_a_folder_that_is_no_packet_gets_one_line(command: str, tmp_path: Path) 
     assert outcome.exit_code == 1
     assert "is not a packet" in str(outcome.exception)
     assert sorted(p.name for p in tmp_path.iterdir()) == ["empty", "lab.csv"]
+
+
+def test_every_file_of_a_packet_is_named_on_its_first_page(packed: Packed) -> None:
+    """A file that nobody is told of is not opened; a link that leads nowhere is worse."""
+    page = (packed.packet / "START_HERE.html").read_text(encoding="utf-8")
+    linked = {unquote(target) for target in re.findall(r'<a href="([^"]+)"', page)}
+    present = set(file_hashes(packed.packet)) | {"office/manifest.json"}
+    inputs = {name for name in present if name.startswith("office/inputs/")}
+    assert linked == present - inputs - {"START_HERE.html"} | {"office/inputs/campaign.toml"}

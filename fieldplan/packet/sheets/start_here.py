@@ -1,6 +1,6 @@
 """START_HERE: one page that says what each file is for, what comes next and what is open."""
 
-from fieldplan.base.document import Block, Bullets, Document, Facts, Heading, Paragraph
+from fieldplan.base.document import Block, Bullets, Document, Files, Heading, Paragraph
 from fieldplan.packet.sheets.answer import open_blocks
 from fieldplan.packet.sheets.plan_sheet import subtitle
 from fieldplan.plan.model import Plan
@@ -24,9 +24,9 @@ def start_here(plan: Plan) -> Document:
         Bullets(next_steps(plan), numbered=True),
         *open_blocks(plan),
         Heading("For the crew: folder crew"),
-        Facts(crew_files(plan)),
+        Files("crew", crew_files(plan)),
         Heading("For the office: folder office"),
-        Facts(office_files(plan)),
+        Files("office", office_files(plan)),
     ]
     return Document(
         title=plan.campaign.plan.title,
@@ -75,7 +75,8 @@ def crew_files(plan: Plan) -> tuple[tuple[str, str], ...]:
         (f"{name}-points.kml", "for a phone or a globe viewer"),
         (f"{name}-points.csv", "all locations in degrees, degrees-minutes-seconds and UTM"),
         (f"{name}-map.html", "the map for phone or laptop; works without a signal"),
-        (f"{name}-map.pdf", "the map to print; the same as a picture in .png"),
+        (f"{name}-map.pdf", "the map to print"),
+        (f"{name}-map.png", "its first page as a picture"),
         ("field_form.pdf", "the form to print and fill in by hand"),
         ("field_return.csv", "the same form for a spreadsheet; send it back to the office"),
     )
@@ -85,13 +86,15 @@ def office_files(plan: Plan) -> tuple[tuple[str, str], ...]:
     """Say what each of the office's files is for."""
     name = plan.revision_name
     return (
-        ("plan_sheet.pdf, .html", "the plan for review and sign-off"),
+        ("plan_sheet.pdf", "the plan for review and sign-off"),
+        ("plan_sheet.html", "the same as a page"),
         (
             f"{name}-locations.gpkg",
-            "all layers with their styles, for a GIS; .geojson has them too",
+            "all layers with their styles, for a GIS",
         ),
+        (f"{name}-locations.geojson", "all locations in the open web format"),
         (f"{name}-locations.xlsx", "all locations for a spreadsheet"),
-        ("inputs", "the campaign file and all it names, as they were when packed"),
+        ("inputs/campaign.toml", "the campaign file and all it names, as they were when packed"),
         ("samples_key.csv", "which sample repeats which; never for the crew or the laboratory"),
         ("manifest.json", "the fingerprint of every file of the packet"),
         ("record.json", "all that is needed to draw again and to estimate; the key is in it too"),
