@@ -121,7 +121,7 @@ def text_width_mm(text: str, points: float, *, bold: bool = False) -> float:
 
 
 def wrapped(
-    text: str, points: float, width_mm: float, *, most: int = 99, bold: bool = False
+    text: str, points: float, *, width_mm: float, most: int = 99, bold: bool = False
 ) -> list[str]:
     """Break text into lines that fit a width; what does not fit in ``most`` lines ends in ``…``.
 
@@ -143,7 +143,7 @@ def wrapped(
     """
     lines = [""]
     for word in printable(text).split():
-        for piece in _pieces(word, points, width_mm, bold):
+        for piece in _pieces(word, points, width_mm=width_mm, bold=bold):
             longer = f"{lines[-1]} {piece}".strip()
             if text_width_mm(longer, points, bold=bold) <= width_mm:
                 lines[-1] = longer
@@ -152,11 +152,11 @@ def wrapped(
     lines = [line for line in lines if line] or [""]
     if len(lines) > most:
         lines = lines[:most]
-        lines[-1] = shortened(lines[-1] + " …", points, width_mm, bold=bold)
+        lines[-1] = shortened(lines[-1] + " …", points, width_mm=width_mm, bold=bold)
     return lines
 
 
-def shortened(text: str, points: float, width_mm: float, *, bold: bool = False) -> str:
+def shortened(text: str, points: float, *, width_mm: float, bold: bool = False) -> str:
     """Cut a line until it fits a width, and say with ``…`` that it was cut."""
     whole = " ".join(printable(text).split())
     if text_width_mm(whole, points, bold=bold) <= width_mm:
@@ -167,7 +167,7 @@ def shortened(text: str, points: float, width_mm: float, *, bold: bool = False) 
     return stem + "…"
 
 
-def _pieces(word: str, points: float, width_mm: float, bold: bool) -> list[str]:
+def _pieces(word: str, points: float, *, width_mm: float, bold: bool) -> list[str]:
     """Cut a word that alone is wider than the room."""
     if text_width_mm(word, points, bold=bold) <= width_mm:
         return [word]

@@ -73,9 +73,9 @@ def _drawing(estimate: Estimate, action_level: float | None) -> "Canvas":
     axes.set_xlim(low, high)
     axes.set_ylim(-0.65, len(rows) - 0.35)
     for place, row in enumerate(reversed(rows)):
-        _bar(axes, row, float(place), first=place == len(rows) - 1)
+        _bar(axes, row, place=float(place), first=place == len(rows) - 1)
     if action_level is not None:
-        _level(axes, action_level, estimate.unit, late=action_level > (low + high) / 2)
+        _level(axes, action_level, unit=estimate.unit, late=action_level > (low + high) / 2)
     axes.spines["left"].set_visible(False)
     axes.set_yticks(range(len(rows)), [name for name, _, _ in reversed(rows)])
     axes.tick_params(axis="y", length=0, pad=9)
@@ -100,7 +100,7 @@ def _limits(rows: list[_Row], action_level: float | None) -> tuple[float, float]
     return low - room, high + room
 
 
-def _bar(axes: "Axes", row: _Row, place: float, *, first: bool) -> None:
+def _bar(axes: "Axes", row: _Row, *, place: float, first: bool) -> None:
     """Draw one mean with its interval; an open end becomes an arrow."""
     _, mean, span = row
     colour, width = (BLUE, 2.4) if first else (SOFT, 1.3)
@@ -123,7 +123,7 @@ def _bar(axes: "Axes", row: _Row, place: float, *, first: bool) -> None:
     )  # fmt: skip
 
 
-def _level(axes: "Axes", level: float, unit: str, *, late: bool) -> None:
+def _level(axes: "Axes", level: float, *, unit: str, late: bool) -> None:
     """Draw the action level with its value above the frame."""
     axes.axvline(level, color=VERMILION, linewidth=1.2, linestyle=(0, (6, 2)))
     axes.annotate(

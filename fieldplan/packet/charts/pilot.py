@@ -108,7 +108,7 @@ def _drawing(spread: Spread, rows: list[StratumSpread]) -> "Canvas":
     base = sum(heights)
     for row, levels, height in zip(rows, stacks, heights, strict=True):
         base -= height
-        _row(axes, row, np.array(levels), base + 3.0)
+        _row(axes, row, levels=np.array(levels), base=base + 3.0)
     axes.spines["left"].set_visible(False)
     axes.set_yticks([])
     axes.set_xlabel(f"{spread.analyte} ({spread.unit})")
@@ -117,7 +117,7 @@ def _drawing(spread: Spread, rows: list[StratumSpread]) -> "Canvas":
     return figure
 
 
-def _row(axes: "Axes", row: StratumSpread, levels: np.ndarray, base: float) -> None:
+def _row(axes: "Axes", row: StratumSpread, *, levels: np.ndarray, base: float) -> None:
     """Draw the dots of one stratum, its mean as an upright line and its name."""
     values = np.array(row.values)
     detected = np.array(row.detected or (True,) * len(values))
@@ -132,7 +132,7 @@ def _row(axes: "Axes", row: StratumSpread, levels: np.ndarray, base: float) -> N
     if row.mean is not None:
         axes.plot([row.mean] * 2, [base - 1.6, base + 5.5], color=INK, linewidth=1.6, zorder=1)
     missing = int((~detected).sum())
-    name = shortened(row.stratum, 8, 38, bold=True)
+    name = shortened(row.stratum, 8, width_mm=38, bold=True)
     count = f"n = {len(values)}" + (f", {missing} non-detect" if missing else "")
     for words, lift, weight in ((name, 4.4, "bold"), (count, 0.8, "normal")):
         axes.annotate(

@@ -44,7 +44,7 @@ def site_figure(plan: Plan) -> Figure:
     named = len(content.places) <= _NAMED and not unplaced_names(content, spec)
     shown = content if named else content.without_names()
     with pens():
-        drawing = svg_text(_drawing(plan, shown, spec))
+        drawing = svg_text(_drawing(plan, shown, spec=spec))
     counts = ", ".join(entry.brief for entry in content.legend)
     caption = f"{plan.campaign.plan.site or plan.campaign.plan.title}."
     caption += " Up is grid north of the site plane."
@@ -69,10 +69,12 @@ def _spec(plan: Plan, content: MapContent) -> PageSpec:
     denominator, height, ground = min(trials, key=lambda trial: trial[:2])
     panel = Box(ground.right + 3, 0.3, _LEGEND_WIDTH - 0.6, height - 0.6)
     layout = PageLayout(_WIDTH, height, panel, ground, panel, panel, panel, panel, panel)
-    return PageSpec(layout, extent_around(seen.centre, ground, denominator), denominator)
+    return PageSpec(
+        layout, extent_around(seen.centre, ground, denominator=denominator), denominator
+    )
 
 
-def _drawing(plan: Plan, content: MapContent, spec: PageSpec) -> "Canvas":
+def _drawing(plan: Plan, content: MapContent, *, spec: PageSpec) -> "Canvas":
     """Draw ground, marks and names at the left, legend, bar and north at the right."""
     layout = spec.layout
     figure = new_figure(layout.width, layout.height)
@@ -86,17 +88,19 @@ def _drawing(plan: Plan, content: MapContent, spec: PageSpec) -> "Canvas":
         box = layout.ground
         spots = [((box.left + box.right) / 2, y) for y in (box.top - 4, box.bottom + 4)]
         centres = mark_centres(content.marks, spec)
-        taken.append(draw_plate(over, "ASSUMED BOUNDARY", spots, clear_of=centres, points=7.0))
-    draw_names(over, content, spec, taken)
+        taken.append(
+            draw_plate(over, "ASSUMED BOUNDARY", spots=spots, clear_of=centres, points=7.0)
+        )
+    draw_names(over, content, spec=spec, taken=taken)
     panel = layout.legend
     draw_entries(
         over,
         [*content.legend, *layers],
-        Box(panel.left, 18, panel.width, panel.top - 18),
+        box=Box(panel.left, 18, panel.width, panel.top - 18),
         brief=True,
     )
-    draw_bar(over, panel.left + 2, 4.0, spec.denominator, longest_mm=36.0)
-    draw_north(over, panel.right - 4, 9.0)
-    status = shortened(plan.status, 7, panel.width - 11, bold=True)
+    draw_bar(over, panel.left + 2, bottom=4.0, denominator=spec.denominator, longest_mm=36.0)
+    draw_north(over, panel.right - 4, y=9.0)
+    status = shortened(plan.status, 7, width_mm=panel.width - 11, bold=True)
     over.text(panel.left + 2, 12, status, fontsize=7, weight="bold", color=INK)
     return figure

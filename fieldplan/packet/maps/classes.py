@@ -57,12 +57,12 @@ def class_of(value: float, bounds: Sequence[float]) -> int:
     return int(np.searchsorted(np.asarray(bounds, dtype=float), value, side="left"))
 
 
-def class_words(bounds: Sequence[float], unit: str, action_level: float | None) -> list[str]:
+def class_words(bounds: Sequence[float], unit: str, *, action_level: float | None) -> list[str]:
     """Name each class by its bounds.
 
     Examples
     --------
-    >>> class_words((40.0, 150.0), "mg/kg", 150.0)
+    >>> class_words((40.0, 150.0), "mg/kg", action_level=150.0)
     ['up to 40 mg/kg', 'above 40 to 150 mg/kg', 'above 150 mg/kg (action level)']
     """
     if not bounds:

@@ -76,19 +76,19 @@ def grid_lines(projection: SiteProjection, extent: Extent, *, step: int) -> Grid
     ticks = tuple(
         tick
         for edge in ("bottom", "top", "left", "right")
-        for tick in _edge(change, extent, edge, step)
+        for tick in _edge(change, extent, edge=edge, step=step)
     )
     return GridLines(
         reference=reference,
         step=step,
         ticks=ticks,
-        crosses=_crossings(change, extent, step),
+        crosses=_crossings(change, extent, step=step),
         turn=_turn(change, extent),
         true_turn=_true_turn(projection, extent),
     )
 
 
-def _edge(change: pyproj.Transformer, extent: Extent, edge: str, step: int) -> list[Tick]:
+def _edge(change: pyproj.Transformer, extent: Extent, *, edge: str, step: int) -> list[Tick]:
     """Find round eastings on a level edge, round northings on an upright one."""
     share = np.linspace(0.0, 1.0, 65)
     level = edge in {"bottom", "top"}
@@ -116,7 +116,7 @@ def _edge(change: pyproj.Transformer, extent: Extent, edge: str, step: int) -> l
     return ticks
 
 
-def _crossings(change: pyproj.Transformer, extent: Extent, step: int) -> NDArray[np.float64]:
+def _crossings(change: pyproj.Transformer, extent: Extent, *, step: int) -> NDArray[np.float64]:
     """List the grid's crossings inside the extent, in site metres."""
     corners = np.array(
         [(e, n) for e in (extent.west, extent.east) for n in (extent.south, extent.north)]

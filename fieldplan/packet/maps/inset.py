@@ -21,7 +21,7 @@ _DEGREE_STEPS = (
 )  # fmt: skip
 
 
-def draw_inset(figure: "Figure", plan: Plan, spec: PageSpec) -> None:
+def draw_inset(figure: "Figure", plan: Plan, *, spec: PageSpec) -> None:
     """Draw the inset into its box.
 
     Parameters
@@ -47,15 +47,15 @@ def draw_inset(figure: "Figure", plan: Plan, spec: PageSpec) -> None:
         spine.set_visible(True)
     site = _site_extent(plan)
     if spec.tile is not None and spec.atlas is not None:
-        _show(axes, _padded(_around_tiles(spec, site), box, 1.06))
+        _show(axes, _padded(_around_tiles(spec, site), box, times=1.06))
         _draw_outline(axes, plan)
         _draw_key(axes, spec)
         return
-    extent = _padded(site, box, 9.0)
+    extent = _padded(site, box, times=9.0)
     _show(axes, extent)
     _draw_outline(axes, plan)
     _draw_where(axes, site)
-    _draw_graticule(axes, plan, extent)
+    _draw_graticule(axes, plan, extent=extent)
 
 
 def _site_extent(plan: Plan) -> Extent:
@@ -74,7 +74,7 @@ def _around_tiles(spec: PageSpec, site: Extent) -> Extent:
     )
 
 
-def _padded(extent: Extent, box: Box, times: float) -> Extent:
+def _padded(extent: Extent, box: Box, *, times: float) -> Extent:
     """Widen an extent so that it fills a box of the inset's shape."""
     metres_per_mm = times * max(extent.width / box.width, extent.height / box.height, 0.01)
     east, north = extent.centre
@@ -131,7 +131,7 @@ def _draw_where(axes: "Axes", site: Extent) -> None:
     axes.plot(east + reach * np.cos(angle), north + reach * np.sin(angle), color=INK, linewidth=0.8)
 
 
-def _draw_graticule(axes: "Axes", plan: Plan, extent: Extent) -> None:
+def _draw_graticule(axes: "Axes", plan: Plan, *, extent: Extent) -> None:
     """Draw round parallels and meridians with their degrees."""
     projection = plan.frame.projection
     columns = np.linspace(extent.west, extent.east, 9)
@@ -151,10 +151,12 @@ def _draw_graticule(axes: "Axes", plan: Plan, extent: Extent) -> None:
             fixed = np.full_like(other, value)
             x, y = to_site(projection, *((fixed, other) if level else (other, fixed)))
             axes.plot(x, y, color=LINE, linewidth=0.5, zorder=0.5)
-            _name_line(axes, extent, np.column_stack([x, y]), _degrees(value, step, level=level))
+            _name_line(
+                axes, extent, line=np.column_stack([x, y]), words=_degrees(value, step, level=level)
+            )
 
 
-def _name_line(axes: "Axes", extent: Extent, line: np.ndarray, words: str) -> None:
+def _name_line(axes: "Axes", extent: Extent, *, line: np.ndarray, words: str) -> None:
     """Write the degrees of a line where it first shows, turned to lie along it."""
     margin_x, margin_y = extent.width * 0.14, extent.height * 0.1
     seen = (

@@ -61,7 +61,7 @@ def place_labels(
     order = _crowded_first(anchors)
     best: list[Placed | None] = []
     for _ in range(_TRIES):
-        trial = _place_in(order, anchors, sizes, frame=frame, radii=radii, taken=taken)
+        trial = _place_in(order, anchors, sizes=sizes, frame=frame, radii=radii, taken=taken)
         missing = [i for i in order if trial[i] is None and sizes[i, 0] > 0]
         if not best or len(missing) < sum(p is None for p in best) - _nameless(sizes):
             best = trial
@@ -80,8 +80,8 @@ def _nameless(sizes: NDArray[np.float64]) -> int:
 def _place_in(
     order: list[int],
     anchors: NDArray[np.float64],
-    sizes: NDArray[np.float64],
     *,
+    sizes: NDArray[np.float64],
     frame: tuple[float, float],
     radii: NDArray[np.float64],
     taken: Rectangles,
@@ -94,13 +94,13 @@ def _place_in(
     for index in order:
         if sizes[index, 0] <= 0:
             continue
-        near = _touching(anchors[index], sizes[index], radii[index])
+        near = _touching(anchors[index], sizes[index], radius=radii[index])
         free = _inside(near, frame) & ~_hits(near, blocked) & ~_crossed(near, lines)
         if free.any():
             box = near[int(np.argmax(free))]
             placed[index] = _at(box, leads=False)
         else:
-            far, starts = _standing_off(anchors[index], sizes[index], radii[index])
+            far, starts = _standing_off(anchors[index], sizes[index], radius=radii[index])
             free = _inside(far, frame) & ~_hits(far, blocked) & ~_crossed(far, lines)
             some = np.flatnonzero(free)
             others = blocked[_apart(blocked, markers[index])]
@@ -129,7 +129,9 @@ def _crowded_first(anchors: NDArray[np.float64]) -> list[int]:
     return [int(i) for i in np.lexsort((np.arange(len(anchors)), -neighbours))]
 
 
-def _touching(anchor: NDArray[np.float64], size: NDArray[np.float64], radius: float) -> Rectangles:
+def _touching(
+    anchor: NDArray[np.float64], size: NDArray[np.float64], *, radius: float
+) -> Rectangles:
     """List the eight places beside a marker, best first."""
     (x, y), (width, height) = anchor, size
     gap = radius + _CLEAR_MM + 0.05
@@ -143,7 +145,7 @@ def _touching(anchor: NDArray[np.float64], size: NDArray[np.float64], radius: fl
 
 
 def _standing_off(
-    anchor: NDArray[np.float64], size: NDArray[np.float64], radius: float
+    anchor: NDArray[np.float64], size: NDArray[np.float64], *, radius: float
 ) -> tuple[Rectangles, Rectangles]:
     """List places on rings round a marker, nearest first, and the line to each."""
     turns = np.arange(_TURNS) * 2 * np.pi / _TURNS

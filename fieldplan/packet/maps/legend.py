@@ -18,7 +18,7 @@ _NO_PEN = Pen("", "none", "none")
 
 
 def draw_legend(
-    page: "Axes", content: MapContent, layers: tuple[Ground, ...], box: Box, grid: GridLines
+    page: "Axes", content: MapContent, *, layers: tuple[Ground, ...], box: Box, grid: GridLines
 ) -> None:
     """Draw the legend into its box.
 
@@ -33,11 +33,11 @@ def draw_legend(
     box : Box
     grid : GridLines
     """
-    draw_entries(page, [*content.legend, *layers, _crossing(grid)], box)
+    draw_entries(page, [*content.legend, *layers, _crossing(grid)], box=box)
 
 
 def draw_entries(
-    page: "Axes", entries: list[Entry | Ground], box: Box, *, brief: bool = False
+    page: "Axes", entries: list[Entry | Ground], *, box: Box, brief: bool = False
 ) -> None:
     """Draw entries in one to three columns inside a box, framed to their number."""
     columns = 1
@@ -51,15 +51,17 @@ def draw_entries(
         words = f"and {left_out} more"
         entries = [*entries[: columns * room - 1], Entry(_NO_PEN, words, words)]
     rows = min(rows, room)
-    _frame(page, box, 3 + height * rows)
+    _frame(page, box, height=3 + height * rows)
     width = (box.width - 2) / columns
     for index, entry in enumerate(entries):
         x = box.left + 2 + (index // rows) * width
         y = box.top - 1.5 - (index % rows + 0.5) * height
-        _sample(page, entry, x, y)
+        _sample(page, entry, x=x, y=y)
         words = entry.brief if brief or columns > 1 else entry.words
         points = 6.6 if columns == 1 else 5.8
-        page.text(x + 7.5, y, shortened(words, points, width - 8.5), fontsize=points, va="center")
+        page.text(
+            x + 7.5, y, shortened(words, points, width_mm=width - 8.5), fontsize=points, va="center"
+        )
 
 
 def _crossing(grid: GridLines) -> Entry:
@@ -69,7 +71,7 @@ def _crossing(grid: GridLines) -> Entry:
     return Entry(_CROSS, f"{name} crossing, every {spacing}", f"{name}, {spacing}")
 
 
-def _frame(page: "Axes", box: Box, height: float) -> None:
+def _frame(page: "Axes", box: Box, *, height: float) -> None:
     """Draw the frame round the rows in use."""
     from matplotlib.patches import Rectangle
 
@@ -77,7 +79,7 @@ def _frame(page: "Axes", box: Box, height: float) -> None:
     page.add_patch(Rectangle(corner, box.width, height, fill=False, linewidth=0.5))
 
 
-def _sample(page: "Axes", entry: Entry | Ground, x: float, y: float) -> None:
+def _sample(page: "Axes", entry: Entry | Ground, *, x: float, y: float) -> None:
     """Draw the sample of one entry, 6 mm wide."""
     from matplotlib.patches import Rectangle
 

@@ -23,7 +23,7 @@ Rectangle = tuple[float, float, float, float]
 
 
 def placed_names(
-    content: MapContent, spec: PageSpec, taken: Sequence[Rectangle] = ()
+    content: MapContent, spec: PageSpec, *, taken: Sequence[Rectangle] = ()
 ) -> list[tuple[Mark, Placed | None]]:
     """Find a place for the name of every mark that a page shows.
 
@@ -53,22 +53,22 @@ def placed_names(
 
 
 def unplaced_names(
-    content: MapContent, spec: PageSpec, taken: Sequence[Rectangle] = ()
+    content: MapContent, spec: PageSpec, *, taken: Sequence[Rectangle] = ()
 ) -> tuple[str, ...]:
     """List the names for which a page that answers for them has no place."""
-    return _left_over(placed_names(content, spec, taken), spec)
+    return _left_over(placed_names(content, spec, taken=taken), spec)
 
 
 def draw_names(
-    over: "Axes", content: MapContent, spec: PageSpec, taken: Sequence[Rectangle]
+    over: "Axes", content: MapContent, *, spec: PageSpec, taken: Sequence[Rectangle]
 ) -> tuple[str, ...]:
     """Write names, with a line back to the mark where they stand off; return those left over."""
-    found = placed_names(content, spec, taken)
+    found = placed_names(content, spec, taken=taken)
     box = spec.layout.ground
     for mark, place in found:
         if place is not None:
             anchor = spec.on_paper(mark.easting, mark.northing)
-            _draw_name(over, mark.name, anchor, place, (box.left, box.bottom))
+            _draw_name(over, mark.name, anchor=anchor, place=place, corner=(box.left, box.bottom))
     return _left_over(found, spec)
 
 
@@ -80,8 +80,8 @@ def mark_centres(marks: Sequence[Mark], spec: PageSpec) -> NDArray[np.float64]:
 def draw_plate(
     over: "Axes",
     words: str,
-    spots: Sequence[tuple[float, float]],
     *,
+    spots: Sequence[tuple[float, float]],
     clear_of: NDArray[np.float64],
     points: float = 8.0,
 ) -> Rectangle:
@@ -135,6 +135,7 @@ def _left_over(found: list[tuple[Mark, Placed | None]], spec: PageSpec) -> tuple
 def _draw_name(
     over: "Axes",
     name: str,
+    *,
     anchor: tuple[float, float],
     place: Placed,
     corner: tuple[float, float],

@@ -24,7 +24,9 @@ if TYPE_CHECKING:
 _ALONG = (0.5, 0.35, 0.65, 0.2, 0.8, 0.42, 0.58, 0.28, 0.72)
 
 
-def draw_page(plan: Plan, content: MapContent, spec: PageSpec) -> tuple["Figure", tuple[str, ...]]:
+def draw_page(
+    plan: Plan, content: MapContent, *, spec: PageSpec
+) -> tuple["Figure", tuple[str, ...]]:
     """Draw one page.
 
     Parameters
@@ -50,19 +52,21 @@ def draw_page(plan: Plan, content: MapContent, spec: PageSpec) -> tuple["Figure"
     draw_grounds(axes, layers, metres_per_mm=spec.denominator / 1000)
     step = grid_step(spec.extent, spec.denominator)
     grid = grid_lines(plan.frame.projection, spec.extent, step=step)
-    draw_ticks(page, axes, plan, spec, grid)
+    draw_ticks(page, axes, plan=plan, spec=spec, grid=grid)
     if spec.is_key and spec.atlas is not None:
         _draw_tiles(axes, spec.atlas)
     draw_marks(axes, shown, metres_per_mm=spec.denominator / 1000)
     over = mm_axes(figure)  # names lie above the ground
     centres = mark_centres(shown.marks, spec)
-    taken = _draw_stamp(over, plan, spec, centres) + _draw_neighbours(over, spec, centres)
-    unplaced = draw_names(over, shown, spec, taken)
-    draw_title(page, plan, content.title, spec)
-    draw_scale(page, plan, spec, grid)
-    draw_legend(page, content, layers, layout.legend, grid)
-    draw_inset(figure, plan, spec)
-    draw_notes(page, plan, content, spec, unplaced)
+    taken = _draw_stamp(over, plan, spec=spec, centres=centres) + _draw_neighbours(
+        over, spec, centres=centres
+    )
+    unplaced = draw_names(over, shown, spec=spec, taken=taken)
+    draw_title(page, plan, title=content.title, spec=spec)
+    draw_scale(page, plan, spec=spec, grid=grid)
+    draw_legend(page, content, layers=layers, box=layout.legend, grid=grid)
+    draw_inset(figure, plan, spec=spec)
+    draw_notes(page, plan, content=content, spec=spec, unplaced=unplaced)
     return figure, unplaced
 
 
@@ -117,7 +121,7 @@ def _front(mark: Mark) -> int:
 
 
 def _draw_stamp(
-    over: "Axes", plan: Plan, spec: PageSpec, centres: NDArray[np.float64]
+    over: "Axes", plan: Plan, *, spec: PageSpec, centres: NDArray[np.float64]
 ) -> list[Rectangle]:
     """Stamp a boundary that was assumed, on the map itself."""
     if not plan.frame.boundary_assumed:
@@ -126,10 +130,12 @@ def _draw_stamp(
     middle = (box.left + box.right) / 2
     spots = [(middle + 33 * side, y) for y in (box.top - 5, box.bottom + 5) for side in (0, 1, -1)]
     words = "ASSUMED BOUNDARY: not surveyed, not from a record"
-    return [draw_plate(over, words, spots, clear_of=centres)]
+    return [draw_plate(over, words, spots=spots, clear_of=centres)]
 
 
-def _draw_neighbours(over: "Axes", spec: PageSpec, centres: NDArray[np.float64]) -> list[Rectangle]:
+def _draw_neighbours(
+    over: "Axes", spec: PageSpec, *, centres: NDArray[np.float64]
+) -> list[Rectangle]:
     """Say at the edges of a page which page goes on there."""
     if spec.atlas is None or spec.tile is None:
         return []
@@ -144,10 +150,10 @@ def _draw_neighbours(over: "Axes", spec: PageSpec, centres: NDArray[np.float64])
     )
     plates = []
     for row, column, spots in edges:
-        number = spec.atlas.beside(spec.tile, row, column)
+        number = spec.atlas.beside(spec.tile, row, column=column)
         if number is not None:
             words = f"page {number}"
-            plates.append(draw_plate(over, words, spots, clear_of=centres, points=6.5))
+            plates.append(draw_plate(over, words, spots=spots, clear_of=centres, points=6.5))
     return plates
 
 

@@ -16,30 +16,31 @@ if TYPE_CHECKING:
 _LINE_MM = 2.75
 
 
-def draw_title(page: "Axes", plan: Plan, title: str, spec: PageSpec) -> None:
+def draw_title(page: "Axes", plan: Plan, *, title: str, spec: PageSpec) -> None:
     """Write title, plan, date and status at the head; plan, status and page at the foot."""
     box, foot = spec.layout.title, spec.layout.footer
     status_width = min(text_width_mm(plan.status, 11, bold=True) + 5, box.width * 0.5)
     room = box.width - status_width - 4
     points = 13 if text_width_mm(title, 13, bold=True) <= room else 10
-    lines = wrapped(title, points, room, most=2, bold=True)
+    lines = wrapped(title, points, width_mm=room, most=2, bold=True)
     for number, line in enumerate(lines):
         y = box.top - 3 - 4.4 * number
         page.text(box.left, y, line, fontsize=points, weight="bold", va="center")
     parts = [f"plan {plan.campaign.plan.id}", f"revision {plan.revision_name}", f"{plan.made_on}"]
     if plan.campaign.plan.site:
         parts.insert(0, plan.campaign.plan.site)
-    words = shortened(" · ".join(parts), 8, room)
+    words = shortened(" · ".join(parts), 8, width_mm=room)
     page.text(box.left, box.top - 11.8, words, fontsize=8, va="center", color=SOFT)
     page.text(
-        box.right - 2, box.top - 5, shortened(plan.status, 11, status_width - 4, bold=True),
+        box.right - 2, box.top - 5,
+        shortened(plan.status, 11, width_mm=status_width - 4, bold=True),
         fontsize=11, weight="bold", ha="right", va="center",
         bbox={"facecolor": "white", "edgecolor": INK, "linewidth": 1.2, "pad": 3.5},
     )  # fmt: skip
     page.plot([foot.left, foot.right], [foot.top, foot.top], color=INK, linewidth=0.5)
     words = f"{plan.revision_name} · page {spec.page} of {spec.pages}"
     page.text(foot.left, foot.bottom + 1.5, words, fontsize=7.5, va="center")
-    status = shortened(plan.status, 7.5, foot.width / 2)
+    status = shortened(plan.status, 7.5, width_mm=foot.width / 2)
     page.text(foot.right, foot.bottom + 1.5, status, fontsize=7.5, ha="right", va="center")
 
 
@@ -56,7 +57,7 @@ def bar_length(denominator: int, *, longest_mm: float = 56.0) -> int:
     return max((length for length in lengths if length <= longest), default=1)
 
 
-def draw_scale(page: "Axes", plan: Plan, spec: PageSpec, grid: GridLines) -> None:
+def draw_scale(page: "Axes", plan: Plan, *, spec: PageSpec, grid: GridLines) -> None:
     """Draw the fraction, the bar, the north arrow, and say the coordinate systems in words."""
     box = spec.layout.scale
     scale = f"1 : {spec.denominator:,}".replace(",", "\u00a0")
@@ -64,19 +65,21 @@ def draw_scale(page: "Axes", plan: Plan, spec: PageSpec, grid: GridLines) -> Non
     paper = plan.campaign.paper.size
     words = f"true on {paper} printed at 100 %"
     page.text(box.left + 1, box.top - 7.8, words, fontsize=6.2, va="center", color=SOFT)
-    draw_bar(page, box.left + 1, box.top - 15.5, spec.denominator)
-    draw_north(page, box.right - 5, box.top - 7)
+    draw_bar(page, box.left + 1, bottom=box.top - 15.5, denominator=spec.denominator)
+    draw_north(page, box.right - 5, y=box.top - 7)
     lines = [
         "Drawn in: " + projection_in_words(plan.frame.projection) + " (no EPSG code).",
         "Ticks and crosses: " + utm_in_words(grid.reference) + ".",
         "Corners: latitude and longitude, WGS 84 (EPSG:4326).",
         _north_words(grid),
     ]
-    draw_lines(page, lines, Box(box.left + 1, box.bottom, box.width - 1, box.height - 18), 5.9)
+    draw_lines(
+        page, lines, box=Box(box.left + 1, box.bottom, box.width - 1, box.height - 18), points=5.9
+    )
 
 
 def draw_bar(
-    page: "Axes", left: float, bottom: float, denominator: int, *, longest_mm: float = 56.0
+    page: "Axes", left: float, *, bottom: float, denominator: int, longest_mm: float = 56.0
 ) -> None:
     """Draw the bar in four parts of alternate black and white, with its lengths."""
     from matplotlib.patches import Rectangle
@@ -101,7 +104,7 @@ def draw_bar(
         page.text(left + share * whole, bottom + 3.2, words, fontsize=6, ha="center", va="center")
 
 
-def draw_north(page: "Axes", x: float, y: float) -> None:
+def draw_north(page: "Axes", x: float, *, y: float) -> None:
     """Draw an arrow up the page: the north of the site's plane."""
     from matplotlib.patches import Polygon
 
@@ -137,7 +140,7 @@ def _turned(angle: float) -> str:
 
 
 def draw_notes(
-    page: "Axes", plan: Plan, content: MapContent, spec: PageSpec, unplaced: tuple[str, ...]
+    page: "Axes", plan: Plan, *, content: MapContent, spec: PageSpec, unplaced: tuple[str, ...]
 ) -> None:
     """Write what is open, what the map does not show, names without a place, and the sources."""
     lines = []
@@ -153,10 +156,10 @@ def draw_notes(
         lines.append("The boundary is ASSUMED: areas and locations hang on it.")
     if plan.frame.sources:
         lines.append("Sources: " + "; ".join(s.rstrip(".") for s in plan.frame.sources) + ".")
-    draw_lines(page, lines, spec.layout.notes, 6.2)
+    draw_lines(page, lines, box=spec.layout.notes, points=6.2)
 
 
-def draw_lines(page: "Axes", lines: list[str], box: Box, points: float) -> None:
+def draw_lines(page: "Axes", lines: list[str], *, box: Box, points: float) -> None:
     """Write sentences into a box from the top; one that starts with OPEN is set bold.
 
     What does not fit is cut with ``…``; the plan sheet has all of it.
@@ -166,7 +169,7 @@ def draw_lines(page: "Axes", lines: list[str], box: Box, points: float) -> None:
     for index, line in enumerate(lines):
         most = room - min(len(lines) - index - 1, room - 1)  # leave a line for each that follows
         bold = line.startswith(("OPEN", "ASSUMED"))
-        pieces = wrapped(line, points, box.width, most=max(most, 1), bold=bold)
+        pieces = wrapped(line, points, width_mm=box.width, most=max(most, 1), bold=bold)
         for piece in pieces:
             if room <= 0:
                 return

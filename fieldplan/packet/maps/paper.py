@@ -7,8 +7,9 @@ PAPERS = {"A4": (210.0, 297.0), "Letter": (215.9, 279.4)}
 """Width and height in millimetres, ISO 216 and ANSI/ASME Y14.1."""
 
 _MANTISSAS = (1.0, 1.25, 1.5, 2.0, 2.5, 3.0, 4.0, 5.0, 6.0, 7.5)
-DENOMINATORS = (20, 25, 30, 40, 50, 60, 75) + tuple(
-    round(mantissa * 10**power) for power in range(2, 8) for mantissa in _MANTISSAS
+DENOMINATORS = (
+    *(20, 25, 30, 40, 50, 60, 75),
+    *(round(mantissa * 10**power) for power in range(2, 8) for mantissa in _MANTISSAS),
 )
 """Round scales from 1 : 20 to 1 : 75 000 000."""
 
@@ -151,12 +152,12 @@ def fitting_denominator(extent: Extent, ground: Box, *, clear_mm: float = 9.0) -
     return fitting
 
 
-def extent_around(centre: tuple[float, float], ground: Box, denominator: int) -> Extent:
+def extent_around(centre: tuple[float, float], ground: Box, *, denominator: int) -> Extent:
     """Give the ground that a box shows at a scale, around a place.
 
     Examples
     --------
-    >>> extent_around((0.0, 0.0), Box(0, 0, 100, 50), 1000)
+    >>> extent_around((0.0, 0.0), Box(0, 0, 100, 50), denominator=1000)
     Extent(west=-50.0, south=-25.0, east=50.0, north=25.0)
     """
     half_width = ground.width * denominator / 2000

@@ -94,11 +94,11 @@ def draw_pages(plan: Plan, content: MapContent) -> tuple[list["Figure"], list[Pa
     places = content.places
     one = len(places) <= LOCATIONS_ON_ONE_PAGE
     if one and not crowded(places, whole.denominator / 1000):
-        figure, unplaced = draw_page(plan, content, whole)
+        figure, unplaced = draw_page(plan, content, spec=whole)
         if not unplaced:
             return [figure], [whole]
     pages = _atlas_pages(whole, content)
-    return [draw_page(plan, content, spec)[0] for spec in pages], pages
+    return [draw_page(plan, content, spec=spec)[0] for spec in pages], pages
 
 
 def _whole(plan: Plan, content: MapContent) -> PageSpec:
@@ -109,7 +109,9 @@ def _whole(plan: Plan, content: MapContent) -> PageSpec:
         layout = page_layout(plan.campaign.paper.size, landscape=landscape)
         trials.append((fitting_denominator(seen, layout.ground), layout))
     denominator, layout = min(trials, key=lambda trial: trial[0])
-    return PageSpec(layout, extent_around(seen.centre, layout.ground, denominator), denominator)
+    return PageSpec(
+        layout, extent_around(seen.centre, layout.ground, denominator=denominator), denominator
+    )
 
 
 def _seen(plan: Plan, content: MapContent) -> Extent:

@@ -57,7 +57,7 @@ def results_content(plan: Plan, estimate: Estimate) -> MapContent:
     marks = list(unit_marks(plan))
     arrows = []
     for result in results:
-        mark, arrow = _result_marks(plan, result, places[result.location_id], bounds)
+        mark, arrow = _result_marks(plan, result, place=places[result.location_id], bounds=bounds)
         marks += mark
         arrows += arrow
     lost = {entry.location_id for entry in estimate.returns.lost}
@@ -69,14 +69,14 @@ def results_content(plan: Plan, estimate: Estimate) -> MapContent:
     return MapContent(
         f"{plan.campaign.plan.title}: results for {estimate.analyte}",
         tuple(marks),
-        _legend(estimate, bounds, level),
+        _legend(estimate, bounds, level=level),
         tuple(arrows),
         _lines(estimate, level),
     )
 
 
 def _result_marks(
-    plan: Plan, result: LocationResult, place: Location, bounds: tuple[float, ...]
+    plan: Plan, result: LocationResult, *, place: Location, bounds: tuple[float, ...]
 ) -> tuple[list[Mark], list[Arrow]]:
     """Mark one result where it was taken; cross it when it is not in the mean."""
     easting, northing = place.easting, place.northing
@@ -107,13 +107,13 @@ def _class_pen(number: int, classes: int) -> Pen:
 
 
 def _legend(
-    estimate: Estimate, bounds: tuple[float, ...], level: float | None
+    estimate: Estimate, bounds: tuple[float, ...], *, level: float | None
 ) -> tuple[Entry, ...]:
     """Explain classes and signs that the map uses."""
     returns = estimate.returns
     entries = [
-        Entry(_class_pen(number, len(bounds) + 1), words, _brief(words, number, estimate.unit))
-        for number, words in enumerate(class_words(bounds, estimate.unit, level))
+        Entry(_class_pen(number, len(bounds) + 1), words, _brief(words, number, unit=estimate.unit))
+        for number, words in enumerate(class_words(bounds, estimate.unit, action_level=level))
         if any(r.detected for r in returns.results)
     ]
     if any(not r.detected for r in returns.results):
@@ -132,7 +132,7 @@ def _legend(
     return tuple(entries)
 
 
-def _brief(words: str, number: int, unit: str) -> str:
+def _brief(words: str, number: int, *, unit: str) -> str:
     """Shorten the words of a class; the first keeps the unit."""
     short = words.replace(" (action level)", "")
     return short if number == 0 else short.replace(f" {unit}", "")

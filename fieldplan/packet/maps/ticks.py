@@ -14,7 +14,7 @@ if TYPE_CHECKING:
 _POINTS = 5.8
 
 
-def draw_ticks(page: "Axes", axes: "Axes", plan: Plan, spec: PageSpec, grid: GridLines) -> None:
+def draw_ticks(page: "Axes", axes: "Axes", *, plan: Plan, spec: PageSpec, grid: GridLines) -> None:
     """Draw grid ticks with full coordinates, grid crosses, and degrees at the four corners.
 
     Parameters
@@ -30,7 +30,7 @@ def draw_ticks(page: "Axes", axes: "Axes", plan: Plan, spec: PageSpec, grid: Gri
             grid.crosses[:, 0], grid.crosses[:, 1], linestyle="none", marker="+", markersize=6,
             markeredgewidth=0.45, color=SOFT, zorder=2.5,
         )  # fmt: skip
-    corner_room = _draw_corners(page, plan, spec)
+    corner_room = _draw_corners(page, plan, spec=spec)
     box = spec.layout.ground
     ends = dict.fromkeys(("bottom", "top", "left", "right"), -1000000000.0)
     for tick in grid.ticks:
@@ -69,7 +69,7 @@ def degree_words(latitude: float, longitude: float, *, decimals: int = 5) -> str
     return f"{abs(latitude):.{decimals}f}° {north} {abs(longitude):.{decimals}f}° {east}"
 
 
-def _draw_corners(page: "Axes", plan: Plan, spec: PageSpec) -> float:
+def _draw_corners(page: "Axes", plan: Plan, *, spec: PageSpec) -> float:
     """Write the degrees of the frame's corners, and return the room that they take."""
     box, extent = spec.layout.ground, spec.extent
     room = 0.0

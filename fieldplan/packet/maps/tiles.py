@@ -35,7 +35,7 @@ class Atlas:
     denominator: int
     tiles: tuple[Tile, ...]
 
-    def beside(self, tile: Tile, row: int, column: int) -> int | None:
+    def beside(self, tile: Tile, row: int, *, column: int) -> int | None:
         """Give the page that lies ``row`` up and ``column`` right of a tile, if there is one."""
         wanted = (tile.row + row, tile.column + column)
         return next((t.page for t in self.tiles if (t.row, t.column) == wanted), None)
@@ -135,7 +135,7 @@ def atlas(
     """
     best: Atlas | None = None
     for denominator in reversed([d for d in DENOMINATORS if _FINEST <= d < whole]):
-        trial = _tiled(places, ground, denominator)
+        trial = _tiled(places, ground, denominator=denominator)
         if best is not None and len(trial.tiles) > MOST_PAGES:
             break
         best = trial
@@ -143,12 +143,12 @@ def atlas(
         clear = full <= LOCATIONS_ON_A_TILE and not crowded(places, denominator / 1000)
         if clear and readable(trial):
             break
-    return best if best is not None else _tiled(places, ground, whole)
+    return best if best is not None else _tiled(places, ground, denominator=whole)
 
 
-def _tiled(places: NDArray[np.float64], ground: Box, denominator: int) -> Atlas:
+def _tiled(places: NDArray[np.float64], ground: Box, *, denominator: int) -> Atlas:
     """Cut the ground round all places into pages that overlap a little; keep those with places."""
-    paper = extent_around((0.0, 0.0), ground, denominator)
+    paper = extent_around((0.0, 0.0), ground, denominator=denominator)
     step_east, step_north = paper.width * (1 - _OVERLAP), paper.height * (1 - _OVERLAP)
     low, high = places.min(axis=0), places.max(axis=0)
     columns = max(1, math.ceil((high[0] - low[0]) / step_east + 1e-9))
@@ -162,7 +162,9 @@ def _tiled(places: NDArray[np.float64], ground: Box, denominator: int) -> Atlas:
     tiles = []
     for page, (minus_row, at) in enumerate(cells, start=2):
         centre = (west + (at + 0.5) * step_east, south + (0.5 - minus_row) * step_north)
-        tiles.append(Tile(page, extent_around(centre, ground, denominator), -minus_row, at))
+        tiles.append(
+            Tile(page, extent_around(centre, ground, denominator=denominator), -minus_row, at)
+        )
     return Atlas(denominator, tuple(tiles))
 
 

@@ -53,7 +53,7 @@ def test_crosses_stand_on_round_coordinates_inside_the_frame(projection, epsg: i
 def test_grid_north_turns_by_the_convergence_of_the_meridians(
     latitude, longitude, meridian
 ) -> None:
-    """By tan γ = tan(λ − λ₀) sin φ on the sphere (Snyder 1987, USGS PP 1395, ch. 8); east positive."""
+    """East positive, tan γ = tan(λ − λ₀) sin φ on the sphere: Snyder 1987, USGS PP 1395, ch. 8."""
     extent = Extent(-100, -100, 100, 100)
     grid = grid_lines(SiteProjection(latitude, longitude), extent, step=50)
     away = np.radians(longitude - meridian)

@@ -50,7 +50,7 @@ def test_the_scale_is_round_and_no_finer_round_one_fits(width: float, height: fl
 
 def test_a_millimetre_of_paper_is_a_thousandth_of_the_denominator_in_metres() -> None:
     """By definition of the representative fraction."""
-    extent = extent_around((10.0, 20.0), Box(5, 5, 120, 80), 2500)
+    extent = extent_around((10.0, 20.0), Box(5, 5, 120, 80), denominator=2500)
     assert extent.width == pytest.approx(300.0)
     assert extent.height == pytest.approx(200.0)
     assert extent.centre == pytest.approx((10.0, 20.0))

@@ -157,7 +157,7 @@ def test_pages_of_an_atlas_overlap_and_name_their_neighbours(atlas) -> None:
     book = specs[1].atlas
     for figure, spec in zip(figures[1:], specs[1:], strict=True):
         for row, column in ((1, 0), (-1, 0), (0, 1), (0, -1)):
-            number = book.beside(spec.tile, row, column)
+            number = book.beside(spec.tile, row, column=column)
             if number is None:
                 continue
             assert f"page {number}" in texts(figure)

@@ -94,7 +94,7 @@ def test_classes_hold_every_value_once_and_none_is_empty_at_the_ends(values: lis
     """Bounds rise, and lie where values lie."""
     bounds = class_bounds(values, None)
     assert list(bounds) == sorted(set(bounds))
-    assert len(class_words(bounds, "mg/kg", None)) == len(bounds) + 1
+    assert len(class_words(bounds, "mg/kg", action_level=None)) == len(bounds) + 1
     classes = [class_of(value, bounds) for value in values]
     if bounds:
         assert min(classes) == 0
