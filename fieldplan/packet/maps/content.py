@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldplan.design.model import Location, LocationClass
-from fieldplan.packet.drawing import LINE
+from fieldplan.packet.drawing import INK, LINE
 from fieldplan.packet.maps.palette import MARKS
 from fieldplan.plan.model import Plan
 
@@ -103,7 +103,7 @@ CLASS_PENS: dict[LocationClass, Pen] = {
     name: Pen(
         _SHAPES[mark.shape],
         mark.fill,
-        mark.edge,
+        INK if mark.shape == "diamond" else mark.edge,  # seen in a grey copy
         2.3 if mark.shape != "diamond" else 2.0,
         1.1 if mark.fill == "#ffffff" else 0.5,
     )
