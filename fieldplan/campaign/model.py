@@ -267,6 +267,13 @@ class Campaign(Table):
         wanted = self.deciding_objective.analyte
         return next((a for a in self.analyte if a.id == wanted), self.analyte[0])
 
+    def analyte_called(self, name: str) -> Analyte:
+        """Return the analyte of this id; KeyError when the campaign has none."""
+        for analyte in self.analyte:
+            if analyte.id == name:
+                return analyte
+        raise KeyError(name)
+
     @property
     def prefix(self) -> str:
         """Two letters that open every short name."""

@@ -1,5 +1,6 @@
 """``fieldplan size``: how many, for a campaign file or for bare numbers."""
 
+from dataclasses import asdict
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -79,7 +80,7 @@ def print_answer(answer: "Size", *, explain: bool) -> None:
     """Print the answer in sentences; with ``explain`` the working and the conditions too."""
     click.echo(wrapped(answer.sentences[0]))
     click.echo()
-    print_sentences(answer.sentences[1:])
+    print_sentences([*answer.sentences[1:], *(other.sentence for other in answer.others)])
     if not explain:
         say("\n--explain shows the working, and under what condition it holds.")
         return
@@ -123,6 +124,7 @@ def as_mapping(answer: "Size") -> dict[str, Any]:
         "cost": answer.cost,
         "currency": answer.currency,
         "sentences": answer.sentences,
+        "others": [{**asdict(other), "chance": _three(other.chance)} for other in answer.others],
         "conditions": answer.conditions,
         "steps": answer.steps,
         "curve": answer.curve,

@@ -1,5 +1,6 @@
 """How many locations, with the working shown."""
 
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from fieldplan.sizing.answer import answer
@@ -28,7 +29,8 @@ def size(campaign: "Campaign", spread: "Spread", frame: "Frame") -> Size:
     Returns
     -------
     Size
-        Counts by stratum in the frame's order, with working, sentences and conditions.
+        Counts by stratum in the frame's order, with working, sentences and conditions; ``others``
+        says what the same n buys for objectives and analytes that do not decide it.
 
     Raises
     ------
@@ -44,4 +46,7 @@ def size(campaign: "Campaign", spread: "Spread", frame: "Frame") -> Size:
     >>> result.needed, result.planned, [entry.needed for entry in result.strata]
     (9, 11, [4, 5])
     """
-    return answer(question_of(campaign, spread, frame))
+    from fieldplan.sizing.others import other_precisions
+
+    found = answer(question_of(campaign, spread, frame))
+    return replace(found, others=other_precisions(campaign, spread, frame, size=found))

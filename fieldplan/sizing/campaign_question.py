@@ -1,7 +1,7 @@
 """From campaign, frame and spread to the question that sizing answers."""
 
 import math
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from difflib import get_close_matches
 from typing import TYPE_CHECKING
 
@@ -44,14 +44,46 @@ def question_of(campaign: "Campaign", spread: "Spread", frame: "Frame") -> Quest
         A stratum has no sigma.
     """
     objective = campaign.deciding_objective
+    kind, value = target_of(objective)
+    mean = expected_mean(spread.strata, frame, site=spread.site)
+    _check_support(campaign, kind, value, mean=mean)
+    parts = parts_of(campaign, frame, spread.strata)
+    return ask(campaign, objective, parts=parts, mean=mean)
+
+
+def ask(
+    campaign: "Campaign",
+    objective: "Objective",
+    *,
+    parts: tuple[Part, ...],
+    mean: float | None,
+) -> Question:
+    """Put one objective as a question.
+
+    Parameters
+    ----------
+    campaign : Campaign
+    objective : Objective
+    parts : tuple of Part
+        From ``parts_of``.
+    mean : float or None
+        From ``expected_mean``.
+
+    Returns
+    -------
+    Question
+
+    Raises
+    ------
+    DesignError
+        A relative half-width without a mean, or a budget without prices.
+    """
+    kind, value = target_of(objective)
     design = next((d for d in campaign.design if d.id == objective.design), campaign.design[0])
-    kind, value = _target(objective)
-    mean = _expected_mean(spread, frame)
-    _check_support(campaign, kind, value, mean)
-    cost = campaign.cost
-    assurance = objective.assurance
+    analyte = campaign.analyte_called(objective.analyte or campaign.deciding_analyte.id)
+    cost, assurance = campaign.cost, objective.assurance
     return Question(
-        parts=_parts(campaign, spread, frame),
+        parts=parts,
         target=kind,
         value=value,
         mean=mean,
@@ -70,12 +102,23 @@ def question_of(campaign: "Campaign", spread: "Spread", frame: "Frame") -> Quest
         else Prices(cost.currency, cost.mobilisation, cost.per_location, cost.per_analysis),
         controls=tuple(ControlRate(qc.kind, qc.share, qc.count, qc.source) for qc in campaign.qc),
         design=design.id,
-        analyte=spread.analyte,
-        unit=spread.unit,
+        analyte=analyte.id,
+        unit=analyte.unit,
     )
 
 
-def _target(objective: "Objective") -> tuple[TargetKind, float]:
+def target_of(objective: "Objective") -> tuple[TargetKind, float]:
+    """Give the one target of an objective, and its number.
+
+    Parameters
+    ----------
+    objective : Objective
+
+    Raises
+    ------
+    CampaignError
+        It has no target, or several.
+    """
     given = [(kind, getattr(objective, kind)) for kind in TARGETS]
     typed_ones = [(kind, value) for kind, value in given if value is not None]
     if len(typed_ones) != 1:
@@ -89,7 +132,7 @@ def _target(objective: "Objective") -> tuple[TargetKind, float]:
 
 
 def _check_support(
-    campaign: "Campaign", kind: TargetKind, value: float, mean: float | None
+    campaign: "Campaign", kind: TargetKind, value: float, *, mean: float | None
 ) -> None:
     if kind == "relative_half_width" and mean is None:
         message = (
@@ -111,17 +154,49 @@ def _check_support(
         raise CampaignError(message)
 
 
-def _expected_mean(spread: "Spread", frame: "Frame") -> float | None:
-    """Weigh the strata's means; fall back on the site's where one is missing."""
-    means = {entry.stratum: entry.mean for entry in spread.strata}
+def expected_mean(
+    entries: Sequence["StratumSpread"], frame: "Frame", *, site: "StratumSpread | None" = None
+) -> float | None:
+    """Weigh the strata's means; fall back on the site's where one is missing.
+
+    Parameters
+    ----------
+    entries : sequence of StratumSpread
+    frame : Frame
+    site : StratumSpread or None
+
+    Returns
+    -------
+    float or None
+        In the analyte's unit.
+    """
+    means = {entry.stratum: entry.mean for entry in entries}
     known = [(s.weight, means.get(s.name)) for s in frame.strata]
     if all(mean is not None for _, mean in known):
         return math.fsum(weight * (mean or 0.0) for weight, mean in known)
-    return spread.site.mean if spread.site is not None else None
+    return site.mean if site is not None else None
 
 
-def _parts(campaign: "Campaign", spread: "Spread", frame: "Frame") -> tuple[Part, ...]:
-    entries = {entry.stratum: entry for entry in spread.strata}
+def parts_of(
+    campaign: "Campaign", frame: "Frame", spread: Sequence["StratumSpread"]
+) -> tuple[Part, ...]:
+    """Give every stratum of the frame its weight, sigma and expected loss.
+
+    Parameters
+    ----------
+    campaign : Campaign
+    frame : Frame
+    spread : sequence of StratumSpread
+        Of one analyte.
+
+    Raises
+    ------
+    CampaignError
+        A loss is typed for a stratum that the frame does not have.
+    DesignError
+        A stratum has no sigma.
+    """
+    entries = {entry.stratum: entry for entry in spread}
     missing = [s.name for s in frame.strata if s.name not in entries]
     if missing:
         message = (

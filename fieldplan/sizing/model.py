@@ -73,6 +73,52 @@ class QualityControlCount:
 
 
 @dataclass(frozen=True)
+class OtherPrecision:
+    """What the chosen n buys for an objective, or an analyte, that does not decide it.
+
+    Parameters
+    ----------
+    analyte, unit : str
+    target : str
+        Its own target in words; empty where the campaign sets no precision for it.
+    target_standard_error, target_half_width : float or None
+    standard_error, half_width : float or None
+        Expected at ``Size.needed``; None where its strata do not all have a sigma.
+    assumed : bool
+        A sigma behind them was ASSUMED.
+    meets : bool or None
+        The expected precision keeps the target; None without one of the two.
+    chance : float or None
+        Chance that the chosen n keeps the target; None where none can be given.
+    assurance : float or None
+        Asked for by its own objective.
+    own_n : int or None
+        Results that its own objective would ask for; None without a target within reach.
+    sentence : str
+    """
+
+    analyte: str
+    unit: str
+    target: str = ""
+    target_standard_error: float | None = None
+    target_half_width: float | None = None
+    standard_error: float | None = None
+    half_width: float | None = None
+    assumed: bool = False
+    meets: bool | None = None
+    chance: float | None = None
+    assurance: float | None = None
+    own_n: int | None = None
+    sentence: str = ""
+
+    @property
+    def falls_short(self) -> bool:
+        """Whether it misses its own target, or keeps it with less than the chance asked for."""
+        unsure = None not in (self.chance, self.assurance)
+        return self.meets is False or (unsure and (self.chance or 0) < (self.assurance or 0) - 1e-9)
+
+
+@dataclass(frozen=True)
 class Size:
     """The answer to "how many", with all that must be said beside it.
 
@@ -116,6 +162,8 @@ class Size:
         Under what the interval may be trusted (normality, skewness).
     unrounded : float or None
         The plain total before rounding, floors and Student's t; None without a target.
+    others : tuple of OtherPrecision
+        What the same n buys for objectives and analytes that do not decide it.
     """
 
     design: str
@@ -145,3 +193,4 @@ class Size:
     sentences: tuple[str, ...]
     conditions: tuple[str, ...]
     unrounded: float | None = None
+    others: tuple[OtherPrecision, ...] = ()

@@ -38,6 +38,7 @@ def answer_words(plan: Plan) -> list[Block]:
     if stamps:
         blocks.append(Bullets(stamps))
     blocks += [Paragraph(sentence) for sentence in others]
+    blocks += [Paragraph(other.sentence) for other in plan.size.others if other.falls_short]
     blocks += [Paragraph(sentence) for sentence in plan.frame.population.sentences[:1]]
     return [*blocks, stratum_table(plan), *extra_lines(plan), *open_blocks(plan)]
 

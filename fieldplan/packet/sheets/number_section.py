@@ -1,9 +1,11 @@
 """How uneven the site is, and how many results the target takes."""
 
 from fieldplan.base.document import Block, Bullets, Facts, Heading, Paragraph, Table
-from fieldplan.packet.sheets.amounts import percent, rounded
+from fieldplan.packet.sheets.amounts import counted, percent, rounded
 from fieldplan.plan.model import Plan
-from fieldplan.sizing.words import percent as chance_words
+from fieldplan.sizing.model import OtherPrecision
+from fieldplan.sizing.other_words import chance_words
+from fieldplan.sizing.words import percent as chance_of
 
 
 def spread_blocks(plan: Plan) -> list[Block]:
@@ -48,6 +50,8 @@ def number_blocks(plan: Plan) -> list[Block]:
         blocks.append(assurance_table(plan))
     if size.curve:
         blocks.append(precision_curve(size))
+    if size.others:
+        blocks += other_blocks(plan)
     if size.conditions:
         blocks += [Heading("Under what condition", level=2), Bullets(size.conditions)]
     return [*blocks, Paragraph("The working is in annex A.", tone="note")]
@@ -77,12 +81,37 @@ def assurance_table(plan: Plan) -> Table:
     size = plan.size
     rows = [(str(entry.n), percent(entry.assurance)) for entry in size.assured]
     if size.chance_plain is not None:
-        rows.insert(
-            0, (str(size.plain_n), f"{chance_words(size.chance_plain)} (the plain formula)")
-        )
+        rows.insert(0, (str(size.plain_n), f"{chance_of(size.chance_plain)} (the plain formula)"))
     return Table(
         ("Results", "Chance that they meet the target"),
         tuple(rows),
         caption="How sure the number is, given how few results stand behind the spread",
         numeric=("Results",),
     )
+
+
+def other_blocks(plan: Plan) -> list[Block]:
+    """Set what the same n buys for objectives and analytes that do not decide it."""
+    others = plan.size.others
+    columns = ("Analyte", "Standard error to expect", "Its own target", "Kept", "Chance")
+    table = Table(
+        columns,
+        tuple(other_row(plan, other) for other in others),
+        caption=f"What {counted(plan.size.needed, 'result')} buy beside the target that decides n",
+    )
+    heading = Heading("Other analytes and objectives", level=2)
+    return [heading, table, Bullets(tuple(other.sentence for other in others))]
+
+
+def other_row(plan: Plan, other: OtherPrecision) -> tuple[str, ...]:
+    """Set one objective or analyte; a dash where the campaign does not say."""
+    analyte = plan.campaign.analyte_called(other.analyte)
+    error = "–"
+    if other.standard_error is not None:
+        error = f"{rounded(other.standard_error)} {other.unit}"
+        error += " (sigma ASSUMED)" if other.assumed else ""
+    kept = "–" if other.meets is None else "yes" if other.meets else "no"
+    chance = "–" if other.chance is None else chance_words(other)
+    if other.chance is not None and other.assurance is not None:
+        chance += f" ({percent(other.assurance)} asked for)"
+    return (analyte.name or analyte.id, error, other.target or "–", kept, chance)

@@ -1,0 +1,164 @@
+"""What the n of the deciding objective buys for the other objectives and analytes."""
+
+from collections.abc import Iterator
+from dataclasses import replace
+from typing import TYPE_CHECKING
+
+from fieldplan.base.errors import DesignError
+from fieldplan.campaign.model import Objective
+from fieldplan.sizing.campaign_question import ask, expected_mean, parts_of, target_of
+from fieldplan.sizing.counting import assured_counts, plain_counts
+from fieldplan.sizing.model import OtherPrecision, Size
+from fieldplan.sizing.other_words import other_sentence
+from fieldplan.sizing.precision import Precision
+from fieldplan.sizing.question import Question
+from fieldplan.sizing.words import target_words
+from fieldplan.stats.precision import meets
+
+if TYPE_CHECKING:
+    from fieldplan.campaign.model import Analyte, Campaign
+    from fieldplan.frame.model import Frame
+    from fieldplan.lab.model import Spread
+
+
+def other_precisions(
+    campaign: "Campaign", spread: "Spread", frame: "Frame", *, size: Size
+) -> tuple[OtherPrecision, ...]:
+    """Say what the chosen n buys for every objective and analyte that does not decide it.
+
+    Parameters
+    ----------
+    campaign : Campaign
+    spread : Spread
+        ``others`` holds the sigmas of analytes that do not decide n.
+    frame : Frame
+    size : Size
+        The answer for the deciding objective.
+
+    Returns
+    -------
+    tuple of OtherPrecision
+        The other objectives in the order of the file, then analytes without an objective.
+
+    Notes
+    -----
+    The counts follow the luck of the deciding analyte's pilot and not that of another's, so the
+    factor for Neyman counts applies only where the same analyte is asked about twice.
+    """
+    return tuple(
+        _answered(
+            campaign,
+            size,
+            objective=objective,
+            known=_Known(campaign, spread, frame, analyte=analyte),
+        )
+        for analyte, objective in _besides(campaign)
+    )
+
+
+def _besides(campaign: "Campaign") -> Iterator[tuple["Analyte", "Objective | None"]]:
+    """Pair analytes with objectives that do not decide n; None for those that nothing asks of."""
+    deciding = campaign.deciding_objective
+    asked = {campaign.deciding_analyte.id}
+    for objective in campaign.objective:
+        if objective is not deciding:
+            analyte = campaign.analyte_called(objective.analyte or campaign.deciding_analyte.id)
+            asked.add(analyte.id)
+            yield analyte, objective
+    for analyte in campaign.analyte:
+        if analyte.id not in asked:
+            yield analyte, None
+
+
+class _Known:
+    """What the campaign knows of one analyte's spread; ``parts`` is empty where that is too little.
+
+    ``given`` says whether the campaign file has a ``[[sigma]]`` for it at all.
+    """
+
+    def __init__(
+        self, campaign: "Campaign", spread: "Spread", frame: "Frame", *, analyte: "Analyte"
+    ) -> None:
+        deciding = analyte.id == spread.analyte
+        own = tuple(entry for entry in spread.others if entry.analyte == analyte.id)
+        entries = spread.strata if deciding else own
+        complete = {stratum.name for stratum in frame.strata} <= {e.stratum for e in entries}
+        self.analyte = analyte
+        self.parts = parts_of(campaign, frame, entries) if complete else ()
+        self.mean = expected_mean(entries, frame, site=spread.site if deciding else None)
+        self.given = any(sigma.analyte == analyte.id for sigma in campaign.sigma)
+
+
+_UNREAD = Objective(question="mean", standard_error=1.0, assurance="plain")
+"""Asked where an objective has no target to compare with; its own target is never read."""
+
+
+def _answered(
+    campaign: "Campaign",
+    size: Size,
+    *,
+    objective: "Objective | None",
+    known: _Known,
+) -> OtherPrecision:
+    why_not = _why_no_target(objective, known.mean)
+    asked = _UNREAD if objective is None or why_not else objective
+    asked = asked.model_copy(update={"analyte": known.analyte.id})
+    question = ask(campaign, asked, parts=known.parts, mean=known.mean)
+    found = OtherPrecision(known.analyte.id, known.analyte.unit)
+    if not why_not:
+        found = replace(
+            found,
+            target=target_words(question),
+            target_standard_error=question.target_standard_error,
+            target_half_width=question.target_half_width,
+            assurance=question.assurance,
+        )
+    found = _bought(question, found, size=size)
+    words = other_sentence(
+        found, size, name=known.analyte.name or known.analyte.id, given=known.given, why_not=why_not
+    )
+    return replace(found, sentence=words)
+
+
+def _why_no_target(objective: "Objective | None", mean: float | None) -> str:
+    """Say why there is no precision to compare with; empty where there is one."""
+    if objective is None:
+        return "the campaign sets no target for it"
+    kind = target_of(objective)[0]
+    if kind == "budget":
+        return "its own objective is a budget, which sets no precision"
+    if kind == "relative_half_width" and not (mean or 0.0) > 0:
+        return "its own target is a share of an expected mean that the campaign does not give"
+    return ""
+
+
+def _bought(question: Question, found: OtherPrecision, *, size: Size) -> OtherPrecision:
+    """Fill in what the counts of ``size`` buy, and whether that keeps the target."""
+    if question.census:
+        kept = True if found.target else None
+        return replace(found, standard_error=0.0, half_width=0.0, meets=kept)
+    if not question.parts:
+        return found
+    counts = [entry.needed for entry in size.strata]
+    same = question.analyte == size.analyte
+    precision = Precision(question if same else replace(question, allocation="proportional"))
+    error, width = precision.standard_error(counts), precision.half_width(counts)
+    assumed = any(part.assumed for part in question.parts)
+    found = replace(found, standard_error=error, half_width=width, assumed=assumed)
+    if not found.target:
+        return found
+    wanted = found.target_half_width
+    return replace(
+        found,
+        meets=meets(error, question.value) if wanted is None else meets(width, wanted),
+        chance=precision.chance(counts),
+        own_n=_own_n(question),
+    )
+
+
+def _own_n(question: Question) -> int | None:
+    """Count what the objective would ask for by itself; None where that is out of reach."""
+    try:
+        return sum(assured_counts(question, question.assurance) or plain_counts(question))
+    except DesignError:
+        return None
