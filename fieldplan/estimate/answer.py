@@ -5,10 +5,11 @@ from collections.abc import Mapping
 from fieldplan.base.errors import DesignError, LabError
 from fieldplan.campaign.model import Rules
 from fieldplan.estimate.coverage import coverage_sentence
-from fieldplan.estimate.difference import difference_sentences, split_difference
+from fieldplan.estimate.difference import difference_sentences
 from fieldplan.estimate.level import level_sentence
 from fieldplan.estimate.means import Means, means_by
 from fieldplan.estimate.model import Change, Estimate
+from fieldplan.estimate.planned import planned_for
 from fieldplan.estimate.population import population_sentence
 from fieldplan.estimate.sentences import answer_sentences
 from fieldplan.estimate.working import working
@@ -68,21 +69,21 @@ def estimate(
     changes = _changes(plan, returns, rules, changed)
     level = level_sentence(plan, means)
     population = population_sentence(plan, basis)
-    parts = split_difference(plan, means.half)
+    planned = planned_for(plan, basis.analyte)
     return Estimate(
         analyte=basis.analyte,
-        unit=plan.size.unit,
+        unit=planned.unit,
         mean=means.half,
         interval=means.interval,
         other_interval=means.other_interval,
         bracket=means.bracket,
-        planned_standard_error=plan.size.standard_error,
+        planned_standard_error=planned.standard_error,
         achieved_standard_error=means.half.standard_error,
-        why_different=difference_sentences(plan, means.half, parts),
+        why_different=difference_sentences(plan, means.half, planned=planned),
         level_sentence=level,
         population_sentence=population,
         coverage_sentence=coverage_sentence(plan, means),
-        steps=working(means, plan.size.unit),
+        steps=working(means, planned.unit),
         changes=changes,
         returns=basis,
         sentences=answer_sentences(plan, means, changes, level=level, population=population),

@@ -7,6 +7,7 @@ import numpy as np
 
 from fieldplan.base.units import significant
 from fieldplan.design.model import MeanEstimate
+from fieldplan.estimate.planned import Planned, Target
 from fieldplan.lab.words import counted, listed
 from fieldplan.plan.model import Plan
 from fieldplan.stats.intervals import IntervalKind, t_quantile
@@ -40,18 +41,20 @@ class DifferenceParts:
         return self.number * self.sharing * self.spread * self.rest
 
 
-def split_difference(plan: Plan, mean: MeanEstimate) -> DifferenceParts | None:
+def split_difference(plan: Plan, mean: MeanEstimate, *, planned: Planned) -> DifferenceParts | None:
     """Split achieved / planned standard error into number, sharing, spread and rest.
 
     Parameters
     ----------
     plan : Plan
     mean : MeanEstimate
+    planned : Planned
+        What the plan says of the same analyte.
 
     Returns
     -------
     DifferenceParts or None
-        None where either standard error is 0, as for a census.
+        None where either standard error is 0, as for a census, or no precision was planned.
 
     Notes
     -----
@@ -59,15 +62,15 @@ def split_difference(plan: Plan, mean: MeanEstimate) -> DifferenceParts | None:
     replaced by what came back: the total n, the n of each stratum, the s of each stratum. Each
     factor is the square root of the ratio of two neighbours, so that the product telescopes.
     """
-    planned = plan.size.standard_error
-    if not (planned > 0 and mean.standard_error > 0):
+    promised = planned.standard_error
+    if not (promised and planned.sigmas and mean.standard_error > 0):
         return None
     sizes = {entry.stratum: entry for entry in plan.size.strata}
     found = {entry.stratum: entry for entry in mean.strata}
     names = [stratum.name for stratum in plan.frame.strata]
     weights = np.array([stratum.weight for stratum in plan.frame.strata])
     populations = [stratum.count for stratum in plan.frame.strata]
-    sigmas = np.array([sizes[name].sigma for name in names])
+    sigmas = np.array([planned.sigmas[name] for name in names])
     achieved_sigmas = np.array([found[name].sd for name in names])
     needed = np.array([float(sizes[name].needed) for name in names])
     came = np.array([float(found[name].n) for name in names])
@@ -90,34 +93,28 @@ def split_difference(plan: Plan, mean: MeanEstimate) -> DifferenceParts | None:
         number=ladder[1] / ladder[0],
         sharing=ladder[2] / ladder[1],
         spread=ladder[3] / ladder[2],
-        rest=ladder[0] / planned * (mean.standard_error / ladder[3]),
+        rest=ladder[0] / promised * (mean.standard_error / ladder[3]),
     )
 
 
-def difference_sentences(
-    plan: Plan, mean: MeanEstimate, parts: DifferenceParts | None
-) -> tuple[str, ...]:
+def difference_sentences(plan: Plan, mean: MeanEstimate, *, planned: Planned) -> tuple[str, ...]:
     """Say in sentences whether the campaign kept its promise, and why not.
 
     Parameters
     ----------
     plan : Plan
     mean : MeanEstimate
-    parts : DifferenceParts or None
+    planned : Planned
 
     Returns
     -------
     tuple of str
     """
-    planned, achieved, unit = plan.size.standard_error, mean.standard_error, plan.size.unit
-    needed = plan.size.needed
-    lines = [
-        f"Planned: a standard error of {significant(planned)} {unit} from "
-        f"{counted(needed, 'result')}. Achieved: {significant(achieved)} {unit} from {mean.n}."
-    ]
-    lines += _target_sentence(plan, mean)
+    lines = [_promise(plan, mean, planned=planned)]
+    lines += [_kept(plan, mean, target=target, unit=planned.unit) for target in planned.targets]
+    parts = split_difference(plan, mean, planned=planned)
     if parts is None:
-        return tuple(lines)
+        return tuple(line for line in lines if line)
     lines.append(
         f"Achieved is {parts.ratio:.2f} times planned: {parts.number:.2f} from the number of "
         f"results, times {parts.sharing:.2f} from their sharing among strata and its weights, "
@@ -128,38 +125,49 @@ def difference_sentences(
             else "."
         )
     )
-    spread = _spread_found(plan, mean)
-    return (*lines, spread) if spread else tuple(lines)
+    lines.append(_spread_found(mean, planned))
+    return tuple(line for line in lines if line)
 
 
-def _target_sentence(plan: Plan, mean: MeanEstimate) -> list[str]:
-    """Say whether the target was kept, by the confidence that it was set at."""
-    size = plan.size
-    if size.target_standard_error is not None:
-        target, reached = size.target_standard_error, mean.standard_error
-    elif size.target_half_width is not None:
+def _promise(plan: Plan, mean: MeanEstimate, *, planned: Planned) -> str:
+    achieved = f"Achieved: {significant(mean.standard_error)} {planned.unit} from {mean.n}."
+    results = counted(plan.size.needed, "result")
+    if planned.standard_error is None:
+        return (
+            "No precision was planned for it, since no sigma was known; the number of "
+            f"{results} was chosen for {plan.campaign.deciding_analyte.id}. {achieved}"
+        )
+    chosen = f", a number chosen for {plan.campaign.deciding_analyte.id}"
+    return (
+        f"Planned: a standard error of {significant(planned.standard_error)} {planned.unit} from "
+        f"{results}{'' if planned.decides else chosen}. {achieved}"
+    )
+
+
+def _kept(plan: Plan, mean: MeanEstimate, *, target: Target, unit: str) -> str:
+    """Say whether a target was kept, by the confidence that it was set at."""
+    if target.standard_error is not None:
+        asked, reached = target.standard_error, mean.standard_error
+    elif target.half_width is not None:
         kind: IntervalKind = plan.campaign.rules.interval
-        t = t_quantile(mean.degrees_of_freedom, confidence=size.confidence, kind=kind)
-        target, reached = size.target_half_width, t * mean.standard_error
+        t = t_quantile(mean.degrees_of_freedom, confidence=plan.size.confidence, kind=kind)
+        asked, reached = target.half_width, t * mean.standard_error
     else:
-        return []
-    kept = "kept" if reached <= target * (1 + 1e-9) else "missed"
-    return [
-        f"The target, {size.target}, was {kept}: it came to {significant(reached)} {size.unit}."
-    ]
+        return ""
+    kept = "kept" if reached <= asked * (1 + 1e-9) else "missed"
+    return f"The target, {target.words}, was {kept}: it came to {significant(reached)} {unit}."
 
 
 def _says(factor: float) -> bool:
     return abs(factor - 1) > 0.005
 
 
-def _spread_found(plan: Plan, mean: MeanEstimate) -> str:
+def _spread_found(mean: MeanEstimate, planned: Planned) -> str:
     """Name the strata whose s is a tenth or more off what was assumed."""
-    assumed = {entry.stratum: entry.sigma for entry in plan.size.strata}
     off = [
-        f"{significant(entry.sd)} instead of {significant(assumed[entry.stratum])}"
+        f"{significant(entry.sd)} instead of {significant(planned.sigmas[entry.stratum])}"
         + (f" in {entry.stratum}" if len(mean.strata) > 1 else "")
         for entry in mean.strata
-        if entry.n > 1 and abs(entry.sd / assumed[entry.stratum] - 1) > 0.1
+        if entry.n > 1 and abs(entry.sd / planned.sigmas[entry.stratum] - 1) > 0.1
     ]
-    return f"The standard deviation was {listed(off)} ({plan.size.unit})." if off else ""
+    return f"The standard deviation was {listed(off)} ({planned.unit})." if off else ""

@@ -77,10 +77,10 @@ def level_sentence(plan: Plan, means: Means) -> str:
     str
         Empty without an action level.
     """
-    analyte = plan.campaign.deciding_analyte
+    analyte = plan.campaign.analyte_called(means.analyte)
     if analyte.action_level is None:
         return ""
-    level, unit = analyte.action_level, plan.size.unit
+    level, unit = analyte.action_level, analyte.unit
     outer = envelope(means.interval, means.bracket)
     source = f" ({analyte.action_level_source})" if analyte.action_level_source else ""
     which = f"{100 * outer.confidence:g} % {OPEN_ENDS.get(outer.kind, 'interval')}"
@@ -89,13 +89,25 @@ def level_sentence(plan: Plan, means: Means) -> str:
     decides = plan.campaign.plan.decides
     who = f"{decides} decides" if decides else "the plan names nobody who decides"
     return (
-        f"The {which} {_place(level, outer)} the action level of {significant(level)} "
+        f"The {which} {place_words(level, outer)} the action level of {significant(level)} "
         f"{unit}{source}{_dependence(level, means)}. It speaks of the mean over the population "
         f"described here, not of single places; {who} what follows."
     )
 
 
-def _place(level: float, outer: Interval) -> str:
+def place_words(level: float, outer: Interval) -> str:
+    """Say where an interval or limit lies, as the verb of a sentence.
+
+    Parameters
+    ----------
+    level : float
+    outer : Interval
+
+    Examples
+    --------
+    >>> place_words(150.0, Interval("upper-limit", 0.95, None, 160.0))
+    'does not lie below'
+    """
     side = side_of(level, outer)
     if outer.kind == "two-sided" or side != "spans":
         return "spans" if side == "spans" else f"lies {side}"

@@ -29,6 +29,8 @@ class Means:
     rules : Rules
     censored : int
         Number of location values in the mean with a non-detect behind them.
+    analyte : str
+        Its id.
     """
 
     low: MeanEstimate
@@ -37,6 +39,7 @@ class Means:
     values: tuple[StratumValues, ...]
     rules: Rules
     censored: int
+    analyte: str
 
     def interval_about(self, mean: MeanEstimate, kind: IntervalKind) -> Interval:
         """Set an interval of this kind about one of the means."""
@@ -108,6 +111,7 @@ def means_by(plan: Plan, returns: Returns, rules: Rules) -> Means:
         values=stratum_values(plan, returns, "half"),
         rules=rules,
         censored=sum(result.used and not result.detected for result in returns.results),
+        analyte=returns.analyte,
     )
 
 

@@ -60,7 +60,9 @@ class Estimate:
         The other kind, shown on request.
     bracket : Bracket or None
         None when everything was detected.
-    planned_standard_error, achieved_standard_error : float
+    planned_standard_error : float or None
+        None where the campaign had no sigma for the analyte.
+    achieved_standard_error : float
     why_different : tuple of str
         Sentences that split the difference into n, spread and weights.
     level_sentence : str
@@ -83,7 +85,7 @@ class Estimate:
     interval: Interval
     other_interval: Interval
     bracket: Bracket | None
-    planned_standard_error: float
+    planned_standard_error: float | None
     achieved_standard_error: float
     why_different: tuple[str, ...]
     level_sentence: str
@@ -93,3 +95,37 @@ class Estimate:
     changes: tuple[Change, ...]
     returns: Returns
     sentences: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class Unanswered:
+    """An analyte of the campaign that gets no mean, and why, in a sentence.
+
+    ``returns`` is None where the laboratory file has no result of it at all.
+    """
+
+    analyte: str
+    sentence: str
+    returns: Returns | None = None
+
+
+@dataclass(frozen=True)
+class Answers:
+    """What one laboratory file says of the campaign.
+
+    Parameters
+    ----------
+    main : Estimate
+        Of the deciding analyte, or of the one asked for.
+    others : tuple of Estimate
+        Of the campaign's other analytes, in the order of its file.
+    without : tuple of Unanswered
+        Analytes that get no mean.
+    sentences : tuple of str
+        One for each other analyte; two where a rule was changed after results.
+    """
+
+    main: Estimate
+    others: tuple[Estimate, ...] = ()
+    without: tuple[Unanswered, ...] = ()
+    sentences: tuple[str, ...] = ()

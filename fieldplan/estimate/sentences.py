@@ -39,15 +39,24 @@ def where(plan: Plan) -> str:
     return plan.campaign.plan.site or plan.campaign.plan.title
 
 
-def analyte_name(plan: Plan) -> str:
-    """Name the analyte in running text.
+def analyte_name(plan: Plan, name: str) -> str:
+    """Name an analyte in running text.
 
     Parameters
     ----------
     plan : Plan
+    name : str
+        Its id.
+
+    Examples
+    --------
+    >>> from tests.factories import make_plan
+    >>> analyte_name(make_plan(), "lead")
+    'lead'
     """
-    analyte = plan.campaign.deciding_analyte
-    return (analyte.name or analyte.id).lower() if len(analyte.name) > 3 else analyte.id
+    analyte = plan.campaign.analyte_called(name)
+    plain_word = len(analyte.name) > 3 and analyte.name[1:].islower()
+    return analyte.name.lower() if plain_word else analyte.name or analyte.id
 
 
 def answer_sentences(
@@ -67,12 +76,12 @@ def answer_sentences(
     -------
     tuple of str
     """
-    unit = plan.size.unit
+    unit = plan.campaign.analyte_called(means.analyte).unit
     error, mean = means.half.standard_error, means.half
     answer = (
-        f"The mean of {analyte_name(plan)} over {where(plan)} is {significant(mean.mean)} {unit}, "
-        f"{interval_in_words(means.interval, unit)} ({mean.n} results, standard error "
-        f"{significant(error)} {unit})."
+        f"The mean of {analyte_name(plan, means.analyte)} over {where(plan)} is "
+        f"{significant(mean.mean)} {unit}, {interval_in_words(means.interval, unit)} "
+        f"({mean.n} results, standard error {significant(error)} {unit})."
     )
     lines = [
         answer,

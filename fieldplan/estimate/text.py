@@ -28,7 +28,7 @@ def results_paragraph(plan: Plan, estimate: Estimate) -> str:
     freedom = f", {known:.3g} degrees of freedom" if math.isfinite(known) else ""
     parts = [
         f"By plan {plan.revision_name}, {planned} random locations of {where(plan)} were to be "
-        f"sampled for {analyte_name(plan)}; {mean.n} results are in the mean, "
+        f"sampled for {analyte_name(plan, estimate.analyte)}; {mean.n} results are in the mean, "
         f"{counted(replaced, 'of them from an alternate', 'of them from alternates')}.",
         f"The mean is {significant(mean.mean)} {unit} (standard error "
         f"{significant(mean.standard_error)} {unit}{freedom}; "

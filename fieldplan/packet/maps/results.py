@@ -51,7 +51,7 @@ def results_content(plan: Plan, estimate: Estimate) -> MapContent:
         Names are short names with the value as reported.
     """
     results = estimate.returns.results
-    level = plan.campaign.deciding_analyte.action_level
+    level = plan.campaign.analyte_called(estimate.analyte).action_level
     bounds = class_bounds([r.half for r in results if r.detected], level)
     places = {place.location_id: place for place in plan.locations.places}
     marks = list(unit_marks(plan))

@@ -68,7 +68,7 @@ def answer_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
     """Compose page one: the answer in sentences, each once, and its figure."""
     from fieldplan.packet.charts import interval_figure
 
-    level = plan.campaign.deciding_analyte.action_level
+    level = plan.campaign.analyte_called(estimate.analyte).action_level
     figure = interval_figure(estimate, action_level=level)
     return [*answer_words(estimate), figure, *after_figure(estimate)]
 

@@ -5,6 +5,7 @@ from math import isinf
 from fieldplan.base.document import Block, Facts, Heading, Paragraph, Table
 from fieldplan.base.units import significant
 from fieldplan.estimate.model import Change, Estimate
+from fieldplan.estimate.planned import planned_for
 from fieldplan.estimate.sentences import interval_in_words, recorded_answer
 from fieldplan.plan.model import Plan
 
@@ -27,6 +28,7 @@ def stratum_table(plan: Plan, estimate: Estimate) -> Table:
     """Set n, mean, s and weight of every stratum beside what was planned."""
     unit = estimate.unit
     needed = {entry.stratum: entry for entry in plan.size.strata}
+    sigmas = planned_for(plan, estimate.analyte).sigmas
     columns = (
         "Stratum",
         "Weight",
@@ -44,7 +46,7 @@ def stratum_table(plan: Plan, estimate: Estimate) -> Table:
             str(entry.n),
             significant(entry.mean),
             significant(entry.sd) + (" borrowed" if entry.variance_borrowed else ""),
-            significant(needed[entry.stratum].sigma) if entry.stratum in needed else "–",
+            significant(sigmas[entry.stratum]) if entry.stratum in sigmas else "–",
         )
         for entry in estimate.mean.strata
     ]

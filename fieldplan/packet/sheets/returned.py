@@ -18,7 +18,7 @@ def match_sentence(returns: Returns) -> str:
 
 def location_table(plan: Plan, returns: Returns) -> Table:
     """Set every location: as reported, value, used or why not."""
-    unit = plan.size.unit
+    unit = plan.campaign.analyte_called(returns.analyte).unit
     kept = [True, several_strata(plan), True, True, True, True]
     columns = ("Location", "Stratum", "Class", "As reported", f"Value ({unit})", "In the mean")
     rows = [location_row(result) for result in returns.results]
@@ -116,11 +116,10 @@ def duplicate_blocks(plan: Plan, returns: Returns) -> list[Block]:
         for name, first, second in returns.duplicate_pairs
     )
     numeric = ("First", "Second", "Relative difference")
+    unit = plan.campaign.analyte_called(returns.analyte).unit
     return [
         Heading("Field duplicates", level=2),
-        Table(
-            ("Location", *numeric), rows, caption=f"Results in {plan.size.unit}", numeric=numeric
-        ),
+        Table(("Location", *numeric), rows, caption=f"Results in {unit}", numeric=numeric),
     ]
 
 

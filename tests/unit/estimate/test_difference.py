@@ -7,6 +7,7 @@ from hypothesis import strategies as st
 
 from fieldplan.estimate import estimate
 from fieldplan.estimate.difference import split_difference
+from fieldplan.estimate.planned import planned_for
 from tests.unit.estimate.known import WELLS, list_plan, result, returned, strata_plan
 
 COUNTS = st.integers(2, 12)
@@ -30,7 +31,7 @@ def test_the_parts_multiply_to_achieved_over_planned(
         for n, value in enumerate(noise.lognormal(3, 1, count))
     ]
     answer = estimate(plan, returned(results))
-    parts = split_difference(plan, answer.mean)
+    parts = split_difference(plan, answer.mean, planned=planned_for(plan, "lead"))
     assert parts is not None
     assert parts.ratio == pytest.approx(answer.mean.standard_error / 7.7, rel=1e-9)
 
@@ -46,7 +47,8 @@ def test_each_part_is_what_it_is_called() -> None:
         for s in "ab"
         for n, sign in enumerate((-1, 1))
     ]
-    parts = split_difference(plan, estimate(plan, returned(results)).mean)
+    mean = estimate(plan, returned(results)).mean
+    parts = split_difference(plan, mean, planned=planned_for(plan, "lead"))
     assert parts is not None
     assert parts.number == pytest.approx(2**0.5)
     assert parts.sharing == pytest.approx(1.0)
@@ -59,7 +61,7 @@ def test_a_list_uses_its_finite_population_in_every_part() -> None:
     plan = list_plan()
     returns = returned([result(f"MW-{n}", value) for n, value in enumerate(WELLS)])
     answer = estimate(plan, returns)
-    parts = split_difference(plan, answer.mean)
+    parts = split_difference(plan, answer.mean, planned=planned_for(plan, "lead"))
     assert parts is not None
     assert parts.number == pytest.approx(((6 / 14 / 8) / (7 / 14 / 7)) ** 0.5)
     assert parts.spread == pytest.approx(2.340597 / 3.1, rel=1e-6)
@@ -80,5 +82,5 @@ def test_a_census_has_nothing_to_split() -> None:
     plan = list_plan(layout="census", units=8)
     returns = returned([result(f"MW-{n}", value) for n, value in enumerate(WELLS)])
     answer = estimate(plan, returns)
-    assert split_difference(plan, answer.mean) is None
+    assert split_difference(plan, answer.mean, planned=planned_for(plan, "lead")) is None
     assert answer.why_different

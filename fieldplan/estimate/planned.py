@@ -1,0 +1,78 @@
+"""What the plan promised for one analyte, whether it decided n or not."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+from fieldplan.plan.model import Plan
+
+
+@dataclass(frozen=True)
+class Target:
+    """A precision that was asked for: exactly one of the two numbers is given."""
+
+    words: str
+    standard_error: float | None
+    half_width: float | None
+
+
+@dataclass(frozen=True)
+class Planned:
+    """What was planned for one analyte.
+
+    Parameters
+    ----------
+    analyte, unit : str
+    standard_error : float or None
+        None where the campaign had no sigma for it.
+    sigmas : mapping of str to float
+        By stratum, as used for planning; empty where one was missing.
+    targets : tuple of Target
+        Its own, the deciding one first.
+    decides : bool
+        The number of locations was chosen for it.
+    """
+
+    analyte: str
+    unit: str
+    standard_error: float | None
+    sigmas: Mapping[str, float]
+    targets: tuple[Target, ...]
+    decides: bool
+
+
+def planned_for(plan: Plan, analyte: str) -> Planned:
+    """Look up what the plan says of one analyte.
+
+    Parameters
+    ----------
+    plan : Plan
+    analyte : str
+        Its id.
+
+    Returns
+    -------
+    Planned
+
+    Examples
+    --------
+    >>> from tests.factories import make_plan
+    >>> planned = planned_for(make_plan(), "lead")
+    >>> planned.standard_error, planned.sigmas, planned.decides
+    (8.8, {'meadow': 18.0, 'yard': 45.0}, True)
+    """
+    unit = plan.campaign.analyte_called(analyte).unit
+    entries = [other for other in plan.size.others if other.analyte == analyte]
+    targets = [
+        Target(other.target, other.target_standard_error, other.target_half_width)
+        for other in entries
+        if other.target
+    ]
+    if analyte == plan.campaign.deciding_analyte.id:
+        size = plan.size
+        sigmas = {entry.stratum: entry.sigma for entry in size.strata}
+        own = Target(size.target, size.target_standard_error, size.target_half_width)
+        return Planned(analyte, unit, size.standard_error, sigmas, (own, *targets), decides=True)
+    known = {entry.stratum: entry.sigma for entry in plan.spread.others if entry.analyte == analyte}
+    complete = all(stratum.name in known for stratum in plan.frame.strata)
+    error = next((other.standard_error for other in entries), None)
+    return Planned(analyte, unit, error, known if complete else {}, tuple(targets), decides=False)
