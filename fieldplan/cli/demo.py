@@ -105,24 +105,24 @@ def _plan(folder: Path, *, quiet: bool) -> Path:
 
 def _results(folder: Path, packet: Path, *, quiet: bool) -> Path:
     """Meet the invented returns with the packet; return the results folder."""
-    from fieldplan.estimate import estimate
+    from fieldplan.estimate import estimate_all
     from fieldplan.lab import read_lab
     from fieldplan.packet.results_writer import write_results
     from fieldplan.plan.record import read_plan
-    from fieldplan.returns import read_field_return, read_matches, reconcile
+    from fieldplan.returns import read_field_return, read_matches, reconcile_all
 
     returned = folder / "returned"
     lab_file = next(returned.glob("lab_results.*"))
     field_file, matches_file = returned / "field_return.csv", returned / "matches.csv"
     _stage(5, f"meeting {lab_file.name} and {field_file.name} with the packet", quiet=quiet)
     plan = read_plan(packet)
-    returns = reconcile(
+    received = reconcile_all(
         plan,
         read_lab(lab_file, plan.campaign),
         read_field_return(field_file, plan),
         confirmed=read_matches(matches_file),
     )
-    answer = estimate(plan, returns)
-    for sentence in answer.sentences[:3]:
+    answers = estimate_all(plan, received)
+    for sentence in (*answers.main.sentences[:3], *answers.sentences):
         click.echo(wrapped(sentence))
-    return write_results(plan, answer, folder, sources=(lab_file, field_file, matches_file))
+    return write_results(plan, answers, folder, sources=(lab_file, field_file, matches_file))

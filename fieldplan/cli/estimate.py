@@ -1,7 +1,10 @@
 """``fieldplan estimate``: laboratory results meet their packet."""
 
 import os
+from collections.abc import Callable
 from dataclasses import replace
+from difflib import get_close_matches
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -21,12 +24,10 @@ from fieldplan.cli.options import (
 )
 
 if TYPE_CHECKING:
-    from fieldplan.estimate.model import Estimate
-    from fieldplan.lab.model import LabTable
+    from fieldplan.estimate.model import Answers
     from fieldplan.plan.model import Plan
-    from fieldplan.returns.field import FieldReturn
     from fieldplan.returns.matching import ConfirmedMatch
-    from fieldplan.returns.model import Returns
+    from fieldplan.returns.several import Received
 
 
 def _columns(
@@ -52,6 +53,11 @@ _A_FILE = click.Path(path_type=Path, dir_okay=False)
 @click.command("estimate")
 @packet_argument
 @click.argument("lab_file", type=_A_FILE, metavar="LAB_FILE")
+@click.option(
+    "--analyte",
+    metavar="ID",
+    help="Estimate this analyte only; the one that decided n comes first unless given.",
+)
 @click.option("--field", "field_file", type=_A_FILE, help="The crew's return, filled in.")
 @click.option("--matches", "matches_file", type=_A_FILE, help="matches.csv with your answers.")
 @click.option(
@@ -104,35 +110,38 @@ def command(
 
     Design and rules are those recorded in PACKET before any result. LAB_FILE is CSV or XLSX with
     one result a row. Ids that are only like planned ones are written to matches.csv for you to
-    answer, and nothing is estimated before. Results go into a new numbered folder.
+    answer, and nothing is estimated before. Results go into a new numbered folder. Analytes that
+    did not decide n get a sentence each, and a sheet and a map of their own.
     """
     from fieldplan.lab import read_lab
     from fieldplan.packet.results_writer import write_results
     from fieldplan.plan.record import read_plan
-    from fieldplan.returns import read_field_return, read_matches, reconcile
+    from fieldplan.returns import read_field_return, read_matches, reconcile_all
 
     quiet = options["quiet"] or options["as_json"]
     plan = read_plan(packet)
+    asked = _asked(plan, options["analyte"])
     table = read_lab(lab_file, plan.campaign, columns=columns)
     given = read_field_return(field_file, plan) if field_file else ()
     confirmed = read_matches(matches_file) if matches_file else ()
-    returns = reconcile(plan, table, given, confirmed=confirmed)
-    if returns.needs_you:
-        _ask(returns, confirmed, out or Path())
-    answer = _answer(plan, table, given, confirmed, (returns, _overrides(options)))
-    say(_received(returns), quiet=quiet)
-    for note in returns.notes:
-        say(wrapped(f"- {note}"), quiet=quiet)
+    meet = partial(
+        reconcile_all, lab_table=table, field_rows=given, confirmed=confirmed, analyte=asked
+    )
+    received = meet(plan)
+    if received.needs_you:
+        _ask(received, confirmed, out or Path())
+    answers = _answers(plan, received, overrides=_overrides(options), meet=meet)
+    _say_received(received, quiet=quiet)
     folder = (packet.parent.parent if packet.is_file() else packet).absolute()
     sources = [path for path in (lab_file, field_file, matches_file) if path]
     results = write_results(
         plan,
-        answer,
+        answers,
         out or _beside(folder),
         sources=sources,
         progress=lambda stage: say(f"  {stage} …", quiet=quiet),
     )
-    _print(answer, results, options)
+    _print(answers, results, options)
 
 
 def _beside(packet: Path) -> Path:
@@ -146,34 +155,62 @@ def _overrides(options: dict[str, Any]) -> dict[str, str | float]:
     return {name: options[name] for name in names if options[name] is not None}
 
 
-def _answer(
-    plan: "Plan",
-    table: "LabTable",
-    given: "FieldReturn | tuple[()]",
-    confirmed: "tuple[ConfirmedMatch, ...]",
-    basis: "tuple[Returns, dict[str, str | float]]",
-) -> "Estimate":
-    """Estimate; where the rule for duplicates is changed, reconcile by it once more."""
-    from fieldplan.estimate import estimate
-    from fieldplan.returns import reconcile
+def _asked(plan: "Plan", written: str | None) -> str | None:
+    """Find the analyte that was typed, by id or name; refuse another with what is near it."""
+    if written is None:
+        return None
+    known = {analyte.name.casefold(): analyte.id for analyte in plan.campaign.analyte}
+    known |= {analyte.id.casefold(): analyte.id for analyte in plan.campaign.analyte}
+    if written.casefold() in known:
+        return known[written.casefold()]
+    near = get_close_matches(written.casefold(), [name for name in known if name], n=1, cutoff=0.5)
+    ids = ", ".join(analyte.id for analyte in plan.campaign.analyte)
+    hint = f" Did you mean {known[near[0]]}?" if near else ""
+    message = f"'{written}' is no analyte of {plan.revision_name}; it has {ids}.{hint}"
+    raise click.BadParameter(message, param_hint="--analyte")
 
-    returns, overrides = basis
+
+def _answers(
+    plan: "Plan",
+    received: "Received",
+    *,
+    overrides: dict[str, str | float],
+    meet: "Callable[[Plan], Received]",
+) -> "Answers":
+    """Estimate; where the rule for duplicates is changed, reconcile by it once more."""
+    from fieldplan.estimate import estimate_all
+
     again = None
     if "duplicates" in overrides:
         rules = plan.campaign.rules.model_copy(update={"duplicates": overrides["duplicates"]})
-        changed = replace(plan, campaign=plan.campaign.model_copy(update={"rules": rules}))
-        again = reconcile(changed, table, given, confirmed=confirmed)
-    return estimate(plan, returns, overrides=overrides, returns_changed=again)
+        again = meet(replace(plan, campaign=plan.campaign.model_copy(update={"rules": rules})))
+    return estimate_all(plan, received, overrides=overrides, received_changed=again)
 
 
-def _received(returns: "Returns") -> str:
-    total = returns.matched + returns.extra + len({match.row for match in returns.needs_you})
-    waiting = len({match.row for match in returns.needs_you})
-    end = f"; {waiting} need you" if waiting else ""
-    return f"{returns.matched} of {total} laboratory rows matched{end}."
+def _counts(received: "Received") -> list[str]:
+    """Say how many rows of each analyte were matched."""
+    lines = []
+    for returns in received.every:
+        waiting = len({match.row for match in returns.needs_you})
+        total = returns.matched + returns.extra + waiting
+        head = f"{returns.analyte}: " if received.others else ""
+        end = f"; {waiting} need you" if waiting else ""
+        lines.append(f"{head}{returns.matched} of {total} laboratory rows matched{end}.")
+    return lines
 
 
-def _ask(returns: "Returns", confirmed: "tuple[ConfirmedMatch, ...]", folder: Path) -> None:
+def _say_received(received: "Received", *, quiet: bool) -> None:
+    """Say what came of each analyte; what holds for the whole file is said once."""
+    said: set[str] = set()
+    for line, returns in zip(_counts(received), received.every, strict=True):
+        say(line, quiet=quiet)
+        for note in returns.notes:
+            if note not in said:
+                say(wrapped(f"- {note}"), quiet=quiet)
+        said |= set(returns.notes)
+
+
+def _ask(received: "Received", confirmed: "tuple[ConfirmedMatch, ...]", folder: Path) -> None:
     """Write the proposals to answer, then stop."""
     from fieldplan.base.errors import LabError
     from fieldplan.base.files import write_atomically
@@ -183,28 +220,28 @@ def _ask(returns: "Returns", confirmed: "tuple[ConfirmedMatch, ...]", folder: Pa
     while path.exists():
         number += 1
         path = folder / f"matches-{number:02d}.csv"
-    content = matches_csv(returns.needs_you, confirmed=confirmed)
+    content = matches_csv(received.needs_you, confirmed=confirmed)
     folder.mkdir(parents=True, exist_ok=True)
     write_atomically(path, f"\ufeff{content}")
     lines = [
         f"  row {match.row} '{match.as_written}' may be {match.proposed}: {match.why}"
-        for match in returns.needs_you
+        for match in received.needs_you
     ]
     raise LabError(
-        _received(returns),
+        *_counts(received),
         *lines,
         f"Write yes or no into the column 'confirm' of {path}, then run the command again with "
         f"--matches {path}. Nothing was estimated.",
     )
 
 
-def _print(answer: "Estimate", results: Path, options: dict[str, Any]) -> None:
-    from fieldplan.estimate.export import estimate_json
+def _print(answers: "Answers", results: Path, options: dict[str, Any]) -> None:
+    from fieldplan.estimate.export import answers_json
 
-    sheet = results / "results_sheet.html"
+    sheet, answer = results / "results_sheet.html", answers.main
     if options["as_json"]:
         folder = {"results": results.as_posix(), "sheet": sheet.as_posix()}
-        print_json({**estimate_json(answer), **folder})
+        print_json({**answers_json(answers), **folder})
     else:
         print_sentences(answer.sentences)
         if options["explain"]:
@@ -212,6 +249,9 @@ def _print(answer: "Estimate", results: Path, options: dict[str, Any]) -> None:
             print_steps(answer.steps)
             click.echo()
             print_sentences([*answer.why_different, answer.coverage_sentence])
+        if answers.sentences:
+            click.echo()
+            print_sentences(answers.sentences)
         click.echo(f"Open first: {sheet}")
     if options["open_it"]:
         click.launch(str(sheet))

@@ -1,20 +1,21 @@
-"""The estimate as plain values for other programs: one JSON object, one CSV row a location."""
+"""The estimates as plain values for other programs: one JSON object, one CSV row a location."""
 
 import csv
 import io
 import math
+from collections.abc import Iterator
 from dataclasses import asdict
 from typing import Any
 
-from fieldplan.estimate.model import Estimate
+from fieldplan.estimate.model import Answers, Estimate
 from fieldplan.plan.model import Plan
 from fieldplan.returns.form import as_text
-from fieldplan.returns.model import LocationResult
+from fieldplan.returns.model import LocationResult, Returns
 
 RESULT_COLUMNS = (
-    "location_id", "short_name", "class", "stratum", "sample_ids", "as_reported", "result_low",
-    "result_half", "result_high", "unit", "detected", "used", "why_not", "latitude", "longitude",
-    "actual_latitude", "actual_longitude", "moved_m", "stands_in_for",
+    "location_id", "short_name", "class", "stratum", "analyte", "sample_ids", "as_reported",
+    "result_low", "result_half", "result_high", "unit", "detected", "used", "why_not", "latitude",
+    "longitude", "actual_latitude", "actual_longitude", "moved_m", "stands_in_for",
 )  # fmt: skip
 
 
@@ -60,6 +61,29 @@ def estimate_json(estimate: Estimate) -> dict[str, Any]:
     return plain
 
 
+def answers_json(answers: Answers) -> dict[str, Any]:
+    """Turn the answers for every analyte into plain JSON values.
+
+    Parameters
+    ----------
+    answers : Answers
+
+    Returns
+    -------
+    dict
+        As ``estimate_json`` for the main analyte; ``others`` lists the same for each other one,
+        ``without_mean`` names those that get none, with the reason.
+    """
+    return {
+        **estimate_json(answers.main),
+        "others": [estimate_json(other) for other in answers.others],
+        "other_sentences": list(answers.sentences),
+        "without_mean": [
+            {"analyte": entry.analyte, "sentence": entry.sentence} for entry in answers.without
+        ],
+    }
+
+
 def _plain(thing: Any) -> Any:
     if isinstance(thing, dict):
         return {key: _plain(value) for key, value in thing.items()}
@@ -70,30 +94,40 @@ def _plain(thing: Any) -> Any:
     return thing
 
 
-def estimate_csv(estimate: Estimate, plan: Plan) -> str:
-    """Write one row for every location with a result or lost.
+def answers_csv(answers: Answers, plan: Plan) -> str:
+    """Write one row for every analyte and every location with a result or lost.
 
     Parameters
     ----------
-    estimate : Estimate
+    answers : Answers
     plan : Plan
         Gives the order and the short names.
 
     Returns
     -------
     str
-        CSV with CRLF line ends, in the plan's order.
+        CSV with CRLF line ends: the main analyte first, locations in the plan's order. Results
+        of an analyte that gets no mean are there too.
     """
-    results = {result.location_id: result for result in estimate.returns.results}
-    lost = {entry.location_id: entry for entry in estimate.returns.lost}
+    refused = [entry.returns for entry in answers.without if entry.returns is not None]
     text = io.StringIO(newline="")
     writer = csv.writer(text)
     writer.writerow(RESULT_COLUMNS)
+    for returns in (answers.main.returns, *(o.returns for o in answers.others), *refused):
+        writer.writerows(_rows(returns, plan))
+    return text.getvalue()
+
+
+def _rows(returns: Returns, plan: Plan) -> Iterator[list[str]]:
+    """Yield the rows of one analyte."""
+    results = {result.location_id: result for result in returns.results}
+    lost = {entry.location_id: entry for entry in returns.lost}
+    unit = plan.campaign.analyte_called(returns.analyte).unit
     for place in plan.locations.places:
         head = [place.location_id, place.short_name, place.location_class, place.stratum]
         spot = [f"{place.latitude:.7f}", f"{place.longitude:.7f}"]
         if place.location_id in results:
-            cells = _result_cells(results[place.location_id], estimate.unit, spot)
+            cells = _result_cells(results[place.location_id], unit, spot)
         elif place.location_id in lost:
             entry = lost[place.location_id]
             why = f"lost: {entry.reason}"
@@ -101,8 +135,8 @@ def estimate_csv(estimate: Estimate, plan: Plan) -> str:
             cells = ["", "", "", "", "", "", "", "no", why, *spot, "", "", "", ""]
         else:
             continue
-        writer.writerow([as_text(cell) for cell in head] + [_inert(cell) for cell in cells])
-    return text.getvalue()
+        named = [as_text(cell) for cell in (*head, returns.analyte)]
+        yield named + [_inert(cell) for cell in cells]
 
 
 def _result_cells(result: LocationResult, unit: str, spot: list[str]) -> list[str]:

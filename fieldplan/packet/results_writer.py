@@ -5,7 +5,7 @@ import shutil
 from collections.abc import Callable, Sequence
 from pathlib import Path
 
-from fieldplan.estimate.model import Estimate
+from fieldplan.estimate.model import Answers
 from fieldplan.packet.folder import build_folder, next_number
 from fieldplan.plan.model import Plan
 
@@ -18,19 +18,21 @@ def _ignore(_stage: str) -> None:
 
 def write_results(
     plan: Plan,
-    estimate: Estimate,
+    answers: Answers,
     parent: Path,
     *,
     sources: Sequence[Path] = (),
     progress: Progress = _ignore,
 ) -> Path:
-    """Write an estimate as a new folder, e.g. ``HL-r01-results-01``.
+    """Write what came of one laboratory file as a new folder, e.g. ``HL-r01-results-01``.
 
     Parameters
     ----------
     plan : Plan
         Read from the packet.
-    estimate : Estimate
+    answers : Answers
+        Sheet and map of the main analyte are ``results_sheet`` and ``results_map``; those of
+        another have its id behind: ``results_sheet-zinc``. Table and JSON hold all analytes.
     parent : Path
         Where the folder is made; earlier results there are kept.
     sources : sequence of Path
@@ -50,34 +52,51 @@ def write_results(
     """
     stem = f"{plan.revision_name}-results-"
     target = parent / f"{stem}{next_number(parent, stem):02d}"
-    return build_folder(target, lambda folder: _fill(plan, estimate, folder, sources, progress))
+    return build_folder(
+        target, lambda folder: _fill(plan, answers, folder, sources=sources, progress=progress)
+    )
 
 
 def _fill(
-    plan: Plan, estimate: Estimate, folder: Path, sources: Sequence[Path], progress: Progress
+    plan: Plan,
+    answers: Answers,
+    folder: Path,
+    *,
+    sources: Sequence[Path],
+    progress: Progress,
 ) -> None:
-    from fieldplan.estimate.export import estimate_csv, estimate_json
+    from fieldplan.estimate.export import answers_csv, answers_json
+
+    kept = folder / "inputs"
+    kept.mkdir()
+    _keep(sources, kept)
+    content = json.dumps(answers_json(answers), indent=2, ensure_ascii=False)
+    (folder / "results.json").write_text(content + "\n", encoding="utf-8")
+    (folder / "results.csv").write_text(
+        answers_csv(answers, plan), encoding="utf-8-sig", newline=""
+    )
+    _set_pages(plan, answers, folder, mark="", progress=progress)
+    for other in answers.others:
+        _set_pages(plan, Answers(other), folder, mark=f"-{other.analyte}", progress=progress)
+
+
+def _set_pages(
+    plan: Plan, answers: Answers, folder: Path, *, mark: str, progress: Progress
+) -> None:
+    """Draw the map and set the sheet of one analyte."""
     from fieldplan.packet.maps.results import results_map
     from fieldplan.packet.sheets.html import set_html
     from fieldplan.packet.sheets.pdf import set_pdf
     from fieldplan.packet.sheets.results_sheet import results_sheet
 
-    kept = folder / "inputs"
-    kept.mkdir()
-    _keep(sources, kept)
-    content = json.dumps(estimate_json(estimate), indent=2, ensure_ascii=False)
-    (folder / "results.json").write_text(content + "\n", encoding="utf-8")
-    (folder / "results.csv").write_text(
-        estimate_csv(estimate, plan), encoding="utf-8-sig", newline=""
-    )
-    progress("results map")
-    drawing = results_map(plan, estimate)
-    (folder / "results_map.pdf").write_bytes(drawing.pdf)
-    (folder / "results_map.png").write_bytes(drawing.png)
-    progress("results sheet")
-    sheet = results_sheet(plan, estimate)
-    (folder / "results_sheet.html").write_text(set_html(sheet), encoding="utf-8")
-    (folder / "results_sheet.pdf").write_bytes(set_pdf(sheet, paper=plan.campaign.paper.size))
+    progress(f"results map{mark.replace('-', ' of ', 1)}")
+    drawing = results_map(plan, answers.main)
+    (folder / f"results_map{mark}.pdf").write_bytes(drawing.pdf)
+    (folder / f"results_map{mark}.png").write_bytes(drawing.png)
+    progress(f"results sheet{mark.replace('-', ' of ', 1)}")
+    sheet, paper = results_sheet(plan, answers), plan.campaign.paper.size
+    (folder / f"results_sheet{mark}.html").write_text(set_html(sheet), encoding="utf-8")
+    (folder / f"results_sheet{mark}.pdf").write_bytes(set_pdf(sheet, paper=paper))
 
 
 def _keep(sources: Sequence[Path], folder: Path) -> None:

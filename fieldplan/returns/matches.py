@@ -13,14 +13,18 @@ from fieldplan.lab.tables import read_tables
 from fieldplan.plan.model import Plan
 from fieldplan.returns.form import as_text
 from fieldplan.returns.ids import plain_id
-from fieldplan.returns.matching import LABORATORY_ROLES, ConfirmedMatch, match_rows
+from fieldplan.returns.matching import ConfirmedMatch, match_rows, rows_of
 from fieldplan.returns.model import NearMatch
 
 MATCH_COLUMNS = ("row", "as_written", "proposed", "why", "confirm")
 
 
 def propose_matches(
-    plan: Plan, lab_table: LabTable, *, confirmed: Sequence[ConfirmedMatch] = ()
+    plan: Plan,
+    lab_table: LabTable,
+    *,
+    confirmed: Sequence[ConfirmedMatch] = (),
+    analyte: str | None = None,
 ) -> tuple[NearMatch, ...]:
     """List laboratory ids that no planned sample has, with the planned ids they resemble.
 
@@ -30,17 +34,19 @@ def propose_matches(
     lab_table : LabTable
     confirmed : sequence of ConfirmedMatch
         Answers so far.
+    analyte : str, optional
+        Whose rows are looked at; the deciding one's unless given.
 
     Returns
     -------
     tuple of NearMatch
         Empty when nothing is left to decide.
     """
-    analyte = plan.campaign.deciding_analyte.id
-    rows = [
-        row for row in lab_table.rows if row.analyte == analyte and row.role not in LABORATORY_ROLES
-    ]
-    return tuple(match_rows(plan, rows, analyte=analyte, confirmed=confirmed).near)
+    asked = analyte or plan.campaign.deciding_analyte.id
+    rows = rows_of(lab_table, asked)
+    others = [row for row in lab_table.rows if row.analyte != asked]
+    found = match_rows(plan, rows, analyte=asked, confirmed=confirmed, elsewhere=others)
+    return tuple(found.near)
 
 
 def matches_csv(near: Sequence[NearMatch], *, confirmed: Sequence[ConfirmedMatch] = ()) -> str:

@@ -1,10 +1,10 @@
 """Which laboratory row belongs to which planned sample; likeness is proposed, never applied."""
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 
 from fieldplan.base.errors import LabError
-from fieldplan.lab.model import LabRow
+from fieldplan.lab.model import LabRow, LabTable
 from fieldplan.plan.model import Plan
 from fieldplan.returns.ids import likeness, nearest, plain_id
 from fieldplan.returns.model import NearMatch
@@ -12,6 +12,20 @@ from fieldplan.samples.model import Sample
 
 LABORATORY_ROLES = ("laboratory duplicate", "laboratory control", "method blank", "matrix spike")
 """Rows that the laboratory made for itself; they belong to no planned sample."""
+
+
+def rows_of(lab_table: LabTable, analyte: str) -> list[LabRow]:
+    """Give the rows of one analyte, without those that the laboratory made for itself.
+
+    Parameters
+    ----------
+    lab_table : LabTable
+    analyte : str
+        Its id.
+    """
+    return [
+        row for row in lab_table.rows if row.analyte == analyte and row.role not in LABORATORY_ROLES
+    ]
 
 
 @dataclass(frozen=True)
@@ -63,6 +77,7 @@ def match_rows(
     *,
     analyte: str,
     confirmed: Sequence[ConfirmedMatch] = (),
+    elsewhere: Sequence[LabRow] = (),
 ) -> Matching:
     """Set laboratory rows against planned samples.
 
@@ -74,6 +89,9 @@ def match_rows(
     analyte : str
         Only samples that are to be analysed for it count.
     confirmed : sequence of ConfirmedMatch
+    elsewhere : sequence of LabRow
+        Rows of the same file about other analytes. What was answered for one of them holds for
+        every row that names its jar in the same way.
 
     Returns
     -------
@@ -89,7 +107,26 @@ def match_rows(
     In this order: the exact sample id; what the user confirmed; the exact location id where it
     leaves one sample. Whatever is left is compared by likeness and proposed.
     """
-    return _Matcher(plan, analyte).match(rows, confirmed)
+    return _Matcher(plan, analyte).match(rows, confirmed, elsewhere)
+
+
+def _jar(row: LabRow) -> tuple[str, str, str]:
+    """Give all that a row says of its jar: two rows that say the same speak of one."""
+    return plain_id(row.sample_id), plain_id(row.location_id), row.role
+
+
+def _check_rows(confirmed: Sequence[ConfirmedMatch], by_number: Mapping[int, LabRow]) -> None:
+    """Refuse answers to rows that do not hold the id answered for."""
+    problems = []
+    for match in confirmed:
+        row = by_number.get(match.row)
+        if row is None or plain_id(id_as_written(row)) != plain_id(match.as_written):
+            problems.append(
+                f"matches.csv: row {match.row} '{match.as_written}' is not in this laboratory "
+                "file. Delete matches.csv, run the command again and confirm anew."
+            )
+    if problems:
+        raise LabError(*problems)
 
 
 class _Matcher:
@@ -104,8 +141,16 @@ class _Matcher:
         self.rule = plan.campaign.rules.duplicates
         self.matching = Matching()
 
-    def match(self, rows: Sequence[LabRow], confirmed: Sequence[ConfirmedMatch]) -> Matching:
-        decided = self._decided(rows, confirmed)
+    def match(
+        self,
+        rows: Sequence[LabRow],
+        confirmed: Sequence[ConfirmedMatch],
+        elsewhere: Sequence[LabRow],
+    ) -> Matching:
+        others = {row.row: row for row in elsewhere}
+        own = [match for match in confirmed if match.row not in others]
+        _check_rows([match for match in confirmed if match.row in others], others)
+        decided = self._carried(rows, confirmed, others) | self._decided(rows, own)
         waiting = []
         for row in rows:
             sample_id = plain_id(row.sample_id)
@@ -128,17 +173,12 @@ class _Matcher:
     ) -> dict[int, str]:
         """Map a row's number to its sample; to an empty text when the user said no."""
         by_number = {row.row: row for row in rows}
+        _check_rows(confirmed, by_number)
         decided: dict[int, str] = {}
         problems = []
         for match in confirmed:
-            row = by_number.get(match.row)
             head = f"matches.csv: row {match.row} '{match.as_written}'"
-            if row is None or plain_id(id_as_written(row)) != plain_id(match.as_written):
-                problems.append(
-                    f"{head} is not in this laboratory file. Delete matches.csv, run the command "
-                    "again and confirm anew."
-                )
-            elif match.confirmed:
+            if match.confirmed:
                 sample_id = self._sample_named(match.proposed)
                 if not sample_id:
                     problems.append(
@@ -152,6 +192,26 @@ class _Matcher:
                 decided.setdefault(match.row, "")
         if problems:
             raise LabError(*problems)
+        return decided
+
+    def _carried(
+        self,
+        rows: Sequence[LabRow],
+        confirmed: Sequence[ConfirmedMatch],
+        others: Mapping[int, LabRow],
+    ) -> dict[int, str]:
+        """Map rows to the sample that was confirmed for the same jar under another analyte."""
+        said: dict[tuple[str, str, str], set[str]] = {}
+        for match in confirmed:
+            if match.row in others and match.confirmed is not None:
+                named = self._sample_named(match.proposed) if match.confirmed else ""
+                said.setdefault(_jar(others[match.row]), set()).add(named)
+        decided = {}
+        for row in rows:
+            names = said.get(_jar(row), set())
+            chosen = names - {""}
+            if len(chosen) == 1 or names == {""}:
+                decided[row.row] = chosen.pop() if chosen else ""
         return decided
 
     def _sample_named(self, written: str) -> str:

@@ -14,11 +14,11 @@ from fieldplan.returns.field import FieldReturn
 from fieldplan.returns.field_facts import FieldFacts, field_facts
 from fieldplan.returns.location_values import LocationValue, location_values, one_row_a_sample
 from fieldplan.returns.matching import (
-    LABORATORY_ROLES,
     ConfirmedMatch,
     Matching,
     id_as_written,
     match_rows,
+    rows_of,
 )
 from fieldplan.returns.model import FieldRow, LocationResult, LostLocation, Returns
 from fieldplan.returns.substitutes import Substitution, substitute
@@ -34,6 +34,7 @@ def reconcile(
     field_rows: FieldReturn | Sequence[FieldRow] = (),
     *,
     confirmed: Sequence[ConfirmedMatch] = (),
+    analyte: str | None = None,
 ) -> Returns:
     """Meet laboratory results and the crew's return with the plan.
 
@@ -45,6 +46,8 @@ def reconcile(
         Empty when the crew returned nothing.
     confirmed : sequence of ConfirmedMatch
         From ``read_matches``.
+    analyte : str, optional
+        Whose results are met; the deciding one's unless given.
 
     Returns
     -------
@@ -54,18 +57,22 @@ def reconcile(
     Raises
     ------
     LabError
-        No row belongs to the plan; a sample has two different results; the return says that a
-        location was not taken and the laboratory reports it; a confirmed match does not fit.
+        No row of the analyte, or none that belongs to the plan; a sample has two different
+        results; the return says that a location was not taken and the laboratory reports it; a
+        confirmed match does not fit.
 
     Notes
     -----
     A location that moved keeps the stratum and weight with which it was drawn, since its chance
     of being drawn was that of its planned place.
     """
-    name, analyte = lab_table.file_name, plan.campaign.deciding_analyte.id
+    name, analyte = lab_table.file_name, analyte or plan.campaign.deciding_analyte.id
     rows = [row for row in lab_table.rows if row.analyte == analyte]
-    own = [row for row in rows if row.role not in LABORATORY_ROLES]
-    matching = match_rows(plan, own, analyte=analyte, confirmed=confirmed)
+    others = [row for row in lab_table.rows if row.analyte != analyte]
+    own = rows_of(lab_table, analyte)
+    if not own:
+        raise LabError(_none_of(plan, lab_table, analyte))
+    matching = match_rows(plan, own, analyte=analyte, confirmed=confirmed, elsewhere=others)
     if not matching.by_sample and not matching.near:
         raise LabError(_nothing_matched(plan, name, own))
     given = _as_return(field_rows)
@@ -100,6 +107,18 @@ def reconcile(
 
 def _as_return(rows: FieldReturn | Sequence[FieldRow]) -> FieldReturn:
     return rows if isinstance(rows, FieldReturn) else FieldReturn("field return", "", tuple(rows))
+
+
+def _none_of(plan: Plan, lab_table: LabTable, analyte: str) -> str:
+    """Say that an analyte has no result, and which of the campaign's have one."""
+    present = [a.id for a in plan.campaign.analyte if rows_of(lab_table, a.id)]
+    line = f"{lab_table.file_name} has no result of {analyte} that counts"
+    if not present:
+        return f"{line}, only controls of the laboratory. Ask for the samples' results."
+    return (
+        f"{line}; it has {listed(present)}. Ask the laboratory for it, or estimate another "
+        f"analyte with --analyte {present[0]}."
+    )
 
 
 def _nothing_matched(plan: Plan, file_name: str, rows: Sequence[LabRow]) -> str:

@@ -12,8 +12,9 @@ from fieldplan.base.document import (
     Verbatim,
     Working,
 )
-from fieldplan.estimate.model import Estimate
-from fieldplan.estimate.sentences import interval_in_words
+from fieldplan.estimate.model import Answers, Estimate
+from fieldplan.estimate.sentences import analyte_name, interval_in_words
+from fieldplan.packet.sheets.amounts import listed
 from fieldplan.packet.sheets.plan_sheet import subtitle
 from fieldplan.packet.sheets.results_tables import (
     change_blocks,
@@ -25,22 +26,26 @@ from fieldplan.packet.sheets.rules import rules_blocks
 from fieldplan.plan.model import Plan
 
 
-def results_sheet(plan: Plan, estimate: Estimate) -> Document:
-    """Compose the results sheet.
+def results_sheet(plan: Plan, answers: Answers) -> Document:
+    """Compose the results sheet of the main analyte.
 
     Parameters
     ----------
     plan : Plan
         Read from the packet.
-    estimate : Estimate
+    answers : Answers
+        Other analytes are named with their sentence; their sheets are their own.
 
     Returns
     -------
     Document
         "Changes made after results" is always there, even when there were none.
     """
+    estimate = answers.main
+    besides = [("Other analytes of the campaign", other_blocks(answers))]
     sections: tuple[tuple[str, list[Block]], ...] = (
         ("Planned against achieved", [Bullets(estimate.why_different)]),
+        *(besides if answers.sentences else []),
         ("By stratum", [stratum_table(plan, estimate)]),
         ("Location by location", location_blocks(plan, estimate)),
         ("What happened in the field", field_blocks(plan, estimate.returns)),
@@ -55,13 +60,29 @@ def results_sheet(plan: Plan, estimate: Estimate) -> Document:
         blocks += [Heading(f"{number}. {title}"), *content]
     blocks += [Heading(f"{len(sections) + 1}. Sign-off"), sign_off(plan)]
     return Document(
-        title=f"Results: {plan.campaign.plan.title}",
+        title=f"{results_of(plan, estimate)}: {plan.campaign.plan.title}",
         subtitle=subtitle(plan, "Results sheet"),
         plan_id=plan.campaign.plan.id,
         revision_name=plan.revision_name,
         status=plan.status,
         blocks=tuple(blocks),
     )
+
+
+def results_of(plan: Plan, estimate: Estimate) -> str:
+    """Open the title; an analyte that the plan's own title may not name is named."""
+    if estimate.analyte == plan.campaign.deciding_analyte.id:
+        return "Results"
+    return f"Results for {analyte_name(plan, estimate.analyte)}"
+
+
+def other_blocks(answers: Answers) -> list[Block]:
+    """Say the answer for each other analyte, and where its sheet is."""
+    blocks: list[Block] = [Bullets(answers.sentences)]
+    if answers.others:
+        sheets = [f"results_sheet-{other.analyte}" for other in answers.others]
+        blocks.append(Paragraph(f"In full beside this sheet: {listed(sheets)}.", tone="note"))
+    return blocks
 
 
 def answer_blocks(plan: Plan, estimate: Estimate) -> list[Block]:

@@ -11,10 +11,10 @@ import pytest
 
 from fieldplan.estimate import estimate
 from fieldplan.estimate.coverage import equivalent_sample
-from fieldplan.estimate.export import RESULT_COLUMNS, estimate_csv, estimate_json
+from fieldplan.estimate.export import RESULT_COLUMNS, answers_csv, estimate_json
 from fieldplan.estimate.level import envelope, side_of
 from fieldplan.estimate.means import means_by
-from fieldplan.estimate.model import Interval
+from fieldplan.estimate.model import Answers, Interval
 from fieldplan.estimate.population import share_not_reached
 from fieldplan.estimate.text import results_paragraph
 from fieldplan.plan.model import Plan
@@ -212,7 +212,7 @@ def test_the_table_has_a_row_for_every_place_with_news() -> None:
     evil = replace(returns.results[0], as_reported=("=2+2",), why_not="+SUM(A1)")
     returns = replace(returns, results=(evil, *returns.results[1:]))
     estimate_ = replace(make_estimate(), returns=returns)
-    rows = list(csv.DictReader(io.StringIO(estimate_csv(estimate_, make_plan()))))
+    rows = list(csv.DictReader(io.StringIO(answers_csv(Answers(estimate_), make_plan()))))
     assert list(rows[0]) == list(RESULT_COLUMNS)
     assert len(rows) == 11
     assert rows[0]["as_reported"] == "'=2+2"

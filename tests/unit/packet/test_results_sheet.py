@@ -5,7 +5,7 @@ from dataclasses import replace
 from functools import cache
 
 from fieldplan.base.document import Document, Paragraph, Table
-from fieldplan.estimate.model import Change, Interval
+from fieldplan.estimate.model import Answers, Change, Interval
 from fieldplan.packet.sheets.results_sheet import after_figure, answer_words, results_sheet
 from fieldplan.packet.sheets.results_tables import change_blocks, stratum_table
 from fieldplan.packet.sheets.returned import field_blocks, relative_difference
@@ -16,7 +16,7 @@ from tests.unit.packet.sheet_text import headings_of, text_of, words_of
 @cache
 def standard() -> Document:
     """The sheet of the hand-made estimate, drawn once."""
-    return results_sheet(make_plan(), make_estimate())
+    return results_sheet(make_plan(), Answers(make_estimate()))
 
 
 def sheet_text() -> str:
