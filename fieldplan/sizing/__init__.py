@@ -48,5 +48,7 @@ def size(campaign: "Campaign", spread: "Spread", frame: "Frame") -> Size:
     """
     from fieldplan.sizing.others import other_precisions
 
-    found = answer(question_of(campaign, spread, frame))
-    return replace(found, others=other_precisions(campaign, spread, frame, size=found))
+    asked = question_of(campaign, spread, frame)
+    found = answer(asked)
+    others = other_precisions(campaign, spread, frame, asked=asked, size=found)
+    return replace(found, others=others)

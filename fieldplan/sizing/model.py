@@ -92,8 +92,8 @@ class OtherPrecision:
         Chance that the chosen n keeps the target; None where none can be given.
     assurance : float or None
         Asked for by its own objective.
-    own_n : int or None
-        Results that its own objective would ask for; None without a target within reach.
+    enough_n : int or None
+        Where the chosen n falls short: the total, shared out as the plan does, that would not.
     sentence : str
     """
 
@@ -108,7 +108,7 @@ class OtherPrecision:
     meets: bool | None = None
     chance: float | None = None
     assurance: float | None = None
-    own_n: int | None = None
+    enough_n: int | None = None
     sentence: str = ""
 
     @property

@@ -65,17 +65,22 @@ def _precision(found: OtherPrecision, size: Size) -> str:
 
 def _against_target(found: OtherPrecision) -> str:
     """Say whether that keeps the target, with what chance, and what n would."""
-    verb = "keeps" if found.meets else "misses"
-    words = f"that {verb} its own target ({found.target})"
     if found.chance is None:
-        words += ", and no chance can be given: nobody said how many results stand behind its sigma"
+        verb = "keeps" if found.meets else "misses"
+        words = (
+            f"that {verb} its own target ({found.target}), and no chance can be given: nobody said "
+            "how many results stand behind its sigma"
+        )
     else:
-        joined = "with a chance of" if found.meets else "and the chance to keep it is"
-        words += f", {joined} {chance_words(found)}"
+        verb, joined = {
+            (True, False): ("keeps", "with a chance of"),
+            (True, True): ("is within", "but with a chance of only"),
+        }.get((bool(found.meets), found.falls_short), ("misses", "and the chance to keep it is"))
+        words = f"that {verb} its own target ({found.target}), {joined} {chance_words(found)}"
         if found.assurance is not None:
             words += f" ({typed_percent(found.assurance)} was asked for)"
-    if found.falls_short and found.own_n is not None:
-        words += f"; shared out for itself alone it would take {counted(found.own_n, 'result')}"
+    if found.enough_n is not None:
+        words += f"; for that it would take {counted(found.enough_n, 'result')}, shared out as here"
     return words
 
 

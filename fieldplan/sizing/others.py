@@ -1,19 +1,18 @@
 """What the n of the deciding objective buys for the other objectives and analytes."""
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
-from fieldplan.base.errors import DesignError
 from fieldplan.campaign.model import Objective
 from fieldplan.sizing.campaign_question import ask, expected_mean, parts_of, target_of
-from fieldplan.sizing.counting import assured_counts, plain_counts
 from fieldplan.sizing.model import OtherPrecision, Size
 from fieldplan.sizing.other_words import other_sentence
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
 from fieldplan.sizing.words import target_words
-from fieldplan.stats.precision import meets
+from fieldplan.stats.allocation import share_total
+from fieldplan.stats.precision import meets, smallest
 
 if TYPE_CHECKING:
     from fieldplan.campaign.model import Analyte, Campaign
@@ -22,7 +21,12 @@ if TYPE_CHECKING:
 
 
 def other_precisions(
-    campaign: "Campaign", spread: "Spread", frame: "Frame", *, size: Size
+    campaign: "Campaign",
+    spread: "Spread",
+    frame: "Frame",
+    *,
+    asked: Question,
+    size: Size,
 ) -> tuple[OtherPrecision, ...]:
     """Say what the chosen n buys for every objective and analyte that does not decide it.
 
@@ -32,8 +36,10 @@ def other_precisions(
     spread : Spread
         ``others`` holds the sigmas of analytes that do not decide n.
     frame : Frame
+    asked : Question
+        The deciding objective as a question.
     size : Size
-        The answer for the deciding objective.
+        The answer to it.
 
     Returns
     -------
@@ -49,6 +55,7 @@ def other_precisions(
         _answered(
             campaign,
             size,
+            asked=asked,
             objective=objective,
             known=_Known(campaign, spread, frame, analyte=analyte),
         )
@@ -97,13 +104,14 @@ def _answered(
     campaign: "Campaign",
     size: Size,
     *,
+    asked: Question,
     objective: "Objective | None",
     known: _Known,
 ) -> OtherPrecision:
     why_not = _why_no_target(objective, known.mean)
-    asked = _UNREAD if objective is None or why_not else objective
-    asked = asked.model_copy(update={"analyte": known.analyte.id})
-    question = ask(campaign, asked, parts=known.parts, mean=known.mean)
+    own = _UNREAD if objective is None or why_not else objective
+    own = own.model_copy(update={"analyte": known.analyte.id})
+    question = ask(campaign, own, parts=known.parts, mean=known.mean)
     found = OtherPrecision(known.analyte.id, known.analyte.unit)
     if not why_not:
         found = replace(
@@ -113,7 +121,7 @@ def _answered(
             target_half_width=question.target_half_width,
             assurance=question.assurance,
         )
-    found = _bought(question, found, size=size)
+    found = _bought(question, found, size=size, asked=asked)
     words = other_sentence(
         found, size, name=known.analyte.name or known.analyte.id, given=known.given, why_not=why_not
     )
@@ -132,7 +140,9 @@ def _why_no_target(objective: "Objective | None", mean: float | None) -> str:
     return ""
 
 
-def _bought(question: Question, found: OtherPrecision, *, size: Size) -> OtherPrecision:
+def _bought(
+    question: Question, found: OtherPrecision, *, size: Size, asked: Question
+) -> OtherPrecision:
     """Fill in what the counts of ``size`` buy, and whether that keeps the target."""
     if question.census:
         kept = True if found.target else None
@@ -147,18 +157,32 @@ def _bought(question: Question, found: OtherPrecision, *, size: Size) -> OtherPr
     found = replace(found, standard_error=error, half_width=width, assumed=assumed)
     if not found.target:
         return found
-    wanted = found.target_half_width
-    return replace(
-        found,
-        meets=meets(error, question.value) if wanted is None else meets(width, wanted),
-        chance=precision.chance(counts),
-        own_n=_own_n(question),
-    )
+    kept, chance = _keeps(found, precision, counts), precision.chance(counts)
+    found = replace(found, meets=kept, chance=chance)
+    return replace(found, enough_n=_enough(found, precision, asked)) if found.falls_short else found
 
 
-def _own_n(question: Question) -> int | None:
-    """Count what the objective would ask for by itself; None where that is out of reach."""
-    try:
-        return sum(assured_counts(question, question.assurance) or plain_counts(question))
-    except DesignError:
-        return None
+def _enough(found: OtherPrecision, precision: Precision, asked: Question) -> int | None:
+    """Count the results, shared out as for the deciding objective, that keep the target.
+
+    None where no number does.
+    """
+    strata = asked.strata
+
+    def fits(total: int) -> bool:
+        counts = share_total(strata, total, allocation=asked.allocation)
+        judged = replace(found, meets=_keeps(found, precision, counts))
+        if found.chance is not None:
+            judged = replace(judged, chance=precision.chance(counts))
+        return not judged.falls_short
+
+    low = sum(strata.floors)
+    total = smallest(fits, low, strata.most, back=2 * len(asked.parts) + 1)
+    return total if fits(total) else None
+
+
+def _keeps(found: OtherPrecision, precision: Precision, counts: Sequence[int]) -> bool:
+    """Whether these counts keep the target with sigma at face value."""
+    if found.target_half_width is not None:
+        return meets(precision.half_width(counts), found.target_half_width)
+    return meets(precision.standard_error(counts), found.target_standard_error or 0.0)
