@@ -97,7 +97,27 @@ def _asked(campaign: Campaign) -> list[str]:
         f"Asked: the mean of {what} with {_target(objective, campaign, analyte.unit)}; "
         f"locations {_LAYOUTS[layout]}, seed {campaign.draw.seed}.",
         sure,
+        *_also_asked(campaign),
     ]
+
+
+def _also_asked(campaign: Campaign) -> list[str]:
+    """Say what else is asked or measured, and that it does not decide n."""
+    deciding = campaign.deciding_objective
+    others = [o for o in campaign.objective if o is not deciding]
+    asked = {objective.analyte for objective in campaign.objective}
+    lines = []
+    for objective in others:
+        analyte = campaign.analyte_called(objective.analyte or campaign.deciding_analyte.id)
+        target = _target(objective, campaign, analyte.unit)
+        lines.append(
+            f"Also asked: the mean of {analyte.name or analyte.id} with {target}; it does not "
+            "decide n."
+        )
+    for analyte in campaign.analyte:
+        if analyte.id not in asked and analyte.id != campaign.deciding_analyte.id:
+            lines.append(f"Measured too, without a target: {analyte.name or analyte.id}.")
+    return lines
 
 
 _LAYOUTS = {

@@ -4,7 +4,13 @@ from math import sqrt
 
 from fieldplan.base.document import Block, Bullets, Heading, Paragraph
 from fieldplan.packet.sheets.amounts import counted, listed, percent, rounded
-from fieldplan.packet.sheets.plan_words import ALLOCATIONS, LAYOUTS, mean_of, several_strata
+from fieldplan.packet.sheets.plan_words import (
+    ALLOCATIONS,
+    LAYOUTS,
+    analyte_name,
+    mean_of,
+    several_strata,
+)
 from fieldplan.packet.sheets.rules import NON_DETECTS, rules_fingerprint
 from fieldplan.plan.model import Plan
 
@@ -31,6 +37,10 @@ def can_tell(plan: Plan) -> tuple[str, ...]:
             "What follows from that is for "
             f"{plan.campaign.plan.decides or 'whoever decides'} to say."
         )
+    names = list(dict.fromkeys(other.analyte for other in plan.size.others))
+    if besides := [n for n in names if n != plan.campaign.deciding_analyte.id]:
+        words = listed([analyte_name(plan.campaign.analyte_called(name)) for name in besides])
+        lines.append(f"The mean of {words} from the same jars, as closely as section 5 says.")
     if several_strata(plan):
         lines.append("A mean for each stratum, with a wider interval than the site's.")
     return tuple(lines)

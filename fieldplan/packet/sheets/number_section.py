@@ -100,7 +100,8 @@ def other_blocks(plan: Plan) -> list[Block]:
         caption=f"What {counted(plan.size.needed, 'result')} buy beside the target that decides n",
     )
     heading = Heading("Other analytes and objectives", level=2)
-    return [heading, table, Bullets(tuple(other.sentence for other in others))]
+    more = [o.sentence for o in others if o.falls_short or o.standard_error is None]
+    return [heading, table, *([Bullets(tuple(more))] if more else [])]
 
 
 def other_row(plan: Plan, other: OtherPrecision) -> tuple[str, ...]:

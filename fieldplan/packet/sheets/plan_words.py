@@ -101,11 +101,14 @@ def level_words(campaign: Campaign) -> str:
 def assumed_lines(plan: Plan) -> tuple[str, ...]:
     """List all that was assumed and not measured, one stamped line each."""
     lines = []
-    for entry in plan.spread.strata:
+    for entry in (*plan.spread.strata, *plan.spread.others):
         if entry.assumed:
+            analyte = plan.campaign.analyte_called(entry.analyte)
+            decides = analyte == plan.campaign.deciding_analyte
+            whose = "" if decides else f" for {analyte_name(analyte)}"
             lines.append(
-                f"ASSUMED: the standard deviation of {number(entry.sigma)} {plan.size.unit} in "
-                f"{entry.stratum} is a guess, not a measurement."
+                f"ASSUMED{whose}: the standard deviation of {number(entry.sigma)} {analyte.unit} "
+                f"in {entry.stratum} is a guess, not a measurement."
             )
     if plan.frame.boundary_assumed:
         lines.append("ASSUMED: the boundary is a sketch, not a survey.")

@@ -3,7 +3,7 @@
 from fieldplan.base.document import Block, Bullets, Facts, Paragraph, Table
 from fieldplan.campaign.model import Analyte
 from fieldplan.packet.sheets.amounts import BLANK, area, days, percent
-from fieldplan.packet.sheets.plan_words import mean_of, several_strata
+from fieldplan.packet.sheets.plan_words import analyte_name, mean_of, several_strata
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
 
@@ -13,6 +13,7 @@ def question_blocks(plan: Plan) -> list[Block]:
     table = plan.campaign.plan
     rows = [
         ("Question", f"What is the {mean_of(plan.campaign)}?"),
+        *(("Also asked", words) for words in also_asked(plan)),
         ("Decision that waits for it", table.decision or BLANK),
         ("Who decides", table.decides or BLANK),
         ("Field work", days(table.fieldwork_from, table.fieldwork_to)),
@@ -22,6 +23,12 @@ def question_blocks(plan: Plan) -> list[Block]:
     if table.background:
         blocks.append(Paragraph(table.background))
     return [*blocks, analyte_table(plan)]
+
+
+def also_asked(plan: Plan) -> list[str]:
+    """Say which other objectives the campaign has; they do not decide the number."""
+    named = [(plan.campaign.analyte_called(o.analyte), o.target) for o in plan.size.others]
+    return [f"mean {analyte_name(analyte)}, {target}" for analyte, target in named if target]
 
 
 def analyte_table(plan: Plan) -> Table:
