@@ -33,6 +33,28 @@ HEADER = (
 
 
 @dataclass(frozen=True)
+class Measured:
+    """One analyte as the laboratory finds and writes it.
+
+    Parameters
+    ----------
+    analyte : str
+        Its id in the campaign file.
+    name, unit : str
+        As the laboratory writes them.
+    values : mapping of stratum to (median, spread of the logarithm)
+    traces : tuple of (stratum, place in its list)
+        Where the laboratory finds nothing.
+    """
+
+    analyte: str
+    name: str
+    unit: str
+    values: dict[str, tuple[float, float]]
+    traces: tuple[tuple[str, int], ...] = ()
+
+
+@dataclass(frozen=True)
 class Story:
     """What happens at one site.
 
@@ -40,18 +62,15 @@ class Story:
     ----------
     seed : int
         Of the invented values.
-    values : mapping of stratum to (median, spread of the logarithm)
+    measured : tuple of Measured
+        The deciding analyte first.
     lost : tuple of (stratum, place in its list, reason, note)
         Replaced by the next alternate of the stratum.
     broken : tuple of (stratum, place in its list)
         Jars that reached the laboratory broken.
     moved : tuple of (stratum, place in its list, metres north, reason, note)
-    traces : tuple of (stratum, place in its list)
-        Where the laboratory finds nothing.
     renamed : tuple of (stratum, place in its list, kind)
         Ids that the laboratory retyped.
-    analyte_name, unit : str
-        As the laboratory writes them.
     lab_file : str
     started : datetime
         Local time of the first sample.
@@ -59,14 +78,11 @@ class Story:
     """
 
     seed: int
-    values: dict[str, tuple[float, float]]
+    measured: tuple[Measured, ...]
     lost: tuple[tuple[str, int, str, str], ...]
     broken: tuple[tuple[str, int], ...]
     moved: tuple[tuple[str, int, float, str, str], ...]
-    traces: tuple[tuple[str, int], ...]
     renamed: tuple[tuple[str, int, str], ...]
-    analyte_name: str
-    unit: str
     lab_file: str
     started: datetime
     initials: tuple[str, ...]
@@ -75,28 +91,36 @@ class Story:
 STORIES = {
     "hobbin-ley": Story(
         seed=71,
-        values={"pasture": (44.0, 0.45), "yard": (125.0, 0.35), "tip": (265.0, 0.32)},
+        measured=(
+            Measured(
+                "lead",
+                "Lead, total",
+                "mg/Kg",
+                {"pasture": (44.0, 0.45), "yard": (125.0, 0.35), "tip": (265.0, 0.32)},
+                (("pasture", 11),),
+            ),
+            Measured(
+                "zinc",
+                "Zinc, total",
+                "mg/Kg",
+                {"pasture": (92.0, 0.35), "yard": (205.0, 0.40), "tip": (390.0, 0.30)},
+            ),
+        ),
         lost=(("tip", 3, "no-recovery", "slag from the turf down, three tries"),),
         broken=(("pasture", 2),),
         moved=(("yard", 2, 2.6, "obstructed", "stack of pallets"),),
-        traces=(("pasture", 11),),
         renamed=(("yard", 1, "case"), ("pasture", 4, "dash")),
-        analyte_name="Lead, total",
-        unit="mg/Kg",
         lab_file="lab_results.csv",
         started=datetime(2026, 10, 12, 8, 40),
         initials=("jr", "KM"),
     ),
     "quern-flat": Story(
         seed=19,
-        values={"site": (3.9, 0.75)},
+        measured=(Measured("arsenic", "Arsenic", "ug/L", {"site": (3.9, 0.75)}, (("site", 9),)),),
         lost=(("site", 4, "dry", "no water above the pump"),),
         broken=(),
         moved=(),
-        traces=(("site", 9),),
         renamed=(("site", 2, "case"),),
-        analyte_name="Arsenic",
-        unit="ug/L",
         lab_file="lab_results.xlsx",
         started=datetime(2026, 4, 13, 9, 15),
         initials=("TO",),
@@ -216,27 +240,45 @@ def retyped(plan: Plan, story: Story) -> dict[str, str]:
 
 
 def lab_rows(plan: Plan, story: Story, taken: set[str]) -> Iterator[list[str]]:
-    """Write the laboratory's rows: samples, its own control rows, and a stray one."""
-    chance = random.Random(story.seed + 1)
+    """Write the laboratory's rows, one analyte after another."""
+    for number, measured in enumerate(story.measured, start=1):
+        chance = random.Random(story.seed + number)
+        yield from rows_of(plan, story, measured, taken, chance)
+
+
+def rows_of(
+    plan: Plan, story: Story, measured: Measured, taken: set[str], chance: random.Random
+) -> Iterator[list[str]]:
+    """Write the rows of one analyte: samples, the laboratory's own controls, and a stray one."""
     names = retyped(plan, story)
-    limit = plan.campaign.deciding_analyte.reporting_limit or 1.0
+    limit = plan.campaign.analyte_called(measured.analyte).reporting_limit or 1.0
     values: dict[str, float] = {}
     serial = 4100
-    truth = {s.sample_id: invented(plan, story, s, values, chance) for s in plan.samples.samples}
+    truth = {s.sample_id: invented(plan, measured, s, values, chance) for s in plan.samples.samples}
     analysed = {s.sample_id for s in plan.samples.samples if s.analytes}
+
+    def row(name: str, serial: int, text: str, flag: str = "", role: str = "") -> list[str]:
+        day = (story.started + timedelta(days=9)).strftime("%Y-%m-%d")
+        number = f"{story.started.year}-{serial}"
+        written = [measured.name, text, measured.unit, f"{limit:g}"]
+        return [name, number, *written, flag, role, day]
+
     for sample_id in sorted(taken & analysed):
         serial += 1
         text, flag = as_written(truth[sample_id], limit, chance)
-        name = names.get(sample_id, sample_id)
-        yield lab_row(story, name, serial, text, limit, flag, "")
+        yield row(names.get(sample_id, sample_id), serial, text, flag)
     spiked = f"{20 * limit * chance.uniform(0.93, 1.06):.3g}"
-    yield lab_row(story, "LCS-1", serial + 1, spiked, limit, "", "laboratory control")
-    yield lab_row(story, "MB-1", serial + 2, f"<{limit:g}", limit, "U", "method blank")
-    yield lab_row(story, "X118/2", serial + 3, f"{9 * limit:g}", limit, "", "")
+    yield row("LCS-1", serial + 1, spiked, role="laboratory control")
+    yield row("MB-1", serial + 2, f"<{limit:g}", "U", "method blank")
+    yield row("X118/2", serial + 3, f"{9 * limit:g}")
 
 
 def invented(
-    plan: Plan, story: Story, sample: Sample, values: dict[str, float], chance: random.Random
+    plan: Plan,
+    measured: Measured,
+    sample: Sample,
+    values: dict[str, float],
+    chance: random.Random,
 ) -> float:
     """Invent a value: lognormal by stratum, a duplicate near its parent, a blank near nothing."""
     wobble = math.exp(0.08 * bell(chance))
@@ -245,10 +287,10 @@ def invented(
     if sample.qc_of:
         return values[sample.qc_of] * wobble
     place = next(p for p in plan.locations.places if p.location_id == sample.location_id)
-    if (place.stratum, place.list_order) in story.traces:
+    if (place.stratum, place.list_order) in measured.traces:
         values[sample.sample_id] = 0.0
         return 0.0
-    median, spread = story.values[place.stratum]
+    median, spread = measured.values[place.stratum]
     if place.location_class == "targeted":
         median *= 3.0
     values[sample.sample_id] = median * math.exp(spread * bell(chance))
@@ -269,15 +311,6 @@ def as_written(value: float, limit: float, chance: random.Random) -> tuple[str, 
     if value < 3 * limit:
         return f"{text} J", ""
     return (f" {text} ", "J") if draw < 0.15 else (text, "")
-
-
-def lab_row(
-    story: Story, name: str, serial: int, text: str, limit: float, flag: str, role: str
-) -> list[str]:
-    """Set one row under the laboratory's header."""
-    day = (story.started + timedelta(days=9)).strftime("%Y-%m-%d")
-    number = f"{story.started.year}-{serial}"
-    return [name, number, story.analyte_name, text, story.unit, f"{limit:g}", flag, role, day]
 
 
 def write_csv(path: Path, rows: Sequence[Sequence[str]]) -> None:
