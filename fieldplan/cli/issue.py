@@ -5,7 +5,14 @@ from pathlib import Path
 
 import click
 
-from fieldplan.cli.options import json_option, packet_argument, print_json, quiet_option, say
+from fieldplan.cli.options import (
+    json_option,
+    packet_argument,
+    print_json,
+    quiet_option,
+    say,
+    wrapped,
+)
 from fieldplan.cli.pack import date_option, day
 
 
@@ -21,6 +28,7 @@ def command(packet: Path, by: str, on: datetime | None, as_json: bool, quiet: bo
     Every page is set again with the name and the date in place of DRAFT. Locations, samples and
     rules stay as they are. A later change needs a new revision.
     """
+    from fieldplan.packet.evidence import packet_fingerprint
     from fieldplan.packet.writer import issue_packet
 
     def progress(stage: str) -> None:
@@ -28,9 +36,23 @@ def command(packet: Path, by: str, on: datetime | None, as_json: bool, quiet: bo
 
     final, plan = issue_packet(packet, by=by, on=day(on), progress=progress)
     held = [c.topic for c in plan.open_items if c.holds_work]
+    fingerprint = packet_fingerprint(final)
     if as_json:
-        print_json({"packet": final.as_posix(), "status": plan.status, "holds_open": held})
+        print_json(
+            {
+                "packet": final.as_posix(),
+                "status": plan.status,
+                "fingerprint": fingerprint,
+                "holds_open": held,
+            }
+        )
         return
     click.echo(f"{final}: {plan.status}.")
+    click.echo(
+        wrapped(
+            f"Fingerprint of the packet: {fingerprint}. Send it to somebody outside: it shows "
+            "later that nothing was changed."
+        )
+    )
     if held:
         click.echo(f"Still OPEN, and holding the work: {', '.join(held)}.")

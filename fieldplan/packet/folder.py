@@ -139,6 +139,19 @@ def file_hashes(folder: Path) -> dict[str, str]:
     return found
 
 
+def listed(folder: Path, name: str) -> bool:
+    """Return whether the manifest knows a file; others were added later.
+
+    Parameters
+    ----------
+    folder : Path
+        A packet with a manifest that can be read.
+    name : str
+        Relative to it, with ``/``.
+    """
+    return name in json.loads((folder / MANIFEST_PLACE).read_text(encoding="utf-8"))
+
+
 def changed_files(folder: Path) -> tuple[str, ...]:
     """Name the files that were changed, added or removed since the manifest was written.
 

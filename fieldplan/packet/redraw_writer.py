@@ -3,13 +3,14 @@
 from pathlib import Path
 
 from fieldplan.base.files import write_atomically
+from fieldplan.packet.evidence import Evidence
 from fieldplan.packet.sheets.pdf import set_pdf
 from fieldplan.packet.sheets.redraw_sheet import redraw_sheet
 from fieldplan.plan.model import Plan
 from fieldplan.plan.redraw import Comparison
 
 
-def write_redraw(plan: Plan, comparison: Comparison, parent: Path) -> Path:
+def write_redraw(plan: Plan, comparison: Comparison, parent: Path, *, evidence: Evidence) -> Path:
     """Write the one-page attachment, under the next free number.
 
     Parameters
@@ -19,6 +20,8 @@ def write_redraw(plan: Plan, comparison: Comparison, parent: Path) -> Path:
         From ``plan.redraw``.
     parent : Path
         An existing folder, or one that can be made.
+    evidence : Evidence
+        From ``packet.evidence.examine``.
 
     Returns
     -------
@@ -30,5 +33,8 @@ def write_redraw(plan: Plan, comparison: Comparison, parent: Path) -> Path:
     number = 1
     while f"{plan.revision_name}-redrawn-{number:02d}" in stems:
         number += 1
-    content = set_pdf(redraw_sheet(plan, comparison), paper=plan.campaign.paper.size)
+    sheet = redraw_sheet(
+        plan, comparison, fingerprint=evidence.fingerprint, differs=evidence.sentences
+    )
+    content = set_pdf(sheet, paper=plan.campaign.paper.size)
     return write_atomically(parent / f"{plan.revision_name}-redrawn-{number:02d}.pdf", content)

@@ -12,6 +12,7 @@ from fieldplan.packet.folder import (
     build_folder,
     changed_files,
     file_hashes,
+    listed,
     next_number,
     taken_numbers,
     write_manifest,
@@ -237,7 +238,7 @@ def _must_be_draft(plan: Plan, folder: Path) -> None:
 
 
 def _must_be_whole(folder: Path) -> None:
-    known = [name for name in changed_files(folder) if not _added(folder, name)]
+    known = [name for name in changed_files(folder) if listed(folder, name)]
     if known:
         message = (
             f"{folder}: {known[0]} was changed or removed after packing"
@@ -245,11 +246,6 @@ def _must_be_whole(folder: Path) -> None:
             "Make the change in the campaign file and pack again, so that all pages agree."
         )
         raise RecordError(message)
-
-
-def _added(folder: Path, name: str) -> bool:
-    recorded = json.loads((folder / "office" / "manifest.json").read_text(encoding="utf-8"))
-    return name not in recorded
 
 
 def _packed_inputs(folder: Path) -> dict[str, bytes]:

@@ -1,6 +1,7 @@
 """The attachment for a reviewer: an old plan drawn again and compared."""
 
 import platform
+from collections.abc import Sequence
 from importlib.metadata import version
 
 from fieldplan.base.document import (
@@ -21,7 +22,9 @@ from fieldplan.plan.redraw import Comparison
 LIBRARIES = ("numpy", "shapely", "pyproj")
 
 
-def redraw_sheet(plan: Plan, comparison: Comparison) -> Document:
+def redraw_sheet(
+    plan: Plan, comparison: Comparison, *, fingerprint: str = "", differs: Sequence[str] = ()
+) -> Document:
     """Compose the one-page attachment.
 
     Parameters
@@ -30,6 +33,10 @@ def redraw_sheet(plan: Plan, comparison: Comparison) -> Document:
         Read from the packet's record.
     comparison : Comparison
         From ``plan.redraw``.
+    fingerprint : str
+        Of the packet, from ``packet.evidence``.
+    differs : sequence of str
+        Where the packet differs from its manifest or its record from itself.
 
     Returns
     -------
@@ -57,11 +64,12 @@ def redraw_sheet(plan: Plan, comparison: Comparison) -> Document:
         Paragraph("Keys of the random numbers:"),
         Verbatim("\n".join(keys(plan))),
         Paragraph(
-            "Only office/record.json was read. Targeted places are chosen by people and are not "
-            "drawn. The plan sheet's annex tells how to draw without this program.",
+            "Places come from office/record.json alone. Targeted places are chosen by people and "
+            "are not drawn. The plan sheet's annex tells how to draw without this program.",
             tone="note",
         ),
     ]
+    blocks += [Heading("The packet"), *_packet_blocks(fingerprint, differs)]
     if comparison.differing:
         blocks += [Heading("Places that differ"), Bullets((", ".join(comparison.differing),))]
     blocks += [Heading("Sign-off"), SignOff(("Drawn again by", "Reviewed by"))]
@@ -73,6 +81,17 @@ def redraw_sheet(plan: Plan, comparison: Comparison) -> Document:
         status=plan.status,
         blocks=tuple(blocks),
     )
+
+
+def _packet_blocks(fingerprint: str, differs: Sequence[str]) -> list[Block]:
+    facts = Facts((("Fingerprint of the packet", fingerprint or "none: its manifest is missing"),))
+    if differs:
+        return [facts, Bullets(tuple(differs))]
+    same = (
+        "Every file is the one that the manifest names, and the record agrees with itself. Compare "
+        "the fingerprint with the one that was noted when the packet was issued."
+    )
+    return [facts, Paragraph(same)]
 
 
 def keys(plan: Plan) -> tuple[str, ...]:
