@@ -1,6 +1,7 @@
 """The command line: each command parses, calls one function and prints."""
 
 import sys
+import textwrap
 from importlib import import_module
 
 import click
@@ -65,5 +66,12 @@ def main() -> None:
         entry.main(standalone_mode=True)
     except FieldplanError as fault:
         for problem in fault.problems:
-            click.echo(problem, err=True)
+            click.echo(_for_reader(problem), err=True)
         sys.exit(fault.exit_code)
+
+
+def _for_reader(problem: str) -> str:
+    """Wrap a problem for a terminal; a file or a program gets it as one line."""
+    if not sys.stderr.isatty():
+        return problem
+    return textwrap.fill(problem, width=79, break_long_words=False, break_on_hyphens=False)

@@ -29,7 +29,7 @@ def command(packet: Path, by: str, on: datetime | None, as_json: bool, quiet: bo
     rules stay as they are. A later change needs a new revision.
     """
     from fieldplan.packet.evidence import packet_fingerprint
-    from fieldplan.packet.writer import issue_packet
+    from fieldplan.packet.writer import issue_packet, issued_revisions
 
     def progress(stage: str) -> None:
         say(f"  {stage} …", quiet=quiet or as_json)
@@ -37,12 +37,18 @@ def command(packet: Path, by: str, on: datetime | None, as_json: bool, quiet: bo
     final, plan = issue_packet(packet, by=by, on=day(on), progress=progress)
     held = [c.topic for c in plan.open_items if c.holds_work]
     fingerprint = packet_fingerprint(final)
+    earlier = [
+        old.revision_name
+        for old in issued_revisions(final.parent, plan)
+        if old.revision < plan.revision
+    ]
     if as_json:
         print_json(
             {
                 "packet": final.as_posix(),
                 "status": plan.status,
                 "fingerprint": fingerprint,
+                "replaces": earlier,
                 "holds_open": held,
             }
         )
@@ -54,5 +60,9 @@ def command(packet: Path, by: str, on: datetime | None, as_json: bool, quiet: bo
             "later that nothing was changed."
         )
     )
+    if earlier:
+        click.echo(
+            wrapped(f"It replaces {', '.join(earlier)}, issued before: take that from the crew.")
+        )
     if held:
         click.echo(f"Still OPEN, and holding the work: {', '.join(held)}.")

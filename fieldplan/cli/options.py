@@ -1,6 +1,7 @@
 """Options that several commands share, and how they print."""
 
 import json
+import textwrap
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import asdict, is_dataclass
 from datetime import date
@@ -33,7 +34,14 @@ def say(text: str = "", *, quiet: bool = False) -> None:
 
 def wrapped(text: str, *, indent: str = "") -> str:
     """Wrap a sentence at 79 columns."""
-    return click.wrap_text(text, width=79, initial_indent=indent, subsequent_indent=indent)
+    return textwrap.fill(
+        text,
+        width=79,
+        initial_indent=indent,
+        subsequent_indent=indent,
+        break_long_words=False,
+        break_on_hyphens=False,
+    )
 
 
 def print_sentences(sentences: Sequence[str]) -> None:

@@ -205,6 +205,7 @@ def issue_packet(
     plan = read_plan(folder)
     _must_be_draft(plan, folder)
     _must_be_whole(folder)
+    _must_be_in_order(plan, folder, on)
     issued = replace(plan, issued_by=by.strip(), issued_on=on)
     inputs = _packed_inputs(folder)
     final = folder.with_name(plan.revision_name)
@@ -235,6 +236,47 @@ def _must_be_draft(plan: Plan, folder: Path) -> None:
             "never changed. Change the campaign file and pack the next revision."
         )
         raise RecordError(message)
+
+
+def _must_be_in_order(plan: Plan, folder: Path, on: date) -> None:
+    """Refuse a date before the plan was made, and a revision that another has replaced."""
+    if on < plan.made_on:
+        message = (
+            f"{folder} was made on {plan.made_on}; it cannot be issued on {on}. Leave --date out, "
+            "or give the day of issue."
+        )
+        raise RecordError(message)
+    later = [old for old in issued_revisions(folder.parent, plan) if old.revision > plan.revision]
+    if later:
+        message = (
+            f"{later[-1].revision_name} is issued already and replaces {plan.revision_name}; "
+            "two issued plans of one site would contradict each other. Pack the campaign again "
+            "and issue the new revision."
+        )
+        raise RecordError(message)
+
+
+def issued_revisions(parent: Path, plan: Plan) -> list[Plan]:
+    """Read the issued plans of the same campaign in a folder, oldest first.
+
+    Parameters
+    ----------
+    parent : Path
+        Where packets lie side by side.
+    plan : Plan
+        Its id names the packets looked for.
+    """
+    stem = f"{plan.campaign.plan.id}-r"
+    found = []
+    for number in sorted(taken_numbers(parent, stem)):
+        folder = parent / f"{stem}{number:02d}"
+        try:
+            old = read_plan(folder)
+        except RecordError:
+            continue
+        if old.issued_by:
+            found.append(old)
+    return found
 
 
 def _must_be_whole(folder: Path) -> None:

@@ -92,6 +92,31 @@ def test_an_issued_packet_says_who_and_when_and_is_never_changed(
     assert not [p for p in site.folder.iterdir() if "draft" in p.name or p.name.startswith(".")]
 
 
+def test_issuing_names_what_it_replaces_and_never_goes_back(packed: Packed, tmp_path: Path) -> None:
+    """A crew with two issued plans of one site has none."""
+    site = packed.copied_to(tmp_path)
+    name = site.packet.name
+    assert run("issue", site.packet, "--by", "L. Fenn").exit_code == 0
+    assert run("pack", site.campaign).exit_code == 0
+    assert run("pack", site.campaign).exit_code == 0
+    third = site.packet.with_name(name.replace("r01", "r03"))
+    outcome = run("issue", third, "--by", "L. Fenn")
+    assert outcome.exit_code == 0, outcome.output
+    assert f"replaces {name}, issued before" in outcome.stdout
+    second = run("issue", site.packet.with_name(name.replace("r01", "r02")), "--by", "L. Fenn")
+    assert second.exit_code == 1
+    assert f"{third.name} is issued already" in str(second.exception)
+
+
+def test_a_packet_is_not_issued_before_it_was_made(packed: Packed, tmp_path: Path) -> None:
+    """A date of issue before the plan's own date is a slip or worse."""
+    site = packed.copied_to(tmp_path)
+    outcome = run("issue", site.packet, "--by", "L. Fenn", "--date", "2026-09-20")
+    assert outcome.exit_code == 1
+    assert "was made on 2026-09-21; it cannot be issued on 2026-09-20" in str(outcome.exception)
+    assert "DRAFT" in (site.packet / "START_HERE.html").read_text(encoding="utf-8")
+
+
 def test_a_packet_edited_by_hand_is_not_issued(packed: Packed, tmp_path: Path) -> None:
     """A point list that was edited no longer agrees with the record."""
     site = packed.copied_to(tmp_path)
