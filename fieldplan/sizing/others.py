@@ -48,8 +48,9 @@ def other_precisions(
 
     Notes
     -----
-    The counts follow the luck of the deciding analyte's pilot and not that of another's, so the
-    factor for Neyman counts applies only where the same analyte is asked about twice.
+    Neyman counts follow the luck of the deciding analyte's pilot. Another analyte of the same
+    pilot may share that luck, in part or in full, so the factor for it is applied as if in full,
+    which is on the careful side. With a pilot of its own there is nothing to share and no factor.
     """
     return tuple(
         _answered(
@@ -150,8 +151,8 @@ def _bought(
     if not question.parts:
         return found
     counts = [entry.needed for entry in size.strata]
-    same = question.analyte == size.analyte
-    precision = Precision(question if same else replace(question, allocation="proportional"))
+    common = _shares_pilot(question, asked)
+    precision = Precision(question if common else replace(question, allocation="proportional"))
     error, width = precision.standard_error(counts), precision.half_width(counts)
     assumed = any(part.assumed for part in question.parts)
     found = replace(found, standard_error=error, half_width=width, assumed=assumed)
@@ -160,6 +161,12 @@ def _bought(
     kept, chance = _keeps(found, precision, counts), precision.chance(counts)
     found = replace(found, meets=kept, chance=chance)
     return replace(found, enough_n=_enough(found, precision, asked)) if found.falls_short else found
+
+
+def _shares_pilot(question: Question, asked: Question) -> bool:
+    """Whether a sigma has the same source as the deciding one's, and may share its luck."""
+    pairs = zip(question.parts, asked.parts, strict=True)
+    return any(one.source == other.source for one, other in pairs)
 
 
 def _enough(found: OtherPrecision, precision: Precision, asked: Question) -> int | None:
