@@ -194,7 +194,8 @@ def _counts(received: "Received") -> list[str]:
         waiting = len({match.row for match in returns.needs_you})
         total = returns.matched + returns.extra + waiting
         head = f"{returns.analyte}: " if received.others else ""
-        end = f"; {waiting} need you" if waiting else ""
+        verb = "needs" if waiting == 1 else "need"
+        end = f"; {waiting} {verb} you" if waiting else ""
         lines.append(f"{head}{returns.matched} of {total} laboratory rows matched{end}.")
     return lines
 

@@ -14,6 +14,7 @@ from fieldplan.plan.record import plan_to_record
 from fieldplan.returns import field_return_blank
 from tests.command_runner import command_runner
 from tests.factories import make_plan
+from tests.several_analytes import plan_with_zinc
 from tests.unit.returns.returned import CELLS
 
 HEAD = ["sample_id", "analyte", "as_reported", "unit"]
@@ -203,3 +204,103 @@ def test_a_folder_that_is_no_packet_is_named(folder: Path) -> None:
     """The remedy names what a packet looks like."""
     with pytest.raises(FieldplanError, match="is not a packet"):
         command_runner().invoke(command, ["nowhere", "labs.csv"], catch_exceptions=False)
+
+
+@pytest.fixture
+def both(folder: Path) -> Path:
+    """The same packet for lead and zinc, with zinc's rows below those of lead."""
+    plan = plan_with_zinc()
+    record = json.dumps(plan_to_record(plan))
+    (folder / "QF-r01" / "office" / "record.json").write_text(record, encoding="utf-8")
+    lead = lab_rows(folder)
+    zinc = [
+        [name, "Zinc", cell if "<" in cell else f"{cell}.5", "ug/g"] for name, _, cell, _ in lead
+    ]
+    write_lab(folder, [*lead, *zinc])
+    return folder
+
+
+def test_the_deciding_analyte_comes_in_full_and_each_other_in_a_sentence(
+    both: Path, unset: list[Path]
+) -> None:
+    """One file, one command, nothing left out."""
+    outcome = run("--field", "field.csv")
+    said = outcome.stdout
+    assert said.startswith("The mean of lead over Quarry Field is ")
+    assert said.count("The mean of zinc over Quarry Field is ") == 1
+    assert said.index("zinc") > said.index("the action level of 150")
+    assert "lead: 11 of 11 laboratory rows matched." in outcome.stderr
+    assert "zinc: 11 of 11 laboratory rows matched." in outcome.stderr
+    content = json.loads(run("--field", "field.csv", "--json").stdout)
+    assert [content["analyte"], *(o["analyte"] for o in content["others"])] == ["lead", "zinc"]
+
+
+def test_one_analyte_can_be_asked_for_by_id_or_name(both: Path, unset: list[Path]) -> None:
+    """The answer is the one that stands beside the deciding analyte's, in full."""
+    beside = json.loads(run("--json").stdout)["others"][0]
+    for word in ("zinc", "ZINC", "Zinc"):
+        alone = json.loads(run("--analyte", word, "--json").stdout)
+        assert {key: alone[key] for key in beside} == beside
+        assert alone["others"] == []
+    assert "lead" not in run("--analyte", "zinc", "--quiet").stdout
+
+
+@pytest.mark.parametrize(
+    ("word", "hint"), [("zink", "Did you mean zinc?"), ("led", "Did you mean lead?"), ("x", "")]
+)
+def test_an_unknown_analyte_is_answered_with_what_is_near(
+    both: Path, unset: list[Path], word: str, hint: str
+) -> None:
+    """Exit code 2, and nothing is written."""
+    outcome = run("--analyte", word)
+    assert outcome.exit_code == 2
+    said = " ".join(outcome.stderr.split())
+    assert f"'{word}' is no analyte of QF-r01; it has lead, zinc." in said
+    assert hint in said
+    assert ("Did you mean" in said) == bool(hint)
+    assert unset == []
+
+
+def test_a_missing_analyte_is_said_and_a_faulty_one_stops_everything(
+    both: Path, unset: list[Path]
+) -> None:
+    """Missing is a fact about the laboratory; a fault is one about the file."""
+    rows = lab_rows(both)
+    write_lab(both, rows[:11])
+    said = " ".join(run("--quiet").stdout.split())
+    assert "No mean of zinc is given: labs.csv has no result of it that counts." in said
+    rows[12][3] = "ppm"
+    write_lab(both, rows)
+    lines = refused()
+    assert [line.split(":")[0] for line in lines] == ["labs.csv row 14"]
+    assert len(unset) == 1
+
+
+def test_a_retyped_jar_is_asked_once_and_its_answer_serves_both(
+    both: Path, unset: list[Path]
+) -> None:
+    """One label, two rows, one question."""
+    rows = lab_rows(both)
+    rows[0][0] = rows[11][0] = "qf 731"
+    write_lab(both, rows)
+    lines = refused()
+    assert lines[:2] == (
+        "lead: 10 of 11 laboratory rows matched; 1 needs you.",
+        "zinc: 10 of 11 laboratory rows matched; 1 needs you.",
+    )
+    assert len([line for line in lines if line.startswith("  row ")]) == 1
+    path = both / "matches.csv"
+    answered = path.read_text(encoding="utf-8-sig").replace('letters",', 'letters",yes')
+    path.write_text(answered, encoding="utf-8", newline="")
+    outcome = run("--matches", "matches.csv")
+    assert "zinc: 11 of 11 laboratory rows matched." in outcome.stderr
+
+
+def test_a_changed_rule_for_duplicates_reaches_every_analyte(both: Path, unset: list[Path]) -> None:
+    """QF-A-02 has two results of each; first and average differ for both."""
+    recorded, changed = (
+        json.loads(run(*words, "--json").stdout) for words in ((), ("--duplicates", "first"))
+    )
+    assert changed["others"][0]["mean"] < recorded["others"][0]["mean"]
+    assert changed["others"][0]["changes_after_results"]
+    assert "CHANGED AFTER RESULTS, zinc: " in changed["other_sentences"][1]

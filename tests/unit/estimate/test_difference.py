@@ -1,9 +1,12 @@
 """Planned against achieved: parts that multiply to the whole, and a target kept or missed."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
+from scipy import stats
 
 from fieldplan.estimate import estimate
 from fieldplan.estimate.difference import split_difference
@@ -68,6 +71,50 @@ def test_a_list_uses_its_finite_population_in_every_part() -> None:
     text = " ".join(answer.why_different)
     assert "The target, standard error of the mean ≤ 0.9 mg/kg, was kept: it came to 0.542" in text
     assert "The standard deviation was 2.34 instead of 3.10" in text
+
+
+@pytest.mark.parametrize(
+    ("interval", "asked", "says"),
+    [
+        ("two-sided", 1.29, "was kept: it came to 1.28 mg/kg"),
+        ("two-sided", 1.28, "was missed: it came to 1.281 mg/kg"),
+        ("two-sided", 0.60, "was missed: it came to 1.28 mg/kg"),
+        ("upper-limit", 1.03, "was kept: it came to 1.027 mg/kg"),
+        ("lower-limit", 1.02, "was missed: it came to 1.03 mg/kg"),
+    ],
+)
+def test_a_half_width_is_judged_by_the_half_width_that_came(
+    interval: str, asked: float, says: str
+) -> None:
+    """The SE of 0.5418 is below every target here; t(0.975, 7) = 2.3646 makes it 1.2812.
+
+    One side: t(0.95, 7) = 1.8946 makes it 1.0265 (scipy.stats.t below). A plan keeps the standard
+    error that a half-width amounts to beside it; that one is no verdict.
+    """
+    share = 0.975 if interval == "two-sided" else 0.95
+    width = float(stats.t.ppf(share, 7)) * (5.478393 / 8 * 6 / 14) ** 0.5
+    assert ("kept" in says) == (width <= asked)
+    plan = list_plan()
+    size = replace(plan.size, target="a half-width", target_half_width=asked)
+    rules = plan.campaign.rules.model_copy(update={"interval": interval})
+    campaign = plan.campaign.model_copy(update={"rules": rules})
+    returns = returned([result(f"MW-{n}", value) for n, value in enumerate(WELLS)])
+    answer = estimate(replace(plan, campaign=campaign, size=size), returns)
+    assert f"The target, a half-width, {says}." in answer.why_different
+
+
+def test_a_share_of_the_mean_is_given_of_the_mean_that_was_found() -> None:
+    """1.2812 of a mean of 5.4875 is 23.3 %, whatever mean was expected."""
+    plan = list_plan()
+    objective = plan.campaign.objective[0].model_copy(
+        update={"standard_error": None, "relative_half_width": 0.2}
+    )
+    campaign = plan.campaign.model_copy(update={"objective": (objective,)})
+    size = replace(plan.size, target="20 % of an expected mean of 6", target_half_width=1.2)
+    returns = returned([result(f"MW-{n}", value) for n, value in enumerate(WELLS)])
+    answer = estimate(replace(plan, campaign=campaign, size=size), returns)
+    said = "was missed: it came to 1.28 mg/kg, 23.3 % of the mean found."
+    assert any(line.endswith(said) for line in answer.why_different)
 
 
 def test_a_missed_target_is_said_to_be_missed() -> None:
