@@ -155,7 +155,26 @@ def _kept(plan: Plan, mean: MeanEstimate, *, target: Target, unit: str) -> str:
     else:
         return ""
     kept = "kept" if reached <= asked * (1 + 1e-9) else "missed"
-    return f"The target, {target.words}, was {kept}: it came to {significant(reached)} {unit}."
+    share = ""
+    if target.of_mean and mean.mean > 0:
+        share = f", {100 * reached / mean.mean:.3g} % of the mean found"
+    came = _told_apart(reached, asked)
+    return f"The target, {target.words}, was {kept}: it came to {came} {unit}{share}."
+
+
+def _told_apart(reached: float, asked: float) -> str:
+    """Write a number with so many digits that it is not taken for the one asked for.
+
+    Examples
+    --------
+    >>> _told_apart(1.4026, 1.4), _told_apart(1.098, 1.4)
+    ('1.403', '1.10')
+    """
+    for digits in range(3, 8):
+        words = significant(reached, digits)
+        if words != significant(asked, digits):
+            break
+    return words
 
 
 def _says(factor: float) -> bool:

@@ -4,15 +4,20 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 
 from fieldplan.plan.model import Plan
+from fieldplan.sizing.model import OtherPrecision, Size
 
 
 @dataclass(frozen=True)
 class Target:
-    """A precision that was asked for: exactly one of the two numbers is given."""
+    """A precision that was asked for: at most one of the two numbers is given, none for a budget.
+
+    ``of_mean`` says that the campaign asked for a half-width as a share of an expected mean.
+    """
 
     words: str
     standard_error: float | None
     half_width: float | None
+    of_mean: bool = False
 
 
 @dataclass(frozen=True)
@@ -62,17 +67,29 @@ def planned_for(plan: Plan, analyte: str) -> Planned:
     """
     unit = plan.campaign.analyte_called(analyte).unit
     entries = [other for other in plan.size.others if other.analyte == analyte]
-    targets = [
-        Target(other.target, other.target_standard_error, other.target_half_width)
-        for other in entries
-        if other.target
-    ]
+    targets = [_target(plan, other) for other in entries if other.target]
     if analyte == plan.campaign.deciding_analyte.id:
         size = plan.size
         sigmas = {entry.stratum: entry.sigma for entry in size.strata}
-        own = Target(size.target, size.target_standard_error, size.target_half_width)
+        own = _target(plan, size)
         return Planned(analyte, unit, size.standard_error, sigmas, (own, *targets), decides=True)
     known = {entry.stratum: entry.sigma for entry in plan.spread.others if entry.analyte == analyte}
     complete = all(stratum.name in known for stratum in plan.frame.strata)
     error = next((other.standard_error for other in entries), None)
     return Planned(analyte, unit, error, known if complete else {}, tuple(targets), decides=False)
+
+
+def _target(plan: Plan, found: Size | OtherPrecision) -> Target:
+    """Give a target as it was asked for: a half-width is not judged by a standard error.
+
+    A plan holds the standard error that a half-width amounts to at its own n beside it.
+    """
+    if found.target_half_width is None:
+        return Target(found.target, found.target_standard_error, None)
+    deciding = plan.campaign.deciding_analyte.id
+    of_mean = any(
+        objective.relative_half_width is not None
+        for objective in plan.campaign.objective
+        if (objective.analyte or deciding) == found.analyte
+    )
+    return Target(found.target, None, found.target_half_width, of_mean)

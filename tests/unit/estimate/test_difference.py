@@ -79,7 +79,7 @@ def test_a_list_uses_its_finite_population_in_every_part() -> None:
         ("two-sided", 1.29, "was kept: it came to 1.28 mg/kg"),
         ("two-sided", 1.28, "was missed: it came to 1.281 mg/kg"),
         ("two-sided", 0.60, "was missed: it came to 1.28 mg/kg"),
-        ("upper-limit", 1.03, "was kept: it came to 1.027 mg/kg"),
+        ("upper-limit", 1.03, "was kept: it came to 1.026 mg/kg"),
         ("lower-limit", 1.02, "was missed: it came to 1.03 mg/kg"),
     ],
 )
@@ -88,7 +88,7 @@ def test_a_half_width_is_judged_by_the_half_width_that_came(
 ) -> None:
     """The SE of 0.5418 is below every target here; t(0.975, 7) = 2.3646 makes it 1.2812.
 
-    One side: t(0.95, 7) = 1.8946 makes it 1.0265 (scipy.stats.t below). A plan keeps the standard
+    One side: t(0.95, 7) = 1.8946 makes it 1.0264 (scipy.stats.t below). A plan keeps the standard
     error that a half-width amounts to beside it; that one is no verdict.
     """
     share = 0.975 if interval == "two-sided" else 0.95
