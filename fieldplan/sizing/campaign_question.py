@@ -48,7 +48,7 @@ def question_of(campaign: "Campaign", spread: "Spread", frame: "Frame") -> Quest
     mean = expected_mean(spread.strata, frame, site=spread.site)
     _check_support(campaign, kind, value, mean=mean)
     parts = parts_of(campaign, frame, spread.strata)
-    return ask(campaign, objective, parts=parts, mean=mean)
+    return ask(campaign, objective, parts=parts, mean=mean, targeted=len(frame.targeted))
 
 
 def ask(
@@ -57,6 +57,7 @@ def ask(
     *,
     parts: tuple[Part, ...],
     mean: float | None,
+    targeted: int = 0,
 ) -> Question:
     """Put one objective as a question.
 
@@ -68,6 +69,8 @@ def ask(
         From ``parts_of``.
     mean : float or None
         From ``expected_mean``.
+    targeted : int
+        Places chosen by judgement, for the cost.
 
     Returns
     -------
@@ -97,6 +100,7 @@ def ask(
         locations=design.locations,
         census=design.layout == "census",
         grid=design.layout.endswith("-grid"),
+        targeted=targeted,
         prices=None
         if cost is None
         else Prices(cost.currency, cost.mobilisation, cost.per_location, cost.per_analysis),

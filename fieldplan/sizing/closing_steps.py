@@ -134,13 +134,19 @@ def _cost(question: Question, counts: Counts) -> Iterator[Step]:
     if cost is None or prices is None:
         return
     controls = sum(entry.count for entry in control_counts(question, counts.planned))
+    places = "locations"
+    aimed: tuple[Quantity, ...] = ()
+    if question.targeted:
+        places = "(locations + targeted)"
+        aimed = (Quantity("targeted", "places chosen by judgement", question.targeted, "places"),)
     yield Step(
         symbol="cost",
         meaning="Cost of the round",
-        formula="cost = mobilisation + locations · (visit + analysis) + controls · analysis",
+        formula=f"cost = mobilisation + {places} · (visit + analysis) + controls · analysis",
         inputs=(
             Quantity("mobilisation", "once", prices.mobilisation, prices.currency),
             Quantity("locations", "locations to visit", visits, "locations"),
+            *aimed,
             Quantity("visit", "per location", prices.per_location, prices.currency),
             Quantity("analysis", "per analysed sample", prices.per_analysis, prices.currency),
             Quantity("controls", "control samples", controls, "samples"),

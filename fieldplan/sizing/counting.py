@@ -7,6 +7,7 @@ from fieldplan.base.errors import DesignError
 from fieldplan.sizing.model import QualityControlCount
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
+from fieldplan.sizing.words import targeted_words
 from fieldplan.stats.allocation import check_total, first_that, share_total, smallest_total
 from fieldplan.stats.distributions import normal_quantile
 from fieldplan.stats.precision import meets, smallest, whole
@@ -149,7 +150,8 @@ def affordable_counts(question: Question) -> list[int]:
     if not meets(cost(least), question.value):
         message = (
             f"a budget of {question.value:g} {prices.currency} is too small: the smallest design "
-            f"({least} results) costs {cost(least):g} {prices.currency}."
+            f"({least} results{targeted_words(question, ', ')}) costs {cost(least):g} "
+            f"{prices.currency}."
         )
         raise DesignError(message)
     if meets(cost(most), question.value):
@@ -181,10 +183,22 @@ def control_counts(question: Question, planned: Sequence[int]) -> tuple[QualityC
 
 
 def total_cost(question: Question, planned: Sequence[int]) -> float | None:
-    """Add up mobilisation, locations, their analyses and those of control samples."""
+    """Add up mobilisation, visits, targeted ones too, their analyses and those of control samples.
+
+    Parameters
+    ----------
+    question : Question
+    planned : sequence of int
+        Locations to visit by stratum; targeted places are added from the question.
+
+    Returns
+    -------
+    float or None
+        Money; None without prices.
+    """
     prices = question.prices
     if prices is None:
         return None
-    visits = sum(planned)
+    visits = sum(planned) + question.targeted
     analyses = visits + sum(entry.count for entry in control_counts(question, planned))
     return prices.mobilisation + visits * prices.per_location + analyses * prices.per_analysis

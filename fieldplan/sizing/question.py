@@ -92,6 +92,8 @@ class Question:
         Every unit of the list is visited.
     grid : bool
         A systematic layout, which is sized without credit.
+    targeted : int
+        Places chosen by judgement: visited and analysed, so they cost, but they count as no n.
     """
 
     parts: tuple[Part, ...]
@@ -108,6 +110,7 @@ class Question:
     locations: int | None = None
     census: bool = False
     grid: bool = False
+    targeted: int = 0
     prices: Prices | None = None
     controls: tuple[ControlRate, ...] = ()
     design: str = "main"

@@ -12,6 +12,7 @@ from fieldplan.sizing.words import (
     listed,
     percent,
     target_words,
+    targeted_words,
     typed_percent,
     with_unit,
 )
@@ -158,7 +159,8 @@ def _money(question: Question, counts: Counts) -> str:
     cost = total_cost(question, counts.planned)
     if cost is None:
         return ""
-    line = f"Expected cost: {_money_words(question, cost)}, control samples included."
+    included = f"control samples{targeted_words(question, ' and ')} included"
+    line = f"Expected cost: {_money_words(question, cost)}, {included}."
     if question.target == "budget" and question.locations is not None:
         side = "within" if cost <= question.value else "above"
         line += f" That is {side} the budget of {_money_words(question, question.value)}."

@@ -65,6 +65,19 @@ def counted(number: int, word: str) -> str:
     return f"{number} {word}" + ("" if number == 1 else "s")
 
 
+def targeted_words(question: Question, before: str) -> str:
+    """Name the targeted places that the cost holds, behind ``before``; empty without any.
+
+    Examples
+    --------
+    >>> from fieldplan.sizing.question import Part
+    >>> asked = Question((Part("site", 1.0, 20.0),), "standard_error", 9.0, targeted=3)
+    >>> targeted_words(asked, " and ")
+    ' and 3 targeted places'
+    """
+    return before + counted(question.targeted, "targeted place") if question.targeted else ""
+
+
 def listed(items: list[str]) -> str:
     """Join words as a sentence does.
 

@@ -45,7 +45,7 @@ def test_soil_campaign_gets_its_locations() -> None:
     assert [entry.planned for entry in result.strata] == [5, 6]
     assert [entry.alternates for entry in result.strata] == [2, 2]
     assert [entry.count for entry in result.qc] == [2]
-    assert result.cost == 400 + 11 * 75 + 2 * 45
+    assert result.cost == 400 + (11 + 1) * 75 + 2 * 45  # one targeted place besides
     assert result.assurance_chosen_by == "L. Fenn"
     assert result.target == "standard error of the mean ≤ 9 mg/kg"
     assert any("was ASSUMED, so no chance can be given" in line for line in result.conditions)
@@ -157,7 +157,7 @@ def test_rules_decide_the_interval() -> None:
 
 
 def test_typed_locations_with_a_budget_are_compared_with_it() -> None:
-    """12 locations cost 400 + 12·75 + 2·45 = 1390."""
+    """12 locations and the targeted place cost 400 + 13·75 + 2·45 = 1465."""
     for budget, side in ((1500.0, "within"), (1200.0, "above")):
         campaign = make_campaign(
             design=(DesignTable(layout="stratified", locations=12),),
@@ -166,6 +166,42 @@ def test_typed_locations_with_a_budget_are_compared_with_it() -> None:
         )
         result = size(campaign, make_spread(), make_frame())
         assert result.planned == 12
-        assert f"1390 EUR, control samples included. That is {side} the budget" in " ".join(
-            result.sentences
-        )
+        said = f"1465 EUR, control samples and 1 targeted place included. That is {side} the budget"
+        assert said in " ".join(result.sentences)
+
+
+def test_targeted_places_are_paid_like_locations_and_count_as_no_n() -> None:
+    """By the prices alone: the tank costs a visit and an analysis, 30 + 45; n stays."""
+    frame = make_frame()
+    without = size(make_campaign(), make_spread(), replace(frame, targeted=()))
+    result = size(make_campaign(), make_spread(), frame)
+    assert result.cost == (without.cost or 0) + 75
+    assert (result.needed, result.planned) == (without.needed, without.planned)
+    at_n = {point.n: point.cost for point in result.curve}
+    assert at_n[result.needed] == result.cost
+    paid = next(step for step in result.steps if step.symbol == "cost")
+    given = {entry.symbol: entry.value for entry in paid.inputs}
+    assert paid.unrounded == given["mobilisation"] + given["controls"] * given["analysis"] + (
+        given["locations"] + given["targeted"]
+    ) * (given["visit"] + given["analysis"])
+
+
+@pytest.mark.parametrize("targeted", [0, 1, 4])
+def test_a_budget_leaves_room_for_targeted_places(targeted: int) -> None:
+    """By the prices alone: all fit into the money, and one location more would not."""
+    frame = make_frame()
+    frame = replace(frame, targeted=frame.targeted * targeted)
+    campaign = make_campaign(objective=objective(budget=2000.0), loss=Loss(), qc=())
+    result = size(campaign, make_spread(), frame)
+    spent = 400 + (result.planned + targeted) * 75
+    assert result.cost == spent
+    assert spent <= 2000 < spent + 75
+
+
+def test_a_budget_spent_on_targeted_places_is_refused_with_its_reason() -> None:
+    """Twenty places cost 1500 of 2000, the fare 400; four results more would not fit."""
+    frame = make_frame()
+    frame = replace(frame, targeted=frame.targeted * 20)
+    campaign = make_campaign(objective=objective(budget=2000.0), loss=Loss(), qc=())
+    with pytest.raises(DesignError, match=r"\(6 results, 20 targeted places\) costs 2350 EUR"):
+        size(campaign, make_spread(), frame)
