@@ -1,14 +1,15 @@
 """The arithmetic of the estimate, step by step."""
 
 import math
-from collections.abc import Sequence
 
 from fieldplan.base.working import Quantity, Step
 from fieldplan.design.model import StratumEstimate, StratumValues
 from fieldplan.estimate.means import Means
 from fieldplan.stats.intervals import t_quantile
+from fieldplan.stats.stratified import variance_parts
 
 _RANDOM = "Cochran 1977, Sampling Techniques, 3rd ed., ch. 2"
+_SATTERTHWAITE = "Satterthwaite 1946, Biometrics Bulletin 2:110"
 _STRATA = "Cochran 1977, Sampling Techniques, 3rd ed., ch. 5"
 
 
@@ -28,7 +29,8 @@ def working(means: Means, unit: str) -> tuple[Step, ...]:
     several = len(means.values) > 1
     steps: list[Step] = []
     for values, found in zip(means.values, means.half.strata, strict=True):
-        steps += _stratum_steps(values, found, unit, label=values.stratum if several else "")
+        label = values.stratum if several else ""
+        steps += _stratum_steps(means, values, found, unit=unit, label=label)
     if several:
         steps.append(_weighted_mean(means, unit))
     steps.append(_standard_error(means, unit))
@@ -38,7 +40,7 @@ def working(means: Means, unit: str) -> tuple[Step, ...]:
 
 
 def _stratum_steps(
-    values: StratumValues, found: StratumEstimate, unit: str, *, label: str
+    means: Means, values: StratumValues, found: StratumEstimate, *, unit: str, label: str
 ) -> list[Step]:
     mark = f" {label}" if label else ""
     of = f" in {label}" if label else ""
@@ -59,7 +61,8 @@ def _stratum_steps(
         )
     ]
     if n < 2:
-        return steps
+        borrowed = found.variance_borrowed
+        return [*steps, _borrowed_spread(means, found, unit)] if borrowed else steps
     squares = float(((values.values - found.mean) ** 2).sum())
     spread = Step(
         symbol=f"s{mark}",
@@ -75,6 +78,29 @@ def _stratum_steps(
         source=_RANDOM,
     )
     return [*steps, spread]
+
+
+def _borrowed_spread(means: Means, found: StratumEstimate, unit: str) -> Step:
+    """Show the pooled s that a stratum with one result borrows."""
+    inputs = tuple(
+        quantity
+        for entry in means.half.strata
+        if entry.n > 1
+        for quantity in (
+            Quantity(f"s {entry.stratum}", "standard deviation", entry.sd, unit),
+            Quantity(f"n {entry.stratum}", "results", entry.n),
+        )
+    )
+    return Step(
+        symbol=f"s {found.stratum}",
+        meaning=f"Standard deviation in {found.stratum}, borrowed: pooled from the other strata",
+        formula="s = √(Σ (n − 1)·s² / Σ (n − 1))",
+        inputs=inputs,
+        unrounded=found.sd,
+        rounded=found.sd,
+        unit=unit,
+        source="the rule single_result = borrow-spread",
+    )
 
 
 def _weighted_mean(means: Means, unit: str) -> Step:
@@ -124,7 +150,7 @@ def _interval_steps(means: Means, unit: str) -> list[Step]:
     t = t_quantile(known, confidence=rules.confidence, kind=rules.interval)
     mean, error = means.half.mean, means.half.standard_error
     level = (1 + rules.confidence) / 2 if rules.interval == "two-sided" else rules.confidence
-    steps = [_freedom_step(means.half.strata, known, unit)] if math.isfinite(known) else []
+    steps = [_freedom_step(means, unit)] if math.isfinite(known) else []
     steps.append(
         Step(
             symbol="t",
@@ -153,29 +179,43 @@ def _interval_steps(means: Means, unit: str) -> list[Step]:
     return steps
 
 
-def _freedom_step(strata: Sequence[StratumEstimate], known: float, unit: str) -> Step:
+def _freedom_step(means: Means, unit: str) -> Step:
+    strata, known = means.half.strata, means.half.degrees_of_freedom
     if len(strata) == 1:
         inputs: tuple[Quantity, ...] = (Quantity("n", "results", strata[0].n),)
         return Step("df", "Degrees of freedom", "df = n − 1", inputs, known, known, "", _RANDOM)
+    parts = variance_parts(
+        [entry.sd**2 for entry in strata],
+        [entry.n for entry in strata],
+        [entry.weight for entry in strata],
+        [values.population for values in means.values],
+    )
+    borrows = any(entry.variance_borrowed for entry in strata)
+    meaning = "part of the variance of the mean" + (", with what it lends" if borrows else "")
     inputs = tuple(
         quantity
-        for entry in strata
+        for entry, part in zip(strata, parts, strict=True)
+        if part > 0
         for quantity in (
-            Quantity(
-                f"part {entry.stratum}",
-                "part of the variance of the mean",
-                entry.weight**2 * entry.variance_of_mean,
-                f"({unit})²",
-            ),
+            Quantity(f"part {entry.stratum}", meaning, part, f"({unit})²"),
             Quantity(f"n {entry.stratum}", "results of the stratum", entry.n),
         )
     )
+    rule, source = "from the parts W²·s²/n of the variance", _SATTERTHWAITE
+    if borrows:
+        source += "; what is lent: derived here, no published source"
+        rule = (
+            "over the strata with 2 results or more. Each part is s²·(W²/n + B·(n − 1)/Σ(n − 1)): "
+            "its own, and its share of B, the sum of W²/n over the strata that borrow"
+        )
+    if any(values.population is not None for values in means.values):
+        rule += "; for a list every W²/n is times (1 − n/N)"
     return Step(
         symbol="df",
-        meaning="Degrees of freedom by Satterthwaite, from the parts W²·s²/n of the variance",
+        meaning=f"Degrees of freedom by Satterthwaite, {rule}",
         formula="df = (Σ part)² / Σ (part² / (n − 1))",
         inputs=inputs,
         unrounded=known,
         rounded=known,
-        source="Satterthwaite 1946, Biometrics Bulletin 2:110",
+        source=source,
     )

@@ -227,16 +227,56 @@ def stratified_mean(
             message = f"stratum {position} of {len(numbers)} has no result, so no mean."
             raise DesignError(message)
     mean = math.fsum(w * float(m) for w, m in zip(shares, means, strict=True))
-    factors = variance_factors(shares, numbers, populations)
+    parts = variance_parts(spread, numbers, shares, populations)
+    error = math.sqrt(math.fsum(parts))
+    return mean, error, satterthwaite(parts, [max(number - 1, 1.0) for number in numbers])
+
+
+def variance_parts(
+    variances: Iterable[float],
+    counts: Iterable[float],
+    weights: Iterable[float],
+    populations: Sequence[int | None],
+) -> list[float]:
+    """Split the variance of a stratified mean among the strata whose results it rests on.
+
+    Parameters
+    ----------
+    variances : iterable of float, length h
+        s² of each stratum; not read where there is one result.
+    counts, weights : iterable of float, length h
+    populations : sequence of (int or None), length h
+
+    Returns
+    -------
+    list of float
+        0 for a stratum with one result, which borrows; the others hold what they lend.
+
+    Raises
+    ------
+    DesignError
+        A stratum must borrow, and none has 2 results.
+
+    Notes
+    -----
+    s² (W² (1 − n/N) / n + B (n − 1) / Σ (n − 1)), where B sums W² (1 − n/N) / n over the strata
+    that borrow and Σ runs over those that have 2 results or more.
+
+    Examples
+    --------
+    >>> variance_parts([4.0, 0.0], [5, 1], [0.5, 0.5], [None, None])
+    [1.2, 0.0]
+    """
+    numbers = [float(count) for count in counts]
+    spread = [float(variance) for variance in variances]
+    factors = variance_factors(weights, numbers, populations)
     known = [number - 1 for number in numbers]
     borrowed = math.fsum(f for f, free in zip(factors, known, strict=True) if free == 0)
     if borrowed > 0:
         pooled_variance(spread, numbers)  # refuses when there is nothing to borrow from
         total = math.fsum(known)
         factors = [f + borrowed * free / total for f, free in zip(factors, known, strict=True)]
-    parts = [
+    return [
         factor * variance if free > 0 else 0.0
         for factor, variance, free in zip(factors, spread, known, strict=True)
     ]
-    error = math.sqrt(math.fsum(parts))
-    return mean, error, satterthwaite(parts, [max(free, 1.0) for free in known])

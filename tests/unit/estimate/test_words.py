@@ -17,11 +17,12 @@ from fieldplan.estimate.means import means_by
 from fieldplan.estimate.model import Answers, Interval
 from fieldplan.estimate.population import share_not_reached
 from fieldplan.estimate.text import results_paragraph
+from fieldplan.frame.model import Stratum
 from fieldplan.plan.model import Plan
 from fieldplan.returns.model import LostLocation, Returns
 from fieldplan.stats.shape import t_coverage
 from fieldplan.stats.summary import sample_skewness
-from tests.factories import make_estimate, make_plan, make_returns
+from tests.factories import make_estimate, make_list_frame, make_plan, make_returns
 from tests.unit.estimate.known import WELLS, list_plan, non_detect, result, returned, strata_plan
 
 VERDICTS = ("safe", "clean", "pass", "compliant", "approved", "fail")
@@ -192,6 +193,51 @@ def test_the_working_ends_in_the_printed_numbers() -> None:
     assert sum(shares) ** 0.5 == pytest.approx(answer.mean.standard_error, rel=1e-9)
     census = estimate(list_plan(layout="census", units=8), wells())
     assert [step.symbol for step in census.steps] == ["x̄", "s", "SE"]
+
+
+@pytest.mark.parametrize("population", [None, 30])
+def test_degrees_of_freedom_with_a_borrowed_spread_follow_from_what_is_printed(
+    population: int | None,
+) -> None:
+    """A stranger recomputes df, SE and the borrowed s from the printed inputs alone.
+
+    By hand, from the raw values: B of the stratum with one result is shared out to the others as
+    (n - 1) / Σ (n - 1), since the pooled variance is Σ (n - 1) s² / Σ (n - 1).
+    """
+    values = {"a": (10.0, 12.0, 17.0, 30.0), "b": (40.0, 44.0, 61.0), "c": (90.0,)}
+    weights = {"a": 0.5, "b": 0.3, "c": 0.2}
+    plan = strata_plan(weights, dict.fromkeys(weights, 9.0), {"a": 4, "b": 3, "c": 2})
+    strata = plan.frame.strata
+    if population is not None:
+        unit = make_list_frame().strata[0].units[0]
+        strata = tuple(
+            Stratum(s.name, population, s.weight, None, (unit,) * population) for s in strata
+        )
+    plan = replace(plan, frame=replace(plan.frame, strata=strata))
+    results = [
+        result(f"{name}{n}", v, stratum=name)
+        for name, numbers in values.items()
+        for n, v in enumerate(numbers)
+    ]
+    answer = estimate(plan, returned(results), overrides={"single_result": "borrow-spread"})
+    steps = {step.symbol: step for step in answer.steps}
+    printed = {q.symbol: q.value for q in steps["df"].inputs}
+    assert printed.keys() == {"part a", "n a", "part b", "n b"}
+    parts = [(printed[f"part {name}"], printed[f"n {name}"]) for name in "ab"]
+    known = sum(p for p, _ in parts) ** 2 / sum(p * p / (n - 1) for p, n in parts)
+    assert answer.mean.degrees_of_freedom == pytest.approx(known, rel=1e-12)
+    assert sum(p for p, _ in parts) ** 0.5 == pytest.approx(answer.mean.standard_error, rel=1e-12)
+    left = {name: 1 - len(v) / population if population else 1 for name, v in values.items()}
+    lent = 0.2**2 * left["c"]
+    for name, share in (("a", 3 / 5), ("b", 2 / 5)):
+        n, spread = len(values[name]), float(np.var(values[name], ddof=1))
+        own = weights[name] ** 2 * left[name] / n
+        assert printed[f"part {name}"] == pytest.approx(spread * (own + lent * share), rel=1e-12)
+    pooled = {q.symbol: q.value for q in steps["s c"].inputs}
+    total = sum((pooled[f"n {k}"] - 1) * pooled[f"s {k}"] ** 2 for k in "ab")
+    assert steps["s c"].unrounded == pytest.approx((total / 5) ** 0.5, rel=1e-12)
+    assert "B·(n − 1)/Σ(n − 1)" in steps["df"].meaning
+    assert "no published source" in steps["df"].source
 
 
 def test_the_json_is_plain_and_whole() -> None:
