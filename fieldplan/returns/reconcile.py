@@ -25,6 +25,8 @@ from fieldplan.returns.substitutes import Substitution, substitute
 
 TARGETED = "Targeted places were chosen by judgement and never enter the mean."
 OUTSIDE = "The crew found that the place lies outside the population."
+OF_A_MOVE = frozenset({"no-access", "obstructed", "unsafe", "dry", "frozen"})
+"""Reasons that, beside taken = yes, say why a place was moved and not why its result is missing."""
 NOT_NEEDED = "Alternate that stands in for no lost location of its stratum."
 
 
@@ -263,7 +265,10 @@ def _why_lost(fact: FieldFacts) -> str:
     if fact.outside:
         return "outside"
     if fact.taken:
-        return fact.reason or "taken, but no result came from the laboratory"
+        if fact.reason and fact.reason not in OF_A_MOVE:
+            return fact.reason
+        why = f" ({fact.reason})" if fact.reason else ""
+        return f"taken{why}, but no result came from the laboratory"
     if fact.taken is False:
         return fact.reason or "not taken, no reason given"
     return fact.reason or "no result, and the field return does not say why"

@@ -5,6 +5,7 @@ from dataclasses import replace
 import pytest
 
 from fieldplan.base.errors import LabError
+from fieldplan.estimate.population import share_not_reached
 from fieldplan.returns import reconcile
 from fieldplan.returns.model import LocationResult, Returns
 from fieldplan.samples.model import Sample, Samples
@@ -161,6 +162,24 @@ def test_a_move_into_another_stratum_keeps_the_stratum_it_was_drawn_in() -> None
     assert (entry.stratum, entry.used) == ("meadow", True)
     assert "QF-A-04 as taken lies in stratum yard. It was drawn in meadow" in notes(returns)
     assert "outside the population as mapped" in notes(met(QF_B_01=at(150, -9)))
+
+
+def test_a_moved_jar_without_a_result_is_no_ground_that_could_not_be_reached() -> None:
+    """Taken beside the obstacle: the ground was sampled, the laboratory's row is what is missing.
+
+    A place that was not taken keeps its reason, and so does a broken jar.
+    """
+    plan = make_plan()
+    cells = {name: cell for name, cell in CELLS.items() if name != "QF-B-03"}
+    moved = {"taken": True, "reason": "obstructed"}
+    (lost,) = met(cells, QF_B_03=moved).lost
+    assert lost.reason == "taken (obstructed), but no result came from the laboratory"
+    assert share_not_reached(plan, [lost]) == 0
+    (lost,) = met(cells, QF_B_03={"taken": False, "reason": "obstructed"}).lost
+    assert lost.reason == "obstructed"
+    assert share_not_reached(plan, [lost]) == pytest.approx(6800 / 23600 / 5)
+    for reason in ("broken", "no-recovery"):
+        assert met(cells, QF_B_03={"taken": True, "reason": reason}).lost[0].reason == reason
 
 
 def test_a_place_found_to_lie_outside_the_population_is_left_out() -> None:
