@@ -4,7 +4,7 @@ from collections.abc import Callable, Iterator
 from typing import Any, TypeGuard
 
 from fieldplan.campaign.facts import FACTS
-from fieldplan.campaign.problems import Problem, near_miss, shown
+from fieldplan.campaign.problems import Problem, accepted, meaning, near_miss, shown
 from fieldplan.campaign.references import tables
 from fieldplan.campaign.screen import is_fill_in
 
@@ -126,6 +126,7 @@ def _objectives(data: Data) -> Iterator[Problem]:
             yield Problem(("objective", i, *given[1:2]), text)
         if "budget" in given:
             yield from _budget(data, objective, i)
+        yield from _assurance(objective, i)
         if "relative_half_width" in given and not _mean_is_known(data, objective):
             text = (
                 "a share of the mean needs a mean: a pilot, or expected_mean beside the typed "
@@ -139,6 +140,25 @@ def _objectives(data: Data) -> Iterator[Problem]:
             "Mark the one that decides n."
         )
         yield Problem(("objective", marked[1] if marked else 0, "decides_n"), text)
+
+
+def _assurance(objective: Data, i: int) -> Iterator[Problem]:
+    """Ask for an assurance where a target can be missed, and refuse it where none can."""
+    if "budget" in objective:
+        for key in ("assurance", "assurance_chosen_by"):
+            if key in objective:
+                text = (
+                    "a budget sets no precision that n could miss, so there is nothing to be "
+                    f"sure of (got {shown(objective[key])}). Take this key out."
+                )
+                yield Problem(("objective", i, key), text)
+    elif "assurance" not in objective:
+        takes = accepted("Objective", "assurance")
+        text = (
+            f'missing; {meaning("objective", "assurance")}. Takes {takes}; "FILL IN" while it is '
+            "not known."
+        )
+        yield Problem(("objective", i, "assurance"), text)
 
 
 def _budget(data: Data, objective: Data, i: int) -> Iterator[Problem]:
@@ -210,7 +230,7 @@ def _deciding(data: Data) -> Iterator[Problem]:
         text = f"no [[sigma]] for {shown(analyte)}, whose objective decides n. Add one."
         yield Problem(("sigma",), text)
     assurance = objectives[i].get("assurance")
-    if not _is_number(assurance) or not entries:
+    if not _is_number(assurance) or not entries or "budget" in objectives[i]:
         return
     if all("value" in entry and not {"pilot", "from_results"} & set(entry) for entry in entries):
         text = (

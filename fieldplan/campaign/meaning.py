@@ -81,7 +81,9 @@ MEANING: dict[str, str] = {
     "objective.half_width": "the largest distance from the mean to an end of its interval",
     "objective.relative_half_width": "the half-width as a share of the mean: 0.20 for 20 %",
     "objective.budget": "the money that may be spent, in the currency of [cost]",
-    "objective.assurance": "how sure it shall be that n is enough, though sigma is an estimate",
+    "objective.assurance": (
+        "how sure it shall be that n is enough, though sigma is an estimate; not beside a budget"
+    ),
     "objective.assurance_chosen_by": "who chose the assurance; printed beside it",
     "objective.decides_n": "whether this objective decides n; needed on one of several",
     # [[sigma]]

@@ -117,7 +117,10 @@ class Targeted(Table):
 
 
 class Objective(Table):
-    """``[[objective]]``: the question, its target, and the assurance that somebody chose."""
+    """``[[objective]]``: the question, its target, and the assurance that somebody chose.
+
+    A budget has no assurance: it sets no precision that n could miss.
+    """
 
     design: str | None = None
     analyte: str | None = None
@@ -126,7 +129,7 @@ class Objective(Table):
     half_width: PositiveNumber | None = None
     relative_half_width: Annotated[float, Field(gt=0, lt=10)] | None = None
     budget: PositiveNumber | None = None
-    assurance: Annotated[float, Field(ge=0.5, lt=1)] | Literal["plain"]
+    assurance: Annotated[float, Field(ge=0.5, lt=1)] | Literal["plain"] | None = None
     assurance_chosen_by: str = ""
     decides_n: bool = False
 

@@ -223,8 +223,10 @@ def _objective(answers: Answers) -> list[str]:
         lines.append("# How far off the mean may be: half_width, or one of standard_error,")
         lines.append("# relative_half_width and budget in its place.")
     comment = " ".join(comments[kind].split())
+    lines.append(_line(kind, answers.target, comment))
+    if kind == "budget":  # it sets no precision that n could miss
+        return lines
     lines += [
-        _line(kind, answers.target, comment),
         '# How sure it shall be that n is enough: a share such as 0.80, or "plain" for the bare',
         "# formula, which is enough in about half of campaigns.",
         _line("assurance", answers.assurance),

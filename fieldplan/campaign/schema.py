@@ -40,6 +40,8 @@ def campaign_schema() -> dict[str, Any]:
     _facts(tables["FieldTable"]["properties"]["facts"])
     # The reader makes the id of the only analyte from its name.
     tables["Analyte"]["required"].remove("id")
+    # An assurance belongs to every target but a budget, which nothing can miss.
+    tables["Objective"]["oneOf"] = [{"required": ["assurance"]}, {"required": ["budget"]}]
     return {
         "$schema": "https://json-schema.org/draft/2020-12/schema",
         "title": TITLE,

@@ -87,7 +87,9 @@ def _asked(campaign: Campaign) -> list[str]:
     objective, analyte = campaign.deciding_objective, campaign.deciding_analyte
     what = analyte.name or analyte.id
     chosen = f" ({objective.assurance_chosen_by})" if objective.assurance_chosen_by else ""
-    if objective.assurance == "plain":
+    if objective.assurance is None:
+        sure = "The budget decides n; no precision is asked for that it could miss."
+    elif objective.assurance == "plain":
         sure = f"The bare formula decides n{chosen}: it is enough in about half of campaigns."
     else:
         sure = f"n shall be enough with a chance of {objective.assurance * 100:g} %{chosen}."

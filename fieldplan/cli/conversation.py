@@ -167,6 +167,8 @@ def _about_the_target(answers: Answers, folder: Path) -> Answers:
 
 
 def _about_the_assurance(answers: Answers) -> Answers:
+    if answers.target_kind == "budget":
+        return answers
     question = (
         "How sure shall it be that the number is enough? A share such as 0.80, or 'plain' for "
         "the bare formula, which is enough in about half of campaigns"

@@ -127,6 +127,10 @@ def _from_options(known: Answers, folder: Path, given: dict[str, Any]) -> Start:
         if given[option] is not None and given["sigma"] is None:
             message = f"{_dashed(option)} needs --sigma."
             raise click.UsageError(message)
+    for option in ("assurance", "chosen_by"):
+        if given[option] is not None and targets == "budget":
+            message = f"{_dashed(option)} has nothing to hold to beside --budget; leave it out."
+            raise click.UsageError(message)
     assurance, pilot = given["assurance"], given["pilot"]
     answers = replace(
         known,

@@ -90,7 +90,7 @@ def ask(
         target=kind,
         value=value,
         mean=mean,
-        assurance=None if isinstance(assurance, str) else assurance,
+        assurance=None if assurance == "plain" else assurance,
         assurance_chosen_by=objective.assurance_chosen_by,
         confidence=campaign.rules.confidence,
         interval=campaign.rules.interval,

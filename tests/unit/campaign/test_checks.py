@@ -3,10 +3,16 @@
 import pytest
 
 from fieldplan.campaign import alarms
+from tests.several_analytes import campaign_with_zinc
 from tests.unit.campaign.files import bent, inspected, told
 
 SIGMA = ('pilot = "pilot.csv"', 'value = 27.57\nsource = "ASSUMED"')
 LIST = ('kind = "area"\nboundary = "boundary.geojson"', 'kind = "list"\nlist_file = "wells.csv"')
+SURE = ('assurance = 0.80\nassurance_chosen_by = "L. Fenn"\n', "")
+PRICED = [
+    ("standard_error = 6.0", "budget = 900"),
+    ("[draw]", '[cost]\ncurrency = "EUR"\nper_analysis = 9\n[draw]'),
+]
 LEVEL = 'unit = "mg/kg"\naction_level = 150\n'
 
 BROKEN = [
@@ -21,17 +27,33 @@ BROKEN = [
         "relative_half_width, budget (got standard_error, half_width). Keep one.",
     ),
     (
-        [("standard_error", "budget")],
+        [("standard_error", "budget"), SURE],
         "20: objective.budget: a budget needs [cost] with currency, per_location and "
         "per_analysis. Add it.",
     ),
     (
-        [("standard_error", "budget"), ("[draw]", '[cost]\ncurrency = "EUR"\n[draw]')],
-        "27: cost: a budget needs the cost of a location. Give per_location or per_analysis.",
+        [*PRICED, (SURE[0], "assurance = 0.80\n")],
+        "21: objective.assurance: a budget sets no precision that n could miss, so there is "
+        "nothing to be sure of (got 0.8). Take this key out.",
+    ),
+    (
+        [*PRICED, (SURE[0], 'assurance = "plain"\n')],
+        "21: objective.assurance: a budget sets no precision that n could miss, so there is "
+        'nothing to be sure of (got "plain"). Take this key out.',
+    ),
+    (
+        [*PRICED, (SURE[0], 'assurance_chosen_by = "L. Fenn"\n')],
+        "21: objective.assurance_chosen_by: a budget sets no precision that n could miss, so there "
+        'is nothing to be sure of (got "L. Fenn"). Take this key out.',
+    ),
+    (
+        [("standard_error", "budget"), SURE, ("[draw]", '[cost]\ncurrency = "EUR"\n[draw]')],
+        "25: cost: a budget needs the cost of a location. Give per_location or per_analysis.",
     ),
     (
         [
             ("standard_error = 6.0", "budget = 500"),
+            SURE,
             ("[draw]", '[cost]\ncurrency = "EUR"\nmobilisation = 500\nper_location = 9\n[draw]'),
         ],
         "20: objective.budget: not above the mobilisation of 500 (got 500). Raise it.",
@@ -206,8 +228,8 @@ KEPT = [
     [SIGMA, ("0.80", '"plain"')],
     [(SIGMA[0], SIGMA[1] + "\nfrom_results = 8")],
     [("standard_error = 6.0", "relative_half_width = 0.2")],
-    [("standard_error = 6.0", "budget = 900"),
-     ("[draw]", '[cost]\ncurrency = "EUR"\nper_analysis = 9\n[draw]')],
+    [*PRICED, SURE],
+    [*PRICED, SURE, SIGMA],
     [LIST],
     [LIST, ('"simple-random"', '"census"')],
     [LIST, ('"simple-random"', '"stratified"'), ("pilot =", 'stratum = "deep"\npilot =')],
@@ -237,6 +259,15 @@ def test_reporting_limit_above_the_action_level_is_an_alarm_and_no_error(tmp_pat
         "Lead: the reporting limit of 200 mg/kg lies above the action level of 150 mg/kg, so a "
         "result below the limit does not tell on which side of the level it lies."
     )
+
+
+def test_every_analyte_is_looked_at_for_the_alarm():
+    """One that does not decide n is compared with its level all the same."""
+    campaign = campaign_with_zinc()
+    lead, zinc = campaign.analyte
+    high = zinc.model_copy(update={"reporting_limit": 400.0})
+    (sentence,) = alarms(campaign.model_copy(update={"analyte": (lead, high)}))
+    assert sentence.startswith("Zinc: the reporting limit of 400 µg/g lies above the action level")
 
 
 def test_limit_at_the_level_raises_no_alarm(tmp_path):

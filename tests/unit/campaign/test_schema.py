@@ -77,6 +77,8 @@ def test_demo_sites_are_among_the_files_tested():
         (('"area"', '"line"'), "$.frame[0].kind"),
         (("[[analyte]]", "[analyte]"), "$.analyte"),
         (("0.80", "80"), "$.objective[0].assurance"),
+        (("assurance = 0.80\n", ""), "$.objective[0]"),
+        (("standard_error = 6.0", "budget = 900"), "$.objective[0]"),
     ],
 )
 def test_schema_finds_what_the_reader_refuses(change, path):

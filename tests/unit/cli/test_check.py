@@ -52,6 +52,30 @@ def test_sound_campaign_is_told_in_sentences(folder):
     assert max(map(len, result.stdout.splitlines())) <= 80
 
 
+def test_what_does_not_decide_n_is_told_apart(folder):
+    """An analyte beside the deciding one is either asked about or only measured."""
+    more = (
+        'unit = "mg/kg"\n\n[[analyte]]\nid = "zinc"\nname = "Zinc"\nunit = "mg/kg"\n'
+        '\n[[analyte]]\nid = "tin"\nunit = "mg/kg"'
+    )
+    objective = (
+        'analyte = "lead"\ndecides_n = true\nquestion = "mean"\nstandard_error = 6.0\n'
+        'assurance = 0.80\n\n[[objective]]\nanalyte = "zinc"\nquestion = "mean"\nhalf_width = 20'
+    )
+    text = bent(
+        ('name = "Lead"', 'id = "lead"\nname = "Lead"'),
+        ('unit = "mg/kg"', more),
+        ('question = "mean"\nstandard_error = 6.0', objective),
+        ("[[sigma]]", '[[sigma]]\nanalyte = "lead"'),
+    )
+    said = words(check(folder, text).stdout)
+    assert (
+        "Also asked: the mean of Zinc with a half-width of at most 20 mg/kg (95 %, two-sided); it "
+        "does not decide n." in said
+    )
+    assert "Measured too, without a target: tin." in said
+
+
 @pytest.mark.parametrize("word", ["valid", "pass", "safe", "compliant", "approved", " ok"])
 def test_check_gives_no_verdict(folder, word):
     """It says what was understood; whether that is right is for people to say."""
@@ -69,9 +93,11 @@ def test_check_gives_no_verdict(folder, word):
         (
             [
                 ("standard_error = 6.0", "budget = 900"),
+                ('assurance = 0.80\nassurance_chosen_by = "L. Fenn"\n', ""),
                 ("[draw]", '[cost]\ncurrency = "EUR"\nper_analysis = 9\n[draw]'),
             ],
-            "the mean of Lead with what 900 EUR can buy",
+            "the mean of Lead with what 900 EUR can buy; locations drawn at random, seed 12. The "
+            "budget decides n; no precision is asked for that it could miss.",
         ),
         ([("0.80", '"plain"')], "The bare formula decides n (L. Fenn): it is enough in about half"),
     ],

@@ -82,6 +82,17 @@ def test_each_target_is_written_under_its_key(folder, target):
     assert written()["objective"][0][target[2:].replace("-", "_")] == 9
 
 
+@pytest.mark.parametrize("option", [("--assurance", "0.8"), ("--chosen-by", "L. Fenn")])
+def test_a_budget_takes_no_assurance(folder, option):
+    """It sets no precision that n could miss, so the file has none and the option is refused."""
+    new("--budget", "900")
+    assert "assurance" not in written()["objective"][0]
+    result = new("--budget", "900", *option, "--out", "other.toml")
+    assert result.exit_code == 2
+    assert f"{option[0]} has nothing to hold to beside --budget; leave it out." in result.output
+    assert not (folder / "other.toml").exists()
+
+
 def test_relative_target_of_a_typed_sigma_asks_for_the_mean(folder):
     """A share of an unknown mean is no number."""
     result = new("--relative-half-width", "0.2", "--sigma", "4", "--sigma-source", "ASSUMED")
@@ -317,7 +328,6 @@ def test_circle_can_be_asked_for_in_the_conversation(folder):
     """Centre first, then the radius."""
     conversation(
         "T", "", "", "around", "52.1, -1.9", "150", "Lead", "mg/kg", "", "", "budget 900", "y",
-        "", "",
     )  # fmt: skip
     assert written()["frame"][0]["boundary_assumed"] is True
     assert written()["cost"]["currency"] == "FILL IN"
