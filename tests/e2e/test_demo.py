@@ -1,5 +1,6 @@
 """The demo runs the whole job from an empty folder."""
 
+import csv
 from pathlib import Path
 
 import pytest
@@ -24,6 +25,26 @@ def test_the_demo_ends_with_an_issued_packet_and_a_results_sheet(
     again = run("demo", name)
     assert again.exit_code == 0, again.output
     assert (site / f"{PLAN_IDS[name]}-r02").is_dir()
+
+
+def test_the_soil_demo_answers_for_zinc_too(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Two analytes, one file: a sentence on the screen, a sheet, a map and rows of its own."""
+    monkeypatch.chdir(tmp_path)
+    outcome = run("demo", "hobbin-ley")
+    assert outcome.exit_code == 0, outcome.output
+    assert outcome.stdout.count("The mean of zinc over Hobbin Ley (invented) is ") == 1
+    results = tmp_path / "fieldplan-demo" / "hobbin-ley" / "HL-r01-results-01"
+    for name in ("results_sheet-zinc.html", "results_sheet-zinc.pdf", "results_map-zinc.png"):
+        assert (results / name).stat().st_size > 1000
+    main = (results / "results_sheet.html").read_text(encoding="utf-8")
+    assert "results_sheet-zinc" in main
+    with (results / "results.csv").open(encoding="utf-8-sig", newline="") as stream:
+        rows = list(csv.DictReader(stream))
+    places = [(row["location_id"], row["analyte"]) for row in rows]
+    assert len(set(places)) == len(places)
+    assert {analyte for _, analyte in places} == {"lead", "zinc"}
 
 
 def test_an_unknown_demo_is_answered_with_the_known_ones(tmp_path: Path) -> None:

@@ -1,21 +1,23 @@
 """The demo sites hold together: what is committed is what the tool draws and reads today."""
 
+import csv
 import importlib.util
 import io
 from datetime import date
 from functools import cache
 from pathlib import Path
+from statistics import fmean, stdev
 from types import ModuleType
 
 import pytest
 
 from fieldplan.campaign.read import read_campaign
-from fieldplan.estimate import estimate
+from fieldplan.estimate import estimate, estimate_all
 from fieldplan.estimate.model import Estimate
 from fieldplan.lab import read_lab
 from fieldplan.plan.make import make_plan
 from fieldplan.plan.model import Plan
-from fieldplan.returns import read_field_return, read_matches, reconcile
+from fieldplan.returns import read_field_return, read_matches, reconcile, reconcile_all
 from fieldplan.returns.model import Returns
 
 SITES = Path(__file__).resolve().parents[2] / "demo_sites"
@@ -116,6 +118,35 @@ def test_the_estimate_of_a_demo_meets_its_level_and_says_who_decides(name):
     answer = estimate_of(name)
     assert answer.mean.standard_error > 0
     assert "decides what follows" in answer.level_sentence
+
+
+def test_zinc_of_the_soil_site_by_hand():
+    """From the laboratory's cells with the standard library alone, retyped ids put right."""
+    plan, returned = plan_of("hobbin-ley"), SITES / "hobbin-ley" / "returned"
+    received = reconcile_all(
+        plan,
+        read_lab(returned / "lab_results.csv", plan.campaign),
+        read_field_return(returned / "field_return.csv", plan),
+        confirmed=read_matches(returned / "matches.csv"),
+    )
+    (zinc,) = estimate_all(plan, received).others
+    place_of = {s.sample_id.replace("-", "").lower(): s.location_id for s in plan.samples.samples}
+    values: dict[str, list[float]] = {}
+    with (returned / "lab_results.csv").open(encoding="utf-8-sig", newline="") as stream:
+        for row in csv.DictReader(stream):
+            name = row["Sample ID"].replace(" 0", "").replace("-", "").lower()
+            if row["Analyte"].startswith("Zinc") and place_of.get(name):
+                values.setdefault(place_of[name], []).append(float(row["As reported"]))
+    strata: dict[str, list[float]] = {}
+    for place in plan.locations.places:
+        if place.location_class != "targeted" and place.location_id in values:
+            strata.setdefault(place.stratum, []).append(fmean(values[place.location_id]))
+    weights = {stratum.name: stratum.weight for stratum in plan.frame.strata}
+    mean = sum(weights[name] * fmean(found) for name, found in strata.items())
+    error = sum((weights[n] * stdev(v)) ** 2 / len(v) for n, v in strata.items()) ** 0.5
+    assert zinc.mean.mean == pytest.approx(mean, rel=1e-9)
+    assert zinc.mean.standard_error == pytest.approx(error, rel=1e-9)
+    assert received.needs_you == ()
 
 
 def test_without_confirmed_matches_the_retyped_ids_wait_for_a_person():

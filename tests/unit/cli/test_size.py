@@ -1,9 +1,11 @@
 """What ``fieldplan size`` prints, and how it refuses."""
 
+import csv
 import json
 import subprocess
 import sys
 from pathlib import Path
+from statistics import fmean, stdev
 
 import pytest
 from click.testing import Result
@@ -245,6 +247,27 @@ def test_demo_campaigns_are_sized(site: str) -> None:
     assert result.exception is None
     assert result.stdout.startswith("Visit ")
     assert "The chance that" in result.stdout
+
+
+def test_the_second_analyte_of_a_demo_gets_its_standard_error_in_a_sentence() -> None:
+    """From the pilot's cells with the standard library alone: √(Σ W² s²/n)."""
+    site = DEMO_SITES / "hobbin-ley"
+    found = numbers(str(site / "campaign.toml"))
+    places: dict[str, dict[str, list[float]]] = {}
+    with (site / "pilot.csv").open(encoding="utf-8", newline="") as stream:
+        for row in csv.DictReader(stream):
+            if row["analyte"] == "Zinc":
+                stratum = places.setdefault(row["stratum"], {})
+                stratum.setdefault(row["location_id"], []).append(float(row["as_reported"]))
+    total = 0.0
+    for entry_ in found["strata"]:  # type: ignore[attr-defined]
+        values = [fmean(pair) for pair in places[entry_["stratum"]].values()]
+        total += (entry_["weight"] * stdev(values)) ** 2 / entry_["n"]
+    (zinc,) = found["others"]  # type: ignore[misc]
+    assert zinc["standard_error"] == pytest.approx(total**0.5, rel=1e-9)
+    printed = " ".join(run(str(site / "campaign.toml")).stdout.split())
+    assert zinc["sentence"] in printed
+    assert f"a standard error of {total**0.5:.2f} mg/kg" in printed
 
 
 def test_bare_numbers_load_no_heavy_library() -> None:

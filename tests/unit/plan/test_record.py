@@ -8,8 +8,9 @@ from pathlib import Path
 import pytest
 
 from fieldplan.base.errors import RecordError
-from fieldplan.plan.record import plan_from_record, plan_to_record, read_plan
+from fieldplan.plan.record import plan_from_record, plan_to_record, read_plan, seal
 from tests.factories import make_list_frame, make_plan
+from tests.several_analytes import plan_with_zinc
 
 
 def through_json(record: dict[str, object]) -> dict[str, object]:
@@ -24,6 +25,18 @@ def test_a_plan_survives_its_record_unchanged(frame: object) -> None:
     plan = make_plan() if frame is None else make_plan(frame=frame)
     again = plan_from_record(through_json(plan_to_record(plan)))
     assert again == plan
+
+
+def test_a_plan_of_several_analytes_survives_and_one_recorded_without_others_is_read() -> None:
+    """What n buys for others is part of the record; records from before it came still serve."""
+    plan = plan_with_zinc()
+    record = through_json(plan_to_record(plan))
+    assert plan_from_record(record) == plan
+    size = record["size"]
+    assert isinstance(size, dict)
+    del size["others"]
+    record["seal"] = seal(record)
+    assert plan_from_record(record).size.others == ()
 
 
 def test_an_issued_plan_keeps_name_and_date() -> None:
