@@ -54,6 +54,33 @@ class LabRow:
 
 
 @dataclass(frozen=True)
+class LeftOutRow:
+    """A row of the laboratory's file that is not in any mean, and why, as it was written.
+
+    Parameters
+    ----------
+    row : int
+    written_id : str
+        Of the sample, else of the location.
+    analyte : str
+    as_reported : str
+        With its unit.
+    why : str
+    """
+
+    row: int
+    written_id: str
+    analyte: str
+    as_reported: str
+    why: str
+
+    @property
+    def in_words(self) -> str:
+        """Its id, value and row, for a sentence."""
+        return f"'{self.written_id}' with '{self.as_reported}' (row {self.row})"
+
+
+@dataclass(frozen=True)
 class LabTable:
     """All rows of one file, in file order, with the file's name, its hash and reading notes."""
 

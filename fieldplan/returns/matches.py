@@ -13,7 +13,8 @@ from fieldplan.lab.tables import read_tables
 from fieldplan.plan.model import Plan
 from fieldplan.returns.form import as_text
 from fieldplan.returns.ids import plain_id
-from fieldplan.returns.matching import ConfirmedMatch, match_rows, rows_of
+from fieldplan.returns.laboratory import rows_of
+from fieldplan.returns.matching import ConfirmedMatch, match_rows
 from fieldplan.returns.model import NearMatch
 
 MATCH_COLUMNS = ("row", "as_written", "proposed", "why", "confirm")

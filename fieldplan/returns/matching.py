@@ -4,28 +4,12 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 
 from fieldplan.base.errors import LabError
-from fieldplan.lab.model import LabRow, LabTable
+from fieldplan.lab.model import LabRow
 from fieldplan.plan.model import Plan
 from fieldplan.returns.ids import likeness, nearest, plain_id
+from fieldplan.returns.laboratory import id_as_written
 from fieldplan.returns.model import NearMatch
 from fieldplan.samples.model import Sample
-
-LABORATORY_ROLES = ("laboratory duplicate", "laboratory control", "method blank", "matrix spike")
-"""Rows that the laboratory made for itself; they belong to no planned sample."""
-
-
-def rows_of(lab_table: LabTable, analyte: str) -> list[LabRow]:
-    """Give the rows of one analyte, without those that the laboratory made for itself.
-
-    Parameters
-    ----------
-    lab_table : LabTable
-    analyte : str
-        Its id.
-    """
-    return [
-        row for row in lab_table.rows if row.analyte == analyte and row.role not in LABORATORY_ROLES
-    ]
 
 
 @dataclass(frozen=True)
@@ -59,16 +43,6 @@ class Matching:
     def undecided(self) -> int:
         """Number of rows that wait for the user, however many proposals each has."""
         return len({match.row for match in self.near})
-
-
-def id_as_written(row: LabRow) -> str:
-    """Give the id that a row is known by: the sample's, else the location's.
-
-    Parameters
-    ----------
-    row : LabRow
-    """
-    return row.sample_id or row.location_id
 
 
 def match_rows(

@@ -3,6 +3,8 @@
 from dataclasses import dataclass
 from typing import Literal
 
+from fieldplan.lab.model import LeftOutRow
+
 
 @dataclass(frozen=True)
 class FieldRow:
@@ -114,6 +116,8 @@ class Returns:
         Location, first and second result; None for a non-detect.
     notes : tuple of str
         Sentences: missing, extra, moved outside tolerance, moved outside its stratum …
+    left_out : tuple of LeftOutRow
+        Rows of the laboratory's file that are in no mean, each with its value and why.
     """
 
     analyte: str
@@ -129,6 +133,7 @@ class Returns:
     field_sha256: str = ""
     duplicate_pairs: tuple[tuple[str, float | None, float | None], ...] = ()
     notes: tuple[str, ...] = ()
+    left_out: tuple[LeftOutRow, ...] = ()
 
 
 ReasonCode = Literal[

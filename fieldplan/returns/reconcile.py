@@ -5,21 +5,22 @@ from dataclasses import dataclass
 
 from fieldplan.base.errors import LabError
 from fieldplan.design.model import Location
-from fieldplan.lab.model import LabRow, LabTable
+from fieldplan.lab.model import LabRow, LabTable, LeftOutRow
 from fieldplan.lab.roles import IN_THE_MEAN
 from fieldplan.lab.tables import capped
 from fieldplan.lab.words import counted, listed
 from fieldplan.plan.model import Plan
 from fieldplan.returns.field import FieldReturn
 from fieldplan.returns.field_facts import FieldFacts, field_facts
-from fieldplan.returns.location_values import LocationValue, location_values, one_row_a_sample
-from fieldplan.returns.matching import (
-    ConfirmedMatch,
-    Matching,
+from fieldplan.returns.laboratory import (
+    claimed_jars,
     id_as_written,
-    match_rows,
+    left_out,
+    own_controls,
     rows_of,
 )
+from fieldplan.returns.location_values import LocationValue, location_values, one_row_a_sample
+from fieldplan.returns.matching import ConfirmedMatch, Matching, match_rows
 from fieldplan.returns.model import FieldRow, LocationResult, LostLocation, Returns
 from fieldplan.returns.substitutes import Substitution, substitute
 
@@ -27,6 +28,7 @@ TARGETED = "Targeted places were chosen by judgement and never enter the mean."
 OUTSIDE = "The crew found that the place lies outside the population."
 OF_A_MOVE = frozenset({"no-access", "obstructed", "unsafe", "dry", "frozen"})
 """Reasons that, beside taken = yes, say why a place was moved and not why its result is missing."""
+OF_NO_SAMPLE = "belongs to no planned sample"
 NOT_NEEDED = "Alternate that stands in for no lost location of its stratum."
 
 
@@ -81,13 +83,14 @@ def reconcile(
     by_sample, problems, notes = one_row_a_sample(name, matching.by_sample)
     facts, moves = field_facts(plan, given.rows, given.file_name)
     values = location_values(plan, by_sample)
-    problems += _contradictions(facts, values, name)
+    problems += [*_contradictions(facts, values, name), *claimed_jars(plan, rows, name)]
     if problems:
         raise LabError(*capped(problems))
     usable = {n for n in values if not facts.get(n, FieldFacts()).outside}
     met = _Met(plan, facts, values, substitute(plan, facts, usable))
     expected = met.expected_samples(analyte)
-    counts = _counts(matching, [s for s in expected if s not in by_sample], len(rows) - len(own))
+    unused = _left_out(matching, own_controls(lab_table, analyte))
+    counts = _counts([s for s in expected if s not in by_sample], unused)
     said = [*lab_table.notes, *notes, *counts, *met.pairs.notes, *moves]
     said += [*met.control_notes(by_sample), *met.silence_notes(bool(given.rows))]
     return Returns(
@@ -104,6 +107,7 @@ def reconcile(
         field_sha256=given.sha256,
         duplicate_pairs=met.duplicate_pairs(),
         notes=tuple(said),
+        left_out=tuple(unused),
     )
 
 
@@ -145,16 +149,19 @@ def _contradictions(
     ]
 
 
-def _counts(matching: Matching, missing: Sequence[str], laboratory: int) -> list[str]:
+def _left_out(matching: Matching, controls: Sequence[LeftOutRow]) -> list[LeftOutRow]:
+    """List the rows that are in no mean, in the order of the file."""
+    extra = [left_out(row, OF_NO_SAMPLE) for row in matching.extra]
+    return sorted([*extra, *controls], key=lambda entry: entry.row)
+
+
+def _counts(missing: Sequence[str], unused: Sequence[LeftOutRow]) -> list[str]:
     notes = []
     if missing:
         notes.append(f"No result came for {counted(len(missing), 'sample')}: {listed(missing)}.")
-    if matching.extra:
-        names = [f"'{id_as_written(row)}' (row {row.row})" for row in matching.extra]
-        word = counted(len(names), "laboratory row")
-        notes.append(f"{word} of no planned sample, not used: {listed(names)}.")
-    if laboratory:
-        notes.append(f"{counted(laboratory, 'row')} of the laboratory's own controls not used.")
+    for why in dict.fromkeys(entry.why for entry in unused):
+        group = [entry.in_words for entry in unused if entry.why == why]
+        notes.append(f"Not used ({why}): {listed(group)}.")
     return notes
 
 

@@ -9,7 +9,8 @@ from fieldplan.lab.tables import capped
 from fieldplan.plan.model import Plan
 from fieldplan.returns.field import FieldReturn
 from fieldplan.returns.ids import plain_id
-from fieldplan.returns.matching import ConfirmedMatch, rows_of
+from fieldplan.returns.laboratory import rows_of
+from fieldplan.returns.matching import ConfirmedMatch
 from fieldplan.returns.model import FieldRow, NearMatch, Returns
 from fieldplan.returns.reconcile import reconcile
 

@@ -48,7 +48,8 @@ def test_an_id_like_nothing_planned_is_extra() -> None:
     plan = make_plan()
     returns = reconcile(plan, table([*lab_rows(plan), lab_row(50, "ZZTOP/99", "7")]))
     assert (returns.matched, returns.extra, returns.needs_you) == (11, 1, ())
-    assert "1 laboratory row of no planned sample, not used: 'ZZTOP/99' (row 50)." in returns.notes
+    said = "Not used (belongs to no planned sample): 'ZZTOP/99' with '7' (row 50)."
+    assert said in returns.notes
 
 
 def test_a_location_id_settles_what_the_sample_id_does_not() -> None:

@@ -6,6 +6,7 @@ import pytest
 
 from fieldplan.base.errors import LabError
 from fieldplan.estimate.population import share_not_reached
+from fieldplan.lab.model import LeftOutRow
 from fieldplan.returns import reconcile
 from fieldplan.returns.model import LocationResult, Returns
 from fieldplan.samples.model import Sample, Samples
@@ -238,7 +239,32 @@ def test_blanks_and_the_laboratory_s_own_controls_never_enter_the_mean() -> None
     returns = reconcile(plan, table(rows))
     assert sum(entry.used for entry in returns.results) == 9
     assert "equipment blank QF-321, not in the mean, was reported as '<5'." in returns.notes
-    assert "1 row of the laboratory's own controls not used." in returns.notes
+    why = "matrix spike, made by the laboratory for itself"
+    assert f"Not used ({why}): 'QF-731' with '500' (row 31)." in returns.notes
+    assert returns.left_out == (LeftOutRow(31, "QF-731", "lead", "500", why),)
+
+
+@pytest.mark.parametrize("role", ["laboratory control", "method blank"])
+@pytest.mark.parametrize("written", ["QF-{}", "qf {}"])
+def test_an_issued_jar_cannot_be_a_control_of_the_laboratory(role: str, written: str) -> None:
+    """187 mg/kg, the highest of the yard: dropped in silence, the mean would fall unseen.
+
+    A laboratory control and a method blank are made without the client's material, so a row with
+    the id of an issued jar has either the wrong role or the wrong id.
+    """
+    plan = make_plan()
+    name = next(s.sample_id for s in plan.samples.at("QF-B-02"))
+    rows = [
+        replace(row, role=role, sample_id=written.format(name[3:]))
+        if row.sample_id == name
+        else row
+        for row in lab_rows(plan)
+    ]
+    with pytest.raises(LabError) as caught:
+        reconcile(plan, table(rows))
+    (line,) = caught.value.problems
+    assert f"role '{role}' with '187'" in line
+    assert f"the issued sample {name} of QF-B-02" in line
 
 
 def test_a_file_of_another_campaign_is_refused() -> None:
