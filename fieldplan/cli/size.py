@@ -94,6 +94,7 @@ def as_mapping(answer: "Size") -> dict[str, Any]:
     """Arrange the answer for ``--json``: n first, chances rounded to three decimals."""
     return {
         "n": answer.needed,
+        "number_from": answer.number_from,
         "locations": answer.planned,
         "target": answer.target,
         "chance_enough": _three(answer.chance_needed),

@@ -71,6 +71,7 @@ def answer(question: Question) -> Size:
         sentences=sentences(question, counts, assured),
         conditions=conditions(question, needed),
         unrounded=_unrounded(question),
+        number_from=question.number_from,
     )
 
 
@@ -89,7 +90,8 @@ def _assured(question: Question) -> tuple[AssuredSize, ...]:
     for assurance in sorted(wanted):
         counts = assured_counts(question, assurance)
         if counts is not None:
-            found.append(AssuredSize(assurance, sum(counts)))
+            chance = Precision(question).chance(counts)
+            found.append(AssuredSize(assurance, sum(counts), chance))
     return tuple(found)
 
 

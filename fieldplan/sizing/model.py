@@ -1,8 +1,12 @@
 """How many, per stratum, with its working and with how sure that number is."""
 
 from dataclasses import dataclass
+from typing import Literal
 
 from fieldplan.base.working import Step
+
+NumberFrom = Literal["target", "locations", "budget", "census"]
+"""What decided the number: a precision, a typed number of locations, money, or the whole list."""
 
 
 @dataclass(frozen=True)
@@ -57,10 +61,14 @@ class CurvePoint:
 
 @dataclass(frozen=True)
 class AssuredSize:
-    """The total n that meets the target with the stated chance."""
+    """The smallest total n that meets the target with at least the stated chance.
+
+    ``chance`` is what this n has: whole results cannot hit the stated one exactly.
+    """
 
     assurance: float
     n: int
+    chance: float | None = None
 
 
 @dataclass(frozen=True)
@@ -134,7 +142,8 @@ class Size:
     plain_n : int
         Results needed with sigma taken at face value.
     needed : int
-        Results needed at the chosen assurance; equals the sum over strata.
+        Results needed at the chosen assurance, or expected from typed or paid locations after
+        losses; equals the sum over strata.
     planned : int
         Locations to visit, loss allowance in.
     standard_error, half_width : float
@@ -164,6 +173,8 @@ class Size:
         The plain total before rounding, floors and Student's t; None without a target.
     others : tuple of OtherPrecision
         What the same n buys for objectives and analytes that do not decide it.
+    number_from : str
+        What decided the number.
     """
 
     design: str
@@ -194,3 +205,4 @@ class Size:
     conditions: tuple[str, ...]
     unrounded: float | None = None
     others: tuple[OtherPrecision, ...] = ()
+    number_from: NumberFrom = "target"

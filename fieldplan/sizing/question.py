@@ -4,6 +4,7 @@ from dataclasses import dataclass, field
 from typing import Literal
 
 from fieldplan.base.errors import DesignError
+from fieldplan.sizing.model import NumberFrom
 from fieldplan.stats.allocation import Allocation, Strata
 from fieldplan.stats.assurance import check_assurance
 from fieldplan.stats.intervals import IntervalKind
@@ -159,6 +160,15 @@ class Question:
         if self.target == "relative_half_width" and self.mean is not None:
             return self.value * self.mean
         return self.value if self.target == "half_width" else None
+
+    @property
+    def number_from(self) -> NumberFrom:
+        """What decides the number."""
+        if self.census:
+            return "census"
+        if self.locations is not None:
+            return "locations"
+        return "budget" if self.target == "budget" else "target"
 
     @property
     def total_population(self) -> int | None:

@@ -17,6 +17,9 @@ from fieldplan.sizing.words import (
     with_unit,
 )
 
+NEAR_NORMAL = "if single results are near normal (lower if they are skewed)"
+"""The condition of every chance, said beside it."""
+
 
 def sentences(
     question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
@@ -77,7 +80,7 @@ def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
     if question.locations is not None:
         return (
             f"The chance that this meets the target ({target_words(question)}) is "
-            f"{percent(chance)}; the plain formula asks for {plain}."
+            f"{percent(chance)} {NEAR_NORMAL}."
         )
     known = sorted({part.results for part in question.parts if part.results is not None})
     behind = " to ".join(str(n) for n in {known[0]: 0, known[-1]: 0}) + " results"
@@ -86,16 +89,16 @@ def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
     if needed != plain or question.assurance is not None:
         plain_chance = precision.chance(counts.plain) or 0.0
         return (
-            f"The chance that {needed} are enough is {percent(chance)}, sigma being known from "
-            f"{behind} only; the plain formula ({plain}) would be enough in "
+            f"The chance that {needed} are enough is {percent(chance)} {NEAR_NORMAL}, sigma being "
+            f"known from {behind} only; the plain formula ({plain}) would be enough in "
             f"{percent(plain_chance)} of campaigns."
         )
     more = listed([str(entry.n) for entry in assured])
     shares = listed([percent(entry.assurance) for entry in assured])
     return (
-        f"The chance that {needed} are enough is {percent(chance)}: the plain formula is enough in "
-        f"only about half of campaigns, and sigma is known from {behind} only. For a "
-        f"chance of {shares} it takes {more}."
+        f"The chance that {needed} are enough is {percent(chance)} {NEAR_NORMAL}: the plain "
+        f"formula is enough in only about half of campaigns, and sigma is known from {behind} "
+        f"only. For a chance of {shares} it takes {more}."
     )
 
 
@@ -132,8 +135,18 @@ def _precision(question: Question, counts: Counts) -> str:
         width = f"a {share} {question.interval.replace('-', ' ')} {reach} {side} the mean"
     line = f"If sigma is right, expect a standard error of {error} and {width}."
     if question.locations is not None and counts.plain is not None:
-        line += f" The target ({target_words(question)}) would take {sum(counts.plain)} results."
+        line += _would_take(question, counts.plain)
     return line
+
+
+def _would_take(question: Question, plain: tuple[int, ...]) -> str:
+    """Say what the target would take where locations are typed."""
+    line = f" The target ({target_words(question)}) would take {sum(plain)} results"
+    assured = assured_counts(question, question.assurance)
+    if assured is None or question.assurance is None:
+        return f"{line} by the plain formula."
+    share = typed_percent(question.assurance)
+    return f"{line} by the plain formula, and {sum(assured)} at the assurance of {share}."
 
 
 def _floor(question: Question, counts: Counts) -> str:

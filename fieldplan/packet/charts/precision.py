@@ -13,6 +13,14 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure as Canvas
 
+CHOSEN = {
+    "target": "needed",
+    "locations": "expected",
+    "budget": "expected",
+    "census": "in the list",
+}
+"""What the marked number of results is, by what decided it."""
+
 _PLATE = {"facecolor": "white", "edgecolor": "none", "pad": 0.8}
 
 
@@ -62,7 +70,7 @@ def _words(size: Size) -> str:
     return (
         f"Curve: the {name} falls from {number(float(f'{low:.3g}'))} {size.unit} at "
         f"{first.n} results to {number(float(f'{high:.3g}'))} {size.unit} at {last.n}; "
-        f"{size.needed} are needed. Target: {size.target}."
+        f"{size.needed} are {CHOSEN[size.number_from]}. Target: {size.target}."
     )
 
 
@@ -119,7 +127,7 @@ def _precision(axes: "Axes", size: Size) -> None:
 
 def _mark(axes: "Axes", size: Size, *, words: bool = True) -> None:
     """Mark the n that was chosen, and the plain n where it is another."""
-    marks = [(size.needed, "-", f"n = {size.needed} needed", 0)]
+    marks = [(size.needed, "-", f"n = {size.needed} {CHOSEN[size.number_from]}", 0)]
     if size.plain_n != size.needed:
         marks.append((size.plain_n, ":", f"n = {size.plain_n} with sigma at face value", 9))
     for n, style, text, drop in marks:

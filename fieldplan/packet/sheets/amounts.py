@@ -47,6 +47,17 @@ def percent(share: float) -> str:
     return f"{float(f'{100 * share:.3g}'):g} %"
 
 
+def likely(chance: float) -> str:
+    """Write a computed chance as a percentage, never rounded up to certainty.
+
+    Examples
+    --------
+    >>> likely(0.80228), likely(0.99997), likely(1.0)
+    ('80.2 %', 'over 99.9 %', '100 %')
+    """
+    return percent(chance) if chance < 0.9995 or chance == 1 else "over 99.9 %"
+
+
 def area(square_metres: float) -> str:
     """Write an area in square metres and hectares.
 

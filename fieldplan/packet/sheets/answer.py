@@ -58,7 +58,7 @@ def stratum_table(plan: Plan) -> Table:
         name,
         "Share",
         f"Standard deviation ({unit})",
-        "Results needed",
+        "Results needed" if plan.size.number_from == "target" else "Results expected",
         "Locations",
         "Alternates",
     )

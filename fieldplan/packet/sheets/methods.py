@@ -3,7 +3,7 @@
 from math import sqrt
 
 from fieldplan.base.document import Block, Bullets, Heading, Paragraph
-from fieldplan.packet.sheets.amounts import counted, listed, percent, rounded
+from fieldplan.packet.sheets.amounts import counted, likely, listed, percent, rounded
 from fieldplan.packet.sheets.plan_words import (
     ALLOCATIONS,
     LAYOUTS,
@@ -12,6 +12,7 @@ from fieldplan.packet.sheets.plan_words import (
     several_strata,
 )
 from fieldplan.packet.sheets.rules import NON_DETECTS, rules_fingerprint
+from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
 
 
@@ -125,13 +126,44 @@ def drawn_sentence(plan: Plan) -> str:
 
 
 def number_sentence(plan: Plan) -> str:
-    """Say for which target, and how sure."""
+    """Say what decided the number, and with what chance that meets the target."""
+    size, census = plan.size, plan.size.number_from == "census"
+    if census:
+        return ""  # the sentence before says that every unit was to be sampled
+    budget = plan.campaign.deciding_objective.budget
+    expected = f"a standard error of {rounded(size.standard_error)} {size.unit} was to be expected"
+    if size.number_from == "budget":
+        return (
+            f"The number was the largest that {money(plan, budget)} buys; no precision was asked "
+            f"for, and {expected} if the spread was right."
+        )
+    if size.number_from == "locations":
+        line = f"The number of locations was fixed beforehand; {expected} if the spread was right"
+        return f"{line}." if budget is not None else f"{line}. {met_sentence(plan)}"
+    plain = ", taking the spread at face value" if size.assurance is None else ""
+    return f"The number was chosen for a target of {size.target}{plain}. {met_sentence(plan)}"
+
+
+def money(plan: Plan, amount: float | None) -> str:
+    """Name a budget in its currency."""
+    return f"a budget of {number(amount or 0.0)} {plan.size.currency}".rstrip()
+
+
+def met_sentence(plan: Plan) -> str:
+    """Say the chance that the number meets the target, with its condition."""
     size = plan.size
-    line = f"The number was chosen for a target of {size.target}"
-    if size.assurance is None:
-        return f"{line}, taking the spread at face value."
-    chance = percent(size.assurance)
-    return f"{line}, met with a chance of {chance} given the results behind the spread."
+    which = f"The target, {size.target}," if size.number_from == "locations" else "It"
+    asked = "" if size.assurance is None else f" ({percent(size.assurance)} was asked for)"
+    if size.chance_needed is not None:
+        return (
+            f"{which} is met with a chance of {likely(size.chance_needed)}{asked} given the "
+            "results behind the spread, if single results are near normal; with skewed ones the "
+            "chance is lower."
+        )
+    return (
+        "No chance that it is met can be given, since nobody said how many results stand behind "
+        f"the spread{asked}."
+    )
 
 
 def spread_sentence(plan: Plan) -> str:

@@ -1,11 +1,10 @@
 """How uneven the site is, and how many results the target takes."""
 
 from fieldplan.base.document import Block, Bullets, Facts, Heading, Paragraph, Table
-from fieldplan.packet.sheets.amounts import counted, percent, rounded
+from fieldplan.packet.sheets.amounts import counted, likely, percent, rounded
 from fieldplan.plan.model import Plan
 from fieldplan.sizing.model import OtherPrecision
 from fieldplan.sizing.other_words import chance_words
-from fieldplan.sizing.words import percent as chance_of
 
 
 def spread_blocks(plan: Plan) -> list[Block]:
@@ -60,14 +59,7 @@ def number_blocks(plan: Plan) -> list[Block]:
 def promise_rows(plan: Plan) -> tuple[tuple[str, str], ...]:
     """Set target, counts, loss and chooser as label and value."""
     size, loss = plan.size, plan.campaign.loss
-    chosen = "plain count" if size.assurance is None else percent(size.assurance)
-    rows = [
-        ("Target", size.target),
-        ("Assurance", f"{chosen}, chosen by {size.assurance_chosen_by or 'nobody named'}"),
-        ("Results by the plain formula", str(size.plain_n)),
-        ("Results needed", str(size.needed)),
-        ("Locations to visit", str(size.planned)),
-    ]
+    rows = [("Target", size.target), *count_rows(plan)]
     if loss.share or loss.by_stratum:
         shares = [percent(loss.share)] if loss.share else []
         shares += [f"{percent(share)} in {name}" for name, share in loss.by_stratum.items()]
@@ -76,17 +68,54 @@ def promise_rows(plan: Plan) -> tuple[tuple[str, str], ...]:
     return tuple(rows)
 
 
-def assurance_table(plan: Plan) -> Table:
-    """Set the number of results against the chance that it meets the target."""
+def count_rows(plan: Plan) -> list[tuple[str, str]]:
+    """Set the counts under names that say where they come from."""
     size = plan.size
-    rows = [(str(entry.n), percent(entry.assurance)) for entry in size.assured]
-    if size.chance_plain is not None:
-        rows.insert(0, (str(size.plain_n), f"{chance_of(size.chance_plain)} (the plain formula)"))
+    expected = ("Results expected, after losses", str(size.needed))
+    plain = "plain count" if size.assurance is None else percent(size.assurance)
+    chosen = f"{plain}, chosen by {size.assurance_chosen_by or 'nobody named'}"
+    if size.number_from == "target":
+        return [
+            ("Assurance", chosen),
+            ("Results by the plain formula", str(size.plain_n)),
+            ("Results needed", str(size.needed)),
+            ("Locations to visit", str(size.planned)),
+        ]
+    if size.number_from == "locations":
+        rows = [("Locations, fixed beforehand", str(size.planned)), expected]
+        if plan.campaign.deciding_objective.budget is not None:
+            return rows
+        takes = [f"{size.plain_n} by the plain formula"]
+        takes += [
+            f"{entry.n} at the assurance of {chosen}"
+            for entry in size.assured
+            if entry.assurance == size.assurance
+        ]
+        return [*rows, ("Results that the target would take", ", ".join(takes))]
+    if size.number_from == "budget":
+        return [("Locations that the budget buys", str(size.planned)), expected]
+    return [("Locations to visit, the whole list", str(size.planned))]
+
+
+def assurance_table(plan: Plan) -> Table:
+    """Set numbers of results against the chance that they meet the target."""
+    size = plan.size
+    rows = [(size.plain_n, size.chance_plain, "the plain formula")]
+    for entry in size.assured:
+        chosen = ", the chosen assurance" if entry.assurance == size.assurance else ""
+        rows.append((entry.n, entry.chance, f"fewest for {percent(entry.assurance)}{chosen}"))
+    if size.number_from == "locations":
+        rows.append((size.needed, size.chance_needed, "fixed beforehand, after losses"))
     return Table(
-        ("Results", "Chance that they meet the target"),
-        tuple(rows),
-        caption="How sure the number is, given how few results stand behind the spread",
-        numeric=("Results",),
+        ("Results", "Chance that they meet the target", "Why this number"),
+        tuple(
+            (str(n), likely(chance), why)
+            for n, chance, why in sorted(rows, key=lambda row: row[0])
+            if chance is not None
+        ),
+        caption="How sure the number is, given how few results stand behind the spread and taking "
+        "single results as near normal",
+        numeric=("Results", "Chance that they meet the target"),
     )
 
 

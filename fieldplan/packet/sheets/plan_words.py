@@ -84,9 +84,12 @@ def aim_sentence(plan: Plan) -> str:
         else f"The assurance of {percent(size.assurance)}"
     )
     aim = f"The aim is the {mean_of(plan.campaign)}{against}."
-    if plan.locations.layout == "census":
-        return aim
-    return f"{aim} {chosen} was chosen by {chooser}."
+    return {
+        "census": aim,
+        "budget": f"{aim} The budget decides the number.",
+        "locations": f"{aim} The number of locations was fixed beforehand, not by the target.",
+        "target": f"{aim} {chosen} was chosen by {chooser}.",
+    }[size.number_from]
 
 
 def level_words(campaign: Campaign) -> str:
