@@ -79,7 +79,9 @@ def _against_target(found: OtherPrecision) -> str:
         words = f"that {verb} its own target ({found.target}), {joined} {chance_words(found)}"
         if found.assurance is not None:
             words += f" ({typed_percent(found.assurance)} was asked for)"
-    if found.enough_n is not None:
+    if found.falls_short and found.enough_n is None:
+        words += "; no number of results that can be had would do"
+    elif found.enough_n is not None:
         words += f"; for that it would take {counted(found.enough_n, 'result')}, shared out as here"
     return words
 
@@ -93,5 +95,7 @@ def chance_words(found: OtherPrecision) -> str:
     'just under 80 %'
     """
     chance, asked = found.chance or 0.0, found.assurance or 0.0
+    if chance < 0.0005:
+        return "under 0.1 %"
     near = chance < asked and percent(chance) == percent(asked)
     return f"just under {typed_percent(asked)}" if near else percent(chance)

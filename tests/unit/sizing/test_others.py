@@ -109,6 +109,14 @@ def test_enough_is_the_first_total_that_keeps_the_target_under_leads_sharing() -
     assert f"it would take {total} results, shared out as here" in zinc.sentence
 
 
+def test_a_target_that_no_number_keeps_is_said() -> None:
+    """A slip of the decimal point must not pass as a number."""
+    (zinc,) = bought(zinc_objective(standard_error=1e-6))
+    assert zinc.enough_n is None
+    assert "under 0.1 % (80 % was asked for)" in zinc.sentence
+    assert zinc.sentence.endswith("; no number of results that can be had would do.")
+
+
 def test_finite_lists_shrink_the_error_of_every_analyte() -> None:
     """7 of 14 wells, sigma 4: √(16/7 · (1 − 7/14)) = 1.069 (Cochran 1977, theorem 2.2)."""
     lead = Objective(
