@@ -1,6 +1,6 @@
 """Which laboratory row belongs to which planned sample; likeness is proposed, never applied."""
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Collection, Mapping, Sequence
 from dataclasses import dataclass, field
 
 from fieldplan.base.errors import LabError
@@ -74,14 +74,39 @@ def match_rows(
     Raises
     ------
     LabError
-        A confirmed match does not fit the file or the plan.
+        A confirmed match does not fit the file or the plan, or was never proposed.
 
     Notes
     -----
     In this order: the exact sample id; what the user confirmed; the exact location id where it
-    leaves one sample. Whatever is left is compared by likeness and proposed.
+    leaves one sample. Whatever is left is compared by likeness and proposed. An answer counts
+    where it would be proposed once all the other rows are answered.
     """
-    return _Matcher(plan, analyte).match(rows, confirmed, elsewhere)
+    matcher = _Matcher(plan, analyte)
+    others = {row.row: row for row in elsewhere}
+    own = matcher.decided(rows, [match for match in confirmed if match.row not in others])
+    _check_rows([match for match in confirmed if match.row in others], others)
+    decided = matcher.carried(rows, confirmed, others) | own
+    strange = {
+        row.row
+        for row in rows
+        if decided.get(row.row)
+        and decided[row.row] not in _Matcher(plan, analyte).possible(row, rows, decided)
+    }
+    _refuse_never_proposed([row for row in rows if row.row in strange & own.keys()], own)
+    return matcher.match(rows, {n: name for n, name in decided.items() if n not in strange})
+
+
+def _refuse_never_proposed(rows: Sequence[LabRow], decided: Mapping[int, str]) -> None:
+    """Refuse an answer to a question that was not asked: it would make any result anybody's."""
+    problems = [
+        f"matches.csv: row {row.row} '{id_as_written(row)}' was never proposed as "
+        f"{decided[row.row]}. Answer what was proposed; where an id is wrong, ask the laboratory "
+        "for a corrected report."
+        for row in rows
+    ]
+    if problems:
+        raise LabError(*problems)
 
 
 def _jar(row: LabRow) -> tuple[str, str, str]:
@@ -115,16 +140,27 @@ class _Matcher:
         self.rule = plan.campaign.rules.duplicates
         self.matching = Matching()
 
-    def match(
-        self,
-        rows: Sequence[LabRow],
-        confirmed: Sequence[ConfirmedMatch],
-        elsewhere: Sequence[LabRow],
-    ) -> Matching:
-        others = {row.row: row for row in elsewhere}
-        own = [match for match in confirmed if match.row not in others]
-        _check_rows([match for match in confirmed if match.row in others], others)
-        decided = self._carried(rows, confirmed, others) | self._decided(rows, own)
+    def match(self, rows: Sequence[LabRow], decided: Mapping[int, str]) -> Matching:
+        """Place all rows; propose what is left and not answered."""
+        for row in self._place(rows, decided):
+            proposals = self._proposals(row) if row.row not in decided else []
+            if proposals:
+                self.matching.near += proposals
+            else:
+                self.matching.extra.append(row)
+        return self.matching
+
+    def possible(
+        self, row: LabRow, rows: Sequence[LabRow], decided: Mapping[int, str]
+    ) -> Collection[str]:
+        """Name the samples that a row can be once all the other rows are answered."""
+        left = self._place(rows, {n: sample for n, sample in decided.items() if n != row.row})
+        if row in left:
+            return {near.proposed for near in self._proposals(row)}
+        return {name for name, placed in self.matching.by_sample.items() if row in placed}
+
+    def _place(self, rows: Sequence[LabRow], decided: Mapping[int, str]) -> list[LabRow]:
+        """Match by sample id, then by answer, then by location; return the rest."""
         waiting = []
         for row in rows:
             sample_id = plain_id(row.sample_id)
@@ -134,15 +170,9 @@ class _Matcher:
                 self.matching.add(decided[row.row], row)
             else:
                 waiting.append(row)
-        for row in self._by_location(waiting):
-            proposals = self._proposals(row) if row.row not in decided else []
-            if proposals:
-                self.matching.near += proposals
-            else:
-                self.matching.extra.append(row)
-        return self.matching
+        return self._by_location(waiting)
 
-    def _decided(
+    def decided(
         self, rows: Sequence[LabRow], confirmed: Sequence[ConfirmedMatch]
     ) -> dict[int, str]:
         """Map a row's number to its sample; to an empty text when the user said no."""
@@ -168,7 +198,7 @@ class _Matcher:
             raise LabError(*problems)
         return decided
 
-    def _carried(
+    def carried(
         self,
         rows: Sequence[LabRow],
         confirmed: Sequence[ConfirmedMatch],

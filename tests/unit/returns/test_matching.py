@@ -126,6 +126,40 @@ def test_an_answer_that_does_not_fit_is_refused(answers: list[ConfirmedMatch], s
         reconcile(plan, table(rows), confirmed=answers)
 
 
+@pytest.mark.parametrize("name", ["QF-731", "QF-A-01", "QF-583"])
+def test_an_answer_that_was_never_proposed_is_refused(name: str) -> None:
+    """Whoever edits matches.csv cannot give a stranger's jar to a place of the plan.
+
+    X118/2 resembles nothing; 'qf 731' resembles one jar and no other.
+    """
+    plan = make_plan()
+    stranger = [*lab_rows(plan)[1:], lab_row(40, "X118/2", "45")]
+    with pytest.raises(LabError, match="'X118/2' was never proposed as QF-"):
+        reconcile(plan, table(stranger), confirmed=[ConfirmedMatch(40, "X118/2", name, True)])
+    alike = [*lab_rows(plan)[1:], lab_row(40, "qf 731", "41")]
+    answer = ConfirmedMatch(40, "qf 731", name, True)
+    if name == "QF-583":
+        with pytest.raises(LabError, match="'qf 731' was never proposed as QF-583"):
+            reconcile(plan, table(alike), confirmed=[answer])
+    else:
+        assert reconcile(plan, table(alike), confirmed=[answer]).matched == 11
+
+
+def test_what_is_proposed_once_another_row_is_answered_may_be_answered() -> None:
+    """QF-471 may be 731 or 418; once it is 731, a second QF-471 is proposed as 418 alone."""
+    plan = make_plan()
+    rows = [row for row in lab_rows(plan) if row.sample_id not in {"QF-731", "QF-418"}]
+    rows += [lab_row(40, "QF-471", "41"), lab_row(41, "QF 471", "22")]
+    asked = {(n.row, n.proposed) for n in reconcile(plan, table(rows)).needs_you}
+    assert asked == {(row, name) for row in (40, 41) for name in ("QF-731", "QF-418")}
+    first = ConfirmedMatch(40, "QF-471", "QF-731", True)
+    again = reconcile(plan, table(rows), confirmed=[first]).needs_you
+    assert [(near.row, near.proposed) for near in again] == [(41, "QF-418")]
+    both = [first, ConfirmedMatch(41, "QF 471", "QF-418", True)]
+    returns = reconcile(plan, table(rows), confirmed=both)
+    assert (returns.matched, returns.needs_you) == (11, ())
+
+
 def test_the_file_to_answer_comes_back_as_it_was_answered(tmp_path: Path) -> None:
     """Ids that a spreadsheet would change are kept by an apostrophe, which is taken off again."""
     near = [NearMatch(7, "007", "3-5", "case"), NearMatch(9, "=1+1", "QF-731", "case")]

@@ -108,18 +108,29 @@ def test_an_answer_holds_for_the_jar_under_every_analyte(asked_at: int, yes: boo
 
 def test_answers_that_differ_for_one_written_id_are_not_carried_over() -> None:
     """Two rows of lead with one label went to two jars; zinc's row could be either: ask."""
-    lead = renamed(renamed(lab_rows(PLAN), 0, "jar 7"), 3, "jar 7")
-    zinc = renamed(zinc_rows(), 0, "jar 7")
+    lead = renamed(renamed(lab_rows(PLAN), 0, "QF-471"), 3, "QF-471")
+    zinc = renamed(zinc_rows(), 0, "QF-471")
     first, second = lab_rows(PLAN)[0].sample_id, lab_rows(PLAN)[3].sample_id
     answers = [
-        ConfirmedMatch(lead[0].row, "jar 7", first, confirmed=True),
-        ConfirmedMatch(lead[3].row, "jar 7", second, confirmed=True),
+        ConfirmedMatch(lead[0].row, "QF-471", first, confirmed=True),
+        ConfirmedMatch(lead[3].row, "QF-471", second, confirmed=True),
     ]
     received = reconcile_all(PLAN, table([*lead, *zinc]), field_rows(PLAN), confirmed=answers)
     lead_found, zinc_found = received.every
     assert lead_found.matched == 11
     assert zinc_found.matched == 10
     assert zinc_found.extra + len(zinc_found.needs_you) == 1
+
+
+def test_an_answer_is_not_carried_to_an_analyte_where_it_would_not_be_proposed() -> None:
+    """Asked for lead alone, an answer given at a zinc row must not make a stranger's lead count."""
+    lead = [*lab_rows(PLAN)[1:], lab_row(30, "X118/2", "45")]
+    zinc = [*zinc_rows()[1:], lab_row(80, "X118/2", "90", analyte="zinc", unit="µg/g")]
+    answer = [ConfirmedMatch(80, "X118/2", lab_rows(PLAN)[0].sample_id, confirmed=True)]
+    found = reconcile(PLAN, table([*lead, *zinc]), field_rows(PLAN), confirmed=answer)
+    assert (found.matched, found.extra) == (10, 1)
+    with pytest.raises(LabError, match="was never proposed"):
+        reconcile_all(PLAN, table([*lead, *zinc]), field_rows(PLAN), confirmed=answer)
 
 
 def test_an_answer_for_a_row_that_the_file_does_not_hold_is_refused_for_any_analyte() -> None:
