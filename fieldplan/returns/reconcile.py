@@ -10,6 +10,7 @@ from fieldplan.lab.roles import IN_THE_MEAN
 from fieldplan.lab.tables import capped
 from fieldplan.lab.words import counted, listed
 from fieldplan.plan.model import Plan
+from fieldplan.returns.contradictions import contradictions
 from fieldplan.returns.field import FieldReturn
 from fieldplan.returns.field_facts import FieldFacts, field_facts
 from fieldplan.returns.laboratory import (
@@ -62,8 +63,9 @@ def reconcile(
     ------
     LabError
         No row of the analyte, or none that belongs to the plan; a sample has two different
-        results; the return says that a location was not taken and the laboratory reports it; a
-        confirmed match does not fit.
+        results; the return says that a jar was not taken, broke or was lost and the laboratory
+        reports it; a row of the laboratory's own bears the id of an issued jar; a confirmed match
+        does not fit.
 
     Notes
     -----
@@ -83,7 +85,8 @@ def reconcile(
     by_sample, problems, notes = one_row_a_sample(name, matching.by_sample)
     facts, moves = field_facts(plan, given.rows, given.file_name)
     values = location_values(plan, by_sample)
-    problems += [*_contradictions(facts, values, name), *claimed_jars(plan, rows, name)]
+    problems += contradictions(plan, given, by_sample, file_name=name)
+    problems += claimed_jars(plan, rows, name)
     if problems:
         raise LabError(*capped(problems))
     usable = {n for n in values if not facts.get(n, FieldFacts()).outside}
@@ -135,18 +138,6 @@ def _nothing_matched(plan: Plan, file_name: str, rows: Sequence[LabRow]) -> str:
         f"{planned}. Check that the file and the packet belong together, and which column holds "
         "the sample ids."
     )
-
-
-def _contradictions(
-    facts: Mapping[str, FieldFacts], values: Mapping[str, LocationValue], file_name: str
-) -> list[str]:
-    return [
-        f"{file_name} row {value.rows[0].row}: the laboratory reports sample "
-        f"'{value.sample_ids[0]}' of {name}, but the field return says that {name} was not taken. "
-        "Correct the return, or delete the row if the jar was mixed up."
-        for name, value in values.items()
-        if facts.get(name, FieldFacts()).taken is False
-    ]
 
 
 def _left_out(matching: Matching, controls: Sequence[LeftOutRow]) -> list[LeftOutRow]:

@@ -198,8 +198,32 @@ def test_a_position_on_the_other_side_of_the_world_is_refused() -> None:
 
 def test_a_result_for_a_location_that_was_not_taken_is_a_question() -> None:
     """One of the two is wrong, and only a person can know which."""
-    with pytest.raises(LabError, match="says that QF-A-01 was not taken"):
+    says = (
+        "reports '41' for sample 'QF-731' of QF-A-01, but field return row 2 says that it was not"
+    )
+    with pytest.raises(LabError, match=says):
         met(QF_A_01={"taken": False})
+
+
+@pytest.mark.parametrize("reason", ["broken", "lost"])
+def test_a_jar_that_broke_or_was_lost_cannot_have_a_result(reason: str) -> None:
+    """Taken, then gone: a result under its id belongs to something else, or the return is wrong.
+
+    That holds for one jar of two at a location as well.
+    """
+    with pytest.raises(LabError, match=f"'QF-731' of QF-A-01, but .* says that it is {reason}"):
+        met(QF_A_01={"taken": True, "reason": reason})
+    plan = make_plan()
+    lines = [
+        replace(line, reason=reason if line.sample_id == DUPLICATE else "")
+        for line in field_rows(plan)
+    ]
+    with pytest.raises(LabError) as caught:
+        reconcile(plan, table(lab_rows(plan)), lines)
+    (problem,) = caught.value.problems
+    assert f"'69' for sample '{DUPLICATE}' of QF-A-02" in problem
+    rows = [row for row in lab_rows(plan) if row.sample_id != DUPLICATE]
+    assert reconcile(plan, table(rows), lines).lost == ()
 
 
 def test_two_different_results_of_one_sample_are_a_question() -> None:
