@@ -2,6 +2,7 @@
 
 import math
 from bisect import bisect_right
+from collections.abc import Iterable
 from functools import lru_cache
 from typing import Literal
 
@@ -65,6 +66,44 @@ def n_for_one_sided(skewness: float) -> int:
     121
     """
     return whole(121 * skewness**2)
+
+
+def skewness_of_mean(
+    weights: Iterable[float],
+    sigmas: Iterable[float],
+    skewnesses: Iterable[float],
+    *,
+    counts: Iterable[float],
+) -> float:
+    """Give the skewness of the weighted mean of independent strata.
+
+    Parameters
+    ----------
+    weights, sigmas, skewnesses : iterable of float, length h
+        Share of the population (sum 1), standard deviation and skewness of each stratum.
+    counts : iterable of float, length h
+        Results per stratum, each above 0.
+
+    Returns
+    -------
+    float
+        0 where no stratum spreads.
+
+    Notes
+    -----
+    Σ W³ σ³ G1/n² over (Σ W² σ²/n)^1.5: third cumulants of independent means add. For one stratum
+    this is G1/√n. No list is corrected for.
+
+    Examples
+    --------
+    >>> skewness_of_mean([1.0], [3.0], [2.0], counts=[16])
+    0.5
+    """
+    second = third = 0.0
+    for weight, sigma, skewness, count in zip(weights, sigmas, skewnesses, counts, strict=True):
+        second += (weight * sigma) ** 2 / count
+        third += (weight * sigma) ** 3 * skewness / count**2
+    return third / second**1.5 if second > 0 else 0.0
 
 
 def t_coverage(

@@ -11,6 +11,7 @@ from scipy import stats
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.answer import answer
 from fieldplan.sizing.question import ControlRate, Part, Prices
+from fieldplan.stats.shape import t_coverage
 from tests.unit.sizing.asking import SIGMAS, WEIGHTS, ask, three, whole
 
 EUR = Prices("EUR", mobilisation=400.0, per_location=30.0, per_analysis=45.0)
@@ -233,12 +234,22 @@ def test_conditions_name_what_skewness_asks_for(interval: str) -> None:
     parts = whole(results=8, skewness=1.8, pilot="pilot.csv")
     text = " ".join(answer(ask(parts, 6.0, interval=interval)).conditions)
     assert "needs about 81 results (n > 25·G1², Cochran 1977)" in text
-    assert "an upper limit alone needs several times that, about 393." in text
+    assert "an upper limit alone needs several times that, about 393, while a lower" in text
+    assert "against 22 here" in text
     assert "8 results can show a skewness of 2.27 at most" in text
     assert "common practice for data that are not normal (no source)" in text
     assert "a normal population needs no minimum" in text
     name = "interval" if interval == "two-sided" else "upper limit"
-    assert f"a nominal 95 % {name} from 22 results holds the true mean in about" in text
+    assert f"a nominal 95 % {name} from 22 results holds the true mean depends on" in text
+    share = t_coverage(22, 1.8, confidence=0.95, kind=interval)
+    assert f"about {100 * share:.0f} % at 1.8, " in text
+
+
+def test_a_lean_downwards_harms_the_lower_limit_and_not_the_upper() -> None:
+    """Mirror image of the case above: the long tail lies below (simulated in test_lean.py)."""
+    text = " ".join(answer(ask(whole(results=8, skewness=-1.8), 6.0)).conditions)
+    assert "a lower limit alone needs several times that, about 393, while an upper" in text
+    assert "limit errs on the careful side" in text
 
 
 def test_little_skewness_proves_no_symmetry() -> None:
