@@ -10,7 +10,7 @@ from fieldplan.estimate.level import level_sentence
 from fieldplan.estimate.means import Means, means_by
 from fieldplan.estimate.model import Change, Estimate
 from fieldplan.estimate.planned import planned_for
-from fieldplan.estimate.population import population_sentence
+from fieldplan.estimate.population import outside_sentence, population_sentence
 from fieldplan.estimate.sentences import answer_sentences
 from fieldplan.estimate.working import working
 from fieldplan.plan.model import Plan
@@ -68,7 +68,8 @@ def estimate(
     means = means_by(plan, basis, rules)
     changes = _changes(plan, returns, rules, changed)
     level = level_sentence(plan, means)
-    population = population_sentence(plan, basis)
+    said = (population_sentence(plan, basis), outside_sentence(plan, basis, means.half))
+    population = " ".join(sentence for sentence in said if sentence)
     planned = planned_for(plan, basis.analyte)
     return Estimate(
         analyte=basis.analyte,

@@ -1,8 +1,11 @@
 """For what the mean speaks once some places could not be reached."""
 
+import math
 from collections import Counter
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 
+from fieldplan.base.units import significant
+from fieldplan.design.model import MeanEstimate
 from fieldplan.lab.words import counted, listed
 from fieldplan.plan.model import Plan
 from fieldplan.returns.model import LostLocation, Returns
@@ -32,6 +35,90 @@ def share_not_reached(plan: Plan, lost: Sequence[LostLocation]) -> float:
         stratum.weight * missed[stratum.name] / planned[stratum.name]
         for stratum in plan.frame.strata
         if planned[stratum.name]
+    )
+
+
+def share_outside(plan: Plan, lost: Sequence[LostLocation]) -> dict[str, float]:
+    """Give the share of each stratum's planned places that the crew found outside the population.
+
+    Parameters
+    ----------
+    plan : Plan
+    lost : sequence of LostLocation
+
+    Returns
+    -------
+    dict of str to float
+        By stratum; strata without such a place are absent.
+    """
+    planned = Counter(place.stratum for place in plan.locations.of_class("random"))
+    outside = Counter(entry.stratum for entry in lost if entry.reason == "outside")
+    return {name: number / planned[name] for name, number in outside.items()}
+
+
+def mean_without(mean: MeanEstimate, outside: Mapping[str, float]) -> float | None:
+    """Give the mean with the weight of each stratum cut by the share found outside.
+
+    Parameters
+    ----------
+    mean : MeanEstimate
+    outside : mapping of str to float
+        By stratum, as from ``share_outside``.
+
+    Returns
+    -------
+    float or None
+        Σ W (1 − share) x̄ / Σ W (1 − share); None where nothing is left.
+
+    Notes
+    -----
+    The estimate for a domain whose size is not known: Cochran (1977), Sampling Techniques, 3rd
+    ed., sec. 5A.14.
+    """
+    kept = [(s.weight * (1 - outside.get(s.stratum, 0.0)), s.mean) for s in mean.strata]
+    total = math.fsum(weight for weight, _ in kept)
+    if total <= 0:
+        return None
+    return math.fsum(weight * value for weight, value in kept) / total
+
+
+def outside_sentence(plan: Plan, returns: Returns, mean: MeanEstimate) -> str:
+    """Say that places lay outside the population, and what that leaves out of the answer.
+
+    Parameters
+    ----------
+    plan : Plan
+    returns : Returns
+    mean : MeanEstimate
+
+    Returns
+    -------
+    str
+        Empty when no place was found outside.
+    """
+    outside = share_outside(plan, returns.lost)
+    if not outside:
+        return ""
+    planned = Counter(place.stratum for place in plan.locations.of_class("random"))
+    found = Counter(entry.stratum for entry in returns.lost if entry.reason == "outside")
+    where = listed([f"{found[name]} of {planned[name]} places of {name}" for name in outside])
+    weights = {stratum.name: stratum.weight for stratum in plan.frame.strata}
+    share = sum(weights[name] * part for name, part in outside.items())
+    said = (
+        f"The crew found {where} outside the population: about {100 * share:.2g} % of what was "
+        "mapped may not belong to it. Weights, size of the population and standard error take "
+        "nothing to lie outside"
+    )
+    moved = mean_without(mean, outside)
+    if moved is None:
+        return f"{said}."
+    if len(mean.strata) < 2:
+        return f"{said}; the mean itself does not move by it, what it speaks for is smaller."
+    unit = plan.campaign.analyte_called(returns.analyte).unit
+    return (
+        f"{said}; with weights cut by the shares found outside, the mean would be "
+        f"{significant(moved)} {unit} instead of {significant(mean.mean)} {unit}. Map the "
+        "population again before the mean is used."
     )
 
 
