@@ -55,6 +55,19 @@ class Analyte(Table):
     action_level: PositiveNumber | None = None
     action_level_source: str = ""
 
+    @property
+    def label(self) -> str:
+        """What people read: the name as its author typed it, else the id.
+
+        Capitals carry meaning ("As" is no "as"), so a name is never set in another case.
+
+        Examples
+        --------
+        >>> Analyte(id="arsenic-as", name="Arsenic (As)", unit="mg/kg").label
+        'Arsenic (As)'
+        """
+        return self.name.strip() or self.id
+
 
 class Exclusion(Table):
     """``[[frame.exclusion]]``: a part of the site that is left out of the population, and why."""

@@ -85,7 +85,7 @@ def _site_and_pilot(read: ReadCampaign, found: Findings) -> list[str]:
 def _asked(campaign: Campaign) -> list[str]:
     """Say what the campaign asks, in sentences."""
     objective, analyte = campaign.deciding_objective, campaign.deciding_analyte
-    what = analyte.name or analyte.id
+    what = analyte.label
     chosen = f" ({objective.assurance_chosen_by})" if objective.assurance_chosen_by else ""
     if objective.assurance is None:
         sure = "The budget decides n; no precision is asked for that it could miss."
@@ -113,12 +113,11 @@ def _also_asked(campaign: Campaign) -> list[str]:
         analyte = campaign.analyte_called(objective.analyte or campaign.deciding_analyte.id)
         target = _target(objective, campaign, analyte.unit)
         lines.append(
-            f"Also asked: the mean of {analyte.name or analyte.id} with {target}; it does not "
-            "decide n."
+            f"Also asked: the mean of {analyte.label} with {target}; it does not decide n."
         )
     for analyte in campaign.analyte:
         if analyte.id not in asked and analyte.id != campaign.deciding_analyte.id:
-            lines.append(f"Measured too, without a target: {analyte.name or analyte.id}.")
+            lines.append(f"Measured too, without a target: {analyte.label}.")
     return lines
 
 

@@ -129,9 +129,9 @@ def command(
     )
     received = meet(plan)
     if received.needs_you:
-        _ask(received, confirmed, out or Path())
+        _ask(plan, received, confirmed=confirmed, folder=out or Path())
     answers = _answers(plan, received, overrides=_overrides(options), meet=meet)
-    _say_received(received, quiet=quiet)
+    _say_received(plan, received, quiet=quiet)
     folder = (packet.parent.parent if packet.is_file() else packet).absolute()
     sources = [path for path in (lab_file, field_file, matches_file) if path]
     results = write_results(
@@ -187,23 +187,24 @@ def _answers(
     return estimate_all(plan, received, overrides=overrides, received_changed=again)
 
 
-def _counts(received: "Received") -> list[str]:
+def _counts(plan: "Plan", received: "Received") -> list[str]:
     """Say how many rows of each analyte were matched."""
     lines = []
     for returns in received.every:
         waiting = len({match.row for match in returns.needs_you})
         total = returns.matched + returns.extra + waiting
-        head = f"{returns.analyte}: " if received.others else ""
+        name = plan.campaign.analyte_called(returns.analyte).label
+        head = f"{name}: " if received.others else ""
         verb = "needs" if waiting == 1 else "need"
         end = f"; {waiting} {verb} you" if waiting else ""
         lines.append(f"{head}{returns.matched} of {total} laboratory rows matched{end}.")
     return lines
 
 
-def _say_received(received: "Received", *, quiet: bool) -> None:
+def _say_received(plan: "Plan", received: "Received", *, quiet: bool) -> None:
     """Say what came of each analyte; what holds for the whole file is said once."""
     said: set[str] = set()
-    for line, returns in zip(_counts(received), received.every, strict=True):
+    for line, returns in zip(_counts(plan, received), received.every, strict=True):
         say(line, quiet=quiet)
         for note in returns.notes:
             if note not in said:
@@ -211,7 +212,9 @@ def _say_received(received: "Received", *, quiet: bool) -> None:
         said |= set(returns.notes)
 
 
-def _ask(received: "Received", confirmed: "tuple[ConfirmedMatch, ...]", folder: Path) -> None:
+def _ask(
+    plan: "Plan", received: "Received", *, confirmed: "tuple[ConfirmedMatch, ...]", folder: Path
+) -> None:
     """Write the proposals to answer, then stop."""
     from fieldplan.base.errors import LabError
     from fieldplan.base.files import write_atomically
@@ -229,7 +232,7 @@ def _ask(received: "Received", confirmed: "tuple[ConfirmedMatch, ...]", folder: 
         for match in received.needs_you
     ]
     raise LabError(
-        *_counts(received),
+        *_counts(plan, received),
         *lines,
         f"Write yes or no into the column 'confirm' of {path}, then run the command again with "
         f"--matches {path}. Nothing was estimated.",

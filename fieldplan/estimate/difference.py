@@ -135,9 +135,9 @@ def _promise(plan: Plan, mean: MeanEstimate, *, planned: Planned) -> str:
     if planned.standard_error is None:
         return (
             "No precision was planned for it, since no sigma was known; the number of "
-            f"{results} was chosen for {plan.campaign.deciding_analyte.id}. {achieved}"
+            f"{results} was chosen for {plan.campaign.deciding_analyte.label}. {achieved}"
         )
-    chosen = f", a number chosen for {plan.campaign.deciding_analyte.id}"
+    chosen = f", a number chosen for {plan.campaign.deciding_analyte.label}"
     return (
         f"Planned: a standard error of {significant(planned.standard_error)} {planned.unit} from "
         f"{results}{'' if planned.decides else chosen}. {achieved}"

@@ -40,7 +40,7 @@ def where(plan: Plan) -> str:
 
 
 def analyte_name(plan: Plan, name: str) -> str:
-    """Name an analyte in running text.
+    """Name an analyte as its author typed it.
 
     Parameters
     ----------
@@ -52,11 +52,9 @@ def analyte_name(plan: Plan, name: str) -> str:
     --------
     >>> from tests.factories import make_plan
     >>> analyte_name(make_plan(), "lead")
-    'lead'
+    'Lead'
     """
-    analyte = plan.campaign.analyte_called(name)
-    plain_word = len(analyte.name) > 3 and analyte.name[1:].islower()
-    return analyte.name.lower() if plain_word else analyte.name or analyte.id
+    return plan.campaign.analyte_called(name).label
 
 
 def answer_sentences(

@@ -260,5 +260,6 @@ def _others(
                 entry = gathered.choose(stratum.name)
                 entries.append(replace(entry, stratum=stratum.name))
         except FieldplanError as fault:
-            notes += [f"{analyte}: {line}" for line in fault.problems]
+            name = campaign.analyte_called(analyte or deciding).label
+            notes += [f"{name}: {line}" for line in fault.problems]
     return entries, notes

@@ -124,7 +124,7 @@ def _answered(
         )
     found = _bought(question, found, size=size, asked=asked)
     words = other_sentence(
-        found, size, name=known.analyte.name or known.analyte.id, given=known.given, why_not=why_not
+        found, size, name=known.analyte.label, given=known.given, why_not=why_not
     )
     return replace(found, sentence=words)
 

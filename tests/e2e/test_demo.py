@@ -34,7 +34,7 @@ def test_the_soil_demo_answers_for_zinc_too(
     monkeypatch.chdir(tmp_path)
     outcome = run("demo", "hobbin-ley")
     assert outcome.exit_code == 0, outcome.output
-    assert outcome.stdout.count("The mean of zinc over Hobbin Ley (invented) is ") == 1
+    assert outcome.stdout.count("The mean of Zinc over Hobbin Ley (invented) is ") == 1
     results = tmp_path / "fieldplan-demo" / "hobbin-ley" / "HL-r01-results-01"
     for name in ("results_sheet-zinc.html", "results_sheet-zinc.pdf", "results_map-zinc.png"):
         assert (results / name).stat().st_size > 1000

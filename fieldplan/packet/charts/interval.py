@@ -14,13 +14,17 @@ if TYPE_CHECKING:
 _Row = tuple[str, float, Interval]
 
 
-def interval_figure(estimate: Estimate, *, action_level: float | None = None) -> Figure:
+def interval_figure(
+    estimate: Estimate, *, name: str = "", action_level: float | None = None
+) -> Figure:
     """Draw the mean and its declared interval as one bar, more bars where non-detects bracket it.
 
     Parameters
     ----------
     estimate : Estimate
         A one-sided limit is drawn with an arrow towards its open side.
+    name : str
+        The analyte as printed; its id when empty.
     action_level : float, optional
         In the laboratory's unit; drawn as an upright line.
 
@@ -30,8 +34,8 @@ def interval_figure(estimate: Estimate, *, action_level: float | None = None) ->
         165 mm wide, with its caption and its words.
     """
     with pens():
-        drawing = svg_text(_drawing(estimate, action_level))
-    caption = f"The mean of {estimate.analyte} and its {_kind(estimate.interval)}."
+        drawing = svg_text(_drawing(estimate, name or estimate.analyte, level=action_level))
+    caption = f"The mean of {name or estimate.analyte} and its {_kind(estimate.interval)}."
     if estimate.bracket is not None:
         caption += " Non-detects at 0, half and the limit bracket the answer."
     words = "; ".join(_words(row, estimate.unit) for row in _rows(estimate))
@@ -63,23 +67,23 @@ def _rows(estimate: Estimate) -> list[_Row]:
     ]
 
 
-def _drawing(estimate: Estimate, action_level: float | None) -> "Canvas":
+def _drawing(estimate: Estimate, name: str, *, level: float | None) -> "Canvas":
     """Lay rows above an axis that starts where the numbers need it."""
     rows = _rows(estimate)
     height = 26.0 + 11.0 * len(rows)
     figure = new_figure(165, height)
     axes = figure.add_axes((44 / 165, 13 / height, 114 / 165, (height - 20) / height))
-    low, high = _limits(rows, action_level)
+    low, high = _limits(rows, level)
     axes.set_xlim(low, high)
     axes.set_ylim(-0.65, len(rows) - 0.35)
     for place, row in enumerate(reversed(rows)):
         _bar(axes, row, place=float(place), first=place == len(rows) - 1)
-    if action_level is not None:
-        _level(axes, action_level, unit=estimate.unit, late=action_level > (low + high) / 2)
+    if level is not None:
+        _level(axes, level, unit=estimate.unit, late=level > (low + high) / 2)
     axes.spines["left"].set_visible(False)
-    axes.set_yticks(range(len(rows)), [name for name, _, _ in reversed(rows)])
+    axes.set_yticks(range(len(rows)), [words for words, _, _ in reversed(rows)])
     axes.tick_params(axis="y", length=0, pad=9)
-    axes.set_xlabel(f"mean {estimate.analyte} ({estimate.unit}), {_kind(estimate.interval)}")
+    axes.set_xlabel(f"mean of {name} ({estimate.unit}), {_kind(estimate.interval)}")
     return figure
 
 

@@ -18,13 +18,15 @@ _DOT_MM = 1.9
 _ROOM_MM = 118.0
 
 
-def pilot_dots(spread: Spread) -> Figure:
+def pilot_dots(spread: Spread, *, name: str = "") -> Figure:
     """Draw one dot a location, one row a stratum.
 
     Parameters
     ----------
     spread : Spread
         Strata whose values are kept; the whole site where no stratum has any.
+    name : str
+        The analyte as printed; its id when empty.
 
     Returns
     -------
@@ -42,8 +44,8 @@ def pilot_dots(spread: Spread) -> Figure:
         message = f"sigma of {spread.analyte!r} was typed; there are no pilot values to draw"
         raise ValueError(message)
     with pens():
-        drawing = svg_text(_drawing(spread, rows))
-    caption = f"Every pilot value of {spread.analyte}, one dot a location."
+        drawing = svg_text(_drawing(spread, rows, name=name or spread.analyte))
+    caption = f"Every pilot value of {name or spread.analyte}, one dot a location."
     return Figure(drawing, caption, " ".join(_words(row, spread.unit) for row in rows))
 
 
@@ -92,7 +94,7 @@ def _rows(spread: Spread) -> list[StratumSpread]:
     return rows
 
 
-def _drawing(spread: Spread, rows: list[StratumSpread]) -> "Canvas":
+def _drawing(spread: Spread, rows: list[StratumSpread], *, name: str) -> "Canvas":
     """Stack one row a stratum above a common axis."""
     everything = [value for row in rows for value in row.values]
     low, high = min(0.0, *everything), max(everything)
@@ -111,7 +113,7 @@ def _drawing(spread: Spread, rows: list[StratumSpread]) -> "Canvas":
         _row(axes, row, levels=np.array(levels), base=base + 3.0)
     axes.spines["left"].set_visible(False)
     axes.set_yticks([])
-    axes.set_xlabel(f"{spread.analyte} ({spread.unit})")
+    axes.set_xlabel(f"{name} ({spread.unit})")
     words = "● result   ○ non-detect, at half its limit   │ mean"
     figure.text(0.985, 0.4 / total, words, ha="right", va="bottom", fontsize=6.5, color=SOFT)
     return figure

@@ -51,7 +51,8 @@ def results_content(plan: Plan, estimate: Estimate) -> MapContent:
         Names are short names with the value as reported.
     """
     results = estimate.returns.results
-    level = plan.campaign.analyte_called(estimate.analyte).action_level
+    analyte = plan.campaign.analyte_called(estimate.analyte)
+    level = analyte.action_level
     bounds = class_bounds([r.half for r in results if r.detected], level)
     places = {place.location_id: place for place in plan.locations.places}
     marks = list(unit_marks(plan))
@@ -67,7 +68,7 @@ def results_content(plan: Plan, estimate: Estimate) -> MapContent:
         if p.location_id in lost
     ]
     return MapContent(
-        f"{plan.campaign.plan.title}: results for {estimate.analyte}",
+        f"{plan.campaign.plan.title}: results for {analyte.label}",
         tuple(marks),
         _legend(estimate, bounds, level=level),
         tuple(arrows),

@@ -7,7 +7,6 @@ from fieldplan.packet.sheets.amounts import counted, likely, listed, percent, ro
 from fieldplan.packet.sheets.plan_words import (
     ALLOCATIONS,
     LAYOUTS,
-    analyte_name,
     mean_of,
     several_strata,
 )
@@ -40,7 +39,7 @@ def can_tell(plan: Plan) -> tuple[str, ...]:
         )
     names = list(dict.fromkeys(other.analyte for other in plan.size.others))
     if besides := [n for n in names if n != plan.campaign.deciding_analyte.id]:
-        words = listed([analyte_name(plan.campaign.analyte_called(name)) for name in besides])
+        words = listed([plan.campaign.analyte_called(name).label for name in besides])
         lines.append(f"The mean of {words} from the same jars, as closely as section 5 says.")
     if several_strata(plan):
         lines.append("A mean for each stratum, with a wider interval than the site's.")

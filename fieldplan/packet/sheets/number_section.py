@@ -16,7 +16,7 @@ def spread_blocks(plan: Plan) -> list[Block]:
     if any(entry.values for entry in spread.strata) or (spread.site and spread.site.values):
         from fieldplan.packet.charts import pilot_dots
 
-        blocks.append(pilot_dots(spread))
+        blocks.append(pilot_dots(spread, name=plan.campaign.deciding_analyte.label))
     if not all(entry.values for entry in spread.strata):
         blocks.append(spread_table(plan))
     if spread.notes:
@@ -144,4 +144,4 @@ def other_row(plan: Plan, other: OtherPrecision) -> tuple[str, ...]:
     chance = "–" if other.chance is None else chance_words(other)
     if other.chance is not None and other.assurance is not None:
         chance += f" ({percent(other.assurance)} asked for)"
-    return (analyte.name or analyte.id, error, other.target or "–", kept, chance)
+    return (analyte.label, error, other.target or "–", kept, chance)

@@ -1,6 +1,6 @@
 """What a plan is called in the sentences of its sheets."""
 
-from fieldplan.campaign.model import Analyte, Campaign
+from fieldplan.campaign.model import Campaign
 from fieldplan.packet.sheets.amounts import counted, percent
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
@@ -43,20 +43,6 @@ def several_strata(plan: Plan) -> bool:
     return len(plan.frame.strata) > 1
 
 
-def analyte_name(analyte: Analyte) -> str:
-    """Name the analyte as in running text.
-
-    Examples
-    --------
-    >>> analyte_name(Analyte(id="lead", name="Lead", unit="mg/kg", matrix="soil"))
-    'lead'
-    >>> analyte_name(Analyte(id="x", name="PCB-180", unit="mg/kg"))
-    'PCB-180'
-    """
-    name = analyte.name or analyte.id
-    return name[0].lower() + name[1:] if name[1:].islower() else name
-
-
 def mean_of(campaign: Campaign) -> str:
     """Say which mean is estimated.
 
@@ -64,12 +50,12 @@ def mean_of(campaign: Campaign) -> str:
     --------
     >>> from tests.factories import make_campaign
     >>> mean_of(make_campaign())
-    'mean lead in soil (dry weight)'
+    'mean of Lead in soil (dry weight)'
     """
     analyte = campaign.deciding_analyte
     matrix = f" in {analyte.matrix}" if analyte.matrix else ""
     kinds = [kind for kind in (analyte.basis, analyte.fraction) if kind]
-    return f"mean {analyte_name(analyte)}{matrix}" + (f" ({', '.join(kinds)})" if kinds else "")
+    return f"mean of {analyte.label}{matrix}" + (f" ({', '.join(kinds)})" if kinds else "")
 
 
 def aim_sentence(plan: Plan) -> str:
@@ -108,7 +94,7 @@ def assumed_lines(plan: Plan) -> tuple[str, ...]:
         if entry.assumed:
             analyte = plan.campaign.analyte_called(entry.analyte)
             decides = analyte == plan.campaign.deciding_analyte
-            whose = "" if decides else f" for {analyte_name(analyte)}"
+            whose = "" if decides else f" for {analyte.label}"
             lines.append(
                 f"ASSUMED{whose}: the standard deviation of {number(entry.sigma)} {analyte.unit} "
                 f"in {entry.stratum} is a guess, not a measurement."

@@ -3,7 +3,7 @@
 from fieldplan.base.document import Block, Bullets, Facts, Paragraph, Table
 from fieldplan.campaign.model import Analyte
 from fieldplan.packet.sheets.amounts import BLANK, area, days, percent
-from fieldplan.packet.sheets.plan_words import analyte_name, mean_of, several_strata
+from fieldplan.packet.sheets.plan_words import mean_of, several_strata
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
 
@@ -28,7 +28,7 @@ def question_blocks(plan: Plan) -> list[Block]:
 def also_asked(plan: Plan) -> list[str]:
     """Say which other objectives the campaign has; they do not decide the number."""
     named = [(plan.campaign.analyte_called(o.analyte), o.target) for o in plan.size.others]
-    return [f"mean {analyte_name(analyte)}, {target}" for analyte, target in named if target]
+    return [f"mean of {analyte.label}, {target}" for analyte, target in named if target]
 
 
 def analyte_table(plan: Plan) -> Table:
@@ -41,7 +41,7 @@ def analyte_table(plan: Plan) -> Table:
 def analyte_row(analyte: Analyte) -> tuple[str, ...]:
     """Set one analyte."""
     return (
-        analyte.name or analyte.id,
+        analyte.label,
         analyte.unit,
         analyte.matrix,
         ", ".join(kind for kind in (analyte.basis, analyte.fraction) if kind),

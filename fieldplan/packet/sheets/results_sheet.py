@@ -89,8 +89,8 @@ def answer_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
     """Compose page one: the answer in sentences, each once, and its figure."""
     from fieldplan.packet.charts import interval_figure
 
-    level = plan.campaign.analyte_called(estimate.analyte).action_level
-    figure = interval_figure(estimate, action_level=level)
+    analyte = plan.campaign.analyte_called(estimate.analyte)
+    figure = interval_figure(estimate, name=analyte.label, action_level=analyte.action_level)
     return [*answer_words(estimate), figure, *after_figure(estimate)]
 
 

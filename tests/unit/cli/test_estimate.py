@@ -90,7 +90,7 @@ def test_the_answer_comes_first_and_the_sheet_last(folder: Path, unset: list[Pat
     outcome = run("--field", "field.csv")
     assert outcome.exit_code == 0
     lines = outcome.stdout.splitlines()
-    assert lines[0].startswith("The mean of lead over Quarry Field is ")
+    assert lines[0].startswith("The mean of Lead over Quarry Field is ")
     assert lines[-1].endswith("results_sheet.html")
     assert "11 of 11 laboratory rows matched." in outcome.stderr
     assert unset == [Path("QF-r01-results-01")]
@@ -226,11 +226,11 @@ def test_the_deciding_analyte_comes_in_full_and_each_other_in_a_sentence(
     """One file, one command, nothing left out."""
     outcome = run("--field", "field.csv")
     said = outcome.stdout
-    assert said.startswith("The mean of lead over Quarry Field is ")
-    assert said.count("The mean of zinc over Quarry Field is ") == 1
-    assert said.index("zinc") > said.index("the action level of 150")
-    assert "lead: 11 of 11 laboratory rows matched." in outcome.stderr
-    assert "zinc: 11 of 11 laboratory rows matched." in outcome.stderr
+    assert said.startswith("The mean of Lead over Quarry Field is ")
+    assert said.count("The mean of Zinc over Quarry Field is ") == 1
+    assert said.index("Zinc") > said.index("the action level of 150")
+    assert "Lead: 11 of 11 laboratory rows matched." in outcome.stderr
+    assert "Zinc: 11 of 11 laboratory rows matched." in outcome.stderr
     content = json.loads(run("--field", "field.csv", "--json").stdout)
     assert [content["analyte"], *(o["analyte"] for o in content["others"])] == ["lead", "zinc"]
 
@@ -242,7 +242,7 @@ def test_one_analyte_can_be_asked_for_by_id_or_name(both: Path, unset: list[Path
         alone = json.loads(run("--analyte", word, "--json").stdout)
         assert {key: alone[key] for key in beside} == beside
         assert alone["others"] == []
-    assert "lead" not in run("--analyte", "zinc", "--quiet").stdout
+    assert "Lead" not in run("--analyte", "zinc", "--quiet").stdout
 
 
 @pytest.mark.parametrize(
@@ -268,7 +268,7 @@ def test_a_missing_analyte_is_said_and_a_faulty_one_stops_everything(
     rows = lab_rows(both)
     write_lab(both, rows[:11])
     said = " ".join(run("--quiet").stdout.split())
-    assert "No mean of zinc is given: labs.csv has no result of it that counts." in said
+    assert "No mean of Zinc is given: labs.csv has no result of it that counts." in said
     rows[12][3] = "ppm"
     write_lab(both, rows)
     lines = refused()
@@ -285,15 +285,15 @@ def test_a_retyped_jar_is_asked_once_and_its_answer_serves_both(
     write_lab(both, rows)
     lines = refused()
     assert lines[:2] == (
-        "lead: 10 of 11 laboratory rows matched; 1 needs you.",
-        "zinc: 10 of 11 laboratory rows matched; 1 needs you.",
+        "Lead: 10 of 11 laboratory rows matched; 1 needs you.",
+        "Zinc: 10 of 11 laboratory rows matched; 1 needs you.",
     )
     assert len([line for line in lines if line.startswith("  row ")]) == 1
     path = both / "matches.csv"
     answered = path.read_text(encoding="utf-8-sig").replace('letters",', 'letters",yes')
     path.write_text(answered, encoding="utf-8", newline="")
     outcome = run("--matches", "matches.csv")
-    assert "zinc: 11 of 11 laboratory rows matched." in outcome.stderr
+    assert "Zinc: 11 of 11 laboratory rows matched." in outcome.stderr
 
 
 def test_a_changed_rule_for_duplicates_reaches_every_analyte(both: Path, unset: list[Path]) -> None:
@@ -303,4 +303,4 @@ def test_a_changed_rule_for_duplicates_reaches_every_analyte(both: Path, unset: 
     )
     assert changed["others"][0]["mean"] < recorded["others"][0]["mean"]
     assert changed["others"][0]["changes_after_results"]
-    assert "CHANGED AFTER RESULTS, zinc: " in changed["other_sentences"][1]
+    assert "CHANGED AFTER RESULTS, Zinc: " in changed["other_sentences"][1]

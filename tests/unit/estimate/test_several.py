@@ -59,7 +59,7 @@ def test_another_analyte_gets_the_textbook_mean_and_interval() -> None:
     assert answer.interval.low == pytest.approx(mean - reach, rel=1e-6)
     assert answer.interval.high == pytest.approx(mean + reach, rel=1e-6)
     assert answer.unit == "µg/g"
-    assert answer.sentences[0].startswith("The mean of zinc over Quarry Field is ")
+    assert answer.sentences[0].startswith("The mean of Zinc over Quarry Field is ")
     assert not [line for line in answer.sentences if "mg/kg" in line]
     assert not [step for step in answer.steps if "mg/kg" in step.unit]
 
@@ -90,7 +90,7 @@ def test_its_promise_is_set_against_what_came() -> None:
     assert answer.planned_standard_error == 13.61
     text = " ".join(answer.why_different)
     assert (
-        "Planned: a standard error of 13.6 µg/g from 7 results, a number chosen for lead." in text
+        "Planned: a standard error of 13.6 µg/g from 7 results, a number chosen for Lead." in text
     )
     assert "The target, standard error of the mean ≤ 15 µg/g, was kept" in text
     planned = planned_for(plan, "zinc")
@@ -116,7 +116,7 @@ def test_each_other_analyte_gets_one_sentence_with_its_level() -> None:
     answers = estimate_all(plan_with_zinc(), Received(make_returns(), (zinc(),)))
     assert answers.main.analyte == "lead"
     (sentence,) = answers.sentences
-    assert sentence.startswith("The mean of zinc over Quarry Field is 129 µg/g, 95 % interval ")
+    assert sentence.startswith("The mean of Zinc over Quarry Field is 129 µg/g, 95 % interval ")
     assert sentence.endswith("; the interval lies below the action level of 300 µg/g.")
 
 
@@ -135,18 +135,18 @@ def test_rules_changed_after_results_are_said_for_every_analyte() -> None:
         plan_with_zinc(), Received(make_returns(), (zinc(),)), overrides={"confidence": 0.9}
     )
     assert "90 % interval" in answers.sentences[0]
-    assert answers.sentences[1].startswith("CHANGED AFTER RESULTS, zinc: confidence was 0.95")
+    assert answers.sentences[1].startswith("CHANGED AFTER RESULTS, Zinc: confidence was 0.95")
 
 
 def test_an_analyte_that_is_missing_or_gets_no_mean_is_said_and_stops_nothing() -> None:
     """A stratum with one result is refused by the recorded rule, for zinc alone."""
     plan = plan_with_zinc()
     (missing,) = estimate_all(plan, Received(make_returns(), (), ("zinc",))).sentences
-    assert missing == "No mean of zinc is given: results.csv has no result of it that counts."
+    assert missing == "No mean of Zinc is given: results.csv has no result of it that counts."
     few = returned(zinc_results()[:5], analyte="zinc")
     answers = estimate_all(plan, Received(make_returns(), (few,)))
     assert answers.others == ()
-    assert answers.sentences[0].startswith("No mean of zinc is given: ")
+    assert answers.sentences[0].startswith("No mean of Zinc is given: ")
     assert "yard" in answers.sentences[0]
     unused = [replace(r, used=False, why_not="targeted") for r in zinc_results()]
     answers = estimate_all(plan, Received(make_returns(), (returned(unused, analyte="zinc"),)))

@@ -230,4 +230,4 @@ def test_other_analytes_are_told_and_never_stop_the_campaign(spread_of: Say) -> 
     typed = Sigma(analyte="zinc", stratum="meadow", value=9.0, source="ASSUMED")
     spread = spread_of(pilot, typed, campaign=campaign)
     assert [(o.analyte, o.stratum, o.sigma) for o in spread.others] == [("zinc", "meadow", 9.0)]
-    assert any(note.startswith("zinc: ") for note in spread.notes)
+    assert any(note.startswith("Zinc: ") for note in spread.notes)

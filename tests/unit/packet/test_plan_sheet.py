@@ -72,7 +72,7 @@ def test_page_one_says_how_many_where_how_precise_and_what_is_open():
     """A reader who stops after page one has the answer."""
     text = page_one()
     assert text.startswith("7 results are needed; visit 9 locations.")
-    assert "The aim is the mean lead in soil (dry weight), to be set against 150 mg/kg" in text
+    assert "The aim is the mean of Lead in soil (dry weight), to be set against 150 mg/kg" in text
     assert "yard | 28.8 % | 45.0 ASSUMED | 4 | 5 | 2" in text
     assert "The mean speaks for 98.3 % of the site" in text
     assert "HOLD POINT, no work before it is settled: underground utilities." in text

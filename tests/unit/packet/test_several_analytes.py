@@ -46,8 +46,8 @@ def test_the_plan_sheet_sets_what_n_buys_for_the_other_analyte() -> None:
          "62 % (80 % asked for)"),
     )  # fmt: skip
     text = words_of(plan_sheet(plan_with_zinc()))
-    assert "Also asked: mean zinc, standard error of the mean ≤ 15 µg/g" in text
-    assert "The mean of zinc from the same jars, as closely as section 5 says." in text
+    assert "Also asked: mean of Zinc, standard error of the mean ≤ 15 µg/g" in text
+    assert "The mean of Zinc from the same jars, as closely as section 5 says." in text
     assert "Other analytes and objectives" in text
 
 
@@ -76,7 +76,7 @@ def test_an_assumed_sigma_of_another_analyte_keeps_its_stamp() -> None:
     """A guess is a guess whoever decided n."""
     plan = replace(plan_with_zinc(), spread=spread_with_zinc(assumed=True))
     text = "\n".join(text_of(block) for block in answer_words(plan))
-    assert "ASSUMED for zinc: the standard deviation of 30 µg/g in meadow is a guess" in text
+    assert "ASSUMED for Zinc: the standard deviation of 30 µg/g in meadow is a guess" in text
     assumed = replace(plan.size.others[0], assumed=True)
     assert table_of((assumed,)).rows[0][1] == "13.6 µg/g (sigma ASSUMED)"
 
@@ -102,13 +102,13 @@ def test_the_main_sheet_says_each_other_answer_and_where_it_is_in_full() -> None
 def test_the_sheet_of_another_analyte_is_about_nothing_else() -> None:
     """Title, numbers, level and unit are zinc's; lead is named only as what decided n."""
     sheet = results_sheet(plan_with_zinc(), Answers(answers().others[0]))
-    assert sheet.title.startswith("Results for zinc: ")
+    assert sheet.title.startswith("Results for Zinc: ")
     text = words_of(sheet).replace(sheet.title, "")
     assert "mg/kg" not in text
     assert "action level of 300 µg/g" in text
     assert "action level of 150" not in text
-    assert [line for line in text.splitlines() if "lead" in line] == [
-        "Planned: a standard error of 13.6 µg/g from 7 results, a number chosen for lead. "
+    assert [line for line in text.splitlines() if "Lead" in line] == [
+        "Planned: a standard error of 13.6 µg/g from 7 results, a number chosen for Lead. "
         "Achieved: 10.5 µg/g from 8."
     ]
     (strata,) = [b for b in sheet.blocks if isinstance(b, Table) and b.columns[-1] == "Expected"]
@@ -122,7 +122,7 @@ def test_the_map_of_another_analyte_has_its_own_level() -> None:
     analytes = (plan.campaign.analyte[0], levelled)
     plan = replace(plan, campaign=plan.campaign.model_copy(update={"analyte": analytes}))
     content = results_content(plan, answers().others[0])
-    assert content.title.endswith("results for zinc")
+    assert content.title.endswith("results for Zinc")
     legend = " ".join(entry.words for entry in content.legend)
     assert "180 µg/g (action level)" in legend
     assert "action level of 300 µg/g" in " ".join(content.lines)
@@ -148,6 +148,6 @@ def test_the_folder_holds_a_sheet_and_a_map_of_each_and_one_table_of_all(folder:
         assert {row["analyte"] for row in csv.DictReader(stream)} == {"lead", "zinc"}
     content = json.loads((folder / "results.json").read_text(encoding="utf-8"))
     assert [content["analyte"], *(o["analyte"] for o in content["others"])] == ["lead", "zinc"]
-    for mark, word in (("", "lead"), ("-zinc", "zinc")):
+    for mark, word in (("", "Lead"), ("-zinc", "Zinc")):
         page = (folder / f"results_sheet{mark}.html").read_text(encoding="utf-8")
         assert f"The mean of {word} over" in page or f"mean of {word} is" in page

@@ -122,7 +122,7 @@ def test_a_curve_without_points_is_refused() -> None:
 def test_every_pilot_value_is_one_dot_and_non_detects_are_hollow() -> None:
     """Counted on the drawing."""
     with pens():
-        figure = pilot_module._drawing(make_pilot(), list(make_pilot().strata))
+        figure = pilot_module._drawing(make_pilot(), list(make_pilot().strata), name="Lead")
     dots = {"filled": [], "hollow": []}
     for line in figure.axes[0].lines:
         if line.get_marker() == "o":
@@ -160,7 +160,7 @@ def test_a_typed_sigma_has_no_dots_and_says_so() -> None:
 def test_the_interval_ends_where_the_estimate_says() -> None:
     """Three bars: non-detects at half, at 0 and at the limit; the answer on top."""
     with pens():
-        figure = interval_module._drawing(make_estimate(), 150.0)
+        figure = interval_module._drawing(make_estimate(), "Lead", level=150.0)
     (axes,) = figure.axes
     bars = [line.get_xdata() for line in axes.lines if len(line.get_xdata()) == 2]
     spans = {tuple(float(x) for x in bar) for bar in bars}
@@ -181,7 +181,7 @@ def test_the_open_end_of_a_limit_is_an_arrow(interval: Interval, arrow: str) -> 
     """It has no end to draw."""
     estimate = replace(make_estimate(), bracket=None, interval=interval)
     with pens():
-        figure = interval_module._drawing(estimate, None)
+        figure = interval_module._drawing(estimate, "Lead", level=None)
     markers = [line.get_marker() for line in figure.axes[0].lines]
     assert markers.count(arrow) == 1
     assert interval.kind.replace("-", " ") in figure.axes[0].get_xlabel()
