@@ -67,7 +67,7 @@ def command(
     read = read_campaign(campaign_file)
     parent = out if out is not None else read.folder
     table = read.campaign.plan
-    revision = next_revision(parent, table.id, wanted=table.revision)
+    revision = next_revision(parent, read.folder, plan_id=table.id, wanted=table.revision)
     inputs = read_inputs(input_files(read))
     plan = make_plan(read, made_on=day(on), revision=revision, progress=progress)
     packet = write_packet(plan, parent, inputs, progress=progress)
@@ -96,15 +96,20 @@ def command(
 
 
 def plan_sentences(plan: "Plan") -> list[str]:
-    """Say how many places and jars a plan has."""
-    random = len(plan.locations.of_class("random"))
-    alternates = len(plan.locations.of_class("alternate"))
-    targeted = len(plan.locations.of_class("targeted"))
-    extra = f", {alternates} alternates" if alternates else ""
-    extra += f", {targeted} targeted" if targeted else ""
+    """Say how many places and samples a plan has, in the words of its sheet."""
+    from fieldplan.packet.sheets.amounts import counted, listed
+    from fieldplan.packet.sheets.plan_words import sample_sentence
+
+    of_class = plan.locations.of_class
+    places = [
+        f"{counted(len(of_class('random')), 'location')} to visit for {plan.size.needed} results"
+    ]
+    if targeted := len(of_class("targeted")):
+        places.append(counted(targeted, "targeted place"))
+    if alternates := len(of_class("alternate")):
+        places.append(counted(alternates, "alternate"))
     return [
-        f"{plan.revision_name} ({plan.status}): {random} locations to visit for "
-        f"{plan.size.needed} results{extra}; {len(plan.samples.samples)} samples in all.",
+        f"{plan.revision_name} ({plan.status}): {listed(places)}. {sample_sentence(plan)}",
         *plan.size.sentences[:1],
     ]
 

@@ -3,11 +3,11 @@
 from dataclasses import replace
 
 from fieldplan.base.document import Block, Bullets, Heading, Paragraph, Table
-from fieldplan.packet.sheets.amounts import counted, percent, rounded
+from fieldplan.packet.sheets.amounts import percent, rounded
 from fieldplan.packet.sheets.plan_words import (
     aim_sentence,
     assumed_lines,
-    jars,
+    sample_sentence,
     several_strata,
 )
 from fieldplan.plan.model import Plan
@@ -88,12 +88,12 @@ def is_assumed(plan: Plan, stratum: str) -> bool:
 
 def extra_lines(plan: Plan) -> list[Block]:
     """Say how many jars, and how many places besides."""
-    lines = [f"To take at the planned locations: {jars(plan)}."]
+    lines = [sample_sentence(plan)]
     targeted = plan.locations.of_class("targeted")
     if targeted:
         lines.append(
-            f"{counted(len(targeted), 'targeted place')} besides, chosen by judgement: "
-            "visited and reported, never in the mean."
+            f"Targeted places ({len(targeted)}) are chosen by judgement: visited and reported, "
+            "never in the mean."
         )
     return [Bullets(tuple(lines))]
 

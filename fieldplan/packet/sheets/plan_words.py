@@ -1,7 +1,9 @@
 """What a plan is called in the sentences of its sheets."""
 
+from collections import Counter
+
 from fieldplan.campaign.model import Campaign
-from fieldplan.packet.sheets.amounts import counted, percent
+from fieldplan.packet.sheets.amounts import counted, listed, percent
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
 
@@ -104,10 +106,29 @@ def assumed_lines(plan: Plan) -> tuple[str, ...]:
     return tuple(lines)
 
 
-def jars(plan: Plan) -> str:
-    """Count the samples of planned locations and the control samples beside them."""
-    planned = {place.location_id for place in plan.locations.of_class("random")}
-    taken = [s for s in plan.samples.samples if s.location_id in planned and not s.qc_of]
-    control = sum(entry.count for entry in plan.size.qc)
-    line = counted(len(taken), "sample")
-    return f"{line} and {counted(control, 'control sample')}" if control else line
+def sample_sentence(plan: Plan) -> str:
+    """Count every sample of the plan once: those to take, and those ready for alternates.
+
+    Examples
+    --------
+    >>> from tests.factories import make_plan
+    >>> sample_sentence(make_plan())
+    '11 samples to take: 9 at the locations to visit, 1 control sample and 1 at a targeted place. \
+4 more have their ids ready, for alternates.'
+    """
+    classes = {p.location_id: p.location_class for p in plan.locations.places}
+    kinds = Counter(
+        "control" if s.qc_of or not s.location_id else classes[s.location_id]
+        for s in plan.samples.samples
+    )
+    parts = [f"{kinds['random']} at the locations to visit"]
+    if kinds["control"]:
+        parts.append(counted(kinds["control"], "control sample"))
+    if kinds["targeted"]:
+        place = "a targeted place" if kinds["targeted"] == 1 else "targeted places"
+        parts.append(f"{kinds['targeted']} at {place}")
+    spare = kinds["alternate"]
+    take = counted(kinds.total() - spare, "sample")
+    ready = "has its id" if spare == 1 else "have their ids"
+    more = f" {spare} more {ready} ready, for alternates." if spare else ""
+    return f"{take} to take: {listed(parts)}.{more}"

@@ -2,7 +2,7 @@
 
 from fieldplan.base.document import Block, Bullets, Facts, Table
 from fieldplan.packet.sheets.amounts import BLANK
-from fieldplan.packet.sheets.plan_words import jars
+from fieldplan.packet.sheets.plan_words import sample_sentence
 from fieldplan.plan.model import Plan
 
 
@@ -12,7 +12,7 @@ def quality_blocks(plan: Plan) -> list[Block]:
     blocks: list[Block] = [
         Facts(
             (
-                ("At the planned locations", jars(plan)),
+                ("Samples", sample_sentence(plan)),
                 ("Method", field.method or BLANK),
                 ("Laboratory", field.laboratory or BLANK),
                 (
