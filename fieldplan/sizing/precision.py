@@ -11,6 +11,39 @@ from fieldplan.stats.stratified import satterthwaite, variance_factors
 
 
 @dataclass(frozen=True)
+class PilotTerm:
+    """What one pilot brings into the predicted variance of the mean.
+
+    Parameters
+    ----------
+    strata : tuple of str
+        Those that take their sigma from it.
+    variance : float
+        Sum of their terms W² s² (1 − n/N) / n.
+    moving : float
+        The same over strata whose number of results follows the pilot: neither held at the floor
+        nor taken whole. 0 unless the allocation is Neyman's.
+    results : int
+        n0.
+    """
+
+    strata: tuple[str, ...]
+    variance: float
+    moving: float
+    results: int
+
+    @property
+    def name(self) -> str:
+        """Its strata in one word, for the working."""
+        return " + ".join(self.strata)
+
+    @property
+    def known(self) -> int:
+        """Degrees of freedom, n0 − 1."""
+        return self.results - 1
+
+
+@dataclass(frozen=True)
 class Precision:
     """The precision of a question's mean for any counts, with sigma times ``factor``."""
 
@@ -53,13 +86,33 @@ class Precision:
         Strata that share one pilot are right or wrong together, so their terms are added before
         the effective number is taken.
         """
-        pilots = self.question.pilots
-        if pilots is None:
+        if self.question.pilots is None:
             return None
+        terms = self.pilot_terms(counts)
+        return satterthwaite([term.variance for term in terms], [term.known for term in terms])
+
+    def pilot_terms(self, counts: Sequence[float]) -> tuple[PilotTerm, ...]:
+        """Split the predicted variance by the pilots behind it; empty where one is unknown.
+
+        Parameters
+        ----------
+        counts : sequence of int
+            Results per stratum.
+        """
+        question, strata = self.question, self.question.strata
         parts = self.parts(counts)
-        sums = [math.fsum(parts[position] for position in group) for group in pilots]
-        known = [(self.question.parts[group[0]].results or 2) - 1 for group in pilots]
-        return satterthwaite(sums, known)
+        bounds = list(zip(counts, strata.floors, strata.caps, strict=True))
+        follows = question.allocation == "neyman"
+        free = [follows and floor < count < cap for count, floor, cap in bounds]
+        return tuple(
+            PilotTerm(
+                strata=tuple(question.parts[k].name for k in group),
+                variance=math.fsum(parts[k] for k in group),
+                moving=math.fsum(parts[k] for k in group if free[k]),
+                results=question.parts[group[0]].results or 2,
+            )
+            for group in question.pilots or ()
+        )
 
     def luck_of_allocation(self, counts: Sequence[float]) -> float:
         """Give by what factor Neyman counts make the predicted variance look too small.
@@ -79,25 +132,20 @@ class Precision:
         Neyman follows the pilot's luck: a stratum whose s came out low gets too few results, and
         the same low s then predicts a small variance. With a = W σ and s = σ u the true variance
         over the predicted is (Σ a/u) / (Σ a u). To first order in 1/df its mean logarithm lies
-        Σ p (1 − p) / df above that of df/χ², where p is a stratum's share of the predicted
-        variance and df = n0 − 1. Strata at their floor or list do not follow the pilot and count
-        only in the whole. Derived here; the tests hold it to simulation.
+        Σ p (1 − p/P) / df above that of df/χ², where p is a stratum's share of the predicted
+        variance, P the sum of p, and df = n0 − 1. Only strata that follow the pilot have a p: one
+        at its floor, or a list taken whole, counts in the variance alone, so that P falls below 1.
+        Strata of one pilot have one p. Derived here; the tests hold it to simulation.
         """
-        question = self.question
-        if question.allocation != "neyman" or question.pilots is None:
-            return 1.0
-        parts, strata = self.parts(counts), question.strata
-        bounds = list(zip(counts, strata.floors, strata.caps, strict=True))
-        free = [floor < count < cap for count, floor, cap in bounds]
-        total = math.fsum(parts)
-        moving = math.fsum(part for part, moves in zip(parts, free, strict=True) if moves)
-        excess = 0.0
-        for group in question.pilots:
-            share = math.fsum(parts[k] for k in group if free[k])
-            if share > 0:
-                known = (question.parts[group[0]].results or 2) - 1
-                excess += share / total * (1 - share / moving) / known
-        return math.exp(excess)
+        terms = self.pilot_terms(counts)
+        total = math.fsum(term.variance for term in terms)
+        moving = math.fsum(term.moving for term in terms)
+        excess = [
+            term.moving / total * (1 - term.moving / moving) / term.known
+            for term in terms
+            if term.moving > 0
+        ]
+        return math.exp(math.fsum(excess))
 
     def chance(self, counts: Sequence[float], *, sigma_known: bool = False) -> float | None:
         """Give the chance that these counts meet the target.

@@ -84,6 +84,26 @@ def test_neyman_follows_the_luck_of_the_pilot() -> None:
     assert math.log(factor) == pytest.approx(excess, abs=noise + 2 / known**2)
 
 
+def test_a_stratum_at_its_floor_counts_in_the_variance_alone() -> None:
+    """The same simulation with the third stratum held at 6 results, whatever its pilot says."""
+    generator, replicates, known, shared, held = np.random.default_rng(5), 200_000, 11, 14, 6
+    spread = np.array(WEIGHTS) * np.array(SIGMAS)
+    luck = np.sqrt(generator.chisquare(known, (replicates, 3)) / known)
+    seen = spread * luck
+    free = seen[:, :2].sum(axis=1)
+    predicted = free**2 / shared + seen[:, 2] ** 2 / held
+    true = (spread[:2] / luck[:, :2]).sum(axis=1) * free / shared + spread[2] ** 2 / held
+    counts = [shared * share / spread[:2].sum() for share in spread[:2]] + [held]
+    parts = spread**2 / counts
+    shares = parts / parts.sum()
+    excess = np.log(true / predicted).mean() - (shares**2).sum() / known
+    question = ask(three(results=known + 1), 1.0, allocation="neyman", floor=held)
+    factor = Precision(question).luck_of_allocation(counts)
+    noise = 4 * np.log(true / predicted).std() / math.sqrt(replicates)
+    assert factor > 1.01
+    assert math.log(factor) == pytest.approx(excess, abs=noise + 2 / known**2)
+
+
 def test_luck_needs_strata_that_follow_their_own_pilot() -> None:
     """One stratum, proportional counts, a common pilot, or floors: nothing to correct."""
     counts = [30, 30, 30]
