@@ -41,6 +41,11 @@ def annex_blocks(plan: Plan) -> list[Block]:
     return [
         PageBreak(),
         Heading("Annex A. The working"),
+        Paragraph(
+            "Sections, pages and equations of sources are cited from memory: read them before "
+            "quoting. What is derived here says so and has no published source.",
+            tone="note",
+        ),
         Working(plan.size.steps),
         PageBreak(),
         Heading("Annex B. The drawing procedure, line by line"),

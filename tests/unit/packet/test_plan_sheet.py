@@ -307,3 +307,9 @@ def test_typed_text_is_printed_as_typed():
     text = words_of(plan_sheet(make_plan(campaign=campaign)))
     assert "<b>=SUM(A1)</b>" in text
     assert "#let x" in text
+
+
+def test_the_annex_says_that_sections_are_cited_from_memory():
+    """A reviewer who quotes a section must read it first; nobody did so here."""
+    text = words_of(standard())
+    assert text.count("Sections, pages and equations of sources are cited from memory") == 1
