@@ -101,7 +101,7 @@ class StratumSpread:
     sigma : float
         What sizing uses: the largest s over non-detects at 0, half and the limit.
     mean : float or None
-        Of the values behind ``sigma``, or the expected mean typed in the file.
+        Of ``values``, so with non-detects at half the limit, or the expected mean as typed.
     results : int or None
         Number of results n0 behind sigma; None when it was typed without one.
     source : str

@@ -185,7 +185,7 @@ def measured_spread(
         analyte=analyte,
         stratum=stratum,
         sigma=sigmas[largest],
-        mean=sample_mean(ends[largest]),
+        mean=sample_mean(ends["half"]),
         results=len(locations),
         source=files,
         values=tuple(ends["half"]),

@@ -221,6 +221,8 @@ def parts_of(
             source=entries[stratum.name].source,
             assumed=entries[stratum.name].assumed,
             skewness=entries[stratum.name].skewness,
+            mean=entries[stratum.name].mean,
+            mean_from=_mean_from(entries[stratum.name]),
         )
         for stratum in frame.strata
     )
@@ -239,6 +241,12 @@ def _losses(campaign: "Campaign", names: list[str]) -> Mapping[str, float]:
             )
             raise CampaignError(message)
     return losses
+
+
+def _mean_from(entry: "StratumSpread") -> str:
+    """Name the source of a mean, and how non-detects entered it."""
+    missing = entry.detected.count(False)
+    return f"{entry.source}, non-detects at half their limit" if missing else entry.source
 
 
 def _pilot(entry: "StratumSpread") -> str:

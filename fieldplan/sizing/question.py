@@ -37,6 +37,10 @@ class Part:
         Sigma was ASSUMED.
     skewness : float or None
         Of the pilot's results, or typed.
+    mean : float or None
+        To expect, for a relative target.
+    mean_from : str
+        Where it comes from, and what was done about non-detects.
     """
 
     name: str
@@ -49,6 +53,8 @@ class Part:
     source: str = ""
     assumed: bool = False
     skewness: float | None = None
+    mean: float | None = None
+    mean_from: str = ""
 
 
 @dataclass(frozen=True)

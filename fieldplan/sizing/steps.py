@@ -35,7 +35,7 @@ def steps(question: Question, counts: Counts) -> tuple[Step, ...]:
     working: list[Step] = []
     if counts.plain is not None and not question.census:
         if question.target == "relative_half_width":
-            working.append(_absolute(question))
+            working += _absolute(question)
         if len(question.parts) == 1:
             working += _single(question, counts.plain[0])
         else:
@@ -44,18 +44,43 @@ def steps(question: Question, counts: Counts) -> tuple[Step, ...]:
     return (*working, *closing_steps(question, counts))
 
 
-def _absolute(question: Question) -> Step:
-    width = question.target_half_width or 0.0
-    return Step(
+def _absolute(question: Question) -> Iterator[Step]:
+    """Show where the expected mean comes from, and the half-width that is its share."""
+    width, mean = question.target_half_width or 0.0, question.mean or 0.0
+    behind = [part for part in question.parts if part.mean is not None]
+    if len(behind) == len(question.parts) > 1:
+        yield _weighted_mean(question, mean)
+    single = question.parts[0].mean_from if len(question.parts) == 1 else ""
+    origin = f" ({single})" if single else ""
+    yield Step(
         symbol="h",
         meaning="Half-width as a share of the expected mean",
         formula="h = r · mean",
         inputs=(
             Quantity("r", "relative half-width", question.value),
-            Quantity("mean", "expected mean", question.mean or 0.0, question.unit),
+            Quantity("mean", f"expected mean{origin}", mean, question.unit),
         ),
         unrounded=width,
         rounded=width,
+        unit=question.unit,
+        source="definition",
+    )
+
+
+def _weighted_mean(question: Question, mean: float) -> Step:
+    inputs = []
+    for part in question.parts:
+        inputs += [
+            Quantity(f"W({part.name})", "share of the population", part.weight),
+            Quantity(f"mean({part.name})", part.mean_from, part.mean or 0.0, question.unit),
+        ]
+    return Step(
+        symbol="mean",
+        meaning="Mean to expect",
+        formula="mean = Σ W · mean of each stratum",
+        inputs=tuple(inputs),
+        unrounded=mean,
+        rounded=mean,
         unit=question.unit,
         source="definition",
     )

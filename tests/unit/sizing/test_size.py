@@ -80,6 +80,23 @@ def test_mean_of_a_relative_target_is_weighted_by_strata() -> None:
     assert result.target_half_width == pytest.approx(0.2 * (16800 * 60 + 6800 * 150) / 23600)
 
 
+def test_the_working_of_a_relative_target_prints_every_mean_behind_it() -> None:
+    """A stranger gets the expected mean, and the half-width, from the printed inputs alone."""
+    spread = measured()
+    meadow = replace(spread.strata[0], detected=(True, False))
+    campaign = make_campaign(objective=objective(relative_half_width=0.2))
+    result = size(campaign, replace(spread, strata=(meadow, *spread.strata[1:])), make_frame())
+    mean, reach = result.steps[:2]
+    given = {entry.symbol: entry for entry in mean.inputs}
+    expected = sum(
+        given[f"W({name})"].value * given[f"mean({name})"].value for name in ("meadow", "yard")
+    )
+    assert mean.unrounded == pytest.approx(expected) == pytest.approx(reach.inputs[1].value)
+    assert reach.unrounded == pytest.approx(0.2 * expected)
+    assert given["mean(meadow)"].meaning == "pilot.csv, non-detects at half their limit"
+    assert given["mean(yard)"].meaning == "pilot.csv"
+
+
 def test_site_mean_stands_in_where_a_stratum_has_none() -> None:
     """The whole pilot's mean is better than none."""
     spread = measured()
