@@ -2,6 +2,7 @@
 
 import os
 import secrets
+from contextlib import suppress
 from pathlib import Path
 
 from fieldplan.base.errors import FieldplanError
@@ -36,10 +37,37 @@ def write_atomically(path: Path, content: bytes | str) -> Path:
             os.fsync(stream.fileno())
         passing.replace(path)
     except OSError as fault:
-        passing.unlink(missing_ok=True)
+        with suppress(OSError):
+            passing.unlink(missing_ok=True)
         message = (
             f"{path} cannot be written ({fault.strerror or fault}); "
             "close it elsewhere, or name another folder."
         )
         raise FieldplanError(message) from fault
     return path
+
+
+def write_new(path: Path, content: bytes | str) -> Path:
+    """Write a file that is not there yet.
+
+    Parameters
+    ----------
+    path : Path
+        Where the file shall stand; its folder must exist.
+    content : bytes or str
+        As for ``write_atomically``.
+
+    Returns
+    -------
+    Path
+        ``path``.
+
+    Raises
+    ------
+    FieldplanError
+        A file of that name is there already, or it cannot be written.
+    """
+    if path.exists() or path.is_symlink():
+        message = f"{path} is there already and is not replaced; give another name."
+        raise FieldplanError(message)
+    return write_atomically(path, content)

@@ -1,14 +1,22 @@
 """The command line: each command parses, calls one function and prints."""
 
+import os
 import sys
 import textwrap
+from collections.abc import Iterable
+from contextlib import suppress
 from importlib import import_module
+from typing import NoReturn
 
 import click
 
 from fieldplan import __version__
 from fieldplan.base.errors import FieldplanError
 
+UNEXPECTED = (
+    "This is a fault of fieldplan, not yours; nothing half-written was left. Run the command again "
+    "with FIELDPLAN_TRACE=1 set and report what it prints"
+)
 COMMANDS: dict[str, dict[str, str]] = {
     "Every day": {
         "new": "Answer a few questions and get a campaign file.",
@@ -62,12 +70,28 @@ def main() -> None:
         reconfigure = getattr(stream, "reconfigure", None)
         if reconfigure is not None:
             reconfigure(encoding="utf-8", errors="replace")
+    os.environ["MPLBACKEND"] = "Agg"
+    if not os.environ.get("SOURCE_DATE_EPOCH", "0").isdigit():
+        del os.environ["SOURCE_DATE_EPOCH"]
     try:
         entry.main(standalone_mode=True)
     except FieldplanError as fault:
-        for problem in fault.problems:
+        _leave(fault.problems, fault.exit_code)
+    except OSError as fault:
+        place = f"{fault.filename}: " if fault.filename else ""
+        _leave([f"{place}{fault.strerror or fault}. What was written before stays as it is."], 1)
+    except Exception as fault:
+        if os.environ.get("FIELDPLAN_TRACE"):
+            raise
+        _leave([f"{UNEXPECTED} ({type(fault).__name__}: {fault})."], 1)
+
+
+def _leave(problems: Iterable[str], code: int) -> NoReturn:
+    """Say what is wrong, one line a problem, and end."""
+    with suppress(OSError):
+        for problem in problems:
             click.echo(_for_reader(problem), err=True)
-        sys.exit(fault.exit_code)
+    sys.exit(code)
 
 
 def _for_reader(problem: str) -> str:

@@ -85,13 +85,14 @@ def _plan(folder: Path, *, quiet: bool) -> Path:
     """Size, pack and issue the campaign; return the issued packet."""
     from fieldplan.campaign import read_campaign
     from fieldplan.campaign.inputs import input_files
-    from fieldplan.packet.writer import issue_packet, next_revision, read_inputs, write_packet
+    from fieldplan.packet.issuing import issue_packet
+    from fieldplan.packet.writer import next_revision, read_inputs, write_packet
     from fieldplan.plan.make import make_plan
 
     _stage(1, f"reading {folder / 'campaign.toml'}", quiet=quiet)
     read = read_campaign(folder / "campaign.toml")
     table = read.campaign.plan
-    revision = next_revision(folder, table.id, wanted=table.revision)
+    revision = next_revision(folder, plan_id=table.id, wanted=table.revision)
     today = table.prepared_on or date.today()
     _stage(2, "counting and drawing locations", quiet=quiet)
     plan = make_plan(read, made_on=today, revision=revision)

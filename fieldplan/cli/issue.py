@@ -29,7 +29,7 @@ def command(packet: Path, by: str, on: datetime | None, as_json: bool, quiet: bo
     rules stay as they are. A later change needs a new revision.
     """
     from fieldplan.packet.evidence import packet_fingerprint
-    from fieldplan.packet.writer import issue_packet, issued_revisions
+    from fieldplan.packet.issuing import issue_packet, issued_revisions
 
     def progress(stage: str) -> None:
         say(f"  {stage} …", quiet=quiet or as_json)

@@ -130,16 +130,16 @@ def sentence(plan: "Plan") -> str:
 def _write_files(
     plan: "Plan", *, csv_file: Path | None, map_file: Path | None, quiet: bool
 ) -> None:
-    from fieldplan.base.files import write_atomically
+    from fieldplan.base.files import write_new
 
     if csv_file is not None:
         from fieldplan.packet.exchange.points_csv import write_points_csv
 
-        say(f"wrote {write_atomically(csv_file, write_points_csv(plan))}", quiet=quiet)
+        say(f"wrote {write_new(csv_file, write_points_csv(plan))}", quiet=quiet)
     if map_file is not None:
         from fieldplan.packet.maps.screen import screen_map
 
-        say(f"wrote {write_atomically(map_file, screen_map(plan))}", quiet=quiet)
+        say(f"wrote {write_new(map_file, screen_map(plan))}", quiet=quiet)
 
 
 def _print_locations(plan: "Plan", *, quiet: bool) -> None:

@@ -1,12 +1,14 @@
 """Numbered folders that appear whole or not at all, and are never replaced."""
 
+import glob
 import hashlib
 import json
 import os
 import re
 import secrets
 import shutil
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
 from pathlib import Path
 
 from fieldplan.base.errors import RecordError
@@ -24,7 +26,7 @@ def taken_numbers(parent: Path, stem: str) -> set[int]:
     stem : str
         e.g. ``HL-r``; ``HL-r01`` and ``HL-r01-draft`` both take number 1.
     """
-    pattern = re.compile(re.escape(stem) + r"(\d{2,})(-draft)?", re.IGNORECASE)
+    pattern = re.compile(re.escape(stem) + r"(\d{2,3})(-draft)?", re.IGNORECASE)
     names = [entry.name for entry in parent.iterdir()] if parent.is_dir() else []
     return {int(found.group(1)) for name in names if (found := pattern.fullmatch(name))}
 
@@ -46,7 +48,7 @@ def build_folder(
     target: Path,
     fill: Callable[[Path], None],
     *,
-    make_way: Callable[[], None] | None = None,
+    make_way: Callable[[], Callable[[], object]] | None = None,
 ) -> Path:
     """Fill a hidden folder beside ``target``, then give it its name in one step.
 
@@ -57,7 +59,8 @@ def build_folder(
     fill : callable
         Writes the content into the folder it is given.
     make_way : callable, optional
-        Called when the content is complete, just before the folder gets its name.
+        Called when the content is complete, just before the folder gets its name; returns what
+        puts things back if that fails.
 
     Returns
     -------
@@ -67,38 +70,114 @@ def build_folder(
     Raises
     ------
     RecordError
-        ``target`` exists, or the folder cannot be written.
+        ``target`` exists or lies inside a packet, or the folder cannot be written.
     """
-    if target.exists() and make_way is None:
-        message = f"{target} is there already and is never replaced; pack the next revision."
-        raise RecordError(message)
-    staging: Path | None = None
+    if make_way is None:
+        _must_be_free(target)
+    must_be_outside_packets(target.parent)
     try:
         target.parent.mkdir(parents=True, exist_ok=True)
         _sweep(target)
-        staging = target.with_name(f".{target.name}.{secrets.token_hex(4)}.part")
-        staging.mkdir()
-        fill(staging)
-        _settle(staging)
-        if make_way is not None:
-            make_way()
-        staging.rename(target)
+        with _staging(target) as staging:
+            fill(staging)
+            _settle(staging)
+            _give_name(staging, target, make_way)
     except OSError as fault:
         message = (
             f"{target} cannot be written ({fault.strerror or fault}). Close what is open in it, "
-            "or name another folder with --out; nothing half-written was left."
+            "or choose another folder; nothing half-written was left."
         )
         raise RecordError(message) from fault
-    finally:
-        if staging is not None:
-            shutil.rmtree(staging, ignore_errors=True)
     return target
 
 
+def _give_name(
+    staging: Path, target: Path, make_way: Callable[[], Callable[[], object]] | None
+) -> None:
+    put_back = make_way() if make_way is not None else None
+    try:
+        _must_be_free(target)
+        staging.rename(target)
+    except (OSError, RecordError):
+        if put_back is not None:
+            put_back()
+        raise
+
+
+def _must_be_free(target: Path) -> None:
+    if target.exists() or target.is_symlink():
+        message = (
+            f"{target} is there already and is never replaced. If another run has just written "
+            "it, run the command again: it takes the next number."
+        )
+        raise RecordError(message)
+
+
+def must_be_outside_packets(place: Path) -> None:
+    """Refuse a place inside a packet: what was issued never changes.
+
+    Parameters
+    ----------
+    place : Path
+        A folder to be written into; need not exist.
+
+    Raises
+    ------
+    RecordError
+        It lies in a packet.
+    """
+    whole = place.absolute()
+    for folder in (whole, *whole.parents):
+        if (folder / "office" / "record.json").is_file():
+            message = f"{place} lies inside the packet {folder.name}; choose a folder outside it."
+            raise RecordError(message)
+
+
+@contextmanager
+def _staging(target: Path) -> Iterator[Path]:
+    """Make a hidden folder that says by a lock that somebody is filling it; remove what is left."""
+    staging = target.with_name(f".{target.name}.{secrets.token_hex(4)}.part")
+    staging.mkdir()
+    lock = _hold(staging)
+    try:
+        yield staging
+    finally:
+        if lock is not None:
+            os.close(lock)
+        shutil.rmtree(staging, ignore_errors=True)
+
+
+def _hold(folder: Path) -> int | None:
+    """Lock a folder for as long as this process lives; None where systems have no such lock.
+
+    Raises
+    ------
+    OSError
+        Somebody else holds it.
+    """
+    try:
+        import fcntl
+    except ImportError:
+        return None
+    handle = os.open(folder, os.O_RDONLY)
+    try:
+        fcntl.flock(handle, fcntl.LOCK_EX | fcntl.LOCK_NB)
+    except OSError:
+        os.close(handle)
+        raise
+    return handle
+
+
 def _sweep(target: Path) -> None:
-    """Remove what a killed run left behind under a hidden name of its own."""
-    for leftover in target.parent.glob(f".{target.name}.????????.part"):
-        shutil.rmtree(leftover, ignore_errors=True)
+    """Remove what killed runs left for this name; a folder that is being filled stays."""
+    for leftover in target.parent.glob(f".{glob.escape(target.name)}.????????.part"):
+        try:
+            lock = _hold(leftover)
+        except OSError:
+            continue
+        if lock is not None:
+            shutil.rmtree(leftover, ignore_errors=True)
+            os.close(lock)
 
 
 def _settle(folder: Path) -> None:
@@ -134,7 +213,7 @@ def file_hashes(folder: Path) -> dict[str, str]:
     found = {}
     for path in sorted(folder.rglob("*")):
         name = path.relative_to(folder)
-        if path.is_file() and name != MANIFEST_PLACE:
+        if path.is_file() and not path.is_symlink() and name != MANIFEST_PLACE:
             found[name.as_posix()] = hashlib.sha256(path.read_bytes()).hexdigest()
     return found
 
@@ -168,7 +247,7 @@ def changed_files(folder: Path) -> tuple[str, ...]:
     try:
         recorded = json.loads((folder / MANIFEST_PLACE).read_text(encoding="utf-8"))
         known = {str(name): str(value) for name, value in recorded.items()}
-    except (OSError, ValueError, AttributeError) as fault:
+    except (OSError, ValueError, AttributeError, RecursionError) as fault:
         message = f"{folder / MANIFEST_PLACE} cannot be read ({fault}). Pack the campaign again."
         raise RecordError(message) from fault
     present = file_hashes(folder)

@@ -2,8 +2,10 @@
 
 from pathlib import Path
 
+from fieldplan.base.errors import RecordError
 from fieldplan.base.files import write_atomically
 from fieldplan.packet.evidence import Evidence
+from fieldplan.packet.folder import must_be_outside_packets
 from fieldplan.packet.sheets.pdf import set_pdf
 from fieldplan.packet.sheets.redraw_sheet import redraw_sheet
 from fieldplan.plan.model import Plan
@@ -28,7 +30,12 @@ def write_redraw(plan: Plan, comparison: Comparison, parent: Path, *, evidence: 
     Path
         e.g. ``HL-r01-redrawn-01.pdf``.
     """
-    parent.mkdir(parents=True, exist_ok=True)
+    must_be_outside_packets(parent)
+    try:
+        parent.mkdir(parents=True, exist_ok=True)
+    except OSError as fault:
+        message = f"{parent} cannot be made ({fault.strerror or fault}); choose another folder."
+        raise RecordError(message) from fault
     stems = {path.stem for path in parent.glob(f"{plan.revision_name}-redrawn-*.pdf")}
     number = 1
     while f"{plan.revision_name}-redrawn-{number:02d}" in stems:

@@ -1,24 +1,18 @@
 """The packet: one folder for crew and office, written whole or not at all."""
 
 import json
-import shutil
 from collections.abc import Callable, Mapping
-from dataclasses import replace
-from datetime import date
 from pathlib import Path
 
 from fieldplan.base.errors import RecordError
 from fieldplan.packet.folder import (
     build_folder,
-    changed_files,
-    file_hashes,
-    listed,
     next_number,
     taken_numbers,
     write_manifest,
 )
 from fieldplan.plan.model import Plan
-from fieldplan.plan.record import RECORD_PLACE, plan_to_record, read_plan
+from fieldplan.plan.record import RECORD_PLACE, plan_to_record
 
 Progress = Callable[[str], None]
 
@@ -27,13 +21,14 @@ def _ignore(_stage: str) -> None:
     """Take a stage name and do nothing with it."""
 
 
-def next_revision(parent: Path, plan_id: str, *, wanted: int | None = None) -> int:
+def next_revision(*parents: Path, plan_id: str, wanted: int | None = None) -> int:
     """Choose the revision number that a new packet gets.
 
     Parameters
     ----------
-    parent : Path
-        Where packets are written.
+    *parents : Path
+        Where packets are written, and where others of the campaign may lie: one number must
+        never name two packets.
     plan_id : str
     wanted : int, optional
         ``plan.revision`` of the campaign file, when it is typed there.
@@ -44,10 +39,10 @@ def next_revision(parent: Path, plan_id: str, *, wanted: int | None = None) -> i
         The wanted revision is taken.
     """
     stem = f"{plan_id}-r"
+    free = max(next_number(parent, stem) for parent in parents)
     if wanted is None:
-        return next_number(parent, stem)
-    if wanted in taken_numbers(parent, stem):
-        free = next_number(parent, stem)
+        return free
+    for parent in (p for p in parents if wanted in taken_numbers(p, stem)):
         message = (
             f"{parent / f'{stem}{wanted:02d}'} is there already and is never replaced. Set "
             f"plan.revision to {free}, or leave it out and the next free number is taken."
@@ -83,11 +78,23 @@ def write_packet(
         The folder exists or cannot be written, or a point file does not read back.
     """
     return build_folder(
-        parent / plan.revision_name, lambda folder: _fill(plan, folder, inputs, progress)
+        parent / plan.revision_name,
+        lambda folder: fill_packet(plan, folder, inputs, progress=progress),
     )
 
 
-def _fill(plan: Plan, folder: Path, inputs: Mapping[str, bytes], progress: Progress) -> None:
+def fill_packet(
+    plan: Plan, folder: Path, inputs: Mapping[str, bytes], *, progress: Progress
+) -> None:
+    """Write all files of a packet into an empty folder.
+
+    Parameters
+    ----------
+    plan, inputs, progress
+        As for ``write_packet``.
+    folder : Path
+        Exists and is empty.
+    """
     crew, office = folder / "crew", folder / "office"
     crew.mkdir()
     office.mkdir()
@@ -168,142 +175,6 @@ def _write_sheets(plan: Plan, folder: Path) -> None:
     (folder / "office" / "plan_sheet.pdf").write_bytes(set_pdf(sheet, paper=paper))
     form = set_pdf(field_form(plan), paper=paper)
     (folder / "crew" / "field_form.pdf").write_bytes(form)
-
-
-def issue_packet(
-    packet: Path, *, by: str, on: date, progress: Progress = _ignore
-) -> tuple[Path, Plan]:
-    """Set a DRAFT packet again with its issued mark on every page, and lock it.
-
-    The places, samples and rules are those of the draft; only the status changes. The new
-    folder is complete before the draft gives up its name. A draft to which files were added or
-    in which files were changed is kept as ``…-draft``; otherwise it goes.
-
-    Parameters
-    ----------
-    packet : Path
-        A DRAFT packet.
-    by : str
-        Name of the person who issues it.
-    on : date
-        Date of issue.
-
-    Returns
-    -------
-    tuple of Path and Plan
-        The issued packet.
-
-    Raises
-    ------
-    RecordError
-        It is no packet, it is issued already, its files were changed, or no name was given.
-    """
-    if not by.strip():
-        message = "--by is empty; type the name of the person who issues the packet."
-        raise RecordError(message)
-    folder = _draft_folder(packet)
-    plan = read_plan(folder)
-    _must_be_draft(plan, folder)
-    _must_be_whole(folder)
-    _must_be_in_order(plan, folder, on)
-    issued = replace(plan, issued_by=by.strip(), issued_on=on)
-    inputs = _packed_inputs(folder)
-    final = folder.with_name(plan.revision_name)
-    aside = folder.with_name(f"{plan.revision_name}-draft")
-
-    def make_way() -> None:
-        if folder != aside:
-            folder.rename(aside)
-
-    build_folder(final, lambda staging: _fill(issued, staging, inputs, progress), make_way=make_way)
-    _lock(final)
-    if not set(file_hashes(aside)) - set(file_hashes(final)):
-        shutil.rmtree(aside, ignore_errors=True)
-    return final, issued
-
-
-def _draft_folder(packet: Path) -> Path:
-    """Find the draft; after an interrupted issue it stands under its set-aside name."""
-    folder = packet.parent.parent if packet.is_file() else packet
-    aside = folder.with_name(f"{folder.name}-draft")
-    return aside if aside.is_dir() and not folder.exists() else folder
-
-
-def _must_be_draft(plan: Plan, folder: Path) -> None:
-    if plan.issued_by:
-        message = (
-            f"{folder} was issued by {plan.issued_by} on {plan.issued_on}; an issued packet is "
-            "never changed. Change the campaign file and pack the next revision."
-        )
-        raise RecordError(message)
-
-
-def _must_be_in_order(plan: Plan, folder: Path, on: date) -> None:
-    """Refuse a date before the plan was made, and a revision that another has replaced."""
-    if on < plan.made_on:
-        message = (
-            f"{folder} was made on {plan.made_on}; it cannot be issued on {on}. Leave --date out, "
-            "or give the day of issue."
-        )
-        raise RecordError(message)
-    later = [old for old in issued_revisions(folder.parent, plan) if old.revision > plan.revision]
-    if later:
-        message = (
-            f"{later[-1].revision_name} is issued already and replaces {plan.revision_name}; "
-            "two issued plans of one site would contradict each other. Pack the campaign again "
-            "and issue the new revision."
-        )
-        raise RecordError(message)
-
-
-def issued_revisions(parent: Path, plan: Plan) -> list[Plan]:
-    """Read the issued plans of the same campaign in a folder, oldest first.
-
-    Parameters
-    ----------
-    parent : Path
-        Where packets lie side by side.
-    plan : Plan
-        Its id names the packets looked for.
-    """
-    stem = f"{plan.campaign.plan.id}-r"
-    found = []
-    for number in sorted(taken_numbers(parent, stem)):
-        folder = parent / f"{stem}{number:02d}"
-        try:
-            old = read_plan(folder)
-        except RecordError:
-            continue
-        if old.issued_by:
-            found.append(old)
-    return found
-
-
-def _must_be_whole(folder: Path) -> None:
-    known = [name for name in changed_files(folder) if listed(folder, name)]
-    if known:
-        message = (
-            f"{folder}: {known[0]} was changed or removed after packing"
-            f"{f' (and {len(known) - 1} more)' if len(known) > 1 else ''}. "
-            "Make the change in the campaign file and pack again, so that all pages agree."
-        )
-        raise RecordError(message)
-
-
-def _packed_inputs(folder: Path) -> dict[str, bytes]:
-    kept = folder / "office" / "inputs"
-    return {
-        path.relative_to(kept).as_posix(): path.read_bytes()
-        for path in sorted(kept.rglob("*"))
-        if path.is_file() and path != kept / "campaign.toml"
-    }
-
-
-def _lock(folder: Path) -> None:
-    """Take the write permission from every file, so that a slip of the hand changes nothing."""
-    for path in folder.rglob("*"):
-        if path.is_file():
-            path.chmod(0o444)
 
 
 def read_inputs(paths: Mapping[str, Path]) -> dict[str, bytes]:

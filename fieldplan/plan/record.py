@@ -82,7 +82,7 @@ def seal(record: Mapping[str, Any]) -> str:
     """
     content = {key: value for key, value in record.items() if key != "seal"}
     text = json.dumps(content, sort_keys=True, ensure_ascii=False, separators=(",", ":"))
-    return hashlib.sha256(text.encode("utf-8")).hexdigest()
+    return hashlib.sha256(text.encode("utf-8", "surrogatepass")).hexdigest()
 
 
 def plan_from_record(record: Mapping[str, Any], *, name: str = "record.json") -> Plan:
@@ -114,7 +114,7 @@ def plan_from_record(record: Mapping[str, Any], *, name: str = "record.json") ->
         raise RecordError(message)
     try:
         return _assemble(record)
-    except (KeyError, TypeError, ValueError, ValidationError) as fault:
+    except (AttributeError, KeyError, TypeError, ValueError, ValidationError) as fault:
         message = f"{name} lacks a part of the plan ({type(fault).__name__}). Restore the packet."
         raise RecordError(message) from fault
 
@@ -128,7 +128,7 @@ def _assemble(record: Mapping[str, Any]) -> Plan:
         campaign=Campaign.model_validate_json(json.dumps(record["campaign"])),
         campaign_text=record["campaign_text"],
         frame=frame_from_record(record["frame"]),
-        revision=record["revision"],
+        revision=_whole(record["revision"]),
         made_on=date.fromisoformat(record["made_on"]),
         issued_by=record["issued_by"],
         issued_on=date.fromisoformat(issued_on) if issued_on else None,
@@ -136,6 +136,14 @@ def _assemble(record: Mapping[str, Any]) -> Plan:
         fieldplan_version=record["fieldplan_version"],
         **parts,
     )
+
+
+def _whole(value: object) -> int:
+    """Take a whole number and nothing like one."""
+    if not isinstance(value, int) or isinstance(value, bool):
+        message = f"{value!r} is no revision"
+        raise TypeError(message)
+    return value
 
 
 def read_plan(packet: Path) -> Plan:

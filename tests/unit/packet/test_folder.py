@@ -1,5 +1,6 @@
 """Folders appear whole or not at all."""
 
+from collections.abc import Callable
 from pathlib import Path
 
 import pytest
@@ -67,7 +68,7 @@ def test_what_a_killed_run_left_is_swept_by_the_next(tmp_path: Path) -> None:
 def test_a_folder_that_cannot_be_written_gives_one_line(tmp_path: Path) -> None:
     """A file where a folder should be is the plainest case on every system."""
     (tmp_path / "file").write_text("", encoding="utf-8")
-    with pytest.raises(RecordError, match=r"cannot be written .*--out"):
+    with pytest.raises(RecordError, match="cannot be written .*choose another folder"):
         build_folder(tmp_path / "file" / "HL-r01", fill)
 
 
@@ -83,9 +84,9 @@ def test_numbers_count_drafts_set_aside_and_ignore_strangers(tmp_path: Path) -> 
 def test_a_typed_revision_that_is_taken_is_refused_with_the_free_one(tmp_path: Path) -> None:
     """Typing the revision must not become a way to overwrite."""
     (tmp_path / "HL-r02").mkdir()
-    assert next_revision(tmp_path, "HL", wanted=4) == 4
+    assert next_revision(tmp_path, plan_id="HL", wanted=4) == 4
     with pytest.raises(RecordError, match=r"HL-r02 is there already.*plan\.revision to 3"):
-        next_revision(tmp_path, "HL", wanted=2)
+        next_revision(tmp_path, plan_id="HL", wanted=2)
 
 
 def test_the_manifest_names_changed_added_and_removed_files(tmp_path: Path) -> None:
@@ -97,6 +98,59 @@ def test_the_manifest_names_changed_added_and_removed_files(tmp_path: Path) -> N
     (tmp_path / "office" / "b.txt").unlink()
     (tmp_path / "new.txt").write_text("", encoding="utf-8")
     assert changed_files(tmp_path) == ("a.txt", "new.txt", "office/b.txt")
+
+
+def test_a_number_taken_beside_the_campaign_is_not_given_elsewhere(tmp_path: Path) -> None:
+    """Two packets of one name with different places would both be believed."""
+    (tmp_path / "HL-r01").mkdir()
+    assert next_revision(tmp_path / "other", tmp_path, plan_id="HL") == 2
+
+
+def test_a_folder_that_another_run_is_filling_is_left_to_it(tmp_path: Path) -> None:
+    """Two people press the button at once; neither may delete the other's work."""
+
+    def filling(folder: Path) -> None:
+        fill(folder)
+        with pytest.raises(RecordError, match="is there already"):
+            build_folder(tmp_path / "HL-r01", lambda inner: rival(folder, inner))
+
+    def rival(first: Path, second: Path) -> None:
+        assert (first / "a.txt").is_file()
+        fill(second)
+        (tmp_path / "HL-r01").mkdir()
+
+    with pytest.raises(RecordError, match="takes the next number"):
+        build_folder(tmp_path / "HL-r01", filling)
+    assert [p.name for p in tmp_path.iterdir()] == ["HL-r01"]
+
+
+def test_what_gave_way_is_put_back_when_the_name_cannot_be_given(tmp_path: Path) -> None:
+    """A draft must not lose its name to an issue that failed."""
+    draft = tmp_path / "HL-r01"
+    fill_at(draft)
+
+    def make_way() -> Callable[[], object]:
+        draft.rename(tmp_path / "aside")
+        fill_at(draft)
+        return lambda: (tmp_path / "aside").rename(tmp_path / "back")
+
+    with pytest.raises(RecordError, match="is there already"):
+        build_folder(draft, fill, make_way=make_way)
+    assert (tmp_path / "back" / "a.txt").is_file()
+
+
+def fill_at(folder: Path) -> None:
+    """Make a folder and fill it."""
+    folder.mkdir()
+    fill(folder)
+
+
+def test_nothing_is_written_into_a_packet(tmp_path: Path) -> None:
+    """An issued packet never changes, not even by a folder of results in it."""
+    (tmp_path / "HL-r01" / "office").mkdir(parents=True)
+    (tmp_path / "HL-r01" / "office" / "record.json").write_text("{}", encoding="utf-8")
+    with pytest.raises(RecordError, match="inside the packet HL-r01"):
+        build_folder(tmp_path / "HL-r01" / "crew" / "results", fill)
 
 
 @pytest.mark.parametrize(
