@@ -1,7 +1,5 @@
 """What the design can and cannot tell, and a paragraph for the report."""
 
-from math import sqrt
-
 from fieldplan.base.document import Block, Bullets, Heading, Paragraph
 from fieldplan.packet.sheets.amounts import counted, likely, listed, percent, rounded
 from fieldplan.packet.sheets.plan_words import (
@@ -75,11 +73,24 @@ def patch_line(plan: Plan) -> str:
         if missed <= 0:
             return "What a unit would give at another time: place error is nil, the others remain."
         return f"Any single unit that was not drawn: {missed} of the list are not visited."
-    spacing = sqrt(plan.frame.population.net / plan.size.planned)
+    gap = widest_gap(plan)
     return (
-        f"Where a small patch lies: locations are about {rounded(spacing, digits=2)} m apart on "
-        "average, and a patch smaller than that can be missed altogether."
+        f"Where a small patch lies: as drawn, one spot is {rounded(gap)} m from its nearest "
+        f"location, so that a round patch up to {rounded(2 * gap)} m across, or what of it lies in "
+        "the population, can be missed altogether."
     )
+
+
+def widest_gap(plan: Plan) -> float:
+    """Measure how far, in metres, the farthest spot of an area lies from its nearest location."""
+    import numpy as np
+    import shapely
+
+    from fieldplan.design.evenness import largest_gap
+
+    whole = shapely.union_all([stratum.geometry for stratum in plan.frame.strata])
+    drawn = [(place.easting, place.northing) for place in plan.locations.of_class("random")]
+    return largest_gap(whole, np.array(drawn))
 
 
 def methods_blocks(plan: Plan) -> list[Block]:

@@ -6,7 +6,9 @@ from dataclasses import replace
 from datetime import date
 from functools import cache
 
+import numpy as np
 import pytest
+from scipy.spatial import cKDTree
 
 from fieldplan.base.document import Caution, Document, Figure, PageBreak, SignOff, Table
 from fieldplan.campaign.model import Analyte, DesignTable, FieldTable, FrameTable, Objective, Rules
@@ -242,9 +244,18 @@ def test_the_offset_rule_and_the_codes_are_printed():
     assert "never the nearest convenient spot" in text
 
 
-def test_patches_smaller_than_the_spacing_can_be_missed():
-    """23600 m² and 9 locations: √(23600/9) = 51.2 m, worked by hand."""
-    assert "about 51 m apart" in patch_line(make_plan())
+def test_the_patch_that_can_be_missed_is_as_wide_as_the_widest_gap_drawn():
+    """Brute force: distances from a grid of 0.5 m over the site to the nine drawn locations."""
+    plan = make_plan()
+    east, north = np.meshgrid(np.arange(0, 200.1, 0.5), np.arange(0, 120.1, 0.5))
+    spots = np.column_stack([east.ravel(), north.ravel()])
+    pond = ((spots > (160, 40)) & (spots < (180, 60))).all(axis=1)
+    drawn = np.array([(p.easting, p.northing) for p in plan.locations.of_class("random")])
+    gap = cKDTree(drawn).query(spots[~pond])[0].max()
+    shown, across = (float(n) for n in re.findall(r"([\d.]+) m ", patch_line(plan)))
+    assert gap - 0.05 <= shown <= gap + 0.5 * 2**0.5 / 2 + 0.05
+    assert across == pytest.approx(2 * shown, abs=0.6)
+    assert across > 2 * (23600 / 9) ** 0.5  # an average distance would promise too much
 
 
 def test_a_list_says_how_many_units_are_not_visited():
