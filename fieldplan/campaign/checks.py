@@ -100,6 +100,12 @@ def _designs(data: Data) -> Iterator[Problem]:
         if layout == "stratified" and kind == "area" and "strata" not in frame:
             text = "stratified, but the frame has no strata. Give frame.strata its file."
             yield Problem(("design", i, "layout"), text)
+        if layout == "simple-random" and "strata" in frame:
+            text = (
+                f"draws from one population, but the frame has strata (got {shown(layout)}). "
+                'Write layout = "stratified", or take frame.strata out.'
+            )
+            yield Problem(("design", i, "layout"), text)
         yield from _unsuitable_design_keys(design, layout, kind, i)
 
 

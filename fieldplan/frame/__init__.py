@@ -32,8 +32,7 @@ def read_frame(read: ReadCampaign) -> Frame:
     files = FrameFiles(read.folder, table, read.campaign.field.position_accuracy_m)
     if table.kind == "area":
         return read_area(files, read.campaign.targeted)
-    census = read.campaign.design[0].layout == "census"
-    return read_list(files, read.campaign.targeted, census=census)
+    return read_list(files, read.campaign.targeted, layout=read.campaign.design[0].layout)
 
 
 def _frame_table(campaign: Campaign) -> FrameTable:

@@ -25,7 +25,7 @@ _SMALLEST_MARGIN_M = 20.0
 _FAR_M = 100_000.0
 
 
-def read_list(files: FrameFiles, targeted: tuple[Targeted, ...], *, census: bool) -> Frame:
+def read_list(files: FrameFiles, targeted: tuple[Targeted, ...], *, layout: str) -> Frame:
     """Read a list frame: N units, each with id and place, shared among strata if it says so.
 
     Parameters
@@ -34,8 +34,9 @@ def read_list(files: FrameFiles, targeted: tuple[Targeted, ...], *, census: bool
         The frame table and where its files are.
     targeted : tuple of Targeted
         Files of places chosen by judgement.
-    census : bool
-        All units are visited.
+    layout : str
+        Of the design that draws from it: ``census`` visits all units, ``simple-random`` knows no
+        strata.
 
     Returns
     -------
@@ -45,7 +46,8 @@ def read_list(files: FrameFiles, targeted: tuple[Targeted, ...], *, census: bool
     Raises
     ------
     FrameError
-        No list, or one whose ids, places or strata cannot serve.
+        No list, or one whose ids, places or strata cannot serve, or strata beside a layout that
+        draws from one population.
     """
     table = files.table
     if not table.list_file:
@@ -56,6 +58,8 @@ def read_list(files: FrameFiles, targeted: tuple[Targeted, ...], *, census: bool
     found = named_places(overlay)
     ground = _ground(files, overlay, found)
     names = _stratum_names(overlay, found, table.stratum_column)
+    if layout == "simple-random":
+        _refuse_strata(overlay.layer.name, sorted(set(names)), table.stratum_column)
     easting, northing = to_site(ground.projection, found.latitude, found.longitude)
     units = [
         ListUnit(identifier, name, float(e), float(n), float(lat), float(lon))
@@ -74,7 +78,7 @@ def read_list(files: FrameFiles, targeted: tuple[Targeted, ...], *, census: bool
         projection=ground.projection,
         strata=strata,
         boundary=ground.boundary,
-        population=list_population(table, len(units), census=census),
+        population=list_population(table, len(units), census=layout == "census"),
         targeted=places,
         sources=ground.sources,
         notes=ground.notes,
@@ -96,6 +100,17 @@ def _refuse_area_keys(files: FrameFiles) -> None:
         for key, value in given.items()
         if value
     )
+
+
+def _refuse_strata(name: str, strata: list[str], column: str) -> None:
+    """Refuse a list in strata that shall be drawn as one population."""
+    if len(strata) > 1:
+        message = (
+            f"{name} puts its members into strata ({', '.join(strata)}), and layout = "
+            '"simple-random" draws from one population. Write layout = "stratified"; or rename '
+            f"its column {column!r}, if that is not meant to divide the list."
+        )
+        raise FrameError(message)
 
 
 def _ground(files: FrameFiles, overlay: Overlay, found: NamedPlaces) -> Ground:

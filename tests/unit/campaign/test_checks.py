@@ -148,6 +148,11 @@ BROKEN = [
         "16: design.layout: stratified, but the frame has no strata. Give frame.strata its file.",
     ),
     (
+        [('"boundary.geojson"', '"boundary.geojson"\nstrata = "strata.geojson"')],
+        "17: design.layout: draws from one population, but the frame has strata (got "
+        '"simple-random"). Write layout = "stratified", or take frame.strata out.',
+    ),
+    (
         [LIST, ('"simple-random"', '"census"\nalternates = 2')],
         "17: design.alternates: a census visits every member of the list. Take this key out.",
     ),

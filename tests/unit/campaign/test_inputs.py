@@ -15,6 +15,7 @@ TEXT = bent(
         '"boundary.shp"\nstrata = "strata.gpkg#soils"\n'
         '[[frame.exclusion]]\nfile = "pond.geojson"\nreason = "water"',
     ),
+    ('"simple-random"', '"stratified"'),
     ("[draw]", '[[targeted]]\nfile = "tank.csv"\nreason = "tank"\n[draw]'),
 )
 

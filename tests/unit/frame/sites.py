@@ -61,7 +61,7 @@ def frame_of(
     exclusions: list[tuple[str, float, str]] | None = None,
     targeted: list[tuple[str, str]] | None = None,
     position_accuracy_m: float | None = None,
-    census: bool = False,
+    layout: str = "",
     **table: Any,
 ) -> Frame:
     """Read a frame from files in ``folder``; ``table`` are keys of ``[[frame]]``."""
@@ -77,8 +77,8 @@ def frame_of(
         "field": FieldTable(position_accuracy_m=position_accuracy_m),
         "targeted": tuple(Targeted(file=file, reason=reason) for file, reason in targeted or []),
     }
-    if census:
-        changes["design"] = (make_campaign().design[0].model_copy(update={"layout": "census"}),)
+    if layout:
+        changes["design"] = (make_campaign().design[0].model_copy(update={"layout": layout}),)
     return read_frame(
         ReadCampaign.model_construct(
             campaign=make_campaign(**changes), path=folder / "campaign.toml", text=""

@@ -70,7 +70,7 @@ def test_the_statement_of_a_list_counts_its_units(tmp_path: Path) -> None:
 def test_a_census_says_which_errors_remain(tmp_path: Path) -> None:
     """With every unit visited the choice of places adds no error; time and laboratory do."""
     write_list(tmp_path, plain(WELLS))
-    sentence = list_frame(tmp_path, census=True).population.sentences[1]
+    sentence = list_frame(tmp_path, layout="census").population.sentences[1]
     assert "the choice of places adds no error" in sentence
     assert "time, in sampling and in the laboratory remain" in sentence
 
@@ -86,6 +86,23 @@ def test_strata_of_a_list_weigh_by_their_number(tmp_path: Path) -> None:
     assert [s.weight for s in frame.strata] == pytest.approx([2 / 3, 1 / 3])
     assert [unit.unit_id for unit in frame.strata[0].units] == ["007", "1e5"]
     assert frame.strata[0].geometry is None
+
+
+def test_a_list_in_strata_is_refused_where_the_layout_draws_from_one_population(
+    tmp_path: Path,
+) -> None:
+    """Found while reading, it stops every command before a number is said that cannot be drawn."""
+    rows = [["location_id", "latitude", "longitude", "zone"]]
+    rows += [[*map(str, row), zone] for row, zone in zip(WELLS, ("b", "a", "b"), strict=True)]
+    write_list(tmp_path, rows)
+    message = refusal(tmp_path, layout="simple-random", stratum_column="zone")
+    assert message == (
+        'wells.csv puts its members into strata (a, b), and layout = "simple-random" draws from '
+        "one population. Write layout = \"stratified\"; or rename its column 'zone', if that is "
+        "not meant to divide the list."
+    )
+    assert len(list_frame(tmp_path, layout="simple-random").strata) == 1
+    assert len(list_frame(tmp_path, layout="stratified", stratum_column="zone").strata) == 2
 
 
 def test_a_unit_without_a_stratum_among_others_is_refused(tmp_path: Path) -> None:
