@@ -183,4 +183,7 @@ def _refuse_what_has_no_answer(strata: Sequence[StratumValues], single_result: s
 
 def _borrowed(names: Sequence[str]) -> str:
     those = ", ".join(f"'{name}'" for name in names)
-    return f"Only 1 result in {those}: its spread was borrowed from the other strata."
+    return (
+        f"Only 1 result in {those}: its spread was borrowed from the other strata, and the "
+        "interval holds only if it spreads as they do."
+    )

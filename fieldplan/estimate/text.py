@@ -36,6 +36,7 @@ def results_paragraph(plan: Plan, estimate: Estimate) -> str:
         _strata(estimate),
         _bracket(estimate),
         mean.method,
+        mean.caution,
         estimate.population_sentence,
         estimate.level_sentence,
         _changes(estimate),
