@@ -20,6 +20,20 @@ SWITCH = """(() => { document.querySelectorAll(".leaflet-control-layers-overlays
   (label) => { if (label.textContent.includes(WORDS)) { label.querySelector("input").click(); } });
 })()"""
 
+OUTSIDE = """(() => { const frame = document.querySelector(".folium-map").getBoundingClientRect();
+  return [...document.querySelectorAll(".mark .symbol")].filter((s) => {
+    const box = s.getBoundingClientRect();
+    return box.left < frame.left || box.right > frame.right || box.top < frame.top
+      || box.bottom > frame.bottom; }).length; })()"""
+
+UNDER_BUTTONS = """((seen) => {
+  const boxes = (words) => [...document.querySelectorAll(words)].map((e) =>
+    e.getBoundingClientRect());
+  const buttons = boxes(".leaflet-control");
+  return boxes(seen).filter((a) => buttons.some((b) =>
+    a.left < b.right - 1 && b.left < a.right - 1 && a.top < b.bottom - 1
+    && b.top < a.bottom - 1)).length; })"""
+
 
 def save(plan: Plan, folder: Path) -> Path:
     """Write the map of a plan where the browser can open it."""
@@ -62,14 +76,56 @@ def test_nothing_is_wider_than_the_window_and_every_place_is_in_view(page: Page)
     """No sideways scrolling, and no place hidden under the bars when the map opens."""
     assert page.evaluate("document.documentElement.scrollWidth <= innerWidth")
     assert page.evaluate("document.documentElement.scrollHeight <= innerHeight")
-    outside = page.evaluate(
-        """(() => { const frame = document.querySelector(".folium-map").getBoundingClientRect();
-        return [...document.querySelectorAll(".mark .symbol")].filter((s) => {
-          const box = s.getBoundingClientRect();
-          return box.left < frame.left || box.right > frame.right || box.top < frame.top
-            || box.bottom > frame.bottom; }).length; })()"""
+    assert page.evaluate(OUTSIDE) == 0
+
+
+def resize(page: Page, width: int, height: int) -> None:
+    """Give the window another size, as turning a phone does."""
+    page.call(
+        "Emulation.setDeviceMetricsOverride",
+        width=width,
+        height=height,
+        deviceScaleFactor=1,
+        mobile=True,
     )
-    assert outside == 0
+    page.settle(0.6)
+
+
+def test_a_window_that_changes_its_size_shows_the_whole_site_until_the_map_is_moved(
+    tmp_path: Path,
+) -> None:
+    """A phone is turned, a bar comes up: nothing may be cut off; a view chosen by hand stays."""
+    with open_page(save(factories.make_plan(), tmp_path), Screen(844, 390)) as page:
+        for size in ((390, 844), (412, 915), (844, 390)):
+            resize(page, *size)
+            assert page.evaluate(OUTSIDE) == 0, size
+        page.evaluate("fieldplanShown.map.zoomIn(2, {animate: false}); 0")
+        chosen = page.evaluate("fieldplanShown.map.getZoom()")
+        resize(page, 390, 844)
+        assert page.evaluate("fieldplanShown.map.getZoom()") == chosen
+
+
+@pytest.mark.parametrize("size", [(360, 740), (390, 844), (412, 915), (820, 1180), (1280, 900)])
+def test_no_button_covers_a_place_or_its_label(size: tuple[int, int], tmp_path: Path) -> None:
+    """What lies under the ruler is not read."""
+    screen = Screen(*size, touch=size[0] < 700)
+    for plan in (factories.make_plan(), plans.crowded_plan(75)):
+        with open_page(save(plan, tmp_path), screen) as page:
+            assert page.evaluate(f"{UNDER_BUTTONS}('.label:not(.waiting), .symbol')") == 0
+            buttons = page.evaluate(
+                """[...document.querySelectorAll(".leaflet-top .leaflet-control")].map((e) => {
+                const b = e.getBoundingClientRect();
+                return [b.left, b.top, b.right, b.bottom]; })"""
+            )
+            for number, (left, top, right, bottom) in enumerate(buttons):
+                assert left >= 0
+                assert right <= screen.width
+                for other in buttons[number + 1 :]:
+                    across = min(right, other[2]) - max(left, other[0])
+                    down = min(bottom, other[3]) - max(top, other[1])
+                    assert min(across, down) <= 0
+            page.evaluate("fieldplanShown.map.zoomIn(2, {animate: false}); 0")
+            assert page.evaluate(f"{UNDER_BUTTONS}('.label:not(.waiting)')") == 0
 
 
 def test_labels_never_cover_each_other_or_a_mark(tmp_path: Path) -> None:

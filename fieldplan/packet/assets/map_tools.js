@@ -123,7 +123,7 @@ function fieldplanMeasure(map) {
 }
 
 /* Labels: each tries eight places round its mark; one that would cover a mark or another label,
-   or leave the window, waits for a closer zoom. Marks themselves always stay. */
+   or leave the window, or lie under a button, waits for a closer zoom. Marks always stay. */
 function fieldplanLabels(map, layers, areaLabels) {
   const cell = 40;
   function occupied() {
@@ -180,6 +180,18 @@ function fieldplanLabels(map, layers, areaLabels) {
     map.getContainer().classList.toggle("dense", room < 2500);
     map.getContainer().classList.toggle("crowded", room < 800);
   }
+  function boxOf(element) {
+    const frame = map.getContainer().getBoundingClientRect();
+    const box = element.getBoundingClientRect();
+    return [box.left - frame.left, box.top - frame.top, box.right - frame.left,
+      box.bottom - frame.top];
+  }
+  /* Words that give way to the labels of places: names of areas, and numbers of the grid. */
+  function giveWay(text, taken) {
+    const box = boxOf(text), free = taken.free(box);
+    text.classList.toggle("waiting", !free);
+    if (free) { taken.add(box); }
+  }
   function arrange() {
     const taken = occupied(), size = map.getSize();
     const shown = layers.filter((layer) => map.hasLayer(layer)).flatMap((l) => l.getLayers());
@@ -188,17 +200,14 @@ function fieldplanLabels(map, layers, areaLabels) {
       const spot = map.latLngToContainerPoint(marker.getLatLng());
       taken.add([spot.x - 7, spot.y - 7, spot.x + 7, spot.y + 7]);
     });
+    const frame = map.getContainer();
+    frame.querySelectorAll(".leaflet-control").forEach((control) => taken.add(boxOf(control)));
     shown.forEach((marker) => place(marker, taken, size));
     areaLabels.eachLayer((marker) => {
       const text = marker.getElement() && marker.getElement().firstElementChild;
-      if (!text) { return; }
-      const spot = map.latLngToContainerPoint(marker.getLatLng());
-      const x = text.offsetWidth / 2, y = text.offsetHeight / 2;
-      const box = [spot.x - x, spot.y - y, spot.x + x, spot.y + y];
-      const free = taken.free(box);
-      text.classList.toggle("waiting", !free);
-      if (free) { taken.add(box); }
+      if (text) { giveWay(text, taken); }
     });
+    frame.querySelectorAll(".grid-label span").forEach((text) => giveWay(text, taken));
   }
   map.on("moveend zoomend overlayadd overlayremove resize", arrange);
   return arrange;

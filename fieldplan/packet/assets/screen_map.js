@@ -69,9 +69,17 @@ function fieldplanPanel(map, control) {
     container.classList.toggle("folded", folded);
     button.setAttribute("aria-expanded", String(!folded));
   };
-  button.addEventListener("click", () => fold(!container.classList.contains("folded")));
+  let chosen = false;
+  const suit = () => {
+    if (!chosen) { fold(window.innerWidth < 700 || window.innerHeight < 500); }
+  };
+  button.addEventListener("click", () => {
+    chosen = true;
+    fold(!container.classList.contains("folded"));
+  });
+  window.addEventListener("resize", suit);
   container.prepend(button);
-  fold(window.innerWidth < 700);
+  suit();
 }
 
 function fieldplanNorth(map) {
@@ -101,12 +109,37 @@ function fieldplanPrint(map, bounds, panel) {
   });
 }
 
-/* The whole site, clear of the buttons and of an open panel where the window is wide. */
+/* The whole site, clear of the buttons: they stand in a row on a phone, else in a column. An open
+   panel is left free at the right, or above, whichever shows the site larger. */
 function fieldplanFit(map, bounds, panel) {
   const container = panel.getContainer();
   const open = container.offsetHeight > 100;
-  map.fitBounds(bounds, {animate: false, paddingTopLeft: [window.innerWidth < 700 ? 24 : 80, 24],
-    paddingBottomRight: [open ? container.offsetWidth + 30 : 24, 44]});
+  const narrow = window.innerWidth < 700;
+  const trials = [[narrow ? 24 : 80, narrow ? 76 : 24, open ? container.offsetWidth + 30 : 24, 44]];
+  if (open) { trials.push([narrow ? 24 : 80, container.offsetHeight + 24, 24, 44]); }
+  const zoom = ([left, top, right, bottom]) => {
+    const room = map.getSize().subtract([left + right, top + bottom]);
+    if (Math.min(room.x, room.y) < 40) { return -Infinity; }
+    return map.getBoundsZoom(bounds, false, L.point(left + right, top + bottom));
+  };
+  const [left, top, right, bottom] = trials.reduce((a, b) => (zoom(b) > zoom(a) ? b : a));
+  map.fitBounds(bounds, {animate: false, paddingTopLeft: [left, top],
+    paddingBottomRight: [right, bottom]});
+}
+
+/* A window that changes its size (a phone turned, bars that come and go) shows the whole site
+   again, until somebody has moved the map. */
+function fieldplanKeepFitted(map, bounds, panel) {
+  let fitting = false, moved = false;
+  const fit = () => {
+    fitting = true;
+    fieldplanFit(map, bounds, panel);
+    fitting = false;
+  };
+  map.on("dragstart zoomstart", () => { moved = moved || !fitting; });
+  map.on("resize", () => { if (!moved) { fit(); } });
+  new ResizeObserver(() => map.invalidateSize({animate: false})).observe(map.getContainer());
+  fit();
 }
 
 function fieldplanMap(map, facts, parts) {
@@ -126,7 +159,7 @@ function fieldplanMap(map, facts, parts) {
   const areaLabels = fieldplanAreaLabels(map, facts.areaLabels);
   const arrange = fieldplanLabels(map, parts.locations, areaLabels);
   fieldplanPrint(map, bounds, parts.panel);
-  fieldplanFit(map, bounds, parts.panel);
+  fieldplanKeepFitted(map, bounds, parts.panel);
   drawGrid();
   arrange();
   window.fieldplanShown = {map, grid, facts, parts, leg: fieldplanLeg, area: fieldplanArea};
