@@ -3,12 +3,18 @@
 import hashlib
 from collections.abc import Iterator
 from pathlib import Path
+from typing import Any
+
+from pydantic import BaseModel
 
 from fieldplan.base.errors import CampaignError
 from fieldplan.campaign.lines import KeyPath
 from fieldplan.campaign.model import Campaign, ReadCampaign
 from fieldplan.campaign.problems import Problem, meaning, render
-from fieldplan.campaign.screen import table_name
+from fieldplan.campaign.read import Inspection
+from fieldplan.campaign.references import tables
+from fieldplan.campaign.screen import is_fill_in, table_name
+from fieldplan.campaign.shape import shapes
 from fieldplan.campaign.text import near_names
 
 _FOLDER = "this is a folder"
@@ -57,22 +63,59 @@ def input_files(read: ReadCampaign) -> dict[str, Path]:
     """
     files: dict[str, Path] = {}
     problems: list[Problem] = []
-    for path, written in _named(read.campaign):
-        place = resolve_file(read, written)
-        fault = _fault(place)
-        if fault:
-            what = meaning(table_name(path[:-1]), str(path[-1]))
-            remedy = " Name a file in it." if fault == _FOLDER else _near(place)
-            problems.append(Problem(path, f'{what}; {fault} (got "{written}").{remedy}'))
+    data = read.campaign.model_dump(mode="json", exclude_none=True)
+    for path, written in _named(data):
+        problem = _missing(path, written, read.folder)
+        if problem is not None:
+            problems.append(problem)
             continue
         name = file_part(read.folder, written)
-        files[name] = place
+        place = files[name] = read.folder / name
         if place.suffix.lower() == ".shp":
             files.update(_side_files(name, place))
     if problems:
-        data = read.campaign.model_dump(mode="json", exclude_unset=True)
         raise CampaignError(*render(problems, name=str(read.path), text=read.text, data=data))
     return files
+
+
+def missing_files(inspection: Inspection) -> tuple[str, ...]:
+    """Say which files that a campaign names are not there, also while it is incomplete.
+
+    Parameters
+    ----------
+    inspection : Inspection
+        From ``inspect_campaign``; what is still to fill in names no file.
+
+    Returns
+    -------
+    tuple of str
+        One line for each such file that was not told already, in the order of the tables.
+    """
+    folder = inspection.path.parent
+    missing = [_missing(path, written, folder) for path, written in _named(inspection.data)]
+    problems = [problem for problem in missing if problem is not None]
+    if not problems:
+        return ()
+    name, data = str(inspection.path), inspection.data
+    lines = render(problems, name=name, text=inspection.text, data=data)
+    told = {_place(line) for line in inspection.problems}
+    return tuple(line for line in lines if _place(line) not in told)
+
+
+def _place(line: str) -> str:
+    """Cut a problem down to file, line and key."""
+    return ": ".join(line.split(": ", 2)[:2])
+
+
+def _missing(path: KeyPath, written: str, folder: Path) -> Problem | None:
+    """Word why a file cannot be used; None when it can."""
+    place = folder / file_part(folder, written)
+    fault = _fault(place)
+    if fault is None:
+        return None
+    what = meaning(table_name(path[:-1]), str(path[-1]))
+    remedy = " Name a file in it." if fault == _FOLDER else _near(place)
+    return Problem(path, f'{what}; {fault} (got "{written}").{remedy}')
 
 
 def fingerprint(path: Path) -> str:
@@ -91,20 +134,18 @@ def fingerprint(path: Path) -> str:
         raise CampaignError(message) from fault
 
 
-def _named(campaign: Campaign) -> Iterator[tuple[KeyPath, str]]:
-    """Yield the path and the value of every key that names a file."""
-    for i, frame in enumerate(campaign.frame):
-        for key in ("boundary", "strata", "list_file"):
-            written = getattr(frame, key)
-            if written is not None:
-                yield ("frame", i, key), written
-        for j, exclusion in enumerate(frame.exclusion):
-            yield ("frame", i, "exclusion", j, "file"), exclusion.file
-    for i, targeted in enumerate(campaign.targeted):
-        yield ("targeted", i, "file"), targeted.file
-    for i, sigma in enumerate(campaign.sigma):
-        if sigma.pilot is not None:
-            yield ("sigma", i, "pilot"), sigma.pilot
+def _named(
+    data: dict[str, Any], model: type[BaseModel] = Campaign, above: KeyPath = ()
+) -> Iterator[tuple[KeyPath, str]]:
+    """Yield the path and the value of every key that names a file, table by table."""
+    for key, shape in shapes(model).items():
+        if shape.kind == "file":
+            written = data.get(key)
+            if isinstance(written, str) and written.strip() and not is_fill_in(written):
+                yield (*above, key), written
+        elif shape.model is not None:
+            for i, member in enumerate(tables(data, key)):
+                yield from _named(member, shape.model, (*above, key, i))
 
 
 def _fault(place: Path) -> str | None:

@@ -1,7 +1,7 @@
 """The campaign file read and checked: all that is wrong with it is said at once."""
 
 import json
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
 
@@ -50,11 +50,17 @@ class Inspection:
         What its author did not know yet.
     campaign : ReadCampaign or None
         The campaign, when nothing is wrong and nothing is left to fill in.
+    path, text, data : Path, str, dict
+        The file as read, and its tables as parsed with references filled in: for what can be
+        looked at before the campaign is whole.
     """
 
     problems: tuple[str, ...]
     fill_in: tuple[OpenEntry, ...]
     campaign: ReadCampaign | None
+    path: Path = Path()
+    text: str = ""
+    data: dict[str, Any] = field(default_factory=dict)
 
 
 def read_campaign(path: Path) -> ReadCampaign:
@@ -113,10 +119,11 @@ def inspect_text(text: str, path: Path) -> Inspection:
         ),
         key=lambda entry: entry.line,
     )
-    if campaign is None or problems or fill_in:
-        told = render(problems, name=str(path), text=text, data=screened.data) if problems else ()
-        return Inspection(told, tuple(fill_in), None)
-    return Inspection((), (), ReadCampaign(campaign=campaign, path=path, text=text))
+    told = render(problems, name=str(path), text=text, data=screened.data) if problems else ()
+    whole = None
+    if campaign is not None and not problems and not fill_in:
+        whole = ReadCampaign(campaign=campaign, path=path, text=text)
+    return Inspection(told, tuple(fill_in), whole, path, text, screened.data)
 
 
 def _meaning_of(path: KeyPath) -> str:
