@@ -1,164 +1,85 @@
 """``fieldplan check``: what was understood, what is wrong, what is still to fill in."""
 
-from dataclasses import dataclass, field
+import re
+import sys
 from pathlib import Path
 from typing import Any
 
 import click
 
-from fieldplan.base.errors import FieldplanError
-from fieldplan.campaign.model import Campaign, Objective, ReadCampaign
-from fieldplan.campaign.read import OpenEntry
-from fieldplan.cli.options import campaign_argument, json_option, print_json, say, wrapped
-
-
-@dataclass
-class Findings:
-    """All that ``check`` has to say about one campaign file."""
-
-    understood: list[str] = field(default_factory=list)
-    alarms: list[str] = field(default_factory=list)
-    problems: list[str] = field(default_factory=list)
-    fill_in: list[OpenEntry] = field(default_factory=list)
-    exit_code: int = 0
-
-    def refuse(self, fault: FieldplanError) -> None:
-        """Keep the lines of an error and the exit code that goes with it."""
-        self.problems += fault.problems
-        self.exit_code = max(self.exit_code, fault.exit_code)
+from fieldplan.base.errors import CampaignError
+from fieldplan.cli.findings import Findings, look_at
+from fieldplan.cli.options import json_option, print_json, say, wrapped
 
 
 @click.command("check")
-@campaign_argument
+@click.argument("campaign_file", type=click.Path(path_type=Path), metavar="CAMPAIGN")
 @json_option
 @click.pass_context
 def command(ctx: click.Context, campaign_file: Path, as_json: bool) -> None:
     """Read a campaign file and say what is wrong or still to fill in.
 
-    Says how the campaign, its site and its pilot were understood. Exit code 2: something is
-    typed wrong. 1: it cannot be done as it stands. 0: neither; something may still be open.
+    Says how the campaign, its site and its pilot were understood, tries everything that a packet
+    decides, and ends with the number of locations. CAMPAIGN may be the folder of the file. Exit
+    code 2: something is typed wrong. 1: it cannot be done as it stands. 0: neither; something may
+    still be open.
     """
-    found = look_at(campaign_file)
+    path = campaign_in(campaign_file)
+    found = look_at(path)
     if as_json:
-        print_json(_as_json(campaign_file, found))
+        print_json(_as_json(path, found))
     else:
-        _print(found)
+        _print(path, found)
     ctx.exit(found.exit_code)
 
 
-def look_at(path: Path) -> Findings:
-    """Read a campaign file and everything that it names, as far as it goes."""
-    from fieldplan.campaign import alarms, inspect_campaign
+def campaign_in(path: Path) -> Path:
+    """Return the campaign file that is meant: the path itself, or the only one in a folder.
 
-    found = Findings()
-    try:
-        inspection = inspect_campaign(path)
-    except FieldplanError as fault:
-        found.refuse(fault)
-        return found
-    found.problems += inspection.problems
-    found.fill_in += inspection.fill_in
-    found.exit_code = 2 if inspection.problems else 0
-    if inspection.campaign is not None:
-        found.understood += _asked(inspection.campaign.campaign)
-        found.alarms += alarms(inspection.campaign.campaign)
-        try:
-            found.understood += _site_and_pilot(inspection.campaign, found)
-        except FieldplanError as fault:
-            found.refuse(fault)
-    return found
-
-
-def _site_and_pilot(read: ReadCampaign, found: Findings) -> list[str]:
-    """Read the files of a campaign; sentences said before an error are kept in ``found``."""
-    from fieldplan.campaign import input_files
-    from fieldplan.frame import read_frame
-    from fieldplan.lab import read_spread
-
-    input_files(read)
-    frame = read_frame(read)
-    found.understood += [*frame.population.sentences, *frame.notes]
-    spread = read_spread(read, frame)
-    return [*spread.sentences, *spread.notes]
-
-
-def _asked(campaign: Campaign) -> list[str]:
-    """Say what the campaign asks, in sentences."""
-    objective, analyte = campaign.deciding_objective, campaign.deciding_analyte
-    what = analyte.label
-    chosen = f" ({objective.assurance_chosen_by})" if objective.assurance_chosen_by else ""
-    if objective.assurance is None:
-        sure = "The budget decides n; no precision is asked for that it could miss."
-    elif objective.assurance == "plain":
-        sure = f"The bare formula decides n{chosen}: it is enough in about half of campaigns."
+    Raises
+    ------
+    CampaignError
+        The folder holds none, or several.
+    """
+    if not path.is_dir():
+        return path
+    inside = sorted(entry for entry in path.glob("*.toml") if entry.is_file())
+    campaigns = inside if len(inside) == 1 else [entry for entry in inside if _says_format(entry)]
+    if len(campaigns) == 1:
+        return campaigns[0]
+    if campaigns:
+        names = ", ".join(entry.name for entry in campaigns)
+        message = f"{path} holds {len(campaigns)} campaign files: {names}. Name the one you mean."
     else:
-        sure = f"n shall be enough with a chance of {objective.assurance * 100:g} %{chosen}."
-    layout = campaign.design[0].layout
-    return [
-        f"{campaign.plan.title} ({campaign.plan.id}).",
-        f"Asked: the mean of {what} with {_target(objective, campaign, analyte.unit)}; "
-        f"locations {_LAYOUTS[layout]}, seed {campaign.draw.seed}.",
-        sure,
-        *_also_asked(campaign),
-    ]
+        message = f"{path} holds no campaign file (.toml). Run 'fieldplan new' to write one."
+    raise CampaignError(message)
 
 
-def _also_asked(campaign: Campaign) -> list[str]:
-    """Say what else is asked or measured, and that it does not decide n."""
-    deciding = campaign.deciding_objective
-    others = [o for o in campaign.objective if o is not deciding]
-    asked = {objective.analyte for objective in campaign.objective}
-    lines = []
-    for objective in others:
-        analyte = campaign.analyte_called(objective.analyte or campaign.deciding_analyte.id)
-        target = _target(objective, campaign, analyte.unit)
-        lines.append(
-            f"Also asked: the mean of {analyte.label} with {target}; it does not decide n."
-        )
-    for analyte in campaign.analyte:
-        if analyte.id not in asked and analyte.id != campaign.deciding_analyte.id:
-            lines.append(f"Measured too, without a target: {analyte.label}.")
-    return lines
+def _says_format(path: Path) -> bool:
+    """Tell a campaign file from other TOML by its first key, also where it is damaged."""
+    try:
+        text = path.read_bytes().decode("utf-8", errors="replace").replace("\0", "")
+    except OSError:
+        return False
+    return re.search(r"^\ufeff?\s*format\s*=", text, re.MULTILINE) is not None
 
 
-_LAYOUTS = {
-    "simple-random": "drawn at random",
-    "stratified": "drawn at random in each stratum",
-    "square-grid": "on a square grid with a random start",
-    "triangular-grid": "on a triangular grid with a random start",
-    "census": "are all members of the list",
-}
-
-
-def _target(objective: Objective, campaign: Campaign, unit: str) -> str:
-    """Say the target of an objective."""
-    rules = campaign.rules
-    interval = f"{rules.confidence * 100:g} %, {rules.interval}"
-    if objective.standard_error is not None:
-        return f"a standard error of at most {objective.standard_error:g} {unit}"
-    if objective.half_width is not None:
-        return f"a half-width of at most {objective.half_width:g} {unit} ({interval})"
-    if objective.relative_half_width is not None:
-        share = objective.relative_half_width * 100
-        return f"a half-width of at most {share:g} % of the mean ({interval})"
-    currency = campaign.cost.currency if campaign.cost else ""
-    return f"what {objective.budget:g} {currency} can buy"
-
-
-def _print(found: Findings) -> None:
-    """Print what was understood on stdout, and what is wrong on stderr, before what is open."""
+def _print(path: Path, found: Findings) -> None:
+    """Print what was understood, what is wrong on stderr, what is open, and last the answer."""
     for sentence in found.understood:
         click.echo(wrapped(sentence))
     for alarm in found.alarms:
         click.echo(wrapped(f"ALARM: {alarm}"))
     for problem in found.problems:
-        say(problem)
+        say(wrapped(problem) if sys.stderr.isatty() else problem)
     if found.fill_in:
         click.echo("Still to fill in:")
         for entry in found.fill_in:
             click.echo(wrapped(f"line {entry.line}: {entry.key}: {entry.meaning}", indent="  "))
     elif not found.problems:
-        click.echo("Nothing is left to fill in. Next: fieldplan size, then fieldplan pack.")
+        shown = f'"{path}"' if " " in str(path) else str(path)
+        click.echo(f"\n{wrapped(found.answer)}")
+        click.echo(f"Nothing is left to fill in. Next: fieldplan pack {shown}")
 
 
 def _as_json(path: Path, found: Findings) -> dict[str, Any]:
@@ -172,4 +93,5 @@ def _as_json(path: Path, found: Findings) -> dict[str, Any]:
             {"line": entry.line, "key": entry.key, "meaning": entry.meaning}
             for entry in found.fill_in
         ],
+        "answer": found.answer,
     }

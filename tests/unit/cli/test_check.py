@@ -1,20 +1,29 @@
 """``fieldplan check``: what was understood, all that is wrong, and what is still open."""
 
 import json
+import math
+import statistics
+from datetime import date
 
 import pytest
 from click.testing import Result
+from scipy.stats import chi2
 
+from fieldplan.base.errors import CampaignError, FrameError
+from fieldplan.campaign import read_campaign
 from fieldplan.cli.check import command
+from fieldplan.cli.size import command as size
+from fieldplan.plan.make import make_plan
 from tests.command_runner import command_runner
 from tests.unit.campaign.files import PLAIN, bent
 
+VALUES = (12, 40, 25, 61, 33, 18, 55, 90)
 BOUNDARY = {
     "type": "Polygon",
     "coordinates": [[[-1.9, 52.1], [-1.899, 52.1], [-1.899, 52.101], [-1.9, 52.101], [-1.9, 52.1]]],
 }
 PILOT = "location_id,analyte,as_reported,unit\n" + "".join(
-    f"P{k},Lead,{value},mg/kg\n" for k, value in enumerate((12, 40, 25, 61, 33, 18, 55, 90))
+    f"P{k},Lead,{value},mg/kg\n" for k, value in enumerate(VALUES)
 )
 
 
@@ -48,7 +57,12 @@ def test_sound_campaign_is_told_in_sentences(folder):
     assert "n shall be enough with a chance of 80 % (L. Fenn)." in text
     assert "The mean speaks for 100 % of the site" in text
     assert "8 pilot locations (pilot.csv)" in text
-    assert text.endswith("Nothing is left to fill in. Next: fieldplan size, then fieldplan pack.")
+    # n = 7 · s² / (χ² of 7 degrees of freedom at 0.20) / 6², by the standard library and scipy.
+    n = math.ceil(7 * statistics.variance(VALUES) / chi2.ppf(0.20, 7) / 6**2)
+    assert text.endswith(
+        f"{n} results are needed for a standard error of the mean ≤ 6 mg/kg. Nothing is left to "
+        "fill in. Next: fieldplan pack campaign.toml"
+    )
     assert max(map(len, result.stdout.splitlines())) <= 80
 
 
@@ -130,8 +144,9 @@ def test_what_is_open_comes_last_and_is_no_error(folder):
     """Not to know is an answer."""
     result = check(folder, bent(("6.0", '"FILL IN"')))
     assert result.exit_code == 0
-    assert result.stdout.splitlines()[0] == "Still to fill in:"
-    assert "line 20: objective.standard_error: the largest standard error" in result.stdout
+    last = result.stdout.splitlines()[-3:]
+    assert last[0] == "Still to fill in:"
+    assert last[1].startswith("  line 20: objective.standard_error: the largest standard error")
 
 
 def test_missing_input_file_is_typed_wrong(folder):
@@ -179,6 +194,159 @@ def test_json_holds_the_same_and_nothing_else_is_printed(folder, changes, code):
     result = check(folder, bent(*changes), "--json")
     assert result.exit_code == code
     found = json.loads(result.stdout)
-    assert list(found) == ["campaign", "understood", "alarms", "problems", "fill_in"]
+    assert list(found) == ["campaign", "understood", "alarms", "problems", "fill_in", "answer"]
     assert bool(found["problems"]) == (code == 2)
     assert result.stderr == ""
+
+
+SQUARE = [[-1.9, 52.1], [-1.8995, 52.1], [-1.8995, 52.101], [-1.9, 52.101], [-1.9, 52.1]]
+STRATA = {
+    "type": "FeatureCollection",
+    "features": [
+        {
+            "type": "Feature",
+            "properties": {"stratum": name},
+            "geometry": {"type": "Polygon", "coordinates": [[[x + east, y] for x, y in SQUARE]]},
+        }
+        for name, east in (("west", 0.0), ("east", 0.0005))
+    ],
+}
+IN_STRATA = [('"boundary.geojson"', '"boundary.geojson"\nstrata = "strata.geojson"')]
+
+
+def test_strata_under_one_population_are_refused_here_and_not_first_by_pack(folder):
+    """A number that cannot be drawn helps nobody, so no command gives one."""
+    (folder / "strata.geojson").write_text(json.dumps(STRATA))
+    result = check(folder, bent(*IN_STRATA))
+    assert result.exit_code == 2
+    assert "campaign.toml:17: design.layout: draws from one population" in result.stderr
+    sized = command_runner().invoke(size, ["campaign.toml"])
+    assert isinstance(sized.exception, CampaignError)
+    assert sized.stdout == ""
+
+
+def test_list_in_strata_is_refused_here_and_by_size(folder):
+    """Only its file tells that it has any."""
+    rows = [f"W{k},52.1,-1.9,{'deep' if k % 2 else 'shallow'}" for k in range(30)]
+    (folder / "wells.csv").write_text("\n".join(["location_id,latitude,longitude,stratum", *rows]))
+    text = bent(('kind = "area"\nboundary = "boundary.geojson"', LIST))
+    result = check(folder, text)
+    assert result.exit_code == 1
+    assert "wells.csv puts its members into strata (deep, shallow)" in result.stderr
+    assert "Nothing is left" not in result.stdout
+    sized = command_runner().invoke(size, ["campaign.toml"])
+    assert isinstance(sized.exception, FrameError)
+
+
+LIST = 'kind = "list"\nlist_file = "wells.csv"'
+
+
+def test_what_cannot_be_drawn_is_found_by_drawing_it(folder):
+    """A site of 0.76 ha has no room for 36 places 60 m apart; only the draw knows."""
+    changes = [('"simple-random"', '"simple-random"\nminimum_spacing_m = 60')]
+    result = check(folder, bent(*changes))
+    assert result.exit_code == 1
+    assert "60 m" in result.stderr
+    assert "8 pilot locations (pilot.csv)" in words(result.stdout)
+    assert "Nothing is left" not in result.stdout
+
+
+def test_packet_that_check_announces_is_the_one_that_pack_decides(folder):
+    """One decision, made once: the numbers must be the same."""
+    answer = json.loads(check(folder, PLAIN, "--json").stdout)["answer"]
+    plan = make_plan(read_campaign(folder / "campaign.toml"), made_on=date(2026, 11, 2))
+    assert answer == plan.size.sentences[0]
+    assert answer.startswith(f"{len(plan.locations.of_class('random'))} results")
+
+
+OPEN = ('assurance_chosen_by = "L. Fenn"', 'assurance_chosen_by = "FILL IN"')
+
+
+def test_missing_file_is_told_beside_what_is_open(folder):
+    """Whoever fills in the last word should not meet the next fault only then."""
+    result = check(folder, bent(OPEN, ("pilot.csv", "nofile.xlsx")))
+    assert result.exit_code == 2
+    assert 'sigma.pilot: file with pilot results, CSV or XLSX; there is no such file (got "no' in (
+        result.stderr
+    )
+    assert "objective.assurance_chosen_by" in result.stdout
+
+
+def test_missing_file_is_told_beside_what_is_typed_wrong(folder):
+    """All at once."""
+    result = check(folder, bent(("6.0", '"6"'), ("boundary.geojson", "sight.geojson")))
+    assert [line.split(": ")[1] for line in result.stderr.splitlines()] == [
+        "objective.standard_error",
+        "frame.boundary",
+    ]
+
+
+def test_files_are_read_while_something_is_open(folder):
+    """The site and the pilot do not depend on who chose the assurance."""
+    result = check(folder, bent(OPEN))
+    assert result.exit_code == 0
+    assert "The mean speaks for 100 % of the site" in words(result.stdout)
+    assert "8 pilot locations (pilot.csv)" in words(result.stdout)
+
+
+def test_bad_boundary_and_bad_pilot_are_both_told_while_something_is_open(folder):
+    """Neither waits for the other, nor for the last FILL IN."""
+    line = {"type": "LineString", "coordinates": [[-1.9, 52.1], [-1.8, 52.1]]}
+    (folder / "boundary.geojson").write_text(json.dumps(line))
+    (folder / "pilot.csv").write_text("location_id,analyte,as_reported,unit\nP1,Lead,x,mg/kg\n")
+    result = check(folder, bent(OPEN))
+    assert result.exit_code == 1
+    assert "boundary.geojson" in result.stderr
+    assert "pilot.csv row 2" in result.stderr
+    assert "Still to fill in" in result.stdout
+
+
+@pytest.mark.parametrize(
+    "opened",
+    [
+        ('"boundary.geojson"', '"FILL IN"'),
+        ('name = "Lead"', 'name = "FILL IN"'),
+        ('unit = "mg/kg"', 'unit = "FILL IN"'),
+        ('"pilot.csv"', '"FILL IN"'),
+        ('"simple-random"', '"FILL IN"'),
+        ('"area"', '"FILL IN"'),
+        ("seed = 12", 'seed = "FILL IN"'),
+        ('"boundary.geojson"', '"boundary.geojson"\nstrata = "FILL IN"'),
+        ('"boundary.geojson"', '"boundary.geojson"\ncrs = "FILL IN"'),
+        ('"pilot.csv"', '"pilot.csv"\ncolumns = { unit = "FILL IN" }'),
+    ],
+    ids=lambda pair: pair[1][-24:],
+)
+def test_what_is_open_makes_no_fault_of_what_is_sound(folder, opened):
+    """A stand-in for an open value must never be blamed on the files."""
+    changes = [opened]
+    if "strata" in opened[1]:
+        changes.append(('"simple-random"', '"stratified"'))
+    result = check(folder, bent(*changes))
+    assert (result.exit_code, result.stderr) == (0, "")
+    assert "FILL" not in result.stdout
+
+
+def test_folder_stands_for_the_campaign_file_in_it(folder):
+    """There is usually one."""
+    (folder / "campaign.toml").write_text(PLAIN)
+    (folder / "pyproject.toml").write_text("[project]\n")
+    by_folder = command_runner().invoke(command, ["."], catch_exceptions=False)
+    by_name = command_runner().invoke(command, ["campaign.toml"], catch_exceptions=False)
+    assert by_folder.exit_code == 0
+    assert by_folder.stdout == by_name.stdout
+
+
+def test_folder_with_several_campaigns_or_none_says_so(folder):
+    """To guess one would check the wrong campaign."""
+    empty = command_runner().invoke(command, ["."])
+    assert str(empty.exception) == (
+        ". holds no campaign file (.toml). Run 'fieldplan new' to write one."
+    )
+    (folder / "spring.toml").write_text(PLAIN)
+    (folder / "autumn.toml").write_text(PLAIN)
+    several = command_runner().invoke(command, ["."])
+    assert str(several.exception) == (
+        ". holds 2 campaign files: autumn.toml, spring.toml. Name the one you mean."
+    )
+    assert several.exception.exit_code == 2
