@@ -11,6 +11,7 @@ from fieldplan.estimate.means import Means, means_by
 from fieldplan.estimate.model import Change, Estimate
 from fieldplan.estimate.planned import planned_for
 from fieldplan.estimate.population import outside_sentence, population_sentence
+from fieldplan.estimate.rejected import rejected_sentence
 from fieldplan.estimate.sentences import answer_sentences
 from fieldplan.estimate.working import working
 from fieldplan.plan.model import Plan
@@ -70,6 +71,7 @@ def estimate(
     level = level_sentence(plan, means)
     said = (population_sentence(plan, basis), outside_sentence(plan, basis, means.half))
     population = " ".join(sentence for sentence in said if sentence)
+    rejected = rejected_sentence(plan, basis, means)
     planned = planned_for(plan, basis.analyte)
     return Estimate(
         analyte=basis.analyte,
@@ -87,7 +89,10 @@ def estimate(
         steps=working(means, planned.unit),
         changes=changes,
         returns=basis,
-        sentences=answer_sentences(plan, means, changes, level=level, population=population),
+        rejected_sentence=rejected,
+        sentences=answer_sentences(
+            plan, means, changes, level=level, population=population, rejected=rejected
+        ),
     )
 
 

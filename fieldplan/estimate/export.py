@@ -4,7 +4,7 @@ import csv
 import io
 import math
 from collections.abc import Iterator
-from dataclasses import asdict
+from dataclasses import asdict, replace
 from typing import Any
 
 from fieldplan.estimate.model import Answers, Estimate
@@ -55,7 +55,8 @@ def estimate_json(estimate: Estimate) -> dict[str, Any]:
         "changes_after_results": [asdict(change) for change in estimate.changes],
         "sentences": estimate.sentences,
         "steps": [asdict(step) for step in estimate.steps],
-        "returns": asdict(estimate.returns),
+        "rejected": estimate.rejected_sentence,
+        "returns": asdict(replace(estimate.returns, with_rejected=None)),
     }
     plain: dict[str, Any] = _plain(content)
     return plain

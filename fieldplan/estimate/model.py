@@ -77,6 +77,8 @@ class Estimate:
     returns : Returns
     sentences : tuple of str
         The answer in words, most important first.
+    rejected_sentence : str
+        What the laboratory rejected and the answer with it; empty without such results.
     """
 
     analyte: str
@@ -95,6 +97,7 @@ class Estimate:
     changes: tuple[Change, ...]
     returns: Returns
     sentences: tuple[str, ...]
+    rejected_sentence: str = ""
 
 
 @dataclass(frozen=True)

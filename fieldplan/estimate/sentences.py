@@ -58,7 +58,13 @@ def analyte_name(plan: Plan, name: str) -> str:
 
 
 def answer_sentences(
-    plan: Plan, means: Means, changes: Sequence[Change], *, level: str, population: str
+    plan: Plan,
+    means: Means,
+    changes: Sequence[Change],
+    *,
+    level: str,
+    population: str,
+    rejected: str = "",
 ) -> tuple[str, ...]:
     """Say the answer, then what bounds it.
 
@@ -67,7 +73,7 @@ def answer_sentences(
     plan : Plan
     means : Means
     changes : sequence of Change
-    level, population : str
+    level, population, rejected : str
         Sentences made elsewhere; empty ones are left out.
 
     Returns
@@ -85,6 +91,7 @@ def answer_sentences(
         answer,
         _changed_sentence(changes, unit),
         _bracket_sentence(means, unit),
+        rejected,
         level,
         population,
         mean.caution,

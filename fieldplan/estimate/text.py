@@ -35,6 +35,7 @@ def results_paragraph(plan: Plan, estimate: Estimate) -> str:
         f"{interval_in_words(estimate.interval, unit)}).",
         _strata(estimate),
         _bracket(estimate),
+        estimate.rejected_sentence,
         mean.method,
         mean.caution,
         estimate.population_sentence,

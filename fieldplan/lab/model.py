@@ -53,6 +53,10 @@ class LabRow:
     qualifier_lab: str = ""
 
 
+REJECTED = "rejected by the laboratory, qualifier R"
+OTHER_ANALYTE = "of an analyte that the campaign does not know"
+
+
 @dataclass(frozen=True)
 class LeftOutRow:
     """A row of the laboratory's file that is not in any mean, and why, as it was written.
@@ -63,8 +67,9 @@ class LeftOutRow:
     written_id : str
         Of the sample, else of the location.
     analyte : str
+        The campaign's id, or the laboratory's name where the campaign has none.
     as_reported : str
-        With its unit.
+        The cell.
     why : str
     """
 
@@ -76,18 +81,33 @@ class LeftOutRow:
 
     @property
     def in_words(self) -> str:
-        """Its id, value and row, for a sentence."""
-        return f"'{self.written_id}' with '{self.as_reported}' (row {self.row})"
+        """Its id, value and row, for a sentence; the analyte where it is none of the campaign's."""
+        what = f"{self.analyte} " if self.why == OTHER_ANALYTE else ""
+        return f"'{self.written_id}' with {what}'{self.as_reported}' (row {self.row})"
 
 
 @dataclass(frozen=True)
 class LabTable:
-    """All rows of one file, in file order, with the file's name, its hash and reading notes."""
+    """All rows of one file, in file order, with the file's name, its hash and reading notes.
+
+    Parameters
+    ----------
+    file_name, sha256 : str
+    rows : tuple of LabRow
+        Of the campaign's analytes, without those that the laboratory rejected.
+    notes : tuple of str
+    rejected : tuple of LabRow
+        Results that the laboratory rejected (qualifier R), where their cells can be read.
+    left_out : tuple of LeftOutRow
+        All rejected results, and all rows of analytes that the campaign does not know.
+    """
 
     file_name: str
     sha256: str
     rows: tuple[LabRow, ...]
     notes: tuple[str, ...] = ()
+    rejected: tuple[LabRow, ...] = ()
+    left_out: tuple[LeftOutRow, ...] = ()
 
 
 @dataclass(frozen=True)

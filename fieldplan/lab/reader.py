@@ -9,7 +9,7 @@ from fieldplan.base.errors import LabError
 from fieldplan.campaign.model import Analyte, Campaign
 from fieldplan.lab.cells import tidy
 from fieldplan.lab.columns import LAB_COLUMNS, find_columns
-from fieldplan.lab.model import LabRow, LabTable
+from fieldplan.lab.model import REJECTED, LabRow, LabTable
 from fieldplan.lab.row import FileMemory, RowCells, read_row
 from fieldplan.lab.tables import TextTable, capped, read_tables
 from fieldplan.lab.words import counted, listed
@@ -70,12 +70,15 @@ def read_lab(
     if problems:
         raise LabError(*capped(problems))
     comma_read = decimal_comma and any("," in row.as_reported for row in rows)
-    more = _notes(table.file_name, memory, comma_read=comma_read)
+    labels = {analyte.id: analyte.label for analyte in campaign.analyte}
+    more = _notes(table.file_name, memory, labels=labels, comma_read=comma_read)
     return LabTable(
         file_name=table.file_name,
         sha256=table.sha256,
         rows=tuple(rows),
         notes=(*table.notes, *notes, *more),
+        rejected=tuple(memory.rejected),
+        left_out=tuple(memory.left_out),
     )
 
 
@@ -134,7 +137,7 @@ def _mixed_meanings(name: str, memory: FileMemory) -> list[str]:
 
 def _nothing_found(name: str, analytes: Mapping[str, Analyte], memory: FileMemory) -> str:
     known = listed(sorted({analyte.id for analyte in analytes.values()}))
-    if memory.rejected:
+    if any(entry.why == REJECTED for entry in memory.left_out):
         return f"{name}: every result of {known} is rejected (qualifier R); ask the laboratory."
     if not memory.other_analytes:
         return f"{name} has a header but no rows; export it again."
@@ -149,7 +152,9 @@ def _nothing_found(name: str, analytes: Mapping[str, Analyte], memory: FileMemor
     )
 
 
-def _notes(name: str, memory: FileMemory, *, comma_read: bool) -> tuple[str, ...]:
+def _notes(
+    name: str, memory: FileMemory, *, labels: Mapping[str, str], comma_read: bool
+) -> tuple[str, ...]:
     """Say what was left out or converted."""
     lines = []
     if memory.other_analytes:
@@ -157,9 +162,10 @@ def _notes(name: str, memory: FileMemory, *, comma_read: bool) -> tuple[str, ...
         lines.append(
             f"{name}: {count} of other analytes not read ({listed(sorted(memory.other_analytes))})."
         )
-    if memory.rejected:
-        rows = listed([str(number) for number in memory.rejected])
-        lines.append(f"{name}: rejected results (qualifier R) left out: row {rows}.")
+    rejected = [entry for entry in memory.left_out if entry.why == REJECTED]
+    for analyte in dict.fromkeys(entry.analyte for entry in rejected):
+        group = [entry.in_words for entry in rejected if entry.analyte == analyte]
+        lines.append(f"{name}: {labels[analyte]} left out, {REJECTED}: {listed(group)}.")
     if memory.limits_differ:
         rows = listed([str(number) for number in memory.limits_differ])
         lines.append(

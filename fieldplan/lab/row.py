@@ -2,6 +2,7 @@
 
 import math
 from collections.abc import Callable, Mapping
+from contextlib import suppress
 from dataclasses import dataclass, field
 from decimal import Decimal
 from typing import NoReturn, TypeVar
@@ -10,7 +11,7 @@ from fieldplan.base.errors import LabError
 from fieldplan.campaign.model import Analyte
 from fieldplan.lab.cells import Reading, letters_beside, read_cell, says_not_detected, tidy
 from fieldplan.lab.cells import says_rejected as rejected_by
-from fieldplan.lab.model import LabRow
+from fieldplan.lab.model import OTHER_ANALYTE, REJECTED, LabRow, LeftOutRow
 from fieldplan.lab.roles import plain_role
 from fieldplan.lab.tables import TextTable
 from fieldplan.lab.units import AMBIGUOUS, conversion_factor, plain_basis, plain_unit, split_basis
@@ -58,7 +59,8 @@ class FileMemory:
     """What reading the rows of one file leaves to say about the whole."""
 
     other_analytes: dict[str, int] = field(default_factory=dict)
-    rejected: list[int] = field(default_factory=list)
+    rejected: list[LabRow] = field(default_factory=list)
+    left_out: list[LeftOutRow] = field(default_factory=list)
     limits_differ: list[int] = field(default_factory=list)
     converted: set[str] = field(default_factory=set)
     meanings: dict[tuple[str, str], set[str]] = field(default_factory=dict)
@@ -117,13 +119,21 @@ def read_row(
             row.refuse("analyte", "is blank. Fill it in, or delete the row if it is a footer.")
         name = row.tidy("analyte")
         memory.other_analytes[name] = memory.other_analytes.get(name, 0) + 1
+        memory.left_out.append(_left_out(row, name, OTHER_ANALYTE))
         return None
     if rejected_by(row.text("qualifier_lab")) or rejected_by(
         letters_beside(row.text("as_reported"))
     ):
-        memory.rejected.append(row.number)
+        memory.left_out.append(_left_out(row, analyte.id, REJECTED))
+        with suppress(LabError):  # a rejected cell need not hold a number
+            memory.rejected.append(_checked(row, analyte, FileMemory(), decimal_comma))
         return None
     return _checked(row, analyte, memory, decimal_comma)
+
+
+def _left_out(row: RowCells, analyte: str, why: str) -> LeftOutRow:
+    written = row.tidy("sample_id") or row.tidy("location_id")
+    return LeftOutRow(row.number, written, analyte, row.tidy("as_reported"), why)
 
 
 def _checked(row: RowCells, analyte: Analyte, memory: FileMemory, decimal_comma: bool) -> LabRow:

@@ -1,11 +1,12 @@
 """Rows that the laboratory made for itself: named and left out, unless they claim a jar."""
 
 from collections.abc import Sequence
+from dataclasses import replace
 
-from fieldplan.lab.model import LabRow, LabTable, LeftOutRow
+from fieldplan.lab.model import OTHER_ANALYTE, REJECTED, LabRow, LabTable, LeftOutRow
 from fieldplan.lab.roles import IN_THE_MEAN
 from fieldplan.plan.model import Plan
-from fieldplan.returns.ids import likeness
+from fieldplan.returns.ids import likeness, plain_id
 
 LABORATORY_ROLES = ("laboratory duplicate", "laboratory control", "method blank", "matrix spike")
 """Rows that the laboratory made for itself; they belong to no planned sample."""
@@ -62,6 +63,52 @@ def own_controls(lab_table: LabTable, analyte: str) -> list[LeftOutRow]:
         for row in lab_table.rows
         if row.analyte == analyte and row.role in LABORATORY_ROLES
     ]
+
+
+def not_read(plan: Plan, lab_table: LabTable, analyte: str) -> list[LeftOutRow]:
+    """List what the reader left out: rejected results, and issued jars under other analytes.
+
+    Parameters
+    ----------
+    plan : Plan
+    lab_table : LabTable
+    analyte : str
+        Its id; results rejected for another one are left to that one.
+    """
+    issued = {likeness(sample.sample_id) for sample in plan.samples.samples}
+    issued |= {likeness(place.location_id) for place in plan.locations.places}
+    return [
+        entry
+        for entry in lab_table.left_out
+        if (entry.why == REJECTED and entry.analyte == analyte)
+        or (entry.why == OTHER_ANALYTE and likeness(entry.written_id) in issued)
+    ]
+
+
+def with_rejected(lab_table: LabTable, analyte: str) -> LabTable | None:
+    """Put the rejected results of one analyte back among the others.
+
+    Parameters
+    ----------
+    lab_table : LabTable
+    analyte : str
+        Its id.
+
+    Returns
+    -------
+    LabTable or None
+        None where none was rejected, or where every jar of theirs has a result that was not.
+    """
+    kept = {(plain_id(id_as_written(row)), row.role) for row in rows_of(lab_table, analyte)}
+    back = [
+        row
+        for row in lab_table.rejected
+        if row.analyte == analyte and (plain_id(id_as_written(row)), row.role) not in kept
+    ]
+    if not back:
+        return None
+    rows = sorted([*lab_table.rows, *back], key=lambda row: row.row)
+    return replace(lab_table, rows=tuple(rows), rejected=(), notes=())
 
 
 def claimed_jars(plan: Plan, rows: Sequence[LabRow], file_name: str) -> list[str]:

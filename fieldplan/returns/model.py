@@ -118,6 +118,8 @@ class Returns:
         Sentences: missing, extra, moved outside tolerance, moved outside its stratum …
     left_out : tuple of LeftOutRow
         Rows of the laboratory's file that are in no mean, each with its value and why.
+    with_rejected : Returns or None
+        The same with the results counted that the laboratory rejected; None without such.
     """
 
     analyte: str
@@ -134,6 +136,7 @@ class Returns:
     duplicate_pairs: tuple[tuple[str, float | None, float | None], ...] = ()
     notes: tuple[str, ...] = ()
     left_out: tuple[LeftOutRow, ...] = ()
+    with_rejected: "Returns | None" = None
 
 
 ReasonCode = Literal[

@@ -1,11 +1,11 @@
 """The returned campaign against its plan: what came, what is missing, what stands in for what."""
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from fieldplan.base.errors import LabError
 from fieldplan.design.model import Location
-from fieldplan.lab.model import LabRow, LabTable, LeftOutRow
+from fieldplan.lab.model import REJECTED, LabRow, LabTable, LeftOutRow
 from fieldplan.lab.roles import IN_THE_MEAN
 from fieldplan.lab.tables import capped
 from fieldplan.lab.words import counted, listed
@@ -17,8 +17,10 @@ from fieldplan.returns.laboratory import (
     claimed_jars,
     id_as_written,
     left_out,
+    not_read,
     own_controls,
     rows_of,
+    with_rejected,
 )
 from fieldplan.returns.location_values import LocationValue, location_values, one_row_a_sample
 from fieldplan.returns.matching import ConfirmedMatch, Matching, match_rows
@@ -29,6 +31,7 @@ TARGETED = "Targeted places were chosen by judgement and never enter the mean."
 OUTSIDE = "The crew found that the place lies outside the population."
 OF_A_MOVE = frozenset({"no-access", "obstructed", "unsafe", "dry", "frozen"})
 """Reasons that, beside taken = yes, say why a place was moved and not why its result is missing."""
+BY_THE_LABORATORY = "the laboratory rejected its result"
 OF_NO_SAMPLE = "belongs to no planned sample"
 NOT_NEEDED = "Alternate that stands in for no lost location of its stratum."
 
@@ -70,9 +73,36 @@ def reconcile(
     Notes
     -----
     A location that moved keeps the stratum and weight with which it was drawn, since its chance
-    of being drawn was that of its planned place.
+    of being drawn was that of its planned place. Results that the laboratory rejected do not
+    count; ``with_rejected`` holds what would come of it if they did.
     """
-    name, analyte = lab_table.file_name, analyte or plan.campaign.deciding_analyte.id
+    asked = analyte or plan.campaign.deciding_analyte.id
+    found = _meet(plan, lab_table, field_rows, confirmed=confirmed, analyte=asked)
+    table = with_rejected(lab_table, asked)
+    if table is None:
+        return found
+    try:
+        again = _meet(plan, table, field_rows, confirmed=confirmed, analyte=asked)
+    except LabError:
+        return found
+    back = {result.location_id for result in again.results}
+    lost = tuple(
+        replace(entry, reason=BY_THE_LABORATORY) if entry.location_id in back else entry
+        for entry in found.lost
+    )
+    return replace(found, lost=lost, with_rejected=again)
+
+
+def _meet(
+    plan: Plan,
+    lab_table: LabTable,
+    field_rows: FieldReturn | Sequence[FieldRow],
+    *,
+    confirmed: Sequence[ConfirmedMatch],
+    analyte: str,
+) -> Returns:
+    """Meet the results that count with the plan."""
+    name = lab_table.file_name
     rows = [row for row in lab_table.rows if row.analyte == analyte]
     others = [row for row in lab_table.rows if row.analyte != analyte]
     own = rows_of(lab_table, analyte)
@@ -92,7 +122,8 @@ def reconcile(
     usable = {n for n in values if not facts.get(n, FieldFacts()).outside}
     met = _Met(plan, facts, values, substitute(plan, facts, usable))
     expected = met.expected_samples(analyte)
-    unused = _left_out(matching, own_controls(lab_table, analyte))
+    own_or_unread = [*own_controls(lab_table, analyte), *not_read(plan, lab_table, analyte)]
+    unused = _left_out(matching, own_or_unread)
     counts = _counts([s for s in expected if s not in by_sample], unused)
     said = [*lab_table.notes, *notes, *counts, *met.pairs.notes, *moves]
     said += [*met.control_notes(by_sample), *met.silence_notes(bool(given.rows))]
@@ -140,17 +171,17 @@ def _nothing_matched(plan: Plan, file_name: str, rows: Sequence[LabRow]) -> str:
     )
 
 
-def _left_out(matching: Matching, controls: Sequence[LeftOutRow]) -> list[LeftOutRow]:
+def _left_out(matching: Matching, others: Sequence[LeftOutRow]) -> list[LeftOutRow]:
     """List the rows that are in no mean, in the order of the file."""
     extra = [left_out(row, OF_NO_SAMPLE) for row in matching.extra]
-    return sorted([*extra, *controls], key=lambda entry: entry.row)
+    return sorted([*extra, *others], key=lambda entry: entry.row)
 
 
 def _counts(missing: Sequence[str], unused: Sequence[LeftOutRow]) -> list[str]:
     notes = []
     if missing:
         notes.append(f"No result came for {counted(len(missing), 'sample')}: {listed(missing)}.")
-    for why in dict.fromkeys(entry.why for entry in unused):
+    for why in dict.fromkeys(entry.why for entry in unused if entry.why != REJECTED):
         group = [entry.in_words for entry in unused if entry.why == why]
         notes.append(f"Not used ({why}): {listed(group)}.")
     return notes

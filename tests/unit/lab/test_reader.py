@@ -72,7 +72,19 @@ def test_a_qualifier_column_makes_non_detects_and_drops_rejected_rows(read: Read
         ("A", None, 0.5),
         ("B", 7.0, None),
     ]
-    assert "row 4 and 5" in table.notes[0]
+    assert "Lead left out, rejected by the laboratory, qualifier R: " in table.notes[0]
+    assert "'C' with '' (row 4) and 'D' with '9 R' (row 5)." in table.notes[0]
+    assert [(row.location_id, row.result) for row in table.rejected] == [("D", 9.0)]
+    assert [(row.row, row.as_reported) for row in table.left_out] == [(4, ""), (5, "9 R")]
+
+
+def test_rows_of_analytes_that_nobody_asked_for_are_kept_with_their_values(read: Reader) -> None:
+    """A jar of the plan may stand there under another analyte's name; the reader must see it."""
+    table = read(f"{HEAD}\nA,lead,1,mg/kg\nA,Lead leachable,640,mg/kg\n")
+    assert [row.as_reported for row in table.rows] == ["1"]
+    (left,) = table.left_out
+    assert (left.row, left.written_id, left.analyte) == (3, "A", "Lead leachable")
+    assert left.as_reported == "640"
 
 
 def test_every_fault_is_said_at_once_with_row_value_and_remedy(read: Reader) -> None:
