@@ -21,7 +21,12 @@ from fieldplan.packet.sheets.results_tables import (
     degrees_words,
     stratum_table,
 )
-from fieldplan.packet.sheets.returned import field_blocks, location_table, match_sentence
+from fieldplan.packet.sheets.returned import (
+    field_blocks,
+    left_out_blocks,
+    location_table,
+    match_sentence,
+)
 from fieldplan.packet.sheets.rules import rules_blocks
 from fieldplan.plan.model import Plan
 
@@ -130,6 +135,7 @@ def location_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
             "them at half their limit; page one says what 0 and the limit would give.",
             tone="note",
         ),
+        *left_out_blocks(plan, estimate.returns),
     ]
 
 

@@ -6,6 +6,9 @@ from fieldplan.packet.sheets.plan_words import REASONS, several_strata
 from fieldplan.plan.model import Plan
 from fieldplan.returns.model import LocationResult, LostLocation, Returns
 
+MOST_ROWS = 60
+"""So many rows of no use are set; a report of many analytes may hold thousands."""
+
 
 def match_sentence(returns: Returns) -> str:
     """Say how many samples came back."""
@@ -42,6 +45,29 @@ def location_row(result: LocationResult) -> tuple[str, ...]:
         trimmed(result.half),
         used,
     )
+
+
+def left_out_blocks(plan: Plan, returns: Returns) -> list[Block]:
+    """Set every row of the laboratory's file that is in no mean, with its value and why."""
+    if not returns.left_out:
+        return []
+    shown = returns.left_out[:MOST_ROWS]
+    rest = len(returns.left_out) - len(shown)
+    more = f"; {rest} more stand in the file" if rest else ""
+    labels = {analyte.id: analyte.label for analyte in plan.campaign.analyte}
+    rows = tuple(
+        (str(entry.row), entry.written_id, labels.get(entry.analyte, entry.analyte),
+         entry.as_reported, entry.why)
+        for entry in shown
+    )  # fmt: skip
+    return [
+        Heading("Rows of the laboratory's file that are in no mean", level=2),
+        Table(
+            ("Row", "Id as written", "Analyte", "As reported", "Why"),
+            rows,
+            caption=f"{counted(len(returns.left_out), 'row')}, values as the file has them{more}",
+        ),
+    ]
 
 
 def field_blocks(plan: Plan, returns: Returns) -> list[Block]:

@@ -6,9 +6,10 @@ from functools import cache
 
 from fieldplan.base.document import Document, Paragraph, Table
 from fieldplan.estimate.model import Answers, Change, Interval
+from fieldplan.lab.model import LeftOutRow
 from fieldplan.packet.sheets.results_sheet import after_figure, answer_words, results_sheet
 from fieldplan.packet.sheets.results_tables import change_blocks, stratum_table
-from fieldplan.packet.sheets.returned import field_blocks, relative_difference
+from fieldplan.packet.sheets.returned import field_blocks, left_out_blocks, relative_difference
 from tests.factories import make_estimate, make_plan, make_returns
 from tests.unit.packet.sheet_text import headings_of, text_of, words_of
 
@@ -125,3 +126,26 @@ def test_no_word_of_the_sheet_is_a_verdict():
     assert not re.search(
         r"\b(safe|clean|pass(es|ed)?|compliant|approved|certified)\b", sheet_text(), re.IGNORECASE
     )
+
+
+def test_rows_that_are_in_no_mean_are_set_with_their_values():
+    """A reader must be able to see what was left out, not only that something was."""
+    left = (
+        LeftOutRow(9, "HL-8746", "lead", "640 R", "rejected by the laboratory, qualifier R"),
+        LeftOutRow(45, "X118/2", "lead", "45", "belongs to no planned sample"),
+    )
+    estimate = make_estimate(returns=replace(make_returns(), left_out=left))
+    tables = [
+        b for b in results_sheet(make_plan(), Answers(estimate)).blocks if isinstance(b, Table)
+    ]
+    (table,) = [t for t in tables if "Id as written" in t.columns]
+    assert [row[1:4] for row in table.rows] == [
+        ("HL-8746", "Lead", "640 R"),
+        ("X118/2", "Lead", "45"),
+    ]
+    many = tuple(replace(left[1], row=row) for row in range(100, 200))
+    (*_, capped) = left_out_blocks(make_plan(), replace(make_returns(), left_out=many))
+    assert isinstance(capped, Table)
+    assert len(capped.rows) == 60
+    assert "40 more stand in the file" in (capped.caption or "")
+    assert left_out_blocks(make_plan(), make_returns()) == []
