@@ -1,13 +1,11 @@
 """``fieldplan check``: what was understood, what is wrong, what is still to fill in."""
 
-import re
 import sys
 from pathlib import Path
 from typing import Any
 
 import click
 
-from fieldplan.base.errors import CampaignError
 from fieldplan.cli.findings import Findings, look_at
 from fieldplan.cli.options import json_option, print_json, say, wrapped
 
@@ -24,6 +22,8 @@ def command(ctx: click.Context, campaign_file: Path, as_json: bool) -> None:
     code 2: something is typed wrong. 1: it cannot be done as it stands. 0: neither; something may
     still be open.
     """
+    from fieldplan.campaign.folder import campaign_in
+
     path = campaign_in(campaign_file)
     found = look_at(path)
     if as_json:
@@ -31,37 +31,6 @@ def command(ctx: click.Context, campaign_file: Path, as_json: bool) -> None:
     else:
         _print(path, found)
     ctx.exit(found.exit_code)
-
-
-def campaign_in(path: Path) -> Path:
-    """Return the campaign file that is meant: the path itself, or the only one in a folder.
-
-    Raises
-    ------
-    CampaignError
-        The folder holds none, or several.
-    """
-    if not path.is_dir():
-        return path
-    inside = sorted(entry for entry in path.glob("*.toml") if entry.is_file())
-    campaigns = inside if len(inside) == 1 else [entry for entry in inside if _says_format(entry)]
-    if len(campaigns) == 1:
-        return campaigns[0]
-    if campaigns:
-        names = ", ".join(entry.name for entry in campaigns)
-        message = f"{path} holds {len(campaigns)} campaign files: {names}. Name the one you mean."
-    else:
-        message = f"{path} holds no campaign file (.toml). Run 'fieldplan new' to write one."
-    raise CampaignError(message)
-
-
-def _says_format(path: Path) -> bool:
-    """Tell a campaign file from other TOML by its first key, also where it is damaged."""
-    try:
-        text = path.read_bytes().decode("utf-8", errors="replace").replace("\0", "")
-    except OSError:
-        return False
-    return re.search(r"^\ufeff?\s*format\s*=", text, re.MULTILINE) is not None
 
 
 def _print(path: Path, found: Findings) -> None:
