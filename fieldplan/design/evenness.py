@@ -11,6 +11,7 @@ from shapely.geometry.base import BaseGeometry
 from fieldplan.base.errors import DesignError
 from fieldplan.design.layouts import LAYOUTS
 from fieldplan.design.model import DrawnPlaces, Layout, StratumCount
+from fieldplan.frame.cutting import joined
 from fieldplan.frame.model import Frame
 
 Coordinates = NDArray[np.float64]
@@ -90,7 +91,7 @@ def compare_layouts(
 def _measured(layout: Layout, frame: Frame, drawn: DrawnPlaces) -> Evenness:
     places = np.array([(place.easting, place.northing) for place in drawn.places])
     near = nearest_neighbours(places)
-    whole = shapely.union_all([stratum.geometry for stratum in frame.strata])
+    whole = joined([s.geometry for s in frame.strata if s.geometry is not None], "the strata")
     return Evenness(
         layout.name,
         len(places),

@@ -1,14 +1,14 @@
 """An area as population: boundary, strata, exclusions and inset put together and measured."""
 
-import shapely
 from shapely.geometry.base import BaseGeometry
 
 from fieldplan.base.errors import FrameError
 from fieldplan.base.units import area_in_words
 from fieldplan.campaign.model import FrameTable, Targeted
+from fieldplan.frame.cutting import allowed_m2, check_sum, joined, parted
 from fieldplan.frame.exclusions import read_exclusions
 from fieldplan.frame.ground import FrameFiles, read_ground
-from fieldplan.frame.model import ExcludedArea, Frame, Stratum
+from fieldplan.frame.model import Frame, Stratum
 from fieldplan.frame.places import read_targeted
 from fieldplan.frame.plane import merged, widened
 from fieldplan.frame.population import area_population
@@ -40,12 +40,19 @@ def read_area(files: FrameFiles, targeted: tuple[Targeted, ...]) -> Frame:
     ground = read_ground(files)
     pieces, gaps, ground = read_strata(files, ground)
     excluded, ground = read_exclusions(files, ground, gaps)
-    net = _net(pieces, ground.boundary, excluded, files.table)
+    out = joined([area.geometry for area in excluded], "the exclusions")
+    inner, strip_m2 = _inset(ground.boundary, out, files.table.inset_m)
+    net = _net(pieces, inner, out, files.table)
     places, ground = read_targeted(files, ground, targeted)
     total = sum(float(piece.area) for piece in net.values())
-    parts = total + sum(area.area_m2 for area in excluded)
-    # Without an inset the parts are the whole; the millimetre grid moves it by a hair.
-    gross = max(float(ground.boundary.area), parts) if files.table.inset_m else parts
+    # The parts are the whole; the millimetre grid moves it by a hair.
+    gross = total + strip_m2 + sum(area.area_m2 for area in excluded)
+    check_sum(
+        float(ground.boundary.area),
+        gross,
+        allowed=allowed_m2(ground.boundary, out, *pieces.values(), *net.values()),
+        label="strata, exclusions and inset of the site",
+    )
     population = area_population(files.table, gross=gross, excluded=excluded, net=total)
     strata = tuple(
         Stratum(name, float(piece.area), float(piece.area) / total, piece)
@@ -77,21 +84,25 @@ def _edge_notes(files: FrameFiles) -> list[str]:
     return notes
 
 
-def _net(
-    pieces: Pieces,
-    boundary: BaseGeometry,
-    excluded: tuple[ExcludedArea, ...],
-    table: FrameTable,
-) -> Pieces:
-    """Cut exclusions and inset out of each stratum; one that vanishes is an error by name."""
+def _inset(boundary: BaseGeometry, out: BaseGeometry, inset_m: float) -> tuple[BaseGeometry, float]:
+    """Give the site within the inset, and the area that the inset alone takes."""
+    if not inset_m:
+        return boundary, 0.0
     # The inset follows the boundary and its holes. Borders between strata have none, and
     # exclusions have their own buffers.
-    inner = widened(boundary, -table.inset_m) if table.inset_m else None
-    out = shapely.union_all([area.geometry for area in excluded]) if excluded else None
+    inner, strip = parted(boundary, widened(boundary, -inset_m), "the site and its inset")
+    _, strip_alone = parted(strip, out, "the inset without the exclusions")
+    return inner, float(strip_alone.area)
+
+
+def _net(pieces: Pieces, inner: BaseGeometry, out: BaseGeometry, table: FrameTable) -> Pieces:
+    """Cut exclusions and inset out of each stratum; one that vanishes is an error by name."""
     net: Pieces = {}
     for name, piece in pieces.items():
-        left = piece if inner is None else shapely.intersection(piece, inner)
-        left = left if out is None else shapely.difference(left, out)
+        left = piece
+        if table.inset_m:
+            left, _ = parted(left, inner, f"{_called(name)} within the inset")
+        _, left = parted(left, out, f"{_called(name)} without the exclusions")
         net[name] = merged(left)
     gone = [
         f"Nothing is left of {_called(name)}: of {area_in_words(pieces[name].area)} the inset "

@@ -7,11 +7,12 @@ from shapely.geometry.base import BaseGeometry
 
 from fieldplan.base.errors import FrameError
 from fieldplan.campaign.model import Exclusion
+from fieldplan.frame.cutting import joined, parted
 from fieldplan.frame.ground import FrameFiles, Ground, Overlay, distance_in_words
 from fieldplan.frame.layer import Feature, Layer
 from fieldplan.frame.model import ExcludedArea
 from fieldplan.frame.places import ID_COLUMNS
-from fieldplan.frame.plane import SitePlane, merged, polygons_of, widened
+from fieldplan.frame.plane import GRID_M, SitePlane, merged, polygons_of, widened
 
 _FAR_M = 1000.0
 
@@ -46,22 +47,27 @@ def read_exclusions(
     excluded = list(taken)
     left = ground.boundary
     for area in taken:
-        left = shapely.difference(left, area.geometry)
+        _, left = parted(left, area.geometry, f"{area.source}: the site without {area.reason}")
     for exclusion in files.table.exclusion:
         overlay = files.open(exclusion.file, wanted="any")
         shape, notes = _shape(exclusion, overlay, ground)
         ground = ground.noting(
             *overlay.layer.notes, *overlay.shift.notes, *notes, source=overlay.shift.source
         )
-        inside = shapely.intersection(ground.boundary, shape)
+        label = f"{exclusion.file}: the site without {exclusion.reason}"
+        inside, _ = parted(ground.boundary, shape, label)
         if inside.area <= 0:
             ground = ground.noting(_elsewhere(exclusion, overlay, ground, shape))
             continue
-        remaining = shapely.difference(left, inside)
-        took = float(left.area - remaining.area)
-        left = remaining
+        took, left = parted(left, inside, label)
         excluded.append(
-            ExcludedArea(exclusion.reason, exclusion.file, exclusion.buffer_m, took, merged(inside))
+            ExcludedArea(
+                exclusion.reason,
+                exclusion.file,
+                exclusion.buffer_m,
+                float(took.area),
+                merged(inside),
+            )
         )
     return tuple(excluded), ground
 
@@ -83,7 +89,7 @@ def _shape(
     if outlines:
         part = replace(overlay, layer=replace(layer, features=outlines))
         features, notes = ground.polygons(part)
-        shapes = [feature.geometry for feature in features]
+        shapes = [joined([feature.geometry for feature in features], layer.name)]
     if exclusion.buffer_m > 0:
         plane = SitePlane(ground.projection, overlay.shift)
         shapes += [plane.place(feature.geometry) for feature in others]
@@ -92,7 +98,7 @@ def _shape(
             f"{layer.name}: {len(others)} line(s) or point(s) take no ground without a buffer_m "
             "and were left out."
         )
-    whole = shapely.union_all(shapes)
+    whole = shapely.union_all(shapes, grid_size=GRID_M)
     return widened(whole, exclusion.buffer_m), notes
 
 

@@ -11,6 +11,7 @@ from shapely.geometry.base import BaseGeometry
 from fieldplan.base.errors import FrameError
 from fieldplan.base.units import area_in_words, significant
 from fieldplan.campaign.model import FrameTable
+from fieldplan.frame.cutting import joined
 from fieldplan.frame.datum import Shift, shift_for
 from fieldplan.frame.files import read_layer
 from fieldplan.frame.layer import Feature, Layer
@@ -200,7 +201,7 @@ def _placed(
 def _united(features: list[Feature], name: str, notes: list[str]) -> BaseGeometry:
     """Join the parts of a boundary, and say where they lie over each other."""
     shapes = [feature.geometry for feature in features]
-    whole = shapes[0] if len(shapes) == 1 else shapely.union_all(shapes)
+    whole = shapes[0] if len(shapes) == 1 else joined(shapes, name)
     boundary = merged(whole)
     twice = float(sum(shape.area for shape in shapes) - boundary.area)
     if len(shapes) > 1 and twice > REPAIR_LIMIT * boundary.area:

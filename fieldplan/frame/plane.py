@@ -149,10 +149,11 @@ def repaired(
             message = f"{label} has no area; draw it again."
             raise FrameError(message)
         return whole, ()
-    joined = shapely.union_all(parts) if all(map(shapely.is_valid, parts)) else None
-    if joined is not None and abs(float(joined.area) - area) < 1e-9 * area:
-        # Parts that only touch, such as a site cut at the date line, are nobody's mistake.
-        return joined, ()
+    if all(map(shapely.is_valid, parts)):
+        one = shapely.union_all(parts, grid_size=GRID_M)
+        if abs(float(one.area) - area) <= GRID_M * float(shapely.length(parts).sum()):
+            # Parts that only touch, such as a site cut at the date line, are nobody's mistake.
+            return one, ()
     try:
         mended = shapely.make_valid(whole, method="structure", keep_collapsed=False)
     except (GEOSException, ValueError) as fault:

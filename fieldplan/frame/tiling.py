@@ -7,16 +7,28 @@ from shapely.geometry.base import BaseGeometry
 
 from fieldplan.base.errors import FrameError
 from fieldplan.base.units import area_in_words, significant
+from fieldplan.frame.cutting import (
+    allowed_m2,
+    area_m2,
+    check_sum,
+    common,
+    joined,
+    parted,
+    wide_parts,
+)
 from fieldplan.frame.ground import FrameFiles, Ground, Overlay
 from fieldplan.frame.layer import Feature, Layer, raise_all
 from fieldplan.frame.model import ExcludedArea
-from fieldplan.frame.plane import GRID_M, polygons_of
+from fieldplan.frame.plane import polygons_of
 
 SLIVER_SHARE = 1e-4
 """Gaps and overlaps up to this share of the site are drawing noise and are settled by rule."""
 
 GAP_LIMIT = 5e-3
 """Gaps above this share of the site are refused; between the two they leave the population."""
+
+WORTH_SAYING_M2 = 0.5
+"""Slivers below this are given away without a word."""
 
 Pieces = dict[str, BaseGeometry]
 """Polygons by the name of their stratum, in the order of the names."""
@@ -59,7 +71,7 @@ def read_strata(
         *overlay.layer.notes, *overlay.shift.notes, *notes, source=overlay.shift.source
     )
     drawn = _by_name(overlay.layer, features, column)
-    ground.check_near(overlay, shapely.union_all(list(drawn.values())))
+    ground.check_near(overlay, joined(list(drawn.values()), overlay.layer.name))
     pieces, notes = _cut(drawn, ground, overlay)
     pieces, overlap_notes = _without_overlaps(pieces, ground, typed)
     pieces, gaps, gap_notes = _without_gaps(pieces, ground, typed)
@@ -92,7 +104,7 @@ def _by_name(layer: Layer, features: list[Feature], column: str) -> Pieces:
     )
     named = sorted(features, key=lambda feature: feature.values[column])
     drawn = {
-        name: shapely.union_all([feature.geometry for feature in group])
+        name: joined([feature.geometry for feature in group], f"{layer.name} stratum {name!r}")
         for name, group in groupby(named, key=lambda feature: feature.values[column])
     }
     spellings: dict[str, str] = {}
@@ -112,8 +124,9 @@ def _cut(drawn: Pieces, ground: Ground, overlay: Overlay) -> tuple[Pieces, list[
     """Cut each stratum to the boundary; one that lies outside is an error by name."""
     pieces, notes, faults = {}, [], []
     for name, geometry in drawn.items():
-        inside = shapely.intersection(geometry, ground.boundary)
-        lost = float(geometry.area - inside.area)
+        label = f"{overlay.layer.name} stratum {name!r}, cut at the boundary"
+        inside, beyond = parted(geometry, ground.boundary, label)
+        lost = float(beyond.area)
         if inside.area <= 0:
             faults.append(
                 f"{overlay.layer.name}: stratum {name!r} lies outside the boundary; correct it, "
@@ -135,11 +148,8 @@ def _without_overlaps(pieces: Pieces, ground: Ground, name: str) -> tuple[Pieces
     tree = shapely.STRtree(shapes)
     first, second = tree.query(shapes, predicate="intersects")
     pairs = sorted((int(a), int(b)) for a, b in zip(first, second, strict=True) if a < b)
-    over = {
-        (a, b): area
-        for a, b in pairs
-        if (area := float(shapely.intersection(shapes[a], shapes[b]).area)) > 0
-    }
+    shared = {(a, b): common(shapes[a], shapes[b]) for a, b in pairs}
+    over = {pair: area_m2(wide) for pair, both in shared.items() if (wide := wide_parts(both))}
     total = sum(over.values())
     if total > SLIVER_SHARE * ground.boundary.area:
         raise_all(
@@ -148,10 +158,11 @@ def _without_overlaps(pieces: Pieces, ground: Ground, name: str) -> tuple[Pieces
             "stratum only. Draw one border between them."
             for (a, b), area in sorted(over.items(), key=lambda item: -item[1])
         )
-    for a, b in over:
-        shapes[b] = shapely.difference(shapes[b], shapes[a])
+    for a, b in (pair for pair, both in shared.items() if both.area > 0):
+        label = f"{name}: stratum {names[b]!r} without what {names[a]!r} covers"
+        _, shapes[b] = parted(shapes[b], shapes[a], label)
     notes = []
-    if _worth_saying(total):
+    if total >= WORTH_SAYING_M2:
         notes.append(
             f"{name}: slivers where strata overlap, {area_in_words(total)} "
             f"({_percent(total, ground)}), went to the first stratum by name."
@@ -163,11 +174,19 @@ def _without_gaps(
     pieces: Pieces, ground: Ground, name: str
 ) -> tuple[Pieces, tuple[ExcludedArea, ...], list[str]]:
     """Refuse wide gaps, take narrow ones out of the population, give slivers to a neighbour."""
-    gap = shapely.difference(ground.boundary, shapely.union_all(list(pieces.values())))
-    area = float(gap.area)
+    shapes = list(pieces.values())
+    _, gap = parted(ground.boundary, joined(shapes, name), f"{name}: strata and gaps")
+    check_sum(
+        ground.boundary.area,
+        area_m2([gap, *shapes]),
+        allowed=allowed_m2(ground.boundary, *shapes),
+        label=f"{name}: strata and gaps of the site",
+    )
+    wide = wide_parts(gap)
+    area = area_m2(wide)
     share = area / ground.boundary.area
     if share > GAP_LIMIT:
-        largest = max(polygons_of(gap), key=lambda part: part.area)
+        largest = max(wide, key=lambda part: part.area)
         message = (
             f"{name}: strata leave {area_in_words(area)} ({_percent(area, ground)}) of the site "
             f"uncovered, limit 0.5 %; the largest gap has {area_in_words(largest.area)}. Draw the "
@@ -177,11 +196,13 @@ def _without_gaps(
         raise FrameError(message)
     if share > SLIVER_SHARE:
         told = f"{name}: {area_in_words(area)} ({_percent(area, ground)}) lie in no stratum"
-        left = ExcludedArea("gaps between strata", name, 0.0, area, gap)
-        return pieces, (left,), [f"{told} and were taken out of the population."]
+        left = ExcludedArea("gaps between strata", name, 0.0, area, shapely.MultiPolygon(wide))
+        thin = [part for part in polygons_of(gap) if not wide_parts(part)]
+        closed = _given_to_neighbours(pieces, thin)
+        return closed, (left,), [f"{told} and were taken out of the population."]
     closed = _given_to_neighbours(pieces, polygons_of(gap))
     notes = []
-    if _worth_saying(area):
+    if area >= WORTH_SAYING_M2:
         notes.append(
             f"{name}: slivers in no stratum, {area_in_words(area)} ({_percent(area, ground)}), "
             "went to the nearest stratum."
@@ -199,13 +220,8 @@ def _given_to_neighbours(pieces: Pieces, slivers: list[shapely.Polygon]) -> Piec
         distances = shapely.distance(shapes, sliver)
         shares.setdefault(int(distances.argmin()), []).append(sliver)
     for index, added in shares.items():
-        shapes[index] = shapely.union_all([shapes[index], *added], grid_size=GRID_M)
+        shapes[index] = joined([shapes[index], *added], f"stratum {names[index]!r} with slivers")
     return dict(zip(names, shapes, strict=True))
-
-
-def _worth_saying(area: float) -> bool:
-    """Tell whether an area shows at all: half a square metre."""
-    return area >= 0.5
 
 
 def _percent(area: float, ground: Ground) -> str:

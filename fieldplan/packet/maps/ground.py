@@ -8,6 +8,7 @@ import shapely
 from shapely.geometry.base import BaseGeometry
 
 from fieldplan.frame.model import Frame
+from fieldplan.frame.plane import GRID_M
 from fieldplan.packet.drawing import INK
 from fieldplan.packet.maps.palette import stratum_fill
 
@@ -91,7 +92,9 @@ def _excluded(frame: Frame) -> dict[str, BaseGeometry]:
     reasons = dict.fromkeys(entry.reason for entry in frame.excluded)
     return {
         reason: shapely.intersection(
-            shapely.union_all([e.geometry for e in frame.excluded if e.reason == reason]),
+            shapely.union_all(
+                [e.geometry for e in frame.excluded if e.reason == reason], grid_size=GRID_M
+            ),
             frame.boundary,
         )
         for reason in reasons
