@@ -76,6 +76,8 @@ class MapContent:
     arrows : tuple of Arrow
     lines : tuple of str
         Sentences for the notes panel, most important first.
+    before_field : bool
+        Whether field work is still to come, so that what is open is said.
     """
 
     title: str
@@ -83,6 +85,7 @@ class MapContent:
     legend: tuple[Entry, ...]
     arrows: tuple[Arrow, ...] = ()
     lines: tuple[str, ...] = ()
+    before_field: bool = True
 
     @property
     def places(self) -> NDArray[np.float64]:

@@ -2,7 +2,7 @@
 
 from typing import TYPE_CHECKING
 
-from fieldplan.packet.drawing import INK, POINTS_PER_MM, SOFT, shortened
+from fieldplan.packet.drawing import INK, POINTS_PER_MM, SOFT, shortened, text_width_mm, wrapped
 from fieldplan.packet.maps.content import ARROW, Entry, MapContent, Pen
 from fieldplan.packet.maps.grid import GridLines
 from fieldplan.packet.maps.ground import Ground
@@ -59,9 +59,19 @@ def draw_entries(
         _sample(page, entry, x=x, y=y)
         words = entry.brief if brief or columns > 1 else entry.words
         points = 6.6 if columns == 1 else 5.8
-        page.text(
-            x + 7.5, y, shortened(words, points, width_mm=width - 8.5), fontsize=points, va="center"
-        )
+        _words(page, words, x=x + 7.5, y=y, width_mm=width - 8.5, points=points, row_mm=height)
+
+
+def _words(
+    page: "Axes", words: str, *, x: float, y: float, width_mm: float, points: float, row_mm: float
+) -> None:
+    """Write the words of an entry in one line, or in two smaller ones where the row is high."""
+    if row_mm >= 4.2 and text_width_mm(words, points) > width_mm:
+        points = 5.2
+        lines = wrapped(words, points, width_mm=width_mm, most=2)
+    else:
+        lines = [shortened(words, points, width_mm=width_mm)]
+    page.text(x, y, "\n".join(lines), fontsize=points, va="center", linespacing=1.0)
 
 
 def _crossing(grid: GridLines) -> Entry:

@@ -14,6 +14,7 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
 
 _LINE_MM = 2.75
+_NOTE_POINTS = 6.2
 
 
 def draw_title(page: "Axes", plan: Plan, *, title: str, spec: PageSpec) -> None:
@@ -139,12 +140,10 @@ def _turned(angle: float) -> str:
     return f"{abs(angle):.2f}° {'east' if angle > 0 else 'west'}"
 
 
-def draw_notes(
-    page: "Axes", plan: Plan, *, content: MapContent, spec: PageSpec, unplaced: tuple[str, ...]
-) -> None:
-    """Write what is open, what the map does not show, names without a place, and the sources."""
+def note_lines(plan: Plan, content: MapContent, *, unplaced: tuple[str, ...] = ()) -> list[str]:
+    """List what is open, what the map says, and what it does not show; sources come after."""
     lines = []
-    if plan.open_items:
+    if plan.open_items and content.before_field:
         held = [
             item.topic + (" (hold point)" if item.holds_work else "") for item in plan.open_items
         ]
@@ -154,9 +153,44 @@ def draw_notes(
         lines.append("Too close together to name on the map: " + ", ".join(unplaced) + ".")
     if plan.frame.boundary_assumed:
         lines.append("The boundary is ASSUMED: areas and locations hang on it.")
-    if plan.frame.sources:
-        lines.append("Sources: " + "; ".join(s.rstrip(".") for s in plan.frame.sources) + ".")
-    draw_lines(page, lines, box=spec.layout.notes, points=6.2)
+    return lines
+
+
+def sources_line(plan: Plan) -> str:
+    """Say where the outlines come from; empty when nothing is known."""
+    sources = plan.frame.sources
+    return "Sources: " + "; ".join(s.rstrip(".") for s in sources) + "." if sources else ""
+
+
+def notes_height(plan: Plan, content: MapContent, *, width_mm: float) -> float:
+    """Measure the notes of a page of this width, in millimetres, sources in full among them."""
+    lines = [*note_lines(plan, content), sources_line(plan)]
+    return _LINE_MM * _rows(lines, width_mm) + 0.1
+
+
+def _rows(lines: list[str], width_mm: float) -> int:
+    """Count the rows that lines take."""
+    return sum(
+        len(wrapped(line, _NOTE_POINTS, width_mm=width_mm, bold=_is_bold(line)))
+        for line in lines
+        if line
+    )
+
+
+def draw_notes(
+    page: "Axes", plan: Plan, *, content: MapContent, spec: PageSpec, unplaced: tuple[str, ...]
+) -> None:
+    """Write the notes; sources give way, and are named in full or not at all."""
+    box = spec.layout.notes
+    lines, sources = note_lines(plan, content, unplaced=unplaced), sources_line(plan)
+    if sources and _rows([*lines, sources], box.width) > int(box.height / _LINE_MM):
+        sources = "Sources: in full on the plan sheet."
+    draw_lines(page, [*lines, *([sources] if sources else [])], box=box, points=_NOTE_POINTS)
+
+
+def _is_bold(line: str) -> bool:
+    """Tell whether a line calls for attention."""
+    return line.startswith(("OPEN", "ASSUMED"))
 
 
 def draw_lines(page: "Axes", lines: list[str], *, box: Box, points: float) -> None:
@@ -168,7 +202,7 @@ def draw_lines(page: "Axes", lines: list[str], *, box: Box, points: float) -> No
     y = box.top - _LINE_MM / 2
     for index, line in enumerate(lines):
         most = room - min(len(lines) - index - 1, room - 1)  # leave a line for each that follows
-        bold = line.startswith(("OPEN", "ASSUMED"))
+        bold = _is_bold(line)
         pieces = wrapped(line, points, width_mm=box.width, most=max(most, 1), bold=bold)
         for piece in pieces:
             if room <= 0:

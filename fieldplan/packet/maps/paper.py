@@ -82,7 +82,13 @@ class PageLayout:
     footer: Box
 
 
-def page_layout(paper: Literal["A4", "Letter"], *, landscape: bool) -> PageLayout:
+LEAST_NOTES_MM, MOST_NOTES_MM = 17.5, 42.0
+"""Height of the notes below an upright map."""
+
+
+def page_layout(
+    paper: Literal["A4", "Letter"], *, landscape: bool, notes_mm: float = LEAST_NOTES_MM
+) -> PageLayout:
     """Lay out a page: panels below the map when upright, beside it when lying.
 
     Parameters
@@ -91,6 +97,9 @@ def page_layout(paper: Literal["A4", "Letter"], *, landscape: bool) -> PageLayou
         ``A4`` or ``Letter``.
     landscape : bool
         Whether the long side lies.
+    notes_mm : float
+        Height wanted for the notes; beside a lying map they take what is left, and some of the
+        legend's and the inset's.
 
     Returns
     -------
@@ -109,12 +118,14 @@ def page_layout(paper: Literal["A4", "Letter"], *, landscape: bool) -> PageLayou
         ground = Box(
             ground.left, ground.bottom, ground.width, title.bottom - 2 * ticks - bottom - 1
         )
-        legend = Box(panel.left, panel.top - 52, 66, 52)
+        left = panel.height - 52 - 42 - 38 - 2
+        more = min(max(notes_mm - left, 0.0), 24.0)  # the legend and the inset give way alike
+        legend = Box(panel.left, panel.top - 52 + more / 2, 66, 52 - more / 2)
         scale = Box(panel.left, legend.bottom - 42, 66, 40)
-        inset = Box(panel.left, scale.bottom - 38, 66, 36)
+        inset = Box(panel.left, scale.bottom - 38 + more / 2, 66, 36 - more / 2)
         notes = Box(panel.left, panel.bottom, 66, inset.bottom - 2 - panel.bottom)
         return PageLayout(width, height, title, ground, legend, scale, inset, notes, footer)
-    notes = Box(edge, bottom, inner, 17.5)
+    notes = Box(edge, bottom, inner, min(max(notes_mm, LEAST_NOTES_MM), MOST_NOTES_MM))
     row = notes.top + 2
     legend = Box(edge, row, inner - 122, 45)
     scale = Box(legend.right + 3, row, 70, 45)

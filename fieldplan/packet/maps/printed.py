@@ -10,6 +10,7 @@ from fieldplan.packet.drawing import pens
 from fieldplan.packet.maps.content import MapContent, plan_content
 from fieldplan.packet.maps.names import unplaced_names
 from fieldplan.packet.maps.page import draw_page
+from fieldplan.packet.maps.panels import notes_height
 from fieldplan.packet.maps.paper import (
     Extent,
     PageLayout,
@@ -106,7 +107,10 @@ def _whole(plan: Plan, content: MapContent) -> PageSpec:
     seen = _seen(plan, content)
     trials: list[tuple[int, PageLayout]] = []
     for landscape in (False, True):
-        layout = page_layout(plan.campaign.paper.size, landscape=landscape)
+        size = plan.campaign.paper.size
+        layout = page_layout(size, landscape=landscape)
+        needed = notes_height(plan, content, width_mm=layout.notes.width)
+        layout = page_layout(size, landscape=landscape, notes_mm=needed)
         trials.append((fitting_denominator(seen, layout.ground), layout))
     denominator, layout = min(trials, key=lambda trial: trial[0])
     return PageSpec(

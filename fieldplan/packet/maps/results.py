@@ -73,6 +73,7 @@ def results_content(plan: Plan, estimate: Estimate) -> MapContent:
         _legend(estimate, bounds, level=level),
         tuple(arrows),
         _lines(estimate, level),
+        before_field=False,
     )
 
 
@@ -125,11 +126,8 @@ def _legend(
     if returns.lost:
         entries.append(Entry(_LOST, "hollow square: lost, no result", "lost"))
     if any(r.moved_m for r in returns.results):
-        entries.append(
-            Entry(
-                _MOVED, "from planned to actual place, if 3 mm or more", "moved (if 3 mm or more)"
-            )
-        )
+        words = "from planned to actual place, if 3 mm or more"
+        entries.append(Entry(_MOVED, words, "moved, planned to actual"))
     return tuple(entries)
 
 

@@ -1,12 +1,16 @@
 """The results map: what was found where, without a surface."""
 
+from dataclasses import replace
+
 import pytest
 
+from fieldplan.campaign.model import Paper
 from fieldplan.packet.drawing import pens
 from fieldplan.packet.maps.classes import class_bounds, class_of, class_words
+from fieldplan.packet.maps.content import plan_content
 from fieldplan.packet.maps.printed import draw_pages
 from fieldplan.packet.maps.results import results_content, results_map
-from tests.factories import make_estimate, make_plan
+from tests.factories import make_campaign, make_estimate, make_plan
 
 
 @pytest.fixture(scope="module")
@@ -69,6 +73,37 @@ def test_the_map_says_the_answer_and_that_no_surface_is_drawn(content) -> None:
     assert "No surface is drawn between them" in words
     assert "above 150 mg/kg (action level)" in words
     assert not any(axes.images or axes.collections for axes in figure.axes)
+
+
+@pytest.mark.parametrize("paper", ["A4", "Letter"])
+def test_no_sentence_of_the_notes_is_cut_and_nothing_is_open_any_more(paper: str) -> None:
+    """A caution cut in its middle says something else; work that is done needs no permission."""
+    plan = make_plan(campaign=make_campaign(paper=Paper(size=paper)))
+    long = "The interval lies below the action level. " + "It speaks of the mean alone. " * 12
+    estimate = make_estimate(level_sentence=long.strip())
+    with pens():
+        content = results_content(plan, estimate)
+        figures, _ = draw_pages(plan, content)
+    words = " ".join(t.get_text() for axes in figures[0].axes for t in axes.texts)
+    assert long.strip() in content.lines
+    assert all(line in words for line in content.lines)
+    assert plan.open_items
+    assert "OPEN" not in words
+    with pens():
+        before, _ = draw_pages(plan, plan_content(plan))
+    assert "OPEN: " in " ".join(t.get_text() for axes in before[0].axes for t in axes.texts)
+
+
+def test_sources_give_way_whole_where_there_is_no_room() -> None:
+    """Half a source is none; the sheet has them all."""
+    plan = make_plan()
+    sources = tuple(f"layer {number} from a survey of 2019, " * 6 for number in range(12))
+    plan = replace(plan, frame=replace(plan.frame, sources=sources))
+    with pens():
+        figures, _ = draw_pages(plan, results_content(plan, make_estimate()))
+    words = " ".join(t.get_text() for axes in figures[0].axes for t in axes.texts)
+    assert "Sources: in full on the plan sheet." in words
+    assert "layer 0" not in words
 
 
 def test_the_results_map_is_printed_as_pages_and_as_a_picture() -> None:
