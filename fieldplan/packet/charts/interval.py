@@ -3,6 +3,7 @@
 from typing import TYPE_CHECKING
 
 from fieldplan.base.document import Figure
+from fieldplan.base.units import significant
 from fieldplan.estimate.model import Estimate, Interval
 from fieldplan.packet.drawing import BLUE, INK, SOFT, VERMILION, new_figure, pens, svg_text
 from fieldplan.packet.sheets.wording import number
@@ -48,11 +49,11 @@ def _words(row: _Row, unit: str) -> str:
     """Say one bar in words for those who cannot see it."""
     name, mean, span = row
     ends = [
-        f"{word} {number(float(f'{end:.3g}'))} {unit}"
+        f"{word} {significant(end)} {unit}"
         for word, end in (("from", span.low), ("to", span.high))
         if end is not None
     ]
-    return f"{name}: {number(float(f'{mean:.3g}'))} {unit}, {' '.join(ends)}"
+    return f"{name}: {significant(mean)} {unit}, {' '.join(ends)}"
 
 
 def _rows(estimate: Estimate) -> list[_Row]:
@@ -117,12 +118,12 @@ def _bar(axes: "Axes", row: _Row, *, place: float, first: bool) -> None:
         axes.plot([end], [place], marker=marker, color=colour, markersize=8, clip_on=False)
         if value is not None:
             axes.annotate(
-                number(float(f"{value:.3g}")), (value, place), (0, -6), ha="center", va="top",
+                significant(value), (value, place), (0, -6), ha="center", va="top",
                 textcoords="offset points", fontsize=7,
             )  # fmt: skip
     axes.plot([mean], [place], marker="o", color=colour, markersize=6)
     axes.annotate(
-        number(float(f"{mean:.3g}")), (mean, place), (0, 6), ha="center", va="bottom",
+        significant(mean), (mean, place), (0, 6), ha="center", va="bottom",
         textcoords="offset points", weight="bold" if first else "normal", color=INK,
     )  # fmt: skip
 

@@ -167,7 +167,18 @@ def test_the_interval_ends_where_the_estimate_says() -> None:
     assert {(29.15, 95.86), (28.56, 96.10), (29.75, 95.63)} <= spans
     assert [t.get_text() for t in axes.get_yticklabels()][-1] == "non-detects at half"
     assert "action level 150 mg/kg" in words_of(figure)
+    assert {"95.9", "28.6", "96.1", "29.8", "95.6"} <= set(words_of(figure))
     assert "95 % two-sided interval" in axes.get_xlabel()
+
+
+def test_numbers_of_the_interval_keep_their_zeros() -> None:
+    """52 beside 51.9 looks like another measurement; 52.0 does not."""
+    interval = Interval("two-sided", 0.95, 51.9, 52.04)
+    estimate = replace(make_estimate(), bracket=None, interval=interval)
+    with pens():
+        figure = interval_module._drawing(estimate, "Lead", level=None)
+    assert "52.0" in words_of(figure)
+    assert "to 52.0 mg/kg" in interval_figure(estimate).alternative
 
 
 @pytest.mark.parametrize(
