@@ -3,8 +3,10 @@
 import csv
 import hashlib
 import io
-from collections.abc import Mapping
+import re
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
+from itertools import pairwise
 from pathlib import Path
 from typing import Literal
 
@@ -12,6 +14,7 @@ from fieldplan.base.errors import LabError
 
 LARGEST_FILE = 64 * 1024 * 1024
 _SEPARATORS = {",": "comma", ";": "semicolon", "\t": "tab"}
+_WHOLE = re.compile(r"[<+ ]*[0-9]+ *").fullmatch
 
 
 @dataclass(frozen=True)
@@ -132,17 +135,10 @@ def _text_table(name: str, content: bytes) -> TextTable:
         raise LabError(message)
     header_row, header = filled[0]
     width = len(header)
-    rows, problems = [], []
-    for number, cells in filled[1:]:
-        if any(cell.strip() for cell in cells[width:]):
-            problems.append(
-                f"{name} row {number} has {len(cells)} cells, the header {width}; a "
-                f"{_SEPARATORS[separator]} inside a cell splits it. Put that cell in quotes."
-            )
-        padded = [*cells[:width], *[""] * (width - len(cells))]
-        rows.append((number, tuple(padded)))
+    problems = _surplus(name, width, filled[1:], separator)
     if problems:
         raise LabError(*capped(problems))
+    rows = [(n, (*cells[:width], *[""] * (width - len(cells)))) for n, cells in filled[1:]]
     return TextTable(
         file_name=name,
         sha256=hashlib.sha256(content).hexdigest(),
@@ -152,6 +148,29 @@ def _text_table(name: str, content: bytes) -> TextTable:
         separator=separator,
         notes=notes,
     )
+
+
+def _surplus(
+    name: str, width: int, rows: Sequence[tuple[int, Sequence[str]]], separator: str
+) -> list[str]:
+    """Refuse rows with more cells than the header: something in them was split in two.
+
+    A blank at the end is no excuse: ``49,6,`` for a result and a limit left blank is 49.6 in one
+    cell. Only where all rows end in the same blanks, and none has two whole numbers side by side
+    that a decimal comma could have parted, was it the program that wrote them.
+    """
+    blank = not any(cell.strip() for _, cells in rows for cell in cells[width:])
+    if blank and len({len(cells) for _, cells in rows}) == 1:
+        pairs = (pair for _, cells in rows for pair in pairwise(cells))
+        if not (separator == "," and any(_WHOLE(a) and _WHOLE(b) for a, b in pairs)):
+            return []
+    return [
+        f"{name} row {number} has {len(cells)} cells, the header {width}; a "
+        f"{_SEPARATORS[separator]} inside a cell, such as a decimal comma, splits it. Put that "
+        "cell in quotes, or take the surplus cell away."
+        for number, cells in rows
+        if len(cells) > width
+    ]
 
 
 def _decoded(name: str, content: bytes) -> tuple[str, tuple[str, ...]]:

@@ -77,6 +77,25 @@ def test_a_missing_file_and_a_folder_are_named(tmp_path: Path) -> None:
         read_tables(tmp_path)
 
 
+def test_a_decimal_comma_before_a_blank_cell_is_not_two_numbers(lab_file: WRITE) -> None:
+    """49,6 and a limit left blank make one cell too many, and the surplus one is blank."""
+    head = "sample_id,analyte,unit,as_reported,reporting_limit,role\n"
+    mixed = f"{head}A,Lead,mg/kg,49,6,,\nB,Lead,mg/kg,48,5,\n"
+    with pytest.raises(LabError, match=r"row 2 has 7 cells, the header 6; a comma inside a cell"):
+        read_tables(lab_file(mixed))
+    every = f"{head}A,Lead,mg/kg,49,6,,\nB,Lead,mg/kg,<48,5,,\n"
+    with pytest.raises(LabError) as caught:
+        read_tables(lab_file(every))
+    assert len(caught.value.problems) == 2
+
+
+def test_blanks_at_the_end_of_every_row_are_the_programs_own(lab_file: WRITE) -> None:
+    """Some exports end each row in a separator that their header has not."""
+    (table,) = read_tables(lab_file("a,b\nx,1,,\ny,2,,\n"))
+    assert table.rows == ((2, ("x", "1")), (3, ("y", "2")))
+    assert len(read_tables(lab_file("a;b\n1;2;\n3;4;\n"))[0].rows) == 2
+
+
 def test_many_problems_are_capped_and_counted() -> None:
     """A thousand lines of errors hide the first."""
     lines = capped([f"row {number}" for number in range(100)])
