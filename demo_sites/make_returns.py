@@ -151,7 +151,10 @@ def make_returns(folder: Path, story: Story, returned: Path) -> None:
     near = propose_matches(plan, read_lab(lab_file, plan.campaign))
     proposed = list(csv.reader(io.StringIO(matches_csv(near))))
     truth = {written: sample for sample, written in retyped(plan, story).items()}
-    answered = [[*row[:4], "yes" if truth.get(row[1]) == row[2] else "no"] for row in proposed[1:]]
+    by = read.campaign.plan.prepared_by
+    answered = [
+        [*row[:4], "yes" if truth.get(row[1]) == row[2] else "no", by] for row in proposed[1:]
+    ]
     write_csv(returned / "matches.csv", [proposed[0], *answered])
 
 

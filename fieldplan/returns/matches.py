@@ -17,7 +17,7 @@ from fieldplan.returns.laboratory import rows_of
 from fieldplan.returns.matching import ConfirmedMatch, match_rows
 from fieldplan.returns.model import NearMatch
 
-MATCH_COLUMNS = ("row", "as_written", "proposed", "why", "confirm")
+MATCH_COLUMNS = ("row", "as_written", "proposed", "why", "confirm", "confirmed_by")
 
 
 def propose_matches(
@@ -61,12 +61,13 @@ def matches_csv(near: Sequence[NearMatch], *, confirmed: Sequence[ConfirmedMatch
     Returns
     -------
     str
-        CSV with CRLF line ends; the column ``confirm`` waits for yes or no.
+        CSV with CRLF line ends; the column ``confirm`` waits for yes or no, ``confirmed_by`` for
+        the name of whoever says so.
 
     Examples
     --------
     >>> matches_csv([NearMatch(7, "fc 01", "FC-01", "case")]).splitlines()[1]
-    '7,fc 01,FC-01,case,'
+    '7,fc 01,FC-01,case,,'
     """
     text = io.StringIO(newline="")
     writer = csv.writer(text)
@@ -75,10 +76,10 @@ def matches_csv(near: Sequence[NearMatch], *, confirmed: Sequence[ConfirmedMatch
         if answer.confirmed is not None:
             word = "yes" if answer.confirmed else "no"
             cells = [as_text(answer.as_written), as_text(answer.proposed), "answered before", word]
-            writer.writerow([str(answer.row), *cells])
+            writer.writerow([str(answer.row), *cells, as_text(answer.by)])
     for match in near:
         writer.writerow(
-            [str(match.row), as_text(match.as_written), as_text(match.proposed), match.why, ""]
+            [str(match.row), as_text(match.as_written), as_text(match.proposed), match.why, "", ""]
         )
     return text.getvalue()
 
@@ -118,6 +119,7 @@ def read_matches(path: Path) -> tuple[ConfirmedMatch, ...]:
                 as_written=plain_id(row.text("as_written")),
                 proposed=plain_id(row.text("proposed")),
                 confirmed=answers.get(word),
+                by=plain_id(row.text("confirmed_by")),
             )
         )
     if problems:

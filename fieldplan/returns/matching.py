@@ -8,18 +8,22 @@ from fieldplan.lab.model import LabRow
 from fieldplan.plan.model import Plan
 from fieldplan.returns.ids import likeness, nearest, plain_id
 from fieldplan.returns.laboratory import id_as_written
-from fieldplan.returns.model import NearMatch
+from fieldplan.returns.model import ConfirmedId, NearMatch
 from fieldplan.samples.model import Sample
 
 
 @dataclass(frozen=True)
 class ConfirmedMatch:
-    """One line of ``matches.csv``: what the user says of one proposal; None while unanswered."""
+    """One line of ``matches.csv``: what the user says of one proposal; None while unanswered.
+
+    ``by`` is who said so, empty where the file names nobody.
+    """
 
     row: int
     as_written: str
     proposed: str
     confirmed: bool | None
+    by: str = ""
 
 
 @dataclass
@@ -29,6 +33,7 @@ class Matching:
     by_sample: dict[str, list[LabRow]] = field(default_factory=dict)
     extra: list[LabRow] = field(default_factory=list)
     near: list[NearMatch] = field(default_factory=list)
+    confirmed: list[ConfirmedId] = field(default_factory=list)
 
     def add(self, sample_id: str, row: LabRow) -> None:
         """Note that a row is the result of a sample."""
@@ -94,7 +99,23 @@ def match_rows(
         and decided[row.row] not in _Matcher(plan, analyte).possible(row, rows, decided)
     }
     _refuse_never_proposed([row for row in rows if row.row in strange & own.keys()], own)
-    return matcher.match(rows, {n: name for n, name in decided.items() if n not in strange})
+    decided = {number: name for number, name in decided.items() if number not in strange}
+    found = matcher.match(rows, decided)
+    found.confirmed = [
+        ConfirmedId(row.row, id_as_written(row), decided[row.row], _said_by(row, confirmed, others))
+        for row in rows
+        if decided.get(row.row) and plain_id(row.sample_id) != decided[row.row]
+    ]
+    return found
+
+
+def _said_by(row: LabRow, confirmed: Sequence[ConfirmedMatch], others: Mapping[int, LabRow]) -> str:
+    """Name who confirmed a row, or the same jar under another analyte."""
+    for match in confirmed:
+        jar = others.get(match.row, row)
+        if match.confirmed and match.by and (match.row == row.row or _jar(jar) == _jar(row)):
+            return match.by
+    return ""
 
 
 def _refuse_never_proposed(rows: Sequence[LabRow], decided: Mapping[int, str]) -> None:

@@ -41,6 +41,16 @@ class NearMatch:
 
 
 @dataclass(frozen=True)
+class ConfirmedId:
+    """A laboratory row that belongs to a sample because a person said so; ``by`` may be empty."""
+
+    row: int
+    as_written: str
+    sample_id: str
+    by: str
+
+
+@dataclass(frozen=True)
 class LocationResult:
     """The value of one location, after duplicates were handled by the recorded rule.
 
@@ -120,6 +130,8 @@ class Returns:
         Rows of the laboratory's file that are in no mean, each with its value and why.
     with_rejected : Returns or None
         The same with the results counted that the laboratory rejected; None without such.
+    confirmed : tuple of ConfirmedId
+        Rows that were matched by an answer in ``matches.csv``.
     """
 
     analyte: str
@@ -137,6 +149,7 @@ class Returns:
     notes: tuple[str, ...] = ()
     left_out: tuple[LeftOutRow, ...] = ()
     with_rejected: "Returns | None" = None
+    confirmed: tuple[ConfirmedId, ...] = ()
 
 
 ReasonCode = Literal[

@@ -142,6 +142,7 @@ def _meet(
         duplicate_pairs=met.duplicate_pairs(),
         notes=tuple(said),
         left_out=tuple(unused),
+        confirmed=tuple(matching.confirmed),
     )
 
 

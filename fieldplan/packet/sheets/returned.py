@@ -47,6 +47,26 @@ def location_row(result: LocationResult) -> tuple[str, ...]:
     )
 
 
+def confirmed_blocks(plan: Plan, returns: Returns) -> list[Block]:
+    """Set every id that a person, and no rule, matched with a sample of the plan."""
+    if not returns.confirmed:
+        return []
+    places = {sample.sample_id: sample.location_id for sample in plan.samples.samples}
+    rows = tuple(
+        (str(entry.row), entry.as_written, entry.sample_id, places.get(entry.sample_id, "") or "–",
+         entry.by or "nobody named")
+        for entry in returns.confirmed
+    )  # fmt: skip
+    return [
+        Heading("Ids that a person confirmed", level=2),
+        Table(
+            ("Row", "Id as written", "Taken for sample", "Location", "Confirmed by"),
+            rows,
+            caption="Answers in matches.csv; the file is among those hashed below",
+        ),
+    ]
+
+
 def left_out_blocks(plan: Plan, returns: Returns) -> list[Block]:
     """Set every row of the laboratory's file that is in no mean, with its value and why."""
     if not returns.left_out:

@@ -1,5 +1,6 @@
 """Laboratory rows against planned samples: exact ids match, likeness is only proposed."""
 
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -11,7 +12,7 @@ from fieldplan.lab.model import LabRow
 from fieldplan.returns import matches_csv, propose_matches, read_matches, reconcile
 from fieldplan.returns.ids import likeness, plain_id
 from fieldplan.returns.matching import ConfirmedMatch, match_rows
-from fieldplan.returns.model import NearMatch
+from fieldplan.returns.model import ConfirmedId, NearMatch
 from tests.factories import make_plan
 from tests.unit.returns.returned import lab_row, lab_rows, table
 
@@ -145,6 +146,18 @@ def test_an_answer_that_was_never_proposed_is_refused(name: str) -> None:
         assert reconcile(plan, table(alike), confirmed=[answer]).matched == 11
 
 
+def test_ids_that_a_person_confirmed_are_kept_with_the_name_of_that_person() -> None:
+    """A match by judgement is a decision somebody must answer for; an exact one is none."""
+    plan = make_plan()
+    rows = [*lab_rows(plan)[1:], lab_row(40, "qf 731", "41")]
+    answer = ConfirmedMatch(40, "qf 731", "QF-731", True, "M. Rey")
+    kept = reconcile(plan, table(rows), confirmed=[answer]).confirmed
+    assert kept == (ConfirmedId(40, "qf 731", "QF-731", "M. Rey"),)
+    assert reconcile(plan, table(lab_rows(plan))).confirmed == ()
+    nobody = replace(answer, by="")
+    assert reconcile(plan, table(rows), confirmed=[nobody]).confirmed[0].by == ""
+
+
 def test_what_is_proposed_once_another_row_is_answered_may_be_answered() -> None:
     """QF-471 may be 731 or 418; once it is 731, a second QF-471 is proposed as 418 alone."""
     plan = make_plan()
@@ -163,14 +176,16 @@ def test_what_is_proposed_once_another_row_is_answered_may_be_answered() -> None
 def test_the_file_to_answer_comes_back_as_it_was_answered(tmp_path: Path) -> None:
     """Ids that a spreadsheet would change are kept by an apostrophe, which is taken off again."""
     near = [NearMatch(7, "007", "3-5", "case"), NearMatch(9, "=1+1", "QF-731", "case")]
-    earlier = [ConfirmedMatch(4, "mar-1", "MAR-01", confirmed=True)]
+    earlier = [ConfirmedMatch(4, "mar-1", "MAR-01", confirmed=True, by="A. Osei")]
     text = matches_csv(near, confirmed=earlier)
     assert "'=1+1" in text
     path = tmp_path / "matches.csv"
-    path.write_text(text.replace("case,\r\n", "case,No\r\n", 1), encoding="utf-8", newline="")
+    path.write_text(
+        text.replace("case,,\r\n", "case,No,M. Rey\r\n", 1), encoding="utf-8", newline=""
+    )
     assert read_matches(path) == (
-        ConfirmedMatch(4, "mar-1", "MAR-01", True),
-        ConfirmedMatch(7, "007", "3-5", False),
+        ConfirmedMatch(4, "mar-1", "MAR-01", True, "A. Osei"),
+        ConfirmedMatch(7, "007", "3-5", False, "M. Rey"),
         ConfirmedMatch(9, "=1+1", "QF-731", None),
     )
 
