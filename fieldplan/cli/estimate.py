@@ -61,6 +61,12 @@ _A_FILE = click.Path(path_type=Path, dir_okay=False)
 @click.option("--field", "field_file", type=_A_FILE, help="The crew's return, filled in.")
 @click.option("--matches", "matches_file", type=_A_FILE, help="matches.csv with your answers.")
 @click.option(
+    "--report-number",
+    default="",
+    metavar="TEXT",
+    help="The laboratory's own number of its report, for the sheet.",
+)
+@click.option(
     "--column",
     "columns",
     multiple=True,
@@ -139,6 +145,8 @@ def command(
         answers,
         out or _beside(folder),
         sources=sources,
+        report_number=options["report_number"],
+        packet_parent=folder.parent,
         progress=lambda stage: say(f"  {stage} …", quiet=quiet),
     )
     _print(answers, results, options)
@@ -234,8 +242,8 @@ def _ask(
     raise LabError(
         *_counts(plan, received),
         *lines,
-        f"Write yes or no into the column 'confirm' of {path}, then run the command again with "
-        f"--matches {path}. Nothing was estimated.",
+        f"Write yes or no into the column 'confirm' of {path} and your name into 'confirmed_by', "
+        f"then run the command again with --matches {path}. Nothing was estimated.",
     )
 
 

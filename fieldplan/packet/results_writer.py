@@ -1,12 +1,15 @@
 """The results: a numbered folder beside the packet, written whole or not at all."""
 
 import json
-import shutil
 from collections.abc import Callable, Sequence
+from dataclasses import asdict, replace
+from functools import partial
 from pathlib import Path
+from typing import Any
 
 from fieldplan.estimate.model import Answers
 from fieldplan.packet.folder import build_folder, next_number
+from fieldplan.packet.results_origin import ResultsOrigin, earlier_results, keep_files
 from fieldplan.plan.model import Plan
 
 Progress = Callable[[str], None]
@@ -22,6 +25,8 @@ def write_results(
     parent: Path,
     *,
     sources: Sequence[Path] = (),
+    report_number: str = "",
+    packet_parent: Path | None = None,
     progress: Progress = _ignore,
 ) -> Path:
     """Write what came of one laboratory file as a new folder, e.g. ``HL-r01-results-01``.
@@ -37,6 +42,10 @@ def write_results(
         Where the folder is made; earlier results there are kept.
     sources : sequence of Path
         Laboratory and field files, copied into ``inputs``.
+    report_number : str
+        The laboratory's own, as typed.
+    packet_parent : Path, optional
+        Where the packet lies: earlier results there are listed too.
     progress : callable
         Called with the name of each stage.
 
@@ -48,12 +57,17 @@ def write_results(
     Raises
     ------
     RecordError
-        The folder cannot be written.
+        The folder cannot be written, or a source was changed since it was read.
     """
     stem = f"{plan.revision_name}-results-"
     target = parent / f"{stem}{next_number(parent, stem):02d}"
+    earlier = earlier_results([parent, packet_parent or parent], stem)
+    origin = ResultsOrigin((), report_number.strip(), earlier)
     return build_folder(
-        target, lambda folder: _fill(plan, answers, folder, sources=sources, progress=progress)
+        target,
+        lambda folder: _fill(
+            plan, answers, folder, origin=origin, sources=sources, progress=progress
+        ),
     )
 
 
@@ -62,6 +76,7 @@ def _fill(
     answers: Answers,
     folder: Path,
     *,
+    origin: ResultsOrigin,
     sources: Sequence[Path],
     progress: Progress,
 ) -> None:
@@ -69,19 +84,37 @@ def _fill(
 
     kept = folder / "inputs"
     kept.mkdir()
-    _keep(sources, kept)
-    content = json.dumps(answers_json(answers), indent=2, ensure_ascii=False)
+    origin = replace(origin, files=keep_files(sources, kept, answers=answers))
+    content = json.dumps(
+        {**answers_json(answers), **_said_of(origin)}, indent=2, ensure_ascii=False
+    )
     (folder / "results.json").write_text(content + "\n", encoding="utf-8")
     (folder / "results.csv").write_text(
         answers_csv(answers, plan), encoding="utf-8-sig", newline=""
     )
-    _set_pages(plan, answers, folder, mark="", progress=progress)
+    pages = partial(_set_pages, plan, origin=origin, folder=folder, progress=progress)
+    pages(answers, mark="")
     for other in answers.others:
-        _set_pages(plan, Answers(other), folder, mark=f"-{other.analyte}", progress=progress)
+        pages(Answers(other), mark=f"-{other.analyte}")
+
+
+def _said_of(origin: ResultsOrigin) -> dict[str, Any]:
+    """Turn where the results come from into plain JSON values."""
+    return {
+        "report_number": origin.report_number,
+        "files": {name: digest for digest, name in origin.files},
+        "earlier_results": [asdict(entry) for entry in origin.earlier],
+    }
 
 
 def _set_pages(
-    plan: Plan, answers: Answers, folder: Path, *, mark: str, progress: Progress
+    plan: Plan,
+    answers: Answers,
+    *,
+    origin: ResultsOrigin,
+    folder: Path,
+    mark: str,
+    progress: Progress,
 ) -> None:
     """Draw the map and set the sheet of one analyte."""
     from fieldplan.packet.maps.results import results_map
@@ -94,15 +127,6 @@ def _set_pages(
     (folder / f"results_map{mark}.pdf").write_bytes(drawing.pdf)
     (folder / f"results_map{mark}.png").write_bytes(drawing.png)
     progress(f"results sheet{mark.replace('-', ' of ', 1)}")
-    sheet, paper = results_sheet(plan, answers), plan.campaign.paper.size
+    sheet, paper = results_sheet(plan, answers, origin=origin), plan.campaign.paper.size
     (folder / f"results_sheet{mark}.html").write_text(set_html(sheet), encoding="utf-8")
     (folder / f"results_sheet{mark}.pdf").write_bytes(set_pdf(sheet, paper=paper))
-
-
-def _keep(sources: Sequence[Path], folder: Path) -> None:
-    """Copy the files behind the results; a second file of the same name gets a number."""
-    for number, source in enumerate(sources, start=1):
-        target = folder / source.name
-        if target.exists():
-            target = folder / f"{number}-{source.name}"
-        shutil.copyfile(source, target)

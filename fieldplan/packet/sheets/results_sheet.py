@@ -4,24 +4,29 @@ from fieldplan.base.document import (
     Block,
     Bullets,
     Document,
-    Facts,
     Heading,
     PageBreak,
     Paragraph,
     SignOff,
-    Verbatim,
     Working,
 )
 from fieldplan.estimate.model import Answers, Estimate
 from fieldplan.estimate.sentences import analyte_name, interval_in_words
+from fieldplan.packet.results_origin import ResultsOrigin
 from fieldplan.packet.sheets.amounts import listed
 from fieldplan.packet.sheets.plan_sheet import subtitle
+from fieldplan.packet.sheets.results_sources import (
+    earlier_blocks,
+    earlier_sentence,
+    source_blocks,
+)
 from fieldplan.packet.sheets.results_tables import (
     change_blocks,
     degrees_words,
     stratum_table,
 )
 from fieldplan.packet.sheets.returned import (
+    confirmed_blocks,
     field_blocks,
     left_out_blocks,
     location_table,
@@ -30,8 +35,10 @@ from fieldplan.packet.sheets.returned import (
 from fieldplan.packet.sheets.rules import rules_blocks
 from fieldplan.plan.model import Plan
 
+_NO_ORIGIN = ResultsOrigin()
 
-def results_sheet(plan: Plan, answers: Answers) -> Document:
+
+def results_sheet(plan: Plan, answers: Answers, *, origin: ResultsOrigin = _NO_ORIGIN) -> Document:
     """Compose the results sheet of the main analyte.
 
     Parameters
@@ -40,6 +47,8 @@ def results_sheet(plan: Plan, answers: Answers) -> Document:
         Read from the packet.
     answers : Answers
         Other analytes are named with their sentence; their sheets are their own.
+    origin : ResultsOrigin
+        Files handed in, the laboratory's report number, earlier estimates.
 
     Returns
     -------
@@ -54,13 +63,16 @@ def results_sheet(plan: Plan, answers: Answers) -> Document:
         ("By stratum", [stratum_table(plan, estimate)]),
         ("Location by location", location_blocks(plan, estimate)),
         ("What happened in the field", field_blocks(plan, estimate.returns)),
-        ("Changes made after results", change_blocks(estimate)),
+        (
+            "Changes made after results",
+            [*change_blocks(estimate), *earlier_blocks(estimate, origin)],
+        ),
         ("The working", working_blocks(estimate)),
         ("Rules fixed before results", rules_blocks(plan.campaign.rules)),
         ("For the report", report_blocks(plan, estimate)),
-        ("What these results were made from", source_blocks(plan, estimate)),
+        ("What these results were made from", source_blocks(plan, estimate, origin=origin)),
     )
-    blocks: list[Block] = [*answer_blocks(plan, estimate), PageBreak()]
+    blocks: list[Block] = [*answer_blocks(plan, estimate, origin=origin), PageBreak()]
     for number, (title, content) in enumerate(sections, start=1):
         blocks += [Heading(f"{number}. {title}"), *content]
     blocks += [Heading(f"{len(sections) + 1}. Sign-off"), sign_off(plan)]
@@ -90,13 +102,15 @@ def other_blocks(answers: Answers) -> list[Block]:
     return blocks
 
 
-def answer_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
+def answer_blocks(plan: Plan, estimate: Estimate, *, origin: ResultsOrigin) -> list[Block]:
     """Compose page one: the answer in sentences, each once, and its figure."""
     from fieldplan.packet.charts import interval_figure
 
     analyte = plan.campaign.analyte_called(estimate.analyte)
     figure = interval_figure(estimate, name=analyte.label, action_level=analyte.action_level)
-    return [*answer_words(estimate), figure, *after_figure(estimate)]
+    earlier = earlier_sentence(origin)
+    before = [Paragraph(earlier)] if earlier else []
+    return [*answer_words(estimate), *before, figure, *after_figure(estimate)]
 
 
 def answer_words(estimate: Estimate) -> list[Block]:
@@ -135,6 +149,7 @@ def location_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
             "them at half their limit; page one says what 0 and the limit would give.",
             tone="note",
         ),
+        *confirmed_blocks(plan, estimate.returns),
         *left_out_blocks(plan, estimate.returns),
     ]
 
@@ -153,29 +168,6 @@ def report_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
     from fieldplan.estimate.text import results_paragraph
 
     return [Paragraph("Ready to paste:"), Paragraph(results_paragraph(plan, estimate))]
-
-
-def source_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
-    """Set the files and their fingerprints."""
-    returns = estimate.returns
-    files = [(returns.lab_sha256, returns.lab_file)]
-    if returns.field_file:
-        files.append((returns.field_sha256, returns.field_file))
-    return [
-        Paragraph("SHA-256 of the laboratory's and the crew's files:"),
-        Verbatim("\n".join(f"{digest}  {name}" for digest, name in files)),
-        Facts(
-            (
-                ("Plan", f"{plan.revision_name}, {plan.status}"),
-                ("Planned with", f"fieldplan {plan.fieldplan_version}".strip()),
-            )
-        ),
-        Paragraph(
-            "This sheet checks that what was ordered came back and computes by the recorded "
-            "rules. Whether the data are fit for their use is for a qualified reviewer to say.",
-            tone="note",
-        ),
-    ]
 
 
 def sign_off(plan: Plan) -> SignOff:
