@@ -100,8 +100,8 @@ def _plan(folder: Path, *, quiet: bool) -> Path:
     _stage(3, "writing the packet: point files, maps, sheets", quiet=quiet)
     packet = write_packet(plan, folder, read_inputs(input_files(read)))
     _stage(4, f"issuing {packet.name}", quiet=quiet)
-    issued, _ = issue_packet(packet, by=table.decides or "the demo", on=today)
-    return issued
+    issue_packet(packet, by=table.decides or "the demo", on=today)
+    return packet
 
 
 def _results(folder: Path, packet: Path, *, quiet: bool) -> Path:

@@ -53,7 +53,7 @@ def command(packet: Path, by: str, on: datetime | None, as_json: bool, quiet: bo
             }
         )
         return
-    click.echo(f"{final}: {plan.status}.")
+    click.echo(f"{final.name}: {plan.status}.")
     click.echo(
         wrapped(
             f"Fingerprint of the packet: {fingerprint}. Send it to somebody outside: it shows "
