@@ -51,12 +51,16 @@ class Files:
 
 @dataclass(frozen=True)
 class Table:
-    """A table of text cells; ``numeric`` names the columns set flush right."""
+    """A table of text cells; ``numeric`` names the columns set flush right.
+
+    ``by_hand`` names the columns that people write into, each with its share of the room.
+    """
 
     columns: tuple[str, ...]
     rows: tuple[tuple[str, ...], ...]
     caption: str = ""
     numeric: tuple[str, ...] = ()
+    by_hand: tuple[tuple[str, float], ...] = ()
 
     def __post_init__(self) -> None:
         for row in self.rows:
@@ -143,6 +147,8 @@ class Document:
         ``DRAFT`` or ``ISSUED by NAME on DATE``; printed on every page.
     blocks : sequence of Block
         The content.
+    lying : bool
+        Whether printed pages lie on their long side.
     """
 
     title: str
@@ -151,3 +157,4 @@ class Document:
     revision_name: str
     status: str
     blocks: Sequence[Block]
+    lying: bool = False

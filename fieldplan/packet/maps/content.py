@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 from fieldplan.design.model import Location, LocationClass
 from fieldplan.packet.drawing import INK, LINE
 from fieldplan.packet.maps.palette import MARKS
+from fieldplan.packet.sheets.take import analysed_words, take_words
 from fieldplan.plan.model import Plan
 
 ARROW = "->"
@@ -148,7 +149,8 @@ def plan_content(plan: Plan) -> MapContent:
     ]
     if plan.frame.kind == "list":
         legend.append(Entry(UNIT_PEN, "unit of the list, not drawn", "unit, not drawn"))
-    return MapContent(plan.campaign.plan.title, tuple(marks), tuple(legend))
+    take = f"Take at each location: {take_words(plan)}; for {analysed_words(plan)}."
+    return MapContent(plan.campaign.plan.title, tuple(marks), tuple(legend), lines=(take,))
 
 
 def unit_marks(plan: Plan) -> tuple[Mark, ...]:

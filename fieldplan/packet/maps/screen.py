@@ -36,6 +36,7 @@ from fieldplan.packet.maps.screen_page import (
     pattern_definitions,
     title_block,
 )
+from fieldplan.packet.sheets.take import analysed_words
 from fieldplan.plan.model import Plan
 
 WEB_PROJECTION_ENDS = 84.0
@@ -186,7 +187,10 @@ def _told(plan: Plan, row: PointRow) -> dict[str, Any]:
         ("Longitude", f"{place.longitude:.7f}°"),
         (f"Grid {row.utm_zone}", f"{row.easting:.1f} E {row.northing:.1f} N"),
         ("Samples", str(cells["sample_ids"])),
+        ("Take", plan.campaign.frame[0].unit_is),
         ("Depth", _depth(row)),
+        ("Grain size", plan.campaign.frame[0].size_fraction),
+        ("Analysed for", analysed_words(plan)),
         ("Reason", str(cells["reason"])),
         ("If blocked", _offset_rule(plan) if place.location_class == "random" else ""),
     ]

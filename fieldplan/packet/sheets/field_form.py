@@ -6,6 +6,7 @@ from fieldplan.packet.sheets.amounts import days
 from fieldplan.packet.sheets.field_section import deviation_rule, reason_table
 from fieldplan.packet.sheets.plan_sheet import subtitle
 from fieldplan.packet.sheets.plan_words import several_strata
+from fieldplan.packet.sheets.take import analysed_words, take_words
 from fieldplan.plan.model import Plan
 from fieldplan.samples.model import Sample
 
@@ -16,10 +17,26 @@ COLUMNS = (
     "Taken?",
     "Date, time",
     "Actual latitude, longitude",
-    "Reason, replaced by",
+    "Reason code",
+    "Replaced by",
+    "Note",
     "Initials",
 )
-BLANKS = ("☐", "__________", "____________ ____________", "______________", "_____")
+BY_HAND = (
+    ("Taken?", 0.55),
+    ("Date, time", 1.1),
+    ("Actual latitude, longitude", 1.6),
+    ("Reason code", 0.8),
+    ("Replaced by", 0.9),
+    ("Note", 2.2),
+    ("Initials", 0.6),
+)
+"""What the crew writes, and its share of the room."""
+
+JARS = (
+    "one line below is one sample; where a location has two lines, take two. Containers and "
+    "preservation as the laboratory says"
+)
 
 TITLES: dict[LocationClass, str] = {
     "random": "Locations to visit",
@@ -62,6 +79,7 @@ def field_form(plan: Plan) -> Document:
         revision_name=plan.revision_name,
         status=plan.status,
         blocks=tuple(blocks),
+        lying=True,
     )
 
 
@@ -74,6 +92,9 @@ def head_rows(plan: Plan) -> tuple[tuple[str, str], ...]:
     """Set what the crew needs at hand, and blanks for who was there."""
     field, table = plan.campaign.field, plan.campaign.plan
     return (
+        ("Take", take_words(plan)),
+        ("To be analysed for", analysed_words(plan)),
+        ("Jars", JARS),
         ("Days", days(table.fieldwork_from, table.fieldwork_to)),
         ("Method", field.method or "ask the office"),
         ("Contact", field.contact or "ask the office"),
@@ -88,7 +109,7 @@ def sample_table(plan: Plan, places: tuple[Location, ...]) -> Table:
     for place in places:
         samples = sorted(plan.samples.at(place.location_id), key=lambda s: s.sample_id)
         rows += [sample_row(plan, place, sample) for sample in samples]
-    return Table(COLUMNS, tuple(rows))
+    return Table(COLUMNS, tuple(rows), by_hand=BY_HAND)
 
 
 def sample_row(plan: Plan, place: Location, sample: Sample) -> tuple[str, ...]:
@@ -99,7 +120,7 @@ def sample_row(plan: Plan, place: Location, sample: Sample) -> tuple[str, ...]:
     if place.location_class == "alternate" and several_strata(plan):
         name += f", {place.stratum}"
     position = f"{place.latitude:.6f}, {place.longitude:.6f}"
-    return (name, sample.sample_id, position, *BLANKS)
+    return (name, sample.sample_id, position, "☐", *[""] * (len(BY_HAND) - 1))
 
 
 def blank_blocks(plan: Plan) -> list[Block]:
@@ -107,8 +128,7 @@ def blank_blocks(plan: Plan) -> list[Block]:
     blanks = [sample for sample in plan.samples.samples if not sample.location_id]
     if not blanks:
         return []
-    columns = ("Sample", "Kind", "Taken?", "Date, time", "Initials")
-    rows = tuple(
-        (sample.sample_id, sample.role, "☐", "____________________", "_____") for sample in blanks
-    )
-    return [Heading("Blanks"), Table(columns, rows)]
+    columns = ("Sample", "Kind", "Taken?", "Date, time", "Note", "Initials")
+    rows = tuple((sample.sample_id, sample.role, "☐", "", "", "") for sample in blanks)
+    by_hand = tuple(entry for entry in BY_HAND if entry[0] in columns)
+    return [Heading("Blanks"), Table(columns, rows, by_hand=by_hand)]

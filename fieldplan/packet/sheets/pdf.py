@@ -67,10 +67,11 @@ def sheet_facts(document: Document, paper: str) -> dict[str, Any]:
     serial = iter(range(1, len(document.blocks) + 1))
     return {
         "title": printable(document.title),
-        "head": _cut(printable(document.title), 48),
+        "head": _cut(printable(document.title), 60),
         "subtitle": printable(document.subtitle),
         "revision": printable(document.revision_name),
         "status": printable(document.status),
+        "lying": document.lying,
         "paper": {"A4": "a4", "Letter": "us-letter"}[paper],
         "blocks": _led([_block(block, serial) for block in document.blocks]),
     }

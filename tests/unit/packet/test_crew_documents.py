@@ -7,7 +7,7 @@ from fieldplan.base.document import Caution, Table
 from fieldplan.packet.sheets.field_form import field_form
 from fieldplan.packet.sheets.start_here import start_here
 from fieldplan.samples.model import Sample, Samples
-from tests.factories import make_plan, make_samples
+from tests.factories import make_campaign, make_plan, make_samples
 from tests.unit.packet.sheet_text import words_of
 
 
@@ -43,6 +43,33 @@ def test_swapping_which_jar_is_the_duplicate_changes_nothing_on_the_form():
     )
     assert {s.qc_of for s in swapped.samples} == {"", "QF-655"}
     assert field_form(make_plan(samples=swapped)) == field_form(make_plan())
+
+
+def test_the_form_says_what_to_take_and_has_room_for_a_note():
+    """A crew that has only this sheet must know depth, unit, grain size and analyte."""
+    plan = make_plan()
+    frame = plan.campaign.frame[0].model_copy(update={"unit_is": "one auger core"})
+    campaign = plan.campaign.model_copy(update={"frame": (frame,)})
+    text = words_of(field_form(replace(plan, campaign=campaign)))
+    assert "one auger core, 0 m to 0.15 m below ground surface, grain size < 2 mm" in text
+    assert "Lead in soil (dry weight)" in text
+    assert "one line below is one sample; where a location has two lines, take two" in text
+    tables = [b for b in field_form(plan).blocks if isinstance(b, Table) and b.by_hand]
+    assert len(tables) == 3
+    for table in tables:
+        assert {"Note", "Reason code", "Replaced by"} <= set(table.columns)
+        for name, share in table.by_hand:
+            assert share > 0
+            cells = {row[table.columns.index(name)] for row in table.rows}
+            assert cells == ({"☐"} if name == "Taken?" else {""})
+
+
+def test_the_form_says_that_no_depth_was_typed():
+    """Silence would leave the crew to choose one."""
+    campaign = make_campaign()
+    frame = campaign.frame[0].model_copy(update={"depth_top_m": None, "depth_bottom_m": None})
+    plan = make_plan(campaign=campaign.model_copy(update={"frame": (frame,)}))
+    assert "depth not typed" in words_of(field_form(plan))
 
 
 def test_blanks_have_lines_with_their_kind():

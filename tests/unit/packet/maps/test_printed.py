@@ -36,6 +36,14 @@ def names(figure) -> list:
     return [text for axes in figure.axes for text in axes.texts if text.get_gid() == "name"]
 
 
+def test_the_map_says_what_to_take_at_each_location() -> None:
+    """Who carries the map alone must know the depth."""
+    (figure, *_), _ = drawn(make_plan())
+    said = " ".join(texts(figure))
+    assert "Take at each location: as the method says, 0 m to 0.15 m below ground surface" in said
+    assert "for Lead in soil (dry weight)." in said
+
+
 def ground(figure):
     """The axes that the map is drawn on."""
     return next(axes for axes in figure.axes if axes.get_label() == "ground")

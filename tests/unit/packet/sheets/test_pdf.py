@@ -36,6 +36,15 @@ def test_a_table_too_wide_for_an_upright_page_lies() -> None:
     assert all(width > height for width, height in places)
 
 
+def test_a_form_lies_and_its_empty_columns_take_the_room() -> None:
+    """People write larger than printers; every page of the form lies, the first too."""
+    table = Table(("Sample", "Note"), (("QF-1", ""),) * 30, by_hand=(("Note", 1.0),))
+    form = Document("T", "", "QF", "QF-r01", "DRAFT", [table], lying=True)
+    boxes = page_boxes(set_pdf(form, paper="A4"))
+    assert len(boxes) == 2
+    assert all(width > height for width, height in boxes)
+
+
 def test_a_table_of_few_columns_stands_upright() -> None:
     """Turning pages for nothing annoys."""
     table = Table(("a", "b"), (("1", "2"),) * 5)
