@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 from fieldplan.base.errors import LabError
 from fieldplan.base.units import significant
-from fieldplan.lab.duplicates import merge_results
+from fieldplan.lab.duplicates import bounds, merge_results
 from fieldplan.lab.model import LabRow, LabTable, StratumSpread
 from fieldplan.lab.roles import IN_THE_MEAN
 from fieldplan.lab.words import counted, listed
@@ -52,21 +52,26 @@ def pilot_locations(
     Raises
     ------
     LabError
-        One sample has two different results, a duplicate names no location of the file, or one
-        location stands in two strata.
+        One sample or one location has two different results and no row is called a duplicate, a
+        duplicate names no location of the file, or one location stands in two strata.
     """
     rows = [row for row in table.rows if row.analyte == analyte and row.role in IN_THE_MEAN]
     left_out = sum(row.analyte == analyte for row in table.rows) - len(rows)
     rows, problems = _without_copies(table.file_name, rows)
     groups, lost = _by_location(table.file_name, rows)
     problems += lost
+    groups, second, repeats = _one_field_sample(table.file_name, groups)
+    problems += second
     for name, group in groups.items():
         if len({row.stratum.casefold() for row in group if row.stratum}) > 1:
             problems.append(f"{table.file_name}: location '{name}' stands in two strata; keep one.")
     if problems:
         raise LabError(*problems)
     notes = []
-    extra = len(rows) - len(groups)
+    if repeats:
+        numbers = listed([str(row.row) for row in repeats])
+        notes.append(f"{table.file_name}: rows that repeat a result were read once: row {numbers}.")
+    extra = sum(len(group) - 1 for group in groups.values())
     if extra:
         done = "averaged with their location" if duplicates == "average" else "left out"
         notes.append(f"{table.file_name}: {counted(extra, 'duplicate')} {done}; n does not grow.")
@@ -89,7 +94,7 @@ def _without_copies(name: str, rows: Sequence[LabRow]) -> tuple[list[LabRow], li
             unnamed.append(row)
         elif key not in kept:
             kept[key] = row
-        elif (kept[key].result, kept[key].reporting_limit) != (row.result, row.reporting_limit):
+        elif bounds(kept[key]) != bounds(row):
             problems.append(
                 f"{name} row {row.row}: sample '{row.sample_id}' has a second result "
                 f"'{row.as_reported.strip()}' beside '{kept[key].as_reported.strip()}' in row "
@@ -117,6 +122,35 @@ def _by_location(name: str, rows: Sequence[LabRow]) -> tuple[dict[str, list[LabR
             place = places.get(parent) or row.location_id or row.sample_id
         groups.setdefault(places.get(place.casefold(), place), []).append(row)
     return groups, problems
+
+
+def _one_field_sample(
+    name: str, groups: Mapping[str, Sequence[LabRow]]
+) -> tuple[dict[str, list[LabRow]], list[str], list[LabRow]]:
+    """Let one row a location be its field sample; the others must be called its duplicates.
+
+    Two unlike results under one id are as likely two places, a revised result or a slip of the
+    pen as two jars of one place; averaging them in silence would shrink the spread.
+    """
+    kept: dict[str, list[LabRow]] = {}
+    problems, repeats = [], []
+    for place, rows in groups.items():
+        first = rows[0]
+        for row in rows:
+            if row is first or row.role == "field duplicate":
+                kept.setdefault(place, []).append(row)
+            elif bounds(first) == bounds(row):
+                repeats.append(row)
+            else:
+                spelled = [r.location_id or r.sample_id for r in (row, first)]
+                other = f" of '{spelled[1]}'" if spelled[0] != spelled[1] else ""
+                problems.append(
+                    f"{name} row {row.row}: location '{spelled[0]}' has a second result "
+                    f"'{row.as_reported.strip()}' beside '{first.as_reported.strip()}'{other} in "
+                    f"row {first.row}, and neither is called a duplicate. Write field duplicate "
+                    "into the role of the one that is, or keep the row that counts."
+                )
+    return kept, problems, repeats
 
 
 def _location(name: str, place: str, rows: Sequence[LabRow], duplicates: str) -> PilotLocation:

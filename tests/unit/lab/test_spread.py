@@ -70,6 +70,43 @@ def test_duplicates_are_averaged_and_never_add_n(spread_of: Say) -> None:
     assert "1 control sample left out" in " ".join(spread.notes)
 
 
+def test_two_unlike_results_of_one_location_are_a_question(spread_of: Say) -> None:
+    """Only a row that says so is a duplicate; an average of 5 and 50 would hide the spread."""
+    pilot = f"{HEAD},stratum\n" + "".join(
+        f"{name},lead,{cell},mg/kg,meadow\n"
+        for name, cell in (("A", "5"), ("A", "50"), ("B", "9"), ("b", "29"), ("C", "7"))
+    )
+    with pytest.raises(LabError) as caught:
+        spread_of(pilot + rows("yard", "1", "3"))
+    assert caught.value.problems == (
+        "pilot.csv row 3: location 'A' has a second result '50' beside '5' in row 2, and neither "
+        "is called a duplicate. Write field duplicate into the role of the one that is, or keep "
+        "the row that counts.",
+        "pilot.csv row 5: location 'b' has a second result '29' beside '9' of 'B' in row 4, and "
+        "neither is called a duplicate. Write field duplicate into the role of the one that is, "
+        "or keep the row that counts.",
+    )
+
+
+def test_two_jars_of_one_location_are_a_question_until_one_is_the_duplicate(spread_of: Say) -> None:
+    """Two depths of one place have ids of their own, and their mean is that of neither."""
+    head = f"{HEAD},stratum,sample_id,role\n"
+    lines = "M1,lead,5,mg/kg,meadow,S1,\nM1,lead,50,mg/kg,meadow,S2,{}\nM2,lead,7,mg/kg,meadow,,\n"
+    yard = "Y1,lead,5,mg/kg,yard,S5,\nY2,lead,8,mg/kg,yard,S6,\n"
+    with pytest.raises(LabError, match="location 'M1' has a second result '50'"):
+        spread_of(head + lines.format("") + yard)
+    assert spread_of(head + lines.format("dup") + yard).strata[0].values == (27.5, 7.0)
+
+
+def test_a_row_that_stands_there_twice_is_read_once(spread_of: Say) -> None:
+    """A repeat says nothing new, whatever the spelling of its id; it is no duplicate either."""
+    pilot = f"{HEAD},stratum\nX,lead,<5,mg/kg,meadow\nx,lead,<5.0,mg/kg,meadow\n"
+    spread = spread_of(pilot + rows("meadow", "8", "9") + rows("yard", "1", "3"))
+    assert spread.strata[0].results == 3
+    assert "rows that repeat a result were read once: row 3." in " ".join(spread.notes)
+    assert "duplicate" not in " ".join(spread.notes)
+
+
 def test_the_first_result_counts_where_the_rule_says_so(spread_of: Say) -> None:
     """Under the rule 'first' the duplicate is for quality control only, wherever it stands."""
     campaign = make_campaign()
