@@ -2,10 +2,33 @@
 
 import os
 import secrets
+import stat
 from contextlib import suppress
 from pathlib import Path
 
 from fieldplan.base.errors import FieldplanError
+
+NOT_ORDINARY = "is no ordinary file (a pipe or a device)"
+"""What messages say of a path that leads to something else than a file on a disk."""
+
+
+def is_ordinary(path: Path) -> bool:
+    """Tell whether a path leads to a file or folder on a disk.
+
+    A pipe may keep its reader waiting for ever, and a device may never end.
+
+    Raises
+    ------
+    OSError
+        There is nothing, or it may not be looked at.
+
+    Examples
+    --------
+    >>> is_ordinary(Path("."))
+    True
+    """
+    mode = path.stat().st_mode
+    return stat.S_ISREG(mode) or stat.S_ISDIR(mode)
 
 
 def write_atomically(path: Path, content: bytes | str) -> Path:

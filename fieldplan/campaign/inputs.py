@@ -8,6 +8,7 @@ from typing import Any
 from pydantic import BaseModel
 
 from fieldplan.base.errors import CampaignError
+from fieldplan.base.files import NOT_ORDINARY
 from fieldplan.campaign.lines import KeyPath
 from fieldplan.campaign.model import Campaign, ReadCampaign
 from fieldplan.campaign.problems import Problem, meaning, render
@@ -17,7 +18,7 @@ from fieldplan.campaign.screen import is_fill_in, table_name
 from fieldplan.campaign.shape import shapes
 from fieldplan.campaign.text import near_names
 
-_FOLDER = "this is a folder"
+_START = "Paths start from the campaign file."
 _SHAPEFILE_PARTS = (".shx", ".dbf", ".prj", ".cpg")
 
 
@@ -110,12 +111,12 @@ def _place(line: str) -> str:
 def _missing(path: KeyPath, written: str, folder: Path) -> Problem | None:
     """Word why a file cannot be used; None when it can."""
     place = folder / file_part(folder, written)
-    fault = _fault(place)
-    if fault is None:
+    found = file_fault(place)
+    if found is None:
         return None
+    fault, remedy = found
     what = meaning(table_name(path[:-1]), str(path[-1]))
-    remedy = " Name a file in it." if fault == _FOLDER else _near(place)
-    return Problem(path, f'{what}; {fault} (got "{written}").{remedy}')
+    return Problem(path, f'{what}; {fault} (got "{written}"). {remedy}')
 
 
 def fingerprint(path: Path) -> str:
@@ -148,24 +149,41 @@ def _named(
                 yield from _named(member, shape.model, (*above, key, i))
 
 
-def _fault(place: Path) -> str | None:
-    """Say why a file cannot be used, or nothing."""
+def file_fault(place: Path, *, otherwise: str = _START) -> tuple[str, str] | None:
+    """Say why a file cannot be used, and the remedy; None when it can.
+
+    Parameters
+    ----------
+    place : Path
+        As a program would open it.
+    otherwise : str
+        The remedy where no name in its folder comes near.
+
+    Examples
+    --------
+    >>> file_fault(Path("."))
+    ('this is a folder', 'Name a file in it.')
+    """
     try:
         if place.is_file():
             return None
-        return _FOLDER if place.is_dir() else "there is no such file"
+        if place.is_dir():
+            return "this is a folder", "Name a file in it."
+        if place.exists():
+            return f"this {NOT_ORDINARY}", "Save it as a file and name that."
+        return "there is no such file", _near(place, otherwise)
     except (OSError, ValueError):
-        return "the name cannot be looked up"
+        return "the name cannot be looked up", otherwise
 
 
-def _near(place: Path) -> str:
+def _near(place: Path, otherwise: str) -> str:
     """Suggest names in the same folder."""
     near = near_names(place)
     if near:
-        return f" Did you mean {' or '.join(near)}?"
+        return f"Did you mean {' or '.join(near)}?"
     if not place.parent.is_dir():
-        return " Its folder does not exist either; paths start from the campaign file."
-    return " Paths start from the campaign file."
+        return f"Its folder does not exist either; {otherwise[0].lower()}{otherwise[1:]}"
+    return otherwise
 
 
 def _side_files(written: str, place: Path) -> dict[str, Path]:

@@ -5,6 +5,7 @@ from difflib import get_close_matches
 from pathlib import Path
 
 from fieldplan.base.errors import CampaignError
+from fieldplan.base.files import NOT_ORDINARY, is_ordinary
 
 LARGEST_FILE = 500_000
 """Bytes; a long campaign of a hundred tables has about 20 000."""
@@ -41,7 +42,7 @@ def read_text(path: Path) -> str:
     Raises
     ------
     CampaignError
-        The file is missing, a folder, empty, too large, unreadable or not text.
+        The file is missing, a folder, a pipe, empty, too large, unreadable or not text.
     """
     data = _read_bytes(path)
     encoding = "utf-8"
@@ -74,6 +75,9 @@ def _read_bytes(path: Path) -> bytes:
     try:
         if path.is_dir():
             raise CampaignError(_folder_message(path))
+        if not is_ordinary(path):
+            message = f"{path}: this {NOT_ORDINARY}. Save it as a file and name that."
+            raise CampaignError(message)
         with path.open("rb") as stream:
             data = stream.read(LARGEST_FILE + 1)
     except FileNotFoundError as fault:

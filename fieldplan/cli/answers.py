@@ -6,10 +6,9 @@ from pathlib import Path
 from typing import Literal
 
 from fieldplan.base.errors import CampaignError
-from fieldplan.campaign.inputs import file_part
+from fieldplan.campaign.inputs import file_fault, file_part
 from fieldplan.campaign.new import Answers, TargetKind
 from fieldplan.campaign.outline import circle_geojson, corners_geojson, read_corners
-from fieldplan.campaign.text import near_names
 
 OUTLINE_NAME = "boundary.geojson"
 
@@ -145,19 +144,14 @@ def read_file(text: str, folder: Path) -> str:
     Raises
     ------
     CampaignError
-        There is no such file; names that come near are given.
+        There is no such file (names that come near are given), or it is a folder or a pipe.
     """
     typed = text.strip().strip("\"'")
     name = file_part(Path(), typed)
     place = Path(name)
-    try:
-        found = place.is_file()
-    except (OSError, ValueError):
-        found = False
-    if not found:
-        near = " or ".join(near_names(place))
-        remedy = f"Did you mean {near}?" if near else "Check the name and the folder."
-        message = f"{typed}: there is no such file. {remedy}"
+    fault = file_fault(place, otherwise="Check the name and the folder.")
+    if fault is not None:
+        message = f"{typed}: {fault[0]}. {fault[1]}"
         raise CampaignError(message)
     return _from_folder(place, folder) + typed[len(name) :]
 

@@ -3,6 +3,7 @@
 from pathlib import Path
 
 from fieldplan.base.errors import FrameError
+from fieldplan.base.files import NOT_ORDINARY, is_ordinary
 from fieldplan.campaign.text import near_names
 from fieldplan.frame.geojson import read_geojson
 from fieldplan.frame.layer import Layer, check_layer
@@ -106,3 +107,6 @@ def read_bytes(path: Path, typed: str) -> bytes:
         message = f"{typed} is empty; export it again."
         raise FrameError(message)
     return content
+        if not is_ordinary(path):
+            message = f"{typed} {NOT_ORDINARY}; save it as a file and name that."
+            raise FrameError(message)

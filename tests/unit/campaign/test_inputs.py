@@ -1,6 +1,7 @@
 """Every file that a campaign names is found, fingerprinted, or missed by name."""
 
 import hashlib
+import os
 
 import pytest
 
@@ -57,6 +58,18 @@ def test_missing_files_are_told_at_once_with_names_that_come_near(tmp_path):
         'there is no such file (got "pond.geojson"). Did you mean pound.geojson?',
         '32: targeted.file: file with the places; this is a folder (got "tank.csv"). '
         "Name a file in it.",
+    ]
+
+
+def test_device_is_said_to_be_no_ordinary_file(tmp_path):
+    """It is there, so 'no such file' would send its author looking for a typing slip."""
+    path = tmp_path / "campaign.toml"
+    path.write_text(bent(("boundary.geojson", os.devnull), ("pilot.csv", "campaign.toml")))
+    with pytest.raises(CampaignError) as raised:
+        input_files(read_campaign(path))
+    assert [line.split("campaign.toml:")[1] for line in raised.value.problems] == [
+        "13: frame.boundary: file with the outline of the site; this is no ordinary file (a pipe "
+        f'or a device) (got "{os.devnull}"). Save it as a file and name that.'
     ]
 
 

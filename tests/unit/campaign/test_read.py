@@ -1,5 +1,6 @@
 """Every bad campaign file gets one clear line for each thing that is wrong with it."""
 
+import os
 from datetime import date
 from pathlib import Path
 
@@ -204,6 +205,16 @@ def test_folder_in_place_of_the_file_lists_what_it_holds(tmp_path):
         match=r"this is a folder, not a campaign file\. It holds campaign\.toml; name the file",
     ):
         read_campaign(tmp_path)
+
+
+def test_device_in_place_of_the_file_is_refused_unread():
+    """A pipe would keep the reader waiting for ever, and a device may never end."""
+    with pytest.raises(CampaignError) as caught:
+        read_campaign(Path(os.devnull))
+    assert str(caught.value) == (
+        f"{os.devnull}: this is no ordinary file (a pipe or a device). Save it as a file and "
+        "name that."
+    )
 
 
 VALUES = [

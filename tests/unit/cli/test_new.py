@@ -3,6 +3,7 @@
 import io
 import json
 import math
+import os
 import statistics
 import tomllib
 from pathlib import Path
@@ -206,6 +207,7 @@ def test_options_that_do_not_fit_are_typed_wrong_and_write_nothing(folder, argum
 
 FAULTY = [
     (["--boundary", "sight.geojson"], "sight.geojson: there is no such file. Did you mean site."),
+    (["--boundary", os.devnull], f"{os.devnull}: this is no ordinary file (a pipe or a device)."),
     (["--assurance", "80"], r"a share from 0.5 to below 1, such as 0.80, or plain is accepted"),
     (["--around", "520,1", "--radius-m", "5"], "lies off the globe"),
     (["--corners", "52,1; 53,1"], "at least 3 different corners"),

@@ -1,6 +1,7 @@
 """Each boundary that cannot serve is refused in one clear line with the remedy."""
 
 import json
+import os
 from pathlib import Path
 from typing import Any
 
@@ -51,6 +52,13 @@ def test_a_folder_is_no_boundary(tmp_path: Path) -> None:
     """Some map formats are folders, none of those read here."""
     (tmp_path / "site").mkdir()
     assert refusal(tmp_path, boundary="site") == "site is a folder; name the file in it."
+
+
+def test_a_device_is_no_boundary_and_is_not_read(tmp_path: Path) -> None:
+    """A pipe would keep the reader waiting for ever, and a device may never end."""
+    assert refusal(tmp_path, boundary=os.devnull) == (
+        f"{os.devnull} is no ordinary file (a pipe or a device); save it as a file and name that."
+    )
 
 
 @pytest.mark.parametrize("content", [b"", b" \n"])
