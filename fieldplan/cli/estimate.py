@@ -114,7 +114,7 @@ def command(
 ) -> None:
     """Meet laboratory results with their packet: the mean and its interval.
 
-    Design and rules are those recorded in PACKET before any result. LAB_FILE is CSV or XLSX with
+    Design and rules are those on record in PACKET. LAB_FILE is CSV or XLSX with
     one result a row. Ids that are only like planned ones are written to matches.csv for you to
     answer, and nothing is estimated before. Results go into a new numbered folder. Analytes that
     did not decide n get a sentence each, and a sheet and a map of their own.

@@ -9,6 +9,7 @@ from fieldplan.estimate.difference import difference_sentences
 from fieldplan.estimate.level import level_sentence
 from fieldplan.estimate.means import Means, means_by
 from fieldplan.estimate.model import Change, Estimate
+from fieldplan.estimate.order import standing_sentence
 from fieldplan.estimate.planned import planned_for
 from fieldplan.estimate.population import outside_sentence, population_sentence
 from fieldplan.estimate.rejected import rejected_sentence
@@ -28,7 +29,7 @@ def estimate(
     overrides: Mapping[str, str | float] | None = None,
     returns_changed: Returns | None = None,
 ) -> Estimate:
-    """Estimate the mean by the design and the rules that were recorded before any result.
+    """Estimate the mean by the design and the rules that the plan records.
 
     Parameters
     ----------
@@ -72,6 +73,7 @@ def estimate(
     said = (population_sentence(plan, basis), outside_sentence(plan, basis, means.half))
     population = " ".join(sentence for sentence in said if sentence)
     rejected = rejected_sentence(plan, basis, means)
+    standing = standing_sentence(plan, basis)
     planned = planned_for(plan, basis.analyte)
     return Estimate(
         analyte=basis.analyte,
@@ -90,8 +92,15 @@ def estimate(
         changes=changes,
         returns=basis,
         rejected_sentence=rejected,
+        standing_sentence=standing,
         sentences=answer_sentences(
-            plan, means, changes, level=level, population=population, rejected=rejected
+            plan,
+            means,
+            changes,
+            level=level,
+            population=population,
+            rejected=rejected,
+            standing=standing,
         ),
     )
 

@@ -79,6 +79,8 @@ class Estimate:
         The answer in words, most important first.
     rejected_sentence : str
         What the laboratory rejected and the answer with it; empty without such results.
+    standing_sentence : str
+        Why the record does not show that the plan stood before the results; empty where it may.
     """
 
     analyte: str
@@ -98,6 +100,7 @@ class Estimate:
     returns: Returns
     sentences: tuple[str, ...]
     rejected_sentence: str = ""
+    standing_sentence: str = ""
 
 
 @dataclass(frozen=True)

@@ -65,6 +65,7 @@ def answer_sentences(
     level: str,
     population: str,
     rejected: str = "",
+    standing: str = "",
 ) -> tuple[str, ...]:
     """Say the answer, then what bounds it.
 
@@ -73,7 +74,7 @@ def answer_sentences(
     plan : Plan
     means : Means
     changes : sequence of Change
-    level, population, rejected : str
+    level, population, rejected, standing : str
         Sentences made elsewhere; empty ones are left out.
 
     Returns
@@ -90,6 +91,7 @@ def answer_sentences(
     lines = [
         answer,
         _changed_sentence(changes, unit),
+        standing,
         _bracket_sentence(means, unit),
         rejected,
         level,

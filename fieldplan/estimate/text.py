@@ -41,6 +41,7 @@ def results_paragraph(plan: Plan, estimate: Estimate) -> str:
         estimate.population_sentence,
         estimate.level_sentence,
         _changes(estimate),
+        estimate.standing_sentence,
     ]
     return " ".join(part for part in parts if part)
 
@@ -70,6 +71,6 @@ def _bracket(estimate: Estimate) -> str:
 
 def _changes(estimate: Estimate) -> str:
     if not estimate.changes:
-        return "No rule was changed after results."
+        return "No recorded rule was changed for this estimate."
     rules = "; ".join(f"{c.rule} from {c.recorded} to {c.used}" for c in estimate.changes)
     return f"Changed after results: {rules}."

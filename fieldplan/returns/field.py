@@ -5,7 +5,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from difflib import get_close_matches
 from pathlib import Path
-from typing import get_args
+from typing import NoReturn, get_args
 
 from fieldplan.base.errors import LabError
 from fieldplan.design.model import Location
@@ -17,6 +17,7 @@ from fieldplan.plan.model import Plan
 from fieldplan.returns.form import FIELD_COLUMNS
 from fieldplan.returns.ids import nearest, plain_id
 from fieldplan.returns.model import FieldRow, ReasonCode
+from fieldplan.returns.revisions import other_revision
 
 REASONS: tuple[str, ...] = get_args(ReasonCode)
 _YES = {"yes", "y", "true", "1", "x", "taken"}
@@ -82,7 +83,7 @@ class _LineReader:
     """Reads one line after another against the same plan."""
 
     def __init__(self, plan: Plan, decimal_comma: bool) -> None:
-        places = plan.locations.places
+        self.plan, places = plan, plan.locations.places
         self.places = {place.location_id: place for place in places}
         self.spellings = {place.location_id.casefold(): place for place in places}
         self.spellings |= {place.short_name.casefold(): place for place in places}
@@ -127,9 +128,7 @@ class _LineReader:
         sample = self.samples.get(sample_id)
         place = self.spellings.get(written.casefold())
         if sample is None and sample_id:
-            near = nearest(sample_id, self.samples)
-            hint = f"did you mean '{near[0]}'?" if near else "check that it is this packet's form."
-            row.refuse("sample_id", f"is no sample of the plan; {hint}")
+            self._refuse_sample(row, sample_id)
         if sample is not None and place is not None and sample.location_id != place.location_id:
             row.refuse(
                 "sample_id",
@@ -141,6 +140,19 @@ class _LineReader:
         if place is None:
             row.refuse("location_id", "is no location of the plan. Take it from the packet.")
         return place.location_id
+
+    def _refuse_sample(self, row: RowCells, sample_id: str) -> NoReturn:
+        """Say whose sample it is, or which one of the plan it is like."""
+        other = other_revision(self.plan, sample_id)
+        if other:
+            row.refuse(
+                "sample_id",
+                f"belongs to {other}; this packet is {self.plan.revision_name}. Read this return "
+                f"with the packet of {other}.",
+            )
+        near = nearest(sample_id, self.samples)
+        hint = f"did you mean '{near[0]}'?" if near else "check that it is this packet's form."
+        row.refuse("sample_id", f"is no sample of the plan; {hint}")
 
     def _replaced_by(self, row: RowCells) -> str:
         written = plain_id(row.text("replaced_by"))

@@ -1,7 +1,9 @@
 """What the return says of each location, its samples taken together, and how far it moved."""
 
 from collections.abc import Sequence
+from contextlib import suppress
 from dataclasses import dataclass
+from datetime import date
 
 from fieldplan.base.errors import LabError
 from fieldplan.base.units import significant
@@ -75,6 +77,32 @@ def field_facts(
     if problems:
         raise LabError(*problems)
     return facts, notes
+
+
+def first_collected(rows: Sequence[FieldRow]) -> str:
+    """Give the earliest date of collection, as ISO text.
+
+    Parameters
+    ----------
+    rows : sequence of FieldRow
+
+    Returns
+    -------
+    str
+        Empty where no line opens with year, month and day; other ways to write a date may be
+        read in two ways and are not read.
+
+    Examples
+    --------
+    >>> late = FieldRow(2, "A", "A-1", True, collected_at="2026-10-14 08:30")
+    >>> first_collected([late, FieldRow(3, "B", "B-1", True, collected_at="3/4/26")])
+    '2026-10-14'
+    """
+    days = []
+    for row in rows:
+        with suppress(ValueError):
+            days.append(date.fromisoformat(row.collected_at[:10]).isoformat())
+    return min(days, default="")
 
 
 def _joined(place: Location, rows: Sequence[FieldRow]) -> FieldFacts:

@@ -9,6 +9,7 @@ from fieldplan.plan.model import Plan
 from fieldplan.returns.ids import likeness, nearest, plain_id
 from fieldplan.returns.laboratory import id_as_written
 from fieldplan.returns.model import ConfirmedId, NearMatch
+from fieldplan.returns.revisions import of_other_revisions
 from fieldplan.samples.model import Sample
 
 
@@ -79,7 +80,8 @@ def match_rows(
     Raises
     ------
     LabError
-        A confirmed match does not fit the file or the plan, or was never proposed.
+        A confirmed match does not fit the file or the plan, or was never proposed; a row bears
+        an id of another revision of the plan.
 
     Notes
     -----
@@ -87,6 +89,9 @@ def match_rows(
     leaves one sample. Whatever is left is compared by likeness and proposed. An answer counts
     where it would be proposed once all the other rows are answered.
     """
+    strangers = of_other_revisions(plan, rows)
+    if strangers:
+        raise LabError(*strangers)
     matcher = _Matcher(plan, analyte)
     others = {row.row: row for row in elsewhere}
     own = matcher.decided(rows, [match for match in confirmed if match.row not in others])

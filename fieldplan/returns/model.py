@@ -132,6 +132,8 @@ class Returns:
         The same with the results counted that the laboratory rejected; None without such.
     confirmed : tuple of ConfirmedId
         Rows that were matched by an answer in ``matches.csv``.
+    first_collected : str
+        Earliest date of collection in the field return, ISO; empty where none can be read.
     """
 
     analyte: str
@@ -150,6 +152,7 @@ class Returns:
     left_out: tuple[LeftOutRow, ...] = ()
     with_rejected: "Returns | None" = None
     confirmed: tuple[ConfirmedId, ...] = ()
+    first_collected: str = ""
 
 
 ReasonCode = Literal[

@@ -12,7 +12,7 @@ from fieldplan.lab.words import counted, listed
 from fieldplan.plan.model import Plan
 from fieldplan.returns.contradictions import contradictions
 from fieldplan.returns.field import FieldReturn
-from fieldplan.returns.field_facts import FieldFacts, field_facts
+from fieldplan.returns.field_facts import FieldFacts, field_facts, first_collected
 from fieldplan.returns.laboratory import (
     claimed_jars,
     id_as_written,
@@ -143,6 +143,7 @@ def _meet(
         notes=tuple(said),
         left_out=tuple(unused),
         confirmed=tuple(matching.confirmed),
+        first_collected=first_collected(given.rows),
     )
 
 

@@ -18,6 +18,7 @@ from fieldplan.packet.sheets.plan_sheet import subtitle
 from fieldplan.packet.sheets.results_sources import (
     earlier_blocks,
     earlier_sentence,
+    order_blocks,
     source_blocks,
 )
 from fieldplan.packet.sheets.results_tables import (
@@ -65,10 +66,14 @@ def results_sheet(plan: Plan, answers: Answers, *, origin: ResultsOrigin = _NO_O
         ("What happened in the field", field_blocks(plan, estimate.returns)),
         (
             "Changes made after results",
-            [*change_blocks(estimate), *earlier_blocks(estimate, origin)],
+            [
+                *change_blocks(estimate),
+                *order_blocks(plan, estimate),
+                *earlier_blocks(estimate, origin),
+            ],
         ),
         ("The working", working_blocks(estimate)),
-        ("Rules fixed before results", rules_blocks(plan.campaign.rules)),
+        ("Rules on record", rules_blocks(plan.campaign.rules)),
         ("For the report", report_blocks(plan, estimate)),
         ("What these results were made from", source_blocks(plan, estimate, origin=origin)),
     )

@@ -33,6 +33,33 @@ def earlier_blocks(estimate: Estimate, origin: ResultsOrigin) -> list[Block]:
     ]
 
 
+def order_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
+    """Set the dates that bear on whether plan and rules stood before the results."""
+    rules, first = plan.campaign.rules, estimate.returns.first_collected
+    by = f" by {rules.fixed_by}" if rules.fixed_by else ""
+    fixed = f"{rules.fixed_on}{by}, as typed" if rules.fixed_on else "no date typed"
+    issued = f"{plan.issued_on} by {plan.issued_by}" if plan.issued_by else "never"
+    late = [Paragraph(estimate.standing_sentence)] if estimate.standing_sentence else []
+    return [
+        Heading("What was there first, by the dates on record", level=2),
+        Facts(
+            (
+                ("Rules fixed", fixed),
+                ("Plan made", str(plan.made_on)),
+                ("Plan issued", issued),
+                ("First sample taken", first or "no date that can be read in the field return"),
+            )
+        ),
+        *late,
+        Paragraph(
+            "Dates are as typed, or as the computer's clock gave them; the tool cannot verify "
+            "them. What can show the order is the packet's fingerprint, which 'fieldplan issue' "
+            "prints, lodged with somebody else before the field work.",
+            tone="note",
+        ),
+    ]
+
+
 def earlier_answer(entry: EarlierResults, analyte: str) -> str:
     """Write what an earlier estimate answered for an analyte."""
     if not entry.answers:

@@ -61,7 +61,7 @@ def stratum_table(plan: Plan, estimate: Estimate) -> Table:
 def change_blocks(estimate: Estimate) -> list[Block]:
     """Set every change made after results with both answers, or say that there was none."""
     if not estimate.changes:
-        return [Paragraph("None. Every rule is the one recorded before results.")]
+        return [Paragraph("None. Every rule is the one on record.")]
     blocks: list[Block] = []
     for change in estimate.changes:
         blocks += one_change(estimate, change)
@@ -77,7 +77,7 @@ def one_change(estimate: Estimate, change: Change) -> list[Block]:
         Heading(f"CHANGED AFTER RESULTS: {change.rule}", level=2),
         Facts(
             (
-                ("Recorded before results", change.recorded),
+                ("On record", change.recorded),
                 ("Used instead", change.used),
                 ("By the recorded rule", recorded_answer(change, unit)),
                 ("As changed", f"mean {new} {unit}, {after}"),

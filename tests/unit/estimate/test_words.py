@@ -272,7 +272,7 @@ def test_the_paragraph_holds_what_a_report_must_say() -> None:
     """Plan, counts, mean, interval, strata, non-detects, method, population, changes."""
     text = results_paragraph(make_plan(), estimate(make_plan(), make_returns()))
     for part in ("QF-r01", "8 results", "62.5 mg/kg", "n = 4", "Non-detects stand at half",
-                 "Satterthwaite", "98.3 %", "No rule was changed after results"):  # fmt: skip
+                 "Satterthwaite", "98.3 %", "No recorded rule was changed"):  # fmt: skip
         assert part in text
     changed = estimate(make_plan(), make_returns(), overrides={"confidence": 0.9})
     assert "Changed after results: confidence from 0.95 to 0.9." in results_paragraph(

@@ -55,7 +55,20 @@ def test_changes_made_after_results_has_a_section_even_when_there_were_none():
     """Its absence could hide a change."""
     sheet = standard()
     assert "Changes made after results" in headings_of(sheet)
-    assert "None. Every rule is the one recorded before results." in words_of(sheet)
+    assert "None. Every rule is the one on record." in words_of(sheet)
+
+
+def test_nothing_is_sworn_to_that_the_tool_cannot_know():
+    """That rules were fixed before results is what a date says, and a date is only typed."""
+    words = sheet_text()
+    assert "before results" not in words
+    assert "the tool cannot verify them" in words
+    assert "lodged with somebody else before the field work" in words
+    returns = replace(make_returns(), first_collected="2026-11-09")
+    dated = words_of(results_sheet(make_plan(), Answers(make_estimate(returns=returns))))
+    assert "2026-11-02 by L. Fenn, as typed" in dated
+    assert "2026-11-09" in dated
+    assert "no date that can be read in the field return" in words
 
 
 def test_a_change_is_printed_with_both_answers_and_on_page_one():

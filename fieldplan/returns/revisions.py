@@ -1,0 +1,68 @@
+"""Jars labelled under another revision of the plan: their results are none of this packet's."""
+
+from collections.abc import Sequence
+
+from fieldplan.lab.model import LabRow
+from fieldplan.lab.words import listed
+from fieldplan.plan.model import Plan
+from fieldplan.returns.ids import plain_id
+from fieldplan.samples.ids import revision_of
+
+
+def other_revision(plan: Plan, written: str) -> str:
+    """Name the revision of this plan, other than its own, that gave a sample id.
+
+    Parameters
+    ----------
+    plan : Plan
+    written : str
+        As the crew or the laboratory wrote it.
+
+    Returns
+    -------
+    str
+        Such as ``HL-r02``; empty where the id is one of the plan (a well may be called so), or
+        none that can be told.
+    """
+    name = plain_id(written)
+    revision = revision_of(name, plan.campaign.prefix)
+    if revision is None or revision == plan.revision:
+        return ""
+    known = {sample.sample_id for sample in plan.samples.samples}
+    if name in known | {place.location_id for place in plan.locations.places}:
+        return ""
+    return f"{plan.campaign.plan.id}-r{revision:02d}"
+
+
+def of_other_revisions(plan: Plan, rows: Sequence[LabRow]) -> list[str]:
+    """Refuse results of jars that another revision labelled.
+
+    Parameters
+    ----------
+    plan : Plan
+    rows : sequence of LabRow
+
+    Returns
+    -------
+    list of str
+        A sentence for each revision: under a new one a number may stand for another place.
+    """
+    found: dict[str, list[tuple[int, str]]] = {}
+    for row in rows:
+        for written in (row.sample_id, row.location_id):
+            name = other_revision(plan, written)
+            if name:
+                found.setdefault(name, []).append((row.row, written))
+                break
+    return [_sentence(plan, name, jars) for name, jars in sorted(found.items())]
+
+
+def _sentence(plan: Plan, name: str, jars: Sequence[tuple[int, str]]) -> str:
+    numbers = listed([str(row) for row, _ in jars])
+    ids = listed([f"'{written}'" for _, written in jars])
+    rows, belong = ("row", "belongs") if len(jars) == 1 else ("rows", "belong")
+    return (
+        f"laboratory file {rows} {numbers}: {ids} {belong} to {name}; this packet is "
+        f"{plan.revision_name}. Estimate with the packet of {name}, or ask which labels the jars "
+        "carried."
+    )
