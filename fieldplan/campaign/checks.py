@@ -83,6 +83,33 @@ def _list_frame(frame: Data, i: int) -> Iterator[Problem]:
             yield Problem(("frame", i, key), text)
 
 
+_COORDINATES = ("latitude", "longitude", "easting", "northing")
+
+
+def _columns(data: Data) -> Iterator[Problem]:
+    """Refuse names for columns that nobody reads."""
+    for i, frame in enumerate(tables(data, "frame")):
+        named = _COORDINATES if frame.get("kind") == "area" else ("location_id", *_COORDINATES)
+        yield from _unknown_columns(frame, ("frame", i), named)
+    for i, targeted in enumerate(tables(data, "targeted")):
+        yield from _unknown_columns(targeted, ("targeted", i), ("location_id", *_COORDINATES))
+
+
+def _unknown_columns(
+    table: Data, path: tuple[str | int, ...], known: tuple[str, ...]
+) -> Iterator[Problem]:
+    columns = table.get("columns")
+    for key in columns if isinstance(columns, dict) else ():
+        if key in known:
+            continue
+        if key == "stratum" and path[0] == "frame":
+            text = f"a stratum has a key of its own. Write stratum_column = {shown(columns[key])}."
+        else:
+            near = near_miss(key, known) or f" Takes {', '.join(known)}."
+            text = f"no column of ours that is read here (got {shown(key)}).{near}"
+        yield Problem((*path, "columns", key), text)
+
+
 def _designs(data: Data) -> Iterator[Problem]:
     frames = tables(data, "frame")
     frame = frames[0] if frames else {}
@@ -295,6 +322,7 @@ _RULES: tuple[Callable[[Data], Iterator[Problem]], ...] = (
     _plan,
     _analytes,
     _frames,
+    _columns,
     _designs,
     _objectives,
     _sigmas,

@@ -39,6 +39,9 @@ MEANING: dict[str, str] = {
     "frame.strata": "file with one polygon or more for each stratum",
     "frame.stratum_column": "column of the strata file or the list that names the stratum",
     "frame.list_file": "CSV of all members of the population: wells, outfalls, plots, stations",
+    "frame.columns": (
+        "names of the columns of the list, or of corners: ours on the left, the file's on the right"
+    ),
     "frame.exclusion": "a part of the site that is left out of the population",
     "frame.exclusion.file": "file with the polygons, lines or points that are left out",
     "frame.exclusion.buffer_m": "metres around them that are left out as well",
@@ -71,6 +74,7 @@ MEANING: dict[str, str] = {
     # [[targeted]]
     "targeted": "places chosen by judgement; they never enter the mean",
     "targeted.file": "file with the places",
+    "targeted.columns": "names of its columns: ours on the left, the file's on the right",
     "targeted.reason": "why these places are looked at",
     # [[objective]]
     "objective": "the question and how well it must be answered",

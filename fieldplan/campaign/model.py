@@ -88,6 +88,7 @@ class FrameTable(Table):
     strata: str | None = None
     stratum_column: str = "stratum"
     list_file: str | None = None
+    columns: Mapping[str, str] = {}
     exclusion: tuple[Exclusion, ...] = ()
     inset_m: NonNegativeNumber = 0.0
     accept_shift_accuracy_m: PositiveNumber | None = None
@@ -126,6 +127,7 @@ class Targeted(Table):
     """``[[targeted]]``: places chosen by judgement; a class of their own, never in the mean."""
 
     file: str
+    columns: Mapping[str, str] = {}
     reason: Words
 
 

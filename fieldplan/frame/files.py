@@ -5,6 +5,7 @@ from pathlib import Path
 from fieldplan.base.errors import FrameError
 from fieldplan.base.files import NOT_ORDINARY, is_ordinary
 from fieldplan.campaign.text import near_names
+from fieldplan.frame.columns import ColumnMap
 from fieldplan.frame.geojson import read_geojson
 from fieldplan.frame.layer import Layer, check_layer
 from fieldplan.frame.markup import read_gpx, read_kml, read_kmz, root_name
@@ -20,7 +21,9 @@ LARGEST_FILE = 100_000_000
 _ACCEPTED = "export it as GeoJSON, GeoPackage, Shapefile, KML, GPX or CSV."
 
 
-def read_layer(folder: Path, typed: str, *, wanted: str = "polygon") -> Layer:
+def read_layer(
+    folder: Path, typed: str, *, wanted: str = "polygon", named: ColumnMap | None = None
+) -> Layer:
     """Read the file that a campaign names.
 
     Parameters
@@ -31,6 +34,8 @@ def read_layer(folder: Path, typed: str, *, wanted: str = "polygon") -> Layer:
         As in the campaign file: a path, with ``#layer`` behind it for one layer of a GeoPackage.
     wanted : str
         ``polygon``, ``point`` or ``any``: which layer of several is meant.
+    named : ColumnMap, optional
+        Columns as the campaign file names them.
 
     Returns
     -------
@@ -45,16 +50,30 @@ def read_layer(folder: Path, typed: str, *, wanted: str = "polygon") -> Layer:
     path, layer = split_layer(folder, typed)
     content = read_bytes(path, typed)
     if content.startswith(GEOPACKAGE_MAGIC):
-        return check_layer(read_geopackage(path, typed, layer=layer, wanted=wanted))
-    if layer:
+        found = read_geopackage(path, typed, layer=layer, wanted=wanted)
+    elif layer:
         message = f"{typed}: only a GeoPackage has layers to name with '#'; take it out."
         raise FrameError(message)
-    if content.startswith(SHAPEFILE_MAGIC):
-        return check_layer(read_shapefile(path, typed))
-    return check_layer(_read_text(content, path, typed))
+    elif content.startswith(SHAPEFILE_MAGIC):
+        found = read_shapefile(path, typed)
+    else:
+        found = _read_text(content, path, typed, named)
+    _refuse_coordinates(found, named)
+    return check_layer(found)
 
 
-def _read_text(content: bytes, path: Path, typed: str) -> Layer:
+def _refuse_coordinates(layer: Layer, named: ColumnMap | None) -> None:
+    """Refuse names for columns with coordinates where a file has its coordinates otherwise."""
+    needless = [ours for ours in named.columns if ours != "location_id"] if named else []
+    if needless and layer.format != "CSV":
+        message = (
+            f"{layer.name} is no table, its places need no columns; take {', '.join(needless)} "
+            f"out of columns in {named.table if named else ''}."
+        )
+        raise FrameError(message)
+
+
+def _read_text(content: bytes, path: Path, typed: str, named: ColumnMap | None) -> Layer:
     """Read a format that is text, or KML in a zip archive."""
     root = root_name(content)
     if content.startswith(b"PK"):
@@ -69,7 +88,7 @@ def _read_text(content: bytes, path: Path, typed: str) -> Layer:
     if content.lstrip(b"\xef\xbb\xbf \t\r\n").startswith((b"{", b"[")):
         return read_geojson(content, typed)
     if path.suffix.lower() in (".csv", ".txt", ".tsv"):
-        return read_rows(content, typed)
+        return read_rows(content, typed, named=named)
     message = f"{typed} is not a map file that can be read, whatever its name says; {_ACCEPTED}"
     raise FrameError(message)
 
@@ -89,6 +108,9 @@ def read_bytes(path: Path, typed: str) -> bytes:
         if path.is_dir():
             message = f"{typed} is a folder; name the file in it."
             raise FrameError(message)
+        if not is_ordinary(path):
+            message = f"{typed} {NOT_ORDINARY}; save it as a file and name that."
+            raise FrameError(message)
         size = path.stat().st_size
         if size > LARGEST_FILE:
             most = LARGEST_FILE / 1e6
@@ -107,6 +129,3 @@ def read_bytes(path: Path, typed: str) -> bytes:
         message = f"{typed} is empty; export it again."
         raise FrameError(message)
     return content
-        if not is_ordinary(path):
-            message = f"{typed} {NOT_ORDINARY}; save it as a file and name that."
-            raise FrameError(message)

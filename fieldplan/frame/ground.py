@@ -11,6 +11,7 @@ from shapely.geometry.base import BaseGeometry
 from fieldplan.base.errors import FrameError
 from fieldplan.base.units import area_in_words, significant
 from fieldplan.campaign.model import FrameTable
+from fieldplan.frame.columns import ColumnMap
 from fieldplan.frame.cutting import joined
 from fieldplan.frame.datum import Shift, shift_for
 from fieldplan.frame.files import read_layer
@@ -51,9 +52,11 @@ class FrameFiles:
     table: FrameTable
     position_accuracy_m: float | None = None
 
-    def open(self, typed: str, *, wanted: str = "polygon") -> Overlay:
+    def open(
+        self, typed: str, *, wanted: str = "polygon", named: ColumnMap | None = None
+    ) -> Overlay:
         """Read a file and fix its way to WGS 84."""
-        layer = read_layer(self.folder, typed, wanted=wanted)
+        layer = read_layer(self.folder, typed, wanted=wanted, named=named)
         shift = shift_for(
             layer,
             _coordinates(layer),
@@ -142,7 +145,8 @@ def read_ground(files: FrameFiles) -> Ground:
     if not typed:
         message = '[[frame]] has no boundary; name the file of the outline as boundary = "…".'
         raise FrameError(message)
-    overlay = files.open(typed)
+    columns = files.table.columns if files.table.kind == "area" else {}
+    overlay = files.open(typed, named=ColumnMap(columns, "[[frame]]"))
     features, notes = polygon_features(overlay.layer)
     source = np.vstack([shapely.get_coordinates(feature.geometry) for feature in features])
     projection = centre_of(*overlay.shift.degrees(source))

@@ -51,6 +51,8 @@ class Layer:
         Where the CRS comes from, in words.
     columns : tuple of str
         All value names, in file order.
+    titles : tuple of str
+        The same as they stand in the file, for messages and ``columns`` of the campaign file.
     notes : tuple of str
         What was skipped or put right while reading.
     """
@@ -62,6 +64,12 @@ class Layer:
     crs_from: str = ""
     columns: tuple[str, ...] = ()
     notes: tuple[str, ...] = ()
+    titles: tuple[str, ...] = ()
+
+    def __post_init__(self) -> None:
+        """Take the value names as they are where the reader changed nothing about them."""
+        if not self.titles:
+            object.__setattr__(self, "titles", self.columns)
 
 
 def check_layer(layer: Layer) -> Layer:

@@ -6,6 +6,7 @@ from shapely.geometry.base import BaseGeometry
 
 from fieldplan.base.errors import FrameError
 from fieldplan.campaign.model import Targeted
+from fieldplan.frame.columns import ColumnMap, key_of, quoted
 from fieldplan.frame.ground import (
     FrameFiles,
     Ground,
@@ -54,8 +55,9 @@ def read_list(files: FrameFiles, targeted: tuple[Targeted, ...], *, layout: str)
         message = '[[frame]] has no list; name the file of its units as list_file = "…".'
         raise FrameError(message)
     _refuse_area_keys(files)
-    overlay = files.open(table.list_file, wanted="point")
-    found = named_places(overlay)
+    named = ColumnMap(table.columns, "[[frame]]")
+    overlay = files.open(table.list_file, wanted="point", named=named)
+    found = named_places(overlay, named)
     ground = _ground(files, overlay, found)
     names = _stratum_names(overlay, found, table.stratum_column)
     if layout == "simple-random":
@@ -115,7 +117,7 @@ def _refuse_strata(name: str, strata: list[str], column: str) -> None:
 
 def _ground(files: FrameFiles, overlay: Overlay, found: NamedPlaces) -> Ground:
     """Take the boundary of the campaign file, or make a hull that is for maps only."""
-    notes = (*overlay.layer.notes, *overlay.shift.notes)
+    notes = (*overlay.layer.notes, *found.notes, *overlay.shift.notes)
     if not files.table.boundary:
         projection = centre_of(found.latitude, found.longitude)
         easting, northing = to_site(projection, found.latitude, found.longitude)
@@ -159,14 +161,16 @@ def hull(places: np.ndarray) -> BaseGeometry:
 def _stratum_names(overlay: Overlay, found: NamedPlaces, column: str) -> list[str]:
     """Give the stratum of each unit; ``site`` when the list has no such column."""
     layer = overlay.layer
-    known = {name.lower(): name for name in layer.columns}
-    if column.lower() not in known:
+    titles = dict(zip(map(key_of, layer.titles), layer.columns, strict=True))
+    if key_of(column) not in titles:
         if column != "stratum":
-            there = ", ".join(layer.columns) or "none"
-            message = f"{layer.name} has no column {column!r} (its columns: {there})."
+            message = (
+                f"{layer.name} has no column '{column}'; its columns are {quoted(layer.titles)}. "
+                "Correct stratum_column in [[frame]]."
+            )
             raise FrameError(message)
         return ["site"] * len(found.ids)
-    names = [feature.values.get(known[column.lower()], "") for feature in found.features]
+    names = [feature.values.get(titles[key_of(column)], "") for feature in found.features]
     raise_all(
         f"{layer.name} {feature.label}: the stratum of {identifier!r} is empty; name it."
         for feature, identifier, name in zip(found.features, found.ids, names, strict=True)

@@ -8,6 +8,16 @@ from numpy.typing import NDArray
 
 from fieldplan.base.errors import FrameError
 from fieldplan.campaign.model import Targeted
+from fieldplan.frame.columns import (
+    ColumnMap,
+    has_none,
+    key_of,
+    one_of,
+    remedy,
+    standing_for,
+    taken_as,
+    told,
+)
 from fieldplan.frame.ground import FrameFiles, Ground, Overlay, distance_in_words, points_of
 from fieldplan.frame.layer import Feature, Layer, raise_all
 from fieldplan.frame.model import SiteProjection, TargetedPlace
@@ -25,10 +35,17 @@ class NamedPlaces:
     ids: tuple[str, ...]
     latitude: NDArray[np.float64]
     longitude: NDArray[np.float64]
+    notes: tuple[str, ...] = ()
 
 
-def named_places(overlay: Overlay) -> NamedPlaces:
+def named_places(overlay: Overlay, named: ColumnMap) -> NamedPlaces:
     """Give the points of a file with their ids, refusing lines, polygons, blanks and repeats.
+
+    Parameters
+    ----------
+    overlay : Overlay
+    named : ColumnMap
+        Columns as the campaign file names them.
 
     Raises
     ------
@@ -51,11 +68,13 @@ def named_places(overlay: Overlay) -> NamedPlaces:
     if not features:
         message = f"{layer.name} holds no points; export the places as points."
         raise FrameError(message)
-    ids = _ids(layer, features)
+    at = _id_column(layer, named)
+    notes = taken_as(layer.name, [(layer.titles[at], "location_id")]) if at in _usual(layer) else ()
+    ids = _ids(layer, features, layer.columns[at])
     coordinates = shapely.get_coordinates([feature.geometry for feature in features])
     latitude, longitude = overlay.shift.degrees(coordinates)
     longitude = np.where(np.abs(longitude) > 180, (longitude + 180) % 360 - 180, longitude)
-    return NamedPlaces(features, ids, latitude, longitude)
+    return NamedPlaces(features, ids, latitude, longitude, notes)
 
 
 def read_targeted(
@@ -86,8 +105,9 @@ def read_targeted(
     """
     places: list[TargetedPlace] = []
     for entry in targeted:
-        overlay = files.open(entry.file, wanted="point")
-        found = named_places(overlay)
+        named = ColumnMap(entry.columns, "[[targeted]]")
+        overlay = files.open(entry.file, wanted="point", named=named)
+        found = named_places(overlay, named)
         easting, northing = to_site(ground.projection, found.latitude, found.longitude)
         points = points_of(ground.projection, found.latitude, found.longitude)
         away = np.asarray(shapely.distance(ground.boundary, points))
@@ -100,7 +120,7 @@ def read_targeted(
             for identifier, metres in zip(found.ids, away, strict=True)
             if metres > 0
         ]
-        notes = [*overlay.layer.notes, *overlay.shift.notes]
+        notes = [*overlay.layer.notes, *found.notes, *overlay.shift.notes]
         if outside:
             notes.append(f"{entry.file}: targeted outside the site: {', '.join(outside)}.")
         ground = ground.noting(*notes, source=overlay.shift.source)
@@ -167,14 +187,41 @@ def _as_point(feature: Feature) -> Feature:
     return feature
 
 
-def _ids(layer: Layer, features: tuple[Feature, ...]) -> tuple[str, ...]:
-    """Find the ids, as given."""
-    by_small_letters = {column.lower(): column for column in reversed(layer.columns)}
-    column = next((by_small_letters[c] for c in ID_COLUMNS if c in by_small_letters), None)
-    if column is None:
-        there = ", ".join(layer.columns) or "none"
-        message = f"{layer.name} has no column 'location_id' (its columns: {there}); add one."
-        raise FrameError(message)
+def _id_column(layer: Layer, named: ColumnMap) -> int:
+    """Find the column with the ids: as told, by our name, by a usual one, or a plain name.
+
+    Raises
+    ------
+    FrameError
+        None, or several that could be meant.
+    """
+    if "location_id" in named.columns:
+        theirs = named.columns["location_id"]
+        return told(layer.name, layer.titles, "location_id", theirs=theirs)
+    usual = _usual(layer)
+    if [key_of(layer.titles[at]) for at in usual] == ["location_id"]:
+        return usual[0]
+    keys = [key_of(title) for title in layer.titles]
+    general = [keys.index(name) for name in ID_COLUMNS[1:] if name in keys][:1]
+    at = general if general and layer.format in ("KML", "GPX") else [*usual, *general]
+    if at:
+        return one_of(layer.name, layer.titles, "location_id", at, table=named.table)
+    words = f"Add one; or, if one of them is that: {_inner(named.table)}"
+    raise has_none(layer.name, layer.titles, "column 'location_id'", words)
+
+
+def _inner(table: str) -> str:
+    """Say how to name the column, within a sentence."""
+    words = remedy(table, {"location_id": ""})
+    return words[0].lower() + words[1:]
+
+
+def _usual(layer: Layer) -> list[int]:
+    return standing_for(layer.titles, "location_id")
+
+
+def _ids(layer: Layer, features: tuple[Feature, ...], column: str) -> tuple[str, ...]:
+    """Give the ids, as they stand in the file."""
     ids = tuple(feature.values.get(column, "") for feature in features)
     raise_all(
         f"{layer.name} {feature.label}: its {column} is empty; every place needs one."

@@ -9,16 +9,21 @@ from dataclasses import dataclass
 import shapely
 
 from fieldplan.base.errors import FrameError
+from fieldplan.frame.columns import (
+    ColumnMap,
+    guesses,
+    has_none,
+    key_of,
+    one_of,
+    remedy,
+    standing_for,
+    taken_as,
+    told,
+)
 from fieldplan.frame.layer import Feature, Layer, raise_all
 
 _SEPARATORS = {",": "comma", ";": "semicolon", "\t": "tab"}
-_SPELLINGS = {
-    "lat": "latitude",
-    "lon": "longitude",
-    "long": "longitude",
-    "lng": "longitude",
-}
-_PAIRS = (("longitude", "latitude"), ("easting", "northing"))
+_DEGREES, _GRID = ("longitude", "latitude"), ("easting", "northing")
 _NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d{1,3})?")
 _DECIMAL_COMMA = re.compile(r"[+-]?\d+,\d+")
 _MOST_ROWS = 1_000_000
@@ -26,14 +31,14 @@ _MOST_ROWS = 1_000_000
 
 @dataclass(frozen=True)
 class _Rows:
-    """A table of texts: trimmed column names, and cells with the number of their row."""
+    """A table of texts: column names as they stand, and cells with the number of their row."""
 
-    columns: tuple[str, ...]
+    titles: tuple[str, ...]
     rows: tuple[tuple[int, tuple[str, ...]], ...]
     blank: int
 
 
-def read_rows(content: bytes, name: str) -> Layer:
+def read_rows(content: bytes, name: str, *, named: ColumnMap | None = None) -> Layer:
     """Read a CSV of places: ``latitude, longitude`` in degrees or ``easting, northing``.
 
     Parameters
@@ -42,6 +47,8 @@ def read_rows(content: bytes, name: str) -> Layer:
         UTF-8 with or without a mark, UTF-16 or Windows-1252; comma, semicolon or tab.
     name : str
         What messages call it.
+    named : ColumnMap, optional
+        Columns as the campaign file names them.
 
     Returns
     -------
@@ -55,24 +62,23 @@ def read_rows(content: bytes, name: str) -> Layer:
         Not text, no such columns, or cells that are no plain decimal numbers.
     """
     text, notes = _decoded(content, name)
-    table = _table(text, name)
-    across, up = _pair(table.columns, name)
-    if table.blank:
-        notes = (*notes, f"{name}: {table.blank} blank row(s) were skipped.")
+    rows = _table(text, name)
+    titles, columns = rows.titles, tuple(map(key_of, rows.titles))
+    pair, across, up = _pair(titles, name, named or ColumnMap())
+    if rows.blank:
+        notes = (*notes, f"{name}: {rows.blank} blank row(s) were skipped.")
+    notes = (*notes, *taken_as(name, [(titles[across], pair[0]), (titles[up], pair[1])][::-1]))
     features, faults = [], []
-    for number, cells in table.rows:
-        values = dict(zip(table.columns, cells, strict=False))
-        problems = [*_cell_faults(values, across), *_cell_faults(values, up)]
+    for number, cells in rows.rows:
+        problems = [fault for at in (across, up) for fault in _cell_faults(cells[at], titles[at])]
         faults += [f"{name} row {number}: {problem}" for problem in problems]
         if not problems:
-            x, y = _plain_number(values[across]), _plain_number(values[up])
+            x, y = _plain_number(cells[across]), _plain_number(cells[up])
+            values = dict(zip(columns, cells, strict=True))
             features.append(Feature(f"row {number}", shapely.Point(float(x), float(y)), values))
     raise_all(faults)
-    return Layer(name, "CSV", tuple(features), None, _crs_from(across), table.columns, notes)
-
-
-def _crs_from(across: str) -> str:
-    return "its columns latitude and longitude" if across == "longitude" else ""
+    crs_from = "its columns latitude and longitude" if pair == _DEGREES else ""
+    return Layer(name, "CSV", tuple(features), None, crs_from, columns, notes, titles)
 
 
 def _decoded(content: bytes, name: str) -> tuple[str, tuple[str, ...]]:
@@ -109,8 +115,8 @@ def _table(text: str, name: str) -> _Rows:
     if not filled:
         message = f"{name} has no rows; export it again."
         raise FrameError(message)
-    header = tuple(_column(cell) for cell in filled[0][1])
-    named = [column for column in header if column]
+    header = tuple(filled[0][1])
+    named = [key_of(title) for title in header if title]
     raise_all(
         f"{name}: column {column!r} stands there twice; rename one."
         for column in dict.fromkeys(named)
@@ -160,28 +166,35 @@ def _separator(text: str) -> str:
     return max(_SEPARATORS, key=line.count)
 
 
-def _column(cell: str) -> str:
-    """Give a column its plain name: small letters, underscores, ``lat`` for latitude."""
-    plain = cell.strip().lower().replace(" ", "_")
-    return _SPELLINGS.get(plain, plain)
-
-
-def _pair(columns: tuple[str, ...], name: str) -> tuple[str, str]:
+def _pair(titles: tuple[str, ...], name: str, named: ColumnMap) -> tuple[tuple[str, str], int, int]:
     """Find the two columns with coordinates; degrees go first where both pairs are there."""
-    for across, up in _PAIRS:
-        if across in columns and up in columns:
-            return across, up
-    there = ", ".join(column for column in columns if column) or "none"
-    message = (
-        f"{name} has no columns 'latitude' and 'longitude' (or 'easting' and 'northing'); its "
-        f"columns are {there}. Rename two of them, each coordinate in a column of its own."
+    typed = {
+        ours: told(name, titles, ours, theirs=theirs)
+        for ours, theirs in named.columns.items()
+        if ours in _DEGREES + _GRID
+    }
+    for pair in (_DEGREES, _GRID):
+        other = _GRID if pair == _DEGREES else _DEGREES
+        if any(ours in typed for ours in other):
+            continue
+        at = [[typed[ours]] if ours in typed else standing_for(titles, ours) for ours in pair]
+        if all(at):
+            across, up = (
+                one_of(name, titles, ours, found, table=named.table)
+                for ours, found in zip(pair, at, strict=True)
+            )
+            return pair, across, up
+    guessed = guesses(titles, _GRID)
+    meant = guessed if all(guessed.values()) else {"latitude": "", "longitude": ""}
+    wanted = (
+        "columns 'latitude' and 'longitude' (or 'easting' and 'northing'), each coordinate in a "
+        "column of its own"
     )
-    raise FrameError(message)
+    raise has_none(name, titles, wanted, remedy(named.table, meant))
 
 
-def _cell_faults(values: dict[str, str], column: str) -> list[str]:
+def _cell_faults(cell: str, column: str) -> list[str]:
     """Say what is wrong with a coordinate, with the remedy for what it looks like."""
-    cell = values.get(column, "")
     if _NUMBER.fullmatch(_plain_number(cell)):
         return []
     if not cell:

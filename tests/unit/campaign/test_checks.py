@@ -148,6 +148,26 @@ BROKEN = [
         "16: design.layout: stratified, but the frame has no strata. Give frame.strata its file.",
     ),
     (
+        [('"boundary.geojson"', '"b.csv"\ncolumns = { location_id = "Corner" }')],
+        '14: frame.columns.location_id: no column of ours that is read here (got "location_id"). '
+        "Takes latitude, longitude, easting, northing.",
+    ),
+    (
+        [(LIST[0], LIST[1] + '\ncolumns = { location = "Well ID" }')],
+        '14: frame.columns.location: no column of ours that is read here (got "location"). Did '
+        'you mean "location_id"?',
+    ),
+    (
+        [(LIST[0], LIST[1] + '\ncolumns = { stratum = "Zone" }')],
+        "14: frame.columns.stratum: a stratum has a key of its own. Write stratum_column = "
+        '"Zone".',
+    ),
+    (
+        [("[draw]", '[[targeted]]\nfile = "t.csv"\nreason = "x"\ncolumns = { x = "E" }\n[draw]')],
+        '30: targeted.columns.x: no column of ours that is read here (got "x"). Takes '
+        "location_id, latitude, longitude, easting, northing.",
+    ),
+    (
         [('"boundary.geojson"', '"boundary.geojson"\nstrata = "strata.geojson"')],
         "17: design.layout: draws from one population, but the frame has strata (got "
         '"simple-random"). Write layout = "stratified", or take frame.strata out.',

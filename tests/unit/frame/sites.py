@@ -59,12 +59,15 @@ def frame_of(
     folder: Path,
     *,
     exclusions: list[tuple[str, float, str]] | None = None,
-    targeted: list[tuple[str, str]] | None = None,
+    targeted: list[tuple[Any, ...]] | None = None,
     position_accuracy_m: float | None = None,
     layout: str = "",
     **table: Any,
 ) -> Frame:
-    """Read a frame from files in ``folder``; ``table`` are keys of ``[[frame]]``."""
+    """Read a frame from files in ``folder``; ``table`` are keys of ``[[frame]]``.
+
+    A targeted file is given with its reason, and with its columns if these are told.
+    """
     table.setdefault("kind", "area")
     if table["kind"] == "area":
         table.setdefault("boundary", "boundary.geojson")
@@ -75,7 +78,10 @@ def frame_of(
     changes: dict[str, Any] = {
         "frame": (FrameTable(exclusion=out, **table),),
         "field": FieldTable(position_accuracy_m=position_accuracy_m),
-        "targeted": tuple(Targeted(file=file, reason=reason) for file, reason in targeted or []),
+        "targeted": tuple(
+            Targeted(file=file, reason=reason, columns=dict(*columns))
+            for file, reason, *columns in targeted or []
+        ),
     }
     if layout:
         changes["design"] = (make_campaign().design[0].model_copy(update={"layout": layout}),)
