@@ -152,23 +152,12 @@ def _chance(question: Question, chosen: tuple[int, ...], chance: float) -> Step:
         inputs.append(Quantity("df", "degrees of freedom behind sigma", pilot))
     if luck != 1:
         inputs.append(Quantity("m", "factor on V: Neyman counts follow the pilot's luck", luck))
-    factor = "m·" if luck != 1 else ""
-    if question.target_half_width is None:
-        formula = f"chance = P(χ² ≥ df · {factor}V / SE²)"
-        source = "Hahn & Meeker 1991, Statistical Intervals, ch. 4"
-    else:
-        main = precision.degrees_of_freedom(chosen)
-        formula = f"chance = P(F ≤ h² / (t² · {factor}V)), F with df' and df"
-        source = "predictive F: Hahn & Meeker 1991, Statistical Intervals"
-        if pilot is None:
-            formula = "chance = P(χ² ≤ df' · h² / (t² · V)), χ² with df'"
-            source = "Kupper & Hafner 1989, The American Statistician 43:101"
-        if math.isfinite(main):
-            t = t_quantile(main, confidence=question.confidence, kind=question.interval)
-            inputs.append(Quantity("df'", "degrees of freedom of the coming results", main))
-            inputs.append(Quantity("t", "Student quantile at df'", t))
-    if luck != 1:
-        source += "; the factor m " + DERIVED
+    main = precision.degrees_of_freedom(chosen)
+    if question.target_half_width is not None and math.isfinite(main):
+        t = t_quantile(main, confidence=question.confidence, kind=question.interval)
+        inputs.append(Quantity("df'", "degrees of freedom of the coming results", main))
+        inputs.append(Quantity("t", "Student quantile at df'", t))
+    formula, source = _chance_formula(question, pilot_known=pilot is not None, factor=luck != 1)
     return Step(
         symbol="chance",
         meaning=f"Chance that {sum(chosen)} results meet the target"
@@ -179,3 +168,17 @@ def _chance(question: Question, chosen: tuple[int, ...], chance: float) -> Step:
         rounded=round(chance, 3),
         source=source,
     )
+
+
+def _chance_formula(question: Question, *, pilot_known: bool, factor: bool) -> tuple[str, str]:
+    """Give the formula of a chance, and its source."""
+    m = "m·" if factor else ""
+    derived = f"; the factor m {DERIVED}" if factor else ""
+    if question.target_half_width is None:
+        source = "Hahn & Meeker 1991, Statistical Intervals, ch. 4"
+        return f"chance = P(χ² ≥ df · {m}V / SE²)", source + derived
+    if not pilot_known:
+        source = "Kupper & Hafner 1989, The American Statistician 43:101"
+        return "chance = P(χ² ≤ df' · h² / (t² · V)), χ² with df'", source
+    source = "predictive F: Hahn & Meeker 1991, Statistical Intervals"
+    return f"chance = P(F ≤ h² / (t² · {m}V)), F with df' and df", source + derived
