@@ -4,8 +4,10 @@ from collections.abc import Callable
 from datetime import date
 
 from fieldplan import __version__
+from fieldplan.base.errors import CampaignError
 from fieldplan.campaign.inputs import fingerprint, input_files
 from fieldplan.campaign.model import ReadCampaign
+from fieldplan.campaign.text import read_text
 from fieldplan.crew.cautions import cautions
 from fieldplan.design import locate
 from fieldplan.design.model import StratumCount
@@ -48,9 +50,11 @@ def make_plan(
     Raises
     ------
     FieldplanError
-        An input cannot be read, or the campaign cannot be sized or drawn.
+        An input cannot be read, the campaign file has changed since it was read, or the campaign
+        cannot be sized or drawn.
     """
     campaign = read.campaign
+    inputs = _fingerprints(read)
     progress("reading the boundary")
     frame = read_frame(read)
     progress("reading the pilot")
@@ -71,6 +75,16 @@ def make_plan(
         cautions=cautions(campaign, on=made_on),
         revision=revision,
         made_on=made_on,
-        inputs={name: fingerprint(path) for name, path in input_files(read).items()},
+        inputs=inputs,
         fieldplan_version=__version__,
     )
+
+
+def _fingerprints(read: ReadCampaign) -> dict[str, str]:
+    """Hash the campaign file, which must still be the one that was read, and all that it names."""
+    own = fingerprint(read.path)
+    if read_text(read.path) != read.text:
+        message = f"{read.path} was changed while it was being read; run the command again."
+        raise CampaignError(message)
+    named = {name: fingerprint(path) for name, path in input_files(read).items()}
+    return {read.path.name: own, **named}

@@ -36,7 +36,7 @@ class Plan:
         Empty while DRAFT.
     issued_on : date or None
     inputs : mapping of str to str
-        SHA-256 of every input file, by the name written in the campaign file.
+        SHA-256 of the campaign file and of every file that it names, by the name written there.
     fieldplan_version : str
     """
 
