@@ -194,7 +194,8 @@ the duplicates by location_id, then of the blanks:
   S = STREAM(seed, design, "", "id of " role " " location_id); for a blank its kind
   and number stand for role and location.
   F = 100, times 10 until 9 F >= 10 T; number = F + BELOW(9 F), again until it is free.
-  The id is prefix "-" number, with its check digit of ISO/IEC 7064 MOD 11,10.
+  check   = the check digit of ISO/IEC 7064 MOD 11,10 of revision number, read as one
+            row of digits; the id is prefix revision "-" number check.
 """
 
 

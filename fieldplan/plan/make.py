@@ -71,7 +71,7 @@ def make_plan(
         spread=spread,
         size=how_many,
         locations=locations,
-        samples=assign(campaign, locations, how_many),
+        samples=assign(campaign, locations, how_many, revision=revision),
         cautions=cautions(campaign, on=made_on),
         revision=revision,
         made_on=made_on,

@@ -8,6 +8,7 @@ from fieldplan.base.draws import Stream
 from fieldplan.base.errors import DesignError
 from fieldplan.campaign.model import Campaign, FrameTable
 from fieldplan.design.model import Location, Locations
+from fieldplan.samples.ids import sample_id
 from fieldplan.samples.model import Sample, Samples
 from fieldplan.sizing.model import Size
 
@@ -16,7 +17,7 @@ FIELD_DUPLICATE = "field duplicate"
 NOT_ANALYSED = "temperature blank"
 
 
-def assign(campaign: Campaign, locations: Locations, size: Size) -> Samples:
+def assign(campaign: Campaign, locations: Locations, size: Size, *, revision: int = 1) -> Samples:
     """Give every location its sample, and place the control samples that were counted apart.
 
     Parameters
@@ -27,6 +28,9 @@ def assign(campaign: Campaign, locations: Locations, size: Size) -> Samples:
         Alternates and targeted places get samples too, so that bottles are ready.
     size : Size
         Its ``qc`` counts.
+    revision : int
+        Of the plan. It stands in every id, so that a jar labelled under one revision is never
+        taken for a jar of another.
 
     Returns
     -------
@@ -42,14 +46,14 @@ def assign(campaign: Campaign, locations: Locations, size: Size) -> Samples:
     -----
     A duplicate's id is drawn like any other, so nothing in it gives the pair away; its last digit
     is a check digit. Ids and the locations of duplicates depend on the seed and on the location's
-    own id; one that joins the plan leaves the others as they were, unless two draw one number.
+    own id; one that joins a draft leaves the others as they were, unless two draw one number.
     """
     wanted: Counter[str] = Counter()
     for control in size.qc:
         wanted[control.kind] += control.count
     duplicated = _duplicated(campaign, locations, wanted.pop(FIELD_DUPLICATE, 0))
     total = len(locations.places) + len(duplicated) + sum(wanted.values())
-    serials = _Serials(campaign, total)
+    serials = _Serials(campaign, revision, total)
     first = {p.location_id: serials.next_for(p.location_id, FIELD_SAMPLE) for p in locations.places}
     second = {name: serials.next_for(name, FIELD_DUPLICATE) for name in sorted(duplicated)}
     blanks = [
@@ -58,7 +62,7 @@ def assign(campaign: Campaign, locations: Locations, size: Size) -> Samples:
         for number in range(1, count + 1)
     ]
     samples = tuple(_in_crew_order(campaign, locations.places, first, second))
-    samples += tuple(_blank(campaign, kind, sample_id) for kind, sample_id in blanks)
+    samples += tuple(_blank(campaign, kind, name) for kind, name in blanks)
     return Samples(samples, tuple(_notes(duplicated, blanks)))
 
 
@@ -67,6 +71,7 @@ class _Serials:
     """Numbers without a leading zero, drawn for each sample until one is free."""
 
     campaign: Campaign
+    revision: int
     total: int
     _taken: set[int] = field(default_factory=set)
 
@@ -79,25 +84,7 @@ class _Serials:
         while number in self._taken:
             number = first + stream.below(9 * first)
         self._taken.add(number)
-        return f"{self.campaign.prefix}-{number}{check_digit(str(number))}"
-
-
-def check_digit(digits: str) -> int:
-    """Give the digit that makes one wrong digit show itself.
-
-    Notes
-    -----
-    ISO/IEC 7064, MOD 11,10: with it no two ids differ in one digit only.
-
-    Examples
-    --------
-    >>> check_digit("0794")
-    5
-    """
-    product = 10
-    for digit in digits:
-        product = ((product + int(digit)) % 10 or 10) * 2 % 11
-    return (11 - product) % 10
+        return sample_id(self.campaign.prefix, self.revision, number)
 
 
 def _stream(campaign: Campaign, purpose: str) -> Stream:
@@ -153,9 +140,9 @@ def _frame_table(campaign: Campaign) -> FrameTable:
     return next((f for f in campaign.frame if f.id == wanted), campaign.frame[0])
 
 
-def _blank(campaign: Campaign, kind: str, sample_id: str) -> Sample:
+def _blank(campaign: Campaign, kind: str, name: str) -> Sample:
     analytes = () if kind == NOT_ANALYSED else tuple(a.id for a in campaign.analyte)
-    return Sample(sample_id, "", kind, "", analytes)
+    return Sample(name, "", kind, "", analytes)
 
 
 def _notes(duplicated: frozenset[str], blanks: Sequence[tuple[str, str]]) -> Iterable[str]:

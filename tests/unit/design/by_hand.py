@@ -168,9 +168,10 @@ def check_digit(digits: str) -> str:
 
 
 def sample_ids(
-    seed: int, design: str, prefix: str, wanted: list[str], total: int
+    seed: int, design: str, opening: str, wanted: list[str], total: int
 ) -> dict[str, str]:
-    """Give an id to each "role location" in turn."""
+    """Give an id to each "role location" in turn; an id opens with prefix and revision."""
+    revision = opening.lstrip("ABCDEFGHIJKLMNOPQRSTUVWXYZ")
     first = 100
     while 9 * first < 10 * total:
         first *= 10
@@ -182,5 +183,5 @@ def sample_ids(
         while number in taken:
             number = first + numbers.below(9 * first)
         taken.add(number)
-        given[name] = f"{prefix}-{number}{check_digit(str(number))}"
+        given[name] = f"{opening}-{number}{check_digit(f'{revision}{number}')}"
     return given

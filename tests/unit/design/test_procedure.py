@@ -114,7 +114,8 @@ def test_list_order_followed_by_hand_is_the_order_issued() -> None:
     assert [p.location_id for p in locations.places] == by_hand.units((SEED, "main", "site"), wells)
 
 
-def test_sample_ids_followed_by_hand_are_the_ids_issued() -> None:
+@pytest.mark.parametrize("revision", [1, 3, 12])
+def test_sample_ids_followed_by_hand_are_the_ids_issued(revision: int) -> None:
     """Blind ids can be made again from the seed, so a lost key is no loss."""
     from fieldplan.samples import assign
 
@@ -122,11 +123,11 @@ def test_sample_ids_followed_by_hand_are_the_ids_issued() -> None:
     qc = (QualityControlCount("field duplicate", 2, ""), QualityControlCount("field blank", 1, ""))
     size = make_size()
     object.__setattr__(size, "qc", qc)
-    samples = assign(campaign, locations, size).samples
+    samples = assign(campaign, locations, size, revision=revision).samples
     doubled = sorted(s.location_id for s in samples if s.role == "field duplicate")
     wanted = [f"field sample {p.location_id}" for p in locations.places]
     wanted += [f"field duplicate {name}" for name in doubled] + ["field blank 1"]
-    by_name = by_hand.sample_ids(SEED, "main", "QF", wanted, len(wanted))
+    by_name = by_hand.sample_ids(SEED, "main", f"QF{revision}", wanted, len(wanted))
     names = [f"{s.role} {s.location_id}" if s.location_id else f"{s.role} 1" for s in samples]
     assert {name: s.sample_id for name, s in zip(names, samples, strict=True)} == by_name
 

@@ -12,7 +12,7 @@ from fieldplan.base.errors import DesignError
 from fieldplan.campaign.model import Draw
 from fieldplan.design.model import Locations
 from fieldplan.samples import assign
-from fieldplan.samples.assign import check_digit
+from fieldplan.samples.ids import check_digit, revision_of
 from fieldplan.samples.model import Samples
 from fieldplan.sizing.model import QualityControlCount, Size
 from tests.factories import make_campaign, make_locations, make_size
@@ -27,10 +27,12 @@ def size_with(**counts: int) -> Size:
     return dataclasses.replace(make_size(), qc=qc)
 
 
-def assigned(seed: int = 1, locations: Locations | None = None, **counts: int) -> Samples:
+def assigned(
+    seed: int = 1, locations: Locations | None = None, *, revision: int = 1, **counts: int
+) -> Samples:
     """Assign samples to the nine random places, four alternates and the tank."""
     campaign = make_campaign(draw=Draw(seed=seed))
-    return assign(campaign, locations or PLACES, size_with(**counts))
+    return assign(campaign, locations or PLACES, size_with(**counts), revision=revision)
 
 
 def test_every_place_gets_one_sample_in_the_order_of_the_list() -> None:
@@ -89,7 +91,7 @@ def test_nothing_in_an_id_gives_a_duplicate_away() -> None:
     above, seeds = 0, 600
     for seed in range(seeds):
         samples = assigned(seed, duplicates=1, blanks=1).samples
-        assert all(re.fullmatch(r"QF-[1-9]\d{3}", s.sample_id) for s in samples)
+        assert all(re.fullmatch(r"QF1-[1-9]\d{3}", s.sample_id) for s in samples)
         pair = next(s for s in samples if s.role == "field duplicate")
         above += pair.sample_id > pair.qc_of
     assert abs(above - seeds / 2) < 4 * math.sqrt(seeds / 4)
@@ -121,11 +123,50 @@ def test_check_digits_show_every_single_wrong_digit() -> None:
 
 
 def test_ids_stay_when_locations_join_the_plan() -> None:
-    """Bottles labelled before a revision must still be right after it."""
+    """Bottles labelled from a draft must still be right when it grows before its issue."""
     fewer = dataclasses.replace(PLACES, places=PLACES.places[:7])
     before = {s.location_id: s.sample_id for s in assigned(locations=fewer).samples}
     after = {s.location_id: s.sample_id for s in assigned().samples}
     assert before.items() <= after.items()
+
+
+def test_no_id_is_given_to_another_jar_by_a_later_revision() -> None:
+    """A jar labelled under r02 must not count as the place that holds its number in r03."""
+    fewer = dataclasses.replace(PLACES, places=PLACES.places[:7])
+    grown = [fewer, PLACES, PLACES]
+    names: set[str] = set()
+    for seed in range(40):
+        for revision, locations in enumerate(grown, start=1):
+            samples = assigned(seed, locations, revision=revision, duplicates=3, blanks=2).samples
+            ids = {s.sample_id for s in samples}
+            assert {revision_of(name, "QF") for name in ids} == {revision}
+            assert names.isdisjoint(ids)
+            names |= ids
+        names.clear()
+
+
+def test_one_wrong_digit_makes_no_id_of_another_revision() -> None:
+    """Else a slip in the revision would send a jar to a plan that never held it."""
+    for sample in assigned(duplicates=2, blanks=1).samples:
+        name = sample.sample_id
+        for at in [k for k, letter in enumerate(name) if letter.isdigit()]:
+            wrong = [name[:at] + digit + name[at + 1 :] for digit in "0123456789"]
+            assert {revision_of(other, "QF") for other in wrong if other != name} == {None}
+
+
+def test_the_revision_of_an_id_is_read_as_laboratories_write_it() -> None:
+    """Case, dash and zeros go astray; another plan's ids and ids of old packets are not ours."""
+    name = assigned(revision=12).samples[0].sample_id
+    opening, number = name.split("-")
+    for written in (
+        name.lower(),
+        f"{opening} {number}",
+        f" {opening}_0{number} ",
+        f"QF012-{number}",
+    ):
+        assert revision_of(written, "QF") == 12
+    for written in (number, f"QF-{number}", name.replace("QF", "HL"), f"{opening}{number}", ""):
+        assert revision_of(written, "QF") is None
 
 
 def test_blanks_belong_to_no_location_and_come_last() -> None:
@@ -153,5 +194,5 @@ def test_a_large_campaign_gets_longer_ids() -> None:
     place = PLACES.places[0]
     places = tuple(dataclasses.replace(place, location_id=f"W-{k}") for k in range(400))
     samples = assigned(locations=dataclasses.replace(PLACES, places=places)).samples
-    assert {len(s.sample_id) for s in samples} == {len("QF-12345")}
+    assert {len(s.sample_id) for s in samples} == {len("QF1-12345")}
     assert len({s.sample_id for s in samples}) == 400
