@@ -14,6 +14,8 @@ if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
 MM_PER_INCH = 25.4
+WIDE_MM, NARROW_MM = 165.0, 92.0
+"""Width of a figure on a sheet, and on the screen of a phone."""
 POINTS_PER_MM = 72 / MM_PER_INCH
 
 INK = "#1b1f23"

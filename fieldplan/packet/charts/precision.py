@@ -5,7 +5,17 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from fieldplan.base.document import Figure
-from fieldplan.packet.drawing import BLUE, INK, LINE, SOFT, VERMILION, new_figure, pens, svg_text
+from fieldplan.packet.drawing import (
+    BLUE,
+    INK,
+    LINE,
+    VERMILION,
+    WIDE_MM,
+    new_figure,
+    pens,
+    svg_text,
+    text_width_mm,
+)
 from fieldplan.packet.sheets.wording import number
 from fieldplan.sizing.model import Size
 
@@ -21,7 +31,7 @@ CHOSEN = {
 }
 """What the marked number of results is, by what decided it."""
 
-_PLATE = {"facecolor": "white", "edgecolor": "none", "pad": 0.8}
+_LEFT_MM, _RIGHT_MM, _ROW_POINTS = 18.0, 5.0, 10.0
 
 
 def precision_curve(size: Size) -> Figure:
@@ -57,7 +67,7 @@ def _caption(size: Size) -> str:
     cost = " and cost" if size.curve[0].cost is not None else ""
     return (
         f"{what}{cost} against the number of results. The band shows what happens when "
-        "the true sigma is a quarter smaller or larger than the one used."
+        "the true standard deviation is a quarter smaller or larger than the one used."
     )
 
 
@@ -74,18 +84,25 @@ def _words(size: Size) -> str:
     )
 
 
-def _drawing(size: Size) -> "Canvas":
+def _drawing(size: Size, *, width: float = WIDE_MM) -> "Canvas":
     """Lay out one panel, or two when there is a cost."""
     priced = all(point.cost is not None for point in size.curve)
-    figure = new_figure(165, 98 if priced else 72)
+    height = 101.0 if priced else 75.0
+    figure = new_figure(width, height)
+
+    def panel(bottom: float, top: float, **shared: "Axes") -> "Axes":
+        room = (_LEFT_MM / width, bottom / height, 1 - (_LEFT_MM + _RIGHT_MM) / width)
+        return figure.add_axes((*room, (top - bottom) / height), **shared)
+
     if priced:
-        upper = figure.add_axes((0.11, 0.40, 0.86, 0.56))
-        lower = figure.add_axes((0.11, 0.11, 0.86, 0.21), sharex=upper)
+        upper = panel(39, height - 9)
+        lower = panel(11, 31.5, sharex=upper)
         _cost(lower, size)
         upper.tick_params(labelbottom=False)
     else:
-        upper = lower = figure.add_axes((0.11, 0.16, 0.86, 0.78))
+        upper = lower = panel(11, height - 9)
     _precision(upper, size)
+    _name_marks(upper, size, width=width - _LEFT_MM - _RIGHT_MM)
     lower.set_xlabel("number of results, n")
     return figure
 
@@ -108,10 +125,6 @@ def _precision(axes: "Axes", size: Size) -> None:
     axes.plot(n, error, color=BLUE, marker="o", markersize=3)
     axes.plot(n, high, color=BLUE, linewidth=0.7, linestyle=(0, (4, 2)))
     axes.plot(n, low, color=BLUE, linewidth=0.7, linestyle=(0, (4, 2)))
-    axes.annotate(
-        "band: sigma 25 % smaller or larger", (0.012, 0.04), xycoords="axes fraction",
-        va="bottom", color=SOFT, fontsize=7.5, bbox=_PLATE,
-    )  # fmt: skip
     axes.set_ylabel(f"{name}\n({size.unit})")
     axes.set_ylim(0, max(float(high.max()), target or 0.0) * 1.15)
     axes.set_xlim(n.min() - 0.5, n.max() + 0.5)
@@ -125,21 +138,43 @@ def _precision(axes: "Axes", size: Size) -> None:
     _mark(axes, size)
 
 
-def _mark(axes: "Axes", size: Size, *, words: bool = True) -> None:
-    """Mark the n that was chosen, and the plain n where it is another."""
-    marks = [(size.needed, "-", f"n = {size.needed} {CHOSEN[size.number_from]}", 0)]
+def _marked(size: Size) -> list[tuple[int, str, str]]:
+    """List the n to mark, smaller first: the number, its line, its words."""
+    marks = [(size.needed, "-", f"{size.needed} needed")]
     if size.plain_n != size.needed:
-        marks.append((size.plain_n, ":", f"n = {size.plain_n} with sigma at face value", 9))
-    for n, style, text, drop in marks:
-        if not size.curve[0].n <= n <= size.curve[-1].n:
-            continue
+        marks.append((size.plain_n, ":", f"{size.plain_n} by the plain formula"))
+    return sorted(mark for mark in marks if size.curve[0].n <= mark[0] <= size.curve[-1].n)
+
+
+def _mark(axes: "Axes", size: Size) -> None:
+    """Mark the n that was chosen, and the plain n where it is another."""
+    for n, style, _ in _marked(size):
         axes.axvline(n, color=INK, linewidth=0.9, linestyle=style)
-        late = n > (size.curve[0].n + size.curve[-1].n) / 2
-        if words:
-            axes.annotate(
-                text, (n, 1.0), (-3 if late else 3, -1 - drop), xycoords=("data", "axes fraction"),
-                textcoords="offset points", ha="right" if late else "left", va="top", bbox=_PLATE,
-            )  # fmt: skip
+
+
+def _name_marks(axes: "Axes", size: Size, *, width: float) -> None:
+    """Name the marks above the frame, each away from the other so that no line is crossed.
+
+    A name without room on its side goes to the other side, a row higher, its line with it.
+    """
+    marks = _marked(size)
+    low, high = axes.get_xlim()
+    for place, (n, style, words) in enumerate(marks):
+        at, wide = (n - low) / (high - low) * width, text_width_mm(words, 8.0) + 1.5
+        left = place == 0 and len(marks) == 2
+        fits = wide <= at + _LEFT_MM if left else wide <= width - at + _RIGHT_MM
+        raised = 0.0 if fits else _ROW_POINTS
+        axes.annotate(
+            words, (n, 1.0), (-3 if left == fits else 3, 2 + raised), ha="right" if left == fits
+            else "left", xycoords=("data", "axes fraction"), textcoords="offset points",
+            va="bottom",
+        )  # fmt: skip
+        axes.annotate(
+            "", (n, 1.0), (0, 9 + raised), xycoords=("data", "axes fraction"),
+            textcoords="offset points",
+            arrowprops={"arrowstyle": "-", "linestyle": style, "linewidth": 0.9, "shrinkA": 0,
+                        "shrinkB": 0, "color": INK},
+        )  # fmt: skip
 
 
 def _cost(axes: "Axes", size: Size) -> None:
@@ -157,4 +192,4 @@ def _cost(axes: "Axes", size: Size) -> None:
     axes.locator_params(axis="y", nbins=4)
     axes.ticklabel_format(style="plain", useOffset=False)
     axes.grid(axis="y", color=LINE, alpha=0.35, linewidth=0.4)
-    _mark(axes, size, words=False)
+    _mark(axes, size)

@@ -15,7 +15,7 @@ from fieldplan.packet.charts import interval_figure, pilot_dots, precision_curve
 from fieldplan.packet.charts import pilot as pilot_module
 from fieldplan.packet.charts import precision as precision_module
 from fieldplan.packet.charts.pilot import stacked_levels
-from fieldplan.packet.drawing import pens
+from fieldplan.packet.drawing import NARROW_MM, WIDE_MM, pens
 from tests.factories import make_estimate, make_plan, make_size, make_spread
 from tests.unit.packet.maps.sites import make_area_plan, make_list_plan, make_outline
 
@@ -88,8 +88,42 @@ def test_the_curve_shows_the_points_the_band_the_target_and_the_chosen_n() -> No
     assert [[p.n, p.cost] for p in size.curve] in [x.get_xydata().tolist() for x in lower.lines]
     words = words_of(figure)
     assert "target 9 mg/kg" in words
-    assert "n = 11 needed" in words
-    assert "n = 7 with sigma at face value" in words
+    assert "11 needed" in words
+    assert "7 by the plain formula" in words
+
+
+@pytest.mark.parametrize("width", [WIDE_MM, NARROW_MM])
+@pytest.mark.parametrize(
+    ("plain", "needed"),
+    [(7, 8), (6, 29), (16, 29), (13, 15), (28, 29), (30, 30), (55, 59), (20, 16), (5, 60)],
+)
+def test_names_of_marks_cross_no_line_and_leave_no_page(
+    plain: int, needed: int, width: float
+) -> None:
+    """Measured on the drawing: a name across the other's line is read as the other's."""
+    point = make_size().curve[0]
+    curve = tuple(replace(point, n=n, standard_error=60 / n) for n in range(5, 61))
+    size = replace(make_size(), curve=curve, plain_n=plain, needed=needed)
+    with pens():
+        figure = precision_module._drawing(size, width=width)
+        axes = figure.axes[0]
+        renderer = figure.canvas.get_renderer()
+        named = [
+            text for text in axes.texts if text.get_text().startswith((f"{plain} ", f"{needed} "))
+        ]
+        boxes = [text.get_window_extent(renderer) for text in named]
+        lines = [
+            text.arrow_patch.get_window_extent(renderer) for text in axes.texts if text.arrow_patch
+        ]
+    assert len(named) == len(lines) == len({plain, needed})
+    for box in boxes:
+        assert box.x0 >= 0
+        assert box.x1 <= figure.bbox.width
+        assert box.y0 >= axes.bbox.y1
+        assert not any(
+            line.x0 > box.x0 and line.x1 < box.x1 and line.y1 > box.y0 + 1 for line in lines
+        )
+    assert len(boxes) == 1 or not boxes[0].overlaps(boxes[1])
 
 
 def test_a_target_half_width_is_drawn_as_half_width() -> None:
