@@ -3,8 +3,10 @@
 from collections.abc import Mapping
 
 from fieldplan.base.errors import DesignError, LabError
+from fieldplan.base.working import Step
 from fieldplan.campaign.model import Rules
 from fieldplan.estimate.coverage import coverage_sentence
+from fieldplan.estimate.coverage_steps import coverage_steps
 from fieldplan.estimate.difference import difference_sentences
 from fieldplan.estimate.level import level_sentence
 from fieldplan.estimate.means import Means, means_by
@@ -88,7 +90,7 @@ def estimate(
         level_sentence=level,
         population_sentence=population,
         coverage_sentence=coverage_sentence(plan, means),
-        steps=working(means, planned.unit),
+        steps=(*working(means, planned.unit), *_coverage_steps(plan, means, planned.unit)),
         changes=changes,
         returns=basis,
         rejected_sentence=rejected,
@@ -103,6 +105,12 @@ def estimate(
             standing=standing,
         ),
     )
+
+
+def _coverage_steps(plan: Plan, means: Means, unit: str) -> list[Step]:
+    """Show where the coverage comes from; a census has none."""
+    census = plan.campaign.design[0].layout == "census"
+    return [] if census else coverage_steps(means, unit)
 
 
 def _refuse_undecided(returns: Returns) -> None:

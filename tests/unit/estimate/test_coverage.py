@@ -177,3 +177,38 @@ def test_a_stratum_that_borrows_adds_variance_and_no_lean() -> None:
     third, second = 0.6**3 * 2 / 9, 0.36 * 2 / 3 + 0.16 * 3
     assert n == 3
     assert skewness / math.sqrt(n) == pytest.approx(third / second**1.5, rel=1e-12)
+
+
+def test_the_share_of_page_one_follows_from_the_printed_steps() -> None:
+    """A stranger gets G from W, n, m2 and m3, n* from df, and the share from the table."""
+    plan = strata_plan({"a": 0.6, "b": 0.4}, {"a": 5.0, "b": 9.0}, {"a": 5, "b": 4})
+    values = {"a": (3.0, 4.0, 4.5, 6.0, 19.0), "b": (20.0, 22.0, 30.0, 71.0)}
+    results = [
+        result(f"{name}{n}", v, stratum=name)
+        for name, vs in values.items()
+        for n, v in enumerate(vs)
+    ]
+    answer = estimate(plan, returned(results))
+    steps = {step.symbol: step for step in answer.steps}
+    inputs = {q.symbol: q.value for q in steps["G"].inputs}
+    for name, numbers in values.items():
+        assert inputs[f"m2 {name}"] == pytest.approx(stats.moment(numbers, 2), rel=1e-12)
+        assert inputs[f"m3 {name}"] == pytest.approx(stats.moment(numbers, 3), rel=1e-12)
+    third = sum(inputs[f"W {k}"] ** 3 * inputs[f"m3 {k}"] / inputs[f"n {k}"] ** 2 for k in "ab")
+    second = sum(inputs[f"W {k}"] ** 2 * inputs[f"m2 {k}"] / inputs[f"n {k}"] for k in "ab")
+    lean = inputs["n*"] ** 0.5 * third / second**1.5
+    assert steps["G"].unrounded == pytest.approx(lean, rel=1e-12)
+    assert inputs["n*"] == steps["n*"].rounded == round(steps["df"].unrounded + 1)
+    share = t_coverage(int(inputs["n*"]), lean, confidence=0.95, kind="two-sided")
+    assert steps["held"].unrounded == pytest.approx(share)
+    assert f"in about {100 * share:.0f} % of campaigns" in answer.coverage_sentence
+    assert "make_t_coverage.py" in steps["held"].source
+
+
+def test_one_sample_shows_its_own_skewness() -> None:
+    """scipy.stats.skew gives the same g1."""
+    plan = strata_plan({"site": 1.0}, {"site": 3.0}, {"site": 8})
+    returns = returned([result(f"site-{n}", v) for n, v in enumerate(WELLS, start=1)])
+    steps = {step.symbol: step for step in estimate(plan, returns).steps}
+    assert steps["G"].unrounded == pytest.approx(stats.skew(WELLS), rel=1e-9)
+    assert [q.symbol for q in steps["held"].inputs] == ["n", "G"]
