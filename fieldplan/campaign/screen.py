@@ -7,6 +7,7 @@ from typing import Any
 
 from pydantic import BaseModel
 
+from fieldplan.base.bounds import magnitude_fault, share_fault
 from fieldplan.campaign.later import MANY, later_key
 from fieldplan.campaign.lines import KeyPath
 from fieldplan.campaign.model import FILL_IN, Campaign
@@ -122,11 +123,15 @@ def _value(value: Any, shape: Shape, path: KeyPath, found: Screened) -> Any:
 
 def _finite(value: Any) -> Any:
     """Keep out of JSON what it cannot hold; it is already reported."""
-    return None if _not_finite(value) or _too_large(value) else value
+    return None if _not_finite(value) or _too_large(value) or _beyond(value) else value
 
 
 def _not_finite(value: object) -> bool:
     return isinstance(value, float) and not math.isfinite(value)
+
+
+def _beyond(value: object) -> bool:
+    return isinstance(value, float) and bool(magnitude_fault(value))
 
 
 def _too_large(value: object) -> bool:
@@ -167,6 +172,8 @@ def _scalar_problem(value: Any, shape: Shape, path: KeyPath) -> str | None:
         return f"not a finite number (got {value}). Write a number."
     if _too_large(value):
         return "a whole number of 2^63 or more. Write a smaller one."
+    if isinstance(value, int | float) and path[-1] != "seed":
+        return _size_problem(float(value), path)
     if isinstance(value, datetime | time):
         return f"a time of day (got {value}). Write the date alone, such as 2026-11-02."
     if isinstance(value, date) and shape.kind != "date":
@@ -174,6 +181,19 @@ def _scalar_problem(value: Any, shape: Shape, path: KeyPath) -> str | None:
     if isinstance(value, str):
         return _text_problem(value, shape, path)
     return None
+
+
+_SHARES = frozenset({"assurance", "confidence", "share", "by_stratum"})
+
+
+def _size_problem(value: float, path: KeyPath) -> str | None:
+    """Say what is wrong with a number that would break the arithmetic."""
+    what = meaning(table_name(path[:-1]), str(path[-1]))
+    fault = magnitude_fault(value)
+    if fault:
+        return f"{what}; {fault} (got {value:g}). Check it and its unit."
+    near = share_fault(value) if _SHARES.intersection(path) else ""
+    return f"{what}; {near} (got {value}). Take a smaller share." if near else None
 
 
 def _text_problem(value: str, shape: Shape, path: KeyPath) -> str | None:

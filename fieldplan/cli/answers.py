@@ -5,6 +5,7 @@ from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Literal
 
+from fieldplan.base.bounds import magnitude_fault
 from fieldplan.base.errors import CampaignError
 from fieldplan.campaign.inputs import file_fault, file_part
 from fieldplan.campaign.new import Answers, TargetKind
@@ -52,7 +53,7 @@ def read_number(text: str, *, what: str = "a number above 0") -> float:
     Raises
     ------
     CampaignError
-        No number, a decimal comma, or not above 0.
+        No number, a decimal comma, not above 0, or beyond what can be reckoned with.
 
     Examples
     --------
@@ -68,6 +69,10 @@ def read_number(text: str, *, what: str = "a number above 0") -> float:
         raise CampaignError(message) from fault
     if not 0 < value < float("inf"):
         message = f"{what} is accepted (got '{plain}'). Write it without sign."
+        raise CampaignError(message)
+    beyond = magnitude_fault(value)
+    if beyond:
+        message = f"{plain} is {beyond}. Check it and its unit."
         raise CampaignError(message)
     return value
 

@@ -7,6 +7,8 @@ from typing import TYPE_CHECKING, Any, TypeVar
 
 import click
 
+from fieldplan.base.bounds import magnitude_fault, share_fault
+
 if TYPE_CHECKING:
     from fieldplan.sizing.question import Part, Question, TargetKind
 
@@ -44,13 +46,30 @@ def number(text: str, name: str) -> float:
     except ValueError:
         value = math.nan
     if math.isfinite(value):
-        return value
+        return _of_bearable_size(value, text, name)
     whole, comma, digits = text.partition(",")
     if comma and whole.strip().lstrip("-").isdigit() and digits.strip().isdigit():
         message = f"{name} {text!r} has a decimal comma; write {whole}.{digits}."
     else:
         message = f"{name} {text!r} is no number; write one such as 27.57."
     raise BadOption(message)
+
+
+def _refuse_near_one(value: float, text: str, name: str) -> None:
+    """Refuse a share whose complement is lost in rounding."""
+    fault = share_fault(value)
+    if fault:
+        message = f"{name} {text} is {fault}; take a smaller share."
+        raise BadOption(message)
+
+
+def _of_bearable_size(value: float, text: str, name: str) -> float:
+    """Refuse a number whose square or ratio would leave what a computer can hold."""
+    fault = magnitude_fault(value)
+    if fault:
+        message = f"{name} {text} is {fault}; check it and its unit."
+        raise BadOption(message)
+    return value
 
 
 Callback = Callable[[click.Context, click.Parameter, str | None], Any]
@@ -63,6 +82,8 @@ def _number_between(above: float, below: float = math.inf, hint: str = "") -> Ca
         if text is None:
             return None
         value = number(text, option.opts[0])
+        if below == 1:
+            _refuse_near_one(value, text, option.opts[0])
         if above < value < below:
             return value
         bounds = f"above {above:g}" + (f" and below {below:g}" if math.isfinite(below) else "")
@@ -90,6 +111,7 @@ def _assurance(_context: click.Context, option: click.Parameter, text: str | Non
     if text is None or text.strip().lower() == "plain":
         return None
     value = number(text, option.opts[0])
+    _refuse_near_one(value, text, option.opts[0])
     if 0.5 <= value < 1:
         return value
     message = (

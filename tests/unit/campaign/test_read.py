@@ -261,6 +261,29 @@ VALUES = [
         "20: objective.standard_error: not a finite number (got inf). Write a number.",
     ),
     (
+        ("6.0", "1e200"),
+        "20: objective.standard_error: the largest standard error of the mean, in the analyte's "
+        "unit; beyond what can be reckoned with, 1e-12 to 1e12 (got 1e+200). Check it and its "
+        "unit.",
+    ),
+    (
+        ("6.0", "1e-201"),
+        "20: objective.standard_error: the largest standard error of the mean, in the analyte's "
+        "unit; beyond what can be reckoned with, 1e-12 to 1e12 (got 1e-201). Check it and its "
+        "unit.",
+    ),
+    (
+        ("0.80", "0.9999999999999999"),
+        "21: objective.assurance: how sure it shall be that n is enough, though sigma is an "
+        "estimate; nearer to 1 than can be reckoned with, 0.999999 (got 0.9999999999999999). "
+        "Take a smaller share.",
+    ),
+    (
+        ("[draw]", "[loss]\nby_stratum = {west = 0.99999999999}\n[draw]"),
+        "28: loss.by_stratum.west: west; nearer to 1 than can be reckoned with, 0.999999 (got "
+        "0.99999999999). Take a smaller share.",
+    ),
+    (
         ("seed = 12", f"seed = {2**63}"),
         "28: draw.seed: a whole number of 2^63 or more. Write a smaller one.",
     ),

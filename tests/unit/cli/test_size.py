@@ -2,6 +2,7 @@
 
 import csv
 import json
+import math
 import subprocess
 import sys
 from pathlib import Path
@@ -9,8 +10,10 @@ from statistics import fmean, stdev
 
 import pytest
 from click.testing import Result
+from hypothesis import given, settings
+from hypothesis import strategies as st
 
-from fieldplan.base.errors import DesignError
+from fieldplan.base.errors import DesignError, FieldplanError
 from fieldplan.cli import entry
 from tests.command_runner import command_runner
 
@@ -282,3 +285,59 @@ def test_bare_numbers_load_no_heavy_library() -> None:
     )
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=False)
     assert done.returncode == 0, done.stderr
+
+
+BEYOND = "is beyond what can be reckoned with, 1e-12 to 1e12; check it and its unit."
+
+
+@pytest.mark.parametrize(
+    ("arguments", "words"),
+    [
+        (
+            ("--sigma", "1e300", "--standard-error", "6", "--pilot-n", "8"),
+            f"--sigma 1e300 {BEYOND}",
+        ),
+        (("--sigma", "3", "--standard-error", "1e300"), f"--standard-error 1e300 {BEYOND}"),
+        (("--sigma", "1e-300", "--standard-error", "6"), f"--sigma 1e-300 {BEYOND}"),
+        (
+            ("--stratum", "0.5,1e-300", "--stratum", "0.5,3", "--standard-error", "1"),
+            f"--stratum '0.5,1e-300': 1e-300 {BEYOND}",
+        ),
+        (
+            ("--sigma", "3", "--half-width", "1", "--confidence", "0.99999999999999999"),
+            "--confidence 0.99999999999999999 is out of bounds; it must be above 0.5 and below 1",
+        ),
+        (
+            ("--sigma", "3", "--half-width", "1", "--confidence", "0.9999999999999999"),
+            "--confidence 0.9999999999999999 is nearer to 1 than can be reckoned with, 0.999999;",
+        ),
+    ],
+)
+def test_numbers_that_would_break_the_arithmetic_are_refused_in_one_line(arguments, words):
+    """The square of 1e300 is no float any more; a sigma of 1e-300 has a standard error of 0."""
+    result = run(*arguments)
+    assert result.exit_code == 2
+    assert words in result.stderr
+    assert result.stdout == ""
+
+
+@given(
+    sigma=st.floats(-12, 12),
+    target=st.floats(-12, 12),
+    kind=st.sampled_from(["--standard-error", "--half-width"]),
+    pilot=st.sampled_from([(), ("--pilot-n", "2"), ("--pilot-n", "8", "--assurance", "0.999999")]),
+    confidence=st.sampled_from(["0.500001", "0.95", "0.999999"]),
+)
+@settings(max_examples=60, deadline=None)
+def test_numbers_within_bounds_are_answered_or_refused_in_words(
+    sigma, target, kind, pilot, confidence
+):
+    """Bounds that let arithmetic break would be no bounds."""
+    typed = ("--sigma", f"{10**sigma!r}", kind, f"{10**target!r}", "--confidence", confidence)
+    result = run(*typed, *pilot, "--json")
+    if result.exit_code == 0:
+        assert math.isfinite(json.loads(result.stdout)["standard_error"])
+        assert json.loads(result.stdout)["standard_error"] > 0
+    else:
+        assert isinstance(result.exception, FieldplanError | SystemExit)
+        assert "10000000 results" in str(result.exception) + result.stderr
