@@ -7,6 +7,7 @@ from decimal import Decimal
 from typing import NoReturn
 
 from fieldplan.base.errors import LabError
+from fieldplan.lab.qualifiers import read_qualifier
 
 SMALLEST, LARGEST = Decimal("1e-30"), Decimal("1e30")
 _NUMBER = re.compile(r"\+?(?:[0-9]{1,40}(?:\.[0-9]{0,40})?|\.[0-9]{1,40})(?:[eE][+-]?[0-9]{1,3})?")
@@ -15,17 +16,7 @@ _CELL = re.compile(
 )
 _THOUSANDS = re.compile(r"\+?[1-9][0-9]{0,2}(?:,[0-9]{3})+(?:\.[0-9]+)?")
 _DECIMAL_COMMA = re.compile(r"\+?(?:[0-9]+,[0-9]+)(?:[eE][+-]?[0-9]+)?")
-_NOT_DETECTED = {
-    "nd", "n.d.", "n.d", "n/d", "not detected", "none detected", "non-detect", "bdl", "bql", "brl",
-    "u", "uj", "<", "<dl", "<rl", "<lod", "<loq", "<mdl", "<lor", "below detection limit",
-    "below reporting limit", "present below quantification limit",
-}  # fmt: skip
 _BLANK = {"", "-", "--", "---", "–", "—", "na", "n/a", "n.a.", "null", "none", "nil", "."}
-_QUALIFIERS = {
-    "u", "uj", "j", "j+", "j-", "jb", "bj", "b", "d", "e", "h", "n", "nj", "jn", "q", "k", "l",
-    "r", "*", "^", "jd", "dj", "nd",
-}  # fmt: skip
-_CENSORING = {"u", "uj", "nd", "bdl"}
 
 
 @dataclass(frozen=True)
@@ -99,7 +90,7 @@ def read_cell(text: str, *, decimal_comma: bool = False) -> Reading:
     lower = plain.casefold()
     if lower in _BLANK:
         _refuse("is no result", "Type ND with a reporting_limit, or leave the row out")
-    if lower.replace("< ", "<") in _NOT_DETECTED:
+    if not any(c.isdigit() for c in lower) and _says_not_detected(lower):
         return Reading(None, None, False, plain if lower in {"u", "uj"} else "")
     plain = _without_comma(plain, decimal_comma)
     match = _CELL.fullmatch(plain)
@@ -133,9 +124,8 @@ def _without_comma(plain: str, decimal_comma: bool) -> str:
 def _from_match(match: re.Match[str]) -> Reading:
     number = Decimal(match["number"])
     letters = (match["letters"] or "").strip(" ,/")
-    marks = qualifier_marks(letters)
-    unknown = [mark for mark in marks if mark not in _QUALIFIERS]
-    if unknown:
+    qualifier = read_qualifier(letters)
+    if qualifier.unknown:
         _refuse(
             f"has {letters!r} beside the number",
             "Put a unit into 'unit' and the laboratory's letters into 'qualifier_lab'",
@@ -147,54 +137,14 @@ def _from_match(match: re.Match[str]) -> Reading:
         )
     if not SMALLEST <= number <= LARGEST:
         _refuse("is outside 1e-30 to 1e30", "Check the exponent")
-    if match["less"] or not _CENSORING.isdisjoint(marks):
+    if match["less"] or qualifier.not_detected:
         return Reading(None, number, False, letters)
     return Reading(number, None, True, letters)
 
 
-def qualifier_marks(letters: str) -> tuple[str, ...]:
-    """Part qualifiers at spaces, commas and slashes, in lower case.
-
-    Parameters
-    ----------
-    letters : str
-
-    Examples
-    --------
-    >>> qualifier_marks("J, B")
-    ('j', 'b')
-    """
-    return tuple(part for part in re.split(r"[ ,/;]+", letters.casefold()) if part)
-
-
-def says_not_detected(letters: str) -> bool:
-    """Whether a laboratory qualifier means "not detected at the stated limit".
-
-    Parameters
-    ----------
-    letters : str
-
-    Examples
-    --------
-    >>> says_not_detected("UJ"), says_not_detected("J")
-    (True, False)
-    """
-    return not _CENSORING.isdisjoint(qualifier_marks(letters))
-
-
-def says_rejected(letters: str) -> bool:
-    """Whether a laboratory qualifier means that the result must not be used.
-
-    Parameters
-    ----------
-    letters : str
-
-    Examples
-    --------
-    >>> says_rejected("R"), says_rejected("J")
-    (True, False)
-    """
-    return "r" in qualifier_marks(letters) or "rejected" in qualifier_marks(letters)
+def _says_not_detected(words: str) -> bool:
+    qualifier = read_qualifier(words)
+    return qualifier.not_detected and not (qualifier.unknown or qualifier.above)
 
 
 def letters_beside(text: str) -> str:

@@ -44,7 +44,8 @@ def read_lab(
     Notes
     -----
     A limit written in the cell wins over the column ``reporting_limit``. Rows with the
-    qualifier R are left out and noted; other qualifiers are kept and change nothing.
+    qualifier R are left out and noted; flags are kept and change nothing, and those that are not
+    known here are noted or, where they may speak of limits, refused.
     """
     table, found, notes = _choose_sheet(path, columns)
     analytes = {tidy(name).casefold(): a for a in campaign.analyte for name in _names(a)}
@@ -171,6 +172,12 @@ def _notes(
         lines.append(
             f"{name}: the limit written in the cell is not the 'reporting_limit' of its row and "
             f"was used: row {rows}."
+        )
+    for mark, numbers in memory.unknown_qualifiers.items():
+        rows = listed([str(number) for number in numbers])
+        lines.append(
+            f"{name}: the qualifier '{mark[:40]}' is not known here and changed nothing: row "
+            f"{rows}. Where it says more, type U (not detected) or R (rejected) instead."
         )
     if memory.converted:
         lines.append(f"{name}: converted from {listed(sorted(memory.converted))}.")

@@ -9,9 +9,9 @@ from typing import NoReturn, TypeVar
 
 from fieldplan.base.errors import LabError
 from fieldplan.campaign.model import Analyte
-from fieldplan.lab.cells import Reading, letters_beside, read_cell, says_not_detected, tidy
-from fieldplan.lab.cells import says_rejected as rejected_by
+from fieldplan.lab.cells import Reading, letters_beside, read_cell, tidy
 from fieldplan.lab.model import OTHER_ANALYTE, REJECTED, LabRow, LeftOutRow
+from fieldplan.lab.qualifiers import read_qualifier
 from fieldplan.lab.roles import plain_role
 from fieldplan.lab.tables import TextTable
 from fieldplan.lab.units import AMBIGUOUS, conversion_factor, plain_basis, plain_unit, split_basis
@@ -62,6 +62,7 @@ class FileMemory:
     rejected: list[LabRow] = field(default_factory=list)
     left_out: list[LeftOutRow] = field(default_factory=list)
     limits_differ: list[int] = field(default_factory=list)
+    unknown_qualifiers: dict[str, list[int]] = field(default_factory=dict)
     converted: set[str] = field(default_factory=set)
     meanings: dict[tuple[str, str], set[str]] = field(default_factory=dict)
 
@@ -121,9 +122,8 @@ def read_row(
         memory.other_analytes[name] = memory.other_analytes.get(name, 0) + 1
         memory.left_out.append(_left_out(row, name, OTHER_ANALYTE))
         return None
-    if rejected_by(row.text("qualifier_lab")) or rejected_by(
-        letters_beside(row.text("as_reported"))
-    ):
+    written = (row.tidy("qualifier_lab"), letters_beside(row.text("as_reported")))
+    if any(read_qualifier(text).rejected for text in written):
         memory.left_out.append(_left_out(row, analyte.id, REJECTED))
         with suppress(LabError):  # a rejected cell need not hold a number
             memory.rejected.append(_checked(row, analyte, FileMemory(), decimal_comma))
@@ -203,7 +203,7 @@ def _value(row: RowCells, analyte: Analyte, memory: FileMemory, decimal_comma: b
     factor = _factor(row, "unit", analyte, memory)
     column_limit = _column_limit(row, analyte, memory, factor, decimal_comma)
     number, limit, detected = reading.number, reading.limit, reading.detected
-    if detected and says_not_detected(row.text("qualifier_lab")):
+    if detected and _column_says_not_detected(row, memory):
         number, limit, detected = None, number, False
     if detected:
         result = _in_range(row, "as_reported", (number or Decimal(0)) * factor)
@@ -220,6 +220,28 @@ def _value(row: RowCells, analyte: Analyte, memory: FileMemory, decimal_comma: b
     if column_limit is not None and not math.isclose(stated, column_limit):
         memory.limits_differ.append(row.number)
     return _Value(None, stated, False, reading.letters)
+
+
+def _column_says_not_detected(row: RowCells, memory: FileMemory) -> bool:
+    """Obey the qualifier beside a number; refuse what may change it in a way not known here."""
+    qualifier = read_qualifier(row.tidy("qualifier_lab"))
+    if qualifier.above:
+        row.refuse(
+            "qualifier_lab",
+            "says that the result is above the number; a mean cannot use it. Ask for a dilution "
+            "and type its result.",
+        )
+    if qualifier.not_detected:
+        return True
+    if qualifier.doubtful:
+        row.refuse(
+            "qualifier_lab",
+            "is not known here and may change what the number means. Type U or < where it is a "
+            "limit, R where it is rejected, J where it is a result; or leave it blank.",
+        )
+    for mark in qualifier.unknown:
+        memory.unknown_qualifiers.setdefault(mark.upper(), []).append(row.number)
+    return False
 
 
 def _reading(row: RowCells, column: str, decimal_comma: bool) -> Reading:
