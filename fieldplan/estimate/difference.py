@@ -182,11 +182,31 @@ def _says(factor: float) -> bool:
 
 
 def _spread_found(mean: MeanEstimate, planned: Planned) -> str:
-    """Name the strata whose s is a tenth or more off what was assumed."""
-    off = [
-        f"{significant(entry.sd)} instead of {significant(planned.sigmas[entry.stratum])}"
+    """Name the strata whose s is a tenth or more off what was assumed, like set against like."""
+    halves = planned.sigmas_at_half
+    assumed = {**planned.sigmas, **halves}
+    off = [entry for entry in mean.strata if entry.n > 1 and _off(entry.sd, assumed[entry.stratum])]
+    if not off:
+        return ""
+    words = [
+        f"{significant(entry.sd)} instead of {significant(assumed[entry.stratum])}"
         + (f" in {entry.stratum}" if len(mean.strata) > 1 else "")
-        for entry in mean.strata
-        if entry.n > 1 and abs(entry.sd / planned.sigmas[entry.stratum] - 1) > 0.1
+        for entry in off
     ]
-    return f"The standard deviation was {listed(off)} ({planned.unit})." if off else ""
+    largest = [
+        f"{significant(planned.sigmas[entry.stratum])}"
+        + (f" in {entry.stratum}" if len(mean.strata) > 1 else "")
+        for entry in off
+        if entry.stratum in halves
+    ]
+    said = f"The standard deviation was {listed(words)} ({planned.unit})"
+    if largest:
+        said += (
+            "; both with non-detects at half, where planning used the largest of the pilot's "
+            f"three, {listed(largest)}"
+        )
+    return f"{said}."
+
+
+def _off(found: float, assumed: float) -> bool:
+    return abs(found / assumed - 1) > 0.1

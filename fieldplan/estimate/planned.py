@@ -1,8 +1,9 @@
 """What the plan promised for one analyte, whether it decided n or not."""
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 
+from fieldplan.lab.model import StratumSpread
 from fieldplan.plan.model import Plan
 from fieldplan.sizing.model import OtherPrecision, Size
 
@@ -35,6 +36,8 @@ class Planned:
         Its own, the deciding one first.
     decides : bool
         The number of locations was chosen for it.
+    sigmas_at_half : mapping of str to float
+        Of a pilot with non-detects at half their limit, where planning used another of the three.
     """
 
     analyte: str
@@ -43,6 +46,7 @@ class Planned:
     sigmas: Mapping[str, float]
     targets: tuple[Target, ...]
     decides: bool
+    sigmas_at_half: Mapping[str, float]
 
 
 def planned_for(plan: Plan, analyte: str) -> Planned:
@@ -72,11 +76,37 @@ def planned_for(plan: Plan, analyte: str) -> Planned:
         size = plan.size
         sigmas = {entry.stratum: entry.sigma for entry in size.strata}
         own = _target(plan, size)
-        return Planned(analyte, unit, size.standard_error, sigmas, (own, *targets), decides=True)
-    known = {entry.stratum: entry.sigma for entry in plan.spread.others if entry.analyte == analyte}
+        return Planned(
+            analyte,
+            unit,
+            size.standard_error,
+            sigmas,
+            (own, *targets),
+            decides=True,
+            sigmas_at_half=_at_half(plan.spread.strata),
+        )
+    spreads = [entry for entry in plan.spread.others if entry.analyte == analyte]
+    known = {entry.stratum: entry.sigma for entry in spreads}
     complete = all(stratum.name in known for stratum in plan.frame.strata)
     error = next((other.standard_error for other in entries), None)
-    return Planned(analyte, unit, error, known if complete else {}, tuple(targets), decides=False)
+    return Planned(
+        analyte,
+        unit,
+        error,
+        known if complete else {},
+        tuple(targets),
+        decides=False,
+        sigmas_at_half=_at_half(spreads),
+    )
+
+
+def _at_half(spreads: Iterable[StratumSpread]) -> dict[str, float]:
+    """Give s at half the limit where another s, the largest of the three, sized the campaign."""
+    return {
+        entry.stratum: entry.sigma_at_half
+        for entry in spreads
+        if entry.sigma_at_half is not None and entry.sigma_at_half != entry.sigma
+    }
 
 
 def _target(plan: Plan, found: Size | OtherPrecision) -> Target:

@@ -5,8 +5,9 @@ from math import isinf
 from fieldplan.base.document import Block, Facts, Heading, Paragraph, Table
 from fieldplan.base.units import significant
 from fieldplan.estimate.model import Change, Estimate
-from fieldplan.estimate.planned import planned_for
+from fieldplan.estimate.planned import Planned, planned_for
 from fieldplan.estimate.sentences import interval_in_words, recorded_answer
+from fieldplan.lab.words import listed
 from fieldplan.plan.model import Plan
 
 
@@ -28,7 +29,8 @@ def stratum_table(plan: Plan, estimate: Estimate) -> Table:
     """Set n, mean, s and weight of every stratum beside what was planned."""
     unit = estimate.unit
     needed = {entry.stratum: entry for entry in plan.size.strata}
-    sigmas = planned_for(plan, estimate.analyte).sigmas
+    planned = planned_for(plan, estimate.analyte)
+    sigmas = planned.sigmas
     columns = (
         "Stratum",
         "Weight",
@@ -53,8 +55,20 @@ def stratum_table(plan: Plan, estimate: Estimate) -> Table:
     return Table(
         columns,
         tuple(rows),
-        caption="Planned counts locations; expected is the standard deviation used for planning",
+        caption="Planned counts locations; expected is the standard deviation used for planning"
+        + _conventions(planned),
         numeric=columns[1:],
+    )
+
+
+def _conventions(planned: Planned) -> str:
+    """Say that the two standard deviations put non-detects at different places, if they do."""
+    if not planned.sigmas_at_half:
+        return ""
+    half = [f"{significant(s)} in {name}" for name, s in planned.sigmas_at_half.items()]
+    return (
+        ", the largest over non-detects at 0, at half and at their limit. Found is with them at "
+        f"half, where the pilot had {listed(half)}"
     )
 
 

@@ -11,6 +11,8 @@ from scipy import stats
 from fieldplan.estimate import estimate
 from fieldplan.estimate.difference import split_difference
 from fieldplan.estimate.planned import planned_for
+from fieldplan.lab.model import StratumSpread
+from fieldplan.packet.sheets.results_tables import stratum_table
 from tests.unit.estimate.known import WELLS, list_plan, result, returned, strata_plan
 
 COUNTS = st.integers(2, 12)
@@ -122,6 +124,26 @@ def test_a_missed_target_is_said_to_be_missed() -> None:
     plan = strata_plan({"site": 1.0}, {"site": 8.0}, {"site": 3})
     returns = returned([result(f"P{n}", v) for n, v in enumerate((1.0, 60.0, 140.0))])
     assert "was missed: it came to 40.3 mg/kg" in " ".join(estimate(plan, returns).why_different)
+
+
+def test_the_spread_found_is_set_against_a_pilot_with_non_detects_at_the_same_place() -> None:
+    """Planning took s = 3.1 with non-detects at 0; at half the pilot had 2.3, and 2.34 came.
+
+    A difference of convention is no difference between pilot and campaign.
+    """
+    plan = list_plan()
+    returns = returned([result(f"MW-{n}", value) for n, value in enumerate(WELLS)])
+    entry = StratumSpread("lead", "site", 3.1, 5.0, 8, "pilot.csv", sigma_at_half=2.3)
+    plan = replace(plan, spread=replace(plan.spread, strata=(entry,)))
+    assert "The standard deviation was" not in " ".join(estimate(plan, returns).why_different)
+    entry = replace(entry, sigma_at_half=1.7)
+    plan = replace(plan, spread=replace(plan.spread, strata=(entry,)))
+    answer = estimate(plan, returns)
+    assert (
+        "The standard deviation was 2.34 instead of 1.70 (mg/kg); both with non-detects at half, "
+        "where planning used the largest of the pilot's three, 3.10."
+    ) in answer.why_different
+    assert "where the pilot had 1.70 in site" in (stratum_table(plan, answer).caption or "")
 
 
 def test_a_census_has_nothing_to_split() -> None:
