@@ -28,14 +28,26 @@ def site_names() -> list[str]:
 
 
 def copy_site(name: str, out: Path) -> Path:
-    """Copy one site into ``out``; files that are there already are left as they are."""
-    source, target = demo_folder() / name, out / name
+    """Copy one site into a new folder of ``out``; one that is there already stays as it is.
+
+    What came back belongs to the first revision of a packet, so a second run begins anew, in
+    ``hobbin-ley-2``.
+    """
+    source, target, number = demo_folder() / name, out / name, 1
+    out.mkdir(parents=True, exist_ok=True)
+    while True:
+        try:
+            target.mkdir()
+            break
+        except FileExistsError:
+            number += 1
+            target = out / f"{name}-{number}"
     for path in sorted(source.rglob("*")):
         goal = target / path.relative_to(source)
-        if path.is_dir() or goal.exists():
-            continue
-        goal.parent.mkdir(parents=True, exist_ok=True)
-        shutil.copyfile(path, goal)
+        if path.is_dir():
+            goal.mkdir()
+        else:
+            shutil.copyfile(path, goal)
     return target
 
 
@@ -66,6 +78,9 @@ def command(name: str | None, out: Path, quiet: bool, open_it: bool) -> None:
     except OSError as fault:
         message = f"{out} cannot be written ({fault.strerror or fault}); name a folder with --out."
         raise FieldplanError(message) from fault
+    if folder.name != chosen:
+        said = f"{out / chosen} is there already and stays as it is; this run goes into {folder}."
+        say(wrapped(said), quiet=quiet)
     packet = _plan(folder, quiet=quiet)
     results = _results(folder, packet, quiet=quiet)
     click.echo(f"Open first: {packet / 'START_HERE.html'}")

@@ -22,9 +22,26 @@ def test_the_demo_ends_with_an_issued_packet_and_a_results_sheet(
     assert (site / f"{packet.name}-results-01" / "results_sheet.pdf").is_file()
     for stage in range(1, 6):
         assert f"[{stage}/5]" in outcome.stderr
-    again = run("demo", name)
-    assert again.exit_code == 0, again.output
-    assert (site / f"{PLAN_IDS[name]}-r02").is_dir()
+
+
+def test_a_second_demo_begins_anew_beside_the_first(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """What came back belongs to revision 1; the first run, and what was changed in it, stays."""
+    monkeypatch.chdir(tmp_path)
+    assert run("demo", "quern-flat").exit_code == 0
+    first = tmp_path / "fieldplan-demo" / "quern-flat"
+    (first / "wells.csv").write_text("mine", encoding="utf-8")
+    before = sorted(first.rglob("*"))
+    for number in (2, 3):
+        again = run("demo", "quern-flat")
+        assert again.exit_code == 0, again.output
+        second = first.with_name(f"quern-flat-{number}")
+        assert (second / "QF-r01-results-01" / "results_sheet.html").is_file()
+        assert not (second / "QF-r02").exists()
+        assert f"quern-flat-{number}" in " ".join(again.stderr.split())
+    assert sorted(first.rglob("*")) == before
+    assert (first / "wells.csv").read_text(encoding="utf-8") == "mine"
 
 
 def test_the_soil_demo_answers_for_zinc_too(
