@@ -4,6 +4,7 @@ from collections.abc import Collection, Mapping
 from dataclasses import dataclass
 
 from fieldplan.design.model import Location
+from fieldplan.lab.words import counted, listed
 from fieldplan.plan.model import Plan
 from fieldplan.returns.field_facts import FieldFacts
 
@@ -54,6 +55,8 @@ def substitute(
         _pair_as_said(lost, used, facts, pairs, notes)
         _pair_in_order(lost, used, pairs, notes)
         notes += _order_notes(spare, pairs, facts)
+        waiting = [location for location in lost if location not in pairs.values()]
+        notes += _unused_notes(waiting, [p for p in spare if p not in used], facts)
     return Substitution(pairs, tuple(notes))
 
 
@@ -85,6 +88,24 @@ def _pair_in_order(
             f"The field return does not say which location {place.location_id} replaces; it "
             f"stands in for {pairs[place.location_id]}, the first of its stratum without a result."
         )
+
+
+def _unused_notes(
+    waiting: list[str], unused: list[Location], facts: Mapping[str, FieldFacts]
+) -> list[str]:
+    """Say where a location was lost for good while an alternate of its stratum stood ready."""
+    untried = [
+        place.location_id
+        for place in unused
+        if (fact := facts.get(place.location_id, FieldFacts())).taken is None and not fact.reason
+    ]
+    if not waiting or not untried:
+        return []
+    return [
+        f"Nothing stands in for {listed(waiting)}, and nothing shows that "
+        f"{counted(len(untried), 'alternate')} of the stratum ({listed(untried)}) had been tried: "
+        "a departure from the plan, which says to take the next one."
+    ]
 
 
 def _order_notes(

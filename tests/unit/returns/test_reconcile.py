@@ -123,6 +123,19 @@ def test_an_alternate_passed_over_without_a_reason_is_noted() -> None:
     assert "passed over" not in notes(returns)
 
 
+def test_a_loss_without_a_stand_in_while_alternates_stood_ready_is_a_departure() -> None:
+    """The plan says to take the next alternate; two of the meadow were left where they are."""
+    cells = {n: c for n, c in CELLS.items() if n != "QF-A-02"}
+    said = "Nothing stands in for QF-A-02, and nothing shows that 2 alternates"
+    broken = {"taken": True, "reason": "broken"}
+    assert f"{said} of the stratum (QF-A-05 and QF-A-06)" in notes(met(cells, QF_A_02=broken))
+    tried: dict[str, object] = {"taken": False, "reason": "no-access"}
+    returns = met(cells, QF_A_02=broken, QF_A_05=tried, QF_A_06=tried)
+    assert "departure" not in notes(returns)
+    assert "departure" not in notes(met({**cells, "QF-A-05": "58"}, QF_A_02=broken))
+    assert "departure" not in notes(met())
+
+
 def test_an_alternate_that_was_taken_and_broke_is_said() -> None:
     """The return promises a result that did not come."""
     cells = {n: c for n, c in CELLS.items() if n != "QF-A-04"}
