@@ -6,10 +6,10 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from fieldplan.base.document import Figure
-from fieldplan.packet.drawing import INK, mm_axes, new_figure, pens, shortened, svg_text
-from fieldplan.packet.maps.content import MapContent, plan_content
-from fieldplan.packet.maps.ground import draw_grounds, grounds
-from fieldplan.packet.maps.legend import draw_entries
+from fieldplan.packet.drawing import WIDE_MM, mm_axes, new_figure, pens, svg_text
+from fieldplan.packet.maps.content import Entry, MapContent, plan_content
+from fieldplan.packet.maps.ground import Ground, draw_grounds, grounds
+from fieldplan.packet.maps.legend import draw_entry, within
 from fieldplan.packet.maps.names import draw_names, draw_plate, mark_centres, unplaced_names
 from fieldplan.packet.maps.page import draw_marks, ground_axes
 from fieldplan.packet.maps.panels import draw_bar, draw_north
@@ -18,15 +18,16 @@ from fieldplan.packet.maps.tiles import PageSpec
 from fieldplan.plan.model import Plan
 
 if TYPE_CHECKING:
+    from matplotlib.axes import Axes
     from matplotlib.figure import Figure as Canvas
 
-_WIDTH, _LEGEND_WIDTH = 165.0, 56.0
+_LEGEND_MM, _BAR_MM, _POINTS = 50.0, 17.0, 7.6
 _NAMED = 40
-_HEIGHTS = (62.0, 90.0, 118.0)
+_HEIGHTS = (62.0, 78.0, 94.0)
 
 
 def site_figure(plan: Plan) -> Figure:
-    """Draw the site with all locations, small enough for a sheet.
+    """Draw the site with all locations, small enough for the first page of a sheet.
 
     Parameters
     ----------
@@ -62,13 +63,13 @@ def _spec(plan: Plan, content: MapContent) -> PageSpec:
     seen = Extent(*map(float, (*corners.min(axis=0), *corners.max(axis=0))))
     trials = []
     for height in _HEIGHTS:
-        ground = Box(0.3, 0.3, _WIDTH - _LEGEND_WIDTH - 3, height - 0.6)
-        room = ground.shrunk(7.0)
+        ground = Box(0.3, 0.3, WIDE_MM - _LEGEND_MM - 3, height - 0.6)
+        room = ground.shrunk(6.0)
         needed = 1000 * max(seen.width / room.width, seen.height / room.height, 0.01)
         trials.append((math.ceil(needed), height, ground))
     denominator, height, ground = min(trials, key=lambda trial: trial[:2])
-    panel = Box(ground.right + 3, 0.3, _LEGEND_WIDTH - 0.6, height - 0.6)
-    layout = PageLayout(_WIDTH, height, panel, ground, panel, panel, panel, panel, panel)
+    panel = Box(ground.right + 3, 0.3, _LEGEND_MM - 0.6, height - 0.6)
+    layout = PageLayout(WIDE_MM, height, panel, ground, panel, panel, panel, panel, panel)
     return PageSpec(
         layout, extent_around(seen.centre, ground, denominator=denominator), denominator
     )
@@ -92,15 +93,22 @@ def _drawing(plan: Plan, content: MapContent, *, spec: PageSpec) -> "Canvas":
             draw_plate(over, "ASSUMED BOUNDARY", spots=spots, clear_of=centres, points=7.0)
         )
     draw_names(over, content, spec=spec, taken=taken)
-    panel = layout.legend
-    draw_entries(
-        over,
-        [*content.legend, *layers],
-        box=Box(panel.left, 18, panel.width, panel.top - 18),
-        brief=True,
-    )
-    draw_bar(over, panel.left + 2, bottom=4.0, denominator=spec.denominator, longest_mm=36.0)
-    draw_north(over, panel.right - 4, y=9.0)
-    status = shortened(plan.status, 7, width_mm=panel.width - 11, bold=True)
-    over.text(panel.left + 2, 12, status, fontsize=7, weight="bold", color=INK)
+    _key(over, [*content.legend, *layers], spec=spec)
     return figure
+
+
+def _key(over: "Axes", entries: list[Entry | Ground], *, spec: PageSpec) -> None:
+    """Spread the legend over its panel, with the scale bar and the north arrow below it."""
+    panel = spec.layout.legend
+    room = panel.height - _BAR_MM
+    row = min(7.5, max(4.2, room / len(entries)))
+    shown = within(entries, int(room / row + 1e-9))
+    for number, entry in enumerate(shown):
+        draw_entry(
+            over, entry, entry.brief, spot=(panel.left, panel.top - (number + 0.5) * row),
+            width_mm=panel.width - 8, points=_POINTS, row_mm=row,
+        )  # fmt: skip
+    draw_bar(
+        over, panel.left + 2, bottom=panel.bottom + 3, denominator=spec.denominator, longest_mm=30.0
+    )
+    draw_north(over, panel.right - 4, y=panel.bottom + 9.5)

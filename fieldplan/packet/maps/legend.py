@@ -45,33 +45,48 @@ def draw_entries(
         columns += 1
     rows = -(-len(entries) // columns)
     height = min(_ROW_MM, max(_LEAST_ROW_MM, (box.height - 3) / rows))
-    room = int((box.height - 3) / height + 1e-9)
-    if len(entries) > columns * room:
-        left_out = len(entries) - columns * room + 1
-        words = f"and {left_out} more"
-        entries = [*entries[: columns * room - 1], Entry(_NO_PEN, words, words)]
-    rows = min(rows, room)
+    entries = within(entries, columns * int((box.height - 3) / height + 1e-9))
+    rows = min(rows, int((box.height - 3) / height + 1e-9))
     _frame(page, box, height=3 + height * rows)
     width = (box.width - 2) / columns
     for index, entry in enumerate(entries):
         x = box.left + 2 + (index // rows) * width
         y = box.top - 1.5 - (index % rows + 0.5) * height
-        _sample(page, entry, x=x, y=y)
         words = entry.brief if brief or columns > 1 else entry.words
         points = 6.6 if columns == 1 else 5.8
-        _words(page, words, x=x + 7.5, y=y, width_mm=width - 8.5, points=points, row_mm=height)
+        draw_entry(
+            page, entry, words, spot=(x, y), width_mm=width - 8.5, points=points, row_mm=height
+        )
 
 
-def _words(
-    page: "Axes", words: str, *, x: float, y: float, width_mm: float, points: float, row_mm: float
+def within(entries: list[Entry | Ground], room: int) -> list[Entry | Ground]:
+    """Keep as many entries as there is room for, and say how many were left out."""
+    if len(entries) <= room:
+        return entries
+    words = f"and {len(entries) - room + 1} more"
+    return [*entries[: room - 1], Entry(_NO_PEN, words, words)]
+
+
+def draw_entry(
+    page: "Axes",
+    entry: Entry | Ground,
+    words: str,
+    *,
+    spot: tuple[float, float],
+    width_mm: float,
+    points: float,
+    row_mm: float,
 ) -> None:
-    """Write the words of an entry in one line, or in two smaller ones where the row is high."""
+    """Draw the sample of one entry and its words, in one line or, where the row is high, in two."""
+    _sample(page, entry, x=spot[0], y=spot[1])
     if row_mm >= 4.2 and text_width_mm(words, points) > width_mm:
-        points = 5.2
+        points = min(5.2 * row_mm / 4.4, points)
         lines = wrapped(words, points, width_mm=width_mm, most=2)
     else:
         lines = [shortened(words, points, width_mm=width_mm)]
-    page.text(x, y, "\n".join(lines), fontsize=points, va="center", linespacing=1.0)
+    page.text(
+        spot[0] + 7.5, spot[1], "\n".join(lines), fontsize=points, va="center", linespacing=1.0
+    )
 
 
 def _crossing(grid: GridLines) -> Entry:

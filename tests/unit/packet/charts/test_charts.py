@@ -14,8 +14,10 @@ from fieldplan.packet.charts import interval as interval_module
 from fieldplan.packet.charts import interval_figure, pilot_dots, precision_curve, site_figure
 from fieldplan.packet.charts import pilot as pilot_module
 from fieldplan.packet.charts import precision as precision_module
+from fieldplan.packet.charts import site as site_module
 from fieldplan.packet.charts.pilot import stacked_levels
 from fieldplan.packet.drawing import NARROW_MM, WIDE_MM, pens
+from fieldplan.packet.maps.content import plan_content
 from tests.factories import make_estimate, make_plan, make_size, make_spread
 from tests.unit.packet.maps.sites import make_area_plan, make_list_plan, make_outline
 
@@ -238,6 +240,24 @@ def test_the_site_figure_names_locations_only_where_all_names_fit() -> None:
     assert "printed map names" not in few.caption
     assert "printed map names" in many.caption
     assert "random (9), alternate (4), targeted (1)" in few.alternative
+
+
+def test_the_legend_of_the_site_figure_is_readable_and_fills_its_panel() -> None:
+    """7 points on paper; eight strata and exclusions keep their names whole."""
+    plan = make_plan()
+    for count in (2, 8, 14):
+        strata = tuple(
+            replace(plan.frame.strata[n % 2], name=f"parcel {n} of the old estate")
+            for n in range(count)
+        )
+        shown = replace(plan, frame=replace(plan.frame, strata=strata))
+        content = plan_content(shown)
+        with pens():
+            figure = site_module._drawing(shown, content, spec=site_module._spec(shown, content))
+        words = [t for axes in figure.axes for t in axes.texts if "parcel" in t.get_text()]
+        assert len(words) == count or "more" in " ".join(words_of(figure))
+        assert all(text.get_text().endswith("estate") for text in words)
+        assert min(text.get_fontsize() for text in words) >= (7 if count < 9 else 5)
 
 
 def test_the_site_figure_draws_lists_and_assumed_boundaries() -> None:
