@@ -121,6 +121,19 @@ def choices(model_name: str, key: str) -> list[str]:
     return [word for word in words if isinstance(word, str)]
 
 
+def longest(model_name: str, key: str) -> int | None:
+    """Return how many letters a text may have; None where it is not bounded.
+
+    Examples
+    --------
+    >>> longest("PlanTable", "title"), longest("PlanTable", "site")
+    (2000, None)
+    """
+    schema = _property(model_name, key)
+    found = (part.get("maxLength") for part in [schema, *schema.get("anyOf", [])])
+    return next((limit for limit in found if limit is not None), None)
+
+
 def _property(model_name: str, key: str) -> dict[str, Any]:
     """Find the JSON Schema of one key."""
     schema = _schema()

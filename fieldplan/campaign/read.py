@@ -17,6 +17,7 @@ from fieldplan.campaign.problems import (
     accepted,
     choices,
     key_name,
+    longest,
     meaning,
     near_miss,
     render,
@@ -180,6 +181,10 @@ def _word(kind: str, value: Any, model: type[BaseModel], path: KeyPath, key: str
     later = later_value(table, key, value)
     if later:
         return f"{shown(value)} ({later}) is not done yet. This version takes {takes}."
+    if kind == "string_too_long":
+        takes += f" of at most {longest(model.__name__, key):,} letters"
+        got = f"{len(value):,} letters, {shown(value)}"
+        return f"{meaning(table, key)}; takes {takes} (got {got}). Shorten it."
     remedy = _remedy(value, takes, choices(model.__name__, key))
     return f"{meaning(table, key)}; takes {takes} (got {shown(value)}).{remedy}"
 

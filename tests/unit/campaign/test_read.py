@@ -261,6 +261,11 @@ VALUES = [
         "20: objective.standard_error: not a finite number (got inf). Write a number.",
     ),
     (
+        ("Quarry Field, lead in topsoil", "T" * 100_000),
+        "5: plan.title: title printed on every page; takes text in double quotes of at most 2,000 "
+        f'letters (got 100,000 letters, "{"T" * 56}...). Shorten it.',
+    ),
+    (
         ("6.0", "1e200"),
         "20: objective.standard_error: the largest standard error of the mean, in the analyte's "
         "unit; beyond what can be reckoned with, 1e-12 to 1e12 (got 1e+200). Check it and its "
