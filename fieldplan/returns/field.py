@@ -14,7 +14,7 @@ from fieldplan.lab.row import Attempts, RowCells, read_degrees
 from fieldplan.lab.tables import TextTable, capped, read_tables
 from fieldplan.lab.words import listed
 from fieldplan.plan.model import Plan
-from fieldplan.returns.form import FIELD_COLUMNS
+from fieldplan.returns.form import FIELD_COLUMNS, plain_offset
 from fieldplan.returns.ids import nearest, plain_id
 from fieldplan.returns.model import FieldRow, ReasonCode
 from fieldplan.returns.revisions import other_revision
@@ -113,7 +113,7 @@ class _LineReader:
             sample_id=plain_id(row.text("sample_id")),
             taken=taken,
             collected_at=row.tidy("collected_at"),
-            utc_offset=plain_id(row.text("utc_offset")),
+            utc_offset=plain_offset(row.text("utc_offset")),
             actual_latitude=north,
             actual_longitude=east,
             replaced_by=replaced_by,

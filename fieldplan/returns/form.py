@@ -7,6 +7,7 @@ import re
 from fieldplan.design.names import is_date_like
 from fieldplan.lab.roles import IN_THE_MEAN
 from fieldplan.plan.model import Plan
+from fieldplan.returns.ids import plain_id
 from fieldplan.samples.model import Sample
 
 FIELD_COLUMNS = (
@@ -47,11 +48,44 @@ def field_return_blank(plan: Plan) -> str:
         place = places.get(sample.location_id)
         note = "" if place or sample.role in IN_THE_MEAN else sample.role
         short_name = place.short_name if place else ""
-        offset = plan.campaign.field.utc_offset
+        offset = told_offset(plan.campaign.field.utc_offset)
         cells = [sample.location_id, short_name, class_of(sample), sample.sample_id]
         cells += ["", "", offset, "", "", "", "", "", note]
         writer.writerow([as_text(cell) for cell in cells])
     return text.getvalue()
+
+
+def told_offset(offset: str) -> str:
+    """Open an offset with UTC, so that no spreadsheet takes it for a sum and nothing is quoted.
+
+    Parameters
+    ----------
+    offset : str
+        As in the campaign file.
+
+    Examples
+    --------
+    >>> told_offset("+01:00"), told_offset("")
+    ('UTC+01:00', '')
+    """
+    return f"UTC{offset}" if offset[:1] in {"+", "-", "−"} else offset
+
+
+def plain_offset(written: str) -> str:
+    """Read an offset with or without UTC before it.
+
+    Parameters
+    ----------
+    written : str
+
+    Examples
+    --------
+    >>> plain_offset("UTC+01:00"), plain_offset("'+01:00"), plain_offset("utc -3")
+    ('+01:00', '+01:00', '-3')
+    """
+    plain = plain_id(written)
+    found = re.fullmatch(r"(?:UTC|GMT)\s*([+−-].*)", plain, re.IGNORECASE)
+    return found[1] if found else plain
 
 
 def as_text(cell: str) -> str:

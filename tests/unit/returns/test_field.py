@@ -4,16 +4,18 @@ import csv
 import io
 import random
 from collections.abc import Callable
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
 
 from fieldplan.base.errors import FieldplanError, LabError
+from fieldplan.campaign.model import FieldTable
 from fieldplan.design.model import Locations
 from fieldplan.returns import field_return_blank, read_field_return
 from fieldplan.returns.form import FIELD_COLUMNS
 from fieldplan.samples.model import Sample, Samples
-from tests.factories import make_locations, make_plan, make_samples
+from tests.factories import make_campaign, make_locations, make_plan, make_samples
 
 Write = Callable[[list[dict[str, str]]], Path]
 
@@ -85,13 +87,24 @@ def test_a_blank_has_no_location_and_says_what_it_is() -> None:
 def test_ids_of_the_user_survive_a_spreadsheet() -> None:
     """A well called =1+1 or 007 must neither run nor lose its zeros."""
     places = list(make_locations().places)
-    from dataclasses import replace
-
     places[0] = replace(places[0], location_id="=1+1")
     locations = Locations("stratified", 1, 1, tuple(places), 9, 9)
     first = Sample("QF-731", "=1+1", "field sample", "", ("lead",))
     text = field_return_blank(make_plan(locations=locations, samples=Samples((first,))))
     assert text.splitlines()[1].startswith("'=1+1,")
+
+
+@pytest.mark.parametrize("written", ["UTC+01:00", "+01:00", "'+01:00", "utc +01:00"])
+def test_the_clock_stands_in_the_form_without_apostrophe_and_is_read_either_way(
+    write: Write, written: str
+) -> None:
+    """A quoted cell in every row looks like an error; older forms have one."""
+    plan = make_plan()
+    plan = replace(plan, campaign=make_campaign(field=FieldTable(utc_offset="+01:00")))
+    lines = csv.DictReader(io.StringIO(field_return_blank(plan)))
+    assert {line["utc_offset"] for line in lines} == {"UTC+01:00"}
+    rows = read_field_return(write([{"sample_id": "QF-731", "utc_offset": written}]), plan)
+    assert {row.sample_id: row.utc_offset for row in rows}["QF-731"] == "+01:00"
 
 
 def test_an_unfilled_form_is_read_as_silence(write: Write) -> None:
