@@ -12,6 +12,7 @@ from fieldplan.lab.columns import LAB_COLUMNS, find_columns
 from fieldplan.lab.model import REJECTED, LabRow, LabTable
 from fieldplan.lab.row import FileMemory, RowCells, read_row
 from fieldplan.lab.tables import TextTable, capped, read_tables
+from fieldplan.lab.unread import unread_qualifiers
 from fieldplan.lab.words import counted, listed
 
 REQUIRED = ("analyte", "as_reported", "unit", "location_id|sample_id")
@@ -66,6 +67,7 @@ def read_lab(
         else:
             rows += [row] if row else []
     problems += _mixed_meanings(table.file_name, memory)
+    problems += unread_qualifiers(table, found, rows)
     if not rows and not problems:
         problems.append(_nothing_found(table.file_name, analytes, memory))
     if problems:

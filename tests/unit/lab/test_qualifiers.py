@@ -91,3 +91,34 @@ def test_no_other_letters_censor_or_reject() -> None:
     assert all(set(w) <= set("ujbdehnqr") for w in censored if "u" in w)
     rejected = {w for w in words if read_qualifier(w).rejected}
     assert rejected == {"r", "ur", "ru", "jr", "rj", "rej"}
+
+
+@pytest.mark.parametrize(
+    ("title", "cell"),
+    [("<", "<"), ("", "<"), ("", "U"), ("Sign", "<"), ("Flag", "U"), ("Lab qualifiers", "UJ"),
+     ("Remark", "not detected"), ("Column 7", "ND"), ("Detected", "N"), ("detect_flag", "no"),
+     ("Result text", "<5"), ("Qualifier", "R"), ("op", ">")],
+)  # fmt: skip
+def test_a_column_that_was_not_read_may_not_contradict_the_numbers(
+    read: Reader, title: str, cell: str
+) -> None:
+    """A ``<`` of its own is common; left unread, 5 would count as measured."""
+    content = f"{HEAD},{title}\nA,lead,7,mg/kg,\nB,lead,5,mg/kg,{cell}\n"
+    with pytest.raises(LabError) as caught:
+        read(content)
+    (line,) = caught.value.problems
+    assert f"is not read, but says '{cell}' beside '5' in row 3." in line
+    assert ("write < into" in line) == (cell in {"N", "no", "<5"})
+    if cell in {"<", "U", "UJ"} and title:
+        (row,) = read(content, columns={"qualifier_lab": title}).rows[1:]
+        assert (row.result, row.reporting_limit) == (None, 5.0)
+
+
+@pytest.mark.parametrize(
+    ("title", "cell"),
+    [("Zone", "U"), ("Zone", "U1"), ("Type", "R"), ("Flag", "J"), ("Remark", "field blank next"),
+     ("Detected", "Y"), ("MDL", "<2"), ("Detection limit", "0"), ("Nondetect", "no"), ("", "")],
+)  # fmt: skip
+def test_other_columns_are_none_of_our_business(read: Reader, title: str, cell: str) -> None:
+    """Letters under a title of another kind say nothing of the result."""
+    assert read(f"{HEAD},{title}\nA,lead,5,mg/kg,{cell}\n").rows[0].result == 5.0
