@@ -120,12 +120,15 @@ def command(
     did not decide n get a sentence each, and a sheet and a map of their own.
     """
     from fieldplan.lab import read_lab
+    from fieldplan.packet.evidence import rely_on
     from fieldplan.packet.results_writer import write_results
     from fieldplan.plan.record import read_plan
     from fieldplan.returns import read_field_return, read_matches, reconcile_all
 
     quiet = options["quiet"] or options["as_json"]
     plan = read_plan(packet)
+    for sentence in rely_on(packet, plan).others:
+        say(wrapped(sentence), quiet=quiet)
     asked = _asked(plan, options["analyte"])
     table = read_lab(lab_file, plan.campaign, columns=columns)
     given = read_field_return(field_file, plan) if field_file else ()
@@ -146,7 +149,7 @@ def command(
         out or _beside(folder),
         sources=sources,
         report_number=options["report_number"],
-        packet_parent=folder.parent,
+        packet=packet,
         progress=lambda stage: say(f"  {stage} …", quiet=quiet),
     )
     _print(answers, results, options)

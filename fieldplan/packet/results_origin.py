@@ -53,11 +53,17 @@ class ResultsOrigin:
         The laboratory's own, as typed by the user; empty when none was given.
     earlier : tuple of EarlierResults
         In the order of their numbers.
+    packet_fingerprint : str
+        From ``packet.evidence``; empty when the packet has no manifest.
+    packet_differs : tuple of str
+        Files of the packet that were changed or removed, in sentences.
     """
 
     files: tuple[tuple[str, str], ...] = ()
     report_number: str = ""
     earlier: tuple[EarlierResults, ...] = ()
+    packet_fingerprint: str = ""
+    packet_differs: tuple[str, ...] = ()
 
 
 def earlier_results(folders: Iterable[Path], stem: str) -> tuple[EarlierResults, ...]:

@@ -8,6 +8,7 @@ from pathlib import Path
 from typing import Any
 
 from fieldplan.estimate.model import Answers
+from fieldplan.packet.evidence import examine, packet_folder
 from fieldplan.packet.folder import build_folder, next_number
 from fieldplan.packet.results_origin import ResultsOrigin, earlier_results, keep_files
 from fieldplan.plan.model import Plan
@@ -26,7 +27,7 @@ def write_results(
     *,
     sources: Sequence[Path] = (),
     report_number: str = "",
-    packet_parent: Path | None = None,
+    packet: Path | None = None,
     progress: Progress = _ignore,
 ) -> Path:
     """Write what came of one laboratory file as a new folder, e.g. ``HL-r01-results-01``.
@@ -44,8 +45,9 @@ def write_results(
         Laboratory and field files, copied into ``inputs``.
     report_number : str
         The laboratory's own, as typed.
-    packet_parent : Path, optional
-        Where the packet lies: earlier results there are listed too.
+    packet : Path, optional
+        Where the plan was read from: its files are compared with their manifest, and earlier
+        results beside it are listed too.
     progress : callable
         Called with the name of each stage.
 
@@ -61,13 +63,29 @@ def write_results(
     """
     stem = f"{plan.revision_name}-results-"
     target = parent / f"{stem}{next_number(parent, stem):02d}"
-    earlier = earlier_results([parent, packet_parent or parent], stem)
-    origin = ResultsOrigin((), report_number.strip(), earlier)
+    origin = _origin(plan, parent, stem, packet=packet, report_number=report_number)
     return build_folder(
         target,
         lambda folder: _fill(
             plan, answers, folder, origin=origin, sources=sources, progress=progress
         ),
+    )
+
+
+def _origin(
+    plan: Plan, parent: Path, stem: str, *, packet: Path | None, report_number: str
+) -> ResultsOrigin:
+    """Gather what the sheet says of packet, report and earlier answers."""
+    if packet is None:
+        return ResultsOrigin((), report_number.strip(), earlier_results([parent], stem))
+    evidence = examine(packet, plan)
+    beside = packet_folder(packet).absolute().parent
+    return ResultsOrigin(
+        (),
+        report_number.strip(),
+        earlier_results([parent, beside], stem),
+        packet_fingerprint=evidence.fingerprint,
+        packet_differs=evidence.others,
     )
 
 
@@ -102,6 +120,8 @@ def _said_of(origin: ResultsOrigin) -> dict[str, Any]:
     """Turn where the results come from into plain JSON values."""
     return {
         "report_number": origin.report_number,
+        "packet_fingerprint": origin.packet_fingerprint,
+        "packet_differs": list(origin.packet_differs),
         "files": {name: digest for digest, name in origin.files},
         "earlier_results": [asdict(entry) for entry in origin.earlier],
     }

@@ -105,3 +105,41 @@ def test_the_fingerprint_is_told_at_issue_and_changes_with_any_file(
     assert len(told) == 16
     assert told in outcome.stdout
     assert told != packet_fingerprint(packed.packet)
+
+
+def test_an_estimate_from_a_changed_record_is_refused_and_writes_nothing(
+    packed: Packed, tmp_path: Path
+) -> None:
+    """A confidence or a weight changed after results must not look recorded."""
+    site = packed.copied_to(tmp_path)
+    reseal(site.packet, lower_confidence)
+    lab = next((site.folder / "returned").glob("lab_results.*"))
+    outcome = run("estimate", site.packet, lab)
+    assert outcome.exit_code == 1
+    assert "not the file that the manifest names" in str(outcome.exception)
+    assert not list(site.folder.glob("*results-*"))
+
+
+def test_a_results_sheet_names_files_of_the_packet_that_were_changed(
+    packed: Packed, tmp_path: Path
+) -> None:
+    """The crew walked to the point list; whoever reads the mean must know of its change."""
+    site = packed.copied_to(tmp_path)
+    told = packet_fingerprint(site.packet)
+    (site.packet / "office" / "plan_sheet.pdf").unlink()
+    returned = site.folder / "returned"
+    outcome = run(
+        "estimate",
+        site.packet,
+        next(returned.glob("lab_results.*")),
+        "--field",
+        returned / "field_return.csv",
+        "--matches",
+        returned / "matches.csv",
+    )
+    assert outcome.exit_code == 0, outcome.output
+    assert "plan_sheet.pdf was changed or removed" in outcome.stderr
+    sheet = next(site.folder.glob("*results-01")) / "results_sheet.html"
+    text = sheet.read_text(encoding="utf-8")
+    assert "office/plan_sheet.pdf was changed or removed" in text
+    assert told in text

@@ -1,6 +1,6 @@
 """What results were made from, and what was estimated before from the same plan."""
 
-from fieldplan.base.document import Block, Facts, Heading, Paragraph, Table, Verbatim
+from fieldplan.base.document import Block, Bullets, Facts, Heading, Paragraph, Table, Verbatim
 from fieldplan.base.units import significant
 from fieldplan.estimate.model import Estimate
 from fieldplan.estimate.sentences import interval_in_words
@@ -104,8 +104,10 @@ def source_blocks(plan: Plan, estimate: Estimate, *, origin: ResultsOrigin) -> l
                 ("Laboratory's report number", origin.report_number or "not given"),
                 ("Plan", f"{plan.revision_name}, {plan.status}"),
                 ("Planned with", f"fieldplan {plan.fieldplan_version}".strip()),
+                ("Fingerprint of the packet", origin.packet_fingerprint or "not known"),
             )
         ),
+        *([Bullets(origin.packet_differs)] if origin.packet_differs else []),
         Paragraph(
             "This sheet checks that what was ordered came back and computes by the recorded "
             "rules. Whether the data are fit for their use is for a qualified reviewer to say.",

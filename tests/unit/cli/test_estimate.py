@@ -9,7 +9,7 @@ from click.testing import Result
 
 from fieldplan.base.errors import FieldplanError
 from fieldplan.cli.estimate import command
-from fieldplan.packet import results_writer
+from fieldplan.packet import evidence, results_writer
 from fieldplan.plan.record import plan_to_record
 from fieldplan.returns import field_return_blank
 from tests.command_runner import command_runner
@@ -36,6 +36,7 @@ def folder(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
     filled = field_return_blank(plan).replace(",,,,,,,,,", ",yes,,,,,,,,")
     (tmp_path / "field.csv").write_text(filled, encoding="utf-8", newline="")
     monkeypatch.chdir(tmp_path)
+    monkeypatch.setattr(evidence, "disagreements", lambda plan: ())  # made by hand, without text
     return tmp_path
 
 
