@@ -125,7 +125,7 @@ MEANING: dict[str, str] = {
     "rules.duplicates": "how a field duplicate meets its first sample",
     "rules.interval": "the interval that is reported",
     "rules.confidence": "the long-run share of intervals that hold the true mean",
-    "rules.promised_for": "the class of populations for which the confidence is promised",
+    "rules.promised_for": "the class of populations that the confidence is declared for",
     "rules.single_result": "what is done with a stratum left with fewer than 2 results",
     "rules.fixed_by": "who fixed the rules",
     "rules.fixed_on": "the day on which the rules were fixed",

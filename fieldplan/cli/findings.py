@@ -51,7 +51,7 @@ def look_at(path: Path) -> Findings:
     whole, known = inspection.campaign, draft(inspection)
     if whole is not None:
         found.understood += asked(whole.campaign)
-        found.alarms += alarms(whole.campaign)
+        found.alarms += alarms(whole.campaign, made_on=date.today())
     if missing or known is None:
         return found
     if whole is not None:

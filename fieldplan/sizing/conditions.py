@@ -42,7 +42,8 @@ def conditions(question: Question, needed: tuple[int, ...]) -> tuple[str, ...]:
             "The grid is sized as simple random and its interval computed as such: the grid gets "
             "no credit, and the interval is usually too wide."
         )
-    if question.assurance is not None or question.pilots is not None:
+    chances = question.assurance is not None or question.pilots is not None
+    if chances and question.target != "budget":
         lines += [NEAR_NORMAL, *_few(question)]
     return (*lines, *question.notes)
 

@@ -44,10 +44,10 @@ def answer_words(plan: Plan) -> list[Block]:
 
 
 def alarm_lines(plan: Plan) -> tuple[str, ...]:
-    """Return what the campaign raises an alarm about, such as a limit above the level."""
+    """Return what the plan raises an alarm about: a limit above the level, a date too late."""
     from fieldplan.campaign.alarms import alarms
 
-    return tuple(alarms(plan.campaign))
+    return alarms(plan.campaign, made_on=plan.made_on, issued_on=plan.issued_on)
 
 
 def stratum_table(plan: Plan) -> Table:

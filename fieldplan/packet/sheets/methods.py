@@ -8,7 +8,7 @@ from fieldplan.packet.sheets.plan_words import (
     mean_of,
     several_strata,
 )
-from fieldplan.packet.sheets.rules import NON_DETECTS, rules_fingerprint
+from fieldplan.packet.sheets.rules import NON_DETECTS, rules_fingerprint, stated
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
 
@@ -203,10 +203,9 @@ def quality_sentence(plan: Plan) -> str:
 
 
 def rules_sentence(plan: Plan) -> str:
-    """Say that the rules were fixed before results, and which interval they ask for."""
+    """Say which rules hold for the estimate, and who stated that they were fixed when."""
     rules = plan.campaign.rules
-    by = f" by {rules.fixed_by}" if rules.fixed_by else ""
-    on = f" on {rules.fixed_on}" if rules.fixed_on else ""
+    origin = stated(rules, first_day=plan.campaign.plan.fieldwork_from)
     kind = {
         "two-sided": "two-sided interval",
         "upper-limit": "upper limit",
@@ -217,8 +216,8 @@ def rules_sentence(plan: Plan) -> str:
         "first": "the first sample of a location alone counts",
     }[rules.duplicates]
     return (
-        f"These rules were fixed{by}{on}, before any result was seen: the "
+        f"The rules for the estimate were, {origin}: the "
         f"{percent(rules.confidence)} {kind} for the mean is given; "
         f"{NON_DETECTS[rules.non_detects].replace('; ', ' and ')}; {repeated} "
-        f"(fingerprint {rules_fingerprint(rules)})."
+        f"(fingerprint {rules_fingerprint(rules)}, by which whoever received it can check them)."
     )

@@ -51,8 +51,9 @@ def number_blocks(plan: Plan) -> list[Block]:
         blocks.append(precision_curve(size))
     if size.others:
         blocks += other_blocks(plan)
-    if size.conditions:
-        blocks += [Heading("Under what condition", level=2), Bullets(size.conditions)]
+    conditions = (*size.conditions, *declared_lines(plan))
+    if conditions:
+        blocks += [Heading("Under what condition", level=2), Bullets(conditions)]
     return [*blocks, Paragraph("The working is in annex A.", tone="note")]
 
 
@@ -95,6 +96,32 @@ def count_rows(plan: Plan) -> list[tuple[str, str]]:
     if size.number_from == "budget":
         return [("Locations that the budget buys", str(size.planned)), expected]
     return [("Locations to visit, the whole list", str(size.planned))]
+
+
+def declared_lines(plan: Plan) -> list[str]:
+    """Say which class the confidence was declared for, and what t holds at the end of it."""
+    from fieldplan.estimate.coverage import declared_skewness
+    from fieldplan.sizing import question_of
+    from fieldplan.sizing.lean import equivalent_sample
+    from fieldplan.stats.shape import t_coverage
+
+    rules = plan.campaign.rules
+    if not rules.promised_for or plan.size.number_from == "census":
+        return []
+    line = f"The {percent(rules.confidence)} is declared for {rules.promised_for.rstrip('. ')}"
+    end = declared_skewness(rules.promised_for)
+    if end is None or rules.confidence > 0.99:
+        return [f"{line}. Nothing here shows that the population belongs to that class."]
+    question = question_of(plan.campaign, plan.spread, plan.frame)
+    n, lean = equivalent_sample(question, [entry.needed for entry in plan.size.strata])
+    held = t_coverage(n, end, confidence=rules.confidence, kind=rules.interval)
+    line += (
+        f". At a skewness of {end:g}, which ends that class, t from {n} results holds the true "
+        f"mean in about {100 * held:.0f} % of campaigns."
+    )
+    if lean is not None and abs(lean) > end:
+        line += f" The results behind sigma lie outside it: their skewness is {rounded(lean)}."
+    return [line]
 
 
 def assurance_table(plan: Plan) -> Table:

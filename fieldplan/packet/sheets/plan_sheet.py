@@ -34,7 +34,7 @@ def plan_sheet(plan: Plan) -> Document:
         ("How the locations are drawn", draw_blocks(plan)),
         ("Locations", location_blocks(plan)),
         ("Samples and quality control", quality_blocks(plan)),
-        ("Rules fixed before results", rules_blocks(plan.campaign.rules)),
+        ("Rules on record", rules_blocks(plan.campaign.rules)),
         ("In the field", field_blocks(plan)),
         ("Cautions and hold points", caution_blocks(plan)),
         ("For the report", methods_blocks(plan)),

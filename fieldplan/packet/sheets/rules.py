@@ -1,6 +1,7 @@
-"""The rules fixed before results: in words, as recorded, and with a fingerprint."""
+"""The rules for the estimate: in words, as recorded, who stated them, and with a fingerprint."""
 
 import hashlib
+from datetime import date
 
 from fieldplan.base.document import Block, Facts, Paragraph, Table
 from fieldplan.campaign.model import Rules
@@ -19,7 +20,15 @@ INTERVALS = {
     "upper-limit": "one upper limit, from Student's t",
     "lower-limit": "one lower limit, from Student's t",
 }
-LONG_RUN = "in the long run this share of such intervals or limits holds the true mean"
+LONG_RUN = (
+    "nominal: where the mean is near normal, this share of such intervals or limits holds the true "
+    "mean in the long run"
+)
+UNVERIFIED = (
+    "Who fixed the rules, and when, is stated in the campaign file; this tool cannot verify it. "
+    "Lodge the fingerprint with somebody outside before field work: whoever holds it can show that "
+    "the rules are as they were then."
+)
 SINGLES = {
     "refuse": "a stratum left with fewer than 2 results yields no estimate",
     "borrow-spread": "a stratum left with 1 result borrows the pooled spread of the others, and "
@@ -68,11 +77,37 @@ def rules_table(rules: Rules) -> Table:
             (
                 "promised_for",
                 rules.promised_for or BLANK,
-                "the class of populations for which the confidence is promised",
+                "the class of populations that the confidence was declared for; what t holds there "
+                "depends on their skewness and on n",
             ),
             ("single_result", rules.single_result, SINGLES[rules.single_result]),
         ),
     )
+
+
+def stated(rules: Rules, *, first_day: date | None = None) -> str:
+    """Attribute the rules to whoever stated them, with the day and without vouching for it.
+
+    Parameters
+    ----------
+    rules : Rules
+    first_day : date or None
+        Of field work; a later date of the rules is said to be later.
+
+    Examples
+    --------
+    >>> stated(Rules(fixed_by="L. Fenn", fixed_on=date(2026, 11, 2)))
+    'as stated by L. Fenn, fixed on 2026-11-02'
+    >>> stated(Rules())
+    'as stated in the campaign file, fixed on a day that nobody typed'
+    """
+    by = f"by {rules.fixed_by}" if rules.fixed_by else "in the campaign file"
+    if rules.fixed_on is None:
+        return f"as stated {by}, fixed on a day that nobody typed"
+    late = ""
+    if first_day is not None and rules.fixed_on > first_day:
+        late = f", after the first day of field work, {first_day}"
+    return f"as stated {by}, fixed on {rules.fixed_on}{late}"
 
 
 def rules_blocks(rules: Rules) -> list[Block]:
@@ -81,11 +116,12 @@ def rules_blocks(rules: Rules) -> list[Block]:
         rules_table(rules),
         Facts(
             (
-                ("Fixed by", rules.fixed_by or BLANK),
-                ("Fixed on", str(rules.fixed_on or BLANK)),
+                ("Fixed by, as stated", rules.fixed_by or BLANK),
+                ("Fixed on, as stated", str(rules.fixed_on or BLANK)),
                 ("Fingerprint of the rules", rules_fingerprint(rules)),
             )
         ),
+        Paragraph(UNVERIFIED),
         Paragraph(
             "The fingerprint is the start of the SHA-256 of the [rules] table, written as "
             "lines “key = value” in the order of the alphabet (fixed_by and fixed_on among them; "

@@ -47,6 +47,27 @@ def words(text: str) -> str:
     return " ".join(text.split())
 
 
+@pytest.mark.parametrize(
+    ("fixed_on", "first", "alarms"),
+    [
+        ("2020-05-04", "2020-04-13", ["The rules are stated to have been fixed", "A plan made on"]),
+        ("2020-03-02", "2020-04-13", ["A plan made on"]),
+        ("2999-03-02", "2999-04-13", []),
+    ],
+)
+def test_dates_after_the_first_day_of_field_work_are_alarms(folder, fixed_on, first, alarms):
+    """What is decided then cannot be shown to come before results; a plan is made today."""
+    text = bent(
+        ("[[analyte]]", f"fieldwork_from = {first}\n[[analyte]]"),
+        ("[draw]", f"[rules]\nfixed_on = {fixed_on}\n[draw]"),
+    )
+    result = check(folder, text)
+    assert result.exit_code == 0
+    told = [part.partition(first)[0] for part in words(result.stdout).split("ALARM: ")[1:]]
+    assert len(told) == len(alarms)
+    assert all(said.startswith(alarm) for said, alarm in zip(told, alarms, strict=True))
+
+
 def test_sound_campaign_is_told_in_sentences(folder):
     """The reader sees whether the tool understood what the author meant."""
     result = check(folder, PLAIN)

@@ -170,7 +170,7 @@ def test_every_section_of_the_checklist_is_there_in_order():
         "How the locations are drawn",
         "Locations",
         "Samples and quality control",
-        "Rules fixed before results",
+        "Rules on record",
         "In the field",
         "Cautions and hold points",
         "For the report",
