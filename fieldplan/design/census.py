@@ -97,9 +97,11 @@ class Census:
                 "were a simple random part of each stratum, times (1 − n/N)."
             )
             caution = (
-                f"{whole - reached} of {whole} units gave no result. The interval treats those "
-                "reached as a random part, which nobody drew: if the missing ones differ, the "
-                f"mean is off by more than it says. {REMAINS}"
+                f"{whole - reached} of {whole} units gave no result, and no draw decided which. "
+                "Standard error and interval are those that the units reached would have, had "
+                "they been drawn at random from the list; they do not know why the others are "
+                "missing. If these differ, the mean is off by more than the interval says. "
+                f"{REMAINS}"
             )
         return weighted_mean(strata, single_result=single_result, method=method, caution=caution)
 

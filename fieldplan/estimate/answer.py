@@ -13,7 +13,7 @@ from fieldplan.estimate.means import Means, means_by
 from fieldplan.estimate.model import Change, Estimate
 from fieldplan.estimate.order import standing_sentence
 from fieldplan.estimate.planned import planned_for
-from fieldplan.estimate.population import outside_sentence, population_sentence
+from fieldplan.estimate.population import is_census, outside_sentence, population_sentence
 from fieldplan.estimate.rejected import rejected_sentence
 from fieldplan.estimate.sentences import answer_sentences
 from fieldplan.estimate.working import working
@@ -109,8 +109,7 @@ def estimate(
 
 def _coverage_steps(plan: Plan, means: Means, unit: str) -> list[Step]:
     """Show where the coverage comes from; a census has none."""
-    census = plan.campaign.design[0].layout == "census"
-    return [] if census else coverage_steps(means, unit)
+    return [] if is_census(plan) else coverage_steps(means, unit)
 
 
 def _refuse_undecided(returns: Returns) -> None:

@@ -8,6 +8,7 @@ import numpy as np
 from fieldplan.base.units import significant
 from fieldplan.design.model import StratumValues
 from fieldplan.estimate.means import Means
+from fieldplan.estimate.population import is_census
 from fieldplan.lab.words import listed
 from fieldplan.plan.model import Plan
 from fieldplan.stats.distributions import t_share
@@ -102,7 +103,7 @@ def coverage_sentence(plan: Plan, means: Means) -> str:
             "The standard error is 0: no error comes from choosing places, or all results of a "
             "stratum are the same. Coverage cannot be judged."
         )
-    if plan.campaign.design[0].layout == "census":
+    if is_census(plan):
         return (
             "Nobody drew which units are missing, so no share of campaigns can be given in which "
             "such an interval holds the true mean."

@@ -137,13 +137,13 @@ def population_sentence(plan: Plan, returns: Returns) -> str:
     planned = len(plan.locations.of_class("random"))
     statement = " ".join(plan.frame.population.sentences[:1])
     if not returns.lost:
-        return f"{statement} All {planned} random locations gave a result.".strip()
+        return f"{statement} All {planned} {places_word(plan)} gave a result.".strip()
     reasons = listed([f"{entry.location_id} ({entry.reason})" for entry in returns.lost])
     replaced = sum(bool(entry.replaced_by) for entry in returns.lost)
     parts = [
         statement,
-        f"{len(returns.lost)} of {planned} random locations gave no result: {reasons}; "
-        f"{counted(replaced, 'alternate')} stood in.",
+        f"{len(returns.lost)} of {planned} {places_word(plan)} gave no result: {reasons}"
+        + (f"; {counted(replaced, 'alternate')} stood in." if not is_census(plan) else "."),
     ]
     missed = share_not_reached(plan, returns.lost)
     if missed > 0:
@@ -153,6 +153,16 @@ def population_sentence(plan: Plan, returns: Returns) -> str:
         )
     parts.append(_clustered(plan, returns.lost))
     return " ".join(part for part in parts if part)
+
+
+def is_census(plan: Plan) -> bool:
+    """Tell whether every unit was to be visited, so that chance chose none of them."""
+    return plan.campaign.design[0].layout == "census"
+
+
+def places_word(plan: Plan) -> str:
+    """Name the planned places: units of a census are not drawn."""
+    return "units" if is_census(plan) else "random locations"
 
 
 def _clustered(plan: Plan, lost: Sequence[LostLocation]) -> str:

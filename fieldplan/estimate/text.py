@@ -4,6 +4,7 @@ import math
 
 from fieldplan.base.units import significant
 from fieldplan.estimate.model import Estimate
+from fieldplan.estimate.population import is_census, places_word
 from fieldplan.estimate.sentences import analyte_name, interval_in_words, where
 from fieldplan.lab.words import counted
 from fieldplan.plan.model import Plan
@@ -26,10 +27,12 @@ def results_paragraph(plan: Plan, estimate: Estimate) -> str:
     replaced = sum(bool(entry.replaced_by) for entry in estimate.returns.lost)
     known = mean.degrees_of_freedom
     freedom = f", {known:.3g} degrees of freedom" if math.isfinite(known) else ""
+    words = counted(replaced, "of them from an alternate", "of them from alternates")
+    stand_ins = "" if is_census(plan) else f", {words}"
     parts = [
-        f"By plan {plan.revision_name}, {planned} random locations of {where(plan)} were to be "
-        f"sampled for {analyte_name(plan, estimate.analyte)}; {mean.n} results are in the mean, "
-        f"{counted(replaced, 'of them from an alternate', 'of them from alternates')}.",
+        f"By plan {plan.revision_name}, {planned} {places_word(plan)} of {where(plan)} were to be "
+        f"sampled for {analyte_name(plan, estimate.analyte)}; {mean.n} results are in the "
+        f"mean{stand_ins}.",
         f"The mean is {significant(mean.mean)} {unit} (standard error "
         f"{significant(mean.standard_error)} {unit}{freedom}; "
         f"{interval_in_words(estimate.interval, unit)}).",

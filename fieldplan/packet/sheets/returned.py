@@ -1,6 +1,7 @@
 """What came back: results by location, and what happened in the field."""
 
 from fieldplan.base.document import Block, Bullets, Heading, Paragraph, Table
+from fieldplan.estimate.population import is_census
 from fieldplan.packet.sheets.amounts import counted, trimmed
 from fieldplan.packet.sheets.plan_words import REASONS, several_strata
 from fieldplan.plan.model import Plan
@@ -24,7 +25,7 @@ def location_table(plan: Plan, returns: Returns) -> Table:
     unit = plan.campaign.analyte_called(returns.analyte).unit
     kept = [True, several_strata(plan), True, True, True, True]
     columns = ("Location", "Stratum", "Class", "As reported", f"Value ({unit})", "In the mean")
-    rows = [location_row(result) for result in returns.results]
+    rows = [location_row(plan, result) for result in returns.results]
     return Table(
         tuple(c for c, keep in zip(columns, kept, strict=True) if keep),
         tuple(tuple(c for c, keep in zip(row, kept, strict=True) if keep) for row in rows),
@@ -32,15 +33,16 @@ def location_table(plan: Plan, returns: Returns) -> Table:
     )
 
 
-def location_row(result: LocationResult) -> tuple[str, ...]:
-    """Set one location."""
+def location_row(plan: Plan, result: LocationResult) -> tuple[str, ...]:
+    """Set one location; the units of a census were not drawn."""
+    drawn = result.location_class != "random" or not is_census(plan)
     used = "Yes" if result.used else f"No. {result.why_not}".strip()
     if result.stands_in_for:
         used += f"; stands in for {result.stands_in_for}"
     return (
         result.location_id,
         result.stratum,
-        result.location_class,
+        result.location_class if drawn else "unit",
         ", ".join(cell.strip() for cell in result.as_reported),
         trimmed(result.half),
         used,

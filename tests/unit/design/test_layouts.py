@@ -230,7 +230,7 @@ def test_a_census_with_units_missing_is_no_census() -> None:
         answer.standard_error
         == layout_named("simple-random").estimate(one(WELLS, 14)).standard_error
     )
-    assert answer.caution.startswith("6 of 14 units gave no result.")
+    assert answer.caution.startswith("6 of 14 units gave no result, and no draw decided which.")
 
 
 def test_a_census_visits_every_unit_in_file_order() -> None:

@@ -12,6 +12,7 @@ from fieldplan.estimate import estimate
 from fieldplan.estimate.coverage import equivalent_sample, share_with_other_spread
 from fieldplan.estimate.means import Means, means_by
 from fieldplan.estimate.text import results_paragraph
+from fieldplan.packet.sheets.returned import location_table
 from fieldplan.plan.model import Plan
 from fieldplan.returns.model import LostLocation
 from fieldplan.stats.shape import t_coverage
@@ -68,6 +69,15 @@ def test_nobody_draws_what_a_census_loses() -> None:
     answer = estimate(plan, returned(results, [LostLocation("site-8", "site", "dry", "")]))
     assert "Nobody drew which units are missing" in answer.coverage_sentence
     assert "%" not in answer.coverage_sentence
+    assert "no draw decided which" in answer.mean.caution
+    assert "had they been drawn at random" in answer.mean.caution
+    assert "1 of 8 units gave no result: site-8 (dry)." in answer.population_sentence
+    paragraph = results_paragraph(plan, answer)
+    assert "random location" not in paragraph
+    assert "alternate" not in paragraph
+    assert answer.mean.caution in paragraph
+    assert {row[1] for row in location_table(plan, answer.returns).rows} == {"unit"}
+    assert not any(step.symbol == "held" for step in answer.steps)
 
 
 WEIGHTS, COUNTS, SIGMAS = (0.654, 0.164, 0.182), (13, 12, 1), (34.0, 83.0)
