@@ -20,6 +20,9 @@ LITTLE = 0.5
 SHOWN = (2.0, 4.0)
 """Skewness for which the coverage is said whatever the results behind sigma show."""
 
+LARGE = 10
+"""A list of so many times the results is taken as a large population."""
+
 RULE = (
     "For skewed data a two-sided 95 % interval needs n above 25·G1², with G1 the skewness of the "
     "population (Cochran 1977). A limit alone needs several times that, about 121·G1², where it "
@@ -42,7 +45,7 @@ def lean_sentences(question: Question, needed: tuple[int, ...]) -> list[str]:
     list of str
     """
     n, lean = equivalent_sample(question, needed)
-    held = _held(question, n, lean)
+    held = [*_held(question, n, lean), *_short_list(question, needed)]
     known = [part for part in question.parts if part.skewness is not None]
     if lean is None:
         where = f"Skewness is known in {listed([p.name for p in known])} only. " if known else ""
@@ -126,18 +129,38 @@ def _held(question: Question, n: int, lean: float | None) -> list[str]:
         return percent(t_coverage(n, skewness, confidence=confidence, kind=kind))
 
     name = "interval" if question.interval == "two-sided" else question.interval.replace("-", " ")
-    large = "" if question.total_population is None else " of a large population"
+    listed_units = any(part.population is not None for part in question.parts)
+    large = " of a large population" if listed_units else ""
     shown = [f"{share(value)} at {typed(value)}" for value in SHOWN]
     if lean is not None and abs(lean) >= LITTLE:
         shown.insert(0, f"{share(lean)} at {_signed(lean)}")
-    line = (
+    return [
         f"The share of campaigns in which a nominal {typed_percent(question.confidence)} {name} "
         f"from {n} results{large} holds the true mean depends on the skewness: about "
         f"{listed(shown)}."
-    )
-    if large:
-        line += " A short list can do worse than a large population as skewed."
-    return [line]
+    ]
+
+
+def _short_list(question: Question, needed: Sequence[int]) -> list[str]:
+    """Say what one unit far from all others does to the interval of a list.
+
+    Where the other units are alike, an interval without that unit is a point beside the true mean.
+    """
+    pairs = [
+        (results, part.population)
+        for results, part in zip(needed, question.parts, strict=True)
+        if part.population is not None and results < part.population < LARGE * results
+    ]
+    if not pairs:
+        return []
+    results, units = min(pairs, key=lambda pair: pair[0] / pair[1])
+    side = {"upper-limit": "above", "lower-limit": "below"}.get(question.interval, "from")
+    held = "limit" if question.interval != "two-sided" else "interval"
+    return [
+        f"A list can do worse: where one unit lies far {side} all others and those are alike, the "
+        f"{held} holds the true mean only if that unit is drawn, in {percent(results / units)} of "
+        f"campaigns ({results} of {units} units), whatever it claims."
+    ]
 
 
 def _signed(value: float) -> str:

@@ -115,9 +115,10 @@ def declared_lines(plan: Plan) -> list[str]:
     question = question_of(plan.campaign, plan.spread, plan.frame)
     n, lean = equivalent_sample(question, [entry.needed for entry in plan.size.strata])
     held = t_coverage(n, end, confidence=rules.confidence, kind=rules.interval)
+    large = " of a large population" if plan.frame.kind == "list" else ""
     line += (
-        f". At a skewness of {end:g}, which ends that class, t from {n} results holds the true "
-        f"mean in about {100 * held:.0f} % of campaigns."
+        f". At a skewness of {end:g}, which ends that class, t from {n} results{large} holds the "
+        f"true mean in about {100 * held:.0f} % of campaigns."
     )
     if lean is not None and abs(lean) > end:
         line += f" The results behind sigma lie outside it: their skewness is {rounded(lean)}."

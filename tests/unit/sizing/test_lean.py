@@ -1,15 +1,16 @@
 """Skewness is judged where the interval stands: at the weighted mean, and by its direction."""
 
 import math
-from itertools import product
+from itertools import combinations, product
 
 import numpy as np
 import pytest
 from scipy import stats
 
 from fieldplan.sizing.answer import answer
-from fieldplan.sizing.lean import equivalent_sample
+from fieldplan.sizing.lean import equivalent_sample, lean_sentences
 from fieldplan.sizing.question import Part, Question
+from fieldplan.sizing.words import percent
 from fieldplan.stats.intervals import IntervalKind
 from fieldplan.stats.shape import skewness_of_mean, t_coverage
 from tests.unit.sizing.asking import SIGMAS, WEIGHTS, ask, three, whole
@@ -111,9 +112,29 @@ def test_a_stratum_of_unknown_skewness_leaves_the_mean_unknown() -> None:
     assert "Skewness is known in a and b only. For skewed data" in text
 
 
+@pytest.mark.parametrize("drawn", [3, 5, 7])
+def test_a_list_with_one_far_unit_is_held_only_if_that_unit_is_drawn(drawn: int) -> None:
+    """Brute force: every sample of a list of 8 alike units but one, with t and the correction."""
+    units = [1.0] * 7 + [100.0]
+    held = []
+    for sample in combinations(units, drawn):
+        error = np.std(sample, ddof=1) * math.sqrt((1 - drawn / 8) / drawn)
+        reach = stats.t.ppf(0.975, drawn - 1) * error
+        held.append(abs(np.mean(sample) - np.mean(units)) <= reach + 1e-9)
+    assert np.mean(held) == pytest.approx(drawn / 8)
+    sentences = lean_sentences(ask(whole(3.1, population=8), 0.5), (drawn,))
+    assert f"in {percent(drawn / 8)} of campaigns ({drawn} of 8 units)" in sentences[-1]
+
+
+def test_a_list_taken_whole_or_an_area_has_no_such_unit() -> None:
+    """Every unit is drawn, or the population has no units."""
+    assert "A list can" not in " ".join(lean_sentences(ask(whole(population=8), 0.5), (8,)))
+    assert "A list can" not in " ".join(lean_sentences(ask(whole(), 6.0), (8,)))
+    assert "A list can" not in " ".join(lean_sentences(ask(whole(population=900), 6.0), (8,)))
+
+
 def test_a_coverage_for_a_list_is_said_to_be_of_a_large_population() -> None:
     """The table was simulated without lists: of a short one, coverage can be lower."""
     listed = " ".join(answer(ask(whole(3.1, population=22, skewness=1.6), 0.5)).conditions)
     assert "results of a large population holds the true mean" in listed
-    assert "A short list can do worse" in listed
     assert "large population" not in " ".join(answer(ask(whole(skewness=1.6), 6.0)).conditions)
