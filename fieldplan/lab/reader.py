@@ -2,13 +2,13 @@
 
 from collections.abc import Mapping
 from difflib import get_close_matches
-from itertools import pairwise
 from pathlib import Path
 
 from fieldplan.base.errors import LabError
 from fieldplan.campaign.model import Analyte, Campaign
 from fieldplan.lab.cells import tidy
 from fieldplan.lab.columns import LAB_COLUMNS, find_columns
+from fieldplan.lab.marks import decimal_marks
 from fieldplan.lab.model import REJECTED, LabRow, LabTable
 from fieldplan.lab.row import FileMemory, RowCells, read_row
 from fieldplan.lab.tables import TextTable, capped, read_tables
@@ -51,16 +51,16 @@ def read_lab(
     table, found, notes = _choose_sheet(path, columns)
     analytes = {tidy(name).casefold(): a for a in campaign.analyte for name in _names(a)}
     memory = FileMemory()
-    decimal_comma = table.separator in {";", "\t"} and not _has_decimal_point(table, found)
+    marks = decimal_marks(table, found)
     rows: list[LabRow] = []
     problems: list[str] = []
     for number, cells in table.rows:
         try:
             row = read_row(
-                RowCells(table, found, number, cells),
+                RowCells(table, found, number, cells, marks.point_unclear),
                 analytes,
                 memory,
-                decimal_comma=decimal_comma,
+                decimal_comma=marks.comma,
             )
         except LabError as fault:
             problems += fault.problems
@@ -72,7 +72,7 @@ def read_lab(
         problems.append(_nothing_found(table.file_name, analytes, memory))
     if problems:
         raise LabError(*capped(problems))
-    comma_read = decimal_comma and any("," in row.as_reported for row in rows)
+    comma_read = marks.comma and any("," in row.as_reported for row in rows)
     labels = {analyte.id: analyte.label for analyte in campaign.analyte}
     more = _notes(table.file_name, memory, labels=labels, comma_read=comma_read)
     return LabTable(
@@ -115,17 +115,6 @@ def _choose_sheet(
     others = [f"'{t.sheet}'" for t in tables if t is not table]
     note = f"{path.name}: sheet '{table.sheet}' was read, {listed(others)} was not."
     return table, found, (note,) if others else ()
-
-
-def _has_decimal_point(table: TextTable, found: Mapping[str, int]) -> bool:
-    """Whether a digit, a point and a digit stand side by side in a column of numbers."""
-    indexes = [found[c] for c in ("as_reported", "reporting_limit") if c in found]
-    for _, cells in table.rows:
-        for text in (cells[index] for index in indexes):
-            parts = text.split(".")
-            if any(a[-1:].isdigit() and b[:1].isdigit() for a, b in pairwise(parts)):
-                return True
-    return False
 
 
 def _mixed_meanings(name: str, memory: FileMemory) -> list[str]:

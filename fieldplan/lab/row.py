@@ -10,6 +10,7 @@ from typing import NoReturn, TypeVar
 from fieldplan.base.errors import LabError
 from fieldplan.campaign.model import Analyte
 from fieldplan.lab.cells import Reading, letters_beside, read_cell, tidy
+from fieldplan.lab.marks import like_thousands
 from fieldplan.lab.model import OTHER_ANALYTE, REJECTED, LabRow, LeftOutRow
 from fieldplan.lab.qualifiers import read_qualifier
 from fieldplan.lab.roles import plain_role
@@ -22,12 +23,16 @@ _NO_LIMIT = {"", "-", "--", "na", "n/a", "nd"}
 
 @dataclass(frozen=True)
 class RowCells:
-    """The cells of one row by our column names, and sentences that begin with file and row."""
+    """The cells of one row by our column names, and sentences that begin with file and row.
+
+    ``point_unclear`` is for files in which ``1.200`` may be 1200.
+    """
 
     table: TextTable
     found: Mapping[str, int]
     number: int
     cells: tuple[str, ...]
+    point_unclear: bool = False
 
     def text(self, column: str) -> str:
         """Return a cell as written; empty when the file has no such column."""
@@ -245,6 +250,14 @@ def _column_says_not_detected(row: RowCells, memory: FileMemory) -> bool:
 
 
 def _reading(row: RowCells, column: str, decimal_comma: bool) -> Reading:
+    whole = like_thousands(row.text(column)) if row.point_unclear else ""
+    if whole:
+        row.refuse(
+            column,
+            "has a point that may part thousands or decimals, and no other number of the file "
+            f"tells which. Type {whole} if that is meant; if the point is decimal, save the file "
+            "with commas between its cells.",
+        )
     try:
         return read_cell(row.text(column), decimal_comma=decimal_comma)
     except LabError as fault:
