@@ -68,7 +68,7 @@ def mean_without(mean: MeanEstimate, outside: Mapping[str, float]) -> float | No
     Returns
     -------
     float or None
-        Σ W (1 − share) x̄ / Σ W (1 − share); None where nothing is left.
+        Σ W (1 − share) mean / Σ W (1 − share); None where nothing is left.
 
     Notes
     -----

@@ -47,9 +47,9 @@ def _stratum_steps(
     total, n = float(values.values.sum()), int(values.values.size)
     steps = [
         Step(
-            symbol=f"x̄{mark}",
+            symbol=f"mean{mark}",
             meaning=f"Mean of the results{of}",
-            formula="x̄ = Σ x / n",
+            formula="mean = Σ x / n",
             inputs=(
                 Quantity("Σ x", f"sum of the results{of}", total, unit),
                 Quantity("n", f"results{of}, one a location", n),
@@ -67,9 +67,9 @@ def _stratum_steps(
     spread = Step(
         symbol=f"s{mark}",
         meaning=f"Standard deviation of the results{of}",
-        formula="s = √(Σ (x − x̄)² / (n − 1))",
+        formula="s = √(Σ (x − mean)² / (n − 1))",
         inputs=(
-            Quantity("Σ (x − x̄)²", "sum of squared distances from the mean", squares, f"({unit})²"),
+            Quantity("Σ (x − mean)²", "sum of squared distances", squares, f"({unit})²"),
             Quantity("n", f"results{of}", n),
         ),
         unrounded=found.sd,
@@ -109,12 +109,19 @@ def _weighted_mean(means: Means, unit: str) -> Step:
         for entry in means.half.strata
         for quantity in (
             Quantity(f"W {entry.stratum}", "share of the population", entry.weight),
-            Quantity(f"x̄ {entry.stratum}", "mean of the stratum", entry.mean, unit),
+            Quantity(f"mean {entry.stratum}", "mean of the stratum", entry.mean, unit),
         )
     ]
     mean = means.half.mean
     return Step(
-        "x̄", "Mean of the population", "x̄ = Σ W·x̄", tuple(inputs), mean, mean, unit, _STRATA
+        "mean",
+        "Mean of the population",
+        "mean = Σ W·(mean of the stratum)",
+        tuple(inputs),
+        mean,
+        mean,
+        unit,
+        _STRATA,
     )
 
 
@@ -166,7 +173,7 @@ def _interval_steps(means: Means, unit: str) -> list[Step]:
         )
     )
     inputs = (
-        Quantity("x̄", "mean", mean, unit),
+        Quantity("mean", "estimated mean", mean, unit),
         Quantity("t", "Student's quantile", t),
         Quantity("SE", "standard error", error, unit),
     )
@@ -174,7 +181,7 @@ def _interval_steps(means: Means, unit: str) -> list[Step]:
     for end, sign, name in ((interval.low, "−", "Low"), (interval.high, "+", "High")):
         if end is not None:
             meaning = f"{name} end at {100 * rules.confidence:g} % confidence"
-            formula = f"x̄ {sign} t·SE"
+            formula = f"mean {sign} t·SE"
             steps.append(Step(name.lower(), meaning, formula, inputs, end, end, unit, _RANDOM))
     return steps
 

@@ -4,6 +4,7 @@ import csv
 import io
 import json
 import math
+import unicodedata
 from dataclasses import replace
 
 import numpy as np
@@ -179,12 +180,12 @@ def test_the_working_ends_in_the_printed_numbers() -> None:
     """Each step's result is an input further down; the last two are the interval."""
     answer = estimate(make_plan(), make_returns())
     by_symbol = {step.symbol: step for step in answer.steps}
-    assert by_symbol["x̄"].unrounded == answer.mean.mean
+    assert by_symbol["mean"].unrounded == answer.mean.mean
     assert by_symbol["SE"].unrounded == answer.mean.standard_error
     assert by_symbol["low"].unrounded == answer.interval.low
     assert by_symbol["high"].unrounded == answer.interval.high
-    inputs = {q.symbol: q.value for q in by_symbol["x̄"].inputs}
-    total = sum(inputs[f"W {s}"] * inputs[f"x̄ {s}"] for s in ("meadow", "yard"))
+    inputs = {q.symbol: q.value for q in by_symbol["mean"].inputs}
+    total = sum(inputs[f"W {s}"] * inputs[f"mean {s}"] for s in ("meadow", "yard"))
     assert total == pytest.approx(answer.mean.mean, rel=1e-12)
     parts = {q.symbol: q.value for q in by_symbol["df"].inputs}
     shares = [parts["part meadow"], parts["part yard"]]
@@ -192,7 +193,7 @@ def test_the_working_ends_in_the_printed_numbers() -> None:
     assert known == pytest.approx(answer.mean.degrees_of_freedom, rel=1e-9)
     assert sum(shares) ** 0.5 == pytest.approx(answer.mean.standard_error, rel=1e-9)
     census = estimate(list_plan(layout="census", units=8), wells())
-    assert [step.symbol for step in census.steps] == ["x̄", "s", "SE"]
+    assert [step.symbol for step in census.steps] == ["mean", "s", "SE"]
 
 
 @pytest.mark.parametrize("population", [None, 30])
@@ -238,6 +239,19 @@ def test_degrees_of_freedom_with_a_borrowed_spread_follow_from_what_is_printed(
     assert steps["s c"].unrounded == pytest.approx((total / 5) ** 0.5, rel=1e-12)
     assert "B·(n − 1)/Σ(n − 1)" in steps["df"].meaning
     assert "no published source" in steps["df"].source
+
+
+def test_formulas_hold_no_marks_that_readers_of_a_pdf_double() -> None:
+    """A letter with a combining bar comes out of a PDF as two; Unicode says which marks combine."""
+    returns = replace(make_returns(), lost=())
+    steps = estimate(make_plan(), returns).steps
+    words = "".join(
+        text
+        for step in steps
+        for text in (step.symbol, step.meaning, step.formula, *(q.symbol for q in step.inputs))
+    )
+    assert len(words) > 300
+    assert not [mark for mark in words if unicodedata.combining(mark)]
 
 
 def test_the_json_is_plain_and_whole() -> None:
