@@ -11,6 +11,7 @@ from fieldplan.lab.columns import LAB_COLUMNS, find_columns
 from fieldplan.lab.marks import decimal_marks
 from fieldplan.lab.model import REJECTED, LabRow, LabTable
 from fieldplan.lab.row import FileMemory, RowCells, read_row
+from fieldplan.lab.spreadsheet_ids import changed_ids_note
 from fieldplan.lab.tables import TextTable, capped, read_tables
 from fieldplan.lab.unread import unread_qualifiers
 from fieldplan.lab.words import counted, listed
@@ -79,7 +80,7 @@ def read_lab(
         file_name=table.file_name,
         sha256=table.sha256,
         rows=tuple(rows),
-        notes=(*table.notes, *notes, *more),
+        notes=(*table.notes, *notes, *changed_ids_note(table.file_name, rows), *more),
         rejected=tuple(memory.rejected),
         left_out=tuple(memory.left_out),
     )

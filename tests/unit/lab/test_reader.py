@@ -44,6 +44,15 @@ def test_ids_that_look_like_numbers_or_nothing_stay_text(read: Reader) -> None:
     ids = ["1e5", "007", "NA", "3-5", "None", "73928e03", "TRUE", "1_000"]
     table = read(HEAD + "\n" + "".join(f"{name},lead,1,mg/kg\n" for name in ids))
     assert [row.location_id for row in table.rows] == ids
+    assert table.notes == ()
+
+
+def test_ids_that_a_spreadsheet_may_have_changed_are_named(read: Reader) -> None:
+    """The wells 2-5 and MAY-02 both come out as 2-May; the labels on the jars still tell them."""
+    ids = ["1.00E+05", "2-May", "02-Mai-26", "Mar-01", "01/05/2026", "01.05.2026", "2026-05-01"]
+    for name in ids:
+        (note,) = read(f"{HEAD}\nA,lead,1,mg/kg\n{name},lead,1,mg/kg\n").notes
+        assert f"turned ids into dates or numbers: '{name}' (row 3)." in note
 
 
 def test_a_limit_comes_from_its_column_in_its_own_unit(read: Reader) -> None:
