@@ -58,8 +58,8 @@ def _few(question: Question) -> list[str]:
     named = listed([f"{part.name} ({part.results})" for part in few])
     return [
         f"Fewer than {FEW} results stand behind sigma in {named}, and Neyman allocation follows "
-        "them: simulated pilots of 3 or 4 results a stratum kept a stated 80 % in 72 to 80 % of "
-        "campaigns, near normal ones."
+        "them: simulated pilots of 3 or 4 near normal results a stratum kept a stated 80 % in 72 "
+        "to 80 % of campaigns."
     ]
 
 
