@@ -155,3 +155,18 @@ MEANING: dict[str, str] = {
     "paper.size": "size of the sheets",
 }
 """Keys are ``table.key``, and ``table`` for a table as a whole."""
+
+NOT_KNOWN: dict[str, str] = {
+    "plan.site": "take the line out if it has no name",
+    "plan.decision": "take the line out if none is known",
+    "plan.decides": "take the line out if it is nobody in particular",
+    "plan.prepared_by": "take the line out if it shall not be printed",
+    "analyte.action_level": "if there is none, take this line and that of its source out",
+    "analyte.action_level_source": "if there is no level, take this line and that of the level out",
+    "frame.strata": 'if there are none, take the line out and write layout = "simple-random"',
+    "frame.depth_top_m": "if it says nothing here, take the lines of the depth out",
+    "frame.depth_bottom_m": "if it says nothing here, take the lines of the depth out",
+    "sigma.from_results": 'if nobody knows, take the line out and write assurance = "plain"',
+    "sigma.pilot": "if there is none, write value and source in its place",
+}
+"""What to do about a key that is still to fill in and that nobody can fill in."""

@@ -1,70 +1,60 @@
 """From answers to the text of a campaign file, with comments that teach its keys."""
 
-from dataclasses import dataclass
+import re
 from datetime import date
-from typing import Literal
 
+from fieldplan.campaign.answers import Answers
 from fieldplan.campaign.model import FILL_IN
 from fieldplan.campaign.schema import SCHEMA_NAME
 
-TargetKind = Literal["standard_error", "half_width", "relative_half_width", "budget"]
+__all__ = ["Answers", "campaign_text", "initials", "toml_value", "waiting_tables"]
 
-
-@dataclass(frozen=True)
-class Answers:
-    """What a person could say about a campaign; None where the answer is not known yet.
-
-    Parameters
-    ----------
-    seed : int
-        Always known: it is drawn when nobody gives one.
-    plan_id, title, prepared_by : str, optional
-    prepared_on : date, optional
-    boundary, list_file : str, optional
-        Path from the campaign file, ``/`` between folders. A list makes the frame a list.
-    boundary_assumed : bool
-        The boundary is a circle round a point.
-    analyte, unit : str, optional
-        The analyte's name and the laboratory's unit.
-    target_kind, target : str, float, optional
-        Which form the target takes, and its amount.
-    pilot : str, optional
-        Path of the pilot results; the typed sigma is ignored when it is given.
-    sigma, sigma_source, from_results, expected_mean : float, str, int, float, optional
-        A typed standard deviation, where it comes from, how many results are behind it, and the
-        mean that is expected.
-    assurance : float or "plain", optional
-    chosen_by : str, optional
-        Who chose the assurance.
-    """
-
-    seed: int
-    plan_id: str | None = None
-    title: str | None = None
-    prepared_by: str | None = None
-    prepared_on: date | None = None
-    boundary: str | None = None
-    boundary_assumed: bool = False
-    list_file: str | None = None
-    analyte: str | None = None
-    unit: str | None = None
-    target_kind: TargetKind | None = None
-    target: float | None = None
-    pilot: str | None = None
-    sigma: float | None = None
-    sigma_source: str | None = None
-    from_results: int | None = None
-    expected_mean: float | None = None
-    assurance: float | Literal["plain"] | None = None
-    chosen_by: str | None = None
-
+_HEAD = [
+    f"#:schema ./{SCHEMA_NAME}",
+    '# Paths start from this file. "FILL IN" marks what is not known yet.',
+    "# A line such as '# key = value' waits: take the # away and put in what holds for you.",
+    "format = 1",
+]
 
 _RULES = [
     "",
     "[rules]  # fixed before any result is seen",
     'interval = "two-sided"  # or upper-limit, lower-limit',
     "confidence = 0.95",
-    "# promised_for, fixed_by and fixed_on are worth adding here.",
+    '# promised_for = "locations whose skewness is no larger than 2"',
+    '# fixed_by = "L. Fenn"',
+    "# fixed_on = 2026-11-02",
+]
+
+_COST = [
+    "",
+    "# [cost]  # then every number of locations has its price",
+    '# currency = "EUR"',
+    "# mobilisation = 900",
+    "# per_location = 28",
+    "# per_analysis = 46",
+]
+
+_REST = [
+    "",
+    "# [[qc]]  # control samples, counted apart from n",
+    '# kind = "field duplicate"',
+    "# share = 0.10",
+    '# source = "quality plan, section 4"',
+    "",
+    "[loss]  # locations that are expected to yield no result",
+    "# share = 0.08",
+    '# reason = "rubble under the turf"',
+    "",
+    "[field]  # what the crew needs to know that no map shows",
+    '# method = "SOP-07, hand auger"',
+    '# contact = "L. Fenn, number on the crew list"',
+    '# laboratory = "the laboratory under contract"',
+    "# position_accuracy_m = 2.0",
+    "# offset_within_m = 3.0",
+    '# offset_rule = "The first open direction of north, east, south, west."',
+    '# facts = ["land-owned-by-others", "livestock"]  # raise cautions',
+    "# ground_penetration = true",
 ]
 
 
@@ -88,9 +78,7 @@ def campaign_text(answers: Answers) -> str:
     ['name = "Lead"']
     """
     parts = (
-        [f"#:schema ./{SCHEMA_NAME}"],
-        ['# Paths start from this file. "FILL IN" marks what is not known yet.'],
-        ["format = 1"],
+        _HEAD,
         _plan(answers),
         _analyte(answers),
         _frame(answers),
@@ -99,6 +87,7 @@ def campaign_text(answers: Answers) -> str:
         _sigma(answers),
         _cost(answers),
         _RULES,
+        _REST,
         _draw(answers),
     )
     return "\n".join(line for part in parts for line in part) + "\n"
@@ -152,35 +141,66 @@ def initials(title: str) -> str:
     return letters if len(letters) > 1 else "PLAN"
 
 
+def waiting_tables(text: str) -> list[str]:
+    """Name the tables of a campaign text whose header waits behind a ``#``.
+
+    Examples
+    --------
+    >>> waiting_tables(campaign_text(Answers(seed=7)))
+    ['[[frame.exclusion]]', '[cost]', '[[qc]]']
+    """
+    return re.findall(r"^# (\[+[a-z.]+\]+)", text, re.MULTILINE)
+
+
 def _line(key: str, value: str | float | date | None, comment: str = "") -> str:
     """Write one key, with a comment behind it."""
     return f"{key} = {toml_value(value)}" + (f"  # {comment}" if comment else "")
 
 
+def _asked(answers: Answers, name: str, example: str | float, *, comment: str = "") -> str:
+    """Write an answer, FILL IN where it was asked for in vain, else an example that waits."""
+    value = getattr(answers, name)
+    if value is not None or name in answers.left_open:
+        return _line(name, value, comment)
+    return "# " + _line(name, example, comment)
+
+
 def _plan(answers: Answers) -> list[str]:
     identifier = answers.plan_id
-    if identifier is None and answers.title is not None:
+    if identifier is None and answers.title is not None and "plan_id" not in answers.left_open:
         identifier = initials(answers.title)
-    lines = [
+    dated = [] if answers.prepared_on is None else [_line("prepared_on", answers.prepared_on)]
+    return [
         "",
         "[plan]",
         _line("id", identifier, "opens the name of every packet, such as QF-r01"),
         _line("title", answers.title),
+        _asked(answers, "site", "Quarry Field"),
+        _asked(answers, "prepared_by", "R. Amadi"),
+        *dated,
+        '# reviewed_by = "S. Okoro"',
+        "# fieldwork_from = 2026-11-16",
+        "# fieldwork_to = 2026-11-18",
+        '# background = "A quarry until 1982, meadow since."',
+        _asked(answers, "decision", "Whether the meadow is let for grazing."),
+        _asked(answers, "decides", "L. Fenn"),
     ]
-    if answers.prepared_by is not None:
-        lines.append(_line("prepared_by", answers.prepared_by))
-    if answers.prepared_on is not None:
-        lines.append(_line("prepared_on", answers.prepared_on))
-    return lines
 
 
 def _analyte(answers: Answers) -> list[str]:
+    either = "or take both lines out" if "action_level" in answers.left_open else ""
+    source = _asked(answers, "action_level_source", "Soil note 3, 2024, table 2", comment=either)
+    if answers.action_level is not None or "action_level" in answers.left_open:
+        source = _line("action_level_source", answers.action_level_source, either)
     return [
         "",
         "[[analyte]]",
         _line("name", answers.analyte),
         _line("unit", answers.unit, "the laboratory's; every amount below is in it"),
-        "# reporting_limit, action_level and action_level_source are worth adding here.",
+        '# basis = "dry weight"',
+        "# reporting_limit = 5.0",
+        _asked(answers, "action_level", 150.0, comment=either),
+        source,
     ]
 
 
@@ -191,21 +211,56 @@ def _frame(answers: Answers) -> list[str]:
             *lines,
             _line("kind", "list"),
             _line("list_file", answers.list_file, "one row for each member"),
+            '# unit_is = "one well, once"',
+            '# time_window = "one round within three days, November 2026"',
+            '# why_this_area = "The order speaks of these wells as a whole."',
         ]
     lines += [_line("kind", "area"), _line("boundary", answers.boundary)]
     if answers.boundary_assumed:
         lines.append(_line("boundary_assumed", True, "a circle; stamped ASSUMED on every page"))
-    lines.append('# strata = "strata.geojson" and [[frame.exclusion]] divide and cut the site.')
-    return lines
+    comment = 'one outline for each part; then layout = "stratified"'
+    if "strata" in answers.left_open:
+        comment = 'or take this line out, and write layout = "simple-random"'
+    return [
+        *lines,
+        _asked(answers, "strata", "strata.geojson", comment=comment),
+        "# inset_m = 3.0  # metres that locations keep from the edge",
+        *_depth(answers),
+        '# unit_is = "one auger core"',
+        '# why_this_area = "One tenancy under one use."',
+        "",
+        "# [[frame.exclusion]]  # a part that is left out of the population",
+        '# file = "pond.geojson"',
+        '# reason = "open water"',
+        "# buffer_m = 2.0",
+    ]
+
+
+def _depth(answers: Answers) -> list[str]:
+    """Write the sampled interval, metres below the ground surface."""
+    given = answers.depth_m
+    behind = "" if given is not None or "depth_m" in answers.left_open else "# "
+    top, bottom = given or ((0.0, 0.15) if behind else (None, None))
+    either = "or take the three lines out" if not given and not behind else ""
+    return [
+        behind + _line("depth_top_m", top, either),
+        behind + _line("depth_bottom_m", bottom),
+        behind + _line("depth_datum", "ground surface"),
+    ]
 
 
 def _design(answers: Answers) -> list[str]:
-    layouts = "simple-random, stratified, "
-    layouts += "census" if answers.list_file is not None else "square-grid, triangular-grid"
+    others = "census" if answers.list_file is not None else "square-grid, triangular-grid"
+    layout, comment = "simple-random", f"or {others}"
+    if answers.divided:
+        layout = "stratified"
+    elif answers.list_file is None:
+        comment += "; with strata: stratified"
     return [
         "",
         "[[design]]",
-        _line("layout", "simple-random", f"or another of {layouts}"),
+        _line("layout", layout, comment),
+        "# alternates = 2  # places in reserve",
     ]
 
 
@@ -239,21 +294,36 @@ def _sigma(answers: Answers) -> list[str]:
     lines = ["", "[[sigma]]  # how far single results spread"]
     if answers.pilot is not None or answers.sigma is None:
         comment = "" if answers.pilot else "CSV or XLSX; or value and source in its place"
-        return [*lines, _line("pilot", answers.pilot, comment)]
+        return [*lines, _line("pilot", answers.pilot, comment), *_columns(answers)]
     lines += [
         _line("value", answers.sigma, "standard deviation of single results"),
         _line("source", answers.sigma_source, "ASSUMED is stamped on every page"),
+        _from_results(answers),
     ]
-    if answers.from_results is not None or answers.assurance not in (None, "plain"):
-        lines.append(_line("from_results", answers.from_results, "results behind the value"))
     if answers.expected_mean is not None or answers.target_kind == "relative_half_width":
         lines.append(_line("expected_mean", answers.expected_mean))
     return lines
 
 
+def _from_results(answers: Answers) -> str:
+    """Write how many results are behind sigma; what nobody knows is not asked for again."""
+    comment = "results behind the value; without it the assurance can only be plain"
+    if answers.from_results is None and answers.assurance not in (None, "plain"):
+        return _line("from_results", None, "not known? out with this line, and assurance = plain")
+    return _asked(answers, "from_results", 8, comment=comment)
+
+
+def _columns(answers: Answers) -> list[str]:
+    """Write what the pilot's columns are called there."""
+    if not answers.pilot_columns:
+        return []
+    inside = ", ".join(f"{ours} = {toml_value(t)}" for ours, t in answers.pilot_columns.items())
+    return [f"columns = {{ {inside} }}"]
+
+
 def _cost(answers: Answers) -> list[str]:
     if answers.target_kind != "budget":
-        return []
+        return _COST
     return [
         "",
         "[cost]",

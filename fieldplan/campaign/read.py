@@ -11,6 +11,7 @@ from fieldplan.base.errors import CampaignError
 from fieldplan.campaign.checks import check
 from fieldplan.campaign.later import later_value
 from fieldplan.campaign.lines import KeyPath, line_map, line_of
+from fieldplan.campaign.meaning import NOT_KNOWN
 from fieldplan.campaign.model import Campaign, ReadCampaign
 from fieldplan.campaign.problems import (
     Problem,
@@ -128,8 +129,10 @@ def inspect_text(text: str, path: Path) -> Inspection:
 
 
 def _meaning_of(path: KeyPath) -> str:
-    """Say what the key at a path is."""
-    return meaning(table_name(path[:-1]), str(path[-1]))
+    """Say what the key at a path is, and what to do if nobody knows its value."""
+    told = meaning(table_name(path[:-1]), str(path[-1]))
+    remedy = NOT_KNOWN.get(table_name(path))
+    return f"{told}; {remedy}" if remedy else told
 
 
 def _validate(screened: Screened, known: list[Problem]) -> tuple[Campaign | None, list[Problem]]:

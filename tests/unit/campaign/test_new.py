@@ -1,5 +1,6 @@
 """Answers become a campaign file that reads back as typed, with nothing made up."""
 
+import re
 import tomllib
 from pathlib import Path
 
@@ -77,13 +78,106 @@ def test_full_answers_leave_nothing_to_fill_in():
     assert objective.assurance_chosen_by == "L. Fenn"
 
 
-def test_file_teaches_in_about_forty_lines():
-    """Longer, and nobody reads it."""
+def test_file_teaches_on_less_than_two_pages():
+    """Longer, and nobody reads it; what counts already is about half of it."""
     lines = campaign_text(FULL).splitlines()
-    assert 30 <= len(lines) <= 45
+    live = [line for line in lines if line and not line.startswith("#")]
+    assert len(lines) <= 90
+    assert 25 <= len(live) <= 35
     assert lines[0] == "#:schema ./fieldplan.schema.json"
     assert max(map(len, lines)) <= 100
-    assert sum("#" in line for line in lines) >= 8
+
+
+WAITING = re.compile(r"^# ((?:[a-z_]+ = |\[+[a-z.]+\]).*)$", re.MULTILINE)
+WAITS = {
+    "fieldwork_from", "method", "contact", "action_level", "share", "kind", "decision", "decides",
+    "site", "per_location", "fixed_by",
+}  # fmt: skip
+
+
+@pytest.mark.parametrize("kind", ["area", "list"])
+def test_every_line_that_waits_holds_when_its_mark_is_taken_away(kind):
+    """An example that is refused teaches the wrong thing; all of them together, as one file."""
+    listed = {"boundary": None, "list_file": "wells.csv"}
+    text = campaign_text(changed(**(listed if kind == "list" else {}), prepared_by=None))
+    waiting = dict.fromkeys(line.split(" = ")[0] for line in WAITING.findall(text))
+    assert set(waiting) > WAITS | (
+        {"depth_top_m", "strata", "inset_m"} if kind == "area" else set()
+    )
+    live = WAITING.sub(r"\1", text)
+    if kind == "area":  # the line of the strata says that the layout follows them
+        live = live.replace('layout = "simple-random"', 'layout = "stratified"')
+    found = inspect_text(live, PLACE)
+    assert (found.problems, found.fill_in) == ((), ())
+    campaign = found.campaign.campaign
+    assert campaign.field.method
+    assert campaign.loss.share == 0.08
+    assert campaign.qc[0].share == 0.10
+    assert campaign.cost is not None
+
+
+def test_what_was_asked_for_and_is_not_known_is_left_to_fill_in():
+    """And each such line says what to do if nobody knows."""
+    names = ("site", "prepared_by", "decision", "decides", "action_level", "depth_m", "strata")
+    answers = changed(prepared_by=None, left_open=frozenset(names))
+    found = inspect_text(campaign_text(answers), PLACE)
+    assert found.problems == ()
+    assert [entry.key for entry in found.fill_in] == [
+        "plan.site",
+        "plan.prepared_by",
+        "plan.decision",
+        "plan.decides",
+        "analyte.action_level",
+        "analyte.action_level_source",
+        "frame.strata",
+        "frame.depth_top_m",
+        "frame.depth_bottom_m",
+    ]
+    assert all("take" in entry.meaning for entry in found.fill_in)
+
+
+def test_answers_that_decide_the_plan_are_written():
+    """What the sheet prints as "not typed" otherwise."""
+    answers = changed(
+        site="Quarry Field",
+        decision="Whether it is let.",
+        decides="S. Okoro",
+        action_level=150.0,
+        action_level_source="Note 3",
+        depth_m=(0.0, 0.15),
+        strata="parts.geojson",
+        pilot_columns={"as_reported": 'the "Result"'},
+    )
+    found = inspect_text(campaign_text(answers), PLACE)
+    assert (found.problems, found.fill_in) == ((), ())
+    campaign = found.campaign.campaign
+    assert (campaign.plan.site, campaign.plan.decides) == ("Quarry Field", "S. Okoro")
+    assert campaign.plan.decision == "Whether it is let."
+    assert campaign.analyte[0].action_level == 150
+    frame = campaign.frame[0]
+    assert (frame.depth_top_m, frame.depth_bottom_m, frame.depth_datum) == (
+        0,
+        0.15,
+        "ground surface",
+    )
+    assert (frame.strata, campaign.design[0].layout) == ("parts.geojson", "stratified")
+    assert campaign.sigma[0].columns == {"as_reported": 'the "Result"'}
+
+
+def test_list_in_strata_is_drawn_in_strata():
+    """Simple random would be refused."""
+    answers = changed(boundary=None, list_file="wells.csv", list_in_strata=True)
+    campaign = inspect_text(campaign_text(answers), PLACE).campaign.campaign
+    assert campaign.design[0].layout == "stratified"
+
+
+def test_guess_with_nothing_behind_it_is_no_dead_end():
+    """Nobody can fill in how many results are behind a guess, so the file does not ask for it."""
+    answers = changed(pilot=None, sigma=4.0, sigma_source="ASSUMED", assurance="plain")
+    assert inspect_text(campaign_text(answers), PLACE).fill_in == ()
+    share = changed(pilot=None, sigma=4.0, sigma_source="ASSUMED", assurance=0.8)
+    (entry,) = inspect_text(campaign_text(share), PLACE).fill_in
+    assert entry.meaning.endswith('take the line out and write assurance = "plain"')
 
 
 def test_nothing_known_means_fill_in_everywhere_and_no_number():
@@ -106,10 +200,15 @@ def test_nothing_known_means_fill_in_everywhere_and_no_number():
     assert not [value for value in objective.values() if not isinstance(value, str)]
 
 
-@pytest.mark.parametrize("field", [name for name in FULL.__dict__ if name != "seed"])
-def test_any_answer_may_be_left_open(field):
-    """Each "don't know" alone still gives a file without problems."""
-    found = inspect_text(campaign_text(changed(**{field: None})), PLACE)
+NAMES = [name for name in FULL.__dict__ if name not in ("seed", "pilot_columns", "left_open")]
+
+
+@pytest.mark.parametrize("asked", [False, True])
+@pytest.mark.parametrize("name", NAMES)
+def test_any_answer_may_be_left_open(name, asked):
+    """Each "don't know" alone still gives a file without problems, asked for or not."""
+    left_open = frozenset({name}) if asked else frozenset()
+    found = inspect_text(campaign_text(changed(**{name: None}, left_open=left_open)), PLACE)
     assert found.problems == ()
 
 
