@@ -34,8 +34,31 @@ COMMANDS: dict[str, dict[str, str]] = {
 }
 
 
+def text_fault(word: str) -> str:
+    """Say what is wrong with a typed word that no file can hold as text; nothing when it can.
+
+    Examples
+    --------
+    >>> text_fault("Grün"), text_fault("Gr" + chr(0xDCFC) + "n")
+    ('', "'Gr?n' has signs (at the ?) that are no UTF-8 text; type it anew, or rename the file.")
+    """
+    readable = word.encode("utf-8", errors="replace").decode("utf-8")
+    if readable == word:
+        return ""
+    remedy = "type it anew, or rename the file."
+    return f"'{readable}' has signs (at the ?) that are no UTF-8 text; {remedy}"
+
+
 class CommandTable(click.Group):
     """A group that knows its commands by name and imports one only when it is called."""
+
+    def parse_args(self, ctx: click.Context, args: list[str]) -> list[str]:
+        """Refuse words that are no text before anything reads them."""
+        for word in args:
+            fault = text_fault(word)
+            if fault:
+                raise click.UsageError(fault, ctx)
+        return super().parse_args(ctx, args)
 
     def list_commands(self, ctx: click.Context) -> list[str]:  # noqa: ARG002
         """Name all commands in the order of the job."""

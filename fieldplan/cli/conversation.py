@@ -7,9 +7,10 @@ from typing import Literal, TypeVar
 
 import click
 
-from fieldplan.base.errors import FieldplanError
+from fieldplan.base.errors import CampaignError, FieldplanError
 from fieldplan.campaign.new import Answers, initials
 from fieldplan.campaign.outline import read_position
+from fieldplan.cli import text_fault
 from fieldplan.cli.answers import (
     Start,
     circle_start,
@@ -50,16 +51,33 @@ def _ask(question: str, read: Callable[[str], Answer]) -> Answer | None:
     """Ask until the answer can be read; None when it is left open."""
     end = " " if question.endswith("?") else ": "
     while True:
-        typed = click.prompt(
-            wrapped(question), default="", show_default=False, prompt_suffix=end, err=True
-        ).strip()
+        typed = _typed(wrapped(question), end)
         if typed in ("", "?"):
             return None
+        broken = text_fault(typed)
+        if broken:
+            say(wrapped(broken, indent="  "))
+            continue
         try:
             return read(typed)
         except FieldplanError as fault:
             for problem in fault.problems:
                 say(wrapped(problem, indent="  "))
+
+
+def _typed(question: str, end: str) -> str:
+    """Return what is typed to a question."""
+    try:
+        typed: str = click.prompt(
+            question, default="", show_default=False, prompt_suffix=end, err=True
+        )
+    except UnicodeDecodeError as fault:
+        message = (
+            f"what was typed has the byte 0x{fault.object[fault.start]:02X}, which is no UTF-8 "
+            "text. Set the terminal to UTF-8 and start again; nothing was written."
+        )
+        raise CampaignError(message) from fault
+    return typed.strip()
 
 
 def _about_the_plan(answers: Answers) -> Answers:

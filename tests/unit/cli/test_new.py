@@ -308,6 +308,22 @@ def test_conversation_asks_again_after_an_answer_that_cannot_be_read(folder):
 def test_target_can_be_changed_after_its_echo(folder):
     """Seeing n is what makes people reconsider."""
     result = conversation(
+def test_conversation_asks_again_for_what_is_no_text(folder, monkeypatch):
+    """A question mark in its place would be a title that nobody typed."""
+    typed = iter(["Gr" + chr(0xDCFC) + "n", "Green", *[""] * 9])
+    monkeypatch.setattr(click, "prompt", lambda *_, **__: next(typed))
+    result = conversation()
+    assert "'Gr?n' has signs (at the ?) that are no UTF-8 text; type it anew" in said(result)
+    assert written()["plan"]["title"] == "Green"
+
+
+def test_conversation_ends_at_bytes_of_another_encoding(folder):
+    """Nothing can be read behind them; what is said must not call it a fault of the program."""
+    with pytest.raises(FieldplanError, match=r"has the byte 0xFC, which is no UTF-8 text\. Set"):
+        command_runner().invoke(command, input=b"Gr\xfcn\n\n", catch_exceptions=False)
+    assert not (folder / "campaign.toml").exists()
+
+
         "T", "", "", "", "Lead", "mg/kg", "", "27.57", "x", "8", "SE 6", "n", "SE 9", "y", "", ""
     )
     assert written()["objective"][0]["standard_error"] == 9
