@@ -9,6 +9,7 @@ CIRCLE_CORNERS = 180
 """A polygon of so many corners covers 99.98 % of its circle."""
 
 _HIGHEST_LATITUDE = 89.0
+_SMALLEST_RADIUS_M = 1.0
 _LARGEST_RADIUS_M = 200_000.0
 
 
@@ -93,6 +94,11 @@ def read_position(text: str) -> tuple[float, float]:
 def corners_geojson(corners: Sequence[tuple[float, float]]) -> str:
     """Write corners as a GeoJSON polygon (RFC 7946: longitude first, counter-clockwise).
 
+    Raises
+    ------
+    CampaignError
+        They enclose no ground.
+
     Examples
     --------
     >>> collection = json.loads(corners_geojson([(52.1, -1.9), (52.1, -1.8), (52.2, -1.8)]))
@@ -100,9 +106,19 @@ def corners_geojson(corners: Sequence[tuple[float, float]]) -> str:
     [[[-1.9, 52.1], [-1.8, 52.1], [-1.8, 52.2], [-1.9, 52.1]]]
     """
     ring = [(longitude, latitude) for latitude, longitude in corners]
+    west, south = (min(values) for values in zip(*ring, strict=True))
+    shifted = [(x - west, y - south) for x, y in ring]
     doubled_area = sum(
-        x0 * y1 - x1 * y0 for (x0, y0), (x1, y1) in zip(ring, ring[1:] + ring[:1], strict=True)
+        x0 * y1 - x1 * y0
+        for (x0, y0), (x1, y1) in zip(shifted, shifted[1:] + shifted[:1], strict=True)
     )
+    width, height = (max(values) for values in zip(*shifted, strict=True))
+    if abs(doubled_area) <= 1e-9 * width * height:
+        message = (
+            f"the {len(corners)} corners enclose no ground: they lie on one line, or the outline "
+            "crosses itself. Give them in the order of a walk round the site."
+        )
+        raise CampaignError(message)
     if doubled_area < 0:
         ring.reverse()
     return _polygon([*ring, ring[0]], {"source": "corners as typed"})
@@ -116,17 +132,17 @@ def circle_geojson(latitude: float, longitude: float, *, radius_m: float) -> str
     latitude, longitude : float
         Centre, decimal degrees.
     radius_m : float
-        Metres, above 0 and at most 200 000.
+        Metres, from 1 to 200 000: a site needs at least 1 m², and corners are kept to 1 cm.
 
     Raises
     ------
     CampaignError
         A radius out of range, or a circle that reaches a pole or crosses the 180th meridian.
     """
-    if not 0 < radius_m <= _LARGEST_RADIUS_M:
+    if not _SMALLEST_RADIUS_M <= radius_m <= _LARGEST_RADIUS_M:
         message = (
-            f"a radius above 0 and up to {_LARGEST_RADIUS_M:,.0f} m is accepted "
-            f"(got {radius_m:g}). Give metres."
+            f"a radius of at least {_SMALLEST_RADIUS_M:g} m and up to {_LARGEST_RADIUS_M:,.0f} m "
+            f"is accepted (got {radius_m:g}). Give metres."
         )
         raise CampaignError(message)
     from pyproj import Geod

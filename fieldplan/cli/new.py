@@ -1,5 +1,6 @@
 """``fieldplan new``: a campaign file from a conversation, or from options."""
 
+import math
 import secrets
 from dataclasses import replace
 from datetime import date
@@ -8,6 +9,7 @@ from typing import Any
 
 import click
 
+from fieldplan.base.bounds import magnitude_fault
 from fieldplan.base.errors import CampaignError, FieldplanError
 from fieldplan.base.files import write_atomically
 from fieldplan.campaign.new import Answers, campaign_text
@@ -123,7 +125,8 @@ def _from_options(known: Answers, folder: Path, given: dict[str, Any]) -> Start:
     if (given["around"] is None) != (given["radius_m"] is None):
         message = "--around and --radius-m belong together; give both."
         raise click.UsageError(message)
-    for option in ("sigma_source", "sigma_results"):
+    _refuse_magnitudes(given)
+    for option in ("sigma_source", "sigma_results", "expected_mean"):
         if given[option] is not None and given["sigma"] is None:
             message = f"{_dashed(option)} needs --sigma."
             raise click.UsageError(message)
@@ -177,6 +180,16 @@ def _at_most_one(given: dict[str, Any], names: tuple[str, ...]) -> Any:
         message = f"{' and '.join(map(_dashed, used))} exclude each other; give one."
         raise click.UsageError(message)
     return used[0] if used else None
+
+
+def _refuse_magnitudes(given: dict[str, Any]) -> None:
+    """Refuse numbers with which the echo of the target could not be reckoned."""
+    for name, value in given.items():
+        finite = isinstance(value, float) and math.isfinite(value)
+        fault = magnitude_fault(value) if finite else ""
+        if fault:
+            message = f"{_dashed(name)} {value:g} is {fault}; check it and its unit."
+            raise click.UsageError(message)
 
 
 def _dashed(name: str) -> str:

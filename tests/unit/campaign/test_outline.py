@@ -43,9 +43,14 @@ def test_circle_has_its_radius_and_area_everywhere(latitude, longitude, radius):
     [
         ((89.9, 0), 5000.0, "reaches a pole or crosses the 180th meridian"),
         ((10, 179.99), 5000.0, "reaches a pole or crosses the 180th meridian"),
-        ((10, 10), 0.0, r"a radius above 0 and up to 200,000 m is accepted \(got 0\)"),
-        ((10, 10), 1e7, r"a radius above 0 and up to 200,000 m is accepted \(got 1e\+07\)"),
-        ((10, 10), math.nan, r"a radius above 0 and up to 200,000 m is accepted \(got nan\)"),
+        ((10, 10), 1e-9, r"a radius of at least 1 m and up to 200,000 m is accepted \(got 1e-09\)"),
+        ((10, 10), 0.0, r"a radius of at least 1 m and up to 200,000 m is accepted \(got 0\)"),
+        ((10, 10), 1e7, r"a radius of at least 1 m and up to 200,000 m is accepted \(got 1e\+07\)"),
+        (
+            (10, 10),
+            math.nan,
+            r"a radius of at least 1 m and up to 200,000 m is accepted \(got nan\)",
+        ),
     ],
 )
 def test_circle_that_cannot_be_written_is_refused(place, radius, words):
@@ -95,3 +100,12 @@ def test_two_corners_are_no_outline():
     """A repeated corner adds nothing."""
     with pytest.raises(CampaignError, match=r"at least 3 different corners \(got 2\)"):
         read_corners("52.1, -1.9; 52.2, -1.9; 52.1, -1.9")
+
+
+@pytest.mark.parametrize(
+    "corners", [[(52, 1), (53, 2), (54, 3)], [(52, 1), (53, 2), (53, 1), (52, 2)]]
+)
+def test_corners_that_enclose_nothing_are_refused(corners):
+    """Three on a line; and a bow tie whose two halves cancel out."""
+    with pytest.raises(CampaignError, match=r"enclose no ground: they lie on one line, or the"):
+        corners_geojson(corners)

@@ -189,6 +189,8 @@ REFUSED = [
     (["--around", "52,1"], "belong together; give both"),
     (["--radius-m", "5"], "belong together; give both"),
     (["--sigma-source", "x"], "--sigma-source needs --sigma."),
+    (["--expected-mean", "50"], "--expected-mean needs --sigma."),
+    (["--sigma", "1e300"], "--sigma 1e+300 is beyond what can be reckoned with, 1e-12 to 1e12;"),
     (["--half-width", "-3"], "-3.0 is not in the range x>0"),
     (["--half-width", "1,5"], "'1,5' is not a valid float"),
     (["--seed", "-1"], "-1 is not in the range"),
@@ -208,6 +210,7 @@ def test_options_that_do_not_fit_are_typed_wrong_and_write_nothing(folder, argum
 FAULTY = [
     (["--boundary", "sight.geojson"], "sight.geojson: there is no such file. Did you mean site."),
     (["--boundary", os.devnull], f"{os.devnull}: this is no ordinary file (a pipe or a device)."),
+    (["--around", "52,1", "--radius-m", "1e-9"], "a radius of at least 1 m and up to 200,000 m"),
     (["--assurance", "80"], r"a share from 0.5 to below 1, such as 0.80, or plain is accepted"),
     (["--around", "520,1", "--radius-m", "5"], "lies off the globe"),
     (["--corners", "52,1; 53,1"], "at least 3 different corners"),
@@ -305,9 +308,6 @@ def test_conversation_asks_again_after_an_answer_that_cannot_be_read(folder):
     assert written()["objective"][0]["assurance"] == "plain"
 
 
-def test_target_can_be_changed_after_its_echo(folder):
-    """Seeing n is what makes people reconsider."""
-    result = conversation(
 def test_conversation_asks_again_for_what_is_no_text(folder, monkeypatch):
     """A question mark in its place would be a title that nobody typed."""
     typed = iter(["Gr" + chr(0xDCFC) + "n", "Green", *[""] * 9])
@@ -324,6 +324,9 @@ def test_conversation_ends_at_bytes_of_another_encoding(folder):
     assert not (folder / "campaign.toml").exists()
 
 
+def test_target_can_be_changed_after_its_echo(folder):
+    """Seeing n is what makes people reconsider."""
+    result = conversation(
         "T", "", "", "", "Lead", "mg/kg", "", "27.57", "x", "8", "SE 6", "n", "SE 9", "y", "", ""
     )
     assert written()["objective"][0]["standard_error"] == 9
