@@ -10,6 +10,7 @@ from datetime import date, datetime, time
 from typing import TYPE_CHECKING, Any
 
 from fieldplan.base.errors import LabError
+from fieldplan.lab.number_formats import shows_number, shows_text
 from fieldplan.lab.tables import CellFault, TextTable
 
 if TYPE_CHECKING:
@@ -154,6 +155,8 @@ def _cell_text(cell: Any, formula: Any) -> tuple[str, CellFault | None]:
     text = str(value)
     if cell.data_type == "e" or text in _ERRORS:
         return text, CellFault("other", f"cell {place} holds the error {text}; put the value in")
+    if text.strip() and not shows_text(cell.number_format or "General"):
+        return text, _not_shown(place, text, cell.number_format)
     return text, None
 
 
@@ -162,15 +165,19 @@ def _number_text(value: float, number_format: str, place: str) -> tuple[str, Cel
         return str(value), CellFault("other", f"cell {place} holds no number; put the value in")
     whole = float(value).is_integer() and abs(value) < 1e15
     text = str(int(value)) if whole else repr(float(value))
-    if re.search(r'[<>%]|"[^"]*[A-Za-z][^"]*"', number_format):
-        sentence = (
-            f"cell {place} holds {text} but its number format ({number_format}) shows something "
-            "else; set the column to text and type what the laboratory reported"
-        )
-        return text, CellFault("other", sentence)
+    if not shows_number(number_format, value):
+        return text, _not_shown(place, text, number_format)
     if whole and re.fullmatch(r"0+", number_format):
         text = text.zfill(len(number_format))
     return text, None
+
+
+def _not_shown(place: str, text: str, number_format: str) -> CellFault:
+    sentence = (
+        f"cell {place} holds {text} but its number format ({number_format}) shows something "
+        "else; set the column to text and type what the laboratory reported"
+    )
+    return CellFault("other", sentence)
 
 
 def _add_merged(sheet: "Worksheet", faults: dict[tuple[int, int], CellFault]) -> None:

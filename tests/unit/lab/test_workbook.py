@@ -91,7 +91,10 @@ def test_a_formula_without_a_saved_value_is_refused(problem: Callable[[Workbook]
     assert "formula without a saved value" in problem(book(["A", "lead", "=6*2", "mg/kg"]))
 
 
-@pytest.mark.parametrize("number_format", ['"<"0.0', '[<0.5]"<0.5";0.0', "0.0%", '0.0" J"'])
+@pytest.mark.parametrize(
+    "number_format",
+    ['"<"0.0', '[<0.5]"<0.5";0.0', "0.0%", '0.0" J"', r"0.0\ \U", ";;;", "0.0,"],
+)
 def test_a_number_format_that_shows_something_else_is_refused(
     problem: Callable[[Workbook], str], number_format: str
 ) -> None:
@@ -99,6 +102,16 @@ def test_a_number_format_that_shows_something_else_is_refused(
     workbook = book(["A", "lead", 0.5, "mg/kg"])
     workbook["Results"]["C2"].number_format = number_format
     assert "its number format" in problem(workbook)
+
+
+def test_a_text_that_the_sheet_hides_or_extends_is_refused(
+    problem: Callable[[Workbook], str],
+) -> None:
+    """A cell that shows nothing, or a U behind the text 0.5, was seen so by whoever sent it."""
+    for number_format in (";;;", '@" U"'):
+        workbook = book(["A", "lead", "0.5", "mg/kg"])
+        workbook["Results"]["C2"].number_format = number_format
+        assert "its number format" in problem(workbook)
 
 
 def test_cells_merged_over_rows_are_refused(problem: Callable[[Workbook], str]) -> None:
