@@ -71,12 +71,16 @@ class Table:
 
 @dataclass(frozen=True)
 class Figure:
-    """A drawing as an SVG string, with a caption and words for those who cannot see it."""
+    """A drawing as an SVG string, with a caption and words for those who cannot see it.
+
+    ``narrow_svg`` is the same drawing for the screen of a phone, where there is one.
+    """
 
     svg: str
     caption: str
     alternative: str
     width_mm: float = 165.0
+    narrow_svg: str = ""
 
 
 @dataclass(frozen=True)

@@ -5,7 +5,17 @@ from typing import TYPE_CHECKING
 from fieldplan.base.document import Figure
 from fieldplan.base.units import significant
 from fieldplan.estimate.model import Estimate, Interval
-from fieldplan.packet.drawing import BLUE, INK, SOFT, VERMILION, new_figure, pens, svg_text
+from fieldplan.packet.drawing import (
+    BLUE,
+    INK,
+    NARROW_MM,
+    SOFT,
+    VERMILION,
+    WIDE_MM,
+    new_figure,
+    pens,
+    svg_text,
+)
 from fieldplan.packet.sheets.wording import number
 
 if TYPE_CHECKING:
@@ -32,17 +42,20 @@ def interval_figure(
     Returns
     -------
     Figure
-        165 mm wide, with its caption and its words.
+        165 mm wide, with its caption and its words, and as narrow as a phone.
     """
     with pens():
-        drawing = svg_text(_drawing(estimate, name or estimate.analyte, level=action_level))
+        wide, narrow = (
+            svg_text(_drawing(estimate, name or estimate.analyte, level=action_level, width=mm))
+            for mm in (WIDE_MM, NARROW_MM)
+        )
     caption = f"The mean of {name or estimate.analyte} and its {_kind(estimate.interval)}."
     if estimate.bracket is not None:
         caption += " Non-detects at 0, half and the limit bracket the answer."
     words = "; ".join(_words(row, estimate.unit) for row in _rows(estimate))
     if action_level is not None:
         words += f"; action level {number(action_level)} {estimate.unit}"
-    return Figure(drawing, caption, words)
+    return Figure(wide, caption, words, narrow_svg=narrow)
 
 
 def _words(row: _Row, unit: str) -> str:
@@ -68,23 +81,39 @@ def _rows(estimate: Estimate) -> list[_Row]:
     ]
 
 
-def _drawing(estimate: Estimate, name: str, *, level: float | None) -> "Canvas":
-    """Lay rows above an axis that starts where the numbers need it."""
-    rows = _rows(estimate)
-    height = 26.0 + 11.0 * len(rows)
-    figure = new_figure(165, height)
-    axes = figure.add_axes((44 / 165, 13 / height, 114 / 165, (height - 20) / height))
-    low, high = _limits(rows, level)
-    axes.set_xlim(low, high)
+def _drawing(
+    estimate: Estimate, name: str, *, level: float | None, width: float = WIDE_MM
+) -> "Canvas":
+    """Lay rows above an axis that starts where the numbers need it.
+
+    Their names stand at the left, or above them where the figure is narrow.
+    """
+    rows, narrow = _rows(estimate), width < WIDE_MM
+    height = (30.0 if narrow else 26.0) + (18.0 if narrow else 11.0) * len(rows)
+    left, low = (4.0, 17.0) if narrow else (44.0, 13.0)
+    figure = new_figure(width, height)
+    axes = figure.add_axes(
+        (left / width, low / height, (width - left - 7) / width, (height - low - 7) / height)
+    )
+    start, end = _limits(rows, level)
+    axes.set_xlim(start, end)
     axes.set_ylim(-0.65, len(rows) - 0.35)
     for place, row in enumerate(reversed(rows)):
         _bar(axes, row, place=float(place), first=place == len(rows) - 1)
     if level is not None:
-        _level(axes, level, unit=estimate.unit, late=level > (low + high) / 2)
+        _level(axes, level, unit=estimate.unit, late=level > (start + end) / 2)
     axes.spines["left"].set_visible(False)
     axes.set_yticks(range(len(rows)), [words for words, _, _ in reversed(rows)])
     axes.tick_params(axis="y", length=0, pad=9)
-    axes.set_xlabel(f"mean of {name} ({estimate.unit}), {_kind(estimate.interval)}")
+    if narrow:
+        axes.set_yticks([])
+        for place, (words, _, _) in enumerate(reversed(rows)):
+            axes.annotate(
+                words, (0, place), (0, 22), xycoords=("axes fraction", "data"),
+                textcoords="offset points", va="center", color=SOFT,
+            )  # fmt: skip
+    axis = f"mean of {name} ({estimate.unit}),{chr(10) if narrow else ' '}"
+    axes.set_xlabel(axis + _kind(estimate.interval))
     return figure
 
 

@@ -7,7 +7,20 @@ import numpy as np
 
 from fieldplan.base.document import Figure
 from fieldplan.lab.model import Spread, StratumSpread
-from fieldplan.packet.drawing import BLUE, INK, LINE, SOFT, new_figure, pens, shortened, svg_text
+from fieldplan.packet.drawing import (
+    BLUE,
+    INK,
+    LINE,
+    NARROW_MM,
+    SOFT,
+    WIDE_MM,
+    new_figure,
+    pens,
+    shortened,
+    svg_text,
+    text_width_mm,
+    wrapped,
+)
 from fieldplan.packet.sheets.wording import number
 
 if TYPE_CHECKING:
@@ -15,7 +28,6 @@ if TYPE_CHECKING:
     from matplotlib.figure import Figure as Canvas
 
 _DOT_MM = 1.9
-_ROOM_MM = 118.0
 
 
 def pilot_dots(spread: Spread, *, name: str = "") -> Figure:
@@ -31,8 +43,8 @@ def pilot_dots(spread: Spread, *, name: str = "") -> Figure:
     Returns
     -------
     Figure
-        165 mm wide, with its caption and its words. Non-detects are hollow and stand at half
-        their limit.
+        165 mm wide, and as narrow as a phone, with its caption and its words. Non-detects are
+        hollow and stand at half their limit.
 
     Raises
     ------
@@ -44,9 +56,13 @@ def pilot_dots(spread: Spread, *, name: str = "") -> Figure:
         message = f"sigma of {spread.analyte!r} was typed; there are no pilot values to draw"
         raise ValueError(message)
     with pens():
-        drawing = svg_text(_drawing(spread, rows, name=name or spread.analyte))
+        wide, narrow = (
+            svg_text(_drawing(spread, rows, name=name or spread.analyte, width=mm))
+            for mm in (WIDE_MM, NARROW_MM)
+        )
     caption = f"Every pilot value of {name or spread.analyte}, one dot a location."
-    return Figure(drawing, caption, " ".join(_words(row, spread.unit) for row in rows))
+    words = " ".join(_words(row, spread.unit) for row in rows)
+    return Figure(wide, caption, words, narrow_svg=narrow)
 
 
 def _words(row: StratumSpread, unit: str) -> str:
@@ -94,23 +110,37 @@ def _rows(spread: Spread) -> list[StratumSpread]:
     return rows
 
 
-def _drawing(spread: Spread, rows: list[StratumSpread], *, name: str) -> "Canvas":
-    """Stack one row a stratum above a common axis."""
+def _drawing(
+    spread: Spread, rows: list[StratumSpread], *, name: str, width: float = WIDE_MM
+) -> "Canvas":
+    """Stack one row a stratum above a common axis.
+
+    Names stand at the left, or above their row where the figure is narrow.
+    """
+    narrow = width < WIDE_MM
+    left = 4.0 if narrow else 42.0
+    room = width - left - 5.0
     everything = [value for row in rows for value in row.values]
     low, high = min(0.0, *everything), max(everything)
     high = high if high > low else low + 1.0
-    unit_per_mm = (high - low) * 1.06 / _ROOM_MM
+    unit_per_mm = (high - low) * 1.06 / room
     stacks = [stacked_levels(row.values, _DOT_MM * unit_per_mm) for row in rows]
-    heights = [max(11.0, _DOT_MM * (max(levels) + 1) + 6.0) for levels in stacks]
+    above = 5.0 if narrow else 0.0
+    heights = [max(11.0, _DOT_MM * (max(levels) + 1) + 6.0) + above for levels in stacks]
     total = sum(heights) + 17.0
-    figure = new_figure(165, total)
-    axes = figure.add_axes((42 / 165, 14 / total, _ROOM_MM / 165, sum(heights) / total))
+    figure = new_figure(width, total)
+    axes = figure.add_axes((left / width, 14 / total, room / width, sum(heights) / total))
     axes.set_xlim(low - (high - low) * 0.02, high + (high - low) * 0.04)
     axes.set_ylim(0, sum(heights))
     base = sum(heights)
     for row, levels, height in zip(rows, stacks, heights, strict=True):
         base -= height
         _row(axes, row, levels=np.array(levels), base=base + 3.0)
+        if narrow:
+            words = shortened(f"{row.stratum}: {_count(row)}", 8, width_mm=room)
+            axes.text(axes.get_xlim()[0], base + height - 3.0, words, va="center")
+        else:
+            _name(axes, row, base=base + 3.0)
     axes.spines["left"].set_visible(False)
     axes.set_yticks([])
     axes.set_xlabel(f"{name} ({spread.unit})")
@@ -133,11 +163,23 @@ def _row(axes: "Axes", row: StratumSpread, *, levels: np.ndarray, base: float) -
         )  # fmt: skip
     if row.mean is not None:
         axes.plot([row.mean] * 2, [base - 1.6, base + 5.5], color=INK, linewidth=1.6, zorder=1)
-    missing = int((~detected).sum())
-    name = shortened(row.stratum, 8, width_mm=38, bold=True)
-    count = f"n = {len(values)}" + (f", {missing} non-detect" if missing else "")
-    for words, lift, weight in ((name, 4.4, "bold"), (count, 0.8, "normal")):
+
+
+def _count(row: StratumSpread) -> str:
+    """Count values and non-detects of a row."""
+    missing = sum(not detected for detected in row.detected)
+    return f"n = {len(row.values)}" + (f", {missing} non-detect" if missing else "")
+
+
+def _name(axes: "Axes", row: StratumSpread, *, base: float) -> None:
+    """Write name and count left of a row."""
+    points = 8.0 if text_width_mm(row.stratum, 8, bold=True) <= 38 else 7.0
+    names = wrapped(row.stratum, points, width_mm=38, most=2, bold=True)
+    lines = [(words, "bold") for words in names] + [(_count(row), "normal")]
+    step = 3.6 if len(lines) == 2 else 2.9
+    for place, (words, weight) in enumerate(reversed(lines)):
+        lift = 0.8 + step * place
         axes.annotate(
             words, (0, base + lift), (-4, 0), xycoords=("axes fraction", "data"),
-            textcoords="offset points", ha="right", va="center", weight=weight,
+            textcoords="offset points", ha="right", va="center", weight=weight, fontsize=points,
         )  # fmt: skip

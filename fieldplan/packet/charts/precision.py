@@ -9,6 +9,7 @@ from fieldplan.packet.drawing import (
     BLUE,
     INK,
     LINE,
+    NARROW_MM,
     VERMILION,
     WIDE_MM,
     new_figure,
@@ -46,7 +47,7 @@ def precision_curve(size: Size) -> Figure:
     Returns
     -------
     Figure
-        165 mm wide, with its caption and its words.
+        165 mm wide, with its caption and its words, and as narrow as a phone.
 
     Raises
     ------
@@ -57,8 +58,8 @@ def precision_curve(size: Size) -> Figure:
         message = f"the size of design {size.design!r} has no curve to draw"
         raise ValueError(message)
     with pens():
-        drawing = svg_text(_drawing(size))
-    return Figure(drawing, _caption(size), _words(size))
+        wide, narrow = (svg_text(_drawing(size, width=mm)) for mm in (WIDE_MM, NARROW_MM))
+    return Figure(wide, _caption(size), _words(size), narrow_svg=narrow)
 
 
 def _caption(size: Size) -> str:

@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from fieldplan.base.document import Figure
-from fieldplan.packet.drawing import WIDE_MM, mm_axes, new_figure, pens, svg_text
+from fieldplan.packet.drawing import NARROW_MM, WIDE_MM, mm_axes, new_figure, pens, svg_text
 from fieldplan.packet.maps.content import Entry, MapContent, plan_content
 from fieldplan.packet.maps.ground import Ground, draw_grounds, grounds
 from fieldplan.packet.maps.legend import draw_entry, within
@@ -38,45 +38,75 @@ def site_figure(plan: Plan) -> Figure:
     Returns
     -------
     Figure
-        165 mm wide, with a scale bar.
+        165 mm wide, and as narrow as a phone, with a scale bar.
     """
     content = plan_content(plan)
-    spec = _spec(plan, content)
-    named = len(content.places) <= _NAMED and not unplaced_names(content, spec)
-    shown = content if named else content.without_names()
+    spec, slim = _spec(plan, content), _narrow_spec(plan, content)
+    named = _all_named(content, spec)
     with pens():
-        drawing = svg_text(_drawing(plan, shown, spec=spec))
+        wide, narrow = (
+            svg_text(
+                _drawing(
+                    plan, content if _all_named(content, s) else content.without_names(), spec=s
+                )
+            )
+            for s in (spec, slim)
+        )
     counts = ", ".join(entry.brief for entry in content.legend)
     caption = f"{plan.campaign.plan.site or plan.campaign.plan.title}."
     caption += " Up is grid north of the site plane."
     if not named:
         caption += " The printed map names the locations."
     strata = ", ".join(stratum.name for stratum in plan.frame.strata)
-    return Figure(drawing, caption, f"Map of the site ({strata}) with its locations: {counts}.")
+    words = f"Map of the site ({strata}) with its locations: {counts}."
+    return Figure(wide, caption, words, narrow_svg=narrow)
+
+
+def _all_named(content: MapContent, spec: PageSpec) -> bool:
+    """Tell whether there is room for every name."""
+    return len(content.places) <= _NAMED and not unplaced_names(content, spec)
 
 
 def _spec(plan: Plan, content: MapContent) -> PageSpec:
-    """Choose the height and the scale: the largest scale, then the flattest figure."""
+    """Lay the map beside its legend: the largest scale, then the flattest figure."""
+    boxes = [Box(0.3, 0.3, WIDE_MM - _LEGEND_MM - 3, height - 0.6) for height in _HEIGHTS]
+    denominator, ground, extent = _fitted(plan, content, boxes)
+    panel = Box(ground.right + 3, 0.3, _LEGEND_MM - 0.6, ground.height)
+    height = ground.height + 0.6
+    layout = PageLayout(WIDE_MM, height, panel, ground, panel, panel, panel, panel, panel)
+    return PageSpec(layout, extent, denominator)
+
+
+def _narrow_spec(plan: Plan, content: MapContent) -> PageSpec:
+    """Lay the map above its legend, as narrow as a phone."""
+    rows = len(content.legend) + len(grounds(plan.frame))
+    panel = Box(1.0, 0.3, NARROW_MM - 2.0, 6.0 * rows + _BAR_MM)
+    boxes = [
+        Box(0.3, panel.top + 2, NARROW_MM - 0.6, height) for height in (48.0, 64.0, 80.0, 100.0)
+    ]
+    denominator, ground, extent = _fitted(plan, content, boxes)
+    height = ground.top + 0.3
+    layout = PageLayout(NARROW_MM, height, panel, ground, panel, panel, panel, panel, panel)
+    return PageSpec(layout, extent, denominator)
+
+
+def _fitted(plan: Plan, content: MapContent, boxes: list[Box]) -> tuple[int, Box, Extent]:
+    """Choose of several boxes the first that shows the site at the largest scale."""
     marks = np.array([(m.easting, m.northing) for m in content.marks]).reshape(-1, 2)
     west, south, east, north = plan.frame.boundary.bounds
     corners = np.vstack([marks, [(west, south), (east, north)]])
     seen = Extent(*map(float, (*corners.min(axis=0), *corners.max(axis=0))))
     trials = []
-    for height in _HEIGHTS:
-        ground = Box(0.3, 0.3, WIDE_MM - _LEGEND_MM - 3, height - 0.6)
-        room = ground.shrunk(6.0)
+    for box in boxes:
+        room = box.shrunk(6.0)
         needed = 1000 * max(seen.width / room.width, seen.height / room.height, 0.01)
-        trials.append((math.ceil(needed), height, ground))
-    denominator, height, ground = min(trials, key=lambda trial: trial[:2])
-    panel = Box(ground.right + 3, 0.3, _LEGEND_MM - 0.6, height - 0.6)
-    layout = PageLayout(WIDE_MM, height, panel, ground, panel, panel, panel, panel, panel)
-    return PageSpec(
-        layout, extent_around(seen.centre, ground, denominator=denominator), denominator
-    )
+        trials.append((math.ceil(needed), box))
+    denominator, ground = min(trials, key=lambda trial: (trial[0], trial[1].height))
+    return denominator, ground, extent_around(seen.centre, ground, denominator=denominator)
 
 
 def _drawing(plan: Plan, content: MapContent, *, spec: PageSpec) -> "Canvas":
-    """Draw ground, marks and names at the left, legend, bar and north at the right."""
+    """Draw ground, marks and names, then legend, bar and north in their panel."""
     layout = spec.layout
     figure = new_figure(layout.width, layout.height)
     axes = ground_axes(figure, spec)

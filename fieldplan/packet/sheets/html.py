@@ -5,7 +5,7 @@ from functools import cache
 from importlib import resources
 from typing import TYPE_CHECKING
 
-from fieldplan.base.document import Block, Document, Figure
+from fieldplan.base.document import Block, Document
 from fieldplan.packet.sheets.wording import printable, step_lines
 
 if TYPE_CHECKING:
@@ -67,6 +67,6 @@ def _kind(block: Block) -> str:
     return type(block).__name__
 
 
-def _as_image(figure: Figure) -> str:
+def _as_image(svg: str) -> str:
     """Turn a drawing into an image address; as an image, scripts and ids in it stay inert."""
-    return "data:image/svg+xml;base64," + base64.b64encode(figure.svg.encode("utf-8")).decode()
+    return "data:image/svg+xml;base64," + base64.b64encode(svg.encode("utf-8")).decode()

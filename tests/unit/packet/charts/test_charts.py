@@ -68,6 +68,13 @@ def test_a_figure_is_whole_svg_with_words_and_no_outside_address(name: str) -> N
 
 
 @pytest.mark.parametrize("name", FIGURES)
+def test_a_figure_has_a_drawing_for_phones(name: str) -> None:
+    """92 mm are what a phone shows of a page at its own size."""
+    tree = lxml.etree.fromstring(FIGURES[name]().narrow_svg.encode())
+    assert float(tree.get("width").removesuffix("pt")) == pytest.approx(92 / 25.4 * 72, abs=0.1)
+
+
+@pytest.mark.parametrize("name", FIGURES)
 def test_a_figure_is_the_same_text_every_time(name: str) -> None:
     """Packets are compared byte by byte; matplotlib's ids and dates would differ."""
     first, second = FIGURES[name](), FIGURES[name]()
