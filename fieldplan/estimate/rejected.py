@@ -31,7 +31,8 @@ def rejected_sentence(plan: Plan, returns: Returns, means: Means) -> str:
     back = _come_back(returns, again) if again else []
     if again is None or not back:
         return ""
-    names = listed([_name(result) for result in back])
+    before = {result.location_id: result for result in returns.results}
+    names = listed([_name(result, before.get(result.location_id)) for result in back])
     said = f"Left out, since the laboratory rejected it (qualifier R): {names}."
     if len(back) > 1:
         said = said.replace("it (", "them (")
@@ -60,9 +61,18 @@ def _value(result: LocationResult | None) -> Sequence[float] | None:
     return (result.low, result.half, result.high) if result and result.used else None
 
 
-def _name(result: LocationResult) -> str:
-    cells = listed([f"'{cell}'" for cell in result.as_reported])
-    return f"{cells} of {listed(list(result.sample_ids))} at {result.location_id}"
+def _name(result: LocationResult, before: LocationResult | None) -> str:
+    """Name the cells and samples of a location that are there only with rejected results."""
+    kept = list(before.as_reported) if before else []
+    cells = []
+    for cell in result.as_reported:
+        if cell in kept:
+            kept.remove(cell)
+        else:
+            cells.append(f"'{cell}'")
+    known = before.sample_ids if before else ()
+    samples = [name for name in result.sample_ids if name not in known] or list(result.sample_ids)
+    return f"{listed(cells)} of {listed(samples)} at {result.location_id}"
 
 
 def _level(plan: Plan, means: Means, counted: Means) -> str:

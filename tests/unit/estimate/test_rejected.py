@@ -63,6 +63,16 @@ def test_the_answer_with_a_rejected_result_is_the_one_as_if_it_were_not_rejected
     assert estimate_json(answer)["rejected"] == said
 
 
+def test_of_two_jars_at_one_place_only_the_rejected_one_is_named() -> None:
+    """The field sample of QF-A-02, 64, is rejected; its blind duplicate of 69 stands."""
+    plan = make_plan()
+    rows = lab_rows(plan)
+    (row,) = (entry for entry in rows if entry.sample_id == "QF-204")
+    whole = replace(table([entry for entry in rows if entry is not row]), rejected=(row,))
+    answer = estimate(plan, met(whole))
+    assert "(qualifier R): '64' of QF-204 at QF-A-02. Counted" in answer.rejected_sentence
+
+
 def test_a_rejected_first_run_beside_an_accepted_second_one_changes_nothing() -> None:
     """The laboratory measured again; the jar has its result, the first one is only listed."""
     plan = make_plan()
