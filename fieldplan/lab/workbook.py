@@ -6,6 +6,7 @@ import math
 import re
 import warnings
 import zipfile
+from collections.abc import Mapping
 from datetime import date, datetime, time
 from typing import TYPE_CHECKING, Any
 
@@ -17,6 +18,10 @@ if TYPE_CHECKING:
     from openpyxl.worksheet.worksheet import Worksheet
 
 LARGEST_UNPACKED = 256 * 1024 * 1024
+LAST_COLUMN = 1024
+"""Columns past this one are no column of results; a stray cell may lie there."""
+MOST_MERGED = 100_000
+_MERGED = re.compile(rb'<mergeCell\b[^>]*\bref="([A-Za-z0-9$:]+)"')
 _ERRORS = {"#N/A", "#DIV/0!", "#VALUE!", "#REF!", "#NAME?", "#NUM!", "#NULL!"}
 
 
@@ -82,13 +87,36 @@ def _check_size(name: str, content: bytes) -> None:
         raise LabError(message)
 
 
+def _check_merges(name: str, content: bytes) -> None:
+    """Refuse vast merges before the library opens the file: it makes each of their cells."""
+    from openpyxl.utils.cell import range_boundaries
+
+    with zipfile.ZipFile(io.BytesIO(content)) as archive:
+        sheets = [n for n in archive.namelist() if n.startswith("xl/worksheets/")]
+        found = [area.decode() for n in sheets for area in _MERGED.findall(archive.read(n))]
+    total = 0
+    for area in found:
+        bounds: Any = range_boundaries(area)
+        left, top, right, bottom = bounds
+        total += (right - left + 1) * (bottom - top + 1)
+        if total > MOST_MERGED:
+            message = (
+                f"{name} has more than {MOST_MERGED:,} merged cells ({area} among them); unmerge "
+                "them, or save the one sheet needed as CSV."
+            )
+            raise LabError(message)
+
+
 def _opened(name: str, content: bytes, saved_values: bool) -> Any:
     from openpyxl import load_workbook
 
     try:
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")
+            _check_merges(name, content)
             return load_workbook(io.BytesIO(content), data_only=saved_values)
+    except LabError:
+        raise
     except Exception as fault:  # a damaged part raises whatever it provokes
         message = f"{name} is a damaged workbook ({type(fault).__name__}); save it again."
         raise LabError(message) from fault
@@ -97,37 +125,53 @@ def _opened(name: str, content: bytes, saved_values: bool) -> Any:
 def _sheet_table(
     name: str, digest: str, values: "Worksheet", formulas: "Worksheet"
 ) -> TextTable | None:
-    rows: list[tuple[int, tuple[str, ...]]] = []
-    faults: dict[tuple[int, int], CellFault] = {}
-    for cells in values.iter_rows():
-        texts = []
-        for cell in cells:
-            formula = formulas.cell(cell.row or 1, cell.column or 1)
-            text, fault = _cell_text(cell, formula)
-            texts.append(text)
-            if fault:
-                faults[(cell.row or 1, (cell.column or 1) - 1)] = fault
-        number = cells[0].row if cells else None
-        if number and (any(t.strip() for t in texts) or any(r == number for r, _ in faults)):
-            rows.append((number, tuple(texts)))
-    if not rows:
+    texts, faults = _filled(values, formulas)
+    if not texts:
         return None
+    header_row, *numbers = sorted(texts)
+    width = min(max(texts[header_row], default=0), LAST_COLUMN)
+    rows = [(number, _in_line(texts[number], width)) for number in numbers]
     _add_merged(values, faults)
     notes = []
-    unseen = sum(1 for number, _ in rows if values.row_dimensions[number].hidden)
+    unseen = sum(1 for number in texts if values.row_dimensions[number].hidden)
     if unseen:
         notes.append(f"{name}: {unseen} rows that the sheet hides were read too.")
-    header_row, header = rows[0]
     return TextTable(
         file_name=name,
         sha256=digest,
-        header=header,
+        header=_in_line(texts[header_row], width)[:width],
         header_row=header_row,
-        rows=tuple(rows[1:]),
+        rows=tuple(rows),
         sheet=values.title,
         faults=faults,
         notes=tuple(notes),
     )
+
+
+def _filled(
+    values: "Worksheet", formulas: "Worksheet"
+) -> tuple[dict[int, dict[int, str]], dict[tuple[int, int], CellFault]]:
+    """Give the texts of each row that holds any, by column, and the faults of its cells.
+
+    Only cells that the file holds are visited: one stray cell in the last row makes the sheet
+    that surrounds it a million rows tall. The library has no public way to ask for them.
+    """
+    own, others = values._cells, formulas._cells
+    texts: dict[int, dict[int, str]] = {}
+    faults: dict[tuple[int, int], CellFault] = {}
+    for row, column in sorted(own):
+        text, fault = _cell_text(own[row, column], others.get((row, column)))
+        if fault:
+            faults[row, column - 1] = fault
+        if text.strip() or fault:
+            texts.setdefault(row, {})[column] = text
+    return texts, faults
+
+
+def _in_line(texts: Mapping[int, str], width: int) -> tuple[str, ...]:
+    """Set the texts of a row side by side, blanks between them, at least to a width."""
+    last = min(max(width, *texts), LAST_COLUMN)
+    return tuple(texts.get(column, "") for column in range(1, last + 1))
 
 
 def _cell_text(cell: Any, formula: Any) -> tuple[str, CellFault | None]:
@@ -135,7 +179,7 @@ def _cell_text(cell: Any, formula: Any) -> tuple[str, CellFault | None]:
     value = cell.value
     place = f"{cell.coordinate}"
     if value is None:
-        if isinstance(formula.value, str) and formula.data_type == "f":
+        if formula is not None and formula.data_type == "f" and isinstance(formula.value, str):
             sentence = (
                 f"cell {place} holds a formula without a saved value; open the workbook, save "
                 "it, or paste the values in place of the formulas"

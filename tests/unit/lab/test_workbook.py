@@ -13,7 +13,9 @@ from openpyxl import Workbook
 
 from fieldplan.base.errors import LabError
 from fieldplan.lab import read_lab
-from fieldplan.lab.tables import read_tables
+from fieldplan.lab import workbook as workbook_reader
+from fieldplan.lab.tables import CellFault, read_tables
+from fieldplan.lab.workbook import LAST_COLUMN
 from tests.factories import make_campaign
 
 HEADER = ["location_id", "analyte", "as_reported", "unit"]
@@ -119,6 +121,47 @@ def test_cells_merged_over_rows_are_refused(problem: Callable[[Workbook], str]) 
     workbook = book(["A", "lead", 12, "mg/kg"], [None, "lead", 13, "mg/kg"])
     workbook["Results"].merge_cells("A2:A3")
     assert "merged over several rows" in problem(workbook)
+
+
+@pytest.mark.parametrize("place", ["A1048576", "XFD5000"])
+def test_only_cells_that_hold_something_are_visited(
+    problem: Callable[[Workbook], str], monkeypatch: pytest.MonkeyPatch, place: str
+) -> None:
+    """One stray cell far away makes a sheet of millions of cells, nine of which hold something."""
+    visited = []
+
+    def counted(cell: Any, formula: Any) -> tuple[str, CellFault | None]:
+        visited.append(cell.coordinate)
+        assert len(visited) < 100
+        return cell_text(cell, formula)
+
+    cell_text = workbook_reader._cell_text
+    monkeypatch.setattr(workbook_reader, "_cell_text", counted)
+    workbook = book(["A", "lead", 12, "mg/kg"])
+    workbook["Results"][place] = "x"
+    assert f"row {place.lstrip('AXFD')}: analyte '' is blank" in problem(workbook)
+    assert len(visited) == 9
+
+
+def test_a_stray_cell_beside_the_header_is_no_column(tmp_path: Path) -> None:
+    """A space typed in the last column must not make every row that wide."""
+    workbook = book(*(["A", "lead", 12, "mg/kg"] for _ in range(50)))
+    workbook["Results"]["XFD1"] = "x"
+    (table,) = read_tables(saved(workbook, tmp_path / "labs.xlsx"))
+    assert max(len(cells) for _, cells in table.rows) == len(table.header) == LAST_COLUMN
+
+
+def test_a_merge_over_the_whole_sheet_is_refused_before_it_is_opened(tmp_path: Path) -> None:
+    """A file of 7 kB can merge all cells there are, and opening it makes each of them."""
+    workbook = book(["A", "lead", 12, "mg/kg"])
+    workbook["Results"].merge_cells("Z1:Z2")
+    path, changed = saved(workbook, tmp_path / "labs.xlsx"), io.BytesIO()
+    with zipfile.ZipFile(path) as old, zipfile.ZipFile(changed, "w") as new:
+        for name in old.namelist():
+            new.writestr(name, old.read(name).replace(b'"Z1:Z2"', b'"Z1:XFD1048576"'))
+    path.write_bytes(changed.getvalue())
+    with pytest.raises(LabError, match="more than 100,000 merged cells"):
+        read_tables(path)
 
 
 def test_the_sheet_used_is_named_and_hidden_ones_are_not_read(tmp_path: Path) -> None:
