@@ -43,6 +43,8 @@ def answer(question: Question) -> Size:
     plain, needed, planned = counts.plain or counts.needed, counts.needed, counts.planned
     precision = Precision(question)
     assured = _assured(question)
+    if all(question.takes_all((entry.n,)) for entry in assured):
+        assured = ()
     return Size(
         design=question.design,
         analyte=question.analyte,

@@ -29,7 +29,7 @@ def conditions(question: Question, needed: tuple[int, ...]) -> tuple[str, ...]:
     tuple of str
         Sentences.
     """
-    if question.census:
+    if question.takes_all(needed):
         return (
             "Every unit is visited, so there is no error from choosing places; error in time and "
             "from the laboratory remains and is not in these numbers.",

@@ -1,5 +1,6 @@
 """What is asked of sizing, free of files: parts, target, prices. Bare numbers make one as well."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from typing import Literal
 
@@ -181,6 +182,10 @@ class Question:
         """N of the whole list; None when a part is an area."""
         sizes = [part.population for part in self.parts if part.population is not None]
         return sum(sizes) if len(sizes) == len(self.parts) else None
+
+    def takes_all(self, needed: Sequence[int]) -> bool:
+        """Tell whether so many results take every unit of the list, so that no place is chosen."""
+        return self.census or sum(needed) == self.total_population
 
     @property
     def pilots(self) -> tuple[tuple[int, ...], ...] | None:

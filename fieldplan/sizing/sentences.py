@@ -55,12 +55,19 @@ def _answer(question: Question, counts: Counts) -> str:
     if question.target == "budget":
         buys = f"A budget of {_money_words(question, question.value)} buys "
         return f"{buys}{counted(planned, 'location')}{where}{_left(counts)}."
+    if question.takes_all(counts.needed):
+        target = target_words(question)
+        return f"All {needed} units of the list are visited{where}: a {target} takes every one."
     if planned == needed:
         return f"{counted(needed, 'result')} are needed for a {target_words(question)}{where}."
     return (
         f"Visit {counted(planned, 'location')}{where}. {counted(needed, 'result')} are needed for "
-        f"a {target_words(question)}; {planned - needed} more allow for losses."
+        f"a {target_words(question)}; {_spare(planned - needed)} for losses."
     )
+
+
+def _spare(count: int) -> str:
+    return f"{count} more {'allows' if count == 1 else 'allow'}"
 
 
 def _left(counts: Counts) -> str:
@@ -70,7 +77,7 @@ def _left(counts: Counts) -> str:
 
 def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]) -> str:
     """Say how sure the number is; that the plain formula fails often is said every time."""
-    if question.census or counts.plain is None:
+    if question.takes_all(counts.needed) or counts.plain is None:
         return ""
     plain, needed = sum(counts.plain), sum(counts.needed)
     precision = Precision(question)
@@ -122,8 +129,8 @@ def _no_chance(question: Question, counts: Counts) -> str:
 
 
 def _precision(question: Question, counts: Counts) -> str:
-    if question.census:
-        return "The mean of the list then has no error from choosing units."
+    if question.takes_all(counts.needed):
+        return "With every unit taken, the mean of the list has no error from choosing units."
     precision = Precision(question)
     error = with_unit(figure(precision.standard_error(counts.needed)), question.unit)
     reach = with_unit(figure(precision.half_width(counts.needed)), question.unit)
@@ -151,7 +158,7 @@ def _would_take(question: Question, plain: tuple[int, ...]) -> str:
 
 def _floor(question: Question, counts: Counts) -> str:
     """Say what the floor costs, where it decided the number."""
-    if question.census or question.floor <= 2 or counts.plain is None:
+    if question.takes_all(counts.needed) or question.floor <= 2 or counts.plain is None:
         return ""
     if question.locations is not None or question.target == "budget":
         return ""

@@ -5,6 +5,7 @@ from fieldplan.packet.sheets.amounts import counted, likely, listed, percent, ro
 from fieldplan.packet.sheets.plan_words import (
     ALLOCATIONS,
     LAYOUTS,
+    every_unit,
     mean_of,
     several_strata,
 )
@@ -140,6 +141,8 @@ def number_sentence(plan: Plan) -> str:
     size, census = plan.size, plan.size.number_from == "census"
     if census:
         return ""  # the sentence before says that every unit was to be sampled
+    if every_unit(plan):
+        return f"The target, {size.target}, takes every unit of the list."
     budget = plan.campaign.deciding_objective.budget
     expected = f"a standard error of {rounded(size.standard_error)} {size.unit} was to be expected"
     if size.number_from == "budget":

@@ -2,6 +2,7 @@
 
 from fieldplan.base.document import Block, Bullets, Facts, Heading, Paragraph, Table
 from fieldplan.packet.sheets.amounts import counted, likely, percent, rounded
+from fieldplan.packet.sheets.plan_words import every_unit
 from fieldplan.plan.model import Plan
 from fieldplan.sizing.model import OtherPrecision
 from fieldplan.sizing.other_words import chance_words
@@ -106,7 +107,7 @@ def declared_lines(plan: Plan) -> list[str]:
     from fieldplan.stats.shape import t_coverage
 
     rules = plan.campaign.rules
-    if not rules.promised_for or plan.size.number_from == "census":
+    if not rules.promised_for or every_unit(plan):
         return []
     line = f"The {percent(rules.confidence)} is declared for {rules.promised_for.rstrip('. ')}"
     end = declared_skewness(rules.promised_for)

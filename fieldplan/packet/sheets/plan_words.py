@@ -45,6 +45,11 @@ def several_strata(plan: Plan) -> bool:
     return len(plan.frame.strata) > 1
 
 
+def every_unit(plan: Plan) -> bool:
+    """Tell whether all units of a list are taken, so that no place is left to chance."""
+    return all(entry.needed == entry.population for entry in plan.size.strata)
+
+
 def mean_of(campaign: Campaign) -> str:
     """Say which mean is estimated.
 
@@ -72,6 +77,8 @@ def aim_sentence(plan: Plan) -> str:
         else f"The assurance of {percent(size.assurance)}"
     )
     aim = f"The aim is the {mean_of(plan.campaign)}{against}."
+    if every_unit(plan):
+        return aim
     return {
         "census": aim,
         "budget": f"{aim} The budget decides the number.",

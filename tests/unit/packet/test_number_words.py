@@ -141,3 +141,24 @@ def test_a_typed_number_is_not_called_needed():
     words = " ".join(map(text_of, answer_words(plan)))
     assert "Results expected" in words
     assert "needed" not in words + precision_curve(plan.size).alternative
+
+
+def test_a_sheet_that_takes_the_whole_list_speaks_of_no_chance() -> None:
+    """Chances of 100 % and widths of ±0 leave a reader asking; that all are taken does not."""
+    plan = wells()
+    asked = plan.campaign.objective[0].model_copy(update={"half_width": 0.05})
+    campaign = plan.campaign.model_copy(update={"objective": (asked,)})
+    plan = make_plan(
+        campaign=campaign,
+        frame=plan.frame,
+        spread=plan.spread,
+        size=size(campaign, plan.spread, plan.frame),
+    )
+    one = "\n".join(text_of(block) for block in answer_words(plan))
+    assert "All 14 units of the list are visited" in one
+    assert "With every unit taken, the mean of the list has no error from choosing units." in one
+    assert "chance" not in one
+    assert "assurance" not in one
+    assert "±0" not in one
+    assert number_sentence(plan).endswith("takes every unit of the list.")
+    assert "Chance that they meet" not in "\n".join(text_of(b) for b in number_blocks(plan))

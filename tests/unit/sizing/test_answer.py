@@ -221,6 +221,31 @@ def test_census_visits_all_and_keeps_other_errors_in_sight() -> None:
         answer(ask(whole(), 0.9, census=True))
 
 
+def test_a_target_that_takes_the_whole_list_is_said_in_words() -> None:
+    """A chance of 100 % and an interval of ±0 say nothing; that no place is chosen does."""
+    size = answer(ask(whole(3.1, population=14, results=8), 0.05, assurance=0.8))
+    assert size.needed == 14
+    assert size.sentences[0] == (
+        "All 14 units of the list are visited: a standard error of the mean ≤ 0.05 takes every one."
+    )
+    said = " ".join(size.sentences)
+    assert "With every unit taken, the mean of the list has no error from choosing units." in said
+    assert "100 %" not in said
+    assert "±0" not in said
+    assert size.assured == ()
+    assert "from the laboratory remains" in size.conditions[0]
+
+
+def test_one_more_allows_and_two_more_allow_for_losses() -> None:
+    """Grammar, since this is the first sentence that anybody reads."""
+    said = {
+        count: answer(ask(whole(results=8, loss=loss), 6.0)).sentences[0]
+        for count, loss in ((1, 0.02), (2, 0.06))
+    }
+    assert "; 1 more allows for losses." in said[1]
+    assert "; 2 more allow for losses." in said[2]
+
+
 def test_grid_gets_no_credit() -> None:
     """Sized as simple random, and said."""
     grid = answer(ask(whole(), 6.0, grid=True))
