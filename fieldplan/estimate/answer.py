@@ -63,12 +63,7 @@ def estimate(
     """
     _refuse_undecided(returns)
     rules, changed = changed_rules(plan.campaign.rules, overrides or {})
-    basis = returns
-    if "duplicates" in changed:
-        if returns_changed is None:
-            message = "the rule for duplicates was changed; reconcile the results by it first."
-            raise DesignError(message)
-        basis = returns_changed
+    basis = _basis(returns, returns_changed, changed=changed)
     means = means_by(plan, basis, rules)
     changes = _changes(plan, returns, rules, changed)
     level = level_sentence(plan, means)
@@ -90,7 +85,7 @@ def estimate(
         level_sentence=level,
         population_sentence=population,
         coverage_sentence=coverage_sentence(plan, means),
-        steps=(*working(means, planned.unit), *_coverage_steps(plan, means, planned.unit)),
+        steps=_steps(plan, means, planned.unit),
         changes=changes,
         returns=basis,
         rejected_sentence=rejected,
@@ -107,9 +102,22 @@ def estimate(
     )
 
 
-def _coverage_steps(plan: Plan, means: Means, unit: str) -> list[Step]:
-    """Show where the coverage comes from; a census has none."""
-    return [] if is_census(plan) else coverage_steps(means, unit)
+def _basis(
+    returns: Returns, returns_changed: Returns | None, *, changed: tuple[str, ...]
+) -> Returns:
+    """Take the results by the rules in force; a changed rule for duplicates has its own."""
+    if "duplicates" not in changed:
+        return returns
+    if returns_changed is None:
+        message = "the rule for duplicates was changed; reconcile the results by it first."
+        raise DesignError(message)
+    return returns_changed
+
+
+def _steps(plan: Plan, means: Means, unit: str) -> tuple[Step, ...]:
+    """Show the arithmetic of the answer and of its coverage, which a census does not have."""
+    coverage = [] if is_census(plan) else coverage_steps(means, unit)
+    return (*working(means, unit), *coverage)
 
 
 def _refuse_undecided(returns: Returns) -> None:

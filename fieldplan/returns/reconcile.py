@@ -103,20 +103,13 @@ def _meet(
 ) -> Returns:
     """Meet the results that count with the plan."""
     name = lab_table.file_name
-    rows = [row for row in lab_table.rows if row.analyte == analyte]
-    others = [row for row in lab_table.rows if row.analyte != analyte]
-    own = rows_of(lab_table, analyte)
-    if not own:
-        raise LabError(_none_of(plan, lab_table, analyte))
-    matching = match_rows(plan, own, analyte=analyte, confirmed=confirmed, elsewhere=others)
-    if not matching.by_sample and not matching.near:
-        raise LabError(_nothing_matched(plan, name, own))
+    matching = _matched(plan, lab_table, confirmed=confirmed, analyte=analyte)
     given = _as_return(field_rows)
     by_sample, problems, notes = one_row_a_sample(name, matching.by_sample)
     facts, moves = field_facts(plan, given.rows, given.file_name)
     values = location_values(plan, by_sample)
     problems += contradictions(plan, given, by_sample, file_name=name)
-    problems += claimed_jars(plan, rows, name)
+    problems += claimed_jars(plan, [r for r in lab_table.rows if r.analyte == analyte], name)
     if problems:
         raise LabError(*capped(problems))
     usable = {n for n in values if not facts.get(n, FieldFacts()).outside}
@@ -145,6 +138,20 @@ def _meet(
         confirmed=tuple(matching.confirmed),
         first_collected=first_collected(given.rows),
     )
+
+
+def _matched(
+    plan: Plan, lab_table: LabTable, *, confirmed: Sequence[ConfirmedMatch], analyte: str
+) -> Matching:
+    """Match the rows of one analyte; refuse a file that has none, or none of this plan."""
+    own = rows_of(lab_table, analyte)
+    if not own:
+        raise LabError(_none_of(plan, lab_table, analyte))
+    others = [row for row in lab_table.rows if row.analyte != analyte]
+    matching = match_rows(plan, own, analyte=analyte, confirmed=confirmed, elsewhere=others)
+    if not matching.by_sample and not matching.near:
+        raise LabError(_nothing_matched(plan, lab_table.file_name, own))
+    return matching
 
 
 def _as_return(rows: FieldReturn | Sequence[FieldRow]) -> FieldReturn:
