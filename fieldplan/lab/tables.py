@@ -11,6 +11,7 @@ from pathlib import Path
 from typing import Literal
 
 from fieldplan.base.errors import LabError
+from fieldplan.base.files import NOT_ORDINARY, is_ordinary
 
 LARGEST_FILE = 64 * 1024 * 1024
 _SEPARATORS = {",": "comma", ";": "semicolon", "\t": "tab"}
@@ -104,12 +105,15 @@ def read_bytes(path: Path) -> bytes:
     Raises
     ------
     LabError
-        It is missing, a folder, unreadable, empty or larger than 64 MB.
+        It is missing, a folder, no ordinary file, unreadable, empty or larger than 64 MB.
     """
     try:
         size = path.stat().st_size
         if path.is_dir():
             message = f"{path} is a folder; name the file in it."
+            raise LabError(message)
+        if not is_ordinary(path):
+            message = f"{path} {NOT_ORDINARY}; save the results as a file and name that."
             raise LabError(message)
         if size > LARGEST_FILE:
             message = f"{path} has {size / 1e6:.0f} MB; at most 64 MB are read. Split the file."

@@ -1,5 +1,6 @@
 """Encodings, separators and row numbers."""
 
+import os
 from collections.abc import Callable
 from pathlib import Path
 
@@ -94,6 +95,15 @@ def test_blanks_at_the_end_of_every_row_are_the_programs_own(lab_file: WRITE) ->
     (table,) = read_tables(lab_file("a,b\nx,1,,\ny,2,,\n"))
     assert table.rows == ((2, ("x", "1")), (3, ("y", "2")))
     assert len(read_tables(lab_file("a;b\n1;2;\n3;4;\n"))[0].rows) == 2
+
+
+def test_a_pipe_or_a_device_is_no_ordinary_file(tmp_path: Path) -> None:
+    """A pipe that nobody writes to waits for ever, and a device gives bytes without end."""
+    pipe = tmp_path / "labs.csv"
+    os.mkfifo(pipe)
+    for path in (pipe, Path(os.devnull), Path("/dev/zero")):
+        with pytest.raises(LabError, match="is no ordinary file"):
+            read_tables(path)
 
 
 def test_many_problems_are_capped_and_counted() -> None:
