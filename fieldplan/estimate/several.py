@@ -92,6 +92,8 @@ def brief_sentences(plan: Plan, answer: Estimate) -> tuple[str, ...]:
     low = sum(result.used and not result.detected for result in answer.returns.results)
     if low:
         parts.append(f"with {counted(low, 'non-detect')} at half the limit")
+    if answer.rejected_sentence:
+        parts.append("without results that the laboratory rejected, of which its own sheet tells")
     level = plan.campaign.analyte_called(answer.analyte).action_level
     if level is not None:
         outer = envelope(answer.interval, answer.bracket)

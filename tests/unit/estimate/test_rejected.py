@@ -6,6 +6,7 @@ import pytest
 
 from fieldplan.estimate import estimate
 from fieldplan.estimate.export import estimate_json
+from fieldplan.estimate.several import brief_sentences
 from fieldplan.estimate.text import results_paragraph
 from fieldplan.lab.model import REJECTED, LabRow, LabTable, LeftOutRow
 from fieldplan.returns import reconcile
@@ -61,6 +62,16 @@ def test_the_answer_with_a_rejected_result_is_the_one_as_if_it_were_not_rejected
     assert said in answer.sentences
     assert said in results_paragraph(plan, answer)
     assert estimate_json(answer)["rejected"] == said
+
+
+def test_the_sentence_of_another_analyte_says_that_results_were_rejected() -> None:
+    """Its numbers stand on page one of the main analyte's sheet."""
+    plan = make_plan()
+    answer = estimate(plan, met(rejecting("187")))
+    (said,) = brief_sentences(plan, answer)
+    assert "without results that the laboratory rejected" in said
+    (plain,) = brief_sentences(plan, estimate(plan, met(table(lab_rows(plan)))))
+    assert "rejected" not in plain
 
 
 def test_of_two_jars_at_one_place_only_the_rejected_one_is_named() -> None:
