@@ -7,7 +7,7 @@ MEANING: dict[str, str] = {
     "plan.id": "short identifier of the plan; opens the name of every packet",
     "plan.title": "title printed on every page",
     "plan.revision": "number of the revision, where it is kept by hand",
-    "plan.prefix": "letters that open the short name of every location; else taken from the id",
+    "plan.prefix": "letters that open sample ids and made names of places; else taken from the id",
     "plan.site": "name of the site",
     "plan.prepared_by": "who prepared the plan",
     "plan.reviewed_by": "who reviewed the plan",

@@ -294,7 +294,7 @@ class Campaign(Table):
 
     @property
     def prefix(self) -> str:
-        """Two letters that open every short name."""
+        """One or two signs that open sample ids and made names."""
         if self.plan.prefix:
             return self.plan.prefix
         letters = "".join(c for c in self.plan.id.upper() if c.isalpha() and c.isascii())

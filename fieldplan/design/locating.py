@@ -16,7 +16,7 @@ from fieldplan.design.model import (
     Locations,
     StratumCount,
 )
-from fieldplan.design.names import Naming, naming
+from fieldplan.design.names import Naming, naming, own_names, plain_form
 from fieldplan.frame.model import Frame, TargetedPlace
 
 
@@ -73,15 +73,14 @@ def locate(campaign: Campaign, frame: Frame, counts: Sequence[StratumCount]) -> 
 def _named_places(
     campaign: Campaign, frame: Frame, counts: Sequence[StratumCount], drawn: DrawnPlaces
 ) -> tuple[Location, ...]:
-    longest = max([p.list_order for p in drawn.places] + [len(frame.targeted)])
-    names = naming(campaign.prefix, [stratum.name for stratum in frame.strata], longest)
+    names, own = _names(campaign, frame, drawn)
     planned = {count.stratum: count.planned for count in counts}
     realised = Counter(p.stratum for p in drawn.places if p.location_class == "random")
     degrees = _degrees(frame, drawn.places)
     located = [
         Location(
             location_id=place.unit_id or names.location_id(place.stratum, place.list_order),
-            short_name=names.short_name(place.stratum, place.list_order),
+            short_name=own.get(place.unit_id) or names.short_name(place.stratum, place.list_order),
             location_class=place.location_class,
             stratum=place.stratum,
             easting=round(place.easting, 2),
@@ -97,9 +96,20 @@ def _named_places(
     ]
     located.sort(key=lambda place: place.location_class == "alternate")
     located += [
-        _targeted(frame, place, names, number) for number, place in enumerate(frame.targeted, 1)
+        _targeted(frame, place, own.get(place.place_id) or names.targeted_name(number))
+        for number, place in enumerate(frame.targeted, 1)
     ]
     return tuple(located)
+
+
+def _names(campaign: Campaign, frame: Frame, drawn: DrawnPlaces) -> tuple[Naming, dict[str, str]]:
+    """Say how places are named, and which ids serve as names of their own."""
+    longest = max([p.list_order for p in drawn.places] + [len(frame.targeted)])
+    units = [unit.unit_id for stratum in frame.strata for unit in stratum.units]
+    ids = units + [place.place_id for place in frame.targeted]
+    strata = [stratum.name for stratum in frame.strata]
+    names = naming(campaign.prefix, strata, longest, given=ids if units else ())
+    return names, {own: name for own, name in own_names(ids).items() if not names.looks_made(name)}
 
 
 def _weight(frame: Frame, place: DrawnPlace, realised: int) -> float:
@@ -126,10 +136,10 @@ def _degrees(frame: Frame, places: Sequence[DrawnPlace]) -> list[tuple[float, fl
     ]
 
 
-def _targeted(frame: Frame, place: TargetedPlace, names: Naming, number: int) -> Location:
+def _targeted(frame: Frame, place: TargetedPlace, short_name: str) -> Location:
     return Location(
         location_id=place.place_id,
-        short_name=names.targeted_name(number),
+        short_name=short_name,
         location_class="targeted",
         stratum=_stratum_at(frame, place),
         easting=round(place.easting, 2),
@@ -152,15 +162,24 @@ def _stratum_at(frame: Frame, place: TargetedPlace) -> str:
 
 
 def _refuse_shared_ids(places: Sequence[Location]) -> None:
+    """Refuse two places of one id, and a place whose id reads like the short name of another."""
     seen: dict[str, Location] = {}
+    named = {place.short_name: place for place in places}
     problems = []
     for place in places:
         other = seen.setdefault(place.location_id.casefold(), place)
+        alike = named.get(plain_form(place.location_id), place)
         if other is not place:
             problems.append(
                 f"{other.location_class} location '{other.location_id}' and "
                 f"{place.location_class} location '{place.location_id}' share an id; rename the "
                 "one that you named."
+            )
+        elif alike is not place:
+            problems.append(
+                f"{place.location_class} location '{place.location_id}' reads like the short name "
+                f"{alike.short_name} of {alike.location_class} location '{alike.location_id}'; "
+                "rename the one that you named."
             )
     if problems:
         raise DesignError(*problems)

@@ -1,10 +1,13 @@
-"""Names that survive receivers and spreadsheets: at most six characters, made by rule.
+"""Names that survive receivers and spreadsheets: at most six characters.
 
-A short name is the campaign's prefix, a letter for the stratum and a number: ``QFA01``.
+A unit of a list, or a place chosen by judgement, keeps its own id, in capitals and without marks:
+``MW20`` for MW-20. Where that would not survive, and for drawn places, a name is made by rule: the
+campaign's prefix, a letter for the stratum and a number, ``QFA01``.
 """
 
 import re
-from collections.abc import Iterator, Mapping, Sequence
+from collections import Counter
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from itertools import product
 
@@ -23,6 +26,9 @@ ENE ABR ABRIL AGO DIC ENERO MARZO MAYO JUNIO JULIO GEN MAG GIU LUG SET SETT OTT
 FEBR MAIO MRT MAART MEI OUT AOU
 """
 _MONTHS = frozenset(_MONTH_WORDS.split())
+_WORDS = frozenset(["TRUE", "FALSE", "WAHR", "FALSCH", "VRAI", "FAUX", "NA", "NAN", "NULL", "NONE"])
+"""What spreadsheets and readers of CSV take for a truth value or for nothing."""
+_LOOK_ALIKE = str.maketrans({"O": "0", "I": "1"})
 
 
 def is_date_like(name: str) -> bool:
@@ -46,6 +52,63 @@ def is_number_like(name: str) -> bool:
     [True, True, True, False]
     """
     return re.search(r"^\d|\d[Ee]\d", name) is not None
+
+
+def plain_form(own_id: str) -> str:
+    """Write an id in capitals, letters and digits alone.
+
+    Examples
+    --------
+    >>> plain_form("mw-20"), plain_form("P.6")
+    ('MW20', 'P6')
+    """
+    return "".join(mark for mark in own_id if mark.isalnum()).upper()
+
+
+def own_names(ids: Iterable[str]) -> dict[str, str]:
+    """Give those ids that can serve as short names, each with its name.
+
+    Parameters
+    ----------
+    ids : iterable of str
+        All that the owner of the list, or whoever chose the places, gave.
+
+    Returns
+    -------
+    dict of str to str
+        Ids are missing whose plain form is longer than six characters, does not open with a
+        letter, holds anything but A-Z and 0-9, reads as a date, a number or a word of
+        spreadsheets, parts with a mark between two digits (3-5 is not 35), or is also that of
+        another id, but for O and 0, I and 1, and zeros before a number.
+
+    Examples
+    --------
+    >>> own_names(["MW-20", "mw-5", "07B", "1E5", "SEP-3", "OB-1", "0B-1", "MW-3.1"])
+    {'MW-20': 'MW20', 'mw-5': 'MW5'}
+    """
+    ids = list(ids)
+    alike = Counter(_likeness(plain_form(own)) for own in ids)
+    return {
+        own: plain_form(own)
+        for own in ids
+        if _is_proof(own) and alike[_likeness(plain_form(own))] == 1
+    }
+
+
+def _is_proof(own: str) -> bool:
+    name = plain_form(own)
+    return (
+        own.isascii()
+        and re.fullmatch(rf"[A-Z][A-Z0-9]{{0,{LONGEST - 1}}}", name) is not None
+        and re.search(r"\d[^A-Za-z0-9]+\d", own) is None
+        and not is_date_like(name)
+        and not is_number_like(name)
+        and name not in _WORDS
+    )
+
+
+def _likeness(name: str) -> str:
+    return re.sub(r"(?<!\d)0+(?=\d)", "", name.translate(_LOOK_ALIKE))
 
 
 def check_prefix(prefix: str) -> None:
@@ -100,8 +163,21 @@ class Naming:
         """Name a targeted place, e.g. ``QFT01``."""
         return f"{self.prefix}{self.targeted_code}{number:0{self.digits}d}"
 
+    def looks_made(self, name: str) -> bool:
+        """Tell whether a name could be one of ours, drawn or targeted.
 
-def naming(prefix: str, strata: Sequence[str], longest_list: int) -> Naming:
+        Examples
+        --------
+        >>> [naming("QF", ["field"], 9).looks_made(name) for name in ("QFA07", "QFT1", "MW20")]
+        [True, True, False]
+        """
+        stems = {self.prefix + code for code in (*self.codes.values(), self.targeted_code)}
+        return _stem(name) in stems
+
+
+def naming(
+    prefix: str, strata: Sequence[str], longest_list: int, *, given: Iterable[str] = ()
+) -> Naming:
     """Choose codes and width so that every name fits six characters.
 
     Parameters
@@ -111,6 +187,8 @@ def naming(prefix: str, strata: Sequence[str], longest_list: int) -> Naming:
         In the frame's order, which decides the letters: A for the first, and so on.
     longest_list : int
         Places on the longest list of a stratum, alternates in, or the number of targeted places.
+    given : iterable of str
+        Ids that no made name may look like: letters that would make such a name are left out.
 
     Raises
     ------
@@ -128,36 +206,44 @@ def naming(prefix: str, strata: Sequence[str], longest_list: int) -> Naming:
     'MAB07'
     >>> naming("QF", ["field"], 640).location_id("field", 7)
     'QF-A-007'
+    >>> naming("QF", ["field"], 9, given=["QF-A-01", "QF-A-02"]).short_name("field", 7)
+    'QFB07'
     """
     check_prefix(prefix)
     digits = max(len(str(longest_list)), 2)
+    taken = frozenset(_stem(plain_form(own)) for own in given)
     width = 1
-    codes = list(_codes(prefix, width))
-    if len(codes) < len(strata):
+    codes = _codes(prefix, width, taken)
+    if len(codes) <= len(strata):
         width = 2
-        codes = list(_codes(prefix, width))
-    if len(prefix) + width + digits > LONGEST or len(codes) < len(strata):
+        codes = _codes(prefix, width, taken)
+    if len(prefix) + width + digits > LONGEST or len(codes) <= len(strata):
         message = (
             f"{len(strata)} strata with up to {longest_list} places each cannot be named in "
             f"{LONGEST} characters after the prefix '{prefix}'. " + _remedy(prefix, width, digits)
         )
         raise DesignError(message)
-    targeted = _targeted_code(prefix, width)
-    return Naming(prefix, dict(zip(strata, codes, strict=False)), digits, targeted)
+    targeted, *drawn = codes
+    return Naming(prefix, dict(zip(strata, drawn, strict=False)), digits, targeted)
 
 
-def _codes(prefix: str, width: int) -> Iterator[str]:
-    kept_back = _targeted_code(prefix, width)
-    for letters in product(LETTERS, repeat=width):
-        code = "".join(letters)
-        if code != kept_back and not is_date_like(f"{prefix}{code}01"):
-            yield code
+def _codes(prefix: str, width: int, taken: frozenset[str]) -> list[str]:
+    """List the code of targeted places, then those that strata may have.
+
+    It is T, or X after a prefix with which T would read as a month (OC, SE).
+    """
+    letters = ["".join(letters) for letters in product(LETTERS, repeat=width)]
+    free = [
+        code
+        for code in (TARGETED_LETTER * width, "X" * width, *reversed(letters))
+        if not is_date_like(f"{prefix}{code}01") and prefix + code not in taken
+    ]
+    return [*free[:1], *sorted(set(free[1:]) - {free[0]})] if free else []
 
 
-def _targeted_code(prefix: str, width: int) -> str:
-    """Return T, or X after a prefix with which T would read as a month (OC, SE)."""
-    code = TARGETED_LETTER * width
-    return "X" * width if is_date_like(f"{prefix}{code}01") else code
+def _stem(name: str) -> str:
+    """Take the digits off the end of a name."""
+    return name.rstrip("0123456789")
 
 
 def _remedy(prefix: str, width: int, digits: int) -> str:

@@ -7,12 +7,15 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldplan.design.model import Location, LocationClass
+from fieldplan.design.names import plain_form
 from fieldplan.packet.drawing import INK, LINE
+from fieldplan.packet.exchange.plain_text import plain
 from fieldplan.packet.maps.palette import MARKS
 from fieldplan.packet.sheets.take import analysed_words, take_words
 from fieldplan.plan.model import Plan
 
 ARROW = "->"
+LONGEST_OWN_ID = 12
 """The marker of a legend entry that explains arrows."""
 
 
@@ -137,7 +140,7 @@ def plan_content(plan: Plan) -> MapContent:
         Names are the short names that receivers show.
     """
     marks = list(unit_marks(plan))
-    marks += [_mark(place) for place in plan.locations.places]
+    marks += [_mark(plan, place) for place in plan.locations.places]
     present = [name for name in CLASS_PENS if plan.locations.of_class(name)]
     legend = [
         Entry(
@@ -164,11 +167,35 @@ def unit_marks(plan: Plan) -> tuple[Mark, ...]:
     )
 
 
-def _mark(place: Location) -> Mark:
+def label_of(plan: Plan, place: Location) -> str:
+    """Give what a map calls a place: what stands on the well head, and what the receiver shows.
+
+    Parameters
+    ----------
+    plan : Plan
+    place : Location
+
+    Returns
+    -------
+    str
+        The owner's id alone where the short name is only its plain form (MW-20 is MW20 on the
+        receiver); both where a name was made for a unit of a list, the short one where there is
+        no room.
+    """
+    own = plain(place.location_id)
+    of_the_owner = plan.frame.kind == "list" or place.location_class == "targeted"
+    if not of_the_owner or len(own) > LONGEST_OWN_ID:
+        return place.short_name
+    if plain_form(own) == place.short_name:
+        return own
+    return f"{place.short_name} ({own})" if plan.frame.kind == "list" else place.short_name
+
+
+def _mark(plan: Plan, place: Location) -> Mark:
     """Mark one location by its class; random ones lie on top."""
     front = {"alternate": 1, "targeted": 2, "random": 3}[place.location_class]
     pen = CLASS_PENS[place.location_class]
-    return Mark(place.easting, place.northing, pen, place.short_name, front)
+    return Mark(place.easting, place.northing, pen, label_of(plan, place), front)
 
 
 def _count(plan: Plan, name: str) -> int:

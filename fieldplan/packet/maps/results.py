@@ -5,7 +5,16 @@ from fieldplan.estimate.model import Estimate
 from fieldplan.frame.projection import to_site
 from fieldplan.packet.drawing import INK
 from fieldplan.packet.maps.classes import class_bounds, class_of, class_words
-from fieldplan.packet.maps.content import ARROW, Arrow, Entry, MapContent, Mark, Pen, unit_marks
+from fieldplan.packet.maps.content import (
+    ARROW,
+    Arrow,
+    Entry,
+    MapContent,
+    Mark,
+    Pen,
+    label_of,
+    unit_marks,
+)
 from fieldplan.packet.maps.printed import PrintedMap, print_content
 from fieldplan.plan.model import Plan
 from fieldplan.returns.model import LocationResult
@@ -63,7 +72,7 @@ def results_content(plan: Plan, estimate: Estimate) -> MapContent:
         arrows += arrow
     lost = {entry.location_id for entry in estimate.returns.lost}
     marks += [
-        Mark(p.easting, p.northing, _LOST, f"{p.short_name} lost", 4)
+        Mark(p.easting, p.northing, _LOST, f"{label_of(plan, p)} lost", 4)
         for p in places.values()
         if p.location_id in lost
     ]
@@ -89,7 +98,7 @@ def _result_marks(
         easting, northing = float(actual[0]), float(actual[1])
     value = ", ".join(dict.fromkeys(result.as_reported))
     pen = _value_pen(result, bounds)
-    marks = [Mark(easting, northing, pen, f"{place.short_name} {value}", 1)]
+    marks = [Mark(easting, northing, pen, f"{label_of(plan, place)} {value}", 1)]
     if not result.used:
         marks.append(Mark(easting, northing, _NOT_USED, "", 2))
     return marks, arrows if (result.moved_m or 0.0) > 0 else []

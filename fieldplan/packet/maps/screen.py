@@ -10,6 +10,7 @@ from fieldplan.design.model import LocationClass
 from fieldplan.frame.projection import site_zone, utm
 from fieldplan.packet.exchange.outlines import Outline, outlines
 from fieldplan.packet.exchange.rows import PointRow, point_rows
+from fieldplan.packet.maps.content import label_of
 from fieldplan.packet.maps.offline import (
     TILES,
     Call,
@@ -40,7 +41,6 @@ from fieldplan.packet.sheets.take import analysed_words
 from fieldplan.plan.model import Plan
 
 WEB_PROJECTION_ENDS = 84.0
-LONGEST_OWN_ID = 12
 
 
 def screen_map(plan: Plan) -> str:
@@ -196,21 +196,13 @@ def _told(plan: Plan, row: PointRow) -> dict[str, Any]:
     ]
     return {
         "short_name": str(cells["short_name"]),
-        "label": _label(plan, row),
+        "label": label_of(plan, place),
         "class": place.location_class,
         "mark": {"shape": mark.shape, "fill": mark.fill, "edge": mark.edge},
-        "title": str(cells["short_name"]),
+        "title": label_of(plan, place),
         "lead": [lead[place.location_class]],
         "rows": [[name, value] for name, value in table if value],
     }
-
-
-def _label(plan: Plan, row: PointRow) -> str:
-    """Name a place on the map: units of a list by their own id too, when there is room for it."""
-    cells = row.cells()
-    own = str(cells["location_id"])
-    known = plan.frame.kind == "list" and len(own) <= LONGEST_OWN_ID
-    return f"{cells['short_name']} ({own})" if known else str(cells["short_name"])
 
 
 def _depth(row: PointRow) -> str:

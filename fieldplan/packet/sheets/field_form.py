@@ -2,6 +2,7 @@
 
 from fieldplan.base.document import Block, Bullets, Document, Facts, Heading, Paragraph, Table
 from fieldplan.design.model import Location, LocationClass
+from fieldplan.design.names import plain_form
 from fieldplan.packet.sheets.amounts import days
 from fieldplan.packet.sheets.field_section import deviation_rule, reason_table
 from fieldplan.packet.sheets.plan_sheet import subtitle
@@ -113,9 +114,9 @@ def sample_table(plan: Plan, places: tuple[Location, ...]) -> Table:
 
 
 def sample_row(plan: Plan, place: Location, sample: Sample) -> tuple[str, ...]:
-    """Set one sample with blanks; the short name is what the receiver shows."""
+    """Set one sample with blanks, and what the receiver shows where the id does not tell it."""
     name = place.location_id
-    if place.short_name != name:
+    if place.short_name != plain_form(name):
         name += f" ({place.short_name})"
     if place.location_class == "alternate" and several_strata(plan):
         name += f", {place.stratum}"

@@ -1,6 +1,7 @@
 """Locations: named, weighed, in degrees, in print order."""
 
 import dataclasses
+import re
 
 import numpy as np
 import pytest
@@ -64,9 +65,9 @@ def test_coordinates_are_whole_centimetres() -> None:
 
 
 def test_targeted_places_keep_their_ids_and_never_count() -> None:
-    """Weight 0 and probability 0 bar them from the mean."""
+    """Weight 0 and probability 0 bar them from the mean; what is painted on the tank stays."""
     tank = located().of_class("targeted")[0]
-    assert (tank.location_id, tank.short_name, tank.stratum) == ("TANK", "QFT01", "yard")
+    assert (tank.location_id, tank.short_name, tank.stratum) == ("TANK", "TANK", "yard")
     assert (tank.weight, tank.inclusion_probability, tank.list_order) == (0.0, 0.0, 0)
 
 
@@ -78,7 +79,7 @@ def test_a_targeted_place_outside_all_strata_has_no_stratum() -> None:
 
 
 def test_list_units_keep_the_ids_and_degrees_they_came_with() -> None:
-    """Well names are on the well heads; only the short name is made."""
+    """Well names are on the well heads, and on the receiver."""
     campaign = make_campaign(design=(DesignTable(layout="simple-random"),))
     frame = make_list_frame()
     units = {unit.unit_id: unit for unit in frame.strata[0].units}
@@ -87,7 +88,69 @@ def test_list_units_keep_the_ids_and_degrees_they_came_with() -> None:
     for place in locations.places:
         unit = units[place.location_id]
         assert (place.latitude, place.longitude) == (unit.latitude, unit.longitude)
-        assert place.short_name == f"QFA{place.list_order:02d}"
+        assert place.short_name == place.location_id.replace("-", "")
+
+
+def wells(*ids: str, targeted: str = "TANK", prefix: str = "QF") -> dict[str, str]:
+    """Draw a list of these ids, and give each the short name that it got."""
+    stratum = make_list_frame().strata[0]
+    units = tuple(
+        dataclasses.replace(unit, unit_id=own)
+        for unit, own in zip(stratum.units, ids, strict=False)
+    )
+    place = TargetedPlace(targeted, 10.0, 10.0, 52.1, -1.9, "old shed")
+    frame = dataclasses.replace(
+        make_list_frame(),
+        strata=(dataclasses.replace(stratum, units=units, measure=float(len(ids))),),
+        targeted=(place,),
+    )
+    plan = PlanTable(id="QF", title="Wells", prefix=prefix)
+    campaign = make_campaign(design=(DesignTable(layout="simple-random"),), plan=plan)
+    places = locate(campaign, frame, [StratumCount("site", len(ids), 0)]).places
+    return {place.location_id: place.short_name for place in places}
+
+
+def test_a_name_is_made_only_where_the_own_id_does_not_survive() -> None:
+    """Who stands before the casing reads its tag; only 08, 1E5 and their kin need another name."""
+    names = wells(
+        "MW-1", "mw-5", "P.6", "08", "1E5", "SEP-3", "OB-1", "OBX-9-1", targeted="TANK-PIT"
+    )
+    assert {own: names[own] for own in ("MW-1", "mw-5", "P.6", "OB-1")} == {
+        "MW-1": "MW1", "mw-5": "MW5", "P.6": "P6", "OB-1": "OB1"
+    }  # fmt: skip
+    made = {own: name for own, name in names.items() if own in {"08", "1E5", "SEP-3", "OBX-9-1"}}
+    assert all(re.fullmatch(r"QFA0\d", name) for name in made.values())
+    assert len(set(made.values())) == 4
+    assert names["TANK-PIT"] == "QFT01"
+
+
+def test_the_own_id_is_kept_whatever_else_the_list_draws() -> None:
+    """A well that is called one thing in one round and another in the next would be mixed up."""
+    few = [StratumCount("site", 3, 0)]
+    many = [StratumCount("site", 9, 5)]
+    campaign = make_campaign(design=(DesignTable(layout="simple-random"),))
+    before, after = (
+        {p.location_id: p.short_name for p in locate(campaign, make_list_frame(), counts).places}
+        for counts in (few, many)
+    )
+    assert before.items() <= after.items()
+
+
+def test_no_made_name_looks_like_an_id_of_the_list() -> None:
+    """A list of an earlier round with this prefix, and one id that needs a name: QFA01 is taken."""
+    names = wells("QFA01", "QF-B-02", "007", targeted="QFT01")
+    assert names == {"QFA01": "QFA01", "QF-B-02": "QFB02", "007": names["007"], "QFT01": "QFT01"}
+    assert re.fullmatch(r"QFC0[123]", names["007"])
+
+
+def test_a_targeted_place_that_reads_like_a_drawn_one_is_refused() -> None:
+    """QFA02 on the receiver must be one place."""
+    clash = TargetedPlace("qfa02", 10.0, 10.0, 52.1, -1.9, "old shed")
+    frame = dataclasses.replace(make_frame(), targeted=(clash,))
+    with pytest.raises(DesignError, match=r"'qfa02' reads like the short name QFA02 of random"):
+        locate(make_campaign(), frame, COUNTS)
+    later = dataclasses.replace(frame, targeted=(dataclasses.replace(clash, place_id="qfa44"),))
+    assert locate(make_campaign(), later, COUNTS).places[-1].short_name == "QFT01"
 
 
 def test_more_locations_keep_every_earlier_one() -> None:

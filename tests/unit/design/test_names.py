@@ -14,6 +14,8 @@ from fieldplan.design.names import (
     is_date_like,
     is_number_like,
     naming,
+    own_names,
+    plain_form,
 )
 
 MONTHS = ("JAN", "FEB", "MAR", "APR", "MAY", "JUN", "JUL", "AUG", "SEP", "OCT", "NOV", "DEC")
@@ -75,6 +77,58 @@ def test_targeted_places_have_a_letter_of_their_own() -> None:
     names = naming("QF", [str(k) for k in range(22)], 9)
     assert names.targeted_name(3) == "QFT03"
     assert "T" not in names.codes.values()
+
+
+@settings(max_examples=300)
+@given(
+    ids=st.lists(
+        st.text(st.sampled_from("AMWEOI-. _/0159äß"), min_size=1, max_size=8),
+        max_size=12,
+        unique=True,
+    )
+)
+def test_own_names_keep_all_receiver_rules(ids: list[str]) -> None:
+    """Whatever owners call their wells: 1 to 6 of A–Z 0–9, a letter first, apart, no E number."""
+    names = own_names(ids)
+    assert len({name.casefold() for name in names.values()}) == len(names)
+    for own, name in names.items():
+        assert re.fullmatch(r"[A-Z][A-Z0-9]{0,5}", name)
+        assert re.sub(r"[-. _/]", "", own).upper() == name
+        assert not re.search(r"\dE\d", name)
+        assert not is_date_like(name)
+        assert [other for other in ids if plain_form(other) == name] == [own]
+
+
+@pytest.mark.parametrize(
+    "own",
+    [
+        "MONITOR-1",
+        "07B",
+        "1E5",
+        "M1E5",
+        "SEP-3",
+        "MW-3.5",
+        "MW 1/2",
+        "TRUE",
+        "na",
+        "Größe",
+        "-",
+        "٣",
+    ],
+)
+def test_ids_that_receivers_or_spreadsheets_would_change_get_another_name(own: str) -> None:
+    """Too long, a digit first, a number, a date, two numbers closed up, a word, other letters."""
+    assert own_names([own, "MW-7"]) == {"MW-7": "MW7"}
+
+
+@pytest.mark.parametrize(
+    "pair", [("MW-1", "MW1"), ("MW-01", "mw1"), ("OB-1", "0B1"), ("MWI", "MW1")]
+)
+def test_ids_that_would_be_mistaken_for_each_other_both_get_another_name(
+    pair: tuple[str, str],
+) -> None:
+    """Which of the two is meant cannot be told on a receiver."""
+    assert own_names([*pair, "P.6"]) == {"P.6": "P6"}
 
 
 def test_longer_lists_get_three_digits_everywhere() -> None:

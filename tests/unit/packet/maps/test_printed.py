@@ -11,7 +11,7 @@ import shapely
 
 from fieldplan.campaign.model import Paper, PlanTable
 from fieldplan.packet.drawing import pens
-from fieldplan.packet.maps.content import plan_content
+from fieldplan.packet.maps.content import label_of, plan_content
 from fieldplan.packet.maps.panels import bar_length
 from fieldplan.packet.maps.printed import draw_pages, printed_map
 from tests.factories import make_campaign, make_plan
@@ -200,8 +200,23 @@ def test_any_site_is_drawn_with_all_its_names(plan, most_pages: int) -> None:
     """From a garden bed to a catchment, anywhere on Earth."""
     figures, _ = drawn(plan)
     assert len(figures) <= most_pages
-    wanted = {place.short_name for place in plan.locations.places}
+    wanted = {label_of(plan, place) for place in plan.locations.places}
     assert {t.get_text() for figure in figures for t in names(figure)} == wanted
+
+
+def test_a_map_shows_the_owners_id_alone_where_the_receivers_name_says_the_same() -> None:
+    """MW-20 stands on the casing and MW20 on the receiver; 07B needs both of its names."""
+    plan = make_list_plan()
+    first, *others = plan.locations.places
+    named = {"MW-20": "MW20", "07B": "QFA01", "a very long well": "QFA02"}
+    places = [replace(first, location_id=own, short_name=name) for own, name in named.items()]
+    plan = replace(plan, locations=replace(plan.locations, places=(*places, *others)))
+    assert [label_of(plan, place) for place in places] == ["MW-20", "QFA01 (07B)", "QFA02"]
+    content = plan_content(plan)
+    assert {"MW-20", "QFA01 (07B)"} <= {mark.name for mark in content.marks}
+    area = make_area_plan(shapely.box(0, 0, 100, 100), 6)
+    drawn_place = area.locations.places[0]
+    assert label_of(area, drawn_place) == drawn_place.short_name
 
 
 def test_a_list_shows_the_units_that_were_not_drawn_and_says_its_outline_is_none() -> None:
