@@ -62,17 +62,23 @@ def nearest(text: str, names: Iterable[str], *, cutoff: float = 0.75) -> list[st
     -------
     list of str
         Empty when none is near. Between equals, the same letters in another order count more,
-        then letters that agree place by place.
+        then letters that agree place by place. A name whose leading letters stand nowhere in the
+        id is of another job, however well the numbers agree.
 
     Examples
     --------
     >>> nearest("QF-732", ["QF-872", "QF-731"]), nearest("X", ["QF-872"])
     (['QF-731'], [])
+    >>> nearest("OT-02143", ["HL-2143"]), nearest("LH-2143", ["HL-2143"])
+    ([], ['HL-2143'])
     """
     wanted = likeness(text)
     scores: dict[str, tuple[float, bool, int]] = {}
     matcher = SequenceMatcher(None, "", wanted, autojunk=False)
+    words = _words(text)
     for name in names:
+        if not _of_one_job(words, _words(name)):
+            continue
         other = likeness(name)
         matcher.set_seq1(other)
         share = matcher.ratio() if matcher.quick_ratio() >= cutoff else 0.0
@@ -81,3 +87,23 @@ def nearest(text: str, names: Iterable[str], *, cutoff: float = 0.75) -> list[st
             scores[name] = (share, sorted(wanted) == sorted(other), in_place)
     best = max(scores.values(), default=None)
     return [name for name, score in scores.items() if score == best]
+
+
+def _words(text: str) -> list[str]:
+    """Give the runs of letters of an id, in lower case."""
+    return re.findall(r"[^\W\d_]+", plain_id(text).casefold())
+
+
+def _of_one_job(words: list[str], planned: list[str]) -> bool:
+    """Whether the first letters of a planned id stand somewhere in an id as written.
+
+    Half of the letters is enough, and one letter may stand for another: those are slips.
+    """
+    if not words or not planned:
+        return True
+    lead = planned[0]
+    return any(
+        SequenceMatcher(None, word, lead, autojunk=False).ratio() >= 0.5
+        or len(word) == len(lead) == 1
+        for word in words
+    )

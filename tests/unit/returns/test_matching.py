@@ -53,6 +53,18 @@ def test_an_id_like_nothing_planned_is_extra() -> None:
     assert said in returns.notes
 
 
+@pytest.mark.parametrize(
+    ("written", "expected"),
+    [("OT-00731", []), ("ZZ 731", []), ("FQ-731", [(40, "QF-731")]), ("OF-731", [(40, "QF-731")]),
+     ("Q-731", [(40, "QF-731")]), ("S-QF-731", [(40, "QF-731")]), ("6-QF-731", [(40, "QF-731")])],
+)  # fmt: skip
+def test_the_number_of_another_job_is_not_proposed(
+    written: str, expected: list[tuple[int, str]]
+) -> None:
+    """Numbers of jars repeat from job to job; one slip in the letters makes no other job."""
+    assert proposed(lab_row(40, written, "41")) == expected
+
+
 def test_a_location_id_settles_what_the_sample_id_does_not() -> None:
     """The laboratory's own number in the sample column, our location beside it: no doubt."""
     row = lab_row(2, "2026-4101", "41", location_id="QF-A-01")
