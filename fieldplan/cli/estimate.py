@@ -47,6 +47,8 @@ def _columns(
     return columns
 
 
+MOST_PROPOSALS = 20
+"""How many are printed; all of them stand in the file."""
 _A_FILE = click.Path(path_type=Path, dir_okay=False)
 
 
@@ -229,6 +231,7 @@ def _ask(
     """Write the proposals to answer, then stop."""
     from fieldplan.base.errors import LabError
     from fieldplan.base.files import write_atomically
+    from fieldplan.lab.tables import capped
     from fieldplan.returns import matches_csv
 
     number, path = 1, folder / "matches.csv"
@@ -244,7 +247,7 @@ def _ask(
     ]
     raise LabError(
         *_counts(plan, received),
-        *lines,
+        *capped(lines, MOST_PROPOSALS + 1),
         f"Write yes or no into the column 'confirm' of {path} and your name into 'confirmed_by', "
         f"then run the command again with --matches {path}. Nothing was estimated.",
     )

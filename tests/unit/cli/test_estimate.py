@@ -110,6 +110,21 @@ def test_near_matches_are_asked_and_nothing_else_is_written(folder: Path) -> Non
     assert names(folder) - before == {"matches.csv"}
 
 
+def test_a_flood_of_proposals_is_counted_on_the_screen_and_whole_in_the_file(folder: Path) -> None:
+    """Nine hundred lines hide the first and the last, which says what to do."""
+    rows = [row for row in lab_rows(folder) if row[0] != "QF-731"]
+    write_lab(
+        folder, [*rows, *(["qf-731" + " " * n + "x", "Lead", "7", "mg/kg"] for n in range(900))]
+    )
+    lines = refused("--field", "field.csv")
+    assert len(lines) == 23
+    assert lines[0] == "10 of 910 laboratory rows matched; 900 need you."
+    assert all(" may be QF-731: " in line for line in lines[1:21])
+    assert lines[21] == "… and 880 more."
+    with (folder / "matches.csv").open(encoding="utf-8-sig", newline="") as stream:
+        assert len(list(csv.DictReader(stream))) == 900
+
+
 def test_answers_handed_back_let_the_estimate_through(folder: Path, unset: list[Path]) -> None:
     """Yes to both, and the same eleven rows count."""
     rows = lab_rows(folder)
