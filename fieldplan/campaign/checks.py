@@ -99,7 +99,9 @@ def _unknown_columns(
     table: Data, path: tuple[str | int, ...], known: tuple[str, ...]
 ) -> Iterator[Problem]:
     columns = table.get("columns")
-    for key in columns if isinstance(columns, dict) else ():
+    if not isinstance(columns, dict):
+        return
+    for key in columns:
         if key in known:
             continue
         if key == "stratum" and path[0] == "frame":
