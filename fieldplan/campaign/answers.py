@@ -79,7 +79,9 @@ class Answers:
     @property
     def divided(self) -> bool:
         """Whether the population has strata, as far as is known."""
-        return self.strata is not None or self.list_in_strata or "strata" in self.left_open
+        if self.list_file is not None:
+            return self.list_in_strata
+        return self.strata is not None or "strata" in self.left_open
 
     @property
     def guessed_without_results(self) -> bool:

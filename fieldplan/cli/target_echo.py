@@ -1,102 +1,62 @@
-"""What a typed target means: as half-width, standard error, n, and the chance that n is enough."""
+"""What a typed target means: n, what it yields, and the chance that it is enough."""
 
-import os
 from dataclasses import replace
-from math import sqrt
 from pathlib import Path
-from typing import TYPE_CHECKING, NamedTuple
+from typing import TYPE_CHECKING
 
 from fieldplan.base.errors import FieldplanError
-from fieldplan.campaign.new import Answers, campaign_text
+from fieldplan.campaign.answers import Answers
+from fieldplan.cli.named_files import known_campaign, pilot_spread
 
 if TYPE_CHECKING:
-    from fieldplan.lab.model import StratumSpread
+    from fieldplan.campaign.model import ReadCampaign
+    from fieldplan.frame.model import Frame
+    from fieldplan.sizing.question import Part, Question
 
 CONFIDENCE = 0.95
-SHOWN_ASSURANCE = 0.80
+UNIT_OPEN = "(unit not known yet)"
 
 
-class KnownSigma(NamedTuple):
-    """A standard deviation, the number of results behind it and their mean, as far as known."""
-
-    value: float
-    results: int | None
-    mean: float | None
-    words: str
-
-
-def echo_target(answers: Answers, folder: Path) -> list[str]:
-    """Say in sentences what a target asks for.
+def echo_target(answers: Answers, folder: Path, *, drawn: bool = True) -> list[str]:
+    """Say in sentences what a target asks for, as ``fieldplan size`` will.
 
     Parameters
     ----------
     answers : Answers
         With a target; sigma or a pilot as far as known.
     folder : Path
-        Where the pilot's path starts.
+        Where the paths of the answers start.
+    drawn : bool
+        Whether the boundary is a file already; strata can be measured only then.
+
+    Returns
+    -------
+    list of str
+        Empty without a target.
     """
     if answers.target_kind is None or answers.target is None:
         return []
-    unit = answers.unit or "(unit not known yet)"
     if answers.target_kind == "budget":
         return ["'fieldplan size' will say how far off the mean is for that money."]
+    if answers.pilot is None and answers.sigma is None:
+        return _without_sigma(answers)
+    if answers.target_kind == "relative_half_width" and not _mean_is_known(answers):
+        return ["A share of the mean needs a mean; add expected_mean to the file."]
+    if answers.pilot is not None and (answers.analyte is None or answers.unit is None):
+        return ["The number of results can be said once analyte and unit are known."]
     try:
-        sigma = _known_sigma(answers, folder)
-        if sigma is None:
-            return _without_sigma(answers, unit)
-        return _with_sigma(answers, sigma, unit)
+        return _with_sigma(answers, folder, drawn)
     except FieldplanError as fault:
-        return ["The number of results cannot be said yet:", *fault.problems]
+        return [f"The number of results cannot be said yet: {fault.problems[0]}"]
 
 
-def _known_sigma(answers: Answers, folder: Path) -> KnownSigma | None:
-    """Take sigma from the pilot or as typed."""
-    if answers.pilot is not None:
-        pilot = _pilot_spread(answers, folder)
-        if pilot is None:
-            return None
-        words = f"the pilot's standard deviation of {pilot.sigma:.4g}"
-        return KnownSigma(pilot.sigma, pilot.results, pilot.mean, words)
-    if answers.sigma is None:
-        return None
-    words = f"a standard deviation of {answers.sigma:g}"
-    return KnownSigma(answers.sigma, answers.from_results, answers.expected_mean, words)
+def _mean_is_known(answers: Answers) -> bool:
+    return answers.pilot is not None or answers.expected_mean is not None
 
 
-def _pilot_spread(answers: Answers, folder: Path) -> "StratumSpread | None":
-    """Read the pilot as one site; the frame is not needed for that."""
-    from fieldplan.campaign.read import inspect_text
-    from fieldplan.lab import read_lab
-    from fieldplan.lab.pilot import measured_spread, pilot_locations
-
-    if answers.pilot is None or answers.analyte is None or answers.unit is None:
-        return None
-    whole = replace(
-        answers,
-        plan_id="ECHO",
-        title="echo",
-        boundary="none",
-        list_file=None,
-        target_kind="standard_error",
-        target=1.0,
-        assurance="plain",
-        chosen_by="nobody",
-    )
-    read = inspect_text(campaign_text(whole), folder / "campaign.toml").campaign
-    if read is None:
-        return None
-    campaign = read.campaign
-    analyte = campaign.deciding_analyte.id
-    # The folder may not be there yet, so the system cannot follow ".." out of it.
-    place = Path(os.path.normpath(folder.resolve() / answers.pilot))
-    table = read_lab(place, campaign)
-    places, _ = pilot_locations(table, analyte, duplicates=campaign.rules.duplicates)
-    return measured_spread(places, analyte, "site")
-
-
-def _without_sigma(answers: Answers, unit: str) -> list[str]:
+def _without_sigma(answers: Answers) -> list[str]:
     """Relate half-width and standard error while sigma is not known."""
-    target = answers.target or 0.0
+    target, unit = answers.target or 0.0, answers.unit or UNIT_OPEN
     later = "How many results that takes depends on sigma, which is not known yet."
     if answers.target_kind == "relative_half_width":
         return [
@@ -111,64 +71,77 @@ def _without_sigma(answers: Answers, unit: str) -> list[str]:
     ]
 
 
-def _with_sigma(answers: Answers, sigma: KnownSigma, unit: str) -> list[str]:
-    """Say n, what it yields, and the chance that it is enough."""
-    from fieldplan.stats.precision import half_width
+def _with_sigma(answers: Answers, folder: Path, drawn: bool) -> list[str]:
+    """Ask sizing the question that the campaign file will ask, with sigma at face value first."""
+    from fieldplan.sizing import answer
 
-    target, is_error = answers.target or 0.0, answers.target_kind == "standard_error"
-    if answers.target_kind == "relative_half_width":
-        if sigma.mean is None:
-            return ["A share of the mean needs a mean; add expected_mean to the file."]
-        target *= sigma.mean
-    n = _smallest_n(sigma.value, target, is_error)
-    width = half_width(sigma.value, n, confidence=CONFIDENCE)
-    sentences = [
-        f"With {sigma.words} {unit} that asks for {n} results: standard error "
-        f"{sigma.value / sqrt(n):.3g} {unit}, half-width {width:.3g} {unit} "
-        f"({CONFIDENCE * 100:.0f} % interval)."
-    ]
-    sentences.append(_chance(answers, sigma, target, n))
-    if answers.list_file is not None:
-        sentences.append("A short list needs fewer; 'fieldplan size' counts that in.")
-    return sentences
+    question = _question(replace(answers, assurance="plain", chosen_by=None), folder, drawn)
+    sentences = answer(question).sentences[:3]
+    chosen = answers.assurance
+    if isinstance(chosen, float) and not answers.guessed_without_results:
+        n = answer(replace(question, assurance=chosen)).needed
+        sentences = (*sentences, f"For the chance of {chosen * 100:g} % asked for it takes {n}.")
+    return [_taken_from(answers, question), *sentences]
 
 
-def _smallest_n(sigma: float, target: float, is_error: bool) -> int:
-    """Count results by the plain formula, at least 2."""
-    from fieldplan.stats.precision import n_for_half_width, n_for_standard_error
+def _taken_from(answers: Answers, question: "Question") -> str:
+    """Say which standard deviation the number rests on."""
+    whose = "the pilot's" if answers.pilot is not None else "a"
+    unit = answers.unit or UNIT_OPEN
+    if len(question.parts) == 1:
+        return f"With {whose} standard deviation of {question.parts[0].sigma:.4g} {unit}:"
+    sigmas = ", ".join(f"{part.name} {part.sigma:.4g}" for part in question.parts)
+    return f"With {whose} standard deviation in each stratum ({sigmas} {unit}):"
 
-    if is_error:
-        return max(n_for_standard_error(sigma, target), 2)
-    return n_for_half_width(sigma, target, confidence=CONFIDENCE)
 
+def _question(answers: Answers, folder: Path, drawn: bool) -> "Question":
+    """Put the question; a list or strata are read, since they change the number."""
+    from fieldplan.sizing.campaign_question import ask, expected_mean, parts_of
 
-def _chance(answers: Answers, sigma: KnownSigma, target: float, n: int) -> str:
-    """Say the chance that n is enough, and n for an assurance."""
-    from fieldplan.stats import assurance as assured
+    read = known_campaign(answers, folder)
+    if read is None:
+        message = "the answers do not make a campaign yet."
+        raise FieldplanError(message)
+    campaign = read.campaign
+    if answers.list_file is not None or (answers.strata is not None and drawn):
+        from fieldplan.frame import read_frame
+        from fieldplan.lab import read_spread
 
-    if sigma.results is None or sigma.results < 2:
-        return (
-            "The chance that this is enough cannot be said without the number of results behind "
-            "sigma; with sigma only estimated it is about one half."
-        )
-    predicted = sigma.value**2 / n
-    wanted = SHOWN_ASSURANCE if answers.assurance in (None, "plain") else float(answers.assurance)
-    if answers.target_kind == "standard_error":
-        chance = assured.chance_of_variance(predicted, target**2, sigma.results - 1)
-        more = assured.n_at_assurance(sigma.value, target, pilot_n=sigma.results, assurance=wanted)
+        frame: Frame = read_frame(read)
+        spread = read_spread(read, frame)
+        parts = parts_of(campaign, frame, spread.strata)
+        mean = expected_mean(spread.strata, frame, site=spread.site)
     else:
-        chance = assured.chance_of_half_width(
-            predicted, target, main=n - 1, pilot=sigma.results - 1, confidence=CONFIDENCE
+        part = _whole_site(answers, read)
+        parts, mean = (part,), part.mean
+    question = ask(campaign, campaign.deciding_objective, parts=parts, mean=mean)
+    return replace(question, unit=answers.unit or UNIT_OPEN)
+
+
+def _whole_site(answers: Answers, read: "ReadCampaign") -> "Part":
+    """Take the site as one part, which needs no boundary."""
+    from fieldplan.sizing.question import Part
+
+    if answers.pilot is None:
+        source = (answers.sigma_source or "").strip()
+        return Part(
+            name="site",
+            weight=1.0,
+            sigma=answers.sigma or 0.0,
+            results=answers.from_results,
+            source=source,
+            assumed=source.casefold() == "assumed",
+            mean=answers.expected_mean,
+            mean_from=source,
         )
-        more = assured.n_for_half_width_at_assurance(
-            sigma.value,
-            target,
-            assurance=wanted,
-            confidence=CONFIDENCE,
-            pilot_n=sigma.results,
-        )
-    return (
-        f"The chance that {n} are enough is {chance * 100:.0f} %, since sigma is itself an "
-        f"estimate from {sigma.results} results; for a chance of {wanted * 100:.0f} % it takes "
-        f"{more}."
+    pilot = pilot_spread(read)
+    return Part(
+        name="site",
+        weight=1.0,
+        sigma=pilot.sigma,
+        results=pilot.results,
+        source=pilot.source,
+        skewness=pilot.skewness,
+        mean=pilot.mean,
+        mean_from=pilot.source,
     )
