@@ -218,7 +218,9 @@ def _frame(answers: Answers) -> list[str]:
     lines += [_line("kind", "area"), _line("boundary", answers.boundary)]
     if answers.boundary_assumed:
         lines.append(_line("boundary_assumed", True, "a circle; stamped ASSUMED on every page"))
-    comment = 'one outline for each part; then layout = "stratified"'
+    comment = "one outline for each part"
+    if not answers.divided:
+        comment += '; then layout = "stratified"'
     if "strata" in answers.left_open:
         comment = 'or take this line out, and write layout = "simple-random"'
     return [
