@@ -126,10 +126,27 @@ def look_at_pilot(answers: Answers, folder: Path) -> list[str]:
 
 def _kept(name: str | None, fault: FieldplanError) -> list[str]:
     """Say why a file that was named cannot be used yet."""
+    head = f"{name} is kept, but cannot be used as it stands ('back' names another):"
+    return [head, *first_problems(fault)]
+
+
+def first_problems(fault: FieldplanError) -> list[str]:
+    """List the first few problems of a file, and count the rest.
+
+    Parameters
+    ----------
+    fault : FieldplanError
+
+    Examples
+    --------
+    >>> first_problems(FieldplanError("row 2: no.", "row 3: no."))
+    ['row 2: no.', 'row 3: no.']
+    >>> first_problems(FieldplanError(*"abcde"))
+    ['a', 'b', 'c', "… and 2 more; 'fieldplan check' will list them."]
+    """
     more = len(fault.problems) - MOST_PROBLEMS
     rest = [f"… and {more} more; 'fieldplan check' will list them."] if more > 0 else []
-    head = f"{name} is kept, but cannot be used as it stands ('back' names another):"
-    return [head, *fault.problems[:MOST_PROBLEMS], *rest]
+    return [*fault.problems[:MOST_PROBLEMS], *rest]
 
 
 def unnamed_columns(answers: Answers, folder: Path) -> tuple[list[str], list[str]]:

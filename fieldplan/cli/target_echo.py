@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 from fieldplan.base.errors import FieldplanError
 from fieldplan.campaign.answers import Answers
-from fieldplan.cli.named_files import known_campaign, pilot_spread
+from fieldplan.cli.named_files import first_problems, known_campaign, pilot_spread
 
 if TYPE_CHECKING:
     from fieldplan.campaign.model import ReadCampaign
@@ -47,7 +47,7 @@ def echo_target(answers: Answers, folder: Path, *, drawn: bool = True) -> list[s
     try:
         return _with_sigma(answers, folder, drawn)
     except FieldplanError as fault:
-        return [f"The number of results cannot be said yet: {fault.problems[0]}"]
+        return ["The number of results cannot be said yet:", *first_problems(fault)]
 
 
 def _mean_is_known(answers: Answers) -> bool:
