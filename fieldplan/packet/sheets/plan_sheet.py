@@ -10,6 +10,7 @@ from fieldplan.packet.sheets.place_section import draw_blocks, location_blocks
 from fieldplan.packet.sheets.quality_section import quality_blocks
 from fieldplan.packet.sheets.question_section import population_blocks, question_blocks
 from fieldplan.packet.sheets.rules import rules_blocks
+from fieldplan.packet.sheets.words_used import explained, words_used
 from fieldplan.plan.model import Plan
 
 
@@ -40,10 +41,12 @@ def plan_sheet(plan: Plan) -> Document:
         ("For the report", methods_blocks(plan)),
         ("What this plan was made from", inputs_blocks(plan)),
     )
-    blocks: list[Block] = [*answer_blocks(plan), PageBreak()]
+    blocks: list[Block] = [*explained(answer_blocks(plan)), PageBreak()]
     for number, (title, content) in enumerate(sections, start=1):
         blocks += [Heading(f"{number}. {title}"), *content]
-    blocks += [Heading(f"{len(sections) + 1}. Sign-off"), sign_off(plan), *annex_blocks(plan)]
+    blocks += [Heading(f"{len(sections) + 1}. Sign-off"), sign_off(plan)]
+    annexes = annex_blocks(plan)
+    blocks += [*words_used([*blocks, *annexes]), *annexes]
     return Document(
         title=plan.campaign.plan.title,
         subtitle=subtitle(plan, "Plan sheet"),

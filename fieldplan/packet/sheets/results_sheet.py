@@ -34,9 +34,14 @@ from fieldplan.packet.sheets.returned import (
     match_sentence,
 )
 from fieldplan.packet.sheets.rules import rules_blocks
+from fieldplan.packet.sheets.words_used import explained, words_used
 from fieldplan.plan.model import Plan
 
 _NO_ORIGIN = ResultsOrigin()
+
+TRUST = "How far the interval can be trusted"
+FACTORS = "Achieved is "
+"""How the sentence opens that splits planned against achieved into factors."""
 
 
 def results_sheet(plan: Plan, answers: Answers, *, origin: ResultsOrigin = _NO_ORIGIN) -> Document:
@@ -59,9 +64,10 @@ def results_sheet(plan: Plan, answers: Answers, *, origin: ResultsOrigin = _NO_O
     estimate = answers.main
     besides = [("Other analytes of the campaign", other_blocks(answers))]
     sections: tuple[tuple[str, list[Block]], ...] = (
-        ("Planned against achieved", [Bullets(estimate.why_different)]),
+        ("Planned against achieved", [Bullets(said_of_difference(estimate))]),
         *(besides if answers.sentences else []),
         ("By stratum", [stratum_table(plan, estimate)]),
+        (TRUST, [Paragraph(estimate.coverage_sentence)]),
         ("Location by location", location_blocks(plan, estimate)),
         ("What happened in the field", field_blocks(plan, estimate.returns)),
         (
@@ -77,10 +83,14 @@ def results_sheet(plan: Plan, answers: Answers, *, origin: ResultsOrigin = _NO_O
         ("For the report", report_blocks(plan, estimate)),
         ("What these results were made from", source_blocks(plan, estimate, origin=origin)),
     )
-    blocks: list[Block] = [*answer_blocks(plan, estimate, origin=origin), PageBreak()]
+    sections = tuple(entry for entry in sections if entry[1] != [Paragraph("")])
+    trust = 1 + [title for title, _ in sections].index(TRUST) if estimate.coverage_sentence else 0
+    page_one = answer_blocks(plan, estimate, origin=origin, trust=trust)
+    blocks: list[Block] = [*explained(page_one), PageBreak()]
     for number, (title, content) in enumerate(sections, start=1):
         blocks += [Heading(f"{number}. {title}"), *content]
     blocks += [Heading(f"{len(sections) + 1}. Sign-off"), sign_off(plan)]
+    blocks += words_used(blocks)
     return Document(
         title=f"{results_of(plan, estimate)}: {plan.campaign.plan.title}",
         subtitle=subtitle(plan, "Results sheet"),
@@ -107,7 +117,14 @@ def other_blocks(answers: Answers) -> list[Block]:
     return blocks
 
 
-def answer_blocks(plan: Plan, estimate: Estimate, *, origin: ResultsOrigin) -> list[Block]:
+def said_of_difference(estimate: Estimate) -> tuple[str, ...]:
+    """Leave the split into factors to the working."""
+    return tuple(line for line in estimate.why_different if not line.startswith(FACTORS))
+
+
+def answer_blocks(
+    plan: Plan, estimate: Estimate, *, origin: ResultsOrigin, trust: int
+) -> list[Block]:
     """Compose page one: the answer in sentences, each once, and its figure."""
     from fieldplan.packet.charts import interval_figure
 
@@ -115,7 +132,7 @@ def answer_blocks(plan: Plan, estimate: Estimate, *, origin: ResultsOrigin) -> l
     figure = interval_figure(estimate, name=analyte.label, action_level=analyte.action_level)
     earlier = earlier_sentence(origin)
     before = [Paragraph(earlier)] if earlier else []
-    return [*answer_words(estimate), *before, figure, *after_figure(estimate)]
+    return [*answer_words(estimate), *before, figure, *after_figure(estimate, trust)]
 
 
 def answer_words(estimate: Estimate) -> list[Block]:
@@ -130,11 +147,19 @@ def answer_words(estimate: Estimate) -> list[Block]:
     return blocks
 
 
-def after_figure(estimate: Estimate) -> list[Block]:
-    """Say what such an interval delivers, and the kind that was not declared."""
+def after_figure(estimate: Estimate, trust: int) -> list[Block]:
+    """Say where it stands how far the interval can be trusted, and the kind not declared."""
     blocks: list[Block] = []
-    if estimate.coverage_sentence and estimate.coverage_sentence not in estimate.sentences:
-        blocks.append(Paragraph(estimate.coverage_sentence))
+    if trust and "lies outside that class" in estimate.coverage_sentence:
+        blocks.append(
+            Paragraph(
+                "These results are more uneven than the class for which the plan declares its "
+                f"confidence: section {trust} says what that means."
+            )
+        )
+    elif trust:
+        line = "How far such an interval can be trusted where results are uneven"
+        blocks.append(Paragraph(f"{line}: section {trust}."))
     return [*blocks, Paragraph(other_interval(estimate), tone="note")]
 
 
@@ -164,6 +189,7 @@ def working_blocks(estimate: Estimate) -> list[Block]:
     blocks: list[Block] = [Paragraph(estimate.mean.method)]
     if estimate.mean.caution:
         blocks.append(Paragraph(estimate.mean.caution))
+    blocks += [Paragraph(line) for line in estimate.why_different if line.startswith(FACTORS)]
     freedom = degrees_words(estimate.mean.degrees_of_freedom)
     return [*blocks, Paragraph(f"Degrees of freedom: {freedom}."), Working(estimate.steps)]
 

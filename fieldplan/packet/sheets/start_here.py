@@ -3,6 +3,7 @@
 from fieldplan.base.document import Block, Bullets, Document, Files, Heading, Paragraph
 from fieldplan.packet.sheets.answer import open_blocks
 from fieldplan.packet.sheets.plan_sheet import subtitle
+from fieldplan.packet.sheets.words_used import explained
 from fieldplan.plan.model import Plan
 
 
@@ -19,7 +20,7 @@ def start_here(plan: Plan) -> Document:
         The crew's files come first.
     """
     blocks: list[Block] = [
-        Paragraph(plan.size.sentences[0], tone="answer"),
+        *explained([Paragraph(plan.size.sentences[0], tone="answer")]),
         Heading("Three things to do next"),
         Bullets(next_steps(plan), numbered=True),
         *open_blocks(plan),

@@ -18,6 +18,7 @@ from fieldplan.packet.sheets.methods import methods_paragraph, patch_line
 from fieldplan.packet.sheets.number_section import spread_blocks
 from fieldplan.packet.sheets.plan_sheet import plan_sheet
 from fieldplan.packet.sheets.rules import rule_lines, rules_fingerprint
+from fieldplan.packet.sheets.words_used import explained
 from fieldplan.plan.model import Plan
 from tests.factories import (
     make_campaign,
@@ -83,7 +84,7 @@ def test_page_one_says_how_many_where_how_precise_and_what_is_open():
 def test_page_one_ends_with_the_site_and_what_the_sheet_is_not():
     """The answer must not run on into the rest."""
     blocks = list(standard().blocks)
-    answer = answer_words(make_plan())
+    answer = explained(answer_words(make_plan()))
     assert blocks[: len(answer)] == answer
     figure, summary, end = blocks[len(answer) : len(answer) + 3]
     assert isinstance(figure, Figure)
@@ -176,6 +177,7 @@ def test_every_section_of_the_checklist_is_there_in_order():
         "For the report",
         "What this plan was made from",
         "Sign-off",
+        "Words used",
         "The working",
         "The drawing procedure, line by line",
     ]

@@ -4,7 +4,7 @@ import re
 from dataclasses import replace
 from functools import cache
 
-from fieldplan.base.document import Document, Paragraph, Table
+from fieldplan.base.document import Document, PageBreak, Paragraph, Table
 from fieldplan.estimate.model import Answers, Change, Interval
 from fieldplan.lab.model import LeftOutRow
 from fieldplan.packet.sheets.results_sheet import after_figure, answer_words, results_sheet
@@ -36,19 +36,40 @@ def test_the_first_words_are_the_answer():
 def page_one(**changes: object) -> str:
     """The words of page one."""
     estimate = make_estimate(**changes)
-    blocks = [*answer_words(estimate), *after_figure(estimate)]
+    blocks = [*answer_words(estimate), *after_figure(estimate, 4)]
     return "\n".join(text_of(block) for block in blocks)
 
 
-def test_page_one_says_level_population_and_coverage_once():
+def test_page_one_says_level_and_population_once():
     """A sentence said twice is read as two things."""
     estimate = make_estimate()
-    wanted = (
-        estimate.level_sentence, estimate.population_sentence, estimate.coverage_sentence
-    )  # fmt: skip
+    wanted = (estimate.level_sentence, estimate.population_sentence)
     for text in (page_one(), page_one(sentences=(*estimate.sentences, *wanted))):
         for sentence in wanted:
             assert text.count(sentence) == 1
+
+
+def test_skewness_and_factors_stand_behind_page_one_and_page_one_says_where():
+    """A client reads page one; a reviewer finds the rest, each once."""
+    factors = "Achieved is 0.99 times planned: 0.95 from the number of results."
+    estimate = make_estimate(why_different=("Planned: 9. Achieved: 8.9.", factors))
+    sheet = results_sheet(make_plan(), Answers(estimate))
+    end = next(n for n, block in enumerate(sheet.blocks) if isinstance(block, PageBreak))
+    first = "\n".join(text_of(block) for block in sheet.blocks[:end])
+    behind = "\n".join(text_of(block) for block in sheet.blocks[end:])
+    for sentence in (estimate.coverage_sentence, factors):
+        assert sentence not in first
+        assert behind.count(sentence) == 1
+    number = headings_of(sheet).index("How far the interval can be trusted") + 1
+    assert f"where results are uneven: section {number}." in first
+
+
+def test_results_outside_the_declared_class_are_said_on_page_one():
+    """What changes the answer's worth must not wait for page four."""
+    outside = "The results' own skewness, 3.1, lies outside that class."
+    assert "more uneven than the class for which the plan declares" in page_one(
+        coverage_sentence=outside
+    )
 
 
 def test_changes_made_after_results_has_a_section_even_when_there_were_none():
