@@ -6,6 +6,9 @@ SQUARE_METRES_PER_HECTARE = 10_000.0
 SQUARE_METRES_PER_ACRE = 4046.8564224
 """The international acre: 4840 square yards of 0.9144 m."""
 
+LEAST_EXPONENT, LARGEST_EXPONENT = -9, 14
+"""Powers of ten that are still written out with all their zeros."""
+
 
 def hectares(square_metres: float) -> float:
     """Turn square metres into hectares.
@@ -30,17 +33,23 @@ def acres(square_metres: float) -> float:
 
 
 def significant(value: float, digits: int = 3) -> str:
-    """Write a number with so many significant digits, thousands apart, never as a power of ten.
+    """Write a number with so many significant digits, thousands apart.
+
+    Only where zeros would fill the line is it a power of ten: from 1E+15 on, and below 1E-9.
 
     Examples
     --------
     >>> significant(12345.6), significant(2.36), significant(0.00423), significant(0.0)
     ('12,300', '2.36', '0.00423', '0')
+    >>> significant(1e30), significant(2.5e-12, 2)
+    ('1.00E+30', '2.5E-12')
     """
     if value == 0 or not math.isfinite(value):
         return f"{value:g}"
     rounded = float(f"{value:.{digits - 1}e}")
     exponent = int(f"{rounded:e}".partition("e")[2])
+    if not LEAST_EXPONENT <= exponent <= LARGEST_EXPONENT:
+        return f"{rounded:.{digits - 1}E}"
     return f"{rounded:,.{max(digits - 1 - exponent, 0)}f}"
 
 
