@@ -91,9 +91,9 @@ def _drawing(size: Size, *, width: float = WIDE_MM) -> "Canvas":
     height = 101.0 if priced else 75.0
     figure = new_figure(width, height)
 
-    def panel(bottom: float, top: float, **shared: "Axes") -> "Axes":
+    def panel(bottom: float, top: float, *, sharex: "Axes | None" = None) -> "Axes":
         room = (_LEFT_MM / width, bottom / height, 1 - (_LEFT_MM + _RIGHT_MM) / width)
-        return figure.add_axes((*room, (top - bottom) / height), **shared)
+        return figure.add_axes((*room, (top - bottom) / height), sharex=sharex)
 
     if priced:
         upper = panel(39, height - 9)
