@@ -8,6 +8,7 @@ from fieldplan.base.errors import LabError
 from fieldplan.campaign.model import Analyte, Campaign
 from fieldplan.lab.cells import tidy
 from fieldplan.lab.columns import LAB_COLUMNS, find_columns
+from fieldplan.lab.far import far_results_notes
 from fieldplan.lab.marks import decimal_marks
 from fieldplan.lab.model import REJECTED, LabRow, LabTable
 from fieldplan.lab.row import FileMemory, RowCells, read_row
@@ -75,12 +76,14 @@ def read_lab(
         raise LabError(*capped(problems))
     comma_read = marks.comma and any("," in row.as_reported for row in rows)
     labels = {analyte.id: analyte.label for analyte in campaign.analyte}
+    strange = changed_ids_note(table.file_name, rows)
+    strange += far_results_notes(table.file_name, rows, labels)
     more = _notes(table.file_name, memory, labels=labels, comma_read=comma_read)
     return LabTable(
         file_name=table.file_name,
         sha256=table.sha256,
         rows=tuple(rows),
-        notes=(*table.notes, *notes, *changed_ids_note(table.file_name, rows), *more),
+        notes=(*table.notes, *notes, *strange, *more),
         rejected=tuple(memory.rejected),
         left_out=tuple(memory.left_out),
     )
