@@ -10,6 +10,7 @@ total it takes the one of smallest variance.
 import math
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from heapq import heapify, heappop, heappush
 from typing import Literal
 
 from fieldplan.base.errors import DesignError
@@ -179,18 +180,29 @@ def _neyman(strata: Strata, total: int) -> list[int]:
         if high / low < 1 + 1e-12:
             break
     counts = [max(n - 1, floor) for n, floor in zip(above(high), strata.floors, strict=True)]
-    while sum(counts) < total:
-        counts[_best(spreads, counts, strata.caps)] += 1
-    return counts
+    return _topped_up(counts, spreads, strata.caps, total=total)
 
 
-def _best(spreads: Sequence[float], counts: Sequence[int], caps: Sequence[int]) -> int:
-    """Find the stratum below its cap that gains most from one more; the first of equals."""
-    gains = [
-        gain(spread, n) if n < cap else -1.0
-        for spread, n, cap in zip(spreads, counts, caps, strict=True)
+def _topped_up(
+    counts: Sequence[int], spreads: Sequence[float], caps: Sequence[int], *, total: int
+) -> list[int]:
+    """Give out what is left of a total one by one: each to the stratum that gains most.
+
+    Strata at their cap get no more; of equals the first comes first.
+    """
+    filled = list(counts)
+    waiting = [
+        (-gain(spread, n), k)
+        for k, (spread, n, cap) in enumerate(zip(spreads, filled, caps, strict=True))
+        if n < cap
     ]
-    return gains.index(max(gains))
+    heapify(waiting)
+    for _ in range(total - sum(filled)):
+        _, k = heappop(waiting)
+        filled[k] += 1
+        if filled[k] < caps[k]:
+            heappush(waiting, (-gain(spreads[k], filled[k]), k))
+    return filled
 
 
 def _proportional(strata: Strata, total: int) -> list[int]:
@@ -198,9 +210,7 @@ def _proportional(strata: Strata, total: int) -> list[int]:
     counts = [math.floor(share + 1e-9) for share in ideal]
     caps = [math.ceil(share - 1e-9) for share in ideal]
     spreads = _sizes(strata, "neyman")
-    while sum(counts) < total:
-        counts[_best(spreads, counts, caps)] += 1
-    return counts
+    return _topped_up(counts, spreads, caps, total=total)
 
 
 def _held_shares(strata: Strata, total: int) -> list[float]:
@@ -213,9 +223,11 @@ def _held_shares(strata: Strata, total: int) -> list[float]:
     low, high = 0.0, (total + 1) / min(strata.weights)
     for _ in range(200):
         middle = (low + high) / 2
+        if middle in (low, high):
+            break
         low, high = (low, middle) if math.fsum(held(middle)) > total else (middle, high)
     shares = held(low)
-    free = [k for k, (w, f, c) in enumerate(bounds) if f < low * w < c]
+    free = {k for k, (w, f, c) in enumerate(bounds) if f < low * w < c}
     fixed = math.fsum(share for k, share in enumerate(shares) if k not in free)
     weight = math.fsum(bounds[k][0] for k in free)
     for k in free:
