@@ -2,17 +2,20 @@
 
 from collections.abc import Mapping, Sequence
 from difflib import get_close_matches
+from typing import TYPE_CHECKING
 
 from fieldplan.base.errors import LabError
 from fieldplan.lab.cells import tidy
-from fieldplan.lab.tables import TextTable
+
+if TYPE_CHECKING:
+    from fieldplan.lab.tables import TextTable
 
 LAB_COLUMNS = (
     "location_id", "sample_id", "analyte", "as_reported", "unit", "reporting_limit",
     "reporting_limit_unit", "qualifier_lab", "role", "duplicate_of", "stratum", "latitude",
     "longitude", "basis", "fraction",
 )  # fmt: skip
-_OFTEN_CALLED = {
+OFTEN_CALLED = {
     "location_id": ("location", "station", "station_id", "site", "site_id", "point", "well"),
     "sample_id": ("sample", "sample_no", "sample_name", "client_sample_id", "field_sample_id"),
     "analyte": ("parameter", "compound", "determinand", "substance", "chemical"),
@@ -21,6 +24,7 @@ _OFTEN_CALLED = {
     "reporting_limit": ("rl", "limit", "detection_limit", "lor", "loq", "pql"),
     "qualifier_lab": ("qualifier", "flag", "lab_qualifier"),
 }
+"""What laboratories often call our columns: a hint, never a reason to read one as ours."""
 
 
 def plain_name(text: str) -> str:
@@ -39,7 +43,7 @@ def plain_name(text: str) -> str:
 
 
 def find_columns(
-    table: TextTable,
+    table: "TextTable",
     known: Sequence[str],
     required: Sequence[str],
     *,
@@ -84,7 +88,7 @@ def find_columns(
 
 
 def _renamed_columns(
-    table: TextTable, theirs: Sequence[str], known: Sequence[str], renamed: Mapping[str, str]
+    table: "TextTable", theirs: Sequence[str], known: Sequence[str], renamed: Mapping[str, str]
 ) -> tuple[dict[str, int], list[str]]:
     found: dict[str, int] = {}
     problems = []
@@ -100,13 +104,13 @@ def _renamed_columns(
     return found, problems
 
 
-def _no_such_name(table: TextTable, ours: str, known: Sequence[str]) -> str:
+def _no_such_name(table: "TextTable", ours: str, known: Sequence[str]) -> str:
     near = get_close_matches(plain_name(ours), known, n=1)
     hint = f"; did you mean '{near[0]}'?" if near else f"; names are: {', '.join(known)}."
     return f"{table.file_name}: no column of ours is called '{ours}'{hint}"
 
 
-def _renamed_wrongly(table: TextTable, ours: str, wanted: str, theirs: Sequence[str]) -> str:
+def _renamed_wrongly(table: "TextTable", ours: str, wanted: str, theirs: Sequence[str]) -> str:
     if plain_name(wanted) in theirs:
         return f"{table.file_name} has the column '{wanted}' twice; keep one for '{ours}'."
     near = get_close_matches(plain_name(wanted), theirs, n=1)
@@ -115,11 +119,11 @@ def _renamed_wrongly(table: TextTable, ours: str, wanted: str, theirs: Sequence[
     return f"{table.file_name} has no column '{wanted}' for '{ours}'{hint} It has {have}."
 
 
-def _missing(table: TextTable, need: str, theirs: Sequence[str]) -> str:
+def _missing(table: "TextTable", need: str, theirs: Sequence[str]) -> str:
     names = need.split("|")
     called = f"'{names[0]}'" + "".join(f" or '{name}'" for name in names[1:])
     for ours in names:
-        usual = [name for name in theirs if name in _OFTEN_CALLED.get(ours, ())]
+        usual = [name for name in theirs if name in OFTEN_CALLED.get(ours, ())]
         near = usual or get_close_matches(ours, theirs, n=1, cutoff=0.7)
         if near:
             title = table.header[theirs.index(near[0])].strip()
@@ -132,7 +136,7 @@ def _missing(table: TextTable, need: str, theirs: Sequence[str]) -> str:
     return f"{table.file_name} has no column {called}; its columns are {have}. Add it."
 
 
-def _header_elsewhere(table: TextTable, known: Sequence[str]) -> list[str]:
+def _header_elsewhere(table: "TextTable", known: Sequence[str]) -> list[str]:
     """Notice a title or a second header row above the true one."""
     first = sum(plain_name(cell) in known for cell in table.header)
     for number, cells in table.rows[:10]:

@@ -9,6 +9,7 @@ from fieldplan.campaign.model import Analyte, Campaign
 from fieldplan.lab.cells import tidy
 from fieldplan.lab.columns import LAB_COLUMNS, find_columns
 from fieldplan.lab.far import far_results_notes
+from fieldplan.lab.letterhead import Certificate, certificate_of, no_header
 from fieldplan.lab.marks import decimal_marks
 from fieldplan.lab.model import REJECTED, LabRow, LabTable
 from fieldplan.lab.row import FileMemory, RowCells, read_row
@@ -50,8 +51,9 @@ def read_lab(
     qualifier R are left out and noted; flags are kept and change nothing, and those that are not
     known here are noted or, where they may speak of limits, refused.
     """
-    table, found, notes = _choose_sheet(path, columns)
     analytes = {tidy(name).casefold(): a for a in campaign.analyte for name in _names(a)}
+    certificate = certificate_of(REQUIRED, columns or {}, analytes)
+    table, found, notes = _choose_sheet(path, columns, certificate)
     memory = FileMemory()
     marks = decimal_marks(table, found)
     rows: list[LabRow] = []
@@ -94,10 +96,10 @@ def _names(analyte: Analyte) -> tuple[str, ...]:
 
 
 def _choose_sheet(
-    path: Path, columns: Mapping[str, str] | None
+    path: Path, columns: Mapping[str, str] | None, certificate: Certificate
 ) -> tuple[TextTable, dict[str, int], tuple[str, ...]]:
     """Take the one table that has our columns; refuse where several have them."""
-    tables = read_tables(path)
+    tables = read_tables(path, certificate=certificate)
     fitting: list[tuple[TextTable, dict[str, int]]] = []
     faults: list[str] = []
     for table in tables:
@@ -105,7 +107,8 @@ def _choose_sheet(
         try:
             fitting.append((table, find_columns(table, LAB_COLUMNS, REQUIRED, renamed=columns)))
         except LabError as fault:
-            faults += [head + line for line in fault.problems]
+            rows = [(table.header_row, table.header), *table.rows]
+            faults += [head + line for line in no_header(path.name, rows) or fault.problems]
     if not fitting:
         raise LabError(*capped(faults))
     if len(fitting) > 1:

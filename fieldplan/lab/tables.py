@@ -6,12 +6,20 @@ import io
 import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
-from itertools import pairwise
+from itertools import islice, pairwise
 from pathlib import Path
 from typing import Literal
 
 from fieldplan.base.errors import LabError
 from fieldplan.base.files import NOT_ORDINARY, is_ordinary
+from fieldplan.lab.letterhead import (
+    LOOKED_THROUGH,
+    Certificate,
+    header_at,
+    no_header,
+    results_end,
+    skipped_notes,
+)
 
 LARGEST_FILE = 64 * 1024 * 1024
 _SEPARATORS = {",": "comma", ";": "semicolon", "\t": "tab"}
@@ -35,7 +43,8 @@ class TextTable:
     file_name, sha256 : str
         The name without its folder, and the fingerprint of the bytes as read.
     header : tuple of str
-        The cells of the first row that holds anything, untouched.
+        The cells of the first row that holds anything, or of the header that was found further
+        down in a certificate, untouched.
     header_row : int
         Its number, from 1.
     rows : tuple of (int, tuple of str)
@@ -60,13 +69,16 @@ class TextTable:
     notes: tuple[str, ...] = ()
 
 
-def read_tables(path: Path) -> tuple[TextTable, ...]:
+def read_tables(path: Path, *, certificate: Certificate | None = None) -> tuple[TextTable, ...]:
     """Read a CSV file as one table, or a workbook as one table for each visible sheet.
 
     Parameters
     ----------
     path : Path
         The content decides what it is, not the ending of the name.
+    certificate : Certificate, optional
+        How to find the header below a letterhead, and the remarks below the results; the header
+        is the first row that holds anything unless given.
 
     Returns
     -------
@@ -82,7 +94,7 @@ def read_tables(path: Path) -> tuple[TextTable, ...]:
     if content.startswith(b"PK\x03\x04"):
         from fieldplan.lab.workbook import workbook_tables
 
-        return workbook_tables(path.name, content)
+        return workbook_tables(path.name, content, certificate=certificate)
     if content.startswith(b"\xd0\xcf\x11\xe0"):
         message = (
             f"{path.name} is an old .xls workbook or is locked with a password; "
@@ -92,7 +104,7 @@ def read_tables(path: Path) -> tuple[TextTable, ...]:
     if content.startswith((b"%PDF", b"\x1f\x8b", b"Rar!", b"7z")):
         message = f"{path.name} is a PDF or an archive; ask for the results as CSV or .xlsx."
         raise LabError(message)
-    return (_text_table(path.name, content),)
+    return (_text_table(path.name, content, certificate),)
 
 
 def read_bytes(path: Path) -> bytes:
@@ -129,20 +141,24 @@ def read_bytes(path: Path) -> bytes:
     return content
 
 
-def _text_table(name: str, content: bytes) -> TextTable:
+def _text_table(name: str, content: bytes, certificate: Certificate | None) -> TextTable:
     text, notes = _decoded(name, content)
-    separator, text, skipped = _separator(text)
+    separator, text, skipped = _separator(text, certificate)
     records = _records(name, text, separator, skipped)
     filled = [(number, cells) for number, cells in records if any(c.strip() for c in cells)]
     if not filled:
         message = f"{name} holds no cells; export it again as CSV."
         raise LabError(message)
-    header_row, header = filled[0]
+    at = header_at(filled, certificate)
+    header_row, header = filled[at]
     width = len(header)
-    problems = _surplus(name, width, filled[1:], separator)
+    below = filled[at + 1 :]
+    end = results_end(below, certificate)
+    problems = no_header(name, filled[at:]) if certificate else []
+    problems = problems or _surplus(name, width, below[:end], separator)
     if problems:
         raise LabError(*capped(problems))
-    rows = [(n, (*cells[:width], *[""] * (width - len(cells)))) for n, cells in filled[1:]]
+    rows = [(n, (*cells[:width], *[""] * (width - len(cells)))) for n, cells in below[:end]]
     return TextTable(
         file_name=name,
         sha256=hashlib.sha256(content).hexdigest(),
@@ -150,7 +166,7 @@ def _text_table(name: str, content: bytes) -> TextTable:
         header_row=header_row,
         rows=tuple(rows),
         separator=separator,
-        notes=notes,
+        notes=(*notes, *skipped_notes(name, filled[:at], header_row, below[end:])),
     )
 
 
@@ -203,15 +219,24 @@ def _decoded(name: str, content: bytes) -> tuple[str, tuple[str, ...]]:
     return text, (f"{name} was read as Windows-1252 text, not UTF-8.",)
 
 
-def _separator(text: str) -> tuple[str, str, int]:
-    """Choose the separator that cuts the first filled line into most cells; obey ``sep=``."""
+def _separator(text: str, certificate: Certificate | None) -> tuple[str, str, int]:
+    """Choose the separator that cuts the header into most cells; obey ``sep=``.
+
+    The header is the first filled line, or in a certificate the one with most titles.
+    """
     first, _, rest = text.partition("\n")
     told = first.strip().lower()
     if told.startswith("sep=") and told[4:] in {",", ";"}:
         return told[4:], rest, 1
-    line = next((line for line in text.splitlines() if line.strip(' \t,;"')), "")
-    counts = {mark: len(next(csv.reader([line], delimiter=mark), [])) for mark in _SEPARATORS}
-    return max(counts, key=lambda mark: counts[mark]), text, 0
+    filled = (line for line in text.splitlines() if line.strip(' \t,;"'))
+    lines = list(islice(filled, LOOKED_THROUGH if certificate else 1))
+
+    def worth(mark: str) -> tuple[int, int]:
+        cut = [next(csv.reader([line], delimiter=mark), []) for line in lines] or [[]]
+        titles = max(map(certificate.titles_in, cut)) if certificate else 0
+        return titles, len(cut[0])
+
+    return max(_SEPARATORS, key=worth), text, 0
 
 
 def _records(name: str, text: str, separator: str, skipped: int) -> list[tuple[int, list[str]]]:

@@ -11,6 +11,7 @@ from datetime import date, datetime, time
 from typing import TYPE_CHECKING, Any
 
 from fieldplan.base.errors import LabError
+from fieldplan.lab.letterhead import Certificate, header_at, results_end, skipped_notes
 from fieldplan.lab.number_formats import shows_number, shows_text
 from fieldplan.lab.tables import CellFault, TextTable
 
@@ -25,7 +26,9 @@ _MERGED = re.compile(rb'<mergeCell\b[^>]*\bref="([A-Za-z0-9$:]+)"')
 _ERRORS = {"#N/A", "#DIV/0!", "#VALUE!", "#REF!", "#NAME?", "#NUM!", "#NULL!"}
 
 
-def workbook_tables(name: str, content: bytes) -> tuple[TextTable, ...]:
+def workbook_tables(
+    name: str, content: bytes, *, certificate: Certificate | None = None
+) -> tuple[TextTable, ...]:
     """Read each visible sheet that holds anything.
 
     Parameters
@@ -34,6 +37,8 @@ def workbook_tables(name: str, content: bytes) -> tuple[TextTable, ...]:
         The file's name, for messages.
     content : bytes
         The .xlsx file.
+    certificate : Certificate, optional
+        How to find header and remarks.
 
     Returns
     -------
@@ -59,7 +64,7 @@ def workbook_tables(name: str, content: bytes) -> tuple[TextTable, ...]:
         if getattr(sheet, "sheet_state", "") != "visible":
             hidden.append(title)
         elif hasattr(sheet, "iter_rows"):
-            table = _sheet_table(name, digest, sheet, formulas[title])
+            table = _sheet_table(name, digest, (sheet, formulas[title]), certificate)
             tables += [table] if table else []
     if not tables:
         extra = f" Its hidden sheets ({', '.join(hidden)}) are not read." if hidden else ""
@@ -123,16 +128,25 @@ def _opened(name: str, content: bytes, saved_values: bool) -> Any:
 
 
 def _sheet_table(
-    name: str, digest: str, values: "Worksheet", formulas: "Worksheet"
+    name: str,
+    digest: str,
+    sheet: "tuple[Worksheet, Worksheet]",
+    certificate: Certificate | None,
 ) -> TextTable | None:
+    values, formulas = sheet
     texts, faults = _filled(values, formulas)
     if not texts:
         return None
-    header_row, *numbers = sorted(texts)
+    filled = [(number, _in_line(texts[number], 0)) for number in sorted(texts)]
+    at = header_at(filled, certificate)
+    header_row = filled[at][0]
     width = min(max(texts[header_row], default=0), LAST_COLUMN)
-    rows = [(number, _in_line(texts[number], width)) for number in numbers]
+    below = filled[at + 1 :]
+    unsaved = {row for (row, _), fault in faults.items() if fault.kind == "other"}
+    end = results_end(below, certificate, but=unsaved)
+    rows = [(number, _in_line(texts[number], width)) for number, _ in below[:end]]
     _add_merged(values, faults)
-    notes = []
+    notes = skipped_notes(name, filled[:at], header_row, below[end:])
     unseen = sum(1 for number in texts if values.row_dimensions[number].hidden)
     if unseen:
         notes.append(f"{name}: {unseen} rows that the sheet hides were read too.")

@@ -167,11 +167,9 @@ def test_a_column_map_renames_and_is_itself_checked(read: Reader) -> None:
     assert "did you mean 'Station'?" in lines[1]
 
 
-def test_a_doubled_column_and_a_title_above_the_header_are_pointed_out(read: Reader) -> None:
-    """Two units columns cannot both be right; a title row hides the header."""
+def test_a_doubled_column_is_pointed_out(read: Reader) -> None:
+    """Two units columns cannot both be right."""
     assert "2 columns 'unit'" in problems_of(read, f"{HEAD},unit\nA,lead,1,mg/kg,ug/kg\n")[0]
-    lines = problems_of(read, f"Report 17,,,\n{HEAD}\nA,lead,1,mg/kg\n")
-    assert lines[-1] == "Row 2 of labs.csv looks like the header; delete the rows above."
 
 
 def test_rows_of_other_analytes_are_counted_and_a_near_name_is_offered(read: Reader) -> None:
