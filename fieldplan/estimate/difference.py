@@ -116,17 +116,21 @@ def difference_sentences(plan: Plan, mean: MeanEstimate, *, planned: Planned) ->
     if parts is None:
         return tuple(line for line in lines if line)
     lines.append(
-        f"Achieved is {parts.ratio:.2f} times planned: {parts.number:.2f} from the number of "
-        f"results, times {parts.sharing:.2f} from their sharing among strata and its weights, "
-        f"times {parts.spread:.2f} from the spread found"
+        f"Achieved is {_times(parts.ratio)} times planned: {_times(parts.number)} from the number "
+        f"of results, times {_times(parts.sharing)} from their sharing among strata and its "
+        f"weights, times {_times(parts.spread)} from the spread found"
         + (
-            f", times {parts.rest:.2f} from a spread borrowed or planned otherwise."
+            f", times {_times(parts.rest)} from a spread borrowed or planned otherwise."
             if _says(parts.rest)
             else "."
         )
     )
     lines.append(_spread_found(mean, planned))
     return tuple(line for line in lines if line)
+
+
+def _times(factor: float) -> str:
+    return f"{factor:.2f}" if factor < 1000 else significant(factor)
 
 
 def _promise(plan: Plan, mean: MeanEstimate, *, planned: Planned) -> str:

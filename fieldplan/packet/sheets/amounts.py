@@ -4,6 +4,7 @@ import math
 from collections.abc import Sequence
 from datetime import date
 
+from fieldplan.base.units import LARGEST_EXPONENT, LEAST_EXPONENT, significant
 from fieldplan.packet.sheets.wording import number
 
 BLANK = "not typed"
@@ -11,16 +12,19 @@ BLANK = "not typed"
 
 
 def rounded(value: float, *, digits: int = 3) -> str:
-    """Write a computed number with so many significant digits and no exponent.
+    """Write a computed number with so many significant digits, as sentences write it.
 
     Examples
     --------
-    >>> rounded(8.8213), rounded(16800.4), rounded(0.01234)
-    ('8.82', '16800', '0.0123')
+    >>> rounded(8.8213), rounded(16800.4), rounded(0.01234), rounded(1e30)
+    ('8.82', '16800', '0.0123', '1.00E+30')
     """
     if value == 0 or not math.isfinite(value):
         return number(value)
-    decimals = max(0, digits - 1 - math.floor(math.log10(abs(value))))
+    exponent = math.floor(math.log10(abs(value)))
+    if not LEAST_EXPONENT <= exponent <= LARGEST_EXPONENT:
+        return significant(value, digits)
+    decimals = max(0, digits - 1 - exponent)
     return f"{value:.{decimals}f}".replace("-", "−")
 
 
@@ -29,11 +33,13 @@ def trimmed(value: float, *, digits: int = 4) -> str:
 
     Examples
     --------
-    >>> trimmed(41.0), trimmed(66.46667), trimmed(1240.0)
-    ('41', '66.47', '1240')
+    >>> trimmed(41.0), trimmed(66.46667), trimmed(1240.0), trimmed(1e30)
+    ('41', '66.47', '1240', '1E+30')
     """
-    text = rounded(value, digits=digits)
-    return text.rstrip("0").rstrip(".") if "." in text else text
+    digits_alone, mark, exponent = rounded(value, digits=digits).partition("E")
+    if "." in digits_alone:
+        digits_alone = digits_alone.rstrip("0").rstrip(".")
+    return f"{digits_alone}{mark}{exponent}"
 
 
 def percent(share: float) -> str:

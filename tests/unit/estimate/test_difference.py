@@ -1,5 +1,6 @@
 """Planned against achieved: parts that multiply to the whole, and a target kept or missed."""
 
+import re
 from dataclasses import replace
 
 import numpy as np
@@ -12,6 +13,7 @@ from fieldplan.estimate import estimate
 from fieldplan.estimate.difference import split_difference
 from fieldplan.estimate.planned import planned_for
 from fieldplan.lab.model import StratumSpread
+from fieldplan.packet.sheets.amounts import trimmed
 from fieldplan.packet.sheets.results_tables import stratum_table
 from tests.unit.estimate.known import WELLS, list_plan, result, returned, strata_plan
 
@@ -124,6 +126,17 @@ def test_a_missed_target_is_said_to_be_missed() -> None:
     plan = strata_plan({"site": 1.0}, {"site": 8.0}, {"site": 3})
     returns = returned([result(f"P{n}", v) for n, v in enumerate((1.0, 60.0, 140.0))])
     assert "was missed: it came to 40.3 mg/kg" in " ".join(estimate(plan, returns).why_different)
+
+
+def test_one_absurd_result_fills_no_line_with_digits() -> None:
+    """A result of 1e30 must be seen at a glance, on the sheet and in every sentence."""
+    plan = strata_plan({"site": 1.0}, {"site": 8.0}, {"site": 3}, standard_error=4.6)
+    returns = returned([result(f"P{n}", v) for n, v in enumerate((1.0, 1e30, 140.0))])
+    answer = estimate(plan, returns)
+    said = " ".join([*answer.sentences, *answer.why_different])
+    assert trimmed(1e30) == "1E+30"
+    assert re.search(r"Achieved is [0-9.]+E\+28 times planned", said)  # 1e30 / 3 / 4.6 = 7.2E+28
+    assert not re.search(r"[0-9,]{16}", said)
 
 
 def test_the_spread_found_is_set_against_a_pilot_with_non_detects_at_the_same_place() -> None:
