@@ -12,7 +12,7 @@ from fieldplan.packet.sheets.plan_words import (
 )
 from fieldplan.plan.model import Plan
 
-FIGURE_MM = 130.0
+FIGURE_MM = 145.0
 """Width that leaves page one room for the words."""
 
 

@@ -5,7 +5,7 @@ import re
 
 import pytest
 
-from fieldplan.base.document import Document, Heading, Paragraph, Table, Verbatim
+from fieldplan.base.document import Document, Figure, Heading, Paragraph, Table, Verbatim
 from fieldplan.packet.sheets.pdf import set_pdf, sheet_facts
 from tests.unit.packet.sheets.documents import HOSTILE, WIDE, make_document
 
@@ -34,6 +34,19 @@ def test_a_table_too_wide_for_an_upright_page_lies() -> None:
     assert title[0] < title[1]
     assert places
     assert all(width > height for width, height in places)
+
+
+@pytest.mark.parametrize(
+    ("paper", "lines"), [("A4", 14), ("A4", 16), ("Letter", 10), ("Letter", 13)]
+)
+def test_a_figure_that_would_just_not_fit_is_set_smaller(paper, lines: int) -> None:
+    """Page one keeps its map; a figure turned over alone leaves half a page blank."""
+    square = '<svg xmlns="http://www.w3.org/2000/svg" width="300" height="300"/>'
+    blocks = [Paragraph("One line.")] * lines + [Figure(square, "Caption.", "A square.")]
+    document = Document("T", "", "QF", "QF-r01", "DRAFT", blocks)
+    assert len(page_boxes(set_pdf(document, paper=paper))) == 1
+    far = Document("T", "", "QF", "QF-r01", "DRAFT", blocks[:1] * 25 + blocks[-1:])
+    assert len(page_boxes(set_pdf(far, paper=paper))) == 2
 
 
 def test_a_form_lies_and_its_empty_columns_take_the_room() -> None:
