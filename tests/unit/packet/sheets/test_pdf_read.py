@@ -7,6 +7,7 @@ from pathlib import Path
 
 import pytest
 
+from fieldplan.base.document import Document, Paragraph, Table
 from fieldplan.packet.maps.printed import printed_map
 from fieldplan.packet.sheets.pdf import set_pdf
 from tests.factories import make_plan
@@ -41,6 +42,16 @@ def test_status_revision_and_page_stand_on_every_page(paper, tmp_path: Path) -> 
     for number, words in enumerate(pages, start=1):
         assert words.count("DRAFT") == 2
         assert f"QF-r01 · page {number} of {len(pages)}" in words
+
+
+def test_a_unit_is_never_broken_at_its_stroke(tmp_path: Path) -> None:
+    """A line that ends in "6.15 µg/" reads as another unit."""
+    lines = [Paragraph("of lead " * count + "12 mg/kg found.") for count in range(5, 45)]
+    table = Table(("Location", "Value (mg/kg)", "Why"), (("QF-A-01", "3", "words " * 60),))
+    document = Document("T", "", "QF", "QF-r01", "DRAFT", [*lines, table])
+    words = "\n".join(pages_of(set_pdf(document, paper="A4"), tmp_path))
+    assert words.count("12 mg/kg") + len(re.findall(r"12\s*\n\s*mg/kg", words)) == len(lines)
+    assert "(mg/kg)" in words
 
 
 def test_table_headers_repeat_and_no_id_is_cut(tmp_path: Path) -> None:
