@@ -118,7 +118,12 @@ def _leave(problems: Iterable[str], code: int) -> NoReturn:
 
 
 def _for_reader(problem: str) -> str:
-    """Wrap a problem for a terminal; a file or a program gets it as one line."""
+    """Wrap a problem for a terminal, but no command to copy; others get it as it is."""
     if not sys.stderr.isatty():
         return problem
-    return textwrap.fill(problem, width=79, break_long_words=False, break_on_hyphens=False)
+    return "\n".join(
+        line
+        if line.startswith("  fieldplan ")
+        else textwrap.fill(line, width=79, break_long_words=False, break_on_hyphens=False)
+        for line in problem.split("\n")
+    )

@@ -1,7 +1,7 @@
 """``fieldplan estimate``: laboratory results meet their packet."""
 
 import os
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import replace
 from difflib import get_close_matches
 from functools import partial
@@ -132,7 +132,7 @@ def command(
     for sentence in rely_on(packet, plan).others:
         say(wrapped(sentence), quiet=quiet)
     asked = _asked(plan, options["analyte"])
-    table = read_lab(lab_file, plan.campaign, columns=columns)
+    table = read_lab(lab_file, plan.campaign, columns=columns, remedy=_run_again)
     given = read_field_return(field_file, plan) if field_file else ()
     confirmed = read_matches(matches_file) if matches_file else ()
     meet = partial(
@@ -155,6 +155,21 @@ def command(
         progress=lambda stage: say(f"  {stage} …", quiet=quiet),
     )
     _print(answers, results, options)
+
+
+def _run_again(named: Mapping[str, str]) -> str:
+    """Write the command that runs once more, with the columns that a person may have to name."""
+    from fieldplan.lab.columns import column_options, quoted
+
+    context = click.get_current_context()
+    words, named = ["fieldplan", "estimate"], {**context.params["columns"], **named}
+    for parameter in context.command.params:
+        value = context.params[parameter.name or ""]
+        if parameter.name == "columns" or value in (None, False, parameter.get_default(context)):
+            continue
+        words += [parameter.opts[0]] if isinstance(parameter, click.Option) else []
+        words += [] if value is True else [quoted(str(value))]
+    return f"run:\n  {' '.join(words)} {column_options(named)}"
 
 
 def _beside(packet: Path) -> Path:

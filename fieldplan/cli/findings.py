@@ -146,7 +146,8 @@ def _read_pilots(read: ReadCampaign) -> None:
 
     for sigma in read.campaign.sigma:
         if sigma.pilot is not None:
-            read_lab(resolve_file(read, sigma.pilot), read.campaign, columns=sigma.columns)
+            path = resolve_file(read, sigma.pilot)
+            read_lab(path, read.campaign, columns=sigma.columns, of_pilot=True)
 
 
 def asked(campaign: Campaign) -> list[str]:

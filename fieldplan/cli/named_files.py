@@ -164,7 +164,7 @@ def unnamed_columns(answers: Answers, folder: Path) -> tuple[list[str], list[str
         Our names, and the file's; nothing is missing from a file that cannot be read as a table.
     """
     from fieldplan.lab.columns import LAB_COLUMNS, find_columns
-    from fieldplan.lab.reader import REQUIRED
+    from fieldplan.lab.sheet import REQUIRED
     from fieldplan.lab.tables import read_tables
 
     try:

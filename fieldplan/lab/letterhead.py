@@ -29,10 +29,13 @@ class Certificate:
         For each thing that a result needs, the plain names its column goes by.
     analytes : mapping of str to Analyte
         By every name in lower case.
+    how : str
+        How to say which columns are which.
     """
 
     titles: tuple[frozenset[str], ...]
     analytes: Mapping[str, Analyte]
+    how: str = ""
 
     def titles_in(self, cells: Sequence[str]) -> int:
         """Count the things needed that a row has a title for."""
@@ -61,7 +64,11 @@ class Certificate:
 
 
 def certificate_of(
-    required: Iterable[str], renamed: Mapping[str, str], analytes: Mapping[str, Analyte]
+    required: Iterable[str],
+    told: Mapping[str, Iterable[str]],
+    analytes: Mapping[str, Analyte],
+    *,
+    how: str = "",
 ) -> Certificate:
     """Say what to look for in the file of a laboratory.
 
@@ -69,18 +76,20 @@ def certificate_of(
     ----------
     required : iterable of str
         Our columns that each result needs; ``a|b`` asks for one of two.
-    renamed : mapping of str to str
-        Our name to the file's.
+    told : mapping of str to iterable of str
+        Our name to the titles that were said to mean it.
     analytes : mapping of str to Analyte
         By every name in lower case.
+    how : str
+        How a person says which columns are which.
     """
     titles = []
     for need in required:
         names = need.split("|")
         usual = [name for ours in names for name in OFTEN_CALLED.get(ours, ())]
-        told = [plain_name(renamed[ours]) for ours in names if ours in renamed]
-        titles.append(frozenset([*names, *usual, *told]))
-    return Certificate(tuple(titles), analytes)
+        own = [plain_name(title) for ours in names for title in told.get(ours, ())]
+        titles.append(frozenset([*names, *usual, *own]))
+    return Certificate(tuple(titles), analytes, how)
 
 
 def _is_number(cell: str) -> bool:
@@ -136,7 +145,7 @@ def results_end(
     return end
 
 
-def no_header(name: str, rows: Sequence[Row]) -> list[str]:
+def no_header(name: str, rows: Sequence[Row], certificate: Certificate | None) -> list[str]:
     """Say that no header was found, where the first row cannot be one.
 
     Parameters
@@ -144,6 +153,7 @@ def no_header(name: str, rows: Sequence[Row]) -> list[str]:
     name : str
     rows : sequence of (int, sequence of str)
         From the row that would be the header on.
+    certificate : Certificate or None
 
     Returns
     -------
@@ -151,14 +161,14 @@ def no_header(name: str, rows: Sequence[Row]) -> list[str]:
         One sentence where that row holds one cell and others hold three or more; else none.
     """
     filled = [sum(1 for cell in cells if cell.strip()) for _, cells in rows]
-    if filled[0] > 1 or max(filled) < FEWEST_CELLS:
+    if certificate is None or filled[0] > 1 or max(filled) < FEWEST_CELLS:
         return []
     number = rows[filled.index(max(filled))][0]
     return [
         f"{name}: none of its first {LOOKED_THROUGH} rows has titles that are known here for the "
         f"sample, the analyte, the result and the unit; row {rows[0][0]} holds {_texts(rows[:1])} "
-        f"alone. If row {number} or one above it is the header, say which of its columns is "
-        "which, or give them the names location_id or sample_id, analyte, as_reported and unit."
+        f"alone. If row {number} or one above it is the header, call its columns location_id "
+        f"or sample_id, analyte, as_reported and unit; or {certificate.how}"
     ]
 
 

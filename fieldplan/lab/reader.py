@@ -2,27 +2,32 @@
 
 from collections.abc import Mapping
 from difflib import get_close_matches
+from functools import partial
 from pathlib import Path
 
 from fieldplan.base.errors import LabError
 from fieldplan.campaign.model import Analyte, Campaign
 from fieldplan.lab.cells import tidy
-from fieldplan.lab.columns import LAB_COLUMNS, find_columns
+from fieldplan.lab.columns import Remedy, in_campaign, on_the_command
 from fieldplan.lab.far import far_results_notes
-from fieldplan.lab.letterhead import Certificate, certificate_of, no_header
+from fieldplan.lab.letterhead import certificate_of
 from fieldplan.lab.marks import decimal_marks
 from fieldplan.lab.model import REJECTED, LabRow, LabTable
 from fieldplan.lab.row import FileMemory, RowCells, read_row
+from fieldplan.lab.sheet import REQUIRED, Named, choose_sheet, pilot_titles
 from fieldplan.lab.spreadsheet_ids import changed_ids_note
-from fieldplan.lab.tables import TextTable, capped, read_tables
+from fieldplan.lab.tables import capped
 from fieldplan.lab.unread import unread_qualifiers
 from fieldplan.lab.words import counted, listed
 
-REQUIRED = ("analyte", "as_reported", "unit", "location_id|sample_id")
-
 
 def read_lab(
-    path: Path, campaign: Campaign, *, columns: Mapping[str, str] | None = None
+    path: Path,
+    campaign: Campaign,
+    *,
+    columns: Mapping[str, str] | None = None,
+    of_pilot: bool = False,
+    remedy: Remedy = on_the_command,
 ) -> LabTable:
     """Read one laboratory or pilot file, one result a row.
 
@@ -34,6 +39,11 @@ def read_lab(
         Gives the analytes, their units, bases and fractions.
     columns : mapping of str to str, optional
         Our column name to the file's.
+    of_pilot : bool
+        Whether the campaign file names the columns. If not, those that it names for a pilot hold
+        here too where the file has them, and that is noted.
+    remedy : callable
+        Says where to write what a column is called; the campaign file for a pilot.
 
     Returns
     -------
@@ -52,8 +62,12 @@ def read_lab(
     known here are noted or, where they may speak of limits, refused.
     """
     analytes = {tidy(name).casefold(): a for a in campaign.analyte for name in _names(a)}
-    certificate = certificate_of(REQUIRED, columns or {}, analytes)
-    table, found, notes = _choose_sheet(path, columns, certificate)
+    told = columns or {}
+    if of_pilot:
+        remedy = partial(_in_campaign_too, told)
+    named = Named(told, {} if of_pilot else pilot_titles(campaign), remedy)
+    certificate = certificate_of(REQUIRED, named.titles(), analytes, how=named.how())
+    table, found, notes = choose_sheet(path, named, certificate)
     memory = FileMemory()
     marks = decimal_marks(table, found)
     rows: list[LabRow] = []
@@ -71,7 +85,7 @@ def read_lab(
         else:
             rows += [row] if row else []
     problems += _mixed_meanings(table.file_name, memory)
-    problems += unread_qualifiers(table, found, rows)
+    problems += unread_qualifiers(table, found, rows, remedy=remedy)
     if not rows and not problems:
         problems.append(_nothing_found(table.file_name, analytes, memory))
     if problems:
@@ -95,33 +109,9 @@ def _names(analyte: Analyte) -> tuple[str, ...]:
     return tuple(n for n in (analyte.id, analyte.name, *analyte.laboratory_names) if n)
 
 
-def _choose_sheet(
-    path: Path, columns: Mapping[str, str] | None, certificate: Certificate
-) -> tuple[TextTable, dict[str, int], tuple[str, ...]]:
-    """Take the one table that has our columns; refuse where several have them."""
-    tables = read_tables(path, certificate=certificate)
-    fitting: list[tuple[TextTable, dict[str, int]]] = []
-    faults: list[str] = []
-    for table in tables:
-        head = f"sheet '{table.sheet}': " if len(tables) > 1 else ""
-        try:
-            fitting.append((table, find_columns(table, LAB_COLUMNS, REQUIRED, renamed=columns)))
-        except LabError as fault:
-            rows = [(table.header_row, table.header), *table.rows]
-            faults += [head + line for line in no_header(path.name, rows) or fault.problems]
-    if not fitting:
-        raise LabError(*capped(faults))
-    if len(fitting) > 1:
-        names = listed([f"'{table.sheet}'" for table, _ in fitting])
-        message = (
-            f"{path.name} has results on several sheets ({names}); put them on one sheet, or "
-            "save the one that counts as a file of its own."
-        )
-        raise LabError(message)
-    table, found = fitting[0]
-    others = [f"'{t.sheet}'" for t in tables if t is not table]
-    note = f"{path.name}: sheet '{table.sheet}' was read, {listed(others)} was not."
-    return table, found, (note,) if others else ()
+def _in_campaign_too(columns: Mapping[str, str], named: Mapping[str, str]) -> str:
+    """Write all columns of a pilot in one line, those that it has already among them."""
+    return in_campaign({**columns, **named})
 
 
 def _mixed_meanings(name: str, memory: FileMemory) -> list[str]:

@@ -44,7 +44,7 @@ def read_spread(read: ReadCampaign, frame: "Frame") -> Spread:
             continue
         try:
             place = resolve_file(read, sigma.pilot)
-            tables.append(read_lab(place, read.campaign, columns=sigma.columns))
+            tables.append(read_lab(place, read.campaign, columns=sigma.columns, of_pilot=True))
         except LabError as fault:
             problems += [line for line in fault.problems if line not in problems]
     if problems:

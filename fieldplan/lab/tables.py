@@ -154,7 +154,7 @@ def _text_table(name: str, content: bytes, certificate: Certificate | None) -> T
     width = len(header)
     below = filled[at + 1 :]
     end = results_end(below, certificate)
-    problems = no_header(name, filled[at:]) if certificate else []
+    problems = no_header(name, filled[at:], certificate)
     problems = problems or _surplus(name, width, below[:end], separator)
     if problems:
         raise LabError(*capped(problems))

@@ -4,7 +4,7 @@ import re
 from collections.abc import Mapping, Sequence
 
 from fieldplan.lab.cells import tidy
-from fieldplan.lab.columns import plain_name
+from fieldplan.lab.columns import Remedy, on_the_command, plain_name
 from fieldplan.lab.model import LabRow
 from fieldplan.lab.qualifiers import read_qualifier
 from fieldplan.lab.tables import TextTable
@@ -19,7 +19,11 @@ _NO = {"n", "no", "false", "0"}
 
 
 def unread_qualifiers(
-    table: TextTable, found: Mapping[str, int], rows: Sequence[LabRow]
+    table: TextTable,
+    found: Mapping[str, int],
+    rows: Sequence[LabRow],
+    *,
+    remedy: Remedy = on_the_command,
 ) -> list[str]:
     """Refuse columns that were not read but contradict what was read beside them.
 
@@ -29,6 +33,8 @@ def unread_qualifiers(
     found : mapping of str to int
         The columns that were read.
     rows : sequence of LabRow
+    remedy : callable
+        Says where to write what a column is called.
 
     Returns
     -------
@@ -50,11 +56,12 @@ def unread_qualifiers(
         ]
         if said:
             first = detected[said[0]]
+            cell = tidy(cells[first.row][index])
             more = f" (and in {counted(len(said) - 1, 'more row')})" if len(said) > 1 else ""
             problems.append(
                 f"{table.file_name}: {_named(title)} is not read, but says "
-                f"'{tidy(cells[first.row][index])}' beside '{first.as_reported.strip()}' in row "
-                f"{first.row}{more}. {_remedy(title, tidy(cells[first.row][index]), found)}"
+                f"'{cell}' beside '{first.as_reported.strip()}' in row "
+                f"{first.row}{more}. {_what_to_do(title, cell, found, remedy)}"
             )
     return problems
 
@@ -81,7 +88,7 @@ def _named(title: str) -> str:
     return f"the column '{tidy(title)}'" if title.strip() else "a column without a title"
 
 
-def _remedy(title: str, cell: str, found: Mapping[str, int]) -> str:
+def _what_to_do(title: str, cell: str, found: Mapping[str, int], remedy: Remedy) -> str:
     own, qualifier = tidy(title), read_qualifier(cell)
     if not (qualifier.not_detected or qualifier.rejected or qualifier.above):
         return (
@@ -93,6 +100,6 @@ def _remedy(title: str, cell: str, found: Mapping[str, int]) -> str:
     if not own:
         return "Give it the title qualifier_lab."
     return (
-        f'If it qualifies the results, say so: columns = {{ qualifier_lab = "{own}" }} in the '
-        f'campaign file, or --column "qualifier_lab={own}"; if not, take it out of the file.'
+        "If it does not qualify the results, take it out of the file; if it does, "
+        f"{remedy({'qualifier_lab': own})}"
     )

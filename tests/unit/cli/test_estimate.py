@@ -2,6 +2,7 @@
 
 import csv
 import json
+import shlex
 from pathlib import Path
 
 import pytest
@@ -174,6 +175,28 @@ def test_columns_are_renamed_on_the_command_line(folder: Path, unset: list[Path]
         assert outcome.exit_code == 2
         assert "OURS=THEIRS" in outcome.stderr
     assert run("--column", "unit=unit", "--column", "unit=unit").exit_code == 2
+
+
+def test_columns_that_must_be_named_come_with_the_whole_command(
+    folder: Path, unset: list[Path]
+) -> None:
+    """One line to copy, with all that was typed before; it runs as it stands."""
+    text = (folder / "labs.csv").read_text(encoding="utf-8")
+    text = text.replace("as_reported", "Result").replace("analyte", "Parameter")
+    (folder / "my labs.csv").write_text(text, encoding="utf-8")
+    with pytest.raises(FieldplanError) as caught:
+        command_runner().invoke(
+            command,
+            ["QF-r01", "my labs.csv", "--field", "field.csv", "--confidence", "0.9", "--quiet"],
+            catch_exceptions=False,
+        )
+    line = caught.value.problems[-1].partition("\n")[2]
+    assert line == (
+        '  fieldplan estimate QF-r01 "my labs.csv" --field field.csv --confidence 0.9 --quiet '
+        '--column "analyte=Parameter" --column "as_reported=Result"'
+    )
+    outcome = command_runner().invoke(command, shlex.split(line)[2:], catch_exceptions=False)
+    assert outcome.exit_code == 0
 
 
 def test_changed_rules_print_both_answers(folder: Path, unset: list[Path]) -> None:

@@ -4,6 +4,8 @@ import csv
 import io
 import json
 import random
+import shlex
+import tomllib
 from collections.abc import Callable
 from pathlib import Path
 
@@ -12,7 +14,7 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 from fieldplan.base.errors import FieldplanError, LabError
-from fieldplan.campaign.model import Analyte
+from fieldplan.campaign.model import Analyte, Sigma
 from fieldplan.lab import read_lab
 from fieldplan.lab.model import LabTable
 from fieldplan.stats.summary import sample_mean, sample_sd
@@ -149,12 +151,63 @@ def test_another_fraction_or_a_mixture_of_bases_is_refused(
         read_lab(path, open_basis)
 
 
-def test_all_missing_columns_are_named_with_what_may_be_meant(read: Reader) -> None:
-    """A laboratory's own headers are renamed by a column map, and the message writes it out."""
-    lines = problems_of(read, "Station,Parameter,Result,UOM\nA,lead,1,mg/kg\n")
-    assert len(lines) == 4
-    assert '--column "as_reported=Result"' in lines[1]
-    assert 'columns = { as_reported = "Result" }' in lines[1]
+def test_all_missing_columns_are_named_with_one_line_that_maps_them(read: Reader) -> None:
+    """Five options typed one by one after five refusals is not how a day should go."""
+    lines = problems_of(read, "Station,Parameter,Result,UOM,LOR,Flag\nA,lead,1,mg/kg,5,\n")
+    assert lines[1] == "labs.csv has no column 'as_reported'; is it 'Result'?"
+    assert len(lines) == 5
+    line = lines[-1]
+    assert line.startswith('If so, add to the command: --column "analyte=Parameter" --column ')
+    typed = dict(pair.split("=") for pair in shlex.split(line.partition(": ")[2])[1::2])
+    assert typed["reporting_limit"] == "LOR"
+    assert len(
+        read("Station,Parameter,Result,UOM,LOR,Flag\nA,lead,1,mg/kg,5,\n", columns=typed).rows
+    )
+
+
+def test_a_title_that_cannot_be_guessed_is_left_to_be_looked_up(read: Reader) -> None:
+    """A column is never guessed from what stands in it."""
+    lines = problems_of(read, "Station,Stoff,Result,UOM\nA,lead,1,mg/kg\n")
+    assert "has no column 'analyte'; its columns are 'Station', 'Stoff', " in lines[0]
+    assert lines[-1].startswith("Add what is missing; where it has another name, add to the ")
+    assert '"analyte=…" --column "as_reported=Result"' in lines[-1]
+
+
+def test_the_columns_of_a_pilot_are_named_in_the_campaign_file(lab_file) -> None:
+    """No option of check, size or pack could say it."""
+    path = lab_file("Well,Parameter,Result,unit\nA,lead,1,mg/kg\n")
+    with pytest.raises(LabError) as caught:
+        read_lab(path, make_campaign(), columns={"location_id": "Well"}, of_pilot=True)
+    line = caught.value.problems[-1]
+    assert "--column" not in str(caught.value)
+    assert "into the [[sigma]] table of this pilot: columns = { " in line
+    table = tomllib.loads(line[line.index("columns = ") :])
+    wanted = {"location_id": "Well", "analyte": "Parameter", "as_reported": "Result"}
+    assert table == {"columns": wanted}
+    assert len(read_lab(path, make_campaign(), columns=wanted, of_pilot=True).rows) == 1
+
+
+def test_columns_named_for_the_pilot_hold_for_results_that_have_them(lab_file) -> None:
+    """The same laboratory writes the same titles; it is said, and what is told now wins."""
+    told = {"location_id": "Well", "analyte": "Parameter", "as_reported": "Result"}
+    pilot = Sigma(analyte="lead", pilot="pilot.csv", columns=told)
+    campaign = make_campaign(sigma=(pilot,))
+    path = lab_file("Well,Parameter,Result,Result 2,unit\nA,lead,1,2,mg/kg\n")
+    table = read_lab(path, campaign)
+    assert table.rows[0].result == 1.0
+    assert table.notes == (
+        "labs.csv: columns were read as the campaign file says of the pilot: 'Well' as "
+        "location_id, 'Parameter' as analyte and 'Result' as as_reported.",
+    )
+    again = read_lab(path, campaign, columns={"as_reported": "Result 2"})
+    assert again.rows[0].result == 2.0
+    assert "'Result' as as_reported" not in again.notes[0]
+    other = lab_file(f"{HEAD}\nA,lead,3,mg/kg\n")
+    assert read_lab(other, campaign).notes == ()
+    two = make_campaign(sigma=(pilot, pilot.model_copy(update={"columns": {"analyte": "Stoff"}})))
+    both = lab_file("Well,Parameter,Stoff,Result,unit\nA,lead,zinc,1,mg/kg\n")
+    with pytest.raises(LabError, match="no column 'analyte'"):
+        read_lab(both, two)
 
 
 def test_a_column_map_renames_and_is_itself_checked(read: Reader) -> None:
