@@ -232,11 +232,19 @@ def _separator(text: str, certificate: Certificate | None) -> tuple[str, str, in
     lines = list(islice(filled, LOOKED_THROUGH if certificate else 1))
 
     def worth(mark: str) -> tuple[int, int]:
-        cut = [next(csv.reader([line], delimiter=mark), []) for line in lines] or [[]]
+        cut = [_cut(line, mark) for line in lines] or [[]]
         titles = max(map(certificate.titles_in, cut)) if certificate else 0
         return titles, len(cut[0])
 
     return max(_SEPARATORS, key=worth), text, 0
+
+
+def _cut(line: str, separator: str) -> list[str]:
+    """Cut one line; what cannot be cut, such as a cell of a megabyte, is said by who reads it."""
+    try:
+        return next(csv.reader([line], delimiter=separator), [])
+    except csv.Error:
+        return []
 
 
 def _records(name: str, text: str, separator: str, skipped: int) -> list[tuple[int, list[str]]]:

@@ -106,6 +106,17 @@ def test_a_pipe_or_a_device_is_no_ordinary_file(tmp_path: Path) -> None:
             read_tables(path)
 
 
+def test_a_cell_without_end_is_refused_in_words(
+    lab_file: WRITE, read: Callable[..., object]
+) -> None:
+    """A picture pasted into a certificate must end in a sentence, wherever it stands."""
+    for text in (f"{'x' * 200_000},b\n1,2\n", f"a,b\n{'x' * 200_000},2\n"):
+        with pytest.raises(LabError, match="cannot be cut into cells"):
+            read_tables(lab_file(text))
+        with pytest.raises(LabError, match="cannot be cut into cells"):
+            read(text)
+
+
 def test_many_problems_are_capped_and_counted() -> None:
     """A thousand lines of errors hide the first."""
     lines = capped([f"row {number}" for number in range(100)])
