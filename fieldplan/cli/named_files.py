@@ -14,7 +14,7 @@ if TYPE_CHECKING:
     from fieldplan.lab.model import StratumSpread
 
 FEWEST_TITLES = 3
-"""A first row with fewer cells is no header but a letterhead."""
+"""A row with fewer cells is no header of results."""
 
 MOST_PROBLEMS = 3
 """Told while the answers are given; ``fieldplan check`` tells all."""
@@ -62,7 +62,8 @@ def pilot_spread(read: "ReadCampaign") -> "StratumSpread":
 
     campaign, sigma = read.campaign, read.campaign.sigma[0]
     analyte = campaign.deciding_analyte.id
-    table = read_lab(resolve_file(read, sigma.pilot or ""), campaign, columns=sigma.columns)
+    place = resolve_file(read, sigma.pilot or "")
+    table = read_lab(place, campaign, columns=sigma.columns, of_pilot=True)
     places, _ = pilot_locations(table, analyte, duplicates=campaign.rules.duplicates)
     return measured_spread(places, analyte, "site")
 
@@ -164,11 +165,14 @@ def unnamed_columns(answers: Answers, folder: Path) -> tuple[list[str], list[str
         Our names, and the file's; nothing is missing from a file that cannot be read as a table.
     """
     from fieldplan.lab.columns import LAB_COLUMNS, find_columns
+    from fieldplan.lab.letterhead import certificate_of
     from fieldplan.lab.sheet import REQUIRED
     from fieldplan.lab.tables import read_tables
 
+    told = {ours: (theirs,) for ours, theirs in answers.pilot_columns.items()}
+    place = Path(os.path.normpath(folder.resolve() / (answers.pilot or "")))
     try:
-        tables = read_tables(Path(os.path.normpath(folder.resolve() / (answers.pilot or ""))))
+        tables = read_tables(place, certificate=certificate_of(REQUIRED, told, {}))
     except FieldplanError:
         return [], []
     titles = [title.strip() for title in tables[0].header if title.strip()]

@@ -256,7 +256,7 @@ def test_answers_that_decide_the_plan_have_options(folder):
 def test_column_that_a_message_proposes_can_be_given(folder):
     """Advice that cannot be followed is worse than none."""
     (folder / "pilot.csv").write_text(PILOT.replace("as_reported", "Result"))
-    assert '--column "as_reported=Result"' in said(new(*FULL, "--out", "first.toml"))
+    assert 'columns = { as_reported = "Result" }' in said(new(*FULL, "--out", "first.toml"))
     text = said(new(*FULL, "--column", "as_reported=Result"))
     assert "With the pilot's standard deviation of 25.87 mg/kg" in text
     assert written()["sigma"][0]["columns"] == {"as_reported": "Result"}
@@ -588,6 +588,15 @@ def test_columns_of_the_pilot_are_asked_for(folder):
     assert "'Well ID' is said to be location_id already." in text
     assert "there is no column 'Nothing'. Type one of them as it stands." in text
     assert written()["sigma"][0]["columns"] == {"location_id": "Well ID", "as_reported": "Result"}
+    assert "have a mean of 41.8 mg/kg" in text
+
+
+def test_columns_below_a_letterhead_are_asked_for(folder):
+    """A certificate begins with the laboratory's name."""
+    renamed = PILOT.replace("as_reported", "Result").replace("location_id", "Well ID")
+    (folder / "pilot.csv").write_text(f"Invented Laboratory Ltd\nReport 12\n\n{renamed}")
+    text = said(conversation(*AREA, "pilot.csv", "Well ID", "Result", *LEFT_OPEN))
+    assert "It has 'Well ID', 'analyte', 'Result', 'unit'." in text
     assert "have a mean of 41.8 mg/kg" in text
 
 
