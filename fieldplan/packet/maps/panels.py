@@ -22,10 +22,9 @@ def draw_title(page: "Axes", plan: Plan, *, title: str, spec: PageSpec) -> None:
     box, foot = spec.layout.title, spec.layout.footer
     status_width = min(text_width_mm(plan.status, 11, bold=True) + 5, box.width * 0.5)
     room = box.width - status_width - 4
-    points = 13 if text_width_mm(title, 13, bold=True) <= room else 10
-    lines = wrapped(title, points, width_mm=room, most=2, bold=True)
+    points, lines = _title_lines(title, room)
     for number, line in enumerate(lines):
-        y = box.top - 3 - 4.4 * number
+        y = box.top - (3 if len(lines) < 3 else 1.6) - 0.43 * points * number
         page.text(box.left, y, line, fontsize=points, weight="bold", va="center")
     parts = [f"plan {plan.campaign.plan.id}", f"revision {plan.revision_name}", f"{plan.made_on}"]
     if plan.campaign.plan.site:
@@ -43,6 +42,15 @@ def draw_title(page: "Axes", plan: Plan, *, title: str, spec: PageSpec) -> None:
     page.text(foot.left, foot.bottom + 1.5, words, fontsize=7.5, va="center")
     status = shortened(plan.status, 7.5, width_mm=foot.width / 2)
     page.text(foot.right, foot.bottom + 1.5, status, fontsize=7.5, ha="right", va="center")
+
+
+def _title_lines(title: str, room: float) -> tuple[float, list[str]]:
+    """Set a title in one large line, two smaller ones, or three small ones."""
+    for points, most in ((13.0, 1), (10.0, 2)):
+        lines = wrapped(title, points, width_mm=room, bold=True)
+        if len(lines) <= most:
+            return points, lines
+    return 7.6, wrapped(title, 7.6, width_mm=room, most=3, bold=True)
 
 
 def bar_length(denominator: int, *, longest_mm: float = 56.0) -> int:

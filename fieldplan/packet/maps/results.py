@@ -77,7 +77,7 @@ def results_content(plan: Plan, estimate: Estimate) -> MapContent:
         if p.location_id in lost
     ]
     return MapContent(
-        f"{plan.campaign.plan.title}: results for {analyte.label}",
+        f"Results for {analyte.label}: {plan.campaign.plan.title}",
         tuple(marks),
         _legend(estimate, bounds, level=level),
         tuple(arrows),

@@ -122,7 +122,7 @@ def test_the_map_of_another_analyte_has_its_own_level() -> None:
     analytes = (plan.campaign.analyte[0], levelled)
     plan = replace(plan, campaign=plan.campaign.model_copy(update={"analyte": analytes}))
     content = results_content(plan, answers().others[0])
-    assert content.title.endswith("results for Zinc")
+    assert content.title.startswith("Results for Zinc: ")
     legend = " ".join(entry.words for entry in content.legend)
     assert "180 µg/g (action level)" in legend
     assert "action level of 300 µg/g" in " ".join(content.lines)

@@ -36,6 +36,17 @@ def names(figure) -> list:
     return [text for axes in figure.axes for text in axes.texts if text.get_gid() == "name"]
 
 
+def test_a_long_title_stands_whole_on_the_map() -> None:
+    """A map whose title ends in dots is filed under the wrong site."""
+    title = "Arsenic in the topsoil of the former Upper Bramley sheep wash, dipping yard, orchard, "
+    title += "allotments and railway embankment, first round after the purchase by the parish"
+    plan = make_plan()
+    table = plan.campaign.plan.model_copy(update={"title": title})
+    plan = replace(plan, campaign=plan.campaign.model_copy(update={"plan": table}))
+    (figure, *_), _ = drawn(plan)
+    assert title in " ".join(texts(figure))
+
+
 def test_the_map_says_what_to_take_at_each_location() -> None:
     """Who carries the map alone must know the depth."""
     (figure, *_), _ = drawn(make_plan())
