@@ -24,13 +24,12 @@ COLUMNS = (
     "Initials",
 )
 BY_HAND = (
-    ("Taken?", 0.55),
     ("Date, time", 1.1),
     ("Actual latitude, longitude", 1.6),
     ("Reason code", 0.8),
     ("Replaced by", 0.9),
     ("Note", 2.2),
-    ("Initials", 0.6),
+    ("Initials", 0.75),
 )
 """What the crew writes, and its share of the room."""
 
@@ -119,9 +118,9 @@ def sample_row(plan: Plan, place: Location, sample: Sample) -> tuple[str, ...]:
     if place.short_name != plain_form(name):
         name += f" ({place.short_name})"
     if place.location_class == "alternate" and several_strata(plan):
-        name += f", {place.stratum}"
+        name += f"\n{place.stratum}"
     position = f"{place.latitude:.6f}, {place.longitude:.6f}"
-    return (name, sample.sample_id, position, "☐", *[""] * (len(BY_HAND) - 1))
+    return (name, sample.sample_id, position, "☐", *[""] * len(BY_HAND))
 
 
 def blank_blocks(plan: Plan) -> list[Block]:

@@ -61,7 +61,8 @@ def test_the_form_says_what_to_take_and_has_room_for_a_note():
         for name, share in table.by_hand:
             assert share > 0
             cells = {row[table.columns.index(name)] for row in table.rows}
-            assert cells == ({"☐"} if name == "Taken?" else {""})
+            assert cells == {""}
+        assert {row[table.columns.index("Taken?")] for row in table.rows} == {"☐"}
 
 
 def test_the_form_says_that_no_depth_was_typed():
