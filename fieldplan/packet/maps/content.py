@@ -15,8 +15,10 @@ from fieldplan.packet.sheets.take import analysed_words, take_words
 from fieldplan.plan.model import Plan
 
 ARROW = "->"
-LONGEST_OWN_ID = 12
 """The marker of a legend entry that explains arrows."""
+
+LONGEST_OWN_ID = 12
+"""Longest id of an owner that stands beside a mark."""
 
 
 @dataclass(frozen=True)
