@@ -120,7 +120,8 @@ def look_at_pilot(answers: Answers, folder: Path) -> list[str]:
     if read is None or answers.analyte is None or answers.unit is None or answers.pilot is None:
         return []
     try:
-        return spread_sentences(pilot_spread(read), answers.unit, {})[:1]
+        *said, _skewness = spread_sentences(pilot_spread(read), answers.unit, {})
+        return said
     except FieldplanError as fault:
         return _kept(answers.pilot, fault)
 

@@ -253,23 +253,22 @@ def spread_sentences(entry: StratumSpread, unit: str, counts: Mapping[str, int])
     if not entry.values:
         return [head + _typed_sentence(entry, unit)]
     missing = entry.detected.count(False)
-    ratio = entry.sigma / entry.mean if entry.mean else 0.0
     mean, low, high = sample_mean(entry.values), min(entry.values), max(entry.values)
+    half = entry.sigma if entry.sigma_at_half is None else entry.sigma_at_half
+    ratio = half / mean if mean else 0.0
+    put = ", at half of the limit here" if missing else ""
     lines = [
         f"{head}{entry.results} pilot locations ({entry.source}) have a mean of "
-        f"{significant(mean)} {unit} and s = {significant(entry.sigma)} {unit} (CV {ratio:.2f}), "
+        f"{significant(mean)} {unit} and s = {significant(half)} {unit} (CV {ratio:.2f}), "
         f"from {significant(low)} to {significant(high)} {unit}; "
-        f"{counted(missing, 'non-detect')}."
+        f"{counted(missing, 'non-detect')}{put}."
     ]
     if missing:
-        at_zero, at_half = (
-            significant(entry.sigma_at_zero or 0),
-            significant(entry.sigma_at_half or 0),
-        )
+        at_zero, at_limit = entry.sigma_at_zero or 0.0, entry.sigma_at_limit or 0.0
         lines.append(
-            f"{head}s is {at_zero} with non-detects at 0, {at_half} at half and "
-            f"{significant(entry.sigma_at_limit or 0)} at the limit; the largest is used. Mean "
-            "and range above have them at half."
+            f"{head}with non-detects at 0 s would be {significant(at_zero)}, at the limit "
+            f"{significant(at_limit)} {unit}; the larger, {significant(entry.sigma)} {unit}, sizes "
+            "the campaign. A mean to expect is taken with them at half."
         )
     lines.append(
         f"{head}the skewness of these results is {entry.skewness or 0.0:.2f}; {entry.results} "

@@ -1,6 +1,7 @@
 """What a pilot says of the spread: one value a location, every stratum, nothing invented."""
 
 import math
+import statistics
 from collections.abc import Callable
 from pathlib import Path
 
@@ -231,6 +232,27 @@ def test_wells_of_a_list_need_no_strata(spread_of: Say) -> None:
     assert site.mean == pytest.approx(5.4875)
     assert site.sigma == pytest.approx(math.sqrt(5.4784), rel=1e-5)
     assert site.skewness_ceiling == pytest.approx(6 / math.sqrt(7))
+
+
+def test_mean_s_and_cv_of_a_sentence_belong_together(spread_of: Say) -> None:
+    """A reader divides what is printed: 5.57 / 15 = 0.37, non-detects at half; by statistics.
+
+    The larger s, which sizes, is said apart, and the mean to expect is the mean printed.
+    """
+    spread = spread_of(
+        f"{HEAD},stratum\n" + rows("meadow", "<20", "14", "21") + rows("yard", "1", "3")
+    )
+    first, second = spread.sentences[:2]
+    values = (10.0, 14.0, 21.0)
+    mean, s = statistics.mean(values), statistics.stdev(values)
+    assert f"a mean of {mean:.3g}" in first
+    assert f"s = {s:.3g} mg/kg (CV {s / mean:.2f})" in first
+    assert "1 non-detect, at half of the limit here." in first
+    assert spread.strata[0].mean == pytest.approx(mean)
+    ends = statistics.stdev((0, 14, 21)), statistics.stdev((20, 14, 21))
+    assert f"at 0 s would be {ends[0]:.3g}, at the limit {ends[1]:.3g} mg/kg; " in second
+    assert f"the larger, {ends[0]:.3g} mg/kg, sizes the campaign." in second
+    assert spread.strata[0].sigma == pytest.approx(ends[0])
 
 
 def test_sentences_say_how_little_a_small_pilot_can_show(spread_of: Say) -> None:
