@@ -85,11 +85,12 @@ def patch_line(plan: Plan) -> str:
 def widest_gap(plan: Plan) -> float:
     """Measure how far, in metres, the farthest spot of an area lies from its nearest location."""
     import numpy as np
-    import shapely
 
     from fieldplan.design.evenness import largest_gap
+    from fieldplan.frame.cutting import joined
 
-    whole = shapely.union_all([stratum.geometry for stratum in plan.frame.strata])
+    shapes = [stratum.geometry for stratum in plan.frame.strata if stratum.geometry is not None]
+    whole = joined(shapes, "the strata")
     drawn = [(place.easting, place.northing) for place in plan.locations.of_class("random")]
     return largest_gap(whole, np.array(drawn))
 
