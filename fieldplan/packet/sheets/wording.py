@@ -1,12 +1,13 @@
 """What both setters say alike: numbers, lines of working, and text that no reader can trip on."""
 
 import math
-import unicodedata
+import re
 from dataclasses import dataclass
 
 from fieldplan.base.working import Quantity, Step
 
-_REORDERING = frozenset("\u202a\u202b\u202c\u202d\u202e\u2066\u2067\u2068\u2069")
+_UNPRINTABLE = re.compile("[\x00-\x08\x0b-\x1f\x7f-\x9f\u202a-\u202e\u2066-\u2069]")
+"""Control characters (category Cc) but tab and line feed, and marks that turn the direction."""
 
 
 @dataclass(frozen=True)
@@ -40,11 +41,7 @@ def printable(text: str) -> str:
     """
     whole = text.replace("\r\n", "\n").replace("\r", "\n")
     whole = whole.encode("utf-8", "replace").decode("utf-8")
-    return "".join(
-        c
-        for c in whole
-        if c in "\n\t" or (unicodedata.category(c) != "Cc" and c not in _REORDERING)
-    )
+    return _UNPRINTABLE.sub("", whole)
 
 
 def number(value: float) -> str:
