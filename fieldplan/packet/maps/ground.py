@@ -1,5 +1,6 @@
 """The ground of a map: boundary, strata and exclusions, told apart by hatching alone."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
@@ -20,6 +21,9 @@ _HATCHES = {
     "plain": "", "dots": "..", "rising": "//", "level": "--", "upright": "||", "falling": "\\\\",
     "crosses": "++", "rings": "oo",
 }  # fmt: skip
+_DENSITIES = 3
+DIFFERENT_FILLS = len(_HATCHES) * _DENSITIES
+"""Strata that the eye can tell apart by ground and hatch; after so many the fills come again."""
 
 
 @dataclass(frozen=True)
@@ -61,15 +65,23 @@ def grounds(frame: Frame) -> tuple[Ground, ...]:
 
 
 def _stratum_style(number: int) -> dict[str, Any]:
-    """Choose ground and hatch; after eight strata they come again, the hatch twice as dense."""
+    """Choose ground and hatch; after eight strata they come again, the hatch denser.
+
+    A hatch four times as dense would read as grey, and its lines grow with the square of that.
+    """
     fill = stratum_fill(number)
     return {
         "facecolor": fill.ground,
         "edgecolor": _paled(fill.line),
-        "hatch": _HATCHES[fill.pattern] * (1 + number // 8),
+        "hatch": _hatch(fill.pattern, number // 8 % _DENSITIES),
         "linewidth": 0.6,
         "zorder": 1.0,
     }
+
+
+def _hatch(pattern: str, again: int) -> str:
+    """Choose a hatch, denser each time it comes again; a plain ground then gets wide rings."""
+    return _HATCHES[pattern] * (1 + again) if _HATCHES[pattern] else "O" * again
 
 
 def _paled(colour: str) -> str:
@@ -114,31 +126,45 @@ def _outline(frame: Frame) -> Ground:
 
 
 def draw_grounds(axes: "Axes", layers: tuple[Ground, ...], *, metres_per_mm: float) -> None:
-    """Draw grounds on axes in site metres; vertices finer than the eye are left out.
+    """Draw grounds on axes in site metres: what the axes show, no finer than the eye sees.
 
     Parameters
     ----------
     axes : matplotlib Axes
+        Their limits are set already.
     layers : tuple of Ground
+        Neighbours in the list with one style are drawn with one pen.
     metres_per_mm : float
         The scale, so that nothing above 0.05 mm on paper is lost.
     """
     from matplotlib.patches import PathPatch
 
+    (west, east), (south, north) = axes.get_xlim(), axes.get_ylim()
+    window = shapely.box(west, south, east, north)
+    for style, geometries in _by_style(layers, window):
+        seen = shapely.simplify(geometries, 0.05 * metres_per_mm, preserve_topology=True)
+        # Not add_patch, which takes the patch's measure to fit limits that are fixed here.
+        axes.add_artist(PathPatch(compound_path(list(seen)), **style))
+
+
+def _by_style(
+    layers: tuple[Ground, ...], window: BaseGeometry
+) -> list[tuple[dict[str, Any], list[BaseGeometry]]]:
+    """Gather grounds of one style; strata do not overlap, so their order tells nothing."""
+    gathered: dict[str, tuple[dict[str, Any], list[BaseGeometry]]] = {}
     for layer in layers:
-        if layer.geometry is None or layer.geometry.is_empty:
-            continue
-        seen = shapely.simplify(layer.geometry, 0.05 * metres_per_mm, preserve_topology=True)
-        axes.add_patch(PathPatch(compound_path(seen), **layer.style))
+        if layer.geometry is not None and shapely.intersects(window, layer.geometry):
+            gathered.setdefault(repr(layer.style), (layer.style, []))[1].append(layer.geometry)
+    return list(gathered.values())
 
 
-def compound_path(geometry: BaseGeometry) -> "Path":
+def compound_path(geometry: BaseGeometry | Sequence[BaseGeometry]) -> "Path":
     """Turn polygons with holes into one path; holes run against their shells, so they stay open.
 
     Parameters
     ----------
-    geometry : BaseGeometry
-        Polygon or multipolygon; lines and points in a collection are left out.
+    geometry : BaseGeometry or sequence of BaseGeometry
+        Polygons or multipolygons; lines and points in a collection are left out.
 
     Returns
     -------

@@ -6,6 +6,7 @@ from fieldplan.frame.projection import projection_in_words, utm_in_words
 from fieldplan.packet.drawing import INK, SOFT, shortened, text_width_mm, wrapped
 from fieldplan.packet.maps.content import MapContent
 from fieldplan.packet.maps.grid import GridLines
+from fieldplan.packet.maps.ground import DIFFERENT_FILLS
 from fieldplan.packet.maps.paper import Box
 from fieldplan.packet.maps.tiles import PageSpec
 from fieldplan.plan.model import Plan
@@ -159,6 +160,12 @@ def note_lines(plan: Plan, content: MapContent, *, unplaced: tuple[str, ...] = (
     lines += content.lines
     if unplaced:
         lines.append("Too close together to name on the map: " + ", ".join(unplaced) + ".")
+    strata = len(plan.frame.strata) if plan.frame.kind == "area" else 0
+    if strata > DIFFERENT_FILLS:
+        lines.append(
+            f"{strata} strata share {DIFFERENT_FILLS} fills, which come again and again; the list "
+            "of points names the stratum of each location."
+        )
     if plan.frame.boundary_assumed:
         lines.append("The boundary is ASSUMED: areas and locations hang on it.")
     return lines
