@@ -1,6 +1,7 @@
 """Samples: jars, bottles and cores. A jar is not a place."""
 
 from dataclasses import dataclass
+from functools import cached_property
 
 
 @dataclass(frozen=True)
@@ -39,4 +40,12 @@ class Samples:
 
     def at(self, location_id: str) -> tuple[Sample, ...]:
         """Return the samples to be taken at one location, duplicates among them."""
-        return tuple(s for s in self.samples if s.location_id == location_id)
+        return self._by_location.get(location_id, ())
+
+    @cached_property
+    def _by_location(self) -> dict[str, tuple[Sample, ...]]:
+        """Samples by where they are taken, so that a list of locations is gone through once."""
+        found: dict[str, list[Sample]] = {}
+        for sample in self.samples:
+            found.setdefault(sample.location_id, []).append(sample)
+        return {location_id: tuple(samples) for location_id, samples in found.items()}

@@ -5,8 +5,10 @@ further out with a line that leads back. Positions are millimetres inside the fr
 """
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
+import shapely
 from numpy.typing import NDArray
 
 Rectangles = NDArray[np.float64]
@@ -58,6 +60,8 @@ def place_labels(
     list of Placed or None
         In the order of ``anchors``; None where no free place is left within 34 mm.
     """
+    if _nameless(sizes) == len(anchors):
+        return [None] * len(anchors)
     order = _crowded_first(anchors)
     best: list[Placed | None] = []
     for _ in range(_TRIES):
@@ -124,8 +128,9 @@ def _crowded_first(anchors: NDArray[np.float64]) -> list[int]:
     """Order markers by how many neighbours they have, most first; ties as given."""
     if not len(anchors):
         return []
-    gaps = np.hypot(*(anchors[:, None, :] - anchors[None, :, :]).transpose(2, 0, 1))
-    neighbours = (gaps < _NEIGHBOUR_MM).sum(axis=1)
+    points: Any = shapely.points(anchors)
+    first, _ = shapely.STRtree(points).query(points, predicate="dwithin", distance=_NEIGHBOUR_MM)
+    neighbours = np.bincount(first, minlength=len(anchors))
     return [int(i) for i in np.lexsort((np.arange(len(anchors)), -neighbours))]
 
 
