@@ -1,6 +1,6 @@
 """A laboratory or pilot file, read row by row; what cannot be read is said, never guessed."""
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from difflib import get_close_matches
 from functools import partial
 from pathlib import Path
@@ -144,7 +144,7 @@ def _nothing_found(name: str, analytes: Mapping[str, Analyte], memory: FileMemor
 def _notes(
     name: str, memory: FileMemory, *, labels: Mapping[str, str], comma_read: bool
 ) -> tuple[str, ...]:
-    """Say what was left out or converted."""
+    """Say what was left out, converted or taken for granted."""
     lines = []
     if memory.other_analytes:
         count = counted(sum(memory.other_analytes.values()), "row")
@@ -167,8 +167,23 @@ def _notes(
             f"{name}: the qualifier '{mark[:40]}' is not known here and changed nothing: row "
             f"{rows}. Where it says more, type U (not detected) or R (rejected) instead."
         )
+    lines += _basis_notes(name, memory, labels)
     if memory.converted:
         lines.append(f"{name}: converted from {listed(sorted(memory.converted))}.")
     if comma_read:
         lines.append(f"{name}: commas were read as decimal commas.")
     return tuple(lines)
+
+
+def _basis_notes(name: str, memory: FileMemory, labels: Mapping[str, str]) -> Iterator[str]:
+    """Say where the planned basis was taken for granted: neither turns into the other."""
+    for basis in dict.fromkeys(basis for _, basis in memory.basis_unsaid):
+        found = {a: rows for (a, b), rows in memory.basis_unsaid.items() if b == basis}
+        numbers = sorted(number for rows in found.values() for number in rows)
+        which = f" ({listed([str(number) for number in numbers])})" if len(numbers) < 5 else ""
+        names = "names" if len(numbers) == 1 else "name"
+        yield (
+            f"{name}: {counted(len(numbers), 'row')}{which} of "
+            f"{listed([labels[analyte] for analyte in found])} {names} no basis; {basis} was "
+            "taken, as planned. Ask the laboratory where its report does not say so elsewhere."
+        )

@@ -70,6 +70,7 @@ class FileMemory:
     unknown_qualifiers: dict[str, list[int]] = field(default_factory=dict)
     converted: set[str] = field(default_factory=set)
     meanings: dict[tuple[str, str], set[str]] = field(default_factory=dict)
+    basis_unsaid: dict[tuple[str, str], list[int]] = field(default_factory=dict)
 
 
 class Attempts:
@@ -183,7 +184,7 @@ def _check_ids(row: RowCells) -> None:
 
 
 def _check_meaning(row: RowCells, analyte: Analyte, memory: FileMemory) -> None:
-    """Refuse another basis or fraction than the campaign's; none is converted."""
+    """Refuse another basis or fraction than the campaign's; note where no basis is said."""
     behind, planned = split_basis(row.text("unit"))[1], split_basis(analyte.unit)[1]
     basis = plain_basis(row.text("basis"))
     if basis and behind and basis != behind:
@@ -198,6 +199,8 @@ def _check_meaning(row: RowCells, analyte: Analyte, memory: FileMemory) -> None:
                 f"means {value}, the campaign {wanted}; neither is turned into the other here. "
                 "Ask the laboratory for results as planned.",
             )
+        if kind == "basis" and wanted and not value:
+            memory.basis_unsaid.setdefault((analyte.id, wanted), []).append(row.number)
         if value and not wanted:
             memory.meanings.setdefault((analyte.id, kind), set()).add(value)
 

@@ -26,9 +26,12 @@ def lab_file(tmp_path: Path) -> Callable[[str | bytes], Path]:
 
 @pytest.fixture
 def read(lab_file: Callable[[str | bytes], Path]) -> Reader:
-    """Write a file and read it with the campaign of two strata, lead in mg/kg."""
+    """Write a file and read it with the campaign of two strata, lead in mg/kg of no basis."""
+    whole = make_campaign()
+    lead = whole.analyte[0].model_copy(update={"basis": ""})
+    campaign = whole.model_copy(update={"analyte": (lead,)})
 
     def reader(content: str | bytes, *, columns: dict[str, str] | None = None) -> LabTable:
-        return read_lab(lab_file(content), make_campaign(), columns=columns)
+        return read_lab(lab_file(content), campaign, columns=columns)
 
     return reader

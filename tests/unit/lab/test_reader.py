@@ -123,7 +123,6 @@ def test_every_fault_is_said_at_once_with_row_value_and_remedy(read: Reader) -> 
         ("A,lead,12,%", "can mean several things"),
         ("A,lead,12,�g/kg", "lost a character"),
         ("A,lead,12,æg/kg", "lost a character"),
-        ("A,lead,12,mg/kg ww", "means wet weight, the campaign dry weight"),
         ("A,lead,ND,mg/kg", "is a non-detect with no number"),
         ("A,lead,<,mg/kg", "is a non-detect with no number"),
         ("A,lead,1e29,g/kg", "outside 1e-30 to 1e30"),
@@ -145,10 +144,31 @@ def test_another_fraction_or_a_mixture_of_bases_is_refused(
     path = lab_file(f"{HEAD},fraction\nA,zinc,3,ug/L,Total\n")
     with pytest.raises(LabError, match="means total, the campaign dissolved"):
         read_lab(path, campaign)
+    path = lab_file(f"{HEAD}\nA,lead,12,mg/kg ww\n")
+    with pytest.raises(LabError, match="means wet weight, the campaign dry weight"):
+        read_lab(path, make_campaign())
     open_basis = make_campaign(analyte=(Analyte(id="lead", unit="mg/kg"),))
     path = lab_file(f"{HEAD},basis\nA,lead,3,mg/kg,dry\nB,lead,3,mg/kg,W\n")
     with pytest.raises(LabError, match="mixes dry weight and wet weight"):
         read_lab(path, open_basis)
+
+
+def test_a_basis_that_is_not_said_is_taken_as_planned_and_noted(lab_file) -> None:
+    """mg/kg where dry weight is planned: results as received are lower, and nobody would know."""
+    campaign = make_campaign()
+    zinc = campaign.analyte[0].model_copy(update={"id": "zinc", "name": "Zinc"})
+    campaign = campaign.model_copy(update={"analyte": (*campaign.analyte, zinc)})
+    said = lab_file(f"{HEAD},basis\nA,lead,1,mg/kg dw,\nB,lead,2,mg/kg,dry\n")
+    assert read_lab(said, campaign).notes == ()
+    some = lab_file(f"{HEAD}\nA,lead,1,mg/kg dw\nB,lead,2,mg/kg\nB,zinc,3,mg/kg\n")
+    assert read_lab(some, campaign).notes == (
+        "labs.csv: 2 rows (3 and 4) of Lead and Zinc name no basis; dry weight was taken, as "
+        "planned. Ask the laboratory where its report does not say so elsewhere.",
+    )
+    many = lab_file(f"{HEAD}\n" + "".join(f"A{k},lead,{k},mg/kg\n" for k in range(1, 9)))
+    assert read_lab(many, campaign).notes[0].startswith("labs.csv: 8 rows of Lead name no basis; ")
+    open_basis = make_campaign(analyte=(Analyte(id="lead", unit="mg/kg"),))
+    assert read_lab(many, open_basis).notes == ()
 
 
 def test_all_missing_columns_are_named_with_one_line_that_maps_them(read: Reader) -> None:
@@ -192,7 +212,7 @@ def test_columns_named_for_the_pilot_hold_for_results_that_have_them(lab_file) -
     told = {"location_id": "Well", "analyte": "Parameter", "as_reported": "Result"}
     pilot = Sigma(analyte="lead", pilot="pilot.csv", columns=told)
     campaign = make_campaign(sigma=(pilot,))
-    path = lab_file("Well,Parameter,Result,Result 2,unit\nA,lead,1,2,mg/kg\n")
+    path = lab_file("Well,Parameter,Result,Result 2,unit\nA,lead,1,2,mg/kg dw\n")
     table = read_lab(path, campaign)
     assert table.rows[0].result == 1.0
     assert table.notes == (
@@ -202,7 +222,7 @@ def test_columns_named_for_the_pilot_hold_for_results_that_have_them(lab_file) -
     again = read_lab(path, campaign, columns={"as_reported": "Result 2"})
     assert again.rows[0].result == 2.0
     assert "'Result' as as_reported" not in again.notes[0]
-    other = lab_file(f"{HEAD}\nA,lead,3,mg/kg\n")
+    other = lab_file(f"{HEAD}\nA,lead,3,mg/kg dw\n")
     assert read_lab(other, campaign).notes == ()
     two = make_campaign(sigma=(pilot, pilot.model_copy(update={"columns": {"analyte": "Stoff"}})))
     both = lab_file("Well,Parameter,Stoff,Result,unit\nA,lead,zinc,1,mg/kg\n")

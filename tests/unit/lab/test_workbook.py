@@ -166,7 +166,7 @@ def test_a_merge_over_the_whole_sheet_is_refused_before_it_is_opened(tmp_path: P
 
 def test_the_sheet_used_is_named_and_hidden_ones_are_not_read(tmp_path: Path) -> None:
     """A cover sheet beside the results is usual; a hidden old version is a trap."""
-    workbook = book(["A", "lead", 12, "mg/kg"])
+    workbook = book(["A", "lead", 12, "mg/kg dw"])
     workbook.create_sheet("Cover").append(["Report 17"])
     hidden = workbook.create_sheet("Old")
     for row in (HEADER, ["A", "lead", 99, "mg/kg"]):
