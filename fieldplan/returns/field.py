@@ -17,7 +17,7 @@ from fieldplan.plan.model import Plan
 from fieldplan.returns.form import FIELD_COLUMNS, plain_offset
 from fieldplan.returns.ids import nearest, plain_id
 from fieldplan.returns.model import FieldRow, ReasonCode
-from fieldplan.returns.revisions import other_revision
+from fieldplan.returns.revisions import told_apart
 
 REASONS: tuple[str, ...] = get_args(ReasonCode)
 _YES = {"yes", "y", "true", "1", "x", "taken"}
@@ -66,12 +66,18 @@ def read_field_return(path: Path, plan: Plan) -> FieldReturn:
         raise LabError(message)
     table = tables[0]
     found = find_columns(table, FIELD_COLUMNS, ("location_id", "sample_id", "taken"))
+    lines = [RowCells(table, found, number, cells) for number, cells in table.rows]
+    strangers = told_apart(plan, [(line.number, (line.text("sample_id"),)) for line in lines])
+    problems = [
+        f"{path.name} {sentence} Read it with the packet of {name}." for name, sentence in strangers
+    ]
+    if problems:
+        raise LabError(*problems)
     reader = _LineReader(plan, table.separator in {";", "\t"})
     rows: list[FieldRow] = []
-    problems: list[str] = []
-    for number, cells in table.rows:
-        lines, row = reader.read(RowCells(table, found, number, cells))
-        problems += lines
+    for line in lines:
+        faults, row = reader.read(line)
+        problems += faults
         rows += [row] if row else []
     problems += _contradictions(table, rows)
     if problems:
@@ -83,7 +89,7 @@ class _LineReader:
     """Reads one line after another against the same plan."""
 
     def __init__(self, plan: Plan, decimal_comma: bool) -> None:
-        self.plan, places = plan, plan.locations.places
+        places = plan.locations.places
         self.places = {place.location_id: place for place in places}
         self.spellings = {place.location_id.casefold(): place for place in places}
         self.spellings |= {place.short_name.casefold(): place for place in places}
@@ -142,14 +148,7 @@ class _LineReader:
         return place.location_id
 
     def _refuse_sample(self, row: RowCells, sample_id: str) -> NoReturn:
-        """Say whose sample it is, or which one of the plan it is like."""
-        other = other_revision(self.plan, sample_id)
-        if other:
-            row.refuse(
-                "sample_id",
-                f"belongs to {other}; this packet is {self.plan.revision_name}. Read this return "
-                f"with the packet of {other}.",
-            )
+        """Say which sample of the plan it is like."""
         near = nearest(sample_id, self.samples)
         hint = f"did you mean '{near[0]}'?" if near else "check that it is this packet's form."
         row.refuse("sample_id", f"is no sample of the plan; {hint}")

@@ -1,6 +1,6 @@
 """Jars labelled under another revision of the plan: their results are none of this packet's."""
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Iterator, Sequence
 
 from fieldplan.lab.model import LabRow
 from fieldplan.lab.words import listed
@@ -47,22 +47,37 @@ def of_other_revisions(plan: Plan, rows: Sequence[LabRow]) -> list[str]:
     list of str
         A sentence for each revision: under a new one a number may stand for another place.
     """
+    ids = [(row.row, (row.sample_id, row.location_id)) for row in rows]
+    return [
+        f"laboratory file {sentence} Estimate with the packet of {name}, or ask which labels the "
+        "jars carried."
+        for name, sentence in told_apart(plan, ids)
+    ]
+
+
+def told_apart(plan: Plan, ids: Iterable[tuple[int, Sequence[str]]]) -> Iterator[tuple[str, str]]:
+    """Name each other revision that labelled jars of a file, with a sentence on which they are.
+
+    Parameters
+    ----------
+    plan : Plan
+    ids : iterable of (int, sequence of str)
+        Row number, and what in the row may be the id of a sample.
+    """
     found: dict[str, list[tuple[int, str]]] = {}
-    for row in rows:
-        for written in (row.sample_id, row.location_id):
-            name = other_revision(plan, written)
-            if name:
-                found.setdefault(name, []).append((row.row, written))
-                break
-    return [_sentence(plan, name, jars) for name, jars in sorted(found.items())]
-
-
-def _sentence(plan: Plan, name: str, jars: Sequence[tuple[int, str]]) -> str:
-    numbers = listed([str(row) for row, _ in jars])
-    ids = listed([f"'{written}'" for _, written in jars])
-    rows, belong = ("row", "belongs") if len(jars) == 1 else ("rows", "belong")
-    return (
-        f"laboratory file {rows} {numbers}: {ids} {belong} to {name}; this packet is "
-        f"{plan.revision_name}. Estimate with the packet of {name}, or ask which labels the jars "
-        "carried."
-    )
+    for number, texts in ids:
+        named = [(other_revision(plan, text), text) for text in texts]
+        name, written = next((pair for pair in named if pair[0]), ("", ""))
+        if name:
+            found.setdefault(name, []).append((number, written))
+    for name, jars in sorted(found.items()):
+        numbers = listed([str(number) for number, _ in jars], limit=4)
+        named_ids = listed([f"'{written}'" for _, written in jars], limit=4)
+        rows, belong = ("row", "belongs") if len(jars) == 1 else ("rows", "belong")
+        yield (
+            name,
+            (
+                f"{rows} {numbers}: {named_ids} {belong} to {name}; this packet is "
+                f"{plan.revision_name}."
+            ),
+        )
