@@ -63,8 +63,7 @@ def read_lab(
     """
     analytes = {tidy(name).casefold(): a for a in campaign.analyte for name in _names(a)}
     told = columns or {}
-    if of_pilot:
-        remedy = partial(_in_campaign_too, told)
+    remedy = partial(_in_campaign_too, told) if of_pilot else remedy
     named = Named(told, {} if of_pilot else pilot_titles(campaign), remedy)
     certificate = certificate_of(REQUIRED, named.titles(), analytes, how=named.how())
     table, found, notes = choose_sheet(path, named, certificate)
@@ -90,11 +89,12 @@ def read_lab(
         problems.append(_nothing_found(table.file_name, analytes, memory))
     if problems:
         raise LabError(*capped(problems))
-    comma_read = marks.comma and any("," in row.as_reported for row in rows)
     labels = {analyte.id: analyte.label for analyte in campaign.analyte}
     strange = changed_ids_note(table.file_name, rows)
     strange += far_results_notes(table.file_name, rows, labels)
-    more = _notes(table.file_name, memory, labels=labels, comma_read=comma_read)
+    more = _notes(
+        table.file_name, memory, labels=labels, comma_read=marks.comma and _has_comma(rows)
+    )
     return LabTable(
         file_name=table.file_name,
         sha256=table.sha256,
@@ -103,6 +103,10 @@ def read_lab(
         rejected=tuple(memory.rejected),
         left_out=tuple(memory.left_out),
     )
+
+
+def _has_comma(rows: list[LabRow]) -> bool:
+    return any("," in row.as_reported for row in rows)
 
 
 def _names(analyte: Analyte) -> tuple[str, ...]:

@@ -68,7 +68,7 @@ def test_what_a_killed_run_left_is_swept_by_the_next(tmp_path: Path) -> None:
 def test_a_folder_that_cannot_be_written_gives_one_line(tmp_path: Path) -> None:
     """A file where a folder should be is the plainest case on every system."""
     (tmp_path / "file").write_text("", encoding="utf-8")
-    with pytest.raises(RecordError, match="cannot be written .*choose another folder"):
+    with pytest.raises(RecordError, match=r"cannot be written .*choose another folder"):
         build_folder(tmp_path / "file" / "HL-r01", fill)
 
 
