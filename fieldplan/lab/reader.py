@@ -67,8 +67,7 @@ def read_lab(
     named = Named(told, {} if of_pilot else pilot_titles(campaign), remedy)
     certificate = certificate_of(REQUIRED, named.titles(), analytes, how=named.how())
     table, found, notes = choose_sheet(path, named, certificate)
-    memory = FileMemory()
-    marks = decimal_marks(table, found)
+    memory, marks = FileMemory(), decimal_marks(table, found)
     rows: list[LabRow] = []
     problems: list[str] = []
     for number, cells in table.rows:
