@@ -110,7 +110,7 @@ function fieldplanPrint(map, bounds, panel) {
 }
 
 /* The whole site, clear of the buttons: they stand in a row on a phone, else in a column. An open
-   panel is left free at the right, or above, whichever shows the site larger. */
+   panel is left free at the right, or above where that shows the site clearly larger. */
 function fieldplanFit(map, bounds, panel) {
   const container = panel.getContainer();
   const open = container.offsetHeight > 100;
@@ -122,7 +122,7 @@ function fieldplanFit(map, bounds, panel) {
     if (Math.min(room.x, room.y) < 40) { return -Infinity; }
     return map.getBoundsZoom(bounds, false, L.point(left + right, top + bottom));
   };
-  const [left, top, right, bottom] = trials.reduce((a, b) => (zoom(b) > zoom(a) ? b : a));
+  const [left, top, right, bottom] = trials.reduce((a, b) => (zoom(b) > zoom(a) + 0.3 ? b : a));
   map.fitBounds(bounds, {animate: false, paddingTopLeft: [left, top],
     paddingBottomRight: [right, bottom]});
 }
