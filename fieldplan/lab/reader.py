@@ -62,9 +62,8 @@ def read_lab(
     known here are noted or, where they may speak of limits, refused.
     """
     analytes = {tidy(name).casefold(): a for a in campaign.analyte for name in _names(a)}
-    told = columns or {}
-    remedy = partial(_in_campaign_too, told) if of_pilot else remedy
-    named = Named(told, {} if of_pilot else pilot_titles(campaign), remedy)
+    remedy = partial(_in_campaign_too, columns or {}) if of_pilot else remedy
+    named = Named(columns or {}, {} if of_pilot else pilot_titles(campaign), remedy)
     certificate = certificate_of(REQUIRED, named.titles(), analytes, how=named.how())
     table, found, notes = choose_sheet(path, named, certificate)
     memory, marks = FileMemory(), decimal_marks(table, found)
