@@ -97,7 +97,7 @@ def test_a_budget_takes_no_assurance(folder, option):
     assert "assurance" not in written()["objective"][0]
     result = new("--budget", "900", *option, "--out", "other.toml")
     assert result.exit_code == 2
-    assert f"{option[0]} has nothing to hold to beside --budget; leave it out." in result.output
+    assert f"{option[0]} has nothing to hold to beside --budget; leave it out." in result.stderr
     assert not (folder / "other.toml").exists()
 
 

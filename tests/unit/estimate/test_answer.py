@@ -155,7 +155,7 @@ def test_the_other_kind_of_interval_is_at_hand() -> None:
     t = stats.t.ppf(0.95, 7)
     assert answer.other_interval.kind == "upper-limit"
     assert answer.other_interval.high == pytest.approx(
-        answer.mean.mean + t * answer.mean.standard_error, rel=1e-12
+        answer.mean.mean + t * answer.mean.standard_error, rel=1e-9
     )
 
 
