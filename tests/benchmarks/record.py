@@ -23,7 +23,7 @@ def placement() -> Iterator[str]:
 
 def commands() -> Iterator[str]:
     """Yield the table of the section "Commands as whole processes"."""
-    yield "| command | aim | median | bare interpreter | ratio |"
+    yield "| command | aim | shortest | bare interpreter | ratio |"
     yield "| --- | --- | --- | --- | --- |"
     for row in timed_commands():
         yield (

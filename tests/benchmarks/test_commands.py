@@ -8,7 +8,7 @@ LIMITS = {
     "`fieldplan --help`": 20,
     "`import fieldplan`": 3,
     "`fieldplan size` with numbers": 45,
-    "`fieldplan pack` of Hobbin Ley": 1500,
+    "`fieldplan pack` of Hobbin Ley": 600,
 }
 
 
