@@ -6,9 +6,10 @@ from typing import Literal
 
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.model import NumberFrom
-from fieldplan.stats.allocation import Allocation, Strata
+from fieldplan.stats.allocation import Allocation
 from fieldplan.stats.assurance import check_assurance
 from fieldplan.stats.intervals import IntervalKind
+from fieldplan.stats.strata import Strata
 
 TargetKind = Literal["standard_error", "half_width", "relative_half_width", "budget"]
 

@@ -1,62 +1,34 @@
 """How a number of results is shared between strata, exactly and in whole numbers.
 
-Both ways are exact. *Neyman* gives the smallest variance that whole numbers allow: the variance
-of a stratified mean is a sum of convex terms, so results given one after the other to the stratum
-that gains most end at the optimum (Wright 2012, The American Statistician 66:217).
-*Proportional* rounds every share of the total up or down; among the roundings that give the
-total it takes the one of smallest variance.
+Three ways give out results one after the other, and each is the best of its kind at every total.
+*Neyman*: each to the stratum where the variance of the mean falls most; the variance is a sum of
+convex terms, so this ends at its minimum (Wright 2012, The American Statistician 66:217).
+*Cost-optimal*: each to the stratum where it falls most for the money; no other counts of that
+cost or less have a smaller variance. *Equal precision*: each to the stratum whose own mean is
+least certain; no other counts of that total have a smaller largest one. *Proportional* rounds
+every share of the total up or down; among the roundings that give the total it takes the one of
+smallest variance.
 """
 
 import math
-from collections.abc import Callable, Sequence
-from dataclasses import dataclass
-from heapq import heapify, heappop, heappush
+from collections.abc import Callable
 from typing import Literal
 
+import numpy as np
+
 from fieldplan.base.errors import DesignError
-from fieldplan.stats.precision import MOST, meets, smallest
-from fieldplan.stats.stratified import predicted_variance
+from fieldplan.stats.one_by_one import (
+    FallOfVariance,
+    Numbers,
+    Order,
+    OwnVariance,
+    given_out,
+    topped_up,
+)
+from fieldplan.stats.precision import meets, smallest
+from fieldplan.stats.strata import Strata
 
-Allocation = Literal["proportional", "neyman"]
-
-
-@dataclass(frozen=True)
-class Strata:
-    """What the sharing of results depends on; one entry a stratum in every tuple.
-
-    Parameters
-    ----------
-    weights, sigmas : tuple of float
-        Shares of the population (sum 1) and standard deviations, all above 0.
-    populations : tuple of (int or None)
-        N of a list; None for an area.
-    floor : int
-        Fewest results in any stratum; a list shorter than that is taken whole.
-    """
-
-    weights: tuple[float, ...]
-    sigmas: tuple[float, ...]
-    populations: tuple[int | None, ...]
-    floor: int = 2
-
-    @property
-    def caps(self) -> tuple[int, ...]:
-        """Most results a stratum can give."""
-        return tuple(MOST if size is None else size for size in self.populations)
-
-    @property
-    def floors(self) -> tuple[int, ...]:
-        """Fewest results a stratum must give."""
-        return tuple(min(self.floor, cap) for cap in self.caps)
-
-    @property
-    def most(self) -> int:
-        """All results that can be had."""
-        return min(MOST, sum(self.caps))
-
-    def variance(self, counts: Sequence[float]) -> float:
-        """Variance of the mean from these counts."""
-        return predicted_variance(self.weights, self.sigmas, counts, self.populations)
+Allocation = Literal["proportional", "neyman", "cost-optimal", "equal-precision"]
 
 
 def unrounded_total(
@@ -70,12 +42,13 @@ def unrounded_total(
     target_variance : float
         Tolerated variance of the mean, above 0.
     allocation : str
-        ``neyman`` or ``proportional``.
+        How results are shared.
 
     Notes
     -----
-    Neyman (Σ W σ)² / (V + Σ W² σ²/N), proportional Σ W σ² / (V + Σ W² σ²/N): Cochran (1977),
-    Sampling Techniques, 3rd ed., sec. 5.9. The term with N is 0 for an area.
+    With shares q that sum to 1, Σ (W² σ² / q) / (V + Σ W² σ²/N): Cochran (1977), Sampling
+    Techniques, 3rd ed., sec. 5.9. It is (Σ W σ)² above the line for Neyman, Σ W σ² for
+    proportional, (Σ W σ √c)(Σ W σ/√c) for the least cost. The term with N is 0 for an area.
 
     Examples
     --------
@@ -85,41 +58,57 @@ def unrounded_total(
     >>> round(unrounded_total(site, 81.0, allocation="proportional"), 2)
     22.06
     """
-    below = target_variance
-    for weight, sigma, size in zip(strata.weights, strata.sigmas, strata.populations, strict=True):
-        below += 0.0 if size is None else (weight * sigma) ** 2 / size
-    pairs = list(zip(strata.weights, strata.sigmas, strict=True))
-    if allocation == "neyman":
-        return math.fsum(weight * sigma for weight, sigma in pairs) ** 2 / below
-    return math.fsum(weight * sigma**2 for weight, sigma in pairs) / below
+    sizes = _sizes(strata, allocation)
+    spreads = _sizes(strata, "neyman")
+    below = target_variance + math.fsum(
+        spread**2 / size
+        for spread, size in zip(spreads, strata.populations, strict=True)
+        if size is not None
+    )
+    above = math.fsum(spread**2 / size for spread, size in zip(spreads, sizes, strict=True))
+    return above * math.fsum(sizes) / below
 
 
 def unrounded_shares(strata: Strata, total: float, *, allocation: Allocation) -> list[float]:
-    """Share a total in proportion to W σ (Neyman) or W, before any rounding, floor or list.
+    """Share a total before any rounding, floor, list or ceiling.
+
+    Notes
+    -----
+    In proportion to W (proportional), W σ (Neyman), W σ/√c (least cost) or σ² (equal precision).
 
     Examples
     --------
     >>> site = Strata((0.64, 0.22, 0.14), (18, 45, 90), (None, None, None))
     >>> [round(n, 2) for n in unrounded_shares(site, 15, allocation="neyman")]
     [5.08, 4.37, 5.56]
+    >>> dear = Strata(site.weights, site.sigmas, site.populations, costs=(75, 75, 300))
+    >>> [round(n, 2) for n in unrounded_shares(dear, 15, allocation="cost-optimal")]
+    [6.23, 5.36, 3.41]
     """
     sizes = _sizes(strata, allocation)
     return [total * size / math.fsum(sizes) for size in sizes]
 
 
 def _sizes(strata: Strata, allocation: Allocation) -> list[float]:
+    """Give what each stratum's share is proportional to."""
     if allocation == "proportional":
         return list(strata.weights)
-    return [weight * sigma for weight, sigma in zip(strata.weights, strata.sigmas, strict=True)]
+    if allocation == "equal-precision":
+        return [spread**2 for spread in strata.levelled or strata.sigmas]
+    spreads = [weight * sigma for weight, sigma in zip(strata.weights, strata.sigmas, strict=True)]
+    if allocation == "neyman":
+        return spreads
+    return [a / math.sqrt(c) for a, c in zip(spreads, strata.unit_costs, strict=True)]
 
 
 def check_total(strata: Strata, total: int) -> None:
-    """Refuse a total below the floors or above the lists."""
+    """Refuse a total below the floors or above the lists and ceilings."""
     least = sum(strata.floors)
     if total < least:
+        each = f"at least {strata.floor} each" if not strata.least else "their floors"
         message = (
-            f"{total} results cannot fill {len(strata.weights)} strata with at least "
-            f"{strata.floor} each; ask for {least} or more, or lower the floor."
+            f"{total} results cannot fill {len(strata.weights)} strata with {each}; "
+            f"ask for {least} or more, or lower the floor."
         )
         raise DesignError(message)
     if total > strata.most:
@@ -134,14 +123,14 @@ def share_total(strata: Strata, total: int, *, allocation: Allocation) -> list[i
     ----------
     strata : Strata
     total : int
-        From the sum of the floors up to the sum of the lists.
+        From the sum of the floors up to the sum of the lists and ceilings.
     allocation : str
-        ``neyman`` or ``proportional``.
+        How results are shared.
 
     Raises
     ------
     DesignError
-        The total is below the floors or above the lists.
+        The total is below the floors or above the lists and ceilings.
 
     Examples
     --------
@@ -150,88 +139,50 @@ def share_total(strata: Strata, total: int, *, allocation: Allocation) -> list[i
     [5, 4, 6]
     >>> share_total(site, 22, allocation="proportional")
     [14, 4, 4]
+    >>> share_total(site, 50, allocation="equal-precision")
+    [2, 9, 39]
     """
     check_total(strata, total)
-    return _neyman(strata, total) if allocation == "neyman" else _proportional(strata, total)
+    if allocation == "proportional":
+        return _proportional(strata, total)
+    return given_out(_order(strata, allocation), strata.floors, strata.caps, total=total)
 
 
-def gain(spread: float, n: float) -> float:
-    """Give by how much variance falls when n results become n + 1; ``spread`` is W σ."""
-    return spread**2 / (n * (n + 1))
-
-
-def _neyman(strata: Strata, total: int) -> list[int]:
-    spreads = _sizes(strata, "neyman")
-    bounds = list(zip(spreads, strata.floors, strata.caps, strict=True))
-
-    def above(threshold: float) -> list[int]:
-        """Take every result whose gain is at least the threshold."""
-        counts = []
-        for spread, floor, cap in bounds:
-            root = (math.sqrt(1 + 4 * spread**2 / threshold) - 1) / 2
-            counts.append(min(max(math.floor(root) + 1, floor), cap))
-        return counts
-
-    # Bracket the gain of the last result, then give out the few that remain one by one.
-    low, high = max(spreads) ** 2 * 1e-18, max(spreads) ** 2
-    for _ in range(200):
-        middle = math.sqrt(low * high)
-        low, high = (middle, high) if sum(above(middle)) > total else (low, middle)
-        if high / low < 1 + 1e-12:
-            break
-    counts = [max(n - 1, floor) for n, floor in zip(above(high), strata.floors, strict=True)]
-    return _topped_up(counts, spreads, strata.caps, total=total)
-
-
-def _topped_up(
-    counts: Sequence[int], spreads: Sequence[float], caps: Sequence[int], *, total: int
-) -> list[int]:
-    """Give out what is left of a total one by one: each to the stratum that gains most.
-
-    Strata at their cap get no more; of equals the first comes first.
-    """
-    filled = list(counts)
-    waiting = [
-        (-gain(spread, n), k)
-        for k, (spread, n, cap) in enumerate(zip(spreads, filled, caps, strict=True))
-        if n < cap
-    ]
-    heapify(waiting)
-    for _ in range(total - sum(filled)):
-        _, k = heappop(waiting)
-        filled[k] += 1
-        if filled[k] < caps[k]:
-            heappush(waiting, (-gain(spreads[k], filled[k]), k))
-    return filled
+def _order(strata: Strata, allocation: Allocation) -> Order:
+    if allocation == "equal-precision":
+        unseen = [0.0 if size is None else 1 / size for size in strata.populations]
+        return OwnVariance(np.array(_sizes(strata, allocation)), np.array(unseen))
+    spreads = np.array(_sizes(strata, "neyman"))
+    costs = np.array(strata.unit_costs if allocation == "cost-optimal" else 1.0)
+    return FallOfVariance(spreads**2 / costs)
 
 
 def _proportional(strata: Strata, total: int) -> list[int]:
-    ideal = _held_shares(strata, total)
-    counts = [math.floor(share + 1e-9) for share in ideal]
-    caps = [math.ceil(share - 1e-9) for share in ideal]
-    spreads = _sizes(strata, "neyman")
-    return _topped_up(counts, spreads, caps, total=total)
+    shares = _held_shares(strata, total)
+    counts = [math.floor(share + 1e-9) for share in shares]
+    caps = [math.ceil(share - 1e-9) for share in shares]
+    return topped_up(counts, _order(strata, "neyman"), caps, total=total)
 
 
-def _held_shares(strata: Strata, total: int) -> list[float]:
-    """Share in proportion to W, held between floor and list: clip(factor · W) that sums up."""
-    bounds = list(zip(strata.weights, strata.floors, strata.caps, strict=True))
+def _held_shares(strata: Strata, total: int) -> Numbers:
+    """Share in proportion to W, held between floor and cap: clip(factor · W) that sums up."""
+    weights = np.array(strata.weights)
+    floors, caps = np.array(strata.floors, dtype=float), np.array(strata.caps, dtype=float)
 
-    def held(factor: float) -> list[float]:
-        return [min(max(factor * weight, float(f)), float(c)) for weight, f, c in bounds]
+    def held(factor: float) -> Numbers:
+        return np.clip(factor * weights, floors, caps)
 
-    low, high = 0.0, (total + 1) / min(strata.weights)
+    low, high = 0.0, (total + 1) / float(weights.min())
     for _ in range(200):
         middle = (low + high) / 2
         if middle in (low, high):
             break
         low, high = (low, middle) if math.fsum(held(middle)) > total else (middle, high)
     shares = held(low)
-    free = {k for k, (w, f, c) in enumerate(bounds) if f < low * w < c}
-    fixed = math.fsum(share for k, share in enumerate(shares) if k not in free)
-    weight = math.fsum(bounds[k][0] for k in free)
-    for k in free:
-        shares[k] = (total - fixed) * bounds[k][0] / weight
+    free = (floors < low * weights) & (low * weights < caps)
+    if free.any():
+        left = total - math.fsum(shares[~free])
+        shares[free] = left * weights[free] / math.fsum(weights[free])
     return shares
 
 
@@ -244,17 +195,17 @@ def smallest_total(strata: Strata, target_variance: float, *, allocation: Alloca
     target_variance : float
         Tolerated variance of the mean, above 0.
     allocation : str
-        ``neyman`` or ``proportional``.
+        How results are shared.
 
     Returns
     -------
     list of int
-        Results per stratum; of all that have this total, those of smallest variance.
+        Results per stratum, as ``share_total`` shares them.
 
     Raises
     ------
     DesignError
-        The target asks for more results than any campaign can collect.
+        The target asks for more results than can be had.
 
     Examples
     --------
@@ -273,12 +224,15 @@ def smallest_total(strata: Strata, target_variance: float, *, allocation: Alloca
 def lowest_variance(strata: Strata, total: int, *, allocation: Allocation) -> float:
     """Bound the variance of this and every smaller total from below.
 
-    Neyman's own variance falls with every result. Of a proportional total no share is rounded
-    to more than the next whole number, and the shares only grow with the total.
+    Where results are given out one by one, the variance falls with every one. Of a proportional
+    total no share is rounded to more than the next whole number, and the shares only grow with
+    the total; the bound shares it as Neyman does under these caps.
     """
-    if allocation == "neyman":
-        return strata.variance(_neyman(strata, total))
-    return strata.variance([math.ceil(share - 1e-9) for share in _held_shares(strata, total)])
+    if allocation != "proportional":
+        return strata.variance(share_total(strata, total, allocation=allocation))
+    caps = [math.ceil(share - 1e-9) for share in _held_shares(strata, total)]
+    order = _order(strata, "neyman")
+    return strata.variance(given_out(order, strata.floors, caps, total=total))
 
 
 def first_that(
@@ -298,7 +252,7 @@ def first_that(
     never_above : float
         A variance; no counts of a larger variance fit, so their totals are not tried.
     allocation : str
-        ``neyman`` or ``proportional``.
+        How results are shared.
 
     Returns
     -------
@@ -325,8 +279,9 @@ def first_that(
         counts = share_total(strata, total, allocation=allocation)
         if fits(counts):
             return counts
+    allowed = f"the {high} results that the ceilings allow"
     message = (
-        f"the target asks for more than {high} results; allow a larger error, "
-        "or look at the standard deviations again."
+        f"the target asks for more than {allowed if any(strata.ceilings) else f'{high} results'}; "
+        "allow a larger error, or look at the standard deviations again."
     )
     raise DesignError(message)

@@ -11,7 +11,8 @@ from fieldplan.campaign.model import Cost, DesignTable, Objective, Sigma
 from fieldplan.lab.model import Spread, StratumSpread
 from fieldplan.sizing import size
 from fieldplan.sizing.model import OtherPrecision
-from fieldplan.stats.allocation import Strata, share_total
+from fieldplan.stats.allocation import share_total
+from fieldplan.stats.strata import Strata
 from tests.factories import make_campaign, make_frame, make_list_frame, make_spread
 from tests.several_analytes import (
     ZINC,

@@ -10,15 +10,14 @@ from hypothesis import strategies as st
 
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.allocation import (
-    Strata,
     first_that,
-    gain,
     lowest_variance,
     share_total,
     smallest_total,
     unrounded_shares,
     unrounded_total,
 )
+from fieldplan.stats.strata import Strata
 from tests.unit.stats.published import row
 
 SITE = Strata((0.64, 0.22, 0.14), (18, 45, 90), (None, None, None))
@@ -211,8 +210,3 @@ def test_totals_outside_floors_and_lists_are_refused(total: int, said: str) -> N
     site = Strata((0.3, 0.3, 0.4), (1.0, 1.0, 1.0), (6, 10, 10))
     with pytest.raises(DesignError, match=said):
         share_total(site, total, allocation="neyman")
-
-
-def test_gain_is_the_fall_of_the_variance() -> None:
-    """Closed form: a²/n − a²/(n + 1)."""
-    assert gain(3.0, 4) == pytest.approx(9 / 4 - 9 / 5)
