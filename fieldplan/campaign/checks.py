@@ -4,9 +4,11 @@ from collections.abc import Callable, Iterator
 from typing import Any, TypeGuard
 
 from fieldplan.campaign.facts import FACTS
+from fieldplan.campaign.money_checks import PER_PLACE, money_problems
 from fieldplan.campaign.problems import Problem, accepted, meaning, near_miss, shown
-from fieldplan.campaign.references import tables
+from fieldplan.campaign.question_checks import needs_sigma, question_problems
 from fieldplan.campaign.screen import is_fill_in
+from fieldplan.campaign.table import tables
 
 TARGETS = ("standard_error", "half_width", "relative_half_width", "budget")
 """The forms that a target may take; an objective has exactly one."""
@@ -155,6 +157,9 @@ def _objectives(data: Data) -> Iterator[Problem]:
     objectives = tables(data, "objective")
     for i, objective in enumerate(objectives):
         given = [key for key in TARGETS if key in objective]
+        yield from question_problems(data, objective, i)
+        if objective.get("question", "mean") != "mean":
+            continue
         if len(given) != 1:
             listed = ", ".join(given) if given else "none"
             text = f"needs exactly one of {', '.join(TARGETS)} (got {listed}). Keep one."
@@ -202,7 +207,7 @@ def _budget(data: Data, objective: Data, i: int) -> Iterator[Problem]:
         yield Problem(("objective", i, "budget"), text)
         return
     for cost in tables(data, "cost"):
-        each = [cost.get(key, 0) for key in ("per_location", "per_analysis")]
+        each = [cost.get(key, 0) for key in PER_PLACE]
         if all(amount == 0 for amount in each):
             text = "a budget needs the cost of a location. Give per_location or per_analysis."
             yield Problem(("cost",), text)
@@ -261,7 +266,8 @@ def _deciding(data: Data) -> Iterator[Problem]:
     entries = _sigma_of(data, analyte)
     ids = [known.get("id") for known in tables(data, "analyte")]
     resolved = all(entry.get("analyte") in ids for entry in tables(data, "sigma"))
-    if not entries and tables(data, "sigma") and analyte in ids and resolved:
+    lacking = tables(data, "sigma") or needs_sigma(objectives[i])
+    if not entries and lacking and analyte in ids and resolved:
         text = f"no [[sigma]] for {shown(analyte)}, whose objective decides n. Add one."
         yield Problem(("sigma",), text)
     assurance = objectives[i].get("assurance")
@@ -331,6 +337,7 @@ _RULES: tuple[Callable[[Data], Iterator[Problem]], ...] = (
     _deciding,
     _qc,
     _loss,
+    money_problems,
     _facts,
     _clearances,
 )

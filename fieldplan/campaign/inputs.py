@@ -13,9 +13,9 @@ from fieldplan.campaign.lines import KeyPath
 from fieldplan.campaign.model import Campaign, ReadCampaign
 from fieldplan.campaign.problems import Problem, meaning, render
 from fieldplan.campaign.read import Inspection
-from fieldplan.campaign.references import tables
 from fieldplan.campaign.screen import is_fill_in, table_name
 from fieldplan.campaign.shape import shapes
+from fieldplan.campaign.table import tables
 from fieldplan.campaign.text import near_names
 
 _START = "Paths start from the campaign file."

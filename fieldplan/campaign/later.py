@@ -19,7 +19,6 @@ _LATER_VALUES: dict[tuple[str, str], dict[str, str]] = {
     ("objective", "question"): {
         "mean-and-level": "comparing the mean with a level by a test",
         "upper-share": "limits for an upper share of the population",
-        "all-clear": "the question whether anything was missed",
         "smallest-patch": "finding a patch of a given size",
         "change": "change between rounds",
     },

@@ -1,5 +1,8 @@
 """What each key of the campaign file is, in one line: for errors, editors and the reference."""
 
+from fieldplan.campaign import field_reading
+from fieldplan.campaign.questions import meanings
+
 MEANING: dict[str, str] = {
     "format": "the version of this file format",
     # [plan]
@@ -90,6 +93,10 @@ MEANING: dict[str, str] = {
     ),
     "objective.assurance_chosen_by": "who chose the assurance; printed beside it",
     "objective.decides_n": "whether this objective decides n; needed on one of several",
+    "objective.mean_between": (
+        "two amounts between which the true mean lies with a chance of 9 in 10, as believed now"
+    ),
+    **meanings(),
     # [[sigma]]
     "sigma": "where the standard deviation of single results comes from",
     "sigma.analyte": "the analyte it belongs to; may be left out where there is one",
@@ -102,12 +109,19 @@ MEANING: dict[str, str] = {
     "sigma.from_results": "number of results behind a typed value, when it is known",
     "sigma.expected_mean": "the mean that is expected, in the analyte's unit",
     "sigma.skewness": "skewness of the population, where it is known",
+    # [[field_reading]]
+    **{f"field_reading.{key}".rstrip("."): words for key, words in field_reading.MEANING.items()},
     # [cost]
     "cost": "what the campaign costs",
     "cost.currency": "currency of all amounts of money",
     "cost.mobilisation": "money for the campaign as such",
     "cost.per_location": "money for each location visited",
+    "cost.per_sample": "money for each sample taken: its jar, its carriage",
     "cost.per_analysis": "money for each sample analysed",
+    "cost.per_crew_day": "money for each day of a crew in the field; a day begun counts whole",
+    "cost.locations_per_day": "locations that a crew visits in a day",
+    "cost.wrongly_acted": "money lost by acting although the true mean is not above the level",
+    "cost.wrongly_left": "money lost by leaving the site alone although the true mean is above it",
     # [[qc]]
     "qc": "control samples, counted apart from n",
     "qc.kind": "the kind of control sample",

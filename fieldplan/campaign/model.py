@@ -7,20 +7,19 @@ from typing import Annotated, Literal
 
 from pydantic import BaseModel, ConfigDict, Field
 
+from fieldplan.campaign.field_reading import FieldReading
+from fieldplan.campaign.questions.all_clear import AllClear
+from fieldplan.campaign.table import (
+    Identifier,
+    NonNegativeNumber,
+    PositiveNumber,
+    Share,
+    Table,
+    Words,
+)
+
 FILL_IN = "FILL IN"
 """What a campaign file holds where its author did not know yet; never replaced by a number."""
-
-PositiveNumber = Annotated[float, Field(gt=0, allow_inf_nan=False)]
-NonNegativeNumber = Annotated[float, Field(ge=0, allow_inf_nan=False)]
-Share = Annotated[float, Field(ge=0, lt=1, allow_inf_nan=False)]
-Identifier = Annotated[str, Field(pattern=r"^[A-Za-z0-9][A-Za-z0-9_.-]{0,34}$")]
-Words = Annotated[str, Field(min_length=1, max_length=2000)]
-
-
-class Table(BaseModel):
-    """What all tables of the campaign file share: strict types, no unknown keys, no changes."""
-
-    model_config = ConfigDict(frozen=True, extra="forbid", strict=True)
 
 
 class PlanTable(Table):
@@ -134,12 +133,13 @@ class Targeted(Table):
 class Objective(Table):
     """``[[objective]]``: the question, its target, and the assurance that somebody chose.
 
-    A budget has no assurance: it sets no precision that n could miss.
+    A budget has no assurance: it sets no precision that n could miss. A question other than the
+    mean has a table of its own below, named as the question.
     """
 
     design: str | None = None
     analyte: str | None = None
-    question: Literal["mean"]
+    question: Literal["mean", "all-clear"]
     standard_error: PositiveNumber | None = None
     half_width: PositiveNumber | None = None
     relative_half_width: Annotated[float, Field(gt=0, lt=10)] | None = None
@@ -147,6 +147,8 @@ class Objective(Table):
     assurance: Annotated[float, Field(ge=0.5, lt=1)] | Literal["plain"] | None = None
     assurance_chosen_by: str = ""
     decides_n: bool = False
+    mean_between: tuple[NonNegativeNumber, PositiveNumber] | None = None
+    all_clear: AllClear | None = None
 
 
 class Sigma(Table):
@@ -169,12 +171,17 @@ class Sigma(Table):
 
 
 class Cost(Table):
-    """``[cost]``: money per campaign, per location and per analysed sample."""
+    """``[cost]``: money per campaign, location, jar, analysis and crew-day, and for being wrong."""
 
     currency: Words
     mobilisation: NonNegativeNumber = 0.0
     per_location: NonNegativeNumber = 0.0
+    per_sample: NonNegativeNumber = 0.0
     per_analysis: NonNegativeNumber = 0.0
+    per_crew_day: NonNegativeNumber = 0.0
+    locations_per_day: PositiveNumber | None = None
+    wrongly_acted: PositiveNumber | None = None
+    wrongly_left: PositiveNumber | None = None
 
 
 class QualityControl(Table):
@@ -263,7 +270,8 @@ class Campaign(Table):
     design: tuple[DesignTable, ...] = Field(min_length=1)
     targeted: tuple[Targeted, ...] = ()
     objective: tuple[Objective, ...] = Field(min_length=1)
-    sigma: tuple[Sigma, ...] = Field(min_length=1)
+    sigma: tuple[Sigma, ...] = ()
+    field_reading: tuple[FieldReading, ...] = ()
     cost: Cost | None = None
     qc: tuple[QualityControl, ...] = ()
     loss: Loss = Loss()

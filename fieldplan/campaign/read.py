@@ -111,7 +111,7 @@ def inspect_text(text: str, path: Path) -> Inspection:
     problems = list(screened.problems)
     problems += resolve(screened.data)
     problems += check(screened.data)
-    campaign, faults = _validate(screened, problems)
+    campaign, faults = validated(screened, problems)
     problems += faults
     lines = line_map(text) if screened.fill_in else {}
     fill_in = sorted(
@@ -135,7 +135,7 @@ def _meaning_of(path: KeyPath) -> str:
     return f"{told}; {remedy}" if remedy else told
 
 
-def _validate(screened: Screened, known: list[Problem]) -> tuple[Campaign | None, list[Problem]]:
+def validated(screened: Screened, known: list[Problem]) -> tuple[Campaign | None, list[Problem]]:
     """Build the campaign, or return what the models refuse and nobody has reported yet."""
     told = {problem.path for problem in known} | set(screened.fill_in)
     try:

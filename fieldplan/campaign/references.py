@@ -6,6 +6,7 @@ from typing import Any
 from fieldplan.campaign.lines import KeyPath
 from fieldplan.campaign.problems import Problem, near_miss, shown
 from fieldplan.campaign.screen import is_fill_in
+from fieldplan.campaign.table import tables
 
 DEFAULT_IDS = {"frame": "site", "event": "round-1", "design": "main"}
 
@@ -14,18 +15,9 @@ _REFERENCES = (
     ("objective", "design", "design"),
     ("objective", "analyte", "analyte"),
     ("sigma", "analyte", "analyte"),
+    ("field_reading", "analyte", "analyte"),
 )
 """(table, key, table whose id it names)."""
-
-
-def tables(data: dict[str, Any], name: str) -> list[dict[str, Any]]:
-    """Return the tables of one name, as far as they are tables."""
-    members = data.get(name)
-    if isinstance(members, dict):
-        return [members]
-    if not isinstance(members, list):
-        return []
-    return [member for member in members if isinstance(member, dict)]
 
 
 def resolve(data: dict[str, Any]) -> list[Problem]:

@@ -10,6 +10,7 @@ from pydantic import BaseModel
 from fieldplan.campaign.facts import FACTS
 from fieldplan.campaign.meaning import MEANING
 from fieldplan.campaign.model import FILL_IN, Campaign
+from fieldplan.campaign.questions import MODULES, table_of
 from fieldplan.campaign.shape import shapes
 
 TITLE = "fieldplan campaign file"
@@ -40,8 +41,11 @@ def campaign_schema() -> dict[str, Any]:
     _facts(tables["FieldTable"]["properties"]["facts"])
     # The reader makes the id of the only analyte from its name.
     tables["Analyte"]["required"].remove("id")
-    # An assurance belongs to every target but a budget, which nothing can miss.
-    tables["Objective"]["oneOf"] = [{"required": ["assurance"]}, {"required": ["budget"]}]
+    # An assurance belongs to every target of a mean but a budget, which nothing can miss.
+    tables["Objective"]["anyOf"] = [
+        {"oneOf": [{"required": ["assurance"]}, {"required": ["budget"]}]},
+        *({"required": [table_of(question)]} for question in MODULES),
+    ]
     return {
         "$schema": "https://json-schema.org/draft/2020-12/schema",
         "title": TITLE,

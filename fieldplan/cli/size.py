@@ -16,9 +16,12 @@ from fieldplan.cli.options import (
     say,
     wrapped,
 )
+from fieldplan.cli.size_findings import print_finding, print_findings
 from fieldplan.cli.size_options import BadOption, BareNumbers, bare_number_options, given_names
 
 if TYPE_CHECKING:
+    from collections.abc import Collection
+
     from fieldplan.sizing.model import Size
 
 
@@ -30,11 +33,19 @@ if TYPE_CHECKING:
     metavar="[CAMPAIGN]",
 )
 @bare_number_options
+@click.option(
+    "--more", multiple=True, metavar="TOPIC", help="Say one topic in full; 'all' says every one."
+)
 @json_option
 @explain_option
 @quiet_option
 def command(
-    campaign_file: Path | None, as_json: bool, explain: bool, quiet: bool, **typed: Any
+    campaign_file: Path | None,
+    more: tuple[str, ...],
+    as_json: bool,
+    explain: bool,
+    quiet: bool,
+    **typed: Any,
 ) -> None:
     """Say how many locations the target needs.
 
@@ -44,17 +55,46 @@ def command(
       fieldplan size campaign.toml
       fieldplan size --sigma 27.57 --standard-error 6 --pilot-n 8
       fieldplan size --stratum 0.64,18 --stratum 0.36,45 --standard-error 6
+      fieldplan size --question all-clear --with share=0.05
     """
-    answer = _of_campaign(campaign_file, typed) if campaign_file else _of_numbers(typed)
+    wanted = _wanted(more, everything=as_json or explain)
+    answer = (
+        _of_campaign(campaign_file, typed, wanted)
+        if campaign_file
+        else _of_numbers(typed, wanted, alone=not more)
+    )
+    if more:
+        _refuse_unknown(more, answer)
     if as_json:
         print_json(as_mapping(answer))
     elif quiet:
         click.echo(wrapped(answer.sentences[0]))
     else:
-        print_answer(answer, explain=explain)
+        print_answer(answer, explain=explain, more=more)
 
 
-def _of_campaign(path: Path, typed: dict[str, Any]) -> "Size":
+def _wanted(more: tuple[str, ...], *, everything: bool) -> "str | Collection[str]":
+    if everything or "all" in more:
+        return "all"
+    return more or "quick"
+
+
+def _refuse_unknown(more: tuple[str, ...], answer: "Size") -> None:
+    """Refuse a topic that nobody knows, or that this campaign gives nothing to say about."""
+    from fieldplan.sizing.beside import QUICK, THOROUGH
+
+    found = [finding.topic for finding in answer.findings]
+    for topic in more:
+        if topic in found or topic == "all":
+            continue
+        if topic in (*QUICK, *THOROUGH):
+            message = f"--more {topic}: nothing given says anything about it."
+        else:
+            message = f"--more {topic} is no topic; there are {', '.join(found) or 'none'} here."
+        raise BadOption(message)
+
+
+def _of_campaign(path: Path, typed: dict[str, Any], wanted: Any) -> "Size":
     """Size a campaign file; bare numbers beside it would contradict it."""
     names = given_names(typed)
     if names:
@@ -67,20 +107,31 @@ def _of_campaign(path: Path, typed: dict[str, Any]) -> "Size":
 
     read = read_campaign(path)
     frame = read_frame(read)
-    return size(read.campaign, read_spread(read, frame), frame)
+    return size(read.campaign, read_spread(read, frame), frame, beside=wanted)
 
 
-def _of_numbers(typed: dict[str, Any]) -> "Size":
-    from fieldplan.sizing.answer import answer
+def _of_numbers(typed: dict[str, Any], wanted: Any, *, alone: bool) -> "Size":
+    """Size bare numbers; alone, for a mean, they need no more than arithmetic."""
+    if alone and typed["question"] == "mean" and not typed["with_keys"]:
+        from fieldplan.sizing.answer import answer
 
-    return answer(BareNumbers(**typed).question())
+        numbers = BareNumbers(**typed)
+        numbers.check_question()
+        numbers.refuse_idle()
+        return answer(numbers.as_question())
+    from fieldplan.cli.bare_numbers import asked_of_numbers
+    from fieldplan.sizing import size_asked
+
+    return size_asked(asked_of_numbers(typed), beside=wanted)
 
 
-def print_answer(answer: "Size", *, explain: bool) -> None:
+def print_answer(answer: "Size", *, explain: bool, more: tuple[str, ...] = ()) -> None:
     """Print the answer in sentences; with ``explain`` the working and the conditions too."""
     click.echo(wrapped(answer.sentences[0]))
     click.echo()
     print_sentences([*answer.sentences[1:], *(other.sentence for other in answer.others)])
+    beside = [f for f in answer.findings if f.answer not in answer.sentences]
+    print_findings(beside, full=more)
     if not explain:
         say("\n--explain shows the working, and under what condition it holds.")
         return
@@ -88,11 +139,15 @@ def print_answer(answer: "Size", *, explain: bool) -> None:
     print_steps(answer.steps)
     click.echo("\nUnder what condition\n")
     print_sentences(answer.conditions)
+    for finding in answer.findings:
+        if finding.topic not in more and "all" not in more:
+            print_finding(finding)
 
 
 def as_mapping(answer: "Size") -> dict[str, Any]:
     """Arrange the answer for ``--json``: n first, chances rounded to three decimals."""
     return {
+        "question": answer.question,
         "n": answer.needed,
         "number_from": answer.number_from,
         "locations": answer.planned,
@@ -126,6 +181,7 @@ def as_mapping(answer: "Size") -> dict[str, Any]:
         "currency": answer.currency,
         "sentences": answer.sentences,
         "others": [{**asdict(other), "chance": _three(other.chance)} for other in answer.others],
+        "findings": {finding.topic: asdict(finding) for finding in answer.findings},
         "conditions": answer.conditions,
         "steps": answer.steps,
         "curve": answer.curve,

@@ -3,7 +3,7 @@
 import math
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, Any, TypeVar
+from typing import TYPE_CHECKING, Any, TypeVar, cast
 
 import click
 
@@ -11,9 +11,11 @@ from fieldplan.base.bounds import magnitude_fault, share_fault
 
 if TYPE_CHECKING:
     from fieldplan.sizing.question import Part, Question, TargetKind
+    from fieldplan.stats.allocation import Allocation
 
 Command = TypeVar("Command")
 
+ALLOCATIONS = ("proportional", "neyman")
 TARGETS: "tuple[TargetKind, ...]" = ("standard_error", "half_width", "relative_half_width")
 
 
@@ -160,6 +162,23 @@ _OPTIONS = (
         "--floor", _count_of_two_or_more, "Fewest results in any stratum; 2 unless given."
     ),
     click.option("--unit", help="The laboratory's unit, for the sentences."),
+    click.option(
+        "--question",
+        default="mean",
+        metavar="NAME",
+        help="What is asked, as in a campaign file; 'mean' unless given.",
+    ),
+    click.option(
+        "--with",
+        "with_keys",
+        multiple=True,
+        metavar="KEY=VALUE",
+        help="A key of the question's table, or table.key of a campaign file; repeat for each.",
+    ),
+    _typed_number("--level", _POSITIVE, "Action level."),
+    _typed_number("--area", _POSITIVE, "Area of the population in m²."),
+    click.option("--layout", metavar="NAME", help="Layout of the design; random unless given."),
+    _typed_number("--skewness", _number_between(-100, 100), "Skewness of single results."),
 )
 
 
@@ -172,7 +191,21 @@ def bare_number_options(command: Command) -> Command:
 
 def given_names(typed: Mapping[str, Any]) -> list[str]:
     """Name the options that were typed, as they are typed."""
-    return [f"--{name.replace('_', '-')}" for name, value in typed.items() if value]
+    given = {name: value for name, value in typed.items() if value and value != "mean"}
+    return [f"--{name.removesuffix('_keys').replace('_', '-')}" for name in given]
+
+
+def _refuse_unknown_question(question: str) -> None:
+    from difflib import get_close_matches
+
+    from fieldplan.campaign.questions import MODULES
+
+    known = ["mean", *MODULES]
+    if question not in known:
+        near = get_close_matches(question, known, n=1)
+        hint = f"Did you mean {near[0]}?" if near else f"Takes {', '.join(known)}."
+        message = f"--question {question!r} is not known. {hint}"
+        raise BadOption(message)
 
 
 @dataclass(frozen=True)
@@ -193,14 +226,53 @@ class BareNumbers:
     allocation: str | None
     floor: int | None
     unit: str | None
+    question: str
+    with_keys: tuple[str, ...]
+    level: float | None
+    area: float | None
+    layout: str | None
+    skewness: float | None
 
-    def question(self) -> "Question":
+    def check_question(self) -> None:
+        """Refuse a question that nobody asks here, and targets of a mean beside another one."""
+        self._check()
+        if self.question == "mean":
+            return
+        _refuse_unknown_question(self.question)
+        for kind in (*TARGETS, "assurance"):
+            if getattr(self, kind) is not None:
+                message = (
+                    f"--{kind.replace('_', '-')} belongs to the question 'mean', not to "
+                    f"'{self.question}'; leave it out."
+                )
+                raise BadOption(message)
+
+    def refuse_idle(self) -> None:
+        """Refuse what the plain question about a mean does not look at."""
+        kind, _ = self.target()
+        idle = {"level": self.level, "area": self.area, "layout": self.layout}
+        idle |= {"skewness": self.skewness}
+        if kind != "relative_half_width":
+            idle["mean"] = self.mean
+        for name, value in idle.items():
+            if value is not None:
+                shown = f"--{name} {value:g}" if isinstance(value, float) else f"--{name} {value}"
+                purpose = "--relative-half-width, --question or --more"
+                if name != "mean":
+                    purpose = "--question or --more"
+                message = f"{shown} serves {purpose} only; leave it out."
+                raise BadOption(message)
+
+    def parts(self) -> "tuple[Part, ...]":
+        """Give the whole, or its strata; sigma is 0 where nobody typed one."""
+        return self._strata() if self.stratum else (self._whole(),)
+
+    def as_question(self) -> "Question":
         """Turn the options into the question that sizing answers."""
         from fieldplan.sizing.question import Question
 
-        self._check()
-        kind, value = self._target()
-        parts = self._strata() if self.stratum else (self._whole(),)
+        kind, value = self.target()
+        parts = self.parts()
         if kind == "standard_error" and self.assurance and any(p.results is None for p in parts):
             message = (
                 f"--assurance {self.assurance:g} needs to know how well sigma is known; add "
@@ -215,12 +287,13 @@ class BareNumbers:
             assurance=self.assurance,
             confidence=self.confidence or 0.95,
             interval="upper-limit" if self.one_sided else "two-sided",
-            allocation="neyman" if self.allocation == "neyman" else "proportional",
+            allocation=cast("Allocation", self.allocation or "proportional"),
             floor=self.floor or 2,
             unit=self.unit or "",
         )
 
-    def _target(self) -> "tuple[TargetKind, float]":
+    def target(self) -> "tuple[TargetKind, float]":
+        """Give the one target of a mean, and its number."""
         given = [(kind, getattr(self, kind)) for kind in TARGETS if getattr(self, kind)]
         if len(given) != 1:
             names = " and ".join(f"--{kind.replace('_', '-')}" for kind, _ in given)
@@ -234,20 +307,19 @@ class BareNumbers:
         if kind == "relative_half_width" and self.mean is None:
             message = f"--relative-half-width {value:g} is a share of the mean; add --mean."
             raise BadOption(message)
-        if kind != "relative_half_width" and self.mean is not None:
-            message = f"--mean {self.mean:g} serves --relative-half-width only; leave it out."
-            raise BadOption(message)
         return kind, value
 
     def _check(self) -> None:
         """Refuse options that do not go together."""
-        if self.sigma is None and not self.stratum:
+        if self.question == "mean" and self.sigma is None and not self.stratum:
             message = (
                 "give a campaign file, or bare numbers such as --sigma 27.57 --standard-error 6."
             )
             raise BadOption(message)
-        if self.allocation not in (None, "proportional", "neyman"):
-            message = f"--allocation {self.allocation!r} is unknown; write proportional or neyman."
+        if self.allocation not in (None, *ALLOCATIONS):
+            message = (
+                f"--allocation {self.allocation!r} is unknown; write {' or '.join(ALLOCATIONS)}."
+            )
             raise BadOption(message)
         alone = {"--sigma": self.sigma, "--population": self.population, "--pilot-n": self.pilot_n}
         shared = {"--allocation": self.allocation, "--floor": self.floor}
@@ -266,7 +338,13 @@ class BareNumbers:
         from fieldplan.sizing.question import Part
 
         return Part(
-            "site", 1.0, self.sigma or 0.0, results=self.pilot_n, population=self.population
+            "site",
+            1.0,
+            self.sigma or 0.0,
+            results=self.pilot_n,
+            population=self.population,
+            mean=self.mean,
+            skewness=self.skewness,
         )
 
     def _strata(self) -> "tuple[Part, ...]":

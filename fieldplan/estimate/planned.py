@@ -74,14 +74,14 @@ def planned_for(plan: Plan, analyte: str) -> Planned:
     targets = [_target(plan, other) for other in entries if other.target]
     if analyte == plan.campaign.deciding_analyte.id:
         size = plan.size
-        sigmas = {entry.stratum: entry.sigma for entry in size.strata}
-        own = _target(plan, size)
+        sigmas = {s.stratum: s.sigma for s in size.strata if s.sigma is not None}
+        own = (_target(plan, size),) if size.question == "mean" else ()
         return Planned(
             analyte,
             unit,
             size.standard_error,
             sigmas,
-            (own, *targets),
+            (*own, *targets),
             decides=True,
             sigmas_at_half=_at_half(plan.spread.strata),
         )

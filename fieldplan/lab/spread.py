@@ -8,6 +8,7 @@ from fieldplan.base.errors import FieldplanError, LabError
 from fieldplan.base.units import significant
 from fieldplan.campaign.inputs import resolve_file
 from fieldplan.campaign.model import Campaign, ReadCampaign, Sigma
+from fieldplan.campaign.questions import WITHOUT_SIGMA
 from fieldplan.lab.model import LabTable, Spread, StratumSpread
 from fieldplan.lab.pilot import PilotLocation, measured_spread, pilot_locations, spread_sentences
 from fieldplan.lab.reader import read_lab
@@ -74,7 +75,8 @@ def spread(tables: Sequence[LabTable | None], campaign: Campaign, frame: "Frame"
 
     Notes
     -----
-    A value typed for a stratum comes before its pilot, its pilot before a value typed for the
+    Where the deciding question needs no sigma and none is given, ``strata`` stays empty. A value
+    typed for a stratum comes before its pilot, its pilot before a value typed for the
     site, and that before one sigma pooled from a pilot that does not tell strata apart. Pooling
     needs a reason, typed as the ``source`` of its ``[[sigma]]`` table.
     """
@@ -82,7 +84,9 @@ def spread(tables: Sequence[LabTable | None], campaign: Campaign, frame: "Frame"
     gathered = _gather(tables, campaign, frame, analyte.id)
     entries: list[StratumSpread] = []
     problems: list[str] = []
-    for stratum in frame.strata:
+    asked = campaign.deciding_objective.question
+    known = asked not in WITHOUT_SIGMA or any(s.analyte == analyte.id for s in campaign.sigma)
+    for stratum in frame.strata if known else ():
         try:
             entries.append(gathered.choose(stratum.name))
         except LabError as fault:

@@ -60,7 +60,7 @@ def make_plan(
     progress("reading the pilot")
     spread = read_spread(read, frame)
     progress("counting locations")
-    how_many = size(campaign, spread, frame)
+    how_many = size(campaign, spread, frame, beside="all")
     progress("drawing locations")
     counts = [StratumCount(s.stratum, s.planned, s.alternates) for s in how_many.strata]
     locations = locate(campaign, frame, counts)

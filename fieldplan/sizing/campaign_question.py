@@ -6,11 +6,12 @@ from difflib import get_close_matches
 from typing import TYPE_CHECKING
 
 from fieldplan.base.errors import CampaignError, DesignError
-from fieldplan.sizing.question import ControlRate, Part, Prices, Question, TargetKind
+from fieldplan.sizing.money import Prices
+from fieldplan.sizing.question import ControlRate, Part, Question, TargetKind
 from fieldplan.sizing.words import typed
 
 if TYPE_CHECKING:
-    from fieldplan.campaign.model import Campaign, Objective
+    from fieldplan.campaign.model import Campaign, Cost, Objective
     from fieldplan.frame.model import Frame
     from fieldplan.lab.model import Spread, StratumSpread
 
@@ -101,13 +102,24 @@ def ask(
         census=design.layout == "census",
         grid=design.layout.endswith("-grid"),
         targeted=targeted,
-        prices=None
-        if cost is None
-        else Prices(cost.currency, cost.mobilisation, cost.per_location, cost.per_analysis),
+        prices=None if cost is None else prices_of(cost),
         controls=tuple(ControlRate(qc.kind, qc.share, qc.count, qc.source) for qc in campaign.qc),
         design=design.id,
         analyte=analyte.id,
         unit=analyte.unit,
+    )
+
+
+def prices_of(cost: "Cost") -> Prices:
+    """Take the prices out of the ``[cost]`` table."""
+    return Prices(
+        currency=cost.currency,
+        mobilisation=cost.mobilisation,
+        per_location=cost.per_location,
+        per_analysis=cost.per_analysis,
+        per_sample=cost.per_sample,
+        per_crew_day=cost.per_crew_day,
+        locations_per_day=cost.locations_per_day,
     )
 
 

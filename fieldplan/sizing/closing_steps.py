@@ -5,6 +5,7 @@ from collections.abc import Iterator
 
 from fieldplan.base.working import Quantity, Step
 from fieldplan.sizing.counting import Counts, control_counts, total_cost
+from fieldplan.sizing.money import Prices
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
 from fieldplan.sizing.words import typed_percent
@@ -139,10 +140,11 @@ def _cost(question: Question, counts: Counts) -> Iterator[Step]:
     if question.targeted:
         places = "(locations + targeted)"
         aimed = (Quantity("targeted", "places chosen by judgement", question.targeted, "places"),)
+    jar, jars, more, days = _jars_and_days(prices, visits + question.targeted)
     yield Step(
         symbol="cost",
         meaning="Cost of the round",
-        formula=f"cost = mobilisation + {places} · (visit + analysis) + controls · analysis",
+        formula=f"cost = mobilisation + {places} · (visit + {jar}) + controls · {jars}{days}",
         inputs=(
             Quantity("mobilisation", "once", prices.mobilisation, prices.currency),
             Quantity("locations", "locations to visit", visits, "locations"),
@@ -150,9 +152,27 @@ def _cost(question: Question, counts: Counts) -> Iterator[Step]:
             Quantity("visit", "per location", prices.per_location, prices.currency),
             Quantity("analysis", "per analysed sample", prices.per_analysis, prices.currency),
             Quantity("controls", "control samples", controls, "samples"),
+            *more,
         ),
         unrounded=cost,
         rounded=cost,
         unit=prices.currency,
         source="prices typed in the campaign file",
     )
+
+
+def _jars_and_days(prices: Prices, visits: int) -> tuple[str, str, tuple[Quantity, ...], str]:
+    """Give what jars and crew-days add to the formula of the cost, where they have a price."""
+    jar, jars, days = "analysis", "analysis", ""
+    more: list[Quantity] = []
+    if prices.per_sample:
+        jar, jars = "jar + analysis", "(jar + analysis)"
+        more.append(Quantity("jar", "per sample taken", prices.per_sample, prices.currency))
+    if prices.per_crew_day:
+        days = " + days · crew-day"
+        count = prices.crew_days(visits)
+        more += [
+            Quantity("days", f"days of {prices.locations_per_day:g} locations", count, "days"),
+            Quantity("crew-day", "per day of a crew", prices.per_crew_day, prices.currency),
+        ]
+    return jar, jars, tuple(more), days

@@ -1,7 +1,7 @@
 """The counts themselves: plain, at an assurance, for a budget, typed; then losses and money."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.model import QualityControlCount
@@ -51,6 +51,13 @@ def count(question: Question) -> Counts:
     else:
         needed = tuple(assured_counts(question, question.assurance) or plain)
     return Counts(plain, needed, planned_counts(question, needed))
+
+
+def fixed_counts(question: Question) -> Counts:
+    """Count where the design fixes the locations, or takes them all; no target is looked at."""
+    if question.census:
+        return replace(_census(question), plain=None)
+    return _typed(question, None, question.locations or 0)
 
 
 def _census(question: Question) -> Counts:
@@ -135,7 +142,7 @@ def assured_counts(question: Question, assurance: float | None) -> list[int] | N
 def affordable_counts(question: Question) -> list[int]:
     """Count the most results that the budget buys, shared for the smallest standard error."""
     strata, prices = question.strata, question.prices
-    if prices is None or prices.per_location + prices.per_analysis <= 0:
+    if prices is None or prices.of_a_visit + prices.of_a_result <= 0:
         message = (
             "a budget sets no number while per_location and per_analysis are both 0; "
             "type what a location and an analysis cost in the [cost] table."
@@ -183,7 +190,7 @@ def control_counts(question: Question, planned: Sequence[int]) -> tuple[QualityC
 
 
 def total_cost(question: Question, planned: Sequence[int]) -> float | None:
-    """Add up mobilisation, visits, targeted ones too, their analyses and those of control samples.
+    """Add up mobilisation, visits, crew-days, jars and analyses; targeted places and controls too.
 
     Parameters
     ----------
@@ -200,5 +207,5 @@ def total_cost(question: Question, planned: Sequence[int]) -> float | None:
     if prices is None:
         return None
     visits = sum(planned) + question.targeted
-    analyses = visits + sum(entry.count for entry in control_counts(question, planned))
-    return prices.mobilisation + visits * prices.per_location + analyses * prices.per_analysis
+    controls = sum(entry.count for entry in control_counts(question, planned))
+    return prices.bill(visits=visits, jars=visits + controls)

@@ -5,8 +5,105 @@ from typing import Literal
 
 from fieldplan.base.working import Step
 
-NumberFrom = Literal["target", "locations", "budget", "census"]
-"""What decided the number: a precision, a typed number of locations, money, or the whole list."""
+NumberFrom = Literal["target", "locations", "budget", "census", "question"]
+"""What decided the number: a precision, typed locations, money, the whole list, or a question that
+is not about the precision of a mean."""
+
+
+@dataclass(frozen=True)
+class Amount:
+    """One number of a finding.
+
+    Parameters
+    ----------
+    name : str
+        For JSON, lower case with underscores, e.g. ``chance_of_hit``.
+    meaning : str
+        In words, as a label.
+    value : float, int or None
+        Unrounded; None where it cannot be had.
+    unit : str
+    """
+
+    name: str
+    meaning: str
+    value: float | int | None
+    unit: str = ""
+
+
+@dataclass(frozen=True)
+class Series:
+    """One line or set of points of a picture; ``label`` is written beside it."""
+
+    label: str
+    x: tuple[float, ...]
+    y: tuple[float, ...]
+    style: Literal["line", "dashes", "points", "hollow", "band-low", "band-high"] = "line"
+
+
+@dataclass(frozen=True)
+class Picture:
+    """What a finding looks like: data only, drawn by the packet.
+
+    Parameters
+    ----------
+    kind : str
+        Names the drawing; ``lines`` is the general one.
+    caption, alternative : str
+        Below the figure, and for those who cannot see it.
+    x_label, y_label : str
+    series : tuple of Series
+    marks : tuple of (str, float)
+        Vertical lines with their words, such as the chosen n.
+    levels : tuple of (str, float)
+        Horizontal lines with their words, such as a target.
+    """
+
+    kind: str
+    caption: str
+    alternative: str
+    x_label: str
+    y_label: str
+    series: tuple[Series, ...]
+    marks: tuple[tuple[str, float], ...] = ()
+    levels: tuple[tuple[str, float], ...] = ()
+
+
+@dataclass(frozen=True)
+class Finding:
+    """One answer with all that must be said beside it: a sentence first, the rest on request.
+
+    Parameters
+    ----------
+    topic : str
+        Short name, lower case with hyphens; ``--more`` and JSON use it.
+    title : str
+        Heading on the sheet.
+    answer : str
+        One or two sentences that say it all.
+    amounts : tuple of Amount
+        The numbers in it and beside it.
+    columns : tuple of str
+    rows : tuple of tuple of str
+        A table, shown on request.
+    steps : tuple of Step
+        The working.
+    assumptions, warnings, sources : tuple of str
+        Sentences; sources as author, year, section.
+    picture : Picture or None
+    """
+
+    topic: str
+    title: str
+    answer: str
+    amounts: tuple[Amount, ...] = ()
+    columns: tuple[str, ...] = ()
+    rows: tuple[tuple[str, ...], ...] = ()
+    steps: tuple[Step, ...] = ()
+    assumptions: tuple[str, ...] = ()
+    warnings: tuple[str, ...] = ()
+    sources: tuple[str, ...] = ()
+    picture: Picture | None = None
 
 
 @dataclass(frozen=True)
@@ -18,8 +115,8 @@ class StratumSize:
     stratum : str
     weight : float
         Share of the population.
-    sigma : float
-        Standard deviation used, in the laboratory's unit.
+    sigma : float or None
+        Standard deviation used, in the laboratory's unit; None where none is known.
     needed : int
         Results that the target needs.
     planned : int
@@ -34,7 +131,7 @@ class StratumSize:
 
     stratum: str
     weight: float
-    sigma: float
+    sigma: float | None
     needed: int
     planned: int
     alternates: int
@@ -146,8 +243,8 @@ class Size:
         losses; equals the sum over strata.
     planned : int
         Locations to visit, loss allowance in.
-    standard_error, half_width : float
-        Expected at ``needed`` with the sigma used.
+    standard_error, half_width : float or None
+        Expected at ``needed`` with the sigma used; None where no sigma is known.
     confidence : float
     interval : str
         ``two-sided``, ``upper-limit`` or ``lower-limit``.
@@ -175,6 +272,11 @@ class Size:
         What the same n buys for objectives and analytes that do not decide it.
     number_from : str
         What decided the number.
+    question : str
+        What was asked, as the campaign names it.
+    findings : tuple of Finding
+        The working of a question that is not about the precision of a mean, then what stands
+        beside the number.
     """
 
     design: str
@@ -187,8 +289,8 @@ class Size:
     plain_n: int
     needed: int
     planned: int
-    standard_error: float
-    half_width: float
+    standard_error: float | None
+    half_width: float | None
     confidence: float
     interval: str
     assurance: float | None
@@ -206,3 +308,5 @@ class Size:
     unrounded: float | None = None
     others: tuple[OtherPrecision, ...] = ()
     number_from: NumberFrom = "target"
+    question: str = "mean"
+    findings: tuple[Finding, ...] = ()

@@ -5,6 +5,7 @@ from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from fieldplan.campaign.model import Objective
+from fieldplan.sizing.asking import NO_TARGET
 from fieldplan.sizing.campaign_question import ask, expected_mean, parts_of, target_of
 from fieldplan.sizing.model import OtherPrecision, Size
 from fieldplan.sizing.other_words import other_sentence
@@ -97,10 +98,6 @@ class _Known:
         self.given = any(sigma.analyte == analyte.id for sigma in campaign.sigma)
 
 
-_UNREAD = Objective(question="mean", standard_error=1.0, assurance="plain")
-"""Asked where an objective has no target to compare with; its own target is never read."""
-
-
 def _answered(
     campaign: "Campaign",
     size: Size,
@@ -110,7 +107,7 @@ def _answered(
     known: _Known,
 ) -> OtherPrecision:
     why_not = _why_no_target(objective, known.mean)
-    own = _UNREAD if objective is None or why_not else objective
+    own = NO_TARGET if objective is None or why_not else objective
     own = own.model_copy(update={"analyte": known.analyte.id})
     question = ask(campaign, own, parts=known.parts, mean=known.mean)
     found = OtherPrecision(known.analyte.id, known.analyte.unit)

@@ -6,6 +6,7 @@ from typing import Literal
 
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.model import NumberFrom
+from fieldplan.sizing.money import Prices
 from fieldplan.stats.allocation import Allocation
 from fieldplan.stats.assurance import check_assurance
 from fieldplan.stats.intervals import IntervalKind
@@ -57,16 +58,6 @@ class Part:
     skewness: float | None = None
     mean: float | None = None
     mean_from: str = ""
-
-
-@dataclass(frozen=True)
-class Prices:
-    """Money per campaign, per location and per analysed sample."""
-
-    currency: str
-    mobilisation: float = 0.0
-    per_location: float = 0.0
-    per_analysis: float = 0.0
 
 
 @dataclass(frozen=True)

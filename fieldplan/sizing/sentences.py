@@ -37,7 +37,11 @@ def sentences(
     tuple of str
     """
     lines = [_answer(question, counts), _chance(question, counts, assured)]
-    lines += [_precision(question, counts), _floor(question, counts), _money(question, counts)]
+    lines += [
+        expected_precision(question, counts),
+        _floor(question, counts),
+        money_words(question, counts),
+    ]
     lines += _short_lists(question, counts)
     return tuple(line for line in lines if line)
 
@@ -64,6 +68,19 @@ def _answer(question: Question, counts: Counts) -> str:
         f"Visit {counted(planned, 'location')}{where}. {counted(needed, 'result')} are needed for "
         f"a {target_words(question)}; {_spare(planned - needed)} for losses."
     )
+
+
+def visit_words(question: Question, counts: Counts) -> str:
+    """Say where the locations lie, and what is added for losses."""
+    needed, planned = sum(counts.needed), sum(counts.planned)
+    where = ""
+    if len(question.parts) > 1:
+        pairs = zip(counts.planned, question.parts, strict=True)
+        where = ": " + listed([f"{n} in {part.name}" for n, part in pairs])
+    if planned == needed and not where:
+        return ""
+    spare = "" if planned == needed else f"; {_spare(planned - needed)} for losses"
+    return f"Visit {counted(planned, 'location')}{where}{spare}."
 
 
 def _spare(count: int) -> str:
@@ -128,7 +145,8 @@ def _no_chance(question: Question, counts: Counts) -> str:
     )
 
 
-def _precision(question: Question, counts: Counts) -> str:
+def expected_precision(question: Question, counts: Counts) -> str:
+    """Say what standard error and interval these counts buy, if sigma is right."""
     if question.takes_all(counts.needed):
         return "With every unit taken, the mean of the list has no error from choosing units."
     precision = Precision(question)
@@ -175,11 +193,16 @@ def _money_words(question: Question, amount: float) -> str:
     return f"{amount:.0f} {currency}" if amount == round(amount) else f"{amount:.2f} {currency}"
 
 
-def _money(question: Question, counts: Counts) -> str:
+def money_words(question: Question, counts: Counts) -> str:
+    """Say what the campaign costs; empty without prices."""
     cost = total_cost(question, counts.planned)
     if cost is None:
         return ""
     included = f"control samples{targeted_words(question, ' and ')} included"
+    days = (
+        question.prices.crew_days(sum(counts.planned) + question.targeted) if question.prices else 0
+    )
+    included += f"; {counted(days, 'crew-day')}" if days else ""
     line = f"Expected cost: {_money_words(question, cost)}, {included}."
     if question.target == "budget" and question.locations is not None:
         side = "within" if cost <= question.value else "above"

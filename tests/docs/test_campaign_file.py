@@ -16,7 +16,7 @@ from tests.docs.campaign_reference import rows
 from tests.unit.campaign.test_schema import plain
 
 PAGE = (Path(__file__).parents[2] / "docs" / "campaign-file.md").read_text(encoding="utf-8")
-SECTION = re.compile(r"^#{2,3} (?:`\[+([a-z.]+)\]+`|The whole file)$", re.MULTILINE)
+SECTION = re.compile(r"^#{2,3} (?:`\[+([a-z._]+)\]+`|The whole file)$", re.MULTILINE)
 REFERENCE = list(rows())
 
 

@@ -29,6 +29,7 @@ CHOSEN = {
     "locations": "expected",
     "budget": "expected",
     "census": "in the list",
+    "question": "needed",
 }
 """What the marked number of results is, by what decided it."""
 

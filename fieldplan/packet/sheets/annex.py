@@ -10,6 +10,7 @@ from fieldplan.base.document import (
     Verbatim,
     Working,
 )
+from fieldplan.packet.sheets.finding_section import finding_annex
 from fieldplan.plan.model import Plan
 
 
@@ -47,6 +48,7 @@ def annex_blocks(plan: Plan) -> list[Block]:
             tone="note",
         ),
         Working(plan.size.steps),
+        *finding_annex(plan.size.findings),
         PageBreak(),
         Heading("Annex B. The drawing procedure, line by line"),
         Paragraph("For a reviewer who wants to draw the locations again without this program."),

@@ -11,6 +11,7 @@ from fieldplan.packet.sheets.plan_words import (
     several_strata,
 )
 from fieldplan.plan.model import Plan
+from fieldplan.sizing.model import StratumSize
 
 FIGURE_MM = 145.0
 """Width that leaves page one room for the words."""
@@ -58,7 +59,7 @@ def stratum_table(plan: Plan) -> Table:
         name,
         "Share",
         f"Standard deviation ({unit})",
-        "Results needed" if plan.size.number_from == "target" else "Results expected",
+        "Results needed" if plan.size.number_from in ("target", "question") else "Results expected",
         "Locations",
         "Alternates",
     )
@@ -66,7 +67,7 @@ def stratum_table(plan: Plan) -> Table:
         (
             entry.stratum,
             percent(entry.weight),
-            rounded(entry.sigma) + (" ASSUMED" if is_assumed(plan, entry.stratum) else ""),
+            spread_cell(plan, entry),
             f"{entry.needed}" + (" (floor)" if entry.floor_applied else ""),
             str(entry.planned),
             str(entry.alternates),
@@ -79,6 +80,13 @@ def stratum_table(plan: Plan) -> Table:
             ("All", "100 %", "", str(plan.size.needed), str(plan.size.planned), str(alternates))
         )
     return Table(columns, tuple(rows), numeric=columns[1:])
+
+
+def spread_cell(plan: Plan, entry: StratumSize) -> str:
+    """Write a stratum's sigma, stamped where it was assumed; a dash where none is known."""
+    if entry.sigma is None:
+        return "–"
+    return rounded(entry.sigma) + (" ASSUMED" if is_assumed(plan, entry.stratum) else "")
 
 
 def is_assumed(plan: Plan, stratum: str) -> bool:

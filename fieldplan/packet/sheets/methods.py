@@ -145,6 +145,8 @@ def number_sentence(plan: Plan) -> str:
     if every_unit(plan):
         return f"The target, {size.target}, takes every unit of the list."
     budget = plan.campaign.deciding_objective.budget
+    if size.standard_error is None or size.question != "mean":
+        return f"The number answers another question than the precision of the mean: {size.target}."
     expected = f"a standard error of {rounded(size.standard_error)} {size.unit} was to be expected"
     if size.number_from == "budget":
         return (

@@ -2,6 +2,7 @@
 
 from fieldplan.base.document import Block, Bullets, Facts, Heading, Paragraph, Table
 from fieldplan.packet.sheets.amounts import counted, likely, percent, rounded
+from fieldplan.packet.sheets.finding_section import finding_blocks
 from fieldplan.packet.sheets.plan_words import every_unit
 from fieldplan.plan.model import Plan
 from fieldplan.sizing.model import OtherPrecision
@@ -52,6 +53,8 @@ def number_blocks(plan: Plan) -> list[Block]:
         blocks.append(precision_curve(size))
     if size.others:
         blocks += other_blocks(plan)
+    for finding in size.findings:
+        blocks += finding_blocks(finding)
     conditions = (*size.conditions, *declared_lines(plan))
     if conditions:
         blocks += [Heading("Under what condition", level=2), Bullets(conditions)]
@@ -76,6 +79,11 @@ def count_rows(plan: Plan) -> list[tuple[str, str]]:
     expected = ("Results expected, after losses", str(size.needed))
     plain = "plain count" if size.assurance is None else percent(size.assurance)
     chosen = f"{plain}, chosen by {size.assurance_chosen_by or 'nobody named'}"
+    if size.number_from == "question":
+        return [
+            ("Results needed", str(size.needed)),
+            ("Locations to visit", str(size.planned)),
+        ]
     if size.number_from == "target":
         return [
             ("Assurance", chosen),

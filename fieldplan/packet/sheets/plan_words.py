@@ -77,6 +77,8 @@ def aim_sentence(plan: Plan) -> str:
         else f"The assurance of {percent(size.assurance)}"
     )
     aim = f"The aim is the {mean_of(plan.campaign)}{against}."
+    if size.number_from == "question":
+        return f"The aim: {size.target}. {size.findings[0].answer}"
     if every_unit(plan):
         return aim
     return {

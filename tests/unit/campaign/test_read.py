@@ -402,7 +402,7 @@ LATER = [
     (('"area"', '"time"'), '12: frame.kind: "time" (frames of time such as days of discharge)'),
     (('"mean"', '"mean-and-level"'), '19: objective.question: "mean-and-level" (comparing the'),
     (('"mean"', '"upper-share"'), '19: objective.question: "upper-share" (limits for an upper'),
-    (('"mean"', '"all-clear"'), '19: objective.question: "all-clear" (the question whether'),
+    (('"mean"', '"change"'), '19: objective.question: "change" (change between'),
     (('"mean"', '"smallest-patch"'), '19: objective.question: "smallest-patch" (finding a patch'),
     (('"mean"', '"change"'), '19: objective.question: "change" (change between rounds) is not'),
     (

@@ -149,7 +149,7 @@ def test_pilots_by_stratum_give_a_chance() -> None:
         ),
         (
             "--sigma 3 --standard-error 1 --mean 4",
-            "--mean 4 serves --relative-half-width only; leave it out.",
+            "--mean 4 serves --relative-half-width, --question or --more only; leave it out.",
         ),
         (
             "--sigma 3 --standard-error 1 --confidence 95",

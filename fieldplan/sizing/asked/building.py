@@ -1,0 +1,125 @@
+"""From a question's counts to the whole ``Size``: losses, money, controls, what else n buys."""
+
+from dataclasses import replace
+
+from fieldplan.sizing.asked.model import Answered, Asked
+from fieldplan.sizing.closing_steps import closing_steps
+from fieldplan.sizing.conditions import conditions
+from fieldplan.sizing.counting import (
+    Counts,
+    control_counts,
+    fixed_counts,
+    planned_counts,
+    total_cost,
+)
+from fieldplan.sizing.curve import curve
+from fieldplan.sizing.model import CurvePoint, Finding, Size, StratumSize
+from fieldplan.sizing.precision import Precision
+from fieldplan.sizing.sentences import expected_precision, money_words, visit_words
+
+
+def size_of(asked: Asked, answered: Answered) -> Size:
+    """Build the size round the counts of a question.
+
+    Parameters
+    ----------
+    asked : Asked
+    answered : Answered
+
+    Returns
+    -------
+    Size
+        ``number_from`` is ``question`` (or ``locations``, where the design fixes them and the
+        question only says what they buy); the finding comes first in ``findings``.
+    """
+    question = asked.question
+    counts = _counts(asked, answered)
+    finding = _finding(asked, answered, counts)
+    typed = question.locations is not None or question.census
+    known = Precision(question) if asked.sigma_known else None
+    total = sum(counts.needed)
+    return Size(
+        design=question.design,
+        analyte=question.analyte,
+        unit=question.unit,
+        target=answered.target,
+        target_standard_error=None,
+        target_half_width=None,
+        strata=_strata(asked, counts),
+        plain_n=sum(answered.needed),
+        needed=total,
+        planned=sum(counts.planned),
+        standard_error=known.standard_error(counts.needed) if known else None,
+        half_width=known.half_width(counts.needed) if known else None,
+        confidence=question.confidence,
+        interval=question.interval,
+        assurance=None,
+        assurance_chosen_by="",
+        chance_plain=None,
+        chance_needed=None,
+        assured=(),
+        steps=(*finding.steps, *(closing_steps(question, counts) if known else ())),
+        curve=_curve(asked, counts),
+        qc=control_counts(question, counts.planned),
+        cost=total_cost(question, counts.planned),
+        currency=question.prices.currency if question.prices else "",
+        sentences=_sentences(asked, counts, finding),
+        conditions=(*finding.assumptions, *(conditions(question, counts.needed) if known else ())),
+        unrounded=answered.unrounded,
+        number_from=question.number_from if typed else "question",
+        question=asked.objective.question,
+        findings=(replace(finding, steps=()),),
+    )
+
+
+def _finding(asked: Asked, answered: Answered, counts: Counts) -> Finding:
+    """Give the question's own finding, or what typed locations buy and what it would take."""
+    if asked.question.locations is None and not asked.question.census:
+        return answered.finding
+    from fieldplan.sizing.asked import bought
+
+    would_take = f"The target ({answered.target}) would take {sum(answered.needed)} results."
+    finding = bought(asked, asked.objective.question, counts.needed)
+    return replace(finding, answer=f"{finding.answer} {would_take}")
+
+
+def _counts(asked: Asked, answered: Answered) -> Counts:
+    """Take typed locations where the design fixes them, else what the question needs."""
+    question = asked.question
+    if question.census or question.locations is not None:
+        return fixed_counts(question)
+    return Counts(None, answered.needed, planned_counts(question, answered.needed))
+
+
+def _curve(asked: Asked, counts: Counts) -> tuple[CurvePoint, ...]:
+    if not asked.sigma_known or asked.question.census:
+        return ()
+    total = sum(counts.needed)
+    return tuple(replace(p, chance=None) for p in curve(asked.question, total, total))
+
+
+def _strata(asked: Asked, counts: Counts) -> tuple[StratumSize, ...]:
+    question = asked.question
+    found = []
+    for part, needed, planned in zip(question.parts, counts.needed, counts.planned, strict=True):
+        left = None if part.population is None else part.population - planned
+        found.append(
+            StratumSize(
+                stratum=part.name,
+                weight=part.weight,
+                sigma=part.sigma if asked.sigma_known else None,
+                needed=needed,
+                planned=planned,
+                alternates=question.alternates if left is None else min(question.alternates, left),
+                population=part.population,
+            )
+        )
+    return tuple(found)
+
+
+def _sentences(asked: Asked, counts: Counts, finding: Finding) -> tuple[str, ...]:
+    lines = [finding.answer, visit_words(asked.question, counts), *finding.warnings]
+    if asked.sigma_known:
+        lines.append(expected_precision(asked.question, counts))
+    lines.append(money_words(asked.question, counts))
+    return tuple(line for line in lines if line)
