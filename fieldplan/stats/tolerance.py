@@ -120,6 +120,36 @@ def share_by_counting(n: int, confidence: float, *, rank: int = 1) -> float:
     return low
 
 
+def allowed_by_counting(n: int, share: float, confidence: float) -> int | None:
+    """Give how many of n results may lie above a level while the claim still stands.
+
+    Parameters
+    ----------
+    n : int
+    share, confidence : float
+        Claimed to lie below the level, and with what confidence; inside (0, 1).
+
+    Returns
+    -------
+    int or None
+        None where n results permit the claim in no case.
+
+    Examples
+    --------
+    >>> [allowed_by_counting(n, 0.95, 0.95) for n in (58, 59, 92, 93)]
+    [None, 0, 0, 1]
+    """
+    check_share(share, "share")
+    check_share(confidence, "confidence")
+
+    def too_many(rank: int) -> bool:
+        return confidence_by_counting(n, share, rank=rank) < confidence - SLACK
+
+    if n < 1 or too_many(1):
+        return None
+    return smallest(too_many, 1, n + 1, back=0) - 2
+
+
 def chance_of_exceedances(n: int, share_above: float, *, allowed: int = 0) -> float:
     """Give the chance that at most so many of n results lie above a level.
 
@@ -201,13 +231,39 @@ def n_and_allowed(
     return n_by_counting(share, confidence, rank=allowed + 1), allowed
 
 
-def first_that_fits(fits: Callable[[int], bool], low: int, asked: str, *, near: float = 0.0) -> int:
-    """Find the smallest number that fits; ``near`` is about where."""
-    below = min(math.floor(0.9 * near), MOST)
+def first_that_fits(
+    fits: Callable[[int], bool], low: int, asked: str, *, near: float = 0.0, most: int = MOST
+) -> int:
+    """Find the smallest number that fits, or say that there is none.
+
+    Parameters
+    ----------
+    fits : callable
+        Takes a number; true from some number on, give or take a few.
+    low : int
+        Where to begin.
+    asked : str
+        What is asked, for the message.
+    near : float
+        About where the number lies, to begin there.
+    most : int
+        Largest number that can be had.
+
+    Raises
+    ------
+    DesignError
+        Nothing up to ``most`` fits.
+
+    Examples
+    --------
+    >>> first_that_fits(lambda n: n * n > 50, 1, "a square above 50")
+    8
+    """
+    below = min(math.floor(0.9 * near), most)
     start = below if below > low and not fits(below) else low
-    n = smallest(fits, start, MOST)
-    if n == MOST and not fits(n):
-        message = f"{asked} asks for more than {MOST} results; claim less."
+    n = smallest(fits, start, most)
+    if n == most and not fits(n):
+        message = f"{asked} asks for more than {most} results; claim less."
         raise DesignError(message)
     return n
 

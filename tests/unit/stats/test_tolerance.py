@@ -9,6 +9,7 @@ from scipy import stats
 
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.tolerance import (
+    allowed_by_counting,
     chance_of_exceedances,
     confidence_by_counting,
     n_and_allowed,
@@ -60,6 +61,16 @@ def test_share_by_counting_gives_its_confidence_back(n: int, confidence: float, 
     assert share == pytest.approx(stats.beta.ppf(1 - confidence, n - rank + 1, rank), abs=1e-9)
     if 0 < share < 1:
         assert confidence_by_counting(n, share, rank=rank) >= confidence - 1e-9
+
+
+def test_allowed_exceedances_step_up_where_the_numbers_by_counting_stand() -> None:
+    """Definition: from the n of rank k + 1 up to one below the n of rank k + 2, k are allowed."""
+    steps = [n_by_counting(0.9, 0.95, rank=rank) for rank in range(1, 6)]
+    for n in range(1, steps[-1]):
+        allowed = sum(n >= step for step in steps) - 1
+        assert allowed_by_counting(n, 0.9, 0.95) == (None if allowed < 0 else allowed)
+    assert allowed_by_counting(3, 0.2, 0.5) == stats.binom.ppf(0.5, 3, 0.8) - 1
+    assert allowed_by_counting(0, 0.9, 0.95) is None
 
 
 def test_no_exceedance_among_59_is_a_coin_toss_where_one_in_a_hundred_exceeds() -> None:
