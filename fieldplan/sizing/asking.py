@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 from fieldplan.campaign.model import Objective
 from fieldplan.campaign.questions import WITHOUT_SIGMA
 from fieldplan.lab.model import StratumSpread
-from fieldplan.sizing.asked.model import Asked
+from fieldplan.sizing.asked.model import Asked, entries_of
 from fieldplan.sizing.campaign_question import ask, expected_mean, parts_of, question_of
 
 if TYPE_CHECKING:
@@ -18,8 +18,14 @@ NO_TARGET = Objective(question="mean", standard_error=1.0, assurance="plain")
 """Stands where a question has no precision target; its own target is never read."""
 
 
-def asked_of(campaign: "Campaign", spread: "Spread", frame: "Frame") -> Asked:
-    """Gather what the deciding objective may look at.
+def asked_of(
+    campaign: "Campaign",
+    spread: "Spread",
+    frame: "Frame",
+    *,
+    objective: Objective | None = None,
+) -> Asked:
+    """Gather what an objective may look at.
 
     Parameters
     ----------
@@ -27,6 +33,8 @@ def asked_of(campaign: "Campaign", spread: "Spread", frame: "Frame") -> Asked:
     spread : Spread
         ``strata`` may be empty where the question needs no sigma.
     frame : Frame
+    objective : Objective, optional
+        The deciding one unless given.
 
     Returns
     -------
@@ -39,17 +47,21 @@ def asked_of(campaign: "Campaign", spread: "Spread", frame: "Frame") -> Asked:
     DesignError
         A stratum has no sigma and the question needs one.
     """
-    objective = campaign.deciding_objective
+    deciding = objective is None
+    objective = objective or campaign.deciding_objective
     area = frame.population.net if frame.kind == "area" else None
-    known = bool(spread.strata) or objective.question not in WITHOUT_SIGMA
-    if objective.question == "mean":
+    analyte = objective.analyte or campaign.deciding_analyte.id
+    entries = entries_of(spread, analyte)
+    known = bool(entries) or objective.question not in WITHOUT_SIGMA
+    if objective.question == "mean" and deciding:
         question = question_of(campaign, spread, frame)
     else:
         asked = NO_TARGET.model_copy(
             update={"analyte": objective.analyte, "design": objective.design}
         )
-        entries = spread.strata if known else _no_sigma(spread.analyte, frame)
-        mean = expected_mean(entries, frame, site=spread.site)
+        entries = entries if known else _no_sigma(analyte, frame)
+        site = spread.site if analyte == spread.analyte else None
+        mean = expected_mean(entries, frame, site=site)
         parts = parts_of(campaign, frame, entries)
         question = ask(campaign, asked, parts=parts, mean=mean, targeted=len(frame.targeted))
         question = replace(question, assurance=None)

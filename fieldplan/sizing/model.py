@@ -200,6 +200,7 @@ class OtherPrecision:
     enough_n : int or None
         Where the chosen n falls short: the total, shared out as the plan does, that would not.
     sentence : str
+    question : str
     """
 
     analyte: str
@@ -215,6 +216,7 @@ class OtherPrecision:
     assurance: float | None = None
     enough_n: int | None = None
     sentence: str = ""
+    question: str = "mean"
 
     @property
     def falls_short(self) -> bool:

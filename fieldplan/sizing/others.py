@@ -8,6 +8,7 @@ from fieldplan.campaign.model import Objective
 from fieldplan.sizing.asking import NO_TARGET
 from fieldplan.sizing.campaign_question import ask, expected_mean, parts_of, target_of
 from fieldplan.sizing.model import OtherPrecision, Size
+from fieldplan.sizing.other_questions import other_question
 from fieldplan.sizing.other_words import other_sentence
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
@@ -53,16 +54,14 @@ def other_precisions(
     pilot may share that luck, in part or in full, so the factor for it is applied as if in full,
     which is on the careful side. With a pilot of its own there is nothing to share and no factor.
     """
-    return tuple(
-        _answered(
-            campaign,
-            size,
-            asked=asked,
-            objective=objective,
-            known=_Known(campaign, spread, frame, analyte=analyte),
-        )
-        for analyte, objective in _besides(campaign)
-    )
+    found = []
+    for analyte, objective in _besides(campaign):
+        if objective is not None and objective.question != "mean":
+            found.append(other_question(campaign, spread, frame, objective=objective, size=size))
+            continue
+        known = _Known(campaign, spread, frame, analyte=analyte)
+        found.append(_answered(campaign, size, asked=asked, objective=objective, known=known))
+    return tuple(found)
 
 
 def _besides(campaign: "Campaign") -> Iterator[tuple["Analyte", "Objective | None"]]:

@@ -12,7 +12,7 @@ def question_blocks(plan: Plan) -> list[Block]:
     """Set the objective, the decision, the background and the analytes."""
     table = plan.campaign.plan
     rows = [
-        ("Question", f"What is the {mean_of(plan.campaign)}?"),
+        ("Question", asked_words(plan)),
         *(("Also asked", words) for words in also_asked(plan)),
         ("Decision that waits for it", table.decision or BLANK),
         ("Who decides", table.decides or BLANK),
@@ -25,10 +25,24 @@ def question_blocks(plan: Plan) -> list[Block]:
     return [*blocks, analyte_table(plan)]
 
 
+def asked_words(plan: Plan) -> str:
+    """Say what the deciding objective asks."""
+    if plan.size.question == "mean":
+        return f"What is the {mean_of(plan.campaign)}?"
+    label = plan.campaign.deciding_analyte.label
+    return f"{label}: {plan.size.target}. The {mean_of(plan.campaign)} is reported as well."
+
+
 def also_asked(plan: Plan) -> list[str]:
     """Say which other objectives the campaign has; they do not decide the number."""
-    named = [(plan.campaign.analyte_called(o.analyte), o.target) for o in plan.size.others]
-    return [f"mean of {analyte.label}, {target}" for analyte, target in named if target]
+    lines = []
+    for other in plan.size.others:
+        label = plan.campaign.analyte_called(other.analyte).label
+        if other.target and other.question == "mean":
+            lines.append(f"mean of {label}, {other.target}")
+        elif other.target:
+            lines.append(f"{label}: {other.target}")
+    return lines
 
 
 def analyte_table(plan: Plan) -> Table:

@@ -56,7 +56,7 @@ class Asked:
     @property
     def entries(self) -> "tuple[StratumSpread, ...]":
         """What is known of the analyte's spread, by stratum."""
-        return () if self.spread is None else self.spread.strata
+        return () if self.spread is None else entries_of(self.spread, self.analyte.id)
 
     @property
     def population(self) -> int | None:
@@ -69,6 +69,13 @@ class Asked:
         allocation = question.allocation if self.sigma_known else "proportional"
         least = max(total, sum(question.strata.floors))
         return tuple(share_total(question.strata, least, allocation=allocation))
+
+
+def entries_of(spread: "Spread", analyte: str) -> "tuple[StratumSpread, ...]":
+    """Give what a spread says of one analyte, by stratum."""
+    if analyte == spread.analyte:
+        return spread.strata
+    return tuple(entry for entry in spread.others if entry.analyte == analyte)
 
 
 @dataclass(frozen=True)
