@@ -93,9 +93,8 @@ MEANING: dict[str, str] = {
     ),
     "objective.assurance_chosen_by": "who chose the assurance; printed beside it",
     "objective.decides_n": "whether this objective decides n; needed on one of several",
-    "objective.mean_between": (
-        "two amounts between which the true mean lies with a chance of 9 in 10, as believed now"
-    ),
+    "objective.mean_from": "the true mean lies above this with a chance of 95 %, as believed",
+    "objective.mean_to": "the true mean lies below this with a chance of 95 %, as believed",
     **meanings(),
     # [[sigma]]
     "sigma": "where the standard deviation of single results comes from",

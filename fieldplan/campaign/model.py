@@ -147,7 +147,8 @@ class Objective(Table):
     assurance: Annotated[float, Field(ge=0.5, lt=1)] | Literal["plain"] | None = None
     assurance_chosen_by: str = ""
     decides_n: bool = False
-    mean_between: tuple[NonNegativeNumber, PositiveNumber] | None = None
+    mean_from: NonNegativeNumber | None = None
+    mean_to: PositiveNumber | None = None
     all_clear: AllClear | None = None
 
 

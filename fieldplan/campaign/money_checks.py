@@ -1,9 +1,10 @@
 """Rules for money: crew-days, what a wrong decision costs, cheap readings in the field."""
 
 from collections.abc import Iterator
-from typing import Any
+from typing import Any, TypeGuard
 
 from fieldplan.campaign import field_reading
+from fieldplan.campaign.lines import KeyPath
 from fieldplan.campaign.problems import Problem, shown
 from fieldplan.campaign.table import tables
 
@@ -24,10 +25,7 @@ def money_problems(data: dict[str, Any]) -> Iterator[Problem]:
     """
     for cost in tables(data, "cost"):
         for pair in PAIRS:
-            for one, other in (pair, pair[::-1]):
-                if one in cost and other not in cost:
-                    text = f"missing; {one} means nothing without it. Give both or neither."
-                    yield Problem(("cost", other), text)
+            yield from _together(cost, ("cost",), pair)
         if "wrongly_acted" in cost and not _has_level(data):
             text = (
                 "a wrong decision needs a level to be wrong about, and the analyte that decides n "
@@ -35,11 +33,24 @@ def money_problems(data: dict[str, Any]) -> Iterator[Problem]:
             )
             yield Problem(("cost", "wrongly_acted"), text)
     for i, objective in enumerate(tables(data, "objective")):
-        between = objective.get("mean_between")
-        if isinstance(between, list) and len(between) == 2 and not between[0] < between[1]:
-            text = f"the lower amount comes first (got {between[0]:g}, {between[1]:g}). Swap them."
-            yield Problem(("objective", i, "mean_between"), text)
+        yield from _together(objective, ("objective", i), ("mean_from", "mean_to"))
+        low, high = objective.get("mean_from"), objective.get("mean_to")
+        if _is_number(low) and _is_number(high) and not low < high:
+            text = f"must be above mean_from = {shown(low)} (got {shown(high)}). Swap the two."
+            yield Problem(("objective", i, "mean_to"), text)
     yield from _readings(data)
+
+
+def _together(table: dict[str, Any], path: KeyPath, pair: tuple[str, str]) -> Iterator[Problem]:
+    """Ask for the other of two keys that mean something together only."""
+    for one, other in (pair, pair[::-1]):
+        if one in table and other not in table:
+            text = f"missing; {one} means nothing without it. Give both or neither."
+            yield Problem((*path, other), text)
+
+
+def _is_number(value: object) -> TypeGuard[float]:
+    return isinstance(value, int | float) and not isinstance(value, bool)
 
 
 def _has_level(data: dict[str, Any]) -> bool:

@@ -161,11 +161,39 @@ class StratumSpread:
 
 
 @dataclass(frozen=True)
+class ReadingPairs:
+    """Readings of a cheap field method beside the laboratory's results at the same places.
+
+    Parameters
+    ----------
+    name, analyte : str
+        As in ``[[field_reading]]``.
+    readings, results : tuple of float
+        As many of the one as of the other; a non-detect stands at half its limit.
+    source : str
+        The file.
+    non_detects : int
+        Among the results.
+    unpaired : int
+        Rows that lack one of the two, left out.
+    """
+
+    name: str
+    analyte: str
+    readings: tuple[float, ...]
+    results: tuple[float, ...]
+    source: str
+    non_detects: int = 0
+    unpaired: int = 0
+
+
+@dataclass(frozen=True)
 class Spread:
     """Sigma for every stratum of the deciding analyte, and what the pilot says in sentences.
 
     ``strata`` is in the frame's order, one entry per stratum. ``site`` is the whole (always
     present where a pilot or a site-wide value was given). ``sentences`` and ``notes`` print.
+    ``pairs`` are those of field readings that a file calibrates.
     """
 
     analyte: str
@@ -175,6 +203,7 @@ class Spread:
     others: tuple[StratumSpread, ...] = ()
     sentences: tuple[str, ...] = ()
     notes: tuple[str, ...] = ()
+    pairs: tuple[ReadingPairs, ...] = ()
 
     def stratum(self, name: str) -> StratumSpread:
         """Return the spread of the stratum called ``name``; KeyError when there is none."""

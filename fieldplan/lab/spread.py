@@ -12,6 +12,7 @@ from fieldplan.campaign.questions import WITHOUT_SIGMA
 from fieldplan.lab.model import LabTable, Spread, StratumSpread
 from fieldplan.lab.pilot import PilotLocation, measured_spread, pilot_locations, spread_sentences
 from fieldplan.lab.reader import read_lab
+from fieldplan.lab.reading_pairs import read_reading_pairs
 from fieldplan.lab.strata import sort_into_strata
 from fieldplan.lab.words import listed
 
@@ -50,7 +51,8 @@ def read_spread(read: ReadCampaign, frame: "Frame") -> Spread:
             problems += [line for line in fault.problems if line not in problems]
     if problems:
         raise LabError(*problems)
-    return spread(tables, read.campaign, frame)
+    found = spread(tables, read.campaign, frame)
+    return replace(found, pairs=read_reading_pairs(read))
 
 
 def spread(tables: Sequence[LabTable | None], campaign: Campaign, frame: "Frame") -> Spread:

@@ -19,6 +19,7 @@ FILLED_IN = {
     "objective.design": "the only design",
     "objective.analyte": "the only analyte",
     "sigma.analyte": "the only analyte",
+    "field_reading.analyte": "the only analyte",
 }
 """What the reader fills in where there is one of a thing."""
 

@@ -36,6 +36,10 @@ question = "mean"
 budget = 900.0
 [[sigma]]
 pilot = "pilot.csv"
+[[field_reading]]
+name = "meter"
+correlation = 0.8
+source = "x"
 [cost]
 currency = "EUR"
 per_location = 9.0
@@ -86,7 +90,9 @@ def test_one_open_value_leaves_the_rest_known(tmp_path, name):
         assert name.count(".") > 1 or name in {"objective.assurance", "objective.assurance_chosen_by", "sigma.value",
                         "objective.standard_error", "objective.half_width", "sigma.from_results",
                         "objective.relative_half_width", "qc.share", "frame.list_file",
-                        "analyte.action_level", "frame.depth_top_m"}  # fmt: skip
+                        "analyte.action_level", "frame.depth_top_m", "field_reading.pilot",
+                        "cost.per_crew_day", "cost.locations_per_day", "cost.wrongly_acted",
+                        "cost.wrongly_left", "objective.mean_from", "objective.mean_to"}  # fmt: skip
         return
     assert found.campaign is None
     known = draft(found)
