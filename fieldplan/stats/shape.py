@@ -154,29 +154,65 @@ def t_coverage(
     >>> round(t_coverage(30, 0.0, confidence=0.95, kind="upper-limit"), 2)
     0.95
     """
+    families: tuple[Family, ...] = (family,) if family else ("gamma", "lognormal")
+    return min(
+        1 - sum(t_misses(n, skewness, confidence=confidence, kind=kind, family=name))
+        for name in families
+    )
+
+
+def _check(n: int, confidence: float) -> None:
     if n < 2 or not 0.5 <= confidence <= 0.99:
         message = (
             f"coverage is known for 2 results or more at a confidence of 0.5 to 0.99, "
             f"not for {n} at {confidence!r}."
         )
         raise DesignError(message)
-    families: tuple[Family, ...] = (family,) if family else ("gamma", "lognormal")
-    return min(_coverage(name, n, skewness, confidence, kind) for name in families)
 
 
-def _coverage(
-    family: Family, n: int, skewness: float, confidence: float, kind: IntervalKind
-) -> float:
+def t_misses(
+    n: int, skewness: float, *, confidence: float, kind: IntervalKind, family: Family
+) -> tuple[float, float]:
+    """Say how often a nominal t interval comes out too low, and how often too high.
+
+    Parameters
+    ----------
+    n : int
+        Independent results, at least 2.
+    skewness : float
+        Of the population; negative mirrors the two sides.
+    confidence : float
+        Nominal, from 0.5 to 0.99.
+    kind : str
+        Two-sided interval, upper or lower limit.
+    family : str
+        ``gamma`` or ``lognormal``.
+
+    Returns
+    -------
+    too_low, too_high : float
+        Share of campaigns in which the true mean lies above all of the interval, and below it.
+        The open side of a limit misses nothing.
+
+    Raises
+    ------
+    DesignError
+        n is below 2, or the confidence outside the table.
+
+    Examples
+    --------
+    >>> low, high = t_misses(30, 2.0, confidence=0.95, kind="two-sided", family="gamma")
+    >>> round(low, 3), round(high, 3)
+    (0.065, 0.007)
+    """
+    _check(n, confidence)
+    tail = (1 - confidence) / 2 if kind == "two-sided" else 1 - confidence
     lean = abs(skewness)
-    if skewness < 0 and kind != "two-sided":
-        kind = "lower-limit" if kind == "upper-limit" else "upper-limit"
-    if kind == "two-sided":
-        tail = (1 - confidence) / 2
-        return _below(family, n, lean, 1 - tail) - _below(family, n, lean, tail)
-    if kind == "upper-limit":
-        # The limit fails when the mean came out so low that t lies below its lower quantile.
-        return 1 - _below(family, n, lean, 1 - confidence)
-    return _below(family, n, lean, confidence)
+    # The mean came out so low that t lies below its lower quantile, or so high.
+    low, high = _below(family, n, lean, tail), 1 - _below(family, n, lean, 1 - tail)
+    if skewness < 0:
+        low, high = high, low
+    return (0.0 if kind == "lower-limit" else low), (0.0 if kind == "upper-limit" else high)
 
 
 Grid = dict[tuple[int, float], tuple[float, ...]]
