@@ -140,7 +140,7 @@ def share_total(strata: Strata, total: int, *, allocation: Allocation) -> list[i
     >>> share_total(site, 22, allocation="proportional")
     [14, 4, 4]
     >>> share_total(site, 50, allocation="equal-precision")
-    [2, 9, 39]
+    [2, 10, 38]
     """
     check_total(strata, total)
     if allocation == "proportional":

@@ -2,7 +2,8 @@
 
 import itertools
 import math
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
+from dataclasses import replace
 
 import pytest
 from hypothesis import given, settings
@@ -10,6 +11,7 @@ from hypothesis import strategies as st
 
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.allocation import (
+    Allocation,
     first_that,
     lowest_variance,
     share_total,
@@ -210,3 +212,90 @@ def test_totals_outside_floors_and_lists_are_refused(total: int, said: str) -> N
     site = Strata((0.3, 0.3, 0.4), (1.0, 1.0, 1.0), (6, 10, 10))
     with pytest.raises(DesignError, match=said):
         share_total(site, total, allocation="neyman")
+
+
+@settings(max_examples=50, deadline=None)
+@given(small_sites(), st.integers(0, 14), st.data())
+def test_cost_optimal_counts_are_beaten_by_none_of_their_cost(
+    site: Strata, extra: int, data: st.DataObject
+) -> None:
+    """Brute force: no counts that cost as much or less have a smaller variance."""
+    costs = tuple(data.draw(st.floats(20, 300)) for _ in site.weights)
+    site = replace(site, costs=costs)
+    total = min(sum(site.floors) + extra, site.most)
+    found = share_total(site, total, allocation="cost-optimal")
+    money = site.cost(found) * (1 + 1e-12)
+    totals = range(sum(site.floors), sum(site.floors) + 2 * extra + 5)
+    for other in itertools.chain.from_iterable(every_way(site, t) for t in totals):
+        if site.cost(other) <= money:
+            assert site.variance(other) >= site.variance(found) * (1 - 1e-9)
+
+
+@settings(max_examples=50, deadline=None)
+@given(small_sites(), st.integers(0, 14))
+def test_equal_precision_has_the_smallest_worst_stratum(site: Strata, extra: int) -> None:
+    """Brute force over every way to share the total: the largest σ² (1/n − 1/N) is smallest."""
+
+    def worst(counts: Iterable[int]) -> float:
+        parts = zip(site.sigmas, counts, site.populations, strict=True)
+        return max(s**2 * (1 / n - (0.0 if size is None else 1 / size)) for s, n, size in parts)
+
+    total = min(sum(site.floors) + extra, site.most)
+    found = share_total(site, total, allocation="equal-precision")
+    assert sum(found) == total
+    assert worst(found) <= min(map(worst, every_way(site, total))) * (1 + 1e-9) + 1e-12
+
+
+def test_equal_precision_levels_out_what_it_is_told_to() -> None:
+    """By hand: σ of 10, 20 at means of 10, 40 are shares of 1 and 0.5, so 4 to 1."""
+    site = Strata((0.5, 0.5), (10.0, 20.0), (None, None), levelled=(1.0, 0.5))
+    assert share_total(site, 50, allocation="equal-precision") == [40, 10]
+    absolute = replace(site, levelled=())
+    assert share_total(absolute, 50, allocation="equal-precision") == [10, 40]
+
+
+@pytest.mark.parametrize("allocation", ["cost-optimal", "equal-precision"])
+def test_unrounded_totals_keep_the_target_exactly(allocation: Allocation) -> None:
+    """Put back into the variance, the unrounded shares of the unrounded total give the target."""
+    site = replace(SITE, populations=(None, 60, 900), costs=(75.0, 60.0, 240.0))
+    total = unrounded_total(site, 25.0, allocation=allocation)
+    shares = unrounded_shares(site, total, allocation=allocation)
+    assert site.variance(shares) == pytest.approx(25.0, rel=1e-12)
+
+
+def test_cost_optimal_total_is_the_handbook_formula() -> None:
+    """Closed form: (Σ W σ √c)(Σ W σ/√c) / V (Cochran 1977, eq. 5.25, from memory)."""
+    site = replace(SITE, costs=(75.0, 60.0, 240.0))
+    parts = list(zip(site.weights, site.sigmas, site.costs, strict=True))
+    above = math.fsum(w * s * math.sqrt(c) for w, s, c in parts)
+    below = math.fsum(w * s / math.sqrt(c) for w, s, c in parts)
+    total = unrounded_total(site, 25.0, allocation="cost-optimal")
+    assert total == pytest.approx(above * below / 25.0, rel=1e-12)
+
+
+def test_handbook_strata_get_neymans_share_where_the_print_is_wrong() -> None:
+    """Source: Berthouex & Brown 2002 (values.csv A06-019): 109 of 263; the page prints 71.
+
+    The page shares by W s² there, against its own rule of W s.
+    """
+    inputs = row("A06-019").inputs
+    site = Strata(tuple(inputs["w"]), tuple(inputs["s"]), (None,) * 3)
+    shares = unrounded_shares(site, inputs["n"], allocation="neyman")
+    assert round(shares[0]) == row("A06-019").exact
+
+
+@pytest.mark.parametrize("allocation", ["proportional", "neyman", "equal-precision"])
+def test_ceilings_and_floors_by_stratum_hold(allocation: Allocation) -> None:
+    """Bounds come before shares; what they hold back goes to the others."""
+    site = replace(SITE, least=(2, 8, 2), ceilings=(None, None, 3))
+    counts = share_total(site, 30, allocation=allocation)
+    assert sum(counts) == 30
+    assert counts[1] >= 8
+    assert counts[2] <= 3
+
+
+def test_ceilings_that_forbid_a_target_are_named() -> None:
+    """A target that only more results could keep."""
+    site = replace(SITE, ceilings=(5, 5, 5))
+    with pytest.raises(DesignError, match="more than the 15 results that the ceilings allow"):
+        smallest_total(site, 1.0, allocation="proportional")
