@@ -1,0 +1,255 @@
+"""Grids started at random many times, to see how often a patch is hit on the true population."""
+
+import math
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, field
+from functools import cached_property
+
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+from shapely.geometry.base import BaseGeometry
+
+from fieldplan.base.draws import Stream
+from fieldplan.base.errors import DesignError
+from fieldplan.design.grid import MOST_TRIES, SQUARE_GRID, TRIANGULAR_GRID, Grid
+from fieldplan.design.patch import (
+    Centres,
+    Numbers,
+    PatchChance,
+    PatchChances,
+    RandomPlaces,
+    polygons_of,
+)
+from fieldplan.frame.model import Frame, Stratum
+from fieldplan.stats.patches import Patch
+
+STARTS = 256
+CENTRES = 256
+"""Patch centres for each start."""
+MOST_NODES = 50_000
+BATCH = 60_000
+"""Nodes laid at a time."""
+
+
+@dataclass(frozen=True)
+class GridStarts:
+    """A grid with an origin and a rotation of its own in every stratum, started many times.
+
+    Parameters
+    ----------
+    frame : Frame
+        Of an area.
+    patch : Patch
+    direction : float or None
+        Degrees clockwise from north.
+    grid : Grid
+    exact_count : bool
+        Keep only starts that put exactly the count inside, as the layout does.
+    losses : tuple of float
+        Share of nodes in each stratum that yield nothing; dropped at random.
+
+    Notes
+    -----
+    As the layout draws, but for the rounding of places to the centimetre. Each start meets patch
+    centres of its own; the standard error is that of the starts.
+    """
+
+    frame: Frame
+    patch: Patch
+    direction: float | None
+    grid: Grid
+    exact_count: bool = True
+    losses: tuple[float, ...] = ()
+    _known: dict[tuple[int, ...], tuple[Numbers, bool]] = field(default_factory=dict, repr=False)
+
+    def chance(self, counts: Sequence[int], *, scale: float = 1.0) -> PatchChance:
+        """Give the chance for so many nodes a stratum and a patch ``scale`` times as long."""
+        distances, exact = self._distances(tuple(counts))
+        shares = (distances <= scale).mean(axis=1)
+        error = float(shares.std(ddof=1)) / math.sqrt(len(shares)) if len(shares) > 1 else 1.0
+        return PatchChance(float(shares.mean()), error, len(shares), exact)
+
+    def smallest_scale(self, counts: Sequence[int], chance: float) -> float:
+        """Give the smallest scale at which the patch is hit with this chance."""
+        distances, _ = self._distances(tuple(counts))
+        return float(np.quantile(distances, chance, method="higher"))
+
+    @cached_property
+    def _centres(self) -> Centres:
+        return Centres(shapely.union_all(polygons_of(self.frame)), self.patch, self.direction)
+
+    def _distances(self, counts: tuple[int, ...]) -> tuple[Numbers, bool]:
+        """Distance from each centre to the nearest node, 1 on the patch's edge; (starts, k)."""
+        if counts in self._known:
+            return self._known[counts]
+        from scipy.spatial import KDTree
+
+        starts, exact = [], True
+        for number, stratum in enumerate(self.frame.strata):
+            found, as_asked = self._starts(number, stratum, counts[number])
+            starts.append(found)
+            exact = exact and as_asked
+        rows = []
+        for number, several in enumerate(zip(*starts, strict=False)):
+            block = self._centres.block(number, CENTRES)
+            angle = self._angle(number)
+            tree = KDTree(self._stretched(np.concatenate(several), angle))
+            rows.append(tree.query(self._stretched(self._centres.places[block], angle))[0])
+        self._known[counts] = np.array(rows), exact
+        return self._known[counts]
+
+    def _angle(self, number: int) -> float:
+        """Direction of the patch at this start, in radians."""
+        if self.direction is not None:
+            return math.radians(self.direction)
+        return math.pi * ((0.5 + number * 0.6180339887498949) % 1.0)
+
+    def _stretched(self, places: Numbers, angle: float) -> Numbers:
+        """Turn and stretch the plane so that the patch becomes a circle of radius 1."""
+        sine, cosine = math.sin(angle), math.cos(angle)
+        along = (places[:, 0] * sine + places[:, 1] * cosine) * (2 / self.patch.length)
+        across = (places[:, 0] * cosine - places[:, 1] * sine) * (2 / self.patch.width)
+        return np.stack([along, across], axis=1)
+
+    def _starts(self, number: int, stratum: Stratum, count: int) -> tuple[list[Numbers], bool]:
+        """Nodes inside the stratum for each start that is kept."""
+        if count > MOST_NODES:
+            message = (
+                f"'{stratum.name}' would get {count} locations to hit a patch of "
+                f"{self.patch.length:g} m by {self.patch.width:g} m; no more than {MOST_NODES} are "
+                "looked at. Give a larger patch or a lower probability."
+            )
+            raise DesignError(message)
+        wanted = int(min(STARTS, max(8, 400_000 // count)))
+        uniforms = Stream(1, "patch", stratum.name, "starts").uniforms(3 * MOST_TRIES)
+        any_count: list[Numbers] = []
+        kept: list[Numbers] = []
+        polygon, side = polygons_of(self.frame)[number], self.grid.spacing(stratum.measure, count)
+        for several in _laid(polygon, self.grid, side, uniforms.reshape(-1, 3)):
+            any_count += [nodes for nodes in several if len(nodes) >= 2]
+            kept += [nodes for nodes in several if len(nodes) == count]
+            if len(kept if self.exact_count else any_count) >= wanted:
+                break
+        exact = self.exact_count and len(kept) >= 2
+        chosen = (kept if exact else any_count)[:wanted]
+        return self._thinned(number, stratum, chosen), exact or not self.exact_count
+
+    def _thinned(self, number: int, stratum: Stratum, starts: list[Numbers]) -> list[Numbers]:
+        """Drop nodes at random, as many as are expected to yield nothing."""
+        loss = self.losses[number] if self.losses else 0.0
+        if loss == 0:
+            return starts
+        stream = Stream(1, "patch", stratum.name, "losses")
+        return [nodes[stream.uniforms(len(nodes)) >= loss] for nodes in starts]
+
+
+def _laid(
+    polygon: BaseGeometry, grid: Grid, side: float, uniforms: Numbers
+) -> Iterator[list[Numbers]]:
+    """Yield the nodes inside the polygon for batches of starts: along, across, turn in [0, 1)."""
+    shapely.prepare(polygon)
+    box = Slabs(polygon)
+    rows = 2 * math.ceil(box.reach / (side * grid.row_distance)) + 3
+    per_start = 2 * rows + 2 * box.area / (side * side * grid.row_distance)
+    batch = max(1, int(BATCH / per_start))
+    for first in range(0, len(uniforms), batch):
+        start, places = box.nodes(grid, side, uniforms[first : first + batch])
+        inside = shapely.contains_xy(polygon, places[:, 0], places[:, 1])
+        ends = np.searchsorted(start[inside], np.arange(1, len(uniforms[first : first + batch])))
+        yield np.split(places[inside], ends)
+
+
+class Slabs:
+    """The narrowest box about a polygon, as two pairs of parallel lines that rows run into."""
+
+    def __init__(self, polygon: BaseGeometry) -> None:
+        box = shapely.minimum_rotated_rectangle(polygon)
+        first, second, _, last = shapely.get_coordinates(box)[:4]
+        sides = np.stack([second - first, last - first])
+        lengths = np.hypot(*sides.T)
+        self.middle: Numbers = shapely.get_coordinates(shapely.centroid(box))[0]
+        self.normals: Numbers = sides / lengths[:, None]
+        self.halves: Numbers = lengths / 2
+        self.reach = float(np.hypot(*self.halves))
+        self.area = float(lengths.prod())
+
+    def nodes(
+        self, grid: Grid, side: float, uniforms: Numbers
+    ) -> tuple[NDArray[np.int64], Numbers]:
+        """Return start and place of every grid node in the box, row by row.
+
+        Parameters
+        ----------
+        grid : Grid
+        side : float
+            Spacing in metres.
+        uniforms : ndarray, shape (starts, 3)
+            Origin along and across the rows, and turn, as shares of 1.
+        """
+        along, across, turn = uniforms.T[:, :, None]
+        last = math.ceil(self.reach / (side * grid.row_distance)) + 1
+        row = np.arange(-last, last + 1)
+        north = (row + across) * (side * grid.row_distance)
+        shift = along + grid.row_shift * (row % 2)
+        cosine, sine = np.cos(2 * math.pi * turn), np.sin(2 * math.pi * turn)
+        low, high = np.full(north.shape, -np.inf), np.full(north.shape, np.inf)
+        for (x, y), half in zip(self.normals, self.halves, strict=True):
+            slope = cosine * x + sine * y
+            slope = np.where(np.abs(slope) < 1e-12, 1e-12, slope)
+            offset = north * (cosine * y - sine * x)
+            ends = np.sort(np.stack([-half - offset, half - offset]) / slope, axis=0)
+            low, high = np.maximum(low, ends[0]), np.minimum(high, ends[1])
+        first = np.ceil(low / side - shift)
+        counts = np.maximum(np.floor(high / side - shift) - first + 1, 0).astype(np.int64)
+        start, line = np.nonzero(counts)
+        several = counts[start, line]
+        chosen = np.repeat(np.arange(len(several)), several)
+        step = np.arange(len(chosen)) - np.repeat(np.cumsum(several) - several, several)
+        start, line = start[chosen], line[chosen]
+        a = (first[start, line] + step + shift[start, line]) * side
+        b = north[start, line]
+        turned = np.stack(
+            [a * cosine[start, 0] - b * sine[start, 0], a * sine[start, 0] + b * cosine[start, 0]],
+            axis=1,
+        )
+        return start, self.middle + turned
+
+
+def patch_chances(
+    layout: str,
+    frame: Frame,
+    patch: Patch,
+    *,
+    direction: float | None = None,
+    exact_count: bool = True,
+    losses: tuple[float, ...] = (),
+) -> PatchChances:
+    """Return what a layout makes of a patch on a population.
+
+    Parameters
+    ----------
+    layout : str
+        As in a campaign file.
+    frame : Frame
+        Of an area.
+    patch : Patch
+    direction : float, optional
+        Degrees clockwise from north; None takes all directions as equally likely.
+    exact_count : bool
+        For grids.
+    losses : tuple of float
+        Share of locations in each stratum that yield nothing.
+
+    Raises
+    ------
+    DesignError
+        The layout visits a whole list.
+    """
+    grids = {grid.name: grid for grid in (SQUARE_GRID, TRIANGULAR_GRID)}
+    if layout in grids:
+        return GridStarts(frame, patch, direction, grids[layout], exact_count, losses)
+    if layout in ("simple-random", "stratified"):
+        return RandomPlaces(frame, patch, direction)
+    message = f'layout "{layout}" visits what is on a list; a patch lies in an area.'
+    raise DesignError(message)
