@@ -1,6 +1,8 @@
 """A list of units of which some may exceed: what looking at n of them can find, or leave hidden."""
 
 import math
+from collections.abc import Sequence
+from heapq import heapify, heapreplace
 
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.precision import smallest
@@ -63,6 +65,40 @@ def chance_of_finding(n: int, exceeding: int, *, units: int) -> float:
     return 1 - chance_of_at_most(0, n=n, exceeding=exceeding, units=units)
 
 
+def chance_unseen(counts: Sequence[int], populations: Sequence[int], exceeding: int) -> float:
+    """Give the largest chance that a stratified list shows none of its exceeding units.
+
+    Parameters
+    ----------
+    counts, populations : sequence of int
+        Units drawn in each stratum, and all of them.
+    exceeding : int
+        Units that exceed, spread over the strata in the way that hides them best.
+
+    Notes
+    -----
+    A stratum hides one more with chance (N − D − n) / (N − D), which falls with D, so the worst
+    spread puts each unit where that chance is largest.
+
+    Examples
+    --------
+    >>> round(chance_unseen([30, 15], [60, 40], 5), 4)
+    0.0807
+    """
+    _check_list(0, exceeding, sum(populations))
+    logs = 0.0
+    waiting = [(-(1 - n / size), size, n) for n, size in zip(counts, populations, strict=True)]
+    heapify(waiting)
+    for _ in range(exceeding):
+        hides, left, n = waiting[0]
+        if left <= n:
+            return 0.0
+        logs += math.log(-hides)
+        left -= 1
+        heapreplace(waiting, (-(1 - n / left) if left else 0.0, left, n))
+    return math.exp(logs)
+
+
 def n_to_find(exceeding: int, confidence: float, *, units: int, allowed: int = 0) -> int:
     """Count the units to draw so that more than the allowed are found if so many exceed.
 
@@ -111,6 +147,52 @@ def n_to_find(exceeding: int, confidence: float, *, units: int, allowed: int = 0
         return 1 - hidden >= confidence - (SLACK + 1e-14 * units)
 
     return smallest(finds, allowed + 1, units, back=0)
+
+
+def n_and_allowed_of_list(
+    exceeding: int, confidence: float, *, units: int, expected: int, power: float
+) -> tuple[int, int]:
+    """Count units, and exceeding ones among them that are allowed, so that the claim comes out.
+
+    Parameters
+    ----------
+    exceeding : int
+        The claim is that fewer units than this exceed.
+    confidence : float
+        Inside (0, 1).
+    units : int
+        Length of the list.
+    expected : int
+        Units that exceed where the claim shall come out; below ``exceeding``.
+    power : float
+        How often it shall come out there.
+
+    Returns
+    -------
+    n, allowed : int
+        The fewest units to draw, with the exceeding ones among them that still permit the claim.
+
+    Examples
+    --------
+    >>> n_and_allowed_of_list(20, 0.95, units=200, expected=4, power=0.8)
+    (42, 1)
+    """
+    check_share(power, "power")
+    _check_list(0, exceeding, units)
+    if not 0 <= expected < exceeding:
+        message = (
+            f"a list with {expected} exceeding units cannot be told from one with {exceeding}; "
+            "expect fewer, or claim less."
+        )
+        raise DesignError(message)
+
+    def comes_out(allowed: int) -> bool:
+        n = n_to_find(exceeding, confidence, units=units, allowed=allowed)
+        chance = chance_of_at_most(allowed, n=n, exceeding=expected, units=units)
+        return chance >= power - SLACK
+
+    allowed = smallest(comes_out, 0, exceeding - 1, back=20)
+    return n_to_find(exceeding, confidence, units=units, allowed=allowed), allowed
 
 
 def unrounded_to_find(exceeding: int, confidence: float, *, units: int) -> float:

@@ -13,7 +13,9 @@ from fieldplan.base.errors import DesignError
 from fieldplan.stats.lots import (
     chance_of_at_most,
     chance_of_finding,
+    chance_unseen,
     most_hidden,
+    n_and_allowed_of_list,
     n_to_find,
     unrounded_to_find,
 )
@@ -93,6 +95,40 @@ def test_hidden_units_equal_a_walk() -> None:
         assert most_hidden(n, 0.9, units=30, found=found) == max(kept)
 
 
+@pytest.mark.parametrize("counts", [(3, 2), (4, 1), (0, 6), (2, 2, 1)])
+def test_worst_spread_over_strata_is_the_worst_of_all(counts: tuple[int, ...]) -> None:
+    """Brute force: every way to spread the exceeding units over the strata."""
+    populations = (9, 6, 4)[: len(counts)]
+    for exceeding in range(sum(populations) + 1):
+        worst = Fraction(0)
+        for spread in itertools.product(*(range(size + 1) for size in populations)):
+            if sum(spread) == exceeding:
+                strata = zip(counts, spread, populations, strict=True)
+                unseen = math.prod(
+                    (_hidden(0, n, k, size) for n, k, size in strata), start=Fraction(1)
+                )
+                worst = max(worst, unseen)
+        assert chance_unseen(counts, populations, exceeding) == pytest.approx(float(worst))
+
+
+@pytest.mark.parametrize(
+    ("units", "exceeding", "expected", "power"),
+    [(200, 20, 4, 0.8), (60, 6, 1, 0.9), (30, 5, 4, 0.6)],
+)
+def test_fewest_units_that_permit_a_claim_and_let_it_out(
+    units: int, exceeding: int, expected: int, power: float
+) -> None:
+    """Brute force with scipy.stats.hypergeom: every n, with all the exceedances it permits."""
+    for n in range(1, units + 1):
+        allowed = -1
+        while stats.hypergeom.cdf(allowed + 1, units, exceeding, n) <= 0.05:
+            allowed += 1
+        if allowed >= 0 and stats.hypergeom.cdf(allowed, units, expected, n) >= power:
+            break
+    found = n_and_allowed_of_list(exceeding, 0.95, units=units, expected=expected, power=power)
+    assert found == (n, allowed)
+
+
 def test_nothing_drawn_hides_everything_and_all_drawn_hides_nothing() -> None:
     """Edges by reason alone."""
     assert most_hidden(0, 0.95, units=8) == 8
@@ -118,5 +154,7 @@ def test_bounds_that_do_not_fit_are_refused() -> None:
         most_hidden(0, 0.95, units=0)
     with pytest.raises(DesignError, match="4 exceeding units among 3 drawn"):
         most_hidden(3, 0.95, units=9, found=4)
+    with pytest.raises(DesignError, match="cannot be told from one with 5"):
+        n_and_allowed_of_list(5, 0.95, units=40, expected=5, power=0.8)
     with pytest.raises(DesignError, match="confidence is 95"):
         unrounded_to_find(5, 95, units=100)
