@@ -3,6 +3,7 @@
 from collections.abc import Callable, Iterator
 from typing import Any, TypeGuard
 
+from fieldplan.campaign.composite_checks import composite_problems
 from fieldplan.campaign.facts import FACTS
 from fieldplan.campaign.money_checks import PER_PLACE, money_problems
 from fieldplan.campaign.problems import Problem, accepted, meaning, near_miss, shown
@@ -227,7 +228,7 @@ def _sigma_of(data: Data, analyte: object) -> list[Data]:
 
 
 def _sigmas(data: Data) -> Iterator[Problem]:
-    seen: set[tuple[str, str]] = set()
+    seen: set[tuple[str, str, str]] = set()
     for i, sigma in enumerate(tables(data, "sigma")):
         if ("pilot" in sigma) == ("value" in sigma):
             got = "both" if "pilot" in sigma else "neither"
@@ -239,10 +240,12 @@ def _sigmas(data: Data) -> Iterator[Problem]:
         if "pilot" in sigma and "from_results" in sigma:
             text = "the pilot is counted, not typed. Take this key out."
             yield Problem(("sigma", i, "from_results"), text)
-        entry = (str(sigma.get("analyte")), str(sigma.get("stratum", "")))
+        part = str(sigma.get("part", "total"))
+        entry = (str(sigma.get("analyte")), str(sigma.get("stratum", "")), part)
         if entry in seen:
             whole = "the whole site" if "stratum" not in sigma else f"stratum {entry[1]}"
-            text = f"sigma of {entry[0]} for {whole} stands twice. Keep one."
+            of_part = "" if part == "total" else f", part {part},"
+            text = f"sigma of {entry[0]} for {whole}{of_part} stands twice. Keep one."
             yield Problem(("sigma", i), text)
         seen.add(entry)
         yield from _without_strata(data, ("sigma", i, "stratum"), "stratum" in sigma)
@@ -334,6 +337,7 @@ _RULES: tuple[Callable[[Data], Iterator[Problem]], ...] = (
     _designs,
     _objectives,
     _sigmas,
+    composite_problems,
     _deciding,
     _qc,
     _loss,

@@ -22,11 +22,6 @@ _LATER_VALUES: dict[tuple[str, str], dict[str, str]] = {
         "smallest-patch": "finding a patch of a given size",
         "change": "change between rounds",
     },
-    ("sigma", "part"): {
-        "between-locations": "spread split into parts",
-        "sampling": "spread split into parts",
-        "laboratory": "spread split into parts",
-    },
     ("rules", "non_detects"): {
         "censored": "estimates that model non-detects",
     },
@@ -35,9 +30,6 @@ _LATER_VALUES: dict[tuple[str, str], dict[str, str]] = {
 _LATER_KEYS: dict[str, str] = {
     "composite": "composite samples",
     "composites": "composite samples",
-    "increment": "incremental samples",
-    "increments": "incremental samples",
-    "replicates": "incremental samples",
     "crew": "visit schedules of several crews",
     "crews": "visit schedules of several crews",
     "schedule": "visit schedules",

@@ -73,6 +73,13 @@ MEANING: dict[str, str] = {
     "design.minimum_spacing_m": "metres that two locations keep apart at least",
     "design.exact_count": "whether a grid is drawn again until it has the planned count",
     "design.locations": "number of locations fixed by hand instead of by the target",
+    "design.increments": "increments in each composite; 1 where every result is its own sample",
+    "design.increments_at": (
+        "whether each increment of a composite has its own random place or all lie round one"
+    ),
+    "design.replicates": "composites in all, fixed by hand instead of by the target",
+    "design.ranking_set_size": "places that are ranked by a cheap sign before one is sampled",
+    "design.ranking_correlation": "correlation between the cheap sign and the result",
     "design.why": "why this design was chosen",
     # [[targeted]]
     "targeted": "places chosen by judgement; they never enter the mean",
@@ -100,7 +107,9 @@ MEANING: dict[str, str] = {
     "sigma": "where the standard deviation of single results comes from",
     "sigma.analyte": "the analyte it belongs to; may be left out where there is one",
     "sigma.stratum": "the stratum it belongs to; left out for the whole site",
-    "sigma.part": "the part of the spread that it covers",
+    "sigma.part": (
+        "the part of the spread that it covers; from a pilot with duplicates where one is named"
+    ),
     "sigma.pilot": "file with pilot results, CSV or XLSX",
     "sigma.columns": "names of the pilot's columns: ours on the left, the file's on the right",
     "sigma.value": "standard deviation of single results, in the analyte's unit",
@@ -108,6 +117,10 @@ MEANING: dict[str, str] = {
     "sigma.from_results": "number of results behind a typed value, when it is known",
     "sigma.expected_mean": "the mean that is expected, in the analyte's unit",
     "sigma.skewness": "skewness of the population, where it is known",
+    "sigma.excess_kurtosis": (
+        "excess kurtosis of single results, where heavy tails are declared; 6 for an exponential "
+        "shape"
+    ),
     # [[field_reading]]
     **{f"field_reading.{key}".rstrip("."): words for key, words in field_reading.MEANING.items()},
     # [cost]
@@ -117,6 +130,8 @@ MEANING: dict[str, str] = {
     "cost.per_location": "money for each location visited",
     "cost.per_sample": "money for each sample taken: its jar, its carriage",
     "cost.per_analysis": "money for each sample analysed",
+    "cost.per_increment": "money for each increment of a composite, the walk to it included",
+    "cost.per_ranking": "money for looking at one place to rank it",
     "cost.per_crew_day": "money for each day of a crew in the field; a day begun counts whole",
     "cost.locations_per_day": "locations that a crew visits in a day",
     "cost.wrongly_acted": "money lost by acting although the true mean is not above the level",

@@ -119,7 +119,17 @@ class DesignTable(Table):
     minimum_spacing_m: NonNegativeNumber = 0.0
     exact_count: bool = True
     locations: Annotated[int, Field(ge=2)] | None = None
+    increments: Annotated[int, Field(ge=1, le=1000)] | Literal["choose"] = 1
+    increments_at: Literal["own-places", "one-place"] = "own-places"
+    replicates: Annotated[int, Field(ge=2)] | Literal["choose"] = "choose"
+    ranking_set_size: Annotated[int, Field(ge=2, le=20)] | None = None
+    ranking_correlation: Annotated[float, Field(ge=0, le=1)] | None = None
     why: str = ""
+
+    @property
+    def takes_composites(self) -> bool:
+        """Whether a result comes from several increments in one jar."""
+        return self.increments != 1
 
 
 class Targeted(Table):
@@ -161,7 +171,7 @@ class Sigma(Table):
 
     analyte: str | None = None
     stratum: str | None = None
-    part: Literal["total"] = "total"
+    part: Literal["total", "between-locations", "sampling", "analysis"] = "total"
     pilot: str | None = None
     columns: Mapping[str, str] = {}
     value: PositiveNumber | None = None
@@ -169,6 +179,7 @@ class Sigma(Table):
     from_results: Annotated[int, Field(ge=2)] | None = None
     expected_mean: PositiveNumber | None = None
     skewness: float | None = None
+    excess_kurtosis: NonNegativeNumber | None = None
 
 
 class Cost(Table):
@@ -179,6 +190,8 @@ class Cost(Table):
     per_location: NonNegativeNumber = 0.0
     per_sample: NonNegativeNumber = 0.0
     per_analysis: NonNegativeNumber = 0.0
+    per_increment: NonNegativeNumber = 0.0
+    per_ranking: NonNegativeNumber = 0.0
     per_crew_day: NonNegativeNumber = 0.0
     locations_per_day: PositiveNumber | None = None
     wrongly_acted: PositiveNumber | None = None

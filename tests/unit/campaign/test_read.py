@@ -412,14 +412,6 @@ LATER = [
     (('"simple-random"', '"ranked-set"'), '16: design.layout: "ranked-set" (ranked set sampling'),
     (('"simple-random"', '"Transect"'), '16: design.layout: "Transect" (transects) is not done'),
     (
-        ("pilot =", 'part = "laboratory"\npilot ='),
-        '25: sigma.part: "laboratory" (spread split into parts) is not done yet.',
-    ),
-    (
-        ('layout = "simple-random"', 'layout = "simple-random"\nincrements = 30'),
-        "17: design.increments: not done yet in this version (incremental samples). Take it out.",
-    ),
-    (
         ("[draw]", "[composite]\nof = 4\n[draw]"),
         "27: composite: not done yet in this version (composite samples). Take it out.",
     ),
