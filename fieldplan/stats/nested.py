@@ -73,8 +73,6 @@ class Nested:
         From the largest scale down.
     mean_squares : tuple of MeanSquare
         Those with degrees of freedom, same order.
-    weights : tuple of tuple of float
-        For each component its coefficients over ``mean_squares``.
     balanced : bool
         Every place has as many samples, every sample as many analyses; the intervals of the
         larger scales are approximate otherwise.
@@ -86,7 +84,6 @@ class Nested:
     analyses: int
     components: tuple[Component, ...]
     mean_squares: tuple[MeanSquare, ...]
-    weights: tuple[tuple[float, ...], ...]
     balanced: bool
     confidence: float
 
@@ -101,31 +98,6 @@ class Nested:
     def total(self) -> float:
         """Variance of a single analysis of a single sample: the sum of the parts."""
         return math.fsum(entry.variance for entry in self.components)
-
-    def combined(self, shares: Sequence[float]) -> tuple[float, float]:
-        """Give Σ share · part as a variance, with its effective degrees of freedom.
-
-        Parameters
-        ----------
-        shares : sequence of float
-            One for each component, 0 or more, e.g. 1/k for a part that k increments average.
-
-        Returns
-        -------
-        tuple of float
-            Variance and degrees of freedom (Satterthwaite over the mean squares).
-
-        Notes
-        -----
-        A part that was cut at 0 counts as 0 and brings no degrees of freedom.
-        """
-        coefficients = [0.0] * len(self.mean_squares)
-        for share, part, weights in zip(shares, self.components, self.weights, strict=True):
-            if part.raw > 0:
-                for position, weight in enumerate(weights):
-                    coefficients[position] += share * weight
-        variance = math.fsum(s * c.variance for s, c in zip(shares, self.components, strict=True))
-        return variance, _effective(self.mean_squares, coefficients)
 
 
 def nested_components(results: Results, *, confidence: float = 0.90) -> Nested:
@@ -181,7 +153,6 @@ def nested_components(results: Results, *, confidence: float = 0.90) -> Nested:
         analyses=sum(len(sample) for sample in samples),
         components=components,
         mean_squares=squares,
-        weights=weights,
         balanced=len({len(p) for p in results}) == 1 and len({len(s) for s in samples}) == 1,
         confidence=confidence,
     )

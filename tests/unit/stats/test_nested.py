@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from scipy import special
 
 from fieldplan.base.errors import DesignError
-from fieldplan.stats.nested import Nested, Results, nested_components
+from fieldplan.stats.nested import Results, nested_components
 
 WINGS: Results = (
     ((58.5, 59.5), (77.8, 80.9), (84.0, 83.6), (70.1, 68.3)),
@@ -167,19 +167,6 @@ def test_duplicates_without_a_second_analysis_give_two_parts() -> None:
     found = nested_components([[[1.0], [3.0]], [[5.0], [7.0]], [[9.0], [11.0]]])
     assert [c.stage for c in found.components] == ["between locations", "sampling and analysis"]
     assert [c.variance for c in found.components] == pytest.approx([15.0, 2.0])
-
-
-def _told(found: Nested, shares: tuple[float, ...]) -> tuple[float, float]:
-    return found.combined(shares)
-
-
-def test_the_parts_combine_with_their_degrees_of_freedom() -> None:
-    """By hand for the whole of WINGS: (MS_A/8 + 3·MS_B/8 + MS_C/2), Satterthwaite over them."""
-    variance, known = _told(nested_components(WINGS), (1.0, 1.0, 1.0))
-    terms = [332.837917 / 8, 191.186389 * 3 / 8, 1.301667 / 2]
-    assert variance == pytest.approx(sum(terms), rel=1e-6)
-    below = terms[0] ** 2 / 2 + terms[1] ** 2 / 9 + terms[2] ** 2 / 12
-    assert known == pytest.approx(sum(terms) ** 2 / below, rel=1e-6)
 
 
 def test_data_that_cannot_be_split_are_refused() -> None:
