@@ -115,6 +115,8 @@ def _sigma(part: "Part", *, several: bool) -> dict[str, Any]:
         entry["expected_mean"] = part.mean
     if part.skewness is not None:
         entry["skewness"] = part.skewness
+    if part.excess_kurtosis is not None:
+        entry["excess_kurtosis"] = part.excess_kurtosis
     return entry | ({"stratum": part.name} if several else {})
 
 
@@ -179,7 +181,7 @@ def _spread(numbers: BareNumbers, parts: "tuple[Part, ...]") -> "Spread":
     strata = tuple(
         StratumSpread(
             ANALYTE, part.name, part.sigma, part.mean, part.results, "typed",
-            skewness=part.skewness,
+            skewness=part.skewness, excess_kurtosis=part.excess_kurtosis,
         )
         for part in parts
     )  # fmt: skip

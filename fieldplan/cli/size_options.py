@@ -179,6 +179,11 @@ _OPTIONS = (
     _typed_number("--area", _POSITIVE, "Area of the population in m²."),
     click.option("--layout", metavar="NAME", help="Layout of the design; random unless given."),
     _typed_number("--skewness", _number_between(-100, 100), "Skewness of single results."),
+    _typed_number(
+        "--excess-kurtosis",
+        _number_between(-1e-12, 1000, "6 for an exponential shape"),
+        "Excess kurtosis of single results, where heavy tails are declared.",
+    ),
 )
 
 
@@ -232,6 +237,7 @@ class BareNumbers:
     area: float | None
     layout: str | None
     skewness: float | None
+    excess_kurtosis: float | None
 
     def check_question(self) -> None:
         """Refuse a question that nobody asks here, and targets of a mean beside another one."""
@@ -251,7 +257,6 @@ class BareNumbers:
         """Refuse what the plain question about a mean does not look at."""
         kind, _ = self.target()
         idle = {"level": self.level, "area": self.area, "layout": self.layout}
-        idle |= {"skewness": self.skewness}
         if kind != "relative_half_width":
             idle["mean"] = self.mean
         for name, value in idle.items():
@@ -345,6 +350,7 @@ class BareNumbers:
             population=self.population,
             mean=self.mean,
             skewness=self.skewness,
+            excess_kurtosis=self.excess_kurtosis,
         )
 
     def _strata(self) -> "tuple[Part, ...]":
@@ -359,7 +365,14 @@ class BareNumbers:
             )
             raise BadOption(message)
         return tuple(
-            Part(f"stratum {k}", weight / total, sigma, results=results)
+            Part(
+                f"stratum {k}",
+                weight / total,
+                sigma,
+                results=results,
+                skewness=self.skewness,
+                excess_kurtosis=self.excess_kurtosis,
+            )
             for k, (weight, sigma, results) in enumerate(rows, start=1)
         )
 

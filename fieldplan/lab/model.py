@@ -137,6 +137,8 @@ class StratumSpread:
         Sample skewness g1 (bias-corrected G1 is not used here), or as typed.
     skewness_ceiling : float or None
         The largest skewness that n0 values can show, (n0 − 2)/√(n0 − 1).
+    excess_kurtosis : float or None
+        As declared; never estimated, since a pilot cannot show its tail.
     """
 
     analyte: str
@@ -153,6 +155,7 @@ class StratumSpread:
     sigma_at_limit: float | None = None
     skewness: float | None = None
     skewness_ceiling: float | None = None
+    excess_kurtosis: float | None = None
 
     @property
     def degrees_of_freedom(self) -> int | None:

@@ -90,7 +90,7 @@ def spread(tables: Sequence[LabTable | None], campaign: Campaign, frame: "Frame"
     known = asked not in WITHOUT_SIGMA or any(s.analyte == analyte.id for s in campaign.sigma)
     for stratum in frame.strata if known else ():
         try:
-            entries.append(gathered.choose(stratum.name))
+            entries.append(_declared(gathered.choose(stratum.name), campaign, analyte.id))
         except LabError as fault:
             problems += fault.problems
     if problems:
@@ -249,7 +249,22 @@ def _typed_entry(analyte: str, stratum: str, sigma: Sigma) -> StratumSpread:
         source=source,
         assumed=source.casefold() == "assumed",
         skewness=sigma.skewness,
+        excess_kurtosis=sigma.excess_kurtosis,
     )
+
+
+def _declared(entry: StratumSpread, campaign: Campaign, analyte: str) -> StratumSpread:
+    """Put the shape that the campaign declares in place of what a pilot shows of it."""
+    deciding = campaign.deciding_analyte.id
+    of_analyte = [s for s in campaign.sigma if (s.analyte or deciding) == analyte]
+    own = [s for s in of_analyte if (s.stratum or "").casefold() == entry.stratum.casefold()]
+    found = entry
+    for sigma in [*(s for s in of_analyte if s.stratum is None), *own]:
+        if sigma.skewness is not None:
+            found = replace(found, skewness=sigma.skewness)
+        if sigma.excess_kurtosis is not None:
+            found = replace(found, excess_kurtosis=sigma.excess_kurtosis)
+    return found
 
 
 def _others(
@@ -263,7 +278,7 @@ def _others(
             gathered = _gather(tables, campaign, frame, analyte or deciding)
             notes += gathered.notes
             for stratum in frame.strata:
-                entry = gathered.choose(stratum.name)
+                entry = _declared(gathered.choose(stratum.name), campaign, analyte or deciding)
                 entries.append(replace(entry, stratum=stratum.name))
         except FieldplanError as fault:
             name = campaign.analyte_called(analyte or deciding).label

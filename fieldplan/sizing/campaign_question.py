@@ -233,6 +233,7 @@ def parts_of(
             source=entries[stratum.name].source,
             assumed=entries[stratum.name].assumed,
             skewness=entries[stratum.name].skewness,
+            excess_kurtosis=entries[stratum.name].excess_kurtosis,
             mean=entries[stratum.name].mean,
             mean_from=_mean_from(entries[stratum.name]),
         )

@@ -9,6 +9,7 @@ from fieldplan.sizing.counting import Counts
 from fieldplan.sizing.precision import PilotTerm, Precision
 from fieldplan.sizing.quantities import corrected_for_list, sigma_quantity, target_quantity
 from fieldplan.sizing.question import Question
+from fieldplan.stats.assurance import effective_degrees_of_freedom
 from fieldplan.stats.distributions import chi_square_quantile
 from fieldplan.stats.intervals import t_quantile
 from fieldplan.stats.precision import unrounded_for_standard_error
@@ -46,7 +47,10 @@ def _raised(question: Question, counts: Counts, assurance: float) -> Iterator[St
     part = question.parts[0]
     if part.results is None:
         return
-    known = part.results - 1
+    known = effective_degrees_of_freedom(part.results, part.excess_kurtosis or 0.0)
+    meaning = "pilot results − 1"
+    if part.excess_kurtosis:
+        meaning = f"2 / (2/(n0 − 1) + {part.excess_kurtosis:g}/n0), heavy tails declared"
     quantile = chi_square_quantile(1 - assurance, known)
     upper = part.sigma * math.sqrt(known / quantile)
     yield Step(
@@ -55,7 +59,7 @@ def _raised(question: Question, counts: Counts, assurance: float) -> Iterator[St
         formula="s_u = s · √(df / χ²)",
         inputs=(
             sigma_quantity(question),
-            Quantity("df", "pilot results − 1", known),
+            Quantity("df", meaning, known),
             Quantity("χ²", f"chi-square quantile at {1 - assurance:.4g}", quantile),
         ),
         unrounded=upper,
@@ -157,6 +161,9 @@ def _chance(question: Question, chosen: tuple[int, ...], chance: float) -> Step:
         t = t_quantile(main, confidence=question.confidence, kind=question.interval)
         inputs.append(Quantity("df'", "degrees of freedom of the coming results", main))
         inputs.append(Quantity("t", "Student quantile at df'", t))
+        worth = precision.luck(chosen)
+        if worth != main:
+            inputs.append(Quantity("df*", "what they are worth, heavy tails declared", worth))
     formula, source = _chance_formula(question, pilot_known=pilot is not None, factor=luck != 1)
     return Step(
         symbol="chance",
@@ -179,6 +186,8 @@ def _chance_formula(question: Question, *, pilot_known: bool, factor: bool) -> t
         return f"chance = P(χ² ≥ df · {m}V / SE²)", source + derived
     if not pilot_known:
         source = "Kupper & Hafner 1989, The American Statistician 43:101"
-        return "chance = P(χ² ≤ df' · h² / (t² · V)), χ² with df'", source
+        of = "df*" if question.heavy_tails else "df'"
+        return f"chance = P(χ² ≤ {of} · h² / (t² · V)), χ² with {of}", source
     source = "predictive F: Hahn & Meeker 1991, Statistical Intervals"
-    return f"chance = P(F ≤ h² / (t² · {m}V)), F with df' and df", source + derived
+    of = "df*" if question.heavy_tails else "df'"
+    return f"chance = P(F ≤ h² / (t² · {m}V)), F with {of} and df", source + derived

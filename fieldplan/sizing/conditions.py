@@ -44,8 +44,18 @@ def conditions(question: Question, needed: tuple[int, ...]) -> tuple[str, ...]:
         )
     chances = question.assurance is not None or question.pilots is not None
     if chances and question.target != "budget":
-        lines += [NEAR_NORMAL, *_few(question)]
+        lines += [_tails(question), *_few(question)]
     return (*lines, *question.notes)
+
+
+def _tails(question: Question) -> str:
+    """Say how the chances take the shape of single results."""
+    if not question.heavy_tails:
+        return NEAR_NORMAL
+    return (
+        f"Chances take tails as heavy as declared, an excess kurtosis of {question.heavy_tails:g}, "
+        "through fewer degrees of freedom; a tail heavier than declared makes them lower."
+    )
 
 
 def _few(question: Question) -> list[str]:

@@ -5,7 +5,11 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from fieldplan.sizing.question import Question
-from fieldplan.stats.assurance import chance_of_half_width, chance_of_variance
+from fieldplan.stats.assurance import (
+    chance_of_half_width,
+    chance_of_variance,
+    effective_degrees_of_freedom,
+)
 from fieldplan.stats.intervals import t_quantile
 from fieldplan.stats.stratified import satterthwaite, variance_factors
 
@@ -25,12 +29,15 @@ class PilotTerm:
         nor taken whole. 0 unless the allocation is Neyman's.
     results : int
         n0.
+    excess_kurtosis : float
+        Of single results, as declared; 0 takes them as near normal.
     """
 
     strata: tuple[str, ...]
     variance: float
     moving: float
     results: int
+    excess_kurtosis: float = 0.0
 
     @property
     def name(self) -> str:
@@ -38,9 +45,9 @@ class PilotTerm:
         return " + ".join(self.strata)
 
     @property
-    def known(self) -> int:
-        """Degrees of freedom, n0 − 1."""
-        return self.results - 1
+    def known(self) -> float:
+        """Degrees of freedom: n0 − 1, fewer where heavy tails are declared."""
+        return effective_degrees_of_freedom(self.results, self.excess_kurtosis)
 
 
 @dataclass(frozen=True)
@@ -70,6 +77,14 @@ class Precision:
     def degrees_of_freedom(self, counts: Sequence[float]) -> float:
         """Give the degrees of freedom that the coming results will have (Satterthwaite)."""
         return satterthwaite(self.parts(counts), [max(count - 1, 1) for count in counts])
+
+    def luck(self, counts: Sequence[float]) -> float:
+        """Give the degrees of freedom that the coming variance is worth, heavy tails in."""
+        worth = [
+            effective_degrees_of_freedom(max(count, 2), part.excess_kurtosis or 0.0)
+            for count, part in zip(counts, self.question.parts, strict=True)
+        ]
+        return satterthwaite(self.parts(counts), worth)
 
     def half_width(self, counts: Sequence[float]) -> float:
         """Give the expected distance from the mean to the end of its interval."""
@@ -110,6 +125,7 @@ class Precision:
                 variance=math.fsum(parts[k] for k in group),
                 moving=math.fsum(parts[k] for k in group if free[k]),
                 results=question.parts[group[0]].results or 2,
+                excess_kurtosis=question.parts[group[0]].excess_kurtosis or 0.0,
             )
             for group in question.pilots or ()
         )
@@ -180,4 +196,5 @@ class Precision:
             pilot=pilot,
             confidence=question.confidence,
             kind=question.interval,
+            luck=self.luck(counts),
         )

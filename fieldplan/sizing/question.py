@@ -40,6 +40,8 @@ class Part:
         Sigma was ASSUMED.
     skewness : float or None
         Of the pilot's results, or typed.
+    excess_kurtosis : float or None
+        Of single results, as declared; None takes them as near normal.
     mean : float or None
         To expect, for a relative target.
     mean_from : str
@@ -58,6 +60,7 @@ class Part:
     skewness: float | None = None
     mean: float | None = None
     mean_from: str = ""
+    excess_kurtosis: float | None = None
 
 
 @dataclass(frozen=True)
@@ -168,6 +171,11 @@ class Question:
         if self.locations is not None:
             return "locations"
         return "budget" if self.target == "budget" else "target"
+
+    @property
+    def heavy_tails(self) -> float:
+        """The largest excess kurtosis declared; 0 where results are taken as near normal."""
+        return max((part.excess_kurtosis or 0.0 for part in self.parts), default=0.0)
 
     @property
     def total_population(self) -> int | None:

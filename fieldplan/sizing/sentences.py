@@ -21,6 +21,13 @@ NEAR_NORMAL = "if single results are near normal (lower if they are skewed)"
 """The condition of every chance, said beside it."""
 
 
+def chance_condition(question: Question) -> str:
+    """Say under what condition a chance holds."""
+    if not question.heavy_tails:
+        return NEAR_NORMAL
+    return f"with the heavy tails declared (excess kurtosis {question.heavy_tails:g})"
+
+
 def sentences(
     question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
 ) -> tuple[str, ...]:
@@ -104,25 +111,25 @@ def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
     if question.locations is not None:
         return (
             f"The chance that this meets the target ({target_words(question)}) is "
-            f"{percent(chance)} {NEAR_NORMAL}."
+            f"{percent(chance)} {chance_condition(question)}."
         )
     known = sorted({part.results for part in question.parts if part.results is not None})
     behind = " to ".join(str(n) for n in {known[0]: 0, known[-1]: 0}) + " results"
     if len(question.parts) > 1:
         behind += " a stratum"
+    condition = chance_condition(question)
+    opening = f"The chance that {needed} are enough is {percent(chance)} {condition}"
     if needed != plain or question.assurance is not None:
         plain_chance = precision.chance(counts.plain) or 0.0
         return (
-            f"The chance that {needed} are enough is {percent(chance)} {NEAR_NORMAL}, sigma being "
-            f"known from {behind} only; the plain formula ({plain}) would be enough in "
-            f"{percent(plain_chance)} of campaigns."
+            f"{opening}, sigma being known from {behind} only; the plain formula ({plain}) would "
+            f"be enough in {percent(plain_chance)} of campaigns."
         )
     more = listed([str(entry.n) for entry in assured])
     shares = listed([percent(entry.assurance) for entry in assured])
     return (
-        f"The chance that {needed} are enough is {percent(chance)} {NEAR_NORMAL}: the plain "
-        f"formula is enough in only about half of campaigns, and sigma is known from {behind} "
-        f"only. For a chance of {shares} it takes {more}."
+        f"{opening}: the plain formula is enough in only about half of campaigns, and sigma is "
+        f"known from {behind} only. For a chance of {shares} it takes {more}."
     )
 
 

@@ -13,11 +13,13 @@ from fieldplan.stats.assurance import (
     chance_of_half_width,
     chance_of_variance,
     check_assurance,
+    effective_degrees_of_freedom,
     n_at_assurance,
     n_for_half_width_at_assurance,
 )
 from fieldplan.stats.distributions import normal_quantile
-from fieldplan.stats.precision import n_for_half_width, n_for_standard_error
+from fieldplan.stats.intervals import t_quantile
+from fieldplan.stats.precision import n_for_half_width, n_for_standard_error, smallest
 from tests.unit.stats.published import Row, area
 
 
@@ -139,3 +141,49 @@ def test_assurance_beyond_reach_is_said() -> None:
     """Two pilot results at 99.99 % ask for more than any campaign."""
     with pytest.raises(DesignError, match="results, more than"):
         n_for_half_width_at_assurance(100.0, 1.0, assurance=0.9999, confidence=0.95, pilot_n=2)
+
+
+@pytest.mark.parametrize("ideal", [18, 46, 99])
+@pytest.mark.parametrize("pilot_n", [8, 20])
+def test_declared_kurtosis_keeps_the_stated_chance_on_an_exponential_population(ideal, pilot_n):
+    """Source: simulation, excess kurtosis 6 of the exponential; never below the stated 80 %."""
+    rng = np.random.default_rng(20261201)
+    campaigns, stated, confidence = 1500, 0.80, 0.95
+    target = t_quantile(ideal - 1, confidence=confidence, kind="two-sided") / math.sqrt(ideal)
+    pilot_worth = effective_degrees_of_freedom(pilot_n, 6.0)
+    s0 = rng.exponential(1.0, (campaigns, pilot_n)).std(axis=1, ddof=1)
+    kept = 0
+    for s in s0:
+
+        def fits(n, s=s):
+            return chance_of_half_width(
+                s * s / n, target, main=n - 1, pilot=pilot_worth, confidence=confidence,
+                luck=effective_degrees_of_freedom(n, 6.0),
+            ) >= stated  # fmt: skip
+
+        n = smallest(fits, 2, 10**6)
+        width = t_quantile(n - 1, confidence=confidence, kind="two-sided") * rng.exponential(
+            1.0, n
+        ).std(ddof=1)
+        kept += width / math.sqrt(n) <= target
+    four_errors = 4 * math.sqrt(stated * (1 - stated) / campaigns)
+    assert kept / campaigns >= stated - four_errors
+
+
+def test_effective_degrees_of_freedom_match_the_variance_of_a_simulated_variance():
+    """Source: simulation: 2/df is the relative variance of s², here of a gamma of CV 1/2."""
+    rng = np.random.default_rng(7)
+    n, kappa = 12, 6 / 4  # a gamma of shape 4 has excess kurtosis 6/4
+    variances = rng.gamma(4.0, 0.5, (40_000, n)).var(axis=1, ddof=1)
+    relative = variances.var() / variances.mean() ** 2
+    blocks = [b.var() / b.mean() ** 2 for b in np.array_split(variances, 40)]
+    four_errors = 4 * np.std(blocks, ddof=1) / math.sqrt(len(blocks))
+    expected = 2 / effective_degrees_of_freedom(n, kappa)
+    assert relative == pytest.approx(expected, abs=four_errors)
+
+
+@pytest.mark.parametrize("kurtosis", [-0.1, math.nan, math.inf])
+def test_a_kurtosis_that_is_none_is_refused_with_its_value(kurtosis):
+    """Light tails would make n smaller than normal theory does."""
+    with pytest.raises(DesignError, match="excess kurtosis is"):
+        effective_degrees_of_freedom(8, kurtosis)
