@@ -17,9 +17,7 @@ _LATER_VALUES: dict[tuple[str, str], dict[str, str]] = {
         "incremental": "incremental samples",
     },
     ("objective", "question"): {
-        "mean-and-level": "comparing the mean with a level by a test",
         "upper-share": "limits for an upper share of the population",
-        "smallest-patch": "finding a patch of a given size",
         "change": "change between rounds",
     },
     ("rules", "non_detects"): {

@@ -9,6 +9,8 @@ from pydantic import BaseModel, ConfigDict, Field
 
 from fieldplan.campaign.field_reading import FieldReading
 from fieldplan.campaign.questions.all_clear import AllClear
+from fieldplan.campaign.questions.mean_and_level import MeanAndLevel
+from fieldplan.campaign.questions.smallest_patch import SmallestPatch
 from fieldplan.campaign.table import (
     Identifier,
     NonNegativeNumber,
@@ -149,7 +151,7 @@ class Objective(Table):
 
     design: str | None = None
     analyte: str | None = None
-    question: Literal["mean", "all-clear"]
+    question: Literal["mean", "mean-and-level", "all-clear", "smallest-patch"]
     standard_error: PositiveNumber | None = None
     half_width: PositiveNumber | None = None
     relative_half_width: Annotated[float, Field(gt=0, lt=10)] | None = None
@@ -157,9 +159,12 @@ class Objective(Table):
     assurance: Annotated[float, Field(ge=0.5, lt=1)] | Literal["plain"] | None = None
     assurance_chosen_by: str = ""
     decides_n: bool = False
+    first_stage: Annotated[int, Field(ge=2)] | None = None
     mean_from: NonNegativeNumber | None = None
     mean_to: PositiveNumber | None = None
     all_clear: AllClear | None = None
+    mean_and_level: MeanAndLevel | None = None
+    smallest_patch: SmallestPatch | None = None
 
 
 class Sigma(Table):

@@ -75,6 +75,10 @@ class GridStarts:
         distances, _ = self._distances(tuple(counts))
         return float(np.quantile(distances, chance, method="higher"))
 
+    def by_scale(self, counts: Sequence[int], scales: Sequence[float]) -> list[float]:
+        """Give the chance for each of several scales, from the same starts."""
+        return [self.chance(counts, scale=scale).chance for scale in scales]
+
     @cached_property
     def _centres(self) -> Centres:
         return Centres(shapely.union_all(polygons_of(self.frame)), self.patch, self.direction)

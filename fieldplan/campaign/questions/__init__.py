@@ -4,10 +4,12 @@ Each module gives ``Asked`` (the table below ``[[objective]]``), ``MEANING`` (wh
 ``problems`` (what must hold between them). The table is named as the question, with underscores.
 """
 
-from fieldplan.campaign.questions import all_clear
+from fieldplan.campaign.questions import all_clear, mean_and_level, smallest_patch
 
 MODULES = {
     "all-clear": all_clear,
+    "mean-and-level": mean_and_level,
+    "smallest-patch": smallest_patch,
 }
 """Question, as the campaign file names it, and its module."""
 

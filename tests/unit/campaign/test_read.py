@@ -403,7 +403,6 @@ LATER = [
     (('"mean"', '"mean-and-level"'), '19: objective.question: "mean-and-level" (comparing the'),
     (('"mean"', '"upper-share"'), '19: objective.question: "upper-share" (limits for an upper'),
     (('"mean"', '"change"'), '19: objective.question: "change" (change between'),
-    (('"mean"', '"smallest-patch"'), '19: objective.question: "smallest-patch" (finding a patch'),
     (('"mean"', '"change"'), '19: objective.question: "change" (change between rounds) is not'),
     (
         ('"simple-random"', '"spatially-balanced"'),

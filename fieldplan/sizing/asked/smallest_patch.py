@@ -1,0 +1,288 @@
+"""The smallest patch that must not be missed: how many locations, and what a number finds."""
+
+import math
+
+from fieldplan.base.errors import DesignError
+from fieldplan.base.working import Quantity, Step
+from fieldplan.design.patch import PatchChance
+from fieldplan.sizing.asked.model import Answered, Asked
+from fieldplan.sizing.asked.patch_ground import LATTICES, PatchQuestion, patch_question
+from fieldplan.sizing.asked.patch_words import (
+    SOURCES,
+    asked_for,
+    assumptions,
+    ground_words,
+    off_words,
+    patch_words,
+    place_words,
+    refusal,
+    warnings,
+)
+from fieldplan.sizing.model import Amount, Finding, Picture, Series
+from fieldplan.sizing.words import counted, figure, percent, typed, typed_percent
+from fieldplan.stats.precision import MOST, meets, smallest
+
+TITLE = "The smallest patch that must not be missed"
+_SCALES = (0.4, 0.6, 0.8, 1.0, 1.25, 1.5, 2.0)
+"""Sizes of the picture, as shares of the patch asked about."""
+
+
+def count(asked: Asked) -> Answered:
+    """Count the locations of which one at least lies in the patch, with the stated probability.
+
+    Parameters
+    ----------
+    asked : Asked
+
+    Returns
+    -------
+    Answered
+
+    Raises
+    ------
+    DesignError
+        The patch does not fit into the area, there is no area, or the receiver is too coarse.
+    """
+    question = patch_question(asked)
+    if question.doubtful:
+        raise DesignError(refusal(question))
+    endless = question.endless_count(question.design.layout)
+    total = _fewest(question, math.ceil(endless - 1e-9))
+    needed = asked.shared(total)
+    finding = _finding(question, needed)
+    sentence = (
+        f"{counted(sum(needed), 'location')} {place_words(question)} hit {patch_words(question)}, "
+        f"with a chance of {typed_percent(question.table.probability)}{off_words(question)}: "
+        f"averaged {ground_words(question)}."
+    )
+    steps = (*_patch_steps(question), _endless_step(question, endless), *finding.steps)
+    return Answered(
+        needed=needed,
+        target=f"{asked_for(question)} chance of hitting {patch_words(question)}",
+        finding=_with(finding, answer=sentence, steps=steps),
+        unrounded=endless,
+    )
+
+
+def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
+    """Say with what chance given counts hit the patch, and the smallest patch that they find.
+
+    Parameters
+    ----------
+    asked : Asked
+    counts : tuple of int
+        Results by stratum.
+
+    Returns
+    -------
+    Finding
+        Without a chance where the receiver is too coarse for one.
+
+    Raises
+    ------
+    DesignError
+        The patch does not fit into the area, or there is no area.
+    """
+    question = patch_question(asked)
+    if question.doubtful:
+        return Finding("smallest-patch", TITLE, refusal(question), sources=SOURCES)
+    return _finding(question, counts)
+
+
+def _with(finding: Finding, *, answer: str, steps: tuple[Step, ...]) -> Finding:
+    from dataclasses import replace
+
+    return replace(finding, answer=answer, steps=steps)
+
+
+def _fewest(question: PatchQuestion, start: int) -> int:
+    """Find the fewest results that keep the probability.
+
+    Random places have a closed form, so every number is tried. A grid is followed by scaling: n
+    locations find a patch as often as n·f² find one that is f times as small. A step is one
+    location, or one in 200.
+    """
+    asked, least = question.asked, sum(question.asked.question.strata.floors)
+
+    def fits(total: int) -> bool:
+        counts = question.laid(asked.shared(total))
+        found = question.chances.chance(counts, scale=question.reach)
+        return meets(question.table.probability, found.chance)
+
+    if question.lattice is None or asked.frame is None:
+        return smallest(fits, least, MOST)
+    total = max(start, least)
+    for _ in range(2):
+        counts = question.laid(asked.shared(total))
+        scale = question.chances.smallest_scale(counts, question.table.probability)
+        total = max(math.ceil(total * (scale / question.reach) ** 2), least)
+    step = max(1, total // 200)
+    while not fits(total):
+        total += step
+    while total - step >= least and fits(total - step):
+        total -= step
+    return total
+
+
+def _finding(question: PatchQuestion, counts: tuple[int, ...]) -> Finding:
+    laid, chances = question.laid(counts), question.chances
+    kept = chances.chance(laid, scale=question.reach)
+    planned = chances.chance(laid)
+    factor = chances.smallest_scale(laid, question.table.probability) + 1 - question.reach
+    spacing = _spacing(question, laid)
+    answer = (
+        f"At least one of {counted(sum(counts), 'location')} {place_words(question)} lies in "
+        f"{patch_words(question)}, with a chance of {percent(kept.chance)}{off_words(question)}; "
+        f"{asked_for(question)} was asked for."
+    )
+    curve = [(s, c) for s, c in zip(_SCALES, _curve(question, laid), strict=True)]
+    return Finding(
+        topic="smallest-patch",
+        title=TITLE,
+        answer=answer,
+        amounts=_amounts(question, kept, planned, factor=factor, spacing=spacing),
+        columns=("length, m", "width, m", "chance of hitting"),
+        rows=tuple(
+            (figure(p.length), figure(p.width), percent(c))
+            for p, c in ((question.patch.scaled(s), c) for s, c in curve)
+        ),
+        steps=(_chance_step(question, counts, kept),),
+        assumptions=assumptions(question, kept),
+        warnings=warnings(question, spacing),
+        sources=SOURCES,
+        picture=_picture(question, curve, sum(counts)),
+    )
+
+
+def _curve(question: PatchQuestion, laid: tuple[int, ...]) -> list[float]:
+    """Chance for each size, the receiver's error taken off."""
+    inner = [max(scale - (1 - question.reach), 1e-6) for scale in _SCALES]
+    return question.chances.by_scale(laid, inner)
+
+
+def _spacing(question: PatchQuestion, laid: tuple[int, ...]) -> float | None:
+    """Spacing of the finest grid; None for random places."""
+    if question.lattice is None:
+        return None
+    pairs = zip(question.areas, laid, strict=True)
+    return min(question.lattice.spacing(area, count) for area, count in pairs)
+
+
+def _amounts(
+    question: PatchQuestion,
+    kept: PatchChance,
+    planned: PatchChance,
+    *,
+    factor: float,
+    spacing: float | None,
+) -> tuple[Amount, ...]:
+    patch = question.patch.scaled(factor)
+    share = typed_percent(question.table.probability)
+    found = [Amount("chance_of_hitting", "Chance of hitting the patch", kept.chance)]
+    if question.error_m:
+        found[0] = Amount(
+            "chance_of_hitting", "Chance of hitting it with every location off", kept.chance
+        )
+        found.append(Amount("chance_as_planned", "Chance with no location off", planned.chance))
+    if kept.starts:
+        words = f"Standard error of that chance, from {kept.starts} starts of the grid"
+        found.append(Amount("standard_error_of_chance", words, kept.standard_error))
+    words = f"Length of the smallest patch of this shape found with {share}"
+    found.append(Amount("smallest_length_m", words, patch.length, "m"))
+    if patch.length > patch.width:
+        found.append(Amount("smallest_width_m", "Its width", patch.width, "m"))
+    if spacing is not None:
+        found.append(Amount("spacing_m", "Spacing of the grid", spacing, "m"))
+    for layout, words in (
+        ("square-grid", "a square grid"),
+        ("triangular-grid", "a triangular grid"),
+        ("simple-random", "random places"),
+    ):
+        endless = math.ceil(question.endless_count(layout) - 1e-9)
+        name = f"endless_{layout.replace('-', '_')}"
+        meaning = f"Locations for {share} on {words}, no edge counted"
+        found.append(Amount(name, meaning, endless))
+    return tuple(found)
+
+
+def _patch_steps(question: PatchQuestion) -> tuple[Step, ...]:
+    patch = question.patch
+    inputs = (
+        Quantity("L", "length of the patch", patch.length, "m"),
+        Quantity("W", "width of the patch", patch.width, "m"),
+    )
+    area = Step(
+        "a", "Area of the patch", "a = π L W / 4", inputs, patch.area, patch.area, "m²",
+        "common practice, no source",
+    )  # fmt: skip
+    if not question.error_m:
+        return (area,)
+    error = Quantity("e", "position error of the receiver", question.error_m, "m")
+    inner = patch.scaled(question.reach).length
+    shrunk = Step(
+        "L'", "Length of its part that is hit however far each location is off",
+        "L' = L (1 − 2 e / W), and W' likewise", (*inputs, error), inner, inner, "m",
+        "inner ellipse of the same shape, worked out in docs/sizing/smallest-patch.md",
+    )  # fmt: skip
+    return (area, shrunk)
+
+
+def _endless_step(question: PatchQuestion, endless: float) -> Step:
+    """Show the textbook's number, no edge counted."""
+    patch, layout = question.patch.scaled(question.reach), question.design.layout
+    area = Quantity("A", "area of the population", question.asked.area_m2 or 0.0, "m²")
+    chance = Quantity("P", "probability asked for", question.table.probability)
+    if layout not in LATTICES:
+        inputs = (chance, Quantity("a'", "area that counts", patch.area, "m²"), area)
+        formula, source = "n = ln(1 − P) / ln(1 − a' / A)", "geometric distribution"
+    else:
+        lattice = LATTICES[layout]
+        widest = math.sqrt((question.asked.area_m2 or 0.0) / (lattice.row_distance * endless))
+        inputs = (
+            area,
+            Quantity("k", "distance between rows for a spacing of 1", lattice.row_distance),
+            Quantity("G", f"spacing at which the patch is hit with {asked_for(question)}", widest),
+        )
+        formula, source = "n = A / (k G²)", SOURCES[0]
+    return Step(
+        "n∞", "Locations by the textbook, no edge counted", formula, inputs, endless,
+        float(math.ceil(endless - 1e-9)), "locations", source,
+    )  # fmt: skip
+
+
+def _chance_step(question: PatchQuestion, counts: tuple[int, ...], found: PatchChance) -> Step:
+    names = [part.name for part in question.asked.question.parts]
+    inputs = tuple(
+        Quantity("n" if len(names) == 1 else f"n({name})", "results", float(n))
+        for name, n in zip(names, counts, strict=True)
+    )
+    if question.asked.frame is None:
+        formula = "P = Σ W · share of the ground within the patch about the locations"
+    elif question.lattice is None:
+        formula = "P = mean over centres c of 1 − Π (1 − a(c) / A)ⁿ"
+    else:
+        formula = f"P = mean over {found.starts} starts of the share of centres with a hit"
+    return Step(
+        "P", "Chance that at least one location lies in the patch", formula, inputs,
+        found.chance, found.chance, "", "geometry of the population, docs/sizing/smallest-patch.md",
+    )  # fmt: skip
+
+
+def _picture(question: PatchQuestion, curve: list[tuple[float, float]], total: int) -> Picture:
+    lengths = tuple(question.patch.length * scale for scale, _ in curve)
+    line = Series(f"{total} locations", lengths, tuple(100 * chance for _, chance in curve))
+    share = typed_percent(question.table.probability)
+    return Picture(
+        kind="lines",
+        caption=f"Chance of hitting a patch of this shape, by its length, with {total} locations.",
+        alternative=(
+            f"A line rising with the length of the patch: {percent(curve[0][1])} at "
+            f"{figure(lengths[0])} m, {percent(curve[3][1])} at {figure(lengths[3])} m, "
+            f"{percent(curve[-1][1])} at {figure(lengths[-1])} m."
+        ),
+        x_label="Length of the patch, m",
+        y_label="Chance of hitting, %",
+        series=(line,),
+        marks=((f"{typed(question.patch.length)} m", question.patch.length),),
+        levels=((share, 100 * question.table.probability),),
+    )
