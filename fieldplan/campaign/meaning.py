@@ -102,6 +102,10 @@ MEANING: dict[str, str] = {
     "objective.decides_n": "whether this objective decides n; needed on one of several",
     "objective.mean_from": "the true mean lies above this with a chance of 95 %, as believed",
     "objective.mean_to": "the true mean lies below this with a chance of 95 %, as believed",
+    "objective.first_stage": (
+        "results of a first stage, after which the number may be set anew; 60 % of the plain number "
+        "unless given"
+    ),
     **meanings(),
     # [[sigma]]
     "sigma": "where the standard deviation of single results comes from",

@@ -4,6 +4,9 @@ import math
 
 from fieldplan.base.errors import DesignError
 
+LEAST_CHANCE = 1e-12
+"""Chances nearer to 0 or 1 than this are lost in the last digits of the functions used."""
+
 
 def check_risks(alpha: float, beta: float) -> None:
     """Refuse chances of a wrong decision that no number of results can be worked out from.
@@ -19,12 +22,7 @@ def check_risks(alpha: float, beta: float) -> None:
     >>> check_risks(0.05, 0.2)
     """
     for name, chance in (("alpha", alpha), ("beta", beta)):
-        if not 0 < chance < 1:
-            message = (
-                f"{name} is {chance!r}; a chance of a wrong decision lies between 0 and 1, "
-                "e.g. 0.05."
-            )
-            raise DesignError(message)
+        _check_chance(name, chance)
     if alpha + beta >= 1:
         message = (
             f"alpha {alpha:g} and beta {beta:g} sum to {alpha + beta:g}; together they must stay "
@@ -59,12 +57,21 @@ def one_sided_level(alpha: float, sides: int) -> float:
     >>> one_sided_level(0.05, 1), one_sided_level(0.05, 2)
     (0.05, 0.025)
     """
-    if not 0 < alpha < 1:
-        message = (
-            f"alpha is {alpha!r}; a chance of a wrong decision lies between 0 and 1, e.g. 0.05."
-        )
-        raise DesignError(message)
+    _check_chance("alpha", alpha)
     if sides not in (1, 2):
         message = f"a test has 1 side or 2, not {sides!r}."
         raise DesignError(message)
     return alpha / sides
+
+
+def _check_chance(name: str, chance: float) -> None:
+    if not 0 < chance < 1:
+        message = (
+            f"{name} is {chance!r}; a chance of a wrong decision lies between 0 and 1, e.g. 0.05."
+        )
+        raise DesignError(message)
+    if min(chance, 1 - chance) < LEAST_CHANCE:
+        message = (
+            f"{name} is {chance!r}, nearer to 0 or 1 than can be reckoned with, {LEAST_CHANCE:g}."
+        )
+        raise DesignError(message)

@@ -1,0 +1,330 @@
+"""On which side of the level the mean lies: how many results show it, and what counts buy."""
+
+import math
+from collections.abc import Sequence
+
+from fieldplan.sizing.asked.level_decision import LevelDecision, decision_of
+from fieldplan.sizing.asked.level_picture import level_picture, lines_of
+from fieldplan.sizing.asked.level_steps import (
+    SOURCES,
+    buying_steps,
+    counting_steps,
+    guidance_of,
+    margin_of,
+)
+from fieldplan.sizing.asked.model import Answered, Asked
+from fieldplan.sizing.model import Amount, Finding
+from fieldplan.sizing.words import counted, figure, percent, typed, typed_percent, with_unit
+from fieldplan.stats.many_decisions import chance_of_any
+from fieldplan.stats.precision import whole
+
+TOPIC, TITLE = "mean-and-level", "The mean and the level"
+SHOWN = (0.5, 0.8, 0.95)
+"""Chances whose true means are listed."""
+
+
+def count(asked: Asked) -> Answered:
+    """Count the results that show on which side of the level the mean lies.
+
+    Parameters
+    ----------
+    asked : Asked
+
+    Returns
+    -------
+    Answered
+
+    Raises
+    ------
+    CampaignError
+        The table or the level is missing, or the gray region lies on the wrong side.
+    DesignError
+        The number is out of reach.
+    """
+    decision = decision_of(asked)
+    sure = decision.table.assurance
+    plain = decision.needed()
+    needed = plain
+    if sure != "plain" and asked.question.pilots is not None:
+        needed = decision.needed(sure)
+    finding = _finding(decision, needed, plain=plain)
+    single = len(asked.question.parts) == 1
+    return Answered(
+        needed=needed,
+        target=_target(decision),
+        finding=finding,
+        unrounded=guidance_of(decision) if single else None,
+    )
+
+
+def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
+    """Say at which true means given counts show the side.
+
+    Parameters
+    ----------
+    asked : Asked
+    counts : tuple of int
+        Results by stratum.
+
+    Returns
+    -------
+    Finding
+    """
+    return _finding(decision_of(asked), counts, plain=None)
+
+
+def _finding(
+    decision: LevelDecision, counts: tuple[int, ...], *, plain: tuple[int, ...] | None
+) -> Finding:
+    """Put together what counts buy; with ``plain`` as the answer to how many."""
+    steps = list(buying_steps(decision, counts))
+    if plain is not None:
+        steps = [*counting_steps(decision, counts), *steps]
+        opening = _needed_words(decision, counts)
+    else:
+        opening = _bought_words(decision, counts)
+    return Finding(
+        topic=TOPIC,
+        title=TITLE,
+        answer=f"{opening} {_picture_words(decision, counts)}".strip(),
+        amounts=_amounts(decision, counts, plain),
+        columns=(f"True mean, {decision.asked.question.unit}".rstrip(", "), _out(decision)),
+        rows=lines_of(decision, counts),
+        steps=tuple(steps),
+        assumptions=_assumptions(decision),
+        warnings=tuple(_warnings(decision, counts, plain)),
+        sources=SOURCES[decision.table.test],
+        picture=level_picture(decision, counts),
+    )
+
+
+def _with_unit(decision: LevelDecision, value: float, *, digits: int = 3) -> str:
+    return with_unit(figure(value, digits), decision.asked.question.unit)
+
+
+def _as_typed(decision: LevelDecision, value: float) -> str:
+    return with_unit(typed(value), decision.asked.question.unit)
+
+
+def _out(decision: LevelDecision) -> str:
+    return f"campaigns that come out {decision.side} the level"
+
+
+def _target(decision: LevelDecision) -> str:
+    edge, level = decision.table.gray_edge, _as_typed(decision, decision.level)
+    return (
+        f"a mean of {typed(edge)} shown to lie {decision.side} {level} with a chance of "
+        f"{typed_percent(1 - decision.table.beta)}"
+    )
+
+
+def _needed_words(decision: LevelDecision, counts: Sequence[int]) -> str:
+    table = decision.table
+    level, edge = _as_typed(decision, decision.level), _as_typed(decision, table.gray_edge)
+    beyond = "more" if decision.side == "below" else "less"
+    whose, means = "the mean", "it"
+    if table.decisions > 1:
+        claim = "each of" if table.together == "each-alone" else "all of"
+        whose, means = f"{claim} {table.decisions} means", "they"
+    lies = "lies" if table.decisions == 1 else "lie"
+    wrong = "it lies" if table.decisions == 1 else "one lies"
+    return (
+        f"{counted(sum(counts), 'result')} show {whose} to lie {decision.side} {level} in at least "
+        f"{typed_percent(1 - table.beta)} of campaigns if {means} truly {lies} at {edge}, and in "
+        f"at most {typed_percent(table.alpha)} if {wrong} at {level} or {beyond}."
+    )
+
+
+def _bought_words(decision: LevelDecision, counts: Sequence[int]) -> str:
+    power = percent(decision.power(counts, decision.width))
+    return (
+        f"{counted(sum(counts), 'result')} show a mean of "
+        f"{_as_typed(decision, decision.table.gray_edge)} to lie {decision.side} "
+        f"{_as_typed(decision, decision.level)} in {power} of campaigns."
+    )
+
+
+def _picture_words(decision: LevelDecision, counts: Sequence[int]) -> str:
+    """Say what owners ask: the mean at which 8 of 10 campaigns come out on the side."""
+    reach = decision.reach(counts, 0.8)
+    if reach is None:
+        return "So few results cannot show it, however far from the level the mean lies."
+    if reach == 0:
+        return "With every unit of the list analysed, its mean is known."
+    mean = decision.mean_at(reach)
+    if mean <= 0:
+        return "8 of 10 campaigns would come out below the level only at a mean below 0."
+    line = (
+        f"8 of 10 campaigns come out {decision.side} the level where the true mean is "
+        f"{_with_unit(decision, mean)}"
+    )
+    margin = margin_of(decision, counts) if decision.table.test == "t" else 0.0
+    if margin:
+        name = "upper" if decision.side == "below" else "lower"
+        side = "above" if decision.side == "below" else "below"
+        line += (
+            f"; the {name} limit then lies {_with_unit(decision, margin)} {side} the mean on "
+            "average"
+        )
+    return line + "."
+
+
+def _amounts(
+    decision: LevelDecision, counts: tuple[int, ...], plain: tuple[int, ...] | None
+) -> tuple[Amount, ...]:
+    unit, side = decision.asked.question.unit, decision.side
+    power = decision.power(counts, decision.width)
+    found = [Amount("power_at_gray_edge", f"Chance to come out {side} at the gray edge", power)]
+    for chance in SHOWN:
+        reach = decision.reach(counts, chance)
+        mean = None if reach is None else decision.mean_at(reach)
+        name = f"mean_at_{round(100 * chance)}_percent"
+        words = f"True mean at which {percent(chance)} of campaigns come out {side}"
+        found.append(Amount(name, words, mean, unit))
+    if decision.table.test == "t":
+        words = f"Expected distance from the mean to its {_limit_name(decision)} limit"
+        found.append(Amount("expected_margin", words, margin_of(decision, counts), unit))
+    enough = decision.chance_enough(counts)
+    found.append(Amount("chance_enough", "Chance that these results are enough", enough))
+    if plain is not None:
+        found.append(Amount("plain_n", "Results with sigma at face value", sum(plain), "results"))
+        if len(decision.asked.question.parts) == 1:
+            formula = whole(guidance_of(decision))
+            found.append(Amount("formula_n", "Results by the guidance formula", formula, "results"))
+    return tuple(found)
+
+
+def _limit_name(decision: LevelDecision) -> str:
+    return "upper" if decision.side == "below" else "lower"
+
+
+def _assumptions(decision: LevelDecision) -> tuple[str, ...]:
+    level = _as_typed(decision, decision.level)
+    edge = _as_typed(decision, decision.table.gray_edge)
+    if decision.side == "below":
+        start = (
+            f"Until results show otherwise the mean is taken to lie at {level} or above; few or "
+            "scattered results leave it so. Who starts from the other side writes "
+            'assume = "below-level".'
+        )
+    else:
+        start = (
+            f"Until results show otherwise the mean is taken to lie at {level} or below; few or "
+            "scattered results leave it so. Who starts from the other side writes "
+            'assume = "above-level".'
+        )
+    gray = (
+        f"Between {min(level, edge, key=_number)} and {max(level, edge, key=_number)}, the gray "
+        "region, wrong decisions are tolerated more often than alpha and beta say."
+    )
+    shape = {
+        "t": "The test is t: exact for near normal results, drawn independently.",
+        "sign": "The sign test counts results on each side and needs no shape.",
+        "signed-rank": "The signed rank test needs a symmetric shape, not a normal one.",
+    }[decision.table.test]
+    return start, gray, shape
+
+
+def _number(text: str) -> float:
+    return float(text.split()[0])
+
+
+def _warnings(
+    decision: LevelDecision, counts: tuple[int, ...], plain: tuple[int, ...] | None
+) -> list[str]:
+    found = [_sure(decision, counts, plain), _other_mean(decision), _many(decision)]
+    found.append(_other_limit(decision))
+    return [line for line in found if line]
+
+
+def _sure(decision: LevelDecision, counts: tuple[int, ...], plain: tuple[int, ...] | None) -> str:
+    """Say how sure the number is, sigma being an estimate; this is said every time."""
+    if decision.reach(counts, 0.8) == 0:
+        return ""
+    chance = decision.chance_enough(counts)
+    if chance is None:
+        line = (
+            "Nobody said how many results stand behind sigma, so no chance can be given that these "
+            "are enough; with sigma at face value they are in about half of campaigns."
+        )
+        sure = decision.table.assurance
+        if sure != "plain" and plain is not None:
+            line += f" The assurance of {typed_percent(sure)} has nothing to hold to."
+        return line
+    line = (
+        f"The chance that {sum(counts)} are enough is {percent(chance)} if single results are near "
+        f"normal, sigma being known from {_behind(decision)} only"
+    )
+    if plain is None:
+        return line + "."
+    if plain != counts:
+        few = decision.chance_enough(plain) or 0.0
+        return f"{line}; sigma at face value asks for {sum(plain)}, enough with {percent(few)}."
+    more = [sum(decision.needed(share)) for share in (0.8, 0.9)]
+    return f"{line}; for a chance of 80 % and 90 % it takes {more[0]} and {more[1]}."
+
+
+def _behind(decision: LevelDecision) -> str:
+    known = sorted({p.results for p in decision.asked.question.parts if p.results is not None})
+    behind = str(known[0]) if known[0] == known[-1] else f"{known[0]} to {known[-1]}"
+    return f"{behind} results" + (" a stratum" if len(decision.asked.question.parts) > 1 else "")
+
+
+def _other_mean(decision: LevelDecision) -> str:
+    if decision.table.test == "sign":
+        return (
+            "The sign test decides on the median; it speaks for the mean only where the two are "
+            "alike, and in skewed ground the mean lies above the median."
+        )
+    if decision.table.test == "signed-rank":
+        return (
+            "The signed rank test speaks for the mean only where results scatter alike above and "
+            "below it; in skewed ground it does not."
+        )
+    return ""
+
+
+def _many(decision: LevelDecision) -> str:
+    table = decision.table
+    if table.decisions == 1:
+        return ""
+    alpha, beta = decision.risks
+    if table.together == "all-or-nothing":
+        return (
+            f"One claim needs all {table.decisions} decisions, so alpha stays {typed(alpha)} for "
+            f"each and beta falls to {figure(beta)}; the gray region and sigma are those of the "
+            "decision that is hardest to make."
+        )
+    _, alone, most = chance_of_any([table.alpha] * table.decisions)
+    return (
+        f"{table.decisions} decisions at {typed_percent(table.alpha)} each would go wrong "
+        f"somewhere with a chance of {percent(alone)} if independent and at most {percent(most)}; "
+        f"here each takes alpha {figure(alpha)} and beta {figure(beta)}, so that all together keep theirs."
+    )
+
+
+def _other_limit(decision: LevelDecision) -> str:
+    """Tell where the campaign's own interval is not the one that the test stands for."""
+    if decision.table.test != "t":
+        return (
+            f"The results will be reported with the interval that [rules] fixes; the "
+            f"{decision.table.test.replace('-', ' ')} test itself is not run by estimate."
+        )
+    question = decision.asked.question
+    alpha, _ = decision.risks
+    kind = f"{_limit_name(decision)}-limit"
+    if question.interval == "two-sided":
+        tail = (1 - question.confidence) / 2
+    elif question.interval == kind:
+        tail = 1 - question.confidence
+    else:
+        tail = math.nan
+    if math.isclose(tail, alpha, rel_tol=1e-6):
+        return ""
+    return (
+        f"The test at alpha {figure(alpha)} sets a {typed_percent(round(1 - alpha, 10))} "
+        f"{_limit_name(decision)} limit against the level, and [rules] fixes another "
+        f"({typed_percent(question.confidence)} {question.interval.replace('-', ' ')}). Write "
+        f'interval = "{kind}" and confidence = {typed(round(1 - alpha, 10))} there, or expect '
+        "other chances."
+    )
