@@ -17,7 +17,10 @@ if TYPE_CHECKING:
 QUICK: tuple[str, ...] = ()
 """Topics in the order of the sheet; ``near-normal`` stands in ``near_normal.py``."""
 
-THOROUGH: tuple[str, ...] = ()
+THOROUGH: tuple[str, ...] = (
+    "two-stages",
+    "frontier",
+)
 """Topics that take up to 2 s."""
 
 Wanted = Literal["quick", "all"] | Collection[str]
