@@ -48,8 +48,17 @@ def finding_picture(picture: Picture) -> Figure:
         message = f"the picture {picture.kind!r} has no series to draw"
         raise ValueError(message)
     with pens():
-        wide, narrow = (svg_text(_drawing(picture, mm)) for mm in (WIDE_MM, NARROW_MM))
+        wide, narrow = (svg_text(_drawn(picture, mm)) for mm in (WIDE_MM, NARROW_MM))
     return Figure(wide, picture.caption, picture.alternative, narrow_svg=narrow)
+
+
+def _drawn(picture: Picture, width: float) -> "Canvas":
+    """Draw by kind; a kind without a drawing of its own as lines."""
+    if picture.kind == "mean-band":
+        from fieldplan.packet.charts.mean_band import mean_band_drawing
+
+        return mean_band_drawing(picture, width)
+    return _drawing(picture, width)
 
 
 def _drawing(picture: Picture, width: float) -> "Canvas":

@@ -1,0 +1,275 @@
+"""Where the mean falls at each number of results, and how often its interval misses it."""
+
+import math
+from collections.abc import Sequence
+from typing import Literal
+
+from fieldplan.sizing.asked.model import Asked
+from fieldplan.sizing.beside.near_normal import (
+    SOURCES,
+    TEXTBOOK,
+    Judged,
+    held_sentence,
+    interval_name,
+    judge,
+    scaled,
+    worst,
+)
+from fieldplan.sizing.model import Amount, Finding, Picture, Series, Size
+from fieldplan.sizing.question import Question
+from fieldplan.sizing.shapes import Misses, SiteShape, misses, part_mean, pilot_values, sampled
+from fieldplan.sizing.words import figure, percent, typed_percent, with_unit
+from fieldplan.stats.distributions import normal_quantile
+from fieldplan.stats.mean_shape import POINT, Shape, missed_altogether, share_met
+from fieldplan.stats.shape import Family
+
+Style = Literal["line", "dashes", "points", "hollow", "band-low", "band-high"]
+Row = tuple[float, tuple[float, float], Misses, float]
+
+RARE = (0.01, 0.02, 0.05, 0.10, 0.20)
+"""Shares of a site for which the chance to miss them altogether is shown."""
+
+FEWEST, MOST, DRAWS = 4_000, 20_000, 400_000
+"""Campaigns drawn for each point of the band, and values: its ends are good to about 2 %."""
+
+WIDEST = 3.0
+"""A longer tail than so many times the coefficient of variation seen is not spelled out."""
+
+HALL = "Hall 1992, Journal of the Royal Statistical Society B 54:221 (from memory)"
+
+STEPS = (0.25, 0.4, 0.6, 1.0, 1.6, 2.5, 4.0)
+"""Numbers of results on the picture, as multiples of the planned one."""
+
+
+def finding(asked: Asked, size: Size) -> Finding | None:
+    """Draw the band of the mean against n, with the misses of its interval in numbers.
+
+    Parameters
+    ----------
+    asked : Asked
+    size : Size
+
+    Returns
+    -------
+    Finding or None
+        None where ``near_normal`` can judge no shape.
+    """
+    counts = [entry.needed for entry in size.strata]
+    judged = judge(asked, counts)
+    if not judged:
+        return None
+    picture = _picture(asked, counts, worst(judged)[0])
+    rare = share_met(sum(counts))
+    band = _band_sentence(asked, picture, sum(counts))
+    kept = worst(judged)[1].held >= asked.question.confidence - POINT
+    hidden = _hidden(asked, counts)
+    return Finding(
+        topic="mean-band",
+        title="Where the mean falls at this number of results",
+        answer=f"{held_sentence(asked, counts, judged)} {band}" if kept else band,
+        amounts=(*_amounts(asked, counts, judged), Amount("share_met", _RARE_MET, rare)),
+        columns=("A part of the site of", "missed by all results, per 100 campaigns"),
+        rows=tuple(
+            (typed_percent(share), f"{100 * missed_altogether(sum(counts), share):.1f}")
+            for share in RARE
+        ),
+        assumptions=(
+            f"The band is that of {worst(judged)[0].name}, the shape that serves the interval "
+            f"worst of those that fit; {FEWEST} to {MOST} simulated campaigns a number.",
+            "Results are independent, at random places of a large population.",
+        ),
+        warnings=(*hidden, _rare_sentence(sum(counts), rare)),
+        sources=(*SOURCES, HALL),
+        picture=picture,
+    )
+
+
+_RARE_MET = "Smallest part of the site that is met at least once in 95 of 100 campaigns"
+
+
+def _amounts(asked: Asked, counts: Sequence[int], judged: Sequence[Judged]) -> tuple[Amount, ...]:
+    """Simulate the corrected interval, and n for shapes with zeros, which no table holds."""
+    from fieldplan.stats.mean_simulation import n_within_a_point, simulate_coverage
+
+    question = asked.question
+    confidence, kind = question.confidence, question.interval
+    found = [
+        simulate_coverage(
+            sampled(question, shape, counts), confidence=confidence, kind=kind, campaigns=10_000
+        )
+        for shape, _ in judged
+    ]
+    low = min(found, key=lambda one: one.held_by_hall)
+    amounts = [
+        Amount("held_by_hall", "Held by the closed form corrected for skewness, worst shape",
+               low.held_by_hall),
+        Amount("simulation_error", "Standard error of that share, from simulating",
+               low.standard_error),
+    ]  # fmt: skip
+    if len(counts) == 1:
+        amounts += [
+            Amount(
+                f"n_within_a_point_{shape.parts[0].family}_with_zeros",
+                f"Results for one point short at most, {shape.name}",
+                n_within_a_point(shape.parts[0], confidence=confidence, kind=kind),
+            )
+            for shape, _ in judged
+            if shape.zeros
+        ]
+    return tuple(amounts)
+
+
+def _hidden(asked: Asked, counts: Sequence[int]) -> tuple[str, ...]:
+    """Say what the interval is worth if the pilot hid as long a tail as one in ten would."""
+    question = asked.question
+    if len(question.parts) > 1:
+        return ()
+    wider = _wider(asked)
+    if not wider:
+        return ()
+    seen = question.parts[0].sigma / part_mean(question, question.parts[0])
+    found = []
+    for family, largest in wider:
+        cv = min(largest, WIDEST * seen)
+        held = misses(question, SiteShape(family, (Shape(family, cv),)), counts).held
+        found.append((held, cv, largest > cv))
+    held, cv, capped = min(found)
+    how = "which they do not rule out" if capped else "which about one such pilot in ten would hide"
+    return (
+        f"{question.parts[0].results} results cannot show a long tail: with a CV of "
+        f"{figure(cv, 2)} instead of {figure(seen, 2)}, {how}, the {interval_name(question)} "
+        f"would hold the mean in about {100 * held:.0f} of 100 campaigns.",
+    )
+
+
+def _wider(asked: Asked) -> list[tuple[Family, float]]:
+    """Give the largest CV that the pilot does not rule out, by family.
+
+    From the likelihood of its results where they are at hand, else from the CV alone.
+    """
+    from fieldplan.stats.censored_fit import FEWEST_DETECTS, fit_censored
+    from fieldplan.stats.mean_simulation import largest_cv
+
+    part = asked.question.parts[0]
+    mean = part_mean(asked.question, part)
+    if part.results is None or part.results < 2 or not mean > 0:
+        return []
+    families: tuple[Family, ...] = ("gamma", "lognormal")
+    entry = asked.entries[0] if asked.entries else None
+    if entry is None or not entry.values:
+        seen = part.sigma / mean
+        return [(name, largest_cv(name, seen, results=part.results)) for name in families]
+    detects, limits = pilot_values(entry)
+    if len(set(detects)) < FEWEST_DETECTS or min(detects) <= 0:
+        return []
+    return [(name, fit_censored(detects, limits, name).cv_high) for name in families]
+
+
+def _picture(asked: Asked, counts: Sequence[int], shape: SiteShape) -> Picture:
+    """Simulate the band at each number, with the misses there, from a quarter to four times n."""
+    from fieldplan.stats.mean_simulation import BAND, simulate_coverage
+
+    question, total = asked.question, sum(counts)
+    centre = _centre(question)
+    least = 2 * len(counts)
+    numbers = {max(least, round(total * step)) for step in STEPS}
+    numbers |= {TEXTBOOK} if least <= TEXTBOOK and min(numbers) < TEXTBOOK < max(numbers) else set()
+    rows: list[Row] = []
+    for number in sorted(numbers):
+        at = list(counts) if number == total else scaled(counts, number)
+        drawn = simulate_coverage(
+            sampled(question, shape, at),
+            confidence=question.confidence,
+            kind=question.interval,
+            campaigns=max(FEWEST, min(MOST, DRAWS // number)),
+        )
+        missed = misses(question, shape, at)
+        rows.append((float(sum(at)), drawn.band, missed, _normal_reach(question, at, BAND)))
+    n = tuple(row[0] for row in rows)
+
+    def series(label: str, style: Style, values: Sequence[float]) -> Series:
+        return Series(label, n, tuple(values), style)
+
+    return Picture(
+        kind="mean-band",
+        caption=(
+            f"Nine campaigns in ten put the mean inside the band ({shape.name}, the worst of the "
+            "shapes that fit); dashes show the band of a normal mean. Below it: in how many of "
+            f"100 campaigns the {interval_name(question)} misses the true mean."
+        ),
+        alternative=_alternative(rows, question),
+        x_label="number of results, n",
+        y_label=_label(question, centre),
+        series=(
+            series("5 %", "band-low", [centre + row[1][0] for row in rows]),
+            series("95 %", "band-high", [centre + row[1][1] for row in rows]),
+            series("normal, low", "dashes", [centre - row[3] for row in rows]),
+            series("normal, high", "dashes", [centre + row[3] for row in rows]),
+            *(
+                series(f"true mean {side}", "points", values)
+                for side, values in (
+                    ("above", [100 * row[2].too_low for row in rows]),
+                    ("below", [100 * row[2].too_high for row in rows]),
+                )
+                if any(values)
+            ),
+        ),
+        marks=((f"{total} planned", float(total)),),
+        levels=(("true mean", centre),),
+    )
+
+
+def _centre(question: Question) -> float:
+    """Give the mean to expect over the parts; 0 where one is unknown, and errors are drawn."""
+    means = [part_mean(question, part) for part in question.parts]
+    if not all(mean > 0 for mean in means):
+        return 0.0
+    return math.fsum(part.weight * m for part, m in zip(question.parts, means, strict=True))
+
+
+def _label(question: Question, centre: float) -> str:
+    what = "mean" if centre else "error of the mean"
+    name = f"{what} of {question.analyte}" if question.analyte else what
+    return f"{name} ({question.unit})" if question.unit else name
+
+
+def _normal_reach(question: Question, counts: Sequence[int], share: float) -> float:
+    variance = math.fsum(
+        (part.weight * part.sigma) ** 2 / count
+        for part, count in zip(question.parts, counts, strict=True)
+    )
+    return normal_quantile((1 + share) / 2) * math.sqrt(variance)
+
+
+def _alternative(rows: Sequence[Row], question: Question) -> str:
+    told = "; ".join(
+        f"{n:.0f} results: {100 * missed.too_low:.1f} above and {100 * missed.too_high:.1f} below"
+        for n, _, missed, _ in rows
+    )
+    return (
+        f"Misses of the {interval_name(question)} per 100 campaigns, true mean above it and below "
+        f"it, against the number of results. {told}."
+    )
+
+
+def _band_sentence(asked: Asked, picture: Picture, total: int) -> str:
+    """Say between what ends nine campaigns in ten put the mean."""
+    low, high = picture.series[0], picture.series[1]
+    place = low.x.index(float(total))
+    ends = [figure(line.y[place]).replace("-", "−") for line in (low, high)]
+    centre = picture.levels[0][1]
+    where = f"the truth is {with_unit(figure(centre), asked.question.unit)}"
+    if not centre:
+        return (
+            f"Nine campaigns in ten come out with an error of "
+            f"{with_unit(f'{ends[0]} to {ends[1]}', asked.question.unit)}."
+        )
+    return f"Nine campaigns in ten put the mean between {ends[0]} and {ends[1]} where {where}."
+
+
+def _rare_sentence(total: int, rare: float) -> str:
+    return (
+        f"A part of the site smaller than {percent(rare)} of it is missed by all {total} results "
+        f"in more than {typed_percent(0.05)} of campaigns, (1 − p)^{total}: if it is much higher "
+        "than the rest, no interval from these results knows of it."
+    )
