@@ -8,6 +8,7 @@ from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
 from fieldplan.sizing.sentences import sentences
 from fieldplan.sizing.steps import steps
+from fieldplan.sizing.together import CHOOSING, joint_balance
 from fieldplan.sizing.words import target_words
 from fieldplan.stats.allocation import unrounded_shares, unrounded_total
 from fieldplan.stats.intervals import t_quantile
@@ -116,13 +117,16 @@ def _unrounded(question: Question) -> float | None:
         target = question.target_half_width / t_quantile(
             float("inf"), confidence=question.confidence, kind=question.interval
         )
-    return unrounded_total(question.strata, target**2, allocation=question.allocation)
+    if question.also and question.allocation in CHOOSING:
+        return float(sum(joint_balance(question).counts))
+    own = unrounded_total(question.strata, target**2, allocation=question.allocation)
+    return max([own, *(_unrounded(other) or 0.0 for other in question.also)])
 
 
 def _strata(question: Question, counts: Counts) -> tuple[StratumSize, ...]:
     total = sum(counts.needed)
-    shares = unrounded_shares(question.strata, total, allocation=question.allocation)
-    floors = question.strata.floors
+    shares = unrounded_shares(question.sharing, total, allocation=question.allocation)
+    floors = question.sharing.floors
     typed = question.locations is not None or question.census
     found = []
     for k, part in enumerate(question.parts):

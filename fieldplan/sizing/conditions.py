@@ -2,7 +2,7 @@
 
 from fieldplan.sizing.lean import lean_sentences
 from fieldplan.sizing.question import Question
-from fieldplan.sizing.words import counted, listed
+from fieldplan.sizing.words import counted, named
 
 NEAR_NORMAL = (
     "Chances take single results as near normal; with skewed ones they are lower. In simulated "
@@ -65,9 +65,9 @@ def _few(question: Question) -> list[str]:
     few = [part for part in question.parts if (part.results or FEW) < FEW]
     if not few:
         return []
-    named = listed([f"{part.name} ({part.results})" for part in few])
+    where = named([f"{part.name} ({part.results})" for part in few])
     return [
-        f"Fewer than {FEW} results stand behind sigma in {named}, and Neyman allocation follows "
+        f"Fewer than {FEW} results stand behind sigma in {where}, and Neyman allocation follows "
         "them: simulated pilots of 3 or 4 near normal results a stratum kept a stated 80 % in 72 "
         "to 80 % of campaigns."
     ]
@@ -78,7 +78,7 @@ def _origin(question: Question) -> str:
     unknown = [part.name for part in question.parts if part.results is None]
     if not unknown:
         return ""
-    where = "" if len(question.parts) == 1 else f" in {listed(unknown)}"
+    where = "" if len(question.parts) == 1 else f" in {named(unknown)}"
     assumed = any(part.assumed for part in question.parts)
     what = "was ASSUMED" if assumed else "was typed without the number of results behind it"
     return (

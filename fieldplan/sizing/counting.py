@@ -1,5 +1,6 @@
 """The counts themselves: plain, at an assurance, for a budget, typed; then losses and money."""
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
@@ -7,6 +8,7 @@ from fieldplan.base.errors import DesignError
 from fieldplan.sizing.model import QualityControlCount
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
+from fieldplan.sizing.together import most_for_money, weighed_counts, weighs
 from fieldplan.sizing.words import targeted_words
 from fieldplan.stats.allocation import check_total, first_that, share_total, smallest_total
 from fieldplan.stats.distributions import normal_quantile
@@ -46,10 +48,7 @@ def count(question: Question) -> Counts:
     plain = None if question.target == "budget" else tuple(plain_counts(question))
     if question.locations is not None:
         return _typed(question, plain, question.locations)
-    if plain is None:
-        needed = tuple(affordable_counts(question))
-    else:
-        needed = tuple(assured_counts(question, question.assurance) or plain)
+    needed = tuple(affordable_counts(question) if plain is None else needed_counts(question))
     return Counts(plain, needed, planned_counts(question, needed))
 
 
@@ -73,8 +72,9 @@ def _census(question: Question) -> Counts:
 
 def _typed(question: Question, plain: tuple[int, ...] | None, locations: int) -> Counts:
     """Share a typed number of locations; the results expected are what losses leave."""
-    check_total(question.strata, locations)
-    planned = share_total(question.strata, locations, allocation=question.allocation)
+    strata = question.sharing_of_visits
+    check_total(strata, locations)
+    planned = share_total(strata, locations, allocation=question.allocation)
     needed = tuple(
         max(min(2, visits), int(visits * (1 - part.loss) + 1e-9))
         for visits, part in zip(planned, question.parts, strict=True)
@@ -82,8 +82,17 @@ def _typed(question: Question, plain: tuple[int, ...] | None, locations: int) ->
     return Counts(plain, needed, tuple(planned))
 
 
+def needed_counts(question: Question) -> list[int]:
+    """Count the results that meet the target with the assurance chosen, if any."""
+    if weighs(question):
+        return weighed_counts(question)
+    return assured_counts(question, question.assurance) or plain_counts(question)
+
+
 def plain_counts(question: Question) -> list[int]:
     """Count the results that meet the target with sigma taken at face value."""
+    if weighs(question):
+        return weighed_counts(question, plain=True)
     strata, allocation = question.strata, question.allocation
     if question.target_half_width is None:
         return smallest_total(strata, question.value**2, allocation=allocation)
@@ -117,6 +126,8 @@ def assured_counts(question: Question, assurance: float | None) -> list[int] | N
     """
     if assurance is None or question.target == "budget":
         return None
+    if weighs(question):
+        return weighed_counts(replace(question, assurance=assurance))
     known = question.pilots is None
     if known and question.target_half_width is None:
         return None
@@ -141,7 +152,7 @@ def assured_counts(question: Question, assurance: float | None) -> list[int] | N
 
 def affordable_counts(question: Question) -> list[int]:
     """Count the most results that the budget buys, shared for the smallest standard error."""
-    strata, prices = question.strata, question.prices
+    strata, prices = question.sharing, question.prices
     if prices is None or prices.of_a_visit + prices.of_a_result <= 0:
         message = (
             "a budget sets no number while per_location and per_analysis are both 0; "
@@ -150,8 +161,7 @@ def affordable_counts(question: Question) -> list[int]:
         raise DesignError(message)
 
     def cost(total: int) -> float:
-        counts = share_total(strata, total, allocation=question.allocation)
-        return total_cost(question, planned_counts(question, counts)) or 0.0
+        return _planned_cost(question, share_total(strata, total, allocation=question.allocation))
 
     least, most = sum(strata.floors), strata.most
     if not meets(cost(least), question.value):
@@ -161,11 +171,17 @@ def affordable_counts(question: Question) -> list[int]:
             f"{prices.currency}."
         )
         raise DesignError(message)
+    if question.allocation == "cost-optimal":
+        return most_for_money(question, lambda counts: _planned_cost(question, counts))
     if meets(cost(most), question.value):
         total = most
     else:
         total = smallest(lambda n: not meets(cost(n), question.value), least, most, back=0) - 1
     return share_total(strata, total, allocation=question.allocation)
+
+
+def _planned_cost(question: Question, counts: Sequence[int]) -> float:
+    return total_cost(question, planned_counts(question, counts)) or 0.0
 
 
 def planned_counts(question: Question, needed: Sequence[int]) -> tuple[int, ...]:
@@ -208,4 +224,7 @@ def total_cost(question: Question, planned: Sequence[int]) -> float | None:
         return None
     visits = sum(planned) + question.targeted
     controls = sum(entry.count for entry in control_counts(question, planned))
-    return prices.bill(visits=visits, jars=visits + controls)
+    extra = math.fsum(
+        part.extra_cost * count for part, count in zip(question.parts, planned, strict=True)
+    )
+    return prices.bill(visits=visits, jars=visits + controls) + extra

@@ -26,7 +26,7 @@ def curve(question: Question, plain: int, needed: int) -> tuple[CurvePoint, ...]
     tuple of CurvePoint
         Rising n, within the floors and the list.
     """
-    strata = question.strata
+    strata = question.sharing
     ends = sorted((plain, needed))
     low = min(max(sum(strata.floors), ends[0] // 2), needed)
     high = max(min(strata.most, 2 * ends[1]), needed)

@@ -5,7 +5,7 @@ from collections.abc import Sequence
 
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Part, Question
-from fieldplan.sizing.words import figure, listed, percent, typed, typed_percent
+from fieldplan.sizing.words import figure, listed, named, percent, typed, typed_percent
 from fieldplan.stats.shape import (
     n_for_one_sided,
     n_for_two_sided,
@@ -48,7 +48,7 @@ def lean_sentences(question: Question, needed: tuple[int, ...]) -> list[str]:
     held = [*_held(question, n, lean), *_short_list(question, needed)]
     known = [part for part in question.parts if part.skewness is not None]
     if lean is None:
-        where = f"Skewness is known in {listed([p.name for p in known])} only. " if known else ""
+        where = f"Skewness is known in {named([p.name for p in known])} only. " if known else ""
         return [where + RULE, *held]
     lines = [_together(question, n, lean)] if len(question.parts) > 1 else []
     if abs(lean) < LITTLE:
@@ -96,7 +96,7 @@ def equivalent_sample(question: Question, needed: Sequence[int]) -> tuple[int, f
 
 
 def _together(question: Question, n: int, lean: float) -> str:
-    own = listed([f"{_signed(part.skewness or 0.0)} in {part.name}" for part in question.parts])
+    own = named([f"{_signed(part.skewness or 0.0)} in {part.name}" for part in question.parts])
     return (
         f"The interval belongs to the weighted mean. It leans like that of one sample of {n} "
         f"results (degrees of freedom + 1) with a skewness G1 of {_signed(lean)}: the strata's own "

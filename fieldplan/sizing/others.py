@@ -170,7 +170,7 @@ def _enough(found: OtherPrecision, precision: Precision, asked: Question) -> int
 
     None where no number does.
     """
-    strata = asked.strata
+    strata = asked.sharing
 
     def fits(total: int) -> bool:
         counts = share_total(strata, total, allocation=asked.allocation)

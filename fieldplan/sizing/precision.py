@@ -13,6 +13,9 @@ from fieldplan.stats.assurance import (
 from fieldplan.stats.intervals import t_quantile
 from fieldplan.stats.stratified import satterthwaite, variance_factors
 
+FOLLOWING = {"neyman": 1.0, "cost-optimal": 1.0, "equal-precision": 2.0}
+"""Allocations whose counts follow the pilot's s, and to which power."""
+
 
 @dataclass(frozen=True)
 class PilotTerm:
@@ -26,7 +29,7 @@ class PilotTerm:
         Sum of their terms W² s² (1 − n/N) / n.
     moving : float
         The same over strata whose number of results follows the pilot: neither held at the floor
-        nor taken whole. 0 unless the allocation is Neyman's.
+        nor taken whole. 0 where the allocation is proportional.
     results : int
         n0.
     excess_kurtosis : float
@@ -117,7 +120,7 @@ class Precision:
         question, strata = self.question, self.question.strata
         parts = self.parts(counts)
         bounds = list(zip(counts, strata.floors, strata.caps, strict=True))
-        follows = question.allocation == "neyman"
+        follows = question.allocation in FOLLOWING
         free = [follows and floor < count < cap for count, floor, cap in bounds]
         return tuple(
             PilotTerm(
@@ -131,7 +134,7 @@ class Precision:
         )
 
     def luck_of_allocation(self, counts: Sequence[float]) -> float:
-        """Give by what factor Neyman counts make the predicted variance look too small.
+        """Give by what factor counts that follow a pilot make the predicted variance too small.
 
         Parameters
         ----------
@@ -151,7 +154,9 @@ class Precision:
         Σ p (1 − p/P) / df above that of df/χ², where p is a stratum's share of the predicted
         variance, P the sum of p, and df = n0 − 1. Only strata that follow the pilot have a p: one
         at its floor, or a list taken whole, counts in the variance alone, so that P falls below 1.
-        Strata of one pilot have one p. Derived here; the tests hold it to simulation.
+        Strata of one pilot have one p. Counts of least cost have the same factor; those of equal
+        precision follow s² rather than s, so that Σ p/u² stands in place of the quotient and the
+        excess is twice as large. Derived here; the tests hold it to simulation.
         """
         terms = self.pilot_terms(counts)
         total = math.fsum(term.variance for term in terms)
@@ -161,7 +166,7 @@ class Precision:
             for term in terms
             if term.moving > 0
         ]
-        return math.exp(math.fsum(excess))
+        return math.exp(FOLLOWING.get(self.question.allocation, 0.0) * math.fsum(excess))
 
     def chance(self, counts: Sequence[float], *, sigma_known: bool = False) -> float | None:
         """Give the chance that these counts meet the target.

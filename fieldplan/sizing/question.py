@@ -1,10 +1,12 @@
 """What is asked of sizing, free of files: parts, target, prices. Bare numbers make one as well."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
+from functools import cached_property
 from typing import Literal
 
 from fieldplan.base.errors import DesignError
+from fieldplan.sizing.bounds import ceilings_of, check_bounds, strata_of
 from fieldplan.sizing.model import NumberFrom
 from fieldplan.sizing.money import Prices
 from fieldplan.stats.allocation import Allocation
@@ -13,6 +15,7 @@ from fieldplan.stats.intervals import IntervalKind
 from fieldplan.stats.strata import Strata
 
 TargetKind = Literal["standard_error", "half_width", "relative_half_width", "budget"]
+EqualIn = Literal["standard-error", "relative-standard-error"]
 
 
 @dataclass(frozen=True)
@@ -42,6 +45,12 @@ class Part:
         Of the pilot's results, or typed.
     excess_kurtosis : float or None
         Of single results, as declared; None takes them as near normal.
+    least : int
+        Fewest results here, where more than the design's floor.
+    most : int or None
+        Most locations that can be visited here.
+    extra_cost : float
+        Money that a location here costs beyond the common prices, or less than them.
     mean : float or None
         To expect, for a relative target.
     mean_from : str
@@ -61,6 +70,9 @@ class Part:
     mean: float | None = None
     mean_from: str = ""
     excess_kurtosis: float | None = None
+    least: int = 0
+    most: int | None = None
+    extra_cost: float = 0.0
 
 
 @dataclass(frozen=True)
@@ -95,6 +107,11 @@ class Question:
         Every unit of the list is visited.
     grid : bool
         A systematic layout, which is sized without credit.
+    equal_in : str
+        What equal precision levels out between strata: the standard error of their means, or the
+        same as a share of the mean.
+    also : tuple of Question
+        What is asked of other analytes in the same samples; all targets are kept.
     targeted : int
         Places chosen by judgement: visited and analysed, so they cost, but they count as no n.
     """
@@ -113,6 +130,8 @@ class Question:
     locations: int | None = None
     census: bool = False
     grid: bool = False
+    equal_in: EqualIn = "standard-error"
+    also: "tuple[Question, ...]" = ()
     targeted: int = 0
     prices: Prices | None = None
     controls: tuple[ControlRate, ...] = ()
@@ -140,16 +159,26 @@ class Question:
                 "mobilisation, per_location and per_analysis."
             )
             raise DesignError(message)
+        check_bounds(self)
+
+    @cached_property
+    def strata(self) -> Strata:
+        """The parts as results are shared between them, with the sigmas of this analyte."""
+        return strata_of(self)
+
+    @cached_property
+    def sharing(self) -> Strata:
+        """The same with the spread that decides the shares: of all analytes where several do."""
+        if not self.also:
+            return self.strata
+        from fieldplan.sizing.together import joint_strata
+
+        return joint_strata(self)
 
     @property
-    def strata(self) -> Strata:
-        """The parts as the allocation sees them."""
-        return Strata(
-            weights=tuple(part.weight for part in self.parts),
-            sigmas=tuple(part.sigma for part in self.parts),
-            populations=tuple(part.population for part in self.parts),
-            floor=self.floor,
-        )
+    def sharing_of_visits(self) -> Strata:
+        """The same for locations: more may be visited than losses leave as results."""
+        return replace(self.sharing, ceilings=ceilings_of([part.most for part in self.parts]))
 
     @property
     def target_standard_error(self) -> float | None:

@@ -2,13 +2,14 @@
 
 from dataclasses import replace
 
-from fieldplan.sizing.counting import Counts, assured_counts, plain_counts, total_cost
+from fieldplan.sizing.counting import Counts, assured_counts, needed_counts, total_cost
 from fieldplan.sizing.model import AssuredSize
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
 from fieldplan.sizing.words import (
     counted,
     figure,
+    in_strata,
     listed,
     percent,
     target_words,
@@ -57,8 +58,7 @@ def _answer(question: Question, counts: Counts) -> str:
     needed, planned = sum(counts.needed), sum(counts.planned)
     where = ""
     if len(question.parts) > 1:
-        pairs = zip(counts.planned, question.parts, strict=True)
-        where = ": " + listed([f"{n} in {part.name}" for n, part in pairs])
+        where = ": " + in_strata(counts.planned, [part.name for part in question.parts])
     if question.census:
         return f"All {planned} units of the list are visited{where}."
     if question.locations is not None:
@@ -82,8 +82,7 @@ def visit_words(question: Question, counts: Counts) -> str:
     needed, planned = sum(counts.needed), sum(counts.planned)
     where = ""
     if len(question.parts) > 1:
-        pairs = zip(counts.planned, question.parts, strict=True)
-        where = ": " + listed([f"{n} in {part.name}" for n, part in pairs])
+        where = ": " + in_strata(counts.planned, [part.name for part in question.parts])
     if planned == needed and not where:
         return ""
     spare = "" if planned == needed else f"; {_spare(planned - needed)} for losses"
@@ -188,7 +187,7 @@ def _floor(question: Question, counts: Counts) -> str:
     if question.locations is not None or question.target == "budget":
         return ""
     free = replace(question, floor=2)
-    without = sum(assured_counts(free, free.assurance) or plain_counts(free))
+    without = sum(needed_counts(free))
     extra = sum(counts.needed) - without
     if extra <= 0:
         return ""

@@ -1,6 +1,7 @@
 """The answer in sentences, and under what condition it holds."""
 
 import math
+from collections.abc import Sequence
 
 from fieldplan.sizing.question import Question
 
@@ -87,6 +88,42 @@ def listed(items: list[str]) -> str:
     '5 in a, 4 in b and 6 in c'
     """
     return items[0] if len(items) == 1 else ", ".join(items[:-1]) + " and " + items[-1]
+
+
+FEW = 8
+"""Up to so many strata a sentence names every one; of more it names the largest three."""
+
+
+def in_strata(counts: Sequence[int], names: Sequence[str]) -> str:
+    """Say how many lie in each stratum; of many strata name the largest three and sum up the rest.
+
+    Examples
+    --------
+    >>> in_strata([5, 4, 6], ["a", "b", "c"])
+    '5 in a, 4 in b and 6 in c'
+    >>> in_strata([2, 9, 2, 3, 4, 2, 2, 2, 2], "abcdefghi")
+    '9 in b, 4 in e, 3 in d and 12 in 6 others'
+    """
+    pairs = list(zip(counts, names, strict=True))
+    if len(pairs) <= FEW:
+        return listed([f"{n} in {name}" for n, name in pairs])
+    pairs.sort(key=lambda pair: -pair[0])
+    rest = sum(n for n, _ in pairs[3:])
+    shown = [f"{n} in {name}" for n, name in pairs[:3]]
+    return listed([*shown, f"{rest} in {len(pairs) - 3} others"])
+
+
+def named(names: Sequence[str]) -> str:
+    """Name a few, or the first three of many and count the rest.
+
+    Examples
+    --------
+    >>> named(["a", "b"]), named("abcdefghijk")
+    ('a and b', 'a, b, c and 8 others')
+    """
+    if len(names) <= FEW:
+        return listed(list(names))
+    return listed([*names[:3], f"{len(names) - 3} others"])
 
 
 def with_unit(value: str, unit: str) -> str:

@@ -67,8 +67,8 @@ class Asked:
         """Share a total between the strata as the design does, floors in."""
         question = self.question
         allocation = question.allocation if self.sigma_known else "proportional"
-        least = max(total, sum(question.strata.floors))
-        return tuple(share_total(question.strata, least, allocation=allocation))
+        least = max(total, sum(question.sharing.floors))
+        return tuple(share_total(question.sharing, least, allocation=allocation))
 
 
 def entries_of(spread: "Spread", analyte: str) -> "tuple[StratumSpread, ...]":

@@ -1,0 +1,262 @@
+"""Counts where something is weighed: several analytes against each other, or money against spread.
+
+Several analytes share the same samples. Their targets are all kept, with the fewest results (or
+the least money) where the allocation may choose; where it may not, with the smallest total.
+"""
+
+import math
+from collections.abc import Callable, Sequence
+from dataclasses import replace
+
+from fieldplan.base.errors import DesignError
+from fieldplan.sizing.precision import Precision
+from fieldplan.sizing.question import Question
+from fieldplan.stats.allocation import share_total
+from fieldplan.stats.intervals import t_quantile
+from fieldplan.stats.least_cost import least_cost, smallest_variance
+from fieldplan.stats.precision import meets, smallest
+from fieldplan.stats.several_analytes import Balance, Demand, balance
+from fieldplan.stats.strata import Strata
+
+CHOOSING = ("neyman", "cost-optimal")
+"""Allocations that follow the spread wherever the targets lead them."""
+
+FEW_STRATA = 30
+"""Up to so many strata single results are taken away again where all targets allow it."""
+
+
+def weighs(question: Question) -> bool:
+    """Tell whether something is weighed: other analytes, or what results cost."""
+    return bool(question.also) or (
+        question.allocation == "cost-optimal" and question.target != "budget"
+    )
+
+
+def everyone(question: Question) -> tuple[Question, ...]:
+    """Give the questions of all analytes that decide, each for itself."""
+    others = (replace(other, floor=question.floor, also=()) for other in question.also)
+    return (replace(question, also=()), *others) if question.also else (question,)
+
+
+def face_value(question: Question) -> Question:
+    """Give the question with every sigma taken as exact."""
+    others = tuple(replace(other, assurance=None) for other in question.also)
+    return replace(question, assurance=None, also=others)
+
+
+def holds_to(member: Question) -> float | None:
+    """Give the assurance that counts must reach; None where none was chosen or can be had."""
+    if member.pilots is None and member.target_half_width is None:
+        return None
+    return member.assurance
+
+
+def keeps(member: Question, counts: Sequence[int]) -> bool:
+    """Tell whether counts keep one analyte's target, with its assurance where it has one."""
+    precision, width = Precision(member), member.target_half_width
+    if width is not None and not meets(precision.half_width(counts), width):
+        return False
+    if width is None and not meets(precision.variance(counts), member.value**2):
+        return False
+    wanted = holds_to(member)
+    if wanted is None:
+        return True
+    chance = precision.chance(counts, sigma_known=member.pilots is None)
+    return (chance or 0.0) >= wanted
+
+
+def weighed_counts(question: Question, *, plain: bool = False) -> list[int]:
+    """Count the results that keep every analyte's target, weighed by spread and cost.
+
+    Parameters
+    ----------
+    question : Question
+    plain : bool
+        Take every sigma at face value.
+
+    Returns
+    -------
+    list of int
+        Results by stratum.
+
+    Raises
+    ------
+    DesignError
+        A target is out of reach.
+    """
+    question = face_value(question) if plain else question
+    members = everyone(question)
+    chosen = question.allocation in CHOOSING
+    if chosen and all(m.target == "standard_error" and holds_to(m) is None for m in members):
+        return list(exact_counts(question)[0])
+    strata = question.sharing
+
+    def shared(total: int) -> list[int]:
+        return share_total(strata, total, allocation=question.allocation)
+
+    def fits(total: int) -> bool:
+        counts = shared(total)
+        return all(keeps(member, counts) for member in members)
+
+    back = 2 * len(question.parts) + 1 if len(question.parts) <= FEW_STRATA else 0
+    total = smallest(fits, sum(strata.floors), strata.most, back=back)
+    if not fits(total):
+        message = (
+            f"the targets ask for more than the {strata.most} results that can be had; allow a "
+            "larger error or a lower assurance, or raise the most that a stratum may have."
+        )
+        raise DesignError(message)
+    return _trimmed(question, shared(total)) if chosen else shared(total)
+
+
+def exact_counts(question: Question) -> tuple[tuple[int, ...], float, float]:
+    """Find the counts of least cost for target standard errors: counts, value and its bound.
+
+    Parameters
+    ----------
+    question : Question
+        All of whose members have a standard error as target.
+
+    Returns
+    -------
+    counts : tuple of int
+    value, bound : float
+        What they cost (results, or money), and what no other counts can undercut.
+    """
+    demands = [
+        Demand(tuple(part.sigma for part in member.parts), member.value**2, member.analyte)
+        for member in everyone(question)
+    ]
+    found, _ = least_cost(_priced(question), demands)
+    return found.counts, found.value, found.bound
+
+
+def _priced(question: Question) -> Strata:
+    """Give the strata with costs only where the allocation looks at them."""
+    strata = question.strata
+    return strata if question.allocation == "cost-optimal" else replace(strata, costs=())
+
+
+def _trimmed(question: Question, counts: list[int]) -> list[int]:
+    """Take results away, the dearest first, as long as every target is kept."""
+    if len(counts) > FEW_STRATA:
+        return counts
+    members, strata = everyone(question), _priced(question)
+    costs, floors = strata.unit_costs, strata.floors
+    order = sorted(range(len(counts)), key=lambda k: (-costs[k], -counts[k], k))
+    for k in order:
+        while counts[k] > floors[k]:
+            fewer = [*counts[:k], counts[k] - 1, *counts[k + 1 :]]
+            if not all(keeps(member, fewer) for member in members):
+                break
+            counts = fewer
+    return counts
+
+
+def alone(member: Question) -> list[int]:
+    """Count the results that one analyte would need without the others.
+
+    Raises
+    ------
+    DesignError
+        Its target is out of reach; the line names it.
+    """
+    from fieldplan.sizing.counting import needed_counts
+
+    try:
+        return needed_counts(member)
+    except DesignError as fault:
+        raise DesignError(*(f"{member.analyte}: {line}" for line in fault.problems)) from fault
+
+
+def demand_of(member: Question) -> Demand:
+    """Put one analyte's target as a tolerated variance.
+
+    A half-width takes Student's t, and an assurance the reserve, that its own counts would have.
+    """
+    sigmas = tuple(part.sigma for part in member.parts)
+    if member.target == "standard_error" and holds_to(member) is None:
+        return Demand(sigmas, member.value**2, member.analyte)
+    counts, precision = alone(member), Precision(member)
+    width = member.target_half_width
+    if width is None or holds_to(member) is not None:
+        return Demand(sigmas, precision.variance(counts), member.analyte)
+    known = precision.degrees_of_freedom(counts)
+    if math.isinf(known):  # a list taken whole
+        return Demand(sigmas, 0.0, member.analyte)
+    t = t_quantile(known, confidence=member.confidence, kind=member.interval)
+    return Demand(sigmas, (width / t) ** 2, member.analyte)
+
+
+def joint_balance(question: Question) -> Balance:
+    """Weigh the analytes that decide against each other, before any rounding."""
+    return balance(_priced(question), [demand_of(member) for member in everyone(question)])
+
+
+def joint_strata(question: Question) -> Strata:
+    """Give the strata with the spread that shares results between them for all analytes.
+
+    Parameters
+    ----------
+    question : Question
+        With others in ``also``.
+
+    Notes
+    -----
+    Neyman and least cost take √(Σ λ σ²/V), with the multipliers λ of the unrounded optimum. Equal
+    precision takes, in each stratum, the analyte that is furthest from its target there.
+    """
+    strata, members = question.strata, everyone(question)
+    if question.allocation == "proportional":
+        return strata
+    if question.allocation == "equal-precision":
+        spreads = [member.strata.levelled for member in members]
+        if question.equal_in == "standard-error":
+            limits = [math.sqrt(demand_of(member).target_variance) or 1.0 for member in members]
+            spreads = [
+                tuple(part.sigma / limit for part in member.parts)
+                for member, limit in zip(members, limits, strict=True)
+            ]
+        return replace(strata, levelled=tuple(max(own) for own in zip(*spreads, strict=True)))
+    return replace(strata, sigmas=joint_balance(question).sigmas)
+
+
+def most_for_money(question: Question, cost: Callable[[Sequence[int]], float]) -> list[int]:
+    """Count the results of smallest variance that a budget buys where their costs differ.
+
+    Parameters
+    ----------
+    question : Question
+        Its budget buys at least the floors.
+    cost : callable
+        Money for counts: whole locations, losses, control samples and days in.
+    """
+    strata = question.strata
+    floors = list(strata.floors)
+    money = question.value - cost([0] * len(floors))
+    counts = floors
+    while money > strata.cost(floors):
+        counts = list(smallest_variance(strata, money).counts)
+        over = cost(counts) - question.value
+        if over <= 1e-9 * question.value:
+            break
+        money -= over
+        counts = floors
+    return _spent(question, counts, cost) if len(floors) <= FEW_STRATA else counts
+
+
+def _spent(
+    question: Question, counts: list[int], cost: Callable[[Sequence[int]], float]
+) -> list[int]:
+    """Spend what rounding left over, each time where the variance falls most."""
+    strata = question.strata
+    while True:
+        more = [
+            [*counts[:k], n + 1, *counts[k + 1 :]]
+            for k, (n, cap) in enumerate(zip(counts, strata.caps, strict=True))
+            if n < cap
+        ]
+        bought = [other for other in more if meets(cost(other), question.value)]
+        if not bought:
+            return counts
+        counts = min(bought, key=strata.variance)
