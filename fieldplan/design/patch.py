@@ -4,7 +4,6 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 from functools import cached_property
-from typing import Protocol
 
 import numpy as np
 import shapely
@@ -12,6 +11,7 @@ from numpy.typing import NDArray
 from shapely.geometry.base import BaseGeometry
 
 from fieldplan.base.errors import DesignError
+from fieldplan.design.patch_chance import PatchChance
 from fieldplan.frame.model import Frame
 from fieldplan.stats.patches import Patch
 
@@ -30,43 +30,6 @@ FEW_CENTRES = 512
 
 _ROOT = 1.2207440846057596
 """Root of x⁴ = x + 1: its powers step evenly through three dimensions."""
-
-
-@dataclass(frozen=True)
-class PatchChance:
-    """A chance averaged over the layout's random starts.
-
-    Parameters
-    ----------
-    chance : float
-    standard_error : float
-        From the number of starts; 0 where a closed form was averaged over patch centres.
-    starts : int
-        0 for a closed form.
-    exact_count : bool
-        False where a grid should have a fixed number of nodes inside, and no start had.
-    """
-
-    chance: float
-    standard_error: float = 0.0
-    starts: int = 0
-    exact_count: bool = True
-
-
-class PatchChances(Protocol):
-    """What a layout makes of patches of one shape on one population."""
-
-    def chance(self, counts: Sequence[int], *, scale: float = 1.0) -> PatchChance:
-        """Give the chance for so many locations a stratum and a patch ``scale`` times as long."""
-        ...
-
-    def smallest_scale(self, counts: Sequence[int], chance: float) -> float:
-        """Give the smallest scale at which the patch is hit with this chance."""
-        ...
-
-    def by_scale(self, counts: Sequence[int], scales: Sequence[float]) -> list[float]:
-        """Give the chance for each of several scales, for a picture."""
-        ...
 
 
 def polygons_of(frame: Frame) -> list[BaseGeometry]:

@@ -13,14 +13,8 @@ from shapely.geometry.base import BaseGeometry
 from fieldplan.base.draws import Stream
 from fieldplan.base.errors import DesignError
 from fieldplan.design.grid import MOST_TRIES, SQUARE_GRID, TRIANGULAR_GRID, Grid
-from fieldplan.design.patch import (
-    Centres,
-    Numbers,
-    PatchChance,
-    PatchChances,
-    RandomPlaces,
-    polygons_of,
-)
+from fieldplan.design.patch import Centres, Numbers, RandomPlaces, polygons_of
+from fieldplan.design.patch_chance import PatchChance, PatchChances
 from fieldplan.frame.model import Frame, Stratum
 from fieldplan.stats.patches import Patch
 

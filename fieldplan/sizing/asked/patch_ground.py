@@ -7,6 +7,7 @@ from functools import cached_property
 from typing import TYPE_CHECKING
 
 from fieldplan.base.errors import CampaignError, DesignError
+from fieldplan.design.patch_chance import PatchChance
 from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.counting import fixed_counts, planned_counts
 from fieldplan.stats.patches import (
@@ -23,7 +24,7 @@ from fieldplan.stats.patches import (
 if TYPE_CHECKING:
     from fieldplan.campaign.model import DesignTable
     from fieldplan.campaign.questions.smallest_patch import SmallestPatch
-    from fieldplan.design.patch import PatchChance, PatchChances
+    from fieldplan.design.patch_chance import PatchChances
 
 LATTICES = {"square-grid": SQUARE, "triangular-grid": TRIANGULAR}
 DOUBTFUL_SHARE = 0.25
@@ -49,10 +50,8 @@ class EndlessGround:
     patch: Patch
     losses: tuple[float, ...]
 
-    def chance(self, counts: Sequence[int], *, scale: float = 1.0) -> "PatchChance":
+    def chance(self, counts: Sequence[int], *, scale: float = 1.0) -> PatchChance:
         """Weigh the strata's chances by their areas."""
-        from fieldplan.design.patch import PatchChance
-
         patch = self.patch.scaled(scale)
         chances = [
             area / sum(self.areas) * self._within(patch, area, number, count)
@@ -126,6 +125,11 @@ class PatchQuestion:
         return self.error_m > DOUBTFUL_SHARE * self.patch.width
 
     @property
+    def least_scale(self) -> float:
+        """Smallest patch of this shape, as a share of the one asked about, with a chance."""
+        return self.error_m / (DOUBTFUL_SHARE * self.patch.width)
+
+    @property
     def reach(self) -> float:
         """Scale of the part of the patch that is hit however far each place is off."""
         return 1 - 2 * self.error_m / self.patch.width
@@ -158,18 +162,20 @@ class PatchQuestion:
             losses=self.losses,
         )
 
+    def planned(self, counts: Sequence[int]) -> tuple[int, ...]:
+        """Turn results into the locations that are visited for them."""
+        question = self.asked.question
+        if question.locations is not None:
+            return fixed_counts(question).planned
+        return planned_counts(question, counts)
+
     def laid(self, counts: Sequence[int]) -> tuple[int, ...]:
-        """Turn results into the locations of which the chance depends.
+        """Turn results into the locations on which the chance depends.
 
         A grid is laid with all the locations planned, of which some are lost at random; what is
         left of random places is as random as they were.
         """
-        question = self.asked.question
-        if self.lattice is None:
-            return tuple(counts)
-        if question.locations is not None:
-            return fixed_counts(question).planned
-        return planned_counts(question, counts)
+        return tuple(counts) if self.lattice is None else self.planned(counts)
 
     def endless_count(self, layout: str) -> float:
         """Count the locations, not rounded on a grid, that endless ground of this area takes."""

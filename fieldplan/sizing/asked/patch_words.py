@@ -1,6 +1,6 @@
 """Sentences about a patch: what it is, what the chance covers, and what it does not."""
 
-from fieldplan.design.patch import PatchChance
+from fieldplan.design.patch_chance import PatchChance
 from fieldplan.sizing.asked.patch_ground import DOUBTFUL_SHARE, PatchQuestion
 from fieldplan.sizing.words import figure, percent, typed
 
@@ -150,10 +150,10 @@ def _error(question: PatchQuestion) -> str:
     return (
         f"With each location anywhere within {error} m of its plan, however the errors hang "
         f"together, a hit is certain only where the plan lies in the inner {figure(patch.length)} "
-        f"m by {figure(patch.width)} m of the patch; the chance counts those hits alone. An error "
-        "that all locations share, or errors at random places, leave the true chance as it was "
-        "but for the edges; errors of their own loosen a grid and lower it, never below the one "
-        "stated. "
+        f"m by {figure(patch.width)} m of the patch; the chance counts those hits alone. The true "
+        "chance is higher: an error that all locations share leaves it as it was but for the "
+        "edges, and so do errors at random places; on a grid, errors that differ from place to "
+        "place loosen the pattern and lower it, but never below the one stated. "
         f"The record is off as well: the patch lies within {error} m of where the record puts a "
         "hit. An error above that breaks the promise."
     )

@@ -1,10 +1,11 @@
 """The smallest patch that must not be missed: how many locations, and what a number finds."""
 
 import math
+from dataclasses import replace
 
 from fieldplan.base.errors import DesignError
 from fieldplan.base.working import Quantity, Step
-from fieldplan.design.patch import PatchChance
+from fieldplan.design.patch_chance import PatchChance
 from fieldplan.sizing.asked.model import Answered, Asked
 from fieldplan.sizing.asked.patch_ground import LATTICES, PatchQuestion, patch_question
 from fieldplan.sizing.asked.patch_words import (
@@ -51,7 +52,7 @@ def count(asked: Asked) -> Answered:
     needed = asked.shared(total)
     finding = _finding(question, needed)
     sentence = (
-        f"{counted(sum(needed), 'location')} {place_words(question)} hit {patch_words(question)}, "
+        f"{_counted(question, needed)} {place_words(question)} hit {patch_words(question)}, "
         f"with a chance of {typed_percent(question.table.probability)}{off_words(question)}: "
         f"averaged {ground_words(question)}."
     )
@@ -59,7 +60,7 @@ def count(asked: Asked) -> Answered:
     return Answered(
         needed=needed,
         target=f"{asked_for(question)} chance of hitting {patch_words(question)}",
-        finding=_with(finding, answer=sentence, steps=steps),
+        finding=replace(finding, answer=sentence, steps=steps),
         unrounded=endless,
     )
 
@@ -89,10 +90,10 @@ def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
     return _finding(question, counts)
 
 
-def _with(finding: Finding, *, answer: str, steps: tuple[Step, ...]) -> Finding:
-    from dataclasses import replace
-
-    return replace(finding, answer=answer, steps=steps)
+def _counted(question: PatchQuestion, counts: tuple[int, ...]) -> str:
+    """Count the locations; where some are expected to be lost, say of how many they are left."""
+    left, planned = sum(counts), sum(question.planned(counts))
+    return counted(left, "location") if left == planned else f"{left} of {planned} locations"
 
 
 def _fewest(question: PatchQuestion, start: int) -> int:
@@ -129,13 +130,14 @@ def _finding(question: PatchQuestion, counts: tuple[int, ...]) -> Finding:
     kept = chances.chance(laid, scale=question.reach)
     planned = chances.chance(laid)
     factor = chances.smallest_scale(laid, question.table.probability) + 1 - question.reach
+    factor = max(factor, question.least_scale)
     spacing = _spacing(question, laid)
     answer = (
-        f"At least one of {counted(sum(counts), 'location')} {place_words(question)} lies in "
+        f"At least one of {_counted(question, counts)} {place_words(question)} lies in "
         f"{patch_words(question)}, with a chance of {percent(kept.chance)}{off_words(question)}; "
         f"{asked_for(question)} was asked for."
     )
-    curve = [(s, c) for s, c in zip(_SCALES, _curve(question, laid), strict=True)]
+    curve = _curve(question, laid)
     return Finding(
         topic="smallest-patch",
         title=TITLE,
@@ -154,10 +156,14 @@ def _finding(question: PatchQuestion, counts: tuple[int, ...]) -> Finding:
     )
 
 
-def _curve(question: PatchQuestion, laid: tuple[int, ...]) -> list[float]:
-    """Chance for each size, the receiver's error taken off."""
-    inner = [max(scale - (1 - question.reach), 1e-6) for scale in _SCALES]
-    return question.chances.by_scale(laid, inner)
+def _curve(question: PatchQuestion, laid: tuple[int, ...]) -> list[tuple[float, float]]:
+    """Pair each scale with its chance, the receiver's error taken off.
+
+    Sizes for which the receiver is too coarse are left out.
+    """
+    scales = [scale for scale in _SCALES if scale >= question.least_scale]
+    inner = [scale - (1 - question.reach) for scale in scales]
+    return list(zip(scales, question.chances.by_scale(laid, inner), strict=True))
 
 
 def _spacing(question: PatchQuestion, laid: tuple[int, ...]) -> float | None:
@@ -277,8 +283,9 @@ def _picture(question: PatchQuestion, curve: list[tuple[float, float]], total: i
         caption=f"Chance of hitting a patch of this shape, by its length, with {total} locations.",
         alternative=(
             f"A line rising with the length of the patch: {percent(curve[0][1])} at "
-            f"{figure(lengths[0])} m, {percent(curve[3][1])} at {figure(lengths[3])} m, "
-            f"{percent(curve[-1][1])} at {figure(lengths[-1])} m."
+            f"{figure(lengths[0])} m, {percent(dict(curve)[1.0])} at "
+            f"{figure(question.patch.length)} m, {percent(curve[-1][1])} at "
+            f"{figure(lengths[-1])} m."
         ),
         x_label="Length of the patch, m",
         y_label="Chance of hitting, %",

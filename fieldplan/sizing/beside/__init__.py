@@ -14,7 +14,9 @@ from fieldplan.sizing.asked.model import Asked
 if TYPE_CHECKING:
     from fieldplan.sizing.model import Finding, Size
 
-QUICK: tuple[str, ...] = ()
+QUICK: tuple[str, ...] = (
+    "patch",
+)
 """Topics in the order of the sheet; ``near-normal`` stands in ``near_normal.py``."""
 
 THOROUGH: tuple[str, ...] = (
