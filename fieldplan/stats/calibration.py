@@ -42,7 +42,7 @@ def calibration(
 
     Notes
     -----
-    Interval: tanh(artanh r ± z / √(m − 3)), Fisher (1921), Metron 1:3; both near normal.
+    r by least squares; its interval from ``correlation_interval``.
 
     Examples
     --------
@@ -68,8 +68,44 @@ def calibration(
             raise DesignError(message)
     xy = math.fsum(x * y for x, y in zip(off_x, off_y, strict=True))
     r = max(-1.0, min(1.0, xy / math.sqrt(xx * yy)))
-    low = high = r
-    if abs(r) < 1:
-        reach = normal_quantile((1 + confidence) / 2) / math.sqrt(pairs - 3)
-        low, high = math.tanh(math.atanh(r) - reach), math.tanh(math.atanh(r) + reach)
+    low, high = correlation_interval(r, pairs, confidence=confidence)
     return Calibration(pairs, r, low, high, xy / xx, mean_y - xy / xx * mean_x)
+
+
+def correlation_interval(
+    correlation: float, pairs: int, *, confidence: float = 0.95
+) -> tuple[float, float]:
+    """Give the ends between which the true correlation lies.
+
+    Parameters
+    ----------
+    correlation : float
+        Of so many pairs, from -1 to 1.
+    pairs : int
+        At least 4.
+    confidence : float
+        Inside (0, 1).
+
+    Raises
+    ------
+    DesignError
+        Fewer than 4 pairs.
+
+    Notes
+    -----
+    tanh(artanh r ± z / √(m − 3)): Fisher (1921), Metron 1:3, for pairs near normal.
+
+    Examples
+    --------
+    >>> low, high = correlation_interval(0.85, 12)
+    >>> round(low, 2), round(high, 2)
+    (0.54, 0.96)
+    """
+    if pairs < 4:
+        message = f"{pairs} pairs of reading and result are too few; a correlation needs 4 or more."
+        raise DesignError(message)
+    if abs(correlation) == 1:
+        return correlation, correlation
+    reach = normal_quantile((1 + confidence) / 2) / math.sqrt(pairs - 3)
+    middle = math.atanh(correlation)
+    return math.tanh(middle - reach), math.tanh(middle + reach)

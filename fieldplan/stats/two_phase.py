@@ -28,6 +28,8 @@ class Screened:
         What a list takes off the variance: Σ W² σ² / N; 0 for an area.
     most : int
         Most places that can be had: N of a list.
+    least : int
+        Fewest results that the design allows, where more than a line needs.
 
     Raises
     ------
@@ -40,6 +42,7 @@ class Screened:
     strata: int = 1
     finite: float = 0.0
     most: int = MOST
+    least: int = 0
 
     def __post_init__(self) -> None:
         """Refuse what no population has."""
@@ -51,7 +54,7 @@ class Screened:
     @property
     def fewest(self) -> int:
         """Fewest results with which the luck of the fitted line has a finite variance."""
-        return self.strata + 3
+        return max(self.strata + 3, self.least)
 
     def variance(self, readings: float, results: float) -> float:
         """Give the variance of the regression estimate of the mean.
@@ -59,7 +62,7 @@ class Screened:
         Parameters
         ----------
         readings, results : float
-            n' ≥ n, and n ≥ ``fewest`` unless the two are equal.
+            n' ≥ n, and n ≥ L + 3 unless the two are equal.
 
         Raises
         ------
@@ -94,9 +97,9 @@ class Screened:
         about = self.sigma**2 * (1 - self.correlation**2)
         if not several:
             return about, 0.0
-        if results < self.fewest:
+        if results < self.strata + 3:
             message = (
-                f"{results:g} results are too few to fit a line to; take {self.fewest} or more."
+                f"{results:g} results are too few to fit a line to; take {self.strata + 3} or more."
             )
             raise DesignError(message)
         return about, 1 / (results - self.strata - 2)

@@ -1,0 +1,270 @@
+"""Precision against money over all designs that the campaign's data allow."""
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from typing import Literal
+
+from fieldplan.sizing.asked.model import Asked
+from fieldplan.sizing.frontier import (
+    REACH,
+    PricedDesign,
+    Wanted,
+    cheapest,
+    efficient,
+    most_precise,
+    wanted_of,
+)
+from fieldplan.sizing.frontier_kinds import Kind, kinds_of
+from fieldplan.sizing.model import Amount, Finding, Picture, Series, Size
+from fieldplan.sizing.precision import Precision
+from fieldplan.sizing.words import counted, figure, with_unit
+
+Style = Literal["line", "hollow", "points"]
+
+ROWS = 12
+"""Most designs in the table."""
+
+SOURCES = (
+    "Cochran 1977, Sampling Techniques, 3rd ed., secs. 5.5 to 5.9 (strata) and ch. 12 (readings) "
+    "(from memory)",
+)
+
+
+@dataclass(frozen=True)
+class _Compared:
+    """Every design traced, the plan's own, and what is looked for."""
+
+    unit: str
+    currency: str
+    wanted: Wanted
+    budget: float
+    own: PricedDesign
+    rows: dict[str, list[PricedDesign]]
+    goal: dict[str, PricedDesign]
+    paid: dict[str, PricedDesign]
+
+    @property
+    def designs(self) -> list[PricedDesign]:
+        """All of them, each kind's best for target and money included."""
+        traced = [design for row in self.rows.values() for design in row]
+        floor = self.wanted.value / REACH
+        return [
+            design
+            for design in (*traced, *self.goal.values(), *self.paid.values())
+            if self.wanted.of(design) >= floor
+        ]
+
+    def money(self, amount: float) -> str:
+        """Write an amount of money."""
+        return with_unit(f"{amount:.0f}", self.currency)
+
+    def precision(self, value: float) -> str:
+        """Write the measure that is compared."""
+        word = "standard error" if self.wanted.measure == "standard_error" else "half-width"
+        return f"{word} of {with_unit(figure(value), self.unit)}"
+
+
+def finding(asked: Asked, size: Size) -> Finding | None:
+    """Set the plan's design beside the others that the data allow.
+
+    Parameters
+    ----------
+    asked : Asked
+    size : Size
+
+    Returns
+    -------
+    Finding or None
+        None without prices or sigma, for a census, and where something else than the precision
+        of a mean is asked.
+    """
+    question = asked.question
+    prices = question.prices
+    if prices is None or question.census or not asked.sigma_known or size.question != "mean":
+        return None
+    if prices.of_a_visit + prices.of_a_result <= 0:
+        return None
+    compared = _compared(asked, size)
+    best = cheapest(compared.goal.values(), compared.wanted)
+    finest = most_precise(compared.paid.values(), compared.budget)
+    lines = [_cheapest_words(compared, best), _finest_words(compared, finest)]
+    columns, rows = _table(compared)
+    return Finding(
+        topic="frontier",
+        title="Precision for the money",
+        answer=" ".join(line for line in lines if line),
+        amounts=_amounts(compared),
+        columns=columns,
+        rows=rows,
+        assumptions=_assumptions(asked, size, compared),
+        sources=SOURCES,
+        picture=_picture(compared) if len(compared.rows) > 1 else None,
+    )
+
+
+def _compared(asked: Asked, size: Size) -> _Compared:
+    question, kinds = asked.question, kinds_of(asked)
+    needed = tuple(entry.needed for entry in size.strata)
+    wanted = wanted_of(question, needed)
+    budget = question.value if question.target == "budget" else size.cost or 0.0
+    return _Compared(
+        unit=question.unit,
+        currency=question.prices.currency if question.prices else "",
+        wanted=wanted,
+        budget=budget,
+        own=_own(asked, size, needed),
+        rows={kind.label: kind.row(wanted) for kind in kinds},
+        goal=_best_of(kinds, lambda kind: kind.cheapest(wanted)),
+        paid=_best_of(kinds, lambda kind: kind.most_precise(budget)),
+    )
+
+
+def _own(asked: Asked, size: Size, needed: tuple[int, ...]) -> PricedDesign:
+    """Price the plan as it stands."""
+    question, precision = asked.question, Precision(asked.question)
+    days = question.prices.crew_days(size.planned + question.targeted) if question.prices else 0
+    return PricedDesign(
+        "this plan",
+        counted(size.needed, "result"),
+        results=size.needed,
+        locations=size.planned,
+        standard_error=precision.standard_error(needed),
+        half_width=precision.half_width(needed),
+        cost=size.cost or 0.0,
+        crew_days=days,
+    )
+
+
+def _best_of(
+    kinds: Sequence[Kind], best: Callable[[Kind], PricedDesign | None]
+) -> dict[str, PricedDesign]:
+    """Take each kind's best; a kind that has none is left out."""
+    found = {kind.label: best(kind) for kind in kinds}
+    return {label: design for label, design in found.items() if design is not None}
+
+
+def _taken(design: PricedDesign) -> str:
+    return f"{design.kind} ({design.words})"
+
+
+def _cheapest_words(compared: _Compared, best: PricedDesign | None) -> str:
+    """Say which design reaches the plan's precision for least."""
+    aim, own = compared.precision(compared.wanted.value), compared.money(compared.own.cost)
+    if best is None:
+        return f"No design that the data allow reaches a {aim}."
+    if best.cost > compared.own.cost - 0.5:
+        return f"None of the designs that the data allow reaches a {aim} for less than {own}."
+    return (
+        f"Of the designs that the data allow, the cheapest with a {aim} is {_taken(best)} for "
+        f"{compared.money(best.cost)}; this plan costs {own}."
+    )
+
+
+def _finest_words(compared: _Compared, finest: PricedDesign | None) -> str:
+    """Say which design is the most precise for the money."""
+    money = compared.money(compared.budget)
+    if finest is None:
+        return ""
+    reached = compared.precision(compared.wanted.of(finest))
+    if compared.wanted.of(finest) >= compared.wanted.of(compared.own) * 0.999:
+        return f"For {money} none is more precise than this plan."
+    return f"For {money} the most precise is {_taken(finest)}, with a {reached}."
+
+
+def _amounts(compared: _Compared) -> tuple[Amount, ...]:
+    wanted, money = compared.wanted, compared.currency
+    found = [
+        Amount(f"compared_{wanted.measure}", "Precision that is compared", wanted.value,
+               compared.unit),
+        Amount("budget", "Money that is compared", compared.budget, money),
+        Amount("designs", "Designs priced", len(compared.designs)),
+    ]  # fmt: skip
+    for label, design in compared.goal.items():
+        slug = "".join(c if c.isalnum() else "_" for c in label.lower()).replace("__", "_")
+        meaning = f"Cheapest at that precision, {label}: {design.words}"
+        found.append(Amount(f"cost_{slug}", meaning, design.cost, money))
+    return tuple(found)
+
+
+def _table(compared: _Compared) -> tuple[tuple[str, ...], tuple[tuple[str, ...], ...]]:
+    """List the designs that no other beats, cheapest first, and the plan among them."""
+    best = efficient(compared.designs)
+    step = max(1.0, (len(best) - 1) / (ROWS - 1))
+    shown = {round(k * step): None for k in range(ROWS) if round(k * step) < len(best)}
+    rows = sorted([*(best[k] for k in shown), compared.own], key=lambda d: d.cost)
+    name = "Standard error" if compared.wanted.measure == "standard_error" else "Half-width"
+    columns = ["Design", "Results", "Locations", name, f"Cost {compared.currency}".strip()]
+    days = any(design.crew_days for design in rows)
+    cells = [
+        (
+            design.kind,
+            str(design.results),
+            str(design.locations),
+            figure(compared.wanted.of(design)),
+            f"{design.cost:.0f}",
+            *((str(design.crew_days),) if days else ()),
+        )
+        for design in rows
+    ]
+    return (*columns, *(["Crew-days"] if days else [])), tuple(cells)
+
+
+def _assumptions(asked: Asked, size: Size, compared: _Compared) -> tuple[str, ...]:
+    question = asked.question
+    lines = [
+        "All designs are priced with the same sigmas and prices, control samples, losses and "
+        "targeted places included. The table holds those that no other beats, and this plan.",
+    ]
+    if question.assurance is not None and question.target != "budget":
+        lines.append(
+            f"They are compared at what the {size.needed} results of this plan predict, so that "
+            "each keeps the target with about the chance that was asked for."
+        )
+    if question.grid:
+        lines.append("A grid is priced as random places are: its evenness earns no credit here.")
+    if "no strata" in compared.rows:
+        lines.append(
+            "Without strata sigma holds the differences between the strata's means as well."
+        )
+    elif len(question.parts) > 1:
+        lines.append("Results without strata are left out: not every stratum has a mean.")
+    if any(design.crew_days for design in compared.designs):
+        lines.append("A crew visits as many places a day whether it samples or only reads there.")
+    return tuple(lines)
+
+
+def _picture(compared: _Compared) -> Picture:
+    """Lay each kind's row as a line, what is not beaten as dots, what is beaten as rings."""
+    wanted, best = compared.wanted, efficient(compared.designs)
+    word = "standard error" if wanted.measure == "standard_error" else "half-width"
+    beaten = [design for design in compared.designs if design not in best]
+
+    def series(label: str, designs: Sequence[PricedDesign], style: Style) -> Series:
+        ordered = sorted(designs, key=lambda d: d.cost)
+        costs, reached = [d.cost for d in ordered], [wanted.of(d) for d in ordered]
+        return Series(label, tuple(costs), tuple(reached), style)
+
+    lines = [series(label, row, "line") for label, row in compared.rows.items() if row]
+    ends = (best[0], best[-1])
+    return Picture(
+        kind="frontier",
+        caption=(
+            f"The {word} of the mean against money. Dots are designs that no other beats, rings "
+            "those that another beats in both; a line joins designs of one kind."
+        ),
+        alternative=(
+            f"Designs from {compared.money(ends[0].cost)} with a "
+            f"{compared.precision(wanted.of(ends[0]))} to {compared.money(ends[1].cost)} with a "
+            f"{compared.precision(wanted.of(ends[1]))}. This plan: "
+            f"{compared.money(compared.own.cost)}, {compared.precision(wanted.of(compared.own))}."
+        ),
+        x_label=f"cost ({compared.currency})" if compared.currency else "cost",
+        y_label=f"{word}\n({compared.unit})" if compared.unit else word,
+        series=(
+            *lines,
+            series("", beaten, "hollow"),
+            series("", best, "points"),
+            series("this plan", [compared.own], "points"),
+        ),
+        levels=((f"compared at {figure(wanted.value)} {compared.unit}".strip(), wanted.value),),
+    )
