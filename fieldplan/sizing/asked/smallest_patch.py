@@ -133,8 +133,8 @@ def _finding(question: PatchQuestion, counts: tuple[int, ...]) -> Finding:
     factor = max(factor, question.least_scale)
     spacing = _spacing(question, laid)
     answer = (
-        f"At least one of {_counted(question, counts)} {place_words(question)} lies in "
-        f"{patch_words(question)}, with a chance of {percent(kept.chance)}{off_words(question)}; "
+        f"{_counted(question, counts)} {place_words(question)} hit {patch_words(question)}, "
+        f"with a chance of {percent(kept.chance)}{off_words(question)}; "
         f"{asked_for(question)} was asked for."
     )
     curve = _curve(question, laid)
