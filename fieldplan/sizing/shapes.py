@@ -18,6 +18,8 @@ if TYPE_CHECKING:
 QUICK_DRAWS = 150_000
 """Values drawn for one shape with zeros, which takes about 4 ms."""
 
+AS_SKEWED = " of the skewness seen or typed"
+
 MOST_CONFIDENCE = 0.99
 """The table of simulated t statistics ends there."""
 
@@ -36,6 +38,11 @@ class SiteShape:
 
     name: str
     parts: tuple[Shape, ...]
+
+    @property
+    def by_skewness(self) -> bool:
+        """Whether a skewness seen or typed made it, not the coefficient of variation."""
+        return AS_SKEWED in self.name
 
     @property
     def zeros(self) -> bool:
@@ -138,7 +145,7 @@ def _zeros(entry: "StratumSpread | None") -> tuple[float, float]:
 def _named(name: str, parts: Sequence[Shape]) -> str:
     if name.endswith("by skewness"):
         side = ", long tail on the low side" if any(part.mirrored for part in parts) else ""
-        return f"{name.split()[0]} as skewed as the results{side}"
+        return f"{name.split()[0]}{AS_SKEWED}{side}"
     if name.endswith("zeros"):
         family = name.split()[0]
         shares = [part.zeros for part in parts if part.zeros]

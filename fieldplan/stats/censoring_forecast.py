@@ -234,6 +234,55 @@ def chance_of_few(n: int, share: float, *, least: int = FEWEST_DETECTS) -> float
     return beta_share(share, n - least + 1, least) if share > 0 else 0.0
 
 
+def share_not_ruled_out(
+    non_detects: int, results: int, *, confidence: float = 0.90
+) -> tuple[float, float]:
+    """Give the shares below the limit that so many non-detects of a pilot do not rule out.
+
+    Parameters
+    ----------
+    non_detects, results : int
+        Of the pilot, at random places; non-detects from 0 to results.
+    confidence : float
+        Inside (0, 1); half of the rest on each side.
+
+    Returns
+    -------
+    low, high : float
+
+    Notes
+    -----
+    Exact binomial interval (Clopper & Pearson 1934, Biometrika 26:404), by bisection.
+
+    Examples
+    --------
+    >>> low, high = share_not_ruled_out(4, 12)
+    >>> round(low, 3), round(high, 3)
+    (0.123, 0.609)
+    """
+    if not 0 <= non_detects <= results or results < 1 or not 0 < confidence < 1:
+        message = (
+            f"{non_detects!r} non-detects of {results!r} results at {confidence!r}: give 0 to all "
+            "of 1 result or more, and a confidence between 0 and 1."
+        )
+        raise DesignError(message)
+    tail = (1 - confidence) / 2
+
+    def edge(count: int, level: float) -> float:
+        """Find the share at which at most ``count`` of the results lie below, with this chance."""
+        low, high = 0.0, 1.0
+        for _ in range(50):
+            middle = (low + high) / 2
+            # At most ``count`` below is the same as at least results − count detects.
+            chance = 1 - chance_of_few(results, middle, least=results - count)
+            low, high = (middle, high) if chance > level else (low, middle)
+        return (low + high) / 2
+
+    low = edge(non_detects - 1, 1 - tail) if non_detects > 0 else 0.0
+    high = edge(non_detects, tail) if non_detects < results else 1.0
+    return low, high
+
+
 def detects_wanted(n: int) -> int:
     """Count the detects below which n results leave only bounds of a mean.
 

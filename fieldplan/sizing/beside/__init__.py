@@ -15,13 +15,18 @@ if TYPE_CHECKING:
     from fieldplan.sizing.model import Finding, Size
 
 QUICK: tuple[str, ...] = (
+    "two-phase",
+    "being-wrong",
     "patch",
+    "near-normal",
+    "non-detects",
 )
 """Topics in the order of the sheet; ``near-normal`` stands in ``near_normal.py``."""
 
 THOROUGH: tuple[str, ...] = (
     "two-stages",
     "frontier",
+    "mean-band",
 )
 """Topics that take up to 2 s."""
 

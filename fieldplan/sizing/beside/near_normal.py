@@ -94,9 +94,10 @@ def held_sentence(asked: Asked, counts: Sequence[int], judged: Sequence[Judged])
     """
     question = asked.question
     what = f"{typed_percent(question.confidence)} {interval_name(question)}"
+    does = {"upper-limit": "lie above", "lower-limit": "lie below"}.get(question.interval, "hold")
     return (
-        f"At n = {sum(counts)} the {what} is expected to hold the mean in {held_words(judged)} of "
-        f"100 campaigns {_shaped_like(asked, judged)}{_sides(question, worst(judged)[1])}."
+        f"At n = {sum(counts)} the {what} is expected to {does} the mean in {held_words(judged)} "
+        f"of 100 campaigns {_shaped_like(asked, judged)}{_sides(question, worst(judged)[1])}."
     )
 
 
@@ -127,8 +128,7 @@ def _shaped_like(asked: Asked, judged: Sequence[Judged]) -> str:
 def _sides(question: Question, missed: Misses) -> str:
     """Say on which side the interval misses, by the worst shape."""
     if question.interval != "two-sided":
-        side = "above" if question.interval == "upper-limit" else "below"
-        return f"; in the others the true mean lies {side} it"
+        return ""
     many, few = sorted((missed.too_low, missed.too_high), reverse=True)
     side, other = ("above", "below") if missed.too_low >= missed.too_high else ("below", "above")
     if many < 1.25 * few:
@@ -276,9 +276,11 @@ def _lean_step(question: Question, shape: SiteShape, n: int, lean: float) -> Ste
             Quantity("CV", "coefficient of variation above 0", one.cv),
             Quantity("p0", "share of zeros", one.zeros),
         )
+    elif shape.by_skewness:
+        formula = "G1 of the results behind sigma, or as typed"
+        inputs = (Quantity("g1", "their skewness", lean),)
     else:
         formula = "G1 = 2·CV" if one.family == "gamma" else "G1 = 3·CV + CV³"
-        formula = formula if not one.mirrored else f"{formula}, mirrored"
         inputs = (Quantity("CV", "coefficient of variation of the shape", one.cv),)
     return Step(
         symbol="G1",

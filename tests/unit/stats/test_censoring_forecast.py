@@ -19,6 +19,7 @@ from fieldplan.stats.censoring_forecast import (
     information_kept,
     n_against_bounds_only,
     share_below,
+    share_not_ruled_out,
     substituted,
 )
 
@@ -159,6 +160,15 @@ def test_few_detects_equal_an_independent_study() -> None:
         assert 100 * chance_of_few(n, share) == pytest.approx(percent, abs=2)
 
 
+@pytest.mark.parametrize(("below", "results"), [(0, 8), (4, 12), (11, 12), (5, 5), (30, 90)])
+def test_shares_not_ruled_out_are_the_exact_binomial_ones(below: int, results: int) -> None:
+    """Clopper & Pearson 1934 as quantiles of the beta distribution, by scipy."""
+    low, high = share_not_ruled_out(below, results)
+    exact_low = stats.beta.ppf(0.05, below, results - below + 1) if below else 0.0
+    exact_high = stats.beta.ppf(0.95, below + 1, results - below) if below < results else 1.0
+    assert (low, high) == pytest.approx((exact_low, exact_high), abs=1e-9)
+
+
 @pytest.mark.parametrize("share", [0.1, 0.4, 0.6, 0.7])
 def test_the_n_against_bounds_is_the_first_from_which_all_do(share: float) -> None:
     """Brute force with scipy's binomial, counting n downward from 400."""
@@ -187,6 +197,7 @@ def test_a_share_of_eighty_percent_or_more_never_gets_there() -> None:
         (lambda: share_below("gamma", 0.0, mean=1.0, cv=1.0), "must be above 0"),
         (lambda: information_kept(1.0, 1.0), "from 0 to below 1"),
         (lambda: chance_of_few(0, 0.5), "give 1 or more"),
+        (lambda: share_not_ruled_out(5, 4), "5 non-detects of 4"),
     ],
 )
 def test_what_has_no_answer_is_refused(call: Callable[[], object], words: str) -> None:
