@@ -1,6 +1,9 @@
 """What laboratories said, cell by cell, and what a pilot says about spread."""
 
 from dataclasses import dataclass
+from datetime import date
+
+from fieldplan.stats.time_series import rho_at
 
 
 @dataclass(frozen=True)
@@ -34,6 +37,8 @@ class LabRow:
     latitude, longitude : float or None
     qualifier_lab : str
         Letters that the laboratory put beside the number.
+    collected_on : date or None
+        Day on which the sample was taken.
     """
 
     row: int
@@ -51,6 +56,7 @@ class LabRow:
     latitude: float | None = None
     longitude: float | None = None
     qualifier_lab: str = ""
+    collected_on: date | None = None
 
 
 REJECTED = "rejected by the laboratory, qualifier R"
@@ -111,6 +117,32 @@ class LabTable:
 
 
 @dataclass(frozen=True)
+class VisitCorrelation:
+    """How far visits that follow each other resemble each other, as a campaign declares.
+
+    Parameters
+    ----------
+    rho : float
+        Correlation of two visits ``days`` apart.
+    days : float or None
+        None where the planned visits are as far apart as those that ``rho`` belongs to.
+    planned_days : float or None
+        Days between the planned visits.
+    """
+
+    rho: float
+    days: float | None = None
+    planned_days: float | None = None
+
+    @property
+    def planned_rho(self) -> float:
+        """The correlation of neighbouring planned visits."""
+        if self.days is None or self.planned_days is None:
+            return self.rho
+        return rho_at(self.rho, from_days=self.days, to_days=self.planned_days)
+
+
+@dataclass(frozen=True)
 class StratumSpread:
     """Sigma of one analyte in one stratum (or the site), and how well it is known.
 
@@ -139,6 +171,12 @@ class StratumSpread:
         The largest skewness that n0 values can show, (n0 − 2)/√(n0 − 1).
     excess_kurtosis : float or None
         As declared; never estimated, since a pilot cannot show its tail.
+    positions : tuple of (tuple of float or None)
+        Latitude and longitude of each of ``values``; empty when typed.
+    days : tuple of (date or None)
+        When each of ``values`` was collected; empty when typed.
+    visits : VisitCorrelation or None
+        As declared for visits in a row.
     """
 
     analyte: str
@@ -156,6 +194,9 @@ class StratumSpread:
     skewness: float | None = None
     skewness_ceiling: float | None = None
     excess_kurtosis: float | None = None
+    positions: tuple[tuple[float, float] | None, ...] = ()
+    days: tuple[date | None, ...] = ()
+    visits: VisitCorrelation | None = None
 
     @property
     def degrees_of_freedom(self) -> int | None:
@@ -191,11 +232,69 @@ class ReadingPairs:
 
 
 @dataclass(frozen=True)
+class PartSpread:
+    """One part of sigma: where it arises, how large it is and how well it is known.
+
+    Parameters
+    ----------
+    part : str
+        ``between-locations``, ``sampling``, ``analysis``; ``sampling and analysis`` where no
+        sample was analysed twice, so that the two cannot be told apart.
+    sigma : float
+        0 where the estimate came out negative.
+    source : str
+    degrees_of_freedom : float or None
+        Behind it; None when it was typed without a number of results.
+    low, high : float or None
+        Ends of its 90 % interval, as standard deviations; None when it was typed.
+    cut_at_zero : bool
+        The estimate of its variance was negative.
+    assumed : bool
+    """
+
+    part: str
+    sigma: float
+    source: str
+    degrees_of_freedom: float | None = None
+    low: float | None = None
+    high: float | None = None
+    cut_at_zero: bool = False
+    assumed: bool = False
+
+
+@dataclass(frozen=True)
+class SplitSpread:
+    """Sigma of one analyte in one stratum by its parts, from the largest scale down.
+
+    Parameters
+    ----------
+    analyte, stratum : str
+    parts : tuple of PartSpread
+    duplicated : int or None
+        Locations with a second sample behind it; None when every part was typed.
+    typed : bool
+        The campaign file has a ``[[sigma]]`` table for a part.
+    """
+
+    analyte: str
+    stratum: str
+    parts: tuple[PartSpread, ...]
+    duplicated: int | None = None
+    typed: bool = False
+
+    def part(self, name: str) -> PartSpread | None:
+        """Return one part; None where nothing tells it."""
+        return next((entry for entry in self.parts if entry.part == name), None)
+
+
+@dataclass(frozen=True)
 class Spread:
     """Sigma for every stratum of the deciding analyte, and what the pilot says in sentences.
 
     ``strata`` is in the frame's order, one entry per stratum. ``site`` is the whole (always
     present where a pilot or a site-wide value was given). ``sentences`` and ``notes`` print.
+    ``splits`` has the parts of sigma where duplicates or the campaign file tell them;
+    ``increments`` is above 1 where every sigma is that of a composite of so many.
     ``pairs`` are those of field readings that a file calibrates.
     """
 
@@ -207,6 +306,8 @@ class Spread:
     sentences: tuple[str, ...] = ()
     notes: tuple[str, ...] = ()
     pairs: tuple[ReadingPairs, ...] = ()
+    splits: tuple[SplitSpread, ...] = ()
+    increments: int = 1
 
     def stratum(self, name: str) -> StratumSpread:
         """Return the spread of the stratum called ``name``; KeyError when there is none."""
@@ -214,3 +315,7 @@ class Spread:
             if entry.stratum == name:
                 return entry
         raise KeyError(name)
+
+    def split(self, analyte: str, stratum: str) -> SplitSpread | None:
+        """Return the parts of an analyte's sigma in one stratum; None where nothing tells them."""
+        return next((s for s in self.splits if (s.analyte, s.stratum) == (analyte, stratum)), None)

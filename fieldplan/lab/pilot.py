@@ -2,12 +2,14 @@
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from datetime import date
 
 from fieldplan.base.errors import LabError
 from fieldplan.base.units import significant
 from fieldplan.lab.duplicates import bounds, merge_results
 from fieldplan.lab.model import LabRow, LabTable, StratumSpread
 from fieldplan.lab.roles import IN_THE_MEAN
+from fieldplan.lab.visits import told_apart_by_day
 from fieldplan.lab.words import counted, listed
 from fieldplan.stats.summary import sample_mean, sample_sd, sample_skewness, skewness_ceiling
 
@@ -28,6 +30,7 @@ class PilotLocation:
     half: float
     high: float
     detected: bool
+    collected_on: date | None = None
 
 
 def pilot_locations(
@@ -57,16 +60,7 @@ def pilot_locations(
     """
     rows = [row for row in table.rows if row.analyte == analyte and row.role in IN_THE_MEAN]
     left_out = sum(row.analyte == analyte for row in table.rows) - len(rows)
-    rows, problems = _without_copies(table.file_name, rows)
-    groups, lost = _by_location(table.file_name, rows)
-    problems += lost
-    groups, second, repeats = _one_field_sample(table.file_name, groups)
-    problems += second
-    for name, group in groups.items():
-        if len({row.stratum.casefold() for row in group if row.stratum}) > 1:
-            problems.append(f"{table.file_name}: location '{name}' stands in two strata; keep one.")
-    if problems:
-        raise LabError(*problems)
+    groups, repeats = rows_by_location(table, analyte)
     notes = []
     if repeats:
         numbers = listed([str(row.row) for row in repeats])
@@ -81,6 +75,41 @@ def pilot_locations(
         _location(table.file_name, name, group, duplicates) for name, group in groups.items()
     )
     return locations, tuple(notes)
+
+
+def rows_by_location(table: LabTable, analyte: str) -> tuple[dict[str, list[LabRow]], list[LabRow]]:
+    """Sort the rows of one analyte by location, the field sample before its duplicates.
+
+    Parameters
+    ----------
+    table : LabTable
+    analyte : str
+        The campaign's id.
+
+    Returns
+    -------
+    groups : dict of str to list of LabRow
+        In file order.
+    repeats : list of LabRow
+        Rows that only say again what another says; in no group.
+
+    Raises
+    ------
+    LabError
+        As in ``pilot_locations``.
+    """
+    rows = [row for row in table.rows if row.analyte == analyte and row.role in IN_THE_MEAN]
+    rows, problems = _without_copies(table.file_name, told_apart_by_day(rows))
+    groups, lost = _by_location(table.file_name, rows)
+    problems += lost
+    groups, second, repeats = _one_field_sample(table.file_name, groups)
+    problems += second
+    for name, group in groups.items():
+        if len({row.stratum.casefold() for row in group if row.stratum}) > 1:
+            problems.append(f"{table.file_name}: location '{name}' stands in two strata; keep one.")
+    if problems:
+        raise LabError(*problems)
+    return groups, repeats
 
 
 def _without_copies(name: str, rows: Sequence[LabRow]) -> tuple[list[LabRow], list[str]]:
@@ -166,6 +195,7 @@ def _location(name: str, place: str, rows: Sequence[LabRow], duplicates: str) ->
         half=merged.half,
         high=merged.high,
         detected=merged.detected,
+        collected_on=next((row.collected_on for row in rows if row.collected_on), None),
     )
 
 
@@ -229,7 +259,15 @@ def measured_spread(
         sigma_at_limit=sigmas["high"],
         skewness=sample_skewness(ends["half"]),
         skewness_ceiling=skewness_ceiling(len(locations)),
+        positions=tuple(_position(place) for place in locations),
+        days=tuple(place.collected_on for place in locations),
     )
+
+
+def _position(place: PilotLocation) -> tuple[float, float] | None:
+    if place.latitude is None or place.longitude is None:
+        return None
+    return place.latitude, place.longitude
 
 
 _REMEDY = 'Type one in the campaign file: a [[sigma]] table with stratum = "{}", value, source.'

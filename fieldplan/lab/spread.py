@@ -9,11 +9,20 @@ from fieldplan.base.units import significant
 from fieldplan.campaign.inputs import resolve_file
 from fieldplan.campaign.model import Campaign, ReadCampaign, Sigma
 from fieldplan.campaign.questions import WITHOUT_SIGMA
-from fieldplan.lab.model import LabTable, Spread, StratumSpread
+from fieldplan.lab.model import LabTable, SplitSpread, Spread, StratumSpread
+from fieldplan.lab.parts import (
+    PLACES,
+    Parts,
+    gather_parts,
+    of_analyte,
+    split_of,
+    whole_from_parts,
+)
 from fieldplan.lab.pilot import PilotLocation, measured_spread, pilot_locations, spread_sentences
 from fieldplan.lab.reader import read_lab
 from fieldplan.lab.reading_pairs import read_reading_pairs
 from fieldplan.lab.strata import sort_into_strata
+from fieldplan.lab.visits import declared_visits
 from fieldplan.lab.words import listed
 
 if TYPE_CHECKING:
@@ -85,12 +94,14 @@ def spread(tables: Sequence[LabTable | None], campaign: Campaign, frame: "Frame"
     analyte = campaign.deciding_analyte
     gathered = _gather(tables, campaign, frame, analyte.id)
     entries: list[StratumSpread] = []
+    splits: list[SplitSpread] = []
     problems: list[str] = []
     asked = campaign.deciding_objective.question
     known = asked not in WITHOUT_SIGMA or any(s.analyte == analyte.id for s in campaign.sigma)
     for stratum in frame.strata if known else ():
         try:
             entries.append(_declared(gathered.choose(stratum.name), campaign, analyte.id))
+            splits += filter(None, [gathered.split(entries[-1], campaign.rules.duplicates)])
         except LabError as fault:
             problems += fault.problems
     if problems:
@@ -101,7 +112,7 @@ def spread(tables: Sequence[LabTable | None], campaign: Campaign, frame: "Frame"
     sentences: list[str] = []
     for entry in shown:
         sentences += spread_sentences(entry, analyte.unit, count)
-    others, more = _others(tables, campaign, frame, analyte.id)
+    others, other_splits, more = _others(tables, campaign, frame, analyte.id)
     file_notes = [note for table in tables if table for note in table.notes]
     notes = [*file_notes, *gathered.notes, *more]
     return Spread(
@@ -112,6 +123,7 @@ def spread(tables: Sequence[LabTable | None], campaign: Campaign, frame: "Frame"
         others=tuple(others),
         sentences=tuple(sentences),
         notes=tuple(dict.fromkeys(notes)),
+        splits=(*splits, *other_splits),
     )
 
 
@@ -128,6 +140,7 @@ class _Gathered:
     unplaced: list[PilotLocation] = field(default_factory=list)
     reason: str = ""
     notes: list[str] = field(default_factory=list)
+    parts: Parts = field(default_factory=lambda: Parts(""))
 
     def choose(self, name: str) -> StratumSpread:
         """Give one stratum its sigma."""
@@ -177,6 +190,16 @@ class _Gathered:
             f"({pilot.source}, {pilot.results} results) has s = {found} {self.unit}."
         )
 
+    def split(self, entry: StratumSpread, duplicates: str) -> SplitSpread | None:
+        """Split one stratum's sigma into its parts; None where nothing tells them."""
+        pilot = self.parts.pilot
+        places = self.measured.get(entry.stratum) or self.unplaced if entry.values else []
+        counts = []
+        if pilot is not None:
+            first = duplicates == "first"
+            counts = [1 if first else pilot.counts.get(place.location_id, 1) for place in places]
+        return split_of(self.parts, entry, counts)
+
     def site(self) -> StratumSpread | None:
         """Give the whole site's sigma: typed for it, or pooled over every pilot location."""
         if self.typed_site is not None:
@@ -194,11 +217,14 @@ def _gather(
     unit = next(a.unit for a in campaign.analyte if a.id == analyte)
     known = {s.name.casefold(): s.name for s in frame.strata}
     gathered = _Gathered(analyte, unit, tuple(s.name for s in frame.strata))
-    deciding = campaign.deciding_analyte.id
-    for sigma, table in zip(campaign.sigma, tables, strict=True):
-        if (sigma.analyte or deciding) != analyte:
+    own_tables, own = of_analyte(tables, campaign, analyte)
+    gathered.parts = gather_parts(own_tables, own, analyte)
+    for entry, read in zip(own, own_tables, strict=True):
+        sigma, table, named = entry, read, _named_stratum(entry, known)
+        if sigma.part == PLACES:
+            sigma, table = whole_from_parts(gathered.parts, named, sigma), None
+        if sigma.part != "total":
             continue
-        named = _named_stratum(sigma, known)
         if table is not None:
             _add_pilot(gathered, sigma, table, frame, named, campaign.rules.duplicates)
         elif named:
@@ -264,14 +290,15 @@ def _declared(entry: StratumSpread, campaign: Campaign, analyte: str) -> Stratum
             found = replace(found, skewness=sigma.skewness)
         if sigma.excess_kurtosis is not None:
             found = replace(found, excess_kurtosis=sigma.excess_kurtosis)
-    return found
+    return replace(found, visits=declared_visits(entry, campaign, analyte))
 
 
 def _others(
     tables: Sequence[LabTable | None], campaign: Campaign, frame: "Frame", deciding: str
-) -> tuple[list[StratumSpread], list[str]]:
+) -> tuple[list[StratumSpread], list[SplitSpread], list[str]]:
     """Give what is known of analytes that do not decide n; what is not known is only noted."""
     entries: list[StratumSpread] = []
+    splits: list[SplitSpread] = []
     notes: list[str] = []
     for analyte in {s.analyte: None for s in campaign.sigma if s.analyte not in {None, deciding}}:
         try:
@@ -280,7 +307,8 @@ def _others(
             for stratum in frame.strata:
                 entry = _declared(gathered.choose(stratum.name), campaign, analyte or deciding)
                 entries.append(replace(entry, stratum=stratum.name))
+                splits += filter(None, [gathered.split(entry, campaign.rules.duplicates)])
         except FieldplanError as fault:
             name = campaign.analyte_called(analyte or deciding).label
             notes += [f"{name}: {line}" for line in fault.problems]
-    return entries, notes
+    return entries, splits, notes
