@@ -5,6 +5,7 @@ import tomllib
 from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
+from fieldplan.cli.bare_composites import composites_of_numbers, with_splits
 from fieldplan.cli.size_options import BadOption, BareNumbers
 
 if TYPE_CHECKING:
@@ -60,7 +61,10 @@ def asked_of_numbers(typed: Mapping[str, Any]) -> "Asked":
     else:
         question = ask(campaign, NO_TARGET, parts=parts, mean=numbers.mean)
         question = replace(question, assurance=None, analyte="", unit=numbers.unit or "")
-    spread = _spread(numbers, parts) if known else None
+    spread = None
+    if known:
+        spread = with_splits(campaign, _spread(numbers, parts))
+        question, campaign, spread = composites_of_numbers(question, campaign, spread)
     return Asked(campaign, objective, question, None, spread, numbers.area, sigma_known=known)
 
 
@@ -129,6 +133,9 @@ def _place(data: dict[str, Any], objective: dict[str, Any], text: str) -> None:
         message = f"--with {text!r}: write a key and its value, such as share=0.05."
         raise BadOption(message)
     path = key.split(".")
+    if path[0] == "sigma" and path[1:] in (["sampling"], ["analysis"]):
+        data["sigma"].append({"part": path[1], "value": _value(value), "source": "typed"})
+        return
     own = table_of(objective["question"])
     tables = {table_of(question) for question in MODULES}
     if len(path) == 1 and own in tables:
@@ -141,12 +148,22 @@ def _place(data: dict[str, Any], objective: dict[str, Any], text: str) -> None:
         raise BadOption(message)
     here: Any = objective if path[0] in tables else data
     for step in path[:-1]:
-        here = here.setdefault(step, {}) if isinstance(here, dict) else here
+        if isinstance(here, dict):
+            here = here.setdefault(step, [{}] if here is data and _repeats(step) else {})
         here = here[0] if isinstance(here, list) else here
     if not isinstance(here, dict):
         message = f"--with {text!r}: {'.'.join(path[:-1])} is no table."
         raise BadOption(message)
     here[path[-1]] = _value(value)
+
+
+def _repeats(table: str) -> bool:
+    """Tell whether a campaign file may have several tables of a name."""
+    from fieldplan.campaign.model import Campaign
+    from fieldplan.campaign.shape import shapes
+
+    shape = shapes(Campaign).get(table)
+    return shape is not None and shape.kind == "tables"
 
 
 def _value(text: str) -> Any:

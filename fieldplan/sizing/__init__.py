@@ -57,8 +57,10 @@ def size(
     (9, 11, [4, 5])
     """
     from fieldplan.sizing.asking import asked_of
+    from fieldplan.sizing.composites import composited
     from fieldplan.sizing.others import other_precisions
 
+    campaign, spread = composited(campaign, spread, put=lambda c, s: question_of(c, s, frame))
     asked = asked_of(campaign, spread, frame)
     found = size_asked(asked, beside=beside)
     others = other_precisions(campaign, spread, frame, asked=asked.question, size=found)
@@ -89,4 +91,10 @@ def size_asked(
     else:
         found = size_of(asked, count(asked))
     more = findings_beside(asked, found, wanted=beside)
-    return replace(found, findings=(*found.findings, *more))
+    increments = asked.question.increments
+    return replace(
+        found,
+        findings=(*found.findings, *more),
+        increments=increments,
+        replicates=found.needed if increments > 1 else 1,
+    )

@@ -2,6 +2,7 @@
 
 import math
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from difflib import get_close_matches
 from typing import TYPE_CHECKING
 
@@ -86,6 +87,9 @@ def ask(
     design = next((d for d in campaign.design if d.id == objective.design), campaign.design[0])
     analyte = campaign.analyte_called(objective.analyte or campaign.deciding_analyte.id)
     cost, assurance = campaign.cost, objective.assurance
+    if cost is not None and design.takes_composites and isinstance(design.increments, int):
+        more = design.increments * cost.per_increment
+        parts = tuple(replace(part, extra_cost=part.extra_cost + more) for part in parts)
     return Question(
         parts=parts,
         target=kind,
@@ -107,6 +111,8 @@ def ask(
         design=design.id,
         analyte=analyte.id,
         unit=analyte.unit,
+        increments=design.increments if isinstance(design.increments, int) else 1,
+        one_place=design.increments_at == "one-place",
     )
 
 

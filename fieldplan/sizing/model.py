@@ -276,6 +276,10 @@ class Size:
         What decided the number.
     question : str
         What was asked, as the campaign names it.
+    increments : int
+        In each result; 1 where every result is a sample of its own.
+    replicates : int
+        Composites that are results, which is ``needed`` where ``increments`` is above 1; else 1.
     findings : tuple of Finding
         The working of a question that is not about the precision of a mean, then what stands
         beside the number.
@@ -312,3 +316,5 @@ class Size:
     number_from: NumberFrom = "target"
     question: str = "mean"
     findings: tuple[Finding, ...] = ()
+    increments: int = 1
+    replicates: int = 1

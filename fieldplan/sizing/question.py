@@ -114,6 +114,11 @@ class Question:
         What is asked of other analytes in the same samples; all targets are kept.
     targeted : int
         Places chosen by judgement: visited and analysed, so they cost, but they count as no n.
+    increments : int
+        In each result; above 1 every result is a composite, sigma is that of one composite, and n
+        counts composites.
+    one_place : bool
+        The increments of a composite lie round one location; else each has its own.
     """
 
     parts: tuple[Part, ...]
@@ -139,6 +144,8 @@ class Question:
     analyte: str = ""
     unit: str = ""
     notes: tuple[str, ...] = field(default=())
+    increments: int = 1
+    one_place: bool = False
 
     def __post_init__(self) -> None:
         """Refuse what no arithmetic can answer."""
@@ -179,6 +186,11 @@ class Question:
     def sharing_of_visits(self) -> Strata:
         """The same for locations: more may be visited than losses leave as results."""
         return replace(self.sharing, ceilings=ceilings_of([part.most for part in self.parts]))
+
+    @property
+    def taken(self) -> str:
+        """What is planned, in a word: locations, or composites that have no one location."""
+        return "composite" if self.increments > 1 and not self.one_place else "location"
 
     @property
     def target_standard_error(self) -> float | None:

@@ -44,7 +44,8 @@ def sentences(
     -------
     tuple of str
     """
-    lines = [_answer(question, counts), _chance(question, counts, assured)]
+    lines = [_answer(question, counts), increments_words(question, counts)]
+    lines.append(_chance(question, counts, assured))
     lines += [
         expected_precision(question, counts),
         _floor(question, counts),
@@ -56,23 +57,24 @@ def sentences(
 
 def _answer(question: Question, counts: Counts) -> str:
     needed, planned = sum(counts.needed), sum(counts.planned)
+    taken = question.taken
     where = ""
     if len(question.parts) > 1:
         where = ": " + in_strata(counts.planned, [part.name for part in question.parts])
     if question.census:
         return f"All {planned} units of the list are visited{where}."
     if question.locations is not None:
-        return f"The campaign file fixes {counted(planned, 'location')}{where}{_left(counts)}."
+        return f"The campaign file fixes {counted(planned, taken)}{where}{_left(counts)}."
     if question.target == "budget":
         buys = f"A budget of {_money_words(question, question.value)} buys "
-        return f"{buys}{counted(planned, 'location')}{where}{_left(counts)}."
+        return f"{buys}{counted(planned, taken)}{where}{_left(counts)}."
     if question.takes_all(counts.needed):
         target = target_words(question)
         return f"All {needed} units of the list are visited{where}: a {target} takes every one."
     if planned == needed:
         return f"{counted(needed, 'result')} are needed for a {target_words(question)}{where}."
     return (
-        f"Visit {counted(planned, 'location')}{where}. {counted(needed, 'result')} are needed for "
+        f"{_go_for(question, planned)}{where}. {counted(needed, 'result')} are needed for "
         f"a {target_words(question)}; {_spare(planned - needed)} for losses."
     )
 
@@ -86,7 +88,25 @@ def visit_words(question: Question, counts: Counts) -> str:
     if planned == needed and not where:
         return ""
     spare = "" if planned == needed else f"; {_spare(planned - needed)} for losses"
-    return f"Visit {counted(planned, 'location')}{where}{spare}."
+    return f"{_go_for(question, planned)}{where}{spare}."
+
+
+def _go_for(question: Question, planned: int) -> str:
+    verb = "Visit" if question.taken == "location" else "Take"
+    return f"{verb} {counted(planned, question.taken)}"
+
+
+def increments_words(question: Question, counts: Counts) -> str:
+    """Say what a result is where it comes from a composite; empty where it does not."""
+    k, planned = question.increments, sum(counts.planned)
+    if k == 1:
+        return ""
+    where = "all round one location" if question.one_place else "each at its own random place"
+    return (
+        f"Each result comes from one composite of {k} increments, {where}: "
+        f"{counted(planned, 'composite')} and {k * planned} increments in all. Increments never "
+        f"count as results: n is {sum(counts.needed)}."
+    )
 
 
 def _spare(count: int) -> str:

@@ -15,7 +15,12 @@ from fieldplan.sizing.counting import (
 from fieldplan.sizing.curve import curve
 from fieldplan.sizing.model import CurvePoint, Finding, Size, StratumSize
 from fieldplan.sizing.precision import Precision
-from fieldplan.sizing.sentences import expected_precision, money_words, visit_words
+from fieldplan.sizing.sentences import (
+    expected_precision,
+    increments_words,
+    money_words,
+    visit_words,
+)
 
 
 def size_of(asked: Asked, answered: Answered) -> Size:
@@ -118,7 +123,8 @@ def _strata(asked: Asked, counts: Counts) -> tuple[StratumSize, ...]:
 
 
 def _sentences(asked: Asked, counts: Counts, finding: Finding) -> tuple[str, ...]:
-    lines = [finding.answer, visit_words(asked.question, counts), *finding.warnings]
+    lines = [finding.answer, increments_words(asked.question, counts)]
+    lines += [visit_words(asked.question, counts), *finding.warnings]
     if asked.sigma_known:
         lines.append(expected_precision(asked.question, counts))
     lines.append(money_words(asked.question, counts))
