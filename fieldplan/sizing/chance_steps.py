@@ -114,10 +114,12 @@ def _behind(question: Question, chosen: tuple[int, ...]) -> Iterator[Step]:
         )
     ]
     whole = math.fsum(term.moving for term in moving) / total
+    squared = question.allocation == "equal-precision"
+    over = "2·p·(1 − p/P) / (n0 − 2.5)" if squared else "p·(1 − p/P) / (n0 − 1)"
     yield Step(
         symbol="m",
-        meaning="Factor on the predicted variance, as Neyman counts follow the pilot's luck",
-        formula="m = exp(Σ p·(1 − p/P) / (n0 − 1)), over strata neither at their floor nor whole",
+        meaning="Factor on the predicted variance, as the counts follow the pilot's luck",
+        formula=f"m = exp(Σ {over}), over strata neither at their floor nor whole",
         inputs=(*shares, Quantity("P", "sum of p", whole)),
         unrounded=luck,
         rounded=luck,
@@ -155,7 +157,7 @@ def _chance(question: Question, chosen: tuple[int, ...], chance: float) -> Step:
     if pilot is not None and math.isfinite(pilot):
         inputs.append(Quantity("df", "degrees of freedom behind sigma", pilot))
     if luck != 1:
-        inputs.append(Quantity("m", "factor on V: Neyman counts follow the pilot's luck", luck))
+        inputs.append(Quantity("m", "factor on V: the counts follow the pilot's luck", luck))
     main = precision.degrees_of_freedom(chosen)
     if question.target_half_width is not None and math.isfinite(main):
         t = t_quantile(main, confidence=question.confidence, kind=question.interval)

@@ -13,8 +13,8 @@ from fieldplan.stats.assurance import (
 from fieldplan.stats.intervals import t_quantile
 from fieldplan.stats.stratified import satterthwaite, variance_factors
 
-FOLLOWING = {"neyman": 1.0, "cost-optimal": 1.0, "equal-precision": 2.0}
-"""Allocations whose counts follow the pilot's s, and to which power."""
+FOLLOWING = ("neyman", "cost-optimal", "equal-precision")
+"""Allocations whose counts follow the pilot's s."""
 
 
 @dataclass(frozen=True)
@@ -154,19 +154,24 @@ class Precision:
         Σ p (1 − p/P) / df above that of df/χ², where p is a stratum's share of the predicted
         variance, P the sum of p, and df = n0 − 1. Only strata that follow the pilot have a p: one
         at its floor, or a list taken whole, counts in the variance alone, so that P falls below 1.
-        Strata of one pilot have one p. Counts of least cost have the same factor; those of equal
-        precision follow s² rather than s, so that Σ p/u² stands in place of the quotient and the
-        excess is twice as large. Derived here; the tests hold it to simulation.
+        Strata of one pilot have one p. Counts of least cost have the same factor. Those of equal
+        precision follow s², so that the true variance over the predicted is Σ p/u² and the excess
+        twice as large; there df − 1.5 stands for df, which the simulation asks for. Derived here;
+        the tests hold it to simulation.
         """
         terms = self.pilot_terms(counts)
         total = math.fsum(term.variance for term in terms)
         moving = math.fsum(term.moving for term in terms)
+        squared = self.question.allocation == "equal-precision"
         excess = [
-            term.moving / total * (1 - term.moving / moving) / term.known
+            term.moving
+            / total
+            * (1 - term.moving / moving)
+            * (2 / max(term.known - 1.5, 0.5) if squared else 1 / term.known)
             for term in terms
             if term.moving > 0
         ]
-        return math.exp(FOLLOWING.get(self.question.allocation, 0.0) * math.fsum(excess))
+        return math.exp(math.fsum(excess))
 
     def chance(self, counts: Sequence[float], *, sigma_known: bool = False) -> float | None:
         """Give the chance that these counts meet the target.

@@ -40,7 +40,7 @@ def _realised_half_width(counts: list[int], generator: Generator) -> float:
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize("allocation", ["proportional", "neyman"])
+@pytest.mark.parametrize("allocation", ["proportional", "neyman", "equal-precision"])
 @pytest.mark.parametrize("pilot_n", [(6, 6, 6), (12, 8, 5)])
 @pytest.mark.parametrize(("target", "value"), [("standard_error", 4.5), ("half_width", 10.0)])
 def test_stated_chance_is_kept_for_strata(
