@@ -16,10 +16,6 @@ _LATER_VALUES: dict[tuple[str, str], dict[str, str]] = {
         "composite": "composite samples",
         "incremental": "incremental samples",
     },
-    ("objective", "question"): {
-        "upper-share": "limits for an upper share of the population",
-        "change": "change between rounds",
-    },
     ("rules", "non_detects"): {
         "censored": "estimates that model non-detects",
     },

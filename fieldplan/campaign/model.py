@@ -9,8 +9,12 @@ from pydantic import BaseModel, ConfigDict, Field
 
 from fieldplan.campaign.field_reading import FieldReading
 from fieldplan.campaign.questions.all_clear import AllClear
+from fieldplan.campaign.questions.change import Change
+from fieldplan.campaign.questions.mean_and_background import MeanAndBackground
 from fieldplan.campaign.questions.mean_and_level import MeanAndLevel
+from fieldplan.campaign.questions.share import ShareTable
 from fieldplan.campaign.questions.smallest_patch import SmallestPatch
+from fieldplan.campaign.questions.upper_share import UpperShare
 from fieldplan.campaign.table import (
     Identifier,
     NonNegativeNumber,
@@ -115,8 +119,13 @@ class DesignTable(Table):
     id: Identifier = "main"
     frame: str | None = None
     layout: Literal["simple-random", "stratified", "square-grid", "triangular-grid", "census"]
-    allocation: Literal["proportional", "neyman"] = "proportional"
+    allocation: Literal["proportional", "neyman", "cost-optimal", "equal-precision"] = (
+        "proportional"
+    )
+    equal_in: Literal["standard-error", "relative-standard-error"] = "standard-error"
     floor: Annotated[int, Field(ge=2)] = 2
+    least: Mapping[str, Annotated[int, Field(ge=2)]] = {}
+    most: Mapping[str, Annotated[int, Field(ge=1)]] = {}
     alternates: Annotated[int, Field(ge=0)] = 0
     minimum_spacing_m: NonNegativeNumber = 0.0
     exact_count: bool = True
@@ -151,7 +160,16 @@ class Objective(Table):
 
     design: str | None = None
     analyte: str | None = None
-    question: Literal["mean", "mean-and-level", "all-clear", "smallest-patch"]
+    question: Literal[
+        "mean",
+        "mean-and-level",
+        "mean-and-background",
+        "change",
+        "upper-share",
+        "all-clear",
+        "share",
+        "smallest-patch",
+    ]
     standard_error: PositiveNumber | None = None
     half_width: PositiveNumber | None = None
     relative_half_width: Annotated[float, Field(gt=0, lt=10)] | None = None
@@ -165,6 +183,10 @@ class Objective(Table):
     all_clear: AllClear | None = None
     mean_and_level: MeanAndLevel | None = None
     smallest_patch: SmallestPatch | None = None
+    mean_and_background: MeanAndBackground | None = None
+    change: Change | None = None
+    upper_share: UpperShare | None = None
+    share: ShareTable | None = None
 
 
 class Sigma(Table):
@@ -185,6 +207,9 @@ class Sigma(Table):
     expected_mean: PositiveNumber | None = None
     skewness: float | None = None
     excess_kurtosis: NonNegativeNumber | None = None
+    correlation_between_visits: Annotated[float, Field(ge=-0.99, le=0.99)] | None = None
+    correlation_days: PositiveNumber | None = None
+    visit_spacing_days: PositiveNumber | None = None
 
 
 class Cost(Table):
@@ -197,6 +222,8 @@ class Cost(Table):
     per_analysis: NonNegativeNumber = 0.0
     per_increment: NonNegativeNumber = 0.0
     per_ranking: NonNegativeNumber = 0.0
+    per_location_by_stratum: Mapping[str, NonNegativeNumber] = {}
+    per_analysis_by_stratum: Mapping[str, NonNegativeNumber] = {}
     per_crew_day: NonNegativeNumber = 0.0
     locations_per_day: PositiveNumber | None = None
     wrongly_acted: PositiveNumber | None = None
@@ -302,9 +329,15 @@ class Campaign(Table):
 
     @property
     def deciding_objective(self) -> Objective:
-        """The objective that decides n: the one marked so, or the only one."""
+        """The objective that decides n: the first one marked so, or the only one."""
         marked = [objective for objective in self.objective if objective.decides_n]
         return marked[0] if marked else self.objective[0]
+
+    @property
+    def also_deciding(self) -> tuple[Objective, ...]:
+        """The other objectives that are marked as deciding n: their targets are kept as well."""
+        first = self.deciding_objective
+        return tuple(o for o in self.objective if o.decides_n and o is not first)
 
     @property
     def deciding_analyte(self) -> Analyte:

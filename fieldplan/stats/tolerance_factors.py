@@ -242,12 +242,28 @@ def n_for_bound(margin: float, *, share: float, confidence: float, power: float)
         lambda n: chance_of_bound(n, margin, share=share, confidence=confidence) >= power - SLACK,
         2,
         f"a margin of {margin:g} standard deviations",
-        near=_near_bound(margin, share, confidence, power),
+        near=near_bound(margin, share, confidence=confidence, power=power),
     )
 
 
-def _near_bound(margin: float, share: float, confidence: float, power: float) -> float:
-    """Give about how many results a bound needs, by the large-sample variance of mean + k s."""
+def near_bound(margin: float, share: float, *, confidence: float, power: float) -> float:
+    """Give about how many results a bound needs, unrounded.
+
+    Parameters
+    ----------
+    margin, share, confidence, power
+        As in ``n_for_bound``.
+
+    Notes
+    -----
+    By the large-sample variance of mean + k s, σ² (1 + k²/2) / n: Owen (1963), Sandia Corporation
+    monograph SCR-607.
+
+    Examples
+    --------
+    >>> round(near_bound(3.0, 0.95, confidence=0.95, power=0.8), 1)
+    13.6
+    """
     z = normal_quantile(share)
     at_share = normal_quantile(confidence) * math.sqrt(1 + z**2 / 2)
     at_margin = normal_quantile(power) * math.sqrt(1 + margin**2 / 2)

@@ -4,16 +4,28 @@ Each module gives ``Asked`` (the table below ``[[objective]]``), ``MEANING`` (wh
 ``problems`` (what must hold between them). The table is named as the question, with underscores.
 """
 
-from fieldplan.campaign.questions import all_clear, mean_and_level, smallest_patch
+from fieldplan.campaign.questions import (
+    all_clear,
+    change,
+    mean_and_background,
+    mean_and_level,
+    share,
+    smallest_patch,
+    upper_share,
+)
 
 MODULES = {
     "all-clear": all_clear,
+    "change": change,
+    "mean-and-background": mean_and_background,
     "mean-and-level": mean_and_level,
+    "share": share,
     "smallest-patch": smallest_patch,
+    "upper-share": upper_share,
 }
 """Question, as the campaign file names it, and its module."""
 
-WITHOUT_SIGMA = frozenset({"all-clear", "share", "smallest-patch"})
+WITHOUT_SIGMA = frozenset({"all-clear", "change", "share", "smallest-patch", "upper-share"})
 """Questions that can be answered where nobody knows a standard deviation."""
 
 

@@ -400,10 +400,6 @@ LATER = [
     (('"area"', '"line"'), '12: frame.kind: "line" (frames along lines such as shores and'),
     (('"area"', '"volume"'), '12: frame.kind: "volume" (frames of volumes such as stockpiles'),
     (('"area"', '"time"'), '12: frame.kind: "time" (frames of time such as days of discharge)'),
-    (('"mean"', '"mean-and-level"'), '19: objective.question: "mean-and-level" (comparing the'),
-    (('"mean"', '"upper-share"'), '19: objective.question: "upper-share" (limits for an upper'),
-    (('"mean"', '"change"'), '19: objective.question: "change" (change between'),
-    (('"mean"', '"change"'), '19: objective.question: "change" (change between rounds) is not'),
     (
         ('"simple-random"', '"spatially-balanced"'),
         '16: design.layout: "spatially-balanced" (spatially balanced layouts) is not done yet.',

@@ -1,0 +1,141 @@
+"""What results above a level may be claimed to show, by counting them: any shape of population."""
+
+import math
+
+from fieldplan.base.errors import CampaignError, DesignError
+from fieldplan.sizing.asked.model import Asked
+from fieldplan.sizing.words import typed, with_unit
+from fieldplan.stats.lots import chance_of_at_most, chance_unseen
+from fieldplan.stats.precision import MOST, smallest
+from fieldplan.stats.tolerance import SLACK, chance_of_exceedances
+
+WILKS = "Wilks 1941, Annals of Mathematical Statistics 12:91 (from memory)"
+HOEFFDING = "Hoeffding 1956, Annals of Mathematical Statistics 27:713 (from memory)"
+HYPERGEOMETRIC = "hypergeometric distribution; Cochran 1977, Sampling Techniques, 3rd ed., sec. 3.6"
+
+
+def table_missing(question: str) -> CampaignError:
+    """Say that the objective has no table of its question."""
+    message = f"[objective.{question}] is missing; write its keys below [[objective]]."
+    return CampaignError(message)
+
+
+def level_words(asked: Asked) -> str:
+    """Name the level with its unit; ``the level`` where the campaign gives none."""
+    return (
+        "the level" if asked.level is None else with_unit(typed(asked.level), asked.question.unit)
+    )
+
+
+def exceeding_units(asked: Asked, share: float) -> int:
+    """Count the units that a share of the list makes, the last one whole."""
+    return max(1, math.ceil(share * (asked.population or 0) - 1e-9))
+
+
+def chance_noticed(asked: Asked, counts: tuple[int, ...], share: float, *, allowed: int) -> float:
+    """Give the chance that more than the allowed results exceed, if just that share does.
+
+    Parameters
+    ----------
+    asked : Asked
+    counts : tuple of int
+        Results by stratum.
+    share : float
+        Of the population above the level, inside (0, 1); of a list whole units.
+    allowed : int
+        Results that may exceed.
+
+    Notes
+    -----
+    One area: binomial. One list: hypergeometric. Strata: the worst way in which the share may lie
+    among them, which for a binomial is bounded by the least thinly sampled stratum's share of the
+    mean number of exceedances (Hoeffding 1956).
+    """
+    total = sum(counts)
+    if asked.population is None:
+        return 1 - chance_of_exceedances(total, share * evenness(asked, counts), allowed=allowed)
+    units, exceeding = asked.population, exceeding_units(asked, share)
+    if total >= units:
+        return float(exceeding > allowed)
+    if len(counts) == 1:
+        return 1 - chance_of_at_most(allowed, n=total, exceeding=exceeding, units=units)
+    if allowed == 0:
+        populations = [part.population or 0 for part in asked.question.parts]
+        return 1 - chance_unseen(counts, populations, exceeding)
+    spread = exceeding / units * evenness(asked, counts)
+    return 1 - chance_of_exceedances(total, spread, allowed=allowed)
+
+
+def evenness(asked: Asked, counts: tuple[int, ...]) -> float:
+    """Give how far the most thinly sampled stratum lies below an even share; 1 where none does."""
+    total = sum(counts)
+    parts = zip(counts, asked.question.parts, strict=True)
+    return min(1.0, *(n / (total * part.weight) for n, part in parts), 1.0)
+
+
+def counts_that_notice(
+    asked: Asked, share: float, confidence: float, *, allowed: int, near: int
+) -> tuple[int, ...]:
+    """Share the smallest total that notices a share with the stated chance.
+
+    Parameters
+    ----------
+    asked : Asked
+    share : float
+        Above the level.
+    confidence : float
+    allowed : int
+        Results that may exceed.
+    near : int
+        The number for one stratum: never more than the answer.
+
+    Raises
+    ------
+    DesignError
+        Not even the whole list would do, or more results than any campaign collects.
+    """
+    floors = sum(asked.question.strata.floors)
+    low = max(near, floors, 1)
+    most = MOST if asked.population is None else asked.population
+    if asked.population is not None and exceeding_units(asked, share) <= allowed:
+        message = (
+            f"{allowed} units may exceed, and no more than {exceeding_units(asked, share)} of "
+            f"{most} shall: looking at all of them would show nothing. Allow fewer."
+        )
+        raise DesignError(message)
+
+    def notices(total: int) -> bool:
+        chance = chance_noticed(asked, asked.shared(total), share, allowed=allowed)
+        return chance >= confidence - SLACK
+
+    # Whole shares ripple: a total may fail where the one before it did.
+    ripple = 4 * len(asked.question.parts) if len(asked.question.parts) > 1 else 0
+    return asked.shared(smallest(notices, min(low, most), most, back=ripple))
+
+
+def population_words(asked: Asked) -> str:
+    """Name what a share is a share of."""
+    if asked.population is not None:
+        return f"the {asked.population} units of the list"
+    return "the places that could have been sampled"
+
+
+def counting_assumptions(asked: Asked, *, allowed: int) -> tuple[str, ...]:
+    """Say what counting takes for granted."""
+    lines = [
+        "Every place or unit is as likely to be drawn as any other of its stratum; targeted places "
+        "and places moved at will do not count.",
+        "A result stands for its place as the laboratory reports it: error of sampling and "
+        "analysis is part of what exceeds or does not.",
+        "The level, the claim and the number allowed are fixed before any result is seen.",
+    ]
+    if asked.question.grid:
+        lines.append("A grid is counted like places drawn one by one; a pattern as regular as the "
+                     "grid could hide between its points.")  # fmt: skip
+    if len(asked.question.parts) > 1:
+        how = "the worst way to lie among the strata"
+        if asked.population is not None and allowed == 0:
+            lines.append(f"Units that exceed may lie in {how}.")
+        else:
+            lines.append(f"The share that exceeds may lie in {how} (Hoeffding 1956).")
+    return tuple(lines)

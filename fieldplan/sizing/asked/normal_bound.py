@@ -1,0 +1,226 @@
+"""The bound mean + k s of normal results below the level: how many bring it there often enough."""
+
+from fieldplan.base.errors import DesignError
+from fieldplan.base.working import Quantity, Step
+from fieldplan.campaign.questions.upper_share import UpperShare
+from fieldplan.sizing.asked.counting_claims import level_words, population_words
+from fieldplan.sizing.asked.model import Answered, Asked
+from fieldplan.sizing.model import Amount, Finding, Picture, Series
+from fieldplan.sizing.words import counted, figure, percent, typed_percent
+from fieldplan.stats.distributions import normal_quantile
+from fieldplan.stats.precision import whole
+from fieldplan.stats.tolerance import n_by_counting
+from fieldplan.stats.tolerance_factors import (
+    chance_of_bound,
+    n_for_bound,
+    near_bound,
+    upper_factor,
+)
+
+TITLE = "A stated share lies below the level"
+OWEN = "Owen 1963, Sandia Corporation monograph SCR-607 (from memory)"
+NORMAL_SKEW = 0.5
+"""Skewness from which a normal bound is warned against: common practice, no source."""
+
+
+def count(asked: Asked, table: UpperShare) -> Answered:
+    """Count the results whose normal bound comes out below the level often enough.
+
+    Parameters
+    ----------
+    asked : Asked
+    table : UpperShare
+
+    Raises
+    ------
+    DesignError
+        No level, mean or sigma, several strata, or a level that is too near the mean.
+    """
+    margin, power = _margin(asked), table.power or 0.0
+    total = n_for_bound(margin, share=table.share, confidence=table.confidence, power=power)
+    needed = asked.shared(total)
+    total = sum(needed)
+    answer = (
+        f"{counted(total, 'result')} would put the bound mean + {_factor(total, table):.3f} s "
+        f"below {level_words(asked)} in {percent(_chance(total, margin, table))} of campaigns, if "
+        "results are normal with the mean and sigma expected. " + _claim(asked, table)
+    )
+    return Answered(
+        needed,
+        f"at least {typed_percent(table.share)} at or below {level_words(asked)}",
+        _finding(asked, table, total, answer, _steps(asked, table, total)),
+        near_bound(margin, table.share, confidence=table.confidence, power=power),
+    )
+
+
+def bought(asked: Asked, table: UpperShare, counts: tuple[int, ...]) -> Finding:
+    """Say how often the bound of given counts comes out below the level."""
+    total = sum(counts)
+    chance = _chance(total, _margin(asked), table)
+    answer = (
+        f"With {counted(total, 'result')} the bound mean + {_factor(total, table):.3f} s comes out "
+        f"below {level_words(asked)} in {percent(chance)} of campaigns, if results are normal with "
+        "the mean and sigma expected. " + _claim(asked, table)
+    )
+    return _finding(asked, table, total, answer, ())
+
+
+def _claim(asked: Asked, table: UpperShare) -> str:
+    return (
+        f"Where it does, at least {typed_percent(table.share)} of {population_words(asked)} lie "
+        f"below the level with {typed_percent(table.confidence)} confidence."
+    )
+
+
+def _factor(n: int, table: UpperShare) -> float:
+    return upper_factor(n, table.share, confidence=table.confidence)
+
+
+def _chance(n: int, margin: float, table: UpperShare) -> float:
+    return chance_of_bound(n, margin, share=table.share, confidence=table.confidence)
+
+
+def _margin(asked: Asked) -> float:
+    """Give how many standard deviations the level lies above the expected mean."""
+    question = asked.question
+    if len(question.parts) > 1:
+        message = (
+            f"a normal bound is for one population, and this one has {len(question.parts)} "
+            'strata; take method = "counting", or ask for each stratum by itself.'
+        )
+        raise DesignError(message)
+    if asked.level is None:
+        message = "a normal bound needs the level; give the analyte's action_level (--level)."
+        raise DesignError(message)
+    if question.mean is None or not asked.sigma_known:
+        message = (
+            "a normal bound needs the mean and the standard deviation to expect; give sigma and "
+            "expected_mean (--sigma and --mean), or a pilot."
+        )
+        raise DesignError(message)
+    return (asked.level - question.mean) / question.parts[0].sigma
+
+
+def _steps(asked: Asked, table: UpperShare, n: int) -> tuple[Step, ...]:
+    question, margin = asked.question, _margin(asked)
+    unit = question.unit
+    power = table.power or 0.0
+    near = near_bound(margin, table.share, confidence=table.confidence, power=power)
+    return (
+        Step(
+            symbol="m",
+            meaning="Distance from the expected mean to the level, in standard deviations",
+            formula="m = (L − mean) / s",
+            inputs=(
+                Quantity("L", "level", asked.level or 0.0, unit),
+                Quantity("mean", "expected mean", question.mean or 0.0, unit),
+                Quantity(
+                    "s", "standard deviation of single results", question.parts[0].sigma, unit
+                ),
+            ),
+            unrounded=margin,
+            rounded=margin,
+            source="definition",
+        ),
+        Step(
+            symbol="n",
+            meaning="Results whose bound comes out below the level often enough; first pass by the "
+            "large-sample variance of mean + k s, then exactly",
+            formula="smallest n with P(T(n − 1, m √n) > k √n) ≥ power",
+            inputs=(
+                Quantity("m", "distance to the level", margin),
+                Quantity("p", "share that shall lie below the level", table.share),
+                Quantity("C", "confidence", table.confidence),
+                Quantity("power", "chance wanted", power),
+            ),
+            unrounded=near,
+            rounded=float(n),
+            unit="results",
+            source=OWEN,
+        ),
+        Step(
+            symbol="k",
+            meaning="Factor of the bound mean + k s",
+            formula="P(T(n − 1, z √n) ≤ k √n) = C, z the normal quantile of p",
+            inputs=(
+                Quantity("n", "results", n, "results"),
+                Quantity("p", "share", table.share),
+                Quantity("C", "confidence", table.confidence),
+            ),
+            unrounded=_factor(n, table),
+            rounded=round(_factor(n, table), 3),
+            source=OWEN,
+        ),
+    )
+
+
+def _finding(
+    asked: Asked, table: UpperShare, n: int, answer: str, steps: tuple[Step, ...]
+) -> Finding:
+    margin = _margin(asked)
+    by_counting = n_by_counting(table.share, table.confidence)
+    return Finding(
+        topic="upper-share",
+        title=TITLE,
+        answer=answer,
+        amounts=(
+            Amount("n", "Results", n, "results"),
+            Amount("factor", "k of the bound mean + k s", _factor(n, table)),
+            Amount("margin", "Expected mean to level, in standard deviations", margin),
+            Amount("chance", "Chance that the bound comes out below", _chance(n, margin, table)),
+            Amount("n_by_counting", "Results by counting, none above", by_counting, "results"),
+        ),
+        columns=("results", "k", "chance that the bound comes out below"),
+        rows=tuple(
+            (str(m), f"{_factor(m, table):.3f}", percent(_chance(m, margin, table)))
+            for m in sorted({max(2, whole(n * f)) for f in (0.5, 0.75, 1.0, 1.5, 2.0)})
+        ),
+        steps=steps,
+        assumptions=(
+            "Results are normal, out to the tail that is claimed; places are drawn at random.",
+            "Mean and sigma are as expected; were they not, the claim stays honest but comes out "
+            "more or less often.",
+        ),
+        warnings=_warnings(asked, by_counting),
+        sources=(OWEN,),
+        picture=_picture(asked, table, n),
+    )
+
+
+def _warnings(asked: Asked, by_counting: int) -> tuple[str, ...]:
+    lines = [
+        "The claim leans on the normal shape far out, where few results can show it. Counting "
+        f"needs no shape: {by_counting} results, none of them above the level.",
+        "It says nothing about the mean, nor that no place exceeds the level.",
+    ]
+    skewness = asked.question.parts[0].skewness
+    if skewness is not None and abs(skewness) > NORMAL_SKEW:
+        lines.insert(
+            0,
+            f"The results at hand have a skewness of {figure(skewness)}: they do not look normal, "
+            "and this bound may claim too much. Take counting.",
+        )
+    if asked.population is not None:
+        lines.append("A list is taken as endless here; counting makes use of its end.")
+    return tuple(lines)
+
+
+def _picture(asked: Asked, table: UpperShare, n: int) -> Picture:
+    margin = _margin(asked)
+    low = normal_quantile(table.share)
+    span = max(margin - low, 0.2)
+    margins = [max(low - span / 2, 0.01) + 2 * span * k / 60 for k in range(61)]
+    mean, sigma = asked.question.mean or 0.0, asked.question.parts[0].sigma
+    means = [(asked.level or 0.0) - m * sigma for m in margins]
+    chances = [100 * _chance(n, m, table) for m in margins]
+    return Picture(
+        kind="lines",
+        caption="How often the bound comes out below the level, by the true mean.",
+        alternative=f"A line that falls from {chances[-1]:.0f} % at the lowest mean shown to "
+        f"{chances[0]:.0f} % at the highest.",
+        x_label=f"true mean, {asked.question.unit}" if asked.question.unit else "true mean",
+        y_label="chance that the bound comes out below, %",
+        series=(Series(f"{n} results", tuple(means), tuple(chances)),),
+        marks=(("expected mean", mean),),
+        levels=(("1 − confidence", 100 * (1 - table.confidence)),),
+    )
