@@ -208,6 +208,41 @@ def sign_test_power(share: float, n: int, *, alpha: float) -> float:
     return _binomial_from(sign_test_count(n, alpha=alpha), n, share)
 
 
+def sign_test_ratio(chance: float, *, n: int, alpha: float) -> float | None:
+    """Give the distance from the level at which the sign test makes the claim with this chance.
+
+    Parameters
+    ----------
+    chance : float
+        Inside (0, 1).
+    n : int
+        Results.
+    alpha : float
+        Largest chance of the claim when half of the population lies on either side.
+
+    Returns
+    -------
+    float or None
+        In standard deviations of single results, normal ones; None where so few results never
+        make the claim.
+
+    Examples
+    --------
+    >>> round(sign_test_ratio(0.8, n=20, alpha=0.05), 3)
+    0.837
+    """
+    if sign_test_count(n, alpha=alpha) > n:
+        return None
+    low, high = -8.0, 8.0
+    while high - low > 1e-12:
+        middle = (low + high) / 2
+        if sign_test_power(normal_share(middle), n, alpha=alpha) < chance:
+            low = middle
+        else:
+            high = middle
+    return high
+
+
 def sign_test_n(share: float, *, alpha: float, beta: float) -> int:
     """Count the results from which on the sign test keeps both chances, exactly.
 

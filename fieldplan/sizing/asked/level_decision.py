@@ -15,11 +15,12 @@ from fieldplan.stats.distributions import chi_square_quantile, normal_quantile, 
 from fieldplan.stats.many_decisions import risks_for_each
 from fieldplan.stats.power import one_sample_n, power_at, smallest_shift
 from fieldplan.stats.precision import smallest, whole
-from fieldplan.stats.rank_tests import sign_test_n, sign_test_power
+from fieldplan.stats.rank_tests import sign_test_n, sign_test_power, sign_test_ratio
 from fieldplan.stats.signed_rank import (
     SIGNED_RANK_SHARE,
     signed_rank_planned_n,
     signed_rank_power,
+    signed_rank_ratio,
 )
 
 
@@ -84,7 +85,7 @@ class LevelDecision:
             n, ratio = sum(counts), distance / self.sigma
             if self.table.test == "sign":
                 return sign_test_power(normal_share(ratio), n, alpha=alpha)
-            return signed_rank_power(ratio, 1.0, n=n, alpha=alpha)
+            return signed_rank_power(ratio, n=n, alpha=alpha)
         precision = Precision(self.asked.question)
         error = precision.standard_error(counts)
         if error == 0:
@@ -114,33 +115,15 @@ class LevelDecision:
                 return 0.0
             known = precision.degrees_of_freedom(counts)
             return error * smallest_shift(known, alpha=alpha, beta=1 - chance)
-        return self._reach_by_secant(counts, chance)
+        return self._reach_by_ranks(sum(counts), chance)
 
-    def _reach_by_secant(self, counts: Sequence[int], chance: float) -> float | None:
-        """Solve for the distance on the scale of normal quantiles, where power is near straight."""
-        if self.power(counts, 40 * self.sigma) < chance:
-            return None
-        wanted = normal_quantile(chance)
-
-        def short(distance: float) -> float:
-            power = self.power(counts, distance)
-            return normal_quantile(min(max(power, 1e-12), 1 - 1e-12)) - wanted
-
-        low, high = 0.0, self.sigma / math.sqrt(sum(counts))
-        below, above = short(low), short(high)
-        while above < 0:
-            low, below, high = high, above, 2 * high
-            above = short(high)
-        for _ in range(60):
-            middle = low - below * (high - low) / (above - below)
-            here = short(middle)
-            if abs(here) < 1e-9 or high - low < 1e-12 * high:
-                return middle
-            if here < 0:
-                low, below, above = middle, here, above / 2
-            else:
-                high, above, below = middle, here, below / 2
-        return middle
+    def _reach_by_ranks(self, n: int, chance: float) -> float | None:
+        alpha, _ = self.risks
+        if self.table.test == "signed-rank":
+            ratio = signed_rank_ratio(chance, n=n, alpha=alpha)
+        else:
+            ratio = sign_test_ratio(chance, n=n, alpha=alpha)
+        return None if ratio is None else ratio * self.sigma
 
     def chance_enough(self, counts: Sequence[int]) -> float | None:
         """Give the chance that these counts keep both chances, the pilot's sigma being uncertain.
@@ -154,7 +137,7 @@ class LevelDecision:
         pilot = precision.pilot_degrees_of_freedom(counts)
         if pilot is None:
             return None
-        reach = self._reach_for_chance(counts)
+        reach = self.enough_reach(counts)
         if reach is None:
             return 0.0
         if reach == 0:
@@ -162,12 +145,17 @@ class LevelDecision:
         predicted = (reach / self.width) ** 2 * precision.luck_of_allocation(counts)
         return chance_of_variance(predicted, 1.0, pilot)
 
-    def _reach_for_chance(self, counts: Sequence[int]) -> float | None:
-        """Give the distance shown with 1 − beta; for signed ranks that of the t test behind n."""
+    def enough_reach(self, counts: Sequence[int]) -> float | None:
+        """Give the distance shown with 1 − beta; for signed ranks that of the t test behind n.
+
+        None where so few results show nothing.
+        """
         _, beta = self.risks
         if self.table.test != "signed-rank":
             return self.reach(counts, 1 - beta)
         n = max(2, math.floor(sum(counts) * SIGNED_RANK_SHARE + 1e-9))
+        if self.reach(counts, 1 - beta) is None:
+            return None
         shift = smallest_shift(n - 1, alpha=self.risks[0], beta=beta)
         return self.sigma / math.sqrt(n) * shift
 

@@ -10,11 +10,16 @@ from fieldplan.stats.distributions import normal_quantile, normal_share, student
 from fieldplan.stats.power import expected_margin, guidance_n, mean_of_s, one_sample_n
 from fieldplan.stats.precision import whole
 from fieldplan.stats.rank_tests import OVERAGE, sign_formula_n, sign_planned_n, sign_test_count
-from fieldplan.stats.signed_rank import SIGNED_RANK_SHARE, signed_rank_count
+from fieldplan.stats.signed_rank import (
+    SIGNED_RANK_SHARE,
+    signed_rank_count,
+    signed_rank_planned_n,
+)
 
 QA_G9 = "EPA QA/G-9 2000, section 3.2.1 (from memory)"
 NONCENTRAL = "noncentral t: Johnson, Kotz & Balakrishnan 1995, ch. 31 (from memory)"
 MARSSIM = "NUREG-1575 2000, section 5.5.2 (from memory)"
+HAHN = "Hahn & Meeker 1991, Statistical Intervals, ch. 4 (from memory)"
 HODGES = "Hodges & Lehmann 1956, Ann. Math. Stat. 27:324 (from memory)"
 MANY = "Bonferroni; all or nothing: Berger 1982, Technometrics 24:295 (from memory)"
 SOURCES = {
@@ -42,9 +47,11 @@ def counting_steps(decision: LevelDecision, counts: Sequence[int]) -> Iterator[S
         else:
             yield _guidance(decision)
         if decision.table.test == "signed-rank":
-            yield _signed_rank(decision, counts)
+            yield _signed_rank(decision)
     if decision.table.test != "signed-rank":
-        yield _exact(decision, counts)
+        yield _exact(decision)
+    if tuple(counts) != decision.needed():
+        yield _assured(decision, counts)
 
 
 def buying_steps(decision: LevelDecision, counts: Sequence[int]) -> Iterator[Step]:
@@ -62,6 +69,9 @@ def buying_steps(decision: LevelDecision, counts: Sequence[int]) -> Iterator[Ste
         yield _eight_of_ten(decision, reach)
     if decision.table.test == "t" and margin_of(decision, counts) > 0:
         yield _margin(decision, counts)
+    chance = decision.chance_enough(counts)
+    if chance is not None and decision.enough_reach(counts):
+        yield _enough(decision, counts, chance)
 
 
 def margin_of(decision: LevelDecision, counts: Sequence[int]) -> float:
@@ -189,7 +199,50 @@ def _sign(decision: LevelDecision) -> Iterator[Step]:
     )
 
 
-def _signed_rank(decision: LevelDecision, counts: Sequence[int]) -> Step:
+def _assured(decision: LevelDecision, counts: Sequence[int]) -> Step:
+    """Show what the assurance adds, from how many results stand behind sigma."""
+    behind = [part.results or 0 for part in decision.asked.question.parts]
+    return Step(
+        symbol="n(assured)",
+        meaning="Results that keep both chances with the assurance chosen, sigma being an estimate",
+        formula="smallest n whose chance to be enough is at least the assurance",
+        inputs=(
+            Quantity("assurance", "chosen", float(decision.table.assurance)),
+            Quantity("n0", "results behind s, all strata", sum(behind), "results"),
+        ),
+        unrounded=float(sum(counts)),
+        rounded=float(sum(counts)),
+        unit="results",
+        source=HAHN,
+    )
+
+
+def _enough(decision: LevelDecision, counts: Sequence[int], chance: float) -> Step:
+    unit = decision.asked.question.unit
+    precision = Precision(decision.asked.question)
+    known = precision.pilot_degrees_of_freedom(counts) or 0.0
+    luck = precision.luck_of_allocation(counts)
+    inputs = [
+        Quantity("df", "degrees of freedom behind s", known),
+        Quantity(
+            "d", "distance shown with chance 1 − beta", decision.enough_reach(counts) or 0.0, unit
+        ),
+        _width(decision),
+    ]
+    if luck != 1:
+        inputs.append(Quantity("k", "luck of Neyman counts, factor on the variance", luck))
+    return Step(
+        symbol="chance",
+        meaning="Chance that these results are enough, sigma being an estimate",
+        formula="P(χ² ≥ df · (d / Δ)²" + (" · k)" if luck != 1 else ")"),
+        inputs=tuple(inputs),
+        unrounded=chance,
+        rounded=chance,
+        source=HAHN,
+    )
+
+
+def _signed_rank(decision: LevelDecision) -> Step:
     alpha, beta = decision.risks
     plain = one_sample_n(decision.width, decision.sigma, alpha=alpha, beta=beta)
     return Step(
@@ -201,25 +254,22 @@ def _signed_rank(decision: LevelDecision, counts: Sequence[int]) -> Step:
             Quantity("0.864", "least efficiency against t", SIGNED_RANK_SHARE),
         ),
         unrounded=plain / SIGNED_RANK_SHARE,
-        rounded=float(sum(counts)),
+        rounded=float(signed_rank_planned_n(plain)),
         unit="results",
         source=HODGES,
     )
 
 
-def _exact(decision: LevelDecision, counts: Sequence[int]) -> Step:
+def _exact(decision: LevelDecision) -> Step:
     _, beta = decision.risks
-    sure = decision.table.assurance
-    total = float(sum(counts))
+    total = float(sum(decision.needed()))
     words = {
         "t": "smallest n whose power at the gray edge is at least 1 − beta",
         "sign": "smallest n from which on the power at the gray edge is at least 1 − beta",
     }[decision.table.test]
-    if sure != "plain":
-        words += f", with a chance of {sure:g} given the results behind s"
     return Step(
         symbol="n",
-        meaning="Results needed, exact",
+        meaning="Results needed with sigma at face value, exact",
         formula=words,
         inputs=(Quantity("1 − beta", "chance to show the side at the gray edge", 1 - beta),),
         unrounded=total,

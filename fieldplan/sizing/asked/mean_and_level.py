@@ -15,8 +15,10 @@ from fieldplan.sizing.asked.level_steps import (
 from fieldplan.sizing.asked.model import Answered, Asked
 from fieldplan.sizing.model import Amount, Finding
 from fieldplan.sizing.words import counted, figure, percent, typed, typed_percent, with_unit
+from fieldplan.stats.intervals import IntervalKind
 from fieldplan.stats.many_decisions import chance_of_any
 from fieldplan.stats.precision import whole
+from fieldplan.stats.shape import skewness_of_mean, t_coverage
 
 TOPIC, TITLE = "mean-and-level", "The mean and the level"
 SHOWN = (0.5, 0.8, 0.95)
@@ -232,8 +234,8 @@ def _number(text: str) -> float:
 def _warnings(
     decision: LevelDecision, counts: tuple[int, ...], plain: tuple[int, ...] | None
 ) -> list[str]:
-    found = [_sure(decision, counts, plain), _other_mean(decision), _many(decision)]
-    found.append(_other_limit(decision))
+    found = [_sure(decision, counts, plain), _skewed(decision, counts), _other_mean(decision)]
+    found += [_many(decision), _other_limit(decision)]
     return [line for line in found if line]
 
 
@@ -270,6 +272,28 @@ def _behind(decision: LevelDecision) -> str:
     return f"{behind} results" + (" a stratum" if len(decision.asked.question.parts) > 1 else "")
 
 
+def _skewed(decision: LevelDecision, counts: Sequence[int]) -> str:
+    """Say how often a mean at the level is claimed off it, where the skewness is known."""
+    parts = decision.asked.question.parts
+    skewnesses = [part.skewness for part in parts if part.skewness is not None]
+    alpha, _ = decision.risks
+    if decision.table.test != "t" or len(skewnesses) < len(parts) or not 0.01 <= alpha <= 0.5:
+        return ""
+    n = sum(counts)
+    strata = decision.asked.question.strata
+    of_mean = skewness_of_mean(strata.weights, strata.sigmas, skewnesses, counts=counts)
+    skewness = of_mean * math.sqrt(n)
+    kind: IntervalKind = "upper-limit" if decision.side == "below" else "lower-limit"
+    wrong = 1 - t_coverage(n, skewness, confidence=1 - alpha, kind=kind)
+    if wrong < alpha + 0.005:
+        return ""
+    return (
+        f"With a skewness of {figure(skewness, 2)}, as behind sigma, a mean at the level would "
+        f"come out {decision.side} it in about {percent(wrong)} of campaigns and not in "
+        f"{percent(alpha)}."
+    )
+
+
 def _other_mean(decision: LevelDecision) -> str:
     if decision.table.test == "sign":
         return (
@@ -299,8 +323,13 @@ def _many(decision: LevelDecision) -> str:
     return (
         f"{table.decisions} decisions at {typed_percent(table.alpha)} each would go wrong "
         f"somewhere with a chance of {percent(alone)} if independent and at most {percent(most)}; "
-        f"here each takes alpha {figure(alpha)} and beta {figure(beta)}, so that all together keep theirs."
+        f"here each takes alpha {figure(alpha)} and beta {figure(beta)}, so that all together keep "
+        "theirs."
     )
+
+
+def _rounded(chance: float) -> float:
+    return float(f"{chance:.3g}")
 
 
 def _other_limit(decision: LevelDecision) -> str:
@@ -322,9 +351,9 @@ def _other_limit(decision: LevelDecision) -> str:
     if math.isclose(tail, alpha, rel_tol=1e-6):
         return ""
     return (
-        f"The test at alpha {figure(alpha)} sets a {typed_percent(round(1 - alpha, 10))} "
+        f"The test at alpha {_rounded(alpha)} sets a {typed_percent(1 - _rounded(alpha))} "
         f"{_limit_name(decision)} limit against the level, and [rules] fixes another "
         f"({typed_percent(question.confidence)} {question.interval.replace('-', ' ')}). Write "
-        f'interval = "{kind}" and confidence = {typed(round(1 - alpha, 10))} there, or expect '
+        f'interval = "{kind}" and confidence = {typed(1 - _rounded(alpha))} there, or expect '
         "other chances."
     )

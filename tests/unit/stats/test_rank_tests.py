@@ -21,6 +21,7 @@ from fieldplan.stats.rank_tests import (
     sign_test_count,
     sign_test_n,
     sign_test_power,
+    sign_test_ratio,
 )
 from tests.unit.stats.published import row
 
@@ -82,12 +83,12 @@ def test_sign_test_equals_scipys_binomial(n: int, alpha: float, share: float) ->
     assert sign_test_power(share, n, alpha=alpha) == pytest.approx(expected, abs=1e-9)
 
 
-@settings(deadline=None, max_examples=40)
+@settings(deadline=None, max_examples=20)
 @given(st.floats(0.58, 0.99), st.floats(0.01, 0.3), st.floats(0.02, 0.5))
 def test_sign_test_number_holds_from_there_on(share: float, alpha: float, beta: float) -> None:
     """Brute force by scipy: no larger n falls below the power, the n just below does."""
     n = sign_test_n(share, alpha=alpha, beta=beta)
-    for tried in [n - 1, *range(n, n + 250)]:
+    for tried in [n - 1, *range(n, n + 90)]:
         if tried < 1:
             continue
         counts = np.arange(tried + 2)
@@ -128,3 +129,14 @@ def test_a_coin_decides_nothing() -> None:
     with pytest.raises(DesignError, match=r"above 0\.5"):
         rank_sum_formula_n(0.4, alpha=0.05, beta=0.2)
     assert sign_test_power(0.9, 3, alpha=0.05) == 0.0
+
+
+@pytest.mark.parametrize("n", [5, 21, 200])
+@pytest.mark.parametrize("chance", [0.02, 0.3, 0.8, 0.99])
+def test_distance_undoes_the_power_of_the_sign_test(n: int, chance: float) -> None:
+    """Inverse and forward must agree."""
+    ratio = sign_test_ratio(chance, n=n, alpha=0.05)
+    assert ratio is not None
+    share = float(stats.norm.cdf(ratio))
+    assert sign_test_power(share, n, alpha=0.05) == pytest.approx(chance, abs=1e-9)
+    assert sign_test_ratio(chance, n=4, alpha=0.05) is None

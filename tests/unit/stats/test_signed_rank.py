@@ -12,6 +12,7 @@ from fieldplan.stats.signed_rank import (
     signed_rank_count,
     signed_rank_planned_n,
     signed_rank_power,
+    signed_rank_ratio,
 )
 from tests.unit.stats.published import row
 
@@ -46,23 +47,24 @@ def test_signed_rank_count_equals_all_signs_tried(n: int, alpha: float) -> None:
     assert signed_rank_count(n, alpha=alpha) == smallest
 
 
-@pytest.mark.parametrize(("n", "ratio"), [(6, 1.0), (10, 0.6), (10, -0.2), (21, 0.7), (36, 0.5)])
+@pytest.mark.parametrize(("n", "ratio"), [(6, 1.0), (10, 0.6), (10, -0.2), (21, 0.7), (25, 0.5)])
 def test_signed_rank_power_equals_a_simulation(n: int, ratio: float) -> None:
     """Rank 20,000 drawn campaigns: within four standard errors and the error of the cells."""
     drawn = np.random.default_rng(41).normal(ratio, 1.0, (20_000, n))
     ranks = stats.rankdata(abs(drawn), axis=1)
     sums = (ranks * (drawn > 0)).sum(axis=1)
     share = float(np.mean(sums >= signed_rank_count(n, alpha=0.05)))
-    power = signed_rank_power(ratio, 1.0, n=n, alpha=0.05)
+    power = signed_rank_power(ratio, n=n, alpha=0.05)
     assert abs(share - power) < 4 * math.sqrt(power * (1 - power) / len(drawn)) + 5e-4
 
 
-def test_signed_rank_power_of_many_results_is_near_a_simulation() -> None:
-    """Above 40 results the normal curve is used: it is stated to be within 0.02."""
-    drawn = np.random.default_rng(42).normal(0.3, 1.0, (10_000, 64))
+@pytest.mark.parametrize(("n", "ratio"), [(31, 0.3), (31, 0.6), (64, 0.3)])
+def test_signed_rank_power_of_many_results_is_near_a_simulation(n: int, ratio: float) -> None:
+    """Above 30 results the normal curve is used: it is stated to be within 0.02."""
+    drawn = np.random.default_rng(42).normal(ratio, 1.0, (10_000, n))
     sums = (stats.rankdata(abs(drawn), axis=1) * (drawn > 0)).sum(axis=1)
-    share = float(np.mean(sums >= signed_rank_count(64, alpha=0.05)))
-    power = signed_rank_power(0.3, 1.0, n=64, alpha=0.05)
+    share = float(np.mean(sums >= signed_rank_count(n, alpha=0.05)))
+    power = signed_rank_power(ratio, n=n, alpha=0.05)
     assert abs(share - power) < 0.02 + 4 * math.sqrt(power * (1 - power) / len(drawn))
 
 
@@ -85,5 +87,15 @@ def test_enlarged_number_serves_symmetric_shapes(shape: str) -> None:
 
 def test_four_results_never_reach_a_twentieth() -> None:
     """By hand: the largest sum of ranks has chance 1/16 at the level, above 0.05."""
-    assert signed_rank_power(1.0, 1.0, n=4, alpha=0.05) == 0.0
+    assert signed_rank_power(1.0, n=4, alpha=0.05) == 0.0
     assert signed_rank_count(4, alpha=0.07) == 10
+
+
+@pytest.mark.parametrize("n", [5, 9, 21, 50, 200])
+@pytest.mark.parametrize("chance", [0.02, 0.3, 0.8, 0.99])
+def test_distance_undoes_power(n: int, chance: float) -> None:
+    """Inverse and forward must agree, to what interpolation promises."""
+    ratio = signed_rank_ratio(chance, n=n, alpha=0.05)
+    assert ratio is not None
+    assert signed_rank_power(ratio, n=n, alpha=0.05) == pytest.approx(chance, abs=5e-4)
+    assert signed_rank_ratio(chance, n=4, alpha=0.05) is None
