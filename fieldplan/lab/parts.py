@@ -137,10 +137,22 @@ class Parts:
             return found
         own = {part.part for part in found}
         rest = [part for part in self.pilot.smaller if part.part not in own]
-        # What the pilot cannot tell apart is of no use once one of the two is known.
-        rest = [part for part in rest if part.part != TOGETHER or not own]
+        rest = [_without(part, found) if part.part == TOGETHER and found else part for part in rest]
         order = (SAMPLING, TOGETHER, ANALYSIS)
         return tuple(sorted((*found, *rest), key=lambda part: order.index(part.part)))
+
+
+def _without(together: PartSpread, known: Sequence[PartSpread]) -> PartSpread:
+    """Take the part that is known by itself out of what field duplicates show together."""
+    (one,) = known
+    left = together.sigma**2 - one.sigma**2
+    return PartSpread(
+        part=SAMPLING if one.part == ANALYSIS else ANALYSIS,
+        sigma=math.sqrt(max(left, 0.0)),
+        source=f"{together.source}, less {one.part} ({one.source})",
+        degrees_of_freedom=together.degrees_of_freedom,
+        cut_at_zero=left < 0,
+    )
 
 
 def gather_parts(tables: Sequence[LabTable | None], sigmas: Sequence[Sigma], analyte: str) -> Parts:

@@ -18,6 +18,9 @@ QUICK: tuple[str, ...] = (
     "two-phase",
     "being-wrong",
     "patch",
+    "composites",
+    "parts",
+    "ranked-sets",
     "near-normal",
     "non-detects",
 )
