@@ -9,7 +9,9 @@ from fieldplan.campaign.money_checks import PER_PLACE, money_problems
 from fieldplan.campaign.problems import Problem, accepted, meaning, near_miss, shown
 from fieldplan.campaign.question_checks import needs_sigma, question_problems
 from fieldplan.campaign.screen import is_fill_in
+from fieldplan.campaign.strata_checks import strata_problems
 from fieldplan.campaign.table import tables
+from fieldplan.campaign.visit_checks import visit_problems
 
 TARGETS = ("standard_error", "half_width", "relative_half_width", "budget")
 """The forms that a target may take; an objective has exactly one."""
@@ -175,12 +177,12 @@ def _objectives(data: Data) -> Iterator[Problem]:
             )
             yield Problem(("objective", i, "relative_half_width"), text)
     marked = [i for i, objective in enumerate(objectives) if objective.get("decides_n") is True]
-    if len(objectives) > 1 and len(marked) != 1:
+    if len(objectives) > 1 and not marked:
         text = (
-            f"with several [[objective]] exactly one has decides_n = true (got {len(marked)}). "
-            "Mark the one that decides n."
+            "with several [[objective]] at least one has decides_n = true (got none). "
+            "Mark the one that decides n, or all that do so together."
         )
-        yield Problem(("objective", marked[1] if marked else 0, "decides_n"), text)
+        yield Problem(("objective", 0, "decides_n"), text)
 
 
 def _assurance(objective: Data, i: int) -> Iterator[Problem]:
@@ -259,12 +261,16 @@ def _without_strata(data: Data, path: tuple[str | int, ...], given: bool) -> Ite
 
 
 def _deciding(data: Data) -> Iterator[Problem]:
-    """Ask a sigma for the objective that decides n, and one that its assurance can use."""
+    """Ask a sigma for the objectives that decide n, and one that their assurance can use."""
     objectives = tables(data, "objective")
     marked = [i for i, objective in enumerate(objectives) if objective.get("decides_n") is True]
-    if not objectives or (len(objectives) > 1 and len(marked) != 1):
-        return
-    i = marked[0] if marked else 0
+    if len(objectives) == 1 and not marked:
+        marked = [0]
+    for i in marked:
+        yield from _sigma_that_decides(data, objectives, i)
+
+
+def _sigma_that_decides(data: Data, objectives: list[Data], i: int) -> Iterator[Problem]:
     analyte = objectives[i].get("analyte")
     entries = _sigma_of(data, analyte)
     ids = [known.get("id") for known in tables(data, "analyte")]
@@ -337,6 +343,8 @@ _RULES: tuple[Callable[[Data], Iterator[Problem]], ...] = (
     _designs,
     _objectives,
     _sigmas,
+    visit_problems,
+    strata_problems,
     composite_problems,
     _deciding,
     _qc,

@@ -68,7 +68,10 @@ MEANING: dict[str, str] = {
     "design.frame": "the frame that it samples; may be left out where there is one",
     "design.layout": "how locations are drawn",
     "design.allocation": "how locations are shared between strata",
+    "design.equal_in": "what equal-precision makes the same in every stratum's own mean",
     "design.floor": "the fewest locations of a stratum; a variance needs 2",
+    "design.least": "the fewest results by stratum, where more than the floor",
+    "design.most": "the most locations that can be visited, by stratum",
     "design.alternates": "places in reserve per stratum, drawn at the same time",
     "design.minimum_spacing_m": "metres that two locations keep apart at least",
     "design.exact_count": "whether a grid is drawn again until it has the planned count",
@@ -99,7 +102,9 @@ MEANING: dict[str, str] = {
         "how sure it shall be that n is enough, though sigma is an estimate; not beside a budget"
     ),
     "objective.assurance_chosen_by": "who chose the assurance; printed beside it",
-    "objective.decides_n": "whether this objective decides n; needed on one of several",
+    "objective.decides_n": (
+        "whether this objective decides n; on several, n keeps all of their targets"
+    ),
     "objective.mean_from": "the true mean lies above this with a chance of 95 %, as believed",
     "objective.mean_to": "the true mean lies below this with a chance of 95 %, as believed",
     "objective.first_stage": (
@@ -125,6 +130,14 @@ MEANING: dict[str, str] = {
         "excess kurtosis of single results, where heavy tails are declared; 6 for an exponential "
         "shape"
     ),
+    "sigma.correlation_between_visits": (
+        "correlation of neighbouring visits to one place, as a longer series shows it; a mean is "
+        "then sized by what such visits are worth"
+    ),
+    "sigma.correlation_days": (
+        "days between the visits that the correlation belongs to, where planned ones differ"
+    ),
+    "sigma.visit_spacing_days": "days between the visits that are planned",
     # [[field_reading]]
     **{f"field_reading.{key}".rstrip("."): words for key, words in field_reading.MEANING.items()},
     # [cost]
@@ -136,6 +149,8 @@ MEANING: dict[str, str] = {
     "cost.per_analysis": "money for each sample analysed",
     "cost.per_increment": "money for each increment of a composite, the walk to it included",
     "cost.per_ranking": "money for looking at one place to rank it",
+    "cost.per_location_by_stratum": "money for a location by stratum, where it is not per_location",
+    "cost.per_analysis_by_stratum": "money for an analysis by stratum, where it is not per_analysis",
     "cost.per_crew_day": "money for each day of a crew in the field; a day begun counts whole",
     "cost.locations_per_day": "locations that a crew visits in a day",
     "cost.wrongly_acted": "money lost by acting although the true mean is not above the level",

@@ -230,8 +230,8 @@ BROKEN = [
     (
         [("[draw]", '[[objective]]\nquestion = "mean"\nhalf_width = 9\nassurance = "plain"\n'
           "[draw]")],
-        "18: objective[1].decides_n: with several [[objective]] exactly one has decides_n = true "
-        "(got 0). Mark the one that decides n.",
+        "18: objective[1].decides_n: with several [[objective]] at least one has decides_n = true "
+        "(got none). Mark the one that decides n, or all that do so together.",
     ),
     (
         [("[[frame]]", '[[analyte]]\nid = "zinc"\nunit = "mg/kg"\n[[frame]]'),
