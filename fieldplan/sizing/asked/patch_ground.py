@@ -125,6 +125,13 @@ class PatchQuestion:
         return self.error_m > DOUBTFUL_SHARE * self.patch.width
 
     @property
+    def out_of_reach(self) -> bool:
+        """Endless ground counts no more than the share of a grid that is kept."""
+        most = 1 - max(self.losses)
+        endless_grid = self.lattice is not None and self.asked.frame is None
+        return endless_grid and self.table.probability >= most
+
+    @property
     def least_scale(self) -> float:
         """Smallest patch of this shape, as a share of the one asked about, with a chance."""
         return self.error_m / (DOUBTFUL_SHARE * self.patch.width)

@@ -2,7 +2,7 @@
 
 from fieldplan.design.patch_chance import PatchChance
 from fieldplan.sizing.asked.patch_ground import DOUBTFUL_SHARE, PatchQuestion
-from fieldplan.sizing.words import figure, percent, typed
+from fieldplan.sizing.words import figure, percent, typed, typed_percent
 
 SOURCES = (
     "Singer & Wickman 1969, Mineral Industries Experiment Station, special publication 1-69 (from "
@@ -56,6 +56,24 @@ def refusal(question: PatchQuestion) -> str:
         f"is {typed(error)}: that is more than a quarter of its width. Find the places with a "
         f"receiver good to {typed(DOUBTFUL_SHARE * width)} m, or by tape from control points, or "
         "ask about a larger patch."
+    )
+
+
+def too_many_lost(question: PatchQuestion) -> str:
+    """Say why losses keep a grid on endless ground below the probability."""
+    lost = typed_percent(max(question.losses))
+    return (
+        f"With {lost} of the grid's locations lost, bare numbers count no more than the share that "
+        f"is left, and a probability of {typed(question.table.probability)} is out of reach; name "
+        "a campaign file with its boundary, which counts patches that several locations hit."
+    )
+
+
+def beyond(question: PatchQuestion, most: int) -> str:
+    """Say that no number of locations is given."""
+    return (
+        f"{asked_for(question)} for {patch_words(question)} takes more than {most} locations; give "
+        "a larger patch or a lower probability."
     )
 
 

@@ -11,12 +11,14 @@ from fieldplan.sizing.asked.patch_ground import LATTICES, PatchQuestion, patch_q
 from fieldplan.sizing.asked.patch_words import (
     SOURCES,
     asked_for,
+    beyond,
     assumptions,
     ground_words,
     off_words,
     patch_words,
     place_words,
     refusal,
+    too_many_lost,
     warnings,
 )
 from fieldplan.sizing.model import Amount, Finding, Picture, Series
@@ -47,6 +49,8 @@ def count(asked: Asked) -> Answered:
     question = patch_question(asked)
     if question.doubtful:
         raise DesignError(refusal(question))
+    if question.out_of_reach:
+        raise DesignError(too_many_lost(question))
     endless = question.endless_count(question.design.layout)
     total = _fewest(question, math.ceil(endless - 1e-9))
     needed = asked.shared(total)
@@ -111,7 +115,10 @@ def _fewest(question: PatchQuestion, start: int) -> int:
         return meets(question.table.probability, found.chance)
 
     if question.lattice is None or asked.frame is None:
-        return smallest(fits, least, MOST)
+        total = smallest(fits, least, MOST)
+        if total == MOST and not fits(total):
+            raise DesignError(beyond(question, MOST))
+        return total
     total = max(start, least)
     for _ in range(2):
         counts = question.laid(asked.shared(total))
@@ -182,7 +189,7 @@ def _amounts(
     factor: float,
     spacing: float | None,
 ) -> tuple[Amount, ...]:
-    patch = question.patch.scaled(factor)
+    patch = question.patch.scaled(factor) if math.isfinite(factor) else None
     share = typed_percent(question.table.probability)
     found = [Amount("chance_of_hitting", "Chance of hitting the patch", kept.chance)]
     if question.error_m:
@@ -194,8 +201,8 @@ def _amounts(
         words = f"Standard error of that chance, from {kept.starts} starts of the grid"
         found.append(Amount("standard_error_of_chance", words, kept.standard_error))
     words = f"Length of the smallest patch of this shape found with {share}"
-    found.append(Amount("smallest_length_m", words, patch.length, "m"))
-    if patch.length > patch.width:
+    found.append(Amount("smallest_length_m", words, patch.length if patch else None, "m"))
+    if patch and patch.length > patch.width:
         found.append(Amount("smallest_width_m", "Its width", patch.width, "m"))
     if spacing is not None:
         found.append(Amount("spacing_m", "Spacing of the grid", spacing, "m"))
