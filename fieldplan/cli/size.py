@@ -151,6 +151,8 @@ def as_mapping(answer: "Size") -> dict[str, Any]:
         "n": answer.needed,
         "number_from": answer.number_from,
         "locations": answer.planned,
+        "increments": answer.increments,
+        "replicates": answer.replicates,
         "target": answer.target,
         "chance_enough": _three(answer.chance_needed),
         "n_by_assurance": {_share(entry.assurance): entry.n for entry in answer.assured},

@@ -141,10 +141,11 @@ def _cost(question: Question, counts: Counts) -> Iterator[Step]:
         places = "(locations + targeted)"
         aimed = (Quantity("targeted", "places chosen by judgement", question.targeted, "places"),)
     jar, jars, more, days = _jars_and_days(prices, visits + question.targeted)
+    beyond, extra = _beyond_common_prices(question, counts)
     yield Step(
         symbol="cost",
         meaning="Cost of the round",
-        formula=f"cost = mobilisation + {places} · (visit + {jar}) + controls · {jars}{days}",
+        formula=f"cost = mobilisation + {places} · (visit + {jar}) + controls · {jars}{days}{beyond}",
         inputs=(
             Quantity("mobilisation", "once", prices.mobilisation, prices.currency),
             Quantity("locations", "locations to visit", visits, "locations"),
@@ -153,12 +154,24 @@ def _cost(question: Question, counts: Counts) -> Iterator[Step]:
             Quantity("analysis", "per analysed sample", prices.per_analysis, prices.currency),
             Quantity("controls", "control samples", controls, "samples"),
             *more,
+            *extra,
         ),
         unrounded=cost,
         rounded=cost,
         unit=prices.currency,
         source="prices typed in the campaign file",
     )
+
+
+def _beyond_common_prices(question: Question, counts: Counts) -> tuple[str, tuple[Quantity, ...]]:
+    """Give what increments, and strata dearer than others, add to the formula of the cost."""
+    pairs = zip(question.parts, counts.planned, strict=True)
+    total = math.fsum(part.extra_cost * planned for part, planned in pairs)
+    if not total:
+        return "", ()
+    what = "increments" if question.increments > 1 else "strata with prices of their own"
+    currency = question.prices.currency if question.prices else ""
+    return " + extra", (Quantity("extra", f"{what}, in all", total, currency),)
 
 
 def _jars_and_days(prices: Prices, visits: int) -> tuple[str, str, tuple[Quantity, ...], str]:

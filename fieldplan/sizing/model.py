@@ -244,7 +244,7 @@ class Size:
         Results needed at the chosen assurance, or expected from typed or paid locations after
         losses; equals the sum over strata.
     planned : int
-        Locations to visit, loss allowance in.
+        Locations to visit, loss allowance in; composites to take where ``increments`` is above 1.
     standard_error, half_width : float or None
         Expected at ``needed`` with the sigma used; None where no sigma is known.
     confidence : float
