@@ -38,9 +38,11 @@ def asked_of_numbers(typed: Mapping[str, Any]) -> "Asked":
     from dataclasses import replace
 
     from fieldplan.campaign.questions import WITHOUT_SIGMA
+    from fieldplan.lab.visits import with_visits
     from fieldplan.sizing.asked.model import Asked
     from fieldplan.sizing.asking import NO_TARGET
     from fieldplan.sizing.campaign_question import ask
+    from fieldplan.sizing.visits import ABOUT_MEANS, as_visits
 
     numbers = BareNumbers(**typed)
     numbers.check_question()
@@ -63,7 +65,9 @@ def asked_of_numbers(typed: Mapping[str, Any]) -> "Asked":
         question = replace(question, assurance=None, analyte="", unit=numbers.unit or "")
     spread = None
     if known:
-        spread = with_splits(campaign, _spread(numbers, parts))
+        spread = with_splits(campaign, with_visits(campaign, _spread(numbers, parts)))
+        if numbers.question in ABOUT_MEANS:
+            question = replace(question, parts=as_visits(question.parts, spread.strata))
         question, campaign, spread = composites_of_numbers(question, campaign, spread)
     return Asked(campaign, objective, question, None, spread, numbers.area, sigma_known=known)
 

@@ -15,7 +15,7 @@ if TYPE_CHECKING:
 LAB_COLUMNS = (
     "location_id", "sample_id", "analyte", "as_reported", "unit", "reporting_limit",
     "reporting_limit_unit", "qualifier_lab", "role", "duplicate_of", "stratum", "latitude",
-    "longitude", "basis", "fraction",
+    "longitude", "basis", "fraction", "collected_on",
 )  # fmt: skip
 OFTEN_CALLED = {
     "location_id": ("location", "station", "station_id", "site", "site_id", "point", "well"),

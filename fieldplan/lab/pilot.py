@@ -239,12 +239,7 @@ def measured_spread(
         )
         raise LabError(message)
     if refuse and sigmas[largest] <= 1e-12 * max(map(abs, ends[largest])):
-        message = (
-            f"{files}: all {len(locations)} results in stratum '{stratum}' are "
-            f"{significant(ends[largest][0])}; a spread of 0 cannot size a campaign. "
-            f"{_REMEDY.format(stratum)}"
-        )
-        raise LabError(message)
+        raise _all_the_same(files, stratum, ends[largest])
     return StratumSpread(
         analyte=analyte,
         stratum=stratum,
@@ -261,6 +256,14 @@ def measured_spread(
         skewness_ceiling=skewness_ceiling(len(locations)),
         positions=tuple(_position(place) for place in locations),
         days=tuple(place.collected_on for place in locations),
+    )
+
+
+def _all_the_same(files: str, stratum: str, values: Sequence[float]) -> LabError:
+    return LabError(
+        f"{files}: all {len(values)} results in stratum '{stratum}' are "
+        f"{significant(values[0])}; a spread of 0 cannot size a campaign. "
+        f"{_REMEDY.format(stratum)}"
     )
 
 

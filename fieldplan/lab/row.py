@@ -1,9 +1,11 @@
 """One row of a laboratory file: every cell checked, every fault of the row said at once."""
 
 import math
+import re
 from collections.abc import Callable, Mapping
 from contextlib import suppress
 from dataclasses import dataclass, field
+from datetime import date
 from decimal import Decimal
 from typing import NoReturn, TypeVar
 
@@ -56,6 +58,7 @@ class RowCells:
             f"{self.table.file_name} row {self.number}: {column}: {fault.sentence}."
             for column, index in self.found.items()
             if (fault := self.table.faults.get((self.number, index)))
+            and not (column == "collected_on" and fault.kind == "date")
         ]
 
 
@@ -156,6 +159,7 @@ def _checked(row: RowCells, analyte: Analyte, memory: FileMemory, decimal_comma:
     comma = decimal_comma
     latitude = tried.call(lambda: read_degrees(row, "latitude", 90, decimal_comma=comma), None)
     longitude = tried.call(lambda: read_degrees(row, "longitude", 180, decimal_comma=comma), None)
+    collected_on = tried.call(lambda: read_day(row), None)
     if tried.problems:
         raise LabError(*tried.problems)
     parent = row.tidy("duplicate_of")
@@ -175,6 +179,7 @@ def _checked(row: RowCells, analyte: Analyte, memory: FileMemory, decimal_comma:
         latitude=latitude,
         longitude=longitude,
         qualifier_lab=row.tidy("qualifier_lab") or value.letters,
+        collected_on=collected_on,
     )
 
 
@@ -345,3 +350,32 @@ def read_degrees(row: RowCells, column: str, largest: int, *, decimal_comma: boo
     if not abs(value) <= largest:
         row.refuse(column, f"must be decimal degrees from -{largest} to {largest}, such as 52.1.")
     return value
+
+
+def read_day(row: RowCells) -> date | None:
+    """Read the day of collection; None for a blank. A time of day after it is not looked at.
+
+    Parameters
+    ----------
+    row : RowCells
+
+    Returns
+    -------
+    date or None
+
+    Raises
+    ------
+    LabError
+        Not year, month and day: other orders can be read in two ways.
+    """
+    written = row.tidy("collected_on")
+    if not written:
+        return None
+    day = re.match(r"(\d{4}-\d{2}-\d{2})(?![0-9])", written, re.ASCII)
+    try:
+        return date.fromisoformat(day[1]) if day else row.refuse("collected_on", _AS_A_DAY)
+    except ValueError:
+        return row.refuse("collected_on", _AS_A_DAY)
+
+
+_AS_A_DAY = "must be year, month and day with hyphens, such as 2026-05-04."

@@ -8,6 +8,7 @@ from fieldplan.campaign.questions import WITHOUT_SIGMA
 from fieldplan.lab.model import StratumSpread
 from fieldplan.sizing.asked.model import Asked, entries_of
 from fieldplan.sizing.campaign_question import ask, expected_mean, parts_of, question_of
+from fieldplan.sizing.visits import ABOUT_MEANS
 
 if TYPE_CHECKING:
     from fieldplan.campaign.model import Campaign
@@ -62,7 +63,7 @@ def asked_of(
         entries = entries if known else _no_sigma(analyte, frame)
         site = spread.site if analyte == spread.analyte else None
         mean = expected_mean(entries, frame, site=site)
-        parts = parts_of(campaign, frame, entries)
+        parts = parts_of(campaign, frame, entries, of_mean=objective.question in ABOUT_MEANS)
         question = ask(campaign, asked, parts=parts, mean=mean, targeted=len(frame.targeted))
         question = replace(question, assurance=None)
     return Asked(

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 from fieldplan.base.errors import CampaignError, DesignError
 from fieldplan.sizing.money import Prices
 from fieldplan.sizing.question import ControlRate, Part, Question, TargetKind
+from fieldplan.sizing.visits import as_visits
 from fieldplan.sizing.words import typed
 
 if TYPE_CHECKING:
@@ -200,7 +201,11 @@ def expected_mean(
 
 
 def parts_of(
-    campaign: "Campaign", frame: "Frame", spread: Sequence["StratumSpread"]
+    campaign: "Campaign",
+    frame: "Frame",
+    spread: Sequence["StratumSpread"],
+    *,
+    of_mean: bool = True,
 ) -> tuple[Part, ...]:
     """Give every stratum of the frame its weight, sigma and expected loss.
 
@@ -210,6 +215,8 @@ def parts_of(
     frame : Frame
     spread : sequence of StratumSpread
         Of one analyte.
+    of_mean : bool
+        A mean is asked for, so that visits which resemble each other count for less.
 
     Raises
     ------
@@ -227,7 +234,7 @@ def parts_of(
         )
         raise DesignError(message)
     losses = _losses(campaign, list(entries))
-    return tuple(
+    parts = tuple(
         Part(
             name=stratum.name,
             weight=stratum.weight,
@@ -245,6 +252,7 @@ def parts_of(
         )
         for stratum in frame.strata
     )
+    return as_visits(parts, spread) if of_mean else parts
 
 
 def _losses(campaign: "Campaign", names: list[str]) -> Mapping[str, float]:
