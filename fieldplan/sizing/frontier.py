@@ -1,16 +1,15 @@
 """Designs priced side by side: which of them no other beats in both precision and money."""
 
 import math
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 
 from fieldplan.base.errors import DesignError
-from fieldplan.sizing.counting import assured_counts, plain_counts
+from fieldplan.sizing.counting import assured_counts
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question, TargetKind
 from fieldplan.stats.intervals import IntervalKind, t_quantile
 from fieldplan.stats.precision import meets
-
 
 REACH = 1.8
 """Designs are traced from a precision so many times wider than wanted to as much narrower."""
@@ -117,10 +116,19 @@ def wanted_of(question: Question, needed: tuple[int, ...]) -> Wanted:
         value = reached(needed)
     else:
         value = question.target_half_width or question.value
-        assured = assured_counts(question, question.assurance)
-        if assured is not None and sum(assured) > sum(plain_counts(question)):
+        assured = _assured(question, needed)
+        if assured is not None:
             value = min(value, reached(assured))
     return Wanted(measure, value, question.confidence, question.interval)
+
+
+def _assured(question: Question, needed: tuple[int, ...]) -> Sequence[int] | None:
+    """Give the counts that hold to the chosen assurance; None where there is none to hold to."""
+    if question.assurance is None:
+        return None
+    if question.pilots is None and question.target_half_width is None:
+        return None
+    return needed if question.locations is None else assured_counts(question, question.assurance)
 
 
 def efficient(designs: Iterable[PricedDesign]) -> tuple[PricedDesign, ...]:
@@ -177,9 +185,9 @@ def most_precise(designs: Iterable[PricedDesign], budget: float) -> PricedDesign
 
 
 def levels(wanted: Wanted, *, points: int, reach: float = REACH) -> list[Wanted]:
-    """Give precisions from ``reach`` times wider to as much narrower, in equal steps of ratio."""
-    if points < 2:
-        message = f"{points} points trace no frontier; ask for 2 or more."
+    """Give precisions from ``reach`` times wider to as much narrower and a step beyond."""
+    if points < 3:
+        message = f"{points} points trace no frontier; ask for 3 or more."
         raise DesignError(message)
-    step = 2 * math.log(reach) / (points - 1)
+    step = 2 * math.log(reach) / (points - 2)
     return [wanted.times(reach * math.exp(-step * k)) for k in range(points)]

@@ -58,6 +58,10 @@ def _drawn(picture: Picture, width: float) -> "Canvas":
         from fieldplan.packet.charts.mean_band import mean_band_drawing
 
         return mean_band_drawing(picture, width)
+    if picture.kind == "frontier":
+        from fieldplan.packet.charts.frontier import frontier_drawing
+
+        return frontier_drawing(picture, width)
     return _drawing(picture, width)
 
 

@@ -174,9 +174,6 @@ def _weighed(stakes: _Stakes, size: Size) -> Finding:
         rows=_rows(stakes, bills),
         steps=_steps(stakes, wrong, size.needed),
         assumptions=_assumptions(stakes),
-        warnings=(
-            "The number of this plan stays what its target asks for; nothing here changes it.",
-        ),
         sources=(SOURCE,),
         picture=_picture(stakes, bills, best=best, needed=size.needed),
     )
@@ -201,17 +198,15 @@ def _answer(stakes: _Stakes, size: Size, best: int, bills: dict[int, tuple[float
     if best == size.needed:
         line += "; no other number costs less in all."
     else:
-        line += f"; the two together are least at {best} results ({stakes.money(together)})."
+        line += (
+            f"; the two together would be least at {best} results ({stakes.money(together)}), "
+            "which the plan does not follow."
+        )
     if stakes.belief.spread == 0:
         return line
     act, bare = stakes.without()
     decided = "acting" if act else "leaving the site alone"
-    if bare < together:
-        return (
-            f"{line} {decided[0].upper()}{decided[1:]} now, without any sample, would lose less: "
-            f"{stakes.money(bare)} on average."
-        )
-    return f"{line} Without any sample, {decided} would lose {stakes.money(bare)}."
+    return f"{line} Without any sample, {decided} would lose {stakes.money(bare)} on average."
 
 
 def _amounts(

@@ -1,6 +1,6 @@
 """Precision against money over all designs that the campaign's data allow."""
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
 from typing import Literal
 
@@ -47,12 +47,21 @@ class _Compared:
     def designs(self) -> list[PricedDesign]:
         """All of them, each kind's best for target and money included."""
         traced = [design for row in self.rows.values() for design in row]
-        floor = self.wanted.value / REACH
-        return [
-            design
-            for design in (*traced, *self.goal.values(), *self.paid.values())
-            if self.wanted.of(design) >= floor
-        ]
+        return [*traced, *self.goal.values(), *self.paid.values()]
+
+    def shown(self, designs: Iterable[PricedDesign]) -> list[PricedDesign]:
+        """Leave out what lies beyond the finest precision that every kind is traced to.
+
+        Each kind ends at a whole number a little beyond it, and the last of those is beaten by
+        none for want of a rival.
+        """
+        finest = self.wanted.value / REACH
+        return [design for design in designs if self.wanted.of(design) >= finest]
+
+    @property
+    def best(self) -> list[PricedDesign]:
+        """Those that no other beats, cheapest first."""
+        return self.shown(efficient(self.designs))
 
     def money(self, amount: float) -> str:
         """Write an amount of money."""
@@ -82,17 +91,15 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     prices = question.prices
     if prices is None or question.census or not asked.sigma_known or size.question != "mean":
         return None
-    if prices.of_a_visit + prices.of_a_result <= 0:
+    takes_all = question.takes_all([entry.needed for entry in size.strata])
+    if takes_all or prices.of_a_visit + prices.of_a_result <= 0:
         return None
     compared = _compared(asked, size)
-    best = cheapest(compared.goal.values(), compared.wanted)
-    finest = most_precise(compared.paid.values(), compared.budget)
-    lines = [_cheapest_words(compared, best), _finest_words(compared, finest)]
     columns, rows = _table(compared)
     return Finding(
         topic="frontier",
         title="Precision for the money",
-        answer=" ".join(line for line in lines if line),
+        answer=_answer(compared),
         amounts=_amounts(compared),
         columns=columns,
         rows=rows,
@@ -147,6 +154,34 @@ def _taken(design: PricedDesign) -> str:
     return f"{design.kind} ({design.words})"
 
 
+def _answer(compared: _Compared) -> str:
+    """Say what is cheapest and what most precise; where there is one kind, what money does."""
+    if len(compared.rows) == 1:
+        return _one_kind(compared)
+    best = cheapest(compared.goal.values(), compared.wanted)
+    finest = most_precise(compared.paid.values(), compared.budget)
+    lines = (_cheapest_words(compared, best), _finest_words(compared, finest))
+    return " ".join(line for line in lines if line)
+
+
+def _one_kind(compared: _Compared) -> str:
+    """Say what a quarter less and a quarter more money would do."""
+    (row,) = compared.rows.values()
+    known = {
+        word: most_precise(row, factor * compared.own.cost)
+        for word, factor in (("less", 0.75), ("more", 1.25))
+    }
+    lines = [
+        f"a quarter {word} money ({compared.money(design.cost)}) a "
+        f"{compared.precision(compared.wanted.of(design))}"
+        for word, design in known.items()
+        if design is not None
+    ]
+    reached = compared.precision(compared.wanted.of(compared.own))
+    start = f"This plan buys a {reached} for {compared.money(compared.own.cost)}"
+    return ", ".join([start, *lines]) + "."
+
+
 def _cheapest_words(compared: _Compared, best: PricedDesign | None) -> str:
     """Say which design reaches the plan's precision for least."""
     aim, own = compared.precision(compared.wanted.value), compared.money(compared.own.cost)
@@ -188,12 +223,23 @@ def _amounts(compared: _Compared) -> tuple[Amount, ...]:
 
 def _table(compared: _Compared) -> tuple[tuple[str, ...], tuple[tuple[str, ...], ...]]:
     """List the designs that no other beats, cheapest first, and the plan among them."""
-    best = efficient(compared.designs)
+    best = compared.best
     step = max(1.0, (len(best) - 1) / (ROWS - 1))
-    shown = {round(k * step): None for k in range(ROWS) if round(k * step) < len(best)}
-    rows = sorted([*(best[k] for k in shown), compared.own], key=lambda d: d.cost)
-    name = "Standard error" if compared.wanted.measure == "standard_error" else "Half-width"
-    columns = ["Design", "Results", "Locations", name, f"Cost {compared.currency}".strip()]
+    thinned = [best[round(k * step)] for k in range(ROWS) if round(k * step) < len(best)]
+    asked = [
+        cheapest(compared.goal.values(), compared.wanted),
+        most_precise(compared.paid.values(), compared.budget),
+    ]
+    found = {**dict.fromkeys(thinned), **dict.fromkeys(d for d in asked if d), compared.own: None}
+    rows = sorted(found, key=lambda d: (d.cost, d.kind))
+    name = "SE" if compared.wanted.measure == "standard_error" else "±"
+    columns = [
+        "Design",
+        "Results",
+        "Locations",
+        f"{name} {compared.unit}".strip(),
+        f"Cost {compared.currency}".strip(),
+    ]
     days = any(design.crew_days for design in rows)
     cells = [
         (
@@ -235,16 +281,17 @@ def _assumptions(asked: Asked, size: Size, compared: _Compared) -> tuple[str, ..
 
 def _picture(compared: _Compared) -> Picture:
     """Lay each kind's row as a line, what is not beaten as dots, what is beaten as rings."""
-    wanted, best = compared.wanted, efficient(compared.designs)
+    wanted, best = compared.wanted, compared.best
     word = "standard error" if wanted.measure == "standard_error" else "half-width"
-    beaten = [design for design in compared.designs if design not in best]
+    beaten = [design for design in compared.shown(compared.designs) if design not in best]
 
     def series(label: str, designs: Sequence[PricedDesign], style: Style) -> Series:
         ordered = sorted(designs, key=lambda d: d.cost)
         costs, reached = [d.cost for d in ordered], [wanted.of(d) for d in ordered]
         return Series(label, tuple(costs), tuple(reached), style)
 
-    lines = [series(label, row, "line") for label, row in compared.rows.items() if row]
+    rows = {label: compared.shown(row) for label, row in compared.rows.items()}
+    lines = [series(label, row, "line") for label, row in rows.items() if row]
     ends = (best[0], best[-1])
     return Picture(
         kind="frontier",
@@ -266,5 +313,5 @@ def _picture(compared: _Compared) -> Picture:
             series("", best, "points"),
             series("this plan", [compared.own], "points"),
         ),
-        levels=((f"compared at {figure(wanted.value)} {compared.unit}".strip(), wanted.value),),
+        levels=((f"{with_unit(figure(wanted.value), compared.unit)} wanted", wanted.value),),
     )

@@ -56,7 +56,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     if not asked.sigma_known or size.question != "mean" or asked.question.census:
         return None
     readings = readings_of(asked)
-    if not readings:
+    if not readings or asked.question.takes_all([entry.needed for entry in size.strata]):
         return None
     if any(r.of_a_reading <= 0 or r.of_a_result <= 0 for r in readings):
         return _without_prices(readings[0])
@@ -121,9 +121,20 @@ def _border_words(weighed: _Weighed) -> str:
         return "At these prices not even a perfect reading would pay in a large campaign."
     if weighed.border == 0:
         return "At these prices a reading costs nothing extra, so it pays however loose it is."
+    border, here = weighed.border, weighed.reading.correlation
+    if weighed.pays and here < border:
+        return (
+            "That is room that whole numbers and whole days leave: in a larger campaign readings "
+            f"stop paying below a correlation of {border:.2f}, and here it is {here:.2f}."
+        )
+    if not weighed.pays and here >= border:
+        return (
+            f"In a larger campaign they would: at these prices from a correlation of {border:.2f} "
+            f"up, and here it is {here:.2f}."
+        )
     return (
-        f"At these prices readings stop paying below a correlation of {weighed.border:.2f}; "
-        f"here it is {weighed.reading.correlation:.2f}."
+        f"At these prices readings stop paying below a correlation of {border:.2f}; here it is "
+        f"{here:.2f}."
     )
 
 
@@ -197,7 +208,7 @@ def _steps(asked: Asked, best: _Weighed) -> tuple[Step, ...]:
     steps = [
         Step("n'/n", "Readings for each result, in a large campaign",
              "n'/n = ρ · √c / √((1 − ρ²) · c'), at least 1", (rho, *costs[:2]), ratio,
-             float(design.readings) / design.results, "", COCHRAN),
+             ratio, "", COCHRAN),
         _error_step(reading, design, rho, unit=asked.question.unit),
         Step("V/V1", "Variance of the mean against results alone for the same money",
              "V/V1 = (√((1 − ρ²) · c) + ρ · √c')² / c1", (rho, *costs), gain, gain, "", COCHRAN),
@@ -250,6 +261,7 @@ def _assumptions(best: _Weighed) -> tuple[str, ...]:
         "with a result has one.",
         "Results follow readings along a straight line, with the same scatter about it over the "
         "whole range; readings are near normal where results are few.",
+        "The whole numbers are the cheapest that keep the precision: all near them were tried.",
         "The line is fitted on this site's own results; a factory calibration does not replace it.",
     ]
     if best.reading.population.strata > 1:
