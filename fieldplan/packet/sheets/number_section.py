@@ -110,7 +110,7 @@ def count_rows(plan: Plan) -> list[tuple[str, str]]:
 def declared_lines(plan: Plan) -> list[str]:
     """Say which class the confidence was declared for, and what t holds at the end of it."""
     from fieldplan.estimate.coverage import declared_skewness
-    from fieldplan.sizing import question_of
+    from fieldplan.sizing.asking import asked_of
     from fieldplan.sizing.lean import equivalent_sample
     from fieldplan.stats.shape import t_coverage
 
@@ -121,8 +121,10 @@ def declared_lines(plan: Plan) -> list[str]:
     end = declared_skewness(rules.promised_for)
     if end is None or rules.confidence > 0.99:
         return [f"{line}. Nothing here shows that the population belongs to that class."]
-    question = question_of(plan.campaign, plan.spread, plan.frame)
-    n, lean = equivalent_sample(question, [entry.needed for entry in plan.size.strata])
+    asked = asked_of(plan.campaign, plan.spread, plan.frame)
+    if not asked.sigma_known:
+        return [f"{line}."]
+    n, lean = equivalent_sample(asked.question, [entry.needed for entry in plan.size.strata])
     held = t_coverage(n, end, confidence=rules.confidence, kind=rules.interval)
     large = " of a large population" if plan.frame.kind == "list" else ""
     line += (
