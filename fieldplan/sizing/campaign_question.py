@@ -3,10 +3,11 @@
 import math
 from collections.abc import Mapping, Sequence
 from dataclasses import replace
-from difflib import get_close_matches
 from typing import TYPE_CHECKING
 
 from fieldplan.base.errors import CampaignError, DesignError
+from fieldplan.sizing.asked.model import entries_of
+from fieldplan.sizing.by_stratum import bounded, unknown
 from fieldplan.sizing.money import Prices
 from fieldplan.sizing.question import ControlRate, Part, Question, TargetKind
 from fieldplan.sizing.visits import as_visits
@@ -51,7 +52,25 @@ def question_of(campaign: "Campaign", spread: "Spread", frame: "Frame") -> Quest
     mean = expected_mean(spread.strata, frame, site=spread.site)
     _check_support(campaign, kind, value, mean=mean)
     parts = parts_of(campaign, frame, spread.strata)
-    return ask(campaign, objective, parts=parts, mean=mean, targeted=len(frame.targeted))
+    question = ask(campaign, objective, parts=parts, mean=mean, targeted=len(frame.targeted))
+    also = tuple(_asked_also(campaign, spread, frame, o) for o in campaign.also_deciding)
+    return replace(question, also=also) if also else question
+
+
+def _asked_also(
+    campaign: "Campaign", spread: "Spread", frame: "Frame", objective: "Objective"
+) -> Question:
+    """Ask for another objective that decides n; what its analyte lacks stops the sizing."""
+    analyte = campaign.analyte_called(objective.analyte or campaign.deciding_analyte.id)
+    entries = entries_of(spread, analyte.id)
+    mean = expected_mean(entries, frame, site=spread.site if analyte.id == spread.analyte else None)
+    kind, value = target_of(objective)
+    try:
+        _check_support(campaign, kind, value, mean=mean)
+        return ask(campaign, objective, parts=parts_of(campaign, frame, entries), mean=mean)
+    except (CampaignError, DesignError) as fault:
+        lines = [f"{analyte.label}, which decides n too: {line}" for line in fault.problems]
+        raise type(fault)(*lines) from fault
 
 
 def ask(
@@ -88,6 +107,7 @@ def ask(
     design = next((d for d in campaign.design if d.id == objective.design), campaign.design[0])
     analyte = campaign.analyte_called(objective.analyte or campaign.deciding_analyte.id)
     cost, assurance = campaign.cost, objective.assurance
+    parts = bounded(parts, campaign, design)
     if cost is not None and design.takes_composites and isinstance(design.increments, int):
         more = design.increments * cost.per_increment
         parts = tuple(replace(part, extra_cost=part.extra_cost + more) for part in parts)
@@ -101,6 +121,7 @@ def ask(
         confidence=campaign.rules.confidence,
         interval=campaign.rules.interval,
         allocation=design.allocation,
+        equal_in=design.equal_in,
         floor=design.floor,
         alternates=design.alternates,
         locations=design.locations,
@@ -258,15 +279,9 @@ def parts_of(
 def _losses(campaign: "Campaign", names: list[str]) -> Mapping[str, float]:
     """Take the losses typed by stratum; a name that the frame does not have is refused."""
     losses = campaign.loss.by_stratum
-    for name, share in losses.items():
-        if name not in names:
-            near = get_close_matches(name, names, n=1)
-            hint = f"did you mean '{near[0]}'?" if near else "correct it or leave it out."
-            message = (
-                f"[loss] by_stratum has {typed(share)} for '{name}', which is no stratum of the "
-                f"frame ({', '.join(names)}); {hint}"
-            )
-            raise CampaignError(message)
+    faults = unknown(losses, names, "[loss] by_stratum")
+    if faults:
+        raise CampaignError(*faults)
     return losses
 
 
