@@ -102,6 +102,12 @@ def n_for_margin(
     """
     first = unrounded_for_margin(share, margin, confidence=confidence, kind=kind)
     if units is None:
+        if first > MOST:
+            message = (
+                f"a margin of {margin:g} about a share of {share:g} asks for more than {MOST} "
+                "results; allow a wider margin."
+            )
+            raise DesignError(message)
         return whole(first)
     return min(whole(unrounded_for_listed_share(first, units)), units)
 

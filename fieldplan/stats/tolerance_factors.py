@@ -280,17 +280,19 @@ def _root(reached: Callable[[float], float], confidence: float, near: float) -> 
     while above < 0:
         low, below, high = high, above, 2 * high
         above = reached(high) - confidence
+    side = 0
     for _ in range(200):
         middle = (low * above - high * below) / (above - below)
         if not low < middle < high:
             middle = (low + high) / 2
         here = reached(middle) - confidence
-        if here == 0 or high - low < 1e-13 * high:
+        if abs(here) < 1e-13 or high - low < 1e-12 * high:
             return middle
+        # The end that has stayed twice counts half, or the steps would creep towards it.
         if here < 0:
-            low, below, above = middle, here, above / 2
+            low, below, above, side = middle, here, above / 2 if side < 0 else above, -1
         else:
-            high, above, below = middle, here, below / 2
+            high, above, below, side = middle, here, below / 2 if side > 0 else below, 1
     return (low + high) / 2
 
 

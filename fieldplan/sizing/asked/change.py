@@ -15,7 +15,7 @@ from fieldplan.sizing.words import counted, figure, percent, typed, typed_percen
 from fieldplan.stats.allocation import first_that, share_total
 from fieldplan.stats.distributions import normal_quantile
 from fieldplan.stats.intervals import t_quantile
-from fieldplan.stats.power import power_at, sigma_of_change, smallest_shift
+from fieldplan.stats.power import one_sample_n, power_at, sigma_of_change, smallest_shift
 from fieldplan.stats.precision import whole
 from fieldplan.stats.risks import check_risks
 
@@ -95,6 +95,17 @@ def _needed(paired: Question, table: Change) -> tuple[int, ...]:
         return tuple(plain_counts(replace(paired, target="half_width", value=table.half_width)))
     alpha, beta = table.alpha or 0.0, table.beta or 0.0
     check_risks(alpha, beta)
+    if len(paired.parts) == 1:
+        only = paired.parts[0]
+        n = one_sample_n(
+            table.difference or 0.0,
+            only.sigma,
+            alpha=alpha,
+            beta=beta,
+            sides=_sides(table),
+            population=only.population,
+        )
+        return (max(n, *paired.strata.floors),)
     z = normal_quantile(1 - alpha / _sides(table)) + normal_quantile(1 - beta)
     # Known spreads need least: no counts of a larger variance can do.
     return tuple(
@@ -291,7 +302,7 @@ def _warnings(asked: Asked, table: Change) -> tuple[str, ...]:
 def _picture(asked: Asked, table: Change, counts: tuple[int, ...]) -> Picture | None:
     paired, unit = _paired(asked, table), asked.question.unit
     if table.half_width is None:
-        xs = [2 * (table.difference or 0.0) * k / 40 for k in range(41)]
+        xs = [2 * (table.difference or 0.0) * k / 16 for k in range(17)]
         ys = [100 * _power(paired, table, counts, x) for x in xs]
         return Picture(
             kind="lines",

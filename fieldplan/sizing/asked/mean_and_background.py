@@ -287,7 +287,7 @@ def _warnings(both: TwoPopulations, asked: Asked) -> tuple[str, ...]:
 
 def _picture(both: TwoPopulations, counts: tuple[int, ...]) -> Picture:
     table, unit = both.table, both.asked.question.unit
-    xs = [2 * table.difference * k / 24 for k in range(25)]
+    xs = [2 * table.difference * k / 16 for k in range(17)]
     ys = [100 * both.power(counts, x) for x in xs]
     return Picture(
         kind="lines",

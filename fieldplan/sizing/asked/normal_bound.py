@@ -209,7 +209,7 @@ def _picture(asked: Asked, table: UpperShare, n: int) -> Picture:
     margin = _margin(asked)
     low = normal_quantile(table.share)
     span = max(margin - low, 0.2)
-    margins = [max(low - span / 2, 0.01) + 2 * span * k / 60 for k in range(61)]
+    margins = [max(low - span / 2, 0.01) + 2 * span * k / 20 for k in range(21)]
     mean, sigma = asked.question.mean or 0.0, asked.question.parts[0].sigma
     means = [(asked.level or 0.0) - m * sigma for m in margins]
     chances = [100 * _chance(n, m, table) for m in margins]

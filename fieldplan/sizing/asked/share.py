@@ -265,7 +265,7 @@ def _warnings(table: ShareTable) -> tuple[str, ...]:
 
 
 def _picture(asked: Asked, table: ShareTable, n: int) -> Picture:
-    steps = sorted({max(2, whole(n * (0.4 + 1.6 * k / 24))) for k in range(25)} | {n})
+    steps = sorted({max(2, whole(n * (0.4 + 0.2 * k))) for k in range(9)} | {n})
     if asked.population is not None:
         steps = [m for m in steps if m <= asked.population]
     ys = [100 * _reach(asked, table, m) for m in steps]

@@ -140,9 +140,14 @@ class TwoPopulations:
         near = min(max(low, math.floor(0.8 * self._near)), most)
         total = smallest(enough, near if near > low and not enough(near) else low, most)
         if not enough(total):
+            most_words = (
+                f"more than {most} results"
+                if self.asked.population is None
+                else (f"more than all {most} units of the site")
+            )
             message = (
-                f"not even all {most} units of the site tell a difference of "
-                f"{self.table.difference:g}; take more background results, or a larger difference."
+                f"a difference of {self.table.difference:g} asks for {most_words}; take more "
+                "background results, or a larger difference."
             )
             raise DesignError(message)
         return shared(total)
@@ -190,7 +195,7 @@ class TwoPopulations:
         low, high = 0.0, self.table.difference
         while self.power(counts, high) < wanted:
             low, high = high, 2 * high
-        for _ in range(40):
+        for _ in range(20):  # six digits
             middle = (low + high) / 2
             low, high = (low, middle) if self.power(counts, middle) >= wanted else (middle, high)
         return high
