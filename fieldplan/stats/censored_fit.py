@@ -1,7 +1,7 @@
 """A population fitted to results of which some lie below their reporting limit."""
 
 import math
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any, Literal
 
@@ -79,30 +79,45 @@ def fit_censored(detects: Sequence[float], limits: Sequence[float], model: Model
     (11.7, 0.93)
     """
     import numpy as np
-    from scipy.optimize import minimize, minimize_scalar
+    from scipy.optimize import minimize
 
     _check_fit(detects, limits, model)
-    everything = [*detects, *(limit / 2 for limit in limits)]
-    middle = sum(everything) / len(everything)
-    spread = math.sqrt(sum((v - middle) ** 2 for v in everything) / len(everything))
-    if not middle > 0:
-        message = (
-            f"the mean of the results is {middle:g}; a coefficient of variation needs one > 0."
-        )
-        raise DesignError(message)
+    start = _start(detects, limits)
 
     def loss(log_mean: float, log_cv: float) -> float:
         mean, cv = math.exp(log_mean), math.exp(log_cv)
         return -_log_likelihood(detects, limits, model, mean=mean, cv=cv)
 
-    start = np.array([math.log(middle), math.log(max(spread / middle, 0.01))])
-    options: Any = {"xatol": 1e-7, "fatol": 1e-9, "maxiter": 2000}
-
     def loss_at(place: "NDArray[np.float64]") -> float:
         return loss(float(place[0]), float(place[1]))
 
-    best = minimize(loss_at, start, method="Nelder-Mead", options=options)
+    options: Any = {"xatol": 1e-7, "fatol": 1e-9, "maxiter": 2000}
+    best = minimize(loss_at, np.array(start), method="Nelder-Mead", options=options)
     log_mean, log_cv = float(best.x[0]), float(best.x[1])
+    high = _profile_limit(loss, log_mean, log_cv, allowed=float(best.fun) + _DROP)
+    return CensoredFit(
+        model, math.exp(log_mean), math.exp(log_cv), math.exp(high), -float(best.fun)
+    )
+
+
+def _start(detects: Sequence[float], limits: Sequence[float]) -> tuple[float, float]:
+    """Give logs of mean and coefficient of variation with non-detects at half their limit."""
+    everything = [*detects, *(limit / 2 for limit in limits)]
+    middle = math.fsum(everything) / len(everything)
+    if not middle > 0:
+        message = (
+            f"the mean of the results is {middle:g}; a coefficient of variation needs one > 0."
+        )
+        raise DesignError(message)
+    spread = math.sqrt(math.fsum((v - middle) ** 2 for v in everything) / len(everything))
+    return math.log(middle), math.log(max(spread / middle, 0.01))
+
+
+def _profile_limit(
+    loss: Callable[[float, float], float], log_mean: float, log_cv: float, *, allowed: float
+) -> float:
+    """Find the larger coefficient of variation at which the best mean loses what is allowed."""
+    from scipy.optimize import minimize_scalar
 
     def falls_short(log_wider: float) -> bool:
         reach = 6 + 2 * math.exp(2 * min(log_wider, 1.0))
@@ -111,15 +126,13 @@ def fit_censored(detects: Sequence[float], limits: Sequence[float], model: Model
             bounds=(log_mean - 3, log_mean + reach),
             method="bounded",
         )
-        return float(inner.fun) - float(best.fun) > _DROP
+        return float(inner.fun) > allowed
 
     low, high = log_cv, log_cv + 4
     for _ in range(16):
         between = (low + high) / 2
         low, high = (low, between) if falls_short(between) else (between, high)
-    return CensoredFit(
-        model, math.exp(log_mean), math.exp(log_cv), math.exp(high), -float(best.fun)
-    )
+    return high
 
 
 def _check_fit(detects: Sequence[float], limits: Sequence[float], model: Model) -> None:

@@ -165,13 +165,11 @@ def _wider(asked: Asked) -> list[tuple[Family, float]]:
     return [(name, fit_censored(detects, limits, name).cv_high) for name in families]
 
 
-def _picture(asked: Asked, counts: Sequence[int], shape: SiteShape) -> Picture:
-    """Simulate the band at each number, with the misses there, from a quarter to four times n."""
+def _band(question: Question, counts: Sequence[int], shape: SiteShape) -> list[Row]:
+    """Simulate the band, and judge the misses, from a quarter to four times the planned n."""
     from fieldplan.stats.mean_simulation import BAND, simulate_coverage
 
-    question, total = asked.question, sum(counts)
-    centre = _centre(question)
-    least = 2 * len(counts)
+    total, least = sum(counts), 2 * len(counts)
     numbers = {max(least, round(total * step)) for step in STEPS}
     numbers |= {TEXTBOOK} if least <= TEXTBOOK and min(numbers) < TEXTBOOK < max(numbers) else set()
     rows: list[Row] = []
@@ -183,13 +181,15 @@ def _picture(asked: Asked, counts: Sequence[int], shape: SiteShape) -> Picture:
             kind=question.interval,
             campaigns=max(FEWEST, min(MOST, DRAWS // number)),
         )
-        missed = misses(question, shape, at)
-        rows.append((float(sum(at)), drawn.band, missed, _normal_reach(question, at, BAND)))
-    n = tuple(row[0] for row in rows)
+        reach = _normal_reach(question, at, BAND)
+        rows.append((float(sum(at)), drawn.band, misses(question, shape, at), reach))
+    return rows
 
-    def series(label: str, style: Style, values: Sequence[float]) -> Series:
-        return Series(label, n, tuple(values), style)
 
+def _picture(asked: Asked, counts: Sequence[int], shape: SiteShape) -> Picture:
+    """Set the band and the misses as data of one picture."""
+    question, total = asked.question, sum(counts)
+    centre, rows = _centre(question), _band(question, counts, shape)
     return Picture(
         kind="mean-band",
         caption=(
@@ -200,22 +200,29 @@ def _picture(asked: Asked, counts: Sequence[int], shape: SiteShape) -> Picture:
         alternative=_alternative(rows, question),
         x_label="number of results, n",
         y_label=_label(question, centre),
-        series=(
-            series("5 %", "band-low", [centre + row[1][0] for row in rows]),
-            series("95 %", "band-high", [centre + row[1][1] for row in rows]),
-            series("normal, low", "dashes", [centre - row[3] for row in rows]),
-            series("normal, high", "dashes", [centre + row[3] for row in rows]),
-            *(
-                series(f"true mean {side}", "points", values)
-                for side, values in (
-                    ("above", [100 * row[2].too_low for row in rows]),
-                    ("below", [100 * row[2].too_high for row in rows]),
-                )
-                if any(values)
-            ),
-        ),
+        series=_series(rows, centre),
         marks=((f"{total} planned", float(total)),),
         levels=(("true mean", centre),),
+    )
+
+
+def _series(rows: Sequence[Row], centre: float) -> tuple[Series, ...]:
+    """Set band, normal band and misses; a side that cannot miss is left out."""
+    n = tuple(row[0] for row in rows)
+
+    def series(label: str, style: Style, values: Sequence[float]) -> Series:
+        return Series(label, n, tuple(values), style)
+
+    sides = (
+        ("above", [100 * row[2].too_low for row in rows]),
+        ("below", [100 * row[2].too_high for row in rows]),
+    )
+    return (
+        series("5 %", "band-low", [centre + row[1][0] for row in rows]),
+        series("95 %", "band-high", [centre + row[1][1] for row in rows]),
+        series("normal, low", "dashes", [centre - row[3] for row in rows]),
+        series("normal, high", "dashes", [centre + row[3] for row in rows]),
+        *(series(f"true mean {side}", "points", values) for side, values in sides if any(values)),
     )
 
 

@@ -210,7 +210,6 @@ def _steps(
             Quantity(f"mean {part.name}", f"of the {one.model}", found.mean, unit),
             Quantity(f"CV {part.name}", f"of the {one.model}", found.cv),
         ]
-    chance = chance_of_bounds_only(total, one.share)
     return (
         Step(
             symbol="p",
@@ -230,18 +229,21 @@ def _steps(
             rounded=round(one.wider, 2),
             source="bounds, derived here",
         ),
-        Step(
-            symbol="P",
-            meaning="Chance that only bounds of the mean are left",
-            formula="P(fewer detects than max(3, 20 % of n)), binomial(n, 1 − p)",
-            inputs=(
-                Quantity("n", "results", total),
-                Quantity("p", "share below the limit", one.share),
-            ),
-            unrounded=chance,
-            rounded=round(chance, 3),
-            source=f"{SOURCES[2]}; the rule is a house rule, see docs",
-        ),
+        _chance_step(total, one.share),
+    )
+
+
+def _chance_step(total: int, share: float) -> Step:
+    """Show the chance that too few results are detects."""
+    chance = chance_of_bounds_only(total, share)
+    return Step(
+        symbol="P",
+        meaning="Chance that only bounds of the mean are left",
+        formula="P(fewer detects than max(3, 20 % of n)), binomial(n, 1 − p)",
+        inputs=(Quantity("n", "results", total), Quantity("p", "share below the limit", share)),
+        unrounded=chance,
+        rounded=round(chance, 3),
+        source=f"{SOURCES[2]}; 3 and 20 % are house rules",
     )
 
 
