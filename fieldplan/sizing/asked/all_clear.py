@@ -15,6 +15,7 @@ from fieldplan.sizing.asked.counting_claims import (
     level_words,
     population_words,
     table_missing,
+    uneven_warning,
 )
 from fieldplan.sizing.asked.model import Answered, Asked
 from fieldplan.sizing.model import Amount, Finding, Picture, Series
@@ -235,6 +236,7 @@ def _warnings(asked: Asked, counts: tuple[int, ...], share: float) -> tuple[str,
             f"{level_words(asked)}: {_row_words(asked, few)} above it would stay unseen in "
             f"{percent(unseen)} of such campaigns and spoil the claim in {percent(1 - unseen)}."
         ]
+    lines += uneven_warning(asked, counts, _near(asked, share, _table(asked).confidence)[0])
     lines.append(
         "One result above the level ends the claim: it is neither dropped nor sampled away. What "
         "follows is for the people who set the level to say."

@@ -13,7 +13,7 @@ from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Part, Question
 from fieldplan.sizing.words import counted, figure, percent, typed, typed_percent, with_unit
 from fieldplan.stats.allocation import first_that, share_total
-from fieldplan.stats.distributions import normal_quantile
+from fieldplan.stats.distributions import normal_quantile, student_quantile
 from fieldplan.stats.intervals import t_quantile
 from fieldplan.stats.power import one_sample_n, power_at, sigma_of_change, smallest_shift
 from fieldplan.stats.precision import whole
@@ -214,12 +214,17 @@ def _last_step(paired: Question, table: Change, needed: tuple[int, ...]) -> Step
             source="Cochran 1977, Sampling Techniques, 3rd ed., ch. 4",
         )
     power = _power(paired, table, needed)
+    limit = student_quantile(1 - (table.alpha or 0.0) / _sides(table), max(known, 1.0))
     return Step(
         symbol="power",
         meaning="Chance to show the change: n is the smallest that keeps it at 1 − β or above",
-        formula="P(T > t at df), T noncentral t with df and Δ / SE",
+        formula="P(T > t)"
+        + (" + P(T < −t)" if _sides(table) == 2 else "")
+        + ", T noncentral t with df "
+        "and Δ / SE",
         inputs=(
             *shared,
+            Quantity("t", "Student quantile that decides", limit),
             Quantity("Δ", "change that must not be missed", table.difference or 0.0, unit),
             Quantity("α", "chance to claim a change where there is none", table.alpha or 0.0),
             Quantity("β", "chance to miss the change", table.beta or 0.0),
@@ -302,7 +307,7 @@ def _warnings(asked: Asked, table: Change) -> tuple[str, ...]:
 def _picture(asked: Asked, table: Change, counts: tuple[int, ...]) -> Picture | None:
     paired, unit = _paired(asked, table), asked.question.unit
     if table.half_width is None:
-        xs = [2 * (table.difference or 0.0) * k / 16 for k in range(17)]
+        xs = [2 * (table.difference or 0.0) * k / 20 for k in range(21)]
         ys = [100 * _power(paired, table, counts, x) for x in xs]
         return Picture(
             kind="lines",

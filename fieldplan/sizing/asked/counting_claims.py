@@ -113,11 +113,21 @@ def counts_that_notice(
     return asked.shared(smallest(notices, min(low, most), most, back=ripple))
 
 
+def uneven_warning(asked: Asked, counts: tuple[int, ...], even: int) -> tuple[str, ...]:
+    """Say what strata out of proportion cost; ``even`` is the number without strata."""
+    if evenness(asked, counts) >= 0.9:
+        return ()
+    return (
+        "The strata are not sampled in proportion to their size, so the most thinly sampled one "
+        f"bounds the claim; in proportion about {even} results would carry it.",
+    )
+
+
 def population_words(asked: Asked) -> str:
     """Name what a share is a share of."""
     if asked.population is not None:
         return f"the {asked.population} units of the list"
-    return "the places that could have been sampled"
+    return "the site's possible samples"
 
 
 def counting_assumptions(asked: Asked, *, allowed: int) -> tuple[str, ...]:
@@ -133,9 +143,6 @@ def counting_assumptions(asked: Asked, *, allowed: int) -> tuple[str, ...]:
         lines.append("A grid is counted like places drawn one by one; a pattern as regular as the "
                      "grid could hide between its points.")  # fmt: skip
     if len(asked.question.parts) > 1:
-        how = "the worst way to lie among the strata"
-        if asked.population is not None and allowed == 0:
-            lines.append(f"Units that exceed may lie in {how}.")
-        else:
-            lines.append(f"The share that exceeds may lie in {how} (Hoeffding 1956).")
+        by = "" if asked.population is not None and allowed == 0 else " (Hoeffding 1956)"
+        lines.append(f"What exceeds may lie among the strata in whatever way hides it best{by}.")
     return tuple(lines)

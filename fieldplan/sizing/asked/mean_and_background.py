@@ -287,7 +287,7 @@ def _warnings(both: TwoPopulations, asked: Asked) -> tuple[str, ...]:
 
 def _picture(both: TwoPopulations, counts: tuple[int, ...]) -> Picture:
     table, unit = both.table, both.asked.question.unit
-    xs = [2 * table.difference * k / 16 for k in range(17)]
+    xs = [2 * table.difference * k / 20 for k in range(21)]
     ys = [100 * both.power(counts, x) for x in xs]
     return Picture(
         kind="lines",

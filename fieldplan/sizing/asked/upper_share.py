@@ -14,6 +14,7 @@ from fieldplan.sizing.asked.counting_claims import (
     level_words,
     population_words,
     table_missing,
+    uneven_warning,
 )
 from fieldplan.sizing.asked.model import Answered, Asked
 from fieldplan.sizing.model import Amount, Finding, Picture, Series
@@ -113,19 +114,20 @@ def _allowed(asked: Asked, table: UpperShare) -> int:
 
 
 def _needed(asked: Asked, table: UpperShare, allowed: int) -> tuple[int, ...]:
-    near = 1
-    if asked.population is None:
-        near = n_by_counting(table.share, table.confidence, rank=allowed + 1)
-    elif _spoiling(asked, table) > allowed:
-        near = n_to_find(
-            _spoiling(asked, table),
-            table.confidence,
-            units=asked.population,
-            allowed=allowed,
-        )
+    near = _near(asked, table, allowed)
     return counts_that_notice(
         asked, _spoils(asked, table), table.confidence, allowed=allowed, near=near
     )
+
+
+def _near(asked: Asked, table: UpperShare, allowed: int) -> int:
+    """Give the number without strata; 1 where so many may exceed that the list shows nothing."""
+    if asked.population is None:
+        return n_by_counting(table.share, table.confidence, rank=allowed + 1)
+    spoiling = _spoiling(asked, table)
+    if spoiling <= allowed:
+        return 1
+    return n_to_find(spoiling, table.confidence, units=asked.population, allowed=allowed)
 
 
 def _spoils(asked: Asked, table: UpperShare) -> float:
@@ -268,14 +270,15 @@ def _warnings(asked: Asked, counts: tuple[int, ...], allowed: int) -> tuple[str,
     chance = _comes_out(asked, counts, few, allowed)
     rest = typed_percent(1 - table.share)
     lines = [
+        *uneven_warning(asked, counts, _near(asked, table, allowed)),
         f"It says nothing about the mean, nor that no {place} exceeds {level_words(asked)}: up to "
-        f"{rest} may, by any amount."
+        f"{rest} may, by any amount.",
     ]
     if table.expected_above is None and chance < 0.8:
         lines.append(
             f"Even where only {typed_percent(few)} exceed, the claim fails in "
-            f"{percent(1 - chance)} of such campaigns; expected_above and power allow some results "
-            "above the level and take more of them."
+            f"{percent(1 - chance)} of such campaigns. Taking more results and allowing some of "
+            "them above the level helps (expected_above with power)."
         )
     return tuple(lines)
 
