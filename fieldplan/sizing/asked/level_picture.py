@@ -122,11 +122,14 @@ def _series(
     *,
     dashed: bool = False,
 ) -> Series:
-    chances = [100 * normal_share(_straight(knots, distance / times)) for distance in span]
+    points = sorted(
+        (decision.mean_at(distance), 100 * normal_share(_straight(knots, distance / times)))
+        for distance in span
+    )
     return Series(
         label,
-        tuple(decision.mean_at(distance) for distance in span),
-        tuple(chances),
+        tuple(mean for mean, _ in points),
+        tuple(share for _, share in points),
         "dashes" if dashed else "line",
     )
 

@@ -164,9 +164,10 @@ def _picture_words(decision: LevelDecision, counts: Sequence[int]) -> str:
     if margin:
         name = "upper" if decision.side == "below" else "lower"
         side = "above" if decision.side == "below" else "below"
+        few = ", as few results tend to show a little less than sigma" if sum(counts) < 25 else ""
         line += (
             f"; the {name} limit then lies {_with_unit(decision, margin)} {side} the mean on "
-            "average"
+            f"average{few}"
         )
     return line + "."
 
