@@ -17,7 +17,8 @@ from fieldplan.cli.options import (
     wrapped,
 )
 from fieldplan.cli.size_findings import print_finding, print_findings
-from fieldplan.cli.size_options import BadOption, BareNumbers, bare_number_options, given_names
+from fieldplan.cli.size_options import BadOption, bare_number_options, given_names
+from fieldplan.cli.typed_numbers import BareNumbers
 
 if TYPE_CHECKING:
     from collections.abc import Collection
@@ -130,7 +131,8 @@ def print_answer(answer: "Size", *, explain: bool, more: tuple[str, ...] = ()) -
     click.echo(wrapped(answer.sentences[0]))
     click.echo()
     print_sentences([*answer.sentences[1:], *(other.sentence for other in answer.others)])
-    beside = [f for f in answer.findings if f.answer not in answer.sentences]
+    asked = [f for f in answer.findings if f.topic in more or "all" in more]
+    beside = [f for f in answer.findings if f.answer not in answer.sentences or f in asked]
     print_findings(beside, full=more)
     if not explain:
         say("\n--explain shows the working, and under what condition it holds.")
