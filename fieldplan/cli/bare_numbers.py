@@ -6,7 +6,8 @@ from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
 from fieldplan.cli.bare_composites import composites_of_numbers, with_splits
-from fieldplan.cli.size_options import BadOption, BareNumbers
+from fieldplan.cli.size_options import BadOption
+from fieldplan.cli.typed_numbers import BareNumbers
 
 if TYPE_CHECKING:
     from fieldplan.campaign.model import Campaign

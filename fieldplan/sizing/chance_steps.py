@@ -8,7 +8,7 @@ from fieldplan.sizing.closing_steps import COCHRAN
 from fieldplan.sizing.counting import Counts
 from fieldplan.sizing.precision import PilotTerm, Precision
 from fieldplan.sizing.quantities import corrected_for_list, sigma_quantity, target_quantity
-from fieldplan.sizing.question import Question
+from fieldplan.sizing.question import Part, Question
 from fieldplan.stats.assurance import effective_degrees_of_freedom
 from fieldplan.stats.distributions import chi_square_quantile
 from fieldplan.stats.intervals import t_quantile
@@ -48,9 +48,6 @@ def _raised(question: Question, counts: Counts, assurance: float) -> Iterator[St
     if part.results is None:
         return
     known = effective_degrees_of_freedom(part.results, part.excess_kurtosis or 0.0)
-    meaning = "pilot results − 1"
-    if part.excess_kurtosis:
-        meaning = f"2 / (2/(n0 − 1) + {part.excess_kurtosis:g}/n0), heavy tails declared"
     quantile = chi_square_quantile(1 - assurance, known)
     upper = part.sigma * math.sqrt(known / quantile)
     yield Step(
@@ -59,7 +56,7 @@ def _raised(question: Question, counts: Counts, assurance: float) -> Iterator[St
         formula="s_u = s · √(df / χ²)",
         inputs=(
             sigma_quantity(question),
-            Quantity("df", meaning, known),
+            Quantity("df", _behind_sigma(part), known),
             Quantity("χ²", f"chi-square quantile at {1 - assurance:.4g}", quantile),
         ),
         unrounded=upper,
@@ -81,6 +78,13 @@ def _raised(question: Question, counts: Counts, assurance: float) -> Iterator[St
         unit="results",
         source=f"{COCHRAN}, sec. 4.6",
     )
+
+
+def _behind_sigma(part: Part) -> str:
+    """Say what the degrees of freedom behind one sigma are."""
+    if not part.excess_kurtosis:
+        return "pilot results − 1"
+    return f"2 / (2/(n0 − 1) + {part.excess_kurtosis:g}/n0), heavy tails declared"
 
 
 def _behind(question: Question, chosen: tuple[int, ...]) -> Iterator[Step]:

@@ -64,6 +64,13 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     stein = stein_outlook(
         target.sigma, width, first=first, confidence=target.confidence, kind=target.kind
     )
+    return _finding(asked, size, target, plain=plain, looks=(first, resized, stein))
+
+
+def _finding(
+    asked: Asked, size: Size, target: _Target, *, plain: int, looks: tuple[int, Outlook, Outlook]
+) -> Finding:
+    first, resized, stein = looks
     steps, more = _pilot_as_first(asked, target)
     return Finding(
         topic=TOPIC,
