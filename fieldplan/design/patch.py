@@ -28,8 +28,8 @@ CENTRES = 2048
 FEW_CENTRES = 512
 """The same for a curve over sizes: good to 0.002."""
 
-_ROOT = 1.2207440846057596
-"""Root of x⁴ = x + 1: its powers step evenly through three dimensions."""
+STEPS = 1.2207440846057596 ** -np.arange(1.0, 4.0)
+"""Powers of the root of x⁴ = x + 1: their multiples fill three dimensions evenly."""
 
 
 def polygons_of(frame: Frame) -> list[BaseGeometry]:
@@ -152,8 +152,7 @@ class Centres:
         corner, first, _, last = shapely.get_coordinates(box)[:4]
         filled = population.area / box.area
         count = int(min(MOST_CENTRES / filled, MOST_CANDIDATES))
-        steps = np.array([_ROOT**-1, _ROOT**-2, _ROOT**-3])
-        shares = (0.5 + np.arange(1, count + 1)[:, None] * steps) % 1.0
+        shares = (0.5 + np.arange(1, count + 1)[:, None] * STEPS) % 1.0
         places = corner + shares[:, :1] * (first - corner) + shares[:, 1:2] * (last - corner)
         inside = shapely.contains_xy(population, places[:, 0], places[:, 1])
         self.places: Numbers = places[inside]
@@ -211,13 +210,12 @@ class RandomPlaces:
 
         The logarithm of the chance to miss goes nearly with the patch's area.
         """
-        scale, rough = 1.0, replace(self, centres=FEW_CENTRES, _known={})
-        for _ in range(20):
-            found = min(rough.chance(counts, scale=scale).chance, 1 - 1e-12)
+        rough, scale = replace(self, centres=FEW_CENTRES, _known={}), 1.0
+        for places in (rough,) * 8 + (self,):
+            found = min(max(places.chance(counts, scale=scale).chance, 1e-12), 1 - 1e-12)
             change = math.sqrt(math.log1p(-chance) / math.log1p(-found))
-            scale *= change
-            if abs(change - 1) < 5e-4:
-                break
+            if places is self or abs(change - 1) > 1e-3:
+                scale *= change
         return scale
 
     def by_scale(self, counts: Sequence[int], scales: Sequence[float]) -> list[float]:
@@ -229,6 +227,14 @@ class RandomPlaces:
     def _centres(self) -> Centres:
         return Centres(shapely.union_all(polygons_of(self.frame)), self.patch, self.direction)
 
+    @cached_property
+    def _grounds(self) -> list[BaseGeometry]:
+        """Polygons with no more corners than the patch can feel, prepared."""
+        coarse = [shapely.simplify(p, self.patch.width / 500) for p in polygons_of(self.frame)]
+        for polygon in coarse:
+            shapely.prepare(polygon)
+        return coarse
+
     def _shares(self, scale: float) -> Numbers:
         """Share of each stratum within the patch about each centre, shape (k, strata)."""
         if scale not in self._known:
@@ -236,7 +242,7 @@ class RandomPlaces:
             places, angles = centres.places[: self.centres], centres.angles[: self.centres]
             about = rings(patch, angles if centres.turning else angles[:1])
             discs = np.asarray(shapely.polygons(places[:, None, :] + about))
-            grounds = zip(polygons_of(self.frame), self.frame.strata, strict=True)
+            grounds = zip(self._grounds, self.frame.strata, strict=True)
             shares = [_shared_area(ground, discs, patch) / s.measure for ground, s in grounds]
             self._known[scale] = np.clip(np.stack(shares, axis=1), 0.0, 1.0)
         return self._known[scale]
@@ -244,9 +250,7 @@ class RandomPlaces:
 
 def _shared_area(ground: BaseGeometry, discs: NDArray[np.object_], patch: Patch) -> Numbers:
     """Area of the ground within each disc."""
-    coarse = shapely.simplify(ground, patch.width / 500)
-    shapely.prepare(coarse)
-    areas = np.where(shapely.contains(coarse, discs), patch.area, 0.0)
-    cut = shapely.intersects(coarse, discs) & (areas == 0)
-    areas[cut] = shapely.area(shapely.intersection(coarse, discs[cut]))
+    areas = np.where(shapely.contains(ground, discs), patch.area, 0.0)
+    cut = shapely.intersects(ground, discs) & (areas == 0)
+    areas[cut] = shapely.area(shapely.intersection(ground, discs[cut]))
     return areas

@@ -13,7 +13,7 @@ from shapely.geometry.base import BaseGeometry
 from fieldplan.base.draws import Stream
 from fieldplan.base.errors import DesignError
 from fieldplan.design.grid import MOST_TRIES, SQUARE_GRID, TRIANGULAR_GRID, Grid
-from fieldplan.design.patch import Centres, Numbers, RandomPlaces, polygons_of
+from fieldplan.design.patch import STEPS, Centres, Numbers, RandomPlaces, polygons_of
 from fieldplan.design.patch_chance import PatchChance, PatchChances
 from fieldplan.frame.model import Frame, Stratum
 from fieldplan.stats.patches import Patch
@@ -24,6 +24,13 @@ CENTRES = 256
 MOST_NODES = 50_000
 BATCH = 60_000
 """Nodes laid at a time."""
+MOST_LAID = 1_000_000
+"""Nodes laid in all to find starts with the exact count."""
+FEWEST = 16
+"""Starts with the exact count below which starts with any count are averaged."""
+TURNS = 4
+"""Directions of the patch within each start, where its direction is unknown."""
+_GOLDEN = 0.6180339887498949
 
 
 @dataclass(frozen=True)
@@ -45,8 +52,8 @@ class GridStarts:
 
     Notes
     -----
-    As the layout draws, but for the rounding of places to the centimetre. Each start meets patch
-    centres of its own; the standard error is that of the starts.
+    As the layout draws, but for the rounding of places to the centimetre, and with starts that
+    are spread evenly. Each meets patch centres of its own.
     """
 
     frame: Frame
@@ -81,27 +88,32 @@ class GridStarts:
         """Distance from each centre to the nearest node, 1 on the patch's edge; (starts, k)."""
         if counts in self._known:
             return self._known[counts]
-        from scipy.spatial import KDTree
-
         starts, exact = [], True
         for number, stratum in enumerate(self.frame.strata):
             found, as_asked = self._starts(number, stratum, counts[number])
             starts.append(found)
             exact = exact and as_asked
-        rows = []
-        for number, several in enumerate(zip(*starts, strict=False)):
-            block = self._centres.block(number, CENTRES)
-            angle = self._angle(number)
-            tree = KDTree(self._stretched(np.concatenate(several), angle))
-            rows.append(tree.query(self._stretched(self._centres.places[block], angle))[0])
+        rows = [
+            self._one_start(number, np.concatenate(several))
+            for number, several in enumerate(zip(*starts, strict=False))
+        ]
         self._known[counts] = np.array(rows), exact
         return self._known[counts]
 
-    def _angle(self, number: int) -> float:
-        """Direction of the patch at this start, in radians."""
-        if self.direction is not None:
-            return math.radians(self.direction)
-        return math.pi * ((0.5 + number * 0.6180339887498949) % 1.0)
+    def _one_start(self, number: int, nodes: Numbers) -> Numbers:
+        """Distance from each centre of this start's block to the nearest node."""
+        from scipy.spatial import KDTree
+
+        block = self._centres.places[self._centres.block(number, CENTRES)]
+        turning = self._centres.turning
+        found = []
+        for part, places in enumerate(np.array_split(block, TURNS) if turning else [block]):
+            angle = math.radians(self.direction or 0.0)
+            if turning:
+                angle = math.pi * ((0.5 + (number * TURNS + part) * _GOLDEN) % 1.0)
+            tree = KDTree(self._stretched(nodes, angle))
+            found.append(tree.query(self._stretched(places, angle))[0])
+        return np.concatenate(found)
 
     def _stretched(self, places: Numbers, angle: float) -> Numbers:
         """Turn and stretch the plane so that the patch becomes a circle of radius 1."""
@@ -120,16 +132,15 @@ class GridStarts:
             )
             raise DesignError(message)
         wanted = int(min(STARTS, max(8, 400_000 // count)))
-        uniforms = Stream(1, "patch", stratum.name, "starts").uniforms(3 * MOST_TRIES)
         any_count: list[Numbers] = []
         kept: list[Numbers] = []
         polygon, side = polygons_of(self.frame)[number], self.grid.spacing(stratum.measure, count)
-        for several in _laid(polygon, self.grid, side, uniforms.reshape(-1, 3)):
+        for several in _laid(polygon, self.grid, side, even_starts(stratum.name, MOST_TRIES)):
             any_count += [nodes for nodes in several if len(nodes) >= 2]
             kept += [nodes for nodes in several if len(nodes) == count]
             if len(kept if self.exact_count else any_count) >= wanted:
                 break
-        exact = self.exact_count and len(kept) >= 2
+        exact = self.exact_count and len(kept) >= min(FEWEST, wanted)
         chosen = (kept if exact else any_count)[:wanted]
         return self._thinned(number, stratum, chosen), exact or not self.exact_count
 
@@ -142,6 +153,36 @@ class GridStarts:
         return [nodes[stream.uniforms(len(nodes)) >= loss] for nodes in starts]
 
 
+def even_starts(name: str, count: int) -> Numbers:
+    """Give origins and turns of so many starts, spread evenly over all there may be.
+
+    Parameters
+    ----------
+    name : str
+        The stratum; those of another name come in another order.
+    count : int
+
+    Returns
+    -------
+    ndarray, shape (count, 3)
+        Along and across the rows, and turn, as shares of 1.
+
+    Notes
+    -----
+    Multiples of three irrational steps from a random first start, modulo 1 (Niederreiter 1992),
+    in random order. Even starts scatter less than independent ones, so the standard error that is
+    computed as if they were independent is on the careful side.
+
+    Examples
+    --------
+    >>> even_starts("site", 2).shape
+    (2, 3)
+    """
+    first = Stream(1, "patch", name, "first start").uniforms(3)
+    order = np.array(Stream(1, "patch", name, "order of starts").permutation(count))
+    return np.asarray((first + order[:, None] * STEPS) % 1.0)
+
+
 def _laid(
     polygon: BaseGeometry, grid: Grid, side: float, uniforms: Numbers
 ) -> Iterator[list[Numbers]]:
@@ -151,7 +192,7 @@ def _laid(
     rows = 2 * math.ceil(box.reach / (side * grid.row_distance)) + 3
     per_start = 2 * rows + 2 * box.area / (side * side * grid.row_distance)
     batch = max(1, int(BATCH / per_start))
-    for first in range(0, len(uniforms), batch):
+    for first in range(0, min(len(uniforms), math.ceil(MOST_LAID / per_start)), batch):
         start, places = box.nodes(grid, side, uniforms[first : first + batch])
         inside = shapely.contains_xy(polygon, places[:, 0], places[:, 1])
         ends = np.searchsorted(start[inside], np.arange(1, len(uniforms[first : first + batch])))

@@ -1,6 +1,7 @@
 """The smallest patch that must not be missed: how many locations, and what a number finds."""
 
 import math
+from collections.abc import Callable
 from dataclasses import replace
 
 from fieldplan.base.errors import DesignError
@@ -11,8 +12,8 @@ from fieldplan.sizing.asked.patch_ground import LATTICES, PatchQuestion, patch_q
 from fieldplan.sizing.asked.patch_words import (
     SOURCES,
     asked_for,
-    beyond,
     assumptions,
+    beyond,
     ground_words,
     off_words,
     patch_words,
@@ -103,9 +104,9 @@ def _counted(question: PatchQuestion, counts: tuple[int, ...]) -> str:
 def _fewest(question: PatchQuestion, start: int) -> int:
     """Find the fewest results that keep the probability.
 
-    Random places have a closed form, so every number is tried. A grid is followed by scaling: n
-    locations find a patch as often as n·f² find one that is f times as small. A step is one
-    location, or one in 200.
+    Random places have a closed form, so the search is exact. A grid is followed by scaling: on a
+    field n locations find a patch as often as n·f² find one that is f times as small, on a strip
+    as often as n·f. The last steps are one location, or one in 200.
     """
     asked, least = question.asked, sum(question.asked.question.strata.floors)
 
@@ -119,17 +120,44 @@ def _fewest(question: PatchQuestion, start: int) -> int:
         if total == MOST and not fits(total):
             raise DesignError(beyond(question, MOST))
         return total
-    total = max(start, least)
-    for _ in range(2):
+    return _settled(fits, _scaled_guess(question, max(start, least)), least)
+
+
+def _scaled_guess(question: PatchQuestion, start: int) -> int:
+    """Follow the scale that n locations find with the probability to the patch asked about."""
+    asked, least = question.asked, sum(question.asked.question.strata.floors)
+
+    def excess(total: int) -> float:
         counts = question.laid(asked.shared(total))
         scale = question.chances.smallest_scale(counts, question.table.probability)
-        total = max(math.ceil(total * (scale / question.reach) ** 2), least)
-    step = max(1, total // 200)
-    while not fits(total):
-        total += step
-    while total - step >= least and fits(total - step):
-        total -= step
-    return total
+        return math.log(scale / question.reach)
+
+    first = excess(start)
+    second_n = max(math.ceil(start * math.exp(2 * first)), least)
+    if second_n == start:
+        return start
+    second = excess(second_n)
+    rise = (second - first) / math.log(second_n / start)
+    slope = min(max(-rise, 0.3), 1.5)  # one half on a field, 1 on a strip
+    return max(math.ceil(second_n * math.exp(second / slope)), least)
+
+
+def _settled(fits: Callable[[int], bool], guess: int, least: int) -> int:
+    """Walk from a guess to a number that fits while the next smaller one does not."""
+    step = max(1, guess // 200)
+    if fits(guess):
+        good, bad = guess, guess - step
+        while bad >= least and fits(bad):
+            good, bad, step = bad, bad - 2 * step, 2 * step
+        bad = max(bad, least - 1)
+    else:
+        good, bad = guess + step, guess
+        while not fits(good):
+            good, bad, step = good + 2 * step, good, 2 * step
+    while good - bad > max(1, good // 200):
+        middle = (good + bad) // 2
+        good, bad = (middle, bad) if fits(middle) else (good, middle)
+    return good
 
 
 def _finding(question: PatchQuestion, counts: tuple[int, ...]) -> Finding:

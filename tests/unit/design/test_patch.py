@@ -168,7 +168,7 @@ def test_smallest_patch_has_the_chance_that_was_asked_for(layout: str) -> None:
     """By definition; a scale smaller by a hundredth has less."""
     chances = patch_chances(layout, FIELD, LONG)
     scale = chances.smallest_scale([20], 0.8)
-    assert chances.chance([20], scale=scale * 1.001).chance >= 0.8 - 1e-6
+    assert chances.chance([20], scale=scale * 1.001).chance >= 0.8 - 1e-4
     assert chances.chance([20], scale=scale * 0.99).chance < 0.8
 
 
@@ -194,7 +194,7 @@ def test_long_strip_takes_no_longer_than_a_field() -> None:
     """2 km by 1 m: rows are cut to the strip, which lays 4 million nodes a start otherwise."""
     strip = area_frame(site=shapely.box(0, 0, 2000, 1))
     found = patch_chances("square-grid", strip, Patch(1.0, 1.0)).chance([2000])
-    assert found.starts > 100
+    assert found.starts >= 16
     assert found.chance < chance_on_grid(Patch(1.0, 1.0), 1.0)
 
 
