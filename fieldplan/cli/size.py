@@ -23,7 +23,7 @@ from fieldplan.cli.typed_numbers import BareNumbers
 if TYPE_CHECKING:
     from collections.abc import Collection
 
-    from fieldplan.sizing.model import Size
+    from fieldplan.sizing.model import Size, StratumSize
 
 
 @click.command("size")
@@ -167,19 +167,7 @@ def as_mapping(answer: "Size") -> dict[str, Any]:
         "confidence": answer.confidence,
         "interval": answer.interval,
         "unit": answer.unit,
-        "strata": [
-            {
-                "stratum": entry.stratum,
-                "weight": entry.weight,
-                "sigma": entry.sigma,
-                "n": entry.needed,
-                "locations": entry.planned,
-                "alternates": entry.alternates,
-                "population": entry.population,
-                "floor_applied": entry.floor_applied,
-            }
-            for entry in answer.strata
-        ],
+        "strata": [_stratum(entry) for entry in answer.strata],
         "qc": answer.qc,
         "cost": answer.cost,
         "currency": answer.currency,
@@ -189,6 +177,19 @@ def as_mapping(answer: "Size") -> dict[str, Any]:
         "conditions": answer.conditions,
         "steps": answer.steps,
         "curve": answer.curve,
+    }
+
+
+def _stratum(entry: "StratumSize") -> dict[str, Any]:
+    return {
+        "stratum": entry.stratum,
+        "weight": entry.weight,
+        "sigma": entry.sigma,
+        "n": entry.needed,
+        "locations": entry.planned,
+        "alternates": entry.alternates,
+        "population": entry.population,
+        "floor_applied": entry.floor_applied,
     }
 
 

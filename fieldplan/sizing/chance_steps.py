@@ -101,7 +101,6 @@ def _behind(question: Question, chosen: tuple[int, ...]) -> Iterator[Step]:
         inputs=tuple(_terms(question, chosen, terms)),
         unrounded=known,
         rounded=known,
-        unit="",
         source="Satterthwaite 1946, Biometrics Bulletin 2:110",
     )
     luck = precision.luck_of_allocation(chosen)
