@@ -142,10 +142,11 @@ def _cost(question: Question, counts: Counts) -> Iterator[Step]:
         aimed = (Quantity("targeted", "places chosen by judgement", question.targeted, "places"),)
     jar, jars, more, days = _jars_and_days(prices, visits + question.targeted)
     beyond, extra = _beyond_common_prices(question, counts)
+    each = f"{places} · (visit + {jar})"
     yield Step(
         symbol="cost",
         meaning="Cost of the round",
-        formula=f"cost = mobilisation + {places} · (visit + {jar}) + controls · {jars}{days}{beyond}",
+        formula=f"cost = mobilisation + {each} + controls · {jars}{days}{beyond}",
         inputs=(
             Quantity("mobilisation", "once", prices.mobilisation, prices.currency),
             Quantity("locations", "locations to visit", visits, "locations"),
