@@ -1,6 +1,7 @@
 """``fieldplan size`` asked about a patch, by options and by a campaign file."""
 
 import json
+import math
 import shutil
 from pathlib import Path
 
@@ -31,7 +32,8 @@ def test_json_holds_the_chance_and_the_smallest_patch() -> None:
     amounts = {a["name"]: a["value"] for a in found["findings"]["smallest-patch"]["amounts"]}
     assert (found["question"], found["n"]) == ("smallest-patch", 28)
     assert 0.95 <= amounts["chance_of_hitting"] < 0.955
-    assert amounts["smallest_length_m"] == pytest.approx(40, abs=0.5)
+    by_hand = 2 * math.sqrt(12_000 * (1 - 0.05 ** (1 / 28)) / math.pi)
+    assert amounts["smallest_length_m"] == pytest.approx(by_hand, rel=1e-3)
     assert amounts["endless_square_grid"] < 28
 
 
