@@ -27,8 +27,10 @@ from fieldplan.sizing.words import counted, figure, percent, typed, typed_percen
 from fieldplan.stats.precision import MOST, meets, smallest
 
 TITLE = "The smallest patch that must not be missed"
-_SCALES = (0.4, 0.6, 0.8, 1.0, 1.25, 1.5, 2.0)
+_SCALES = (0.4, 0.5, 0.6, 0.7, 0.8, 0.9, 1.0, 1.2, 1.5, 2.0)
 """Sizes of the picture, as shares of the patch asked about."""
+_ROWS = (0.4, 0.6, 0.8, 1.0, 1.2, 1.5, 2.0)
+"""Those of the table."""
 
 
 def count(asked: Asked) -> Answered:
@@ -181,7 +183,7 @@ def _finding(question: PatchQuestion, counts: tuple[int, ...]) -> Finding:
         columns=("length, m", "width, m", "chance of hitting"),
         rows=tuple(
             (figure(p.length), figure(p.width), percent(c))
-            for p, c in ((question.patch.scaled(s), c) for s, c in curve)
+            for p, c in ((question.patch.scaled(s), c) for s, c in curve if s in _ROWS)
         ),
         steps=(_chance_step(question, counts, kept),),
         assumptions=assumptions(question, kept),
@@ -233,7 +235,9 @@ def _amounts(
     if patch and patch.length > patch.width:
         found.append(Amount("smallest_width_m", "Its width", patch.width, "m"))
     if spacing is not None:
-        found.append(Amount("spacing_m", "Spacing of the grid", spacing, "m"))
+        several = len(question.areas) > 1
+        words = "Spacing of the finest grid" if several else "Spacing of the grid"
+        found.append(Amount("spacing_m", words, spacing, "m"))
     for layout, words in (
         ("square-grid", "a square grid"),
         ("triangular-grid", "a triangular grid"),
@@ -278,11 +282,14 @@ def _endless_step(question: PatchQuestion, endless: float) -> Step:
         formula, source = "n = ln(1 − P) / ln(1 − a' / A)", "geometric distribution"
     else:
         lattice = LATTICES[layout]
+        part = "that part of the patch" if question.error_m else "the patch"
         widest = math.sqrt((question.asked.area_m2 or 0.0) / (lattice.row_distance * endless))
         inputs = (
             area,
             Quantity("k", "distance between rows for a spacing of 1", lattice.row_distance),
-            Quantity("G", f"spacing at which the patch is hit with {asked_for(question)}", widest),
+            Quantity(
+                "G", f"spacing at which {part} is hit with {asked_for(question)}", widest, "m"
+            ),
         )
         formula, source = "n = A / (k G²)", SOURCES[0]
     return Step(
@@ -293,10 +300,17 @@ def _endless_step(question: PatchQuestion, endless: float) -> Step:
 
 def _chance_step(question: PatchQuestion, counts: tuple[int, ...], found: PatchChance) -> Step:
     names = [part.name for part in question.asked.question.parts]
+    words = "results" if question.lattice is None else "locations laid"
     inputs = tuple(
-        Quantity("n" if len(names) == 1 else f"n({name})", "results", float(n))
-        for name, n in zip(names, counts, strict=True)
+        Quantity("n" if len(names) == 1 else f"n({name})", words, float(n))
+        for name, n in zip(names, question.laid(counts), strict=True)
     )
+    if question.lattice is not None:
+        inputs += tuple(
+            Quantity(f"loss({name})", "share of them that yields nothing", loss)
+            for name, loss in zip(names, question.losses, strict=True)
+            if loss
+        )
     if question.asked.frame is None:
         formula = "P = Σ W · share of the ground within the patch about the locations"
     elif question.lattice is None:

@@ -255,7 +255,7 @@ def test_table_and_picture_rise_with_the_size_of_the_patch() -> None:
     picture = found.picture
     assert picture is not None
     assert list(picture.series[0].y) == sorted(picture.series[0].y)
-    assert len(found.rows) == len(picture.series[0].x) == 7
+    assert (len(found.rows), len(picture.series[0].x)) == (7, 10)
     coarse = bought(in_field("square-grid", accuracy=4.0, **OVAL), (20,))
     assert len(coarse.rows) == 5
 
