@@ -192,7 +192,7 @@ def _chosen(
         return _most_precise(asked)
     if isinstance(design.replicates, int):
         return _fewest(asked, design.replicates)
-    return _cheapest(asked)
+    return _cheapest(asked, campaign.cost.per_increment if campaign.cost else 0.0)
 
 
 def _most_precise(asked: "Callable[[int], Question]") -> int:
@@ -230,29 +230,33 @@ def _fewest(asked: "Callable[[int], Question]", replicates: int) -> int:
     return smallest(enough, 1, MOST_CHOSEN, back=0)
 
 
-def _cheapest(asked: "Callable[[int], Question]") -> int:
+def _cheapest(asked: "Callable[[int], Question]", price: float) -> int:
     """Find the increments of the cheapest design; of equal cost the one of fewest composites.
 
-    Composites needed fall as increments rise, so only the smallest number of increments of each
-    number of composites can be best: numbers between two that need as many are passed over.
+    Composites needed fall as increments rise. So between two numbers of increments none costs
+    less than the composites of the larger with the increments of the smaller, and where that is
+    more than the best found, or both need as many, nothing between them is looked at.
     """
     from fieldplan.sizing.counting import count, total_cost
 
     found: dict[int, tuple[int, float]] = {}
 
-    def look(increments: int) -> int:
-        if increments not in found:
-            question = asked(increments)
-            planned = count(question).planned
-            found[increments] = sum(planned), total_cost(question, planned) or 0.0
-        return found[increments][0]
+    def look(increments: int) -> None:
+        question = asked(increments)
+        planned = count(question).planned
+        found[increments] = sum(planned), total_cost(question, planned) or 0.0
 
     def between(low: int, high: int) -> None:
-        if high - low > 1 and look(low) != look(high):
-            middle = (low + high) // 2
-            look(middle)
-            between(low, middle)
-            between(middle, high)
+        if high - low < 2 or found[low][0] == found[high][0]:
+            return
+        composites, cost = found[high]
+        least = cost - composites * price * (high - low - 1)
+        if least > min(cost for _, cost in found.values()) * (1 + 1e-9):
+            return
+        middle = (low + high) // 2
+        look(middle)
+        between(low, middle)
+        between(middle, high)
 
     look(1)
     look(MOST_CHOSEN)
