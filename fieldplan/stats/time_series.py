@@ -91,8 +91,9 @@ def effective_number(n: float, rho: float) -> float:
     if not n >= 1:
         message = f"an effective number needs 1 visit or more, not {n!r}."
         raise DesignError(message)
-    ends = 2 * rho * (1 - rho**n) / (n * (1 - rho) ** 2)
-    return n / ((1 + rho) / (1 - rho) - ends)
+    faded = abs(rho) ** n * (-1 if rho < 0 and n % 2 == 1 else 1)
+    ends = 2 * rho * (1 - faded) / (n * (1 - rho) * (1 - rho))
+    return float(n / ((1 + rho) / (1 - rho) - ends))
 
 
 def effective_number_of_lags(n: int, correlations: Sequence[float]) -> float:

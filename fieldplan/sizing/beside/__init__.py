@@ -15,6 +15,7 @@ if TYPE_CHECKING:
     from fieldplan.sizing.model import Finding, Size
 
 QUICK: tuple[str, ...] = (
+    "deciding-analytes",
     "two-phase",
     "being-wrong",
     "patch",
@@ -23,13 +24,16 @@ QUICK: tuple[str, ...] = (
     "ranked-sets",
     "near-normal",
     "non-detects",
+    "time",
 )
 """Topics in the order of the sheet; ``near-normal`` stands in ``near_normal.py``."""
 
 THOROUGH: tuple[str, ...] = (
+    "strata",
     "two-stages",
     "frontier",
     "mean-band",
+    "space",
 )
 """Topics that take up to 2 s."""
 

@@ -1,0 +1,280 @@
+"""The pilot on the map: what a layout spread over the site would save, and bunched pilots."""
+
+import math
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from fieldplan.base.errors import DesignError
+from fieldplan.sizing.asked.model import Asked
+from fieldplan.sizing.beside.space_words import (
+    ASSUMPTIONS,
+    LAYOUTS,
+    LIKELIHOOD,
+    MATERN,
+    MATHERON,
+    THIESSEN,
+    leaning_words,
+    prediction_steps,
+    saving_words,
+    small_words,
+    spread_picture,
+    spread_warnings,
+)
+from fieldplan.sizing.model import Amount, Finding, Size
+from fieldplan.sizing.pilot_ground import PilotGround, cells_of, pilot_ground
+from fieldplan.sizing.visits import ABOUT_MEANS
+from fieldplan.sizing.words import figure, with_unit
+from fieldplan.stats.pilot_places import (
+    area_weights,
+    is_bunched,
+    slope_share,
+    weighed_spread,
+    worth_of_weights,
+)
+from fieldplan.stats.spatial import FEWEST_PLACES, Field, weigh_field
+from fieldplan.stats.spread_layouts import layout_variance, n_for_layout, random_variance
+from fieldplan.stats.summary import sample_skewness
+
+if TYPE_CHECKING:
+    from fieldplan.frame.model import Frame
+
+TITLE = "Results near each other"
+FEWEST_TO_SPEAK = 8
+"""Fewer places on a map say nothing, not even that they are bunched (house rule)."""
+LEANING = 1.0
+"""Above this skewness the prediction is withheld: of lognormal fields of coefficient of variation
+1.3 it caught 83 to 93 in 100 pilots of 30, of normal fields 1 in 100 (measured, see the docs)."""
+SLOPING = 0.4
+"""Share of the variance on a straight slope above which a slope is named (measured)."""
+
+
+@dataclass(frozen=True)
+class Predicted:
+    """What was predicted for one site.
+
+    Parameters
+    ----------
+    field : Field
+    area : float
+        Square metres.
+    target : float
+        Standard error that all layouts keep.
+    assurance : float
+    slope : float
+        Share of the pilot's variance on a straight slope.
+    random_ratio : float
+        Standard error of random places by the curves over s/√n.
+    """
+
+    field: Field
+    area: float
+    target: float
+    assurance: float
+    slope: float
+    random_ratio: float
+
+    def needed(self, layout: str, *, sure: bool = False) -> int | None:
+        """Count the places of a layout; None where none keeps the target."""
+        try:
+            return n_for_layout(
+                self.field,
+                self.target,
+                layout=layout,  # type: ignore[arg-type]
+                area=self.area,
+                assurance=self.assurance if sure else None,
+            )
+        except DesignError:
+            return None
+
+    def standard_error(self, layout: str, n: int) -> float:
+        """Predict the standard error of n places."""
+        variance = layout_variance(self.field, n, layout=layout, area=self.area)  # type: ignore[arg-type]
+        return math.sqrt(variance)
+
+
+def finding(asked: Asked, size: Size) -> Finding | None:
+    """Say what the pilot's positions tell: what spreading saves, and whether they are bunched.
+
+    Parameters
+    ----------
+    asked : Asked
+    size : Size
+
+    Returns
+    -------
+    Finding or None
+        None for a list, where no mean is asked for, and where fewer than 8 pilot results have a
+        position or one of them has none.
+    """
+    frame = asked.frame
+    if frame is None or frame.kind != "area" or size.question not in ABOUT_MEANS:
+        return None
+    ground = pilot_ground(asked.entries, frame) if asked.sigma_known else None
+    if ground is None or len(ground.values) < FEWEST_TO_SPEAK or not size.standard_error:
+        return None
+    bunched = _bunched(asked, ground)
+    if len(ground.values) < FEWEST_PLACES:
+        return _refused(small_words(len(ground.values)), bunched)
+    lean = sample_skewness(ground.values.tolist())
+    if lean > LEANING:
+        return _refused(leaning_words(lean, len(ground.values)), bunched)
+    spread = _predicted(frame, size, ground)
+    return None if spread is None else _spread_finding(asked, size, spread, bunched)
+
+
+def _refused(answer: str, bunched: list[tuple[str, tuple[Amount, ...]]]) -> Finding:
+    return Finding(
+        topic="space",
+        title=TITLE,
+        answer=answer,
+        amounts=tuple(amount for _, amounts in bunched for amount in amounts),
+        warnings=tuple(line for line, _ in bunched),
+        sources=(THIESSEN,) if bunched else (),
+    )
+
+
+def _predicted(frame: "Frame", size: Size, ground: PilotGround) -> Predicted | None:
+    """Weigh the curves and compare with what the plan keeps; None where nothing varies."""
+    import shapely
+
+    site = shapely.union_all([s.geometry for s in frame.strata if s.geometry is not None])
+    cells = cells_of(site)
+    try:
+        field = weigh_field(ground.places, ground.values, extent=cells.extent)
+    except DesignError:
+        return None
+    target = size.target_standard_error or size.standard_error or 0.0
+    plain = float(ground.values.std(ddof=1)) / math.sqrt(2)
+    random = math.sqrt(random_variance(field, 2, cells=cells.centres, cell_side=cells.side))
+    return Predicted(
+        field=field,
+        area=cells.area,
+        target=target,
+        assurance=size.assurance or 0.80,
+        slope=slope_share(ground.places, ground.values),
+        random_ratio=random / plain,
+    )
+
+
+def _spread_finding(
+    asked: Asked, size: Size, spread: Predicted, bunched: list[tuple[str, tuple[Amount, ...]]]
+) -> Finding:
+    rows = tuple(
+        _row(label, layout, size, spread)
+        for layout, label in LAYOUTS.items()
+        if _told(layout, spread)
+    )
+    needed, sure = spread.needed("compact-strata"), spread.needed("compact-strata", sure=True)
+    planned = _planned_row(size, spread)
+    return Finding(
+        topic="space",
+        title=TITLE,
+        answer=saving_words(asked, size, spread),
+        amounts=(
+            Amount(
+                "practical_range_m",
+                "Distance at which 5 % of the likeness is left",
+                spread.field.typical_range,
+                "m",
+            ),
+            Amount(
+                "nugget_share",
+                "Share of the variance that not even neighbours share",
+                spread.field.typical_nugget,
+            ),
+            Amount(
+                "compact_strata_n",
+                "Places in compact parts for the same standard error",
+                needed,
+                "places",
+            ),
+            Amount(
+                "compact_strata_n_assured",
+                f"The same with {spread.assurance:.0%} assurance".replace("%", " %"),
+                sure,
+                "places",
+            ),
+            Amount("slope_share", "Share of the variance on a straight slope", spread.slope),
+            *(amount for _, amounts in bunched for amount in amounts),
+        ),
+        columns=(
+            "layout",
+            "places for the same standard error",
+            f"with {spread.assurance:.0%} assurance".replace("%", " %"),
+            f"standard error of {size.needed}",
+        ),
+        rows=(planned, *rows),
+        steps=prediction_steps(asked, spread, needed or size.needed),
+        assumptions=ASSUMPTIONS,
+        warnings=(*spread_warnings(spread), *(line for line, _ in bunched)),
+        sources=(LIKELIHOOD, MATERN, MATHERON, *((THIESSEN,) if bunched else ())),
+        picture=spread_picture(asked, size, spread),
+    )
+
+
+def _told(layout: str, spread: Predicted) -> bool:
+    """Leave grids out under a slope, where their prediction was a fifth too small."""
+    return not (layout.endswith("-grid") and spread.slope > SLOPING)
+
+
+def _planned_row(size: Size, spread: Predicted) -> tuple[str, ...]:
+    sure = next((a.n for a in size.assured if abs(a.assurance - spread.assurance) < 1e-9), None)
+    error = figure(size.standard_error or 0.0)
+    return ("as planned", str(size.plain_n), "–" if sure is None else str(sure), error)
+
+
+def _row(label: str, layout: str, size: Size, spread: Predicted) -> tuple[str, ...]:
+    counts = (spread.needed(layout), spread.needed(layout, sure=True))
+    error = spread.standard_error(layout, max(size.needed, 2))
+    return (label, *("–" if n is None else str(n) for n in counts), figure(error))
+
+
+def _bunched(asked: Asked, ground: PilotGround) -> list[tuple[str, tuple[Amount, ...]]]:
+    """Weigh the places of every stratum whose pilot is bunched; a sentence and numbers each."""
+    found = []
+    frame = asked.frame
+    for stratum in frame.strata if frame is not None else ():
+        own = ground.within(stratum.name)
+        if stratum.geometry is None or len(own.values) < FEWEST_TO_SPEAK:
+            continue
+        cells = cells_of(stratum.geometry)
+        if len(cells.centres) < len(own.values) or not is_bunched(own.places, cells.centres):
+            continue
+        weights = area_weights(own.places, cells.centres)
+        if np.count_nonzero(weights) < 2:
+            continue
+        mean, sigma = weighed_spread(own.values, weights)
+        found.append(
+            _bunched_words(asked, stratum.name, own, worth_of_weights(weights), (mean, sigma))
+        )
+    return found
+
+
+def _bunched_words(
+    asked: Asked, stratum: str, own: PilotGround, worth: float, weighed: tuple[float, float]
+) -> tuple[str, tuple[Amount, ...]]:
+    unit = asked.question.unit
+    where = "" if len(asked.question.parts) == 1 else f" of {stratum}"
+    mean, sigma = (with_unit(figure(value), unit) for value in weighed)
+    plain = with_unit(figure(float(own.values.mean())), unit)
+    s = with_unit(figure(float(own.values.std(ddof=1))), unit)
+    line = (
+        f"The pilot's {len(own.values)} places{where} are bunched; by area they are worth "
+        f"{worth:.1f} even ones. Weighed by the area nearest to each, their mean is {mean} instead "
+        f"of {plain} and s is {sigma} instead of {s}; n takes the unweighed s. Take new places "
+        "between them, or say in [[sigma]] which s is fair and why."
+    )
+    ending = "" if len(asked.question.parts) == 1 else f"_{stratum}"
+    return line, (
+        Amount(
+            f"worth{ending}", f"Even places that the pilot{where} is worth by area", worth, "places"
+        ),
+        Amount(
+            f"weighed_mean{ending}", f"Mean of the pilot{where} weighed by area", weighed[0], unit
+        ),
+        Amount(
+            f"weighed_sigma{ending}", f"s of the pilot{where} weighed by area", weighed[1], unit
+        ),
+    )

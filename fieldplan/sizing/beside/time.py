@@ -1,0 +1,366 @@
+"""Visits to one place: how far they resemble each other, and what n of them are worth."""
+
+import math
+from typing import TYPE_CHECKING
+
+from fieldplan.base.working import Step
+from fieldplan.sizing.asked.model import Asked
+from fieldplan.sizing.beside.time_words import (
+    BAYLEY,
+    MARRIOTT,
+    carried_step,
+    factor_step,
+    pilot_assumptions,
+    raised_step,
+    visit_assumptions,
+    worth_step,
+)
+from fieldplan.sizing.model import Amount, Finding, Picture, Series, Size
+from fieldplan.sizing.visit_series import VisitSeries, series_of
+from fieldplan.sizing.visits import ABOUT_MEANS
+from fieldplan.sizing.words import counted, figure, percent, with_unit
+from fieldplan.stats.time_series import (
+    effective_number,
+    inflation,
+    rho_at,
+    visits_by_inflation,
+    visits_needed,
+)
+
+if TYPE_CHECKING:
+    from fieldplan.lab.model import StratumSpread
+    from fieldplan.stats.series_correlation import SeriesCorrelation
+
+TITLE = "Visits that resemble each other"
+LIST_OF_DAYS = (
+    "Where the list holds all days that the mean shall speak for, and days are drawn at random "
+    "from it, correlation costs nothing: leave correlation_between_visits out."
+)
+_SPACINGS = (0.5, 1.0, 2.0, 3.0, 4.0, 6.0)
+"""Times the planned days between visits."""
+
+
+def finding(asked: Asked, size: Size) -> Finding | None:
+    """Say what n visits in a row are worth, by the campaign's correlation or by the pilot's.
+
+    Parameters
+    ----------
+    asked : Asked
+    size : Size
+
+    Returns
+    -------
+    Finding or None
+        None where no mean is asked for, a whole list is visited, and where neither the campaign
+        declares a correlation nor the pilot is a series of dated visits to one place.
+    """
+    if size.question not in ABOUT_MEANS or not asked.sigma_known or asked.question.census:
+        return None
+    entries = asked.entries
+    series = series_of(entries)
+    seen = series.correlation() if series else None
+    if any(entry.visits is not None for entry in entries):
+        return _declared(asked, size, seen)
+    if series is None or seen is None:
+        return None
+    return _of_pilot(asked, size, series, seen)
+
+
+def _declared(asked: Asked, size: Size, seen: "SeriesCorrelation | None") -> Finding:
+    """Say what the visits that n counts are worth."""
+    worth = {
+        entry.stratum: _worth(entry, stratum.needed)
+        for entry, stratum in zip(asked.entries, size.strata, strict=True)
+    }
+    first = next(entry for entry in asked.entries if entry.visits is not None)
+    rows = _spacing_rows(first, size) if len(size.strata) == 1 else _stratum_rows(asked, size)
+    columns = (
+        "days between visits",
+        "correlation",
+        "visits for the same precision",
+        "from first to last",
+    )
+    if len(size.strata) > 1:
+        columns = ("stratum", "correlation", "visits", "worth independent visits")
+    return Finding(
+        topic="time",
+        title=TITLE,
+        answer=(
+            f"{counted(size.needed, 'visit')} tell as much of the long-run mean as "
+            f"{figure(sum(worth.values()))} independent ones would: neighbouring visits resemble "
+            f"each other by {_rhos(asked)}."
+        ),
+        amounts=_amounts(asked, size, sum(worth.values())),
+        columns=columns if rows else (),
+        rows=rows,
+        steps=_steps(asked, size),
+        assumptions=visit_assumptions(asked),
+        warnings=_warnings(asked, seen),
+        sources=(BAYLEY,),
+        picture=_picture(first, size) if len(size.strata) == 1 else None,
+    )
+
+
+def _worth(entry: "StratumSpread", visits: int) -> float:
+    rho = entry.visits.planned_rho if entry.visits else 0.0
+    return effective_number(visits, rho)
+
+
+def _rhos(asked: Asked) -> str:
+    """Name the correlations of all strata that have one."""
+    found = [
+        (f"{entry.visits.planned_rho:.2g}", entry.stratum)
+        for entry in asked.entries
+        if entry.visits
+    ]
+    if len({rho for rho, _ in found}) == 1:
+        return found[0][0]
+    return ", ".join(f"{rho} in {name}" for rho, name in found)
+
+
+def _independent(entry: "StratumSpread", size: Size) -> float:
+    """Give the independent visits that the target asks for, or that n is worth without one."""
+    if size.unrounded is not None and size.needed == size.plain_n and entry.visits is not None:
+        return size.unrounded / inflation(entry.visits.planned_rho)
+    rho = entry.visits.planned_rho if entry.visits else 0.0
+    return size.needed / inflation(rho)
+
+
+def _amounts(asked: Asked, size: Size, worth: float) -> tuple[Amount, ...]:
+    found = [
+        Amount("visits", "Visits that n counts", size.needed, "visits"),
+        Amount("worth", "Independent visits that they are worth, ends counted", worth, "visits"),
+    ]
+    if len(size.strata) > 1:
+        return tuple(found)
+    entry = asked.entries[0]
+    rho = entry.visits.planned_rho if entry.visits else 0.0
+    independent = _independent(entry, size)
+    return (
+        Amount("rho", "Correlation of neighbouring planned visits", rho),
+        Amount("factor", "Visits for one independent visit, (1 + ρ)/(1 − ρ)", inflation(rho)),
+        *found,
+        Amount("independent", "Independent visits asked for", independent, "visits"),
+        Amount(
+            "visits_by_factor",
+            "Visits by the factor",
+            visits_by_inflation(independent, rho),
+            "visits",
+        ),
+        Amount(
+            "visits_ends_counted",
+            "Visits by the whole sum, the two ends of the series counted",
+            visits_needed(independent, rho),
+            "visits",
+        ),
+    )
+
+
+def _steps(asked: Asked, size: Size) -> tuple[Step, ...]:
+    steps: list[Step] = []
+    for entry, stratum in zip(asked.entries, size.strata, strict=True):
+        if entry.visits is None:
+            continue
+        if entry.visits.planned_rho != entry.visits.rho:
+            steps.append(carried_step(entry))
+        steps += [factor_step(entry), raised_step(entry, asked), worth_step(entry, stratum.needed)]
+    return tuple(steps)
+
+
+def _warnings(asked: Asked, seen: "SeriesCorrelation | None") -> tuple[str, ...]:
+    """Say where the declared correlation is at odds with the pilot, the list or the estimate."""
+    lines = []
+    for entry in asked.entries:
+        visits = entry.visits
+        if visits is None or seen is None or len(asked.entries) > 1:
+            continue
+        there = visits.rho
+        if visits.days is not None and there >= 0:
+            there = rho_at(there, from_days=visits.days, to_days=seen.spacing_days)
+        if not seen.low <= there <= seen.high:
+            lines.append(
+                f"The pilot's {seen.n} visits speak against the declared {there:.2g}: they show "
+                f"{_interval(seen)} at {figure(seen.spacing_days)} days."
+            )
+    if asked.population is not None:
+        lines.append(f"These visits are sized for the long-run mean. {LIST_OF_DAYS}")
+    lines.append(
+        "The estimate after the laboratory takes results as independent; for visits in a row its "
+        "interval is too narrow, unless the visits are far enough apart by then."
+    )
+    return tuple(lines)
+
+
+def _interval(seen: "SeriesCorrelation") -> str:
+    return f"{seen.rho:.2f} ({percent(seen.confidence)} interval {seen.low:.2f} to {seen.high:.2f})"
+
+
+def _stratum_rows(asked: Asked, size: Size) -> tuple[tuple[str, ...], ...]:
+    return tuple(
+        (
+            entry.stratum,
+            "0" if entry.visits is None else f"{entry.visits.planned_rho:.2g}",
+            str(stratum.needed),
+            figure(_worth(entry, stratum.needed)),
+        )
+        for entry, stratum in zip(asked.entries, size.strata, strict=True)
+    )
+
+
+def _spacings(entry: "StratumSpread", size: Size) -> list[tuple[float, float, int]]:
+    """Give days, correlation and visits for spacings round the planned one."""
+    visits = entry.visits
+    if visits is None or visits.planned_days is None or not visits.planned_rho > 0:
+        return []
+    independent = _independent(entry, size)
+    found = []
+    for times in _SPACINGS:
+        days = times * visits.planned_days
+        rho = rho_at(visits.planned_rho, from_days=visits.planned_days, to_days=days)
+        found.append((days, rho, visits_needed(independent, rho)))
+        if rho < 0.005:
+            break
+    return found
+
+
+def _spacing_rows(entry: "StratumSpread", size: Size) -> tuple[tuple[str, ...], ...]:
+    return tuple(
+        (figure(days), f"{rho:.2f}", str(n), _span((n - 1) * days))
+        for days, rho, n in _spacings(entry, size)
+    )
+
+
+def _span(days: float) -> str:
+    return f"{figure(days)} days" if days < 730 else f"{days / 365.25:.1f} years"
+
+
+def _picture(entry: "StratumSpread", size: Size) -> Picture | None:
+    spaced = _spacings(entry, size)
+    if not spaced or entry.visits is None or entry.visits.planned_days is None:
+        return None
+    return Picture(
+        kind="lines",
+        caption="Visits that keep the same precision, by the days between them.",
+        alternative=f"A falling line from {spaced[0][2]} visits {figure(spaced[0][0])} days apart "
+        f"to {spaced[-1][2]} visits {figure(spaced[-1][0])} days apart.",
+        x_label="days between visits",
+        y_label="visits",
+        series=(
+            Series(
+                "visits",
+                tuple(days for days, _, _ in spaced),
+                tuple(float(n) for _, _, n in spaced),
+            ),
+        ),
+        marks=(("planned", entry.visits.planned_days),),
+    )
+
+
+def _of_pilot(asked: Asked, size: Size, series: VisitSeries, seen: "SeriesCorrelation") -> Finding:
+    """Say what the pilot shows, and what n would be if the campaign counted it."""
+    rho = max(seen.rho, 0.0)
+    independent = size.unrounded or float(size.needed)
+    would = visits_needed(independent, rho)
+    clear = seen.low > 0
+    apart = f"{seen.n} visits of the pilot, usually {figure(seen.spacing_days)} days apart,"
+    if clear:
+        answer = (
+            f"The {apart} resemble their neighbours by {_interval(seen)}. n takes visits as "
+            "independent; so spaced, the same precision of the long-run mean would take "
+            f"{counted(would, 'visit')} instead of {math.ceil(independent - 1e-9)}."
+        )
+    else:
+        answer = (
+            f"The {apart} show no clear correlation: {_interval(seen)}. n takes visits as "
+            "independent."
+        )
+    flow = _classes(asked, series, seen)
+    return Finding(
+        topic="time",
+        title=TITLE,
+        answer=answer,
+        amounts=(
+            Amount("rho", "Correlation of neighbouring visits of the pilot", seen.rho),
+            Amount("rho_low", f"Its lower end, {percent(seen.confidence)}", seen.low),
+            Amount("rho_high", f"Its upper end, {percent(seen.confidence)}", seen.high),
+            Amount(
+                "rho_observed", "Correlation as computed, too low in a short series", seen.observed
+            ),
+            Amount("spacing_days", "Usual days between visits", seen.spacing_days, "days"),
+            Amount("visits_ends_counted", "Visits for the same precision", would, "visits"),
+            Amount(
+                "visits_by_factor",
+                "The same by the factor (1 + ρ)/(1 − ρ)",
+                visits_by_inflation(independent, rho),
+                "visits",
+            ),
+            Amount(
+                "visits_high",
+                "The same at the upper end",
+                visits_needed(independent, max(seen.high, 0.0)),
+                "visits",
+            ),
+        ),
+        columns=("class", "share of the whole", "share of the visits", "mean", "worth visits")
+        if flow
+        else (),
+        rows=flow,
+        assumptions=pilot_assumptions(asked),
+        warnings=_pilot_warnings(asked, series, seen),
+        sources=(MARRIOTT, BAYLEY),
+    )
+
+
+def _pilot_warnings(
+    asked: Asked, series: VisitSeries, seen: "SeriesCorrelation"
+) -> tuple[str, ...]:
+    lines = []
+    if seen.low > 0:
+        lines.append(
+            "Where the campaign is visits to one place, let n count this: write "
+            f"correlation_between_visits = {seen.rho:.2f}, correlation_days = "
+            f"{figure(seen.spacing_days)} and visit_spacing_days into its [[sigma]] table."
+        )
+        if asked.population is not None:
+            lines.append(LIST_OF_DAYS)
+    if line := _uneven_classes(asked, series):
+        lines.append(line)
+    return tuple(lines)
+
+
+def _uneven_classes(asked: Asked, series: VisitSeries) -> str:
+    """Notice visits that bunch in one season or flow: fair weather gives another mean."""
+    parts = [part for part in asked.question.parts if part.mean is not None]
+    if len(parts) < 2 or len(parts) < len(asked.question.parts):
+        return ""
+    shares = {part.name: len(series.days_in(part.name)) / len(series.days) for part in parts}
+    part = max(parts, key=lambda each: shares[each.name] - each.weight)
+    if shares[part.name] - part.weight < 0.10:
+        return ""
+    plain = sum(shares[each.name] * (each.mean or 0.0) for each in parts)
+    weighed = sum(each.weight * (each.mean or 0.0) for each in parts)
+    unit = asked.question.unit
+    return (
+        f"{percent(shares[part.name])} of the pilot's visits fell in {part.name}, which is "
+        f"{percent(part.weight)} of the whole: their plain mean is "
+        f"{with_unit(figure(plain), unit)}, weighed by share {with_unit(figure(weighed), unit)}."
+    )
+
+
+def _classes(
+    asked: Asked, series: VisitSeries, seen: "SeriesCorrelation"
+) -> tuple[tuple[str, ...], ...]:
+    """Set share, visits, mean and worth of every season or flow class; empty for one."""
+    parts = asked.question.parts
+    if len(parts) < 2:
+        return ()
+    return tuple(
+        (
+            part.name,
+            percent(part.weight),
+            percent(len(series.days_in(part.name)) / len(series.days)),
+            figure(part.mean or 0.0),
+            figure(series.worth(part.name, seen.rho, spacing_days=seen.spacing_days)),
+        )
+        for part in parts
+    )
