@@ -1,0 +1,152 @@
+"""A share at or below the level: by counting and by a normal bound."""
+
+import math
+
+import pytest
+from scipy import stats
+
+from fieldplan.base.errors import DesignError
+from fieldplan.sizing.asked.counting_claims import chance_noticed
+from fieldplan.sizing.asked.upper_share import bought, count
+from fieldplan.sizing.question import Part
+from tests.unit.sizing.asked.asked_for import amount, asked_for, listed
+from tests.unit.stats.published import row
+
+HALVES = (Part("a", 0.5, 20.0), Part("b", 0.5, 20.0))
+
+
+@pytest.mark.parametrize(("allowed", "row_id"), [(0, 26), (1, 30), (2, 31), (3, 32)])
+def test_numbers_of_the_table_by_results_allowed(allowed: int, row_id: int) -> None:
+    """Source: Wilks 1941; Natrella 1963: 59, 93, 124, 153 (values.csv, from memory)."""
+    found = count(asked_for("upper-share", share=0.95, allowed=allowed))
+    assert sum(found.needed) == row(f"A04-0{row_id}").exact
+
+
+def test_claim_says_no_more_than_was_shown() -> None:
+    """Confidence, share and population; not the mean, and not every place."""
+    finding = count(asked_for("upper-share", share=0.95)).finding
+    assert finding.answer == (
+        "59 results, none of them above 150 mg/kg, would show with 95 % confidence that at least "
+        "95 % of the site's possible samples do not exceed it."
+    )
+    said = " ".join(finding.warnings)
+    assert "nothing about the mean, nor that no place exceeds 150 mg/kg: up to 5 % may" in said
+    assert "Even where only 1 % exceed, the claim fails in 45 % of such campaigns" in said
+
+
+def test_expected_share_above_takes_more_results_and_allows_some() -> None:
+    """Closed form with scipy: n = 124 and 2 allowed; P(X ≤ 2 | 1 %) = 0.87."""
+    found = count(asked_for("upper-share", share=0.95, expected_above=0.01, power=0.8))
+    assert (sum(found.needed), amount(found, "allowed")) == (124, 2)
+    assert amount(found, "confidence") == pytest.approx(stats.binom.sf(2, 124, 0.05))
+    chance = stats.binom.cdf(2, 124, 0.01)
+    assert chance >= 0.8
+    assert f"in {100 * chance:.0f} % of such campaigns" in found.finding.answer
+
+
+def test_list_may_have_just_the_rest_above() -> None:
+    """90 % of 60 units leave 6: 7 spoil the claim, and n is the first that finds one of them."""
+    found = count(asked_for("upper-share", parts=listed(60), share=0.9))
+    (n,) = found.needed
+    assert stats.hypergeom.pmf(0, 60, 7, n) <= 0.05 < stats.hypergeom.pmf(0, 60, 7, n - 1)
+    assert "no more than 6 of the 60 units of the list exceed it" in found.finding.answer
+
+
+def test_list_with_an_expected_share_above() -> None:
+    """Brute force with scipy: 20 of 200 spoil … the claim that no more than 20 exceed."""
+    found = count(
+        asked_for("upper-share", parts=listed(200), share=0.9, expected_above=0.02, power=0.8)
+    )
+    (n,), allowed = found.needed, amount(found, "allowed")
+    assert stats.hypergeom.cdf(allowed, 200, 21, n) <= 0.05
+    assert stats.hypergeom.cdf(allowed, 200, 4, n) >= 0.8
+
+
+@pytest.mark.parametrize("allowed", [0, 1, 3])
+def test_strata_keep_the_confidence_wherever_the_share_lies(allowed: int) -> None:
+    """Brute force: two binomials added, for every split of 5 % over two halves."""
+    asked = asked_for("upper-share", parts=HALVES, share=0.95, allowed=allowed)
+    first, second = needed = count(asked).needed
+    promised = chance_noticed(asked, needed, 0.05, allowed=allowed)
+    for k in range(101):
+        above = (0.1 * k / 100, 0.1 - 0.1 * k / 100)
+        few = math.fsum(
+            stats.binom.pmf(i, first, above[0]) * stats.binom.cdf(allowed - i, second, above[1])
+            for i in range(allowed + 1)
+        )
+        assert 1 - few >= promised - 1e-12 >= 0.95 - 2e-12
+
+
+def test_given_counts_say_how_many_may_exceed() -> None:
+    """Inverse: 93 results allow 1; 58 are too few for none and show 0.05^(1/58)."""
+    found = bought(asked_for("upper-share", share=0.95), (93,))
+    assert amount(found, "allowed") == 1
+    assert "no more than 1 of them above 150 mg/kg" in found.answer
+    few = bought(asked_for("upper-share", share=0.95), (40,))
+    assert "40 results are too few for the claim" in few.answer
+    assert f"at least {100 * 0.05 ** (1 / 40):.0f} %" in few.answer
+
+
+def test_table_lists_numbers_allowed_and_how_often_the_claim_comes_out() -> None:
+    """Source of the numbers: Wilks 1941; chances by scipy at 1 % above."""
+    rows = count(asked_for("upper-share", share=0.95)).finding.rows
+    assert [(r[0], r[1]) for r in rows[:4]] == [
+        ("0", "59"),
+        ("1", "93"),
+        ("2", "124"),
+        ("3", "153"),
+    ]
+    assert [r[2] for r in rows[:3]] == [
+        f"{100 * stats.binom.cdf(c, n, 0.01):.0f} %" for c, n in ((0, 59), (1, 93), (2, 124))
+    ]
+
+
+NORMAL = {"share": 0.95, "method": "normal", "power": 0.8}
+
+
+def test_normal_bound_takes_the_first_n_that_is_often_enough_below() -> None:
+    """Brute force with scipy's noncentral t: mean 90, sigma 20, level 150."""
+    found = count(asked_for("upper-share", mean=90.0, **NORMAL))
+    (n,) = found.needed
+
+    def chance(m: int) -> float:
+        root = math.sqrt(m)
+        critical = stats.nct.ppf(0.95, m - 1, stats.norm.ppf(0.95) * root)
+        return float(stats.nct.sf(critical, m - 1, 3.0 * root))
+
+    assert chance(n) >= 0.8 > chance(n - 1)
+    assert amount(found, "chance") == pytest.approx(chance(n), abs=1e-9)
+    assert amount(found, "n_by_counting") == 59
+    assert "mean + 2.566 s" in found.finding.answer  # Natrella 1963: k = 2.566 at n = 15
+    inverse = bought(asked_for("upper-share", mean=90.0, **NORMAL), (n,))
+    assert amount(inverse, "chance") == amount(found, "chance")
+
+
+def test_skewed_pilot_is_warned_against_a_normal_bound() -> None:
+    """The bound leans on a shape that the results at hand do not have."""
+    parts = (Part("site", 1.0, 20.0, results=15, skewness=1.8),)
+    warnings = count(asked_for("upper-share", parts=parts, mean=90.0, **NORMAL)).finding.warnings
+    assert "skewness of 1.80" in warnings[0]
+    assert any("Counting needs no shape: 59 results" in line for line in warnings)
+
+
+def test_normal_working_repeats_its_own_arithmetic() -> None:
+    """M = (150 − 90)/20 = 3."""
+    first, *_ = count(asked_for("upper-share", mean=90.0, **NORMAL)).finding.steps
+    assert first.unrounded == 3.0
+
+
+def test_what_a_normal_bound_cannot_do_is_refused() -> None:
+    """No mean, several strata, no sigma, or a level within the quantile."""
+    with pytest.raises(DesignError, match="needs the mean and the standard deviation"):
+        count(asked_for("upper-share", **NORMAL))
+    with pytest.raises(DesignError, match="this one has 2 strata"):
+        count(asked_for("upper-share", parts=HALVES, mean=90.0, **NORMAL))
+    with pytest.raises(DesignError, match="no number of results can show it"):
+        count(asked_for("upper-share", mean=130.0, **NORMAL))
+
+
+def test_more_allowed_than_a_list_could_hold_is_refused() -> None:
+    """With 3 of 50 units spoiling the claim, 60 allowed ones would show nothing."""
+    with pytest.raises(DesignError, match="looking at all of them would show nothing"):
+        count(asked_for("upper-share", parts=listed(50), share=0.95, allowed=60))
