@@ -1,4 +1,4 @@
-"""Makes the invented pilots of the pages in docs/sizing: ``python demo_sites/sizing/make_pilots.py``.
+"""Makes the invented pilots that docs/sizing shows: ``python demo_sites/sizing/make_pilots.py``.
 
 A survey of 40 places drawn at random on one field, from a normal field of practical range 120 m
 with a fifth of its variance without structure; and 36 monthly visits to a weir, with a
@@ -49,7 +49,8 @@ def survey() -> None:
     for number, (place, value) in enumerate(zip(places, values, strict=True), start=1):
         longitude, latitude = degrees(*place)
         rows.append([f"S{number:02d}", "lead", f"{value:.1f}", "mg/kg", latitude, longitude])
-    write("survey", ["location_id", "analyte", "as_reported", "unit", "latitude", "longitude"], rows)
+    header = ["location_id", "analyte", "as_reported", "unit", "latitude", "longitude"]
+    write("survey", header, rows)
 
 
 def weir() -> None:
