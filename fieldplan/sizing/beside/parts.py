@@ -1,7 +1,7 @@
 """More places, more increments or a better laboratory: what the parts of sigma say."""
 
 import math
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 
 from fieldplan.base.working import Quantity, Step
@@ -82,6 +82,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
         rows=tuple(_rows(splits)),
         steps=tuple(_steps(asked, error, changes)),
         assumptions=(
+            *_not_told(shares),
             "The parts add as variances: a place differs from its neighbours, a jar from the next "
             "jar of the same place, an analysis from the next of the same jar.",
             "A second analysis averages what differs from analysis to analysis; a bias of the "
@@ -91,6 +92,16 @@ def finding(asked: Asked, size: Size) -> Finding | None:
         ),
         warnings=tuple(_warnings(splits)),
         sources=(SEARLE, MLS),
+    )
+
+
+def _not_told(shares: Mapping[str, float]) -> tuple[str, ...]:
+    """Say where sampling cannot be seen; it then stands with the differences between places."""
+    if SAMPLING in shares or TOGETHER in shares:
+        return ()
+    return (
+        "Nothing tells sampling at a place apart here: it stands within the differences from place "
+        "to place.",
     )
 
 
