@@ -16,7 +16,10 @@ if TYPE_CHECKING:
     from fieldplan.stats.mean_simulation import Sampled
 
 QUICK_DRAWS = 150_000
-"""Values drawn for one shape with zeros, which takes about 4 ms."""
+"""Values drawn for one shape that the table does not hold, which takes about 4 ms."""
+
+LARGE = 10
+"""A list of so many times the results is taken as a large population."""
 
 AS_SKEWED = " of the skewness seen or typed"
 
@@ -171,16 +174,17 @@ def misses(question: Question, shape: SiteShape, counts: Sequence[int]) -> Misse
     Notes
     -----
     Without zeros from the table of simulated t statistics (200,000 samples a cell), strata by the
-    single sample whose mean leans as much; with zeros simulated on the spot.
+    single sample whose mean leans as much; with zeros, and for short lists, simulated on the spot.
     """
-    if shape.zeros:
+    if shape.zeros or short_list(question, counts):
         from fieldplan.stats.mean_simulation import FEWEST, simulate_coverage
 
+        parts = sampled(question, shape, counts)
         found = simulate_coverage(
-            sampled(question, shape, counts),
+            parts,
             confidence=question.confidence,
             kind=question.interval,
-            campaigns=max(FEWEST, min(10_000, QUICK_DRAWS // sum(counts))),
+            campaigns=max(FEWEST, min(10_000, QUICK_DRAWS // sum(part.drawn for part in parts))),
         )
         return Misses(found.too_low, found.too_high, found.standard_error)
     n, lean = equivalent(question, shape, counts)
@@ -195,9 +199,24 @@ def sampled(question: Question, shape: SiteShape, counts: Sequence[int]) -> "tup
     from fieldplan.stats.mean_simulation import Sampled
 
     return tuple(
-        Sampled(part.weight, part.sigma, max(2, count), form)
+        Sampled(
+            part.weight,
+            part.sigma,
+            max(2, count),
+            form,
+            part.population if _is_short(part, count) else None,
+        )
         for part, count, form in zip(question.parts, counts, shape.parts, strict=True)
     )
+
+
+def short_list(question: Question, counts: Sequence[int]) -> bool:
+    """Tell whether a part is a list that the results take a good share of."""
+    return any(map(_is_short, question.parts, counts))
+
+
+def _is_short(part: Part, count: int) -> bool:
+    return part.population is not None and part.population < LARGE * count
 
 
 def equivalent(question: Question, shape: SiteShape, counts: Sequence[int]) -> tuple[int, float]:
@@ -229,7 +248,7 @@ def n_within(question: Question, shape: SiteShape, counts: Sequence[int]) -> int
     Returns
     -------
     int or None
-        None where more than 100,000 are needed.
+        None where more than 100,000 are needed, or than a list has.
     """
     n, lean = equivalent(question, shape, counts)
     alone = n_by_skewness(
@@ -242,3 +261,32 @@ def n_within(question: Question, shape: SiteShape, counts: Sequence[int]) -> int
 
 def _family(shape: SiteShape) -> Family:
     return shape.parts[0].family
+
+
+def scaled(counts: Sequence[int], total: int) -> list[int]:
+    """Scale counts to another total, each at least 2.
+
+    Examples
+    --------
+    >>> scaled([10, 30], 20), scaled([3, 40], 10)
+    ([5, 15], [2, 9])
+    """
+    return [max(2, round(count * total / sum(counts))) for count in counts]
+
+
+def places(question: Question, counts: Sequence[int]) -> str:
+    """Say from what the results are taken to come."""
+    if short_list(question, counts):
+        return (
+            "Units are drawn at random without replacement from a list of such a shape, simulated "
+            "anew for each campaign; the mean is that of the list."
+        )
+    return "Results are independent, at random places of a large population."
+
+
+def within_lists(question: Question, counts: list[int]) -> list[int] | None:
+    """Keep counts that lists can give and that leave something undrawn; None for others."""
+    populations = [part.population for part in question.parts]
+    pairs = list(zip(counts, populations, strict=True))
+    kept = all(whole is None or count <= whole for count, whole in pairs)
+    return counts if kept and any(count != whole for count, whole in pairs) else None

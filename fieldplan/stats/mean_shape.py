@@ -19,6 +19,9 @@ FURTHEST = 100_000
 POINT = 0.01
 """One point of coverage."""
 
+LITTLE = 0.5
+"""Below this a skewness to the low side is taken for none."""
+
 
 @dataclass(frozen=True)
 class Shape:
@@ -137,8 +140,8 @@ def fitting_shapes(
     zeros : float
         Share of zeros or of non-detects counted as zeros.
     skewness : float, optional
-        Seen or declared. Shapes that lean as much are added where it exceeds those by CV, or is
-        negative; shifted along the axis they can have any CV, and a shift moves no t statistic.
+        Seen or declared. Shapes that lean as much are added where it exceeds those by CV, or lies
+        below −0.5; shifted along the axis they can have any CV, and a shift moves no t statistic.
 
     Returns
     -------
@@ -158,9 +161,9 @@ def fitting_shapes(
     above = (1 + cv**2) * (1 - zeros) - 1
     if zeros > 0 and above > 1e-4:
         shapes += [Shape(family, math.sqrt(above), zeros=zeros) for family in families]
-    if skewness is not None and abs(skewness) > 1e-9:
+    if skewness is not None:
         lean, most = skewness, max(shape.skewness for shape in shapes)
-        if lean < 0 or lean > most:
+        if lean < -LITTLE or lean > most:
             shapes += [
                 Shape(family, cv_of_skewness(family, lean), mirrored=lean < 0)
                 for family in families
@@ -297,6 +300,33 @@ def missed_altogether(n: int, share: float) -> float:
         message = f"the number of results is {n!r}; it must be 1 or more."
         raise DesignError(message)
     return (1 - share) ** n
+
+
+def units_missed(n: int, units: int, *, population: int) -> float:
+    """Give the share of campaigns that draw none of some units of a list.
+
+    Parameters
+    ----------
+    n : int
+        Units drawn without replacement, from 0 to N.
+    units : int
+        How many are meant, from 0 to N.
+    population : int
+        N.
+
+    Notes
+    -----
+    Hypergeometric, C(N − units, n) / C(N, n).
+
+    Examples
+    --------
+    >>> round(units_missed(15, 1, population=22), 3)
+    0.318
+    """
+    if not (0 <= n <= population and 0 <= units <= population):
+        message = f"a list of {population} has no {n} drawn and {units} meant; give fewer."
+        raise DesignError(message)
+    return math.comb(population - units, n) / math.comb(population, n)
 
 
 def n_to_meet(share: float, *, chance: float = 0.95) -> int:

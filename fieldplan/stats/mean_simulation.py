@@ -5,15 +5,14 @@ here is ever issued to a crew.
 """
 
 import math
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 from typing import TYPE_CHECKING
 
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.intervals import IntervalKind, t_quantile
-from fieldplan.stats.mean_shape import FURTHEST, POINT, Shape, edgeworth_misses
-from fieldplan.stats.shape import Family
+from fieldplan.stats.mean_shape import Shape
 
 if TYPE_CHECKING:
     import numpy as np
@@ -48,12 +47,20 @@ class Sampled:
     results : int
         At least 2.
     shape : Shape
+    population : int or None
+        N of a list, from which results are drawn without replacement; None for a large one.
     """
 
     weight: float
     sd: float
     results: int
     shape: Shape
+    population: int | None = None
+
+    @property
+    def drawn(self) -> int:
+        """Values drawn for one campaign: the whole list where there is one."""
+        return self.results if self.population is None else self.population
 
 
 @dataclass(frozen=True)
@@ -120,14 +127,17 @@ def simulate_coverage(
     Raises
     ------
     DesignError
-        A stratum has fewer than 2 results.
+        A stratum has fewer than 2 results, or more than its list has units.
 
     Notes
     -----
-    The corrected interval inverts g(W) = W + γW²/3 + γ²W³/27 + γ/(6n) for W = (mean − μ)/s
-    (Hall 1992, Journal of the Royal Statistical Society B 54:221), with γ/√n the estimated
-    skewness of the mean. Results alike to the last digit make an interval of no width, which
-    holds nothing but a mean equal to them.
+    A list is drawn anew from the shape for each campaign; its own mean is the true one, and the
+    standard error has the factor √(1 − n/N).
+
+    The corrected interval inverts g(W) = W + γW²/3 + γ²W³/27 + γ/(6n) for W = (mean − μ)/s (Hall
+    1992, Journal of the Royal Statistical Society B 54:221), with γ/√n the estimated skewness of
+    the mean, of a list times (1 − 2n/N)/√(1 − n/N). Results alike to the last digit make an
+    interval of no width, which holds nothing but a mean equal to them.
 
     Examples
     --------
@@ -139,10 +149,13 @@ def simulate_coverage(
     import numpy as np
 
     for part in parts:
-        if part.results < 2:
-            message = f"an interval needs 2 results in every stratum, not {part.results}."
+        if not 2 <= part.results <= part.drawn:
+            message = (
+                f"an interval needs 2 results in every stratum, and no more than its list has; "
+                f"not {part.results} of {part.population or 'many'}."
+            )
             raise DesignError(message)
-    total = sum(part.results for part in parts)
+    total = sum(part.drawn for part in parts)
     wanted = campaigns or max(FEWEST, min(MOST, DRAWS // total))
     generator = np.random.Generator(np.random.PCG64(seed))
     size = max(1, min(wanted, BLOCK // total))
@@ -156,7 +169,7 @@ def simulate_coverage(
     low, high, hall_low, hall_high = (float(share) for share in missed / wanted)
     ends = np.quantile(np.concatenate(errors), [(1 - BAND) / 2, (1 + BAND) / 2])
     return SimulatedCoverage(
-        results=total,
+        results=sum(part.results for part in parts),
         held=1 - low - high,
         too_low=low,
         too_high=high,
@@ -180,15 +193,19 @@ def _block(
     error, variance, third, spread = (np.zeros(rows) for _ in range(4))
     for part in parts:
         n, reach = part.results, part.weight * part.sd
-        values = draw_standardised(part.shape, (rows, n), generator)
+        values = draw_standardised(part.shape, (rows, part.drawn), generator)
+        truth = 0.0 if part.population is None else values.mean(axis=1)
+        taken = 0.0 if part.population is None else n / part.population
+        values = values[:, :n]
         mean = values.mean(axis=1)
-        values -= mean[:, None]
+        values = values - mean[:, None]
         squares = values * values
-        term = reach**2 * squares.sum(axis=1) / (n - 1) / n
-        error += reach * mean
+        term = reach**2 * (1 - taken) * squares.sum(axis=1) / (n - 1) / n
+        error += reach * (mean - truth)
         variance += term
         spread += term**2 / (n - 1)
-        third += reach**3 * (squares * values).sum(axis=1) / n**3
+        bend = (1 - taken) * (1 - 2 * taken)
+        third += reach**3 * bend * (squares * values).sum(axis=1) / n**3
     with np.errstate(divide="ignore", invalid="ignore"):
         t = np.where(variance > 0, error / np.sqrt(variance), np.sign(error) * np.inf)
         lean = np.where(variance > 0, third / variance**1.5, 0.0)
@@ -266,124 +283,3 @@ def _quantiles(
     import numpy as np
 
     return np.asarray(stdtrit(known, level), dtype=np.float64)
-
-
-@lru_cache(maxsize=64)
-def n_within_a_point(
-    shape: Shape, *, confidence: float, kind: IntervalKind, within: float = POINT
-) -> int | None:
-    """Count the results from which on a t interval misses by no more than a point too much.
-
-    Parameters
-    ----------
-    shape : Shape
-    confidence : float
-        Nominal.
-    kind : str
-        Two-sided, upper or lower limit.
-    within : float
-        Largest shortfall.
-
-    Returns
-    -------
-    int or None
-        None where more than 100,000 are needed.
-
-    Notes
-    -----
-    Misses follow the Edgeworth expansion to its second term; what simulated misses leave over is
-    taken as its next term, c/n^1.5 for a limit and c/n² for an interval, with c fitted by
-    weighted least squares at a quarter, a half and the whole of the n that the expansion alone
-    asks for. Good to about a seventh; without zeros ``mean_shape.n_by_skewness`` is closer.
-    """
-    power = 2.0 if kind == "two-sided" else 1.5
-    lean, tail, allowed = shape.skewness, shape.excess_kurtosis, 1 - confidence + within
-
-    def expected(n: float) -> float:
-        return edgeworth_misses(n, lean, tail, confidence=confidence, kind=kind)
-
-    first = _last_crossing(expected, allowed) or FURTHEST
-    top = bottom = 0.0
-    for share in (4, 2, 1):
-        part = Sampled(1.0, 1.0, min(max(8, first // share), 500), shape)
-        found = simulate_coverage((part,), confidence=confidence, kind=kind)
-        term = part.results**-power
-        weight = term / max(found.standard_error, 1e-4) ** 2
-        top += weight * (1 - found.held - expected(part.results))
-        bottom += weight * term
-    return _last_crossing(lambda n: expected(n) + top / bottom * n**-power, allowed)
-
-
-@lru_cache(maxsize=64)
-def largest_cv(family: Family, seen: float, *, results: int, chance: float = 0.10) -> float:
-    """Give the largest coefficient of variation that a pilot does not rule out.
-
-    A population that spreads wider would show as little as this pilot less often than ``chance``.
-
-    Parameters
-    ----------
-    family : str
-        ``gamma`` or ``lognormal``.
-    seen : float
-        Coefficient of variation of the pilot's results, above 0.
-    results : int
-        n0, at least 2.
-    chance : float
-        Share of pilots of that population whose coefficient of variation is ``seen`` or less.
-
-    Returns
-    -------
-    float
-        At least ``seen``, at most ten times that.
-
-    Notes
-    -----
-    An upper confidence limit by inverting the test: bisection over populations, with the same
-    random numbers for each, 1,000 pilots or more. It knows the coefficient of variation alone;
-    where single results are at hand their likelihood says more, see
-    ``censoring_forecast.fit_censored``.
-
-    Examples
-    --------
-    >>> round(largest_cv("gamma", 0.6, results=8), 1)
-    1.0
-    """
-    import numpy as np
-
-    if results < 2 or not seen > 0:
-        message = f"a pilot needs 2 results and some spread, not {results} and a CV of {seen!r}."
-        raise DesignError(message)
-    pilots = max(1000, 60_000 // results)
-
-    def hides(cv: float) -> float:
-        shape = Shape(family, cv)
-        generator = np.random.Generator(np.random.PCG64(SEED))
-        values = shape.mean + shape.sd * draw_standardised(shape, (pilots, results), generator)
-        shown = values.std(axis=1, ddof=1) <= seen * values.mean(axis=1)
-        return float(shown.mean())
-
-    low, high = seen, 10 * seen
-    if hides(low) < chance:
-        return low
-    for _ in range(10):
-        middle = math.sqrt(low * high)
-        low, high = (middle, high) if hides(middle) > chance else (low, middle)
-    return math.sqrt(low * high)
-
-
-def _last_crossing(misses: Callable[[float], float], allowed: float) -> int | None:
-    """Find the n from which on the misses stay allowed; 2 where they always are."""
-    high = FURTHEST
-    if misses(high) > allowed:
-        return None
-    while high > 2:
-        low = max(2, min(high - 1, int(high / 1.05)))
-        if misses(low) > allowed:
-            break
-        high = low
-    else:
-        return 2
-    while high - low > 1:
-        middle = (low + high) // 2
-        low, high = (middle, high) if misses(middle) > allowed else (low, middle)
-    return high

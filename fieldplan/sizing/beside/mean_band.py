@@ -12,15 +12,26 @@ from fieldplan.sizing.beside.near_normal import (
     held_sentence,
     interval_name,
     judge,
-    scaled,
     worst,
 )
 from fieldplan.sizing.model import Amount, Finding, Picture, Series, Size
+from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
-from fieldplan.sizing.shapes import Misses, SiteShape, misses, part_mean, pilot_values, sampled
-from fieldplan.sizing.words import figure, percent, typed_percent, with_unit
+from fieldplan.sizing.shapes import (
+    Misses,
+    SiteShape,
+    misses,
+    part_mean,
+    pilot_values,
+    places,
+    sampled,
+    scaled,
+    short_list,
+    within_lists,
+)
+from fieldplan.sizing.words import counted, figure, percent, typed_percent, with_unit
 from fieldplan.stats.distributions import normal_quantile
-from fieldplan.stats.mean_shape import POINT, Shape, missed_altogether, share_met
+from fieldplan.stats.mean_shape import POINT, Shape, missed_altogether, share_met, units_missed
 from fieldplan.stats.shape import Family
 
 Style = Literal["line", "dashes", "points", "hollow", "band-low", "band-high"]
@@ -28,6 +39,9 @@ Row = tuple[float, tuple[float, float], Misses, float]
 
 RARE = (0.01, 0.02, 0.05, 0.10, 0.20)
 """Shares of a site for which the chance to miss them altogether is shown."""
+
+RARE_UNITS = (1, 2, 3, 5)
+"""The same for units of a list."""
 
 FEWEST, MOST, DRAWS = 4_000, 20_000, 400_000
 """Campaigns drawn for each point of the band, and values: its ends are good to about 2 %."""
@@ -59,7 +73,6 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     if not judged:
         return None
     picture = _picture(asked, counts, worst(judged)[0])
-    rare = share_met(sum(counts))
     band = _band_sentence(asked, picture, sum(counts))
     kept = worst(judged)[1].held >= asked.question.confidence - POINT
     hidden = _hidden(asked, counts)
@@ -67,29 +80,24 @@ def finding(asked: Asked, size: Size) -> Finding | None:
         topic="mean-band",
         title="Where the mean falls at this number of results",
         answer=f"{held_sentence(asked, counts, judged)} {band}" if kept else band,
-        amounts=(*_amounts(asked, counts, judged), Amount("share_met", _RARE_MET, rare)),
-        columns=("A part of the site of", "missed by all results, per 100 campaigns"),
-        rows=tuple(
-            (typed_percent(share), f"{100 * missed_altogether(sum(counts), share):.1f}")
-            for share in RARE
-        ),
+        amounts=_amounts(asked, counts, judged),
+        columns=("A rare part", "missed by all results, per 100 campaigns"),
+        rows=_rare_rows(asked.question, counts),
         assumptions=(
             f"The band is that of {worst(judged)[0].name}, the shape that serves the interval "
             f"worst of those that fit; {FEWEST} to {MOST} simulated campaigns a number.",
-            "Results are independent, at random places of a large population.",
+            places(asked.question, counts),
         ),
-        warnings=(*hidden, _rare_sentence(sum(counts), rare)),
+        warnings=(*hidden, *_rare_sentences(asked.question, sum(counts))),
         sources=(*SOURCES, HALL),
         picture=picture,
     )
 
 
-_RARE_MET = "Smallest part of the site that is met at least once in 95 of 100 campaigns"
-
-
 def _amounts(asked: Asked, counts: Sequence[int], judged: Sequence[Judged]) -> tuple[Amount, ...]:
     """Simulate the corrected interval, and n for shapes with zeros, which no table holds."""
-    from fieldplan.stats.mean_simulation import n_within_a_point, simulate_coverage
+    from fieldplan.stats.mean_limits import n_within_a_point
+    from fieldplan.stats.mean_simulation import simulate_coverage
 
     question = asked.question
     confidence, kind = question.confidence, question.interval
@@ -106,7 +114,10 @@ def _amounts(asked: Asked, counts: Sequence[int], judged: Sequence[Judged]) -> t
         Amount("simulation_error", "Standard error of that share, from simulating",
                low.standard_error),
     ]  # fmt: skip
-    if len(counts) == 1:
+    if question.total_population is None:
+        met = "Smallest part of the site that is met at least once in 95 of 100 campaigns"
+        amounts.append(Amount("share_met", met, share_met(sum(counts))))
+    if len(counts) == 1 and not short_list(question, counts):
         amounts += [
             Amount(
                 f"n_within_a_point_{shape.parts[0].family}_with_zeros",
@@ -148,7 +159,7 @@ def _wider(asked: Asked) -> list[tuple[Family, float]]:
     From the likelihood of its results where they are at hand, else from the CV alone.
     """
     from fieldplan.stats.censored_fit import FEWEST_DETECTS, fit_censored
-    from fieldplan.stats.mean_simulation import largest_cv
+    from fieldplan.stats.mean_limits import largest_cv
 
     part = asked.question.parts[0]
     mean = part_mean(asked.question, part)
@@ -174,7 +185,9 @@ def _band(question: Question, counts: Sequence[int], shape: SiteShape) -> list[R
     numbers |= {TEXTBOOK} if least <= TEXTBOOK and min(numbers) < TEXTBOOK < max(numbers) else set()
     rows: list[Row] = []
     for number in sorted(numbers):
-        at = list(counts) if number == total else scaled(counts, number)
+        at = within_lists(question, list(counts) if number == total else scaled(counts, number))
+        if at is None:
+            continue
         drawn = simulate_coverage(
             sampled(question, shape, at),
             confidence=question.confidence,
@@ -241,11 +254,7 @@ def _label(question: Question, centre: float) -> str:
 
 
 def _normal_reach(question: Question, counts: Sequence[int], share: float) -> float:
-    variance = math.fsum(
-        (part.weight * part.sigma) ** 2 / count
-        for part, count in zip(question.parts, counts, strict=True)
-    )
-    return normal_quantile((1 + share) / 2) * math.sqrt(variance)
+    return normal_quantile((1 + share) / 2) * Precision(question).standard_error(counts)
 
 
 def _alternative(rows: Sequence[Row], question: Question) -> str:
@@ -274,9 +283,31 @@ def _band_sentence(asked: Asked, picture: Picture, total: int) -> str:
     return f"Nine campaigns in ten put the mean between {ends[0]} and {ends[1]} where {where}."
 
 
-def _rare_sentence(total: int, rare: float) -> str:
+def _rare_sentences(question: Question, total: int) -> tuple[str, ...]:
+    """Say how large a part may be missed altogether; of a list another sentence says it."""
+    if question.total_population is not None:
+        return ()
+    rare = share_met(total)
     return (
         f"A part of the site smaller than {percent(rare)} of it is missed by all {total} results "
         f"in more than {typed_percent(0.05)} of campaigns, (1 − p)^{total}: if it is much higher "
-        "than the rest, no interval from these results knows of it."
+        "than the rest, no interval from these results knows of it.",
+    )
+
+
+def _rare_rows(question: Question, counts: Sequence[int]) -> tuple[tuple[str, ...], ...]:
+    """Set the chance to miss parts of a site, or units of a list, altogether."""
+    total, population = sum(counts), question.total_population
+    if population is None:
+        return tuple(
+            (f"{typed_percent(share)} of the site", f"{100 * missed_altogether(total, share):.1f}")
+            for share in RARE
+        )
+    return tuple(
+        (
+            f"{counted(units, 'unit')} of {population}",
+            f"{100 * units_missed(total, units, population=population):.1f}",
+        )
+        for units in RARE_UNITS
+        if units < population
     )

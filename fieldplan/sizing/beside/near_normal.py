@@ -13,7 +13,11 @@ from fieldplan.sizing.shapes import (
     misses,
     n_within,
     part_mean,
+    places,
+    scaled,
+    short_list,
     site_shapes,
+    within_lists,
 )
 from fieldplan.sizing.words import figure, listed, typed_percent
 from fieldplan.stats.mean_shape import POINT
@@ -49,16 +53,18 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     if not judged or worst(judged)[1].held >= asked.question.confidence - POINT:
         return None
     question = asked.question
-    ends = [n_within(question, shape, counts) for shape, _ in judged]
+    short = short_list(question, counts)
+    ends = [None if short else n_within(question, shape, counts) for shape, _ in judged]
+    enough = "" if short else _enough_sentence(question, ends)
     return Finding(
         topic="near-normal",
         title="Is the mean near normal at this number of results?",
-        answer=f"{held_sentence(asked, counts, judged)} {_enough_sentence(question, ends)}",
+        answer=f"{held_sentence(asked, counts, judged)} {enough}".rstrip(),
         amounts=_amounts(judged, ends),
         columns=_columns(sum(counts)),
         rows=_rows(question, counts, judged, ends),
         steps=_steps(question, counts, judged),
-        assumptions=_assumptions(asked, judged),
+        assumptions=_assumptions(asked, counts, judged),
         sources=SOURCES,
     )
 
@@ -188,11 +194,11 @@ def _rows(
     ends: Sequence[int | None],
 ) -> tuple[tuple[str, ...], ...]:
     """Set the shapes side by side; shares per 100 campaigns."""
-    thirty = scaled(counts, TEXTBOOK)
-    rows = []
+    thirty = within_lists(question, scaled(counts, TEXTBOOK))
+    short, rows = short_list(question, counts), []
     for (shape, missed), end in zip(judged, ends, strict=True):
         lean = equivalent(question, shape, counts)[1]
-        textbook = misses(question, shape, thirty)
+        textbook = "–" if thirty is None else f"{100 * misses(question, shape, thirty).held:.1f}"
         rows.append(
             (
                 shape.name,
@@ -200,22 +206,11 @@ def _rows(
                 f"{100 * missed.held:.1f}",
                 f"{100 * missed.too_low:.1f}",
                 f"{100 * missed.too_high:.1f}",
-                f"{100 * textbook.held:.1f}",
-                "over 100000" if end is None else str(_round(end)),
+                textbook,
+                str(_round(end)) if end else "–" if short else "over 100000",
             )
         )
     return tuple(rows)
-
-
-def scaled(counts: Sequence[int], total: int) -> list[int]:
-    """Scale counts to another total, each at least 2.
-
-    Examples
-    --------
-    >>> scaled([10, 30], 20), scaled([3, 40], 10)
-    ([5, 15], [2, 9])
-    """
-    return [max(2, round(count * total / sum(counts))) for count in counts]
 
 
 def _steps(question: Question, counts: Sequence[int], judged: Sequence[Judged]) -> tuple[Step, ...]:
@@ -223,40 +218,40 @@ def _steps(question: Question, counts: Sequence[int], judged: Sequence[Judged]) 
     shape, missed = worst(judged)
     n, lean = equivalent(question, shape, counts)
     skewness = Quantity("G1", f"skewness, {shape.name}", lean)
-    rule, factor = ("Cochran's rule for a two-sided interval", 25.0)
-    source = SOURCES[0]
+    drawn = shape.zeros or short_list(question, counts)
+    held = Step(
+        symbol="held",
+        meaning="Share of campaigns whose interval holds the mean, worst shape that fits",
+        formula="1 − P(t < −q) − P(t > q)",
+        inputs=(
+            Quantity("n", "results, strata taken as one sample", n),
+            skewness,
+            Quantity("P(t < −q)", "share of campaigns with the true mean above", missed.too_low),
+            Quantity("P(t > q)", "share of campaigns with the true mean below", missed.too_high),
+        ),
+        unrounded=missed.held,
+        rounded=round(missed.held, 3),
+        source="simulated for this plan, fixed seed" if drawn else SOURCES[2],
+    )
+    steps = (_lean_step(question, shape, n, lean), held)
+    return steps if short_list(question, counts) else (*steps, _rule_step(question, skewness))
+
+
+def _rule_step(question: Question, skewness: Quantity) -> Step:
+    """Show Cochran's rule, or its like for a limit on the side of the long tail."""
+    rule, factor, source = "Cochran's rule for a two-sided interval", 25.0, SOURCES[0]
     if question.interval != "two-sided":
         rule, factor, source = "The same for a limit: first Edgeworth term", 121.0, SOURCES[1]
-    return (
-        _lean_step(question, shape, n, lean),
-        Step(
-            symbol="held",
-            meaning="Share of campaigns whose interval holds the mean, worst shape that fits",
-            formula="1 − P(t < −q) − P(t > q)",
-            inputs=(
-                Quantity("n", "results, strata taken as one sample", n),
-                skewness,
-                Quantity(
-                    "P(t < −q)", "share of campaigns with the true mean above", missed.too_low
-                ),
-                Quantity(
-                    "P(t > q)", "share of campaigns with the true mean below", missed.too_high
-                ),
-            ),
-            unrounded=missed.held,
-            rounded=round(missed.held, 3),
-            source=SOURCES[2],
-        ),
-        Step(
-            symbol="n rule",
-            meaning=f"{rule}, at 95 %",
-            formula=f"n = {factor:g}·G1²",
-            inputs=(skewness,),
-            unrounded=factor * lean**2,
-            rounded=float(round(factor * lean**2)),
-            unit="results",
-            source=source,
-        ),
+    n = factor * skewness.value**2
+    return Step(
+        symbol="n rule",
+        meaning=f"{rule}, at 95 %",
+        formula=f"n = {factor:g}·G1²",
+        inputs=(skewness,),
+        unrounded=n,
+        rounded=float(round(n)),
+        unit="results",
+        source=source,
     )
 
 
@@ -294,12 +289,12 @@ def _lean_step(question: Question, shape: SiteShape, n: int, lean: float) -> Ste
     )
 
 
-def _assumptions(asked: Asked, judged: Sequence[Judged]) -> tuple[str, ...]:
+def _assumptions(asked: Asked, counts: Sequence[int], judged: Sequence[Judged]) -> tuple[str, ...]:
     named = listed([shape.name for shape, _ in judged])
     lines = [
         f"Shapes that fit: {named}. The pilot itself is not drawn from again: a handful of results "
         "cannot show a tail.",
-        "Results are independent, at random places of a large population.",
+        places(asked.question, counts),
         "A rare part much higher than the rest does worse than any of these shapes.",
     ]
     if len(asked.question.parts) > 1:

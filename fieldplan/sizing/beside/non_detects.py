@@ -139,9 +139,9 @@ def _amounts(
     return (
         *amounts,
         Amount("fewer_than_3", "Chance of fewer than 3 detects, at most",
-               chance_of_few(total, worst)),
+               round(chance_of_few(total, worst), 6)),
         Amount("bounds_only", "Chance that only bounds are left, at most",
-               chance_of_bounds_only(total, worst)),
+               round(chance_of_bounds_only(total, worst), 6)),
         Amount("n_against_bounds", "Results from which on that chance is 5 % or less",
                n_against_bounds_only(worst)),
     )  # fmt: skip

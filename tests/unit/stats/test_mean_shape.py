@@ -19,6 +19,7 @@ from fieldplan.stats.mean_shape import (
     n_by_skewness,
     n_to_meet,
     share_met,
+    units_missed,
 )
 from tests.unit.stats.published import row
 
@@ -171,6 +172,13 @@ def test_a_rare_part_is_missed_as_the_binomial_says() -> None:
         assert missed_altogether(n, share_met(n)) == pytest.approx(0.05)
 
 
+def test_units_of_a_list_are_missed_as_the_hypergeometric_says() -> None:
+    """Second source: scipy's hypergeometric."""
+    for n, units, population in ((15, 1, 22), (15, 3, 22), (5, 2, 5), (0, 1, 9)):
+        expected = stats.hypergeom.pmf(0, population, units, n)
+        assert units_missed(n, units, population=population) == pytest.approx(expected, abs=1e-12)
+
+
 @pytest.mark.parametrize(
     "call",
     [
@@ -181,6 +189,7 @@ def test_a_rare_part_is_missed_as_the_binomial_says() -> None:
         lambda: n_to_meet(1.0),
         lambda: n_to_meet(0.1, chance=1.0),
         lambda: share_met(0),
+        lambda: units_missed(10, 1, population=9),
     ],
 )
 def test_what_no_population_has_is_refused(call: Callable[[], object]) -> None:

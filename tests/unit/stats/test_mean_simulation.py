@@ -7,13 +7,12 @@ import pytest
 from scipy import stats
 
 from fieldplan.base.errors import DesignError
+from fieldplan.stats.mean_limits import largest_cv, n_within_a_point
 from fieldplan.stats.mean_shape import Shape, n_by_skewness
 from fieldplan.stats.mean_simulation import (
     Sampled,
     draw_standardised,
     hall_reaches,
-    largest_cv,
-    n_within_a_point,
     simulate_coverage,
 )
 from fieldplan.stats.shape import t_misses
@@ -187,3 +186,24 @@ def test_too_few_results_are_refused() -> None:
         )
     with pytest.raises(DesignError, match="a pilot needs 2 results"):
         largest_cv("gamma", 0.5, results=1)
+
+
+@pytest.mark.parametrize(("n", "units"), [(6, 9), (15, 22), (30, 200)])
+def test_a_short_list_is_drawn_without_replacement(n: int, units: int) -> None:
+    """Lists of exponentials made anew, numpy's own choice of n; t with the factor 1 − n/N."""
+    part = Sampled(1.0, 1.0, n, Shape("gamma", 1.0), population=units)
+    found = simulate_coverage((part,), confidence=0.95, kind="two-sided")
+    generator, campaigns = np.random.default_rng(61), 10_000
+    lists = generator.standard_exponential((campaigns, units))
+    chosen = generator.permuted(lists, axis=1)[:, :n]
+    error = np.sqrt(chosen.var(axis=1, ddof=1) / n * (1 - n / units))
+    t = (chosen.mean(axis=1) - lists.mean(axis=1)) / error
+    held = np.mean(np.abs(t) <= stats.t.ppf(0.975, n - 1))
+    room = 4 * math.hypot(found.standard_error, math.sqrt(held * (1 - held) / campaigns))
+    assert found.held == pytest.approx(held, abs=room)
+    with pytest.raises(DesignError, match="no more than its list has"):
+        simulate_coverage(
+            (Sampled(1.0, 1.0, units + 1, Shape("gamma", 1.0), population=units),),
+            confidence=0.95,
+            kind="two-sided",
+        )

@@ -191,8 +191,26 @@ def test_a_rare_part_is_spoken_of_with_its_chance() -> None:
     _, band = both(sigma=10.0, mean=10.0, results=20, standard_error=2.0)
     assert amounts(band)["share_met"] == pytest.approx(1 - 0.05 ** (1 / 25))
     rows = dict(band.rows)
-    assert float(rows["5 %"]) == pytest.approx(100 * 0.95**25, abs=0.05)
+    assert float(rows["5 % of the site"]) == pytest.approx(100 * 0.95**25, abs=0.05)
     assert "(1 − p)^25" in band.warnings[-1]
+
+
+def test_a_short_list_is_judged_as_a_list() -> None:
+    """22 wells, 15 of them drawn: no band beyond the list, units instead of shares."""
+    found, band = both(
+        sigma=8.0, mean=10.0, results=10, half_width=3.0, population=22, assurance=0.8
+    )
+    total = int(found.answer.split()[3])
+    assert "without replacement" in " ".join(found.assumptions)
+    assert "results on" not in found.answer
+    assert [line[-1] for line in found.rows] == ["–", "–"]
+    assert max(band.picture.series[0].x) < 22
+    rows = dict(band.rows)
+    assert float(rows["1 unit of 22"]) == pytest.approx(100 * (1 - total / 22), abs=0.05)
+    place = band.picture.series[0].x.index(float(total))
+    width = band.picture.series[1].y[place] - band.picture.series[0].y[place]
+    error = 8 * math.sqrt((1 - total / 22) / total)
+    assert width == pytest.approx(2 * stats.norm.ppf(0.95) * error, rel=0.1)
 
 
 def test_a_small_pilot_may_hide_a_tail_and_a_large_one_less() -> None:
