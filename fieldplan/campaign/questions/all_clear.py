@@ -37,5 +37,5 @@ def problems(table: dict[str, Any], data: dict[str, Any]) -> Iterator[tuple[str,
         got = "both" if "share" in table else "neither"
         yield "share", f"needs exactly one of share and units (got {got}). Keep one."
     kinds = [frame.get("kind") for frame in tables(data, "frame")]
-    if "units" in table and kinds[:1] == ["area"]:
+    if "units" in table and "share" not in table and kinds[:1] == ["area"]:
         yield "units", "an area has no units to count. Write share in its place."

@@ -52,7 +52,7 @@ def _of_counting(table: dict[str, Any]) -> Iterator[tuple[str, str]]:
         missing = "power" if "expected_above" in table else "expected_above"
         yield missing, "is missing: expected_above and power are asked together. Write both."
     share, above = table.get("share"), table.get("expected_above")
-    if isinstance(share, float) and isinstance(above, int | float) and above >= 1 - share:
+    if isinstance(share, float) and isinstance(above, int | float) and above + share > 1 - 1e-9:
         yield (
             "expected_above",
             f"is {above:g}, and {share:g} shall lie below the level; it must be below "
