@@ -2,7 +2,7 @@
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, field
 from functools import cached_property
 
 import numpy as np
@@ -25,8 +25,8 @@ MOST_CENTRES = 32_768
 MOST_CANDIDATES = 400_000
 CENTRES = 2048
 """Patch centres over which the closed form of random places is averaged: good to 0.0005."""
-FEW_CENTRES = 512
-"""The same for a curve over sizes: good to 0.002."""
+FEW_CENTRES = 256
+"""The same for a curve over sizes: good to 0.005."""
 
 STEPS = 1.2207440846057596 ** -np.arange(1.0, 4.0)
 """Powers of the root of x⁴ = x + 1: their multiples fill three dimensions evenly."""
@@ -177,8 +177,6 @@ class RandomPlaces:
     patch : Patch
     direction : float or None
         Degrees clockwise from north.
-    centres : int
-        Patch centres to average over.
 
     Notes
     -----
@@ -197,31 +195,33 @@ class RandomPlaces:
     frame: Frame
     patch: Patch
     direction: float | None = None
-    centres: int = CENTRES
-    _known: dict[float, Numbers] = field(default_factory=dict, repr=False)
+    _known: dict[tuple[float, int], Numbers] = field(default_factory=dict, repr=False)
 
     def chance(self, counts: Sequence[int], *, scale: float = 1.0) -> PatchChance:
         """Give the chance for so many locations a stratum and a patch ``scale`` times as long."""
-        missed = np.prod((1 - self._shares(scale)) ** np.asarray(counts), axis=1)
-        return PatchChance(float(1 - missed.mean()))
+        return PatchChance(self._mean(counts, scale, CENTRES))
 
     def smallest_scale(self, counts: Sequence[int], chance: float) -> float:
         """Give the smallest scale at which the patch is hit with this chance, to 1 in 1000.
 
         The logarithm of the chance to miss goes nearly with the patch's area.
         """
-        rough, scale = replace(self, centres=FEW_CENTRES, _known={}), 1.0
-        for places in (rough,) * 8 + (self,):
-            found = min(max(places.chance(counts, scale=scale).chance, 1e-12), 1 - 1e-12)
+        scale = 1.0
+        for centres in (FEW_CENTRES,) * 6 + (CENTRES,):
+            found = min(max(self._mean(counts, scale, centres), 1e-12), 1 - 1e-12)
             change = math.sqrt(math.log1p(-chance) / math.log1p(-found))
-            if places is self or abs(change - 1) > 1e-3:
+            if centres == CENTRES or abs(change - 1) > 1e-3:
                 scale *= change
         return scale
 
     def by_scale(self, counts: Sequence[int], scales: Sequence[float]) -> list[float]:
         """Give the chance for each of several scales, over fewer centres."""
-        rough = replace(self, centres=FEW_CENTRES, _known={})
-        return [rough.chance(counts, scale=scale).chance for scale in scales]
+        return [self._mean(counts, scale, FEW_CENTRES) for scale in scales]
+
+    def _mean(self, counts: Sequence[int], scale: float, centres: int) -> float:
+        """Average the chance over the first so many patch centres."""
+        missed = np.prod((1 - self._shares(scale, centres)) ** np.asarray(counts), axis=1)
+        return float(1 - missed.mean())
 
     @cached_property
     def _centres(self) -> Centres:
@@ -235,17 +235,17 @@ class RandomPlaces:
             shapely.prepare(polygon)
         return coarse
 
-    def _shares(self, scale: float) -> Numbers:
+    def _shares(self, scale: float, count: int) -> Numbers:
         """Share of each stratum within the patch about each centre, shape (k, strata)."""
-        if scale not in self._known:
+        if (scale, count) not in self._known:
             patch, centres = self.patch.scaled(scale), self._centres
-            places, angles = centres.places[: self.centres], centres.angles[: self.centres]
+            places, angles = centres.places[:count], centres.angles[:count]
             about = rings(patch, angles if centres.turning else angles[:1])
             discs = np.asarray(shapely.polygons(places[:, None, :] + about))
             grounds = zip(self._grounds, self.frame.strata, strict=True)
             shares = [_shared_area(ground, discs, patch) / s.measure for ground, s in grounds]
-            self._known[scale] = np.clip(np.stack(shares, axis=1), 0.0, 1.0)
-        return self._known[scale]
+            self._known[scale, count] = np.clip(np.stack(shares, axis=1), 0.0, 1.0)
+        return self._known[scale, count]
 
 
 def _shared_area(ground: BaseGeometry, discs: NDArray[np.object_], patch: Patch) -> Numbers:
