@@ -15,6 +15,10 @@ REACH = 1.8
 """Designs are traced from a precision so many times wider than wanted to as much narrower."""
 
 
+POINTS = 40
+"""Designs traced for each kind, unless it says otherwise."""
+
+
 @dataclass(frozen=True)
 class PricedDesign:
     """One way to sample, with what it reaches and what it costs.

@@ -1,23 +1,19 @@
 """The kinds of design that a campaign's data allow, each priced along its own row."""
 
 import math
-from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import Protocol
 
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.asked.model import Asked
-from fieldplan.sizing.counting import affordable_counts, plain_counts, planned_counts, total_cost
 from fieldplan.sizing.field_readings import Reading, readings_of
-from fieldplan.sizing.frontier import PricedDesign, Wanted, levels
-from fieldplan.sizing.precision import Precision
+from fieldplan.sizing.frontier import POINTS, PricedDesign, Wanted, levels
+from fieldplan.sizing.frontier_composites import composites_of, single_results
+from fieldplan.sizing.frontier_shared import Shared
 from fieldplan.sizing.question import Part, Question
-from fieldplan.sizing.words import counted, listed
-from fieldplan.stats.allocation import Allocation, share_total, unrounded_total
+from fieldplan.sizing.words import counted
+from fieldplan.stats.allocation import Allocation
 from fieldplan.stats.two_phase_split import Split, cheapest_split, most_precise_split
-
-POINTS = 40
-"""Designs traced for each kind."""
 
 ALLOCATIONS: dict[Allocation, str] = {
     "proportional": "strata, proportional",
@@ -41,63 +37,6 @@ class Kind(Protocol):
 
     def row(self, wanted: Wanted, points: int = POINTS) -> list[PricedDesign]:
         """Trace designs on either side of a precision."""
-
-
-@dataclass(frozen=True)
-class Shared:
-    """Results shared between strata in one way, or drawn from the whole without strata."""
-
-    question: Question
-    label: str
-
-    def priced(self, counts: Sequence[int]) -> PricedDesign:
-        """Price given results by stratum."""
-        question, precision = self.question, Precision(self.question)
-        planned = planned_counts(question, counts)
-        words = counted(sum(counts), "result")
-        if 1 < len(question.parts) <= 4:
-            pairs = zip(counts, question.parts, strict=True)
-            words += ": " + listed([f"{n} in {part.name}" for n, part in pairs])
-        prices = question.prices
-        return PricedDesign(
-            self.label,
-            words,
-            results=sum(counts),
-            locations=sum(planned),
-            standard_error=precision.standard_error(counts),
-            half_width=precision.half_width(counts),
-            cost=total_cost(question, planned) or 0.0,
-            crew_days=prices.crew_days(sum(planned) + question.targeted) if prices else 0,
-        )
-
-    def cheapest(self, wanted: Wanted) -> PricedDesign | None:
-        """Give the fewest results that reach a precision."""
-        asked = replace(self.question, target=wanted.measure, value=wanted.value)
-        try:
-            return self.priced(plain_counts(asked))
-        except DesignError:
-            return None
-
-    def most_precise(self, budget: float) -> PricedDesign | None:
-        """Give the most results that a budget buys."""
-        asked = replace(self.question, target="budget", value=budget)
-        try:
-            return self.priced(affordable_counts(asked))
-        except DesignError:
-            return None
-
-    def row(self, wanted: Wanted, points: int = POINTS) -> list[PricedDesign]:
-        """Trace totals of results, whole numbers, each once."""
-        strata, allocation = self.question.strata, self.question.allocation
-        least, most = sum(strata.floors), strata.most
-        totals = set()
-        for level in levels(wanted, points=points):
-            total = unrounded_total(strata, level.variance(math.inf), allocation=allocation)
-            totals.add(min(max(math.ceil(min(total, most)), least), most))
-        return [
-            self.priced(share_total(strata, total, allocation=allocation))
-            for total in sorted(totals)
-        ]
 
 
 @dataclass(frozen=True)
@@ -169,9 +108,14 @@ def kinds_of(asked: Asked) -> list[Kind]:
     -------
     list of Kind
         The whole without strata (where every stratum's mean is known), the ways to share results
-        between strata, readings in the field. A layout that spreads out is not credited.
+        between strata, composites (where the parts of sigma are known), readings in the field.
+        A layout that spreads out is not credited. Empty where a campaign of composites does not
+        know what single samples would do.
     """
-    question = replace(asked.question, locations=None, assurance=None, also=())
+    single = single_results(asked)
+    if single is None:
+        return []
+    question = replace(single, locations=None, assurance=None, also=())
     kinds: list[Kind] = []
     if len(question.parts) == 1:
         kinds.append(Shared(question, "simple random"))
@@ -183,7 +127,11 @@ def kinds_of(asked: Asked) -> list[Kind]:
         for allocation, label in ALLOCATIONS.items():
             if not (alike and allocation == "cost-optimal"):
                 kinds.append(Shared(replace(question, allocation=allocation), label))
-    kinds += [WithReadings(question, reading) for reading in readings_of(asked)]
+    composites = composites_of(asked, question)
+    if composites is not None:
+        kinds.append(composites)
+    alone = replace(asked, question=question)
+    kinds += [WithReadings(question, reading) for reading in readings_of(alone)]
     return kinds
 
 

@@ -282,12 +282,17 @@ def _assumptions(stakes: _Stakes) -> tuple[str, ...]:
     }[question.interval]
     return (
         f"The true mean was taken to lie {stakes.believed}; the chance that it is above the level "
-        f"is then {percent(stakes.belief.above(stakes.level))}.",
+        f"is then {_chance_words(stakes.belief.above(stakes.level))}.",
         f"The site is acted on where {compared} comes out above the level of "
         f"{with_unit(figure(stakes.level), question.unit)}; results are near normal.",
         "A wrong decision loses the same however far the true mean lies from the level. Harm to "
         "people is no sum of money; whoever decides must weigh it apart.",
     )
+
+
+def _chance_words(share: float) -> str:
+    """Write a chance; one too small for a decimal is said to be so."""
+    return "below 0.1 %" if 0 < share < 0.0005 else percent(share)
 
 
 def _picture(

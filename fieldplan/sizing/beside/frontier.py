@@ -14,16 +14,20 @@ from fieldplan.sizing.frontier import (
     most_precise,
     wanted_of,
 )
+from fieldplan.sizing.frontier_composites import INCREMENTS
 from fieldplan.sizing.frontier_kinds import Kind, kinds_of
 from fieldplan.sizing.model import Amount, Finding, Picture, Series, Size
 from fieldplan.sizing.precision import Precision
-from fieldplan.sizing.words import counted, figure, with_unit
+from fieldplan.sizing.words import counted, figure, listed, with_unit
 
 Style = Literal["line", "hollow", "points"]
 
 ROWS = 12
 """Most designs in the table."""
 
+COMPOSITES = (
+    "Berthouex & Brown 2002, Statistics for Environmental Engineers, 2nd ed., ch. 25 (composites)"
+)
 SOURCES = (
     "Cochran 1977, Sampling Techniques, 3rd ed., secs. 5.5 to 5.9 (strata) and ch. 12 (readings) "
     "(from memory)",
@@ -104,7 +108,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
         columns=columns,
         rows=rows,
         assumptions=_assumptions(asked, size, compared),
-        sources=SOURCES,
+        sources=(*SOURCES, *((COMPOSITES,) if "composites" in compared.rows else ())),
         picture=_picture(compared) if len(compared.rows) > 1 else None,
     )
 
@@ -130,11 +134,12 @@ def _own(asked: Asked, size: Size, needed: tuple[int, ...]) -> PricedDesign:
     """Price the plan as it stands."""
     question, precision = asked.question, Precision(asked.question)
     days = question.prices.crew_days(size.planned + question.targeted) if question.prices else 0
+    own_places = question.increments > 1 and not question.one_place
     return PricedDesign(
         "this plan",
         counted(size.needed, "result"),
         results=size.needed,
-        locations=size.planned,
+        locations=size.planned * (question.increments if own_places else 1),
         standard_error=precision.standard_error(needed),
         half_width=precision.half_width(needed),
         cost=size.cost or 0.0,
@@ -274,6 +279,12 @@ def _assumptions(asked: Asked, size: Size, compared: _Compared) -> tuple[str, ..
         )
     elif len(question.parts) > 1:
         lines.append("Results without strata are left out: not every stratum has a mean.")
+    if "composites" in compared.rows:
+        tried = listed([str(k) for k in INCREMENTS])
+        lines.append(
+            f"Composites are tried with {tried} increments; they give a mean and its spread, and "
+            "show no single place."
+        )
     if any(design.crew_days for design in compared.designs):
         lines.append("A crew visits as many places a day whether it samples or only reads there.")
     return tuple(lines)
@@ -290,14 +301,15 @@ def _picture(compared: _Compared) -> Picture:
         costs, reached = [d.cost for d in ordered], [wanted.of(d) for d in ordered]
         return Series(label, tuple(costs), tuple(reached), style)
 
-    rows = {label: compared.shown(row) for label, row in compared.rows.items()}
+    rows = {label: compared.shown(efficient(row)) for label, row in compared.rows.items()}
     lines = [series(label, row, "line") for label, row in rows.items() if row]
     ends = (best[0], best[-1])
     return Picture(
         kind="frontier",
         caption=(
             f"The {word} of the mean against money. Dots are designs that no other beats, rings "
-            "those that another beats in both; a line joins designs of one kind."
+            "those that another beats in both; a line joins designs of one kind. Far dearer designs "
+            "lie beyond its edge."
         ),
         alternative=(
             f"Designs from {compared.money(ends[0].cost)} with a "

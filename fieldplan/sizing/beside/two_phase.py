@@ -50,10 +50,12 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     Returns
     -------
     Finding or None
-        None where the campaign names no reading of the deciding analyte, for a census, and where
-        something else than the precision of a mean is asked.
+        None where the campaign names no reading of the deciding analyte, for a census, for
+        composites, and where something else than the precision of a mean is asked.
     """
     if not asked.sigma_known or size.question != "mean" or asked.question.census:
+        return None
+    if asked.question.increments > 1:
         return None
     readings = readings_of(asked)
     if not readings or asked.question.takes_all([entry.needed for entry in size.strata]):

@@ -1,10 +1,12 @@
 """Precision for the money, as the finding says it."""
 
+import math
 from dataclasses import replace
 
 import pytest
 
 from fieldplan.sizing import size_asked
+from fieldplan.sizing.frontier_composites import INCREMENTS
 from fieldplan.sizing.model import Finding
 from tests.unit.sizing.askings import asked_mean
 
@@ -142,3 +144,34 @@ def test_a_budget_is_the_money_that_designs_are_compared_at() -> None:
     numbers = amounts(finding)
     assert numbers["budget"] == 1700.0
     assert "For 1700 EUR the most precise is strata, Neyman (15 results" in finding.answer
+
+
+PARTS = ("sigma.sampling=10", "sigma.analysis=5", "cost.currency=EUR", "cost.per_increment=4",
+         "cost.per_location=30", "cost.per_analysis=60")  # fmt: skip
+
+
+def test_composites_join_where_the_parts_of_sigma_are_known() -> None:
+    """By hand for every number of increments tried: r = ⌈(676/k + 25) / 9⌉ at 90 + 4 k each."""
+    finding = found(sigma=math.hypot(24, 10, 5), standard_error=3.0, keys=PARTS)
+    assert finding is not None
+    numbers = amounts(finding)
+    bills = {k: math.ceil((676 / k + 25) / 9) * (90 + 4 * k) for k in INCREMENTS}
+    assert numbers["cost_composites"] == min(bills.values())
+    assert numbers["cost_simple_random"] == 78 * 90
+    best = min(bills, key=lambda k: bills[k])
+    assert (
+        f"composites ({bills[best] // (90 + 4 * best)} composites of {best} inc" in finding.answer
+    )
+
+
+def test_a_campaign_of_composites_is_set_beside_single_samples() -> None:
+    """The other way round: sigma of one sample is that of its parts, √701; own k is tried too."""
+    finding = found(
+        sigma=math.hypot(24, 10, 5), standard_error=3.0, keys=(*PARTS, "design.increments=30")
+    )
+    assert finding is not None
+    numbers = amounts(finding)
+    assert numbers["cost_simple_random"] == 78 * 90
+    bills = {k: math.ceil((676 / k + 25) / 9) * (90 + 4 * k) for k in (*INCREMENTS, 30)}
+    assert numbers["cost_composites"] == min(bills.values())
+    assert f"this plan costs {bills[30]} EUR" in finding.answer or "None of the" in finding.answer
