@@ -2,6 +2,7 @@
 
 import math
 
+import numpy as np
 import pytest
 
 from fieldplan.base.errors import DesignError
@@ -18,6 +19,8 @@ from fieldplan.stats.composite_costs import (
     most_precise_for_budget,
 )
 from fieldplan.stats.composites import ErrorParts, composite_sigma
+from fieldplan.stats.distributions import chi_square_quantile
+from fieldplan.stats.nested import nested_components
 from tests.factories import make_campaign, make_frame
 from tests.unit.sizing.askings import asked_mean
 
@@ -192,3 +195,33 @@ def test_bad_keys_are_refused_on_the_command_line() -> None:
         asked_mean(sigma=9.0, standard_error=1.0, keys=("sigma.analysis=-4",))
     with pytest.raises(BadOption, match="leave nothing of the whole"):
         asked_mean(sigma=9.0, standard_error=1.0, keys=("sigma.analysis=9.5",))
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize(("increments", "lowest"), [(10, 0.76), (30, 0.78)])
+def test_a_stated_chance_is_about_kept_by_simulated_pilots(increments: int, lowest: float) -> None:
+    """Simulation, seed fixed: 10 places, 2 jars, 2 analyses; 80 % stated.
+
+    Satterthwaite over parts of one file is approximate: 78 to 84 % were measured, and the bounds
+    stand 4·√(0.8·0.2/R) away from them.
+    """
+    rng, runs = np.random.default_rng(41), 1200
+    room = 4 * math.sqrt(0.16 / runs)
+    design = make_campaign().design[0].model_copy(update={"increments": increments})
+    truth = composite_sigma(PARTS, increments)
+    kept = 0
+    for _ in range(runs):
+        ground = rng.normal(0, 24, (10, 1, 1)) + rng.normal(0, 10, (10, 2, 1))
+        found = nested_components((ground + rng.normal(0, 5, (10, 2, 2))).tolist())
+        parts = tuple(
+            PartSpread(c.stage.replace(" l", "-l"), c.sigma, "x", c.degrees_of_freedom)
+            for c in found.components
+        )
+        whole = StratumSpread("lead", "meadow", math.sqrt(found.total), None, 10, "x")
+        spread = Spread("lead", "", (whole,), splits=(SplitSpread("lead", "meadow", parts),))
+        entry = spread_of_composites(spread, design).strata[0]
+        # n follows s as n = s²/SE² with the upper limit of s² put in; it is enough where that
+        # limit is above the true variance.
+        known = entry.degrees_of_freedom or 1
+        kept += entry.sigma**2 * known / chi_square_quantile(0.2, known) >= truth**2
+    assert lowest - room <= kept / runs <= 0.84 + room
