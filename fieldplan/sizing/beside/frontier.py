@@ -308,8 +308,8 @@ def _picture(compared: _Compared) -> Picture:
         kind="frontier",
         caption=(
             f"The {word} of the mean against money. Dots are designs that no other beats, rings "
-            "those that another beats in both; a line joins designs of one kind. Far dearer designs "
-            "lie beyond its edge."
+            "those that another beats in both; a line joins designs of one kind. Far dearer "
+            "designs lie beyond its edge."
         ),
         alternative=(
             f"Designs from {compared.money(ends[0].cost)} with a "
