@@ -132,27 +132,31 @@ def ranked_count(simple: float, size: int, precision: float) -> int:
     return size * max(2, whole(simple / precision / size))
 
 
-def highest_ranking_price(result_price: float, size: int, precision: float) -> float:
+def highest_ranking_price(result_price: float, size: int, *, simple: int, ranked: int) -> float:
     """Give the price of looking at one place below which ranking saves money.
 
     Parameters
     ----------
     result_price : float
-        Of one result: jar and analysis.
+        Of one result: visit, jar and analysis.
     size : int
         Places looked at for each result.
-    precision : float
-        From :func:`relative_precision`.
+    simple, ranked : int
+        Results of the two designs that are compared.
+
+    Returns
+    -------
+    float
+        0 where ranking saves no result.
 
     Notes
     -----
-    The precision of one simple random result costs (c + m·look)/RP by ranked sets, whole cycles
-    aside.
+    At this price ranked · (result + m · look) = simple · result.
 
     Examples
     --------
-    >>> round(highest_ranking_price(120.0, 3, relative_precision(3, correlation=0.7)), 2)
-    12.22
+    >>> highest_ranking_price(120.0, 3, simple=24, ranked=18)
+    13.333333333333334
     """
     _check_set(size)
-    return result_price * (precision - 1) / size
+    return max(0.0, (simple - ranked) * result_price / (size * ranked))

@@ -42,7 +42,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
         return None
     precision = relative_precision(m, correlation=correlation)
     results = sum(ranked_count(entry.needed, m, precision) for entry in size.strata)
-    price, most = _prices(asked, m, precision)
+    price, most = _prices(asked, m, simple=size.needed, ranked=results)
     return Finding(
         topic=TOPIC,
         title="Ranked sets",
@@ -62,7 +62,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     )
 
 
-def _prices(asked: Asked, m: int, precision: float) -> tuple[float | None, float | None]:
+def _prices(asked: Asked, m: int, *, simple: int, ranked: int) -> tuple[float | None, float | None]:
     """Give the price of a look as typed, and the highest at which ranking saves money."""
     cost, prices = asked.campaign.cost, asked.question.prices
     if cost is None or prices is None:
@@ -70,7 +70,7 @@ def _prices(asked: Asked, m: int, precision: float) -> tuple[float | None, float
     result = prices.of_a_visit + prices.of_a_result
     if result <= 0:
         return None, None
-    return cost.per_ranking or None, highest_ranking_price(result, m, precision)
+    return cost.per_ranking or None, highest_ranking_price(result, m, simple=simple, ranked=ranked)
 
 
 def _answer(
@@ -88,7 +88,7 @@ def _answer(
             f"Ranked sets of {m} by a sign that correlates {design.ranking_correlation:g} save "
             f"nothing here: whole cycles take {counted(results, 'result')} against {size.needed}."
         )
-    if most is None:
+    if not most:
         return line
     currency = asked.question.prices.currency if asked.question.prices else ""
     line += f" That saves money while a look costs less than {figure(most)} {currency}"

@@ -65,10 +65,10 @@ def test_ranking_by_chance_is_simple_random() -> None:
 
 
 def test_at_the_highest_price_both_ways_cost_the_same() -> None:
-    """By the definition of the price: (c + m·look)/RP = c."""
-    precision = relative_precision(4, correlation=0.8)
-    price = highest_ranking_price(90.0, 4, precision)
-    assert (90.0 + 4 * price) / precision == pytest.approx(90.0)
+    """By the definition of the price: ranked · (c + m·look) = simple · c."""
+    price = highest_ranking_price(90.0, 4, simple=30, ranked=20)
+    assert 20 * (90.0 + 4 * price) == pytest.approx(30 * 90.0)
+    assert highest_ranking_price(90.0, 4, simple=6, ranked=8) == 0.0
 
 
 def test_bad_numbers_are_refused_with_their_value() -> None:

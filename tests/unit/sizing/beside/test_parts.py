@@ -145,10 +145,9 @@ def test_ranked_sets_are_counted_in_whole_cycles() -> None:
 
 
 def test_a_ranking_that_costs_too_much_is_said_to() -> None:
-    """Break-even by definition: (c + 3·look)/RP = c."""
+    """Break-even by definition: 57 results of 94 and 171 looks cost what 78 results cost."""
     keys = ("design.ranking_set_size=3", "design.ranking_correlation=0.8")
-    precision = relative_precision(3, correlation=0.8)
-    price = 94.0 * (precision - 1) / 3
+    price = (78 - 57) * 94.0 / 171
     for typed, words in ((price - 0.5, "which is less"), (price + 0.5, "which is no less")):
         prices = [*PRICES, f"cost.per_ranking={typed:.2f}", "cost.per_sample=4"]
         finding = found("ranked-sets", *keys, *prices)
