@@ -13,6 +13,9 @@ from fieldplan.packet.sheets.rules import NON_DETECTS, rules_fingerprint, stated
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
 
+OF_SHARES = frozenset({"all-clear", "share", "upper-share"})
+"""Questions about the share of the population above a level."""
+
 
 def limits_blocks(plan: Plan) -> list[Block]:
     """Say what the results will be able to say and what not."""
@@ -40,16 +43,30 @@ def can_tell(plan: Plan) -> tuple[str, ...]:
     if besides := [n for n in names if n != plan.campaign.deciding_analyte.id]:
         words = listed([plan.campaign.analyte_called(name).label for name in besides])
         lines.append(f"The mean of {words} from the same jars, as closely as section 5 says.")
+    if _asks_for_a_share(plan):
+        lines.append(
+            "What section 5 says of a share, once the results above the level are counted: the "
+            "results sheet reports means and does not count."
+        )
     if several_strata(plan):
         lines.append("A mean for each stratum, with a wider interval than the site's.")
     return tuple(lines)
 
 
+def _asks_for_a_share(plan: Plan) -> bool:
+    return any(finding.topic in OF_SHARES for finding in plan.size.findings)
+
+
 def cannot_tell(plan: Plan) -> tuple[str, ...]:
     """List what the design does not support."""
     depth = plan.campaign.frame[0].depth_bottom_m is not None
+    share = (
+        "that nothing lies above a level"
+        if _asks_for_a_share(plan)
+        else "the share of the site above a level"
+    )
     lines = [
-        "The highest value, or the share of the site above a level.",
+        f"The highest value, or {share}.",
         "Anything outside the population: "
         + listed(
             [

@@ -223,7 +223,7 @@ def _finding(
         ),
         steps=steps,
         assumptions=assumptions(asked),
-        warnings=_warnings(table),
+        warnings=_warnings(asked, table),
         sources=(COCHRAN, HYPERGEOMETRIC if asked.population is not None else CLOPPER),
         picture=_picture(asked, table, total),
     )
@@ -247,7 +247,7 @@ def assumptions(asked: Asked) -> tuple[str, ...]:
     return tuple(lines)
 
 
-def _warnings(table: ShareTable) -> tuple[str, ...]:
+def _warnings(asked: Asked, table: ShareTable) -> tuple[str, ...]:
     lines = []
     if table.expected is None:
         lines.append("No share was expected, so 50 % was taken, which asks for the most results.")
@@ -257,9 +257,18 @@ def _warnings(table: ShareTable) -> tuple[str, ...]:
             f"The margin of {typed(100 * table.margin)} points is wider than the share expected: "
             "the interval will run into 0 or 100 %."
         )
-    if table.method == "normal":
+    if table.method == "normal" and table.margin is not None:
+        question = asked.question
+        exact = n_for_expected_reach(
+            _expected(table),
+            table.margin,
+            confidence=question.confidence,
+            kind=question.interval,
+            units=asked.population,
+        )
         lines.append(
-            "The normal formula forgets that counts are whole; the exact interval is wider."
+            "The normal formula forgets that counts are whole; for the exact interval to be "
+            f"expected within the margin it takes {exact}."
         )
     return tuple(lines)
 
