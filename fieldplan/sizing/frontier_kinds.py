@@ -1,19 +1,18 @@
 """The kinds of design that a campaign's data allow, each priced along its own row."""
 
 import math
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import Protocol
 
-from fieldplan.base.errors import DesignError
 from fieldplan.sizing.asked.model import Asked
-from fieldplan.sizing.field_readings import Reading, readings_of
-from fieldplan.sizing.frontier import POINTS, PricedDesign, Wanted, levels
+from fieldplan.sizing.field_readings import readings_of
+from fieldplan.sizing.frontier import POINTS, PricedDesign, Wanted
 from fieldplan.sizing.frontier_composites import composites_of, single_results
+from fieldplan.sizing.frontier_readings import WithReadings
 from fieldplan.sizing.frontier_shared import Shared
+from fieldplan.sizing.frontier_spread import spread_out
 from fieldplan.sizing.question import Part, Question
-from fieldplan.sizing.words import counted
 from fieldplan.stats.allocation import Allocation
-from fieldplan.stats.two_phase_split import Split, cheapest_split, most_precise_split
 
 ALLOCATIONS: dict[Allocation, str] = {
     "proportional": "strata, proportional",
@@ -39,63 +38,6 @@ class Kind(Protocol):
         """Trace designs on either side of a precision."""
 
 
-@dataclass(frozen=True)
-class WithReadings:
-    """Many field readings, and results from some of the same places."""
-
-    question: Question
-    reading: Reading
-
-    @property
-    def label(self) -> str:
-        """The results, and what is read."""
-        return f"results with {self.reading.name}"
-
-    def priced(self, split: Split | None) -> PricedDesign | None:
-        """Price given numbers of readings and results."""
-        if split is None:
-            return None
-        question, reading = self.question, self.reading
-        error = math.sqrt(max(0.0, reading.population.variance(*split)))
-        known = split.results - reading.population.strata - 1
-        wanted = Wanted("half_width", 0.0, question.confidence, question.interval)
-        visits = reading.visits(split)
-        return PricedDesign(
-            self.label,
-            f"{counted(split.results, 'result')} and {counted(split.readings, 'reading')}",
-            results=split.results,
-            locations=visits,
-            standard_error=error,
-            half_width=error * wanted.quantile(known),
-            cost=reading.price(*split),
-            crew_days=reading.prices.crew_days(visits + question.targeted),
-            readings=split.readings,
-        )
-
-    def cheapest(self, wanted: Wanted) -> PricedDesign | None:
-        """Give the cheapest readings and results that reach a precision."""
-        lost = self.reading.population.strata + 1
-        try:
-            split = cheapest_split(
-                self.reading.population,
-                target=lambda results: wanted.variance(results - lost),
-                price=self.reading.price,
-            )
-        except DesignError:
-            return None
-        return self.priced(split)
-
-    def most_precise(self, budget: float) -> PricedDesign | None:
-        """Give the most precise readings and results within a budget."""
-        population, price = self.reading.population, self.reading.price
-        return self.priced(most_precise_split(population, budget=budget, price=price))
-
-    def row(self, wanted: Wanted, points: int = POINTS) -> list[PricedDesign]:
-        """Trace the cheapest designs at precisions on either side."""
-        found = (self.cheapest(level) for level in levels(wanted, points=points))
-        return list({design.words: design for design in found if design}.values())
-
-
 def kinds_of(asked: Asked) -> list[Kind]:
     """List the kinds of design that the campaign's data allow.
 
@@ -108,9 +50,9 @@ def kinds_of(asked: Asked) -> list[Kind]:
     -------
     list of Kind
         The whole without strata (where every stratum's mean is known), the ways to share results
-        between strata, composites (where the parts of sigma are known), readings in the field.
-        A layout that spreads out is not credited. Empty where a campaign of composites does not
-        know what single samples would do.
+        between strata, places spread over the site (where the positions of a pilot predict what
+        that saves), composites (where the parts of sigma are known), readings in the field. Empty
+        where a campaign of composites does not know what single samples would do.
     """
     single = single_results(asked)
     if single is None:
@@ -127,9 +69,8 @@ def kinds_of(asked: Asked) -> list[Kind]:
         for allocation, label in ALLOCATIONS.items():
             if not (alike and allocation == "cost-optimal"):
                 kinds.append(Shared(replace(question, allocation=allocation), label))
-    composites = composites_of(asked, question)
-    if composites is not None:
-        kinds.append(composites)
+    more = (spread_out(asked, question), composites_of(asked, question))
+    kinds += [kind for kind in more if kind is not None]
     alone = replace(asked, question=question)
     kinds += [WithReadings(question, reading) for reading in readings_of(alone)]
     return kinds

@@ -6,7 +6,7 @@ from fieldplan.base.working import Quantity, Step
 from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.field_readings import Reading, readings_of
 from fieldplan.sizing.frontier import PricedDesign, Wanted, wanted_of
-from fieldplan.sizing.frontier_kinds import WithReadings
+from fieldplan.sizing.frontier_readings import WithReadings
 from fieldplan.sizing.model import Amount, Finding, Size
 from fieldplan.sizing.words import counted, figure, with_unit
 from fieldplan.stats.two_phase import (

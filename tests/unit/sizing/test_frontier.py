@@ -20,7 +20,8 @@ from fieldplan.sizing.frontier import (
     most_precise,
     wanted_of,
 )
-from fieldplan.sizing.frontier_kinds import WithReadings, without_strata
+from fieldplan.sizing.frontier_kinds import without_strata
+from fieldplan.sizing.frontier_readings import WithReadings
 from fieldplan.sizing.frontier_shared import Shared
 from fieldplan.sizing.money import Prices
 from fieldplan.sizing.precision import Precision

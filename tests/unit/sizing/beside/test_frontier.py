@@ -7,8 +7,20 @@ import pytest
 
 from fieldplan.sizing import size_asked
 from fieldplan.sizing.frontier_composites import INCREMENTS
+from fieldplan.sizing.frontier_spread import spread_out
 from fieldplan.sizing.model import Finding
+from fieldplan.sizing.pilot_ground import cells_of, pilot_ground
+from fieldplan.stats.spatial import weigh_field
+from fieldplan.stats.spread_layouts import n_for_layout
 from tests.unit.sizing.askings import asked_mean
+from tests.unit.sizing.beside.test_space import (
+    SITE,
+    asked_with,
+    entry,
+    field_at,
+    one_frame,
+    random_places,
+)
 
 PRICES = ("cost.currency=EUR", "cost.mobilisation=300", "cost.per_location=12",
           "cost.per_analysis=80")  # fmt: skip
@@ -175,3 +187,24 @@ def test_a_campaign_of_composites_is_set_beside_single_samples() -> None:
     bills = {k: math.ceil((676 / k + 25) / 9) * (90 + 4 * k) for k in (*INCREMENTS, 30)}
     assert numbers["cost_composites"] == min(bills.values())
     assert f"this plan costs {bills[30]} EUR" in finding.answer or "None of the" in finding.answer
+
+
+def test_places_spread_out_join_where_a_pilot_predicts_what_they_save() -> None:
+    """The count is that of n_for_layout for the same field; 92 EUR a place, as for random ones."""
+    places = random_places(30)
+    asked, _ = asked_with(one_frame(), entry(places, field_at(places)), target=2.0, keys=PRICES)
+    finding = next(f for f in size_asked(asked, beside="all").findings if f.topic == "frontier")
+    ground, site = pilot_ground(asked.entries, asked.frame), cells_of(SITE)
+    field = weigh_field(ground.places, ground.values, extent=site.extent)
+    n = n_for_layout(field, 2.0, layout="compact-strata", area=site.area)
+    assert amounts(finding)["cost_places_spread_out"] == 300 + 92 * n
+    assert any("--more space says how sure that is" in line for line in finding.assumptions)
+
+
+def test_a_leaning_or_a_small_pilot_earns_no_credit_for_spreading() -> None:
+    """The finding on space refuses them as well."""
+    for count, bend in ((12, 1.0), (30, 40.0)):
+        places = random_places(count)
+        values = [math.exp(value / bend) if bend > 1 else value for value in field_at(places)]
+        asked, _ = asked_with(one_frame(), entry(places, values), keys=PRICES)
+        assert spread_out(asked, asked.question) is None
