@@ -6,7 +6,7 @@ from typing import Any
 from fieldplan.campaign.problems import Problem, shown
 from fieldplan.campaign.table import tables
 
-OF_SINGLE_PLACES = ("all-clear", "share", "upper-share", "smallest-patch")
+OF_SINGLE_PLACES = ("all-clear", "share", "upper-share", "smallest-patch", "which-exceed")
 """Questions about single places, which a composite averages away."""
 
 PLACES = "between-locations"

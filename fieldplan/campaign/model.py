@@ -15,6 +15,7 @@ from fieldplan.campaign.questions.mean_and_level import MeanAndLevel
 from fieldplan.campaign.questions.share import ShareTable
 from fieldplan.campaign.questions.smallest_patch import SmallestPatch
 from fieldplan.campaign.questions.upper_share import UpperShare
+from fieldplan.campaign.questions.which_exceed import WhichExceed
 from fieldplan.campaign.table import (
     Identifier,
     NonNegativeNumber,
@@ -169,6 +170,7 @@ class Objective(Table):
         "all-clear",
         "share",
         "smallest-patch",
+        "which-exceed",
     ]
     standard_error: PositiveNumber | None = None
     half_width: PositiveNumber | None = None
@@ -186,6 +188,7 @@ class Objective(Table):
     mean_and_background: MeanAndBackground | None = None
     change: Change | None = None
     upper_share: UpperShare | None = None
+    which_exceed: WhichExceed | None = None
     share: ShareTable | None = None
 
 

@@ -46,6 +46,27 @@ def expected_tests(share: float, size: int) -> float:
     return 1 / size - math.expm1(size * math.log1p(-share))
 
 
+def analyses_of_units(share: float, size: int, units: int) -> float:
+    """Give the expected tests of a number of units: full pools, and one of those left over.
+
+    Parameters
+    ----------
+    share : float
+        Of units that are positive, inside (0, 1).
+    size : int
+        Units in a pool.
+    units : int
+
+    Examples
+    --------
+    >>> analyses_of_units(0.5, 2, 5)  # two pools of 1 + 2·0.75, and a single unit
+    6.0
+    """
+    full, left = divmod(units, size)
+    total = full * size * expected_tests(share, size)
+    return total + (left * expected_tests(share, left) if left else 0.0)
+
+
 def best_pool(share: float, *, largest: int | None = None) -> int:
     """Give the pool size with the fewest expected tests; 1 where pools do not pay.
 

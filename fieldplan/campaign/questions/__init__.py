@@ -12,6 +12,7 @@ from fieldplan.campaign.questions import (
     share,
     smallest_patch,
     upper_share,
+    which_exceed,
 )
 
 MODULES = {
@@ -22,10 +23,13 @@ MODULES = {
     "share": share,
     "smallest-patch": smallest_patch,
     "upper-share": upper_share,
+    "which-exceed": which_exceed,
 }
 """Question, as the campaign file names it, and its module."""
 
-WITHOUT_SIGMA = frozenset({"all-clear", "change", "share", "smallest-patch", "upper-share"})
+WITHOUT_SIGMA = frozenset(
+    {"all-clear", "change", "share", "smallest-patch", "upper-share", "which-exceed"}
+)
 """Questions that can be answered where nobody knows a standard deviation."""
 
 

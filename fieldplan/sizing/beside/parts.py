@@ -78,10 +78,11 @@ def finding(asked: Asked, size: Size) -> Finding | None:
         title="More places, more increments or a better laboratory",
         answer=_answer(asked, error, shares, changes),
         amounts=tuple(_amounts(asked, error, shares, changes)),
-        columns=("Part of sigma", "SD", "90 % interval", "From"),
+        columns=("Part of sigma", "SD", "90 % interval"),
         rows=tuple(_rows(splits)),
         steps=tuple(_steps(asked, error, changes)),
         assumptions=(
+            _origin(splits),
             *_not_told(shares),
             "The parts add as variances: a place differs from its neighbours, a jar from the next "
             "jar of the same place, an analysis from the next of the same jar.",
@@ -93,6 +94,12 @@ def finding(asked: Asked, size: Size) -> Finding | None:
         warnings=tuple(_warnings(splits)),
         sources=(SEARLE, MLS),
     )
+
+
+def _origin(splits: Sequence[SplitSpread]) -> str:
+    """Name the sources of the parts."""
+    named = {f"{part.part.replace('-', ' ')}: {part.source}" for s in splits for part in s.parts}
+    return f"Where the parts come from: {'; '.join(sorted(named))}."
 
 
 def _not_told(shares: Mapping[str, float]) -> tuple[str, ...]:
@@ -205,7 +212,7 @@ def _rows(splits: Sequence[SplitSpread]) -> Iterator[tuple[str, ...]]:
         where = f" in {split.stratum}" if len(splits) > 1 else ""
         for part in split.parts:
             name = part.part.replace("-", " ") + where
-            yield name, figure(part.sigma), _interval(part), part.source
+            yield name, figure(part.sigma), _interval(part)
 
 
 def _interval(part: PartSpread) -> str:
