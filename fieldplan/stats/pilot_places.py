@@ -108,7 +108,9 @@ def is_bunched(places: Places, cells: Places, *, seed: int = 0) -> bool:
     for _ in range(RANDOM_DRAWS):
         drawn = cells[random.choice(len(cells), len(places), replace=False)]
         lower += worth_of_weights(area_weights(drawn, cells)) <= found
-    return (lower + 1) / (RANDOM_DRAWS + 1) <= RARE
+        if lower + 1 > RARE * (RANDOM_DRAWS + 1):
+            return False
+    return True
 
 
 def weighed_spread(

@@ -14,7 +14,7 @@ from fieldplan.stats.precision import meets, smallest
 from fieldplan.stats.spatial import (
     CurveShape,
     Field,
-    Places,
+    PairDistances,
     correlation_in_region,
     correlation_in_square,
     correlation_to_centre,
@@ -95,17 +95,15 @@ def layout_variance(field: Field, n: int, *, layout: SpreadLayout, area: float) 
     return _averaged(field, unexplained) / n
 
 
-def random_variance(field: Field, n: int, *, cells: Places, cell_side: float) -> float:
+def random_variance(field: Field, n: int, *, pairs: PairDistances) -> float:
     """Predict the variance of the site mean from n places drawn at random over the site.
 
     Parameters
     ----------
     field : Field
     n : int
-    cells : array of shape (m, 2)
-        Centres of equal cells that cover the site.
-    cell_side : float
-        The root of the area of one cell.
+    pairs : PairDistances
+        Over all pairs of places of the site.
 
     Returns
     -------
@@ -118,7 +116,7 @@ def random_variance(field: Field, n: int, *, cells: Places, cell_side: float) ->
     """
 
     def unexplained(shape: CurveShape, reach: float) -> float:
-        return 1 - correlation_in_region(cells, cell_side, reach, shape=shape)
+        return 1 - correlation_in_region(pairs, reach, shape=shape)
 
     return _averaged(field, unexplained) / n
 

@@ -22,6 +22,7 @@ from fieldplan.sizing.beside.space_words import (
     spread_picture,
     spread_warnings,
 )
+from fieldplan.sizing.frontier_spread import site_field
 from fieldplan.sizing.model import Amount, Finding, Size
 from fieldplan.sizing.pilot_ground import PilotGround, cells_of, pilot_ground
 from fieldplan.sizing.visits import ABOUT_MEANS
@@ -33,7 +34,7 @@ from fieldplan.stats.pilot_places import (
     weighed_spread,
     worth_of_weights,
 )
-from fieldplan.stats.spatial import FEWEST_PLACES, Field, weigh_field
+from fieldplan.stats.spatial import FEWEST_PLACES, Field, pair_distances
 from fieldplan.stats.spread_layouts import layout_variance, n_for_layout, random_variance
 from fieldplan.stats.summary import sample_skewness
 
@@ -142,12 +143,12 @@ def _predicted(frame: "Frame", size: Size, ground: PilotGround) -> Predicted | N
     site = shapely.union_all([s.geometry for s in frame.strata if s.geometry is not None])
     cells = cells_of(site)
     try:
-        field = weigh_field(ground.places, ground.values, extent=cells.extent)
+        field = site_field(ground.places, ground.values, extent=cells.extent)
     except DesignError:
         return None
     target = size.target_standard_error or size.standard_error or 0.0
     plain = float(ground.values.std(ddof=1)) / math.sqrt(2)
-    random = math.sqrt(random_variance(field, 2, cells=cells.centres, cell_side=cells.side))
+    random = math.sqrt(random_variance(field, 2, pairs=pair_distances(cells.centres, cells.side)))
     return Predicted(
         field=field,
         area=cells.area,

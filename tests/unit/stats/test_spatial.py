@@ -18,6 +18,7 @@ from fieldplan.stats.spatial import (
     correlation_in_square,
     correlation_to_centre,
     distances,
+    pair_distances,
     weigh_field,
 )
 from tests.simulated_fields import KINDS, Kind, cells_of, draw_fields
@@ -138,8 +139,19 @@ def test_cells_of_a_square_give_what_the_integral_gives(shape: CurveShape) -> No
     at = (np.arange(20) + 0.5) / 20
     cells = np.column_stack([grid.ravel() for grid in np.meshgrid(at, at)])
     for reach in (0.2, 1.0):
-        found = correlation_in_region(cells, 1 / 20, reach, shape=shape)
+        found = correlation_in_region(pair_distances(cells, 1 / 20), reach, shape=shape)
         assert found == pytest.approx(correlation_in_square(1.0, reach, shape=shape), abs=5e-4)
+
+
+@pytest.mark.parametrize("shape", SHAPES)
+def test_classes_of_distance_lose_nothing(shape: CurveShape) -> None:
+    """Brute force over the whole matrix of an irregular site, one cell at a time inside itself."""
+    cells = cells_of("crescent+box", 24)
+    for reach in (0.1, 0.5):
+        whole = correlation_at(distances(cells, cells), reach, shape=shape)
+        np.fill_diagonal(whole, correlation_in_square(1 / 24, reach, shape=shape))
+        found = correlation_in_region(pair_distances(cells, 1 / 24), reach, shape=shape)
+        assert found == pytest.approx(whole.mean(), rel=1e-4)
 
 
 def test_every_curve_is_tried_once(pilot: tuple[Floats, Floats]) -> None:

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.assurance import chance_of_half_width
 from fieldplan.stats.intervals import t_quantile
-from fieldplan.stats.spatial import Field, correlation_at, distances, weigh_field
+from fieldplan.stats.spatial import Field, correlation_at, distances, pair_distances, weigh_field
 from fieldplan.stats.spread_layouts import (
     SpreadLayout,
     layout_variance,
@@ -60,7 +60,7 @@ def test_without_structure_every_layout_is_simple_random(layout: SpreadLayout) -
     field = known(0.3, 1.0, variance=36.0)
     assert layout_variance(field, 9, layout=layout, area=500.0) == pytest.approx(4.0)
     cells = square_cells(10)
-    assert random_variance(field, 9, cells=cells, cell_side=0.1) == pytest.approx(4.0)
+    assert random_variance(field, 9, pairs=pair_distances(cells, 0.1)) == pytest.approx(4.0)
 
 
 @pytest.mark.parametrize(("reach", "nugget"), [(0.1, 0.0), (0.5, 0.25), (2.0, 0.5)])
@@ -87,7 +87,7 @@ def test_random_places_have_the_variance_inside_the_site() -> None:
     whole = correlation_at(distances(cells, cells), 0.4, shape="exponential")
     m = len(cells)
     brute = (1 - (whole.sum() - m) / (m * (m - 1))) / 12
-    found = random_variance(known(0.4, 0.0), 12, cells=cells, cell_side=1 / 24)
+    found = random_variance(known(0.4, 0.0), 12, pairs=pair_distances(cells, 1 / 24))
     assert found == pytest.approx(brute, rel=0.01)
 
 
@@ -95,14 +95,14 @@ def test_random_places_have_the_variance_inside_the_site() -> None:
 def test_spreading_never_loses_and_more_places_never_hurt(curve: tuple[float, float]) -> None:
     """Grid ≤ compact strata ≤ simple random for falling curves, each falling with n."""
     field = known(*curve)
-    cells = square_cells(20)
+    pairs = pair_distances(square_cells(20), 1 / 20)
     counts = np.arange(4, 90, 5)
     strata = standard_errors(field, counts, layout="compact-strata", area=1.0)
     grid = standard_errors(field, counts, layout="square-grid", area=1.0)
     assert (np.diff(strata) < 0).all()
     assert (np.diff(grid) < 0).all()
     for n, between, even in zip(counts, strata, grid, strict=True):
-        thrown = math.sqrt(random_variance(field, int(n), cells=cells, cell_side=1 / 20))
+        thrown = math.sqrt(random_variance(field, int(n), pairs=pairs))
         assert even <= between * (1 + 1e-9)
         assert between <= thrown * 1.001
 
