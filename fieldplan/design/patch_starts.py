@@ -24,12 +24,12 @@ CENTRES = 256
 MOST_NODES = 50_000
 BATCH = 60_000
 """Nodes laid at a time."""
-MOST_LAID = 1_000_000
+MOST_LAID = 500_000
 """Nodes laid in all to find starts with the exact count."""
 FEWEST = 16
 """Starts with the exact count below which starts with any count are averaged."""
-TURNS = 4
-"""Directions of the patch within each start, where its direction is unknown."""
+TURNS, TURNS_OF_NEEDLES = 2, 8
+"""Directions of the patch within each start, where its direction is unknown; needles need more."""
 _GOLDEN = 0.6180339887498949
 
 
@@ -49,6 +49,8 @@ class GridStarts:
         Keep only starts that put exactly the count inside, as the layout does.
     losses : tuple of float
         Share of nodes in each stratum that yield nothing; dropped at random.
+    starts : int
+        How many to look at.
 
     Notes
     -----
@@ -62,6 +64,7 @@ class GridStarts:
     grid: Grid
     exact_count: bool = True
     losses: tuple[float, ...] = ()
+    starts: int = STARTS
     _known: dict[tuple[int, ...], tuple[Numbers, bool]] = field(default_factory=dict, repr=False)
 
     def chance(self, counts: Sequence[int], *, scale: float = 1.0) -> PatchChance:
@@ -107,10 +110,11 @@ class GridStarts:
         block = self._centres.places[self._centres.block(number, CENTRES)]
         turning = self._centres.turning
         found = []
-        for part, places in enumerate(np.array_split(block, TURNS) if turning else [block]):
+        turns = TURNS if self.patch.shape >= 0.25 else TURNS_OF_NEEDLES
+        for part, places in enumerate(np.array_split(block, turns) if turning else [block]):
             angle = math.radians(self.direction or 0.0)
             if turning:
-                angle = math.pi * ((0.5 + (number * TURNS + part) * _GOLDEN) % 1.0)
+                angle = math.pi * ((0.5 + (number * turns + part) * _GOLDEN) % 1.0)
             tree = KDTree(self._stretched(nodes, angle))
             found.append(tree.query(self._stretched(places, angle))[0])
         return np.concatenate(found)
@@ -131,7 +135,7 @@ class GridStarts:
                 "looked at. Give a larger patch or a lower probability."
             )
             raise DesignError(message)
-        wanted = int(min(STARTS, max(8, 400_000 // count)))
+        wanted = min(self.starts, max(8, 400_000 // count))
         any_count: list[Numbers] = []
         kept: list[Numbers] = []
         polygon, side = polygons_of(self.frame)[number], self.grid.spacing(stratum.measure, count)
@@ -263,6 +267,7 @@ def patch_chances(
     direction: float | None = None,
     exact_count: bool = True,
     losses: tuple[float, ...] = (),
+    starts: int = STARTS,
 ) -> PatchChances:
     """Return what a layout makes of a patch on a population.
 
@@ -279,6 +284,8 @@ def patch_chances(
         For grids.
     losses : tuple of float
         Share of locations in each stratum that yield nothing.
+    starts : int
+        For grids.
 
     Raises
     ------
@@ -287,7 +294,7 @@ def patch_chances(
     """
     grids = {grid.name: grid for grid in (SQUARE_GRID, TRIANGULAR_GRID)}
     if layout in grids:
-        return GridStarts(frame, patch, direction, grids[layout], exact_count, losses)
+        return GridStarts(frame, patch, direction, grids[layout], exact_count, losses, starts)
     if layout in ("simple-random", "stratified"):
         return RandomPlaces(frame, patch, direction)
     message = f'layout "{layout}" visits what is on a list; a patch lies in an area.'

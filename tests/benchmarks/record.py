@@ -4,6 +4,7 @@ import sys
 from collections.abc import Callable, Iterator
 
 from tests.benchmarks.commands import timed_commands
+from tests.benchmarks.patches import measured as measured_patches
 from tests.benchmarks.placement import COUNTS, VERTICES, measured
 
 
@@ -32,7 +33,22 @@ def commands() -> Iterator[str]:
         )
 
 
-SECTIONS: dict[str, Callable[[], Iterator[str]]] = {"placement": placement, "commands": commands}
+def patches() -> Iterator[str]:
+    """Yield the table of the section "Patches"."""
+    yield "| work | aim | shortest | peer | its shortest | ratio |"
+    yield "| --- | --- | --- | --- | --- | --- |"
+    for row in measured_patches():
+        yield (
+            f"| {row.name} | {row.aim_s * 1000:g} ms | {row.seconds * 1000:.0f} ms | {row.peer} "
+            f"| {row.peer_s * 1000:.0f} ms | {row.peer_s / row.seconds:.0f} |"
+        )
+
+
+SECTIONS: dict[str, Callable[[], Iterator[str]]] = {
+    "placement": placement,
+    "commands": commands,
+    "patches": patches,
+}
 
 if __name__ == "__main__":
     for name in sys.argv[1:] or SECTIONS:

@@ -27,6 +27,8 @@ if TYPE_CHECKING:
     from fieldplan.design.patch_chance import PatchChances
 
 LATTICES = {"square-grid": SQUARE, "triangular-grid": TRIANGULAR}
+STARTS, FEW_STARTS = 256, 64
+"""Starts of a grid that are averaged, and those for a first guess."""
 DOUBTFUL_SHARE = 0.25
 """Of the patch's width: above it no chance is claimed (half the radius of a circle)."""
 
@@ -155,6 +157,14 @@ class PatchQuestion:
     @cached_property
     def chances(self) -> "PatchChances":
         """What the layout makes of the patch, on the true population where there is one."""
+        return self._chances(STARTS)
+
+    @cached_property
+    def rough_chances(self) -> "PatchChances":
+        """The same from a few starts of a grid, for a first guess."""
+        return self._chances(FEW_STARTS)
+
+    def _chances(self, starts: int) -> "PatchChances":
         frame = self.asked.frame
         if frame is None:
             return EndlessGround(self.areas, self.design.layout, self.patch, self.losses)
@@ -167,6 +177,7 @@ class PatchQuestion:
             direction=self.direction,
             exact_count=self.design.exact_count,
             losses=self.losses,
+            starts=starts,
         )
 
     def planned(self, counts: Sequence[int]) -> tuple[int, ...]:

@@ -131,7 +131,7 @@ def _scaled_guess(question: PatchQuestion, start: int) -> int:
 
     def excess(total: int) -> float:
         counts = question.laid(asked.shared(total))
-        scale = question.chances.smallest_scale(counts, question.table.probability)
+        scale = question.rough_chances.smallest_scale(counts, question.table.probability)
         return math.log(scale / question.reach)
 
     first = excess(start)
