@@ -262,7 +262,7 @@ def near_bound(margin: float, share: float, *, confidence: float, power: float) 
     Examples
     --------
     >>> round(near_bound(3.0, 0.95, confidence=0.95, power=0.8), 1)
-    13.6
+    11.0
     """
     z = normal_quantile(share)
     at_share = normal_quantile(confidence) * math.sqrt(1 + z**2 / 2)

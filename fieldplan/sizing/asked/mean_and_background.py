@@ -1,23 +1,22 @@
 """The site mean against that of a background area: results in each."""
 
-import math
-
-from fieldplan.base.working import Quantity, Step
+from fieldplan.base.working import Step
 from fieldplan.campaign.questions.mean_and_background import MeanAndBackground
+from fieldplan.sizing.asked.background_steps import (
+    POOLED,
+    RANKS,
+    RULE,
+    WELCH,
+    background_steps,
+    words_of_test,
+)
 from fieldplan.sizing.asked.counting_claims import table_missing
 from fieldplan.sizing.asked.model import Answered, Asked
 from fieldplan.sizing.asked.two_populations import OVERAGE, TwoPopulations
 from fieldplan.sizing.model import Amount, Finding, Picture, Series
 from fieldplan.sizing.words import counted, figure, percent, typed, typed_percent, with_unit
-from fieldplan.stats.distributions import normal_quantile
-from fieldplan.stats.precision import whole
-from fieldplan.stats.rank_tests import rank_sum_formula_n, rank_sum_share
 
 TITLE = "Site mean and background mean"
-WELCH = "Welch 1947, Biometrika 34:28 (from memory); power by the noncentral t"
-POOLED = "EPA QA/G-9 (2000), section 3.3.1; power by the noncentral t"
-RULE = "NUREG-1575 (MARSSIM) rev. 1, section 5.5.2 (from memory)"
-RANKS = "Lehmann 1975, Nonparametrics, sec. 2.3 (from memory)"
 
 
 def count(asked: Asked) -> Answered:
@@ -38,7 +37,7 @@ def count(asked: Asked) -> Answered:
     """
     both = TwoPopulations(asked, _table(asked))
     needed = both.needed
-    finding = _finding(both, needed, _answer(both, needed), _steps(both, needed))
+    finding = _finding(both, needed, _answer(both, needed), background_steps(both, needed))
     apart = with_unit(typed(both.table.difference), asked.question.unit)
     return Answered(needed, f"a difference of {apart} from the background", finding)
 
@@ -65,7 +64,7 @@ def _answer(both: TwoPopulations, counts: tuple[int, ...]) -> str:
     power, alpha = percent(both.power(counts)), typed_percent(table.alpha)
     opening = (
         f"{counted(sum(counts), 'site result')} and {both.background(counts)} background results "
-        f"({there}), compared by {_test_words(table)}: "
+        f"({there}), compared by {words_of_test(table)}: "
     )
     if table.assume == "above-background":
         return opening + (
@@ -80,127 +79,6 @@ def _answer(both: TwoPopulations, counts: tuple[int, ...]) -> str:
     return opening + (
         f"if the site mean lies {apart} above the background mean, {power} of such campaigns show "
         f"it to lie above; if the two are alike, {alpha} do so wrongly."
-    )
-
-
-def _test_words(table: MeanAndBackground) -> str:
-    if table.test == "ranks":
-        return "the rank sum test"
-    return "a pooled t test" if table.variances == "alike" else "Welch's t test"
-
-
-def _steps(both: TwoPopulations, needed: tuple[int, ...]) -> tuple[Step, ...]:
-    if both.table.test == "ranks":
-        return _rank_steps(both, needed)
-    table, unit = both.table, both.asked.question.unit
-    z_alpha = normal_quantile(1 - table.alpha / both.sides)
-    z_beta = normal_quantile(1 - table.beta)
-    spread = both.site_sigma**2 + both.background_sigma**2 / both.ratio
-    fixed = table.background_results
-    shared = (
-        Quantity("z_α", "normal quantile of 1 − α" + (" / 2" if both.sides == 2 else ""), z_alpha),
-        Quantity("z_β", "normal quantile of 1 − β", z_beta),
-        Quantity("Δ", "difference that must not be missed", table.difference, unit),
-        Quantity("s1", "standard deviation of single site results", both.site_sigma, unit),
-        Quantity("s2", "standard deviation of background results", both.background_sigma, unit),
-    )
-    if fixed is None:
-        formula = "n = (z_α + z_β)² (s1² + s2²/r) / Δ²"
-        first = ((z_alpha + z_beta) / table.difference) ** 2 * spread
-        extra = (Quantity("r", "background results for each of the site", both.ratio),)
-    else:
-        formula = "n = s1² / (Δ² / (z_α + z_β)² − s2²/m)"
-        room = (table.difference / (z_alpha + z_beta)) ** 2 - both.background_sigma**2 / fixed
-        first = both.site_sigma**2 / room if room > 0 else float(sum(needed))
-        extra = (Quantity("m", "background results there", fixed, "results"),)
-    return (
-        Step(
-            symbol="n",
-            meaning="Site results, first pass with both spreads known",
-            formula=formula,
-            inputs=(*shared, *extra),
-            unrounded=first,
-            rounded=float(whole(first)),
-            unit="results",
-            source="normal theory; EPA QA/G-9 (2000), section 3.3.1, without its t correction",
-        ),
-        _power_step(both, needed),
-    )
-
-
-def _power_step(both: TwoPopulations, needed: tuple[int, ...]) -> Step:
-    power = both.power(needed)
-    return Step(
-        symbol="power",
-        meaning=f"Chance of {_test_words(both.table)} to tell the difference: the fewest results "
-        "that keep it at 1 − β or above",
-        formula="noncentral t"
-        if both.table.variances == "alike"
-        else "noncentral t, averaged over the ratio of the two sample variances",
-        inputs=(
-            Quantity("n", "site results", sum(needed), "results"),
-            Quantity("m", "background results", both.background(needed), "results"),
-            Quantity("β", "chance to miss the difference", both.table.beta),
-        ),
-        unrounded=power,
-        rounded=power,
-        source=POOLED if both.table.variances == "alike" else WELCH,
-    )
-
-
-def _rank_steps(both: TwoPopulations, needed: tuple[int, ...]) -> tuple[Step, ...]:
-    table, unit = both.table, both.asked.question.unit
-    spread = math.sqrt((both.site_sigma**2 + both.background_sigma**2) / 2)
-    share = rank_sum_share(table.difference, spread)
-    first = Step(
-        symbol="P",
-        meaning="Chance that a site result lies above a background result",
-        formula="P = Φ(Δ / (s √2))",
-        inputs=(
-            Quantity("Δ", "difference that must not be missed", table.difference, unit),
-            Quantity("s", "standard deviation of single results", spread, unit),
-        ),
-        unrounded=share,
-        rounded=share,
-        source=RULE,
-    )
-    if table.background_results is not None:
-        power = both.power(needed)
-        return (
-            first,
-            Step(
-                symbol="power",
-                meaning="Chance of the rank sum test to tell the difference: the fewest results "
-                "that keep it at 1 − β or above",
-                formula="normal curve with the exact mean and variance of the pairs in order",
-                inputs=(
-                    Quantity("n", "site results", sum(needed), "results"),
-                    Quantity("m", "background results there", table.background_results, "results"),
-                ),
-                unrounded=power,
-                rounded=power,
-                source=RANKS,
-            ),
-        )
-    overage = OVERAGE if table.overage is None else table.overage
-    plain = rank_sum_formula_n(share, alpha=table.alpha, beta=table.beta)
-    return (
-        first,
-        Step(
-            symbol="n",
-            meaning="Results in each population by the published rule, rounded up once",
-            formula="n = (1 + o) (z_α + z_β)² / (6 (P − 0.5)²)",
-            inputs=(
-                Quantity("P", "chance of a pair in order", share),
-                Quantity("α", "chance to leave the assumption", table.alpha),
-                Quantity("β", "chance to miss the difference", table.beta),
-                Quantity("o", "overage for lost and unusable results", overage),
-            ),
-            unrounded=(1 + overage) * plain,
-            rounded=float(sum(needed)),
-            unit="results",
-            source=RULE,
-        ),
     )
 
 

@@ -102,55 +102,60 @@ def _margin(asked: Asked) -> float:
 
 
 def _steps(asked: Asked, table: UpperShare, n: int) -> tuple[Step, ...]:
+    return (_margin_step(asked), _number_step(asked, table, n), _factor_step(table, n))
+
+
+def _margin_step(asked: Asked) -> Step:
     question, margin = asked.question, _margin(asked)
-    unit = question.unit
-    power = table.power or 0.0
-    near = near_bound(margin, table.share, confidence=table.confidence, power=power)
-    return (
-        Step(
-            symbol="m",
-            meaning="Distance from the expected mean to the level, in standard deviations",
-            formula="m = (L − mean) / s",
-            inputs=(
-                Quantity("L", "level", asked.level or 0.0, unit),
-                Quantity("mean", "expected mean", question.mean or 0.0, unit),
-                Quantity(
-                    "s", "standard deviation of single results", question.parts[0].sigma, unit
-                ),
-            ),
-            unrounded=margin,
-            rounded=margin,
-            source="definition",
+    sigma = question.parts[0].sigma
+    return Step(
+        symbol="m",
+        meaning="Distance from the expected mean to the level, in standard deviations",
+        formula="m = (L − mean) / s",
+        inputs=(
+            Quantity("L", "level", asked.level or 0.0, question.unit),
+            Quantity("mean", "expected mean", question.mean or 0.0, question.unit),
+            Quantity("s", "standard deviation of single results", sigma, question.unit),
         ),
-        Step(
-            symbol="n",
-            meaning="Results whose bound comes out below the level often enough; first pass by the "
-            "large-sample variance of mean + k s, then exactly",
-            formula="smallest n with P(T(n − 1, m √n) > k √n) ≥ power",
-            inputs=(
-                Quantity("m", "distance to the level", margin),
-                Quantity("p", "share that shall lie below the level", table.share),
-                Quantity("C", "confidence", table.confidence),
-                Quantity("power", "chance wanted", power),
-            ),
-            unrounded=near,
-            rounded=float(n),
-            unit="results",
-            source=OWEN,
+        unrounded=margin,
+        rounded=margin,
+        source="definition",
+    )
+
+
+def _number_step(asked: Asked, table: UpperShare, n: int) -> Step:
+    margin, power = _margin(asked), table.power or 0.0
+    return Step(
+        symbol="n",
+        meaning="Results whose bound comes out below the level often enough; first pass by the "
+        "large-sample variance of mean + k s, then exactly",
+        formula="smallest n with P(T(n − 1, m √n) > k √n) ≥ power",
+        inputs=(
+            Quantity("m", "distance to the level", margin),
+            Quantity("p", "share that shall lie below the level", table.share),
+            Quantity("C", "confidence", table.confidence),
+            Quantity("power", "chance wanted", power),
         ),
-        Step(
-            symbol="k",
-            meaning="Factor of the bound mean + k s",
-            formula="P(T(n − 1, z √n) ≤ k √n) = C, z the normal quantile of p",
-            inputs=(
-                Quantity("n", "results", n, "results"),
-                Quantity("p", "share", table.share),
-                Quantity("C", "confidence", table.confidence),
-            ),
-            unrounded=_factor(n, table),
-            rounded=round(_factor(n, table), 3),
-            source=OWEN,
+        unrounded=near_bound(margin, table.share, confidence=table.confidence, power=power),
+        rounded=float(n),
+        unit="results",
+        source=OWEN,
+    )
+
+
+def _factor_step(table: UpperShare, n: int) -> Step:
+    return Step(
+        symbol="k",
+        meaning="Factor of the bound mean + k s",
+        formula="P(T(n − 1, z √n) ≤ k √n) = C, z the normal quantile of p",
+        inputs=(
+            Quantity("n", "results", n, "results"),
+            Quantity("p", "share", table.share),
+            Quantity("C", "confidence", table.confidence),
         ),
+        unrounded=_factor(n, table),
+        rounded=round(_factor(n, table), 3),
+        source=OWEN,
     )
 
 
