@@ -8,18 +8,20 @@ from typing import TYPE_CHECKING
 from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Part, Question
-from fieldplan.stats.mean_shape import Shape, fitting_shapes, n_by_skewness
+from fieldplan.stats.mean_shape import Shape, expanded_misses, fitting_shapes, n_by_skewness
+from fieldplan.stats.mean_simulation import FEWEST, TOO_MANY, Sampled, simulate_coverage
 from fieldplan.stats.shape import Family, skewness_of_mean, t_misses
 
 if TYPE_CHECKING:
     from fieldplan.lab.model import StratumSpread
-    from fieldplan.stats.mean_simulation import Sampled
-
 QUICK_DRAWS = 150_000
 """Values drawn for one shape that the table does not hold, which takes about 4 ms."""
 
-LARGE = 10
-"""A list of so many times the results is taken as a large population."""
+TABLE_ENDS = 36.0
+"""Skewness beyond which the table of simulated t statistics holds nothing."""
+
+LARGE, LONG = 10, 1_000
+"""A list of so many times the results, or of so many units, is taken as a large population."""
 
 AS_SKEWED = " of the skewness seen or typed"
 
@@ -174,11 +176,13 @@ def misses(question: Question, shape: SiteShape, counts: Sequence[int]) -> Misse
     Notes
     -----
     Without zeros from the table of simulated t statistics (200,000 samples a cell), strata by the
-    single sample whose mean leans as much; with zeros, and for short lists, simulated on the spot.
+    single sample whose mean leans as much; with zeros, for short lists and beyond the table,
+    simulated on the spot; above 2,000 results by the Edgeworth expansion.
     """
-    if shape.zeros or short_list(question, counts):
-        from fieldplan.stats.mean_simulation import FEWEST, simulate_coverage
-
+    lean_most = max(abs(part.skewness) for part in shape.parts)
+    if shape.zeros and sum(counts) > TOO_MANY and len(counts) == 1:
+        return _expanded(question, shape.parts[0], counts[0])
+    if shape.zeros or short_list(question, counts) or lean_most > TABLE_ENDS:
         parts = sampled(question, shape, counts)
         found = simulate_coverage(
             parts,
@@ -194,10 +198,19 @@ def misses(question: Question, shape: SiteShape, counts: Sequence[int]) -> Misse
     return Misses(low, high, math.sqrt((low + high) * (1 - low - high) / 200_000))
 
 
-def sampled(question: Question, shape: SiteShape, counts: Sequence[int]) -> "tuple[Sampled, ...]":
-    """Set the parts as a simulation takes them."""
-    from fieldplan.stats.mean_simulation import Sampled
+def _expanded(question: Question, shape: Shape, n: int) -> Misses:
+    low, high = expanded_misses(
+        n,
+        shape.skewness,
+        shape.excess_kurtosis,
+        confidence=question.confidence,
+        kind=question.interval,
+    )
+    return Misses(low, high, 0.0)
 
+
+def sampled(question: Question, shape: SiteShape, counts: Sequence[int]) -> tuple[Sampled, ...]:
+    """Set the parts as a simulation takes them."""
     return tuple(
         Sampled(
             part.weight,
@@ -216,7 +229,7 @@ def short_list(question: Question, counts: Sequence[int]) -> bool:
 
 
 def _is_short(part: Part, count: int) -> bool:
-    return part.population is not None and part.population < LARGE * count
+    return part.population is not None and part.population < min(LARGE * count, LONG)
 
 
 def equivalent(question: Question, shape: SiteShape, counts: Sequence[int]) -> tuple[int, float]:

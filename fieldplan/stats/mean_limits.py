@@ -49,7 +49,8 @@ def n_within_a_point(
     top = bottom = 0.0
     for share in (4, 2, 1):
         part = Sampled(1.0, 1.0, min(max(8, first // share), 500), shape)
-        found = simulate_coverage((part,), confidence=confidence, kind=kind)
+        many = max(4_000, min(40_000, 1_000_000 // part.results))
+        found = simulate_coverage((part,), confidence=confidence, kind=kind, campaigns=many)
         term = part.results**-power
         weight = term / max(found.standard_error, 1e-4) ** 2
         top += weight * (1 - found.held - expected(part.results))
@@ -82,9 +83,9 @@ def largest_cv(family: Family, seen: float, *, results: int, chance: float = 0.1
     Notes
     -----
     An upper confidence limit by inverting the test: bisection over populations, with the same
-    random numbers for each, 1,000 pilots or more. It knows the coefficient of variation alone;
-    where single results are at hand their likelihood says more, see
-    ``censoring_forecast.fit_censored``.
+    random numbers for each, 60,000 results or 200 pilots. It knows the coefficient of variation
+    alone; where single results are at hand their likelihood says more, see
+    ``censored_fit.fit_censored``.
 
     Examples
     --------
@@ -96,7 +97,7 @@ def largest_cv(family: Family, seen: float, *, results: int, chance: float = 0.1
     if results < 2 or not seen > 0:
         message = f"a pilot needs 2 results and some spread, not {results} and a CV of {seen!r}."
         raise DesignError(message)
-    pilots = max(1000, 60_000 // results)
+    pilots = max(200, 60_000 // results)
 
     def hides(cv: float) -> float:
         shape = Shape(family, cv)

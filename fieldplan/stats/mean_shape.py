@@ -220,6 +220,45 @@ def edgeworth_misses(
     return 1 - confidence - second + (first if kind == "upper-limit" else -first)
 
 
+def expanded_misses(
+    n: float, skewness: float, excess_kurtosis: float, *, confidence: float, kind: IntervalKind
+) -> tuple[float, float]:
+    """Give the two sides of :func:`edgeworth_misses`, each held in [0, 1]: too low, too high.
+
+    Examples
+    --------
+    >>> low, high = expanded_misses(2000, 4.0, 38.0, confidence=0.95, kind="two-sided")
+    >>> round(low, 4), round(high, 4)
+    (0.0334, 0.0183)
+    """
+    one = (1 + confidence) / 2 if kind == "two-sided" else confidence
+    low, high = (
+        edgeworth_misses(n, skewness, excess_kurtosis, confidence=one, kind=side) for side in _SIDES
+    )
+    low, high = min(max(low, 0.0), 1.0), min(max(high, 0.0), 1.0)
+    return (0.0 if kind == "lower-limit" else low), (0.0 if kind == "upper-limit" else high)
+
+
+_SIDES: tuple[IntervalKind, IntervalKind] = ("upper-limit", "lower-limit")
+
+
+def expanded_quantile(level: float, skewness_of_mean: float) -> float:
+    """Give how many standard errors the mean lies from the truth at this level.
+
+    Notes
+    -----
+    z + γ (z² − 1) / (6√n), first term of Cornish & Fisher (1937), Revue de l'Institut
+    International de Statistique 5:307; ``skewness_of_mean`` is γ/√n.
+
+    Examples
+    --------
+    >>> round(expanded_quantile(0.95, 0.1), 3)
+    1.673
+    """
+    z = normal_quantile(level)
+    return z + skewness_of_mean * (z * z - 1) / 6
+
+
 def n_by_skewness(
     skewness: float, *, confidence: float, kind: IntervalKind, family: Family, within: float = POINT
 ) -> int | None:

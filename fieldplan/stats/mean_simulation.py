@@ -33,6 +33,9 @@ BLOCK = 250_000
 BAND = 0.90
 """Share of campaigns whose mean lies within the band."""
 
+TOO_MANY = 2_000
+"""Above so many results the expansions of the mean serve, and drawing takes too long."""
+
 
 @dataclass(frozen=True)
 class Sampled:

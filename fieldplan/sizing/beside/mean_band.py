@@ -20,6 +20,7 @@ from fieldplan.sizing.question import Question
 from fieldplan.sizing.shapes import (
     Misses,
     SiteShape,
+    equivalent,
     misses,
     part_mean,
     pilot_values,
@@ -31,7 +32,16 @@ from fieldplan.sizing.shapes import (
 )
 from fieldplan.sizing.words import counted, figure, percent, typed_percent, with_unit
 from fieldplan.stats.distributions import normal_quantile
-from fieldplan.stats.mean_shape import POINT, Shape, missed_altogether, share_met, units_missed
+from fieldplan.stats.mean_limits import largest_cv, n_within_a_point
+from fieldplan.stats.mean_shape import (
+    POINT,
+    Shape,
+    expanded_quantile,
+    missed_altogether,
+    share_met,
+    units_missed,
+)
+from fieldplan.stats.mean_simulation import BAND, TOO_MANY, simulate_coverage
 from fieldplan.stats.shape import Family
 
 Style = Literal["line", "dashes", "points", "hollow", "band-low", "band-high"]
@@ -43,13 +53,19 @@ RARE = (0.01, 0.02, 0.05, 0.10, 0.20)
 RARE_UNITS = (1, 2, 3, 5)
 """The same for units of a list."""
 
-FEWEST, MOST, DRAWS = 4_000, 20_000, 400_000
+FEWEST, MOST, DRAWS = 2_000, 20_000, 400_000
 """Campaigns drawn for each point of the band, and values: its ends are good to about 2 %."""
+
+SHOWS_ALL = 500
+"""A pilot of more results is taken to show its tail."""
 
 WIDEST = 3.0
 """A longer tail than so many times the coefficient of variation seen is not spelled out."""
 
 HALL = "Hall 1992, Journal of the Royal Statistical Society B 54:221 (from memory)"
+
+HALL_MOST = 500
+"""Results up to which the corrected interval is simulated beside Student's."""
 
 STEPS = (0.25, 0.4, 0.6, 1.0, 1.6, 2.5, 4.0)
 """Numbers of results on the picture, as multiples of the planned one."""
@@ -96,24 +112,9 @@ def finding(asked: Asked, size: Size) -> Finding | None:
 
 def _amounts(asked: Asked, counts: Sequence[int], judged: Sequence[Judged]) -> tuple[Amount, ...]:
     """Simulate the corrected interval, and n for shapes with zeros, which no table holds."""
-    from fieldplan.stats.mean_limits import n_within_a_point
-    from fieldplan.stats.mean_simulation import simulate_coverage
-
-    question = asked.question
-    confidence, kind = question.confidence, question.interval
-    found = [
-        simulate_coverage(
-            sampled(question, shape, counts), confidence=confidence, kind=kind, campaigns=10_000
-        )
-        for shape, _ in judged
-    ]
-    low = min(found, key=lambda one: one.held_by_hall)
-    amounts = [
-        Amount("held_by_hall", "Held by the closed form corrected for skewness, worst shape",
-               low.held_by_hall),
-        Amount("simulation_error", "Standard error of that share, from simulating",
-               low.standard_error),
-    ]  # fmt: skip
+    question, amounts = asked.question, []
+    if sum(counts) <= HALL_MOST:
+        amounts += _corrected(question, counts, judged)
     if question.total_population is None:
         met = "Smallest part of the site that is met at least once in 95 of 100 campaigns"
         amounts.append(Amount("share_met", met, share_met(sum(counts))))
@@ -122,12 +123,34 @@ def _amounts(asked: Asked, counts: Sequence[int], judged: Sequence[Judged]) -> t
             Amount(
                 f"n_within_a_point_{shape.parts[0].family}_with_zeros",
                 f"Results for one point short at most, {shape.name}",
-                n_within_a_point(shape.parts[0], confidence=confidence, kind=kind),
+                n_within_a_point(
+                    shape.parts[0], confidence=question.confidence, kind=question.interval
+                ),
             )
             for shape, _ in judged
             if shape.zeros
         ]
     return tuple(amounts)
+
+
+def _corrected(question: Question, counts: Sequence[int], judged: Sequence[Judged]) -> list[Amount]:
+    """Simulate what an interval corrected for skewness would hold, under the worst shape."""
+    found = [
+        simulate_coverage(
+            sampled(question, shape, counts),
+            confidence=question.confidence,
+            kind=question.interval,
+            campaigns=max(FEWEST, min(10_000, DRAWS // sum(counts))),
+        )
+        for shape, _ in judged
+    ]
+    low = min(found, key=lambda one: one.held_by_hall)
+    error = math.sqrt(low.held_by_hall * (1 - low.held_by_hall) / low.campaigns)
+    return [
+        Amount("held_by_hall", "Held by the closed form corrected for skewness, worst shape",
+               low.held_by_hall),
+        Amount("simulation_error", "Standard error of that share, from simulating", error),
+    ]  # fmt: skip
 
 
 def _hidden(asked: Asked, counts: Sequence[int]) -> tuple[str, ...]:
@@ -159,11 +182,10 @@ def _wider(asked: Asked) -> list[tuple[Family, float]]:
     From the likelihood of its results where they are at hand, else from the CV alone.
     """
     from fieldplan.stats.censored_fit import FEWEST_DETECTS, fit_censored
-    from fieldplan.stats.mean_limits import largest_cv
 
     part = asked.question.parts[0]
     mean = part_mean(asked.question, part)
-    if part.results is None or part.results < 2 or not mean > 0:
+    if part.results is None or not 2 <= part.results <= SHOWS_ALL or not mean > 0:
         return []
     families: tuple[Family, ...] = ("gamma", "lognormal")
     entry = asked.entries[0] if asked.entries else None
@@ -178,8 +200,6 @@ def _wider(asked: Asked) -> list[tuple[Family, float]]:
 
 def _band(question: Question, counts: Sequence[int], shape: SiteShape) -> list[Row]:
     """Simulate the band, and judge the misses, from a quarter to four times the planned n."""
-    from fieldplan.stats.mean_simulation import BAND, simulate_coverage
-
     total, least = sum(counts), 2 * len(counts)
     numbers = {max(least, round(total * step)) for step in STEPS}
     numbers |= {TEXTBOOK} if least <= TEXTBOOK and min(numbers) < TEXTBOOK < max(numbers) else set()
@@ -188,15 +208,26 @@ def _band(question: Question, counts: Sequence[int], shape: SiteShape) -> list[R
         at = within_lists(question, list(counts) if number == total else scaled(counts, number))
         if at is None:
             continue
-        drawn = simulate_coverage(
-            sampled(question, shape, at),
-            confidence=question.confidence,
-            kind=question.interval,
-            campaigns=max(FEWEST, min(MOST, DRAWS // number)),
-        )
-        reach = _normal_reach(question, at, BAND)
-        rows.append((float(sum(at)), drawn.band, misses(question, shape, at), reach))
+        reach, band = _normal_reach(question, at, BAND), _expanded_band(question, shape, at)
+        if number <= TOO_MANY:
+            band = simulate_coverage(
+                sampled(question, shape, at),
+                confidence=question.confidence,
+                kind=question.interval,
+                campaigns=max(FEWEST, min(MOST, DRAWS // number)),
+            ).band
+        rows.append((float(sum(at)), band, misses(question, shape, at), reach))
     return rows
+
+
+def _expanded_band(
+    question: Question, shape: SiteShape, counts: Sequence[int]
+) -> tuple[float, float]:
+    """Give the band by the first term of the expansion of a mean."""
+    n, lean = equivalent(question, shape, counts)
+    error = Precision(question).standard_error(counts)
+    low, high = (expanded_quantile(level, lean / math.sqrt(n)) for level in (0.05, 0.95))
+    return low * error, high * error
 
 
 def _picture(asked: Asked, counts: Sequence[int], shape: SiteShape) -> Picture:
@@ -272,8 +303,10 @@ def _band_sentence(asked: Asked, picture: Picture, total: int) -> str:
     """Say between what ends nine campaigns in ten put the mean."""
     low, high = picture.series[0], picture.series[1]
     place = low.x.index(float(total))
-    ends = [figure(line.y[place]).replace("-", "−") for line in (low, high)]
     centre = picture.levels[0][1]
+    dust = 1e-6 * (high.y[place] - low.y[place])
+    reached = (line.y[place] for line in (low, high))
+    ends = [figure(0.0 if abs(end) < dust else end).replace("-", "−") for end in reached]
     where = f"the truth is {with_unit(figure(centre), asked.question.unit)}"
     if not centre:
         return (

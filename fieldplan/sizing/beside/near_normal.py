@@ -25,6 +25,9 @@ from fieldplan.stats.mean_shape import POINT
 TEXTBOOK = 30
 """The number that is handed down for data that are not normal (common practice, no source)."""
 
+MEANS = ("mean", "mean-and-level")
+"""Questions whose answer is the interval of one mean."""
+
 SOURCES = (
     "Cochran 1977, Sampling Techniques, 3rd ed., sec. 2.15 (from memory)",
     "Hall 1992, The Bootstrap and Edgeworth Expansion, sec. 2.6 (from memory)",
@@ -72,7 +75,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
 def judge(asked: Asked, counts: Sequence[int]) -> list[Judged]:
     """Judge every shape that fits; none where no mean with an interval is asked for."""
     question = asked.question
-    if not asked.objective.question.startswith("mean") or not asked.sigma_known:
+    if asked.objective.question not in MEANS or not asked.sigma_known:
         return []
     if question.takes_all(tuple(counts)) or min(counts) < 2:
         return []

@@ -5,6 +5,7 @@ from collections.abc import Sequence
 
 from fieldplan.base.working import Quantity, Step
 from fieldplan.sizing.asked.model import Asked
+from fieldplan.sizing.beside.near_normal import MEANS
 from fieldplan.sizing.model import Amount, Finding, Size
 from fieldplan.sizing.non_detects import (
     Forecast,
@@ -63,7 +64,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     question = asked.question
     counts = [entry.needed for entry in size.strata]
     limit = reporting_limit(asked)
-    asks_mean = asked.objective.question.startswith("mean") and asked.sigma_known
+    asks_mean = asked.objective.question in MEANS and asked.sigma_known
     if limit is None or not asks_mean or min(counts) < 2 or question.takes_all(tuple(counts)):
         return None
     if rough_share(asked, limit) < MATTERS:

@@ -14,6 +14,8 @@ from fieldplan.stats.mean_shape import (
     Shape,
     cv_of_skewness,
     edgeworth_misses,
+    expanded_misses,
+    expanded_quantile,
     fitting_shapes,
     missed_altogether,
     n_by_skewness,
@@ -196,3 +198,22 @@ def test_what_no_population_has_is_refused(call: Callable[[], object]) -> None:
     """One clear line instead of a number from nowhere."""
     with pytest.raises(DesignError, match=r"not|must|give"):
         call()
+
+
+def test_the_two_sides_add_up_to_the_whole() -> None:
+    """An interval's misses are those of its two limits at half the rest."""
+    for shape in (Shape("gamma", 1.0), Shape("lognormal", 0.5, zeros=0.2)):
+        given = (800, shape.skewness, shape.excess_kurtosis)
+        whole = edgeworth_misses(*given, confidence=0.9, kind="two-sided")
+        low, high = expanded_misses(*given, confidence=0.9, kind="two-sided")
+        assert low + high == pytest.approx(whole, abs=1e-12)
+        assert low > high > 0
+    assert expanded_misses(10, 30.0, 0.0, confidence=0.95, kind="lower-limit") == (0.0, 1.0)
+
+
+def test_quantiles_of_a_mean_by_expansion_are_near_exact_ones() -> None:
+    """A mean of exponentials is a gamma: scipy's quantiles, the next term is of the size 1/n."""
+    for n in (100, 1000, 10_000):
+        for level in (0.05, 0.95):
+            exact = (stats.gamma.ppf(level, n) - n) / math.sqrt(n)
+            assert expanded_quantile(level, 2 / math.sqrt(n)) == pytest.approx(exact, abs=2 / n)

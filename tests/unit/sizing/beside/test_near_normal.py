@@ -238,3 +238,19 @@ def test_more_says_it_in_full_and_json_holds_it() -> None:
     )
     assert refused.exit_code == 2
     assert "nothing given says anything about it" in refused.stderr
+
+
+def test_thousands_of_results_are_judged_by_expansion_and_agree_with_drawing() -> None:
+    """At the border of 2,000 both ways must give the same misses and the same band."""
+    asked = asked_mean(sigma=10.0, mean=10.0, results=20, standard_error=2.5)
+    values = [2.5, 2.5, 8.0, 15.0, 22.0, 60.0, 31.0, 12.0]
+    asked = with_pilot(asked, values, [False] * 2 + [True] * 6)
+    shape = next(shape for shape in site_shapes(asked) if shape.zeros)
+    quick = misses(asked.question, shape, [2001])
+    drawn = simulate_coverage(
+        sampled(asked.question, shape, [1999]), confidence=0.95, kind="two-sided", campaigns=4_000
+    )
+    assert quick.held == pytest.approx(drawn.held, abs=4 * drawn.standard_error)
+    low, high = mean_band._expanded_band(asked.question, shape, [1999])
+    room = 4 * math.sqrt(0.05 * 0.95 / 4_000) / 0.103 * (high - low) / 3.29
+    assert (low, high) == pytest.approx(drawn.band, abs=room)
