@@ -130,7 +130,7 @@ def _of_composite(
     if lacking or split is None:
         averaged = "the ground" if lacking == ANALYSIS else "sampling at one place"
         message = (
-            f"design.increments = {design.increments!r}: increments average {averaged} only, and "
+            f"design takes composites: increments average {averaged} only, and "
             f"nothing says how large the rest of sigma is in stratum '{entry.stratum}'. Add a "
             f'[[sigma]] table with part = "{lacking}", or a pilot with duplicates that tell it.'
         )
