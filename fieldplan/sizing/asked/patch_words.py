@@ -10,6 +10,8 @@ SOURCES = (
     "Gilbert 1987, Statistical Methods for Environmental Pollution Monitoring, ch. 10 (from "
     "memory)",
 )
+FINE_M = 10.0
+"""A grid finer than this is set out with tape; common practice, no source."""
 _PLACES = {
     "square-grid": "on a square grid",
     "triangular-grid": "on a triangular grid",
@@ -78,14 +80,22 @@ def beyond(question: PatchQuestion, most: int) -> str:
 
 
 def warnings(question: PatchQuestion, spacing: float | None) -> tuple[str, ...]:
-    """Warn where the receiver is coarse beside the spacing of a grid."""
-    if spacing is None or question.error_m <= spacing / 4:
+    """Warn where a grid is finer than a receiver can set out."""
+    if spacing is None:
         return ()
-    return (
-        f"The receiver finds a place within {typed(question.error_m)} m, more than a quarter of "
-        f"the grid's spacing of {figure(spacing)} m: set the grid out with tape and offset from "
-        "two control points.",
-    )
+    rest = "set the grid out with tape and offset from two control points."
+    if question.error_m > spacing / 4:
+        return (
+            f"The receiver finds a place within {typed(question.error_m)} m, more than a quarter "
+            f"of the grid's spacing of {figure(spacing)} m: {rest}",
+        )
+    if spacing < FINE_M and not question.error_m:
+        return (
+            f"The grid's spacing is {figure(spacing)} m, and nobody said how well the receiver "
+            f"finds a place (position_accuracy_m): unless it is good to {figure(spacing / 4)} m, "
+            f"{rest}",
+        )
+    return ()
 
 
 def assumptions(question: PatchQuestion, found: PatchChance) -> tuple[str, ...]:

@@ -189,6 +189,9 @@ def test_receiver_coarse_beside_the_spacing_is_warned_of() -> None:
     assert "tape and offset" in found.warnings[0]
     assert bought(on_numbers("square-grid", accuracy=5.0), (12,)).warnings == ()
     assert bought(on_numbers("simple-random", accuracy=9.0), (12,)).warnings == ()
+    fine = bought(on_numbers("square-grid"), (480,)).warnings  # 5 m apart
+    assert "unless it is good to 1.25 m" in fine[0]
+    assert bought(on_numbers("square-grid", accuracy=0.05), (480,)).warnings == ()
 
 
 def test_losses_ask_for_more_locations_on_a_grid_and_are_said() -> None:
