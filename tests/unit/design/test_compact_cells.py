@@ -34,7 +34,7 @@ def test_cells_cover_the_polygon_once(count):
 
 
 def test_the_polygons_are_what_the_whole_numbers_say():
-    """A place goes to a cell by whole numbers, the weight comes from the polygon: they must agree."""
+    """A place goes to a cell by whole numbers, its weight comes from the polygon."""
     field = ground()
     cells = compact_cells(field, 20)
     shapes = cell_polygons(field, cells)
