@@ -17,12 +17,14 @@ from fieldplan.sizing.beside.time_words import (
 )
 from fieldplan.sizing.model import Amount, Finding, Picture, Series, Size
 from fieldplan.sizing.visit_series import VisitSeries, series_of
-from fieldplan.sizing.visits import ABOUT_MEANS
+from fieldplan.sizing.visits import ABOUT_MEANS, unhidden_sigma
 from fieldplan.sizing.words import counted, figure, percent, with_unit
+from fieldplan.stats.period_mean import period_variance_share
 from fieldplan.stats.time_series import (
     effective_number,
     inflation,
     rho_at,
+    sigma_of_series,
     visits_by_inflation,
     visits_needed,
 )
@@ -153,7 +155,19 @@ def _amounts(asked: Asked, size: Size, worth: float) -> tuple[Amount, ...]:
             visits_needed(independent, rho),
             "visits",
         ),
+        *_of_the_period(asked, size),
     )
+
+
+def _of_the_period(asked: Asked, size: Size) -> tuple[Amount, ...]:
+    """Give the standard error for the mean of the very period that the visits are spread over."""
+    entry = asked.entries[0]
+    if entry.visits is None or not entry.visits.planned_rho > 0:
+        return ()
+    share = period_variance_share(size.needed, entry.visits.planned_rho)
+    error = unhidden_sigma(entry.sigma, entry) * math.sqrt(share)
+    meaning = "Standard error for the mean of the very period, visits spread evenly over it"
+    return (Amount("period_standard_error", meaning, error, asked.question.unit),)
 
 
 def _steps(asked: Asked, size: Size) -> tuple[Step, ...]:
@@ -260,7 +274,9 @@ def _of_pilot(asked: Asked, size: Size, series: VisitSeries, seen: "SeriesCorrel
     """Say what the pilot shows, and what n would be if the campaign counted it."""
     rho = max(seen.rho, 0.0)
     independent = size.unrounded or float(size.needed)
-    would = visits_needed(independent, rho)
+    # The s of visits in a row hides part of sigma, so more is asked for than it seems.
+    asked_for = independent * sigma_of_series(1.0, seen.n, rho) ** 2
+    would = visits_needed(asked_for, rho)
     clear = seen.low > 0
     apart = f"{seen.n} visits of the pilot, usually {figure(seen.spacing_days)} days apart,"
     if clear:
@@ -291,13 +307,13 @@ def _of_pilot(asked: Asked, size: Size, series: VisitSeries, seen: "SeriesCorrel
             Amount(
                 "visits_by_factor",
                 "The same by the factor (1 + ρ)/(1 − ρ)",
-                visits_by_inflation(independent, rho),
+                visits_by_inflation(asked_for, rho),
                 "visits",
             ),
             Amount(
                 "visits_high",
                 "The same at the upper end",
-                visits_needed(independent, max(seen.high, 0.0)),
+                visits_needed(asked_for, max(seen.high, 0.0)),
                 "visits",
             ),
         ),

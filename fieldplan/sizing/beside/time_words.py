@@ -98,8 +98,9 @@ def visit_assumptions(asked: Asked) -> tuple[str, ...]:
     """Say under what conditions visits are worth what is said."""
     lines = [
         "n counts visits to one place, evenly spaced; the correlation of visits k apart is ρ^k.",
-        "The long-run mean is asked for. The mean of the very season that is sampled is known "
-        "better than this, and by visits closer together better still.",
+        "The long-run mean is asked for. The mean of the very period in which the visits are made "
+        "is known far better: what lies between two like visits is known from them. That holds "
+        "for what varies in the water or ground, not for errors of the laboratory.",
         "The factor (1 + ρ)/(1 − ρ) decides n; it neglects the ends of the series and asks for a "
         "visit or two more than the whole sum.",
     ]

@@ -16,6 +16,7 @@ from fieldplan.sizing.model import Finding
 from fieldplan.sizing.question import Part, Question
 from fieldplan.sizing.visit_series import series_of
 from fieldplan.sizing.visits import as_visits, unhidden_sigma
+from fieldplan.stats.period_mean import period_variance_share
 from fieldplan.stats.series_correlation import correlation_of_visits
 from fieldplan.stats.time_series import effective_number, results_behind_sigma, sigma_of_series
 from tests.unit.sizing.askings import asked_mean, asked_numbers
@@ -235,3 +236,24 @@ def test_results_that_are_no_visits_to_one_place_are_no_series(changes: dict[str
     assert series_of([monthly(drifting(12), **changes)]) is None
     assert series_of([monthly(drifting(12))]) is not None
     assert series_of([monthly(drifting(7))]) is None
+
+
+def test_what_the_pilot_shows_is_what_n_becomes_once_it_is_declared() -> None:
+    """Writing the shown correlation into the campaign must give the number that was foretold."""
+    values = drifting(60, seed=1)
+    plain = with_entries(asked_mean(sigma=2.0, standard_error=0.5), monthly(values))
+    foretold = amounts(finding(plain, size_asked(plain)))
+    rho = float(foretold["rho"] or 0.0)
+    declared = monthly(values, visits=VisitCorrelation(rho))
+    asked = with_entries(asked_mean(sigma=2.0, standard_error=0.5), declared)
+    assert size_asked(asked).plain_n == foretold["visits_by_factor"]
+
+
+def test_the_mean_of_the_very_period_is_known_better() -> None:
+    """By hand from the share of the function, with sigma as typed."""
+    asked = asked_mean(sigma=6.0, standard_error=1.0, keys=(RHO,))
+    numbers = amounts(finding(asked, size_asked(asked)))
+    assert numbers["period_standard_error"] == pytest.approx(
+        6 * math.sqrt(period_variance_share(75, 0.35))
+    )
+    assert (numbers["period_standard_error"] or 9) < 6 / math.sqrt(75)
