@@ -217,10 +217,11 @@ def _gather(
     unit = next(a.unit for a in campaign.analyte if a.id == analyte)
     known = {s.name.casefold(): s.name for s in frame.strata}
     gathered = _Gathered(analyte, unit, tuple(s.name for s in frame.strata))
-    own_tables, own = of_analyte(tables, campaign, analyte)
+    own_tables, written = of_analyte(tables, campaign, analyte)
+    own = [s.model_copy(update={"stratum": _named_stratum(s, known) or None}) for s in written]
     gathered.parts = gather_parts(own_tables, own, analyte)
     for entry, read in zip(own, own_tables, strict=True):
-        sigma, table, named = entry, read, _named_stratum(entry, known)
+        sigma, table, named = entry, read, entry.stratum or ""
         if sigma.part == PLACES:
             sigma, table = whole_from_parts(gathered.parts, named, sigma), None
         if sigma.part != "total":

@@ -118,7 +118,7 @@ def _answer(asked: Asked, units: int, size: int, tests: float) -> str:
     if prices is None or not prices.per_analysis:
         return line
     saved = (units - tests) * prices.per_analysis
-    return f"{line} That saves about {saved:.0f} {prices.currency} of the cost below."
+    return f"{line} That saves about {saved:.0f} {prices.currency} of the expected cost."
 
 
 def _rows(share: float, size: int, cap: int | None) -> Iterator[tuple[str, ...]]:

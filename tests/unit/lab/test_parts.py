@@ -172,3 +172,14 @@ def test_a_part_of_nothing_needs_no_degrees_of_freedom() -> None:
     assert satterthwaite_of([(4.0, 8.0), (0.0, None)]) == 8.0
     assert satterthwaite_of([(4.0, 8.0), (1.0, None)]) is None
     assert satterthwaite_of([(0.0, None)]) is None
+
+
+def test_a_part_may_be_typed_for_the_site_by_that_word(spread_of: Say) -> None:
+    """As the whole sigma may be: "site" is the site where no stratum has that name."""
+    spread = spread_of(typed("total", 9.0), typed("analysis", 4.0, stratum="site"))
+    assert sigmas(spread)["analysis"] == 4.0
+    own = spread_of(
+        typed("total", 9.0), typed("analysis", 4.0), typed("analysis", 2.0, stratum="yard"),
+        frame=make_frame(),
+    )  # fmt: skip
+    assert (sigmas(own, 0)["analysis"], sigmas(own, 1)["analysis"]) == (4.0, 2.0)
