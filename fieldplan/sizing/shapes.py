@@ -8,7 +8,8 @@ from typing import TYPE_CHECKING
 from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Part, Question
-from fieldplan.stats.mean_shape import Shape, expanded_misses, fitting_shapes, n_by_skewness
+from fieldplan.stats.mean_expansion import expanded_misses
+from fieldplan.stats.mean_shape import Shape, fitting_shapes, n_by_skewness
 from fieldplan.stats.mean_simulation import FEWEST, TOO_MANY, Sampled, simulate_coverage
 from fieldplan.stats.shape import Family, skewness_of_mean, t_misses
 

@@ -6,7 +6,8 @@ from functools import lru_cache
 
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.intervals import IntervalKind
-from fieldplan.stats.mean_shape import FURTHEST, POINT, Shape, edgeworth_misses
+from fieldplan.stats.mean_expansion import edgeworth_misses
+from fieldplan.stats.mean_shape import FURTHEST, POINT, Shape
 from fieldplan.stats.mean_simulation import SEED, Sampled, draw_standardised, simulate_coverage
 from fieldplan.stats.shape import Family
 

@@ -32,16 +32,11 @@ from fieldplan.sizing.shapes import (
 )
 from fieldplan.sizing.words import counted, figure, percent, typed_percent, with_unit
 from fieldplan.stats.distributions import normal_quantile
+from fieldplan.stats.mean_expansion import expanded_quantile
 from fieldplan.stats.mean_limits import largest_cv, n_within_a_point
-from fieldplan.stats.mean_shape import (
-    POINT,
-    Shape,
-    expanded_quantile,
-    missed_altogether,
-    share_met,
-    units_missed,
-)
+from fieldplan.stats.mean_shape import POINT, Shape
 from fieldplan.stats.mean_simulation import BAND, TOO_MANY, simulate_coverage
+from fieldplan.stats.rare_part import missed_altogether, share_met, units_missed
 from fieldplan.stats.shape import Family
 
 Style = Literal["line", "dashes", "points", "hollow", "band-low", "band-high"]

@@ -10,19 +10,9 @@ from hypothesis import strategies as st
 from scipy import stats
 
 from fieldplan.base.errors import DesignError
-from fieldplan.stats.mean_shape import (
-    Shape,
-    cv_of_skewness,
-    edgeworth_misses,
-    expanded_misses,
-    expanded_quantile,
-    fitting_shapes,
-    missed_altogether,
-    n_by_skewness,
-    n_to_meet,
-    share_met,
-    units_missed,
-)
+from fieldplan.stats.mean_expansion import edgeworth_misses, expanded_misses, expanded_quantile
+from fieldplan.stats.mean_shape import Shape, cv_of_skewness, fitting_shapes, n_by_skewness
+from fieldplan.stats.rare_part import missed_altogether, n_to_meet, share_met, units_missed
 from tests.unit.stats.published import row
 
 CVS = (0.2, 0.5, 1.0, 1.5)
