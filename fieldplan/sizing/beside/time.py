@@ -5,26 +5,27 @@ from typing import TYPE_CHECKING
 
 from fieldplan.base.working import Step
 from fieldplan.sizing.asked.model import Asked
+from fieldplan.sizing.beside.time_pilot import of_pilot
 from fieldplan.sizing.beside.time_words import (
     BAYLEY,
-    MARRIOTT,
+    LIST_OF_DAYS,
+    TITLE,
     carried_step,
     factor_step,
-    pilot_assumptions,
+    interval_words,
     raised_step,
     visit_assumptions,
     worth_step,
 )
 from fieldplan.sizing.model import Amount, Finding, Picture, Series, Size
-from fieldplan.sizing.visit_series import VisitSeries, series_of
+from fieldplan.sizing.visit_series import series_of
 from fieldplan.sizing.visits import ABOUT_MEANS, unhidden_sigma
-from fieldplan.sizing.words import counted, figure, percent, with_unit
+from fieldplan.sizing.words import counted, figure
 from fieldplan.stats.period_mean import period_variance_share
 from fieldplan.stats.time_series import (
     effective_number,
     inflation,
     rho_at,
-    sigma_of_series,
     visits_by_inflation,
     visits_needed,
 )
@@ -33,11 +34,6 @@ if TYPE_CHECKING:
     from fieldplan.lab.model import StratumSpread
     from fieldplan.stats.series_correlation import SeriesCorrelation
 
-TITLE = "Visits that resemble each other"
-LIST_OF_DAYS = (
-    "Where the list holds all days that the mean shall speak for, and days are drawn at random "
-    "from it, correlation costs nothing: leave correlation_between_visits out."
-)
 _SPACINGS = (0.5, 1.0, 2.0, 3.0, 4.0, 6.0)
 """Times the planned days between visits."""
 
@@ -65,7 +61,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
         return _declared(asked, size, seen)
     if series is None or seen is None:
         return None
-    return _of_pilot(asked, size, series, seen)
+    return of_pilot(asked, size, series, seen)
 
 
 def _declared(asked: Asked, size: Size, seen: "SeriesCorrelation | None") -> Finding:
@@ -194,7 +190,7 @@ def _warnings(asked: Asked, seen: "SeriesCorrelation | None") -> tuple[str, ...]
         if not seen.low <= there <= seen.high:
             lines.append(
                 f"The pilot's {seen.n} visits speak against the declared {there:.2g}: they show "
-                f"{_interval(seen)} at {figure(seen.spacing_days)} days."
+                f"{interval_words(seen)} at {figure(seen.spacing_days)} days."
             )
     if asked.population is not None:
         lines.append(f"These visits are sized for the long-run mean. {LIST_OF_DAYS}")
@@ -203,10 +199,6 @@ def _warnings(asked: Asked, seen: "SeriesCorrelation | None") -> tuple[str, ...]
         "interval is too narrow, unless the visits are far enough apart by then."
     )
     return tuple(lines)
-
-
-def _interval(seen: "SeriesCorrelation") -> str:
-    return f"{seen.rho:.2f} ({percent(seen.confidence)} interval {seen.low:.2f} to {seen.high:.2f})"
 
 
 def _stratum_rows(asked: Asked, size: Size) -> tuple[tuple[str, ...], ...]:
@@ -267,116 +259,4 @@ def _picture(entry: "StratumSpread", size: Size) -> Picture | None:
             ),
         ),
         marks=(("planned", entry.visits.planned_days),),
-    )
-
-
-def _of_pilot(asked: Asked, size: Size, series: VisitSeries, seen: "SeriesCorrelation") -> Finding:
-    """Say what the pilot shows, and what n would be if the campaign counted it."""
-    rho = max(seen.rho, 0.0)
-    independent = size.unrounded or float(size.needed)
-    # The s of visits in a row hides part of sigma, so more is asked for than it seems.
-    asked_for = independent * sigma_of_series(1.0, seen.n, rho) ** 2
-    would = visits_needed(asked_for, rho)
-    clear = seen.low > 0
-    apart = f"{seen.n} visits of the pilot, usually {figure(seen.spacing_days)} days apart,"
-    if clear:
-        answer = (
-            f"The {apart} resemble their neighbours by {_interval(seen)}. n takes visits as "
-            "independent; so spaced, the same precision of the long-run mean would take "
-            f"{counted(would, 'visit')} instead of {math.ceil(independent - 1e-9)}."
-        )
-    else:
-        answer = (
-            f"The {apart} show no clear correlation: {_interval(seen)}. n takes visits as "
-            "independent."
-        )
-    flow = _classes(asked, series, seen)
-    return Finding(
-        topic="time",
-        title=TITLE,
-        answer=answer,
-        amounts=(
-            Amount("rho", "Correlation of neighbouring visits of the pilot", seen.rho),
-            Amount("rho_low", f"Its lower end, {percent(seen.confidence)}", seen.low),
-            Amount("rho_high", f"Its upper end, {percent(seen.confidence)}", seen.high),
-            Amount(
-                "rho_observed", "Correlation as computed, too low in a short series", seen.observed
-            ),
-            Amount("spacing_days", "Usual days between visits", seen.spacing_days, "days"),
-            Amount("visits_ends_counted", "Visits for the same precision", would, "visits"),
-            Amount(
-                "visits_by_factor",
-                "The same by the factor (1 + ρ)/(1 − ρ)",
-                visits_by_inflation(asked_for, rho),
-                "visits",
-            ),
-            Amount(
-                "visits_high",
-                "The same at the upper end",
-                visits_needed(asked_for, max(seen.high, 0.0)),
-                "visits",
-            ),
-        ),
-        columns=("class", "share of the whole", "share of the visits", "mean", "worth visits")
-        if flow
-        else (),
-        rows=flow,
-        assumptions=pilot_assumptions(asked),
-        warnings=_pilot_warnings(asked, series, seen),
-        sources=(MARRIOTT, BAYLEY),
-    )
-
-
-def _pilot_warnings(
-    asked: Asked, series: VisitSeries, seen: "SeriesCorrelation"
-) -> tuple[str, ...]:
-    lines = []
-    if seen.low > 0:
-        lines.append(
-            "Where the campaign is visits to one place, let n count this: write "
-            f"correlation_between_visits = {seen.rho:.2f}, correlation_days = "
-            f"{figure(seen.spacing_days)} and visit_spacing_days into its [[sigma]] table."
-        )
-        if asked.population is not None:
-            lines.append(LIST_OF_DAYS)
-    if line := _uneven_classes(asked, series):
-        lines.append(line)
-    return tuple(lines)
-
-
-def _uneven_classes(asked: Asked, series: VisitSeries) -> str:
-    """Notice visits that bunch in one season or flow: fair weather gives another mean."""
-    parts = [part for part in asked.question.parts if part.mean is not None]
-    if len(parts) < 2 or len(parts) < len(asked.question.parts):
-        return ""
-    shares = {part.name: len(series.days_in(part.name)) / len(series.days) for part in parts}
-    part = max(parts, key=lambda each: shares[each.name] - each.weight)
-    if shares[part.name] - part.weight < 0.10:
-        return ""
-    plain = sum(shares[each.name] * (each.mean or 0.0) for each in parts)
-    weighed = sum(each.weight * (each.mean or 0.0) for each in parts)
-    unit = asked.question.unit
-    return (
-        f"{percent(shares[part.name])} of the pilot's visits fell in {part.name}, which is "
-        f"{percent(part.weight)} of the whole: their plain mean is "
-        f"{with_unit(figure(plain), unit)}, weighed by share {with_unit(figure(weighed), unit)}."
-    )
-
-
-def _classes(
-    asked: Asked, series: VisitSeries, seen: "SeriesCorrelation"
-) -> tuple[tuple[str, ...], ...]:
-    """Set share, visits, mean and worth of every season or flow class; empty for one."""
-    parts = asked.question.parts
-    if len(parts) < 2:
-        return ()
-    return tuple(
-        (
-            part.name,
-            percent(part.weight),
-            percent(len(series.days_in(part.name)) / len(series.days)),
-            figure(part.mean or 0.0),
-            figure(series.worth(part.name, seen.rho, spacing_days=seen.spacing_days)),
-        )
-        for part in parts
     )

@@ -7,13 +7,21 @@ from fieldplan.base.working import Quantity, Step
 from fieldplan.lab.model import VisitCorrelation
 from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.visits import unhidden_sigma
+from fieldplan.sizing.words import percent
 from fieldplan.stats.time_series import effective_number, inflation
 
 if TYPE_CHECKING:
     from fieldplan.lab.model import StratumSpread
+    from fieldplan.stats.series_correlation import SeriesCorrelation
 
 BAYLEY = "Bayley & Hammersley 1946, Supplement to the JRSS 8:184 (from memory)"
+TITLE = "Visits that resemble each other"
 MARRIOTT = "Marriott & Pope 1954, Biometrika 41:390 (from memory)"
+
+LIST_OF_DAYS = (
+    "Where the list holds all days that the mean shall speak for, and days are drawn at random "
+    "from it, correlation costs nothing: leave correlation_between_visits out."
+)
 
 
 def _where(entry: "StratumSpread") -> str:
@@ -124,3 +132,8 @@ def pilot_assumptions(asked: Asked) -> tuple[str, ...]:
     if len(asked.question.parts) > 1:
         lines.append("Means of the strata are taken out before; that hides a little more of it.")
     return tuple(lines)
+
+
+def interval_words(seen: "SeriesCorrelation") -> str:
+    """Say a correlation with its interval."""
+    return f"{seen.rho:.2f} ({percent(seen.confidence)} interval {seen.low:.2f} to {seen.high:.2f})"
