@@ -72,6 +72,7 @@ class GridStarts:
         distances, exact = self._distances(tuple(counts))
         shares = (distances <= scale).mean(axis=1)
         error = float(shares.std(ddof=1)) / math.sqrt(len(shares)) if len(shares) > 1 else 1.0
+        error = max(error, 1 / distances.size)  # a start without a miss proves no more than that
         return PatchChance(float(shares.mean()), error, len(shares), exact)
 
     def smallest_scale(self, counts: Sequence[int], chance: float) -> float:

@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldplan.base.errors import DesignError
-from fieldplan.stats.precision import whole
+from fieldplan.stats.precision import MOST, whole
 from fieldplan.stats.tolerance import check_share
 
 Numbers = NDArray[np.float64]
@@ -338,7 +338,15 @@ def count_at_random(patch: Patch, area: float, chance: float) -> int:
     94
     """
     check_share(chance, "the chance of hitting the patch")
-    return whole(math.log1p(-chance) / math.log1p(-_share_of(patch, area)))
+    share = _share_of(patch, area)
+    places = math.log1p(-chance) / math.log1p(-share)
+    if places > MOST:
+        message = (
+            f"a patch of {share:.2g} of the ground takes {places:.3g} random places, more than "
+            f"{MOST}; give a larger patch or a lower chance."
+        )
+        raise DesignError(message)
+    return whole(places)
 
 
 def smallest_at_random(area: float, count: int, chance: float, *, shape: float = 1.0) -> Patch:

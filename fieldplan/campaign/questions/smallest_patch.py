@@ -5,7 +5,7 @@ from typing import Annotated, Any, Literal
 
 from pydantic import Field
 
-from fieldplan.campaign.table import OpenShare, PositiveNumber, Table
+from fieldplan.campaign.table import PositiveNumber, Table
 
 MEANING = {
     "": "the smallest patch that the locations must not miss, and how surely",
@@ -17,12 +17,15 @@ MEANING = {
 
 
 class SmallestPatch(Table):
-    """A circle or an ellipse that may lie anywhere in the area."""
+    """A circle or an ellipse that may lie anywhere in the area.
+
+    A probability above 0.999 would rest on corners that averages over starts cannot see.
+    """
 
     length_m: PositiveNumber
     width_m: PositiveNumber | None = None
     direction_degrees: Annotated[float, Field(ge=0, lt=360)] | Literal["unknown"] = "unknown"
-    probability: OpenShare
+    probability: Annotated[float, Field(gt=0, le=0.999)]
 
 
 def problems(table: dict[str, Any], data: dict[str, Any]) -> Iterator[tuple[str, str]]:

@@ -184,7 +184,9 @@ class PatchQuestion:
         """Turn results into the locations that are visited for them."""
         question = self.asked.question
         if question.locations is not None:
-            return fixed_counts(question).planned
+            fixed = fixed_counts(question)
+            if fixed.needed == tuple(counts):
+                return fixed.planned
         return planned_counts(question, counts)
 
     def laid(self, counts: Sequence[int]) -> tuple[int, ...]:

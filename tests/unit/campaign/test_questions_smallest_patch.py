@@ -24,6 +24,10 @@ def test_plain_question_reads_without_a_sigma(tmp_path) -> None:
         ([("length_m = 40.0", "length_m = -3.0")], "objective.smallest_patch.length_m: "),
         ([("length_m = 40.0\n", "")], "objective.smallest_patch.length_m: "),
         ([("probability = 0.95", "probability = 95")], "objective.smallest_patch.probability: "),
+        (
+            [("probability = 0.95", "probability = 0.9999")],
+            "objective.smallest_patch.probability: ",
+        ),
         ([("probability = 0.95", "probability = 0.0")], "objective.smallest_patch.probability: "),
         (
             [("= 0.95", "= 0.95\nwidth_m = 50.0")],

@@ -264,6 +264,7 @@ def test_errors_of_any_kind_hit_at_least_as_often_as_the_shrunk_patch() -> None:
         (lambda: spacing_for_chance(Patch(1.0, 1.0), 95), "chance of hitting the patch is 95"),
         (lambda: smallest_on_grid(-2.0, 0.9), "spacing is -2.0"),
         (lambda: count_at_random(Patch(20.0, 20.0), 300.0, 0.9), "no smaller than the ground"),
+        (lambda: count_at_random(Patch(1e-6, 1e-6), 300.0, 0.9), "random places, more than"),
         (lambda: count_at_random(Patch(2.0, 2.0), 300.0, 0.0), "chance of hitting the patch is 0"),
         (lambda: smallest_at_random(300.0, 0, 0.9), "count is 0"),
         (lambda: SQUARE.count(-1.0, 2.0), "area is -1.0"),

@@ -217,7 +217,10 @@ def test_typed_locations_are_not_changed_by_the_question() -> None:
     found = size(campaign, make_spread(), make_frame())
     assert found.planned == 20
     assert found.number_from == "locations"
-    assert "would take" in found.findings[0].answer
+    alone = size(campaign_with("stratified"), make_spread(), make_frame())
+    assert f"would take {alone.needed} results" in found.findings[0].answer
+    grid = on_numbers("square-grid", design={"locations": 9})
+    assert count(grid).needed == count(on_numbers("square-grid")).needed
 
 
 def test_mean_with_a_patch_beside_it_keeps_its_own_number() -> None:
