@@ -152,8 +152,23 @@ def t_share(value: float, degrees_of_freedom: float) -> float:
     return tail if value < 0 else 1 - tail
 
 
-def _invert(share: Callable[[float], float], level: float, low: float, high: float) -> float:
-    """Find where a rising ``share`` reaches ``level``: Illinois steps inside a bracket."""
+def invert(share: Callable[[float], float], level: float, low: float, high: float) -> float:
+    """Find where a rising ``share`` reaches ``level``: Illinois steps inside a bracket.
+
+    Parameters
+    ----------
+    share : callable
+        Rises with its argument.
+    level : float
+        To be reached.
+    low, high : float
+        ``share(low)`` is below the level; ``high``, above 0, is doubled until it is not.
+
+    Examples
+    --------
+    >>> round(invert(lambda x: x * x, 2.0, 0.0, 1.0), 6)
+    1.414214
+    """
     while share(high) < level:
         low, high = high, high * 2
     below, above = share(low) - level, share(high) - level
@@ -186,7 +201,7 @@ def student_quantile(level: float, degrees_of_freedom: float) -> float:
         return -student_quantile(1 - level, degrees_of_freedom)
     if level == 0.5:
         return 0.0
-    return _invert(lambda value: t_share(value, degrees_of_freedom), level, 0.0, 2.0)
+    return invert(lambda value: t_share(value, degrees_of_freedom), level, 0.0, 2.0)
 
 
 @lru_cache(maxsize=1024)
@@ -198,7 +213,7 @@ def chi_square_quantile(level: float, degrees_of_freedom: float) -> float:
     >>> round(chi_square_quantile(0.20, 7), 3)
     3.822
     """
-    return _invert(
+    return invert(
         lambda value: chi_square_share(value, degrees_of_freedom),
         level,
         0.0,

@@ -12,6 +12,11 @@ _REACH = 9.0
 
 _NODES = 24
 
+_SOFT = 3.5
+"""Up to this value the normal share turns so slowly that the density alone sets the pieces."""
+
+_ROOT = math.sqrt(2)
+
 
 @lru_cache(maxsize=1)
 def gauss_legendre() -> tuple[tuple[float, float], ...]:
@@ -54,7 +59,7 @@ def noncentral_t_beyond(value: float, degrees_of_freedom: float, shift: float) -
     Notes
     -----
     :math:`P(T > v) = \int \Phi(\delta - v s)\, f(s)\, ds` with f the density of the ratio of an
-    estimated to the true standard deviation, integrated piece by piece where either factor turns;
+    estimated to the true standard deviation, by Gauss-Legendre quadrature piece by piece;
     Johnson, Kotz & Balakrishnan (1995), Continuous Univariate Distributions 2, ch. 31.
 
     Examples
@@ -69,30 +74,36 @@ def noncentral_t_beyond(value: float, degrees_of_freedom: float, shift: float) -
     if not degrees_of_freedom >= 1:
         message = f"a t test needs 1 degree of freedom or more, not {degrees_of_freedom!r}."
         raise DesignError(message)
-    front = _log_front(degrees_of_freedom)
-    power = degrees_of_freedom - 1
-    edges = _edges(value, degrees_of_freedom, shift)
-    total = 0.0
-    for low, high in pairwise(edges):
-        half, middle = (high - low) / 2, (high + low) / 2
-        for node, weight in gauss_legendre():
-            root = middle + half * node
-            s = root**4
-            density = math.exp(front + power * math.log(s) - degrees_of_freedom * s * s / 2)
-            total += half * weight * 4 * root**3 * density * normal_share(shift - value * s)
-    return min(max(total, 0.0), 1.0)
+    points = _spread_points(degrees_of_freedom)
+    if abs(value) > _SOFT:
+        turns = tuple((shift + k * _REACH) / value for k in (-1, -0.5, 0, 0.5, 1))
+        points = _points(degrees_of_freedom, turns)
+    total = math.fsum(weight * math.erfc((value * s - shift) / _ROOT) for s, weight in points)
+    return min(max(total / 2, 0.0), 1.0)
 
 
-def _edges(value: float, degrees_of_freedom: float, shift: float) -> list[float]:
-    """Cut the range of s/σ where its density sits and where the normal share turns.
+@lru_cache(maxsize=1024)
+def _spread_points(degrees_of_freedom: float) -> tuple[tuple[float, float], ...]:
+    return _points(degrees_of_freedom, ())
 
-    The edges are fourth roots of s/σ: the density starts as s^(ν − 1), which no polynomial
+
+def _points(degrees_of_freedom: float, turns: tuple[float, ...]) -> tuple[tuple[float, float], ...]:
+    """Give values of s/σ with their weights, cut where the density sits and at the turns.
+
+    The cuts are fourth roots of s/σ: the density starts as s^(ν − 1), which no polynomial
     follows when ν is a fraction near 1, but one in the fourth root does.
     """
     reach = _REACH / math.sqrt(degrees_of_freedom)
     low, high = max(0.0, 1 - reach), 1 + reach
     cuts = {low, high, (low + 1) / 2, 1.0, (high + 1) / 2}
-    if value:
-        turns = ((shift + k * _REACH) / value for k in (-1, -0.5, 0, 0.5, 1))
-        cuts |= {turn for turn in turns if low < turn < high}
-    return sorted(cut**0.25 for cut in cuts)
+    cuts |= {turn for turn in turns if low < turn < high}
+    front, power = _log_front(degrees_of_freedom), degrees_of_freedom - 1
+    found = []
+    for left, right in pairwise(sorted(cut**0.25 for cut in cuts)):
+        half, middle = (right - left) / 2, (right + left) / 2
+        for node, weight in gauss_legendre():
+            root = middle + half * node
+            s = root**4
+            density = math.exp(front + power * math.log(s) - degrees_of_freedom * s * s / 2)
+            found.append((s, half * weight * 4 * root**3 * density))
+    return tuple(found)

@@ -6,12 +6,10 @@ A change between two rounds at the same places is the same question about the di
 import math
 
 from fieldplan.base.errors import DesignError
-from fieldplan.stats.distributions import normal_quantile, student_quantile
+from fieldplan.stats.distributions import invert, normal_quantile, student_quantile
 from fieldplan.stats.noncentral_t import noncentral_t_beyond
 from fieldplan.stats.precision import MOST, smallest, standard_error, whole
 from fieldplan.stats.risks import check_difference, check_risks, one_sided_level
-
-_SHIFT_CLOSE = 1e-12
 
 
 def guidance_n(
@@ -207,18 +205,41 @@ def smallest_shift(
     2.697
     """
     check_risks(alpha, beta)
-    low, high = 0.0, 4.0
-    while power_at(high, degrees_of_freedom, alpha=alpha, sides=sides) < 1 - beta:
-        low, high = high, high * 2
-    while high - low > _SHIFT_CLOSE * high:
-        middle = (low + high) / 2
-        if not low < middle < high:
-            break
-        if power_at(middle, degrees_of_freedom, alpha=alpha, sides=sides) < 1 - beta:
-            low = middle
-        else:
-            high = middle
-    return high
+    level = one_sided_level(alpha, sides)
+    near = student_quantile(1 - level, degrees_of_freedom) + normal_quantile(1 - beta)
+    return invert(
+        lambda shift: power_at(shift, degrees_of_freedom, alpha=alpha, sides=sides),
+        1 - beta,
+        0.0,
+        max(near, 1.0),
+    )
+
+
+def shift_for_chance(chance: float, degrees_of_freedom: float, *, alpha: float) -> float:
+    """Give the distance in standard errors at which a one-sided t test rejects so often.
+
+    Parameters
+    ----------
+    chance : float
+        Inside (0, 1); below alpha the distance is negative.
+    degrees_of_freedom : float
+        At least 1.
+    alpha : float
+        Chance of rejecting at a distance of 0.
+
+    Examples
+    --------
+    >>> round(shift_for_chance(0.8, 9, alpha=0.05), 3)
+    2.697
+    >>> round(shift_for_chance(0.01, 9, alpha=0.05), 3)
+    -0.733
+    """
+    if chance > alpha:
+        return smallest_shift(degrees_of_freedom, alpha=alpha, beta=1 - chance)
+    low = -1.0
+    while power_at(low, degrees_of_freedom, alpha=alpha) >= chance:
+        low *= 2
+    return invert(lambda shift: power_at(shift, degrees_of_freedom, alpha=alpha), chance, low, 1.0)
 
 
 def smallest_difference(

@@ -138,7 +138,7 @@ def signed_rank_ratio(chance: float, *, n: int, alpha: float) -> float | None:
     Parameters
     ----------
     chance : float
-        Inside (0.001, 0.9999).
+        From 0.001 to 0.9999.
     n : int
         Results, at least 2.
     alpha : float
@@ -175,7 +175,8 @@ def signed_rank_ratio(chance: float, *, n: int, alpha: float) -> float | None:
 @lru_cache(maxsize=64)
 def _ladder(n: int, alpha: float) -> tuple[tuple[float, float], ...]:
     """Give distances with the normal quantile of their power, as far as it can be told from 1."""
-    ratios = tuple((0.5 * k - 3) / math.sqrt(n) for k in range(22))
+    middle = normal_quantile(1 - alpha)
+    ratios = tuple((middle + 0.5 * k - 5) / math.sqrt(n) for k in range(25))
     powers = signed_rank_powers(ratios, n=n, alpha=alpha)
     return tuple(
         (ratio, normal_quantile(power))

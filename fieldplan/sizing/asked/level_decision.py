@@ -13,7 +13,7 @@ from fieldplan.stats.allocation import unrounded_total
 from fieldplan.stats.assurance import chance_of_variance
 from fieldplan.stats.distributions import chi_square_quantile, normal_quantile, normal_share
 from fieldplan.stats.many_decisions import risks_for_each
-from fieldplan.stats.power import one_sample_n, power_at, smallest_shift
+from fieldplan.stats.power import one_sample_n, power_at, shift_for_chance, smallest_shift
 from fieldplan.stats.precision import smallest, whole
 from fieldplan.stats.rank_tests import sign_test_n, sign_test_power, sign_test_ratio
 from fieldplan.stats.signed_rank import (
@@ -100,7 +100,7 @@ class LevelDecision:
         counts : sequence of int
             Results by stratum.
         chance : float
-            Above alpha, below 1.
+            Inside (0, 1); below alpha the distance is negative.
 
         Returns
         -------
@@ -114,7 +114,7 @@ class LevelDecision:
             if error == 0:
                 return 0.0
             known = precision.degrees_of_freedom(counts)
-            return error * smallest_shift(known, alpha=alpha, beta=1 - chance)
+            return error * shift_for_chance(chance, known, alpha=alpha)
         return self._reach_by_ranks(sum(counts), chance)
 
     def _reach_by_ranks(self, n: int, chance: float) -> float | None:
@@ -158,6 +158,11 @@ class LevelDecision:
             return None
         shift = smallest_shift(n - 1, alpha=self.risks[0], beta=beta)
         return self.sigma / math.sqrt(n) * shift
+
+    @cached_property
+    def plain(self) -> tuple[int, ...]:
+        """Results that keep both chances with sigma at face value."""
+        return self.needed()
 
     def needed(self, assurance: float | None = None) -> tuple[int, ...]:
         """Count the results that keep both chances.
@@ -215,7 +220,7 @@ class LevelDecision:
                 return self.power(counts, self.width) >= 1 - beta
             return (self.chance_enough(counts) or 0.0) >= assurance
 
-        low = sum(strata.floors)
+        low = sum(strata.floors if assurance is None else self.plain)
         total = smallest(fits, low, strata.most, back=2 * len(question.parts) + 1)
         whole(total)
         if total == strata.most and not fits(total):

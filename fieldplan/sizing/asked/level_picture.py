@@ -8,7 +8,7 @@ from fieldplan.sizing.model import Picture, Series
 from fieldplan.sizing.words import counted, figure, percent, typed
 from fieldplan.stats.distributions import chi_square_quantile, normal_quantile, normal_share
 
-_CHANCES = (0.001, 0.05, 0.25, 0.5, 0.8, 0.95, 0.999)
+_CHANCES = (0.001, 0.01, 0.05, 0.25, 0.5, 0.8, 0.95, 0.999)
 _POINTS = 41
 
 
@@ -84,22 +84,14 @@ def level_picture(decision: LevelDecision, counts: Sequence[int]) -> Picture | N
 
 
 def _knots(decision: LevelDecision, counts: Sequence[int]) -> list[tuple[float, float]]:
-    """Give distances with the normal quantile of their chance, on which scale lines are straight.
-
-    Chances below alpha lie on the other side of the level, where only ``power`` reaches.
-    """
-    alpha, _ = decision.risks
-    reaches = {
-        chance: decision.reach(counts, chance) for chance in _CHANCES if chance > 1.01 * alpha
-    }
-    if any(reach is None or reach == 0 for reach in reaches.values()):
-        return []
-    far = max(reach for reach in reaches.values() if reach is not None)
-    found = [(reach, normal_quantile(chance)) for chance, reach in reaches.items() if reach]
-    for distance in (-far / 2, -far / 4, 0.0):
-        power = min(max(decision.power(counts, distance), 1e-12), 1 - 1e-12)
-        found.append((distance, normal_quantile(power)))
-    return sorted(found)
+    """Give distances with the normal quantile of their chance; on that scale lines are straight."""
+    found = []
+    for chance in _CHANCES:
+        reach = decision.reach(counts, chance)
+        if reach is None or reach == 0:
+            return []
+        found.append((reach, normal_quantile(chance)))
+    return found
 
 
 def _larger(decision: LevelDecision, counts: Sequence[int]) -> tuple[float, str]:

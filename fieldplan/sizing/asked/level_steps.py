@@ -50,7 +50,7 @@ def counting_steps(decision: LevelDecision, counts: Sequence[int]) -> Iterator[S
             yield _signed_rank(decision)
     if decision.table.test != "signed-rank":
         yield _exact(decision)
-    if tuple(counts) != decision.needed():
+    if tuple(counts) != decision.plain:
         yield _assured(decision, counts)
 
 
@@ -262,7 +262,7 @@ def _signed_rank(decision: LevelDecision) -> Step:
 
 def _exact(decision: LevelDecision) -> Step:
     _, beta = decision.risks
-    total = float(sum(decision.needed()))
+    total = float(sum(decision.plain))
     words = {
         "t": "smallest n whose power at the gray edge is at least 1 − beta",
         "sign": "smallest n from which on the power at the gray edge is at least 1 − beta",

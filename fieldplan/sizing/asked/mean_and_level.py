@@ -45,7 +45,7 @@ def count(asked: Asked) -> Answered:
     """
     decision = decision_of(asked)
     sure = decision.table.assurance
-    plain = decision.needed()
+    plain = decision.plain
     needed = plain
     if sure != "plain" and asked.question.pilots is not None:
         needed = decision.needed(sure)
@@ -121,19 +121,26 @@ def _target(decision: LevelDecision) -> str:
 
 
 def _needed_words(decision: LevelDecision, counts: Sequence[int]) -> str:
-    table = decision.table
+    table, side = decision.table, decision.side
     level, edge = _as_typed(decision, decision.level), _as_typed(decision, table.gray_edge)
-    beyond = "more" if decision.side == "below" else "less"
-    whose, means = "the mean", "it"
-    if table.decisions > 1:
-        claim = "each of" if table.together == "each-alone" else "all of"
-        whose, means = f"{claim} {table.decisions} means", "they"
-    lies = "lies" if table.decisions == 1 else "lie"
-    wrong = "it lies" if table.decisions == 1 else "one lies"
+    beyond = "more" if side == "below" else "less"
+    results = counted(sum(counts), "result")
+    surely, wrongly = typed_percent(1 - table.beta), typed_percent(table.alpha)
+    if table.decisions == 1:
+        return (
+            f"{results} show the mean to lie {side} {level} in at least {surely} of campaigns if "
+            f"it truly lies at {edge}, and in at most {wrongly} if it lies at {level} or {beyond}."
+        )
+    if table.together == "all-or-nothing":
+        return (
+            f"{results} for each let one claim be made, that all {table.decisions} means lie "
+            f"{side} {level}, in at least {surely} of campaigns if all truly lie at {edge}, and in "
+            f"at most {wrongly} if any of them lies at {level} or {beyond}."
+        )
     return (
-        f"{counted(sum(counts), 'result')} show {whose} to lie {decision.side} {level} in at least "
-        f"{typed_percent(1 - table.beta)} of campaigns if {means} truly {lies} at {edge}, and in "
-        f"at most {typed_percent(table.alpha)} if {wrong} at {level} or {beyond}."
+        f"{results} for each show all {table.decisions} means to lie {side} {level} in at least "
+        f"{surely} of campaigns if they truly lie at {edge}; in at most {wrongly} any that lies at "
+        f"{level} or {beyond} is wrongly shown {side} it."
     )
 
 
@@ -156,18 +163,19 @@ def _picture_words(decision: LevelDecision, counts: Sequence[int]) -> str:
     mean = decision.mean_at(reach)
     if mean <= 0:
         return "8 of 10 campaigns would come out below the level only at a mean below 0."
+    who = "" if decision.table.decisions == 1 else "Looked at alone, a decision comes out so: "
     line = (
-        f"8 of 10 campaigns come out {decision.side} the level where the true mean is "
+        f"{who}8 of 10 campaigns come out {decision.side} the level where the true mean is "
         f"{_with_unit(decision, mean)}"
     )
     margin = margin_of(decision, counts) if decision.table.test == "t" else 0.0
     if margin:
         name = "upper" if decision.side == "below" else "lower"
         side = "above" if decision.side == "below" else "below"
-        few = ", as few results tend to show a little less than sigma" if sum(counts) < 25 else ""
+        few = ", s coming out a little below sigma" if sum(counts) < 25 else ""
         line += (
-            f"; the {name} limit then lies {_with_unit(decision, margin)} {side} the mean on "
-            f"average{few}"
+            f"; the {name} limit then lies on average {_with_unit(decision, margin)} {side} the "
+            f"mean{few}"
         )
     return line + "."
 
@@ -317,15 +325,15 @@ def _many(decision: LevelDecision) -> str:
     if table.together == "all-or-nothing":
         return (
             f"One claim needs all {table.decisions} decisions, so alpha stays {typed(alpha)} for "
-            f"each and beta falls to {figure(beta)}; the gray region and sigma are those of the "
-            "decision that is hardest to make."
+            f"each and beta falls to {_rounded(beta):g}; the gray region and sigma are those of "
+            "the decision that is hardest to make."
         )
     _, alone, most = chance_of_any([table.alpha] * table.decisions)
     return (
         f"{table.decisions} decisions at {typed_percent(table.alpha)} each would go wrong "
         f"somewhere with a chance of {percent(alone)} if independent and at most {percent(most)}; "
-        f"here each takes alpha {figure(alpha)} and beta {figure(beta)}, so that all together keep "
-        "theirs."
+        f"here each takes alpha {_rounded(alpha):g} and beta {_rounded(beta):g}, so that all "
+        "together keep theirs."
     )
 
 

@@ -18,6 +18,8 @@ from fieldplan.stats.power import (
     normal_n,
     one_sample_n,
     one_sample_power,
+    power_at,
+    shift_for_chance,
     sigma_of_change,
     smallest_difference,
 )
@@ -277,3 +279,12 @@ def test_out_of_reach_is_said_at_once() -> None:
     with pytest.raises(DesignError, match="at least 2"):
         smallest_difference(1.0, 1, alpha=0.05, beta=0.2)
     assert normal_quantile(0.5) == pytest.approx(0.0)
+
+
+@pytest.mark.parametrize("known", [1, 9, 400.5])
+@pytest.mark.parametrize("chance", [0.01, 0.05, 0.2, 0.95])
+def test_distance_undoes_power_on_both_sides_of_the_level(known: float, chance: float) -> None:
+    """A mean on the allowed side is claimed off it less often than alpha, so distances go on."""
+    shift = shift_for_chance(chance, known, alpha=0.05)
+    assert power_at(shift, known, alpha=0.05) == pytest.approx(chance, abs=1e-9)
+    assert (shift > 1e-6) == (chance > 0.05)
