@@ -48,19 +48,14 @@ def asked_of_numbers(typed: Mapping[str, Any]) -> "Asked":
     numbers = BareNumbers(**typed)
     numbers.check_question()
     parts = numbers.parts()
-    mean = numbers.as_question() if numbers.question == "mean" else None
     campaign = _campaign(numbers, parts)
     objective = campaign.objective[0]
     known = all(part.sigma > 0 for part in parts)
     if numbers.question != "mean" and not known and numbers.question not in WITHOUT_SIGMA:
         message = f"--question {numbers.question} needs --sigma, or a --stratum for each part."
         raise BadOption(message)
-    if mean is not None:
-        question = mean
-        if campaign.cost is not None:
-            question = replace(
-                question, prices=ask(campaign, NO_TARGET, parts=parts, mean=None).prices
-            )
+    if numbers.question == "mean":
+        question = numbers.as_question(campaign)
     else:
         question = ask(campaign, NO_TARGET, parts=parts, mean=numbers.mean)
         question = replace(question, assurance=None, analyte="", unit=numbers.unit or "")

@@ -150,8 +150,9 @@ _OPTIONS = (
     ),
     click.option(
         "--allocation",
-        metavar="proportional|neyman",
-        help="How strata share n; proportional unless given.",
+        metavar="NAME",
+        help="How strata share n: proportional (unless given), neyman, cost-optimal or "
+        "equal-precision.",
     ),
     _typed_number(
         "--floor", _count_of_two_or_more, "Fewest results in any stratum; 2 unless given."

@@ -1,16 +1,17 @@
 """The numbers typed for ``fieldplan size``: what belongs together, and the question they make."""
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, cast
 
 from fieldplan.cli.size_options import BadOption, number
 
 if TYPE_CHECKING:
+    from fieldplan.campaign.model import Campaign
     from fieldplan.sizing.question import Part, Question, TargetKind
     from fieldplan.stats.allocation import Allocation
 
-ALLOCATIONS = ("proportional", "neyman")
+ALLOCATIONS = ("proportional", "neyman", "cost-optimal", "equal-precision")
 TARGETS: "tuple[TargetKind, ...]" = ("standard_error", "half_width", "relative_half_width")
 
 
@@ -86,8 +87,14 @@ class BareNumbers:
         """Give the whole, or its strata; sigma is 0 where nobody typed one."""
         return self._strata() if self.stratum else (self._whole(),)
 
-    def as_question(self) -> "Question":
-        """Turn the options into the question that sizing answers."""
+    def as_question(self, campaign: "Campaign | None" = None) -> "Question":
+        """Turn the options into the question about a mean.
+
+        Parameters
+        ----------
+        campaign : Campaign, optional
+            The campaign that they make, with what ``--with`` says of design and prices.
+        """
         from fieldplan.sizing.question import Question
 
         kind, value = self.target()
@@ -98,6 +105,18 @@ class BareNumbers:
                 + ("a third number to every --stratum." if self.stratum else "--pilot-n.")
             )
             raise BadOption(message)
+        if campaign is not None:
+            from fieldplan.sizing.asking import NO_TARGET
+            from fieldplan.sizing.campaign_question import ask
+
+            return replace(
+                ask(campaign, NO_TARGET, parts=parts, mean=self.mean),
+                target=kind,
+                value=value,
+                assurance=self.assurance,
+                analyte="",
+                unit=self.unit or "",
+            )
         return Question(
             parts=parts,
             target=kind,
@@ -137,7 +156,15 @@ class BareNumbers:
             raise BadOption(message)
         if self.allocation not in (None, *ALLOCATIONS):
             message = (
-                f"--allocation {self.allocation!r} is unknown; write {' or '.join(ALLOCATIONS)}."
+                f"--allocation {self.allocation!r} is unknown; write {', '.join(ALLOCATIONS[:-1])} "
+                f"or {ALLOCATIONS[-1]}."
+            )
+            raise BadOption(message)
+        if self.allocation == "cost-optimal" and not any("cost." in k for k in self.with_keys):
+            message = (
+                "--allocation cost-optimal weighs what results cost; add --with cost.currency=EUR "
+                "--with cost.per_location=30 and, where a stratum differs, "
+                "--with 'cost.per_location_by_stratum.stratum 2=90'."
             )
             raise BadOption(message)
         alone = {"--sigma": self.sigma, "--population": self.population, "--pilot-n": self.pilot_n}

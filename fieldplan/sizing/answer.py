@@ -1,5 +1,6 @@
 """From a question to the whole answer."""
 
+from fieldplan.base.errors import DesignError
 from fieldplan.sizing.conditions import conditions
 from fieldplan.sizing.counting import Counts, assured_counts, control_counts, count, total_cost
 from fieldplan.sizing.curve import curve
@@ -91,7 +92,10 @@ def _assured(question: Question) -> tuple[AssuredSize, ...]:
     wanted = {*ASSURANCES} | ({question.assurance} if question.assurance is not None else set())
     found = []
     for assurance in sorted(wanted):
-        counts = assured_counts(question, assurance)
+        try:
+            counts = assured_counts(question, assurance)
+        except DesignError:  # more than can be had; the chosen one has been counted before
+            continue
         if counts is not None:
             chance = Precision(question).chance(counts)
             found.append(AssuredSize(assurance, sum(counts), chance))

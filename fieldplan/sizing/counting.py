@@ -8,7 +8,7 @@ from fieldplan.base.errors import DesignError
 from fieldplan.sizing.model import QualityControlCount
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
-from fieldplan.sizing.together import most_for_money, weighed_counts, weighs
+from fieldplan.sizing.together import most_for_money, refuse_unreachable, weighed_counts, weighs
 from fieldplan.sizing.words import targeted_words
 from fieldplan.stats.allocation import check_total, first_that, share_total, smallest_total
 from fieldplan.stats.distributions import normal_quantile
@@ -91,6 +91,7 @@ def needed_counts(question: Question) -> list[int]:
 
 def plain_counts(question: Question) -> list[int]:
     """Count the results that meet the target with sigma taken at face value."""
+    refuse_unreachable(question)
     if weighs(question):
         return weighed_counts(question, plain=True)
     strata, allocation = question.strata, question.allocation
@@ -142,8 +143,9 @@ def assured_counts(question: Question, assurance: float | None) -> list[int] | N
     low = sum(plain_counts(question))
     total = smallest(fits, low, strata.most, back=2 * len(question.parts) + 1)
     if question.total_population is None and not fits(total):
+        limit = f"{strata.most} results" if not strata.ceilings else "the design's most allows"
         message = (
-            f"an assurance of {assurance:g} asks for more than {strata.most} results; "
+            f"an assurance of {assurance:g} asks for more than {limit}; "
             "choose a lower one, or learn sigma from a larger pilot."
         )
         raise DesignError(message)

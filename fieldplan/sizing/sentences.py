@@ -137,7 +137,10 @@ def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
     if len(question.parts) > 1:
         behind += " a stratum"
     condition = chance_condition(question)
-    opening = f"The chance that {needed} are enough is {percent(chance)} {condition}"
+    subject = f" for {question.analyte}" if question.also else ""
+    opening = f"The chance that {needed} are enough{subject} is {percent(chance)} {condition}"
+    if question.also:
+        return f"{opening}, sigma being known from {behind} only."
     if needed != plain or question.assurance is not None:
         plain_chance = precision.chance(counts.plain) or 0.0
         return (

@@ -9,7 +9,7 @@ from fieldplan.sizing.closing_steps import COCHRAN, closing_steps
 from fieldplan.sizing.counting import Counts
 from fieldplan.sizing.quantities import corrected_for_list, sigma_quantity, target_quantity
 from fieldplan.sizing.question import Question
-from fieldplan.stats.allocation import unrounded_shares, unrounded_total
+from fieldplan.sizing.strata_steps import strata_steps
 from fieldplan.stats.intervals import t_quantile
 from fieldplan.stats.precision import (
     unrounded_for_half_width,
@@ -36,10 +36,10 @@ def steps(question: Question, counts: Counts) -> tuple[Step, ...]:
     if counts.plain is not None and not question.census:
         if question.target == "relative_half_width":
             working += _absolute(question)
-        if len(question.parts) == 1:
+        if len(question.parts) == 1 and not question.also:
             working += _single(question, counts.plain[0])
         else:
-            working += _stratified(question, counts.plain)
+            working += strata_steps(question, counts.plain)
         working += chance_steps(question, counts)
     return (*working, *closing_steps(question, counts))
 
@@ -180,66 +180,3 @@ def _floored(question: Question, plain: int) -> Step:
         unit="results",
         source="campaign choice",
     )
-
-
-def _stratified(question: Question, plain: tuple[int, ...]) -> Iterator[Step]:
-    """Show strata: the total before rounding, the smallest whole one, the share of each."""
-    strata, allocation = question.strata, question.allocation
-    symbol = "(Σ W·s)²" if allocation == "neyman" else "Σ W·s²"
-    below = "SE²" if question.target_half_width is None else "(h / z)²"
-    target = question.target_standard_error or 0.0
-    inputs = [target_quantity(question)]
-    if question.target_half_width is not None:
-        z = t_quantile(math.inf, confidence=question.confidence, kind=question.interval)
-        target = question.target_half_width / z
-        inputs.append(Quantity("z", f"normal quantile, {question.interval}", z))
-    listed = any(part.population is not None for part in question.parts)
-    for k, part in enumerate(question.parts, start=1):
-        inputs += [
-            Quantity(f"W{k}", f"share of {part.name}", part.weight),
-            Quantity(f"s{k}", f"standard deviation in {part.name}", part.sigma, question.unit),
-        ]
-        if part.population is not None:
-            inputs.append(Quantity(f"N{k}", f"units in {part.name}", part.population, "units"))
-    total = unrounded_total(strata, target**2, allocation=allocation)
-    yield Step(
-        symbol="n",
-        meaning=f"Results needed with sigma at face value, {allocation.capitalize()} allocation",
-        formula=f"n = {symbol} / ({below} + Σ W²·s²/N)" if listed else f"n = {symbol} / {below}",
-        inputs=tuple(inputs),
-        unrounded=total,
-        rounded=float(sum(plain)),
-        unit="results",
-        source=f"{COCHRAN}, sec. 5.9; then the smallest whole total that keeps the target with "
-        f"at least {question.floor} results in every stratum",
-    )
-    yield from _shares(question, plain, total)
-
-
-def _shares(question: Question, plain: tuple[int, ...], total: float) -> Iterator[Step]:
-    shares = unrounded_shares(question.strata, total, allocation=question.allocation)
-    neyman = question.allocation == "neyman"
-    formula = "n_h = n · W·s / Σ W·s" if neyman else "n_h = n · W"
-    for part, share, count in zip(question.parts, shares, plain, strict=True):
-        inputs = [
-            Quantity("n", "total before rounding", total, "results"),
-            Quantity("W", f"share of {part.name}", part.weight),
-        ]
-        if neyman:
-            spreads = math.fsum(p.weight * p.sigma for p in question.parts)
-            inputs += [
-                Quantity("s", f"standard deviation in {part.name}", part.sigma, question.unit),
-                Quantity("Σ W·s", "sum over strata", spreads, question.unit),
-            ]
-        yield Step(
-            symbol=f"n({part.name})",
-            meaning=f"Results in {part.name}; whole numbers of smallest standard error",
-            formula=formula,
-            inputs=tuple(inputs),
-            unrounded=share,
-            rounded=float(count),
-            unit="results",
-            source="Wright 2012, The American Statistician 66:217"
-            if neyman
-            else f"{COCHRAN}, ch. 5",
-        )

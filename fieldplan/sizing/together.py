@@ -7,10 +7,12 @@ the least money) where the allocation may choose; where it may not, with the sma
 import math
 from collections.abc import Callable, Sequence
 from dataclasses import replace
+from typing import Any
 
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
+from fieldplan.sizing.words import figure, named, target_words, with_unit
 from fieldplan.stats.allocation import share_total
 from fieldplan.stats.intervals import t_quantile
 from fieldplan.stats.least_cost import least_cost, smallest_variance
@@ -34,8 +36,10 @@ def weighs(question: Question) -> bool:
 
 def everyone(question: Question) -> tuple[Question, ...]:
     """Give the questions of all analytes that decide, each for itself."""
-    others = (replace(other, floor=question.floor, also=()) for other in question.also)
-    return (replace(question, also=()), *others) if question.also else (question,)
+    if not question.also:
+        return (question,)
+    same: dict[str, Any] = {"floor": question.floor, "allocation": question.allocation, "also": ()}
+    return (replace(question, also=()), *(replace(other, **same) for other in question.also))
 
 
 def face_value(question: Question) -> Question:
@@ -63,6 +67,32 @@ def keeps(member: Question, counts: Sequence[int]) -> bool:
         return True
     chance = precision.chance(counts, sigma_known=member.pilots is None)
     return (chance or 0.0) >= wanted
+
+
+def refuse_unreachable(question: Question) -> None:
+    """Refuse a target that the most locations of single strata forbid, whatever lies elsewhere.
+
+    Raises
+    ------
+    DesignError
+        It names the strata, and what can be had.
+    """
+    short = [f"{part.name} ({part.most})" for part in question.parts if part.most is not None]
+    if not short or question.target == "budget":
+        return
+    caps = question.strata.caps
+    for member in everyone(question):
+        if keeps(replace(member, assurance=None), caps):
+            continue
+        precision, wide = Precision(member), member.target_half_width is not None
+        best = precision.half_width(caps) if wide else precision.standard_error(caps)
+        whose = f"{member.analyte}: " if question.also else ""
+        message = (
+            f"{whose}a {target_words(member)} is out of reach while these strata may have at most "
+            f"so many locations: {named(short)}; with any number elsewhere it stays at "
+            f"{with_unit(figure(best), member.unit)}. Raise [design.most], or allow a larger error."
+        )
+        raise DesignError(message)
 
 
 def weighed_counts(question: Question, *, plain: bool = False) -> list[int]:

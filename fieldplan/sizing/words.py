@@ -2,6 +2,7 @@
 
 import math
 from collections.abc import Sequence
+from dataclasses import replace
 
 from fieldplan.sizing.question import Question
 
@@ -140,6 +141,10 @@ def target_words(question: Question) -> str:
     >>> target_words(Question((Part("site", 1.0, 20.0),), "standard_error", 9.0, unit="mg/kg"))
     'standard error of the mean ≤ 9 mg/kg'
     """
+    if question.also:
+        others = [f"{target_words(other)} for {other.analyte}" for other in question.also]
+        own = target_words(replace(question, also=()))
+        return listed([f"{own} for {question.analyte}", *others])
     if question.target == "standard_error":
         return f"standard error of the mean ≤ {with_unit(typed(question.value), question.unit)}"
     if question.target == "budget":

@@ -213,7 +213,8 @@ def test_pilots_by_stratum_give_a_chance() -> None:
         ),
         (
             "--stratum 1,3 --standard-error 1 --allocation even",
-            "--allocation 'even' is unknown; write proportional or neyman.",
+            "--allocation 'even' is unknown; write proportional, neyman, cost-optimal or "
+            "equal-precision.",
         ),
         (
             "some.toml --sigma 3",
