@@ -4,6 +4,8 @@ import sys
 from collections.abc import Callable, Iterator
 
 from tests.benchmarks.commands import timed_commands
+from tests.benchmarks.money import measured as measured_money
+from tests.benchmarks.near_normal import timed_findings
 from tests.benchmarks.patches import measured as measured_patches
 from tests.benchmarks.placement import COUNTS, VERTICES, measured
 
@@ -44,10 +46,34 @@ def patches() -> Iterator[str]:
         )
 
 
+def near_normal() -> Iterator[str]:
+    """Yield the table of the section "Is the mean near normal"."""
+    yield "| work | aim | shortest | plain simulation of one shape | ratio |"
+    yield "| --- | --- | --- | --- | --- |"
+    for row in timed_findings():
+        yield (
+            f"| {row.name} | {row.aim_s * 1000:g} ms | {row.seconds * 1000:.1f} ms "
+            f"| {row.peer_s * 1000:.0f} ms | {row.ratio:.1f} |"
+        )
+
+
+def money() -> Iterator[str]:
+    """Yield the table of the section "Money"."""
+    yield "| work | aim | shortest | peer | its shortest | ratio |"
+    yield "| --- | --- | --- | --- | --- | --- |"
+    for row in measured_money():
+        yield (
+            f"| {row.name} | {row.aim_s * 1000:g} ms | {row.seconds * 1000:.1f} ms | {row.peer} "
+            f"| {row.peer_s * 1000:.1f} ms | {row.peer_s / row.seconds:.1f} |"
+        )
+
+
 SECTIONS: dict[str, Callable[[], Iterator[str]]] = {
     "placement": placement,
     "commands": commands,
     "patches": patches,
+    "near-normal": near_normal,
+    "money": money,
 }
 
 if __name__ == "__main__":
