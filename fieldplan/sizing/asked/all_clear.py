@@ -13,8 +13,10 @@ from fieldplan.sizing.asked.counting_claims import (
     counts_that_notice,
     exceeding_units,
     level_words,
+    limit_warning,
     population_words,
     table_missing,
+    takes_all,
     uneven_warning,
 )
 from fieldplan.sizing.asked.model import Answered, Asked
@@ -61,6 +63,12 @@ def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
         Results by stratum.
     """
     table = _table(asked)
+    if takes_all(asked, counts):
+        answer = (
+            f"All {asked.population} units of the list are looked at: none of them exceeds "
+            f"{level_words(asked)} if no result does."
+        )
+        return _finding(asked, counts, answer, None)
     chance = chance_noticed(asked, counts, _share(asked, table), allowed=0)
     claim = _claimed(asked, counts, table.confidence)
     answer = (
@@ -85,7 +93,7 @@ def _near(asked: Asked, share: float, confidence: float) -> tuple[int, float]:
 def _answer(asked: Asked, counts: tuple[int, ...]) -> str:
     table = _table(asked)
     total, level = sum(counts), level_words(asked)
-    if asked.population is not None and total >= asked.population:
+    if takes_all(asked, counts):
         return (
             f"All {total} units of the list must be looked at to notice {_unnoticed(asked, table)} "
             f"above {level} with {typed_percent(table.confidence)} confidence."
@@ -226,16 +234,17 @@ def _row_words(asked: Asked, share: float) -> str:
 
 
 def _warnings(asked: Asked, counts: tuple[int, ...], share: float) -> tuple[str, ...]:
-    whole = asked.population is not None and sum(counts) >= asked.population
-    lines = ["It says nothing about the mean."]
-    if not whole and (asked.population is None or exceeding_units(asked, share) > 1):
+    lines = [*limit_warning(asked), "It says nothing about the mean."]
+    if not takes_all(asked, counts) and (
+        asked.population is None or exceeding_units(asked, share) > 1
+    ):
         few = share / 5 if asked.population is None else 1 / asked.population
         unseen = 1 - chance_noticed(asked, counts, few, allowed=0)
-        lines = [
+        lines[-1] = (
             f"It says nothing about the mean, nor that no {_place(asked)} exceeds "
             f"{level_words(asked)}: {_row_words(asked, few)} above it would stay unseen in "
             f"{percent(unseen)} of such campaigns and spoil the claim in {percent(1 - unseen)}."
-        ]
+        )
     lines += uneven_warning(asked, counts, _near(asked, share, _table(asked).confidence)[0])
     lines.append(
         "One result above the level ends the claim: it is neither dropped nor sampled away. What "

@@ -5,7 +5,7 @@ from dataclasses import replace
 from fieldplan.base.errors import DesignError
 from fieldplan.base.working import Quantity, Step
 from fieldplan.campaign.questions.change import Change
-from fieldplan.sizing.asked.counting_claims import table_missing
+from fieldplan.sizing.asked.counting_claims import table_missing, takes_all
 from fieldplan.sizing.asked.model import Answered, Asked
 from fieldplan.sizing.counting import plain_counts
 from fieldplan.sizing.model import Amount, Finding, Picture, Series
@@ -64,7 +64,7 @@ def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
     """
     table = _table(asked)
     answer = _answer(asked, table, counts)
-    if table.half_width is None:
+    if table.half_width is None and not takes_all(asked, counts):
         least = with_unit(figure(_smallest(asked, table, counts)), asked.question.unit)
         sure = typed_percent(1 - (table.beta or 0.0))
         answer += f" The smallest change shown with {sure} is {least}."
@@ -144,6 +144,11 @@ def _smallest(asked: Asked, table: Change, counts: tuple[int, ...]) -> float:
 def _answer(asked: Asked, table: Change, counts: tuple[int, ...]) -> str:
     paired, unit = _paired(asked, table), asked.question.unit
     places = counted(sum(counts), _place(asked))
+    if takes_all(asked, counts):
+        return (
+            f"All {places} of the list visited in both rounds: the change of their mean is known "
+            "but for the laboratory's error."
+        )
     if table.half_width is not None:
         reach = with_unit(figure(Precision(paired).half_width(counts)), unit)
         sure = typed_percent(asked.question.confidence)

@@ -113,6 +113,23 @@ def counts_that_notice(
     return asked.shared(smallest(notices, min(low, most), most, back=ripple))
 
 
+def limit_warning(asked: Asked) -> tuple[str, ...]:
+    """Warn where a non-detect could hide an exceedance."""
+    limit, level = asked.analyte.reporting_limit, asked.level
+    if limit is None or level is None or limit <= level:
+        return ()
+    unit = asked.question.unit
+    return (
+        f"The reporting limit of {with_unit(typed(limit), unit)} lies above the level: a "
+        "non-detect there is no result at or below it and cannot be counted.",
+    )
+
+
+def takes_all(asked: Asked, counts: tuple[int, ...]) -> bool:
+    """Tell whether the counts look at every unit of a list."""
+    return asked.population is not None and sum(counts) >= asked.population
+
+
 def uneven_warning(asked: Asked, counts: tuple[int, ...], even: int) -> tuple[str, ...]:
     """Say what strata out of proportion cost; ``even`` is the number without strata."""
     if evenness(asked, counts) >= 0.9:

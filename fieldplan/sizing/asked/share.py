@@ -10,6 +10,7 @@ from fieldplan.sizing.asked.counting_claims import (
     level_words,
     population_words,
     table_missing,
+    takes_all,
 )
 from fieldplan.sizing.asked.model import Answered, Asked
 from fieldplan.sizing.asked.share_comparison import compared, count_compared
@@ -77,6 +78,12 @@ def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
     table = _table(asked)
     if table.margin is None:
         return compared(asked, table, counts)
+    if takes_all(asked, counts):
+        answer = (
+            f"All {sum(counts)} units of the list are looked at, so the share of them "
+            f"{_what(asked)} is known but for the laboratory's error."
+        )
+        return _finding(asked, table, counts, answer, ())
     reach = _reach(asked, table, sum(counts))
     answer = (
         f"{counted(sum(counts), 'result')} pin down the share of {population_words(asked)} "

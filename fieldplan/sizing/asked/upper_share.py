@@ -12,8 +12,10 @@ from fieldplan.sizing.asked.counting_claims import (
     counting_assumptions,
     counts_that_notice,
     level_words,
+    limit_warning,
     population_words,
     table_missing,
+    takes_all,
     uneven_warning,
 )
 from fieldplan.sizing.asked.model import Answered, Asked
@@ -81,7 +83,12 @@ def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
         return normal_bound.bought(asked, table, counts)
     total, sure = sum(counts), typed_percent(table.confidence)
     allowed = _permitted(asked, table, counts)
-    if allowed is None:
+    if takes_all(asked, counts):
+        answer = (
+            f"All {total} units of the list are looked at: no more than {allowed} of them may "
+            f"exceed {level_words(asked)} for the claim to be true."
+        )
+    elif allowed is None:
         share = _share_shown(asked, table, counts)
         answer = (
             f"{counted(total, 'result')} are too few for the claim: with none of them above "
@@ -270,6 +277,7 @@ def _warnings(asked: Asked, counts: tuple[int, ...], allowed: int) -> tuple[str,
     chance = _comes_out(asked, counts, few, allowed)
     rest = typed_percent(1 - table.share)
     lines = [
+        *limit_warning(asked),
         *uneven_warning(asked, counts, _near(asked, table, allowed)),
         f"It says nothing about the mean, nor that no {place} exceeds {level_words(asked)}: up to "
         f"{rest} may, by any amount.",

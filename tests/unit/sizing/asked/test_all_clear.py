@@ -2,6 +2,7 @@
 
 import itertools
 import math
+from dataclasses import replace
 
 import pytest
 from scipy import stats
@@ -114,6 +115,25 @@ def test_given_counts_say_what_they_could_claim() -> None:
     units = bought(asked_for("all-clear", parts=listed(100), share=0.05), (45,))
     assert amount(units, "most_units_unseen") == 4
     assert "no more than 4 of the 100 units" in units.answer
+
+
+def test_whole_list_needs_no_confidence() -> None:
+    """With every unit looked at nothing is left to claim."""
+    found = bought(asked_for("all-clear", parts=listed(22), units=2), (22,))
+    assert "none of them exceeds 150 mg/kg if no result does" in found.answer
+    assert "confidence" not in found.answer
+    assert amount(found, "chance_to_notice") == 1.0
+    assert amount(found, "most_units_unseen") == 0
+
+
+def test_reporting_limit_above_the_level_is_warned_of() -> None:
+    """A non-detect below 200 says nothing about 150."""
+    asked = asked_for("all-clear", share=0.05)
+    high = asked.analyte.model_copy(update={"reporting_limit": 200.0})
+    campaign = asked.campaign.model_copy(update={"analyte": (high,)})
+    warnings = count(replace(asked, campaign=campaign)).finding.warnings
+    assert "reporting limit of 200 mg/kg lies above the level" in warnings[0]
+    assert not any("reporting limit" in line for line in count(asked).finding.warnings)
 
 
 def test_question_and_its_inverse_agree() -> None:

@@ -84,6 +84,7 @@ def test_list_taken_whole_leaves_no_error() -> None:
     """All 10 wells in both rounds: the change of their mean is known."""
     asked = asked_for("change", parts=listed(10), half_width=0.001, sigma_of_differences=12.0)
     assert count(asked).needed == (10,)
+    assert "the change of their mean is known" in count(asked).finding.answer
 
 
 def test_what_hangs_on_the_correlation_is_told() -> None:

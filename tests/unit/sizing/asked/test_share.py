@@ -110,6 +110,13 @@ def test_too_few_results_cannot_show_it_however_they_fall() -> None:
     assert amount(found, "power") == 0.0
 
 
+def test_whole_list_is_known() -> None:
+    """No interval about a share that was counted."""
+    found = bought(asked_for("share", parts=listed(22), margin=0.1), (22,))
+    assert "All 22 units of the list are looked at" in found.answer
+    assert amount(found, "expected_reach") == 0.0
+
+
 def test_strata_are_told_how_they_were_counted() -> None:
     """A formula for one sample is not silent about strata."""
     parts = (Part("a", 0.5, 20.0), Part("b", 0.5, 20.0))

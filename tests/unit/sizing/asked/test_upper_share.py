@@ -87,6 +87,12 @@ def test_given_counts_say_how_many_may_exceed() -> None:
     assert f"at least {100 * 0.05 ** (1 / 40):.0f} %" in few.answer
 
 
+def test_whole_list_needs_no_confidence() -> None:
+    """With every unit looked at the claim is true or it is not."""
+    found = bought(asked_for("upper-share", parts=listed(22), share=0.9), (22,))
+    assert found.answer.startswith("All 22 units of the list are looked at: no more than 2 of")
+
+
 def test_table_lists_numbers_allowed_and_how_often_the_claim_comes_out() -> None:
     """Source of the numbers: Wilks 1941; chances by scipy at 1 % above."""
     rows = count(asked_for("upper-share", share=0.95)).finding.rows
