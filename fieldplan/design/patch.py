@@ -67,8 +67,8 @@ def check_fits(frame: Frame, patch: Patch) -> None:
     across = 2 * float(shapely.minimum_bounding_radius(whole))
     if patch.area >= whole.area or patch.length > across:
         message = (
-            f"a patch of {patch.length:g} m by {patch.width:g} m ({patch.area:.4g} m²) does not "
-            f"fit into a population of {whole.area:.4g} m² that is {across:.4g} m across; give a "
+            f"a patch of {patch.length:g} m by {patch.width:g} m ({patch.area:.0f} m²) does not "
+            f"fit into a population of {whole.area:.0f} m² that is {across:.0f} m across; give a "
             "smaller patch."
         )
         raise DesignError(message)

@@ -39,7 +39,7 @@ def problems(table: dict[str, Any], data: dict[str, Any]) -> Iterator[tuple[str,
         The whole file.
     """
     length, width = table.get("length_m"), table.get("width_m")
-    if isinstance(length, int | float) and isinstance(width, int | float) and width > length:
+    if isinstance(length, int | float) and isinstance(width, int | float) and width > length > 0:
         yield "width_m", f"is more than length_m = {length:g}. Exchange the two."
     kinds = [frame.get("kind") for frame in data.get("frame", []) if isinstance(frame, dict)]
     if "list" in kinds:

@@ -243,7 +243,7 @@ def patch_question(asked: Asked) -> PatchQuestion:
     elif question.patch.area >= asked.area_m2:
         message = (
             f"a patch of {question.patch.length:g} m by {question.patch.width:g} m "
-            f"({question.patch.area:.4g} m²) does not fit into {asked.area_m2:.4g} m²; give a "
+            f"({question.patch.area:.0f} m²) does not fit into {asked.area_m2:.10g} m²; give a "
             "smaller patch."
         )
         raise DesignError(message)
