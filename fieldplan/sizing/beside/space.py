@@ -26,7 +26,7 @@ from fieldplan.sizing.frontier_spread import site_field
 from fieldplan.sizing.model import Amount, Finding, Size
 from fieldplan.sizing.pilot_ground import PilotGround, cells_of, pilot_ground
 from fieldplan.sizing.visits import ABOUT_MEANS
-from fieldplan.sizing.words import figure, with_unit
+from fieldplan.sizing.words import figure, percent, with_unit
 from fieldplan.stats.pilot_places import (
     area_weights,
     is_bunched,
@@ -162,56 +162,55 @@ def _predicted(frame: "Frame", size: Size, ground: PilotGround) -> Predicted | N
 def _spread_finding(
     asked: Asked, size: Size, spread: Predicted, bunched: list[tuple[str, tuple[Amount, ...]]]
 ) -> Finding:
-    rows = tuple(
+    sure = percent(spread.assurance)
+    rows = [
         _row(label, layout, size, spread)
         for layout, label in LAYOUTS.items()
         if _told(layout, spread)
-    )
-    needed, sure = spread.needed("compact-strata"), spread.needed("compact-strata", sure=True)
-    planned = _planned_row(size, spread)
+    ]
     return Finding(
         topic="space",
         title=TITLE,
         answer=saving_words(asked, size, spread),
-        amounts=(
-            Amount(
-                "practical_range_m",
-                "Distance at which 5 % of the likeness is left",
-                spread.field.typical_range,
-                "m",
-            ),
-            Amount(
-                "nugget_share",
-                "Share of the variance that not even neighbours share",
-                spread.field.typical_nugget,
-            ),
-            Amount(
-                "compact_strata_n",
-                "Places in compact parts for the same standard error",
-                needed,
-                "places",
-            ),
-            Amount(
-                "compact_strata_n_assured",
-                f"The same with {spread.assurance:.0%} assurance".replace("%", " %"),
-                sure,
-                "places",
-            ),
-            Amount("slope_share", "Share of the variance on a straight slope", spread.slope),
-            *(amount for _, amounts in bunched for amount in amounts),
-        ),
+        amounts=(*_amounts(spread), *(amount for _, amounts in bunched for amount in amounts)),
         columns=(
             "layout",
             "places for the same standard error",
-            f"with {spread.assurance:.0%} assurance".replace("%", " %"),
+            f"with {sure} assurance",
             f"standard error of {size.needed}",
         ),
-        rows=(planned, *rows),
-        steps=prediction_steps(asked, spread, needed or size.needed),
+        rows=(_planned_row(size, spread), *rows),
+        steps=prediction_steps(asked, spread, spread.needed("compact-strata") or size.needed),
         assumptions=ASSUMPTIONS,
         warnings=(*spread_warnings(spread), *(line for line, _ in bunched)),
         sources=(LIKELIHOOD, MATERN, MATHERON, *((THIESSEN,) if bunched else ())),
         picture=spread_picture(asked, size, spread),
+    )
+
+
+def _amounts(spread: Predicted) -> tuple[Amount, ...]:
+    field, sure = spread.field, percent(spread.assurance)
+    needed, assured = (spread.needed("compact-strata", sure=flag) for flag in (False, True))
+    return (
+        Amount(
+            "practical_range_m",
+            "Distance at which 5 % of the likeness is left",
+            field.typical_range,
+            "m",
+        ),
+        Amount(
+            "nugget_share",
+            "Share of the variance that not even neighbours share",
+            field.typical_nugget,
+        ),
+        Amount(
+            "compact_strata_n",
+            "Places in compact parts for the same standard error",
+            needed,
+            "places",
+        ),
+        Amount("compact_strata_n_assured", f"The same with {sure} assurance", assured, "places"),
+        Amount("slope_share", "Share of the variance on a straight slope", spread.slope),
     )
 
 
