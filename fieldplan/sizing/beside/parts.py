@@ -9,6 +9,7 @@ from fieldplan.lab.model import PartSpread, SplitSpread
 from fieldplan.lab.parts import ANALYSIS, PLACES, SAMPLING, TOGETHER
 from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.model import Amount, Finding, Size
+from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.words import counted, figure, listed, percent, with_unit
 
 TOPIC = "parts"
@@ -28,10 +29,12 @@ WORDS = {
     ANALYSIS: "the laboratory",
     TOGETHER: "sampling and the laboratory together",
 }
+LIST_NOTE = "The list's own correction is taken for every part, as in the number of results."
 PAYS = {
     SAMPLING: "more increments in each jar pay most",
     ANALYSIS: "a better laboratory, or a second analysis, pays most",
     TOGETHER: "a second sample at each place pays most",
+    "": "laboratory duplicates would tell whether more increments or a better laboratory pays most",
 }
 TWICE = {
     SAMPLING: "twice the increments in each jar",
@@ -84,6 +87,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
         assumptions=(
             _origin(splits),
             *_not_told(shares),
+            *((LIST_NOTE,) if asked.population is not None else ()),
             "The parts add as variances: a place differs from its neighbours, a jar from the next "
             "jar of the same place, an analysis from the next of the same jar.",
             "A second analysis averages what differs from analysis to analysis; a bias of the "
@@ -134,12 +138,18 @@ def _shares(asked: Asked, size: Size, splits: Sequence[SplitSpread]) -> dict[str
 
 
 def _changes(asked: Asked, size: Size, shares: dict[str, float]) -> Iterator[Change]:
-    """Halve each part in turn; twice the places halve everything."""
+    """Halve each part in turn; twice the places, as far as a list has them, halve everything.
+
+    Of composites nobody knows what a second analysis of each jar would average where sampling and
+    laboratory stand together, so nothing is said of that.
+    """
     prices, k, n = asked.question.prices, asked.question.increments, size.needed
     increment = asked.campaign.cost.per_increment if asked.campaign.cost else 0.0
     error = size.standard_error or 0.0
     spread_out = k > 1 and not asked.question.one_place
     for part, share in shares.items():
+        if part == TOGETHER and k > 1:
+            continue
         halved = share if part != PLACES else 1.0
         if part == SAMPLING and spread_out:
             halved += shares.get(PLACES, 0.0)  # each further increment lies at a place of its own
@@ -152,13 +162,22 @@ def _changes(asked: Asked, size: Size, shares: dict[str, float]) -> Iterator[Cha
                 TOGETHER: prices.of_a_result,
             }[part]
             cost = n * each if each > 0 else None
-        yield Change(part, error * math.sqrt(1 - halved / 2), cost)
+        left = error * math.sqrt(1 - halved / 2)
+        if part == PLACES and asked.population is not None:
+            left = Precision(asked.question).standard_error(_twice_of_list(asked, size))
+        yield Change(part, left, cost)
+
+
+def _twice_of_list(asked: Asked, size: Size) -> list[int]:
+    """Double the units of a list, up to all of them."""
+    pairs = zip(size.strata, asked.question.parts, strict=True)
+    return [min(2 * entry.needed, part.population or 2 * entry.needed) for entry, part in pairs]
 
 
 def _best(error: float, shares: dict[str, float], changes: Sequence[Change]) -> tuple[str, bool]:
     """Name the part that pays most: per money where all prices are known, else by its share."""
     priced = [change for change in changes if change.cost is not None]
-    if len(priced) == len(changes) and changes:
+    if len(priced) == len(shares):
         gains = {c.part: (error**2 - c.standard_error**2) / (c.cost or 1.0) for c in priced}
         return max(gains, key=lambda part: gains[part]), True
     return max(shares, key=lambda part: shares[part]), False
@@ -179,10 +198,14 @@ def _answer(asked: Asked, error: float, shares: dict[str, float], changes: Seque
 
 
 def _pays(asked: Asked, part: str) -> str:
+    if part == TOGETHER and asked.question.increments > 1:
+        return PAYS[""]
     return f"more {asked.question.taken}s pay most" if part == PLACES else PAYS[part]
 
 
 def _twice(asked: Asked, part: str) -> str:
+    if part == PLACES and asked.population is not None:
+        return "twice the units, or all of them"
     if part == PLACES:
         return f"twice the {asked.question.taken}s"
     if part == SAMPLING and asked.question.increments == 1:
@@ -224,6 +247,8 @@ def _interval(part: PartSpread) -> str:
 def _steps(asked: Asked, error: float, changes: Sequence[Change]) -> Iterator[Step]:
     unit = asked.question.unit
     for change in changes:
+        if change.part == PLACES and asked.population is not None:
+            continue  # the list's correction moves with n; the number above shows that formula
         fallen = 2 * (1 - (change.standard_error / error) ** 2)
         yield Step(
             symbol="SE'",

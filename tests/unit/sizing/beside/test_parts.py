@@ -1,6 +1,7 @@
 """What stands beside a number about composites, duplicates and ranked sets."""
 
 import math
+from dataclasses import replace
 
 import pytest
 
@@ -154,3 +155,42 @@ def test_a_ranking_that_costs_too_much_is_said_to() -> None:
         assert finding is not None
         assert words in finding.answer
         assert amounts(finding)["highest_price"] == pytest.approx(price)
+
+
+def test_a_list_is_not_doubled_beyond_its_units() -> None:
+    """By hand: n of 60 units, then all of them, where no error from choosing is left."""
+    finding = found("parts", *SIGMAS, population=60)
+    assert finding is not None
+    told = amounts(finding)
+    result = size_asked(asked_mean(keys=SIGMAS, sigma=SIGMA, standard_error=3.0, population=60))
+    assert 2 * result.needed > 60
+    assert told["error_between_locations"] == 0.0
+    assert "twice the units, or all of them" in finding.answer
+    few = amounts(found("parts", *SIGMAS, population=6000))
+    n = size_asked(asked_mean(keys=SIGMAS, sigma=SIGMA, standard_error=3.0, population=6000)).needed
+    by_hand = SIGMA * math.sqrt((1 - 2 * n / 6000) / (2 * n))
+    assert few["error_between_locations"] == pytest.approx(by_hand)
+
+
+def test_nothing_is_promised_of_what_stands_together() -> None:
+    """Composites with field duplicates alone: a second analysis may help or not."""
+    campaign = make_campaign()
+    design = campaign.design[0].model_copy(update={"increments": 60})
+    spread = make_split_spread()
+    together = tuple(
+        replace(
+            split,
+            parts=(split.parts[0], replace(split.parts[1], part="sampling and analysis")),
+        )
+        for split in spread.splits
+    )
+    result = size(
+        campaign.model_copy(update={"design": (design,)}),
+        replace(spread, splits=together),
+        make_frame(),
+    )
+    finding = next(f for f in result.findings if f.topic == "parts")
+    assert "laboratory duplicates would tell" in finding.answer
+    assert set(amounts(finding)) & {"error_sampling_and_analysis", "error_analysis"} == set()
+    composites = next(f for f in result.findings if f.topic == "composites")
+    assert "counts with the laboratory here" in composites.warnings[0]
