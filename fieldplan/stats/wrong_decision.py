@@ -7,6 +7,7 @@ when it acts on a place whose true mean is not above the level, or leaves one wh
 import math
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import TYPE_CHECKING, NamedTuple
 
 from fieldplan.base.errors import DesignError
@@ -217,11 +218,20 @@ def _density(belief: Belief, means: "np.ndarray") -> "np.ndarray":
     return np.asarray(np.exp(-off * off / 2) / (belief.spread * math.sqrt(2 * math.pi)))
 
 
+@lru_cache(maxsize=1)
+def _rule() -> tuple["np.ndarray", "np.ndarray"]:
+    """Give the Gauss-Legendre rule of 20 points on [-1, 1]."""
+    from numpy.polynomial.legendre import leggauss
+
+    nodes, weights = leggauss(20)
+    return nodes, weights
+
+
 def _pieces(low: float, high: float, *, pieces: int = 8) -> tuple["np.ndarray", "np.ndarray"]:
     """Give nodes and weights of Gauss-Legendre rules of 20 points, laid end to end."""
     import numpy as np
 
-    nodes, weights = np.polynomial.legendre.leggauss(20)
+    nodes, weights = _rule()
     edges = np.linspace(low, high, pieces + 1)
     half = np.diff(edges)[:, np.newaxis] / 2
     middle = (edges[:-1] + edges[1:])[:, np.newaxis] / 2

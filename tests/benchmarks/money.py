@@ -79,7 +79,7 @@ def being_wrong_row() -> Row:
 
     return Row(
         "loss on average, and the cheapest n",
-        0.5,
+        0.1,
         seconds(lambda: being_wrong.finding(asked, size), 5),
         "100,000 campaigns of each n",
         seconds(simulated, 2),

@@ -2,6 +2,7 @@
 
 import math
 from dataclasses import dataclass
+from functools import cached_property
 
 from fieldplan.base.working import Quantity, Step
 from fieldplan.sizing.asked.model import Asked
@@ -39,6 +40,17 @@ class _Stakes:
     belief: Belief
     believed: str
 
+    @cached_property
+    def _shares(self) -> dict[int, tuple[int, ...]]:
+        """Counts by stratum that were shared out already."""
+        return {}
+
+    def shared(self, total: int) -> tuple[int, ...]:
+        """Share a total as the campaign does, once."""
+        if total not in self._shares:
+            self._shares[total] = self.asked.shared(total)
+        return self._shares[total]
+
     def wrong(self, counts: tuple[int, ...]) -> Wrong:
         """Give the chances of both wrong decisions with so many results."""
         precision = Precision(self.asked.question)
@@ -65,12 +77,12 @@ class _Stakes:
 
     def loss_at(self, total: int) -> float:
         """Give the expected loss with so many results, shared as the campaign shares them."""
-        return self.loss(self.wrong(self.asked.shared(total)))
+        return self.loss(self.wrong(self.shared(total)))
 
     def cost_at(self, total: int) -> float:
         """Give what so many results cost."""
         question = self.asked.question
-        return total_cost(question, planned_counts(question, self.asked.shared(total))) or 0.0
+        return total_cost(question, planned_counts(question, self.shared(total))) or 0.0
 
     def without(self) -> tuple[bool, float]:
         """Say whether to act where nobody samples, and what that would lose on average."""
