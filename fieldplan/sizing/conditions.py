@@ -91,6 +91,6 @@ def _common_practice(needed: int) -> str:
     return (
         f"A t interval from {counted(needed, 'result')} takes the mean as near normal. 30 or more "
         "is common practice for data that are not normal (no source); simulated, 30 serve a "
-        "two-sided 95 % interval up to a skewness of about 1 and a limit up to about 0.5. A normal "
+        "two-sided 95 % interval up to a skewness of about 1, a limit up to about 0.5; a normal "
         "population needs no minimum."
     )

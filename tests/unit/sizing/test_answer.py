@@ -263,6 +263,7 @@ def test_conditions_name_what_skewness_asks_for(interval: str) -> None:
     assert "against 22 here" in text
     assert "8 results can show a skewness of 2.27 at most" in text
     assert "common practice for data that are not normal (no source)" in text
+    assert "30 serve a two-sided 95 % interval up to a skewness of about 1, a limit" in text
     assert "a normal population needs no minimum" in text
     name = "interval" if interval == "two-sided" else "upper limit"
     assert f"a nominal 95 % {name} from 22 results holds the true mean depends on" in text

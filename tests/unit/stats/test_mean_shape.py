@@ -13,6 +13,7 @@ from fieldplan.base.errors import DesignError
 from fieldplan.stats.mean_expansion import edgeworth_misses, expanded_misses, expanded_quantile
 from fieldplan.stats.mean_shape import Shape, cv_of_skewness, fitting_shapes, n_by_skewness
 from fieldplan.stats.rare_part import missed_altogether, n_to_meet, share_met, units_missed
+from fieldplan.stats.shape import t_coverage
 from tests.unit.stats.published import row
 
 CVS = (0.2, 0.5, 1.0, 1.5)
@@ -154,6 +155,15 @@ def test_no_skewness_needs_no_minimum_and_a_limit_needs_far_more_than_thirty() -
     assert (n_by_skewness(2.0, kind="upper-limit", **asked) or 0) > 300
     assert n_by_skewness(2.0, kind="lower-limit", **asked) == 2
     assert n_by_skewness(36.0, kind="upper-limit", confidence=0.95, family="lognormal") is None
+
+
+@pytest.mark.parametrize("family", ["gamma", "lognormal"])
+def test_how_far_thirty_results_serve(family: str) -> None:
+    """Within a point, or a tenth over it: an interval at a skewness of 1, a limit at 0.5."""
+    for skewness, kind in ((1.0, "two-sided"), (0.5, "upper-limit")):
+        asked = {"confidence": 0.95, "family": family, "kind": kind}
+        assert t_coverage(30, skewness, **asked) > 0.939
+        assert t_coverage(30, 2.5 * skewness, **asked) < 0.932
 
 
 def test_a_rare_part_is_missed_as_the_binomial_says() -> None:
