@@ -200,7 +200,9 @@ def _finding(asked: Asked, counts: tuple[int, ...], answer: str, step: Step | No
         assumptions=counting_assumptions(asked, allowed=0),
         warnings=_warnings(asked, counts, share),
         sources=(WILKS,) if asked.population is None else (HYPERGEOMETRIC,),
-        picture=_picture(asked, counts, share, table.confidence),
+        picture=None
+        if takes_all(asked, counts)
+        else _picture(asked, counts, share, table.confidence),
     )
 
 

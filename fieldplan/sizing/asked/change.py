@@ -276,7 +276,7 @@ def _finding(
         ),
         warnings=_warnings(asked, table),
         sources=(PAIRED,),
-        picture=_picture(asked, table, counts),
+        picture=None if takes_all(asked, counts) else _picture(asked, table, counts),
     )
 
 
@@ -309,7 +309,7 @@ def _warnings(asked: Asked, table: Change) -> tuple[str, ...]:
     return tuple(lines)
 
 
-def _picture(asked: Asked, table: Change, counts: tuple[int, ...]) -> Picture | None:
+def _picture(asked: Asked, table: Change, counts: tuple[int, ...]) -> Picture:
     paired, unit = _paired(asked, table), asked.question.unit
     if table.half_width is None:
         xs = [2 * (table.difference or 0.0) * k / 20 for k in range(21)]

@@ -62,7 +62,7 @@ def count(asked: Asked) -> Answered:
     )
     finding = _finding(asked, table, needed, answer, _steps(asked, table, sum(needed)))
     endless = unrounded_for_margin(expected, margin, confidence=confidence, kind=kind)
-    target = f"a share to within {typed_percent(margin)}"
+    target = f"a share to within {typed(100 * margin)} points"
     return Answered(needed, target, finding, endless)
 
 
@@ -232,7 +232,7 @@ def _finding(
         assumptions=assumptions(asked),
         warnings=_warnings(asked, table),
         sources=(COCHRAN, HYPERGEOMETRIC if asked.population is not None else CLOPPER),
-        picture=_picture(asked, table, total),
+        picture=None if takes_all(asked, counts) else _picture(asked, table, total),
     )
 
 

@@ -246,7 +246,7 @@ def _finding(
         assumptions=counting_assumptions(asked, allowed=allowed),
         warnings=_warnings(asked, counts, allowed),
         sources=(WILKS,) if asked.population is None else (HYPERGEOMETRIC,),
-        picture=_picture(asked, counts, allowed),
+        picture=None if takes_all(asked, counts) else _picture(asked, counts, allowed),
     )
 
 
