@@ -9,8 +9,8 @@ from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.counting import planned_counts, total_cost
 from fieldplan.sizing.model import Amount, Finding, Picture, Series, Size
 from fieldplan.sizing.precision import Precision
-from fieldplan.sizing.words import figure, percent, with_unit
-from fieldplan.stats.intervals import t_quantile
+from fieldplan.sizing.words import figure, percent, typed_percent, with_unit
+from fieldplan.stats.intervals import IntervalKind, t_quantile
 from fieldplan.stats.wrong_decision import (
     Belief,
     Wrong,
@@ -65,11 +65,24 @@ class _Stakes:
 
     def multiplier(self, degrees_of_freedom: float) -> float:
         """Give how many standard errors are added before the mean is compared."""
-        question = self.asked.question
-        if question.interval == "two-sided" or math.isinf(degrees_of_freedom):
+        kind, confidence = self.compared
+        if kind == "two-sided" or math.isinf(degrees_of_freedom):
             return 0.0
-        t = t_quantile(degrees_of_freedom, confidence=question.confidence, kind=question.interval)
-        return t if question.interval == "upper-limit" else -t
+        t = t_quantile(degrees_of_freedom, confidence=confidence, kind=kind)
+        return t if kind == "upper-limit" else -t
+
+    @property
+    def compared(self) -> tuple[IntervalKind, float]:
+        """What is held against the level: a limit of so much confidence, or the mean itself.
+
+        A test against the level decides as its limit does; without one the campaign's rules say
+        which limit.
+        """
+        tested = self.asked.objective.mean_and_level
+        if tested is None:
+            return self.asked.question.interval, self.asked.question.confidence
+        above = tested.assume == "above-level"
+        return "upper-limit" if above else "lower-limit", 1 - tested.alpha
 
     def loss(self, wrong: Wrong) -> float:
         """Give the expected loss."""
@@ -287,11 +300,10 @@ def _steps(stakes: _Stakes, wrong: Wrong, needed: int) -> tuple[Step, ...]:
 
 def _assumptions(stakes: _Stakes) -> tuple[str, ...]:
     question = stakes.asked.question
-    compared = {
-        "two-sided": "the mean itself",
-        "upper-limit": "the upper limit of the mean",
-        "lower-limit": "the lower limit of the mean",
-    }[question.interval]
+    kind, confidence = stakes.compared
+    compared = "the mean itself"
+    if kind != "two-sided":
+        compared = f"the {typed_percent(confidence)} {kind.replace('-', ' ')} of the mean"
     return (
         f"The true mean was taken to lie {stakes.believed}; the chance that it is above the level "
         f"is then {_chance_words(stakes.belief.above(stakes.level))}.",

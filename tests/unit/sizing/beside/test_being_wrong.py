@@ -75,7 +75,7 @@ def test_an_upper_limit_acts_more_often() -> None:
     one, other = amounts(mean), amounts(limit)
     assert other["chance_wrongly_left"] < one["chance_wrongly_left"]
     assert other["chance_wrongly_acted"] > one["chance_wrongly_acted"]
-    assert "the upper limit of the mean comes out above" in " ".join(limit.assumptions)
+    assert "the 95 % upper limit of the mean comes out above" in " ".join(limit.assumptions)
 
 
 def test_the_working_multiplies_what_it_shows() -> None:
@@ -145,3 +145,19 @@ def test_harm_is_not_priced() -> None:
     finding = found(*STAKES, *BELIEVED)
     assert finding is not None
     assert any("Harm to people is no sum of money" in line for line in finding.assumptions)
+
+
+@pytest.mark.parametrize(("assume", "sign"), [("above-level", 1), ("below-level", -1)])
+def test_a_test_against_the_level_decides_as_it_says(assume: str, sign: int) -> None:
+    """Chances at a stated mean of 140 by scipy's noncentral t, with the test's own alpha."""
+    edge = 135 if assume == "above-level" else 165
+    keys = (*STAKES, f"mean_and_level.assume={assume}", f"mean_and_level.gray_edge={edge}",
+            "mean_and_level.alpha=0.1", "mean_and_level.beta=0.2")  # fmt: skip
+    finding = found(*keys, question="mean-and-level", standard_error=None, mean=140.0)
+    assert finding is not None
+    n = int(finding.answer.split("With the ")[1].split()[0])
+    t = stats.t.ppf(0.9, n - 1)
+    chance = stats.nct.sf(-sign * t, n - 1, -10 / (20 / n**0.5))
+    assert amounts(finding)["chance_wrongly_acted"] == pytest.approx(chance, abs=1e-7)
+    name = "upper" if sign > 0 else "lower"
+    assert f"the 90 % {name} limit of the mean" in " ".join(finding.assumptions)
