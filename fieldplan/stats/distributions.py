@@ -172,17 +172,21 @@ def invert(share: Callable[[float], float], level: float, low: float, high: floa
     while share(high) < level:
         low, high = high, high * 2
     below, above = share(low) - level, share(high) - level
+    side = 0
     for _ in range(200):
         middle = (low * above - high * below) / (above - below)
         if not low < middle < high:
             middle = (low + high) / 2
         here = share(middle) - level
-        if here == 0 or high - low < 1e-13 * abs(high):
+        if abs(here) <= 1e-15 * level or high - low < 1e-13 * abs(high):
             return middle
+        # An end that stays twice in a row would stay for ever: its value is halved.
         if here < 0:
-            low, below, above = middle, here, above / 2
+            low, below, above = middle, here, above / 2 if side < 0 else above
+            side = -1
         else:
-            high, above, below = middle, here, below / 2
+            high, above, below = middle, here, below / 2 if side > 0 else below
+            side = 1
     return (low + high) / 2
 
 
