@@ -6,7 +6,6 @@ from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from fieldplan.base.errors import CampaignError, DesignError
-from fieldplan.sizing.asked.model import entries_of
 from fieldplan.sizing.by_stratum import bounded, unknown
 from fieldplan.sizing.money import Prices
 from fieldplan.sizing.question import ControlRate, Part, Question, TargetKind
@@ -61,6 +60,8 @@ def _asked_also(
     campaign: "Campaign", spread: "Spread", frame: "Frame", objective: "Objective"
 ) -> Question:
     """Ask for another objective that decides n; what its analyte lacks stops the sizing."""
+    from fieldplan.sizing.asked.model import entries_of
+
     analyte = campaign.analyte_called(objective.analyte or campaign.deciding_analyte.id)
     entries = entries_of(spread, analyte.id)
     mean = expected_mean(entries, frame, site=spread.site if analyte.id == spread.analyte else None)

@@ -7,7 +7,7 @@ the least money) where the allocation may choose; where it may not, with the sma
 import math
 from collections.abc import Callable, Sequence
 from dataclasses import replace
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.precision import Precision
@@ -15,10 +15,11 @@ from fieldplan.sizing.question import Question
 from fieldplan.sizing.words import figure, named, target_words, with_unit
 from fieldplan.stats.allocation import share_total
 from fieldplan.stats.intervals import t_quantile
-from fieldplan.stats.least_cost import least_cost, smallest_variance
 from fieldplan.stats.precision import meets, smallest
-from fieldplan.stats.several_analytes import Balance, Demand, balance
 from fieldplan.stats.strata import Strata
+
+if TYPE_CHECKING:
+    from fieldplan.stats.several_analytes import Balance, Demand
 
 CHOOSING = ("neyman", "cost-optimal")
 """Allocations that follow the spread wherever the targets lead them."""
@@ -153,6 +154,9 @@ def exact_counts(question: Question) -> tuple[tuple[int, ...], float, float]:
     value, bound : float
         What they cost (results, or money), and what no other counts can undercut.
     """
+    from fieldplan.stats.least_cost import least_cost
+    from fieldplan.stats.several_analytes import Demand
+
     demands = [
         Demand(tuple(part.sigma for part in member.parts), member.value**2, member.analyte)
         for member in everyone(question)
@@ -199,11 +203,13 @@ def alone(member: Question) -> list[int]:
         raise DesignError(*(f"{member.analyte}: {line}" for line in fault.problems)) from fault
 
 
-def demand_of(member: Question) -> Demand:
+def demand_of(member: Question) -> "Demand":
     """Put one analyte's target as a tolerated variance.
 
     A half-width takes Student's t, and an assurance the reserve, that its own counts would have.
     """
+    from fieldplan.stats.several_analytes import Demand
+
     sigmas = tuple(part.sigma for part in member.parts)
     if member.target == "standard_error" and holds_to(member) is None:
         return Demand(sigmas, member.value**2, member.analyte)
@@ -218,8 +224,10 @@ def demand_of(member: Question) -> Demand:
     return Demand(sigmas, (width / t) ** 2, member.analyte)
 
 
-def joint_balance(question: Question) -> Balance:
+def joint_balance(question: Question) -> "Balance":
     """Weigh the analytes that decide against each other, before any rounding."""
+    from fieldplan.stats.several_analytes import balance
+
     return balance(_priced(question), [demand_of(member) for member in everyone(question)])
 
 
@@ -261,6 +269,8 @@ def most_for_money(question: Question, cost: Callable[[Sequence[int]], float]) -
     cost : callable
         Money for counts: whole locations, losses, control samples and days in.
     """
+    from fieldplan.stats.least_cost import smallest_variance
+
     strata = question.strata
     floors = list(strata.floors)
     money = question.value - cost([0] * len(floors))

@@ -11,15 +11,12 @@ smallest variance.
 """
 
 import math
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from typing import Literal
-
-import numpy as np
 
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.one_by_one import (
     FallOfVariance,
-    Numbers,
     Order,
     OwnVariance,
     given_out,
@@ -150,11 +147,11 @@ def share_total(strata: Strata, total: int, *, allocation: Allocation) -> list[i
 
 def _order(strata: Strata, allocation: Allocation) -> Order:
     if allocation == "equal-precision":
-        unseen = [0.0 if size is None else 1 / size for size in strata.populations]
-        return OwnVariance(np.array(_sizes(strata, allocation)), np.array(unseen))
-    spreads = np.array(_sizes(strata, "neyman"))
-    costs = np.array(strata.unit_costs if allocation == "cost-optimal" else 1.0)
-    return FallOfVariance(spreads**2 / costs)
+        unseen = (0.0 if size is None else 1 / size for size in strata.populations)
+        return OwnVariance(tuple(_sizes(strata, allocation)), tuple(unseen))
+    costs = strata.unit_costs if allocation == "cost-optimal" else (1.0,) * len(strata.weights)
+    spreads = _sizes(strata, "neyman")
+    return FallOfVariance(tuple(a * a / c for a, c in zip(spreads, costs, strict=True)))
 
 
 def _proportional(strata: Strata, total: int) -> list[int]:
@@ -164,26 +161,35 @@ def _proportional(strata: Strata, total: int) -> list[int]:
     return topped_up(counts, _order(strata, "neyman"), caps, total=total)
 
 
-def _held_shares(strata: Strata, total: int) -> Numbers:
+def _held_shares(strata: Strata, total: int) -> list[float]:
     """Share in proportion to W, held between floor and cap: clip(factor · W) that sums up."""
-    weights = np.array(strata.weights)
-    floors, caps = np.array(strata.floors, dtype=float), np.array(strata.caps, dtype=float)
-
-    def held(factor: float) -> Numbers:
-        return np.clip(factor * weights, floors, caps)
-
-    low, high = 0.0, (total + 1) / float(weights.min())
-    for _ in range(200):
-        middle = (low + high) / 2
-        if middle in (low, high):
-            break
-        low, high = (low, middle) if math.fsum(held(middle)) > total else (middle, high)
-    shares = held(low)
-    free = (floors < low * weights) & (low * weights < caps)
-    if free.any():
-        left = total - math.fsum(shares[~free])
-        shares[free] = left * weights[free] / math.fsum(weights[free])
+    bounds = list(zip(strata.weights, strata.floors, strata.caps, strict=True))
+    factor = _common_factor(bounds, total)
+    shares = [min(max(factor * weight, float(f)), float(c)) for weight, f, c in bounds]
+    free = [k for k, (weight, f, c) in enumerate(bounds) if f < factor * weight < c]
+    if free:
+        held = math.fsum(shares) - math.fsum(shares[k] for k in free)
+        weight = math.fsum(bounds[k][0] for k in free)
+        for k in free:
+            shares[k] = (total - held) * bounds[k][0] / weight
     return shares
+
+
+def _common_factor(bounds: Sequence[tuple[float, int, int]], total: int) -> float:
+    """Find the factor at which the held shares sum up to the total.
+
+    Their sum is piecewise linear in the factor: a stratum grows from floor/W on, up to cap/W.
+    """
+    turns = [(f / weight, weight) for weight, f, _ in bounds]
+    turns += [(c / weight, -weight) for weight, _, c in bounds]
+    reached, slope, here = float(sum(f for _, f, _ in bounds)), 0.0, 0.0
+    for turn, change in sorted(turns):
+        if reached + slope * (turn - here) >= total and slope > 0:
+            break
+        reached += slope * (turn - here)
+        here = turn
+        slope += change
+    return here + (total - reached) / slope if slope > 0 and reached < total else here
 
 
 def smallest_total(strata: Strata, target_variance: float, *, allocation: Allocation) -> list[int]:
