@@ -11,11 +11,10 @@ import numpy as np
 
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.allocation import share_total
-from fieldplan.stats.one_by_one import Numbers
 from fieldplan.stats.precision import meets, smallest
 from fieldplan.stats.several_analytes import Balance, Bounds, Demand, balance, bounds_of
 from fieldplan.stats.strata import Strata
-from fieldplan.stats.whole_search import Limited, WholeCounts, search
+from fieldplan.stats.whole_search import Limited, Numbers, WholeCounts, search
 
 
 def least_cost(strata: Strata, demands: Sequence[Demand]) -> tuple[WholeCounts, Balance]:

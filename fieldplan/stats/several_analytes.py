@@ -14,10 +14,9 @@ from dataclasses import dataclass
 import numpy as np
 
 from fieldplan.base.errors import DesignError
-from fieldplan.stats.one_by_one import Numbers
 from fieldplan.stats.strata import Strata
 from fieldplan.stats.stratified import predicted_variance
-from fieldplan.stats.whole_search import Matrix
+from fieldplan.stats.whole_search import Matrix, Numbers
 
 ROUNDS = 300
 """Rounds of the multiplicative rule before the dual is climbed to its top."""

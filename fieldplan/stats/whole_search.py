@@ -10,8 +10,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from fieldplan.stats.one_by_one import Numbers
-
+Numbers = np.ndarray[tuple[int], np.dtype[np.float64]]
 Matrix = np.ndarray[tuple[int, int], np.dtype[np.float64]]
 Positions = np.ndarray[tuple[int], np.dtype[np.intp]]
 
