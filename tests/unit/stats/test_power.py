@@ -10,6 +10,7 @@ from scipy import optimize, special, stats
 
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.distributions import normal_quantile, student_quantile
+from fieldplan.stats.intervals import t_interval
 from fieldplan.stats.noncentral_t import noncentral_t_beyond
 from fieldplan.stats.power import (
     expected_margin,
@@ -23,7 +24,8 @@ from fieldplan.stats.power import (
     sigma_of_change,
     smallest_difference,
 )
-from fieldplan.stats.precision import whole
+from fieldplan.stats.precision import standard_error, whole
+from fieldplan.stats.summary import sample_mean, sample_sd
 from tests.unit.stats.published import row
 
 EXACT_TABLE = [f"A03-0{n}" for n in (11, 12, 14, 15, 17, 18, 19, 20, 21, 22, 31, 33, 34, 35)]
@@ -288,3 +290,15 @@ def test_distance_undoes_power_on_both_sides_of_the_level(known: float, chance: 
     shift = shift_for_chance(chance, known, alpha=0.05)
     assert power_at(shift, known, alpha=0.05) == pytest.approx(chance, abs=1e-9)
     assert (shift > 1e-6) == (chance > 0.05)
+
+
+def test_worked_example_stands_where_it_is_printed() -> None:
+    """Source: EPA QA/G-9 (2000), box 3-2: mean 99.38, t = 1.26 against 95, not shown at α 0.1."""
+    inputs = row("A03-002").inputs
+    mean, sigma, n = sample_mean(inputs["x"]), sample_sd(inputs["x"]), len(inputs["x"])
+    assert mean == pytest.approx(row("A03-003").exact, rel=1e-12)
+    error = standard_error(sigma, n)
+    assert (mean - inputs["mu0"]) / error == pytest.approx(row("A03-002").exact, rel=1e-12)
+    low, _ = t_interval(mean, error, n - 1, confidence=0.9, kind="lower-limit")
+    assert low is not None
+    assert low < inputs["mu0"]
