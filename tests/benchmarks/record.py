@@ -4,6 +4,7 @@ import sys
 from collections.abc import Callable, Iterator
 
 from tests.benchmarks.commands import timed_commands
+from tests.benchmarks.correlation import measured as measured_correlation
 from tests.benchmarks.money import measured as measured_money
 from tests.benchmarks.near_normal import timed_findings
 from tests.benchmarks.patches import measured as measured_patches
@@ -68,12 +69,24 @@ def money() -> Iterator[str]:
         )
 
 
+def correlation() -> Iterator[str]:
+    """Yield the table of the section "Correlation"."""
+    yield "| work | aim | shortest | peer | its shortest | ratio |"
+    yield "| --- | --- | --- | --- | --- | --- |"
+    for row in measured_correlation():
+        yield (
+            f"| {row.name} | {row.aim_s * 1000:g} ms | {row.seconds * 1000:.1f} ms | {row.peer} "
+            f"| {row.peer_s * 1000:.1f} ms | {row.peer_s / row.seconds:.1f} |"
+        )
+
+
 SECTIONS: dict[str, Callable[[], Iterator[str]]] = {
     "placement": placement,
     "commands": commands,
     "patches": patches,
     "near-normal": near_normal,
     "money": money,
+    "correlation": correlation,
 }
 
 if __name__ == "__main__":
