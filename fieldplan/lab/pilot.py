@@ -276,6 +276,40 @@ def _position(place: PilotLocation) -> tuple[float, float] | None:
 _REMEDY = 'Type one in the campaign file: a [[sigma]] table with stratum = "{}", value, source.'
 
 
+FEW = 8
+"""Up to so many strata each has sentences of its own."""
+
+
+def many_strata_sentence(entries: Sequence[StratumSpread], unit: str) -> str:
+    """Say in one sentence what is known of the spread in many strata.
+
+    Parameters
+    ----------
+    entries : sequence of StratumSpread
+    unit : str
+
+    Examples
+    --------
+    >>> entries = [StratumSpread("lead", f"S{k}", 9.0 + k, None, 4 + k, "p.csv") for k in (1, 2)]
+    >>> many_strata_sentence(entries, "mg/kg")
+    'In 2 strata s lies between 10.0 mg/kg (S1) and 11.0 mg/kg (S2), each from 5 to 6 results.'
+    """
+    low, high = (choose(entries, key=lambda entry: entry.sigma) for choose in (min, max))
+    line = (
+        f"In {len(entries)} strata s lies between {significant(low.sigma)} {unit} ({low.stratum}) "
+        f"and {significant(high.sigma)} {unit} ({high.stratum})"
+    )
+    behind = [entry.results for entry in entries if entry.results is not None]
+    if len(behind) == len(entries):
+        fewest, most = min(behind), max(behind)
+        span = counted(most, "result") if fewest == most else f"{fewest} to {most} results"
+        line += f", each from {span}"
+    missing = sum(entry.detected.count(False) for entry in entries)
+    guessed = sum(entry.assumed for entry in entries)
+    line += f"; {counted(missing, 'non-detect')}" if missing else ""
+    return line + (f"; ASSUMED in {guessed} of them." if guessed else ".")
+
+
 def spread_sentences(entry: StratumSpread, unit: str, counts: Mapping[str, int]) -> list[str]:
     """Say in sentences what is known of one stratum's spread.
 

@@ -18,7 +18,14 @@ from fieldplan.lab.parts import (
     split_of,
     whole_from_parts,
 )
-from fieldplan.lab.pilot import PilotLocation, measured_spread, pilot_locations, spread_sentences
+from fieldplan.lab.pilot import (
+    FEW,
+    PilotLocation,
+    many_strata_sentence,
+    measured_spread,
+    pilot_locations,
+    spread_sentences,
+)
 from fieldplan.lab.reader import read_lab
 from fieldplan.lab.reading_pairs import read_reading_pairs
 from fieldplan.lab.strata import sort_into_strata
@@ -110,8 +117,11 @@ def spread(tables: Sequence[LabTable | None], campaign: Campaign, frame: "Frame"
     shown = entries if len(frame.strata) > 1 else entries[:1]
     count = {"strata": len(frame.strata)}
     sentences: list[str] = []
-    for entry in shown:
-        sentences += spread_sentences(entry, analyte.unit, count)
+    if len(shown) > FEW:
+        sentences.append(many_strata_sentence(shown, analyte.unit))
+    else:
+        for entry in shown:
+            sentences += spread_sentences(entry, analyte.unit, count)
     others, other_splits, more = _others(tables, campaign, frame, analyte.id)
     file_notes = [note for table in tables if table for note in table.notes]
     notes = [*file_notes, *gathered.notes, *more]

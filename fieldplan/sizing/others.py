@@ -147,7 +147,8 @@ def _bought(
     if not question.parts:
         return found
     counts = [entry.needed for entry in size.strata]
-    common = _shares_pilot(question, asked)
+    decides = question.analyte in {other.analyte for other in asked.also}
+    common = decides or _shares_pilot(question, asked)
     precision = Precision(question if common else replace(question, allocation="proportional"))
     error, width = precision.standard_error(counts), precision.half_width(counts)
     assumed = any(part.assumed for part in question.parts)

@@ -187,7 +187,8 @@ def expected_precision(question: Question, counts: Counts) -> str:
     else:
         side = "above" if question.interval == "upper-limit" else "below"
         width = f"a {share} {question.interval.replace('-', ' ')} {reach} {side} the mean"
-    line = f"If sigma is right, expect a standard error of {error} and {width}."
+    whose = f" for {question.analyte}" if question.also else ""
+    line = f"If sigma is right, expect{whose} a standard error of {error} and {width}."
     if question.locations is not None and counts.plain is not None:
         line += _would_take(question, counts.plain)
     return line

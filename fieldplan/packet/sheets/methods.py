@@ -12,6 +12,7 @@ from fieldplan.packet.sheets.plan_words import (
 from fieldplan.packet.sheets.rules import NON_DETECTS, rules_fingerprint, stated
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
+from fieldplan.sizing.words import FEW, in_strata
 
 OF_SHARES = frozenset({"all-clear", "share", "upper-share"})
 """Questions about the share of the population above a level."""
@@ -149,8 +150,11 @@ def drawn_sentence(plan: Plan) -> str:
     share = percent(plan.frame.population.share)
     line = f"{count} were drawn {how} from {hectares:.2f} ha ({share} of the site"
     if several_strata(plan):
-        parts = [f"{entry.stratum} {entry.planned}" for entry in plan.size.strata]
-        return f"{line}; {', '.join(parts)}; {ALLOCATIONS[design.allocation]})."
+        strata = plan.size.strata
+        shared = ", ".join(f"{entry.stratum} {entry.planned}" for entry in strata)
+        if len(strata) > FEW:
+            shared = in_strata([e.planned for e in strata], [e.stratum for e in strata])
+        return f"{line}; {shared}; {ALLOCATIONS[design.allocation]})."
     return f"{line})."
 
 

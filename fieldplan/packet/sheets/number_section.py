@@ -7,6 +7,7 @@ from fieldplan.packet.sheets.plan_words import every_unit
 from fieldplan.plan.model import Plan
 from fieldplan.sizing.model import OtherPrecision
 from fieldplan.sizing.other_words import chance_words
+from fieldplan.sizing.words import FEW
 
 
 def spread_blocks(plan: Plan) -> list[Block]:
@@ -19,7 +20,7 @@ def spread_blocks(plan: Plan) -> list[Block]:
         from fieldplan.packet.charts import pilot_dots
 
         blocks.append(pilot_dots(spread, name=plan.campaign.deciding_analyte.label))
-    if not all(entry.values for entry in spread.strata):
+    if len(spread.strata) > FEW or not all(entry.values for entry in spread.strata):
         blocks.append(spread_table(plan))
     if spread.notes:
         blocks.append(Bullets(spread.notes))

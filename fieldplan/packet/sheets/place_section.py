@@ -1,10 +1,20 @@
 """How locations are drawn, and the table of all of them."""
 
 from fieldplan.base.document import Block, Bullets, Facts, Paragraph, Table
+from fieldplan.campaign.model import DesignTable
 from fieldplan.design.model import Location
 from fieldplan.packet.sheets.plan_words import ALLOCATIONS, CLASSES, LAYOUTS, several_strata
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
+from fieldplan.sizing.words import named
+
+
+def _bounds(design: DesignTable) -> str:
+    """Say the bounds of single strata, where they have some."""
+    least = [f"{n} in {name}" for name, n in design.least.items()]
+    most = [f"{n} in {name}" for name, n in design.most.items()]
+    words = f", at least {named(least)}" if least else ""
+    return words + (f", at most {named(most)}" if most else "")
 
 
 def draw_blocks(plan: Plan) -> list[Block]:
@@ -19,7 +29,7 @@ def draw_blocks(plan: Plan) -> list[Block]:
         rows.append(
             (
                 "Shared between strata",
-                f"{ALLOCATIONS[design.allocation]}; at least {design.floor} each",
+                f"{ALLOCATIONS[design.allocation]}; at least {design.floor} each{_bounds(design)}",
             )
         )
     if design.minimum_spacing_m:

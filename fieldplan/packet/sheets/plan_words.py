@@ -6,6 +6,7 @@ from fieldplan.campaign.model import Campaign
 from fieldplan.packet.sheets.amounts import counted, listed, percent
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
+from fieldplan.sizing.words import FEW
 
 LAYOUTS = {
     "simple-random": "simple random",
@@ -18,6 +19,8 @@ LAYOUTS = {
 ALLOCATIONS = {
     "proportional": "proportional to size",
     "neyman": "Neyman allocation, by size and spread",
+    "cost-optimal": "by size, spread and cost, for the least cost",
+    "equal-precision": "so that the mean of every stratum alone is equally precise",
 }
 
 CLASSES = {
@@ -101,15 +104,23 @@ def level_words(campaign: Campaign) -> str:
 def assumed_lines(plan: Plan) -> tuple[str, ...]:
     """List all that was assumed and not measured, one stamped line each."""
     lines = []
-    for entry in (*plan.spread.strata, *plan.spread.others):
-        if entry.assumed:
-            analyte = plan.campaign.analyte_called(entry.analyte)
-            decides = analyte == plan.campaign.deciding_analyte
-            whose = "" if decides else f" for {analyte.label}"
+    for analyte in plan.campaign.analyte:
+        every = (*plan.spread.strata, *plan.spread.others)
+        guessed = [entry for entry in every if entry.assumed and entry.analyte == analyte.id]
+        decides = analyte == plan.campaign.deciding_analyte
+        whose = "ASSUMED" if decides else f"ASSUMED for {analyte.label}"
+        if len(guessed) > FEW:
+            low, high = (number(f(entry.sigma for entry in guessed)) for f in (min, max))
             lines.append(
-                f"ASSUMED{whose}: the standard deviation of {number(entry.sigma)} {analyte.unit} "
-                f"in {entry.stratum} is a guess, not a measurement."
+                f"{whose}: the standard deviations of {low} to {high} {analyte.unit} in "
+                f"{len(guessed)} strata are guesses, not measurements."
             )
+            continue
+        lines += [
+            f"{whose}: the standard deviation of {number(entry.sigma)} {analyte.unit} in "
+            f"{entry.stratum} is a guess, not a measurement."
+            for entry in guessed
+        ]
     if plan.frame.boundary_assumed:
         lines.append("ASSUMED: the boundary is a sketch, not a survey.")
     return tuple(lines)

@@ -75,17 +75,20 @@ def _who(names: list[str], needs: list[int], shared: Balance | None) -> str:
         most = max(needs)
         leading = [name for name, need in zip(names, needs, strict=True) if need == most]
         verb = "decides" if len(leading) == 1 else "decide"
-        return f"{listed(leading)} {verb} the number: the shares are fixed and it needs most."
+        return f"{listed(leading)} {verb} the number; the shares are set by other rules."
     deciding = shared.controlling
     if not deciding:
         return "No analyte decides the number: the floors alone keep every target."
     first = names[deciding[0]]
     resting = [name for j, name in enumerate(names) if j not in deciding]
-    spare = f"; {listed(resting)} {'is' if len(resting) == 1 else 'are'} kept with room to spare"
+    spare = ""
+    if resting:
+        verb = "is" if len(resting) == 1 else "are"
+        spare = f"; {listed(resting)} {verb} kept with room to spare"
     if len(deciding) == 1:
-        return f"{first} alone decides the number and its shares{spare if resting else ''}."
+        return f"{first} alone decides the number and its shares{spare}."
     parts = [f"{names[j]} ({percent(shared.shares[j])})" for j in deciding]
-    return f"{listed(parts)} decide the number and its shares together{spare if resting else ''}."
+    return f"{listed(parts)} decide the number and its shares together{spare}."
 
 
 def _alone(names: list[str], needs: list[int], together: int) -> str:
