@@ -143,7 +143,3 @@ def _warnings(size: Size, splits: list[SplitSpread]) -> Iterator[str]:
             f"unit ({GUIDE}); here a stratum has {counted(fewest, 'composite')}. A floor of {FEW} "
             "would ask for them."
         )
-    for split in splits:
-        cut = [part.part.replace("-", " ") for part in split.parts if part.cut_at_zero]
-        for part in cut:
-            yield f"{split.stratum}: the part {part} came out negative and is taken as 0."

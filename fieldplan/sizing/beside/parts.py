@@ -18,6 +18,9 @@ SAID_FROM = 5
 FEW = 8
 """Duplicated places that are usually asked for (common practice, no source)."""
 
+MOST_NAMED = 4
+"""Strata named in one sentence; more are counted."""
+
 SEARLE = "Searle 1971, Linear Models, ch. 11 (nested analysis of variance; from memory)"
 MLS = (
     "Ting and others 1990, Journal of Statistical Computation and Simulation 35:135 "
@@ -95,7 +98,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
             "Intervals are those of normal results; where places have unlike numbers of samples "
             "those of the larger parts are approximate.",
         ),
-        warnings=tuple(_warnings(splits)),
+        warnings=tuple(warnings(splits)),
         sources=(SEARLE, MLS),
     )
 
@@ -265,7 +268,8 @@ def _steps(asked: Asked, error: float, changes: Sequence[Change]) -> Iterator[St
         )
 
 
-def _warnings(splits: Sequence[SplitSpread]) -> Iterator[str]:
+def warnings(splits: Sequence[SplitSpread]) -> Iterator[str]:
+    """Say where few duplicates, or negative estimates, stand behind the parts."""
     duplicated = splits[0].duplicated
     if duplicated is not None and duplicated < FEW:
         yield (
@@ -273,13 +277,18 @@ def _warnings(splits: Sequence[SplitSpread]) -> Iterator[str]:
             f"{'stands' if duplicated == 1 else 'stand'} behind the parts; {FEW} or more are usual "
             "(common practice, no source), and the intervals are wide."
         )
-    told: set[str] = set()
+    cut: dict[str, list[str]] = {}
     for split in splits:
         for part in split.parts:
             if part.cut_at_zero:
-                where = f" in {split.stratum}" if part.part == PLACES and len(splits) > 1 else ""
-                told.add(
-                    f"The part {part.part.replace('-', ' ')}{where} came out negative and is taken "
-                    "as 0: duplicates differ as much as what they stand for."
-                )
-    yield from sorted(told)
+                cut.setdefault(part.part, []).append(split.stratum)
+    for name, strata in cut.items():
+        where = ""
+        if name == PLACES and len(splits) > 1:
+            where = (
+                f" in {listed(strata) if len(strata) <= MOST_NAMED else f'{len(strata)} strata'}"
+            )
+        yield (
+            f"The part {name.replace('-', ' ')}{where} came out negative and is taken as 0: "
+            "duplicates differ as much as what they stand for."
+        )

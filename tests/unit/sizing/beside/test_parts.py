@@ -5,7 +5,9 @@ from dataclasses import replace
 
 import pytest
 
+from fieldplan.lab.model import PartSpread, SplitSpread
 from fieldplan.sizing import size, size_asked
+from fieldplan.sizing.beside.parts import warnings
 from fieldplan.sizing.model import Finding
 from fieldplan.stats.ranked_sets import ranked_count, relative_precision
 from tests.factories import make_campaign, make_frame, make_spread
@@ -194,3 +196,15 @@ def test_nothing_is_promised_of_what_stands_together() -> None:
     assert set(amounts(finding)) & {"error_sampling_and_analysis", "error_analysis"} == set()
     composites = next(f for f in result.findings if f.topic == "composites")
     assert "counts with the laboratory here" in composites.warnings[0]
+
+
+@pytest.mark.parametrize(("strata", "words"), [(2, "in s0 and s1 came"), (9, "in 9 strata came")])
+def test_a_part_that_was_cut_at_zero_is_said_once(strata: int, words: str) -> None:
+    """However many strata it concerns."""
+    parts = (
+        PartSpread("between-locations", 0.0, "x", cut_at_zero=True),
+        PartSpread("analysis", 4.0, "x"),
+    )
+    splits = [SplitSpread("lead", f"s{k}", parts) for k in range(strata)]
+    (told,) = [line for line in warnings(splits) if "negative" in line]
+    assert words in told
