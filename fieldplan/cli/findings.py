@@ -7,7 +7,7 @@ from datetime import date
 from pathlib import Path
 
 from fieldplan.base.errors import FieldplanError
-from fieldplan.campaign.model import Campaign, Objective, ReadCampaign
+from fieldplan.campaign.model import Analyte, Campaign, Objective, ReadCampaign
 from fieldplan.campaign.read import OpenEntry
 
 
@@ -153,9 +153,10 @@ def _read_pilots(read: ReadCampaign) -> None:
 def asked(campaign: Campaign) -> list[str]:
     """Say what a campaign asks, in sentences."""
     objective, analyte = campaign.deciding_objective, campaign.deciding_analyte
-    what = analyte.label
     chosen = f" ({objective.assurance_chosen_by})" if objective.assurance_chosen_by else ""
-    if objective.assurance is None:
+    if objective.question != "mean":
+        sure = "The question decides n; no precision of a mean is asked for."
+    elif objective.assurance is None:
         sure = "The budget decides n; no precision is asked for that it could miss."
     elif objective.assurance == "plain":
         sure = f"The bare formula decides n{chosen}: it is enough in about half of campaigns."
@@ -164,11 +165,22 @@ def asked(campaign: Campaign) -> list[str]:
     layout = campaign.design[0].layout
     return [
         f"{campaign.plan.title} ({campaign.plan.id}).",
-        f"Asked: the mean of {what} with {_target(objective, campaign, analyte.unit)}; "
+        f"{_said('Asked', objective, campaign, analyte)}; "
         f"locations {_LAYOUTS[layout]}, seed {campaign.draw.seed}.",
         sure,
         *_also_asked(campaign),
     ]
+
+
+def _said(start: str, objective: Objective, campaign: Campaign, analyte: Analyte) -> str:
+    """Say what an objective asks of an analyte, behind ``Asked`` or ``Also asked``."""
+    from fieldplan.campaign.questions import meanings, table_of
+
+    if objective.question != "mean":
+        asked = meanings()[f"objective.{table_of(objective.question)}"]
+        return f"{start} of {analyte.label}: {asked}"
+    target = _target(objective, campaign, analyte.unit)
+    return f"{start}: the mean of {analyte.label} with {target}"
 
 
 def _also_asked(campaign: Campaign) -> list[str]:
@@ -179,10 +191,8 @@ def _also_asked(campaign: Campaign) -> list[str]:
     lines = []
     for objective in others:
         analyte = campaign.analyte_called(objective.analyte or campaign.deciding_analyte.id)
-        target = _target(objective, campaign, analyte.unit)
-        lines.append(
-            f"Also asked: the mean of {analyte.label} with {target}; it does not decide n."
-        )
+        said = _said("Also asked", objective, campaign, analyte)
+        lines.append(f"{said}; it does not decide n.")
     for analyte in campaign.analyte:
         if analyte.id not in asked and analyte.id != campaign.deciding_analyte.id:
             lines.append(f"Measured too, without a target: {analyte.label}.")
