@@ -27,12 +27,6 @@ def gauss_legendre() -> tuple[tuple[float, float], ...]:
     return tuple((float(x), float(w)) for x, w in zip(nodes, weights, strict=True))
 
 
-def _log_front(degrees_of_freedom: float) -> float:
-    """Give the constant of the density of s/σ: log of 2 (ν/2)^(ν/2) / Γ(ν/2)."""
-    half = degrees_of_freedom / 2
-    return math.log(2) + half * math.log(half) - math.lgamma(half)
-
-
 @lru_cache(maxsize=4096)
 def noncentral_t_beyond(value: float, degrees_of_freedom: float, shift: float) -> float:
     r"""Give the chance that a noncentral Student variate lies above ``value``.
@@ -88,7 +82,10 @@ def _spread_points(degrees_of_freedom: float) -> tuple[tuple[float, float], ...]
 
 
 def _points(degrees_of_freedom: float, turns: tuple[float, ...]) -> tuple[tuple[float, float], ...]:
-    """Give values of s/σ with their weights, cut where the density sits and at the turns.
+    """Give values of s/σ with weights that sum to 1, cut where the density sits and at the turns.
+
+    The density is s^(ν − 1) exp(−ν s²/2) but for a constant, which the sum of the weights stands
+    in for: its logarithm would lose the last digits of large ν.
 
     The cuts are fourth roots of s/σ: the density starts as s^(ν − 1), which no polynomial
     follows when ν is a fraction near 1, but one in the fourth root does.
@@ -97,13 +94,15 @@ def _points(degrees_of_freedom: float, turns: tuple[float, ...]) -> tuple[tuple[
     low, high = max(0.0, 1 - reach), 1 + reach
     cuts = {low, high, (low + 1) / 2, 1.0, (high + 1) / 2}
     cuts |= {turn for turn in turns if low < turn < high}
-    front, power = _log_front(degrees_of_freedom), degrees_of_freedom - 1
     found = []
     for left, right in pairwise(sorted(cut**0.25 for cut in cuts)):
         half, middle = (right - left) / 2, (right + left) / 2
         for node, weight in gauss_legendre():
             root = middle + half * node
             s = root**4
-            density = math.exp(front + power * math.log(s) - degrees_of_freedom * s * s / 2)
-            found.append((s, half * weight * 4 * root**3 * density))
-    return tuple(found)
+            log = math.log(s)
+            # s² − 1 as it stands loses its digits near 1, where all of the density sits.
+            exponent = degrees_of_freedom * (log - math.expm1(2 * log) / 2)
+            found.append((s, half * weight * root**3 * math.exp(exponent - log)))
+    total = math.fsum(weight for _, weight in found)
+    return tuple((s, weight / total) for s, weight in found)

@@ -8,6 +8,8 @@ from fieldplan.stats.precision import whole
 from fieldplan.stats.rank_moments import chance_beyond, pair_in_order
 from fieldplan.stats.risks import check_difference, check_risks, one_sided_level
 
+_SCANNED_UP_TO, _EXACT_UP_TO = 5000, 20_000
+
 OVERAGE = 0.2
 """Share that the guidance adds for lost and unusable results: NUREG-1575 (2000), section 5.5.2."""
 
@@ -257,7 +259,8 @@ def sign_test_n(share: float, *, alpha: float, beta: float) -> int:
     -------
     int
         The smallest n such that it and every larger number has power 1 − beta: one result more
-        than planned shall not lower the chance below what was asked.
+        than planned shall not lower the chance below what was asked. Above 5000 by the normal
+        curve at the foot of the saw, within 1 in 1000.
 
     Examples
     --------
@@ -265,9 +268,10 @@ def sign_test_n(share: float, *, alpha: float, beta: float) -> int:
     21
     """
     plain = whole(sign_formula_n(share, alpha=alpha, beta=beta))
+    if plain > _SCANNED_UP_TO:
+        return whole(_lasting_by_curve(share, alpha, beta))
     # The saw is one count high, and two counts are worth 2 / (share − ½) results.
     n = plain + math.ceil(4 / (share - 0.5)) + 16
-    whole(n)
     while sign_test_power(share, n, alpha=alpha) < 1 - beta:
         n += max(1, n // 8)
     while n > 1 and sign_test_power(share, n - 1, alpha=alpha) >= 1 - beta:
@@ -309,6 +313,14 @@ def rank_sum_power(
     return 0.0 if count > pairs else chance_beyond(count, pairs * share, variance)
 
 
+def _lasting_by_curve(share: float, alpha: float, beta: float) -> float:
+    """Solve (p − ½) n − (z_α/2 + z_β √(p q)) √n − 1 = 0: the count rounded up by a whole one."""
+    edge = normal_quantile(1 - alpha) / 2
+    edge += normal_quantile(1 - beta) * math.sqrt(share * (1 - share))
+    over = share - 0.5
+    return float(((edge + math.sqrt(edge**2 + 4 * over)) / (2 * over)) ** 2)
+
+
 def _check_share(share: float) -> None:
     if not 0.5 < share <= 1:
         message = (
@@ -319,7 +331,9 @@ def _check_share(share: float) -> None:
 
 
 def _binomial_from(count: int, n: int, share: float) -> float:
-    """Give P(Binomial(n, share) ≥ count)."""
+    """Give P(Binomial(n, share) ≥ count); by the normal curve where n is very large."""
     if count <= 0:
         return 1.0
+    if n > _EXACT_UP_TO and 0 < share < 1:
+        return chance_beyond(count, n * share, n * share * (1 - share))
     return 0.0 if count > n else beta_share(share, count, n - count + 1)

@@ -225,9 +225,9 @@ class LevelDecision:
         whole(total)
         if total == strata.most and not fits(total):
             message = (
-                f"no more than {strata.most} results can be had, and they do not tell a mean of "
-                f"{self.table.gray_edge:g} from {self.level:g} with the chances asked for; widen "
-                "the gray region or allow larger chances."
+                f"even {strata.most} results do not tell a mean of {self.table.gray_edge:g} from "
+                f"{self.level:g} with the chances asked for; widen the gray region or allow larger "
+                "chances."
             )
             raise DesignError(message)
         return self.asked.shared(total)

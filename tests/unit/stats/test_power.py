@@ -23,6 +23,7 @@ from fieldplan.stats.power import (
     shift_for_chance,
     sigma_of_change,
     smallest_difference,
+    smallest_shift,
 )
 from fieldplan.stats.precision import standard_error, whole
 from fieldplan.stats.summary import sample_mean, sample_sd
@@ -302,3 +303,9 @@ def test_worked_example_stands_where_it_is_printed() -> None:
     low, _ = t_interval(mean, error, n - 1, confidence=0.9, kind="lower-limit")
     assert low is not None
     assert low < inputs["mu0"]
+
+
+def test_far_chances_at_very_many_degrees_of_freedom_can_be_solved() -> None:
+    """With so many the normal curve is the answer, and no digit may be lost on the way to it."""
+    shift = smallest_shift(5e6, alpha=1e-9, beta=1e-10)
+    assert shift == pytest.approx(normal_quantile(1 - 1e-9) + normal_quantile(1 - 1e-10), rel=1e-5)

@@ -140,3 +140,18 @@ def test_distance_undoes_the_power_of_the_sign_test(n: int, chance: float) -> No
     share = float(stats.norm.cdf(ratio))
     assert sign_test_power(share, n, alpha=0.05) == pytest.approx(chance, abs=1e-9)
     assert sign_test_ratio(chance, n=4, alpha=0.05) is None
+
+
+def test_very_large_numbers_of_the_sign_test_follow_the_foot_of_the_saw() -> None:
+    """Above 5000 results the curve takes over: within 1 in 1000, by scipy's binomial around n."""
+    for ratio, alpha, beta in ((0.05, 0.05, 0.1), (0.04, 0.01, 0.05)):
+        share = sign_share(ratio, 1.0)
+        n = sign_test_n(share, alpha=alpha, beta=beta)
+        around = np.arange(round(0.999 * n) - 40, round(1.001 * n) + 40)
+        counts = stats.binom.isf(alpha, around, 0.5) + 1
+        power = stats.binom.sf(counts - 1, around, share)
+        assert (power[around > 1.001 * n] >= 1 - beta - 1e-12).all()
+        assert (power[around < 0.999 * n] < 1 - beta).any()
+    assert sign_test_power(0.51, 30_000, alpha=0.05) == pytest.approx(
+        float(stats.binom.sf(stats.binom.isf(0.05, 30_000, 0.5), 30_000, 0.51)), abs=2e-3
+    )
