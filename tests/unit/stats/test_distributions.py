@@ -89,3 +89,12 @@ def test_nothing_lies_below_zero() -> None:
     """Chi-square and F have no negative values; the largest share is 1."""
     assert (chi_square_share(-1, 4), f_share(0, 3, 3), beta_share(0, 1, 1)) == (0, 0, 0)
     assert (chi_square_share(math.inf, 4), beta_share(1, 2, 3)) == (1, 1)
+
+
+@pytest.mark.parametrize("level", [0.51, 0.6, 0.9, 0.975, 0.9995, 1 - 1e-9, 0.025])
+@pytest.mark.parametrize("known", [1999, 2001, 3000.5, 40_000, 1e7])
+def test_many_degrees_of_freedom_keep_ten_digits(level: float, known: float) -> None:
+    """Where an expansion takes over from inversion: scipy.special.stdtrit."""
+    assert student_quantile(level, known) == pytest.approx(
+        special.stdtrit(known, level), rel=3e-10, abs=1e-12
+    )
