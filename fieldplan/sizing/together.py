@@ -27,6 +27,9 @@ CHOOSING = ("neyman", "cost-optimal")
 FEW_STRATA = 30
 """Up to so many strata single results are taken away again where all targets allow it."""
 
+ROUNDS, SMALLER = 8, 0.98
+"""So often, and each time by so much, a missed target's tolerated variance is made smaller."""
+
 
 def weighs(question: Question) -> bool:
     """Tell whether something is weighed: other analytes, or what results cost."""
@@ -137,7 +140,7 @@ def weighed_counts(question: Question, *, plain: bool = False) -> list[int]:
             "larger error or a lower assurance, or raise the most that a stratum may have."
         )
         raise DesignError(message)
-    return _trimmed(question, shared(total)) if chosen else shared(total)
+    return _cheapest(question, shared(total)) if chosen else shared(total)
 
 
 def exact_counts(question: Question) -> tuple[tuple[int, ...], float, float]:
@@ -171,10 +174,35 @@ def _priced(question: Question) -> Strata:
     return strata if question.allocation == "cost-optimal" else replace(strata, costs=())
 
 
-def _trimmed(question: Question, counts: list[int]) -> list[int]:
-    """Take results away, the dearest first, as long as every target is kept."""
+def _cheapest(question: Question, counts: list[int]) -> list[int]:
+    """Improve counts that keep every target: the cheaper of two ways, trimmed."""
     if len(counts) > FEW_STRATA:
         return counts
+    strata = _priced(question)
+    found = [_trimmed(question, way) for way in (counts, _sought(question, counts)) if way]
+    return min(found, key=lambda way: (strata.cost(way), sum(way)))
+
+
+def _sought(question: Question, known: list[int]) -> list[int]:
+    """Seek the least cost for tolerated variances, made smaller where a target is still missed."""
+    from fieldplan.stats.least_cost import least_cost
+
+    members = everyone(question)
+    demands = [demand_of(member, None if question.also else known) for member in members]
+    for _ in range(ROUNDS):
+        counts = list(least_cost(_priced(question), demands)[0].counts)
+        missed = [not keeps(member, counts) for member in members]
+        if not any(missed):
+            return counts
+        demands = [
+            replace(demand, target_variance=demand.target_variance * SMALLER) if short else demand
+            for demand, short in zip(demands, missed, strict=True)
+        ]
+    return []
+
+
+def _trimmed(question: Question, counts: list[int]) -> list[int]:
+    """Take results away, the dearest first, as long as every target is kept."""
     members, strata = everyone(question), _priced(question)
     costs, floors = strata.unit_costs, strata.floors
     order = sorted(range(len(counts)), key=lambda k: (-costs[k], -counts[k], k))
@@ -203,17 +231,18 @@ def alone(member: Question) -> list[int]:
         raise DesignError(*(f"{member.analyte}: {line}" for line in fault.problems)) from fault
 
 
-def demand_of(member: Question) -> "Demand":
+def demand_of(member: Question, own: Sequence[int] | None = None) -> "Demand":
     """Put one analyte's target as a tolerated variance.
 
-    A half-width takes Student's t, and an assurance the reserve, that its own counts would have.
+    A half-width takes Student's t, and an assurance the reserve, that its own counts would have:
+    ``own``, or else those that it alone would need.
     """
     from fieldplan.stats.several_analytes import Demand
 
     sigmas = tuple(part.sigma for part in member.parts)
     if member.target == "standard_error" and holds_to(member) is None:
         return Demand(sigmas, member.value**2, member.analyte)
-    counts, precision = alone(member), Precision(member)
+    counts, precision = own or alone(member), Precision(member)
     width = member.target_half_width
     if width is None or holds_to(member) is not None:
         return Demand(sigmas, precision.variance(counts), member.analyte)

@@ -202,8 +202,9 @@ def balance(strata: Strata, demands: Sequence[Demand]) -> Balance:
     """
     problem = bounds_of(strata, demands)
     multipliers = _top(problem)
-    counts = problem.counts(multipliers)
     total = float(multipliers.sum())
+    multipliers[multipliers < 1e-9 * total] = 0.0
+    counts = problem.counts(multipliers)
     shares = multipliers / total if total > 0 else multipliers
     # Where floors keep every target nobody decides; the joint spread then weighs all alike.
     weighing = shares if total > 0 else np.full(len(shares), 1 / len(shares))
