@@ -10,15 +10,14 @@ from numpy.typing import NDArray
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.assurance import check_assurance
 from fieldplan.stats.distributions import f_share
-from fieldplan.stats.precision import meets, smallest
-from fieldplan.stats.spatial import (
-    CurveShape,
-    Field,
+from fieldplan.stats.field_integrals import (
     PairDistances,
     correlation_in_region,
     correlation_in_square,
     correlation_to_centre,
 )
+from fieldplan.stats.precision import meets, smallest
+from fieldplan.stats.spatial import CurveShape, Field
 
 SpreadLayout = Literal["compact-strata", "local-pivotal", "square-grid", "triangular-grid"]
 GRIDS = ("square-grid", "triangular-grid")

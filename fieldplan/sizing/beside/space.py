@@ -27,6 +27,7 @@ from fieldplan.sizing.model import Amount, Finding, Size
 from fieldplan.sizing.pilot_ground import PilotGround, cells_of, pilot_ground
 from fieldplan.sizing.visits import ABOUT_MEANS
 from fieldplan.sizing.words import figure, percent, with_unit
+from fieldplan.stats.field_integrals import pair_distances
 from fieldplan.stats.pilot_places import (
     area_weights,
     is_bunched,
@@ -34,7 +35,7 @@ from fieldplan.stats.pilot_places import (
     weighed_spread,
     worth_of_weights,
 )
-from fieldplan.stats.spatial import FEWEST_PLACES, Field, pair_distances
+from fieldplan.stats.spatial import FEWEST_PLACES, Field
 from fieldplan.stats.spread_layouts import layout_variance, n_for_layout, random_variance
 from fieldplan.stats.summary import sample_skewness
 

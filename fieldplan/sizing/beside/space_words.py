@@ -9,7 +9,7 @@ from fieldplan.base.working import Quantity, Step
 from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.model import Picture, Series, Size
 from fieldplan.sizing.words import counted, figure, percent, with_unit
-from fieldplan.stats.spatial import correlation_in_square
+from fieldplan.stats.field_integrals import correlation_in_square
 from fieldplan.stats.spread_layouts import standard_errors
 
 if TYPE_CHECKING:

@@ -9,16 +9,19 @@ from scipy.integrate import dblquad
 from scipy.linalg import null_space
 
 from fieldplan.base.errors import DesignError
+from fieldplan.stats.field_integrals import (
+    correlation_in_region,
+    correlation_in_square,
+    correlation_to_centre,
+    pair_distances,
+)
 from fieldplan.stats.spatial import (
+    FEW,
     NUGGET_SHARES,
     SHAPES,
     CurveShape,
     correlation_at,
-    correlation_in_region,
-    correlation_in_square,
-    correlation_to_centre,
     distances,
-    pair_distances,
     weigh_field,
 )
 from tests.simulated_fields import KINDS, Kind, cells_of, draw_fields
@@ -26,18 +29,24 @@ from tests.simulated_fields import KINDS, Kind, cells_of, draw_fields
 Floats = NDArray[np.float64]
 
 
-@pytest.fixture(scope="module")
-def pilot() -> tuple[Floats, Floats]:
-    """Thirty random places of one field."""
+def some(n: int) -> tuple[Floats, Floats]:
+    """Random places of one field."""
     cells = cells_of("blob2holes", 24)
     field = next(draw_fields("blob2holes", 24, KINDS[4], fields=1, seed=3))
-    seen = np.random.default_rng(4).choice(len(cells), 30, replace=False)
+    seen = np.random.default_rng(4).choice(len(cells), n, replace=False)
     return cells[seen], field[seen]
 
 
-def test_weights_are_those_of_contrasts_that_know_no_level(pilot: tuple[Floats, Floats]) -> None:
+@pytest.fixture(scope="module")
+def pilot() -> tuple[Floats, Floats]:
+    """Thirty random places of one field."""
+    return some(30)
+
+
+@pytest.mark.parametrize("n", [30, FEW, FEW + 1])
+def test_weights_are_those_of_contrasts_that_know_no_level(n: int) -> None:
     """Second route to the restricted likelihood: n − 1 orthonormal contrasts of the values."""
-    places, values = pilot
+    places, values = some(n)
     field = weigh_field(places, values, extent=1.0)
     contrasts = null_space(np.ones((1, len(values))))
     apart, seen = distances(places, places), contrasts.T @ values

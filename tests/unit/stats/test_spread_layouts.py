@@ -8,8 +8,9 @@ from numpy.typing import NDArray
 
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.assurance import chance_of_half_width
+from fieldplan.stats.field_integrals import pair_distances
 from fieldplan.stats.intervals import t_quantile
-from fieldplan.stats.spatial import Field, correlation_at, distances, pair_distances, weigh_field
+from fieldplan.stats.spatial import Field, correlation_at, distances, weigh_field
 from fieldplan.stats.spread_layouts import (
     SpreadLayout,
     layout_variance,
