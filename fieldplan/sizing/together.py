@@ -81,7 +81,7 @@ def refuse_unreachable(question: Question) -> None:
     DesignError
         It names the strata, and what can be had.
     """
-    short = [f"{part.name} ({part.most})" for part in question.parts if part.most is not None]
+    short = _capped(question)
     if not short or question.target == "budget":
         return
     caps = question.strata.caps
@@ -93,10 +93,16 @@ def refuse_unreachable(question: Question) -> None:
         whose = f"{member.analyte}: " if question.also else ""
         message = (
             f"{whose}a {target_words(member)} is out of reach while these strata may have at most "
-            f"so many locations: {named(short)}; with any number elsewhere it stays at "
+            f"so many locations: {short}; with any number elsewhere it stays at "
             f"{with_unit(figure(best), member.unit)}. Raise [design.most], or allow a larger error."
         )
         raise DesignError(message)
+
+
+def _capped(question: Question) -> str:
+    """Name the strata that may have only so many locations; empty where none is bounded."""
+    short = [f"{part.name} ({part.most})" for part in question.parts if part.most is not None]
+    return named(short) if short else ""
 
 
 def weighed_counts(question: Question, *, plain: bool = False) -> list[int]:
@@ -135,9 +141,15 @@ def weighed_counts(question: Question, *, plain: bool = False) -> list[int]:
     back = 2 * len(question.parts) + 1 if len(question.parts) <= FEW_STRATA else 0
     total = smallest(fits, sum(strata.floors), strata.most, back=back)
     if not fits(total):
+        bounded = _capped(question)
+        limit = (
+            f"these strata may have at most so many locations: {bounded}"
+            if bounded
+            else f"no more than {strata.most} results can be had"
+        )
         message = (
-            f"the targets ask for more than the {strata.most} results that can be had; allow a "
-            "larger error or a lower assurance, or raise the most that a stratum may have."
+            f"a {target_words(question)} is out of reach with the assurance asked for while "
+            f"{limit}; allow a larger error or a lower assurance, or raise [design.most]."
         )
         raise DesignError(message)
     return _cheapest(question, shared(total)) if chosen else shared(total)
