@@ -13,11 +13,10 @@ from fieldplan.stats.allocation import unrounded_total
 from fieldplan.stats.assurance import chance_of_variance
 from fieldplan.stats.distributions import chi_square_quantile, normal_quantile, normal_share
 from fieldplan.stats.many_decisions import risks_for_each
-from fieldplan.stats.power import one_sample_n, power_at, shift_for_chance, smallest_shift
+from fieldplan.stats.power import one_sample_n, power_at, shift_for_chance
 from fieldplan.stats.precision import smallest, whole
 from fieldplan.stats.rank_tests import sign_test_n, sign_test_power, sign_test_ratio
 from fieldplan.stats.signed_rank import (
-    SIGNED_RANK_SHARE,
     signed_rank_planned_n,
     signed_rank_power,
     signed_rank_ratio,
@@ -146,18 +145,8 @@ class LevelDecision:
         return chance_of_variance(predicted, 1.0, pilot)
 
     def enough_reach(self, counts: Sequence[int]) -> float | None:
-        """Give the distance shown with 1 − beta; for signed ranks that of the t test behind n.
-
-        None where so few results show nothing.
-        """
-        _, beta = self.risks
-        if self.table.test != "signed-rank":
-            return self.reach(counts, 1 - beta)
-        n = max(2, math.floor(sum(counts) * SIGNED_RANK_SHARE + 1e-9))
-        if self.reach(counts, 1 - beta) is None:
-            return None
-        shift = smallest_shift(n - 1, alpha=self.risks[0], beta=beta)
-        return self.sigma / math.sqrt(n) * shift
+        """Give the distance shown with 1 − beta; None where so few results show nothing."""
+        return self.reach(counts, 1 - self.risks[1])
 
     @cached_property
     def plain(self) -> tuple[int, ...]:
@@ -205,7 +194,11 @@ class LevelDecision:
         ratio = self.width / (self.sigma * factor)
         if self.table.test == "sign":
             return sign_test_n(normal_share(ratio), alpha=alpha, beta=beta)
-        return signed_rank_planned_n(one_sample_n(ratio, 1.0, alpha=alpha, beta=beta))
+        n = signed_rank_planned_n(one_sample_n(ratio, 1.0, alpha=alpha, beta=beta))
+        # The factor holds for many results; few may not reach alpha at all.
+        while signed_rank_power(ratio, n=n, alpha=alpha) < 1 - beta:
+            n += 1
+        return n
 
     def _needed_by_t(self, assurance: float | None) -> tuple[int, ...]:
         alpha, beta = self.risks

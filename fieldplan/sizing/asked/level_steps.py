@@ -48,8 +48,7 @@ def counting_steps(decision: LevelDecision, counts: Sequence[int]) -> Iterator[S
             yield _guidance(decision)
         if decision.table.test == "signed-rank":
             yield _signed_rank(decision)
-    if decision.table.test != "signed-rank":
-        yield _exact(decision)
+    yield _exact(decision)
     if tuple(counts) != decision.plain:
         yield _assured(decision, counts)
 
@@ -266,6 +265,8 @@ def _exact(decision: LevelDecision) -> Step:
     words = {
         "t": "smallest n whose power at the gray edge is at least 1 − beta",
         "sign": "smallest n from which on the power at the gray edge is at least 1 − beta",
+        "signed-rank": "smallest n not below the last whose power at the gray edge is at least "
+        "1 − beta for normal results",
     }[decision.table.test]
     return Step(
         symbol="n",

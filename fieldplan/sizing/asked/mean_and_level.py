@@ -262,9 +262,13 @@ def _sure(decision: LevelDecision, counts: tuple[int, ...], plain: tuple[int, ..
         if sure != "plain" and plain is not None:
             line += f" The assurance of {typed_percent(sure)} has nothing to hold to."
         return line
+    purpose = ""
+    if plain is None:
+        surely = typed_percent(1 - decision.table.beta)
+        purpose = f" to show it in {surely} of campaigns at the gray edge"
     line = (
-        f"The chance that {sum(counts)} are enough is {percent(chance)} if single results are near "
-        f"normal, sigma being known from {_behind(decision)} only"
+        f"The chance that {sum(counts)} are enough{purpose} is {percent(chance)} if single results "
+        f"are near normal, sigma being known from {_behind(decision)} only"
     )
     if plain is None:
         return line + "."
