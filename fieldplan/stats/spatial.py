@@ -18,6 +18,8 @@ NUGGET_SHARES = (0.0, 0.1, 0.25, 0.4, 0.6, 0.8, 0.95)
 """Shares of the variance without any structure that are tried."""
 FEWEST_PLACES = 20
 """A pilot of fewer places cannot weigh curves against each other (measured, see the docs)."""
+MOST_PLACES = 250
+"""Larger pilots are thinned at random: more change little and take minutes."""
 
 Places = NDArray[np.float64]
 
@@ -38,7 +40,7 @@ class Field:
     weights : array of shape (k,)
         Sum to 1.
     places : int
-        In the pilot.
+        That were weighed.
     """
 
     shapes: tuple[CurveShape, ...]
@@ -118,7 +120,7 @@ def weigh_field(places: Places, values: NDArray[np.float64], *, extent: float) -
     Parameters
     ----------
     places : array of shape (n, 2)
-        Metres; no two the same.
+        Metres; no two the same. Of more than 250, so many are taken at random, always the same.
     values : array of shape (n,)
         One value a place.
     extent : float
@@ -149,6 +151,9 @@ def weigh_field(places: Places, values: NDArray[np.float64], *, extent: float) -
     (1.0, True)
     """
     _check_pilot(places, values, extent)
+    if len(values) > MOST_PLACES:
+        kept = np.sort(np.random.default_rng(0).permutation(len(values))[:MOST_PLACES])
+        places, values = places[kept], values[kept]
     apart = distances(places, places)
     # A common shift and scale change no weight; without them large values would lose digits.
     scale = float(values.std(ddof=1))

@@ -25,6 +25,7 @@ QUICK: tuple[str, ...] = (
     "near-normal",
     "non-detects",
     "time",
+    "bunched",
 )
 """Topics in the order of the sheet; ``near-normal`` stands in ``near_normal.py``."""
 

@@ -1,10 +1,8 @@
-"""The pilot on the map: what a layout spread over the site would save, and bunched pilots."""
+"""The pilot on the map: what a layout spread over the site would save."""
 
 import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
-
-import numpy as np
 
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.asked.model import Asked
@@ -14,7 +12,6 @@ from fieldplan.sizing.beside.space_words import (
     LIKELIHOOD,
     MATERN,
     MATHERON,
-    THIESSEN,
     leaning_words,
     prediction_steps,
     saving_words,
@@ -26,14 +23,10 @@ from fieldplan.sizing.frontier_spread import site_field
 from fieldplan.sizing.model import Amount, Finding, Size
 from fieldplan.sizing.pilot_ground import PilotGround, cells_of, pilot_ground
 from fieldplan.sizing.visits import ABOUT_MEANS
-from fieldplan.sizing.words import figure, percent, with_unit
+from fieldplan.sizing.words import figure, percent
 from fieldplan.stats.field_integrals import pair_distances
 from fieldplan.stats.pilot_places import (
-    area_weights,
-    is_bunched,
     slope_share,
-    weighed_spread,
-    worth_of_weights,
 )
 from fieldplan.stats.spatial import FEWEST_PLACES, Field
 from fieldplan.stats.spread_layouts import layout_variance, n_for_layout, random_variance
@@ -44,7 +37,7 @@ if TYPE_CHECKING:
 
 TITLE = "Results near each other"
 FEWEST_TO_SPEAK = 8
-"""Fewer places on a map say nothing, not even that they are bunched (house rule)."""
+"""Fewer places on a map are not spoken of (house rule)."""
 LEANING = 1.0
 """Above this skewness the prediction is withheld: of lognormal fields of coefficient of variation
 1.3 it caught 83 to 93 in 100 pilots of 30, of normal fields 1 in 100 (measured, see the docs)."""
@@ -97,7 +90,7 @@ class Predicted:
 
 
 def finding(asked: Asked, size: Size) -> Finding | None:
-    """Say what the pilot's positions tell: what spreading saves, and whether they are bunched.
+    """Say what the pilot's positions tell of a layout spread over the site.
 
     Parameters
     ----------
@@ -116,25 +109,17 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     ground = pilot_ground(asked.entries, frame) if asked.sigma_known else None
     if ground is None or len(ground.values) < FEWEST_TO_SPEAK or not size.standard_error:
         return None
-    bunched = _bunched(asked, ground)
     if len(ground.values) < FEWEST_PLACES:
-        return _refused(small_words(len(ground.values)), bunched)
+        return _refused(small_words(len(ground.values)))
     lean = sample_skewness(ground.values.tolist())
     if lean > LEANING:
-        return _refused(leaning_words(lean, len(ground.values)), bunched)
+        return _refused(leaning_words(lean, len(ground.values)))
     spread = _predicted(frame, size, ground)
-    return None if spread is None else _spread_finding(asked, size, spread, bunched)
+    return None if spread is None else _spread_finding(asked, size, spread)
 
 
-def _refused(answer: str, bunched: list[tuple[str, tuple[Amount, ...]]]) -> Finding:
-    return Finding(
-        topic="space",
-        title=TITLE,
-        answer=answer,
-        amounts=tuple(amount for _, amounts in bunched for amount in amounts),
-        warnings=tuple(line for line, _ in bunched),
-        sources=(THIESSEN,) if bunched else (),
-    )
+def _refused(answer: str) -> Finding:
+    return Finding(topic="space", title=TITLE, answer=answer)
 
 
 def _predicted(frame: "Frame", size: Size, ground: PilotGround) -> Predicted | None:
@@ -160,9 +145,7 @@ def _predicted(frame: "Frame", size: Size, ground: PilotGround) -> Predicted | N
     )
 
 
-def _spread_finding(
-    asked: Asked, size: Size, spread: Predicted, bunched: list[tuple[str, tuple[Amount, ...]]]
-) -> Finding:
+def _spread_finding(asked: Asked, size: Size, spread: Predicted) -> Finding:
     sure = percent(spread.assurance)
     rows = [
         _row(label, layout, size, spread)
@@ -173,7 +156,7 @@ def _spread_finding(
         topic="space",
         title=TITLE,
         answer=saving_words(asked, size, spread),
-        amounts=(*_amounts(spread), *(amount for _, amounts in bunched for amount in amounts)),
+        amounts=_amounts(spread),
         columns=(
             "layout",
             "places for the same standard error",
@@ -183,8 +166,8 @@ def _spread_finding(
         rows=(_planned_row(size, spread), *rows),
         steps=prediction_steps(asked, spread, spread.needed("compact-strata") or size.needed),
         assumptions=ASSUMPTIONS,
-        warnings=(*spread_warnings(spread), *(line for line, _ in bunched)),
-        sources=(LIKELIHOOD, MATERN, MATHERON, *((THIESSEN,) if bunched else ())),
+        warnings=spread_warnings(spread),
+        sources=(LIKELIHOOD, MATERN, MATHERON),
         picture=spread_picture(asked, size, spread),
     )
 
@@ -230,52 +213,3 @@ def _row(label: str, layout: str, size: Size, spread: Predicted) -> tuple[str, .
     counts = (spread.needed(layout), spread.needed(layout, sure=True))
     error = spread.standard_error(layout, max(size.needed, 2))
     return (label, *("–" if n is None else str(n) for n in counts), figure(error))
-
-
-def _bunched(asked: Asked, ground: PilotGround) -> list[tuple[str, tuple[Amount, ...]]]:
-    """Weigh the places of every stratum whose pilot is bunched; a sentence and numbers each."""
-    found = []
-    frame = asked.frame
-    for stratum in frame.strata if frame is not None else ():
-        own = ground.within(stratum.name)
-        if stratum.geometry is None or len(own.values) < FEWEST_TO_SPEAK:
-            continue
-        cells = cells_of(stratum.geometry)
-        if len(cells.centres) < len(own.values) or not is_bunched(own.places, cells.centres):
-            continue
-        weights = area_weights(own.places, cells.centres)
-        if np.count_nonzero(weights) < 2:
-            continue
-        mean, sigma = weighed_spread(own.values, weights)
-        found.append(
-            _bunched_words(asked, stratum.name, own, worth_of_weights(weights), (mean, sigma))
-        )
-    return found
-
-
-def _bunched_words(
-    asked: Asked, stratum: str, own: PilotGround, worth: float, weighed: tuple[float, float]
-) -> tuple[str, tuple[Amount, ...]]:
-    unit = asked.question.unit
-    where = "" if len(asked.question.parts) == 1 else f" of {stratum}"
-    mean, sigma = (with_unit(figure(value), unit) for value in weighed)
-    plain = with_unit(figure(float(own.values.mean())), unit)
-    s = with_unit(figure(float(own.values.std(ddof=1))), unit)
-    line = (
-        f"The pilot's {len(own.values)} places{where} are bunched; by area they are worth "
-        f"{worth:.1f} even ones. Weighed by the area nearest to each, their mean is {mean} instead "
-        f"of {plain} and s is {sigma} instead of {s}; n takes the unweighed s. Take new places "
-        "between them, or say in [[sigma]] which s is fair and why."
-    )
-    ending = "" if len(asked.question.parts) == 1 else f"_{stratum}"
-    return line, (
-        Amount(
-            f"worth{ending}", f"Even places that the pilot{where} is worth by area", worth, "places"
-        ),
-        Amount(
-            f"weighed_mean{ending}", f"Mean of the pilot{where} weighed by area", weighed[0], unit
-        ),
-        Amount(
-            f"weighed_sigma{ending}", f"s of the pilot{where} weighed by area", weighed[1], unit
-        ),
-    )

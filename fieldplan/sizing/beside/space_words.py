@@ -18,7 +18,6 @@ if TYPE_CHECKING:
 LIKELIHOOD = "Diggle & Ribeiro 2007, Model-based Geostatistics, ch. 5 and 7 (from memory)"
 MATERN = "Matérn 1960, Spatial Variation, ch. 5 (from memory)"
 MATHERON = "Matheron 1971, The Theory of Regionalized Variables, ch. 3 (from memory)"
-THIESSEN = "Thiessen 1911, Monthly Weather Review 39:1082 (from memory)"
 
 LAYOUTS = {
     "compact-strata": "one place in each of n compact parts",

@@ -9,6 +9,7 @@ from scipy.integrate import dblquad
 from scipy.linalg import null_space
 
 from fieldplan.base.errors import DesignError
+from fieldplan.stats import spatial
 from fieldplan.stats.field_integrals import (
     correlation_in_region,
     correlation_in_square,
@@ -29,24 +30,22 @@ from tests.simulated_fields import KINDS, Kind, cells_of, draw_fields
 Floats = NDArray[np.float64]
 
 
-def some(n: int) -> tuple[Floats, Floats]:
-    """Random places of one field."""
-    cells = cells_of("blob2holes", 24)
-    field = next(draw_fields("blob2holes", 24, KINDS[4], fields=1, seed=3))
-    seen = np.random.default_rng(4).choice(len(cells), n, replace=False)
-    return cells[seen], field[seen]
-
-
 @pytest.fixture(scope="module")
 def pilot() -> tuple[Floats, Floats]:
     """Thirty random places of one field."""
-    return some(30)
+    cells = cells_of("blob2holes", 24)
+    field = next(draw_fields("blob2holes", 24, KINDS[4], fields=1, seed=3))
+    seen = np.random.default_rng(4).choice(len(cells), 30, replace=False)
+    return cells[seen], field[seen]
 
 
-@pytest.mark.parametrize("n", [30, FEW, FEW + 1])
-def test_weights_are_those_of_contrasts_that_know_no_level(n: int) -> None:
-    """Second route to the restricted likelihood: n − 1 orthonormal contrasts of the values."""
-    places, values = some(n)
+@pytest.mark.parametrize("few", [FEW, 10])
+def test_weights_are_those_of_contrasts_that_know_no_level(
+    pilot: tuple[Floats, Floats], few: int, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Second route to the restricted likelihood, for small pilots and large: n − 1 contrasts."""
+    monkeypatch.setattr(spatial, "FEW", few)
+    places, values = pilot
     field = weigh_field(places, values, extent=1.0)
     contrasts = null_space(np.ones((1, len(values))))
     apart, seen = distances(places, places), contrasts.T @ values
@@ -185,3 +184,16 @@ def test_pilots_that_show_no_structure_are_refused(pilot: tuple[Floats, Floats])
     for where, what, extent, words in cases:
         with pytest.raises(DesignError, match=words):
             weigh_field(where, what, extent=extent)
+
+
+def test_a_large_pilot_is_thinned_to_what_can_be_weighed_at_once(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    """Always the same places, so that the same pilot has one answer."""
+    monkeypatch.setattr(spatial, "MOST_PLACES", 60)
+    cells = cells_of("Lhole", 24)
+    values = next(draw_fields("Lhole", 24, KINDS[4], fields=1, seed=5))
+    assert len(cells) > 200
+    field = weigh_field(cells, values, extent=1.0)
+    assert field.places == 60
+    assert (field.weights == weigh_field(cells, values, extent=1.0).weights).all()

@@ -161,48 +161,6 @@ def test_a_strong_slope_is_named_and_grids_left_out() -> None:
     assert not any("grid" in row[0] for row in found.rows)
 
 
-def test_bunched_places_are_weighed_by_area_with_a_warning() -> None:
-    """Half of the pilot lies round one source; its mean and s by area stand beside n."""
-    random = np.random.default_rng(1)
-    near = random.uniform([20, 20], [45, 45], (14, 2))
-    places = np.vstack([near, random_places(14, seed=9)])
-    values = [*(random.normal(150, 5, 14)), *(random.normal(60, 5, 14))]
-    found = finding(*asked_with(one_frame(), entry(places, [float(v) for v in values])))
-    assert found is not None
-    line = next(line for line in found.warnings if "are bunched" in line)
-    assert "28 places are bunched" in line
-    numbers = amounts(found)
-    assert (numbers["weighed_mean"] or 999) < np.mean(values) - 20
-    assert (numbers["worth"] or 999) < 20
-
-
-def test_an_even_pilot_is_no_bunched_one() -> None:
-    """No warning for places drawn at random."""
-    places = random_places(40)
-    found = finding(*asked_with(one_frame(), entry(places, field_at(places))))
-    assert found is not None
-    assert not any("bunched" in line for line in found.warnings)
-
-
-def test_strata_are_looked_at_one_by_one_for_bunching() -> None:
-    """A denser stratum is no bunched pilot: strata have a draw of their own each."""
-    frame = make_frame()
-    random = np.random.default_rng(6)
-    meadow = random.uniform([2, 2], [138, 118], (12, 2))
-    yard = random.uniform([142, 2], [158, 118], (20, 2))
-    found = finding(
-        *asked_with(
-            frame,
-            entry(meadow, field_at(meadow), "meadow"),
-            entry(yard, field_at(yard), "yard"),
-            target=5.0,
-        )
-    )
-    assert found is not None
-    bunched = [line for line in found.warnings if "bunched" in line]
-    assert all("of yard" in line for line in bunched)
-
-
 def test_lists_and_pilots_without_positions_are_passed_over() -> None:
     """There is no map to speak of."""
     places = random_places(30)
