@@ -136,6 +136,10 @@ def _place(data: dict[str, Any], objective: dict[str, Any], text: str) -> None:
     if path[0] == "sigma" and path[1:] in (["sampling"], ["analysis"]):
         data["sigma"].append({"part": path[1], "value": _value(value), "source": "typed"})
         return
+    if path[0] == "sigma" and len(path) == 2 and len(data["sigma"]) > 1:
+        for entry in data["sigma"]:  # typed once, for every stratum
+            entry.setdefault(path[1], _value(value))
+        return
     own = table_of(objective["question"])
     tables = {table_of(question) for question in MODULES}
     if len(path) == 1 and own in tables:

@@ -111,3 +111,11 @@ def test_a_day_that_cannot_be_read_is_one_line_with_its_row(tmp_path: Path) -> N
     assert "pilot.csv row 4: collected_on '12/03/22' must be year, month and day" in " ".join(
         err.split()
     )
+
+
+def test_a_key_of_sigma_typed_once_holds_for_every_stratum() -> None:
+    """Two like strata must ask for as many visits as the whole: 75."""
+    strata = ["--stratum", "0.5,6", "--stratum", "0.5,6", "--standard-error", "1"]
+    found = json.loads(run("size", *strata, *RHO, "--json")[1])
+    assert found["n"] == 75
+    assert [row[1] for row in found["findings"]["time"]["rows"]] == ["0.35", "0.35"]
