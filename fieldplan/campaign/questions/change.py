@@ -19,6 +19,7 @@ MEANING = {
     "sigma_of_differences": "standard deviation of the differences place by place",
     "correlation": "correlation between the two results of a place",
     "next_sigma": "standard deviation of single results in the other round; else the same",
+    "assurance": "how sure it shall be that n is enough, though sigma is an estimate",
 }
 
 
@@ -33,6 +34,7 @@ class Change(Table):
     sigma_of_differences: PositiveNumber | None = None
     correlation: Annotated[float, Field(gt=-1, lt=1)] | None = None
     next_sigma: PositiveNumber | None = None
+    assurance: Annotated[float, Field(ge=0.5, lt=1)] | Literal["plain"] = "plain"
 
 
 def problems(table: dict[str, Any], data: dict[str, Any]) -> Iterator[tuple[str, str]]:

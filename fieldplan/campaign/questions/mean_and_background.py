@@ -21,6 +21,7 @@ MEANING = {
     "background_results": "background results that are already there",
     "background_per_site": "background results for each site result, where both are to be taken",
     "overage": "share that the rank sum rule adds for lost results",
+    "assurance": "how sure it shall be that n is enough, though sigma is an estimate",
 }
 
 
@@ -37,6 +38,7 @@ class MeanAndBackground(Table):
     background_results: Annotated[int, Field(ge=2)] | None = None
     background_per_site: PositiveNumber | None = None
     overage: Annotated[float, Field(ge=0, lt=1)] | None = None
+    assurance: Annotated[float, Field(ge=0.5, lt=1)] | Literal["plain"] = "plain"
 
 
 def problems(table: dict[str, Any], data: dict[str, Any]) -> Iterator[tuple[str, str]]:  # noqa: ARG001

@@ -1,23 +1,18 @@
 """The change of the mean between two rounds at the same places: pairs of results."""
 
-from dataclasses import replace
-
-from fieldplan.base.errors import DesignError
 from fieldplan.base.working import Quantity, Step
 from fieldplan.campaign.questions.change import Change
 from fieldplan.sizing.asked.counting_claims import table_missing, takes_all
 from fieldplan.sizing.asked.model import Answered, Asked
-from fieldplan.sizing.counting import plain_counts
+from fieldplan.sizing.asked.paired_rounds import PairedRounds
+from fieldplan.sizing.asked.sure_words import sure_words
 from fieldplan.sizing.model import Amount, Finding, Picture, Series
-from fieldplan.sizing.precision import Precision
-from fieldplan.sizing.question import Part, Question
+from fieldplan.sizing.question import Part
 from fieldplan.sizing.words import counted, figure, percent, typed, typed_percent, with_unit
-from fieldplan.stats.allocation import first_that, share_total
-from fieldplan.stats.distributions import normal_quantile, student_quantile
+from fieldplan.stats.allocation import share_total
+from fieldplan.stats.distributions import student_quantile
 from fieldplan.stats.intervals import t_quantile
-from fieldplan.stats.power import one_sample_n, power_at, sigma_of_change, smallest_shift
 from fieldplan.stats.precision import whole
-from fieldplan.stats.risks import check_risks
 
 TITLE = "Change between two rounds"
 PAIRED = "paired t test, exact power by the noncentral t; EPA QA/G-9 (2000), section 3.2.1"
@@ -41,13 +36,12 @@ def count(asked: Asked) -> Answered:
     DesignError
         The chances or the width cannot be had.
     """
-    table = _table(asked)
-    paired = _paired(asked, table)
-    needed = _needed(paired, table)
-    finding = _finding(asked, table, needed, _answer(asked, table, needed), _steps(asked, needed))
-    unit = asked.question.unit
+    pairs = _pairs(asked)
+    table, unit = pairs.table, asked.question.unit
+    needed = pairs.needed if table.assurance == "plain" else pairs.assured(table.assurance)
+    finding = _finding(pairs, needed, _answer(pairs, needed), _steps(pairs, needed))
     if table.half_width is None:
-        target = f"a change of {with_unit(typed(table.difference or 0.0), unit)}"
+        target = f"a change of {with_unit(typed(pairs.difference), unit)}"
     else:
         target = f"the change to within {with_unit(typed(table.half_width), unit)}"
     return Answered(needed, target, finding)
@@ -62,123 +56,53 @@ def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
     counts : tuple of int
         Places visited twice, by stratum.
     """
-    table = _table(asked)
-    answer = _answer(asked, table, counts)
-    if table.half_width is None and not takes_all(asked, counts):
-        least = with_unit(figure(_smallest(asked, table, counts)), asked.question.unit)
-        sure = typed_percent(1 - (table.beta or 0.0))
-        answer += f" The smallest change shown with {sure} is {least}."
-    return _finding(asked, table, counts, answer, ())
+    pairs = _pairs(asked)
+    answer = _answer(pairs, counts)
+    if pairs.table.half_width is None and not takes_all(asked, counts):
+        least = with_unit(figure(pairs.smallest_change(counts)), asked.question.unit)
+        answer += f" The smallest change shown with {typed_percent(1 - pairs.risks[1])} is {least}."
+    return _finding(pairs, counts, answer, ())
 
 
-def _paired(asked: Asked, table: Change, correlation: float | None = None) -> Question:
-    """Give the question with the spread of differences in place of that of results."""
-    parts = tuple(
-        replace(part, sigma=_sigma(part.sigma, table, correlation)) for part in asked.question.parts
-    )
-    return replace(asked.question, parts=parts)
+def _pairs(asked: Asked) -> PairedRounds:
+    table = asked.objective.change
+    if table is None:
+        raise table_missing(question="change")
+    return PairedRounds(asked, table)
 
 
-def _sigma(sigma: float, table: Change, correlation: float | None) -> float:
-    if correlation is None and table.sigma_of_differences is not None:
-        return table.sigma_of_differences
-    rho = table.correlation if correlation is None else correlation
-    return sigma_of_change(sigma, table.next_sigma or sigma, correlation=rho or 0.0)
-
-
-def _sides(table: Change) -> int:
-    return 2 if table.direction == "either-way" else 1
-
-
-def _needed(paired: Question, table: Change) -> tuple[int, ...]:
-    if table.half_width is not None:
-        return tuple(plain_counts(replace(paired, target="half_width", value=table.half_width)))
-    alpha, beta = table.alpha or 0.0, table.beta or 0.0
-    check_risks(alpha, beta)
-    if len(paired.parts) == 1:
-        only = paired.parts[0]
-        n = one_sample_n(
-            table.difference or 0.0,
-            only.sigma,
-            alpha=alpha,
-            beta=beta,
-            sides=_sides(table),
-            population=only.population,
-        )
-        return (max(n, *paired.strata.floors),)
-    z = normal_quantile(1 - alpha / _sides(table)) + normal_quantile(1 - beta)
-    # Known spreads need least: no counts of a larger variance can do.
-    return tuple(
-        first_that(
-            paired.strata,
-            lambda counts: _power(paired, table, tuple(counts)) >= 1 - beta,
-            never_above=((table.difference or 0.0) / z) ** 2,
-            allocation=paired.allocation,
-        )
-    )
-
-
-def _power(
-    paired: Question, table: Change, counts: tuple[int, ...], difference: float | None = None
-) -> float:
-    """Give the chance that the change is shown."""
-    change = (table.difference or 0.0) if difference is None else difference
-    precision = Precision(paired)
-    error = precision.standard_error(counts)
-    if error == 0:
-        return 1.0 if change else table.alpha or 0.0
-    known = max(precision.degrees_of_freedom(counts), 1.0)
-    return power_at(change / error, known, alpha=table.alpha or 0.0, sides=_sides(table))
-
-
-def _smallest(asked: Asked, table: Change, counts: tuple[int, ...]) -> float:
-    """Give the change that the counts show with chance 1 − β."""
-    precision = Precision(_paired(asked, table))
-    known = max(precision.degrees_of_freedom(counts), 1.0)
-    shift = smallest_shift(
-        known, alpha=table.alpha or 0.0, beta=table.beta or 0.0, sides=_sides(table)
-    )
-    return precision.standard_error(counts) * shift
-
-
-def _answer(asked: Asked, table: Change, counts: tuple[int, ...]) -> str:
-    paired, unit = _paired(asked, table), asked.question.unit
-    places = counted(sum(counts), _place(asked))
-    if takes_all(asked, counts):
+def _answer(pairs: PairedRounds, counts: tuple[int, ...]) -> str:
+    table, question = pairs.table, pairs.question
+    places = counted(sum(counts), "location" if pairs.asked.population is None else "unit")
+    if takes_all(pairs.asked, counts):
         return (
             f"All {places} of the list visited in both rounds: the change of their mean is known "
             "but for the laboratory's error."
         )
     if table.half_width is not None:
-        reach = with_unit(figure(Precision(paired).half_width(counts)), unit)
-        sure = typed_percent(asked.question.confidence)
-        how = "±" if asked.question.interval == "two-sided" else ""
-        kind = "interval" if asked.question.interval == "two-sided" else "limit"
+        reach = with_unit(figure(pairs.precision.half_width(counts)), question.unit)
+        sure, two = typed_percent(question.confidence), question.interval == "two-sided"
         return (
-            f"{places} visited in both rounds pin down the change of the mean: its {sure} {kind} "
-            f"is expected to reach {how}{reach}."
+            f"{places} visited in both rounds pin down the change of the mean: its {sure} "
+            f"{'interval' if two else 'limit'} is expected to reach {'±' if two else ''}{reach}."
         )
-    change = with_unit(typed(table.difference or 0.0), unit)
+    change = with_unit(typed(pairs.difference), question.unit)
     which = {"either-way": "change", "rise": "rise", "fall": "fall"}[table.direction]
+    verb = {"either-way": "changes", "rise": "rises", "fall": "falls"}[table.direction]
     return (
-        f"{places} visited in both rounds: if the mean changes by {change}, "
-        f"{percent(_power(paired, table, counts))} of such campaigns show a {which}; if it does "
-        f"not change, {typed_percent(table.alpha or 0.0)} do so wrongly."
+        f"{places} visited in both rounds: if the mean {verb} by {change}, "
+        f"{percent(pairs.power(counts))} of such campaigns show a {which}; if it does not change, "
+        f"{typed_percent(pairs.risks[0])} do so wrongly."
     )
 
 
-def _place(asked: Asked) -> str:
-    return "location" if asked.population is None else "unit"
-
-
-def _steps(asked: Asked, needed: tuple[int, ...]) -> tuple[Step, ...]:
-    table = _table(asked)
-    paired = _paired(asked, table)
+def _steps(pairs: PairedRounds, needed: tuple[int, ...]) -> tuple[Step, ...]:
     steps = []
-    if table.sigma_of_differences is None:
-        pairs = zip(asked.question.parts, paired.parts, strict=True)
-        steps = [_spread_step(table, part, differs) for part, differs in pairs]
-    return (*steps, _last_step(paired, table, needed))
+    if pairs.table.sigma_of_differences is None:
+        parts = zip(pairs.asked.question.parts, pairs.question.parts, strict=True)
+        steps = [_spread_step(pairs.table, part, differs) for part, differs in parts]
+    last = _power_step if pairs.table.half_width is None else _width_step
+    return (*steps, last(pairs, needed))
 
 
 def _spread_step(table: Change, part: Part, differs: Part) -> Step:
@@ -198,41 +122,46 @@ def _spread_step(table: Change, part: Part, differs: Part) -> Step:
     )
 
 
-def _last_step(paired: Question, table: Change, needed: tuple[int, ...]) -> Step:
-    precision, unit = Precision(paired), paired.unit
-    error, known = precision.standard_error(needed), precision.degrees_of_freedom(needed)
-    shared = (
+def _shared_inputs(pairs: PairedRounds, needed: tuple[int, ...]) -> tuple[Quantity, ...]:
+    error = pairs.precision.standard_error(needed)
+    return (
         Quantity("n", "locations in both rounds", sum(needed), "locations"),
-        Quantity("SE", "standard error of the change at this n", error, unit),
-        Quantity("df", "degrees of freedom", known),
+        Quantity("SE", "standard error of the change at this n", error, pairs.question.unit),
+        Quantity("df", "degrees of freedom", pairs.precision.degrees_of_freedom(needed)),
     )
-    if table.half_width is not None:
-        t = t_quantile(known, confidence=paired.confidence, kind=paired.interval)
-        return Step(
-            symbol="h",
-            meaning="Half-width of the change: n is the smallest that keeps the target",
-            formula="h = t · SE",
-            inputs=(*shared, Quantity("t", "Student quantile", t)),
-            unrounded=precision.half_width(needed),
-            rounded=precision.half_width(needed),
-            unit=unit,
-            source="Cochran 1977, Sampling Techniques, 3rd ed., ch. 4",
-        )
-    power = _power(paired, table, needed)
-    limit = student_quantile(1 - (table.alpha or 0.0) / _sides(table), max(known, 1.0))
+
+
+def _width_step(pairs: PairedRounds, needed: tuple[int, ...]) -> Step:
+    question, width = pairs.question, pairs.precision.half_width(needed)
+    t = t_quantile(pairs.known(needed), confidence=question.confidence, kind=question.interval)
+    return Step(
+        symbol="h",
+        meaning="Half-width of the change: n is the smallest that keeps the target",
+        formula="h = t · SE",
+        inputs=(*_shared_inputs(pairs, needed), Quantity("t", "Student quantile", t)),
+        unrounded=width,
+        rounded=width,
+        unit=question.unit,
+        source="Cochran 1977, Sampling Techniques, 3rd ed., ch. 4",
+    )
+
+
+def _power_step(pairs: PairedRounds, needed: tuple[int, ...]) -> Step:
+    power, (alpha, beta) = pairs.power(needed), pairs.risks
+    limit = student_quantile(1 - alpha / pairs.sides, pairs.known(needed))
     return Step(
         symbol="power",
-        meaning="Chance to show the change: n is the smallest that keeps it at 1 − β or above",
+        meaning="Chance to show the change: n is the smallest that keeps it at 1 − β or above"
+        + (", with the assurance chosen" if pairs.table.assurance != "plain" else ""),
         formula="P(T > t)"
-        + (" + P(T < −t)" if _sides(table) == 2 else "")
-        + ", T noncentral t with df "
-        "and Δ / SE",
+        + (" + P(T < −t)" if pairs.sides == 2 else "")
+        + ", T noncentral t with df and Δ / SE",
         inputs=(
-            *shared,
+            *_shared_inputs(pairs, needed),
             Quantity("t", "Student quantile that decides", limit),
-            Quantity("Δ", "change that must not be missed", table.difference or 0.0, unit),
-            Quantity("α", "chance to claim a change where there is none", table.alpha or 0.0),
-            Quantity("β", "chance to miss the change", table.beta or 0.0),
+            Quantity("Δ", "change that must not be missed", pairs.difference, pairs.question.unit),
+            Quantity("α", "chance to claim a change where there is none", alpha),
+            Quantity("β", "chance to miss the change", beta),
         ),
         unrounded=power,
         rounded=power,
@@ -241,66 +170,83 @@ def _last_step(paired: Question, table: Change, needed: tuple[int, ...]) -> Step
 
 
 def _finding(
-    asked: Asked, table: Change, counts: tuple[int, ...], answer: str, steps: tuple[Step, ...]
+    pairs: PairedRounds, counts: tuple[int, ...], answer: str, steps: tuple[Step, ...]
 ) -> Finding:
-    paired, unit = _paired(asked, table), asked.question.unit
-    amounts = [
-        Amount("n", "Locations visited in both rounds", sum(counts), "locations"),
-        Amount("standard_error", "Expected standard error of the change",
-               Precision(paired).standard_error(counts), unit),
-    ]  # fmt: skip
-    if table.half_width is None:
-        amounts += [
-            Amount("power", "Chance to show the change", _power(paired, table, counts)),
-            Amount("smallest_change", f"Smallest change shown with "
-                   f"{typed_percent(1 - (table.beta or 0.0))}",
-                   _smallest(asked, table, counts), unit),
-        ]  # fmt: skip
-    else:
-        width = Precision(paired).half_width(counts)
-        amounts.append(Amount("half_width", "Expected half-width", width, unit))
+    whole_list = takes_all(pairs.asked, counts)
+    correlated = pairs.table.correlation is not None
+    sure = () if whole_list else (_sure(pairs, counts, counting=bool(steps)),)
     return Finding(
         topic="change",
         title=TITLE,
         answer=answer,
-        amounts=tuple(amounts),
-        columns=("correlation between rounds", "locations")
-        if table.correlation is not None
-        else (),
-        rows=_rows(asked, table),
+        amounts=_amounts(pairs, counts),
+        columns=("correlation between rounds", "locations") if correlated else (),
+        rows=_rows(pairs),
         steps=steps,
         assumptions=(
             "Both rounds take the same locations, depth, season, method and laboratory; a location "
             "that yields no result in one of them drops out of both.",
             "The mean of the differences is near normal; locations are drawn at random.",
         ),
-        warnings=_warnings(asked, table),
+        warnings=(*sure, *_warnings(pairs)),
         sources=(PAIRED,),
-        picture=None if takes_all(asked, counts) else _picture(asked, table, counts),
+        picture=None if whole_list else _picture(pairs, counts),
     )
 
 
-def _rows(asked: Asked, table: Change) -> tuple[tuple[str, ...], ...]:
+def _amounts(pairs: PairedRounds, counts: tuple[int, ...]) -> tuple[Amount, ...]:
+    unit, error = pairs.question.unit, pairs.precision.standard_error(counts)
+    enough = pairs.chance_enough(counts)
+    amounts = [
+        Amount("n", "Locations visited in both rounds", sum(counts), "locations"),
+        Amount("standard_error", "Expected standard error of the change", error, unit),
+        Amount("chance_enough", "Chance that these are enough", enough),
+    ]
+    if pairs.table.half_width is not None:
+        width = pairs.precision.half_width(counts)
+        return (*amounts, Amount("half_width", "Expected half-width", width, unit))
+    least = pairs.smallest_change(counts)
+    surely = typed_percent(1 - pairs.risks[1])
+    return (
+        *amounts,
+        Amount("power", "Chance to show the change", pairs.power(counts)),
+        Amount("smallest_change", f"Smallest change shown with {surely}", least, unit),
+    )
+
+
+def _rows(pairs: PairedRounds) -> tuple[tuple[str, ...], ...]:
     """List the numbers at other correlations: how much hangs on the one typed."""
-    if table.correlation is None:
+    if pairs.table.correlation is None:
         return ()
-    rows = []
-    for correlation in sorted({*SHOWN, table.correlation}):
-        needed = _needed(_paired(asked, table, correlation), table)
-        rows.append((typed(correlation), str(sum(needed))))
-    return tuple(rows)
+    correlations = sorted({*SHOWN, pairs.table.correlation})
+    return tuple(
+        (typed(rho), str(sum(PairedRounds(pairs.asked, pairs.table, rho).needed)))
+        for rho in correlations
+    )
 
 
-def _warnings(asked: Asked, table: Change) -> tuple[str, ...]:
-    lines = []
-    if table.correlation is not None:
-        apart = _needed(_paired(asked, table, 0.0), table)
+def _sure(pairs: PairedRounds, counts: tuple[int, ...], *, counting: bool) -> str:
+    """Say how sure the number is, the spread of differences being an estimate."""
+    chance, more = pairs.chance_enough(counts), ""
+    if chance is not None and counting:
+        if counts == pairs.needed:
+            found = [sum(pairs.assured(share)) for share in (0.8, 0.9)]
+            more = f"for a chance of 80 % and 90 % it takes {found[0]} and {found[1]}"
+        else:
+            few = percent(pairs.chance_enough(pairs.needed) or 0.0)
+            more = f"sigma at face value asks for {sum(pairs.needed)}, enough with {few}"
+    return sure_words(pairs.question, chance, more)
+
+
+def _warnings(pairs: PairedRounds) -> tuple[str, ...]:
+    lines, rho = [], pairs.table.correlation
+    if rho is not None:
+        apart = sum(PairedRounds(pairs.asked, pairs.table, 0.0).needed)
         lines.append(
-            f"The correlation of {typed(table.correlation)} between rounds carries the number: "
-            f"were it 0, as with new places in the second round, about {sum(apart)} in each round "
-            "would be needed."
+            f"The correlation of {typed(rho)} between rounds carries the number: were it 0, as "
+            f"with new places in the second round, about {apart} in each round would be needed."
         )
-        if table.correlation < 0:
+        if rho < 0:
             lines.append("The correlation is negative: new places would do better than the same.")
     lines.append(
         "A change of the mean does not say why, nor that any one place has changed; a change of "
@@ -309,31 +255,31 @@ def _warnings(asked: Asked, table: Change) -> tuple[str, ...]:
     return tuple(lines)
 
 
-def _picture(asked: Asked, table: Change, counts: tuple[int, ...]) -> Picture:
-    paired, unit = _paired(asked, table), asked.question.unit
-    if table.half_width is None:
-        xs = [2 * (table.difference or 0.0) * k / 20 for k in range(21)]
-        ys = [100 * _power(paired, table, counts, x) for x in xs]
-        return Picture(
-            kind="lines",
-            caption="Chance to show a change, by its true size.",
-            alternative=f"A rising line from {ys[0]:.0f} % at no change to {ys[-1]:.0f} % at "
-            f"{with_unit(figure(xs[-1]), unit)}.",
-            x_label=f"true change, {unit}" if unit else "true change",
-            y_label="chance to show it, %",
-            series=(Series(f"{sum(counts)} locations", tuple(xs), tuple(ys)),),
-            marks=(("must not be missed", table.difference or 0.0),),
-            levels=(("wanted", 100 * (1 - (table.beta or 0.0))),),
-        )
-    return _width_picture(paired, table, sum(counts))
+def _picture(pairs: PairedRounds, counts: tuple[int, ...]) -> Picture:
+    if pairs.table.half_width is not None:
+        return _width_picture(pairs, sum(counts))
+    unit = pairs.question.unit
+    xs = [2 * pairs.difference * k / 20 for k in range(21)]
+    ys = [100 * pairs.power(counts, x) for x in xs]
+    return Picture(
+        kind="lines",
+        caption="Chance to show a change, by its true size.",
+        alternative=f"A rising line from {ys[0]:.0f} % at no change to {ys[-1]:.0f} % at "
+        f"{with_unit(figure(xs[-1]), unit)}.",
+        x_label=f"true change, {unit}" if unit else "true change",
+        y_label="chance to show it, %",
+        series=(Series(f"{sum(counts)} locations", tuple(xs), tuple(ys)),),
+        marks=(("must not be missed", pairs.difference),),
+        levels=(("wanted", 100 * (1 - pairs.risks[1])),),
+    )
 
 
-def _width_picture(paired: Question, table: Change, n: int) -> Picture:
-    least, most = sum(paired.strata.floors), paired.strata.most
+def _width_picture(pairs: PairedRounds, n: int) -> Picture:
+    question, precision = pairs.question, pairs.precision
+    least, most = sum(question.strata.floors), question.strata.most
     totals = sorted({max(least, whole(n * (0.4 + 1.6 * k / 24))) for k in range(25)} | {n})
     totals = [total for total in totals if total <= most]
-    precision = Precision(paired)
-    shares = [share_total(paired.strata, t, allocation=paired.allocation) for t in totals]
+    shares = [share_total(question.strata, t, allocation=question.allocation) for t in totals]
     ys = [precision.half_width(counts) for counts in shares]
     return Picture(
         kind="lines",
@@ -341,21 +287,8 @@ def _width_picture(paired: Question, table: Change, n: int) -> Picture:
         alternative=f"A falling line: {figure(ys[0])} at {totals[0]}, {figure(ys[-1])} at "
         f"{totals[-1]}.",
         x_label="locations in both rounds",
-        y_label=f"half-width, {paired.unit}" if paired.unit else "half-width",
+        y_label=f"half-width, {question.unit}" if question.unit else "half-width",
         series=(Series("expected half-width", tuple(float(t) for t in totals), tuple(ys)),),
         marks=((f"{n} locations", float(n)),),
-        levels=(("target", table.half_width or 0.0),),
+        levels=(("target", pairs.table.half_width or 0.0),),
     )
-
-
-def _table(asked: Asked) -> Change:
-    table = asked.objective.change
-    if table is None:
-        raise table_missing(question="change")
-    if table.sigma_of_differences is None and not asked.sigma_known:
-        message = (
-            "a correlation between rounds is of no use without the sigma of one of them; give it, "
-            "or sigma_of_differences."
-        )
-        raise DesignError(message)
-    return table

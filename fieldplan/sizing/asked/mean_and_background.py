@@ -1,5 +1,6 @@
 """The site mean against that of a background area: results in each."""
 
+from fieldplan.base.errors import DesignError
 from fieldplan.base.working import Step
 from fieldplan.campaign.questions.mean_and_background import MeanAndBackground
 from fieldplan.sizing.asked.background_steps import (
@@ -12,6 +13,7 @@ from fieldplan.sizing.asked.background_steps import (
 )
 from fieldplan.sizing.asked.counting_claims import table_missing
 from fieldplan.sizing.asked.model import Answered, Asked
+from fieldplan.sizing.asked.sure_words import sure_words
 from fieldplan.sizing.asked.two_populations import OVERAGE, TwoPopulations
 from fieldplan.sizing.model import Amount, Finding, Picture, Series
 from fieldplan.sizing.words import counted, figure, percent, typed, typed_percent, with_unit
@@ -36,7 +38,8 @@ def count(asked: Asked) -> Answered:
         The difference cannot be told, e.g. because the background has too few results.
     """
     both = TwoPopulations(asked, _table(asked))
-    needed = both.needed
+    sure = both.table.assurance
+    needed = both.needed if sure == "plain" else both.assured(sure)
     finding = _finding(both, needed, _answer(both, needed), background_steps(both, needed))
     apart = with_unit(typed(both.table.difference), asked.question.unit)
     return Answered(needed, f"a difference of {apart} from the background", finding)
@@ -96,6 +99,7 @@ def _finding(
             Amount("site_results", "Site results", sum(counts), "results"),
             Amount("background_results", "Background results", both.background(counts), "results"),
             Amount("power", "Chance to tell the difference", both.power(counts)),
+            Amount("chance_enough", "Chance that these are enough", both.chance_enough(counts)),
             Amount(
                 "smallest_difference",
                 f"Smallest difference told with {typed_percent(1 - both.table.beta)}",
@@ -111,10 +115,34 @@ def _finding(
         ),
         steps=steps,
         assumptions=_assumptions(both),
-        warnings=_warnings(both, asked),
+        warnings=(_sure(both, counts, counting=bool(steps)), *_warnings(both, asked)),
         sources=sources,
         picture=_picture(both, counts),
     )  # fmt: skip
+
+
+def _sure(both: TwoPopulations, counts: tuple[int, ...], *, counting: bool) -> str:
+    """Say how sure the number is, sigma being an estimate."""
+    chance, more = both.chance_enough(counts), ""
+    if chance is not None and counting:
+        if counts == both.needed:
+            found = [f"{sum(n)}" if n else "more than can be had" for n in _others(both)]
+            more = f"for a chance of 80 % and 90 % the site takes {found[0]} and {found[1]}"
+        else:
+            few = percent(both.chance_enough(both.needed) or 0.0)
+            more = f"sigma at face value asks for {sum(both.needed)} on the site, enough with {few}"
+    return sure_words(both.asked.question, chance, more)
+
+
+def _others(both: TwoPopulations) -> list[tuple[int, ...]]:
+    """Count at other assurances; nothing where the background cannot carry one."""
+    found: list[tuple[int, ...]] = []
+    for assurance in (0.8, 0.9):
+        try:
+            found.append(both.assured(assurance))
+        except DesignError:
+            found.append(())
+    return found
 
 
 def _assumptions(both: TwoPopulations) -> tuple[str, ...]:

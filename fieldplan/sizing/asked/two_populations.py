@@ -2,14 +2,15 @@
 
 import math
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 
 from fieldplan.base.errors import DesignError
 from fieldplan.campaign.questions.mean_and_background import MeanAndBackground
 from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.precision import Precision
-from fieldplan.stats.distributions import normal_quantile
+from fieldplan.stats.assurance import chance_of_variance
+from fieldplan.stats.distributions import chi_square_quantile, normal_quantile
 from fieldplan.stats.power import smallest_shift
 from fieldplan.stats.precision import MOST, smallest, whole
 from fieldplan.stats.rank_tests import rank_sum_planned_n, rank_sum_power, rank_sum_share
@@ -28,10 +29,14 @@ class TwoPopulations:
     ----------
     asked : Asked
     table : MeanAndBackground
+    factor : float
+        By which the site's sigma differs from the one given; a background without a sigma of its
+        own follows.
     """
 
     asked: Asked
     table: MeanAndBackground
+    factor: float = 1.0
 
     def __post_init__(self) -> None:
         """Refuse chances that no number of results can keep."""
@@ -60,7 +65,7 @@ class TwoPopulations:
     def site_sigma(self) -> float:
         """Standard deviation of site results; of strata the one that proportional counts have."""
         parts = self.asked.question.parts
-        return math.sqrt(math.fsum(part.weight * part.sigma**2 for part in parts))
+        return self.factor * math.sqrt(math.fsum(part.weight * part.sigma**2 for part in parts))
 
     @property
     def background_sigma(self) -> float:
@@ -74,7 +79,8 @@ class TwoPopulations:
             return self.table.background_per_site
         if self._one_population:
             return 1.0
-        return self.background_sigma / self.site_sigma
+        given = self.table.background_sigma
+        return 1.0 if given is None else given * self.factor / self.site_sigma
 
     def background(self, counts: tuple[int, ...]) -> int:
         """Give the background results that go with counts on the site."""
@@ -118,7 +124,7 @@ class TwoPopulations:
 
     def _as_one_sample(self, counts: tuple[int, ...]) -> tuple[int, float]:
         """Give the simple sample that has the standard error and degrees of freedom of these."""
-        precision = Precision(self.asked.question)
+        precision = Precision(self.asked.question, factor=self.factor)
         known = precision.degrees_of_freedom(counts)
         first = int(min(known, MOST) + 1e-9) + 1
         return first, precision.standard_error(counts) * math.sqrt(first)
@@ -199,3 +205,61 @@ class TwoPopulations:
             middle = (low + high) / 2
             low, high = (low, middle) if self.power(counts, middle) >= wanted else (middle, high)
         return high
+
+    def chance_enough(self, counts: tuple[int, ...]) -> float | None:
+        """Give the chance that counts keep the power, the pilot's sigma being uncertain.
+
+        Parameters
+        ----------
+        counts : tuple of int
+            Results by stratum of the site.
+
+        Returns
+        -------
+        float or None
+            None where nobody said how many results stand behind sigma. A background sigma that is
+            typed is taken as known.
+        """
+        precision = Precision(self.asked.question)
+        pilot = precision.pilot_degrees_of_freedom(counts)
+        if pilot is None:
+            return None
+        wanted = 1 - self.table.beta
+
+        def keeps(factor: float) -> bool:
+            return replace(self, factor=factor).power(counts) >= wanted
+
+        low, high = 0.0, 1.0
+        if not keeps(1e-6):
+            return 0.0
+        while keeps(high) and high < 1e6:
+            low, high = high, 2 * high
+        for _ in range(24):
+            middle = (low + high) / 2
+            low, high = (middle, high) if keeps(middle) else (low, middle)
+        predicted = precision.luck_of_allocation(counts) / max(low, 1e-6) ** 2
+        return chance_of_variance(predicted, 1.0, pilot)
+
+    def assured(self, assurance: float) -> tuple[int, ...]:
+        """Count the site results whose power is kept with a stated chance, given the pilot.
+
+        Parameters
+        ----------
+        assurance : float
+            From 0.5 up to, but not, 1; without results behind sigma the plain number is given.
+        """
+        counts = self.needed
+        precision = Precision(self.asked.question)
+        pilot = precision.pilot_degrees_of_freedom(counts)
+        if pilot is None:
+            return counts
+        luck = precision.luck_of_allocation(counts)
+        factor = math.sqrt(pilot * luck / chi_square_quantile(1 - assurance, pilot))
+        counts = replace(self, factor=factor).needed
+        # Degrees of freedom and luck move a little with the counts; the last step is exact.
+        while (self.chance_enough(counts) or 0.0) < assurance - 1e-6:
+            following = self.asked.shared(sum(counts) + 1)
+            if following == counts:
+                break
+            counts = following
+        return counts

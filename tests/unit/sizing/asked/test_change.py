@@ -8,6 +8,7 @@ from scipy import stats
 
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.asked.change import bought, count
+from fieldplan.sizing.asked.paired_rounds import PairedRounds
 from fieldplan.sizing.question import Part
 from fieldplan.stats.precision import half_width, n_for_half_width
 from tests.unit.sizing.asked.asked_for import amount, asked_for, listed
@@ -90,7 +91,9 @@ def test_list_taken_whole_leaves_no_error() -> None:
 def test_what_hangs_on_the_correlation_is_told() -> None:
     """Uncorrelated pairs need 1/(1 − 0.6) times as many, less the t's part."""
     found = count(asked_for("change", difference=8.0, correlation=0.6, **RISKS)).finding
-    assert "were it 0, as with new places in the second round, about 101" in found.warnings[0]
+    assert "were it 0, as with new places in the second round, about 101" in " ".join(
+        found.warnings
+    )
     table = dict(found.rows)
     assert table["0"] == "101"
     assert int(table["0.9"]) < int(table["0.6"]) < int(table["0.3"])
@@ -113,7 +116,50 @@ def test_half_width_has_its_own_words_and_picture() -> None:
     assert found.answer.startswith("25 locations visited in both rounds pin down the change")
     assert found.picture is not None
     assert found.picture.levels == (("target", 5.0),)
-    assert {entry.name for entry in found.amounts} == {"n", "standard_error", "half_width"}
+    assert {entry.name for entry in found.amounts} == {
+        "n", "standard_error", "chance_enough", "half_width"
+    }  # fmt: skip
+
+
+def test_chance_that_a_number_is_enough_is_the_pilots_chi_square() -> None:
+    """Closed form by scipy: P(χ²₇ ≥ 7 (change shown / change asked)²), sigma from 8 results."""
+    asked = asked_for("change", difference=8.0, correlation=0.6, **RISKS)
+    found = bought(asked, (42,))
+    least = amount(found, "smallest_change")
+    expected = stats.chi2.sf(7 * (least / 8.0) ** 2, 7)
+    assert amount(found, "chance_enough") == pytest.approx(expected, abs=1e-9)
+    said = count(asked).finding.warnings[0]
+    assert f"The chance that these are enough is {100 * expected:.0f} %" in said
+    assert "for a chance of 80 % and 90 % it takes 74 and 99" in said
+
+
+@pytest.mark.parametrize("target", [{"difference": 8.0, **RISKS}, {"half_width": 6.0}])
+def test_stated_assurance_is_kept_over_many_pilots(target: dict[str, float]) -> None:
+    """Simulation: pilots of 8, sized at 80 %; true sigma 20; tolerance of 4 standard errors."""
+    generator = np.random.default_rng(4)
+    times, kept = 200, 0
+    truth = asked_for("change", correlation=0.5, **target)
+    pairs = PairedRounds(truth, truth.objective.change)
+    for s in 20.0 * np.sqrt(generator.chisquare(7, times) / 7):
+        parts = (Part("site", 1.0, float(s), results=8),)
+        sized = asked_for("change", parts=parts, correlation=0.5, assurance=0.8, **target)
+        counts = PairedRounds(sized, sized.objective.change).assured(0.8)
+        if "difference" in target:
+            kept += pairs.power(counts) >= 0.8
+        else:
+            # The width itself varies from campaign to campaign; its chance is averaged.
+            t = stats.t.ppf(0.975, counts[0] - 1)
+            ratio = (6.0 / t) ** 2 * counts[0] / 400
+            kept += stats.chi2.cdf(ratio * (counts[0] - 1), counts[0] - 1)
+    error = math.sqrt(0.8 * 0.2 / times)
+    assert 0.8 - 4 * error <= kept / times <= 0.83 + 4 * error
+
+
+def test_spread_of_differences_that_is_typed_gives_no_chance() -> None:
+    """Nobody said how many differences stand behind it."""
+    found = count(asked_for("change", difference=8.0, sigma_of_differences=12.0, **RISKS))
+    assert amount(found, "chance_enough") is None
+    assert "Nobody said how many results stand behind sigma" in found.finding.warnings[0]
 
 
 def test_working_repeats_its_own_arithmetic() -> None:

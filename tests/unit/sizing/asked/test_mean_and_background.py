@@ -4,7 +4,7 @@ import math
 
 import numpy as np
 import pytest
-from scipy import stats
+from scipy import optimize, stats
 
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.asked.mean_and_background import bought, count
@@ -179,6 +179,41 @@ def test_smallest_difference_is_told_with_the_chance_wanted() -> None:
     assert TwoPopulations(asked, table).power(counts, least) == pytest.approx(0.8, abs=1e-5)
     assert least <= 15.0
     assert "The smallest difference told with 80 % is" in found.answer
+
+
+def test_chance_that_a_number_is_enough_is_the_pilots_chi_square() -> None:
+    """Brute force: the largest site sigma that keeps the power, then scipy's χ² with 7 df."""
+    asked = both(difference=15.0, background_sigma=8.0)
+    counts = count(asked).needed
+    m = amount(count(asked), "background_results")
+    largest = optimize.brentq(
+        lambda s: welch_power(15.0, (s, 8.0), first=counts[0], second=m, alpha=0.05) - 0.8, 1, 90
+    )
+    expected = stats.chi2.sf(7 * (20.0 / largest) ** 2, 7)
+    assert amount(bought(asked, counts), "chance_enough") == pytest.approx(expected, abs=1e-5)
+    said = count(asked).finding.warnings[0]
+    assert f"The chance that these are enough is {100 * expected:.0f} %" in said
+
+
+@pytest.mark.parametrize("more", [{}, {"background_sigma": 8.0}, {"test": "ranks"}])
+def test_assurance_is_the_first_number_that_has_it(more: dict[str, object]) -> None:
+    """Definition: the chance at n is at least 80 %, at one less it is not."""
+    asked = both(difference=25.0, assurance=0.8, **more)
+    table = asked.objective.mean_and_background
+    (n,) = count(asked).needed
+    pair = TwoPopulations(asked, table)
+    assert (pair.chance_enough((n,)) or 0) >= 0.8 - 1e-6
+    if "test" not in more:
+        assert (pair.chance_enough((n - 1,)) or 0) < 0.8
+    plain = count(both(difference=25.0, **more)).needed
+    assert n > plain[0]
+    assert f"sigma at face value asks for {plain[0]}" in count(asked).finding.warnings[0]
+
+
+def test_background_that_cannot_carry_an_assurance_is_told() -> None:
+    """12 results of the same uncertain spread: the plain number is there, 90 % is not."""
+    found = count(both(difference=17.3, background_results=10))
+    assert "more than can be had" in found.finding.warnings[0]
 
 
 def test_each_assumption_is_put_in_words() -> None:
