@@ -1,21 +1,16 @@
 """A pilot whose places are bunched together: its mean and s with each result weighed by area."""
 
 from dataclasses import dataclass
-
-import numpy as np
+from typing import TYPE_CHECKING
 
 from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.model import Amount, Finding, Size
-from fieldplan.sizing.pilot_ground import PilotGround, cells_of, pilot_ground
 from fieldplan.sizing.visits import ABOUT_MEANS
 from fieldplan.sizing.words import counted, figure, with_unit
-from fieldplan.stats.pilot_places import (
-    area_weights,
-    is_bunched,
-    weighed_spread,
-    worth_of_weights,
-)
 from fieldplan.stats.precision import whole
+
+if TYPE_CHECKING:
+    from fieldplan.sizing.pilot_ground import PilotGround
 
 THIESSEN = "Thiessen 1911, Monthly Weather Review 39:1082 (from memory)"
 FEWEST = 8
@@ -63,6 +58,8 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     frame = asked.frame
     if frame is None or frame.kind != "area" or size.question not in ABOUT_MEANS:
         return None
+    from fieldplan.sizing.pilot_ground import pilot_ground
+
     ground = pilot_ground(asked.entries, frame) if asked.sigma_known else None
     found = [] if ground is None else _bunched(asked, ground)
     if not found:
@@ -83,7 +80,17 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     )
 
 
-def _bunched(asked: Asked, ground: PilotGround) -> list[Bunched]:
+def _bunched(asked: Asked, ground: "PilotGround") -> list[Bunched]:
+    import numpy as np
+
+    from fieldplan.sizing.pilot_ground import cells_of
+    from fieldplan.stats.pilot_places import (
+        area_weights,
+        is_bunched,
+        weighed_spread,
+        worth_of_weights,
+    )
+
     found = []
     frame = asked.frame
     for stratum in frame.strata if frame is not None else ():
