@@ -41,7 +41,7 @@ def key_homes() -> dict[str, list[str]]:
     Examples
     --------
     >>> key_homes()["seed"], key_homes()["pilot"]
-    (['[draw]'], ['[[sigma]]'])
+    (['[draw]'], ['[[sigma]]', '[[field_reading]]'])
     """
     homes: dict[str, list[str]] = {}
     _note_homes(Campaign, "", homes)

@@ -9,7 +9,6 @@ from importlib import import_module
 from types import ModuleType
 from typing import TYPE_CHECKING
 
-from fieldplan.campaign.questions import MODULES, table_of
 from fieldplan.sizing.asked.model import Answered, Asked
 
 if TYPE_CHECKING:
@@ -19,7 +18,7 @@ __all__ = ["Answered", "Asked", "bought", "count", "side_questions"]
 
 
 def _module(question: str) -> ModuleType:
-    return import_module(f"fieldplan.sizing.asked.{table_of(question)}")
+    return import_module(f"fieldplan.sizing.asked.{question.replace('-', '_')}")
 
 
 def count(asked: Asked) -> Answered:
@@ -36,6 +35,8 @@ def bought(asked: Asked, question: str, counts: Sequence[int]) -> "Finding":
 
 def side_questions(asked: Asked) -> tuple[str, ...]:
     """Name the questions that the objective has a table for, besides the one that decides n."""
+    from fieldplan.campaign.questions import MODULES, table_of
+
     objective = asked.objective
     return tuple(
         question
