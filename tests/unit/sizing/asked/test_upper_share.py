@@ -123,6 +123,10 @@ def test_normal_bound_takes_the_first_n_that_is_often_enough_below() -> None:
     assert chance(n) >= 0.8 > chance(n - 1)
     assert amount(found, "chance") == pytest.approx(chance(n), abs=1e-9)
     assert amount(found, "n_by_counting") == 59
+    root = math.sqrt(n)
+    critical = stats.nct.ppf(0.95, n - 1, stats.norm.ppf(0.95) * root)
+    larger = stats.nct.sf(critical, n - 1, 60 / 25 * root)  # sigma 25 in place of 20
+    assert amount(found, "chance_at_larger_sigma") == pytest.approx(larger, abs=1e-9)
     assert "mean + 2.566 s" in found.finding.answer  # Natrella 1963: k = 2.566 at n = 15
     inverse = bought(asked_for("upper-share", mean=90.0, **NORMAL), (n,))
     assert amount(inverse, "chance") == amount(found, "chance")
