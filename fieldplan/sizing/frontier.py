@@ -15,6 +15,9 @@ REACH = 1.8
 """Designs are traced from a precision so many times wider than wanted to as much narrower."""
 
 
+FLOORED = 0.8
+"""Where floors bring a plan to less than this share of its target, what it reaches counts."""
+
 POINTS = 40
 """Designs traced for each kind, unless it says otherwise."""
 
@@ -105,8 +108,8 @@ def wanted_of(question: Question, needed: tuple[int, ...]) -> Wanted:
     -------
     Wanted
         The target; where an assurance was chosen, the precision that the counts for it predict,
-        since designs of equal predicted precision share the pilot's luck. Without a target, what
-        ``needed`` predicts.
+        since designs of equal predicted precision share the pilot's luck. Without a target, and
+        where floors carry the plan far beyond it, what ``needed`` predicts.
     """
     precision = Precision(question)
     measure: TargetKind = "standard_error" if question.target_half_width is None else "half_width"
@@ -123,6 +126,8 @@ def wanted_of(question: Question, needed: tuple[int, ...]) -> Wanted:
         assured = _assured(question, needed)
         if assured is not None:
             value = min(value, reached(assured))
+        elif question.locations is None and reached(needed) < FLOORED * value:
+            value = reached(needed)
     return Wanted(measure, value, question.confidence, question.interval)
 
 

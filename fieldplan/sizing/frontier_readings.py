@@ -5,10 +5,13 @@ from dataclasses import dataclass
 
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.field_readings import Reading
-from fieldplan.sizing.frontier import POINTS, PricedDesign, Wanted, levels
+from fieldplan.sizing.frontier import PricedDesign, Wanted, levels
 from fieldplan.sizing.question import Question
 from fieldplan.sizing.words import counted
 from fieldplan.stats.two_phase_split import Split, cheapest_split, most_precise_split
+
+ROW = 25
+"""Designs traced, each the cheapest of its precision."""
 
 
 @dataclass(frozen=True)
@@ -62,7 +65,7 @@ class WithReadings:
         population, price = self.reading.population, self.reading.price
         return self.priced(most_precise_split(population, budget=budget, price=price))
 
-    def row(self, wanted: Wanted, points: int = POINTS) -> list[PricedDesign]:
+    def row(self, wanted: Wanted, points: int = ROW) -> list[PricedDesign]:
         """Trace the cheapest designs at precisions on either side."""
         found = (self.cheapest(level) for level in levels(wanted, points=points))
         return list({design.words: design for design in found if design}.values())

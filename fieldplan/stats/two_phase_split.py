@@ -1,6 +1,6 @@
 """The whole numbers of readings and results that money is best spent on."""
 
-import math
+from bisect import bisect_left
 from collections.abc import Callable, Iterable
 from typing import NamedTuple
 
@@ -8,7 +8,7 @@ from fieldplan.stats.precision import meets, smallest
 from fieldplan.stats.two_phase import Screened
 
 ALL = 400
-"""So many numbers of results are all tried; of more, the whole neighbourhood of the best."""
+"""So many numbers of results are all tried; of more, ever finer rows about the best."""
 
 
 class Split(NamedTuple):
@@ -39,7 +39,7 @@ def cheapest_split(
     -------
     Split or None
         Of equally cheap ones the most precise; None where no number does. Up to ``ALL`` numbers
-        of results are all tried, beyond that the neighbourhood of the best of a rising row.
+        of results are all tried, beyond that ever finer rows about the best.
 
     Examples
     --------
@@ -108,20 +108,18 @@ def most_precise_split(
 def _searched(
     best: Callable[[int], tuple[float, float, Split] | None], low: int, high: int
 ) -> Split | None:
-    """Try every number of results, or, of many, a rising row and then all near its best."""
+    """Try every number of results; of many a rising row, then a finer one about its best."""
 
     def first(numbers: Iterable[int]) -> tuple[float, float, Split] | None:
         return min((found for n in numbers if (found := best(n)) is not None), default=None)
 
-    if high - low < ALL:
-        found = first(range(low, high + 1))
-        return found[2] if found else None
-    step = (high / low) ** (2 / ALL)
-    row = sorted({round(low * step**k) for k in range(ALL // 2)} | {high})
-    found = first(row)
-    if found is None:
-        return None
-    near = found[2].results
-    reach = max(ALL // 2, math.ceil(near * (step - 1)))
-    found = first(range(max(low, near - reach), min(high, near + reach) + 1))
+    while high - low >= ALL:
+        ratio = (high / low) ** (2 / ALL)
+        row = sorted({round(low * ratio**k) for k in range(ALL // 2)} | {low, high})
+        found = first(row)
+        if found is None:
+            return None
+        place = bisect_left(row, found[2].results)
+        low, high = row[max(0, place - 1)], row[min(len(row) - 1, place + 1)]
+    found = first(range(low, high + 1))
     return found[2] if found else None

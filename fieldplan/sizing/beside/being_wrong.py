@@ -123,12 +123,16 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     Returns
     -------
     Finding or None
-        None where the campaign does not say what being wrong costs, has no level or no sigma.
+        None where the campaign does not say what being wrong costs, has no level or no sigma, or
+        where a result costs nothing, so that there is nothing to set beside it.
     """
     cost, level = asked.campaign.cost, asked.level
     if cost is None or cost.wrongly_acted is None or cost.wrongly_left is None:
         return None
     if level is None or not asked.sigma_known or asked.question.census:
+        return None
+    prices = asked.question.prices
+    if prices is None or prices.of_a_visit + prices.of_a_result <= 0:
         return None
     belief, believed = _belief(asked)
     if belief is None:

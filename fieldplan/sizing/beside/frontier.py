@@ -109,7 +109,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
         rows=rows,
         assumptions=_assumptions(asked, size, compared),
         sources=(*SOURCES, *((COMPOSITES,) if "composites" in compared.rows else ())),
-        picture=_picture(compared) if len(compared.rows) > 1 else None,
+        picture=_picture(compared) if len(compared.rows) > 1 and compared.best else None,
     )
 
 
@@ -266,10 +266,13 @@ def _assumptions(asked: Asked, size: Size, compared: _Compared) -> tuple[str, ..
         "All designs are priced with the same sigmas and prices, control samples, losses and "
         "targeted places included. The table holds those that no other beats, and this plan.",
     ]
-    if question.assurance is not None and question.target != "budget":
+    target = question.target_half_width or question.value
+    if question.target != "budget" and compared.wanted.value < 0.999 * target:
+        why = ""
+        if question.assurance is not None:
+            why = ", so that each keeps the target with about the chance that was asked for"
         lines.append(
-            f"They are compared at what the {size.needed} results of this plan predict, so that "
-            "each keeps the target with about the chance that was asked for."
+            f"They are compared at what the {size.needed} results of this plan predict{why}."
         )
     if question.grid:
         lines.append("A grid is priced as random places are: its evenness earns no credit here.")
