@@ -147,12 +147,15 @@ def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
             f"{opening}, sigma being known from {behind} only; the plain formula ({plain}) would "
             f"be enough in {percent(plain_chance)} of campaigns."
         )
+    line = (
+        f"{opening}: the plain formula is enough in only about half of campaigns, and sigma is "
+        f"known from {behind} only. "
+    )
+    if not assured:
+        return f"{line}Any chance above two in three takes every unit of the list."
     more = listed([str(entry.n) for entry in assured])
     shares = listed([percent(entry.assurance) for entry in assured])
-    return (
-        f"{opening}: the plain formula is enough in only about half of campaigns, and sigma is "
-        f"known from {behind} only. For a chance of {shares} it takes {more}."
-    )
+    return f"{line}For a chance of {shares} it takes {more}."
 
 
 def _no_chance(question: Question, counts: Counts) -> str:

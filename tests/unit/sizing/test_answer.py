@@ -406,3 +406,10 @@ def test_assurance_beyond_reach_is_said() -> None:
     parts = (Part("a", 0.5, 900.0, results=2), Part("b", 0.5, 900.0, results=2))
     with pytest.raises(DesignError, match=r"an assurance of 0\.999999 asks for more than"):
         answer(ask(parts, 1.0, assurance=0.999999))
+
+
+def test_a_list_so_short_that_every_chance_takes_it_whole_is_said_to_be() -> None:
+    """Two pilot results, three units: n = 2 by the formula, all three for 67 % and more."""
+    size = answer(ask(whole(5.0, results=2, population=3), 3.0))
+    assert (size.needed, size.assured) == (2, ())
+    assert any("takes every unit of the list" in line for line in size.sentences)
