@@ -174,6 +174,8 @@ MEANING: dict[str, str] = {
     "rules.confidence": "the long-run share of intervals that hold the true mean",
     "rules.promised_for": "the class of populations that the confidence is declared for",
     "rules.single_result": "what is done with a stratum left with fewer than 2 results",
+    "rules.mean_interval": "how the ends of the interval are set about the mean",
+    "rules.promised_class": "the class of populations that skew-widened keeps its confidence for",
     "rules.fixed_by": "who fixed the rules",
     "rules.fixed_on": "the day on which the rules were fixed",
     # [field]

@@ -268,6 +268,8 @@ class Rules(Table):
 class FieldTable(Table):
     """``[field]``: what the crew needs to know that no map shows.
 
+    mean_interval: Literal["student-t", "skew-widened"] = "student-t"
+    promised_class: Literal["cv-up-to-1", "cv-up-to-2"] | None = None
     ``facts`` switch cautions on; ``offset_within_m`` is how far a blocked location may move.
     """
 

@@ -94,7 +94,8 @@ def test_one_open_value_leaves_the_rest_known(tmp_path, name):
                         "cost.per_crew_day", "cost.locations_per_day", "cost.wrongly_acted",
                         "cost.wrongly_left", "objective.mean_from", "objective.mean_to",
                         "design.equal_in", "design.increments_at", "design.replicates",
-                        "design.ranking_set_size", "design.ranking_correlation"}  # fmt: skip
+                        "design.ranking_set_size", "design.ranking_correlation",
+                        "rules.promised_class"}  # fmt: skip
         return
     assert found.campaign is None
     known = draft(found)
