@@ -9,6 +9,7 @@ from fieldplan.sizing.asked.counting_claims import (
     HYPERGEOMETRIC,
     WILKS,
     chance_noticed,
+    claim_holds,
     counting_assumptions,
     counts_that_notice,
     exceeding_units,
@@ -24,7 +25,7 @@ from fieldplan.sizing.model import Amount, Finding, Picture, Series
 from fieldplan.sizing.words import counted, percent, typed_percent
 from fieldplan.stats.lots import n_to_find, unrounded_to_find
 from fieldplan.stats.precision import smallest
-from fieldplan.stats.tolerance import SLACK, n_by_counting
+from fieldplan.stats.tolerance import n_by_counting
 
 TITLE = "None may exceed the level"
 
@@ -126,7 +127,7 @@ def _smallest_noticed(asked: Asked, counts: tuple[int, ...], confidence: float) 
     """Give the smallest share above the level, or units of a list, noticed with the confidence."""
 
     def seen(share: float) -> bool:
-        return chance_noticed(asked, counts, share, allowed=0) >= confidence - SLACK
+        return claim_holds(asked, counts, share, allowed=0, confidence=confidence)
 
     if asked.population is not None:
         units = asked.population

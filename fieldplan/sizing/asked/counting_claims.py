@@ -66,6 +66,34 @@ def chance_noticed(asked: Asked, counts: tuple[int, ...], share: float, *, allow
     return 1 - chance_of_exceedances(total, spread, allowed=allowed)
 
 
+def claim_holds(
+    asked: Asked, counts: tuple[int, ...], share: float, *, allowed: int, confidence: float
+) -> bool:
+    """Tell whether counts notice a share with the confidence, wherever in the strata it lies.
+
+    Parameters
+    ----------
+    asked : Asked
+    counts : tuple of int
+        Results by stratum.
+    share : float
+        Above the level, that must be noticed.
+    allowed : int
+        Results that may exceed.
+    confidence : float
+
+    Notes
+    -----
+    The bound for strata wants more exceedances on average than are allowed, by one at least
+    (Hoeffding 1956); above a confidence of 0.63 that follows.
+    """
+    chance = chance_noticed(asked, counts, share, allowed=allowed)
+    if chance < confidence - SLACK:
+        return False
+    exact = len(counts) == 1 or takes_all(asked, counts) or (asked.population and allowed == 0)
+    return bool(exact) or allowed <= sum(counts) * share * evenness(asked, counts) - 1
+
+
 def evenness(asked: Asked, counts: tuple[int, ...]) -> float:
     """Give how far the most thinly sampled stratum lies below an even share; 1 where none does."""
     total = sum(counts)
@@ -105,8 +133,8 @@ def counts_that_notice(
         raise DesignError(message)
 
     def notices(total: int) -> bool:
-        chance = chance_noticed(asked, asked.shared(total), share, allowed=allowed)
-        return chance >= confidence - SLACK
+        counts = asked.shared(total)
+        return claim_holds(asked, counts, share, allowed=allowed, confidence=confidence)
 
     # Whole shares ripple: a total may fail where the one before it did.
     ripple = 4 * len(asked.question.parts) if len(asked.question.parts) > 1 else 0

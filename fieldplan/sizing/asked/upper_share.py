@@ -9,6 +9,7 @@ from fieldplan.sizing.asked.counting_claims import (
     HYPERGEOMETRIC,
     WILKS,
     chance_noticed,
+    claim_holds,
     counting_assumptions,
     counts_that_notice,
     level_words,
@@ -23,7 +24,7 @@ from fieldplan.sizing.model import Amount, Finding, Picture, Series
 from fieldplan.sizing.words import counted, percent, typed_percent
 from fieldplan.stats.lots import n_and_allowed_of_list, n_to_find
 from fieldplan.stats.precision import smallest
-from fieldplan.stats.tolerance import SLACK, n_and_allowed, n_by_counting
+from fieldplan.stats.tolerance import n_and_allowed, n_by_counting
 
 TITLE = "A stated share lies below the level"
 SHOWN = 5
@@ -153,8 +154,8 @@ def _permitted(asked: Asked, table: UpperShare, counts: tuple[int, ...]) -> int 
     """Give how many of the counts may exceed while the claim stands; None where none may."""
 
     def too_many(allowed: int) -> bool:
-        chance = chance_noticed(asked, counts, _spoils(asked, table), allowed=allowed)
-        return chance < table.confidence - SLACK
+        spoils, sure = _spoils(asked, table), table.confidence
+        return not claim_holds(asked, counts, spoils, allowed=allowed, confidence=sure)
 
     first = smallest(too_many, 0, sum(counts) + 1, back=0)
     return first - 1 if first else None
@@ -165,7 +166,7 @@ def _share_shown(asked: Asked, table: UpperShare, counts: tuple[int, ...]) -> fl
     low, high = 0.0, 1.0
     for _ in range(50):
         middle = (low + high) / 2
-        sure = chance_noticed(asked, counts, middle, allowed=0) >= table.confidence - SLACK
+        sure = claim_holds(asked, counts, middle, allowed=0, confidence=table.confidence)
         low, high = (low, middle) if sure else (middle, high)
     return 1 - high
 

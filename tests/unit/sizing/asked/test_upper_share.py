@@ -62,6 +62,20 @@ def test_list_with_an_expected_share_above() -> None:
     assert stats.hypergeom.cdf(allowed, 200, 4, n) >= 0.8
 
 
+@pytest.mark.parametrize("confidence", [0.51, 0.55, 0.7])
+def test_low_confidence_is_kept_in_strata_too(confidence: float) -> None:
+    """Brute force: the bound alone would not do where few exceedances are expected."""
+    words = {"share": 0.7, "allowed": 2, "confidence": confidence}
+    first, second = count(asked_for("upper-share", parts=HALVES, **words)).needed
+    for k in range(101):
+        above = (0.6 * k / 100, 0.6 - 0.6 * k / 100)
+        few = math.fsum(
+            stats.binom.pmf(i, first, above[0]) * stats.binom.cdf(2 - i, second, above[1])
+            for i in range(3)
+        )
+        assert 1 - few >= confidence - 1e-12
+
+
 @pytest.mark.parametrize("allowed", [0, 1, 3])
 def test_strata_keep_the_confidence_wherever_the_share_lies(allowed: int) -> None:
     """Brute force: two binomials added, for every split of 5 % over two halves."""
