@@ -63,7 +63,7 @@ def read_lab(
     """
     analytes = {tidy(name).casefold(): a for a in campaign.analyte for name in _names(a)}
     remedy = partial(_in_campaign_too, columns or {}) if of_pilot else remedy
-    named = Named(columns or {}, {} if of_pilot else pilot_titles(campaign), remedy)
+    named = Named(columns or {}, {} if of_pilot else pilot_titles(campaign), remedy, of_pilot)
     certificate = certificate_of(REQUIRED, named.titles(), analytes, how=named.how())
     table, found, notes = choose_sheet(path, named, certificate)
     memory, marks = FileMemory(), decimal_marks(table, found)

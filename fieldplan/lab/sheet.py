@@ -28,6 +28,10 @@ def pilot_titles(campaign: Campaign) -> dict[str, tuple[str, ...]]:
     return {ours: tuple(theirs) for ours, theirs in titles.items()}
 
 
+OF_PILOTS_ONLY = "collected_on"
+"""Read in pilots only: in results a day in another order must not stop an estimate."""
+
+
 @dataclass(frozen=True)
 class Named:
     """What was said for this file, and what was said for a pilot, which may be of another form.
@@ -40,11 +44,14 @@ class Named:
         The same of the campaign's pilots; more than one where they differ.
     remedy : callable
         Says where to write what a column is called.
+    of_pilot : bool
+        The file is a pilot; the day of collection is looked at there only.
     """
 
     told: Mapping[str, str]
     of_pilots: Mapping[str, tuple[str, ...]]
     remedy: Remedy
+    of_pilot: bool = True
 
     def how(self) -> str:
         """Say how to tell which columns are which, none of which can be guessed."""
@@ -61,7 +68,8 @@ class Named:
         reused = {}
         for ours, titles in self.of_pilots.items():
             here = [t for t in titles if theirs.count(plain_name(t)) == 1]
-            if ours not in self.told and len(here) == 1 and plain_name(here[0]) not in taken:
+            free = ours != OF_PILOTS_ONLY and ours not in self.told
+            if free and len(here) == 1 and plain_name(here[0]) not in taken:
                 reused[ours] = here[0]
         return reused
 
@@ -97,6 +105,8 @@ def choose_sheet(
         renamed = {**named.reused(table), **named.told}
         try:
             found = find_columns(table, LAB_COLUMNS, REQUIRED, renamed=renamed, remedy=named.remedy)
+            if not named.of_pilot:
+                found.pop(OF_PILOTS_ONLY, None)
             fitting.append((table, found))
         except LabError as fault:
             rows = [(table.header_row, table.header), *table.rows]

@@ -19,6 +19,14 @@ HEADER = "location_id,analyte,as_reported,unit,collected_on,role\n"
 Reader = Callable[..., LabTable]
 
 
+@pytest.fixture
+def read(lab_file: Callable[[str], Path]) -> Reader:
+    """Write a file and read it as a pilot; lead has no basis."""
+    lead = make_campaign().analyte[0].model_copy(update={"basis": ""})
+    campaign = make_campaign(analyte=(lead,))
+    return lambda content: read_lab(lab_file(content), campaign, of_pilot=True)
+
+
 def test_the_day_is_read_and_a_time_behind_it_passed_over(read: Reader) -> None:
     """Year, month, day; a blank is no day."""
     table = read(
@@ -46,14 +54,15 @@ def test_a_date_cell_of_a_workbook_is_a_day_here_and_a_fault_elsewhere(tmp_path:
     sheet.append(["location_id", "analyte", "as_reported", "unit", "collected_on"])
     sheet.append(["A", "lead", 8, "mg/kg", datetime(2026, 5, 4)])
     book.save(tmp_path / "labs.xlsx")
-    campaign = make_campaign()
-    lead = campaign.analyte[0].model_copy(update={"basis": ""})
-    campaign = campaign.model_copy(update={"analyte": (lead,)})
-    assert read_lab(tmp_path / "labs.xlsx", campaign).rows[0].collected_on == date(2026, 5, 4)
+    lead = make_campaign().analyte[0].model_copy(update={"basis": ""})
+    campaign = make_campaign(analyte=(lead,))
+    assert read_lab(tmp_path / "labs.xlsx", campaign, of_pilot=True).rows[0].collected_on == date(
+        2026, 5, 4
+    )
     sheet["A2"] = datetime(2026, 5, 4)
     book.save(tmp_path / "labs.xlsx")
     with pytest.raises(LabError, match="location_id: cell A2 is a date"):
-        read_lab(tmp_path / "labs.xlsx", campaign)
+        read_lab(tmp_path / "labs.xlsx", campaign, of_pilot=True)
 
 
 def test_visits_to_one_place_count_one_by_one(read: Reader) -> None:
@@ -117,3 +126,12 @@ def test_a_stratum_takes_its_own_correlation_before_that_of_the_site() -> None:
     assert found[0] is not None
     assert found[0].planned_rho == pytest.approx(0.25)
     assert declared_visits(entries[0], make_campaign(), "lead") is None
+
+
+def test_results_are_read_whatever_their_day_looks_like(lab_file: Callable[[str], Path]) -> None:
+    """An estimate needs no day of collection, so none can stop it."""
+    lead = make_campaign().analyte[0].model_copy(update={"basis": ""})
+    table = read_lab(
+        lab_file(HEADER + "A,lead,8,mg/kg,04/05/2026,\n"), make_campaign(analyte=(lead,))
+    )
+    assert [(row.result, row.collected_on) for row in table.rows] == [(8.0, None)]
