@@ -48,7 +48,7 @@ def leaning_words(skewness: float, places: int) -> str:
     return (
         f"What a layout spread over the site would save is not said: the pilot's {places} results "
         f"lean (skewness {skewness:.2f}), and on such ground predicted standard errors were too "
-        "small by a fifth in the middle, often by half. n is for random places."
+        "small by a fifth in the middle, by half in one case of ten. n is for random places."
     )
 
 
@@ -84,8 +84,7 @@ def spread_warnings(spread: "Predicted") -> tuple[str, ...]:
     if spread.slope > 0.4:
         lines.append(
             f"A straight slope across the site holds {percent(spread.slope)} of the pilot's "
-            "variance. Spreading catches it, but a layout that starts on one side does not, and "
-            "grids are not predicted here."
+            "variance. Compact parts catch it; what grids would do is not predicted here."
         )
     if not 0.85 <= spread.random_ratio <= 1.18:
         lines.append(
