@@ -9,6 +9,7 @@ from tests.benchmarks.money import measured as measured_money
 from tests.benchmarks.near_normal import timed_findings
 from tests.benchmarks.patches import measured as measured_patches
 from tests.benchmarks.placement import COUNTS, VERTICES, measured
+from tests.benchmarks.strata import measured as measured_strata
 
 
 def placement() -> Iterator[str]:
@@ -80,6 +81,17 @@ def correlation() -> Iterator[str]:
         )
 
 
+def strata() -> Iterator[str]:
+    """Yield the table of the section "A thousand strata"."""
+    yield "| work | aim | shortest | peer | its shortest | ratio |"
+    yield "| --- | --- | --- | --- | --- | --- |"
+    for row in measured_strata():
+        yield (
+            f"| {row.name} | {row.aim_s * 1000:g} ms | {row.seconds * 1000:.0f} ms | {row.peer} "
+            f"| {row.peer_s * 1000:.0f} ms | {row.peer_s / row.seconds:.1f} |"
+        )
+
+
 SECTIONS: dict[str, Callable[[], Iterator[str]]] = {
     "placement": placement,
     "commands": commands,
@@ -87,6 +99,7 @@ SECTIONS: dict[str, Callable[[], Iterator[str]]] = {
     "near-normal": near_normal,
     "money": money,
     "correlation": correlation,
+    "strata": strata,
 }
 
 if __name__ == "__main__":

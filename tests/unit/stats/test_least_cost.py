@@ -98,6 +98,25 @@ def test_dear_strata_get_fewer() -> None:
     assert found.counts[0] == pytest.approx(2 * found.counts[1], abs=3)
 
 
+def test_a_linear_program_in_parts_of_results_costs_hardly_less() -> None:
+    """Another library: scipy's HiGHS bounds the cost from below; whole counts stay near it.
+
+    At most one result a limit is left over, and rounding adds no more than that for each analyte.
+    """
+    from tests.benchmarks.strata import linear_program
+
+    rng = np.random.default_rng(11)
+    weights, sigmas = rng.dirichlet(np.full(25, 2.0)), rng.lognormal(2, 0.6, (3, 25))
+    costs = tuple(float(c) for c in rng.uniform(20, 300, 25))
+    site = Strata(tuple(weights), (1.0,) * 25, (None,) * 25, costs=costs)
+    demands = [Demand(tuple(s), float((weights * s).sum()) ** 2 / 200) for s in sigmas]
+    found, _ = least_cost(site, demands)
+    least = linear_program(site, demands, most=60)
+    assert max(found.counts) < 60
+    assert least * (1 - 1e-9) <= found.value <= least + 3 * max(costs)
+    assert found.bound <= found.value
+
+
 def test_a_thousand_strata_stay_close_to_the_bound() -> None:
     """Where the search is cut off, what remains is said: here under a tenth of a percent."""
     rng = np.random.default_rng(5)
