@@ -184,7 +184,7 @@ def _said(start: str, objective: Objective, campaign: Campaign, analyte: Analyte
 
 
 def _also_asked(campaign: Campaign) -> list[str]:
-    """Say what else is asked or measured, and that it does not decide n."""
+    """Say what else is asked or measured, and whether it decides n."""
     deciding = campaign.deciding_objective
     others = [o for o in campaign.objective if o is not deciding]
     asked = {objective.analyte for objective in campaign.objective}
@@ -192,7 +192,8 @@ def _also_asked(campaign: Campaign) -> list[str]:
     for objective in others:
         analyte = campaign.analyte_called(objective.analyte or campaign.deciding_analyte.id)
         said = _said("Also asked", objective, campaign, analyte)
-        lines.append(f"{said}; it does not decide n.")
+        role = "it decides n as well" if objective.decides_n else "it does not decide n"
+        lines.append(f"{said}; {role}.")
     for analyte in campaign.analyte:
         if analyte.id not in asked and analyte.id != campaign.deciding_analyte.id:
             lines.append(f"Measured too, without a target: {analyte.label}.")
@@ -204,6 +205,7 @@ _LAYOUTS = {
     "stratified": "drawn at random in each stratum",
     "square-grid": "on a square grid with a random start",
     "triangular-grid": "on a triangular grid with a random start",
+    "compact-strata": "in compact cells of nearly equal area",
     "census": "are all members of the list",
 }
 
