@@ -71,7 +71,7 @@ def test_a_loose_reading_does_not_pay() -> None:
 
 
 def test_few_pairs_are_shown_for_what_they_are() -> None:
-    """From 10 pairs 0.85 may be 0.474 (Fisher: tanh(1.2562 − 1.96/√7)); the error is larger then."""
+    """From 10 pairs 0.85 may be 0.474 (Fisher: tanh(1.2562 − 1.96/√7)); the error then grows."""
     finding = found(*PRICES, *meter(from_pairs=10))
     assert finding is not None
     numbers = amounts(finding)
