@@ -9,7 +9,7 @@ from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
 from fieldplan.sizing.sentences import sentences
 from fieldplan.sizing.steps import steps
-from fieldplan.sizing.together import CHOOSING, joint_balance
+from fieldplan.sizing.together import CHOOSING, face_value, joint_balance
 from fieldplan.sizing.words import target_words
 from fieldplan.stats.allocation import unrounded_shares, unrounded_total
 from fieldplan.stats.intervals import t_quantile
@@ -122,7 +122,7 @@ def _unrounded(question: Question) -> float | None:
             float("inf"), confidence=question.confidence, kind=question.interval
         )
     if question.also and question.allocation in CHOOSING:
-        return float(sum(joint_balance(question).counts))
+        return float(sum(joint_balance(face_value(question)).counts))
     own = unrounded_total(question.strata, target**2, allocation=question.allocation)
     return max([own, *(_unrounded(other) or 0.0 for other in question.also)])
 

@@ -7,7 +7,7 @@ from fieldplan.base.working import Quantity, Step
 from fieldplan.sizing.closing_steps import COCHRAN
 from fieldplan.sizing.quantities import target_quantity
 from fieldplan.sizing.question import Part, Question
-from fieldplan.sizing.together import CHOOSING, demand_of, everyone, joint_balance
+from fieldplan.sizing.together import CHOOSING, demand_of, everyone, face_value, joint_balance
 from fieldplan.stats.allocation import unrounded_shares, unrounded_total
 from fieldplan.stats.intervals import t_quantile
 
@@ -151,6 +151,7 @@ def _shares(question: Question, plain: tuple[int, ...], total: float) -> Iterato
 
 def _together(question: Question, plain: tuple[int, ...]) -> Iterator[Step]:
     """Show several analytes: the tolerated variance of each, and the total that keeps them all."""
+    question = face_value(question)
     members = everyone(question)
     demands = [demand_of(member) for member in members]
     tolerated = tuple(

@@ -160,13 +160,16 @@ def assurance_table(plan: Plan) -> Table:
 
 
 def other_blocks(plan: Plan) -> list[Block]:
-    """Set what the same n buys for objectives and analytes that do not decide it."""
+    """Set what the same n buys for objectives and analytes beside the first that decides it."""
     others = plan.size.others
+    beside = "the target that decides n"
+    if plan.campaign.also_deciding:
+        beside = f"the target of {plan.campaign.deciding_analyte.label}"
     columns = ("Analyte", "Standard error to expect", "Its own target", "Kept", "Chance")
     table = Table(
         columns,
         tuple(other_row(plan, other) for other in others),
-        caption=f"What {counted(plan.size.needed, 'result')} buy beside the target that decides n",
+        caption=f"What {counted(plan.size.needed, 'result')} buy beside {beside}",
     )
     heading = Heading("Other analytes and objectives", level=2)
     more = [o.sentence for o in others if o.falls_short or o.standard_error is None]

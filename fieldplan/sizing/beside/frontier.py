@@ -89,13 +89,15 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     -------
     Finding or None
         None without prices or sigma, for a census, and where something else than the precision
-        of a mean is asked.
+        of one mean is asked: other designs would not keep the targets of several analytes.
     """
     question = asked.question
     prices = question.prices
     if prices is None or question.census or not asked.sigma_known or size.question != "mean":
         return None
     takes_all = question.takes_all([entry.needed for entry in size.strata])
+    if question.also:
+        return None
     if takes_all or prices.of_a_visit + prices.of_a_result <= 0:
         return None
     compared = _compared(asked, size)
