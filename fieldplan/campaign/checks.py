@@ -17,7 +17,13 @@ from fieldplan.campaign.visit_checks import visit_problems
 TARGETS = ("standard_error", "half_width", "relative_half_width", "budget")
 """The forms that a target may take; an objective has exactly one."""
 
-AREA_LAYOUTS = ("simple-random", "stratified", "square-grid", "triangular-grid")
+AREA_LAYOUTS = (
+    "simple-random",
+    "stratified",
+    "square-grid",
+    "triangular-grid",
+    "compact-strata",
+)
 LIST_LAYOUTS = ("simple-random", "stratified", "census")
 _AREA_ONLY = ("boundary", "boundary_assumed", "strata", "exclusion", "inset_m")
 
@@ -151,6 +157,11 @@ def _unsuitable_design_keys(
         for key in ("locations", "alternates"):
             if design.get(key):
                 text = "a census visits every member of the list. Take this key out."
+                yield Problem(("design", i, key), text)
+    if layout != "compact-strata" and isinstance(layout, str) and not is_fill_in(layout):
+        for key in ("per_cell", "variance"):
+            if key in design and not is_fill_in(design[key]):
+                text = 'this key belongs to layout = "compact-strata". Take it out.'
                 yield Problem(("design", i, key), text)
     if kind == "list" and design.get("minimum_spacing_m"):
         text = "members of a list stand where they stand. Take this key out."
@@ -353,5 +364,5 @@ _RULES: tuple[Callable[[Data], Iterator[Problem]], ...] = (
     money_problems,
     _facts,
     _clearances,
-)
     interval_problems,
+)

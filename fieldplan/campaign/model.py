@@ -119,7 +119,16 @@ class DesignTable(Table):
 
     id: Identifier = "main"
     frame: str | None = None
-    layout: Literal["simple-random", "stratified", "square-grid", "triangular-grid", "census"]
+    layout: Literal[
+        "simple-random",
+        "stratified",
+        "square-grid",
+        "triangular-grid",
+        "compact-strata",
+        "census",
+    ]
+    per_cell: Literal[1, 2] = 1
+    variance: Literal["pairs", "covariance"] = "pairs"
     allocation: Literal["proportional", "neyman", "cost-optimal", "equal-precision"] = (
         "proportional"
     )
@@ -259,6 +268,8 @@ class Rules(Table):
     duplicates: Literal["average", "first"] = "average"
     interval: Literal["two-sided", "upper-limit", "lower-limit"] = "two-sided"
     confidence: Annotated[float, Field(gt=0.5, lt=1)] = 0.95
+    mean_interval: Literal["student-t", "skew-widened"] = "student-t"
+    promised_class: Literal["cv-up-to-1", "cv-up-to-2"] | None = None
     promised_for: str = ""
     single_result: Literal["refuse", "borrow-spread"] = "refuse"
     fixed_by: str = ""
@@ -268,8 +279,6 @@ class Rules(Table):
 class FieldTable(Table):
     """``[field]``: what the crew needs to know that no map shows.
 
-    mean_interval: Literal["student-t", "skew-widened"] = "student-t"
-    promised_class: Literal["cv-up-to-1", "cv-up-to-2"] | None = None
     ``facts`` switch cautions on; ``offset_within_m`` is how far a blocked location may move.
     """
 

@@ -252,7 +252,11 @@ def _depth(answers: Answers) -> list[str]:
 
 
 def _design(answers: Answers) -> list[str]:
-    others = "census" if answers.list_file is not None else "square-grid, triangular-grid"
+    others = (
+        "census"
+        if answers.list_file is not None
+        else "square-grid, triangular-grid, compact-strata"
+    )
     layout, comment = "simple-random", f"or {others}"
     if answers.divided:
         layout = "stratified"

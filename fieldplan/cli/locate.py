@@ -23,7 +23,14 @@ if TYPE_CHECKING:
     from fieldplan.design.model import Location
     from fieldplan.plan.model import Plan
 
-LAYOUT_NAMES = ("simple-random", "stratified", "square-grid", "triangular-grid", "census")
+LAYOUT_NAMES = (
+    "simple-random",
+    "stratified",
+    "square-grid",
+    "triangular-grid",
+    "compact-strata",
+    "census",
+)
 MOST_ROWS = 40
 
 

@@ -194,7 +194,7 @@ def draw_places(
         if kept.refused_in_a_row >= PATIENCE or expected + tried > MOST_CANDIDATES:
             raise DesignError(_no_room(ground, count, len(kept.places) - len(before), spacing_m))
         batch = int(min(expected * 1.1 + 64, LARGEST_BATCH))
-        kept.accept(_candidates_inside(ground, batch, stream), most)
+        kept.accept(candidates_inside(ground, batch, stream), most)
         tried += batch
     return kept.places[len(before) :]
 
@@ -214,7 +214,8 @@ def _pairs(places: Sequence[tuple[int, int]]) -> Whole:
     return np.array(places, dtype=np.int64).reshape(-1, 2)
 
 
-def _candidates_inside(ground: Ground, batch: int, stream: Stream) -> Whole:
+def candidates_inside(ground: Ground, batch: int, stream: Stream) -> Whole:
+    """Draw candidates in the box and keep those inside, in whole centimetres, shape (k, 2)."""
     box = ground.box
     uniforms = stream.uniforms(2 * batch).reshape(batch, 2)
     size_cm = np.array([(box.east - box.west) * 100.0, (box.north - box.south) * 100.0])

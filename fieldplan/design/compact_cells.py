@@ -194,15 +194,24 @@ def _nearest(points: Whole, centres: Whole, pulls: Whole) -> Whole:
 
 def _nearest_around(points: Whole, centres: Whole, pulls: Whole, cells: Whole) -> Whole:
     """Tell the cell of each raster point among those around the cell it was in."""
-    near = min(len(centres), AROUND)
-    off = centres[:, None, :] - centres[None, :, :]
-    around = np.sort(np.argsort((off**2).sum(axis=2), axis=1, kind="stable")[:, :near], axis=1)
+    around = _around(centres)
     offset = (centres**2).sum(axis=1) - pulls
     candidates = around[cells]
     far = -2 * points[:, :1] * centres[candidates, 0]
     far += -2 * points[:, 1:] * centres[candidates, 1]
     far += offset[candidates]
     return np.asarray(candidates[np.arange(len(points)), np.argmin(far, axis=1)], dtype=np.int64)
+
+
+def _around(centres: Whole) -> Whole:
+    """List the cells whose centres are nearest to each centre, of equals the lower numbers."""
+    count = len(centres)
+    if count <= AROUND:
+        return np.tile(np.arange(count), (count, 1))
+    far = (centres[:, None, 0] - centres[:, 0]) ** 2
+    far += (centres[:, None, 1] - centres[:, 1]) ** 2
+    order = far * count + np.arange(count)  # no two alike, so that every library picks the same
+    return np.sort(np.argpartition(order, AROUND - 1, axis=1)[:, :AROUND], axis=1)
 
 
 def _along_a_curve(points: Whole, count: int) -> Whole:
@@ -261,16 +270,24 @@ def _power_cell(
     pulls: NDArray[np.float64],
     k: int,
 ) -> NDArray[np.float64]:
-    """Clip a convex ring by the lines between one centre and every other, nearest first."""
+    """Clip a convex ring by the lines between one centre and every other, nearest first.
+
+    A line lies (d² − pull + own pull) / 2d away from the centre; from the first one that must lie
+    beyond the ring on, none can cut it.
+    """
     normals = 2 * (centres - centres[k])
     limits = (centres**2).sum(axis=1) - pulls - ((centres[k] ** 2).sum() - pulls[k])
-    order = np.argsort(((centres - centres[k]) ** 2).sum(axis=1), kind="stable")
-    for other in order:
-        if other == k or len(ring) == 0:
-            continue
+    square = ((centres - centres[k]) ** 2).sum(axis=1)
+    order = np.argsort(square, kind="stable")
+    nearest_line = (square - pulls.max() + pulls[k]) / (2 * np.sqrt(np.maximum(square, 1e-12)))
+    reach = np.inf
+    for other in order.tolist():
+        if len(ring) == 0 or nearest_line[other] > reach:
+            break
         outside = ring @ normals[other] - limits[other]
-        if (outside > 0).any():
+        if other != k and (outside > 0).any():
             ring = _clipped(ring, outside)
+            reach = np.sqrt(((ring - centres[k]) ** 2).sum(axis=1).max(initial=0.0))
     return ring
 
 

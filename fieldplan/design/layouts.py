@@ -3,7 +3,9 @@
 from difflib import get_close_matches
 
 from fieldplan.base.errors import DesignError
+from fieldplan.campaign.model import DesignTable
 from fieldplan.design.census import Census
+from fieldplan.design.compact_strata import CompactStrata
 from fieldplan.design.grid import SQUARE_GRID, TRIANGULAR_GRID
 from fieldplan.design.model import Layout
 from fieldplan.design.simple_random import SimpleRandom
@@ -14,6 +16,7 @@ LAYOUTS: tuple[Layout, ...] = (
     Stratified(),
     SQUARE_GRID,
     TRIANGULAR_GRID,
+    CompactStrata(),
     Census(),
 )
 
@@ -39,3 +42,16 @@ def layout_named(name: str) -> Layout:
     hint = f' Did you mean "{near[0]}"?' if near else ""
     message = f'layout "{name}" is unknown; the layouts are {", ".join(names)}.{hint}'
     raise DesignError(message)
+
+
+def layout_of(design: DesignTable) -> Layout:
+    """Return the layout of a design, with the keys of the campaign file that belong to it.
+
+    Examples
+    --------
+    >>> layout_of(DesignTable(layout="compact-strata", per_cell=2)).per_cell
+    2
+    """
+    if design.layout == CompactStrata.name:
+        return CompactStrata(per_cell=design.per_cell, variance=design.variance)
+    return layout_named(design.layout)

@@ -1,14 +1,14 @@
 """From counts to named locations with degrees, probabilities and weights."""
 
 from collections import Counter
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 
 import shapely
 
 from fieldplan.base.draws import VERSION
 from fieldplan.base.errors import DesignError
 from fieldplan.campaign.model import Campaign
-from fieldplan.design.layouts import layout_named
+from fieldplan.design.layouts import layout_of
 from fieldplan.design.model import (
     DrawnPlace,
     DrawnPlaces,
@@ -50,7 +50,7 @@ def locate(campaign: Campaign, frame: Frame, counts: Sequence[StratumCount]) -> 
         )
         raise DesignError(message)
     design = campaign.design[0]
-    drawn = layout_named(design.layout).draw(
+    drawn = layout_of(design).draw(
         frame,
         counts,
         seed=campaign.draw.seed,
@@ -92,7 +92,7 @@ def _named_places(
 ) -> tuple[Location, ...]:
     names, own = _names(campaign, frame, drawn)
     planned = {count.stratum: count.planned for count in counts}
-    realised = Counter(p.stratum for p in drawn.places if p.location_class == "random")
+    in_cell = Counter((p.stratum, p.cell) for p in drawn.places if p.location_class == "random")
     degrees = _degrees(frame, drawn.places)
     located = [
         Location(
@@ -105,9 +105,12 @@ def _named_places(
             latitude=latitude,
             longitude=longitude,
             list_order=place.list_order,
-            inclusion_probability=planned[place.stratum] / frame.stratum(place.stratum).measure,
-            weight=_weight(frame, place, realised[place.stratum]),
+            inclusion_probability=_density(frame, place, planned[place.stratum], in_cell),
+            weight=_weight(frame, place, in_cell),
             alternate_for="" if place.location_class == "random" else f"any in {place.stratum}",
+            cell=place.cell,
+            cell_share=place.cell_share,
+            cell_centre=place.cell_centre,
         )
         for place, (latitude, longitude) in zip(drawn.places, degrees, strict=True)
     ]
@@ -129,10 +132,20 @@ def _names(campaign: Campaign, frame: Frame, drawn: DrawnPlaces) -> tuple[Naming
     return names, {own: name for own, name in own_names(ids).items() if not names.looks_made(name)}
 
 
-def _weight(frame: Frame, place: DrawnPlace, realised: int) -> float:
+def _density(
+    frame: Frame, place: DrawnPlace, planned: int, in_cell: Mapping[tuple[str, int], int]
+) -> float:
+    measure = frame.stratum(place.stratum).measure
+    if not place.cell:
+        return planned / measure
+    return in_cell[place.stratum, place.cell] / (measure * place.cell_share)
+
+
+def _weight(frame: Frame, place: DrawnPlace, in_cell: Mapping[tuple[str, int], int]) -> float:
     if place.location_class != "random":
         return 0.0
-    return frame.stratum(place.stratum).weight / realised
+    share = place.cell_share if place.cell else 1.0
+    return frame.stratum(place.stratum).weight * share / in_cell[place.stratum, place.cell]
 
 
 def _degrees(frame: Frame, places: Sequence[DrawnPlace]) -> list[tuple[float, float]]:

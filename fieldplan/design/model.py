@@ -32,11 +32,19 @@ class Location:
     list_order : int
         Position in the stratum's drawn list, from 1; 0 for targeted places.
     inclusion_probability : float
-        n/N for a list; n/area per square metre for an area; 0 for targeted places.
+        n/N for a list; n/area per square metre for an area, or for the cell where the layout cut
+        one; 0 for targeted places.
     weight : float
-        Stratum weight / number of planned random locations in it; 0 for other classes.
+        Stratum weight / number of planned random locations in it, or the cell's part of the weight
+        / those in the cell; 0 for other classes.
     alternate_for : str
         For an alternate: ``any in STRATUM``; else empty.
+    cell : int
+        Number of the compact cell that it lies in, from 1; 0 where the layout cut none.
+    cell_share : float
+        Area of the cell over that of the stratum; 0 without a cell.
+    cell_centre : (float, float) or None
+        Easting and northing of the cell's centre, site metres.
     """
 
     location_id: str
@@ -51,6 +59,9 @@ class Location:
     inclusion_probability: float
     weight: float
     alternate_for: str = ""
+    cell: int = 0
+    cell_share: float = 0.0
+    cell_centre: tuple[float, float] | None = None
 
 
 @dataclass(frozen=True)
@@ -84,16 +95,33 @@ class StratumCount:
 
 
 @dataclass(frozen=True)
+class PlannedCell:
+    """A cell that a stratum was cut into: its number, share of the stratum and centre."""
+
+    number: int
+    share: float
+    easting: float
+    northing: float
+
+
+@dataclass(frozen=True)
 class StratumValues:
     """Results of one stratum as the estimator sees them.
 
     ``values`` has shape (n,), one per location; ``population`` is N of a list, None for an area.
+    Where a layout cut cells, ``cells`` holds the cell number of each value, shape (n,),
+    ``coordinates`` its planned place in site metres, shape (n, 2), ``cut`` all cells that were
+    planned, and ``measure`` the stratum's area in square metres.
     """
 
     stratum: str
     weight: float
     values: NDArray[np.float64]
     population: int | None = None
+    coordinates: NDArray[np.float64] | None = None
+    cells: NDArray[np.int64] | None = None
+    cut: tuple[PlannedCell, ...] = ()
+    measure: float = 0.0
 
 
 @dataclass(frozen=True)
@@ -110,11 +138,42 @@ class StratumEstimate:
 
 
 @dataclass(frozen=True)
+class CellVariance:
+    """How the variance of one stratum's mean came from its cells.
+
+    Parameters
+    ----------
+    stratum : str
+    rule : str
+        ``pairs`` or ``covariance``.
+    parts : tuple of (str, float, float)
+        Cells by their numbers, variance of the stratum's mean, degrees of freedom.
+    sum_of_squares : float
+        Σ a²/n over the cells, a the share of a cell and n its results.
+    joined : tuple of (int, int)
+        Cells without a result, each with the one it was joined to.
+    practical_range_m, nugget, sigma, inside : float
+        Averaged over the curves; 0 for pairs.
+    """
+
+    stratum: str
+    rule: Literal["pairs", "covariance"]
+    parts: tuple[tuple[str, float, float], ...]
+    sum_of_squares: float
+    joined: tuple[tuple[int, int], ...] = ()
+    practical_range_m: float = 0.0
+    nugget: float = 0.0
+    sigma: float = 0.0
+    inside: float = 0.0
+
+
+@dataclass(frozen=True)
 class MeanEstimate:
     """The mean of the population by the recorded design.
 
     ``degrees_of_freedom`` is n − 1, or Satterthwaite's for strata; infinite for a census.
-    ``method`` and ``caution`` are sentences for the sheet.
+    ``method`` and ``caution`` are sentences for the sheet. ``cell_variances``, one a stratum, are
+    there where the layout cut cells and its variance takes credit for them.
     """
 
     n: int
@@ -124,6 +183,7 @@ class MeanEstimate:
     strata: tuple[StratumEstimate, ...]
     method: str
     caution: str = ""
+    cell_variances: tuple[CellVariance, ...] = ()
 
 
 class Layout(Protocol):
@@ -167,7 +227,10 @@ class Layout(Protocol):
 
 @dataclass(frozen=True)
 class DrawnPlace:
-    """A drawn place before it is named; ``unit_id`` is the list unit, if it is one."""
+    """A drawn place before it is named; ``unit_id`` is the list unit, if it is one.
+
+    ``cell``, ``cell_share`` and ``cell_centre`` are those of ``Location``.
+    """
 
     stratum: str
     list_order: int
@@ -175,6 +238,9 @@ class DrawnPlace:
     easting: float
     northing: float
     unit_id: str = ""
+    cell: int = 0
+    cell_share: float = 0.0
+    cell_centre: tuple[float, float] | None = None
 
 
 @dataclass(frozen=True)

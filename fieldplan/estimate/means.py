@@ -1,14 +1,15 @@
 """The mean under one set of rules, with non-detects at 0, at half and at their limit."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal
 
 import numpy as np
 
 from fieldplan.campaign.model import Rules
-from fieldplan.design import layout_named
-from fieldplan.design.model import MeanEstimate, StratumValues
+from fieldplan.design import layout_of
+from fieldplan.design.model import MeanEstimate, PlannedCell, StratumValues
 from fieldplan.estimate.model import Bracket, Interval
+from fieldplan.estimate.widened import is_widened, refuse_unsuited, widened_ends
 from fieldplan.plan.model import Plan
 from fieldplan.returns.model import Returns
 from fieldplan.stats.intervals import IntervalKind, t_interval
@@ -31,6 +32,8 @@ class Means:
         Number of location values in the mean with a non-detect behind them.
     analyte : str
         Its id.
+    values_low, values_high : tuple of StratumValues
+        What went into ``low`` and ``high``.
     """
 
     low: MeanEstimate
@@ -40,16 +43,26 @@ class Means:
     rules: Rules
     censored: int
     analyte: str
+    values_low: tuple[StratumValues, ...] = ()
+    values_high: tuple[StratumValues, ...] = ()
+
+    def values_behind(self, mean: MeanEstimate) -> tuple[StratumValues, ...]:
+        """Give what went into one of the means."""
+        others = {id(self.low): self.values_low, id(self.high): self.values_high}
+        return others.get(id(mean), ()) or self.values
 
     def interval_about(self, mean: MeanEstimate, kind: IntervalKind) -> Interval:
         """Set an interval of this kind about one of the means."""
-        low, high = t_interval(
-            mean.mean,
-            mean.standard_error,
-            mean.degrees_of_freedom,
-            confidence=self.rules.confidence,
-            kind=kind,
-        )
+        if is_widened(self.rules):
+            low, high = widened_ends(mean, self.values_behind(mean)[0], self.rules, kind)
+        else:
+            low, high = t_interval(
+                mean.mean,
+                mean.standard_error,
+                mean.degrees_of_freedom,
+                confidence=self.rules.confidence,
+                kind=kind,
+            )
         return Interval(kind, self.rules.confidence, low, high)
 
     @property
@@ -96,9 +109,11 @@ def means_by(plan: Plan, returns: Returns, rules: Rules) -> Means:
     Raises
     ------
     DesignError
-        A stratum has too few results for the rule.
+        A stratum has too few results for the rule, or the interval that the rules fix is not made
+        for the design.
     """
-    layout = layout_named(plan.campaign.design[0].layout)
+    refuse_unsuited(plan, rules)
+    layout = layout_of(plan.campaign.design[0])
 
     def mean_at(bound: Bound) -> MeanEstimate:
         values = stratum_values(plan, returns, bound)
@@ -109,6 +124,8 @@ def means_by(plan: Plan, returns: Returns, rules: Rules) -> Means:
         half=mean_at("half"),
         high=mean_at("high"),
         values=stratum_values(plan, returns, "half"),
+        values_low=stratum_values(plan, returns, "low"),
+        values_high=stratum_values(plan, returns, "high"),
         rules=rules,
         censored=sum(result.used and not result.detected for result in returns.results),
         analyte=returns.analyte,
@@ -130,15 +147,46 @@ def stratum_values(plan: Plan, returns: Returns, bound: Bound) -> tuple[StratumV
     tuple of StratumValues
         In the frame's order, empty ones included.
     """
-    used = [result for result in returns.results if result.used]
-    return tuple(
-        StratumValues(
+    places = {place.location_id: place for place in plan.locations.places}
+    found = []
+    for stratum in plan.frame.strata:
+        used = [r for r in returns.results if r.used and r.stratum == stratum.name]
+        own = StratumValues(
             stratum=stratum.name,
             weight=stratum.weight,
-            values=np.array(
-                [getattr(r, bound) for r in used if r.stratum == stratum.name], dtype=np.float64
-            ),
+            values=np.array([getattr(r, bound) for r in used], dtype=np.float64),
             population=stratum.count,
         )
-        for stratum in plan.frame.strata
-    )
+        cut = planned_cells(plan, stratum.name)
+        if cut:
+            here = [places[result.location_id] for result in used]
+            own = replace(
+                own,
+                coordinates=np.array([(p.easting, p.northing) for p in here]).reshape(-1, 2),
+                cells=np.array([place.cell for place in here], dtype=np.int64),
+                cut=cut,
+                measure=stratum.measure,
+            )
+        found.append(own)
+    return tuple(found)
+
+
+def planned_cells(plan: Plan, stratum: str) -> tuple[PlannedCell, ...]:
+    """Give the cells that a stratum was cut into, by their numbers.
+
+    Parameters
+    ----------
+    plan : Plan
+    stratum : str
+
+    Returns
+    -------
+    tuple of PlannedCell
+        Empty where the layout cut none.
+    """
+    cells = {
+        place.cell: PlannedCell(place.cell, place.cell_share, *place.cell_centre)
+        for place in plan.locations.of_class("random")
+        if place.stratum == stratum and place.cell_centre is not None
+    }
+    return tuple(cells[number] for number in sorted(cells))

@@ -42,6 +42,12 @@ def conditions(question: Question, needed: tuple[int, ...]) -> tuple[str, ...]:
             "The grid is sized as simple random and its interval computed as such: the grid gets "
             "no credit, and the interval is usually too wide."
         )
+    if question.cells:
+        lines.append(
+            "Compact strata are sized as random places, without credit; the interval will take "
+            "the credit that the results show. With 20 pilot results or more whose places are "
+            "known, --more space says how many locations that would save."
+        )
     chances = question.assurance is not None or question.pilots is not None
     if chances and question.target != "budget":
         lines += [_tails(question), *_few(question)]

@@ -107,6 +107,8 @@ class Question:
         Every unit of the list is visited.
     grid : bool
         A systematic layout, which is sized without credit.
+    cells : bool
+        A layout in compact cells, which is sized without credit but earns it in the estimate.
     equal_in : str
         What equal precision levels out between strata: the standard error of their means, or the
         same as a share of the mean.
@@ -135,6 +137,7 @@ class Question:
     locations: int | None = None
     census: bool = False
     grid: bool = False
+    cells: bool = False
     equal_in: EqualIn = "standard-error"
     also: "tuple[Question, ...]" = ()
     targeted: int = 0

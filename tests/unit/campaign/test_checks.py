@@ -141,7 +141,15 @@ BROKEN = [
     (
         [('"simple-random"', '"census"')],
         '16: design.layout: this layout does not suit a frame of kind "area" (got "census"). '
-        "Takes simple-random, stratified, square-grid, triangular-grid.",
+        "Takes simple-random, stratified, square-grid, triangular-grid, compact-strata.",
+    ),
+    (
+        [('"simple-random"', '"square-grid"\nper_cell = 2')],
+        '17: design.per_cell: this key belongs to layout = "compact-strata". Take it out.',
+    ),
+    (
+        [('"simple-random"', '"simple-random"\nvariance = "covariance"')],
+        '17: design.variance: this key belongs to layout = "compact-strata". Take it out.',
     ),
     (
         [('"simple-random"', '"stratified"')],

@@ -372,7 +372,7 @@ VALUES = [
     (
         ('"simple-random"', '"simple-randon"'),
         '16: design.layout: how locations are drawn; takes one of "simple-random", "stratified", '
-        '"square-grid", "triangular-grid", "census" (got "simple-randon"). '
+        '"square-grid", "triangular-grid", "compact-strata", "census" (got "simple-randon"). '
         'Did you mean "simple-random"?',
     ),
     (

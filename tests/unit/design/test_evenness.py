@@ -41,11 +41,21 @@ def test_each_layout_that_fits_is_measured_once() -> None:
     """Simple random does not fit a frame with strata, stratified not one without."""
     both = area_frame(meadow=MEADOW_POLYGON, yard=YARD_POLYGON)
     found = compare_layouts(both, COUNTS, seed=1, design="main")
-    assert [m.layout for m in found] == ["stratified", "square-grid", "triangular-grid"]
+    assert [m.layout for m in found] == [
+        "stratified",
+        "square-grid",
+        "triangular-grid",
+        "compact-strata",
+    ]
     assert {m.locations for m in found} == {21}
     one = area_frame(meadow=MEADOW_POLYGON)
     found = compare_layouts(one, COUNTS[:1], seed=1, design="main")
-    assert [m.layout for m in found] == ["simple-random", "square-grid", "triangular-grid"]
+    assert [m.layout for m in found] == [
+        "simple-random",
+        "square-grid",
+        "triangular-grid",
+        "compact-strata",
+    ]
 
 
 def test_grids_keep_neighbours_farther_apart_than_chance_does() -> None:
@@ -67,9 +77,10 @@ def test_a_layout_that_cannot_be_drawn_says_why_and_spares_the_others() -> None:
     square = SQUARE_GRID.spacing(MEADOW_POLYGON.area, 40)
     spacing = round(square + 0.5, 1)  # finer than triangles stand, coarser than squares do
     found = compare_layouts(frame, counts, seed=1, design="main", minimum_spacing_m=spacing)
-    assert [bool(m.problem) for m in found] == [True, True, False]
+    assert [bool(m.problem) for m in found] == [True, True, False, True]
     assert "room for" in found[0].problem
     assert f"minimum_spacing_m = {spacing:g}" in found[1].problem
+    assert "in its 40 cells" in found[3].problem
 
 
 def test_a_list_has_nothing_to_compare() -> None:
