@@ -279,9 +279,11 @@ def _assumptions(asked: Asked, size: Size, compared: _Compared) -> tuple[str, ..
     if question.grid:
         lines.append("A grid is priced as random places are: its evenness earns no credit here.")
     if "places spread out" in compared.rows:
+        laid = asked.campaign.design[0].layout == "compact-strata"
         lines.append(
             "Places spread out, one in each of n compact parts, save what the positions of the "
-            "pilot predict; --more space says how sure that is. This plan does not lay them so."
+            "pilot predict; --more space says how sure that is. This plan "
+            + ("lays them so, and its n takes no credit." if laid else "does not lay them so.")
         )
     if "no strata" in compared.rows:
         lines.append(
