@@ -87,6 +87,16 @@ _A_FILE = click.Path(path_type=Path, dir_okay=False)
     help="Change this rule after results.",
 )
 @click.option(
+    "--mean-interval",
+    type=click.Choice(["student-t", "skew-widened"]),
+    help="Change this rule after results.",
+)
+@click.option(
+    "--promised-class",
+    type=click.Choice(["cv-up-to-1", "cv-up-to-2"]),
+    help="Change this rule after results.",
+)
+@click.option(
     "--duplicates",
     type=click.Choice(["average", "first"]),
     help="Change this rule after results.",
@@ -179,7 +189,9 @@ def _beside(packet: Path) -> Path:
 
 
 def _overrides(options: dict[str, Any]) -> dict[str, str | float]:
-    names = ("interval", "confidence", "duplicates", "single_result")
+    names = (
+        "interval", "confidence", "mean_interval", "promised_class", "duplicates", "single_result"
+    )  # fmt: skip
     return {name: options[name] for name in names if options[name] is not None}
 
 

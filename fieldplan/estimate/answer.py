@@ -16,11 +16,19 @@ from fieldplan.estimate.planned import planned_for
 from fieldplan.estimate.population import is_census, outside_sentence, population_sentence
 from fieldplan.estimate.rejected import rejected_sentence
 from fieldplan.estimate.sentences import answer_sentences
+from fieldplan.estimate.widened import recorded_reach
 from fieldplan.estimate.working import working
 from fieldplan.plan.model import Plan
 from fieldplan.returns.model import Returns
 
-CHANGEABLE = ("interval", "confidence", "single_result", "duplicates")
+CHANGEABLE = (
+    "interval",
+    "confidence",
+    "mean_interval",
+    "promised_class",
+    "single_result",
+    "duplicates",
+)
 """Rules that may be changed after results, each with both answers printed."""
 
 
@@ -39,8 +47,9 @@ def estimate(
     returns : Returns
         Reconciled by the recorded rules.
     overrides : mapping of str to (str or float), optional
-        Rules to change after results: ``interval``, ``confidence``, ``single_result``,
-        ``duplicates``. The recorded answer is kept beside the changed one.
+        Rules to change after results: ``interval``, ``confidence``, ``mean_interval``,
+        ``promised_class``, ``single_result``, ``duplicates``. The recorded answer is kept beside
+        the changed one.
     returns_changed : Returns, optional
         Reconciled with the changed rule for duplicates; needed when that rule is changed.
 
@@ -81,7 +90,9 @@ def estimate(
         bracket=means.bracket,
         planned_standard_error=planned.standard_error,
         achieved_standard_error=means.half.standard_error,
-        why_different=difference_sentences(plan, means.half, planned=planned),
+        why_different=difference_sentences(
+            plan, means.half, planned=planned, reach=recorded_reach(plan, means)
+        ),
         level_sentence=level,
         population_sentence=population,
         coverage_sentence=coverage_sentence(plan, means),
@@ -165,8 +176,9 @@ def changed_rules(
         given = ", ".join(f"{name} = {value}" for name, value in different.items())
         message = (
             f"{given}: this cannot stand in place of the recorded rule. confidence lies between "
-            "0.5 and 1; interval is two-sided, upper-limit or lower-limit; duplicates is average "
-            "or first; single_result is refuse or borrow-spread."
+            "0.5 and 1; interval is two-sided, upper-limit or lower-limit; mean_interval is "
+            "student-t or skew-widened; promised_class is cv-up-to-1 or cv-up-to-2; duplicates is "
+            "average or first; single_result is refuse or borrow-spread."
         )
         raise DesignError(message) from fault
     return rules, tuple(different)
@@ -188,8 +200,8 @@ def _changes(
     return tuple(
         Change(
             rule=name,
-            recorded=str(getattr(recorded, name)),
-            used=str(getattr(rules, name)),
+            recorded=str(getattr(recorded, name) or "not set"),
+            used=str(getattr(rules, name) or "not set"),
             interval_recorded=before.interval if before else None,
             mean_recorded=before.half.mean if before else None,
             refusal_recorded=refusal,

@@ -9,6 +9,8 @@ from fieldplan.base.units import significant
 from fieldplan.design.model import StratumValues
 from fieldplan.estimate.means import Means
 from fieldplan.estimate.population import is_census
+from fieldplan.estimate.widened import is_widened
+from fieldplan.estimate.widened_steps import widened_coverage_sentence
 from fieldplan.lab.words import listed
 from fieldplan.plan.model import Plan
 from fieldplan.stats.distributions import t_share
@@ -108,6 +110,8 @@ def coverage_sentence(plan: Plan, means: Means) -> str:
             "Nobody drew which units are missing, so no share of campaigns can be given in which "
             "such an interval holds the true mean."
         )
+    if is_widened(means.rules):
+        return widened_coverage_sentence(means)
     parts = (_by_skewness(means), _short_list(means), _borrowed(means), _promise(plan, means))
     return " ".join(part for part in parts if part)
 

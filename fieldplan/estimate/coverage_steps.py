@@ -5,6 +5,8 @@ import numpy as np
 from fieldplan.base.working import Quantity, Step
 from fieldplan.estimate.coverage import equivalent_sample
 from fieldplan.estimate.means import Means
+from fieldplan.estimate.widened import is_widened
+from fieldplan.estimate.widened_steps import widened_held_steps
 from fieldplan.stats.shape import t_coverage
 
 SIMULATED = (
@@ -29,6 +31,8 @@ def coverage_steps(means: Means, unit: str) -> list[Step]:
         Empty where no share is given: standard error 0, or a confidence beyond the table.
     """
     rules = means.rules
+    if is_widened(rules):
+        return widened_held_steps(means) if means.half.standard_error > 0 else []
     if means.half.standard_error == 0 or rules.confidence > 0.99:
         return []
     n, skewness = equivalent_sample(means)

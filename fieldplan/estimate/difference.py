@@ -97,7 +97,9 @@ def split_difference(plan: Plan, mean: MeanEstimate, *, planned: Planned) -> Dif
     )
 
 
-def difference_sentences(plan: Plan, mean: MeanEstimate, *, planned: Planned) -> tuple[str, ...]:
+def difference_sentences(
+    plan: Plan, mean: MeanEstimate, *, planned: Planned, reach: float | None = None
+) -> tuple[str, ...]:
     """Say in sentences whether the campaign kept its promise, and why not.
 
     Parameters
@@ -105,13 +107,18 @@ def difference_sentences(plan: Plan, mean: MeanEstimate, *, planned: Planned) ->
     plan : Plan
     mean : MeanEstimate
     planned : Planned
+    reach : float or None
+        Half-width of the recorded interval where that is none of Student's t.
 
     Returns
     -------
     tuple of str
     """
     lines = [_promise(plan, mean, planned=planned)]
-    lines += [_kept(plan, mean, target=target, unit=planned.unit) for target in planned.targets]
+    lines += [
+        _kept(plan, mean, target=target, unit=planned.unit, reach=reach)
+        for target in planned.targets
+    ]
     parts = split_difference(plan, mean, planned=planned)
     if parts is None:
         return tuple(line for line in lines if line)
@@ -148,14 +155,14 @@ def _promise(plan: Plan, mean: MeanEstimate, *, planned: Planned) -> str:
     )
 
 
-def _kept(plan: Plan, mean: MeanEstimate, *, target: Target, unit: str) -> str:
+def _kept(plan: Plan, mean: MeanEstimate, *, target: Target, unit: str, reach: float | None) -> str:
     """Say whether a target was kept, by the confidence that it was set at."""
     if target.standard_error is not None:
         asked, reached = target.standard_error, mean.standard_error
     elif target.half_width is not None:
         kind: IntervalKind = plan.campaign.rules.interval
         t = t_quantile(mean.degrees_of_freedom, confidence=plan.size.confidence, kind=kind)
-        asked, reached = target.half_width, t * mean.standard_error
+        asked, reached = target.half_width, t * mean.standard_error if reach is None else reach
     else:
         return ""
     kept = "kept" if reached <= asked * (1 + 1e-9) else "missed"

@@ -5,6 +5,7 @@ from collections.abc import Sequence
 from fieldplan.base.units import significant
 from fieldplan.estimate.means import Means
 from fieldplan.estimate.model import Change, Interval
+from fieldplan.estimate.widened import widened_sentence
 from fieldplan.plan.model import Plan
 
 
@@ -91,6 +92,7 @@ def answer_sentences(
     lines = [
         answer,
         _changed_sentence(changes, unit),
+        widened_sentence(means),
         standing,
         _bracket_sentence(means, unit),
         rejected,

@@ -5,6 +5,8 @@ import math
 from fieldplan.base.working import Quantity, Step
 from fieldplan.design.model import StratumEstimate, StratumValues
 from fieldplan.estimate.means import Means
+from fieldplan.estimate.widened import is_widened
+from fieldplan.estimate.widened_steps import widened_steps
 from fieldplan.stats.intervals import t_quantile
 from fieldplan.stats.stratified import variance_parts
 
@@ -35,7 +37,8 @@ def working(means: Means, unit: str) -> tuple[Step, ...]:
         steps.append(_weighted_mean(means, unit))
     steps.append(_standard_error(means, unit))
     if means.half.standard_error > 0:
-        steps += _interval_steps(means, unit)
+        widened = is_widened(means.rules)
+        steps += widened_steps(means, unit) if widened else _interval_steps(means, unit)
     return tuple(steps)
 
 

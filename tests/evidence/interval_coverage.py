@@ -1,10 +1,8 @@
 """Coverage and width of the intervals for a mean, by simulation; outside CI.
 
-``python -m tests.evidence.interval_coverage`` prints the table of docs/evidence/intervals.md.
-``--repetitions`` sets the campaigns a cell; the standard error of a cell is √(p (1 − p) / R).
+``python -m tests.evidence.interval_table`` prints the table of docs/evidence/intervals.md.
 """
 
-import argparse
 import math
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
@@ -12,25 +10,29 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldplan.stats.intervals import t_quantile
+from fieldplan.stats.intervals import IntervalKind, t_quantile
 from fieldplan.stats.skew_interval import hall_factor, skew_factors
 
 Array = NDArray[np.float64]
 Draw = Callable[[np.random.Generator, tuple[int, int]], Array]
 SIZES = (5, 8, 10, 15, 20, 30, 50, 100, 200)
-BLOCK = 2_000_000
+BLOCK = 200_000
 """Numbers drawn at once, so that memory stays bounded."""
 
 
 @dataclass(frozen=True)
 class Population:
-    """A population with its true mean; ``cv`` and ``zeros`` place it in a class."""
+    """A population with its true mean; ``cv``, ``zeros`` and ``hot`` place it in a class.
+
+    ``hot`` is the share of a separate part with high values, None where there is none.
+    """
 
     name: str
     mean: float
     cv: float
     zeros: float
     draw: Draw
+    hot: float | None = None
 
 
 def gamma(cv: float) -> Population:
@@ -73,7 +75,9 @@ def with_zeros(inner: Population, zeros: float) -> Population:
         return np.where(rng.random(shape) < zeros, 0.0, inner.draw(rng, shape))
 
     cv = math.sqrt((1 + inner.cv**2) / (1 - zeros) - 1)
-    return Population(f"{zeros:.0%} zeros, {inner.name}", inner.mean * (1 - zeros), cv, zeros, draw)
+    hot = None if inner.hot is None else inner.hot * (1 - zeros)
+    name = f"{zeros:.0%} zeros, {inner.name}"
+    return Population(name, inner.mean * (1 - zeros), cv, zeros, draw, hot)
 
 
 def two_parts(share: float, times: float, cv: float) -> Population:
@@ -85,9 +89,8 @@ def two_parts(share: float, times: float, cv: float) -> Population:
     def draw(rng: np.random.Generator, shape: tuple[int, int]) -> Array:
         return inner.draw(rng, shape) * np.where(rng.random(shape) < share, times, 1.0)
 
-    return Population(
-        f"{share:.0%} times {times:g}", mean, math.sqrt(second / mean**2 - 1), 0.0, draw
-    )
+    found = math.sqrt(second / mean**2 - 1)
+    return Population(f"{share:.0%} times {times:g}", mean, found, 0.0, draw, share)
 
 
 def normal(cv: float) -> Population:
@@ -120,82 +123,83 @@ def moments(values: Array) -> tuple[Array, Array, Array]:
     """Give mean, s and skewness g1 of every row."""
     mean = values.mean(axis=1)
     centred = values - mean[:, None]
-    second = (centred**2).mean(axis=1)
-    third = (centred**3).mean(axis=1)
+    square = centred * centred
     n = values.shape[1]
+    second = square.sum(axis=1) / n
+    third = np.einsum("ij,ij->i", square, centred) / n
     safe = np.where(second > 0, second, 1.0)
     return mean, np.sqrt(second * n / (n - 1)), np.where(second > 0, third / safe**1.5, 0.0)
 
 
-def limits(rule: str, n: int, kind: str, found: tuple[Array, Array, Array]) -> tuple[Array, Array]:
-    """Give low and high ends of a rule, open ones too."""
-    mean, deviation, skewness = found
-    t = t_quantile(n - 1, confidence=0.95, kind=kind)
-    error = deviation / math.sqrt(n)
+Found = tuple[Array, Array, Array]
+
+
+def limits(
+    rule: str, n: int, kind: IntervalKind, found: Found, *, confidence: float = 0.95
+) -> tuple[Array, Array]:
+    """Give how many standard errors below and above the mean the ends of a rule lie."""
+    _, deviation, skewness = found
+    t, root = t_quantile(n - 1, confidence=confidence, kind=kind), math.sqrt(n)
     if rule == "Student t":
-        return mean - t * error, mean + t * error
+        return np.full(deviation.shape, -t), np.full(deviation.shape, t)
     if rule == "Hall":
-        root = math.sqrt(n)
-        return (
-            mean + hall_factor(-t, skewness / root) * error,
-            mean + hall_factor(t, skewness / root) * error,
-        )
+        return hall_factor(-t, skewness / root), hall_factor(t, skewness / root)
     if rule == "Chebyshev":
-        factor = math.sqrt(20) if kind == "two-sided" else math.sqrt(19)
-        return mean - factor * error, mean + factor * error
+        share = 1 - confidence
+        factor = math.sqrt(1 / share) if kind == "two-sided" else math.sqrt(1 / share - 1)
+        return np.full(deviation.shape, -factor), np.full(deviation.shape, factor)
+    mean = found[0]
     variation = np.where(mean > 0, deviation / np.where(mean > 0, mean, 1.0), 0.0)
-    below, above = skew_factors(
-        n, skewness, variation, population_class=rule, confidence=0.95, kind=kind
+    return skew_factors(
+        n, skewness, variation, population_class=rule, confidence=confidence, kind=kind
     )
-    return mean + below * error, mean + above * error
+
+
+def drawn(population: Population, n: int, *, repetitions: int, seed: int) -> Iterator[Found]:
+    """Draw samples in blocks and give their moments."""
+    rng = np.random.default_rng([seed, n])
+    done = 0
+    while done < repetitions:
+        rows = min(repetitions - done, max(1, BLOCK // n))
+        yield moments(population.draw(rng, (rows, n)))
+        done += rows
+
+
+def held(
+    population: Population,
+    rule: str,
+    n: int,
+    kind: IntervalKind,
+    *,
+    found: Found,
+    confidence: float,
+) -> tuple[int, float]:
+    """Count the samples whose interval holds the mean, and add up their widths over s/√n."""
+    mean, deviation, _ = found
+    below, above = limits(rule, n, kind, found, confidence=confidence)
+    error = deviation / math.sqrt(n)
+    low = mean + below * error <= population.mean
+    high = population.mean <= mean + above * error
+    if kind == "upper-limit":
+        return int(high.sum()), float(above.sum())
+    if kind == "lower-limit":
+        return int(low.sum()), float(-below.sum())
+    return int((low & high).sum()), float((above - below).sum() / 2)
 
 
 def cell(
-    population: Population, n: int, rule: str, kind: str, *, repetitions: int, seed: int
+    population: Population,
+    n: int,
+    rule: str,
+    kind: IntervalKind,
+    *,
+    repetitions: int,
+    seed: int,
+    confidence: float = 0.95,
 ) -> tuple[float, float]:
-    """Give coverage and mean width over the ideal normal width of one cell."""
-    rng = np.random.default_rng([seed, n])
-    held, width, done = 0, 0.0, 0
-    while done < repetitions:
-        rows = min(repetitions - done, max(1, BLOCK // n))
-        found = moments(population.draw(rng, (rows, n)))
-        low, high = limits(rule, n, kind, found)
-        if kind == "two-sided":
-            held += int(((low <= population.mean) & (population.mean <= high)).sum())
-            width += float((high - low).sum())
-        else:
-            held += int((population.mean <= high).sum())
-            width += float((high - found[0]).sum())
-        done += rows
-    return held / repetitions, width / repetitions
-
-
-def worst(rule: str, members: list[Population], n: int, kind: str, repetitions: int) -> str:
-    """Give the lowest coverage over a class, and the mean width over Chebyshev's."""
-    cells = [cell(p, n, rule, kind, repetitions=repetitions, seed=k) for k, p in enumerate(members)]
-    bound = [
-        cell(p, n, "Chebyshev", kind, repetitions=repetitions // 10, seed=k)
-        for k, p in enumerate(members)
-    ]
-    ratio = np.mean([a[1] / b[1] for a, b in zip(cells, bound, strict=True)])
-    return f"{100 * min(c[0] for c in cells):.1f} ({ratio:.2f})"
-
-
-def main() -> None:
-    """Print the table: worst coverage and width over Chebyshev's, by rule, class and n."""
-    parser = argparse.ArgumentParser(description=__doc__)
-    parser.add_argument("--repetitions", type=int, default=60_000)
-    repetitions = parser.parse_args().repetitions
-    print("| class | rule | kind | " + " | ".join(f"n = {n}" for n in SIZES) + " |")
-    print("| --- | --- | --- |" + " ---: |" * len(SIZES))
-    for name in ("cv-up-to-1", "cv-up-to-2"):
-        members = [p for p in populations() if of_class(p, name)]
-        for kind in ("two-sided", "upper-limit"):
-            for rule in (name, "Hall", "Student t"):
-                cells = [worst(rule, members, n, kind, repetitions) for n in SIZES]
-                label = "skew-widened" if rule == name else rule
-                print(f"| {name} ({len(members)}) | {label} | {kind} | {' | '.join(cells)} |")
-
-
-if __name__ == "__main__":
-    main()
+    """Give coverage, and the mean half-width in standard errors, of one cell."""
+    counted, width = 0, 0.0
+    for found in drawn(population, n, repetitions=repetitions, seed=seed):
+        more, wider = held(population, rule, n, kind, found=found, confidence=confidence)
+        counted, width = counted + more, width + wider
+    return counted / repetitions, width / repetitions

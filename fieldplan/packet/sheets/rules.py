@@ -16,14 +16,27 @@ DUPLICATES = {
     "first": "the first sample of a location counts; its duplicate is for quality control only",
 }
 INTERVALS = {
-    "two-sided": "an interval with two ends, from Student's t",
-    "upper-limit": "one upper limit, from Student's t",
-    "lower-limit": "one lower limit, from Student's t",
+    "two-sided": "an interval with two ends",
+    "upper-limit": "one upper limit",
+    "lower-limit": "one lower limit",
 }
-LONG_RUN = (
-    "nominal: where the mean is near normal, this share of such intervals or limits holds the true "
-    "mean in the long run"
-)
+MEAN_INTERVALS = {
+    "student-t": "its ends are set by Student's t",
+    "skew-widened": "its ends are set wider for skewed results, so far as the class needs it",
+}
+CLASSES = {
+    None: "none is needed for Student's t",
+    "cv-up-to-1": "populations without zeros whose standard deviation is no larger than the mean, "
+    "and without a separate high part that the results may miss",
+    "cv-up-to-2": "populations with at most half zeros and a standard deviation up to twice the "
+    "mean, and without a separate high part that the results may miss",
+}
+LONG_RUNS = {
+    "student-t": "nominal: where the mean is near normal, this share of such intervals or limits "
+    "holds the true mean in the long run",
+    "skew-widened": "nominal: about this share of such intervals or limits holds the true mean in "
+    "the long run, in every population of the promised class",
+}
 UNVERIFIED = (
     "Who fixed the rules, and when, is stated in the campaign file; this tool cannot verify it. "
     "Lodge the fingerprint with somebody outside before field work: whoever holds it can show that "
@@ -73,7 +86,9 @@ def rules_table(rules: Rules) -> Table:
             ("non_detects", rules.non_detects, NON_DETECTS[rules.non_detects]),
             ("duplicates", rules.duplicates, DUPLICATES[rules.duplicates]),
             ("interval", rules.interval, INTERVALS[rules.interval]),
-            ("confidence", f"{rules.confidence:g}", LONG_RUN),
+            ("confidence", f"{rules.confidence:g}", LONG_RUNS[rules.mean_interval]),
+            ("mean_interval", rules.mean_interval, MEAN_INTERVALS[rules.mean_interval]),
+            ("promised_class", rules.promised_class or BLANK, CLASSES[rules.promised_class]),
             (
                 "promised_for",
                 rules.promised_for or BLANK,
