@@ -6,6 +6,7 @@ from typing import Any, TypeGuard
 from fieldplan.campaign.composite_checks import composite_problems
 from fieldplan.campaign.facts import FACTS
 from fieldplan.campaign.interval_checks import interval_problems
+from fieldplan.campaign.line_checks import line_problems
 from fieldplan.campaign.money_checks import PER_PLACE, money_problems
 from fieldplan.campaign.problems import Problem, accepted, meaning, near_miss, shown
 from fieldplan.campaign.question_checks import needs_sigma, question_problems
@@ -351,6 +352,7 @@ _RULES: tuple[Callable[[Data], Iterator[Problem]], ...] = (
     _plan,
     _analytes,
     _frames,
+    line_problems,
     _columns,
     _designs,
     _objectives,

@@ -2,7 +2,6 @@
 
 _LATER_VALUES: dict[tuple[str, str], dict[str, str]] = {
     ("frame", "kind"): {
-        "line": "frames along lines such as shores and reaches",
         "volume": "frames of volumes such as stockpiles and water bodies",
         "time": "frames of time such as days of discharge",
     },
@@ -43,8 +42,8 @@ def later_value(table: str, key: str, value: object) -> str | None:
 
     Examples
     --------
-    >>> later_value("frame", "kind", "line"), later_value("frame", "kind", "site")
-    ('frames along lines such as shores and reaches', None)
+    >>> later_value("frame", "kind", "time"), later_value("frame", "kind", "site")
+    ('frames of time such as days of discharge', None)
     """
     if not isinstance(value, str):
         return None

@@ -35,13 +35,15 @@ MEANING: dict[str, str] = {
     # [[frame]]
     "frame": "the population that the mean shall speak for",
     "frame.id": "identifier of the frame",
-    "frame.kind": "whether locations are places in an area or members of a list",
+    "frame.kind": "whether locations are places in an area or along lines, or members of a list",
     "frame.boundary": "file with the outline of the site",
     "frame.boundary_assumed": "whether the outline is a circle or a sketch; stamped ASSUMED",
     "frame.crs": "coordinate reference system of files that do not name one, such as EPSG:25832",
     "frame.strata": "file with one polygon or more for each stratum",
-    "frame.stratum_column": "column of the strata file or the list that names the stratum",
+    "frame.stratum_column": "column of the strata file, list or lines that names the stratum",
     "frame.list_file": "CSV of all members of the population: wells, outfalls, plots, stations",
+    "frame.line_file": "file with the lines of the population: rivers, shores, ditches",
+    "frame.branch_column": "column of the file of lines that names the branch",
     "frame.columns": (
         "names of the columns of the list, or of corners: ours on the left, the file's on the right"
     ),
@@ -49,7 +51,7 @@ MEANING: dict[str, str] = {
     "frame.exclusion.file": "file with the polygons, lines or points that are left out",
     "frame.exclusion.buffer_m": "metres around them that are left out as well",
     "frame.exclusion.reason": "why this part is left out",
-    "frame.inset_m": "metres that locations keep from the edge of the site",
+    "frame.inset_m": "metres that locations keep from the edge of the site, or a line's free ends",
     "frame.accept_shift_accuracy_m": "metres of doubt accepted in the datum shift of the files",
     "frame.unit_is": "what one location of the population is, in words",
     "frame.depth_top_m": "top of the sampled interval in metres below the datum",
@@ -77,6 +79,7 @@ MEANING: dict[str, str] = {
     "design.alternates": "places in reserve per stratum, drawn at the same time",
     "design.minimum_spacing_m": "metres that two locations keep apart at least",
     "design.exact_count": "whether a grid is drawn again until it has the planned count",
+    "design.starts": "independent random starts of even-spacing; two or more yield a variance",
     "design.locations": "number of locations fixed by hand instead of by the target",
     "design.increments": "increments in each composite; 1 where every result is its own sample",
     "design.increments_at": (

@@ -87,13 +87,15 @@ class FrameTable(Table):
     """``[[frame]]``: the population that the mean shall speak for."""
 
     id: Identifier = "site"
-    kind: Literal["area", "list"]
+    kind: Literal["area", "list", "line"]
     boundary: str | None = None
     boundary_assumed: bool = False
     crs: str | None = None
     strata: str | None = None
     stratum_column: str = "stratum"
     list_file: str | None = None
+    line_file: str | None = None
+    branch_column: str = "branch"
     columns: Mapping[str, str] = {}
     exclusion: tuple[Exclusion, ...] = ()
     inset_m: NonNegativeNumber = 0.0
@@ -125,6 +127,7 @@ class DesignTable(Table):
         "square-grid",
         "triangular-grid",
         "compact-strata",
+        "even-spacing",
         "census",
     ]
     per_cell: Literal[1, 2] = 1
@@ -139,6 +142,7 @@ class DesignTable(Table):
     alternates: Annotated[int, Field(ge=0)] = 0
     minimum_spacing_m: NonNegativeNumber = 0.0
     exact_count: bool = True
+    starts: Annotated[int, Field(ge=1, le=100)] = 1
     locations: Annotated[int, Field(ge=2)] | None = None
     increments: Annotated[int, Field(ge=1, le=1000)] | Literal["choose"] = 1
     increments_at: Literal["own-places", "one-place"] = "own-places"

@@ -11,7 +11,7 @@ from pydantic import BaseModel
 
 from fieldplan.campaign.model import Campaign
 
-PATH_KEYS = frozenset({"boundary", "strata", "list_file", "file", "pilot"})
+PATH_KEYS = frozenset({"boundary", "strata", "list_file", "line_file", "file", "pilot"})
 """Keys whose value names a file, relative to the campaign file."""
 
 Kind = Literal["table", "tables", "mapping", "texts", "date", "file", "value"]

@@ -37,5 +37,6 @@ def problems(table: dict[str, Any], data: dict[str, Any]) -> Iterator[tuple[str,
         got = "both" if "share" in table else "neither"
         yield "share", f"needs exactly one of share and units (got {got}). Keep one."
     kinds = [frame.get("kind") for frame in tables(data, "frame")]
-    if "units" in table and "share" not in table and kinds[:1] == ["area"]:
-        yield "units", "an area has no units to count. Write share in its place."
+    if "units" in table and "share" not in table and kinds[:1] in (["area"], ["line"]):
+        what = "a line has" if kinds[0] == "line" else "an area has"
+        yield "units", f"{what} no units to count. Write share in its place."

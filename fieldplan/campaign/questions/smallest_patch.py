@@ -44,3 +44,5 @@ def problems(table: dict[str, Any], data: dict[str, Any]) -> Iterator[tuple[str,
     kinds = [frame.get("kind") for frame in data.get("frame", []) if isinstance(frame, dict)]
     if "list" in kinds:
         yield "length_m", "a list has no area that a patch could lie in. Take the table out."
+    elif "line" in kinds:
+        yield "length_m", "a line has no area that a patch could lie in. Take the table out."

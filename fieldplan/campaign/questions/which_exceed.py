@@ -30,7 +30,8 @@ def problems(table: dict[str, Any], data: dict[str, Any]) -> Iterator[tuple[str,
         The whole file.
     """
     kinds = [frame.get("kind") for frame in data.get("frame", []) if isinstance(frame, dict)]
-    if kinds and kinds[0] == "area":
-        yield "share", "an area has no units to tell apart. Ask it of a list."
+    if kinds and kinds[0] in ("area", "line"):
+        what = "a line has" if kinds[0] == "line" else "an area has"
+        yield "share", f"{what} no units to tell apart. Ask it of a list."
     if table.get("largest_pool") == 1:
         yield "largest_pool", "one unit is no pool (got 1). Write 2 or more, or take it out."

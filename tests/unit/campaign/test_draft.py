@@ -90,6 +90,7 @@ def test_one_open_value_leaves_the_rest_known(tmp_path, name):
         assert name.count(".") > 1 or name in {"objective.assurance", "objective.assurance_chosen_by", "sigma.value",
                         "objective.standard_error", "objective.half_width", "sigma.from_results",
                         "objective.relative_half_width", "qc.share", "frame.list_file",
+                        "frame.line_file", "frame.branch_column",
                         "analyte.action_level", "frame.depth_top_m", "field_reading.pilot",
                         "cost.per_crew_day", "cost.locations_per_day", "cost.wrongly_acted",
                         "cost.wrongly_left", "objective.mean_from", "objective.mean_to",

@@ -74,7 +74,7 @@ def test_demo_sites_are_among_the_files_tested():
     [
         (("6.0", '"6.0"'), "$.objective[0].standard_error"),
         (("title =", "titel ="), "$.plan"),
-        (('"area"', '"line"'), "$.frame[0].kind"),
+        (('"area"', '"time"'), "$.frame[0].kind"),
         (("[[analyte]]", "[analyte]"), "$.analyte"),
         (("0.80", "80"), "$.objective[0].assurance"),
         (("assurance = 0.80\n", ""), "$.objective[0]"),
