@@ -163,26 +163,11 @@ def _together(question: Question, plain: tuple[int, ...]) -> Iterator[Step]:
         )
         for member, demand in zip(members, demands, strict=True)
     )
-    if question.allocation in CHOOSING:
-        shared = joint_balance(question)
-        least = "Σ c·n" if question.allocation == "cost-optimal" else "Σ n"
-        unrounded = shared.counts
-        formula = f"smallest {least} with Σ W²·s²·(1/n − 1/N) ≤ V for every analyte"
-        source = f"{BETHEL}, with whole numbers sought round the unrounded optimum"
-    else:
-        totals = [
-            unrounded_total(member.strata, demand.target_variance, allocation=question.allocation)
-            for member, demand in zip(members, demands, strict=True)
-        ]
-        unrounded = tuple(
-            unrounded_shares(question.sharing, max(totals), allocation=question.allocation)
-        )
-        formula = "smallest total with Σ W²·s²·(1/n − 1/N) ≤ V for every analyte"
-        source = f"{COCHRAN}, ch. 5A"
+    unrounded, least, source = _unrounded_together(question, [d.target_variance for d in demands])
     yield Step(
         symbol="n",
         meaning=f"Results that keep all {len(members)} targets, sigma at face value",
-        formula=formula,
+        formula=f"smallest {least} with Σ W²·s²·(1/n − 1/N) ≤ V for every analyte",
         inputs=tolerated,
         unrounded=math.fsum(unrounded),
         rounded=float(sum(plain)),
@@ -190,24 +175,34 @@ def _together(question: Question, plain: tuple[int, ...]) -> Iterator[Step]:
         source=source,
     )
     for k, part in enumerate(question.parts):
+        sigmas = (
+            Quantity(f"s({m.analyte})", "its standard deviation there", m.parts[k].sigma, m.unit)
+            for m in members
+        )
         yield Step(
             symbol=f"n({part.name})",
             meaning=f"Results in {part.name}; {ROUNDED[question.allocation]}",
             formula="part of the n above",
-            inputs=(
-                Quantity("W", f"share of {part.name}", part.weight),
-                *(
-                    Quantity(
-                        f"s({member.analyte})",
-                        "its standard deviation there",
-                        member.parts[k].sigma,
-                        member.unit,
-                    )
-                    for member in members
-                ),
-            ),
+            inputs=(Quantity("W", f"share of {part.name}", part.weight), *sigmas),
             unrounded=unrounded[k],
             rounded=float(plain[k]),
             unit="results",
             source=source,
         )
+
+
+def _unrounded_together(
+    question: Question, tolerated: list[float]
+) -> tuple[tuple[float, ...], str, str]:
+    """Give the counts before rounding, what is made small, and the source."""
+    if question.allocation in CHOOSING:
+        least = "Σ c·n" if question.allocation == "cost-optimal" else "Σ n"
+        source = f"{BETHEL}, with whole numbers sought round the unrounded optimum"
+        return joint_balance(question).counts, least, source
+    allocation = question.allocation
+    totals = [
+        unrounded_total(member.strata, variance, allocation=allocation)
+        for member, variance in zip(everyone(question), tolerated, strict=True)
+    ]
+    shares = unrounded_shares(question.sharing, max(totals), allocation=allocation)
+    return tuple(shares), "total", f"{COCHRAN}, ch. 5A"
