@@ -12,7 +12,10 @@ NEAR_NORMAL = (
 """Measured by simulation; docs/methods.md has the figures by target."""
 
 FEW = 5
-"""Pilots of fewer results a stratum are named where Neyman allocation follows them."""
+"""Pilots of fewer results a stratum are named where the allocation follows them."""
+
+FOLLOWED = {"neyman": "Neyman", "cost-optimal": "cost-optimal"}
+"""Allocations whose chance is too high for small pilots; that of equal precision is too low."""
 
 
 def conditions(question: Question, needed: tuple[int, ...]) -> tuple[str, ...]:
@@ -65,16 +68,17 @@ def _tails(question: Question) -> str:
 
 
 def _few(question: Question) -> list[str]:
-    """Say where a pilot is too small for the factor on Neyman counts."""
-    if question.allocation != "neyman" or len(question.parts) == 1 or question.pilots is None:
+    """Say where a pilot is too small for the factor on counts that follow it."""
+    if question.allocation not in FOLLOWED or len(question.parts) == 1 or question.pilots is None:
         return []
     few = [part for part in question.parts if (part.results or FEW) < FEW]
     if not few:
         return []
     where = named([f"{part.name} ({part.results})" for part in few])
+    followed = FOLLOWED[question.allocation]
     return [
-        f"Fewer than {FEW} results stand behind sigma in {where}, and Neyman allocation follows "
-        "them: simulated pilots of 3 or 4 near normal results a stratum kept a stated 80 % in 72 "
+        f"Fewer than {FEW} results stand behind sigma in {where}, and {followed} allocation "
+        "follows them: simulated pilots of 3 or 4 near normal results a stratum kept a stated 80 % in 72 "
         "to 80 % of campaigns."
     ]
 

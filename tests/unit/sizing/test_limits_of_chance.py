@@ -13,6 +13,7 @@ from scipy import stats
 from fieldplan.sizing.answer import answer
 from fieldplan.sizing.conditions import NEAR_NORMAL
 from fieldplan.sizing.counting import assured_counts
+from fieldplan.sizing.money import Prices
 from fieldplan.sizing.question import Part
 from fieldplan.stats.assurance import n_for_half_width_at_assurance
 from tests.unit.sizing.asking import ask, three, whole
@@ -147,8 +148,11 @@ def test_small_pilots_are_named_where_neyman_follows_them() -> None:
     )
     named = "Fewer than 5 results stand behind sigma in tip (4), and Neyman allocation follows them"
     assert named in " ".join(answer(ask(parts, 6.0, allocation="neyman")).conditions)
+    priced = ask(parts, 6.0, allocation="cost-optimal", prices=Prices("EUR", per_location=30.0))
+    assert "cost-optimal allocation follows them" in " ".join(answer(priced).conditions)
     for question in (
         ask(parts, 6.0),
+        ask(parts, 6.0, allocation="equal-precision"),
         ask(whole(results=3), 6.0),
         ask(three(results=5), 9.0, allocation="neyman"),
     ):
