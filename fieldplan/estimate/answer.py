@@ -12,7 +12,7 @@ from fieldplan.estimate.level import level_sentence
 from fieldplan.estimate.means import Means, means_by
 from fieldplan.estimate.model import Change, Estimate
 from fieldplan.estimate.order import standing_sentence
-from fieldplan.estimate.planned import planned_for
+from fieldplan.estimate.planned import Planned, planned_for
 from fieldplan.estimate.population import is_census, outside_sentence, population_sentence
 from fieldplan.estimate.rejected import rejected_sentence
 from fieldplan.estimate.sentences import answer_sentences
@@ -90,9 +90,7 @@ def estimate(
         bracket=means.bracket,
         planned_standard_error=planned.standard_error,
         achieved_standard_error=means.half.standard_error,
-        why_different=difference_sentences(
-            plan, means.half, planned=planned, reach=recorded_reach(plan, means)
-        ),
+        why_different=_differences(plan, means, planned),
         level_sentence=level,
         population_sentence=population,
         coverage_sentence=coverage_sentence(plan, means),
@@ -123,6 +121,11 @@ def _basis(
         message = "the rule for duplicates was changed; reconcile the results by it first."
         raise DesignError(message)
     return returns_changed
+
+
+def _differences(plan: Plan, means: Means, planned: Planned) -> tuple[str, ...]:
+    reach = recorded_reach(plan, means)
+    return difference_sentences(plan, means.half, planned=planned, reach=reach)
 
 
 def _steps(plan: Plan, means: Means, unit: str) -> tuple[Step, ...]:

@@ -41,43 +41,48 @@ def widened_steps(means: "Means", unit: str) -> list[Step]:
     list of Step
     """
     rules, values = means.rules, means.values[0].values
-    n = int(values.size)
-    t = t_quantile(n - 1, confidence=rules.confidence, kind=rules.interval)
-    level = (1 + rules.confidence) / 2 if rules.interval == "two-sided" else rules.confidence
+    t = t_quantile(int(values.size) - 1, confidence=rules.confidence, kind=rules.interval)
     skewness, variation = sample_shape(values)
-    second, third = (float(((values - values.mean()) ** power).mean()) for power in (2, 3))
-    steps = [
-        Step(
-            "t",
-            "Student's quantile",
-            "t(p, n − 1)",
-            (
-                Quantity("p", f"share for a confidence of {rules.confidence:g}", level),
-                Quantity("n", "results", n),
-            ),
-            t,
-            t,
-            source="Student 1908, Biometrika 6:1",
-        ),
-        Step(
-            "g",
-            "Skewness of the results",
-            "g = m3 / m2^1.5",
-            (
-                Quantity("m2", "mean squared distance from the mean", second, f"({unit})²"),
-                Quantity("m3", "mean cubed distance from the mean", third, f"({unit})³"),
-            ),
-            skewness,
-            skewness,
-            source="Joanes & Gill 1998, The Statistician 47:183 (g1)",
-        ),
-    ]
-    interval = means.interval
+    steps, interval = [_quantile(means, t), _skewness(means, unit, skewness)], means.interval
     if interval.low is not None:
         steps += _low_end(means, unit, t=t, skewness=skewness)
     if interval.high is not None:
-        steps += _high_end(means, unit, t=t, shape=(skewness, variation))
+        steps += [
+            _variation(means, unit, variation),
+            *_high_end(means, unit, t=t, shape=(skewness, variation)),
+        ]
     return steps
+
+
+def _quantile(means: "Means", t: float) -> Step:
+    rules, n = means.rules, int(means.values[0].values.size)
+    level = (1 + rules.confidence) / 2 if rules.interval == "two-sided" else rules.confidence
+    inputs = (
+        Quantity("p", f"share for a confidence of {rules.confidence:g}", level),
+        Quantity("n", "results", n),
+    )
+    source = "Student 1908, Biometrika 6:1"
+    return Step("t", "Student's quantile", "t(p, n − 1)", inputs, t, t, source=source)
+
+
+def _skewness(means: "Means", unit: str, skewness: float) -> Step:
+    off = means.values[0].values - means.values[0].values.mean()
+    second, third = float((off**2).mean()), float((off**3).mean())
+    inputs = (
+        Quantity("m2", "mean squared distance from the mean", second, f"({unit})²"),
+        Quantity("m3", "mean cubed distance from the mean", third, f"({unit})³"),
+    )
+    meaning, source = "Skewness of the results", "Joanes & Gill 1998, The Statistician 47:183 (g1)"
+    return Step("g", meaning, "g = m3 / m2^1.5", inputs, skewness, skewness, source=source)
+
+
+def _variation(means: "Means", unit: str, variation: float) -> Step:
+    inputs = (
+        Quantity("s", "standard deviation", means.half.strata[0].sd, unit),
+        Quantity("mean", "estimated mean", means.half.mean, unit),
+    )
+    meaning = "Coefficient of variation of the results"
+    return Step("c", meaning, "c = s / mean", inputs, variation, variation, source="definition")
 
 
 def _low_end(means: "Means", unit: str, *, t: float, skewness: float) -> list[Step]:
@@ -109,18 +114,6 @@ def _high_end(means: "Means", unit: str, *, t: float, shape: tuple[float, float]
     factor = float(hall_factor(t, raised / n**0.5)) * wide.stretched(n)
     sign = "−" if wide.cubic < 0 else "+"
     return [
-        Step(
-            "c",
-            "Coefficient of variation of the results",
-            "c = s / mean",
-            (
-                Quantity("s", "standard deviation", means.half.strata[0].sd, unit),
-                Quantity("mean", "estimated mean", means.half.mean, unit),
-            ),
-            variation,
-            variation,
-            source="definition",
-        ),
         Step(
             "G",
             f"Skewness raised to what {name} may hide from {n} results",
