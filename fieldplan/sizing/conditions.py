@@ -78,8 +78,8 @@ def _few(question: Question) -> list[str]:
     followed = FOLLOWED[question.allocation]
     return [
         f"Fewer than {FEW} results stand behind sigma in {where}, and {followed} allocation "
-        "follows them: simulated pilots of 3 or 4 near normal results a stratum kept a stated 80 % in 72 "
-        "to 80 % of campaigns."
+        "follows them: simulated pilots of 3 or 4 near normal results a stratum kept a stated 80 % "
+        "in 72 to 80 % of campaigns."
     ]
 
 

@@ -7,6 +7,7 @@ the least money) where the allocation may choose; where it may not, with the sma
 import math
 from collections.abc import Callable, Sequence
 from dataclasses import replace
+from functools import lru_cache
 from typing import TYPE_CHECKING, Any
 
 from fieldplan.base.errors import DesignError
@@ -227,7 +228,8 @@ def _trimmed(question: Question, counts: list[int]) -> list[int]:
     return counts
 
 
-def alone(member: Question) -> list[int]:
+@lru_cache(maxsize=64)
+def alone(member: Question) -> tuple[int, ...]:
     """Count the results that one analyte would need without the others.
 
     Raises
@@ -238,7 +240,7 @@ def alone(member: Question) -> list[int]:
     from fieldplan.sizing.counting import needed_counts
 
     try:
-        return needed_counts(member)
+        return tuple(needed_counts(member))
     except DesignError as fault:
         raise DesignError(*(f"{member.analyte}: {line}" for line in fault.problems)) from fault
 
@@ -265,6 +267,7 @@ def demand_of(member: Question, own: Sequence[int] | None = None) -> "Demand":
     return Demand(sigmas, (width / t) ** 2, member.analyte)
 
 
+@lru_cache(maxsize=64)
 def joint_balance(question: Question) -> "Balance":
     """Weigh the analytes that decide against each other, before any rounding."""
     from fieldplan.stats.several_analytes import balance
