@@ -7,6 +7,7 @@ from functools import lru_cache
 import numpy as np
 import shapely
 from numpy.typing import NDArray
+from shapely.geometry.base import BaseGeometry
 
 from fieldplan.base.draws import Stream
 from fieldplan.base.errors import DesignError
@@ -46,11 +47,14 @@ class CutStratum:
         Area of each cell over that of the stratum.
     quotas : ndarray of int, shape (k,)
         Locations planned in each.
+    polygons : tuple of geometry
+        The cells in metres.
     """
 
     cells: Cells
     shares: NDArray[np.float64]
     quotas: Whole
+    polygons: tuple[BaseGeometry, ...]
 
     def place(
         self, stratum: str, order: int, location_class: LocationClass, spot: Sequence[int]
@@ -99,10 +103,11 @@ def cut_stratum(ground: Ground, planned: int, *, per_cell: int) -> CutStratum:
     """
     count = max(1, planned // per_cell)
     cells = compact_cells(ground, count)
-    areas = shapely.area(np.array(cell_polygons(ground, cells), dtype=object))
+    polygons = cell_polygons(ground, cells)
+    areas = shapely.area(np.array(polygons, dtype=object))
     quotas = np.full(count, planned // count, dtype=np.int64)
     quotas[0] += planned - int(quotas.sum())
-    return CutStratum(cells, areas / areas.sum(), quotas)
+    return CutStratum(cells, areas / areas.sum(), quotas, polygons)
 
 
 @dataclass(frozen=True)

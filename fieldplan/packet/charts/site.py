@@ -7,8 +7,9 @@ import numpy as np
 
 from fieldplan.base.document import Figure
 from fieldplan.packet.drawing import NARROW_MM, WIDE_MM, mm_axes, new_figure, pens, svg_text
+from fieldplan.packet.maps.cells import plan_grounds
 from fieldplan.packet.maps.content import Entry, MapContent, plan_content
-from fieldplan.packet.maps.ground import Ground, draw_grounds, grounds
+from fieldplan.packet.maps.ground import Ground, draw_grounds
 from fieldplan.packet.maps.legend import draw_entry, within
 from fieldplan.packet.maps.names import draw_names, draw_plate, mark_centres, unplaced_names
 from fieldplan.packet.maps.page import draw_marks, ground_axes
@@ -79,7 +80,7 @@ def _spec(plan: Plan, content: MapContent) -> PageSpec:
 
 def _narrow_spec(plan: Plan, content: MapContent) -> PageSpec:
     """Lay the map above its legend, as narrow as a phone."""
-    rows = len(content.legend) + len(grounds(plan.frame))
+    rows = len(content.legend) + len(plan_grounds(plan))
     panel = Box(1.0, 0.3, NARROW_MM - 2.0, 6.0 * rows + _BAR_MM)
     boxes = [
         Box(0.3, panel.top + 2, NARROW_MM - 0.6, height) for height in (48.0, 64.0, 80.0, 100.0)
@@ -110,7 +111,7 @@ def _drawing(plan: Plan, content: MapContent, *, spec: PageSpec) -> "Canvas":
     layout = spec.layout
     figure = new_figure(layout.width, layout.height)
     axes = ground_axes(figure, spec)
-    layers = grounds(plan.frame)
+    layers = plan_grounds(plan)
     draw_grounds(axes, layers, metres_per_mm=spec.denominator / 1000)
     draw_marks(axes, content, metres_per_mm=spec.denominator / 1000)
     over = mm_axes(figure)

@@ -113,7 +113,7 @@ def _sample(page: "Axes", entry: Entry | Ground, *, x: float, y: float) -> None:
             page.plot(
                 [x, x + 6],
                 [y, y],
-                color=INK,
+                color=entry.style["edgecolor"],
                 linewidth=entry.style["linewidth"],
                 linestyle=entry.style.get("linestyle", "-"),
             )

@@ -6,9 +6,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldplan.packet.drawing import INK, POINTS_PER_MM, mm_axes, new_figure
+from fieldplan.packet.maps.cells import plan_grounds
 from fieldplan.packet.maps.content import MapContent, Mark
 from fieldplan.packet.maps.grid import grid_lines, grid_step
-from fieldplan.packet.maps.ground import draw_grounds, grounds
+from fieldplan.packet.maps.ground import draw_grounds
 from fieldplan.packet.maps.inset import draw_inset
 from fieldplan.packet.maps.legend import draw_legend
 from fieldplan.packet.maps.names import Rectangle, draw_names, draw_plate, mark_centres
@@ -48,7 +49,7 @@ def draw_page(
     page = mm_axes(figure)
     shown = content.without_names() if spec.is_key else content
     axes = ground_axes(figure, spec)
-    layers = grounds(plan.frame)
+    layers = plan_grounds(plan)
     draw_grounds(axes, layers, metres_per_mm=spec.denominator / 1000)
     step = grid_step(spec.extent, spec.denominator)
     grid = grid_lines(plan.frame.projection, spec.extent, step=step)

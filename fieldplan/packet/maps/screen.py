@@ -10,6 +10,7 @@ from fieldplan.design.model import LocationClass
 from fieldplan.frame.projection import site_zone, utm
 from fieldplan.packet.exchange.outlines import Outline, outlines
 from fieldplan.packet.exchange.rows import PointRow, point_rows
+from fieldplan.packet.maps.cells import cell_layer
 from fieldplan.packet.maps.content import label_of
 from fieldplan.packet.maps.offline import (
     TILES,
@@ -68,8 +69,10 @@ def screen_map(plan: Plan) -> str:
         for name in MARKS
         if name in titles
     ]
-    for kind in ("stratum", "excluded", "boundary"):
-        if kind in titles:
+    for kind in ("stratum", "cell", "excluded", "boundary"):
+        if kind == "cell" and kind in titles:
+            cell_layer(plan, titles[kind]).add_to(page)
+        elif kind in titles:
             _outline_layer(plan, shapes, kind, titles[kind]).add_to(page)
     grid = folium.FeatureGroup(name=titles["grid"]).add_to(page)
     parts: dict[str, Any] = {"grid": grid, "locations": layers}

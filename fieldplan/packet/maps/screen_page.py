@@ -5,6 +5,7 @@ from html import escape
 from fieldplan.frame.projection import site_zone, utm, utm_in_words
 from fieldplan.packet.exchange.outlines import Outline
 from fieldplan.packet.exchange.plain_text import plain
+from fieldplan.packet.maps.cells import CELL_LINE, cell_words
 from fieldplan.packet.maps.palette import (
     BOUNDARY_LINE,
     EXCLUDED_LINE,
@@ -117,6 +118,8 @@ def layer_titles(plan: Plan, shapes: tuple[Outline, ...]) -> dict[str, str]:
         if count:
             titles[name] = _point_row(mark, f"{mark.title} ({count})")
     titles |= _outline_titles(plan, shapes)
+    if plan.locations.places[0].cell:
+        titles["cell"] = _row(_cell_swatch(), cell_words(plan).capitalize())
     titles["grid"] = "Coordinate grid"
     titles["online"] = "Online map (needs a network)"
     return titles
@@ -192,6 +195,13 @@ def _box_swatch(pattern: str, line: str) -> str:
     return (
         '<span class="swatch"><svg viewBox="0 0 28 18"><rect x="1" y="1" width="26" height="16" '
         f'fill="url(#{pattern})" stroke="{line}" stroke-width="2"/></svg></span>'
+    )
+
+
+def _cell_swatch() -> str:
+    return (
+        '<span class="swatch"><svg viewBox="0 0 28 18"><path d="M1 1 H27 V17 H1 Z M15 1 V17" '
+        f'fill="none" stroke="{CELL_LINE}" stroke-width="1.2"/></svg></span>'
     )
 
 
