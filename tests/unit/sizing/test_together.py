@@ -19,7 +19,7 @@ from fieldplan.sizing.counting import (
 )
 from fieldplan.sizing.money import Prices
 from fieldplan.sizing.precision import Precision
-from fieldplan.sizing.question import ControlRate, Part, Question
+from fieldplan.sizing.question import ControlRate, Part, Question, TargetKind
 from fieldplan.sizing.together import everyone, keeps
 from fieldplan.stats.allocation import Allocation, share_total
 from tests.factories import make_frame
@@ -123,6 +123,43 @@ def test_assurances_and_half_widths_of_every_analyte_are_kept() -> None:
     for k in range(3):
         fewer = [n - (j == k) for j, n in enumerate(counts)]
         assert min(fewer) < 2 or not all(keeps(member, fewer) for member in everyone(lead))
+
+
+@pytest.mark.parametrize("allocation", ["neyman", "cost-optimal"])
+@pytest.mark.parametrize(
+    ("lead", "zinc"),
+    [
+        (("half_width", 14.0, None), ("half_width", 16.0, 0.8)),
+        (("standard_error", 6.0, 0.9), ("standard_error", 7.0, None)),
+        (("half_width", 13.0, 0.8), ("standard_error", 6.0, 0.67)),
+    ],
+)
+def test_half_widths_and_assurances_are_kept_at_the_least_cost(
+    allocation: Allocation,
+    lead: tuple[TargetKind, float, float | None],
+    zinc: tuple[TargetKind, float, float | None],
+) -> None:
+    """Brute force over all counts of two strata: neither t nor luck makes another set cheaper."""
+
+    def asked(
+        sigmas: tuple[float, float], target: TargetKind, value: float, sure: float | None
+    ) -> Question:
+        two = tuple(
+            Part(name, w, s, results=10, extra_cost=extra)
+            for name, w, s, extra in zip("ab", (0.6, 0.4), sigmas, (0.0, 150.0), strict=True)
+        )
+        return Question(
+            two, target, value, allocation=allocation, assurance=sure, prices=PRICES, analyte="x"
+        )
+
+    question = replace(asked((12.0, 25.0), *lead), also=(asked((25.0, 10.0), *zinc),))
+    costs = (75.0, 225.0) if allocation == "cost-optimal" else (1.0, 1.0)
+    counts = needed_counts(question)
+    own = costs[0] * counts[0] + costs[1] * counts[1]
+    assert all(keeps(member, counts) for member in everyone(question))
+    for way in itertools.product(range(2, 60), repeat=2):
+        if costs[0] * way[0] + costs[1] * way[1] < own - 1e-9:
+            assert not all(keeps(member, way) for member in everyone(question))
 
 
 def test_an_easy_second_analyte_changes_nothing() -> None:
