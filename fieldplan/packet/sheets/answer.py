@@ -17,6 +17,9 @@ FIGURE_MM = 145.0
 """Width that leaves page one room for the words."""
 
 
+SHOWN = 12
+"""Most rows of strata on page one."""
+
 SUMMARY = (
     "This sheet is a summary. It is no substitute for the documents that a regulator requires, for "
     "a health and safety plan, or for a permit."
@@ -51,9 +54,15 @@ def alarm_lines(plan: Plan) -> tuple[str, ...]:
     return alarms(plan.campaign, made_on=plan.made_on, issued_on=plan.issued_on)
 
 
-def stratum_table(plan: Plan) -> Table:
-    """Set how many locations go where, and for how much each part counts."""
-    unit = plan.size.unit
+def stratum_table(plan: Plan, *, whole: bool = False) -> Table:
+    """Set how many locations go where, and for how much each part counts.
+
+    Of many strata page one names the largest and sums up the rest; ``whole`` names them all.
+    """
+    unit, strata = plan.size.unit, plan.size.strata
+    short = len(strata) > SHOWN and not whole
+    if short:
+        strata = tuple(sorted(strata, key=lambda entry: -entry.planned)[: SHOWN - 1])
     name = "Stratum" if several_strata(plan) else "Population"
     columns = (
         name,
@@ -63,7 +72,7 @@ def stratum_table(plan: Plan) -> Table:
         "Locations",
         "Alternates",
     )
-    rows = [
+    rows: list[tuple[str, ...]] = [
         (
             entry.stratum,
             percent(entry.weight),
@@ -72,14 +81,29 @@ def stratum_table(plan: Plan) -> Table:
             str(entry.planned),
             str(entry.alternates),
         )
-        for entry in plan.size.strata
+        for entry in strata
     ]
+    if short:
+        rows.append(_others(plan, strata))
     if several_strata(plan):
         alternates = sum(entry.alternates for entry in plan.size.strata)
         rows.append(
             ("All", "100 %", "", str(plan.size.needed), str(plan.size.planned), str(alternates))
         )
     return Table(columns, tuple(rows), numeric=columns[1:])
+
+
+def _others(plan: Plan, shown: tuple[StratumSize, ...]) -> tuple[str, ...]:
+    """Sum up the strata that are not shown."""
+    left = [entry for entry in plan.size.strata if entry not in shown]
+    return (
+        f"{len(left)} others",
+        percent(sum(entry.weight for entry in left)),
+        "see section 5",
+        str(sum(entry.needed for entry in left)),
+        str(sum(entry.planned for entry in left)),
+        str(sum(entry.alternates for entry in left)),
+    )
 
 
 def spread_cell(plan: Plan, entry: StratumSize) -> str:

@@ -2,6 +2,7 @@
 
 from fieldplan.base.document import Block, Bullets, Facts, Heading, Paragraph, Table
 from fieldplan.packet.sheets.amounts import counted, likely, percent, rounded
+from fieldplan.packet.sheets.answer import SHOWN, stratum_table
 from fieldplan.packet.sheets.finding_section import finding_blocks
 from fieldplan.packet.sheets.plan_words import every_unit
 from fieldplan.plan.model import Plan
@@ -48,6 +49,8 @@ def number_blocks(plan: Plan) -> list[Block]:
 
     size = plan.size
     blocks: list[Block] = [Facts(promise_rows(plan))]
+    if len(size.strata) > SHOWN:
+        blocks.append(stratum_table(plan, whole=True))
     if size.assured:
         blocks.append(assurance_table(plan))
     if size.curve:

@@ -112,9 +112,10 @@ def assumed_lines(plan: Plan) -> tuple[str, ...]:
         whose = "ASSUMED" if decides else f"ASSUMED for {analyte.label}"
         if len(guessed) > FEW:
             low, high = (number(f(entry.sigma for entry in guessed)) for f in (min, max))
+            span = low if low == high else f"{low} to {high}"
             lines.append(
-                f"{whose}: the standard deviations of {low} to {high} {analyte.unit} in "
-                f"{len(guessed)} strata are guesses, not measurements."
+                f"{whose}: the standard deviations of {span} {analyte.unit} in {len(guessed)} "
+                "strata are guesses, not measurements."
             )
             continue
         lines += [
