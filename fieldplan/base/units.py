@@ -32,6 +32,26 @@ def acres(square_metres: float) -> float:
     return square_metres / SQUARE_METRES_PER_ACRE
 
 
+METRES_PER_MILE = 1609.344
+"""The international mile."""
+
+
+def length_in_words(metres: float, digits: int = 4) -> str:
+    """Write a length in the unit that fits it, with miles beside kilometres.
+
+    Examples
+    --------
+    >>> length_in_words(3420.0)
+    '3.420 km (2.125 miles)'
+    >>> length_in_words(412.04)
+    '412.0 m'
+    """
+    if metres < 1000:
+        return f"{significant(metres, digits)} m"
+    miles = significant(metres / METRES_PER_MILE, digits)
+    return f"{significant(metres / 1000, digits)} km ({miles} miles)"
+
+
 def significant(value: float, digits: int = 3) -> str:
     """Write a number with so many significant digits, thousands apart.
 

@@ -1,4 +1,4 @@
-"""What population: areas and lists, with strata and measure."""
+"""What population: areas, lines and lists, with strata and measure."""
 
 from fieldplan.base.errors import FrameError
 from fieldplan.campaign.model import Campaign, FrameTable, ReadCampaign
@@ -17,7 +17,7 @@ def read_frame(read: ReadCampaign) -> Frame:
     -------
     Frame
         Boundary, strata, exclusions and targeted places in one equal-area plane, measured; or
-        the units of a list.
+        the units of a list, or lines by distance.
 
     Raises
     ------
@@ -26,12 +26,15 @@ def read_frame(read: ReadCampaign) -> Frame:
     """
     from fieldplan.frame.area import read_area
     from fieldplan.frame.ground import FrameFiles
+    from fieldplan.frame.line import read_line
     from fieldplan.frame.listing import read_list
 
     table = _frame_table(read.campaign)
     files = FrameFiles(read.folder, table, read.campaign.field.position_accuracy_m)
     if table.kind == "area":
         return read_area(files, read.campaign.targeted)
+    if table.kind == "line":
+        return read_line(files, read.campaign.targeted, layout=read.campaign.design[0].layout)
     return read_list(files, read.campaign.targeted, layout=read.campaign.design[0].layout)
 
 

@@ -50,14 +50,14 @@ def read_exclusions(
         _, left = parted(left, area.geometry, f"{area.source}: the site without {area.reason}")
     for exclusion in files.table.exclusion:
         overlay = files.open(exclusion.file, wanted="any")
-        shape, notes = _shape(exclusion, overlay, ground)
+        shape, notes = excluded_shape(exclusion, overlay, ground)
         ground = ground.noting(
             *overlay.layer.notes, *overlay.shift.notes, *notes, source=overlay.shift.source
         )
         label = f"{exclusion.file}: the site without {exclusion.reason}"
         inside, _ = parted(ground.boundary, shape, label)
         if inside.area <= 0:
-            ground = ground.noting(_elsewhere(exclusion, overlay, ground, shape))
+            ground = ground.noting(elsewhere(exclusion, overlay, ground, shape))
             continue
         took, left = parted(left, inside, label)
         excluded.append(
@@ -72,7 +72,7 @@ def read_exclusions(
     return tuple(excluded), ground
 
 
-def _shape(
+def excluded_shape(
     exclusion: Exclusion, overlay: Overlay, ground: Ground
 ) -> tuple[BaseGeometry, list[str]]:
     """Give the ground that an exclusion covers, buffer included."""
@@ -123,7 +123,7 @@ def _parted(layer: Layer, buffer_m: float) -> tuple[tuple[Feature, ...], tuple[F
     )
 
 
-def _elsewhere(exclusion: Exclusion, overlay: Overlay, ground: Ground, shape: BaseGeometry) -> str:
+def elsewhere(exclusion: Exclusion, overlay: Overlay, ground: Ground, shape: BaseGeometry) -> str:
     """Note an exclusion that just misses the site; refuse one that is kilometres away."""
     away = float(shapely.distance(ground.boundary, shape))
     if away > _FAR_M:

@@ -33,7 +33,7 @@ def read_layer(
     typed : str
         As in the campaign file: a path, with ``#layer`` behind it for one layer of a GeoPackage.
     wanted : str
-        ``polygon``, ``point`` or ``any``: which layer of several is meant.
+        ``polygon``, ``point``, ``line`` or ``any``: which layer of several is meant.
     named : ColumnMap, optional
         Columns as the campaign file names them.
 

@@ -31,6 +31,48 @@ class ListUnit:
 
 
 @dataclass(frozen=True)
+class Branch:
+    """A line that distances are measured along, whole, before anything is left out.
+
+    Parameters
+    ----------
+    name : str
+        Unique in its frame.
+    length_m : float
+    geometry : BaseGeometry
+        LineString in site metres, corners in whole millimetres; distances start at its first one.
+    """
+
+    name: str
+    length_m: float
+    geometry: BaseGeometry
+
+
+@dataclass(frozen=True)
+class Reach:
+    """A stretch of a branch that belongs to the population.
+
+    Parameters
+    ----------
+    branch : str
+    from_m, to_m : float
+        Distances along the branch, to the millimetre.
+    geometry : BaseGeometry
+        LineString in site metres, corners in whole millimetres.
+    """
+
+    branch: str
+    from_m: float
+    to_m: float
+    geometry: BaseGeometry
+
+    @property
+    def length_m(self) -> float:
+        """Metres along it."""
+        return self.to_m - self.from_m
+
+
+@dataclass(frozen=True)
 class Stratum:
     """A part of the population that is sampled on its own.
 
@@ -39,13 +81,15 @@ class Stratum:
     name : str
         ``site`` when there is only one.
     measure : float
-        Net square metres of an area, or the number of units of a list.
+        Net square metres of an area, metres of lines, or the number of units of a list.
     weight : float
         Share of the whole population; the weights of a frame sum to 1.
     geometry : BaseGeometry or None
-        Net polygon in site metres, coordinates on a millimetre grid; None for a list.
+        Net polygon or lines in site metres, coordinates on a millimetre grid; None for a list.
     units : tuple of ListUnit
-        Members in file order; empty for an area.
+        Members in file order; empty for an area and for lines.
+    reaches : tuple of Reach
+        Of lines, by branch and then by distance; empty for an area and a list.
     """
 
     name: str
@@ -53,22 +97,32 @@ class Stratum:
     weight: float
     geometry: BaseGeometry | None = None
     units: tuple[ListUnit, ...] = ()
+    reaches: tuple[Reach, ...] = ()
 
     @property
     def count(self) -> int | None:
-        """Number of units N for a list; None for an area, whose population is endless."""
+        """Number of units N for a list; None for an area and for lines, which are endless."""
         return len(self.units) if self.units else None
 
 
 @dataclass(frozen=True)
 class ExcludedArea:
-    """What one exclusion took: its polygon (buffer included), the square metres, the reason."""
+    """What one exclusion took: its polygon (buffer included), the square metres, the reason.
+
+    Of lines it is the stretches that it took, with ``length_m``, and no area.
+    """
 
     reason: str
     source: str
     buffer_m: float
     area_m2: float
     geometry: BaseGeometry
+    length_m: float = 0.0
+
+    @property
+    def taken(self) -> float:
+        """What it took, in the unit of the population."""
+        return self.length_m or self.area_m2
 
 
 @dataclass(frozen=True)
@@ -90,7 +144,7 @@ class Population:
     Parameters
     ----------
     unit : str
-        ``m²`` for an area, ``units`` for a list.
+        ``m²`` for an area, ``m`` for lines, ``units`` for a list.
     gross, inset_loss, net : float
         In ``unit``. ``gross - sum of exclusions - inset_loss == net``.
     share : float
@@ -100,7 +154,7 @@ class Population:
         ``One n is: one location.``
     """
 
-    unit: Literal["m²", "units"]
+    unit: Literal["m²", "m", "units"]
     gross: float
     inset_loss: float
     net: float
@@ -137,13 +191,14 @@ class Frame:
     Parameters
     ----------
     kind : str
-        ``area`` or ``list``.
+        ``area``, ``list`` or ``line``.
     projection : SiteProjection
         Where easting and northing are measured.
     strata : tuple of Stratum
         In the order of their names; at least one.
     boundary : BaseGeometry
-        Gross site polygon in site metres; for a list the hull of its units, for maps only.
+        Gross site polygon in site metres; for a list the hull of its units, for maps only; for
+        lines all of them, whole.
     excluded : tuple of ExcludedArea
     targeted : tuple of TargetedPlace
     population : Population
@@ -153,9 +208,11 @@ class Frame:
         What was repaired or noticed, in sentences.
     boundary_assumed : bool
         The boundary is a circle or a sketch; stamped ASSUMED on every page.
+    branches : tuple of Branch
+        Of lines, in file order.
     """
 
-    kind: Literal["area", "list"]
+    kind: Literal["area", "list", "line"]
     projection: SiteProjection
     strata: tuple[Stratum, ...]
     boundary: BaseGeometry
@@ -165,6 +222,7 @@ class Frame:
     sources: tuple[str, ...] = ()
     notes: tuple[str, ...] = field(default=())
     boundary_assumed: bool = False
+    branches: tuple[Branch, ...] = ()
 
     def stratum(self, name: str) -> Stratum:
         """Return the stratum called ``name``; KeyError when there is none."""

@@ -44,7 +44,12 @@ _FAULTS = (
     ValueError,
 )
 _SHAPEFILE_PARTS = (".shp", ".shx", ".dbf", ".prj", ".cpg")
-_KINDS = {"polygon": ("Polygon", "Surface"), "point": ("Point",), "any": ("",)}
+_KINDS = {
+    "polygon": ("Polygon", "Surface"),
+    "point": ("Point",),
+    "line": ("LineString", "Curve"),
+    "any": ("",),
+}
 
 
 def read_geopackage(path: Path, name: str, *, layer: str, wanted: str) -> Layer:

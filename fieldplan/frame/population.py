@@ -1,8 +1,15 @@
 """For what the mean speaks, in sentences ready to print."""
 
-from fieldplan.base.units import acres, area_in_words, hectares, significant
+from fieldplan.base.units import (
+    METRES_PER_MILE,
+    acres,
+    area_in_words,
+    hectares,
+    length_in_words,
+    significant,
+)
 from fieldplan.campaign.model import FrameTable
-from fieldplan.frame.model import ExcludedArea, Population
+from fieldplan.frame.model import Branch, ExcludedArea, Population
 
 _CENSUS = (
     "Every unit is visited (a census): the choice of places adds no error to the mean; "
@@ -50,6 +57,81 @@ def area_population(
     return Population("m²", gross, inset_loss, net, share, tuple(sentences))
 
 
+def line_population(
+    table: FrameTable,
+    branches: tuple[Branch, ...],
+    *,
+    excluded: tuple[ExcludedArea, ...],
+    inset_loss: float,
+    net: float,
+) -> Population:
+    """State the population of lines: gross, branches, each exclusion, ends, net.
+
+    Parameters
+    ----------
+    table : FrameTable
+        For the inset and what one n is.
+    branches : tuple of Branch
+        All of them, whole.
+    excluded : tuple of ExcludedArea
+        In the order in which they were taken out; none counted twice.
+    inset_loss, net : float
+        Metres that the inset alone takes, and that are left.
+
+    Returns
+    -------
+    Population
+    """
+    gross = net + inset_loss + sum(stretch.taken for stretch in excluded)
+    share = net / gross
+    sentences = [f"The mean speaks for {_percent(share)} of the lines: {_long(net, gross)}."]
+    if len(branches) > 1:
+        sentences.append(
+            f"They have {len(branches)} branches{_branch_lengths(branches)}. Every metre counts "
+            "alike, so that a branch weighs by its length."
+        )
+    for stretch in excluded:
+        edge = f", with {stretch.buffer_m:g} m around it" if stretch.buffer_m else ""
+        sentences.append(
+            f"Left out: {stretch.reason}{edge}: {length_in_words(stretch.taken)}, "
+            f"{_percent(stretch.taken / gross)} of the lines."
+        )
+    if table.inset_m:
+        sentences.append(
+            f"Left out: {table.inset_m:g} m at each end where no other branch joins: "
+            f"{length_in_words(inset_loss)}, {_percent(inset_loss / gross)} of the lines."
+        )
+    if excluded or table.inset_m:
+        sentences.append("Nothing is said about what was left out.")
+    sentences.append(one_is(table))
+    return Population("m", gross, inset_loss, net, share, tuple(sentences))
+
+
+_FEW_BRANCHES = 6
+
+
+def _branch_lengths(branches: tuple[Branch, ...]) -> str:
+    """Name the branches with their lengths where they are few."""
+    if len(branches) > _FEW_BRANCHES:
+        return ""
+    told = [f"{branch.name}, {_kilometres(branch.length_m)}" for branch in branches]
+    return f" ({'; '.join(told)})"
+
+
+def _kilometres(metres: float) -> str:
+    return f"{metres:.0f} m" if metres < 1000 else f"{significant(metres / 1000)} km"
+
+
+def _long(net: float, gross: float) -> str:
+    """Write how much of how long, with miles beside kilometres."""
+    if net == gross:
+        return f"all of {length_in_words(gross, 3)}"
+    if gross < 1000:
+        return f"{significant(net)} of {significant(gross)} m"
+    parts = [significant(m / unit) for unit in (1000.0, METRES_PER_MILE) for m in (net, gross)]
+    return f"{parts[0]} of {parts[1]} km ({parts[2]} of {parts[3]} miles)"
+
+
 def list_population(table: FrameTable, count: int, *, census: bool) -> Population:
     """State the population of a list: all its units.
 
@@ -83,7 +165,8 @@ def one_is(table: FrameTable) -> str:
     'One n is: one location.'
     """
     told = table.unit_is.strip().rstrip(".")
-    return f"One n is: one location ({told})." if told else "One n is: one location."
+    what = "one place on the line" if table.kind == "line" else "one location"
+    return f"One n is: {what} ({told})." if told else f"One n is: {what}."
 
 
 def _percent(share: float) -> str:

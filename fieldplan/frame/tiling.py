@@ -65,12 +65,12 @@ def read_strata(
     if not typed:
         return {"site": ground.boundary}, (), ground
     overlay = files.open(typed)
-    column = _column(overlay.layer, files.table.stratum_column)
+    column = column_of(overlay.layer, files.table.stratum_column)
     features, notes = ground.polygons(overlay, stratum_column=column)
     ground = ground.noting(
         *overlay.layer.notes, *overlay.shift.notes, *notes, source=overlay.shift.source
     )
-    drawn = _by_name(overlay.layer, features, column)
+    drawn = by_name(overlay.layer, features, column)
     ground.check_near(overlay, joined(list(drawn.values()), overlay.layer.name))
     pieces, notes = _cut(drawn, ground, overlay)
     pieces, overlap_notes = _without_overlaps(pieces, ground, typed)
@@ -78,7 +78,7 @@ def read_strata(
     return pieces, gaps, ground.noting(*notes, *overlap_notes, *gap_notes)
 
 
-def _column(layer: Layer, wanted: str) -> str:
+def column_of(layer: Layer, wanted: str) -> str:
     """Find the column with the names of strata; in KML and GPX the name of the feature will do."""
     if wanted in layer.columns:
         return wanted
@@ -95,7 +95,7 @@ def _column(layer: Layer, wanted: str) -> str:
     raise FrameError(message)
 
 
-def _by_name(layer: Layer, features: list[Feature], column: str) -> Pieces:
+def by_name(layer: Layer, features: list[Feature], column: str) -> Pieces:
     """Join the polygons of each stratum."""
     raise_all(
         f"{layer.name} {feature.label}: its stratum (column {column!r}) is empty; name it."

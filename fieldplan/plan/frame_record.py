@@ -8,10 +8,12 @@ from shapely.geometry import mapping, shape
 from shapely.geometry.base import BaseGeometry
 
 from fieldplan.frame.model import (
+    Branch,
     ExcludedArea,
     Frame,
     ListUnit,
     Population,
+    Reach,
     SiteProjection,
     Stratum,
     TargetedPlace,
@@ -42,9 +44,10 @@ def frame_to_record(frame: Frame) -> dict[str, Any]:
     Returns
     -------
     dict
-        Coordinates are site metres in the projection given by ``projection``.
+        Coordinates are site metres in the projection given by ``projection``. Branches and reaches
+        are there for lines alone.
     """
-    return {
+    record = {
         "kind": frame.kind,
         "projection": {**asdict(frame.projection), "definition": frame.projection.definition},
         "boundary": _polygon(frame.boundary),
@@ -56,6 +59,7 @@ def frame_to_record(frame: Frame) -> dict[str, Any]:
                 "weight": stratum.weight,
                 "geometry": _polygon(stratum.geometry),
                 "units": [asdict(unit) for unit in stratum.units],
+                **_reaches(stratum),
             }
             for stratum in frame.strata
         ],
@@ -66,6 +70,7 @@ def frame_to_record(frame: Frame) -> dict[str, Any]:
                 "buffer_m": area.buffer_m,
                 "area_m2": area.area_m2,
                 "geometry": _polygon(area.geometry),
+                **({"length_m": area.length_m} if area.length_m else {}),
             }
             for area in frame.excluded
         ],
@@ -74,6 +79,28 @@ def frame_to_record(frame: Frame) -> dict[str, Any]:
         "sources": list(frame.sources),
         "notes": list(frame.notes),
     }
+    if frame.branches:
+        record["branches"] = [
+            {"name": b.name, "length_m": b.length_m, "geometry": _polygon(b.geometry)}
+            for b in frame.branches
+        ]
+    return record
+
+
+def _reaches(stratum: Stratum) -> dict[str, Any]:
+    """Turn the reaches of a stratum into plain values; nothing where it has none."""
+    if not stratum.reaches:
+        return {}
+    reaches = [
+        {
+            "branch": reach.branch,
+            "from_m": reach.from_m,
+            "to_m": reach.to_m,
+            "geometry": _polygon(reach.geometry),
+        }
+        for reach in stratum.reaches
+    ]
+    return {"reaches": reaches}
 
 
 def frame_from_record(record: Mapping[str, Any]) -> Frame:
@@ -111,6 +138,10 @@ def frame_from_record(record: Mapping[str, Any]) -> Frame:
         sources=tuple(record["sources"]),
         notes=tuple(record["notes"]),
         boundary_assumed=record["boundary_assumed"],
+        branches=tuple(
+            Branch(**{**entry, "geometry": shape(entry["geometry"])})
+            for entry in record.get("branches", ())
+        ),
     )
 
 
@@ -122,4 +153,8 @@ def _stratum(entry: Mapping[str, Any]) -> Stratum:
         weight=entry["weight"],
         geometry=None if geometry is None else shape(geometry),
         units=tuple(ListUnit(**unit) for unit in entry["units"]),
+        reaches=tuple(
+            Reach(**{**reach, "geometry": shape(reach["geometry"])})
+            for reach in entry.get("reaches", ())
+        ),
     )
