@@ -42,6 +42,10 @@ def answer(question: Question) -> Size:
     (22, 0.459, [31, 39, 53])
     """
     counts = count(question)
+    if question.widened:
+        from fieldplan.sizing.widened import refuse_short_list
+
+        refuse_short_list(question, counts.planned)
     plain, needed, planned = counts.plain or counts.needed, counts.needed, counts.planned
     precision = Precision(question)
     assured = _assured(question)
@@ -106,6 +110,11 @@ def _target_standard_error(question: Question, plain: tuple[int, ...]) -> float 
     """Give the target as a standard error: a half-width over t at the plain n."""
     if question.target_half_width is None:
         return question.target_standard_error
+    if question.widened:
+        precision = Precision(question)
+        return question.target_half_width * (
+            precision.standard_error(plain) / precision.half_width(plain)
+        )
     known = Precision(question).degrees_of_freedom(plain)
     return question.target_half_width / t_quantile(
         known, confidence=question.confidence, kind=question.interval

@@ -137,6 +137,8 @@ def ask(
         unit=analyte.unit,
         increments=design.increments if isinstance(design.increments, int) else 1,
         one_place=design.increments_at == "one-place",
+        mean_interval=campaign.rules.mean_interval,
+        promised_class=campaign.rules.promised_class,
     )
 
 
@@ -272,6 +274,7 @@ def parts_of(
             excess_kurtosis=entries[stratum.name].excess_kurtosis,
             mean=entries[stratum.name].mean,
             mean_from=_mean_from(entries[stratum.name]),
+            zeros=_zeros(entries[stratum.name]),
         )
         for stratum in frame.strata
     )
@@ -291,6 +294,15 @@ def _mean_from(entry: "StratumSpread") -> str:
     """Name the source of a mean, and how non-detects entered it."""
     missing = entry.detected.count(False)
     return f"{entry.source}, non-detects at half their limit" if missing else entry.source
+
+
+def _zeros(entry: "StratumSpread") -> float:
+    """Give the share of zeros and non-detects among a pilot's results."""
+    if not entry.values:
+        return 0.0
+    detected = entry.detected or (True,) * len(entry.values)
+    pairs = zip(entry.values, detected, strict=True)
+    return sum(value == 0 or not seen for value, seen in pairs) / len(entry.values)
 
 
 def _pilot(entry: "StratumSpread") -> str:

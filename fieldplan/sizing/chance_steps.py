@@ -147,6 +147,10 @@ def _terms(
 
 
 def _chance(question: Question, chosen: tuple[int, ...], chance: float) -> Step:
+    if question.widened and question.target_half_width is not None:
+        from fieldplan.sizing.widened_steps import widened_chance_step
+
+        return widened_chance_step(question, chosen, chance)
     precision = Precision(question)
     pilot = precision.pilot_degrees_of_freedom(chosen)
     luck = precision.luck_of_allocation(chosen)

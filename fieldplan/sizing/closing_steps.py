@@ -55,7 +55,11 @@ def _precision(question: Question, counts: Counts) -> Iterator[Step]:
         return
     yield _error(question, counts)
     known = Precision(question).degrees_of_freedom(counts.needed)
-    if math.isfinite(known):
+    if math.isfinite(known) and question.widened:
+        from fieldplan.sizing.widened_steps import widened_reach_step
+
+        yield widened_reach_step(question, counts.needed)
+    elif math.isfinite(known):
         yield _reach(question, counts, known)
 
 

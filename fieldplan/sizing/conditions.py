@@ -39,7 +39,12 @@ def conditions(question: Question, needed: tuple[int, ...]) -> tuple[str, ...]:
             *question.notes,
         )
     lines = [_origin(question)] if _origin(question) else []
-    lines += [_common_practice(sum(needed)), *lean_sentences(question, needed)]
+    if question.widened:
+        from fieldplan.sizing.widened_steps import widened_conditions
+
+        lines += widened_conditions(question, needed)
+    else:
+        lines += [_common_practice(sum(needed)), *lean_sentences(question, needed)]
     if question.grid:
         lines.append(
             "The grid is sized as simple random and its interval computed as such: the grid gets "

@@ -91,6 +91,10 @@ def needed_counts(question: Question) -> list[int]:
 
 def plain_counts(question: Question) -> list[int]:
     """Count the results that meet the target with sigma taken at face value."""
+    if question.widened and question.target_half_width is not None:
+        from fieldplan.sizing.widened import widened_counts
+
+        return widened_counts(question)
     refuse_unreachable(question)
     if weighs(question):
         return weighed_counts(question, plain=True)

@@ -105,7 +105,8 @@ def _answered(
     objective: "Objective | None",
     known: _Known,
 ) -> OtherPrecision:
-    why_not = _why_no_target(objective, known.mean)
+    widened = campaign.rules.mean_interval == "skew-widened"
+    why_not = _why_no_target(objective, known.mean, widened=widened)
     own = NO_TARGET if objective is None or why_not else objective
     own = own.model_copy(update={"analyte": known.analyte.id})
     question = ask(campaign, own, parts=known.parts, mean=known.mean)
@@ -125,7 +126,7 @@ def _answered(
     return replace(found, sentence=words)
 
 
-def _why_no_target(objective: "Objective | None", mean: float | None) -> str:
+def _why_no_target(objective: "Objective | None", mean: float | None, *, widened: bool) -> str:
     """Say why there is no precision to compare with; empty where there is one."""
     if objective is None:
         return "the campaign sets no target for it"
@@ -134,6 +135,8 @@ def _why_no_target(objective: "Objective | None", mean: float | None) -> str:
         return "its own objective is a budget, which sets no precision"
     if kind == "relative_half_width" and not (mean or 0.0) > 0:
         return "its own target is a share of an expected mean that the campaign does not give"
+    if kind == "half_width" and widened and not (mean or 0.0) > 0:
+        return "the interval that the rules fix depends on a mean that the campaign does not give"
     return ""
 
 
@@ -150,7 +153,7 @@ def _bought(
     decides = question.analyte in {other.analyte for other in asked.also}
     common = decides or _shares_pilot(question, asked)
     precision = Precision(question if common else replace(question, allocation="proportional"))
-    error, width = precision.standard_error(counts), precision.half_width(counts)
+    error, width = precision.standard_error(counts), _width(precision, counts)
     assumed = any(part.assumed for part in question.parts)
     found = replace(found, standard_error=error, half_width=width, assumed=assumed)
     if not found.target:
@@ -158,6 +161,13 @@ def _bought(
     kept, chance = _keeps(found, precision, counts), precision.chance(counts)
     found = replace(found, meets=kept, chance=chance)
     return replace(found, enough_n=_enough(found, precision, asked)) if found.falls_short else found
+
+
+def _width(precision: Precision, counts: Sequence[int]) -> float | None:
+    """Give the half-width; None where it depends on a mean that nobody gave."""
+    question = precision.question
+    known = (question.parts[0].mean or question.mean or 0.0) > 0
+    return precision.half_width(counts) if known or not question.widened else None
 
 
 def _shares_pilot(question: Question, asked: Question) -> bool:

@@ -94,6 +94,10 @@ class Precision:
         error = self.standard_error(counts)
         if error == 0:
             return 0.0
+        if self.question.widened:
+            from fieldplan.sizing.widened import expected_half_width
+
+            return expected_half_width(self, counts)
         known = self.degrees_of_freedom(counts)
         question = self.question
         return error * t_quantile(known, confidence=question.confidence, kind=question.interval)
@@ -199,6 +203,10 @@ class Precision:
             return 1.0
         if question.target_half_width is None:
             return chance_of_variance(predicted, question.value**2, pilot)
+        if question.widened:
+            from fieldplan.sizing.widened import chance_of_reach
+
+            return chance_of_reach(self, counts, question.target_half_width, pilot=pilot)
         return chance_of_half_width(
             predicted,
             question.target_half_width,

@@ -12,6 +12,7 @@ from fieldplan.sizing.money import Prices
 from fieldplan.stats.allocation import Allocation
 from fieldplan.stats.assurance import check_assurance
 from fieldplan.stats.intervals import IntervalKind
+from fieldplan.stats.skew_interval import PopulationClass
 from fieldplan.stats.strata import Strata
 
 TargetKind = Literal["standard_error", "half_width", "relative_half_width", "budget"]
@@ -55,6 +56,8 @@ class Part:
         To expect, for a relative target.
     mean_from : str
         Where it comes from, and what was done about non-detects.
+    zeros : float
+        Share of zeros and non-detects in the pilot.
     """
 
     name: str
@@ -73,6 +76,7 @@ class Part:
     least: int = 0
     most: int | None = None
     extra_cost: float = 0.0
+    zeros: float = 0.0
 
 
 @dataclass(frozen=True)
@@ -121,6 +125,10 @@ class Question:
         counts composites.
     one_place : bool
         The increments of a composite lie round one location; else each has its own.
+    mean_interval : str
+        ``student-t`` or ``skew-widened``: how the ends of the interval are set.
+    promised_class : str or None
+        What skew-widened is promised for.
     """
 
     parts: tuple[Part, ...]
@@ -149,6 +157,8 @@ class Question:
     notes: tuple[str, ...] = field(default=())
     increments: int = 1
     one_place: bool = False
+    mean_interval: str = "student-t"
+    promised_class: PopulationClass | None = None
 
     def __post_init__(self) -> None:
         """Refuse what no arithmetic can answer."""
@@ -194,6 +204,11 @@ class Question:
     def taken(self) -> str:
         """What is planned, in a word: locations, or composites that have no one location."""
         return "composite" if self.increments > 1 and not self.one_place else "location"
+
+    @property
+    def widened(self) -> bool:
+        """Whether the rules fix the interval that is widened for skewed results."""
+        return self.mean_interval == "skew-widened"
 
     @property
     def target_standard_error(self) -> float | None:

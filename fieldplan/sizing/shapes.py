@@ -180,6 +180,8 @@ def misses(question: Question, shape: SiteShape, counts: Sequence[int]) -> Misse
     single sample whose mean leans as much; with zeros, for short lists and beyond the table,
     simulated on the spot; above 2,000 results by the Edgeworth expansion.
     """
+    if question.widened:
+        return _by_widened(question, shape, counts)
     lean_most = max(abs(part.skewness) for part in shape.parts)
     if shape.zeros and sum(counts) > TOO_MANY and len(counts) == 1:
         return _expanded(question, shape.parts[0], counts[0])
@@ -197,6 +199,18 @@ def misses(question: Question, shape: SiteShape, counts: Sequence[int]) -> Misse
         n, lean, confidence=question.confidence, kind=question.interval, family=_family(shape)
     )
     return Misses(low, high, math.sqrt((low + high) * (1 - low - high) / 200_000))
+
+
+def _by_widened(question: Question, shape: SiteShape, counts: Sequence[int]) -> Misses:
+    """Simulate the interval that the rules fix for skewed results; many as ``TOO_MANY`` results."""
+    from fieldplan.sizing.widened import promise_of
+    from fieldplan.stats.widened_reach import widened_misses
+
+    n = min(max(3, counts[0]), TOO_MANY)
+    campaigns = max(FEWEST, min(10_000, 2 * QUICK_DRAWS // n))
+    low, high = widened_misses(shape.parts[0], n, promise_of(question), campaigns=campaigns)
+    error = math.sqrt((low + high) * (1 - low - high) / campaigns)
+    return Misses(low, high, error)
 
 
 def _expanded(question: Question, shape: Shape, n: int) -> Misses:

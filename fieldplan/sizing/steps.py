@@ -10,6 +10,7 @@ from fieldplan.sizing.counting import Counts
 from fieldplan.sizing.quantities import corrected_for_list, sigma_quantity, target_quantity
 from fieldplan.sizing.question import Question
 from fieldplan.sizing.strata_steps import strata_steps
+from fieldplan.sizing.widened_steps import widened_n_steps
 from fieldplan.stats.intervals import t_quantile
 from fieldplan.stats.precision import (
     unrounded_for_half_width,
@@ -93,7 +94,9 @@ def _single(question: Question, plain: int) -> Iterator[Step]:
     yield first
     if size is not None:
         yield _listed(first.unrounded, size)
-    if question.target_half_width is not None:
+    if question.target_half_width is not None and question.widened:
+        yield from widened_n_steps(question, plain)
+    elif question.target_half_width is not None:
         yield _iterated(question, plain)
     elif plain > whole(corrected_for_list(question, first.unrounded)):
         yield _floored(question, plain)

@@ -23,15 +23,13 @@ Cells = tuple[tuple[int, Held], ...]
 
 @cache
 def _cells() -> dict[tuple[str, str, float], Cells]:
-    """Read the table: class, kind, confidence, then n:worst:middle in units of 10⁻⁴."""
-    found = {}
-    for line in TABLE.split("\n"):
-        if line.strip():
-            name, kind, confidence, *cells = line.split()
-            numbers = [[int(part) for part in cell.split(":")] for cell in cells]
-            found[name, kind, float(confidence)] = tuple(
-                (n, Held(low / 1e4, middle / 1e4)) for n, low, middle in numbers
-            )
+    """Read the table: class, kind, confidence, n, worst and middle in 10⁻⁴."""
+    found: dict[tuple[str, str, float], Cells] = {}
+    for line in TABLE.splitlines():
+        name, kind, confidence, n, worst, middle = line.split()
+        cell = (int(n), Held(int(worst) / 1e4, int(middle) / 1e4))
+        key = (name, kind, float(confidence))
+        found[key] = (*found.get(key, ()), cell)
     return found
 
 

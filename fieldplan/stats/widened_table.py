@@ -1,26 +1,170 @@
 """Written by tests/evidence/interval_table.py; see docs/evidence/intervals.md."""
 
-POPULATIONS = {"cv-up-to-1": 28, "cv-up-to-2": 43}
+POPULATIONS = {"cv-up-to-1": 78, "cv-up-to-2": 93}
 """Simulated of each class."""
 
 TABLE = """\
-cv-up-to-1 two-sided 0.9 5:9233:9467 8:9217:9467 10:9233:9450 15:9050:9383 20:9183:9367 30:9067:9267 50:9017:9167 100:8800:9100 200:8767:9033
-cv-up-to-1 two-sided 0.95 5:9500:9733 8:9567:9750 10:9583:9767 15:9483:9725 20:9583:9708 30:9467:9667 50:9433:9633 100:9383:9583 200:9367:9542
-cv-up-to-1 two-sided 0.99 5:9733:9950 8:9633:9950 10:9750:9933 15:9883:9950 20:9833:9967 30:9917:9950 50:9817:9950 100:9817:9933 200:9850:9933
-cv-up-to-1 upper-limit 0.9 5:9033:9417 8:9067:9517 10:9150:9475 15:8917:9375 20:9017:9367 30:9083:9350 50:9050:9217 100:8950:9100 200:8850:9033
-cv-up-to-1 upper-limit 0.95 5:9367:9717 8:9417:9783 10:9533:9750 15:9483:9750 20:9500:9750 30:9483:9733 50:9500:9633 100:9400:9617 200:9383:9533
-cv-up-to-1 upper-limit 0.99 5:9700:9933 8:9617:9950 10:9733:9933 15:9833:9950 20:9867:9958 30:9850:9967 50:9850:9950 100:9883:9950 200:9833:9933
-cv-up-to-1 lower-limit 0.9 5:9133:9517 8:8883:9300 10:9033:9233 15:8917:9192 20:8917:9125 30:8767:9033 50:8817:9025 100:8683:8983 200:8683:9042
-cv-up-to-1 lower-limit 0.95 5:9433:9800 8:9333:9783 10:9467:9733 15:9400:9642 20:9467:9633 30:9450:9550 50:9450:9533 100:9283:9492 200:9200:9517
-cv-up-to-1 lower-limit 0.99 5:9850:9967 8:9850:9967 10:9883:9967 15:9850:9967 20:9833:9950 30:9850:9933 50:9867:9917 100:9817:9917 200:9833:9900
-cv-up-to-2 two-sided 0.9 5:8983:9550 8:9183:9542 10:9267:9533 15:9200:9450 20:8950:9417 30:9033:9350 50:8967:9250 100:8883:9133 200:8833:9100
-cv-up-to-2 two-sided 0.95 5:9050:9758 8:9550:9792 10:9550:9800 15:9583:9783 20:9533:9733 30:9483:9717 50:9517:9667 100:9383:9617 200:9317:9567
-cv-up-to-2 two-sided 0.99 5:9217:9917 8:9633:9950 10:9767:9950 15:9833:9967 20:9883:9967 30:9917:9967 50:9867:9950 100:9833:9933 200:9850:9933
-cv-up-to-2 upper-limit 0.9 5:8833:9550 8:9033:9608 10:9017:9617 15:9050:9625 20:8917:9617 30:8917:9517 50:9050:9433 100:8783:9333 200:8733:9233
-cv-up-to-2 upper-limit 0.95 5:9167:9767 8:9383:9833 10:9483:9817 15:9450:9833 20:9483:9833 30:9400:9817 50:9567:9800 100:9350:9733 200:9333:9650
-cv-up-to-2 upper-limit 0.99 5:9450:9950 8:9750:9950 10:9800:9950 15:9833:9967 20:9800:9967 30:9833:9983 50:9883:9983 100:9850:9967 200:9900:9950
-cv-up-to-2 lower-limit 0.9 5:9133:9592 8:8883:9358 10:9067:9300 15:8933:9233 20:8783:9133 30:8817:9100 50:8750:9050 100:8833:8983 200:8750:9000
-cv-up-to-2 lower-limit 0.95 5:9433:9867 8:9333:9800 10:9467:9767 15:9433:9700 20:9467:9617 30:9350:9600 50:9317:9550 100:9383:9533 200:9300:9533
-cv-up-to-2 lower-limit 0.99 5:9850:9983 8:9850:9983 10:9883:9983 15:9900:9983 20:9883:9967 30:9900:9950 50:9867:9933 100:9833:9917 200:9783:9917
+cv-up-to-1 two-sided 0.9 5 9342 9478
+cv-up-to-1 two-sided 0.9 8 9303 9424
+cv-up-to-1 two-sided 0.9 10 9292 9385
+cv-up-to-1 two-sided 0.9 15 9243 9327
+cv-up-to-1 two-sided 0.9 20 9186 9286
+cv-up-to-1 two-sided 0.9 30 9146 9228
+cv-up-to-1 two-sided 0.9 50 9078 9162
+cv-up-to-1 two-sided 0.9 100 9035 9101
+cv-up-to-1 two-sided 0.9 200 9002 9066
+cv-up-to-1 two-sided 0.95 5 9586 9748
+cv-up-to-1 two-sided 0.95 8 9548 9730
+cv-up-to-1 two-sided 0.95 10 9644 9719
+cv-up-to-1 two-sided 0.95 15 9637 9691
+cv-up-to-1 two-sided 0.95 20 9583 9675
+cv-up-to-1 two-sided 0.95 30 9600 9643
+cv-up-to-1 two-sided 0.95 50 9566 9607
+cv-up-to-1 two-sided 0.95 100 9532 9569
+cv-up-to-1 two-sided 0.95 200 9502 9544
+cv-up-to-1 two-sided 0.99 5 9779 9938
+cv-up-to-1 two-sided 0.99 8 9572 9944
+cv-up-to-1 two-sided 0.99 10 9804 9946
+cv-up-to-1 two-sided 0.99 15 9911 9944
+cv-up-to-1 two-sided 0.99 20 9896 9944
+cv-up-to-1 two-sided 0.99 30 9914 9940
+cv-up-to-1 two-sided 0.99 50 9914 9933
+cv-up-to-1 two-sided 0.99 100 9910 9923
+cv-up-to-1 two-sided 0.99 200 9902 9915
+cv-up-to-1 upper-limit 0.9 5 9008 9355
+cv-up-to-1 upper-limit 0.9 8 9090 9386
+cv-up-to-1 upper-limit 0.9 10 9118 9384
+cv-up-to-1 upper-limit 0.9 15 9132 9342
+cv-up-to-1 upper-limit 0.9 20 9121 9313
+cv-up-to-1 upper-limit 0.9 30 9090 9262
+cv-up-to-1 upper-limit 0.9 50 9061 9198
+cv-up-to-1 upper-limit 0.9 100 9034 9126
+cv-up-to-1 upper-limit 0.9 200 9010 9079
+cv-up-to-1 upper-limit 0.95 5 9435 9676
+cv-up-to-1 upper-limit 0.95 8 9478 9705
+cv-up-to-1 upper-limit 0.95 10 9517 9706
+cv-up-to-1 upper-limit 0.95 15 9557 9709
+cv-up-to-1 upper-limit 0.95 20 9564 9694
+cv-up-to-1 upper-limit 0.95 30 9563 9675
+cv-up-to-1 upper-limit 0.95 50 9544 9638
+cv-up-to-1 upper-limit 0.95 100 9523 9593
+cv-up-to-1 upper-limit 0.95 200 9501 9562
+cv-up-to-1 upper-limit 0.99 5 9782 9928
+cv-up-to-1 upper-limit 0.99 8 9566 9930
+cv-up-to-1 upper-limit 0.99 10 9801 9936
+cv-up-to-1 upper-limit 0.99 15 9874 9942
+cv-up-to-1 upper-limit 0.99 20 9859 9943
+cv-up-to-1 upper-limit 0.99 30 9900 9946
+cv-up-to-1 upper-limit 0.99 50 9903 9941
+cv-up-to-1 upper-limit 0.99 100 9904 9932
+cv-up-to-1 upper-limit 0.99 200 9896 9922
+cv-up-to-1 lower-limit 0.9 5 9117 9516
+cv-up-to-1 lower-limit 0.9 8 9076 9323
+cv-up-to-1 lower-limit 0.9 10 9072 9253
+cv-up-to-1 lower-limit 0.9 15 9052 9154
+cv-up-to-1 lower-limit 0.9 20 9001 9106
+cv-up-to-1 lower-limit 0.9 30 9012 9063
+cv-up-to-1 lower-limit 0.9 50 8988 9030
+cv-up-to-1 lower-limit 0.9 100 8975 9010
+cv-up-to-1 lower-limit 0.9 200 8977 9008
+cv-up-to-1 lower-limit 0.95 5 9544 9820
+cv-up-to-1 lower-limit 0.95 8 9541 9761
+cv-up-to-1 lower-limit 0.95 10 9533 9712
+cv-up-to-1 lower-limit 0.95 15 9527 9645
+cv-up-to-1 lower-limit 0.95 20 9512 9604
+cv-up-to-1 lower-limit 0.95 30 9506 9565
+cv-up-to-1 lower-limit 0.95 50 9499 9534
+cv-up-to-1 lower-limit 0.95 100 9483 9513
+cv-up-to-1 lower-limit 0.95 200 9491 9507
+cv-up-to-1 lower-limit 0.99 5 9853 9971
+cv-up-to-1 lower-limit 0.99 8 9891 9974
+cv-up-to-1 lower-limit 0.99 10 9893 9971
+cv-up-to-1 lower-limit 0.99 15 9902 9960
+cv-up-to-1 lower-limit 0.99 20 9900 9948
+cv-up-to-1 lower-limit 0.99 30 9898 9934
+cv-up-to-1 lower-limit 0.99 50 9894 9920
+cv-up-to-1 lower-limit 0.99 100 9895 9909
+cv-up-to-1 lower-limit 0.99 200 9893 9904
+cv-up-to-2 two-sided 0.9 5 8451 9552
+cv-up-to-2 two-sided 0.9 8 9000 9550
+cv-up-to-2 two-sided 0.9 10 9166 9517
+cv-up-to-2 two-sided 0.9 15 9235 9471
+cv-up-to-2 two-sided 0.9 20 9218 9435
+cv-up-to-2 two-sided 0.9 30 9152 9355
+cv-up-to-2 two-sided 0.9 50 9060 9264
+cv-up-to-2 two-sided 0.9 100 8954 9168
+cv-up-to-2 two-sided 0.9 200 8916 9114
+cv-up-to-2 two-sided 0.95 5 8556 9755
+cv-up-to-2 two-sided 0.95 8 9175 9809
+cv-up-to-2 two-sided 0.95 10 9382 9799
+cv-up-to-2 two-sided 0.95 15 9627 9776
+cv-up-to-2 two-sided 0.95 20 9635 9765
+cv-up-to-2 two-sided 0.95 30 9601 9737
+cv-up-to-2 two-sided 0.95 50 9562 9681
+cv-up-to-2 two-sided 0.95 100 9492 9620
+cv-up-to-2 two-sided 0.95 200 9459 9577
+cv-up-to-2 two-sided 0.99 5 8688 9916
+cv-up-to-2 two-sided 0.99 8 9280 9940
+cv-up-to-2 two-sided 0.99 10 9500 9958
+cv-up-to-2 two-sided 0.99 15 9778 9969
+cv-up-to-2 two-sided 0.99 20 9885 9968
+cv-up-to-2 two-sided 0.99 30 9920 9964
+cv-up-to-2 two-sided 0.99 50 9919 9956
+cv-up-to-2 two-sided 0.99 100 9896 9941
+cv-up-to-2 two-sided 0.99 200 9886 9926
+cv-up-to-2 upper-limit 0.9 5 8420 9430
+cv-up-to-2 upper-limit 0.9 8 8873 9584
+cv-up-to-2 upper-limit 0.9 10 8977 9588
+cv-up-to-2 upper-limit 0.9 15 8998 9624
+cv-up-to-2 upper-limit 0.9 20 8994 9600
+cv-up-to-2 upper-limit 0.9 30 8970 9538
+cv-up-to-2 upper-limit 0.9 50 8953 9456
+cv-up-to-2 upper-limit 0.9 100 8908 9340
+cv-up-to-2 upper-limit 0.9 200 8912 9248
+cv-up-to-2 upper-limit 0.95 5 8692 9679
+cv-up-to-2 upper-limit 0.95 8 9297 9782
+cv-up-to-2 upper-limit 0.95 10 9409 9816
+cv-up-to-2 upper-limit 0.95 15 9484 9839
+cv-up-to-2 upper-limit 0.95 20 9492 9843
+cv-up-to-2 upper-limit 0.95 30 9476 9836
+cv-up-to-2 upper-limit 0.95 50 9472 9790
+cv-up-to-2 upper-limit 0.95 100 9440 9733
+cv-up-to-2 upper-limit 0.95 200 9426 9672
+cv-up-to-2 upper-limit 0.99 5 9026 9901
+cv-up-to-2 upper-limit 0.99 8 9485 9929
+cv-up-to-2 upper-limit 0.99 10 9647 9945
+cv-up-to-2 upper-limit 0.99 15 9803 9968
+cv-up-to-2 upper-limit 0.99 20 9820 9975
+cv-up-to-2 upper-limit 0.99 30 9874 9979
+cv-up-to-2 upper-limit 0.99 50 9879 9977
+cv-up-to-2 upper-limit 0.99 100 9870 9968
+cv-up-to-2 upper-limit 0.99 200 9875 9954
+cv-up-to-2 lower-limit 0.9 5 9080 9667
+cv-up-to-2 lower-limit 0.9 8 9076 9419
+cv-up-to-2 lower-limit 0.9 10 9072 9327
+cv-up-to-2 lower-limit 0.9 15 9031 9208
+cv-up-to-2 lower-limit 0.9 20 9001 9153
+cv-up-to-2 lower-limit 0.9 30 9012 9100
+cv-up-to-2 lower-limit 0.9 50 8997 9051
+cv-up-to-2 lower-limit 0.9 100 8976 9022
+cv-up-to-2 lower-limit 0.9 200 8967 9011
+cv-up-to-2 lower-limit 0.95 5 9440 9906
+cv-up-to-2 lower-limit 0.95 8 9541 9839
+cv-up-to-2 lower-limit 0.95 10 9533 9784
+cv-up-to-2 lower-limit 0.95 15 9521 9694
+cv-up-to-2 lower-limit 0.95 20 9512 9648
+cv-up-to-2 lower-limit 0.95 30 9506 9597
+cv-up-to-2 lower-limit 0.95 50 9500 9556
+cv-up-to-2 lower-limit 0.95 100 9483 9527
+cv-up-to-2 lower-limit 0.95 200 9490 9513
+cv-up-to-2 lower-limit 0.99 5 9620 9988
+cv-up-to-2 lower-limit 0.99 8 9870 9990
+cv-up-to-2 lower-limit 0.99 10 9892 9988
+cv-up-to-2 lower-limit 0.99 15 9902 9977
+cv-up-to-2 lower-limit 0.99 20 9900 9965
+cv-up-to-2 lower-limit 0.99 30 9898 9950
+cv-up-to-2 lower-limit 0.99 50 9894 9933
+cv-up-to-2 lower-limit 0.99 100 9895 9917
+cv-up-to-2 lower-limit 0.99 200 9897 9908
 """
-"""Class, kind, confidence; n:worst:middle in 10⁻⁴ of campaigns."""
+"""Class, kind, confidence, n; held in the worst population and the middle one, 10⁻⁴."""

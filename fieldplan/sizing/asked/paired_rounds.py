@@ -9,6 +9,7 @@ from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.counting import assured_counts, plain_counts
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
+from fieldplan.sizing.widened import by_student
 from fieldplan.stats.allocation import first_that, share_total
 from fieldplan.stats.assurance import chance_of_variance
 from fieldplan.stats.distributions import normal_quantile
@@ -56,9 +57,12 @@ class PairedRounds:
             for part in self.asked.question.parts
         )
         if self.table.half_width is None:
-            return replace(self.asked.question, parts=parts)
+            return replace(by_student(self.asked.question), parts=parts)
         return replace(
-            self.asked.question, parts=parts, target="half_width", value=self.table.half_width
+            by_student(self.asked.question),
+            parts=parts,
+            target="half_width",
+            value=self.table.half_width,
         )
 
     def spread(self, sigma: float) -> float:

@@ -1,7 +1,7 @@
 """Precision against money over all designs that the campaign's data allow."""
 
 from collections.abc import Callable, Iterable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal
 
 from fieldplan.sizing.asked.model import Asked
@@ -18,6 +18,7 @@ from fieldplan.sizing.frontier_composites import INCREMENTS
 from fieldplan.sizing.frontier_kinds import Kind, kinds_of
 from fieldplan.sizing.model import Amount, Finding, Picture, Series, Size
 from fieldplan.sizing.precision import Precision
+from fieldplan.sizing.widened import by_student
 from fieldplan.sizing.words import counted, figure, listed, with_unit
 
 Style = Literal["line", "hollow", "points"]
@@ -89,9 +90,14 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     -------
     Finding or None
         None without prices or sigma, for a census, and where something else than the precision
-        of one mean is asked: other designs would not keep the targets of several analytes.
+        of one mean is asked: other designs would not keep the targets of several analytes. None
+        too for a half-width of the skew-widened interval, known for one design only.
     """
     question = asked.question
+    if question.widened and question.target_half_width is not None:
+        return None
+    if question.widened:
+        return finding(replace(asked, question=by_student(question)), size)
     prices = question.prices
     if prices is None or question.census or not asked.sigma_known or size.question != "mean":
         return None

@@ -77,8 +77,11 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     Returns
     -------
     Finding or None
-        None where ``near_normal`` can judge no shape.
+        None where ``near_normal`` can judge no shape, and where the rules fix another interval
+        than Student's t, which the band's numbers are of.
     """
+    if asked.question.widened:
+        return None
     counts = [entry.needed for entry in size.strata]
     judged = judge(asked, counts)
     if not judged:

@@ -56,7 +56,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     if not judged or worst(judged)[1].held >= asked.question.confidence - POINT:
         return None
     question = asked.question
-    short = short_list(question, counts)
+    short = short_list(question, counts) or question.widened
     ends = [None if short else n_within(question, shape, counts) for shape, _ in judged]
     enough = "" if short else _enough_sentence(question, ends)
     return Finding(
@@ -198,7 +198,7 @@ def _rows(
 ) -> tuple[tuple[str, ...], ...]:
     """Set the shapes side by side; shares per 100 campaigns."""
     thirty = within_lists(question, scaled(counts, TEXTBOOK))
-    short, rows = short_list(question, counts), []
+    short, rows = short_list(question, counts) or question.widened, []
     for (shape, missed), end in zip(judged, ends, strict=True):
         lean = equivalent(question, shape, counts)[1]
         textbook = "–" if thirty is None else f"{100 * misses(question, shape, thirty).held:.1f}"
@@ -221,7 +221,7 @@ def _steps(question: Question, counts: Sequence[int], judged: Sequence[Judged]) 
     shape, missed = worst(judged)
     n, lean = equivalent(question, shape, counts)
     skewness = Quantity("G1", f"skewness, {shape.name}", lean)
-    drawn = shape.zeros or short_list(question, counts)
+    drawn = shape.zeros or short_list(question, counts) or question.widened
     held = Step(
         symbol="held",
         meaning="Share of campaigns whose interval holds the mean, worst shape that fits",
@@ -237,7 +237,8 @@ def _steps(question: Question, counts: Sequence[int], judged: Sequence[Judged]) 
         source="simulated for this plan, fixed seed" if drawn else SOURCES[2],
     )
     steps = (_lean_step(question, shape, n, lean), held)
-    return steps if short_list(question, counts) else (*steps, _rule_step(question, skewness))
+    plain = not short_list(question, counts) and not question.widened
+    return (*steps, _rule_step(question, skewness)) if plain else steps
 
 
 def _rule_step(question: Question, skewness: Quantity) -> Step:

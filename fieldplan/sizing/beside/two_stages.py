@@ -43,13 +43,14 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     Returns
     -------
     Finding or None
-        None without a half-width target, with strata, for a list, and for a typed number.
+        None without a half-width target, with strata, for a list, for a typed number, and where
+        the rules fix another interval than Student's t.
     """
     question = asked.question
     width = question.target_half_width
     if asked.objective.question != "mean" or width is None or size.number_from != "target":
         return None
-    if len(question.parts) > 1 or question.total_population is not None:
+    if question.widened or len(question.parts) > 1 or question.total_population is not None:
         return None
     part = question.parts[0]
     target = _Target(
