@@ -24,6 +24,10 @@ NEAR_NORMAL = "if single results are near normal (lower if they are skewed)"
 
 def chance_condition(question: Question) -> str:
     """Say under what condition a chance holds."""
+    if question.widened and question.target_half_width is not None:
+        from fieldplan.sizing.widened_steps import widened_condition
+
+        return widened_condition(question)
     if not question.heavy_tails:
         return NEAR_NORMAL
     return f"with the heavy tails declared (excess kurtosis {question.heavy_tails:g})"
@@ -45,6 +49,7 @@ def sentences(
     tuple of str
     """
     lines = [_answer(question, counts), increments_words(question, counts)]
+    lines += _widened(question, counts)
     lines.append(_chance(question, counts, assured))
     lines += [
         expected_precision(question, counts),
@@ -53,6 +58,14 @@ def sentences(
     ]
     lines += _short_lists(question, counts)
     return tuple(line for line in lines if line)
+
+
+def _widened(question: Question, counts: Counts) -> list[str]:
+    if not question.widened:
+        return []
+    from fieldplan.sizing.widened_steps import widened_sentences
+
+    return widened_sentences(question, counts)
 
 
 def _answer(question: Question, counts: Counts) -> str:
@@ -185,7 +198,11 @@ def expected_precision(question: Question, counts: Counts) -> str:
     error = with_unit(figure(precision.standard_error(counts.needed)), question.unit)
     reach = with_unit(figure(precision.half_width(counts.needed)), question.unit)
     share = typed_percent(question.confidence)
-    if question.interval == "two-sided":
+    if question.interval == "two-sided" and question.widened:
+        from fieldplan.sizing.widened_steps import expected_words
+
+        width = expected_words(question, precision.half_width(counts.needed))
+    elif question.interval == "two-sided":
         width = f"a {share} interval of ±{reach}"
     else:
         side = "above" if question.interval == "upper-limit" else "below"
