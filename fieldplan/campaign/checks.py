@@ -24,8 +24,14 @@ AREA_LAYOUTS = (
     "square-grid",
     "triangular-grid",
     "compact-strata",
+    "balanced-list",
 )
-LIST_LAYOUTS = ("simple-random", "stratified", "census")
+LIST_LAYOUTS = ("simple-random", "stratified", "balanced-list", "census")
+SPREAD_VARIANCES = {
+    "compact-strata": ("pairs", "covariance"),
+    "balanced-list": ("neighbours", "covariance"),
+}
+"""What the variance may be estimated from, by layout; the first is what is done unasked."""
 _AREA_ONLY = ("boundary", "boundary_assumed", "strata", "exclusion", "inset_m")
 
 Data = dict[str, Any]
@@ -159,14 +165,31 @@ def _unsuitable_design_keys(
             if design.get(key):
                 text = "a census visits every member of the list. Take this key out."
                 yield Problem(("design", i, key), text)
-    if layout != "compact-strata" and isinstance(layout, str) and not is_fill_in(layout):
-        for key in ("per_cell", "variance"):
-            if key in design and not is_fill_in(design[key]):
-                text = 'this key belongs to layout = "compact-strata". Take it out.'
-                yield Problem(("design", i, key), text)
+    if isinstance(layout, str) and not is_fill_in(layout):
+        yield from _spread_keys(design, layout, i)
     if kind == "list" and design.get("minimum_spacing_m"):
         text = "members of a list stand where they stand. Take this key out."
         yield Problem(("design", i, "minimum_spacing_m"), text)
+
+
+def _spread_keys(design: Data, layout: str, i: int) -> Iterator[Problem]:
+    """Keep the keys of layouts that spread their places to the layouts that know them."""
+    if layout != "compact-strata" and "per_cell" in design and not is_fill_in(design["per_cell"]):
+        text = 'this key belongs to layout = "compact-strata". Take it out.'
+        yield Problem(("design", i, "per_cell"), text)
+    variance = design.get("variance")
+    if variance is None or is_fill_in(variance):
+        return
+    suited = SPREAD_VARIANCES.get(layout)
+    if suited is None:
+        text = (
+            "this key belongs to compact-strata and balanced-list; the places of this layout have "
+            "a formula of their own. Take it out."
+        )
+        yield Problem(("design", i, "variance"), text)
+    elif variance in {"pairs", "neighbours", "covariance"} and variance not in suited:
+        text = f"{layout} takes {' or '.join(map(shown, suited))} (got {shown(variance)})."
+        yield Problem(("design", i, "variance"), text)
 
 
 def _objectives(data: Data) -> Iterator[Problem]:

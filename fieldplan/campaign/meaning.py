@@ -70,7 +70,7 @@ MEANING: dict[str, str] = {
     "design.frame": "the frame that it samples; may be left out where there is one",
     "design.layout": "how locations are drawn",
     "design.per_cell": "locations in each cell of compact-strata",
-    "design.variance": "what the variance of compact-strata is estimated from, fixed beforehand",
+    "design.variance": "what the variance of a spread layout is estimated from, fixed beforehand",
     "design.allocation": "how locations are shared between strata",
     "design.equal_in": "what equal-precision makes the same in every stratum's own mean",
     "design.floor": "the fewest locations of a stratum; a variance needs 2",

@@ -127,11 +127,12 @@ class DesignTable(Table):
         "square-grid",
         "triangular-grid",
         "compact-strata",
+        "balanced-list",
         "even-spacing",
         "census",
     ]
     per_cell: Literal[1, 2] = 1
-    variance: Literal["pairs", "covariance"] = "pairs"
+    variance: Literal["pairs", "neighbours", "covariance"] = "pairs"
     allocation: Literal["proportional", "neyman", "cost-optimal", "equal-precision"] = (
         "proportional"
     )

@@ -253,9 +253,9 @@ def _depth(answers: Answers) -> list[str]:
 
 def _design(answers: Answers) -> list[str]:
     others = (
-        "census"
+        "balanced-list, census"
         if answers.list_file is not None
-        else "square-grid, triangular-grid, compact-strata"
+        else "square-grid, triangular-grid, compact-strata, balanced-list"
     )
     layout, comment = "simple-random", f"or {others}"
     if answers.divided:

@@ -205,6 +205,7 @@ _LAYOUTS = {
     "stratified": "drawn at random in each stratum",
     "square-grid": "on a square grid with a random start",
     "triangular-grid": "on a triangular grid with a random start",
+    "balanced-list": "on a balanced list, spread over the ground",
     "compact-strata": "in compact cells of nearly equal area",
     "census": "are all members of the list",
 }

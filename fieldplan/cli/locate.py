@@ -29,6 +29,7 @@ LAYOUT_NAMES = (
     "square-grid",
     "triangular-grid",
     "compact-strata",
+    "balanced-list",
     "census",
 )
 MOST_ROWS = 40

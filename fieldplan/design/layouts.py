@@ -4,8 +4,10 @@ from difflib import get_close_matches
 
 from fieldplan.base.errors import DesignError
 from fieldplan.campaign.model import DesignTable
+from fieldplan.design.balanced_list import BalancedList
 from fieldplan.design.census import Census
 from fieldplan.design.compact_strata import CompactStrata
+from fieldplan.design.even_spacing import EvenSpacing
 from fieldplan.design.grid import SQUARE_GRID, TRIANGULAR_GRID
 from fieldplan.design.model import Layout
 from fieldplan.design.simple_random import SimpleRandom
@@ -17,6 +19,8 @@ LAYOUTS: tuple[Layout, ...] = (
     SQUARE_GRID,
     TRIANGULAR_GRID,
     CompactStrata(),
+    BalancedList(),
+    EvenSpacing(),
     Census(),
 )
 
@@ -54,4 +58,9 @@ def layout_of(design: DesignTable) -> Layout:
     """
     if design.layout == CompactStrata.name:
         return CompactStrata(per_cell=design.per_cell, variance=design.variance)
+    if design.layout == BalancedList.name:
+        by_curves = design.variance == "covariance"
+        return BalancedList("covariance" if by_curves else "neighbours")
+    if design.layout == EvenSpacing.name:
+        return EvenSpacing(starts=design.starts)
     return layout_named(design.layout)

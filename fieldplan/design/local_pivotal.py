@@ -131,7 +131,7 @@ def balanced_order(places: Sequence[Place], stream: Stream) -> list[int]:
     --------
     >>> row = [(0, 0), (1, 0), (50, 0), (51, 0)]
     >>> balanced_order(row, Stream(1, "main", "site", "order"))
-    [0, 3, 1, 2]
+    [1, 3, 0, 2]
     """
     members = list(range(len(places)))
     second: list[dict[int, int]] = []

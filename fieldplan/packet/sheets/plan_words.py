@@ -13,6 +13,7 @@ LAYOUTS = {
     "stratified": "stratified random",
     "square-grid": "systematic square grid with a random origin and rotation",
     "triangular-grid": "systematic triangular grid with a random origin and rotation",
+    "balanced-list": "balanced list, spread by the local pivotal method",
     "compact-strata": "compact cells of nearly equal area with random places in each",
     "census": "every unit of the list (census)",
 }

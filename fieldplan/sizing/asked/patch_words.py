@@ -17,6 +17,7 @@ _PLACES = {
     "triangular-grid": "on a triangular grid",
     "simple-random": "at random places",
     "stratified": "at random places in each stratum",
+    "balanced-list": "on a balanced list, counted as random places, which hit no oftener",
     "compact-strata": "in compact cells, counted as random places, which hit no oftener",
 }
 

@@ -136,12 +136,13 @@ BROKEN = [
     (
         [LIST, ('"simple-random"', '"square-grid"')],
         '16: design.layout: this layout does not suit a frame of kind "list" (got "square-grid"). '
-        "Takes simple-random, stratified, census.",
+        "Takes simple-random, stratified, balanced-list, census.",
     ),
     (
         [('"simple-random"', '"census"')],
         '16: design.layout: this layout does not suit a frame of kind "area" (got "census"). '
-        "Takes simple-random, stratified, square-grid, triangular-grid, compact-strata.",
+        "Takes simple-random, stratified, square-grid, triangular-grid, compact-strata, "
+        "balanced-list.",
     ),
     (
         [('"simple-random"', '"square-grid"\nper_cell = 2')],
@@ -149,7 +150,16 @@ BROKEN = [
     ),
     (
         [('"simple-random"', '"simple-random"\nvariance = "covariance"')],
-        '17: design.variance: this key belongs to layout = "compact-strata". Take it out.',
+        "17: design.variance: this key belongs to compact-strata and balanced-list; the places of "
+        "this layout have a formula of their own. Take it out.",
+    ),
+    (
+        [('"simple-random"', '"balanced-list"\nvariance = "pairs"')],
+        '17: design.variance: balanced-list takes "neighbours" or "covariance" (got "pairs").',
+    ),
+    (
+        [('"simple-random"', '"compact-strata"\nvariance = "neighbours"')],
+        '17: design.variance: compact-strata takes "pairs" or "covariance" (got "neighbours").',
     ),
     (
         [('"simple-random"', '"stratified"')],

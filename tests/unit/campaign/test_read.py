@@ -372,8 +372,8 @@ VALUES = [
     (
         ('"simple-random"', '"simple-randon"'),
         '16: design.layout: how locations are drawn; takes one of "simple-random", "stratified", '
-        '"square-grid", "triangular-grid", "compact-strata", "even-spacing", "census" '
-        '(got "simple-randon"). '
+        '"square-grid", "triangular-grid", "compact-strata", "balanced-list", "even-spacing", '
+        '"census" (got "simple-randon"). '
         'Did you mean "simple-random"?',
     ),
     (

@@ -46,6 +46,7 @@ def test_each_layout_that_fits_is_measured_once() -> None:
         "square-grid",
         "triangular-grid",
         "compact-strata",
+        "balanced-list",
     ]
     assert {m.locations for m in found} == {21}
     one = area_frame(meadow=MEADOW_POLYGON)
@@ -55,6 +56,7 @@ def test_each_layout_that_fits_is_measured_once() -> None:
         "square-grid",
         "triangular-grid",
         "compact-strata",
+        "balanced-list",
     ]
 
 
@@ -77,10 +79,11 @@ def test_a_layout_that_cannot_be_drawn_says_why_and_spares_the_others() -> None:
     square = SQUARE_GRID.spacing(MEADOW_POLYGON.area, 40)
     spacing = round(square + 0.5, 1)  # finer than triangles stand, coarser than squares do
     found = compare_layouts(frame, counts, seed=1, design="main", minimum_spacing_m=spacing)
-    assert [bool(m.problem) for m in found] == [True, True, False, True]
+    assert [bool(m.problem) for m in found] == [True, True, False, True, True]
     assert "room for" in found[0].problem
     assert f"minimum_spacing_m = {spacing:g}" in found[1].problem
     assert "in its 40 cells" in found[3].problem
+    assert "balanced list" in found[4].problem
 
 
 def test_a_list_has_nothing_to_compare() -> None:

@@ -1,0 +1,174 @@
+"""The mean and its variance from places that a layout has spread over the ground."""
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+from typing import Literal
+
+import numpy as np
+
+from fieldplan.base.errors import DesignError
+from fieldplan.design.model import MeanEstimate, StratumEstimate, StratumValues
+from fieldplan.design.strata import needs_spread, weighted_mean
+from fieldplan.stats.cell_variance import (
+    can_weigh_curves,
+    curve_variance,
+    freedom_of_small_parts,
+)
+from fieldplan.stats.neighbour_variance import neighbour_variance
+
+SpreadRule = Literal["neighbours", "covariance"]
+SPREAD_LAYOUTS = ("balanced-list",)
+MOST_RESULTS = 3_000
+"""Above this many results of one stratum the table of neighbours grows too large."""
+
+METHODS = {
+    "neighbours": (
+        "Balanced list: {means}. The variance comes from how each result differs from its "
+        "neighbours (Stevens and Olsen 2003), with the degrees of freedom of that comparison."
+    ),
+    "covariance": (
+        "Balanced list: {means}. The variance is that inside squares of one location's share of "
+        "the area by how results fade with distance, averaged over 126 curves by how likely the "
+        "results make each; n − 1 degrees of freedom a stratum."
+    ),
+}
+MODELLED = (
+    "This standard error rests on a model: results near normal, alike all over a stratum but for a "
+    "slope. Where results lean strongly it can be too small."
+)
+WIDE = (
+    "Neighbours differ by more than the mean can wander, so that this standard error is usually "
+    "somewhat too large."
+)
+LONE = (
+    "A stratum kept a single result, so that no stratum gets credit for the layout: mean and "
+    "interval are computed by the formula for random places."
+)
+NO_CREDIT = (
+    "For comparison only, no credit for the layout: the formula for simple random places gives a "
+    "standard error {times:.2f} times as large."
+)
+
+
+@dataclass(frozen=True)
+class _Found:
+    """Variance of one stratum's mean, what it knows, and whether it fell back to neighbours."""
+
+    variance: float
+    degrees_of_freedom: float
+    falls_back: bool
+
+
+def estimate_spread(
+    strata: Sequence[StratumValues], *, layout: str, rule: SpreadRule, single_result: str
+) -> MeanEstimate:
+    """Weigh the stratum means, and estimate the variance by a rule fixed before results.
+
+    Parameters
+    ----------
+    strata : sequence of StratumValues
+        With coordinates.
+    layout : str
+        That drew the places; only one that spreads them may use their neighbours.
+    rule : str
+        ``neighbours``, or ``covariance``, which falls back to neighbours for a list and in a
+        stratum of fewer than 20 or more than 400 results.
+    single_result : str
+        ``refuse``, or ``borrow-spread``: with a stratum of one result the whole estimate takes the
+        formula for random places.
+
+    Returns
+    -------
+    MeanEstimate
+
+    Raises
+    ------
+    DesignError
+        The layout does not spread its places, a stratum has no result, one result that the rule
+        refuses, or no record of its places.
+    """
+    if layout not in SPREAD_LAYOUTS:
+        message = (
+            f'the variance from {rule} needs places that were spread, and layout "{layout}" leaves '
+            "them to chance: the interval would be too narrow. Use the formula of that layout."
+        )
+        raise DesignError(message)
+    means = (
+        "the plain mean"
+        if len(strata) == 1
+        else "stratum means weighed by their shares of the population"
+    )
+    method = METHODS[rule].format(means=means)
+    if any(stratum.population is not None for stratum in strata):
+        method += " Each term is multiplied by (1 − n/N), since the list is finite."
+    plain = weighted_mean(strata, single_result=single_result, method=method)
+    if any(needs_spread(stratum) for stratum in strata):
+        return replace(plain, caution=f"{LONE} {plain.caution}".strip())
+    found = [_stratum(values, rule) for values in strata]
+    parts = [
+        (s.weight**2 * f.variance, f.degrees_of_freedom) for s, f in zip(strata, found, strict=True)
+    ]
+    entries: tuple[StratumEstimate, ...] = tuple(
+        replace(entry, variance_of_mean=f.variance)
+        for entry, f in zip(plain.strata, found, strict=True)
+    )
+    error = math.sqrt(math.fsum(variance for variance, _ in parts))
+    return replace(
+        plain,
+        standard_error=error,
+        degrees_of_freedom=freedom_of_small_parts(*zip(*parts, strict=True)),
+        strata=entries,
+        caution=_caution(strata, found, rule, times=_ratio(plain.standard_error, error)),
+    )
+
+
+def _ratio(plain: float, error: float) -> float:
+    return plain / error if error > 0 else 0.0
+
+
+def _stratum(stratum: StratumValues, rule: SpreadRule) -> _Found:
+    n = stratum.values.size
+    if stratum.population == n:
+        return _Found(0.0, math.inf, falls_back=False)
+    if stratum.coordinates is None:
+        message = (
+            f"stratum '{stratum.stratum}' has no record of its places; use the record of the "
+            "packet by which the samples were taken."
+        )
+        raise DesignError(message)
+    if n > MOST_RESULTS:
+        message = (
+            f"stratum '{stratum.stratum}' has {n:,} results; neighbours can be compared for "
+            f"{MOST_RESULTS:,} at most. Divide the stratum."
+        )
+        raise DesignError(message)
+    area = stratum.population is None
+    if rule == "covariance" and area and can_weigh_curves(stratum.values):
+        curves = curve_variance(
+            stratum.values,
+            stratum.coordinates,
+            np.arange(n),
+            np.full(n, 1.0 / n),
+            area=stratum.measure,
+        )
+        return _Found(curves.variance, curves.degrees_of_freedom, falls_back=False)
+    near = neighbour_variance(stratum.values, stratum.coordinates)
+    left = 1.0 if stratum.population is None else 1.0 - n / stratum.population
+    return _Found(near.variance * left, near.degrees_of_freedom, falls_back=rule == "covariance")
+
+
+def _caution(
+    strata: Sequence[StratumValues], found: Sequence[_Found], rule: SpreadRule, *, times: float
+) -> str:
+    """Say where the standard error is known to be off, what fell back, and the contrast."""
+    back = [f"'{s.stratum}'" for s, f in zip(strata, found, strict=True) if f.falls_back]
+    lines = [WIDE if rule == "neighbours" or len(back) == len(strata) else MODELLED]
+    if back:
+        lines.append(
+            "Curves can be weighed for an area with 20 to 400 results that differ; "
+            f"{', '.join(back)} took neighbours instead."
+        )
+    if times > 0:
+        lines.append(NO_CREDIT.format(times=times))
+    return " ".join(lines)
