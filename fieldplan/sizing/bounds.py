@@ -4,10 +4,14 @@ from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from fieldplan.base.errors import DesignError
+from fieldplan.sizing.words import named
 from fieldplan.stats.strata import Strata
 
 if TYPE_CHECKING:
     from fieldplan.sizing.question import Part, Question
+
+WEIGHT_SLACK = 0.002
+"""Weights typed with three digits may be off by so much in sum."""
 
 
 def strata_of(question: "Question") -> Strata:
@@ -51,20 +55,47 @@ def result_cap(part: "Part") -> int | None:
 
 
 def check_bounds(question: "Question") -> None:
-    """Refuse bounds that cross, and shares that lack what they are made of.
+    """Refuse weights that do not sum up, bounds that cross, shares that lack what they need.
 
     Raises
     ------
     DesignError
-        A ``most`` below the floor, the cost of a result missing, or a mean missing.
+        Weights, a ``most`` below the floor, the cost of a result or a mean missing, several
+        analytes that cannot decide together.
     """
-    faults = [line for part in question.parts if (line := _crossed(part, question.floor))]
+    faults = [*_weights(question), *_together(question)]
+    faults += [line for part in question.parts if (line := _crossed(part, question.floor))]
     if question.allocation == "cost-optimal":
         faults += _without_cost(question)
     if question.allocation == "equal-precision" and question.equal_in == "relative-standard-error":
         faults += _without_mean(question)
     if faults:
         raise DesignError(*faults)
+
+
+def _weights(question: "Question") -> list[str]:
+    total = sum(part.weight for part in question.parts)
+    if not question.parts or abs(total - 1) <= WEIGHT_SLACK:
+        return []
+    return [
+        f"the weights of {named([part.name for part in question.parts])} sum to {total:.4g}; they "
+        "are shares of the population and must sum to 1."
+    ]
+
+
+def _together(question: "Question") -> list[str]:
+    """Say what keeps several analytes from deciding together."""
+    faults = []
+    if question.also and any(q.target == "budget" for q in (question, *question.also)):
+        faults.append("a budget decides n alone; give every analyte a precision, or one a budget.")
+    own = [(part.name, part.weight) for part in question.parts]
+    faults += [
+        f"the strata of {other.analyte} differ from those of {question.analyte}; analytes that "
+        "decide together have the same strata and weights."
+        for other in question.also
+        if [(part.name, part.weight) for part in other.parts] != own
+    ]
+    return faults
 
 
 def _crossed(part: "Part", floor: int) -> str:

@@ -3,8 +3,10 @@
 import math
 from collections.abc import Sequence
 from dataclasses import replace
+from typing import TYPE_CHECKING
 
-from fieldplan.sizing.question import Question
+if TYPE_CHECKING:
+    from fieldplan.sizing.question import Question
 
 
 def figure(value: float, digits: int = 3) -> str:
@@ -67,7 +69,7 @@ def counted(number: int, word: str) -> str:
     return f"{number} {word}" + ("" if number == 1 else "s")
 
 
-def targeted_words(question: Question, before: str) -> str:
+def targeted_words(question: "Question", before: str) -> str:
     """Name the targeted places that the cost holds, behind ``before``; empty without any.
 
     Examples
@@ -132,7 +134,7 @@ def with_unit(value: str, unit: str) -> str:
     return f"{value} {unit}" if unit else value
 
 
-def target_words(question: Question) -> str:
+def target_words(question: "Question") -> str:
     """Say the target as the sheet prints it.
 
     Examples

@@ -260,6 +260,43 @@ def test_bounds_that_cross_are_refused_with_the_stratum() -> None:
         Question(short, "standard_error", 2.0)
 
 
+def test_weights_that_do_not_sum_up_are_refused() -> None:
+    """They are shares of one population."""
+    two = Part("a", 0.5, 1.0), Part("b", 0.4, 2.0)
+    with pytest.raises(DesignError, match=r"weights of a and b sum to 0\.9; .* must sum to 1"):
+        Question(two, "standard_error", 1.0)
+
+
+@pytest.mark.parametrize(
+    ("other", "said"),
+    [
+        ({"target": "budget", "value": 900.0, "prices": PRICES}, "a budget decides n alone"),
+        ({"parts": (Part("x", 1.0, 3.0),)}, "the strata of zinc differ from those of lead"),
+    ],
+)
+def test_analytes_that_cannot_decide_together_are_refused(
+    other: dict[str, object], said: str
+) -> None:
+    """One line each, with the remedy."""
+    question = both()
+    (zinc,) = question.also
+    with pytest.raises(DesignError, match=said):
+        replace(question, also=(replace(zinc, **other),))  # type: ignore[arg-type]
+
+
+def test_one_population_keeps_both_targets_as_well() -> None:
+    """Without strata the harder analyte decides: (30/4)² = 56.25 of 60 units' 29.03."""
+    zinc = Question((Part("site", 1.0, 30.0, population=60),), "standard_error", 4.0, analyte="z")
+    lead = Question(
+        (Part("site", 1.0, 20.0, population=60),), "standard_error", 4.0, analyte="l", also=(zinc,)
+    )
+    found = answer(lead)
+    assert found.needed == answer(zinc).needed == 30
+    assert found.steps[0].unrounded == pytest.approx(56.25 / (1 + 56.25 / 60))
+    typed = answer(replace(lead, locations=20))
+    assert "≤ 4 for l and standard error of the mean ≤ 4 for z" in " ".join(typed.sentences)
+
+
 def test_a_campaign_keeps_the_targets_of_all_objectives_that_decide() -> None:
     """From file to size: counts, target in words, and what each analyte gets."""
     campaign = campaign_with_zinc(
