@@ -151,22 +151,23 @@ def stratum_values(plan: Plan, returns: Returns, bound: Bound) -> tuple[StratumV
     found = []
     for stratum in plan.frame.strata:
         used = [r for r in returns.results if r.used and r.stratum == stratum.name]
+        here = [places[r.location_id] for r in used if r.location_id in places]
+        spots = np.array([(place.easting, place.northing) for place in here]).reshape(-1, 2)
         own = StratumValues(
             stratum=stratum.name,
             weight=stratum.weight,
             values=np.array([getattr(r, bound) for r in used], dtype=np.float64),
             population=stratum.count,
+            coordinates=spots if len(here) == len(used) else None,
+            measure=stratum.measure,
         )
         cut = planned_cells(plan, stratum.name)
         if cut:
-            here = [places[result.location_id] for result in used]
-            own = replace(
-                own,
-                coordinates=np.array([(p.easting, p.northing) for p in here]).reshape(-1, 2),
-                cells=np.array([place.cell for place in here], dtype=np.int64),
-                cut=cut,
-                measure=stratum.measure,
-            )
+            cells = np.array([place.cell for place in here], dtype=np.int64)
+            own = replace(own, cells=cells, cut=cut)
+        if any(place.start for place in plan.locations.places):
+            starts = [places[result.location_id].start for result in used]
+            own = replace(own, starts=np.array(starts, dtype=np.int64))
         found.append(own)
     return tuple(found)
 

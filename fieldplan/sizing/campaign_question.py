@@ -128,7 +128,7 @@ def ask(
         locations=design.locations,
         census=design.layout == "census",
         grid=design.layout.endswith("-grid"),
-        cells=design.layout == "compact-strata",
+        cells=design.layout in {"compact-strata", "balanced-list"},
         targeted=targeted,
         prices=None if cost is None else prices_of(cost),
         controls=tuple(ControlRate(qc.kind, qc.share, qc.count, qc.source) for qc in campaign.qc),

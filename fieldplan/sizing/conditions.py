@@ -52,7 +52,7 @@ def conditions(question: Question, needed: tuple[int, ...]) -> tuple[str, ...]:
         )
     if question.cells:
         lines.append(
-            "Compact strata are sized as random places, without credit; the interval will take "
+            "A spread layout is sized as random places, without credit; the interval will take "
             "the credit that the results show. With 20 pilot results or more whose places are "
             "known, --more space says how many locations that would save."
         )

@@ -112,7 +112,8 @@ class Question:
     grid : bool
         A systematic layout, which is sized without credit.
     cells : bool
-        A layout in compact cells, which is sized without credit but earns it in the estimate.
+        A layout in compact cells or a balanced list, sized without credit but given it in the
+        estimate.
     equal_in : str
         What equal precision levels out between strata: the standard error of their means, or the
         same as a share of the mean.

@@ -285,7 +285,7 @@ def _assumptions(asked: Asked, size: Size, compared: _Compared) -> tuple[str, ..
     if question.grid:
         lines.append("A grid is priced as random places are: its evenness earns no credit here.")
     if "places spread out" in compared.rows:
-        laid = asked.campaign.design[0].layout == "compact-strata"
+        laid = asked.campaign.design[0].layout in {"compact-strata", "balanced-list"}
         lines.append(
             "Places spread out, one in each of n compact parts, save what the positions of the "
             "pilot predict; --more space says how sure that is. This plan "
