@@ -16,7 +16,7 @@ from fieldplan.estimate.planned import Planned, planned_for
 from fieldplan.estimate.population import is_census, outside_sentence, population_sentence
 from fieldplan.estimate.rejected import rejected_sentence
 from fieldplan.estimate.sentences import answer_sentences
-from fieldplan.estimate.widened import recorded_reach
+from fieldplan.estimate.widened import recorded_reach, widened_sentence
 from fieldplan.estimate.working import working
 from fieldplan.plan.model import Plan
 from fieldplan.returns.model import Returns
@@ -99,6 +99,7 @@ def estimate(
         returns=basis,
         rejected_sentence=rejected,
         standing_sentence=standing,
+        interval_sentence=widened_sentence(means),
         sentences=answer_sentences(
             plan,
             means,

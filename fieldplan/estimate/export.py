@@ -57,6 +57,7 @@ def estimate_json(estimate: Estimate) -> dict[str, Any]:
         "steps": [asdict(step) for step in estimate.steps],
         "rejected": estimate.rejected_sentence,
         "standing": estimate.standing_sentence,
+        "interval_rule": estimate.interval_sentence,
         "returns": asdict(replace(estimate.returns, with_rejected=None)),
     }
     plain: dict[str, Any] = _plain(content)

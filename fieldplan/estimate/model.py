@@ -81,6 +81,8 @@ class Estimate:
         What the laboratory rejected and the answer with it; empty without such results.
     standing_sentence : str
         Why the record does not show that the plan stood before the results; empty where it may.
+    interval_sentence : str
+        What the interval is promised for and what speaks against it; empty for Student's t.
     """
 
     analyte: str
@@ -101,6 +103,7 @@ class Estimate:
     sentences: tuple[str, ...]
     rejected_sentence: str = ""
     standing_sentence: str = ""
+    interval_sentence: str = ""
 
 
 @dataclass(frozen=True)

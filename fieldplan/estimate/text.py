@@ -36,6 +36,7 @@ def results_paragraph(plan: Plan, estimate: Estimate) -> str:
         f"The mean is {significant(mean.mean)} {unit} (standard error "
         f"{significant(mean.standard_error)} {unit}{freedom}; "
         f"{interval_in_words(estimate.interval, unit)}).",
+        estimate.interval_sentence,
         _strata(estimate),
         _bracket(estimate),
         estimate.rejected_sentence,

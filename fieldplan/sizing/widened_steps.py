@@ -16,7 +16,7 @@ from fieldplan.sizing.widened import (
     shapes_of,
     widest,
 )
-from fieldplan.sizing.words import counted, figure, listed, typed_percent, with_unit
+from fieldplan.sizing.words import counted, figure, typed_percent, with_unit
 from fieldplan.stats.skew_interval import FEWEST
 
 if TYPE_CHECKING:
@@ -157,15 +157,23 @@ def _beside_student(question: Question, plain: int) -> str:
 
     name = class_of(question)
     student = sum(plain_counts(by_student(question)))
-    families = listed(list(dict.fromkeys(shape.name for shape in shapes_of(question))))
     line = (
         f"Sized for the interval that the rules fix (skew-widened, {name}): {plain} results if "
-        f"sigma is right, by the wider of the shapes that fit ({families}). Student's t would ask "
+        f"sigma is right, by the widest over shapes that fit ({_shaped(question)}). Student's t "
+        "would ask "
         f"for {student}, and keep less than it claims where results are skewed."
     )
     if plain == FEWEST[name]:
         line += f" {FEWEST[name]} is the fewest for which the promise is kept."
     return line
+
+
+def _shaped(question: Question) -> str:
+    shapes = shapes_of(question)
+    families = " or ".join(dict.fromkeys(shape.family for shape in shapes))
+    zeros = max(shape.zeros for shape in shapes)
+    lump = f", with or without {100 * zeros:.0f} % zeros" if zeros else ""
+    return f"{families}, CV {figure(coefficient(question), 2)}{lump}"
 
 
 def widened_conditions(question: Question, needed: Sequence[int]) -> list[str]:

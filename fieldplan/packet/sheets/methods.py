@@ -1,6 +1,7 @@
 """What the design can and cannot tell, and a paragraph for the report."""
 
 from fieldplan.base.document import Block, Bullets, Heading, Paragraph
+from fieldplan.campaign.model import Rules
 from fieldplan.packet.sheets.amounts import counted, likely, listed, percent, rounded
 from fieldplan.packet.sheets.plan_words import (
     ALLOCATIONS,
@@ -229,6 +230,13 @@ def quality_sentence(plan: Plan) -> str:
     return f"Quality control samples, counted apart: {listed(counts)}."
 
 
+def _set_how(rules: Rules) -> str:
+    """Name the interval that is widened for skewed results; Student's t needs no word."""
+    if rules.promised_class is None or rules.mean_interval == "student-t":
+        return ""
+    return f", {rules.mean_interval} as promised for {rules.promised_class}"
+
+
 def rules_sentence(plan: Plan) -> str:
     """Say which rules hold for the estimate, and who stated that they were fixed when."""
     rules = plan.campaign.rules
@@ -244,7 +252,7 @@ def rules_sentence(plan: Plan) -> str:
     }[rules.duplicates]
     return (
         f"The rules for the estimate were, {origin}: the "
-        f"{percent(rules.confidence)} {kind} for the mean is given; "
+        f"{percent(rules.confidence)} {kind} for the mean is given{_set_how(rules)}; "
         f"{NON_DETECTS[rules.non_detects].replace('; ', ' and ')}; {repeated} "
         f"(fingerprint {rules_fingerprint(rules)}, by which whoever received it can check them)."
     )

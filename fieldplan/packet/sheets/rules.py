@@ -35,7 +35,7 @@ LONG_RUNS = {
     "student-t": "nominal: where the mean is near normal, this share of such intervals or limits "
     "holds the true mean in the long run",
     "skew-widened": "nominal: about this share of such intervals or limits holds the true mean in "
-    "the long run, in every population of the promised class",
+    "the long run, in every population of the promised class; the sheet says how closely at this n",
 }
 UNVERIFIED = (
     "Who fixed the rules, and when, is stated in the campaign file; this tool cannot verify it. "
