@@ -71,7 +71,10 @@ def compare_layouts(
     if frame.kind == "list":
         message = "a list has its places already; layouts can be compared for areas only."
         raise DesignError(message)
-    unfit = {"census", "simple-random" if len(frame.strata) > 1 else "stratified"}
+    if frame.kind == "line":
+        message = "layouts can be compared for areas only, and this frame is of lines."
+        raise DesignError(message)
+    unfit = {"census", "even-spacing", "simple-random" if len(frame.strata) > 1 else "stratified"}
     wanted = [StratumCount(count.stratum, count.planned, 0) for count in counts]
     measured = []
     for layout in LAYOUTS:

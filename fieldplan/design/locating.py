@@ -111,6 +111,9 @@ def _named_places(
             cell=place.cell,
             cell_share=place.cell_share,
             cell_centre=place.cell_centre,
+            branch=place.branch,
+            along_m=place.along_m,
+            start=place.start,
         )
         for place, (latitude, longitude) in zip(drawn.places, degrees, strict=True)
     ]

@@ -33,7 +33,7 @@ class Location:
         Position in the stratum's drawn list, from 1; 0 for targeted places.
     inclusion_probability : float
         n/N for a list; n/area per square metre for an area, or for the cell where the layout cut
-        one; 0 for targeted places.
+        one; n/length per metre for lines; 0 for targeted places.
     weight : float
         Stratum weight / number of planned random locations in it, or the cell's part of the weight
         / those in the cell; 0 for other classes.
@@ -45,6 +45,12 @@ class Location:
         Area of the cell over that of the stratum; 0 without a cell.
     cell_centre : (float, float) or None
         Easting and northing of the cell's centre, site metres.
+    branch : str
+        Of a place on a line: the branch; else empty.
+    along_m : float or None
+        Metres along the branch from its start, to the centimetre; None off lines.
+    start : int
+        The random start that it follows from, from 1; 0 where the layout has none.
     """
 
     location_id: str
@@ -62,6 +68,9 @@ class Location:
     cell: int = 0
     cell_share: float = 0.0
     cell_centre: tuple[float, float] | None = None
+    branch: str = ""
+    along_m: float | None = None
+    start: int = 0
 
 
 @dataclass(frozen=True)
@@ -109,9 +118,11 @@ class StratumValues:
     """Results of one stratum as the estimator sees them.
 
     ``values`` has shape (n,), one per location; ``population`` is N of a list, None for an area.
-    Where a layout cut cells, ``cells`` holds the cell number of each value, shape (n,),
-    ``coordinates`` its planned place in site metres, shape (n, 2), ``cut`` all cells that were
-    planned, and ``measure`` the stratum's area in square metres.
+    ``coordinates`` holds the planned place of each value in site metres, shape (n, 2), and
+    ``measure`` the measure of the stratum, square metres for an area. Where a layout cut cells,
+    ``cells`` holds the cell number of each value, shape (n,), and ``cut`` all cells that were
+    planned. Where a layout has random starts,
+    ``starts`` holds the start of each value, shape (n,).
     """
 
     stratum: str
@@ -122,6 +133,7 @@ class StratumValues:
     cells: NDArray[np.int64] | None = None
     cut: tuple[PlannedCell, ...] = ()
     measure: float = 0.0
+    starts: NDArray[np.int64] | None = None
 
 
 @dataclass(frozen=True)
@@ -168,12 +180,27 @@ class CellVariance:
 
 
 @dataclass(frozen=True)
+class StartVariance:
+    """How the variance of one stratum's mean came from its random starts.
+
+    ``counts`` and ``means`` hold results and mean of each start, in their order.
+    """
+
+    stratum: str
+    counts: tuple[int, ...]
+    means: tuple[float, ...]
+    variance: float
+    degrees_of_freedom: int
+
+
+@dataclass(frozen=True)
 class MeanEstimate:
     """The mean of the population by the recorded design.
 
     ``degrees_of_freedom`` is n − 1, or Satterthwaite's for strata; infinite for a census.
     ``method`` and ``caution`` are sentences for the sheet. ``cell_variances``, one a stratum, are
-    there where the layout cut cells and its variance takes credit for them.
+    there where the layout cut cells and its variance takes credit for them; ``start_variances``
+    where it has several random starts.
     """
 
     n: int
@@ -184,6 +211,7 @@ class MeanEstimate:
     method: str
     caution: str = ""
     cell_variances: tuple[CellVariance, ...] = ()
+    start_variances: tuple[StartVariance, ...] = ()
 
 
 class Layout(Protocol):
@@ -229,7 +257,7 @@ class Layout(Protocol):
 class DrawnPlace:
     """A drawn place before it is named; ``unit_id`` is the list unit, if it is one.
 
-    ``cell``, ``cell_share`` and ``cell_centre`` are those of ``Location``.
+    What stands behind it is as in ``Location``.
     """
 
     stratum: str
@@ -241,6 +269,9 @@ class DrawnPlace:
     cell: int = 0
     cell_share: float = 0.0
     cell_centre: tuple[float, float] | None = None
+    branch: str = ""
+    along_m: float | None = None
+    start: int = 0
 
 
 @dataclass(frozen=True)

@@ -7,6 +7,8 @@ from collections.abc import Iterator
 
 from fieldplan.base.draws import key_text
 from fieldplan.campaign.model import Campaign
+from fieldplan.design.line_procedure import PSEUDOCODE as ALONG_LINES
+from fieldplan.design.line_procedure import line_steps
 from fieldplan.design.model import Locations
 
 _GRIDS = {"square-grid": "√(A/n)", "triangular-grid": "√(A/(0.866 n))"}
@@ -37,6 +39,10 @@ def _steps(campaign: Campaign, locations: Locations) -> Iterator[str]:
     design = campaign.design[0]
     stratum = locations.places[0].stratum
     purpose = "grid" if locations.layout in _GRIDS else "places"
+    if locations.layout == "compact-strata":
+        purpose = "cell places"
+    if locations.layout == "even-spacing":
+        purpose = "starts"
     if _is_list(campaign):
         purpose = f"unit {locations.places[0].location_id}"
     example = key_text(locations.seed, design.id, stratum, purpose)
@@ -53,8 +59,12 @@ def _steps(campaign: Campaign, locations: Locations) -> Iterator[str]:
     )
     if _is_list(campaign):
         yield from _list_steps()
+    elif _kind(campaign) == "line":
+        yield from line_steps(locations.layout, design.starts, design.minimum_spacing_m)
     elif locations.layout in _GRIDS:
         yield from _grid_steps(campaign, locations)
+    elif locations.layout == "compact-strata":
+        yield from _cell_steps(design.per_cell, design.minimum_spacing_m)
     else:
         yield from _random_steps(design.minimum_spacing_m)
     yield (
@@ -65,9 +75,13 @@ def _steps(campaign: Campaign, locations: Locations) -> Iterator[str]:
 
 
 def _is_list(campaign: Campaign) -> bool:
+    return _kind(campaign) == "list"
+
+
+def _kind(campaign: Campaign) -> str:
     wanted = campaign.design[0].frame
     frame = next((f for f in campaign.frame if f.id == wanted), campaign.frame[0])
-    return frame.kind == "list"
+    return frame.kind
 
 
 def _list_steps() -> Iterator[str]:
@@ -82,12 +96,53 @@ def _list_steps() -> Iterator[str]:
     )
 
 
+_CANDIDATE = (
+    "The stratum's polygon stands in a box of whole metres whose sides are widened to multiples of "
+    "a power of two. Two random numbers give a candidate in the box, easting first, rounded to the "
+    "centimetre."
+)
+
+
+def _cell_steps(per_cell: int, spacing_m: float) -> Iterator[str]:
+    cells = "as many cells as it gets locations"
+    if per_cell == 2:
+        cells = "half as many cells as it gets locations; with an odd number cell 1 gets three"
+    yield (
+        f"Each stratum is cut into {cells}. Nothing in the cut is random: on a raster of "
+        "whole centimetres centres start along a Hilbert curve, then move to the middle of their "
+        "cells while each cell's pull is raised or lowered until all hold the same number of "
+        "raster points. A place belongs to the centre from which the squared distance less the "
+        "pull is least. All of it is whole-number arithmetic, so that the cut is the same on "
+        "every machine."
+    )
+    yield (
+        f"{_CANDIDATE} A candidate strictly inside the polygon, whose corners are in whole "
+        "millimetres, goes to its cell. The first one into a cell becomes its location; later "
+        "ones are passed over"
+        + (
+            " until every cell has one. Then a second round begins."
+            if per_cell == 2
+            else ", until every cell has one."
+        )
+    )
+    if spacing_m:
+        yield (
+            f"A candidate closer than {spacing_m:g} m to a place kept before it in the stratum is "
+            "passed over too."
+        )
+    yield (
+        "The places are numbered in the order in which they were kept. Alternates are drawn in the "
+        "same way with the purpose “cell alternates”, no cell getting a second one before all have "
+        "one, and numbered after the locations. An alternate stands in for any lost location of "
+        "its stratum, in the order of the list; its result counts in the cell in which it lies. A "
+        "revision with another number cuts other cells and draws all places of the stratum anew."
+    )
+
+
 def _random_steps(spacing_m: float) -> Iterator[str]:
     yield (
-        "The stratum's polygon stands in a box of whole metres whose sides are widened to "
-        "multiples of a power of two. Two random numbers give a candidate in the box, easting "
-        "first, rounded to the centimetre. A candidate strictly inside the polygon, whose corners "
-        "are in whole millimetres, is kept; any other is passed over."
+        f"{_CANDIDATE} A candidate strictly inside the polygon, whose corners are in whole "
+        "millimetres, is kept; any other is passed over."
     )
     if spacing_m:
         yield (
@@ -183,6 +238,50 @@ square-grid and triangular-grid, area:
   of STREAM(seed, design, stratum, "grid order").
   Alternates: AREA(stratum, alternates, "alternates", taken = the grid's places).
 
+CELLS(polygon, k)                                    [whole numbers throughout]
+  w       = the smaller of: the larger of 4000 and 64 k, the larger of 60000 and 16 k
+  step    = the largest even number <= sqrt(10000 measure / w), at least 2       [cm]
+  corner  = (100 low_e + step/2, 100 low_n + step/2)
+  points  = all (i, j) from 0 on with INSIDE(corner + step (i, j)),
+            i < 100 (high_e - low_e) / step, j < 100 (high_n - low_n) / step;
+            m of them; X = 16 (i, j)
+  Sort the points by HILBERT(i, j). Centre c (c = 0 ... k-1) is floor(sum of X /
+  number), either coordinate for itself, over points floor(c m / k) to
+  floor((c+1) m / k) - 1.
+  All pulls are 0. For turn = 0 ... 69:
+    The cell of a point is the c with the least |X - centre c|^2 - pull c, the lowest
+    of equals: among all cells when turn is 69 or a multiple of 10, else among the 14
+    whose centres are nearest to that of the cell it was in, of equals the lowest.
+    held c = points in cell c
+    turn < 30:  centre c = floor(sum of its X / held c) where held c > 0; gain = 80
+    turn >= 30: keep the pulls as they stand if the largest |k held c - m| is smaller
+                than at any turn before, from 30 on;
+                gain = 60 - floor(30 (turn - 30) / 40)
+    pull c  = pull c + floor(gain (m - k held c) / k); then take the least off all.
+  With the pulls that were kept: centre c = corner + floor(step centre c / 16),
+  pull c = floor(step^2 pull c / 256)                                [cm and cm^2]
+  The cell of a place is the c with the least |place - centre c|^2 - pull c, the
+  lowest of equals. Cells are numbered c + 1.
+
+HILBERT(i, j)
+  d = 0; for s = 2^15, 2^14, ... 1:
+    right = whether i has bit s, up = whether j has bit s
+    d = d + s^2 * (0, 1, 2 or 3: neither, up alone, both, right alone)
+    i = i mod s, j = j mod s; if right alone: i = s - 1 - i, j = s - 1 - j
+    if not up: exchange i and j
+
+FILL(stratum, purpose, quotas, count, taken)
+  S = STREAM(seed, design, stratum, purpose)
+  In a round every cell with a quota left waits for one place; the next round begins
+  when none waits any more. Candidates as in AREA, with S: one that AREA would keep is
+  kept if its cell waits, until count places are kept.
+
+compact-strata, area, with p per cell:
+  k = floor(planned / p), at least 1. Every cell gets floor(planned / k), cell 1 the
+  rest.
+  Random places: FILL(stratum, "cell places", those, planned, nothing)
+  Alternates:    FILL(stratum, "cell alternates", no limit, alternates, random places)
+
 Field duplicates:
   Rank the random locations of each stratum by the first RAW of
   STREAM(seed, design, "", "duplicate at " location_id). With m locations and d
@@ -207,4 +306,4 @@ def procedure_pseudocode() -> str:
     >>> procedure_pseudocode().splitlines()[0]
     'STREAM(seed, design, stratum, purpose)'
     """
-    return PSEUDOCODE
+    return PSEUDOCODE.replace("Field duplicates:\n", f"{ALONG_LINES}\nField duplicates:\n")

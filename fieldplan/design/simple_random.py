@@ -7,6 +7,7 @@ from numpy.typing import NDArray
 
 from fieldplan.base.draws import Stream
 from fieldplan.base.errors import DesignError
+from fieldplan.design.along_lines import course_of, draw_along, line_places
 from fieldplan.design.area import draw_places
 from fieldplan.design.listing import units_in_drawn_order
 from fieldplan.design.model import (
@@ -28,7 +29,7 @@ from fieldplan.stats.stratified import predicted_variance
 
 SPACING_NOTE = (
     "A minimum spacing of {spacing:g} m was kept within '{stratum}'. Places are then no longer "
-    "exactly equally likely: those along the edge have fewer neighbours and are drawn more often, "
+    "exactly equally likely: those along {edge} have fewer neighbours and are drawn more often, "
     "the more so the wider the spacing. The mean and its interval are computed as if all were "
     "equally likely."
 )
@@ -104,7 +105,9 @@ def draw_strata(
     places: list[DrawnPlace] = []
     notes: list[str] = []
     for stratum, count in drawn_strata(frame, counts):
-        if stratum.geometry is None:
+        if stratum.reaches:
+            drawn, said = _draw_line(stratum, count, seed, design, minimum_spacing_m)
+        elif stratum.geometry is None:
             drawn, said = _draw_list(stratum, count, seed, design, minimum_spacing_m)
         else:
             drawn, said = _draw_area(stratum, count, seed, design, minimum_spacing_m)
@@ -127,8 +130,29 @@ def _draw_area(
         location_class="alternate",
         first=count.planned + 1,
     )
-    notes = [SPACING_NOTE.format(spacing=spacing_m, stratum=stratum.name)] if spacing_m else []
-    return chosen + rest, notes
+    return chosen + rest, _spacing_notes(stratum, spacing_m, "the edge")
+
+
+def _spacing_notes(stratum: Stratum, spacing_m: float, edge: str) -> list[str]:
+    if not spacing_m:
+        return []
+    return [SPACING_NOTE.format(spacing=spacing_m, stratum=stratum.name, edge=edge)]
+
+
+def _draw_line(
+    stratum: Stratum, count: StratumCount, seed: int, design: str, spacing_m: float
+) -> tuple[tuple[DrawnPlace, ...], list[str]]:
+    stream = Stream(seed, design, stratum.name, "places")
+    course = course_of(stratum, "simple-random")
+    drawn = draw_along(course, count.planned + count.alternates, stream, spacing_m=spacing_m)
+    chosen = line_places(stratum.name, drawn[: count.planned], location_class="random")
+    rest = line_places(
+        stratum.name,
+        drawn[count.planned :],
+        location_class="alternate",
+        first=count.planned + 1,
+    )
+    return chosen + rest, _spacing_notes(stratum, spacing_m, "the ends of reaches")
 
 
 def _draw_list(

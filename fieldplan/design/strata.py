@@ -73,6 +73,12 @@ def ground_of(stratum: Stratum, layout: str) -> Ground:
             f"{stratum.count} units; use simple-random, stratified or census."
         )
         raise DesignError(message)
+    if stratum.reaches:
+        message = (
+            f"layout '{layout}' needs an area, and stratum '{stratum.name}' is "
+            f"{stratum.measure:.4g} m of lines; use simple-random, stratified or even-spacing."
+        )
+        raise DesignError(message)
     return Ground(stratum.name, stratum.geometry)
 
 

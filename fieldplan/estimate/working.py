@@ -5,6 +5,7 @@ import math
 from fieldplan.base.working import Quantity, Step
 from fieldplan.design.model import StratumEstimate, StratumValues
 from fieldplan.estimate.means import Means
+from fieldplan.estimate.start_steps import start_freedom_step, start_steps
 from fieldplan.estimate.widened import is_widened
 from fieldplan.estimate.widened_steps import widened_steps
 from fieldplan.stats.intervals import t_quantile
@@ -35,7 +36,8 @@ def working(means: Means, unit: str) -> tuple[Step, ...]:
         steps += _stratum_steps(means, values, found, unit=unit, label=label)
     if several:
         steps.append(_weighted_mean(means, unit))
-    steps.append(_standard_error(means, unit))
+    between = bool(means.half.start_variances)
+    steps += start_steps(means, unit) if between else [_standard_error(means, unit)]
     if means.half.standard_error > 0:
         widened = is_widened(means.rules)
         steps += widened_steps(means, unit) if widened else _interval_steps(means, unit)
@@ -191,6 +193,8 @@ def _interval_steps(means: Means, unit: str) -> list[Step]:
 
 def _freedom_step(means: Means, unit: str) -> Step:
     strata, known = means.half.strata, means.half.degrees_of_freedom
+    if means.half.start_variances:
+        return start_freedom_step(means)
     if len(strata) == 1:
         inputs: tuple[Quantity, ...] = (Quantity("n", "results", strata[0].n),)
         return Step("df", "Degrees of freedom", "df = n − 1", inputs, known, known, "", _RANDOM)
