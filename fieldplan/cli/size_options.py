@@ -132,6 +132,7 @@ _OPTIONS = (
         _number_between(0, 10, "0.20 means 20 % of the mean"),
         "Target: the same as a share of the mean, e.g. 0.20.",
     ),
+    _typed_number("--budget", _POSITIVE, "Target: the money that may be spent; needs prices."),
     _typed_number("--mean", _POSITIVE, "Expected mean, for a relative half-width."),
     _typed_number(
         "--confidence",

@@ -12,7 +12,12 @@ if TYPE_CHECKING:
     from fieldplan.stats.allocation import Allocation
 
 ALLOCATIONS = ("proportional", "neyman", "cost-optimal", "equal-precision")
-TARGETS: "tuple[TargetKind, ...]" = ("standard_error", "half_width", "relative_half_width")
+TARGETS: "tuple[TargetKind, ...]" = (
+    "standard_error",
+    "half_width",
+    "relative_half_width",
+    "budget",
+)
 
 
 def _refuse_unknown_question(question: str) -> None:
@@ -36,6 +41,7 @@ class BareNumbers:
     standard_error: float | None
     half_width: float | None
     relative_half_width: float | None
+    budget: float | None
     mean: float | None
     confidence: float | None
     one_sided: bool
@@ -138,12 +144,25 @@ class BareNumbers:
             message = (
                 f"{names} are both given; keep one target."
                 if given
-                else "no target: give --standard-error, --half-width or --relative-half-width."
+                else "no target: give --standard-error, --half-width, --relative-half-width or "
+                "--budget."
             )
             raise BadOption(message)
         kind, value = given[0]
         if kind == "relative_half_width" and self.mean is None:
             message = f"--relative-half-width {value:g} is a share of the mean; add --mean."
+            raise BadOption(message)
+        if kind == "budget" and not any(key.startswith("cost.") for key in self.with_keys):
+            message = (
+                f"--budget {value:g} needs prices; add --with cost.currency=EUR "
+                "--with cost.per_location=28 --with cost.per_analysis=46, with yours."
+            )
+            raise BadOption(message)
+        if kind == "budget" and self.assurance is not None:
+            message = (
+                f"--assurance {self.assurance:g} beside --budget: money sets no precision that n "
+                "could miss; leave it out."
+            )
             raise BadOption(message)
         return kind, value
 

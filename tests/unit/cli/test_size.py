@@ -133,7 +133,15 @@ def test_pilots_by_stratum_give_a_chance() -> None:
         ("--sigma abc --standard-error 6", "--sigma 'abc' is no number; write one such as 27.57."),
         ("--sigma nan --standard-error 6", "--sigma 'nan' is no number; write one such as 27.57."),
         ("--sigma -3 --standard-error 6", "--sigma -3 is out of bounds; it must be above 0."),
-        ("--sigma 3", "no target: give --standard-error, --half-width or --relative-half-width."),
+        (
+            "--sigma 3",
+            "no target: give --standard-error, --half-width, --relative-half-width or --budget.",
+        ),
+        ("--sigma 3 --budget 900", "--budget 900 needs prices; add --with cost.currency=EUR"),
+        (
+            "--sigma 3 --budget 900 --assurance 0.8 --with cost.currency=EUR",
+            "--assurance 0.8 beside --budget: money sets no precision",
+        ),
         (
             "--sigma 3 --standard-error 1 --half-width 2",
             "--standard-error and --half-width are both given; keep one target.",
@@ -342,3 +350,15 @@ def test_numbers_within_bounds_are_answered_or_refused_in_words(
     else:
         assert isinstance(result.exception, FieldplanError | SystemExit)
         assert "10000000 results" in str(result.exception) + result.stderr
+
+
+def test_a_budget_buys_what_its_prices_allow():
+    """Source: by hand, 900 / (28 + 46) = 12.2, so 12 results; SE = 27/√12."""
+    outcome = command_runner().invoke(
+        entry,
+        ["size", "--sigma", "27", "--budget", "900", "--json", "--with", "cost.currency=EUR",
+         "--with", "cost.per_location=28", "--with", "cost.per_analysis=46"],
+    )  # fmt: skip
+    found = json.loads(outcome.stdout)
+    assert (found["n"], found["cost"], found["number_from"]) == (12, 888.0, "budget")
+    assert found["standard_error"] == pytest.approx(27 / 12**0.5)
