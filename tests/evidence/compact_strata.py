@@ -120,12 +120,13 @@ def held_and_width(found: MeanEstimate, field: Floats) -> tuple[float, float]:
     return float(abs(found.mean - field.mean()) <= half), half / random
 
 
-def coverage(kind: Kind, count: int, fields: int) -> NDArray[np.float64]:
+def coverage(at_kind: int, kind: Kind, count: int, fields: int) -> NDArray[np.float64]:
     """Give coverage and mean width of each way, over all sites, shape (ways, 2)."""
     found: list[list[tuple[float, float]]] = []
     for at, name in enumerate(SITES):
-        rng = np.random.default_rng([at, count])
-        for field in draw_fields(name, PER_SIDE["realised"], kind, fields=fields, seed=900 + at):
+        seed = 900 + 100 * at_kind + at
+        rng = np.random.default_rng([at, at_kind, count])
+        for field in draw_fields(name, PER_SIDE["realised"], kind, fields=fields, seed=seed):
             row = []
             for per_cell, rule in WAYS:
                 values = estimated(name, field, rng, count=count, per_cell=per_cell)
@@ -138,8 +139,8 @@ def coverage(kind: Kind, count: int, fields: int) -> NDArray[np.float64]:
 def coverage_rows(count: int, fields: int) -> Iterator[str]:
     """Print coverage and width of every kind of field, then the mean and the worst."""
     rows = []
-    for kind in (*KINDS, *SLOPES, *LOGNORMALS):
-        found = coverage(kind, count, fields)
+    for at, kind in enumerate((*KINDS, *SLOPES, *LOGNORMALS)):
+        found = coverage(at, kind, count, fields)
         if not kind.lognormal:
             rows.append(found)
         yield _row(f"{kind.label}", found)

@@ -153,6 +153,140 @@ def nodes(
     return found
 
 
+def hilbert(place: Place) -> int:
+    """HILBERT of the pseudo-code."""
+    i, j = place
+    d, s = 0, 2**15
+    while s:
+        right, up = bool(i & s), bool(j & s)
+        d += (
+            s
+            * s
+            * {(False, False): 0, (False, True): 1, (True, True): 2, (True, False): 3}[right, up]
+        )
+        i, j = i % s, j % s
+        if right and not up:
+            i, j = s - 1 - i, s - 1 - j
+        if not up:
+            i, j = j, i
+        s //= 2
+    return d
+
+
+Pulled = list[tuple[int, int, int]]
+"""Centres and pulls."""
+
+
+def nearest(place: Place, cells: Pulled, among: list[int]) -> int:
+    """Tell the cell of a place, the lowest of equals."""
+    x, y = place
+    far = [((x - cells[c][0]) ** 2 + (y - cells[c][1]) ** 2 - cells[c][2], c) for c in among]
+    return min(far)[1]
+
+
+def cells(rings: list[Ring], measure: float, k: int) -> Pulled:
+    """CELLS of the pseudo-code."""
+    w = min(max(4000, 64 * k), max(60000, 16 * k))
+    step = max(2, int(sqrt(10000 * measure / w)) // 2 * 2)
+    east, north = box(rings)
+    corner = 100 * east[0] + step // 2, 100 * north[0] + step // 2
+    points = [
+        (i, j)
+        for i in range(-(-100 * (east[1] - east[0]) // step))
+        for j in range(-(-100 * (north[1] - north[0]) // step))
+        if inside(rings, (corner[0] + step * i, corner[1] + step * j))
+    ]
+    m = len(points)
+    run = sorted(points, key=hilbert)
+    spots = [(16 * i, 16 * j) for i, j in points]
+    centres = [
+        middle([(16 * i, 16 * j) for i, j in run[c * m // k : (c + 1) * m // k]]) for c in range(k)
+    ]
+    pulls, kept, best = [0] * k, [0] * k, None
+    cell = [0] * m
+    for turn in range(70):
+        now = [(*centre, pull) for centre, pull in zip(centres, pulls, strict=True)]
+        every = turn % 10 == 0 or turn == 69
+        around = [near_cells(centres, c, k if every else 14) for c in range(k)]
+        cell = [nearest(spot, now, around[c]) for spot, c in zip(spots, cell, strict=True)]
+        held = [cell.count(c) for c in range(k)]
+        gain = 80 if turn < 30 else 60 - 30 * (turn - 30) // 40
+        if turn < 30:
+            centres = [
+                middle([s for s, own in zip(spots, cell, strict=True) if own == c]) or centres[c]
+                for c in range(k)
+            ]
+        else:
+            off = max(abs(k * number - m) for number in held)
+            if best is None or off < best:
+                best, kept = off, pulls
+        pulls = [p + gain * (m - k * h) // k for p, h in zip(pulls, held, strict=True)]
+        pulls = [p - min(pulls) for p in pulls]
+    return [
+        (corner[0] + step * x // 16, corner[1] + step * y // 16, step**2 * p // 256)
+        for (x, y), p in zip(centres, kept, strict=True)
+    ]
+
+
+def middle(spots: Ring) -> Place:
+    """Return the mean of places, either coordinate rounded down; nothing of nothing."""
+    if not spots:
+        return ()  # type: ignore[return-value]
+    return sum(x for x, _ in spots) // len(spots), sum(y for _, y in spots) // len(spots)
+
+
+def near_cells(centres: Ring, cell: int, count: int) -> list[int]:
+    """Name the cells nearest to one, of equals the lowest."""
+    x, y = centres[cell]
+    far = sorted(((x - a) ** 2 + (y - b) ** 2, c) for c, (a, b) in enumerate(centres))
+    return [c for _, c in far[:count]]
+
+
+def fill(
+    numbers: Numbers,
+    rings: list[Ring],
+    cut: Pulled,
+    quotas: list[int],
+    count: int,
+    taken: Ring,
+) -> Ring:
+    """FILL of the pseudo-code, in centimetres."""
+    east, north = box(rings)
+    left, kept = list(quotas), []
+    waits = [c for c, quota in enumerate(left) if quota]
+    while len(kept) < count:
+        e = 100 * east[0] + round(numbers.uniform() * (100 * (east[1] - east[0])))
+        n = 100 * north[0] + round(numbers.uniform() * (100 * (north[1] - north[0])))
+        if not inside(rings, (e, n)) or (e, n) in taken + kept:
+            continue
+        own = nearest((e, n), cut, list(range(len(cut))))
+        if own in waits:
+            kept.append((e, n))
+            left[own] -= 1
+            waits.remove(own)
+            waits = waits or [c for c, quota in enumerate(left) if quota]
+    return kept
+
+
+def compact(
+    key: tuple[int, str, str],
+    rings: list[Ring],
+    measure: float,
+    planned: int,
+    spare: int,
+    *,
+    per_cell: int,
+) -> Ring:
+    """Draw compact strata and their alternates, in centimetres, in list order."""
+    k = max(1, planned // per_cell)
+    cut = cells(rings, measure, k)
+    quotas = [planned // k] * k
+    quotas[0] += planned - sum(quotas)
+    places = fill(Numbers(*key, "cell places"), rings, cut, quotas, planned, [])
+    rest = fill(Numbers(*key, "cell alternates"), rings, cut, [spare] * k, spare, places)
+    return places + rest
+
+
 def units(key: tuple[int, str, str], ids: list[str]) -> list[str]:
     """Put list units in drawn order."""
     return sorted(ids, key=lambda name: (Numbers(*key, f"unit {name}").raw(), name))

@@ -86,6 +86,23 @@ def all_issued() -> dict[str, dict[str, list[tuple[int, int]]]]:
         "square-grid": issued("square-grid"),
         "triangular-grid": issued("triangular-grid"),
     }
+    return places_by_stratum(drawn)
+
+
+def compact_issued() -> dict[str, dict[str, list[tuple[int, int]]]]:
+    """Draw compact strata with fieldplan, for the golden file too."""
+    return places_by_stratum(
+        {
+            "compact-strata": issued("compact-strata"),
+            "compact-strata, two a cell": issued("compact-strata", per_cell=2),
+        }
+    )
+
+
+def places_by_stratum(
+    drawn: dict[str, Locations],
+) -> dict[str, dict[str, list[tuple[int, int]]]]:
+    """Set the places of several draws in whole centimetres."""
     return {
         name: {stratum: placed(locations, stratum) for stratum in ("meadow", "yard")}
         for name, locations in drawn.items()
@@ -97,13 +114,35 @@ def test_places_followed_by_hand_are_the_places_issued() -> None:
     assert all_issued() == all_by_hand()
 
 
+def compact_by_hand(per_cell: int) -> dict[str, list[tuple[int, int]]]:
+    """Cut both strata into cells and fill them by hand."""
+    return {
+        name: by_hand.compact(
+            (SEED, "main", name), rings, geometry.area, planned, spare, per_cell=per_cell
+        )
+        for name, rings, geometry, planned, spare in (
+            ("meadow", MEADOW, MEADOW_POLYGON, 12, 4),
+            ("yard", YARD, YARD_POLYGON, 7, 3),
+        )
+    }
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("per_cell", [1, 2])
+def test_compact_strata_followed_by_hand_are_the_places_issued(per_cell: int) -> None:
+    """Whole numbers decide where a cell ends, so a reviewer's cells end at the same centimetre."""
+    drawn = issued("compact-strata", per_cell=per_cell)
+    found = {stratum: placed(drawn, stratum) for stratum in ("meadow", "yard")}
+    assert found == compact_by_hand(per_cell)
+
+
 def test_places_are_those_committed_with_the_first_release() -> None:
     """Every later release and every supported library must draw these very centimetres."""
     golden = {
         name: {stratum: [tuple(p) for p in places] for stratum, places in strata.items()}
         for name, strata in json.loads(GOLDEN.read_text(encoding="utf-8")).items()
     }
-    assert all_issued() == golden
+    assert all_issued() | compact_issued() == golden
 
 
 def test_list_order_followed_by_hand_is_the_order_issued() -> None:
