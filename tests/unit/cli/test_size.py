@@ -137,10 +137,15 @@ def test_pilots_by_stratum_give_a_chance() -> None:
             "--sigma 3",
             "no target: give --standard-error, --half-width, --relative-half-width or --budget.",
         ),
-        ("--sigma 3 --budget 900", "--budget 900 needs prices; add --with cost.currency=EUR"),
+        (
+            "--sigma 3 --budget 900",
+            "--budget 900 needs prices; add --with cost.currency=EUR --with cost.per_location=28 "
+            "--with cost.per_analysis=46, with yours.",
+        ),
         (
             "--sigma 3 --budget 900 --assurance 0.8 --with cost.currency=EUR",
-            "--assurance 0.8 beside --budget: money sets no precision",
+            "--assurance 0.8 beside --budget: money sets no precision that n could miss; leave it "
+            "out.",
         ),
         (
             "--sigma 3 --standard-error 1 --half-width 2",
