@@ -155,10 +155,11 @@ def draw_along(
     >>> [place.along_cm for place in draw_along(course, 3, Stream(1, "main", "bank", "places"))]
     [8868, 7636, 1783]
     """
-    if spacing_m and count > course.fit(spacing_m):
-        raise DesignError(_no_room(course, count, 0, spacing_m))
+    wanted = len(taken) + count
+    if spacing_m and wanted > course.fit(spacing_m):
+        raise DesignError(_no_room(course, wanted, 0, spacing_m))
     nearest = max(round(100 * spacing_m), 1) ** 2
-    standing = np.zeros((len(taken) + count, 2), dtype=np.int64)
+    standing = np.zeros((wanted, 2), dtype=np.int64)
     standing[: len(taken)] = np.array(
         [(place.east_cm, place.north_cm) for place in taken], dtype=np.int64
     ).reshape(-1, 2)
@@ -166,7 +167,7 @@ def draw_along(
     refused = 0
     while len(kept) < count:
         if refused >= PATIENCE:
-            raise DesignError(_no_room(course, count, len(kept), spacing_m))
+            raise DesignError(_no_room(course, wanted, len(taken) + len(kept), spacing_m))
         place = course.place(int(stream.uniforms(1)[0] * course.total))
         there = len(taken) + len(kept)
         away = standing[:there] - (place.east_cm, place.north_cm)

@@ -26,6 +26,7 @@ from tests.unit.design.line_sites import ARM, LOWER, MAIN, UPPER, line_frame
 
 WHOLE = Course("site", UPPER + LOWER)
 COUNTS = (StratumCount("lower", 8, 3), StratumCount("upper", 5, 2))
+BARE = (StratumCount("lower", 8, 0), StratumCount("upper", 5, 0))
 
 
 def line_campaign(layout="stratified", **design):
@@ -202,7 +203,7 @@ def test_bound_on_what_fits_is_the_packing_of_each_reach():
 @pytest.mark.parametrize(
     ("layout", "counts", "spacing", "words"),
     [
-        (EvenSpacing(), COUNTS, 100.0, "5 places on the 450.0 m of 'upper' stand 90 m apart"),
+        (EvenSpacing(), BARE, 100.0, r"5 places on the 450\.0 m of 'upper' stand 90 m apart"),
         (EvenSpacing(3), COUNTS, 5.0, "3 starts are independent"),
         (
             EvenSpacing(6),
