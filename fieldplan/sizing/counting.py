@@ -14,6 +14,9 @@ from fieldplan.stats.allocation import check_total, first_that, share_total, sma
 from fieldplan.stats.distributions import normal_quantile
 from fieldplan.stats.precision import meets, smallest, whole
 
+BACK = 61
+"""So many totals below the one found are tried as well, at most: rounding makes chances uneven."""
+
 
 @dataclass(frozen=True)
 class Counts:
@@ -145,7 +148,7 @@ def assured_counts(question: Question, assurance: float | None) -> list[int] | N
         return (precision.chance(shared(total), sigma_known=known) or 0.0) >= wanted
 
     low = sum(plain_counts(question))
-    total = smallest(fits, low, strata.most, back=2 * len(question.parts) + 1)
+    total = smallest(fits, low, strata.most, back=min(2 * len(question.parts) + 1, BACK))
     if question.total_population is None and not fits(total):
         limit = f"{strata.most} results" if not strata.ceilings else "the design's most allows"
         message = (

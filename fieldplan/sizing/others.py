@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 from fieldplan.campaign.model import Objective
 from fieldplan.sizing.asking import NO_TARGET
 from fieldplan.sizing.campaign_question import ask, expected_mean, parts_of, target_of
+from fieldplan.sizing.counting import BACK
 from fieldplan.sizing.model import OtherPrecision, Size
 from fieldplan.sizing.other_questions import other_question
 from fieldplan.sizing.other_words import other_sentence
@@ -191,7 +192,7 @@ def _enough(found: OtherPrecision, precision: Precision, asked: Question) -> int
         return not judged.falls_short
 
     low = sum(strata.floors)
-    total = smallest(fits, low, strata.most, back=2 * len(asked.parts) + 1)
+    total = smallest(fits, low, strata.most, back=min(2 * len(asked.parts) + 1, BACK))
     return total if fits(total) else None
 
 
