@@ -8,6 +8,7 @@ from fieldplan.campaign.facts import FACTS
 from fieldplan.campaign.interval_checks import interval_problems
 from fieldplan.campaign.line_checks import line_problems
 from fieldplan.campaign.money_checks import PER_PLACE, money_problems
+from fieldplan.campaign.non_detect_checks import non_detect_problems
 from fieldplan.campaign.problems import Problem, accepted, meaning, near_miss, shown
 from fieldplan.campaign.question_checks import needs_sigma, question_problems
 from fieldplan.campaign.screen import is_fill_in
@@ -390,4 +391,5 @@ _RULES: tuple[Callable[[Data], Iterator[Problem]], ...] = (
     _facts,
     _clearances,
     interval_problems,
+    non_detect_problems,
 )

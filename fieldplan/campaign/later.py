@@ -15,9 +15,6 @@ _LATER_VALUES: dict[tuple[str, str], dict[str, str]] = {
         "composite": "composite samples",
         "incremental": "incremental samples",
     },
-    ("rules", "non_detects"): {
-        "censored": "estimates that model non-detects",
-    },
 }
 
 _LATER_KEYS: dict[str, str] = {

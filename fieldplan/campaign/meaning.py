@@ -174,6 +174,7 @@ MEANING: dict[str, str] = {
     # [rules]
     "rules": "what is fixed before any result is seen",
     "rules.non_detects": "how results below the reporting limit enter the mean",
+    "rules.declared_shape": "the shape of the population that by-share may rely on",
     "rules.duplicates": "how a field duplicate meets its first sample",
     "rules.interval": "the interval that is reported",
     "rules.confidence": "the long-run share of intervals that hold the true mean",

@@ -16,6 +16,7 @@ from fieldplan.campaign.questions.share import ShareTable
 from fieldplan.campaign.questions.smallest_patch import SmallestPatch
 from fieldplan.campaign.questions.upper_share import UpperShare
 from fieldplan.campaign.questions.which_exceed import WhichExceed
+from fieldplan.campaign.rules_table import Rules as Rules
 from fieldplan.campaign.table import (
     Identifier,
     NonNegativeNumber,
@@ -264,21 +265,6 @@ class Loss(Table):
     share: Share = 0.0
     by_stratum: Mapping[str, Share] = {}
     reason: str = ""
-
-
-class Rules(Table):
-    """``[rules]``: what is fixed before any result is seen."""
-
-    non_detects: Literal["bounds"] = "bounds"
-    duplicates: Literal["average", "first"] = "average"
-    interval: Literal["two-sided", "upper-limit", "lower-limit"] = "two-sided"
-    confidence: Annotated[float, Field(gt=0.5, lt=1)] = 0.95
-    mean_interval: Literal["student-t", "skew-widened"] = "student-t"
-    promised_class: Literal["cv-up-to-1", "cv-up-to-2"] | None = None
-    promised_for: str = ""
-    single_result: Literal["refuse", "borrow-spread"] = "refuse"
-    fixed_by: str = ""
-    fixed_on: date | None = None
 
 
 class FieldTable(Table):

@@ -59,7 +59,9 @@ def choose_method(n: int, non_detects: int, *, shape: Model | None = None) -> Ch
     'lognormal-likelihood'
     """
     if n < 1 or not 0 <= non_detects <= n:
-        message = f"{non_detects} non-detects of {n} results; give 1 result or more, 0 to all of it."
+        message = (
+            f"{non_detects} non-detects of {n} results; give 1 result or more, 0 to all of it."
+        )
         raise DesignError(message)
     share = non_detects / n
     found = f"{non_detects} of {n} results are non-detects ({share:.0%})"

@@ -91,9 +91,7 @@ def plotting_positions(
     return detected, censored
 
 
-def fill_in(
-    detects: Sequence[float], limits: Sequence[float], *, line: Line = "logs"
-) -> FilledIn:
+def fill_in(detects: Sequence[float], limits: Sequence[float], *, line: Line = "logs") -> FilledIn:
     """Put a number in place of every non-detect, from the line through the detects.
 
     Parameters
@@ -124,7 +122,7 @@ def fill_in(
     --------
     >>> done = fill_in([6.0, 7.5, 9.0, 12.0], [5.0, 5.0])
     >>> [round(x, 2) for x in done.filled]
-    [4.05, 5.0]
+    [3.17, 4.11]
     """
     wrong = [value for value in (*detects, *limits) if not value > 0]
     if wrong:

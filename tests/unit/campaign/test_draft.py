@@ -96,7 +96,7 @@ def test_one_open_value_leaves_the_rest_known(tmp_path, name):
                         "cost.wrongly_left", "objective.mean_from", "objective.mean_to",
                         "design.equal_in", "design.increments_at", "design.replicates",
                         "design.ranking_set_size", "design.ranking_correlation",
-                        "rules.promised_class"}  # fmt: skip
+                        "rules.promised_class", "rules.declared_shape"}  # fmt: skip
         return
     assert found.campaign is None
     known = draft(found)
