@@ -141,8 +141,10 @@ def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
     if chance is None:
         return _no_chance(question, counts)
     if question.locations is not None:
+        own = target_words(replace(question, also=()))
+        whose = f" for {question.analyte}" if question.also else ""
         return (
-            f"The chance that this meets the target ({target_words(question)}) is "
+            f"The chance that this meets the target{whose} ({own}) is "
             f"{percent(chance)} {chance_condition(question)}."
         )
     known = sorted({part.results for part in question.parts if part.results is not None})
