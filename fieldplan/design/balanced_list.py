@@ -1,5 +1,6 @@
 """Balanced list: places spread over the ground, in an order of which every first part is spread."""
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -178,7 +179,7 @@ def balanced_places(ground: Ground, planned: int, key: Key) -> Whole:
 def _raster_spots(ground: Ground, wanted: int, stream: Stream) -> Whole:
     """Draw a spot in each square of a raster over the box; keep those inside, column by column."""
     box = ground.box
-    step = max(1, int((ground.geometry.area * 1e4 / wanted) ** 0.5))
+    step = max(1, math.floor(math.sqrt(ground.geometry.area * 1e4 / wanted)))
     columns, rows = (
         -(-side * 100 // step) for side in (box.east - box.west, box.north - box.south)
     )

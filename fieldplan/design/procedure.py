@@ -7,10 +7,19 @@ from collections.abc import Iterator
 
 from fieldplan.base.draws import key_text
 from fieldplan.campaign.model import Campaign
+from fieldplan.design.balanced_procedure import PSEUDOCODE as BALANCED
+from fieldplan.design.balanced_procedure import balanced_steps
 from fieldplan.design.line_procedure import PSEUDOCODE as ALONG_LINES
 from fieldplan.design.line_procedure import line_steps
 from fieldplan.design.model import Locations
 
+_PURPOSES = {
+    "square-grid": "grid",
+    "triangular-grid": "grid",
+    "compact-strata": "cell places",
+    "balanced-list": "raster",
+    "even-spacing": "starts",
+}
 _GRIDS = {"square-grid": "√(A/n)", "triangular-grid": "√(A/(0.866 n))"}
 
 
@@ -38,13 +47,8 @@ def _steps(campaign: Campaign, locations: Locations) -> Iterator[str]:
         return
     design = campaign.design[0]
     stratum = locations.places[0].stratum
-    purpose = "grid" if locations.layout in _GRIDS else "places"
-    if locations.layout == "compact-strata":
-        purpose = "cell places"
-    if locations.layout == "even-spacing":
-        purpose = "starts"
-    if _is_list(campaign):
-        purpose = f"unit {locations.places[0].location_id}"
+    unit = locations.places[0].location_id if _is_list(campaign) else ""
+    purpose = first_purpose(locations.layout, unit=unit)
     example = key_text(locations.seed, design.id, stratum, purpose)
     yield (
         "Every random number belongs to a key: a line of text made of the version of the "
@@ -57,7 +61,9 @@ def _steps(campaign: Campaign, locations: Locations) -> Iterator[str]:
         "1. It yields whole numbers of 64 bits; the upper 53 bits divided by 2 to the power 53 are "
         "a random number between 0 and 1."
     )
-    if _is_list(campaign):
+    if locations.layout == "balanced-list":
+        yield from balanced_steps(listed=_is_list(campaign), spacing_m=design.minimum_spacing_m)
+    elif _is_list(campaign):
         yield from _list_steps()
     elif _kind(campaign) == "line":
         yield from line_steps(locations.layout, design.starts, design.minimum_spacing_m)
@@ -72,6 +78,25 @@ def _steps(campaign: Campaign, locations: Locations) -> Iterator[str]:
         if locations.of_class("targeted")
         else "No place was added or moved by judgement."
     )
+
+
+def first_purpose(layout: str, *, unit: str = "") -> str:
+    """Return the purpose in the first key of a stratum.
+
+    Parameters
+    ----------
+    layout : str
+    unit : str
+        Id of the first unit of a list; empty for an area or lines.
+
+    Examples
+    --------
+    >>> first_purpose("stratified", unit="MW-7"), first_purpose("square-grid")
+    ('unit MW-7', 'grid')
+    """
+    if unit:
+        return "pivots" if layout == "balanced-list" else f"unit {unit}"
+    return _PURPOSES.get(layout, "places")
 
 
 def _is_list(campaign: Campaign) -> bool:
@@ -306,4 +331,6 @@ def procedure_pseudocode() -> str:
     >>> procedure_pseudocode().splitlines()[0]
     'STREAM(seed, design, stratum, purpose)'
     """
-    return PSEUDOCODE.replace("Field duplicates:\n", f"{ALONG_LINES}\nField duplicates:\n")
+    return PSEUDOCODE.replace(
+        "Field duplicates:\n", f"{BALANCED}\n{ALONG_LINES}\nField duplicates:\n"
+    )

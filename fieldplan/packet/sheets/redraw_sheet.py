@@ -97,13 +97,15 @@ def _packet_blocks(fingerprint: str, differs: Sequence[str]) -> list[Block]:
 def keys(plan: Plan) -> tuple[str, ...]:
     """Write the key lines of the draw: one a stratum, or one a unit of a list (the first shown)."""
     from fieldplan.base.draws import key_text
+    from fieldplan.design.procedure import first_purpose
 
     design, draw = plan.campaign.design[0], plan.locations
-    purpose = "grid" if draw.layout.endswith("grid") else "places"
+    each = draw.layout != "balanced-list"  # its units have no keys of their own
     lines = []
     for stratum in plan.frame.strata:
-        what = f"unit {stratum.units[0].unit_id}" if stratum.units else purpose
-        more = f"    and so on for {len(stratum.units)} units" if stratum.units else ""
+        unit = stratum.units[0].unit_id if stratum.units else ""
+        what = first_purpose(draw.layout, unit=unit)
+        more = f"    and so on for {len(stratum.units)} units" if unit and each else ""
         lines.append(key_text(draw.seed, design.id, stratum.name, what) + more)
     return tuple(lines)
 

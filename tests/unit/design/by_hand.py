@@ -268,6 +268,122 @@ def fill(
     return kept
 
 
+def nearer(units: Ring, own: int, among: list[int]) -> list[int]:
+    """Put other units in order of distance, of equals the lower number first."""
+    x, y = units[own]
+    return sorted(
+        (i for i in among if i != own),
+        key=lambda i: ((units[i][0] - x) ** 2 + (units[i][1] - y) ** 2, i),
+    )
+
+
+def pivots(units: Ring, count: int, numbers: Numbers) -> list[int]:
+    """PIVOTS of the pseudo-code."""
+    whole = len(units)
+    share = [count] * whole
+    row = [i for i in range(whole) if count < whole]
+    while row:
+        i = row[numbers.below(len(row))]
+        x, y = units[i]
+        j = min(
+            (k for k in row if k != i),
+            key=lambda k: ((units[k][0] - x) ** 2 + (units[k][1] - y) ** 2, k),
+        )
+        a, b = share[i], share[j]
+        if a + b <= whole:
+            share[i], share[j] = (a + b, 0) if numbers.below(a + b) < a else (0, a + b)
+        else:
+            r = a + b - whole
+            won = numbers.below(whole - r) < whole - b
+            share[i], share[j] = (whole, r) if won else (r, whole)
+        for k in (i, j):
+            if share[k] in (0, whole):
+                row[row.index(k)] = row[-1]
+                row.pop()
+    return [i for i in range(whole) if share[i] == whole]
+
+
+def pairs(units: Ring, members: list[int]) -> list[Place]:
+    """PAIRS of the pseudo-code, by the lower number."""
+
+    def apart(i: int, j: int) -> int:
+        return (units[i][0] - units[j][0]) ** 2 + (units[i][1] - units[j][1]) ** 2
+
+    partner: dict[int, int] = {}
+    left = members
+    while left:
+        couples = {
+            (apart(i, j), min(i, j), max(i, j)) for i in left for j in nearer(units, i, left)[:6]
+        }
+        for _, i, j in sorted(couples):
+            if i not in partner and j not in partner:
+                partner[i], partner[j] = j, i
+        left = [i for i in left if i not in partner]
+    for _ in range(20):
+        before = dict(partner)
+        for u in members:
+            for c in nearer(units, u, members)[:6]:
+                m, d = partner[u], partner[c]
+                if c != m and apart(u, c) + apart(m, d) < apart(u, m) + apart(c, d):
+                    partner.update({u: c, c: u, m: d, d: m})
+        if partner == before:
+            break
+    return [(i, partner[i]) for i in members if i < partner[i]]
+
+
+def halves(units: Ring, numbers: Numbers) -> list[int]:
+    """HALVES of the pseudo-code."""
+    members, halvings = list(range(len(units))), []
+    while len(members) > 1:
+        alone = [members[numbers.below(len(members))]] if len(members) % 2 else []
+        second = {}
+        for low, high in pairs(units, [i for i in members if i not in alone]):
+            if numbers.below(2) == 1:
+                second[low] = high
+            else:
+                second[high] = low
+        halvings.append(second)
+        members = sorted([*second, *alone])
+    for second in halvings[::-1]:
+        members = members + [second[i] for i in members if i in second]
+    return members
+
+
+def balanced(
+    key: tuple[int, str, str], rings: list[Ring], measure: float, planned: int, count: int
+) -> Ring:
+    """Draw the first places of a balanced list in an area, in centimetres."""
+    length = 8 * planned
+    while length < 64:
+        length *= 2
+    step = max(1, int(sqrt(10000 * measure / (8 * length))))
+    numbers = Numbers(*key, "raster")
+    east, north = box(rings)
+    spots = []
+    for i in range(-(-100 * (east[1] - east[0]) // step)):
+        for j in range(-(-100 * (north[1] - north[0]) // step)):
+            e = 100 * east[0] + i * step + int(numbers.uniform() * step)
+            n = 100 * north[0] + j * step + int(numbers.uniform() * step)
+            if inside(rings, (e, n)):
+                spots.append((e, n))
+    drawn = [spots[i] for i in pivots(spots, length, Numbers(*key, "pivots"))]
+    return [drawn[i] for i in halves(drawn, Numbers(*key, "halves"))][:count]
+
+
+def balanced_units(key: tuple[int, str, str], wells: dict[str, Place], planned: int) -> list[str]:
+    """Put all units of a list, known by id and place in centimetres, in balanced order."""
+    ids = sorted(wells)
+    places = [wells[name] for name in ids]
+    length = planned
+    while 2 * length <= len(ids):
+        length *= 2
+    drawn = pivots(places, length, Numbers(*key, "pivots"))
+    rest = [i for i in range(len(ids)) if i not in drawn]
+    order = [drawn[i] for i in halves([places[i] for i in drawn], Numbers(*key, "halves"))]
+    order += [rest[i] for i in halves([places[i] for i in rest], Numbers(*key, "rest"))]
+    return [ids[i] for i in order]
+
+
 def compact(
     key: tuple[int, str, str],
     rings: list[Ring],

@@ -90,11 +90,13 @@ def all_issued() -> dict[str, dict[str, list[tuple[int, int]]]]:
 
 
 def compact_issued() -> dict[str, dict[str, list[tuple[int, int]]]]:
-    """Draw compact strata with fieldplan, for the golden file too."""
+    """Draw compact strata and balanced lists with fieldplan, for the golden file too."""
     return places_by_stratum(
         {
             "compact-strata": issued("compact-strata"),
             "compact-strata, two a cell": issued("compact-strata", per_cell=2),
+            "balanced-list": issued("balanced-list"),
+            "balanced-list, 20 m apart": issued("balanced-list", minimum_spacing_m=20.0),
         }
     )
 
@@ -134,6 +136,32 @@ def test_compact_strata_followed_by_hand_are_the_places_issued(per_cell: int) ->
     drawn = issued("compact-strata", per_cell=per_cell)
     found = {stratum: placed(drawn, stratum) for stratum in ("meadow", "yard")}
     assert found == compact_by_hand(per_cell)
+
+
+def test_balanced_lists_followed_by_hand_are_the_places_issued() -> None:
+    """Neighbours found by brute force must be those found in buckets, ties and all."""
+    drawn = issued("balanced-list")
+    assert {stratum: placed(drawn, stratum) for stratum in ("meadow", "yard")} == {
+        name: by_hand.balanced((SEED, "main", name), rings, geometry.area, planned, planned + spare)
+        for name, rings, geometry, planned, spare in (
+            ("meadow", MEADOW, MEADOW_POLYGON, 12, 4),
+            ("yard", YARD, YARD_POLYGON, 7, 3),
+        )
+    }
+
+
+@pytest.mark.parametrize("planned", [1, 3, 8, 13, 14])
+def test_balanced_order_of_a_list_followed_by_hand_is_the_order_issued(planned: int) -> None:
+    """Wells in a zigzag stand at equal distances, which tries the rules for ties."""
+    frame = make_list_frame()
+    campaign = make_campaign(design=(DesignTable(layout="balanced-list"),), draw=Draw(seed=SEED))
+    units = frame.strata[0].units
+    wells = {u.unit_id: (round(u.easting * 100), round(u.northing * 100)) for u in units}
+    count = StratumCount("site", planned, len(units) - planned)
+    locations = locate(campaign, frame, [count])
+    by_order = sorted(locations.places, key=lambda place: place.list_order)
+    found = by_hand.balanced_units((SEED, "main", "site"), wells, planned)
+    assert [p.location_id for p in by_order] == found
 
 
 def test_places_are_those_committed_with_the_first_release() -> None:
