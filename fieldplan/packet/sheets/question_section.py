@@ -1,5 +1,6 @@
 """What is asked, and the population that the answer speaks for."""
 
+from fieldplan.base.units import length_in_words
 from fieldplan.base.document import Block, Bullets, Facts, Paragraph, Table
 from fieldplan.campaign.model import Analyte
 from fieldplan.packet.sheets.amounts import BLANK, area, days, percent
@@ -34,12 +35,14 @@ def asked_words(plan: Plan) -> str:
 
 
 def also_asked(plan: Plan) -> list[str]:
-    """Say which other objectives the campaign has; they do not decide the number."""
+    """Say which other objectives the campaign has, and which decide the number as well."""
     lines = []
+    deciding = {objective.analyte for objective in plan.campaign.also_deciding}
     for other in plan.size.others:
         label = plan.campaign.analyte_called(other.analyte).label
         if other.target and other.question == "mean":
-            lines.append(f"mean of {label}, {other.target}")
+            role = "; it decides n as well" if other.analyte in deciding else ""
+            lines.append(f"mean of {label}, {other.target}{role}")
         elif other.target:
             lines.append(f"{label}: {other.target}")
     return lines
@@ -103,7 +106,7 @@ def depth(plan: Plan) -> str:
 def measure_table(plan: Plan) -> Table:
     """Set the strata with their size and their weight in the mean."""
     frame = plan.frame
-    unit = "Area" if frame.kind == "area" else "Units"
+    unit = {"area": "Area", "line": "Length", "list": "Units"}[frame.kind]
     rows = [
         (stratum.name, measured(plan, stratum.measure), percent(stratum.weight))
         for stratum in frame.strata
@@ -113,5 +116,7 @@ def measure_table(plan: Plan) -> Table:
 
 
 def measured(plan: Plan, measure: float) -> str:
-    """Write square metres of an area, or the number of units of a list."""
+    """Write square metres of an area, metres of lines, or the number of units of a list."""
+    if plan.frame.kind == "line":
+        return length_in_words(measure)
     return area(measure) if plan.frame.kind == "area" else str(round(measure))

@@ -1,13 +1,15 @@
-"""Page one stays one page where there are many strata."""
+"""Sheets of many strata, and of several analytes that decide."""
 
 from dataclasses import replace
 
 from fieldplan.packet.sheets.answer import SHOWN, stratum_table
 from fieldplan.packet.sheets.methods import drawn_sentence
 from fieldplan.packet.sheets.plan_words import assumed_lines
+from fieldplan.packet.sheets.question_section import also_asked
 from fieldplan.plan.model import Plan
 from fieldplan.sizing.model import StratumSize
 from tests.factories import make_plan
+from tests.several_analytes import campaign_with_zinc, plan_with_zinc, zinc_objective
 
 
 def many(count: int = 40) -> Plan:
@@ -54,3 +56,13 @@ def test_the_sentence_for_the_report_sums_up_many_strata() -> None:
     sentence = drawn_sentence(many())
     assert "in 37 others" in sentence
     assert sentence.count("zone") == 3
+
+
+def test_an_analyte_that_decides_as_well_is_said_to() -> None:
+    """The sheet asks the same questions of both."""
+    plan = plan_with_zinc()
+    (alone,) = also_asked(plan)
+    assert "decides" not in alone
+    both = campaign_with_zinc(zinc_objective(standard_error=15.0, decides_n=True))
+    (told,) = also_asked(replace(plan, campaign=both))
+    assert told == f"{alone}; it decides n as well"
