@@ -235,7 +235,7 @@ def contradictions(means: "Means") -> str:
             f"ends at {end:g}"
         )
     if name == "cv-up-to-1" and at_zero:
-        found.append(f"{counted(at_zero, 'result')} of {n} are 0, and the class has no zeros")
+        found.append(f"{at_zero} of {n} results at 0, and the class has no zeros")
     elif name == "cv-up-to-1" and zeros:
         found.append(f"{counted(zeros, 'value')} may be 0, since not detected")
     elif zeros > n / 2:

@@ -157,6 +157,7 @@ def widened_counts(question: "Question") -> list[int]:
     """
     from fieldplan.sizing.precision import Precision
 
+    shapes_of(question)
     precision, wanted = Precision(question), question.target_half_width or 0.0
     most = question.strata.most
     least = max(FEWEST[class_of(question)], sum(question.strata.floors))

@@ -47,7 +47,7 @@ WIDENINGS: dict[PopulationClass, tuple[Widening, Widening]] = {
         Widening(3.74, 1.118, 0.016, 0.973, 0.342),
     ),
     "cv-up-to-2": (
-        Widening(2.5, 1.5, -0.013, 2.8, 0.45),
+        Widening(2.6, 1.4, -0.013, 2.0, 0.78),
         Widening(1.869, 0.563, -0.013, 2.337, 1.589),
     ),
 }
