@@ -122,15 +122,13 @@ def difference_sentences(
     parts = split_difference(plan, mean, planned=planned)
     if parts is None:
         return tuple(line for line in lines if line)
+    by_layout = mean.cell_variances or mean.start_variances
+    rest = "what the layout made of it" if by_layout else "a spread borrowed or planned otherwise"
     lines.append(
         f"Achieved is {_times(parts.ratio)} times planned: {_times(parts.number)} from the number "
         f"of results, times {_times(parts.sharing)} from their sharing among strata and its "
         f"weights, times {_times(parts.spread)} from the spread found"
-        + (
-            f", times {_times(parts.rest)} from a spread borrowed or planned otherwise."
-            if _says(parts.rest)
-            else "."
-        )
+        + (f", times {_times(parts.rest)} from {rest}." if _says(parts.rest) else ".")
     )
     lines.append(_spread_found(mean, planned))
     return tuple(line for line in lines if line)

@@ -4,6 +4,7 @@ import math
 
 from fieldplan.base.working import Quantity, Step
 from fieldplan.design.model import StratumEstimate, StratumValues
+from fieldplan.estimate.cell_steps import cell_error_steps, cell_freedom_step, cell_mean_step
 from fieldplan.estimate.means import Means
 from fieldplan.estimate.start_steps import start_freedom_step, start_steps
 from fieldplan.estimate.widened import is_widened
@@ -31,17 +32,28 @@ def working(means: Means, unit: str) -> tuple[Step, ...]:
     """
     several = len(means.values) > 1
     steps: list[Step] = []
+    cells = {entry.stratum: entry for entry in means.half.cell_variances}
     for values, found in zip(means.values, means.half.strata, strict=True):
         label = values.stratum if several else ""
-        steps += _stratum_steps(means, values, found, unit=unit, label=label)
+        if entry := cells.get(values.stratum):
+            steps.append(cell_mean_step(values, found, entry, unit=unit, label=label))
+        else:
+            steps += _stratum_steps(means, values, found, unit=unit, label=label)
     if several:
         steps.append(_weighted_mean(means, unit))
-    between = bool(means.half.start_variances)
-    steps += start_steps(means, unit) if between else [_standard_error(means, unit)]
+    steps += _error_steps(means, unit)
     if means.half.standard_error > 0:
         widened = is_widened(means.rules)
         steps += widened_steps(means, unit) if widened else _interval_steps(means, unit)
     return tuple(steps)
+
+
+def _error_steps(means: Means, unit: str) -> list[Step]:
+    """Show the standard error by the rule of the layout."""
+    if means.half.cell_variances:
+        return cell_error_steps(means, unit)
+    between = bool(means.half.start_variances)
+    return start_steps(means, unit) if between else [_standard_error(means, unit)]
 
 
 def _stratum_steps(
@@ -195,6 +207,8 @@ def _freedom_step(means: Means, unit: str) -> Step:
     strata, known = means.half.strata, means.half.degrees_of_freedom
     if means.half.start_variances:
         return start_freedom_step(means)
+    if means.half.cell_variances:
+        return cell_freedom_step(means, unit)
     if len(strata) == 1:
         inputs: tuple[Quantity, ...] = (Quantity("n", "results", strata[0].n),)
         return Step("df", "Degrees of freedom", "df = n − 1", inputs, known, known, "", _RANDOM)

@@ -1,5 +1,7 @@
 """What the design can and cannot tell, and a paragraph for the report."""
 
+from itertools import pairwise
+
 from fieldplan.base.document import Block, Bullets, Heading, Paragraph
 from fieldplan.campaign.model import Rules
 from fieldplan.packet.sheets.amounts import counted, likely, listed, percent, rounded
@@ -72,7 +74,9 @@ def cannot_tell(plan: Plan) -> tuple[str, ...]:
         "Anything outside the population: "
         + listed(
             [
-                "beyond the list" if plan.frame.kind == "list" else "beyond the boundary",
+                {"list": "beyond the list", "line": "off the lines"}.get(
+                    plan.frame.kind, "beyond the boundary"
+                ),
                 *(["in the parts left out"] if plan.frame.excluded else []),
                 *(["at other depths"] if depth else []),
                 "at other times",
@@ -93,6 +97,12 @@ def patch_line(plan: Plan) -> str:
         if missed <= 0:
             return "What a unit would give at another time: place error is nil, the others remain."
         return f"Any single unit that was not drawn: {missed} of the list are not visited."
+    if plan.frame.kind == "line":
+        gap = widest_stretch(plan)
+        return (
+            f"What a stretch between two locations holds: as drawn, up to {rounded(gap)} m along a "
+            "branch have no location."
+        )
     gap = widest_gap(plan)
     return (
         f"Where a small patch lies: as drawn, one spot is {rounded(gap)} m from its nearest "
@@ -112,6 +122,23 @@ def widest_gap(plan: Plan) -> float:
     whole = joined(shapes, "the strata")
     drawn = [(place.easting, place.northing) for place in plan.locations.of_class("random")]
     return largest_gap(whole, np.array(drawn))
+
+
+def widest_stretch(plan: Plan) -> float:
+    """Measure the longest stretch of one reach, in metres, that holds no location."""
+    widest = 0.0
+    for stratum in plan.frame.strata:
+        for reach in stratum.reaches:
+            inside = sorted(
+                place.along_m
+                for place in plan.locations.of_class("random")
+                if place.along_m is not None
+                and place.branch == reach.branch
+                and reach.from_m <= place.along_m <= reach.to_m
+            )
+            stops = [reach.from_m, *inside, reach.to_m]
+            widest = max(widest, *(b - a for a, b in pairwise(stops)))
+    return widest
 
 
 def methods_blocks(plan: Plan) -> list[Block]:
@@ -142,14 +169,24 @@ def drawn_sentence(plan: Plan) -> str:
         if design.layout == "census":
             return f"All {total} units of the list were to be sampled."
         how = "by simple random sampling without replacement"
+        if design.layout == "balanced-list":
+            how = f"as a {LAYOUTS[design.layout]}"
         return f"{count} were drawn {how} from a list of {total} units."
+    each = "one" if design.per_cell == 1 else "two"
     how = {
         "simple-random": "by simple random sampling",
         "stratified": "by stratified random sampling",
+        "compact-strata": f"at random, {each} in each compact cell of nearly equal area,",
     }.get(design.layout, f"as a {LAYOUTS[design.layout]}")
-    hectares = plan.frame.population.net / 1e4
+    size = f"{plan.frame.population.net / 1e4:.2f} ha"
+    whole = "site"
+    if plan.frame.kind == "line":
+        size, whole = f"{plan.frame.population.net / 1e3:.2f} km of line", "lines"
+        if design.layout == "even-spacing":
+            starts = counted(design.starts, "random start")
+            how = f"evenly spaced along the lines, from {starts} in each stratum,"
     share = percent(plan.frame.population.share)
-    line = f"{count} were drawn {how} from {hectares:.2f} ha ({share} of the site"
+    line = f"{count} were drawn {how} from {size} ({share} of the {whole}"
     if several_strata(plan):
         strata = plan.size.strata
         shared = ", ".join(f"{entry.stratum} {entry.planned}" for entry in strata)

@@ -32,8 +32,11 @@ def draw_blocks(plan: Plan) -> list[Block]:
                 f"{ALLOCATIONS[design.allocation]}; at least {design.floor} each{_bounds(design)}",
             )
         )
+    if design.layout == "even-spacing":
+        rows.append(("Random starts", start_words(design)))
     if design.minimum_spacing_m:
         rows.append(("Minimum spacing", f"{number(design.minimum_spacing_m)} m"))
+    rows += cell_rows(design)
     rows += [
         ("Seed", str(draw.seed)),
         ("Version of the drawing procedure", str(draw.version)),
@@ -49,6 +52,53 @@ def draw_blocks(plan: Plan) -> list[Block]:
     ]
 
 
+_VARIANCE = {
+    ("pairs", 1): "from pairs of neighbouring cells, which usually overstates a little: the "
+    "difference between the cells is in it",
+    ("pairs", 2): "from the two results of each cell, which needs no model of the ground",
+    ("covariance", 1): "that inside the cells by how results fade with distance, averaged over 126 "
+    "curves by how likely the results make each; from pairs of neighbouring cells in a stratum of "
+    "fewer than 20 or more than 400 results",
+    ("covariance", 2): "that inside the cells by how results fade with distance, averaged over 126 "
+    "curves by how likely the results make each; from the pairs in the cells in a stratum of fewer "
+    "than 20 or more than 400 results",
+}
+
+
+def cell_rows(design: DesignTable) -> list[tuple[str, str]]:
+    """Say how many locations a cell has and what the estimate will make of them."""
+    if design.layout != "compact-strata":
+        return []
+    variance = _VARIANCE[design.variance, design.per_cell]
+    return [
+        ("Locations a cell", "1" if design.per_cell == 1 else "2 (3 in cell 1 where n is odd)"),
+        (
+            "Mean",
+            "cell means weighed by the cells' exact areas; a cell without a result goes with the "
+            "nearest cell that has one; an alternate counts in the cell in which it lies",
+        ),
+        ("Variance, fixed now", variance),
+        (
+            "Inclusion",
+            "locations in the cell over its area, equal to about 1 % between cells of a stratum; "
+            "the list of locations has it place by place (office folder)",
+        ),
+    ]
+
+
+def start_words(design: DesignTable) -> str:
+    """Say how many starts there are and what the estimate will make of them."""
+    if design.starts == 1:
+        return (
+            "1; a standard error cannot be had from a single start, so that the formula for random "
+            "places is used, without credit for the spacing"
+        )
+    return (
+        f"{design.starts}, independent; the standard error comes from how their means differ, with "
+        f"{design.starts - 1} degrees of freedom a stratum"
+    )
+
+
 def location_blocks(plan: Plan) -> list[Block]:
     """Set every location, and explain the columns."""
     return [location_table(plan), Paragraph(table_note(plan), tone="note")]
@@ -61,17 +111,29 @@ def location_table(plan: Plan) -> Table:
         "Short name",
         "Class",
         "Stratum",
+        "Branch",
+        "Along, m",
+        "Cell",
         "Order",
         "Latitude",
         "Longitude",
         "Jars",
     ]
-    kept = [True, True, True, several_strata(plan), True, True, True, True]
+    cells = any(place.cell for place in plan.locations.places)
+    lines = plan.frame.kind == "line"
+    kept = [True, True, True, several_strata(plan), lines, lines, cells, True, True, True, True]
     rows = [location_row(plan, place) for place in plan.locations.places]
     return Table(
         tuple(c for c, keep in zip(columns, kept, strict=True) if keep),
         tuple(tuple(c for c, keep in zip(row, kept, strict=True) if keep) for row in rows),
-        numeric=("Order", "Latitude", "Longitude", "Jars"),
+        numeric=(
+            *(["Along, m"] if lines else []),
+            *(["Cell"] if cells else []),
+            "Order",
+            "Latitude",
+            "Longitude",
+            "Jars",
+        ),
     )
 
 
@@ -82,6 +144,9 @@ def location_row(plan: Plan, place: Location) -> tuple[str, ...]:
         place.short_name,
         place.location_class,
         place.stratum,
+        place.branch,
+        "–" if place.along_m is None else f"{place.along_m:.2f}",
+        str(place.cell or "–"),
         str(place.list_order) if place.list_order else "–",
         f"{place.latitude:.7f}",
         f"{place.longitude:.7f}",
@@ -93,9 +158,14 @@ def table_note(plan: Plan) -> str:
     """Explain the columns."""
     classes = {place.location_class for place in plan.locations.places}
     meanings = "; ".join(f"{name}: {CLASSES[name]}" for name in CLASSES if name in classes)
+    along = (
+        " Along is the distance along the branch from its start, parts left out included."
+        if plan.frame.kind == "line"
+        else ""
+    )
     return (
-        f"Coordinates are degrees on WGS 84. {meanings}. Order is the order of drawing within the "
-        "stratum; alternates are used in that order. A jar is one sample; duplicates are among "
-        "them. UTM and degrees-minutes-seconds are in the crew's CSV file; the map to scale is in "
+        f"Coordinates are degrees on WGS 84.{along} {meanings}. Order is the order of drawing "
+        "within the stratum; alternates are used in that order. A jar is one sample; duplicates are "
+        "among them. UTM and degrees-minutes-seconds are in the crew's CSV file; the map to scale is in "
         "folder crew."
     )
