@@ -162,10 +162,10 @@ def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
             f"{opening}, sigma being known from {behind} only; the plain formula ({plain}) would "
             f"be enough in {percent(plain_chance)} of campaigns."
         )
-    line = (
-        f"{opening}: the plain formula is enough in only about half of campaigns, and sigma is "
-        f"known from {behind} only. "
-    )
+    half = "the plain formula is enough in only about half of campaigns, and "
+    if question.widened and question.target_half_width is not None:
+        half = ""  # skewed reaches are not even about their mean
+    line = f"{opening}: {half}sigma is known from {behind} only. "
     if not assured:
         return f"{line}Any chance above two in three takes every unit of the list."
     more = listed([str(entry.n) for entry in assured])
