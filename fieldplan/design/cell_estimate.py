@@ -37,7 +37,7 @@ METHODS = {
     "covariance": (
         "Compact strata: cell means weighed by the cells' shares of the area. The variance is that "
         "inside the cells by how results fade with distance, averaged over 126 curves by how "
-        "likely the results make each; n − 1 degrees of freedom a stratum."
+        "likely the results make each; n − 3 degrees of freedom a stratum."
     ),
 }
 BETWEEN = (

@@ -30,7 +30,7 @@ METHODS = {
     "covariance": (
         "Balanced list: {means}. The variance is that inside squares of one location's share of "
         "the area by how results fade with distance, averaged over 126 curves by how likely the "
-        "results make each; n − 1 degrees of freedom a stratum."
+        "results make each; n − 3 degrees of freedom a stratum."
     ),
 }
 MODELLED = (

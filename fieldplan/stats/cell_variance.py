@@ -263,7 +263,8 @@ def curve_variance(
     -----
     For each curve Σ a²/n · σ² (ν + (1 − ν)(1 − c)), c the mean correlation in a square of the
     cell's area: Matérn (1960), Spatial Variation, ch. 5; averaged on the log scale over the curves
-    of ``fieldplan.stats.spatial`` by how likely the results make each.
+    of ``fieldplan.stats.spatial`` by how likely the results make each. n − 3 degrees of freedom:
+    level, range and nugget come from the results (house rule; measured, see the docs).
     """
     if len(values) > MOST_PLACES:
         message = f"{len(values)} results; curves are weighed for {MOST_PLACES} at most."
@@ -279,7 +280,7 @@ def curve_variance(
     left = field.variances * (field.nuggets + (1 - field.nuggets) * (1 - common))
     return CurveVariance(
         variance=float(own.sum() * math.exp(field.weights @ np.log(left))),
-        degrees_of_freedom=float(len(values) - 1),
+        degrees_of_freedom=float(len(values) - 3),
         practical_range=field.typical_range,
         nugget=field.typical_nugget,
         sigma=math.sqrt(float(field.weights @ field.variances)),

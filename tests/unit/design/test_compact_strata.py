@@ -238,7 +238,7 @@ def test_each_rule_says_what_it_is_and_gives_the_contrast() -> None:
     assert pairs.method != curves.method
     assert BETWEEN in pairs.caution
     assert MODELLED in curves.caution
-    assert curves.degrees_of_freedom == 23
+    assert curves.degrees_of_freedom == 21
     plain = twenty.values.std(ddof=1) / math.sqrt(24)
     for answer in (pairs, curves):
         assert NO_CREDIT.format(times=plain / answer.standard_error) in answer.caution
