@@ -80,7 +80,7 @@ def cell_rows(design: DesignTable) -> list[tuple[str, str]]:
         ("Variance, fixed now", variance),
         (
             "Inclusion",
-            "locations in the cell over its area, equal to about 1 % between cells of a stratum; "
+            "locations in the cell over its area, nearly equal between the cells of a stratum; "
             "the list of locations has it place by place (office folder)",
         ),
     ]
