@@ -71,12 +71,12 @@ def conditions(question: Question, needed: tuple[int, ...]) -> tuple[str, ...]:
 
 def _tails(question: Question) -> str:
     """Say how the chances take the shape of single results."""
+    if question.widened and question.target_half_width is not None:
+        return WIDENED_CHANCES
     if not question.heavy_tails:
         return NEAR_NORMAL
     return (
         f"Chances take tails as heavy as declared, an excess kurtosis of {question.heavy_tails:g}, "
-    if question.widened and question.target_half_width is not None:
-        return WIDENED_CHANCES
         "through fewer degrees of freedom; a tail heavier than declared makes them lower."
     )
 
