@@ -56,10 +56,10 @@ def layout_of(design: DesignTable) -> Layout:
     >>> layout_of(DesignTable(layout="compact-strata", per_cell=2)).per_cell
     2
     """
+    by_curves = design.variance == "covariance"
     if design.layout == CompactStrata.name:
-        return CompactStrata(per_cell=design.per_cell, variance=design.variance)
+        return CompactStrata(design.per_cell, "covariance" if by_curves else "pairs")
     if design.layout == BalancedList.name:
-        by_curves = design.variance == "covariance"
         return BalancedList("covariance" if by_curves else "neighbours")
     if design.layout == EvenSpacing.name:
         return EvenSpacing(starts=design.starts)
