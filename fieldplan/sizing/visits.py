@@ -5,7 +5,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
-from fieldplan.stats.time_series import inflation, results_behind_sigma, sigma_of_series
+from fieldplan.stats.time_series import planned_factor, results_behind_sigma, sigma_of_series
 
 if TYPE_CHECKING:
     from fieldplan.lab.model import StratumSpread
@@ -28,8 +28,8 @@ def as_visits(parts: "Sequence[Part]", entries: "Sequence[StratumSpread]") -> "t
     -------
     tuple of Part
         Sigma times √((1 + ρ)/(1 − ρ)), which gives the mean of n visits the variance that n
-        independent ones of the raised sigma would have. A pilot of visits first loses what its
-        s hides, and counts for the independent visits that it is worth.
+        independent ones of the raised sigma would have; times 1 where ρ is below 0. A pilot of
+        visits first loses what its s hides, and counts for the independent visits it is worth.
 
     Examples
     --------
@@ -48,7 +48,7 @@ def _as_visits(part: "Part", entry: "StratumSpread | None") -> "Part":
     if entry is None or entry.visits is None or entry.visits.planned_rho == 0:
         return part
     rho = entry.visits.planned_rho
-    factor = math.sqrt(inflation(rho))
+    factor = math.sqrt(planned_factor(rho))
     words = f"times {factor:.4g} for visits that resemble each other by {rho:.3g}"
     return replace(
         part,

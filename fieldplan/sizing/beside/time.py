@@ -11,6 +11,7 @@ from fieldplan.sizing.beside.time_words import (
     LIST_OF_DAYS,
     TITLE,
     carried_step,
+    estimate_words,
     factor_step,
     interval_words,
     raised_step,
@@ -24,7 +25,7 @@ from fieldplan.sizing.words import counted, figure
 from fieldplan.stats.period_mean import period_variance_share
 from fieldplan.stats.time_series import (
     effective_number,
-    inflation,
+    planned_factor,
     rho_at,
     visits_by_inflation,
     visits_needed,
@@ -93,7 +94,7 @@ def _declared(asked: Asked, size: Size, seen: "SeriesCorrelation | None") -> Fin
         rows=rows,
         steps=_steps(asked, size),
         assumptions=visit_assumptions(asked),
-        warnings=_warnings(asked, seen),
+        warnings=_warnings(asked, size, seen),
         sources=(BAYLEY,),
         picture=_picture(first, size) if len(size.strata) == 1 else None,
     )
@@ -119,9 +120,9 @@ def _rhos(asked: Asked) -> str:
 def _independent(entry: "StratumSpread", size: Size) -> float:
     """Give the independent visits that the target asks for, or that n is worth without one."""
     if size.unrounded is not None and size.needed == size.plain_n and entry.visits is not None:
-        return size.unrounded / inflation(entry.visits.planned_rho)
+        return size.unrounded / planned_factor(entry.visits.planned_rho)
     rho = entry.visits.planned_rho if entry.visits else 0.0
-    return size.needed / inflation(rho)
+    return size.needed / planned_factor(rho)
 
 
 def _amounts(asked: Asked, size: Size, worth: float) -> tuple[Amount, ...]:
@@ -136,13 +137,17 @@ def _amounts(asked: Asked, size: Size, worth: float) -> tuple[Amount, ...]:
     independent = _independent(entry, size)
     return (
         Amount("rho", "Correlation of neighbouring planned visits", rho),
-        Amount("factor", "Visits for one independent visit, (1 + ρ)/(1 − ρ)", inflation(rho)),
+        Amount(
+            "factor",
+            "Visits for one independent visit, (1 + ρ)/(1 − ρ) and 1 at least",
+            planned_factor(rho),
+        ),
         *found,
         Amount("independent", "Independent visits asked for", independent, "visits"),
         Amount(
             "visits_by_factor",
             "Visits by the factor",
-            visits_by_inflation(independent, rho),
+            visits_by_inflation(independent, max(rho, 0.0)),
             "visits",
         ),
         Amount(
@@ -177,7 +182,7 @@ def _steps(asked: Asked, size: Size) -> tuple[Step, ...]:
     return tuple(steps)
 
 
-def _warnings(asked: Asked, seen: "SeriesCorrelation | None") -> tuple[str, ...]:
+def _warnings(asked: Asked, size: Size, seen: "SeriesCorrelation | None") -> tuple[str, ...]:
     """Say where the declared correlation is at odds with the pilot, the list or the estimate."""
     lines = []
     for entry in asked.entries:
@@ -194,10 +199,7 @@ def _warnings(asked: Asked, seen: "SeriesCorrelation | None") -> tuple[str, ...]
             )
     if asked.population is not None:
         lines.append(f"These visits are sized for the long-run mean. {LIST_OF_DAYS}")
-    lines.append(
-        "The estimate after the laboratory takes results as independent; for visits in a row its "
-        "interval is too narrow, unless the visits are far enough apart by then."
-    )
+    lines.append(estimate_words(asked, size))
     return tuple(lines)
 
 

@@ -6,9 +6,15 @@ from typing import TYPE_CHECKING
 from fieldplan.base.working import Quantity, Step
 from fieldplan.lab.model import VisitCorrelation
 from fieldplan.sizing.asked.model import Asked
+from fieldplan.sizing.model import Size
 from fieldplan.sizing.visits import unhidden_sigma
 from fieldplan.sizing.words import percent
-from fieldplan.stats.time_series import effective_number, inflation
+from fieldplan.stats.intervals import t_quantile
+from fieldplan.stats.time_series import (
+    effective_number,
+    planned_factor,
+    share_held_as_independent,
+)
 
 if TYPE_CHECKING:
     from fieldplan.lab.model import StratumSpread
@@ -52,10 +58,10 @@ def factor_step(entry: "StratumSpread") -> Step:
     return Step(
         symbol=f"f{_where(entry)}",
         meaning="Visits for one independent visit in a long series",
-        formula="f = (1 + ρ) / (1 − ρ)",
+        formula="f = (1 + ρ) / (1 − ρ), and 1 at least",
         inputs=(Quantity("ρ", "correlation of neighbouring visits", rho),),
-        unrounded=inflation(rho),
-        rounded=inflation(rho),
+        unrounded=planned_factor(rho),
+        rounded=planned_factor(rho),
         source=BAYLEY,
     )
 
@@ -64,7 +70,7 @@ def raised_step(entry: "StratumSpread", asked: Asked) -> Step:
     """Show sigma as n uses it."""
     rho = entry.visits.planned_rho if entry.visits else 0.0
     own = unhidden_sigma(entry.sigma, entry)
-    raised = own * math.sqrt(inflation(rho))
+    raised = own * math.sqrt(planned_factor(rho))
     meaning = "standard deviation of single visits"
     if own != entry.sigma:
         meaning += f"; s = {entry.sigma:.5g} of visits in a row, with what it hides"
@@ -74,7 +80,7 @@ def raised_step(entry: "StratumSpread", asked: Asked) -> Step:
         formula="s = σ · √f",
         inputs=(
             Quantity("σ", meaning, own, asked.question.unit),
-            Quantity("f", "visits for one independent visit", inflation(rho)),
+            Quantity("f", "visits for one independent visit", planned_factor(rho)),
         ),
         unrounded=raised,
         rounded=raised,
@@ -102,6 +108,27 @@ def worth_step(entry: "StratumSpread", visits: int) -> Step:
     )
 
 
+def estimate_words(asked: Asked, size: Size) -> str:
+    """Say what the interval after the laboratory is worth: it takes results as independent."""
+    rhos = [entry.visits.planned_rho for entry in asked.entries if entry.visits]
+    rho = max(rhos, key=abs)
+    opening = "The estimate after the laboratory takes results as independent"
+    if rho <= 0:
+        return f"{opening}; for visits that alternate its interval is wider than it need be."
+    if len(asked.question.parts) > 1:
+        return f"{opening}; for visits in a row its interval is too narrow."
+    confidence, kind = asked.question.confidence, asked.question.interval
+    known = max(1, size.needed - 1)
+    t = t_quantile(known, confidence=confidence, kind=kind)
+    held = share_held_as_independent(rho, t, known)
+    if kind == "two-sided":
+        held = 2 * held - 1
+    return (
+        f"{opening}: at a correlation of {rho:.2g} its {percent(confidence)} interval or limit, "
+        f"and a decision by it, hold in about {percent(held)} of campaigns only."
+    )
+
+
 def visit_assumptions(asked: Asked) -> tuple[str, ...]:
     """Say under what conditions visits are worth what is said."""
     lines = [
@@ -109,8 +136,8 @@ def visit_assumptions(asked: Asked) -> tuple[str, ...]:
         "The long-run mean is asked for. The mean of the very period in which the visits are made "
         "is known far better: what lies between two like visits is known from them. That holds "
         "for what varies in the water or ground, not for errors of the laboratory.",
-        "The factor (1 + ρ)/(1 − ρ) decides n; it neglects the ends of the series and asks for a "
-        "visit or two more than the whole sum.",
+        "The factor (1 + ρ)/(1 − ρ) decides n where ρ is above 0; it neglects the ends of the "
+        "series and asks for a visit or two more than the whole sum. A ρ below 0 gets no credit.",
     ]
     if asked.question.target_half_width is not None:
         lines.append(

@@ -9,14 +9,17 @@ from hypothesis import strategies as st
 from numpy.typing import NDArray
 
 from fieldplan.base.errors import DesignError
+from fieldplan.stats.intervals import t_quantile
 from fieldplan.stats.time_series import (
     effective_number,
     effective_number_at,
     effective_number_of_lags,
     inflation,
     mean_correlation,
+    planned_factor,
     results_behind_sigma,
     rho_at,
+    share_held_as_independent,
     sigma_of_series,
     visits_by_inflation,
     visits_needed,
@@ -136,3 +139,26 @@ def test_impossible_series_are_refused_in_words(call: object, words: str) -> Non
     with pytest.raises(DesignError) as caught:
         call()  # type: ignore[operator]
     assert words in str(caught.value)
+
+
+@pytest.mark.parametrize(("rho", "n"), [(0.5, 29), (0.3, 60)])
+def test_the_share_held_as_independent_is_what_simulated_series_show(rho, n):
+    """Source: simulated series of that correlation; s of a short series hides a little more."""
+    rng = np.random.default_rng(20)
+    campaigns = 20_000
+    series = np.empty((campaigns, n))
+    series[:, 0] = rng.normal(size=campaigns)
+    for k in range(1, n):
+        series[:, k] = rho * series[:, k - 1] + math.sqrt(1 - rho**2) * rng.normal(size=campaigns)
+    t = t_quantile(n - 1, confidence=0.95, kind="upper-limit")
+    held = (series.mean(axis=1) + t * series.std(axis=1, ddof=1) / math.sqrt(n) >= 0).mean()
+    found = share_held_as_independent(rho, t, n - 1)
+    assert found == pytest.approx(held, abs=4 * math.sqrt(held * (1 - held) / campaigns) + 0.01)
+    assert share_held_as_independent(0.0, t, n - 1) == pytest.approx(0.95)
+
+
+@pytest.mark.parametrize("rho", [-0.9, -0.5, -0.1, 0.2, 0.7])
+def test_the_planned_factor_never_promises_more_than_the_whole_sum_keeps(rho):
+    """Source: the whole sum over the correlation matrix, for every n up to 40."""
+    for n in range(2, 41):
+        assert n / planned_factor(rho) <= effective_number(n, rho) + 1e-9

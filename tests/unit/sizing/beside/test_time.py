@@ -107,12 +107,12 @@ def test_a_correlation_is_carried_over_to_the_planned_days() -> None:
     assert found.picture.marks == (("planned", 90.0),)
 
 
-def test_a_negative_correlation_asks_for_fewer_visits() -> None:
-    """By hand: 36 × 0.8/1.2 = 24."""
+def test_a_negative_correlation_gets_no_credit() -> None:
+    """The factor of a long series, 0.8/1.2, would promise a short one more than it keeps."""
     size = size_asked(
         asked_mean(sigma=6.0, standard_error=1.0, keys=("sigma.correlation_between_visits=-0.2",))
     )
-    assert size.needed == 24
+    assert size.needed == 36
 
 
 def test_a_question_about_single_values_takes_no_notice() -> None:
