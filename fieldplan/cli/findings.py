@@ -207,6 +207,7 @@ _LAYOUTS = {
     "triangular-grid": "on a triangular grid with a random start",
     "balanced-list": "on a balanced list, spread over the ground",
     "compact-strata": "in compact cells of nearly equal area",
+    "even-spacing": "evenly spaced along the lines from a random start",
     "census": "are all members of the list",
 }
 

@@ -30,6 +30,7 @@ LAYOUT_NAMES = (
     "triangular-grid",
     "compact-strata",
     "balanced-list",
+    "even-spacing",
     "census",
 )
 MOST_ROWS = 40

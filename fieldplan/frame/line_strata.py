@@ -7,7 +7,7 @@ from fieldplan.base.errors import FrameError
 from fieldplan.base.units import length_in_words, significant
 from fieldplan.frame.cutting import joined
 from fieldplan.frame.ground import FrameFiles, Ground
-from fieldplan.frame.intervals import Intervals, shared, total_m, united, without
+from fieldplan.frame.intervals import Intervals, shared, united, without
 from fieldplan.frame.layer import raise_all
 from fieldplan.frame.network import Course, spans_within
 from fieldplan.frame.tiling import GAP_LIMIT, SLIVER_SHARE, by_name, column_of
@@ -21,7 +21,7 @@ SHORT_MM = 100
 
 def length_of(stretches: Stretches) -> float:
     """Sum stretches over all branches, in metres."""
-    return sum(map(total_m, stretches.values()))
+    return sum(high - low for spans in stretches.values() for low, high in spans) / 1000
 
 
 def strata_of(

@@ -122,7 +122,8 @@ def read_targeted(
         ]
         notes = [*overlay.layer.notes, *found.notes, *overlay.shift.notes]
         if outside:
-            notes.append(f"{entry.file}: targeted outside the site: {', '.join(outside)}.")
+            site = "the site" if shapely.get_dimensions(ground.boundary) == 2 else "the lines"
+            notes.append(f"{entry.file}: targeted outside {site}: {', '.join(outside)}.")
         ground = ground.noting(*notes, source=overlay.shift.source)
         places += [
             TargetedPlace(identifier, float(e), float(n), float(lat), float(lon), entry.reason)

@@ -12,6 +12,10 @@ if TYPE_CHECKING:
     from fieldplan.frame.model import Frame
 
 
+OFF_LINE_M = 100.0
+"""Pilot positions within this distance of a line count as taken on it (house rule)."""
+
+
 def sort_into_strata(
     locations: Sequence[PilotLocation], frame: "Frame", *, fixed: str = ""
 ) -> tuple[dict[str, list[PilotLocation]], list[PilotLocation], list[str]]:
@@ -54,7 +58,7 @@ def sort_into_strata(
             by_stratum[_known_stratum(place.stratum, frame, [place])].append(place)
         elif place.location_id.casefold() in units:
             by_stratum[units[place.location_id.casefold()]].append(place)
-        elif place.latitude is not None and frame.kind == "area":
+        elif place.latitude is not None and frame.kind in ("area", "line"):
             by_stratum[_stratum_at(place, frame)].append(place)
         else:
             unplaced.append(place)
@@ -92,17 +96,18 @@ def _point(place: PilotLocation, frame: "Frame") -> tuple[float, float]:
 def _inside_site(
     locations: Sequence[PilotLocation], frame: "Frame"
 ) -> tuple[list[PilotLocation], list[str]]:
-    """Leave out locations whose position lies outside the site's outer boundary."""
+    """Leave out locations whose position lies outside the boundary, or far from all lines."""
     import shapely
 
-    if frame.kind != "area":
+    if frame.kind == "list":
         return list(locations), []
+    allowed = OFF_LINE_M if frame.kind == "line" else 0.01
     inside: list[PilotLocation] = []
     outside: list[PilotLocation] = []
     for place in locations:
         known = place.latitude is not None and place.longitude is not None
         point = shapely.Point(*_point(place, frame))
-        far = known and not shapely.distance(frame.boundary, point) <= 0.01
+        far = known and not shapely.distance(frame.boundary, point) <= allowed
         (outside if far else inside).append(place)
     if not outside:
         return inside, []

@@ -160,17 +160,20 @@ def _move_notes(plan: Plan, place: Location, fact: FieldFacts) -> list[str]:
 def _stratum_at(plan: Plan, fact: FieldFacts) -> str | None:
     """Name the stratum at the actual position; empty outside all, None for a list.
 
-    A position within its own accuracy of a stratum counts as inside it.
+    A position within its own accuracy of a stratum counts as inside it; of a line also one within
+    the distance that a location may be moved.
     """
     import shapely
 
     from fieldplan.frame.projection import to_site
 
-    if plan.frame.kind != "area" or fact.latitude is None or fact.longitude is None:
+    if plan.frame.kind == "list" or fact.latitude is None or fact.longitude is None:
         return None
     easting, northing = to_site(plan.frame.projection, fact.latitude, fact.longitude)
     point = shapely.Point(float(easting), float(northing))
     accuracy = plan.campaign.field.position_accuracy_m or 0.0
+    if plan.frame.kind == "line":
+        accuracy += plan.campaign.field.offset_within_m
     near = [
         (float(shapely.distance(stratum.geometry, point)), stratum.name)
         for stratum in plan.frame.strata

@@ -129,6 +129,7 @@ def ask(
         census=design.layout == "census",
         grid=design.layout.endswith("-grid"),
         cells=design.layout in {"compact-strata", "balanced-list"},
+        starts=design.starts if design.layout == "even-spacing" else 0,
         targeted=targeted,
         prices=None if cost is None else prices_of(cost),
         controls=tuple(ControlRate(qc.kind, qc.share, qc.count, qc.source) for qc in campaign.qc),

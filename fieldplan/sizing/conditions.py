@@ -57,6 +57,10 @@ def conditions(question: Question, needed: tuple[int, ...]) -> tuple[str, ...]:
             "The grid is sized as simple random and its interval computed as such: the grid gets "
             "no credit, and the interval is usually too wide."
         )
+    if question.starts:
+        from fieldplan.sizing.start_words import start_condition
+
+        lines.append(start_condition(question, needed))
     if question.cells:
         lines.append(
             "A spread layout is sized as random places, without credit; the interval will take "

@@ -114,6 +114,8 @@ class Question:
     cells : bool
         A layout in compact cells or a balanced list, sized without credit but given it in the
         estimate.
+    starts : int
+        Random starts of even spacing along lines; 0 for any other layout.
     equal_in : str
         What equal precision levels out between strata: the standard error of their means, or the
         same as a share of the mean.
@@ -147,6 +149,7 @@ class Question:
     census: bool = False
     grid: bool = False
     cells: bool = False
+    starts: int = 0
     equal_in: EqualIn = "standard-error"
     also: "tuple[Question, ...]" = ()
     targeted: int = 0

@@ -9,6 +9,7 @@ from fieldplan.base.document import Figure
 from fieldplan.packet.drawing import NARROW_MM, WIDE_MM, mm_axes, new_figure, pens, svg_text
 from fieldplan.packet.maps.cells import plan_grounds
 from fieldplan.packet.maps.content import Entry, MapContent, plan_content
+from fieldplan.packet.maps.distance_marks import draw_distance_marks
 from fieldplan.packet.maps.ground import Ground, draw_grounds
 from fieldplan.packet.maps.legend import draw_entry, within
 from fieldplan.packet.maps.names import draw_names, draw_plate, mark_centres, unplaced_names
@@ -123,6 +124,7 @@ def _drawing(plan: Plan, content: MapContent, *, spec: PageSpec) -> "Canvas":
         taken.append(
             draw_plate(over, "ASSUMED BOUNDARY", spots=spots, clear_of=centres, points=7.0)
         )
+    taken += draw_distance_marks(over, plan.frame, spec=spec)
     draw_names(over, content, spec=spec, taken=taken)
     _key(over, [*content.legend, *layers], spec=spec)
     return figure

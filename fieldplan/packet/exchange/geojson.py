@@ -4,7 +4,7 @@ import json
 from pathlib import Path
 
 from fieldplan.packet.exchange.read_points import ReadPoint
-from fieldplan.packet.exchange.rows import OFFICE_COLUMNS, point_rows
+from fieldplan.packet.exchange.rows import OFFICE_COLUMNS, columns_of, point_rows
 from fieldplan.plan.model import Plan
 
 
@@ -29,7 +29,7 @@ def write_geojson(plan: Plan) -> bytes:
                 "type": "Point",
                 "coordinates": [row.location.longitude, row.location.latitude],
             },
-            "properties": {name: cells[name] for name in OFFICE_COLUMNS},
+            "properties": {name: cells[name] for name in columns_of(plan, OFFICE_COLUMNS)},
         }
         lines.append(json.dumps(feature, ensure_ascii=False, allow_nan=False))
     body = ",\n".join(lines)

@@ -12,7 +12,7 @@ import shapely
 from fieldplan.packet.exchange.geopackage_style import style_rows
 from fieldplan.packet.exchange.outlines import Outline, outlines, within_180
 from fieldplan.packet.exchange.read_points import ReadPoint
-from fieldplan.packet.exchange.rows import OFFICE_COLUMNS, point_rows
+from fieldplan.packet.exchange.rows import OFFICE_COLUMNS, columns_of, point_rows
 from fieldplan.plan.model import Plan
 
 if TYPE_CHECKING:
@@ -51,8 +51,13 @@ def write_geopackage(plan: Plan) -> bytes:
         )
         for kind, layer in LAYERS.items():
             chosen = [shape for shape in shapes if shape.kind == kind]
+            lines = plan.frame.kind == "line"
             write_dataframe(
-                _polygons(chosen), path, layer=layer, geometry_type="MultiPolygon", append=True
+                _lines(chosen) if lines else _polygons(chosen),
+                path,
+                layer=layer,
+                geometry_type="MultiLineString" if lines else "MultiPolygon",
+                append=True,
             )
         styles = pandas.DataFrame(style_rows(shapes, plan.made_on))
         write_dataframe(styles, path, layer="layer_styles", append=True)
@@ -64,7 +69,7 @@ def _locations(plan: Plan) -> "GeoDataFrame":
 
     rows = point_rows(plan)
     cells = [row.cells() for row in rows]
-    columns = {name: [row[name] for row in cells] for name in OFFICE_COLUMNS}
+    columns = {name: [row[name] for row in cells] for name in columns_of(plan, OFFICE_COLUMNS)}
     spots = shapely.points([(r.location.longitude, r.location.latitude) for r in rows])
     return GeoDataFrame(columns, geometry=spots, crs="EPSG:4326")
 
@@ -78,6 +83,22 @@ def _polygons(shapes: list[Outline]) -> "GeoDataFrame":
         "area_m2": [round(shape.area_m2, 1) for shape in shapes],
     }
     return GeoDataFrame(columns, geometry=solid, crs="EPSG:4326").astype({"name": str})
+
+
+def _lines(shapes: list[Outline]) -> "GeoDataFrame":
+    from geopandas import GeoDataFrame
+
+    drawn = [
+        shapely.MultiLineString(
+            [shapely.get_coordinates(p) for p in shapely.get_parts(within_180(shape.geometry))]
+        )
+        for shape in shapes
+    ]
+    columns = {
+        "name": [shape.name for shape in shapes],
+        "length_m": [round(shape.length_m, 1) for shape in shapes],
+    }
+    return GeoDataFrame(columns, geometry=drawn, crs="EPSG:4326").astype({"name": str})
 
 
 def _parts(shape: Outline) -> Iterator[shapely.Polygon]:

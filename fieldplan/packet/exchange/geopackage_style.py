@@ -26,6 +26,7 @@ def style_rows(shapes: tuple[Outline, ...], made_on: date) -> list[Style]:
     -------
     list of dict
     """
+    along_lines = any(shape.length_m for shape in shapes)
     documents = {
         "locations": _locations_document(),
         "boundary": _single_document(_fill_symbol("0", BOUNDARY_LINE, "#ffffff", "no", "0.6")),
@@ -34,6 +35,12 @@ def style_rows(shapes: tuple[Outline, ...], made_on: date) -> list[Style]:
             _fill_symbol("0", EXCLUDED_LINE, EXCLUDED_LINE, "f_diagonal", "0.3")
         ),
     }
+    if along_lines:
+        documents |= {
+            "boundary": _single_document(_line_symbol("0", BOUNDARY_LINE, "dot", "0.3")),
+            "strata": _line_strata_document(shapes),
+            "exclusions": _single_document(_line_symbol("0", EXCLUDED_LINE, "dash", "0.8")),
+        }
     return [
         {
             "f_table_catalog": "",
@@ -101,6 +108,26 @@ def _strata_document(shapes: tuple[Outline, ...]) -> ET.Element:
         symbol = _fill_symbol(str(number), fill.line, ground, _PATTERNS[fill.pattern], "0.3")
         classes.append((shape.name, shape.name, symbol))
     return _sorted_document("name", classes)
+
+
+def _line_strata_document(shapes: tuple[Outline, ...]) -> ET.Element:
+    classes = [
+        (shape.name, shape.name, _line_symbol(str(number), stratum_fill(number).line, style, "1"))
+        for number, shape in enumerate(s for s in shapes if s.kind == "stratum")
+        for style in [("solid", "dash", "dash dot", "dot")[number % 4]]
+    ]
+    return _sorted_document("name", classes)
+
+
+def _line_symbol(name: str, colour: str, style: str, width: str) -> ET.Element:
+    symbol = ET.Element("symbol", type="line", name=name, alpha="1")
+    options = {
+        "line_color": _colour(colour),
+        "line_style": style,
+        "line_width": width,
+        "line_width_unit": "MM",
+    }
+    return _with_layer(symbol, "SimpleLine", options)
 
 
 def _marker_symbol(name: str, shape: str, fill: str, edge: str) -> ET.Element:

@@ -9,7 +9,7 @@ import numpy as np
 from fieldplan.packet.exchange.outlines import outlines, rings, within_180
 from fieldplan.packet.exchange.plain_text import plain
 from fieldplan.packet.exchange.read_points import ReadPoint
-from fieldplan.packet.exchange.rows import DATUM, PointRow, point_rows
+from fieldplan.packet.exchange.rows import DATUM, PointRow, along_words, point_rows
 from fieldplan.plan.model import Plan
 
 if TYPE_CHECKING:
@@ -53,6 +53,7 @@ def _waypoint(row: PointRow) -> "GPXWaypoint":
     cells = row.cells()
     jars = f"Samples: {cells['sample_ids']}" if cells["sample_ids"] else "No sample ids"
     told = [str(cells["location_id"]), f"stratum {cells['stratum']}", str(cells["class"])]
+    told += [along_words(row.location)] if row.location.branch else []
     told += [f"alternate for {cells['alternate_for']}"] if cells["alternate_for"] else []
     told += [str(cells["reason"])] if cells["reason"] else []
     told += [jars, f"{row.utm_zone} {row.easting:.1f} {row.northing:.1f} {DATUM}", row.revision]

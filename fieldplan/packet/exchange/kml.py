@@ -10,7 +10,7 @@ import shapely
 from fieldplan.packet.exchange.outlines import Outline, outlines, within_180
 from fieldplan.packet.exchange.plain_text import plain
 from fieldplan.packet.exchange.read_points import ReadPoint
-from fieldplan.packet.exchange.rows import CREW_COLUMNS, PointRow, point_rows, text_of
+from fieldplan.packet.exchange.rows import CREW_COLUMNS, PointRow, columns_of, point_rows, text_of
 from fieldplan.packet.maps.palette import BOUNDARY_LINE, EXCLUDED_LINE, MARKS, stratum_fill
 from fieldplan.plan.model import Plan
 
@@ -49,7 +49,7 @@ def write_kml(plan: Plan) -> bytes:
         if chosen:
             folder = _folder(document, title)
             for row in chosen:
-                _add_location(folder, row)
+                _add_location(folder, row, columns_of(plan, CREW_COLUMNS))
     for kind, title in OUTLINE_FOLDERS.items():
         numbered = [(n, shape) for n, shape in enumerate(shapes) if shape.kind == kind]
         if numbered:
@@ -108,9 +108,16 @@ def _add_styles(document: ET.Element, shapes: tuple[Outline, ...]) -> None:
         line, ground = _outline_colours(shape, number)
         drawn = ET.SubElement(style, "LineStyle")
         _text(drawn, "color", _colour(line, "ff"))
-        _text(drawn, "width", "3" if shape.kind == "boundary" else "2")
+        _text(drawn, "width", _line_width(shape))
         filled = ET.SubElement(style, "PolyStyle")
         _text(filled, "color", _colour(ground, "00" if shape.kind == "boundary" else "66"))
+
+
+def _line_width(shape: Outline) -> str:
+    """Draw outlines thin and lines that are the population broad."""
+    if shape.length_m:
+        return {"boundary": "1", "stratum": "5"}.get(shape.kind, "3")
+    return "3" if shape.kind == "boundary" else "2"
 
 
 def _outline_colours(shape: Outline, number: int) -> tuple[str, str]:
@@ -128,11 +135,11 @@ def _colour(web: str, opacity: str) -> str:
     return f"{opacity}{blue}{green}{red}"
 
 
-def _add_location(folder: ET.Element, row: PointRow) -> None:
+def _add_location(folder: ET.Element, row: PointRow, columns: tuple[str, ...]) -> None:
     cells = row.cells()
     placemark = ET.SubElement(folder, "Placemark")
     _text(placemark, "name", str(cells["short_name"]))
-    told = [(name, text_of(name, cells[name])) for name in CREW_COLUMNS]
+    told = [(name, text_of(name, cells[name])) for name in columns]
     lines = [f"{name}: {escape(text)}" for name, text in told if text]
     _text(placemark, "description", "<br>".join(lines))
     _text(placemark, "styleUrl", f"#{row.location.location_class}")
@@ -149,6 +156,10 @@ def _add_outline(folder: ET.Element, shape: Outline, number: int) -> None:
     _text(placemark, "styleUrl", f"#outline-{number}")
     together = ET.SubElement(placemark, "MultiGeometry")
     for part in shapely.get_parts(within_180(shape.geometry)):
+        if isinstance(part, shapely.LineString):
+            corners = " ".join(f"{x:.7f},{y:.7f}" for x, y in shapely.get_coordinates(part))
+            _text(ET.SubElement(together, "LineString"), "coordinates", corners)
+            continue
         polygon = ET.SubElement(together, "Polygon")
         shell, *holes = (shapely.get_coordinates(ring) for ring in shapely.get_rings(part))
         _add_ring(polygon, "outerBoundaryIs", shell)

@@ -1,4 +1,4 @@
-"""Polygons of the site in degrees, as files and maps show them."""
+"""Polygons or lines of the site in degrees, as files and maps show them."""
 
 from dataclasses import dataclass
 from typing import Literal
@@ -20,7 +20,7 @@ LONGEST_EDGE_M = 1000.0
 
 @dataclass(frozen=True)
 class Outline:
-    """One polygon of the site.
+    """One polygon of the site, or the lines of one of its parts.
 
     Parameters
     ----------
@@ -30,25 +30,30 @@ class Outline:
         The stratum, or the reason of an exclusion; on one line.
     geometry : BaseGeometry
         Polygon or MultiPolygon, longitude before latitude, 7 decimals, outer rings
-        counter-clockwise; longitudes run on past ±180 where the site does.
+        counter-clockwise; longitudes run on past ±180 where the site does. Of a frame along lines
+        a LineString or MultiLineString.
     area_m2 : float
-        Measured in the site's equal-area plane.
+        Measured in the site's equal-area plane; 0 for lines.
+    length_m : float
+        Of lines; 0 for polygons.
     """
 
     kind: OutlineKind
     name: str
     geometry: BaseGeometry
     area_m2: float
+    length_m: float = 0.0
 
     @property
     def title(self) -> str:
         """The kind and the name in words."""
-        opening = {"boundary": "Boundary", "stratum": "Stratum: ", "excluded": "Excluded: "}
+        whole = "All lines" if self.length_m else "Boundary"
+        opening = {"boundary": whole, "stratum": "Stratum: ", "excluded": "Excluded: "}
         return opening[self.kind] + ("" if self.kind == "boundary" else self.name)
 
 
 def outlines(plan: Plan) -> tuple[Outline, ...]:
-    """List boundary, strata and exclusions of a plan, in this order.
+    """List boundary or whole lines, strata and exclusions of a plan, in this order.
 
     Parameters
     ----------
@@ -64,7 +69,13 @@ def outlines(plan: Plan) -> tuple[Outline, ...]:
     found += [("stratum", s.name, s.geometry) for s in frame.strata if s.geometry is not None]
     found += [("excluded", e.reason, e.geometry) for e in frame.excluded]
     return tuple(
-        Outline(kind, plain(name), in_degrees(frame.projection, geometry), float(geometry.area))
+        Outline(
+            kind,
+            plain(name),
+            in_degrees(frame.projection, geometry),
+            float(geometry.area),
+            float(geometry.length) if frame.kind == "line" else 0.0,
+        )
         for kind, name, geometry in found
         if not geometry.is_empty
     )
@@ -95,7 +106,7 @@ def in_degrees(projection: SiteProjection, geometry: BaseGeometry) -> BaseGeomet
 
 
 def within_180(geometry: BaseGeometry) -> BaseGeometry:
-    """Cut polygons that cross 180° in two, as RFC 7946 section 3.1.9 asks.
+    """Cut polygons or lines that cross 180° in two, as RFC 7946 section 3.1.9 asks.
 
     Examples
     --------
@@ -105,17 +116,27 @@ def within_180(geometry: BaseGeometry) -> BaseGeometry:
     west, _, east, _ = geometry.bounds
     if west >= -180 and east <= 180:
         return geometry
-    parts: list[shapely.Polygon] = []
+    parts: list[BaseGeometry] = []
     for shift in (-360.0, 0.0, 360.0):
         window = shapely.box(-180 - shift, -90, 180 - shift, 90)
         part = affinity.translate(shapely.intersection(geometry, window), shift)
-        parts += [piece for piece in shapely.get_parts(part) if isinstance(piece, shapely.Polygon)]
-    return shapely.orient_polygons(shapely.MultiPolygon(parts))
+        kinds = (shapely.Polygon, shapely.LineString)
+        parts += [piece for piece in shapely.get_parts(part) if isinstance(piece, kinds)]
+    if all(isinstance(piece, shapely.LineString) for piece in parts):
+        return shapely.MultiLineString([shapely.get_coordinates(piece) for piece in parts])
+    solid = [piece for piece in parts if isinstance(piece, shapely.Polygon)]
+    return shapely.orient_polygons(shapely.MultiPolygon(solid))
 
 
 def rings(geometry: BaseGeometry) -> list[np.ndarray]:
-    """List all rings of polygons as arrays of shape (n, 2): shells first, holes after each."""
+    """List all rings of polygons as arrays of shape (n, 2): shells first, holes after each.
+
+    A line is listed as it is.
+    """
     found = []
     for polygon in shapely.get_parts(geometry):
+        if isinstance(polygon, shapely.LineString):
+            found.append(shapely.get_coordinates(polygon))
+            continue
         found += [shapely.get_coordinates(ring) for ring in shapely.get_rings(polygon)]
     return found

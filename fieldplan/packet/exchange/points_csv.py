@@ -11,7 +11,7 @@ from pathlib import Path
 
 from fieldplan.packet.exchange.plain_text import plain, spreadsheet_cell
 from fieldplan.packet.exchange.read_points import ReadPoint, degrees_of_angle, degrees_of_grid
-from fieldplan.packet.exchange.rows import CREW_COLUMNS, Cell, point_rows, text_of
+from fieldplan.packet.exchange.rows import CREW_COLUMNS, Cell, columns_of, point_rows, text_of
 from fieldplan.plan.model import Plan
 
 KEY_COLUMNS = (
@@ -31,8 +31,8 @@ def write_points_csv(plan: Plan) -> bytes:
     -------
     bytes
     """
-    rows = (row.values(CREW_COLUMNS) for row in point_rows(plan))
-    return _csv_bytes(CREW_COLUMNS, rows)
+    columns = columns_of(plan, CREW_COLUMNS)
+    return _csv_bytes(columns, (row.values(columns) for row in point_rows(plan)))
 
 
 def write_samples_key(plan: Plan) -> bytes:

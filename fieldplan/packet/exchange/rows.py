@@ -18,10 +18,13 @@ CREW_COLUMNS = (
 )  # fmt: skip
 """Columns that the crew needs; nothing here tells a duplicate from its parent."""
 
+LINE_COLUMNS = ("branch", "along_m")
+"""Where a place on a line lies; in the files of such plans alone, behind the stratum."""
+
 OFFICE_COLUMNS = (*CREW_COLUMNS, "inclusion_probability", "weight")
 """The crew's columns and what the estimate needs."""
 
-DECIMALS = {"latitude": 7, "longitude": 7, "easting": 1, "northing": 1}
+DECIMALS = {"latitude": 7, "longitude": 7, "easting": 1, "northing": 1, "along_m": 2}
 
 Cell = str | int | float | None
 
@@ -68,6 +71,8 @@ class PointRow:
             "short_name": plain(place.short_name),
             "class": place.location_class,
             "stratum": plain(place.stratum),
+            "branch": plain(place.branch),
+            "along_m": place.along_m,
             "list_order": place.list_order,
             "alternate_for": plain(place.alternate_for),
             "latitude": place.latitude,
@@ -135,6 +140,26 @@ def point_rows(plan: Plan) -> tuple[PointRow, ...]:
             )
         )
     return tuple(rows)
+
+
+def columns_of(plan: Plan, columns: Sequence[str]) -> tuple[str, ...]:
+    """Put branch and distance behind the stratum where places lie on lines."""
+    if plan.frame.kind != "line":
+        return tuple(columns)
+    at = list(columns).index("stratum") + 1
+    return (*columns[:at], *LINE_COLUMNS, *columns[at:])
+
+
+def along_words(place: Location) -> str:
+    """Say how far along which branch a place lies; empty off lines.
+
+    Examples
+    --------
+    >>> from tests.factories import make_plan
+    >>> along_words(make_plan().locations.places[0])
+    ''
+    """
+    return "" if place.along_m is None else f"{place.branch}, {place.along_m:.2f} m from its start"
 
 
 def text_of(column: str, value: Cell) -> str:

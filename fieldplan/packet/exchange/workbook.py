@@ -13,7 +13,7 @@ from fieldplan.frame.projection import site_zone, utm, utm_in_words
 from fieldplan.packet.exchange.plain_text import plain
 from fieldplan.packet.exchange.points_csv import KEY_COLUMNS, sample_rows
 from fieldplan.packet.exchange.read_points import ReadPoint, degrees_of_grid
-from fieldplan.packet.exchange.rows import DATUM, OFFICE_COLUMNS, Cell, point_rows
+from fieldplan.packet.exchange.rows import DATUM, OFFICE_COLUMNS, Cell, columns_of, point_rows
 from fieldplan.plan.model import Plan
 
 if TYPE_CHECKING:
@@ -43,8 +43,9 @@ def write_workbook(plan: Plan) -> bytes:
 
     book = Workbook()
     book.remove(book.worksheets[0])
-    rows = [row.values(OFFICE_COLUMNS) for row in point_rows(plan)]
-    _fill_sheet(book.create_sheet("locations"), OFFICE_COLUMNS, rows)
+    columns = columns_of(plan, OFFICE_COLUMNS)
+    rows = [row.values(columns) for row in point_rows(plan)]
+    _fill_sheet(book.create_sheet("locations"), columns, rows)
     _fill_sheet(book.create_sheet("samples"), KEY_COLUMNS, sample_rows(plan))
     _fill_sheet(book.create_sheet("notes"), ("about", "what to know"), _notes(plan))
     book["notes"].column_dimensions["B"].width = 100
@@ -68,7 +69,8 @@ def _notes(plan: Plan) -> list[list[Cell]]:
         ("easting, northing", f"{utm_in_words(centre)}, to 0.1 m; one zone for the whole site."),
         ("class", "random: in the mean. alternate: visited only instead of a random location "
          "of its stratum, in list order. targeted: chosen by judgement, never in the mean."),
-        ("inclusion_probability", "n/N for a list, n per square metre for an area."),
+        ("inclusion_probability", "n/N for a list, n per square metre for an area, n per "
+         "metre for lines."),
         ("weight", "Stratum weight divided by its planned random locations."),
     ]  # fmt: skip
     notes += [("population", sentence) for sentence in plan.frame.population.sentences]

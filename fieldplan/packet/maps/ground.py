@@ -42,13 +42,16 @@ def grounds(frame: Frame) -> tuple[Ground, ...]:
     Parameters
     ----------
     frame : Frame
-        Of an area: strata, exclusions, the boundary. Of a list: the outline of its units.
+        Of an area: strata, exclusions, the boundary. Of a list: the outline of its units. Of
+        lines: strata, what was left out, and all of them whole.
 
     Returns
     -------
     tuple of Ground
         With the words for the legend.
     """
+    if frame.kind == "line":
+        return _lines(frame)
     layers = []
     many = len(frame.strata) > 1
     for number, stratum in enumerate(frame.strata):
@@ -62,6 +65,43 @@ def grounds(frame: Frame) -> tuple[Ground, ...]:
         style = _LEFT_OUT | {"hatch": _CROSSED[number % len(_CROSSED)]}
         layers.append(Ground(geometry, f"left out: {reason}", f"out: {reason}", style))
     return (*layers, _outline(frame))
+
+
+_DASHES = ("-", (0, (2.6, 0.6)), (0, (2.2, 0.5, 0.5, 0.5)), (0, (1.0, 0.5)))
+_LEFT_OUT_DASHES = ((0, (1.0, 1.0)), (0, (2.4, 1.6)), (0, (0.5, 1.4)))
+
+
+def _lines(frame: Frame) -> tuple[Ground, ...]:
+    """List the reaches of strata, the reaches left out, and last the lines as they were drawn."""
+    layers = []
+    many = len(frame.strata) > 1
+    for number, stratum in enumerate(frame.strata):
+        words = f"stratum: {stratum.name}" if many else "the population: lines net of what is out"
+        colour = stratum_fill(number).line if many else "#7d93a8"
+        style = _line_style(colour, 2.6, _DASHES[number % len(_DASHES)], 1.5)
+        layers.append(Ground(stratum.geometry, words, stratum.name if many else "lines", style))
+    reasons = dict.fromkeys(entry.reason for entry in frame.excluded)
+    for number, reason in enumerate(reasons):
+        shapes = [entry.geometry for entry in frame.excluded if entry.reason == reason]
+        dashes = _LEFT_OUT_DASHES[number % len(_LEFT_OUT_DASHES)]
+        style = _line_style(INK, 1.7, dashes, 2.0)
+        whole = shapely.union_all(shapes)
+        layers.append(Ground(whole, f"left out: {reason}", f"out: {reason}", style))
+    ends = frame.population.inset_loss > 0
+    words = "as drawn; alone: left out at an end" if ends else "lines as drawn"
+    style = _line_style(INK, 0.7, "-", 1.0)
+    return (*layers, Ground(frame.boundary, words, "as drawn", style))
+
+
+def _line_style(colour: str, width: float, dashes: Any, depth: float) -> dict[str, Any]:
+    return {
+        "facecolor": "none",
+        "edgecolor": colour,
+        "linewidth": width,
+        "linestyle": dashes,
+        "zorder": depth,
+        "capstyle": "butt",
+    }
 
 
 def _stratum_style(number: int) -> dict[str, Any]:
@@ -164,7 +204,7 @@ def compound_path(geometry: BaseGeometry | Sequence[BaseGeometry]) -> "Path":
     Parameters
     ----------
     geometry : BaseGeometry or sequence of BaseGeometry
-        Polygons or multipolygons; lines and points in a collection are left out.
+        Polygons or multipolygons, or lines, whose paths stay open; points are left out.
 
     Returns
     -------
@@ -175,6 +215,12 @@ def compound_path(geometry: BaseGeometry | Sequence[BaseGeometry]) -> "Path":
     vertices: list[np.ndarray] = []
     codes: list[np.ndarray] = []
     for part in shapely.get_parts(geometry):
+        if part.geom_type == "LineString" and not part.is_empty:
+            corners = shapely.get_coordinates(part)
+            code = np.full(len(corners), Path.LINETO, dtype=Path.code_type)
+            code[0] = Path.MOVETO
+            vertices.append(corners)
+            codes.append(code)
         if part.geom_type != "Polygon" or part.is_empty:
             continue
         for ring in shapely.get_rings(shapely.orient_polygons(part)):

@@ -95,7 +95,8 @@ def _draw_outline(axes: "Axes", plan: Plan) -> None:
     outline = grounds(plan.frame)[-1].geometry
     if outline is not None:
         path = compound_path(outline)
-        axes.add_patch(PathPatch(path, facecolor="#c9cfd5", edgecolor=INK, linewidth=0.6))
+        ground = "none" if plan.frame.kind == "line" else "#c9cfd5"
+        axes.add_patch(PathPatch(path, facecolor=ground, edgecolor=INK, linewidth=0.6))
 
 
 def _draw_key(axes: "Axes", spec: PageSpec) -> None:

@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 from fieldplan.packet.drawing import INK, POINTS_PER_MM, mm_axes, new_figure
 from fieldplan.packet.maps.cells import plan_grounds
 from fieldplan.packet.maps.content import MapContent, Mark
+from fieldplan.packet.maps.distance_marks import draw_distance_marks
 from fieldplan.packet.maps.grid import grid_lines, grid_step
 from fieldplan.packet.maps.ground import draw_grounds
 from fieldplan.packet.maps.inset import draw_inset
@@ -62,6 +63,7 @@ def draw_page(
     taken = _draw_stamp(over, plan, spec=spec, centres=centres) + _draw_neighbours(
         over, spec, centres=centres
     )
+    taken += draw_distance_marks(over, plan.frame, spec=spec)
     unplaced = draw_names(over, shown, spec=spec, taken=taken)
     draw_title(page, plan, title=content.title, spec=spec)
     draw_scale(page, plan, spec=spec, grid=grid)

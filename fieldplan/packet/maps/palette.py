@@ -47,6 +47,9 @@ MARKS: dict[LocationClass, Mark] = {
     "targeted": Mark("diamond", "#D55E00", "#ffffff", "Targeted place, not in the mean"),
 }
 
+LINE_DASHES = (None, "14 4", "14 4 3 4", "5 3")
+"""Dashes of the lines of strata on a screen, told apart in a grey copy too."""
+
 EXCLUDED_LINE = "#5a5a5a"
 BOUNDARY_LINE = "#111111"
 GRID_LINE = "#7d8894"

@@ -7,11 +7,13 @@ import shapely
 from folium.utilities import JsCode
 
 from fieldplan.design.model import LocationClass
-from fieldplan.frame.projection import site_zone, utm
+from fieldplan.frame.projection import site_zone, to_degrees, utm
 from fieldplan.packet.exchange.outlines import Outline, outlines
-from fieldplan.packet.exchange.rows import PointRow, point_rows
+from fieldplan.packet.exchange.plain_text import plain
+from fieldplan.packet.exchange.rows import PointRow, along_words, point_rows
 from fieldplan.packet.maps.cells import cell_layer
 from fieldplan.packet.maps.content import label_of
+from fieldplan.packet.maps.distance_marks import middle_of_longest, screen_marks
 from fieldplan.packet.maps.offline import (
     TILES,
     Call,
@@ -27,14 +29,15 @@ from fieldplan.packet.maps.palette import (
     BOUNDARY_LINE,
     EXCLUDED_LINE,
     GRID_LINE,
+    LINE_DASHES,
     MARKS,
     stratum_fill,
 )
 from fieldplan.packet.maps.screen_page import (
     drawings,
     foot,
-    hectares,
     layer_titles,
+    measured,
     pattern_definitions,
     title_block,
 )
@@ -69,7 +72,9 @@ def screen_map(plan: Plan) -> str:
         for name in MARKS
         if name in titles
     ]
-    for kind in ("stratum", "cell", "excluded", "boundary"):
+    above = ("stratum", "cell", "excluded")
+    along_lines = plan.frame.kind == "line"
+    for kind in ("boundary", *above) if along_lines else (*above, "boundary"):
         if kind == "cell" and kind in titles:
             cell_layer(plan, titles[kind]).add_to(page)
         elif kind in titles:
@@ -126,10 +131,26 @@ def _outline_layer(
 
 
 def _outline_told(shape: Outline) -> dict[str, Any]:
-    return {"title": shape.title, "lead": [hectares(shape.area_m2)], "rows": []}
+    return {"title": shape.title, "lead": [measured(shape)], "rows": []}
+
+
+def _line_style(shape: Outline, number: int) -> dict[str, Any]:
+    """Draw the lines of a stratum broad, what was left out dashed, and all of them thin below."""
+    style = {"fill": False, "interactive": shape.kind == "excluded",
+             "lineCap": "butt"}  # fmt: skip
+    if shape.kind == "boundary":
+        return style | {"color": BOUNDARY_LINE, "weight": 1.5, "className": "boundary-line"}
+    if shape.kind == "excluded":
+        return style | {"color": EXCLUDED_LINE, "weight": 4, "dashArray": "3 4",
+                        "className": "excluded-line"}  # fmt: skip
+    return style | {"color": stratum_fill(number).line, "weight": 6,
+                    "dashArray": LINE_DASHES[number % len(LINE_DASHES)],
+                    "className": "stratum-line"}  # fmt: skip
 
 
 def _outline_style(plan: Plan, shape: Outline, number: int) -> dict[str, Any]:
+    if shape.length_m:
+        return _line_style(shape, number)
     if shape.kind == "boundary":
         dashes = "9 6" if plan.frame.boundary_assumed or plan.frame.kind == "list" else None
         return {"color": BOUNDARY_LINE, "weight": 3, "fill": False, "dashArray": dashes,
@@ -186,6 +207,7 @@ def _told(plan: Plan, row: PointRow) -> dict[str, Any]:
     table = [
         ("Location id", str(cells["location_id"])),
         ("Stratum", str(cells["stratum"])),
+        ("Along the line", along_words(place)),
         ("Latitude", f"{place.latitude:.7f}°"),
         ("Longitude", f"{place.longitude:.7f}°"),
         (f"Grid {row.utm_zone}", f"{row.easting:.1f} E {row.northing:.1f} N"),
@@ -255,14 +277,33 @@ def _facts(
         "south": centre.latitude < 0,
         "longitude": centre.longitude,
         "gridColour": GRID_LINE,
-        "areaLabels": [_area_label(shape) for shape in shown],
+        "areaLabels": [_area_label(shape) for shape in shown] + _distance_labels(plan),
     }
+
+
+def _distance_labels(plan: Plan) -> list[dict[str, Any]]:
+    """Name round distances along branches."""
+    labels = []
+    for mark in screen_marks(plan.frame):
+        latitude, longitude = to_degrees(plan.frame.projection, mark.easting, mark.northing)
+        labels.append(
+            {
+                "kind": "distance",
+                "text": plain(mark.words),
+                "latitude": round(float(latitude), 7),
+                "longitude": _near(float(longitude), plan.frame.projection.longitude),
+            }
+        )
+    return labels
 
 
 def _area_label(shape: Outline) -> dict[str, Any]:
     """Put the name of an area where most room is: the centre of its largest inner circle."""
-    widest = max(shapely.get_parts(shape.geometry), key=shapely.area)
-    longitude, latitude = shapely.get_coordinates(shapely.maximum_inscribed_circle(widest))[0]
+    if shape.length_m:
+        longitude, latitude = middle_of_longest(shape.geometry)
+    else:
+        widest = max(shapely.get_parts(shape.geometry), key=shapely.area)
+        longitude, latitude = shapely.get_coordinates(shapely.maximum_inscribed_circle(widest))[0]
     return {
         "kind": shape.kind,
         "text": shape.name,

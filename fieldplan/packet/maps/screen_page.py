@@ -9,6 +9,7 @@ from fieldplan.packet.maps.cells import CELL_LINE, cell_words
 from fieldplan.packet.maps.palette import (
     BOUNDARY_LINE,
     EXCLUDED_LINE,
+    LINE_DASHES,
     MARKS,
     STRATUM_FILLS,
     Mark,
@@ -126,6 +127,8 @@ def layer_titles(plan: Plan, shapes: tuple[Outline, ...]) -> dict[str, str]:
 
 
 def _outline_titles(plan: Plan, shapes: tuple[Outline, ...]) -> dict[str, str]:
+    if plan.frame.kind == "line":
+        return _line_titles(plan, shapes)
     titles = {"boundary": _row(_line_swatch(plan), _boundary_words(plan))}
     strata = [shape for shape in shapes if shape.kind == "stratum"]
     excluded = [shape for shape in shapes if shape.kind == "excluded"]
@@ -146,16 +149,57 @@ def _outline_titles(plan: Plan, shapes: tuple[Outline, ...]) -> dict[str, str]:
     return titles
 
 
+def _line_titles(plan: Plan, shapes: tuple[Outline, ...]) -> dict[str, str]:
+    counts = {size.stratum: size.planned for size in plan.size.strata}
+    found: dict[str, list[str]] = {"boundary": [], "stratum": [], "excluded": []}
+    for shape in shapes:
+        if shape.kind == "boundary":
+            swatch, words = _dashed_swatch(BOUNDARY_LINE, 1.5, None), "Lines as drawn"
+        elif shape.kind == "stratum":
+            number = len(found["stratum"])
+            dashes = LINE_DASHES[number % len(LINE_DASHES)]
+            swatch = _dashed_swatch(stratum_fill(number).line, 6, dashes)
+            words = _stratum_words(shape, counts)
+        else:
+            swatch = _dashed_swatch(EXCLUDED_LINE, 4, "3 4")
+            words = f"{said(shape.name)}, {measured(shape)}"
+        found[shape.kind].append(_row(swatch, words))
+    groups = {"boundary": "", "excluded": "Excluded",
+              "stratum": "Strata" if len(found["stratum"]) > 1 else "Population"}  # fmt: skip
+    return {
+        kind: _group(groups[kind], rows) if groups[kind] else "".join(rows)
+        for kind, rows in found.items()
+        if rows
+    }
+
+
+def _dashed_swatch(colour: str, weight: float, dashes: str | None) -> str:
+    dashed = f' stroke-dasharray="{dashes}"' if dashes else ""
+    return (
+        '<span class="swatch"><svg viewBox="0 0 28 18"><path d="M1 9 H27" fill="none" '
+        f'stroke="{colour}" stroke-width="{weight:g}"{dashed}/></svg></span>'
+    )
+
+
 def _stratum_words(shape: Outline, counts: dict[str, int]) -> str:
     count = counts.get(shape.name)
     planned = f", {count} locations" if count is not None else ""
-    return f"{said(shape.name)}, {hectares(shape.area_m2)}{planned}"
+    return f"{said(shape.name)}, {measured(shape)}{planned}"
 
 
 def _boundary_words(plan: Plan) -> str:
     if plan.frame.kind == "list":
         return "Extent of the list, for the map only"
     return "Boundary, ASSUMED" if plan.frame.boundary_assumed else "Boundary"
+
+
+def measured(shape: Outline) -> str:
+    """Write the area of a polygon, or the length of lines."""
+    if not shape.length_m:
+        return hectares(shape.area_m2)
+    if shape.length_m < 1000:
+        return f"{shape.length_m:.0f} m"
+    return f"{shape.length_m / 1000:.2f} km"
 
 
 def hectares(square_metres: float) -> str:

@@ -4,6 +4,7 @@ from fieldplan.base.document import Block, Bullets, Facts, Paragraph, Table
 from fieldplan.campaign.model import DesignTable
 from fieldplan.design.model import Location
 from fieldplan.packet.sheets.plan_words import ALLOCATIONS, CLASSES, LAYOUTS, several_strata
+from fieldplan.packet.sheets.sections import in_working
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
 from fieldplan.sizing.words import named
@@ -38,14 +39,13 @@ def draw_blocks(plan: Plan) -> list[Block]:
         rows.append(("Minimum spacing", f"{number(design.minimum_spacing_m)} m"))
     rows += cell_rows(design)
     rows += [
-        ("Seed", str(draw.seed)),
-        ("Version of the drawing procedure", str(draw.version)),
-        ("Asked for and drawn", f"{draw.asked} and {draw.realised}"),
+        ("Seed", f"{draw.seed}, with version {draw.version} of the drawing procedure"),
     ]
     blocks: list[Block] = [Facts(tuple(rows))]
     if draw.notes:
         blocks.append(Bullets(draw.notes))
-    blocks.append(Paragraph("In words (annex B has it line by line):"))
+    by_line = in_working("The drawing procedure, line by line")
+    blocks.append(Paragraph(f"In words (line by line: {by_line}):"))
     return [
         *blocks,
         Bullets(tuple(procedure_in_words(plan.campaign, plan.locations)), numbered=True),
@@ -100,8 +100,13 @@ def start_words(design: DesignTable) -> str:
 
 
 def location_blocks(plan: Plan) -> list[Block]:
-    """Set every location, and explain the columns."""
-    return [location_table(plan), Paragraph(table_note(plan), tone="note")]
+    """Say how many were asked for and drawn, set every location, and explain the columns."""
+    draw = plan.locations
+    return [
+        Facts((("Asked for and drawn", f"{draw.asked} and {draw.realised}"),)),
+        location_table(plan),
+        Paragraph(table_note(plan), tone="note"),
+    ]
 
 
 def location_table(plan: Plan) -> Table:

@@ -15,6 +15,7 @@ LAYOUTS = {
     "triangular-grid": "systematic triangular grid with a random origin and rotation",
     "balanced-list": "balanced list, spread by the local pivotal method",
     "compact-strata": "compact cells of nearly equal area with random places in each",
+    "even-spacing": "evenly spaced along the lines from a random start",
     "census": "every unit of the list (census)",
 }
 

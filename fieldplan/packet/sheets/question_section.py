@@ -1,7 +1,7 @@
 """What is asked, and the population that the answer speaks for."""
 
-from fieldplan.base.units import length_in_words
 from fieldplan.base.document import Block, Bullets, Facts, Paragraph, Table
+from fieldplan.base.units import length_in_words
 from fieldplan.campaign.model import Analyte
 from fieldplan.packet.sheets.amounts import BLANK, area, days, percent
 from fieldplan.packet.sheets.plan_words import mean_of, several_strata
@@ -74,11 +74,8 @@ def typed(value: float | None) -> str:
 
 
 def population_blocks(plan: Plan) -> list[Block]:
-    """Set the population in sentences, then what was taken out of it."""
-    frame, population = plan.frame, plan.frame.population
-    blocks: list[Block] = [Bullets(population.sentences)]
-    if several_strata(plan):
-        blocks.append(measure_table(plan))
+    """Set the population in sentences, and what one result stands for."""
+    blocks: list[Block] = [Bullets(plan.frame.population.sentences)]
     asked = plan.campaign.frame[0]
     facts = [
         ("Depth", depth(plan)),
@@ -89,9 +86,13 @@ def population_blocks(plan: Plan) -> list[Block]:
     typed_facts = tuple((label, value) for label, value in facts if value)
     if typed_facts:
         blocks.append(Facts(typed_facts))
-    if frame.notes:
-        blocks.append(Bullets(frame.notes))
     return blocks
+
+
+def population_detail(plan: Plan) -> list[Block]:
+    """Set the strata with their size and weight, and what was noticed on the way."""
+    blocks: list[Block] = [measure_table(plan)] if several_strata(plan) else []
+    return [*blocks, *([Bullets(plan.frame.notes)] if plan.frame.notes else [])]
 
 
 def depth(plan: Plan) -> str:
