@@ -125,6 +125,28 @@ STORIES = {
         started=datetime(2026, 4, 13, 9, 15),
         initials=("TO",),
     ),
+    "yarrel-water": Story(
+        seed=37,
+        measured=(
+            Measured(
+                "nitrate-n",
+                "Nitrate-N",
+                "mg/L",
+                {
+                    "above the arm": (3.1, 0.17),
+                    "below the arm": (4.4, 0.13),
+                    "Thripp Beck": (6.4, 0.16),
+                },
+            ),
+        ),
+        lost=(("Thripp Beck", 3, "no-access", "bull in the field, gate locked"),),
+        broken=(),
+        moved=(("above the arm", 2, 4.5, "obstructed", "fallen willow"),),
+        renamed=(("below the arm", 1, "dash"),),
+        lab_file="lab_results.csv",
+        started=datetime(2026, 6, 16, 8, 50),
+        initials=("IB", "so"),
+    ),
 }
 
 

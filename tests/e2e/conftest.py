@@ -11,8 +11,8 @@ from fieldplan.cli import entry
 from fieldplan.cli.demo import demo_folder
 from tests.command_runner import command_runner
 
-SITES = ("hobbin-ley", "quern-flat")
-PLAN_IDS = {"hobbin-ley": "HL", "quern-flat": "QF"}
+SITES = ("hobbin-ley", "quern-flat", "yarrel-water")
+PLAN_IDS = {"hobbin-ley": "HL", "quern-flat": "QF", "yarrel-water": "YW"}
 
 
 def run(*words: str | Path) -> Result:

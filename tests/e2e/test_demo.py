@@ -68,5 +68,5 @@ def test_an_unknown_demo_is_answered_with_the_known_ones(tmp_path: Path) -> None
     """A near miss must not end in a traceback."""
     outcome = run("demo", "hobbin", "--out", tmp_path / "x")
     assert outcome.exit_code == 2
-    assert "take one of: hobbin-ley, quern-flat" in outcome.stderr
+    assert "take one of: hobbin-ley, quern-flat, yarrel-water" in outcome.stderr
     assert not (tmp_path / "x").exists()
