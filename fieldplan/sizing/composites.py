@@ -143,13 +143,19 @@ def _of_composite(
          for part in split.parts]
     )  # fmt: skip
     sources = "; ".join(dict.fromkeys(part.source for part in split.parts))
+    results = None if worth is None else max(2, math.floor(worth) + 1)
+    if results is None and entry.results is not None:
+        # A part typed without results is taken as exact. The rest is what the whole leaves, and a
+        # composite keeps at most all of the whole's doubt: n0 - 1 degrees of freedom or more.
+        results = entry.results
+        sources += "; typed parts taken as exact"
     ratio = parts.total / sigma
     return StratumSpread(
         analyte=entry.analyte,
         stratum=entry.stratum,
         sigma=sigma,
         mean=entry.mean,
-        results=None if worth is None else max(2, math.floor(worth) + 1),
+        results=results,
         source=f"composites of {k} increments, from the parts of sigma: {sources}",
         assumed=entry.assumed or any(part.assumed for part in split.parts),
         skewness=_evened(entry.skewness, ratio**3, 1 if one_place else k**2),
