@@ -10,7 +10,7 @@ from fieldplan.packet.sheets.answer import answer_words
 from fieldplan.packet.sheets.methods import methods_paragraph, rules_sentence
 from fieldplan.packet.sheets.number_section import declared_lines
 from fieldplan.packet.sheets.plan_sheet import plan_sheet
-from fieldplan.packet.sheets.rules import rules_blocks, rules_fingerprint
+from fieldplan.packet.sheets.rules import rules_blocks, rules_fingerprint, rules_table
 from fieldplan.plan.model import Plan
 from fieldplan.stats.shape import t_coverage
 from tests.factories import make_campaign, make_plan
@@ -121,3 +121,15 @@ def test_no_rule_is_said_to_promise():
     assert "promised for" not in text
     assert "the confidence is promised" not in text
     assert "nominal: where the mean is near normal" in text
+
+
+def test_the_report_names_the_interval_for_skewed_results_and_its_class() -> None:
+    """Student's t is what a reader expects; another interval has to be named."""
+    rules = Rules(mean_interval="skew-widened", promised_class="cv-up-to-1")
+    campaign = make_campaign(rules=rules)
+    said = rules_sentence(make_plan(campaign=campaign))
+    assert "for the mean is given, skew-widened as promised for cv-up-to-1;" in said
+    assert "skew-widened" not in rules_sentence(make_plan())
+    rows = {row[0]: row[1:] for row in rules_table(rules).rows}
+    assert rows["promised_class"][0] == "cv-up-to-1"
+    assert "no larger than the mean" in rows["promised_class"][1]
