@@ -21,31 +21,6 @@ def spread_blocks(plan: Plan) -> list[Block]:
         from fieldplan.packet.charts import pilot_dots
 
         blocks.append(pilot_dots(spread, name=plan.campaign.deciding_analyte.label))
-    return blocks
-
-
-def spread_line(plan: Plan) -> str:
-    """Say in a sentence where the standard deviations come from."""
-    entries, where = plan.spread.strata, in_working("The spread in full")
-    if not entries:
-        return f"No standard deviation was typed or found in a pilot. More: {where}."
-    one = "standard deviation" if len(entries) == 1 else "standard deviations"
-    if all(entry.assumed for entry in entries):
-        return f"ASSUMED: nobody measured the {one} on page one. Who typed what: {where}."
-    verb = "comes" if len(entries) == 1 else "come"
-    part = "; some are ASSUMED" if any(entry.assumed for entry in entries) else ""
-    return (
-        f"The {one} on page one {verb} from {sources(plan)}{part}. Mean, range, non-detects and "
-        f"skewness: {where}."
-    )
-
-
-def spread_detail(plan: Plan) -> list[Block]:
-    """Say all that the pilot says, or that the spread was typed."""
-    spread = plan.spread
-    blocks: list[Block] = []
-    if spread.sentences:
-        blocks.append(Bullets(spread.sentences))
     if len(spread.strata) > FEW or not all(entry.values for entry in spread.strata):
         blocks.append(spread_table(plan))
     if spread.notes:
@@ -134,6 +109,35 @@ def count_rows(plan: Plan) -> list[tuple[str, str]]:
     if size.number_from == "budget":
         return [("Locations that the budget buys", str(size.planned)), expected]
     return [("Locations to visit, the whole list", str(size.planned))]
+
+
+def declared_lines(plan: Plan) -> list[str]:
+    """Say which class the confidence was declared for, and what t holds at the end of it."""
+    from fieldplan.estimate.coverage import declared_skewness
+    from fieldplan.sizing.asking import asked_of
+    from fieldplan.sizing.lean import equivalent_sample
+    from fieldplan.stats.shape import t_coverage
+
+    rules = plan.campaign.rules
+    if not rules.promised_for or every_unit(plan):
+        return []
+    line = f"The {percent(rules.confidence)} is declared for {rules.promised_for.rstrip('. ')}"
+    end = declared_skewness(rules.promised_for)
+    if end is None or rules.confidence > 0.99:
+        return [f"{line}. Nothing here shows that the population belongs to that class."]
+    asked = asked_of(plan.campaign, plan.spread, plan.frame)
+    if not asked.sigma_known:
+        return [f"{line}."]
+    n, lean = equivalent_sample(asked.question, [entry.needed for entry in plan.size.strata])
+    held = t_coverage(n, end, confidence=rules.confidence, kind=rules.interval)
+    large = " of a large population" if plan.frame.kind == "list" else ""
+    line += (
+        f". At a skewness of {end:g}, which ends that class, t from {n} results{large} holds the "
+        f"true mean in about {100 * held:.0f} % of campaigns."
+    )
+    if lean is not None and abs(lean) > end:
+        line += f" The results behind sigma lie outside it: their skewness is {rounded(lean)}."
+    return [line]
 
 
 def assurance_table(plan: Plan) -> Table:
