@@ -69,7 +69,8 @@ def laboratory(packet: Path, tmp_path_factory: pytest.TempPathFactory) -> tuple[
 
 def test_the_plan_sheet_says_for_which_interval_n_is(packet: Path) -> None:
     """The interval, Student's n, what the class keeps, and both rules on record."""
-    sheet = (packet / "office" / "plan_sheet.html").read_text(encoding="utf-8")
+    pages = (packet / "office").glob("*.html")
+    sheet = " ".join(page.read_text(encoding="utf-8") for page in pages)
     for words in (
         "Sized for the interval that the rules fix (skew-widened, cv-up-to-2)",
         "would ask for",
