@@ -85,7 +85,9 @@ def cell_error_steps(means: Means, unit: str) -> list[Step]:
         shown = _by_curves if entry.rule == "covariance" else _by_pairs
         steps.append(shown(entry, found, unit=unit, mark=mark, of=of))
         inputs += [Quantity(f"W{mark}", "share of the population", found.weight)] if several else []
-        inputs.append(Quantity(f"V{mark}", f"variance of the mean{of}", found.variance_of_mean))
+        inputs.append(
+            Quantity(f"V{mark}", f"variance of the mean{of}", found.variance_of_mean, f"({unit})²")
+        )
     error = means.half.standard_error
     formula = "SE = √(Σ W²·V)" if several else "SE = √V"
     steps.append(
