@@ -42,7 +42,7 @@ def non_detect_problems(data: Data) -> Iterator[Problem]:
             yield Problem(("rules", "declared_shape"), text)
         if chosen in (*MODELLED, BY_SHARE):
             yield from _designs(data, chosen)
-        if chosen in MODELLED and rules.get("mean_interval") == WIDENED:
+        if chosen in (*MODELLED, BY_SHARE) and rules.get("mean_interval") == WIDENED:
             text = (
                 f"brings an interval of its own, and {WIDENED} another (got {shown(chosen)}). "
                 f'Write mean_interval = "student-t", or non_detects = "{BOUNDS}".'

@@ -97,6 +97,21 @@ _A_FILE = click.Path(path_type=Path, dir_okay=False)
     help="Change this rule after results.",
 )
 @click.option(
+    "--non-detects",
+    type=click.Choice(
+        [
+            "bounds", "substitute-half", "kaplan-meier", "order-statistics",
+            "lognormal-likelihood", "gamma-likelihood", "normal-likelihood", "by-share",
+        ]
+    ),
+    help="Change this rule after results.",
+)
+@click.option(
+    "--declared-shape",
+    type=click.Choice(["lognormal", "gamma", "normal"]),
+    help="Change this rule after results; for --non-detects by-share.",
+)
+@click.option(
     "--duplicates",
     type=click.Choice(["average", "first"]),
     help="Change this rule after results.",
@@ -190,7 +205,8 @@ def _beside(packet: Path) -> Path:
 
 def _overrides(options: dict[str, Any]) -> dict[str, str | float]:
     names = (
-        "interval", "confidence", "mean_interval", "promised_class", "duplicates", "single_result"
+        "interval", "confidence", "mean_interval", "promised_class", "non_detects",
+        "declared_shape", "duplicates", "single_result",
     )  # fmt: skip
     return {name: options[name] for name in names if options[name] is not None}
 

@@ -1,16 +1,19 @@
 """The mean of the population and its interval, by the recorded design and rules only."""
 
 from collections.abc import Mapping
+from typing import get_args
 
 from fieldplan.base.errors import DesignError, LabError
 from fieldplan.base.working import Step
 from fieldplan.campaign.model import Rules
+from fieldplan.campaign.rules_table import DeclaredShape, NonDetects
 from fieldplan.estimate.coverage import coverage_sentence
 from fieldplan.estimate.coverage_steps import coverage_steps
 from fieldplan.estimate.difference import difference_sentences
 from fieldplan.estimate.level import level_sentence
 from fieldplan.estimate.means import Means, means_by
 from fieldplan.estimate.model import Change, Estimate
+from fieldplan.estimate.non_detect_words import method_sentence
 from fieldplan.estimate.order import standing_sentence
 from fieldplan.estimate.planned import Planned, planned_for
 from fieldplan.estimate.population import is_census, outside_sentence, population_sentence
@@ -26,6 +29,8 @@ CHANGEABLE = (
     "confidence",
     "mean_interval",
     "promised_class",
+    "non_detects",
+    "declared_shape",
     "single_result",
     "duplicates",
 )
@@ -48,7 +53,8 @@ def estimate(
         Reconciled by the recorded rules.
     overrides : mapping of str to (str or float), optional
         Rules to change after results: ``interval``, ``confidence``, ``mean_interval``,
-        ``promised_class``, ``single_result``, ``duplicates``. The recorded answer is kept beside
+        ``promised_class``, ``non_detects``, ``declared_shape``, ``single_result``,
+        ``duplicates``. The recorded answer is kept beside
         the changed one.
     returns_changed : Returns, optional
         Reconciled with the changed rule for duplicates; needed when that rule is changed.
@@ -66,9 +72,10 @@ def estimate(
 
     Notes
     -----
-    Non-detects stand as bounds: everything is computed with them at 0, at half and at their
-    limit. The mean and interval reported are those at half; the bracket holds all three, and
-    the comparison with the action level uses the envelope of the three intervals.
+    Everything is computed with non-detects at 0, at half and at their limit; the bracket holds
+    all three. Where they stand as bounds the mean and interval reported are those at half, and
+    the comparison with the action level uses the envelope of the three intervals; where the rules
+    fix a method for non-detects they are that method's.
     """
     _refuse_undecided(returns)
     rules, changed = changed_rules(plan.campaign.rules, overrides or {})
@@ -84,7 +91,7 @@ def estimate(
     return Estimate(
         analyte=basis.analyte,
         unit=planned.unit,
-        mean=means.half,
+        mean=means.reported,
         interval=means.interval,
         other_interval=means.other_interval,
         bracket=means.bracket,
@@ -100,16 +107,13 @@ def estimate(
         rejected_sentence=rejected,
         standing_sentence=standing,
         interval_sentence=widened_sentence(means),
+        as_bounds=means.as_bounds,
+        non_detect_sentence=method_sentence(means),
         sentences=answer_sentences(
-            plan,
-            means,
-            changes,
-            level=level,
-            population=population,
-            rejected=rejected,
+            plan, means, changes, level=level, population=population, rejected=rejected,
             standing=standing,
         ),
-    )
+    )  # fmt: skip
 
 
 def _basis(
@@ -181,8 +185,10 @@ def changed_rules(
         message = (
             f"{given}: this cannot stand in place of the recorded rule. confidence lies between "
             "0.5 and 1; interval is two-sided, upper-limit or lower-limit; mean_interval is "
-            "student-t or skew-widened; promised_class is cv-up-to-1 or cv-up-to-2; duplicates is "
-            "average or first; single_result is refuse or borrow-spread."
+            "student-t or skew-widened; promised_class is cv-up-to-1 or cv-up-to-2; non_detects "
+            f"is {', '.join(get_args(NonDetects))}; declared_shape is "
+            f"{', '.join(get_args(DeclaredShape))}; duplicates is average or first; single_result "
+            "is refuse or borrow-spread."
         )
         raise DesignError(message) from fault
     return rules, tuple(different)
@@ -207,7 +213,7 @@ def _changes(
             recorded=str(getattr(recorded, name) or "not set"),
             used=str(getattr(rules, name) or "not set"),
             interval_recorded=before.interval if before else None,
-            mean_recorded=before.half.mean if before else None,
+            mean_recorded=before.reported.mean if before else None,
             refusal_recorded=refusal,
         )
         for name in changed

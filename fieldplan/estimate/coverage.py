@@ -8,6 +8,7 @@ import numpy as np
 from fieldplan.base.units import significant
 from fieldplan.design.model import StratumValues
 from fieldplan.estimate.means import Means
+from fieldplan.estimate.non_detect_words import held_sentence
 from fieldplan.estimate.population import is_census
 from fieldplan.estimate.widened import is_widened
 from fieldplan.estimate.widened_steps import widened_coverage_sentence
@@ -100,6 +101,8 @@ def coverage_sentence(plan: Plan, means: Means) -> str:
     -------
     str
     """
+    if means.modelled is not None:
+        return held_sentence(means)
     if means.half.standard_error == 0:
         return (
             "The standard error is 0: no error comes from choosing places, or all results of a "

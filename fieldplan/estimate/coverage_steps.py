@@ -31,6 +31,8 @@ def coverage_steps(means: Means, unit: str) -> list[Step]:
         Empty where no share is given: standard error 0, or a confidence beyond the table.
     """
     rules = means.rules
+    if means.modelled is not None:
+        return []
     if is_widened(rules):
         return widened_held_steps(means) if means.half.standard_error > 0 else []
     if means.half.standard_error == 0 or rules.confidence > 0.99:

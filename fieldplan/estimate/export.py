@@ -42,6 +42,8 @@ def estimate_json(estimate: Estimate) -> dict[str, Any]:
         "degrees_of_freedom": mean.degrees_of_freedom,
         "interval": asdict(estimate.interval),
         "other_interval": asdict(estimate.other_interval),
+        "non_detects_as_bounds": estimate.as_bounds,
+        "non_detects": estimate.non_detect_sentence,
         "bracket": asdict(estimate.bracket) if estimate.bracket else None,
         "strata": [asdict(stratum) for stratum in mean.strata],
         "method": mean.method,

@@ -37,6 +37,23 @@ def envelope(interval: Interval, bracket: Bracket | None) -> Interval:
     )
 
 
+def against_level(interval: Interval, bracket: Bracket | None, *, as_bounds: bool) -> Interval:
+    """Give the interval that is set against a level.
+
+    Parameters
+    ----------
+    interval : Interval
+    bracket : Bracket or None
+    as_bounds : bool
+        Non-detects stand as bounds: the widest of the three; else the answer's own interval.
+
+    Returns
+    -------
+    Interval
+    """
+    return envelope(interval, bracket) if as_bounds else interval
+
+
 def side_of(level: float, interval: Interval) -> str:
     """Say where an interval or limit lies against a level.
 
@@ -81,10 +98,10 @@ def level_sentence(plan: Plan, means: Means) -> str:
     if analyte.action_level is None:
         return ""
     level, unit = analyte.action_level, analyte.unit
-    outer = envelope(means.interval, means.bracket)
+    outer = against_level(means.interval, means.bracket, as_bounds=means.as_bounds)
     source = f" ({analyte.action_level_source})" if analyte.action_level_source else ""
     which = f"{100 * outer.confidence:g} % {OPEN_ENDS.get(outer.kind, 'interval')}"
-    if means.bracket is not None:
+    if means.bracket is not None and means.as_bounds:
         which += ", widest over non-detects at 0, half and the limit,"
     decides = plan.campaign.plan.decides
     who = f"{decides} decides" if decides else "the plan names nobody who decides"
@@ -125,4 +142,8 @@ def _dependence(level: float, means: Means) -> str:
         bracket.interval_high,
     )
     sides = {side_of(level, interval) for interval in all_three}
+    if not means.as_bounds:
+        own = side_of(level, means.interval)
+        apart = sides - {own}
+        return "; with non-detects at 0 or at their limit it would not" if apart else ""
     return "; where the non-detects are put decides this" if len(sides) > 1 else ""

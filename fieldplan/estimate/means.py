@@ -9,6 +9,7 @@ from fieldplan.campaign.model import Rules
 from fieldplan.design import layout_of
 from fieldplan.design.model import MeanEstimate, PlannedCell, StratumValues
 from fieldplan.estimate.model import Bracket, Interval
+from fieldplan.estimate.modelled import Modelled, modelled, reported_mean, rule_in_force
 from fieldplan.estimate.widened import is_widened, refuse_unsuited, widened_ends
 from fieldplan.plan.model import Plan
 from fieldplan.returns.model import Returns
@@ -34,6 +35,10 @@ class Means:
         Its id.
     values_low, values_high : tuple of StratumValues
         What went into ``low`` and ``high``.
+    modelled : Modelled or None
+        The answer by a method for non-detects; None where they stand as bounds.
+    reason : str
+        Why ``by-share`` left them as bounds; else empty.
     """
 
     low: MeanEstimate
@@ -45,6 +50,25 @@ class Means:
     analyte: str
     values_low: tuple[StratumValues, ...] = ()
     values_high: tuple[StratumValues, ...] = ()
+    modelled: Modelled | None = None
+    reason: str = ""
+
+    @property
+    def reported(self) -> MeanEstimate:
+        """The mean that is the answer: by the method in force, else that at half."""
+        return reported_mean(self.half, self.modelled)
+
+    @property
+    def as_bounds(self) -> bool:
+        """Whether the answer at 0, half and the limit stand for each other."""
+        return self.modelled is None and self.rules.non_detects != "substitute-half"
+
+    def reported_interval(self, kind: IntervalKind) -> Interval:
+        """Set an interval of this kind about the mean that is reported."""
+        if self.modelled is None:
+            return self.interval_about(self.half, kind)
+        found = self.modelled.of_kind(kind, self.rules.confidence)
+        return Interval(kind, self.rules.confidence, found.low, found.high)
 
     def values_behind(self, mean: MeanEstimate) -> tuple[StratumValues, ...]:
         """Give what went into one of the means."""
@@ -68,13 +92,13 @@ class Means:
     @property
     def interval(self) -> Interval:
         """The interval of the kind that the rules declare."""
-        return self.interval_about(self.half, self.rules.interval)
+        return self.reported_interval(self.rules.interval)
 
     @property
     def other_interval(self) -> Interval:
         """A limit where an interval was declared, an interval where a limit was."""
         two_sided = self.rules.interval == "two-sided"
-        return self.interval_about(self.half, "upper-limit" if two_sided else "two-sided")
+        return self.reported_interval("upper-limit" if two_sided else "two-sided")
 
     @property
     def bracket(self) -> Bracket | None:
@@ -109,8 +133,8 @@ def means_by(plan: Plan, returns: Returns, rules: Rules) -> Means:
     Raises
     ------
     DesignError
-        A stratum has too few results for the rule, or the interval that the rules fix is not made
-        for the design.
+        A stratum has too few results for the rule, or the interval or the method for non-detects
+        that the rules fix is not made for the design.
     """
     refuse_unsuited(plan, rules)
     layout = layout_of(plan.campaign.design[0])
@@ -129,6 +153,8 @@ def means_by(plan: Plan, returns: Returns, rules: Rules) -> Means:
         rules=rules,
         censored=sum(result.used and not result.detected for result in returns.results),
         analyte=returns.analyte,
+        modelled=modelled(plan, returns, rules),
+        reason=rule_in_force(rules, returns).reason,
     )
 
 

@@ -75,6 +75,11 @@ class Estimate:
     changes : tuple of Change
         Empty when nothing was changed after results.
     returns : Returns
+    as_bounds : bool
+        Whether the answers at 0, half and the limit stand for each other; else a method for
+        non-detects, or half by declaration, is the answer and the bracket stands beside it.
+    non_detect_sentence : str
+        What was done with non-detects where they are no bounds, or why they are; may be empty.
     sentences : tuple of str
         The answer in words, most important first.
     rejected_sentence : str
@@ -104,6 +109,8 @@ class Estimate:
     rejected_sentence: str = ""
     standing_sentence: str = ""
     interval_sentence: str = ""
+    as_bounds: bool = True
+    non_detect_sentence: str = ""
 
 
 @dataclass(frozen=True)

@@ -4,7 +4,7 @@ from collections.abc import Sequence
 
 from fieldplan.base.errors import DesignError
 from fieldplan.base.units import significant
-from fieldplan.estimate.level import envelope, place_words
+from fieldplan.estimate.level import against_level, place_words
 from fieldplan.estimate.means import Means, means_by
 from fieldplan.estimate.sentences import interval_in_words
 from fieldplan.lab.words import listed
@@ -41,8 +41,9 @@ def rejected_sentence(plan: Plan, returns: Returns, means: Means) -> str:
     except DesignError as fault:
         return f"{said} Counted all the same, there is no answer: {' '.join(fault.problems)}"
     unit = plan.campaign.analyte_called(returns.analyte).unit
+    mean = significant(counted.reported.mean)
     return (
-        f"{said} Counted all the same, the mean would be {significant(counted.half.mean)} {unit}, "
+        f"{said} Counted all the same, the mean would be {mean} {unit}, "
         f"{interval_in_words(counted.interval, unit)}{_level(plan, means, counted)}."
     )
 
@@ -81,6 +82,7 @@ def _level(plan: Plan, means: Means, counted: Means) -> str:
     if level is None:
         return ""
     now, then = (
-        place_words(level, envelope(entry.interval, entry.bracket)) for entry in (means, counted)
+        place_words(level, against_level(m.interval, m.bracket, as_bounds=m.as_bounds))
+        for m in (means, counted)
     )
     return "" if now == then else f", which then {then} the action level"

@@ -5,6 +5,7 @@ from collections.abc import Sequence
 from fieldplan.base.units import significant
 from fieldplan.estimate.means import Means
 from fieldplan.estimate.model import Change, Interval
+from fieldplan.estimate.non_detect_words import bounds_words, method_sentence
 from fieldplan.estimate.widened import widened_sentence
 from fieldplan.plan.model import Plan
 
@@ -83,10 +84,12 @@ def answer_sentences(
     tuple of str
     """
     unit = plan.campaign.analyte_called(means.analyte).unit
-    error, mean = means.half.standard_error, means.half
+    mean = means.reported
+    error, most = mean.standard_error, means.modelled and means.modelled.whole.upper_bound
     answer = (
         f"The mean of {analyte_name(plan, means.analyte)} over {where(plan)} is "
-        f"{significant(mean.mean)} {unit}, {interval_in_words(means.interval, unit)} "
+        f"{'at most ' if most else ''}{significant(mean.mean)} {unit}, "
+        f"{interval_in_words(means.interval, unit)} "
         f"({mean.n} results, standard error {significant(error)} {unit})."
     )
     lines = [
@@ -94,6 +97,7 @@ def answer_sentences(
         _changed_sentence(changes, unit),
         widened_sentence(means),
         standing,
+        method_sentence(means),
         _bracket_sentence(means, unit),
         rejected,
         level,
@@ -139,6 +143,8 @@ def _bracket_sentence(means: Means, unit: str) -> str:
         return ""
     low = interval_in_words(bracket.interval_low, unit)
     high = interval_in_words(bracket.interval_high, unit)
+    if not means.as_bounds:
+        return bounds_words(means, unit, low=low, high=high)
     verb = "holds a non-detect" if means.censored == 1 else "hold non-detects"
     return (
         f"{means.censored} of {means.half.n} values {verb}, put at half the limit above. At 0 "

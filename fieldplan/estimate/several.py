@@ -5,7 +5,7 @@ from collections.abc import Mapping
 from fieldplan.base.errors import DesignError, LabError
 from fieldplan.base.units import significant
 from fieldplan.estimate.answer import estimate
-from fieldplan.estimate.level import OPEN_ENDS, envelope, place_words
+from fieldplan.estimate.level import OPEN_ENDS, against_level, place_words
 from fieldplan.estimate.model import Answers, Estimate, Unanswered
 from fieldplan.estimate.sentences import analyte_name
 from fieldplan.lab.words import counted
@@ -90,15 +90,17 @@ def brief_sentences(plan: Plan, answer: Estimate) -> tuple[str, ...]:
     """
     parts = [answer.sentences[0].removesuffix(".")]
     low = sum(result.used and not result.detected for result in answer.returns.results)
-    if low:
+    if low and (answer.as_bounds or not answer.non_detect_sentence):
         parts.append(f"with {counted(low, 'non-detect')} at half the limit")
+    elif low:
+        parts.append(f"with {counted(low, 'non-detect')}, of which its own sheet tells")
     if answer.rejected_sentence:
         parts.append("without results that the laboratory rejected, of which its own sheet tells")
     level = plan.campaign.analyte_called(answer.analyte).action_level
     if level is not None:
-        outer = envelope(answer.interval, answer.bracket)
+        outer = against_level(answer.interval, answer.bracket, as_bounds=answer.as_bounds)
         which = OPEN_ENDS.get(outer.kind, "interval")
-        widest = ", widest over the non-detects," if answer.bracket is not None else ""
+        widest = ", widest over the non-detects," if answer.bracket and answer.as_bounds else ""
         place = place_words(level, outer)
         parts.append(
             f"the {which}{widest} {place} the action level of {significant(level)} {answer.unit}"

@@ -66,8 +66,12 @@ def _bracket(estimate: Estimate) -> str:
     bracket = estimate.bracket
     if bracket is None:
         return "All results in the mean were detected."
+    stand = "Non-detects stand at half their limit; at"
+    if estimate.non_detect_sentence:
+        half = " Half their limit is put above; at" if estimate.as_bounds else " With them at"
+        stand = f"{estimate.non_detect_sentence}{half}"
     return (
-        "Non-detects stand at half their limit; at 0 the mean is "
+        f"{stand} 0 the mean is "
         f"{significant(bracket.mean_low)}, at the limit {significant(bracket.mean_high)} "
         f"{estimate.unit}."
     )

@@ -6,6 +6,7 @@ from fieldplan.base.working import Quantity, Step
 from fieldplan.design.model import StratumEstimate, StratumValues
 from fieldplan.estimate.cell_steps import cell_error_steps, cell_freedom_step, cell_mean_step
 from fieldplan.estimate.means import Means
+from fieldplan.estimate.modelled_steps import modelled_steps
 from fieldplan.estimate.start_steps import start_freedom_step, start_steps
 from fieldplan.estimate.widened import is_widened
 from fieldplan.estimate.widened_steps import widened_steps
@@ -28,8 +29,10 @@ def working(means: Means, unit: str) -> tuple[Step, ...]:
     Returns
     -------
     tuple of Step
-        Non-detects stand at half their limit throughout.
+        Non-detects stand at half their limit throughout, unless a method for them is in force.
     """
+    if means.modelled is not None:
+        return modelled_steps(means.modelled, unit)
     several = len(means.values) > 1
     steps: list[Step] = []
     cells = {entry.stratum: entry for entry in means.half.cell_variances}

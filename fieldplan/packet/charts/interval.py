@@ -51,7 +51,8 @@ def interval_figure(
         )
     caption = f"The mean of {name or estimate.analyte} and its {_kind(estimate.interval)}."
     if estimate.bracket is not None:
-        caption += " Non-detects at 0, half and the limit bracket the answer."
+        which = "0, half and the limit" if estimate.as_bounds else "0 and at the limit"
+        caption += f" Non-detects at {which} bracket the answer."
     words = "; ".join(_words(row, estimate.unit) for row in _rows(estimate))
     if action_level is not None:
         words += f"; action level {number(action_level)} {estimate.unit}"
@@ -74,6 +75,12 @@ def _rows(estimate: Estimate) -> list[_Row]:
     bracket = estimate.bracket
     if bracket is None:
         return [("mean", estimate.mean.mean, estimate.interval)]
+    if not estimate.as_bounds:
+        return [
+            ("mean", estimate.mean.mean, estimate.interval),
+            ("non-detects at 0", bracket.mean_low, bracket.interval_low),
+            ("non-detects at the limit", bracket.mean_high, bracket.interval_high),
+        ]
     return [
         ("non-detects at half", bracket.mean_half, bracket.interval_half),
         ("non-detects at 0", bracket.mean_low, bracket.interval_low),

@@ -175,8 +175,8 @@ def location_blocks(plan: Plan, estimate: Estimate) -> list[Block]:
         Paragraph(match_sentence(estimate.returns)),
         location_table(plan, estimate.returns),
         Paragraph(
-            "As reported is the laboratory's cell, untouched. A value with non-detects in it has "
-            "them at half their limit; page one says what 0 and the limit would give.",
+            "As reported is the laboratory's cell, untouched. A value with non-detects in it is "
+            "shown with them at half their limit; page one says what 0 and the limit would give.",
             tone="note",
         ),
         *confirmed_blocks(plan, estimate.returns),

@@ -25,6 +25,12 @@ def degrees_words(degrees_of_freedom: float) -> str:
     return text.removesuffix(".0")
 
 
+AT_HALF = (
+    "; means are by the method for non-detects, standard deviations found with them at half their "
+    "limit"
+)
+
+
 def stratum_table(plan: Plan, estimate: Estimate) -> Table:
     """Set n, mean, s and weight of every stratum beside what was planned."""
     unit = estimate.unit
@@ -56,7 +62,7 @@ def stratum_table(plan: Plan, estimate: Estimate) -> Table:
         columns,
         tuple(rows),
         caption="Planned counts locations; expected is the standard deviation used for planning"
-        + _conventions(planned),
+        + (_conventions(planned) if estimate.as_bounds else AT_HALF),
         numeric=columns[1:],
     )
 

@@ -10,6 +10,26 @@ from fieldplan.packet.sheets.amounts import BLANK
 NON_DETECTS = {
     "bounds": "non-detects are set to 0, to half and to their limit; the mean is shown for all "
     "three, with half in the middle",
+    "substitute-half": "half the limit is put in place of a non-detect; what that is off by is not "
+    "known",
+    "kaplan-meier": "the mean is that of the product limit; where a limit lies below all detects, "
+    "it is an upper bound",
+    "order-statistics": "non-detects are filled in from a line through the ordered detects; the "
+    "bounds at 0 and at the limit stand beside the mean",
+    "lognormal-likelihood": "a lognormal shape is fitted by maximum likelihood; the bounds at 0 "
+    "and at the limit stand beside the mean",
+    "gamma-likelihood": "a gamma shape is fitted by maximum likelihood; the bounds at 0 and at the "
+    "limit stand beside the mean",
+    "normal-likelihood": "a normal shape is fitted by maximum likelihood; the bounds at 0 and at "
+    "the limit stand beside the mean",
+    "by-share": "a method is chosen by the share of non-detects, the number of results and the "
+    "declared shape; the sheet says which and why",
+}
+SHAPES = {
+    None: "none is relied on",
+    "lognormal": "by-share may fit a lognormal shape",
+    "gamma": "by-share may fit a gamma shape",
+    "normal": "by-share may fit a normal shape",
 }
 DUPLICATES = {
     "average": "the results of one location are averaged; a duplicate is never a further n",
@@ -84,6 +104,7 @@ def rules_table(rules: Rules) -> Table:
         columns=("Rule", "Recorded", "Meaning"),
         rows=(
             ("non_detects", rules.non_detects, NON_DETECTS[rules.non_detects]),
+            ("declared_shape", rules.declared_shape or BLANK, SHAPES[rules.declared_shape]),
             ("duplicates", rules.duplicates, DUPLICATES[rules.duplicates]),
             ("interval", rules.interval, INTERVALS[rules.interval]),
             ("confidence", f"{rules.confidence:g}", LONG_RUNS[rules.mean_interval]),

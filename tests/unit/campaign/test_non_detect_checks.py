@@ -46,7 +46,7 @@ def test_a_shape_is_declared_for_the_choice_by_share_alone() -> None:
 
 
 def test_two_rules_do_not_both_set_the_interval() -> None:
-    """A method brings its own interval; by-share may fall back to bounds, which t or wide ends set."""
+    """A method brings its own interval, and so does what by-share may choose."""
     (line,) = said({"non_detects": "kaplan-meier", "mean_interval": "skew-widened"})
     assert line.startswith("non_detects: brings an interval of its own")
 

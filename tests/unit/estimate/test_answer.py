@@ -192,7 +192,8 @@ def test_an_override_equal_to_the_record_changes_nothing() -> None:
 def test_an_override_that_is_none_is_refused(overrides: dict[str, str | float], says: str) -> None:
     """A rule nobody wrote down cannot stand in place of one."""
     assert set(CHANGEABLE) == {
-        "interval", "confidence", "mean_interval", "promised_class", "single_result", "duplicates"
+        "interval", "confidence", "mean_interval", "promised_class", "single_result", "duplicates",
+        "non_detects", "declared_shape",
     }  # fmt: skip
     with pytest.raises(DesignError, match=says):
         estimate(list_plan(), wells(), overrides=overrides)

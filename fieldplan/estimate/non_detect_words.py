@@ -1,0 +1,147 @@
+"""What is said of non-detects: the method, its reason, what it holds, and the bounds beside it."""
+
+from fieldplan.base.units import significant
+from fieldplan.campaign.non_detect_checks import HALF
+from fieldplan.estimate.means import Means
+from fieldplan.estimate.modelled import METHOD_SENTENCES, Modelled
+from fieldplan.lab.words import counted
+from fieldplan.stats.censored import CensoredMethod
+from fieldplan.stats.censored_choice import (
+    FEWEST_WITH_SHAPE,
+    FEWEST_WITHOUT_SHAPE,
+    MOST_WITH_SHAPE,
+    MOST_WITHOUT_SHAPE,
+)
+
+NAMES: dict[CensoredMethod, str] = {
+    "kaplan-meier": "the product limit of Kaplan and Meier",
+    "order-statistics": "regression on order statistics",
+    "lognormal-likelihood": "maximum likelihood of a lognormal shape",
+    "gamma-likelihood": "maximum likelihood of a gamma shape",
+    "normal-likelihood": "maximum likelihood of a normal shape",
+}
+
+
+def method_sentence(means: Means) -> str:
+    """Say by what the mean was found where non-detects do not simply stand at half.
+
+    Parameters
+    ----------
+    means : Means
+
+    Returns
+    -------
+    str
+        Empty under bounds, and where nothing was a non-detect.
+    """
+    if not means.censored:
+        return ""
+    if means.rules.non_detects == HALF:
+        return (
+            f"As the rules declare, half the limit stands for {counted(means.censored, 'value')} "
+            f"with a non-detect, of {means.half.n}. Nothing measured says that it is half: such a "
+            "mean is off by an unknown amount, which its interval does not hold."
+        )
+    found = means.modelled
+    if found is None:
+        return f"Non-detects stand as bounds: {means.reason}." if means.reason else ""
+    parts = [_by(found)]
+    if found.whole.upper_bound:
+        parts.append(
+            "Non-detects lie below all detects, so that this mean is the largest that they "
+            "leave open and no estimate; the low end has them at 0."
+        )
+    mixed = sum(sample.mixed for sample in found.samples)
+    if mixed:
+        parts.append(
+            f"{counted(mixed, 'value')} that averages a detect with a non-detect stands among the "
+            "detects, with half the limit in it."
+            if mixed == 1
+            else f"{mixed} values that average a detect with a non-detect stand among the "
+            "detects, with half the limit in them."
+        )
+    return " ".join(parts)
+
+
+def _by(found: Modelled) -> str:
+    why = f", chosen by share: {found.reason}" if found.reason else ", as the rules fix it"
+    return (
+        f"{found.whole.non_detects} of {found.whole.n} values are non-detects; the mean is by "
+        f"{NAMES[found.method]}{why}."
+    )
+
+
+def held_sentence(means: Means) -> str:
+    """Say what the interval of a method held in simulation, and where these results lie outside.
+
+    Parameters
+    ----------
+    means : Means
+        With a method in force.
+
+    Returns
+    -------
+    str
+    """
+    found = means.modelled
+    if found is None:
+        return ""
+    share = max(part.non_detects / part.n for part in found.parts)
+    fewest = min(part.n for part in found.parts if part.non_detects)
+    held, most, least = _held(found.method)
+    outside = []
+    if share > most:
+        outside.append(f"{100 * share:.0f} % of them are non-detects")
+    if fewest < least:
+        outside.append(f"there are {fewest} results")
+    where = " in a stratum" if len(found.parts) > 1 else ""
+    end = (
+        f" NOT KEPT: that is for up to {100 * most:.0f} % non-detects and from {least} results "
+        f"on, and here{where} {' and '.join(outside)}."
+        if outside
+        else ""
+    )
+    return f"{METHOD_SENTENCES[found.method]} {held}{end}"
+
+
+def _held(method: CensoredMethod) -> tuple[str, float, int]:
+    """Give what was simulated for a method, up to which share and from how many results on."""
+    if method == "order-statistics":
+        held = (
+            "In simulated samples of eight populations, lognormal, gamma, Weibull, mixed and "
+            f"normal, a 95 % interval held the true mean in 92 % or more up to "
+            f"{100 * MOST_WITHOUT_SHAPE:.0f} % non-detects and from {FEWEST_WITHOUT_SHAPE} results "
+            "on."
+        )
+        return held, MOST_WITHOUT_SHAPE, FEWEST_WITHOUT_SHAPE
+    if method == "kaplan-meier":
+        held = (
+            "It makes no use of a shape. With limits below all detects it gives an upper bound, "
+            "whose interval held the true mean in simulation because it is wide; elsewhere "
+            "Student's quantile falls short where results are skewed."
+        )
+        return held, MOST_WITHOUT_SHAPE, FEWEST_WITHOUT_SHAPE
+    shape = method.removesuffix("-likelihood")
+    held = (
+        f"On simulated {shape} populations a 95 % interval held the true mean in about 95 % up to "
+        f"{100 * MOST_WITH_SHAPE:.0f} % non-detects and from {FEWEST_WITH_SHAPE} results on. On "
+        "other shapes it can be off by far, and results below a limit cannot show their shape: "
+        "what stands behind it is the declaration, not these results."
+    )
+    return held, MOST_WITH_SHAPE, FEWEST_WITH_SHAPE
+
+
+def bounds_words(means: Means, unit: str, *, low: str, high: str) -> str:
+    """Set the bounds beside the answer of a method.
+
+    Parameters
+    ----------
+    means : Means
+    unit : str
+    low, high : str
+        Intervals in words, with non-detects at 0 and at their limit.
+    """
+    return (
+        f"Whatever the method, with non-detects at 0 the mean is {significant(means.low.mean)} "
+        f"{unit} ({low}), at the limit {significant(means.high.mean)} {unit} ({high})."
+    )
