@@ -10,6 +10,9 @@ from fieldplan.campaign.table import tables
 WIDENED = "skew-widened"
 CLASSES = ("cv-up-to-1", "cv-up-to-2")
 SUITED = ("simple-random", "square-grid", "triangular-grid")
+ALLOWED = ("bounds", "substitute-half")
+"""What non-detects may stand as: values, of which the interval is set."""
+
 LEAST, MOST = 0.90, 0.99
 """Confidence between which coverage has been simulated."""
 
@@ -49,6 +52,13 @@ def _class_and_confidence(rules: Data) -> Iterator[Problem]:
             f"the class that it is promised for. Write {listed}."
         )
         yield Problem(("rules", "promised_class"), text)
+    method = rules.get("non_detects", "bounds")
+    if isinstance(method, str) and method not in ALLOWED and not is_fill_in(method):
+        text = (
+            f"this method brings an interval of its own, and {WIDENED} is another (got "
+            f'{shown(method)}). Write non_detects = "bounds", or mean_interval = "student-t".'
+        )
+        yield Problem(("rules", "non_detects"), text)
     confidence = rules.get("confidence", 0.95)
     if isinstance(confidence, int | float) and not LEAST <= confidence <= MOST:
         text = (

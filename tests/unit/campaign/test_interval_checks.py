@@ -58,6 +58,13 @@ def test_designs_without_evidence_are_refused_with_the_reason(
     assert why in line
 
 
+def test_a_method_for_non_detects_with_an_interval_of_its_own_is_refused() -> None:
+    """Two intervals cannot both be the one that is reported."""
+    (line,) = said({**WIDE, "non_detects": "kaplan-meier"})
+    assert line.startswith("non_detects: this method brings an interval of its own")
+    assert said({**WIDE, "non_detects": "bounds"}) == []
+
+
 @pytest.mark.parametrize("confidence", [0.8, 0.999])
 def test_confidence_outside_the_evidence_is_refused(confidence: float) -> None:
     """Coverage is simulated at 0.90, 0.95 and 0.99."""
