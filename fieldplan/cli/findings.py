@@ -216,6 +216,8 @@ def _target(objective: Objective, campaign: Campaign, unit: str) -> str:
     """Say the target of an objective."""
     rules = campaign.rules
     interval = f"{rules.confidence * 100:g} %, {rules.interval}"
+    if rules.mean_interval != "student-t":
+        interval += f", {rules.mean_interval} for {rules.promised_class}"
     if objective.standard_error is not None:
         return f"a standard error of at most {objective.standard_error:g} {unit}"
     if objective.half_width is not None:

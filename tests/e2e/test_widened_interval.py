@@ -81,6 +81,13 @@ def test_the_plan_sheet_says_for_which_interval_n_is(packet: Path) -> None:
         assert words in sheet, words
 
 
+def test_check_says_for_which_interval_the_half_width_is(packet: Path) -> None:
+    """Who reads the campaign back sees what the rules fix."""
+    outcome = run("check", packet.parent / "campaign.toml")
+    said = " ".join(outcome.stdout.split())
+    assert "25 mg/kg (95 %, two-sided, skew-widened for cv-up-to-2)" in said
+
+
 def test_results_have_the_ends_of_the_interval_that_was_fixed(
     packet: Path, laboratory: tuple[Path, np.ndarray], tmp_path: Path
 ) -> None:
