@@ -201,12 +201,17 @@ class EvenSpacing:
         planned = {count.stratum: count.planned for count in counts}
         told = []
         for stratum in frame.strata:
-            spacing = stratum.measure * self.starts / planned[stratum.name]
-            many = f" from each of {self.starts} starts" if self.starts > 1 else ""
-            told.append(
-                f"'{stratum.name}': {planned[stratum.name]} places, one every {spacing:.4g} m "
-                f"along the lines{many}; reaches left out take no room."
-            )
+            count, length = planned[stratum.name], stratum.measure
+            if self.starts == 1:
+                how = f"{count} places, one every {length / count:.4g} m along the lines"
+            else:
+                low, more = divmod(count, self.starts)
+                each = f"{low} or {low + 1}" if more else f"{low}"
+                how = (
+                    f"{count} places from {self.starts} starts with {each} each, evenly spaced "
+                    f"over {length_in_words(length)} of line"
+                )
+            told.append(f"'{stratum.name}': {how}; reaches left out take no room.")
         return tuple(told)
 
 
