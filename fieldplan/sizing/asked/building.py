@@ -1,6 +1,6 @@
 """From a question's counts to the whole ``Size``: losses, money, controls, what else n buys."""
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 from fieldplan.sizing.asked.model import Answered, Asked
 from fieldplan.sizing.closing_steps import closing_steps
@@ -42,7 +42,7 @@ def size_of(asked: Asked, answered: Answered) -> Size:
     finding = _finding(asked, answered, counts)
     typed = question.locations is not None or question.census
     known = Precision(question) if asked.sigma_known else None
-    total = sum(counts.needed)
+    sure = _sureness(asked, answered)
     return Size(
         design=question.design,
         analyte=question.analyte,
@@ -51,17 +51,17 @@ def size_of(asked: Asked, answered: Answered) -> Size:
         target_standard_error=None,
         target_half_width=None,
         strata=_strata(asked, counts),
-        plain_n=sum(answered.needed),
-        needed=total,
+        plain_n=sure.plain_n,
+        needed=sum(counts.needed),
         planned=sum(counts.planned),
         standard_error=known.standard_error(counts.needed) if known else None,
         half_width=known.half_width(counts.needed) if known else None,
         confidence=question.confidence,
         interval=question.interval,
-        assurance=None,
+        assurance=sure.assurance,
         assurance_chosen_by="",
-        chance_plain=None,
-        chance_needed=None,
+        chance_plain=sure.chance_plain,
+        chance_needed=_chance_enough(finding),
         assured=(),
         steps=(*finding.steps, *(closing_steps(question, counts) if known else ())),
         curve=_curve(asked, counts),
@@ -75,6 +75,37 @@ def size_of(asked: Asked, answered: Answered) -> Size:
         question=asked.objective.question,
         findings=(replace(finding, steps=()),),
     )
+
+
+@dataclass(frozen=True)
+class _Sureness:
+    """The number with sigma at face value, the assurance that raised it, and the plain chance."""
+
+    plain_n: int
+    assurance: float | None = None
+    chance_plain: float | None = None
+
+
+def _sureness(asked: Asked, answered: Answered) -> _Sureness:
+    """Ask once more without the assurance, where the question has one."""
+    from fieldplan.sizing.asked import bought, count
+
+    question = asked.objective.question
+    name = question.replace("-", "_")
+    table = getattr(asked.objective, name)
+    assurance = getattr(table, "assurance", None)
+    if not isinstance(assurance, float):
+        return _Sureness(sum(answered.needed), None, _chance_enough(answered.finding))
+    face = table.model_copy(update={"assurance": "plain"})
+    asked = replace(asked, objective=asked.objective.model_copy(update={name: face}))
+    plain = count(asked).needed
+    return _Sureness(sum(plain), assurance, _chance_enough(bought(asked, question, plain)))
+
+
+def _chance_enough(finding: Finding) -> float | None:
+    """Give the chance that its number is enough, where a finding has one."""
+    found = [amount.value for amount in finding.amounts if amount.name == "chance_enough"]
+    return None if not found or found[0] is None else float(found[0])
 
 
 def _finding(asked: Asked, answered: Answered, counts: Counts) -> Finding:

@@ -56,7 +56,7 @@ class _Gain:
 
 
 def finding(asked: Asked, size: Size) -> Finding | None:
-    """Set the strata against no strata; None for one stratum, unknown sigma or a census.
+    """Set the strata against no strata; None for one stratum, another question or a census.
 
     Parameters
     ----------
@@ -65,7 +65,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     """
     question = asked.question
     counts = tuple(entry.needed for entry in size.strata)
-    if len(question.parts) == 1 or not asked.sigma_known or question.takes_all(counts):
+    if size.question != "mean" or len(question.parts) == 1 or question.takes_all(counts):
         return None
     known = all(part.mean is not None for part in question.parts)
     gain = _Gain(question, counts, _whole(asked, known=known), known)
