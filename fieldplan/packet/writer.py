@@ -167,12 +167,15 @@ def _write_sheets(plan: Plan, folder: Path) -> None:
     from fieldplan.packet.sheets.pdf import set_pdf
     from fieldplan.packet.sheets.plan_sheet import plan_sheet
     from fieldplan.packet.sheets.start_here import start_here
+    from fieldplan.packet.sheets.working_sheet import working_sheet
 
     paper = plan.campaign.paper.size
     (folder / "START_HERE.html").write_text(set_html(start_here(plan)), encoding="utf-8")
     sheet = plan_sheet(plan)
-    (folder / "office" / "plan_sheet.html").write_text(set_html(sheet), encoding="utf-8")
-    (folder / "office" / "plan_sheet.pdf").write_bytes(set_pdf(sheet, paper=paper))
+    for name, document in (("plan_sheet", sheet), ("working", working_sheet(plan, sheet))):
+        page = folder / "office" / f"{name}.html"
+        page.write_text(set_html(document), encoding="utf-8")
+        page.with_suffix(".pdf").write_bytes(set_pdf(document, paper=paper))
     form = set_pdf(field_form(plan), paper=paper)
     (folder / "crew" / "field_form.pdf").write_bytes(form)
 

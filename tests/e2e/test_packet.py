@@ -22,6 +22,8 @@ def test_a_packet_holds_what_crew_and_office_need(packed: Packed) -> None:
     office |= {
         "office/plan_sheet.html",
         "office/plan_sheet.pdf",
+        "office/working.html",
+        "office/working.pdf",
         "office/inputs/campaign.toml",
         "office/record.json",
     }

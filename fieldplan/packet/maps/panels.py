@@ -199,7 +199,7 @@ def draw_notes(
     box = spec.layout.notes
     lines, sources = note_lines(plan, content, unplaced=unplaced), sources_line(plan)
     if sources and _rows([*lines, sources], box.width) > int(box.height / _LINE_MM):
-        sources = "Sources: in full on the plan sheet."
+        sources = "Sources: in full in The working, office folder."
     draw_lines(page, [*lines, *([sources] if sources else [])], box=box, points=_NOTE_POINTS)
 
 
@@ -211,7 +211,7 @@ def _is_bold(line: str) -> bool:
 def draw_lines(page: "Axes", lines: list[str], *, box: Box, points: float) -> None:
     """Write sentences into a box from the top; one that starts with OPEN is set bold.
 
-    What does not fit is cut with ``…``; the plan sheet has all of it.
+    What does not fit is cut with ``…``; plan sheet and working have all of it.
     """
     room = int(box.height / _LINE_MM)
     y = box.top - _LINE_MM / 2

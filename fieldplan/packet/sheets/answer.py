@@ -21,8 +21,9 @@ SHOWN = 12
 """Most rows of strata on page one."""
 
 SUMMARY = (
-    "This sheet is a summary. It is no substitute for the documents that a regulator requires, for "
-    "a health and safety plan, or for a permit."
+    "This sheet is a summary; what stands behind it is in The working (working.pdf). It is no "
+    "substitute for the documents that a regulator requires, for a health and safety plan, or for "
+    "a permit."
 )
 
 
@@ -99,7 +100,7 @@ def _others(plan: Plan, shown: tuple[StratumSize, ...]) -> tuple[str, ...]:
     return (
         f"{len(left)} others",
         percent(sum(entry.weight for entry in left)),
-        "see section 5",
+        "see The working",
         str(sum(entry.needed for entry in left)),
         str(sum(entry.planned for entry in left)),
         str(sum(entry.alternates for entry in left)),

@@ -1,14 +1,15 @@
 """What the crew may change, how it is recorded, and what has to be settled first."""
 
-from fieldplan.base.document import Block, Bullets, Caution, Facts, Heading, Paragraph, Table
+from fieldplan.base.document import Block, Bullets, Caution, Facts, Paragraph, Table
 from fieldplan.packet.sheets.amounts import BLANK, days
 from fieldplan.packet.sheets.plan_words import REASONS
+from fieldplan.packet.sheets.sections import in_working, on_sheet
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
 
 
 def field_blocks(plan: Plan) -> list[Block]:
-    """Set the deviation rule with its reason codes."""
+    """Set the days, the receiver, the contact and the reason codes."""
     field, table = plan.campaign.field, plan.campaign.plan
     accuracy = f"{number(field.position_accuracy_m)} m" if field.position_accuracy_m else BLANK
     facts = Facts(
@@ -20,12 +21,18 @@ def field_blocks(plan: Plan) -> list[Block]:
             ("Clock", f"UTC{field.utc_offset}" if field.utc_offset else BLANK),
         )
     )
+    rule = on_sheet("When a location cannot be sampled as planned")
     return [
         facts,
-        Heading("When a location cannot be sampled as planned", level=2),
-        Bullets(deviation_rule(plan), numbered=True),
+        Paragraph(f"When a location cannot be sampled as planned: {rule}."),
         reason_table(),
     ]
+
+
+def deviation_blocks(plan: Plan) -> list[Block]:
+    """Set the rule for the field, and say where its codes are."""
+    codes = f"Reason codes: the field form, and {in_working('In the field')}."
+    return [Bullets(deviation_rule(plan), numbered=True), Paragraph(codes, tone="note")]
 
 
 def deviation_rule(plan: Plan) -> tuple[str, ...]:

@@ -1,4 +1,4 @@
-"""What stands beside the number: a sentence in the section, the working in the annex."""
+"""What stands beside the number: a sentence on the sheet, its numbers in the working."""
 
 from collections.abc import Sequence
 
@@ -7,24 +7,34 @@ from fieldplan.packet.sheets.amounts import rounded
 from fieldplan.sizing.model import Amount, Finding
 
 
-def finding_blocks(finding: Finding) -> list[Block]:
-    """Set one finding: its answer, its picture, its warnings.
+def finding_blocks(findings: Sequence[Finding], *, answered: bool = False) -> list[Block]:
+    """Set each finding's answer, its picture, its warnings; those of words alone stand together.
 
     Parameters
     ----------
-    finding : Finding
+    findings : sequence of Finding
+    answered : bool
+        Whether the answer of the first stands on page one and is not said again.
     """
-    blocks: list[Block] = [Heading(finding.title, level=2), Paragraph(finding.answer)]
-    if finding.picture is not None:
-        from fieldplan.packet.charts.finding_picture import finding_picture
+    plain: list[tuple[str, str]] = []
+    shown: list[Block] = []
+    for position, finding in enumerate(findings):
+        answer = "" if answered and position == 0 else finding.answer
+        if finding.picture is None and not finding.warnings:
+            plain += [(finding.title, answer)] if answer else []
+            continue
+        shown += [Heading(finding.title, level=2), *([Paragraph(answer)] if answer else [])]
+        if finding.picture is not None:
+            from fieldplan.packet.charts.finding_picture import finding_picture
 
-        blocks.append(finding_picture(finding.picture))
-    if finding.warnings:
-        blocks.append(Bullets(finding.warnings))
-    return blocks
+            shown.append(finding_picture(finding.picture))
+        if finding.warnings:
+            shown.append(Bullets(finding.warnings))
+    beside: list[Block] = [Heading("Beside the number", level=2), Facts(tuple(plain))]
+    return [*(beside if plain else []), *shown]
 
 
-def finding_annex(findings: Sequence[Finding]) -> list[Block]:
+def finding_details(findings: Sequence[Finding]) -> list[Block]:
     """Set the numbers, the table, the working, the assumptions and sources of findings.
 
     Parameters
@@ -35,7 +45,7 @@ def finding_annex(findings: Sequence[Finding]) -> list[Block]:
     for finding in findings:
         parts = _parts(finding)
         if parts:
-            blocks += [Heading(f"Working: {finding.title}", level=2), *parts]
+            blocks += [Heading(finding.title, level=2), *parts]
     return blocks
 
 

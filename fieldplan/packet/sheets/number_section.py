@@ -1,10 +1,16 @@
-"""How uneven the site is, and how many results the target takes."""
+"""How uneven the site is, and how many results the target takes: in short, and in full."""
 
-from fieldplan.base.document import Block, Bullets, Facts, Heading, Paragraph, Table
+from fieldplan.base.document import Block, Bullets, Facts, Heading, Paragraph, Table, Working
 from fieldplan.packet.sheets.amounts import counted, likely, percent, rounded
 from fieldplan.packet.sheets.answer import SHOWN, stratum_table
+from fieldplan.packet.sheets.conditions_section import (
+    condition_lines,
+    declared_lines,
+    shortened,
+)
 from fieldplan.packet.sheets.finding_section import finding_blocks
-from fieldplan.packet.sheets.plan_words import every_unit
+from fieldplan.packet.sheets.methods import sources
+from fieldplan.packet.sheets.sections import in_working
 from fieldplan.plan.model import Plan
 from fieldplan.sizing.model import OtherPrecision
 from fieldplan.sizing.other_words import chance_words
@@ -12,15 +18,38 @@ from fieldplan.sizing.words import FEW
 
 
 def spread_blocks(plan: Plan) -> list[Block]:
-    """Say what the pilot says, with its dot plot, or that the spread was typed."""
+    """Say where the spread comes from, with the dot plot of a pilot."""
     spread = plan.spread
-    blocks: list[Block] = []
-    if spread.sentences:
-        blocks.append(Bullets(spread.sentences))
+    blocks: list[Block] = [Paragraph(spread_line(plan))]
     if any(entry.values for entry in spread.strata) or (spread.site and spread.site.values):
         from fieldplan.packet.charts import pilot_dots
 
         blocks.append(pilot_dots(spread, name=plan.campaign.deciding_analyte.label))
+    return blocks
+
+
+def spread_line(plan: Plan) -> str:
+    """Say in a sentence where the standard deviations come from."""
+    entries, where = plan.spread.strata, in_working("The spread in full")
+    if not entries:
+        return f"No standard deviation was typed or found in a pilot. More: {where}."
+    one = "standard deviation" if len(entries) == 1 else "standard deviations"
+    if all(entry.assumed for entry in entries):
+        return f"ASSUMED: nobody measured the {one} on page one. Who typed what: {where}."
+    verb = "comes" if len(entries) == 1 else "come"
+    part = "; some are ASSUMED" if any(entry.assumed for entry in entries) else ""
+    return (
+        f"The {one} on page one {verb} from {sources(plan)}{part}. Mean, range, non-detects and "
+        f"skewness: {where}."
+    )
+
+
+def spread_detail(plan: Plan) -> list[Block]:
+    """Say all that the pilot says, or that the spread was typed."""
+    spread = plan.spread
+    blocks: list[Block] = []
+    if spread.sentences:
+        blocks.append(Bullets(spread.sentences))
     if len(spread.strata) > FEW or not all(entry.values for entry in spread.strata):
         blocks.append(spread_table(plan))
     if spread.notes:
@@ -44,25 +73,45 @@ def spread_table(plan: Plan) -> Table:
 
 
 def number_blocks(plan: Plan) -> list[Block]:
-    """Show what is promised, how sure the number is, the curve, and the conditions."""
+    """Show how sure the number is, the curve, what stands beside it, and the conditions."""
     from fieldplan.packet.charts import precision_curve
 
     size = plan.size
-    blocks: list[Block] = [Facts(promise_rows(plan))]
-    if len(size.strata) > SHOWN:
-        blocks.append(stratum_table(plan, whole=True))
+    blocks: list[Block] = []
     if size.assured:
         blocks.append(assurance_table(plan))
     if size.curve:
         blocks.append(precision_curve(size))
     if size.others:
         blocks += other_blocks(plan)
-    for finding in size.findings:
-        blocks += finding_blocks(finding)
-    conditions = (*size.conditions, *declared_lines(plan))
+    blocks += finding_blocks(size.findings, answered=size.number_from == "question")
+    if short := shortened(size.conditions, declared_lines(plan)):
+        blocks += [Heading("Under what condition", level=2), Paragraph(short)]
+    where = (
+        f"Target, counts and every step: {in_working('The number in full')}. Numbers, tables and "
+        f"sources of what stands beside it: {in_working('Beside the number')}."
+    )
+    return [*blocks, Paragraph(where, tone="note")]
+
+
+def number_detail(plan: Plan) -> list[Block]:
+    """Set target and counts, the shares of many strata, every condition and every step."""
+    size, conditions = plan.size, condition_lines(plan)
+    blocks: list[Block] = [Facts(promise_rows(plan))]
+    if len(size.strata) > SHOWN:
+        blocks.append(stratum_table(plan, whole=True))
     if conditions:
         blocks += [Heading("Under what condition", level=2), Bullets(conditions)]
-    return [*blocks, Paragraph("The working is in annex A.", tone="note")]
+    return [
+        *blocks,
+        Heading("Step by step", level=2),
+        Paragraph(
+            "Sections, pages and equations of sources are cited from memory: read them before "
+            "quoting. What is derived here says so and has no published source.",
+            tone="note",
+        ),
+        Working(size.steps),
+    ]
 
 
 def promise_rows(plan: Plan) -> tuple[tuple[str, str], ...]:
@@ -109,35 +158,6 @@ def count_rows(plan: Plan) -> list[tuple[str, str]]:
     if size.number_from == "budget":
         return [("Locations that the budget buys", str(size.planned)), expected]
     return [("Locations to visit, the whole list", str(size.planned))]
-
-
-def declared_lines(plan: Plan) -> list[str]:
-    """Say which class the confidence was declared for, and what t holds at the end of it."""
-    from fieldplan.estimate.coverage import declared_skewness
-    from fieldplan.sizing.asking import asked_of
-    from fieldplan.sizing.lean import equivalent_sample
-    from fieldplan.stats.shape import t_coverage
-
-    rules = plan.campaign.rules
-    if not rules.promised_for or every_unit(plan):
-        return []
-    line = f"The {percent(rules.confidence)} is declared for {rules.promised_for.rstrip('. ')}"
-    end = declared_skewness(rules.promised_for)
-    if end is None or rules.confidence > 0.99:
-        return [f"{line}. Nothing here shows that the population belongs to that class."]
-    asked = asked_of(plan.campaign, plan.spread, plan.frame)
-    if not asked.sigma_known:
-        return [f"{line}."]
-    n, lean = equivalent_sample(asked.question, [entry.needed for entry in plan.size.strata])
-    held = t_coverage(n, end, confidence=rules.confidence, kind=rules.interval)
-    large = " of a large population" if plan.frame.kind == "list" else ""
-    line += (
-        f". At a skewness of {end:g}, which ends that class, t from {n} results{large} holds the "
-        f"true mean in about {100 * held:.0f} % of campaigns."
-    )
-    if lean is not None and abs(lean) > end:
-        line += f" The results behind sigma lie outside it: their skewness is {rounded(lean)}."
-    return [line]
 
 
 def assurance_table(plan: Plan) -> Table:

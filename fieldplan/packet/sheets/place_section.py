@@ -170,7 +170,7 @@ def table_note(plan: Plan) -> str:
     )
     return (
         f"Coordinates are degrees on WGS 84.{along} {meanings}. Order is the order of drawing "
-        "within the stratum; alternates are used in that order. A jar is one sample; duplicates are "
-        "among them. UTM and degrees-minutes-seconds are in the crew's CSV file; the map to scale is in "
-        "folder crew."
+        "within the stratum; alternates are used in that order. A jar is one sample; duplicates "
+        "are among them. UTM and degrees-minutes-seconds are in the crew's CSV file; the map to "
+        "scale is in folder crew."
     )

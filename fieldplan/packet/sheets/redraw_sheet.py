@@ -65,7 +65,7 @@ def redraw_sheet(
         Verbatim("\n".join(keys(plan))),
         Paragraph(
             "Places come from office/record.json alone. Targeted places are chosen by people and "
-            "are not drawn. The plan sheet's annex tells how to draw without this program.",
+            "are not drawn. “The working” of the packet tells how to draw without this program.",
             tone="note",
         ),
     ]

@@ -89,6 +89,8 @@ def office_files(plan: Plan) -> tuple[tuple[str, str], ...]:
     return (
         ("plan_sheet.pdf", "the plan for review and sign-off"),
         ("plan_sheet.html", "the same as a page"),
+        ("working.pdf", "the working: pilot, every step, locations, samples, how to draw again"),
+        ("working.html", "the same as a page"),
         (
             f"{name}-locations.gpkg",
             "all layers with their styles, for a GIS",

@@ -10,6 +10,7 @@ from fieldplan.estimate.text import results_paragraph
 from fieldplan.packet.maps.results import results_content
 from fieldplan.packet.sheets.plan_sheet import plan_sheet
 from fieldplan.packet.sheets.results_sheet import results_sheet
+from fieldplan.packet.sheets.working_sheet import working_sheet
 from fieldplan.returns.several import Received
 from tests.factories import make_plan, make_returns
 from tests.unit.packet.sheet_text import words_of
@@ -35,7 +36,7 @@ def test_every_page_calls_an_analyte_what_its_author_typed(name: str) -> None:
     plan = replace(plan, campaign=renamed)
     answers = estimate_all(plan, Received(make_returns(), ()))
     pages = {
-        "plan sheet": words_and_figures(plan_sheet(plan)).replace(plan.campaign.plan.title, ""),
+        "plan sheet": words_and_figures(plan_sheet(plan)) + words_and_figures(working_sheet(plan)),
         "results sheet": words_and_figures(results_sheet(plan, answers)),
         "results map": results_content(plan, answers.main).title,
         "report": results_paragraph(plan, answers.main),

@@ -11,6 +11,7 @@ from fieldplan.packet.sheets.methods import methods_paragraph, rules_sentence
 from fieldplan.packet.sheets.number_section import declared_lines
 from fieldplan.packet.sheets.plan_sheet import plan_sheet
 from fieldplan.packet.sheets.rules import rules_blocks, rules_fingerprint, rules_table
+from fieldplan.packet.sheets.working_sheet import working_sheet
 from fieldplan.plan.model import Plan
 from fieldplan.stats.shape import t_coverage
 from tests.factories import make_campaign, make_plan
@@ -35,7 +36,8 @@ def page_one(plan: Plan) -> str:
 
 def test_nothing_on_the_sheet_asserts_that_rules_came_before_results():
     """It was typed by somebody; no tool was there."""
-    text = words_of(plan_sheet(dated(fixed_on=date(2026, 9, 1))))
+    plan = dated(fixed_on=date(2026, 9, 1))
+    text = words_of(plan_sheet(plan)) + words_of(working_sheet(plan))
     for claim in ("before any result was seen", "fixed before results", "Rules fixed"):
         assert claim not in text
     assert "as stated by L. Fenn, fixed on 2026-09-01: the" in text
@@ -117,7 +119,7 @@ def test_a_class_without_a_number_is_not_vouched_for():
 
 def test_no_rule_is_said_to_promise():
     """The confidence is nominal wherever the mean is not near normal."""
-    text = words_of(plan_sheet(dated()))
+    text = words_of(plan_sheet(dated())) + words_of(working_sheet(dated()))
     assert "promised for" not in text
     assert "the confidence is promised" not in text
     assert "nominal: where the mean is near normal" in text

@@ -1,14 +1,15 @@
 """Terms are explained where they first stand, once, and listed at the end of a sheet."""
 
 import re
+from collections.abc import Sequence
 
-import pytest
-
-from fieldplan.base.document import Bullets, Facts, Heading, Paragraph
+from fieldplan.base.document import Block, Bullets, Facts, Heading, Paragraph
 from fieldplan.estimate.model import Answers
 from fieldplan.packet.sheets.plan_sheet import plan_sheet
 from fieldplan.packet.sheets.results_sheet import results_sheet
+from fieldplan.packet.sheets.sections import in_working
 from fieldplan.packet.sheets.words_used import TERMS, explained, words_used
+from fieldplan.packet.sheets.working_sheet import working_sheet
 from tests.factories import make_estimate, make_plan
 from tests.unit.packet.sheet_text import text_of
 
@@ -46,17 +47,27 @@ def test_words_used_lists_what_the_sheet_uses_and_nothing_else() -> None:
     assert words_used([Paragraph("Nothing of that kind.")]) == []
 
 
-@pytest.mark.parametrize("kind", ["plan", "results"])
-def test_every_term_on_a_sheet_is_in_its_list(kind: str) -> None:
+def test_every_term_on_a_results_sheet_is_in_its_list() -> None:
     """Checked over the whole sheet, in its own words."""
+    blocks = results_sheet(make_plan(), Answers(make_estimate())).blocks
+    must_list_its_terms(blocks, blocks.index(Heading("Words used")))
+
+
+def test_every_term_on_plan_sheet_and_working_is_in_the_list_of_the_working() -> None:
+    """One list serves both; it stands before the drawing procedure."""
     plan = make_plan()
-    sheet = plan_sheet(plan) if kind == "plan" else results_sheet(plan, Answers(make_estimate()))
-    at = sheet.blocks.index(Heading("Words used"))
-    facts = sheet.blocks[at + 1]
+    blocks = (*plan_sheet(plan).blocks, *working_sheet(plan).blocks)
+    number = in_working("Words used").rpartition(" ")[2]
+    must_list_its_terms(blocks, blocks.index(Heading(f"{number}. Words used")))
+
+
+def must_list_its_terms(blocks: Sequence[Block], at: int) -> None:
+    """Look for every term in the words before the list at ``at``."""
+    facts = blocks[at + 1]
     assert isinstance(facts, Facts)
     listed = [word for word, _ in facts.rows]
     assert listed == sorted(listed, key=str.lower)
-    text = "\n".join(text_of(block) for block in sheet.blocks[:at])
-    for term in TERMS:
-        if re.search(term.pattern, text):
-            assert term.word in listed
+    text = "\n".join(text_of(block) for block in blocks[:at])
+    used = [term.word for term in TERMS if re.search(term.pattern, text)]
+    assert used
+    assert set(used) <= set(listed)

@@ -95,14 +95,14 @@ def test_no_sentence_of_the_notes_is_cut_and_nothing_is_open_any_more(paper: str
 
 
 def test_sources_give_way_whole_where_there_is_no_room() -> None:
-    """Half a source is none; the sheet has them all."""
+    """Half a source is none; the working has them all."""
     plan = make_plan()
     sources = tuple(f"layer {number} from a survey of 2019, " * 6 for number in range(12))
     plan = replace(plan, frame=replace(plan.frame, sources=sources))
     with pens():
         figures, _ = draw_pages(plan, results_content(plan, make_estimate()))
     words = " ".join(t.get_text() for axes in figures[0].axes for t in axes.texts)
-    assert "Sources: in full on the plan sheet." in words
+    assert "Sources: in full in The working, office folder." in words
     assert "layer 0" not in words
 
 
