@@ -41,7 +41,7 @@ def neighbour_weights(places: Places) -> Floats:
     Returns
     -------
     array of shape (n, n)
-        0 outside a neighbourhood; rows and columns sum to 1, to 1e-6 at least.
+        0 outside a neighbourhood; rows sum to 1, columns nearly so.
 
     Raises
     ------
@@ -76,9 +76,9 @@ def neighbour_weights(places: Places) -> Floats:
     sizes = near.sum(axis=1)[:, None]
     weights = np.where(near, (sizes - within) / sizes, 0.0)
     for _ in range(_ROUNDS):
-        weights /= weights.sum(axis=1)[:, None]
         sums = weights.sum(axis=0)
         weights /= sums
+        weights /= weights.sum(axis=1)[:, None]
         if np.abs(sums - 1).max() < _CLOSE:
             break
     return np.asarray(weights, dtype=np.float64)
