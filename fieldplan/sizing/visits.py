@@ -9,6 +9,7 @@ from fieldplan.stats.time_series import planned_factor, results_behind_sigma, si
 
 if TYPE_CHECKING:
     from fieldplan.lab.model import StratumSpread
+    from fieldplan.sizing.asked.model import Asked
     from fieldplan.sizing.question import Part
 
 ABOUT_MEANS = frozenset({"mean", "mean-and-level", "mean-and-background", "change"})
@@ -29,7 +30,8 @@ def as_visits(parts: "Sequence[Part]", entries: "Sequence[StratumSpread]") -> "t
     tuple of Part
         Sigma times √((1 + ρ)/(1 − ρ)), which gives the mean of n visits the variance that n
         independent ones of the raised sigma would have; times 1 where ρ is below 0. A pilot of
-        visits first loses what its s hides, and counts for the independent visits it is worth.
+        visits first loses what its s hides, and counts for the independent visits it is worth. A
+        list of days gives no credit for its length.
 
     Examples
     --------
@@ -55,6 +57,8 @@ def _as_visits(part: "Part", entry: "StratumSpread | None") -> "Part":
         sigma=unhidden_sigma(part.sigma, entry) * factor,
         results=_worth(entry, part.results),
         source=f"{part.source}, {words}" if part.source else words,
+        # The long-run mean is asked for, and no list of days holds all of that population.
+        population=None,
     )
 
 
@@ -69,6 +73,20 @@ def unhidden_sigma(sigma: float, entry: "StratumSpread") -> float:
     if entry.visits is None or len(entry.values) < 2:
         return sigma
     return sigma_of_series(sigma, len(entry.values), entry.visits.rho)
+
+
+def in_a_row(asked: "Asked") -> bool:
+    """Tell whether n counts visits that resemble each other, so none is independent."""
+    return any(entry.visits is not None and entry.visits.planned_rho > 0 for entry in asked.entries)
+
+
+def as_single(asked: "Asked") -> "Asked":
+    """Give what is asked with the sigma of single results, as it was before visits raised it."""
+    if not in_a_row(asked):
+        return asked
+    own = {entry.stratum: unhidden_sigma(entry.sigma, entry) for entry in asked.entries}
+    parts = tuple(replace(part, sigma=own[part.name]) for part in asked.question.parts)
+    return replace(asked, question=replace(asked.question, parts=parts))
 
 
 def _worth(entry: "StratumSpread", results: int | None) -> int | None:

@@ -19,6 +19,7 @@ from fieldplan.sizing.shapes import (
     site_shapes,
     within_lists,
 )
+from fieldplan.sizing.visits import in_a_row
 from fieldplan.sizing.words import figure, listed, typed_percent
 from fieldplan.stats.mean_shape import POINT
 
@@ -73,11 +74,11 @@ def finding(asked: Asked, size: Size) -> Finding | None:
 
 
 def judge(asked: Asked, counts: Sequence[int]) -> list[Judged]:
-    """Judge every shape that fits; none where no mean with an interval is asked for."""
+    """Judge every shape that fits; none where no mean of random results is asked for."""
     question = asked.question
     if asked.objective.question not in MEANS or not asked.sigma_known:
         return []
-    if question.takes_all(tuple(counts)) or min(counts) < 2:
+    if question.takes_all(tuple(counts)) or min(counts) < 2 or in_a_row(asked):
         return []
     return [(shape, misses(question, shape, counts)) for shape in site_shapes(asked)]
 

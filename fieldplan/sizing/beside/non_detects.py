@@ -15,6 +15,7 @@ from fieldplan.sizing.non_detects import (
     rough_share,
 )
 from fieldplan.sizing.question import Question
+from fieldplan.sizing.visits import as_single
 from fieldplan.sizing.words import percent, typed, typed_percent, with_unit
 from fieldplan.stats.censored_fit import FEWEST_DETECTS
 from fieldplan.stats.censoring_forecast import (
@@ -61,6 +62,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
         None where no limit or no mean is known, or under every model fewer than a tenth of the
         results are expected below the limit.
     """
+    asked = as_single(asked)
     question = asked.question
     counts = [entry.needed for entry in size.strata]
     limit = reporting_limit(asked)

@@ -24,7 +24,6 @@ from fieldplan.sizing.visits import ABOUT_MEANS, unhidden_sigma
 from fieldplan.sizing.words import counted, figure
 from fieldplan.stats.period_mean import period_variance_share
 from fieldplan.stats.time_series import (
-    effective_number,
     planned_factor,
     rho_at,
     visits_by_inflation,
@@ -102,7 +101,7 @@ def _declared(asked: Asked, size: Size, seen: "SeriesCorrelation | None") -> Fin
 
 def _worth(entry: "StratumSpread", visits: int) -> float:
     rho = entry.visits.planned_rho if entry.visits else 0.0
-    return effective_number(visits, rho)
+    return visits / planned_factor(rho)
 
 
 def _rhos(asked: Asked) -> str:
@@ -128,7 +127,7 @@ def _independent(entry: "StratumSpread", size: Size) -> float:
 def _amounts(asked: Asked, size: Size, worth: float) -> tuple[Amount, ...]:
     found = [
         Amount("visits", "Visits that n counts", size.needed, "visits"),
-        Amount("worth", "Independent visits that they are worth, ends counted", worth, "visits"),
+        Amount("worth", "Independent visits that they are worth, by the factor", worth, "visits"),
     ]
     if len(size.strata) > 1:
         return tuple(found)
@@ -143,7 +142,7 @@ def _amounts(asked: Asked, size: Size, worth: float) -> tuple[Amount, ...]:
             planned_factor(rho),
         ),
         *found,
-        Amount("independent", "Independent visits asked for", independent, "visits"),
+        Amount("independent", _asked_words(size), independent, "visits"),
         Amount(
             "visits_by_factor",
             "Visits by the factor",
@@ -158,6 +157,13 @@ def _amounts(asked: Asked, size: Size, worth: float) -> tuple[Amount, ...]:
         ),
         *_of_the_period(asked, size),
     )
+
+
+def _asked_words(size: Size) -> str:
+    """Say what the independent visits are: the target's, or those that a fixed number is worth."""
+    if size.number_from == "target":
+        return "Independent visits asked for"
+    return "Independent visits that these are worth, by the factor"
 
 
 def _of_the_period(asked: Asked, size: Size) -> tuple[Amount, ...]:

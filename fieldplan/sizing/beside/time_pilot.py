@@ -47,8 +47,14 @@ def of_pilot(asked: Asked, size: Size, series: VisitSeries, seen: "SeriesCorrela
 
 
 def _independent(size: Size, seen: "SeriesCorrelation", rho: float) -> float:
-    """Give the independent visits that the target asks for once s is freed of what it hides."""
+    """Give the independent visits that the target asks for once s is freed of what it hides.
+
+    The long-run mean gets no credit for the length of a list of days, so that is taken off too.
+    """
     plain = size.unrounded or float(size.needed)
+    listed = sum(entry.population or 0 for entry in size.strata)
+    if listed > plain:
+        plain /= 1 - plain / listed
     return plain * sigma_of_series(1.0, seen.n, rho) ** 2
 
 
@@ -60,7 +66,7 @@ def _answer(size: Size, seen: "SeriesCorrelation") -> str:
             "independent."
         )
     rho = max(seen.rho, 0.0)
-    would = visits_needed(_independent(size, seen, rho), rho)
+    would = visits_by_inflation(_independent(size, seen, rho), rho)
     plain = math.ceil((size.unrounded or size.needed) - 1e-9)
     return (
         f"The {apart} resemble their neighbours by {interval_words(seen)}. n takes visits as "

@@ -76,7 +76,7 @@ def test_36_independent_visits_become_75_in_the_number_itself() -> None:
     numbers = amounts(finding(asked, size))
     assert numbers["independent"] == pytest.approx(36)
     assert numbers["visits_by_factor"] == 75
-    assert numbers["worth"] == pytest.approx(effective_number(75, 0.35))
+    assert numbers["worth"] == pytest.approx(75 * 0.65 / 1.35)
     assert numbers["factor"] == pytest.approx(1.35 / 0.65)
 
 
@@ -215,7 +215,7 @@ def test_strata_count_with_their_own_correlation() -> None:
     assert found is not None
     assert [(row[0], row[1]) for row in found.rows] == [("summer", "0.35"), ("winter", "0")]
     counts = [stratum.needed for stratum in size.strata]
-    worth = effective_number(counts[0], 0.35) + counts[1]
+    worth = counts[0] * 0.65 / 1.35 + counts[1]
     assert amounts(found)["worth"] == pytest.approx(worth)
     assert 0.25 * 16 * (1 / counts[1] + 1.35 / 0.65 / counts[0]) == pytest.approx(
         (size.standard_error or 0) ** 2
