@@ -121,7 +121,8 @@ def within_180(geometry: BaseGeometry) -> BaseGeometry:
         window = shapely.box(-180 - shift, -90, 180 - shift, 90)
         part = affinity.translate(shapely.intersection(geometry, window), shift)
         kinds = (shapely.Polygon, shapely.LineString)
-        parts += [piece for piece in shapely.get_parts(part) if isinstance(piece, kinds)]
+        pieces = [piece for piece in shapely.get_parts(part) if not piece.is_empty]
+        parts += [piece for piece in pieces if isinstance(piece, kinds)]
     if all(isinstance(piece, shapely.LineString) for piece in parts):
         return shapely.MultiLineString([shapely.get_coordinates(piece) for piece in parts])
     solid = [piece for piece in parts if isinstance(piece, shapely.Polygon)]
