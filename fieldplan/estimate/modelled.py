@@ -81,18 +81,26 @@ def rule_in_force(rules: Rules, returns: Returns) -> Choice:
         ``bounds`` where nothing was modelled: by the rule, for want of non-detects, or since the
         evidence speaks for no method. Of strata the worst decides.
     """
-    samples = [s for s in stratum_samples(returns) if s.limits]
+    everything = stratum_samples(returns)
+    samples = [s for s in everything if s.limits]
     if rules.non_detects in (BOUNDS, HALF) or not samples:
-        return Choice(BOUNDS, "")
+        return Choice("bounds", "")
     if rules.non_detects in MODELLED:
         return Choice(cast(CensoredMethod, rules.non_detects), "")
+    several = len(everything) > 1
+    together = sum(len(s.detects) + len(s.limits) for s in everything) if several else None
     choices = [
-        choose_method(len(s.detects) + len(s.limits), len(s.limits), shape=rules.declared_shape)
+        choose_method(
+            len(s.detects) + len(s.limits),
+            len(s.limits),
+            shape=rules.declared_shape,
+            together=together,
+        )
         for s in samples
     ]
     pairs = zip(samples, choices, strict=True)
     worst = next(((s, c) for s, c in pairs if c.method == BOUNDS), (samples[0], choices[0]))
-    where = f"in {worst[0].stratum} " if len(stratum_samples(returns)) > 1 else ""
+    where = f"in {worst[0].stratum} " if several else ""
     return Choice(worst[1].method, f"{where}{worst[1].reason}")
 
 

@@ -221,7 +221,13 @@ def _combined(found: Modelled, unit: str) -> list[Step]:
     errors = of("SE", "of the stratum", [part.standard_error for _, part in pairs])
     lows = of("low", "end of the stratum", [part.low for _, part in pairs])
     highs = of("high", "end of the stratum", [part.high for _, part in pairs])
-    whole = found.whole
+    whole, low = found.whole, "mean − √(Σ W²·(mean − low)²)"
+    if found.method == "order-statistics":
+        low = f"the lower of {low}, by the lines of logs and of values"
+        known = [part.numbers for _, part in pairs]
+        lows = of("low by logs", "end of the stratum", [k["low_logs"] for k in known])
+        lows += of("mean by values", "of the stratum", [k["mean_values"] for k in known])
+        lows += of("low by values", "end of the stratum", [k["low_values"] for k in known])
     return [
         _step("mean", "Mean of the population", "mean = Σ W·mean", [*shares, *means], whole.mean,
               unit, _STRATA),
@@ -230,7 +236,7 @@ def _combined(found: Modelled, unit: str) -> list[Step]:
         *_ends(
             whole,
             [
-                ("low", "mean − √(Σ W²·(mean − low)²)", [*shares, *means, *lows]),
+                ("low", low, [*shares, *means, *lows]),
                 ("high", "mean + √(Σ W²·(high − mean)²)", [*shares, *means, *highs]),
             ],
             mark="", unit=unit, source=_COMBINE,

@@ -7,8 +7,10 @@ from fieldplan.estimate.modelled import METHOD_SENTENCES, Modelled
 from fieldplan.lab.words import counted
 from fieldplan.stats.censored import CensoredMethod
 from fieldplan.stats.censored_choice import (
+    FEWEST_IN_STRATUM,
     FEWEST_WITH_SHAPE,
     FEWEST_WITHOUT_SHAPE,
+    MOST_RESULTS_WITHOUT_SHAPE,
     MOST_WITH_SHAPE,
     MOST_WITHOUT_SHAPE,
 )
@@ -87,14 +89,19 @@ def held_sentence(means: Means) -> str:
     if found is None:
         return ""
     share = max(part.non_detects / part.n for part in found.parts)
+    total, several = found.whole.n, len(found.parts) > 1
     fewest = min(part.n for part in found.parts if part.non_detects)
     held, most, least = _held(found.method)
     outside = []
     if share > most:
         outside.append(f"{100 * share:.0f} % of them are non-detects")
-    if fewest < least:
-        outside.append(f"there are {fewest} results")
-    where = " in a stratum" if len(found.parts) > 1 else ""
+    if total < least:
+        outside.append(f"there are {total} results")
+    if several and fewest < FEWEST_IN_STRATUM:
+        outside.append(f"a stratum has {fewest}")
+    if found.method == "order-statistics" and total > MOST_RESULTS_WITHOUT_SHAPE:
+        outside.append(f"{total} results make the interval narrower than a wrong shape allows")
+    where = " in a stratum" if several and share > most else ""
     end = (
         f" NOT KEPT: that is for up to {100 * most:.0f} % non-detects and from {least} results "
         f"on, and here{where} {' and '.join(outside)}."
@@ -109,16 +116,16 @@ def _held(method: CensoredMethod) -> tuple[str, float, int]:
     if method == "order-statistics":
         held = (
             "In simulated samples of eight populations, lognormal, gamma, Weibull, mixed and "
-            f"normal, a 95 % interval held the true mean in 92 % or more up to "
-            f"{100 * MOST_WITHOUT_SHAPE:.0f} % non-detects and from {FEWEST_WITHOUT_SHAPE} results "
-            "on."
+            f"normal, a 95 % interval held the true mean in 92 to 98 % up to "
+            f"{100 * MOST_WITHOUT_SHAPE:.0f} % non-detects and for {FEWEST_WITHOUT_SHAPE} to "
+            f"{MOST_RESULTS_WITHOUT_SHAPE} results."
         )
         return held, MOST_WITHOUT_SHAPE, FEWEST_WITHOUT_SHAPE
     if method == "kaplan-meier":
         held = (
-            "It makes no use of a shape. With limits below all detects it gives an upper bound, "
-            "whose interval held the true mean in simulation because it is wide; elsewhere "
-            "Student's quantile falls short where results are skewed."
+            "It makes no use of a shape. In simulated samples of 30 results a 95 % interval held "
+            "the true mean in 91 % or more; with a limit below all detects, because it reaches "
+            "from 0 to the limit."
         )
         return held, MOST_WITHOUT_SHAPE, FEWEST_WITHOUT_SHAPE
     shape = method.removesuffix("-likelihood")

@@ -185,7 +185,8 @@ def weighted_mean(
     -------
     CensoredMean
         Mean Σ W·mean, standard error √Σ W²·SE², and ends by the distances recovered from the
-        parts: low = mean − √Σ W²·(mean − low)², high likewise.
+        parts: low = mean − √Σ W²·(mean − low)², high likewise. By order statistics the low end is
+        the lower of two, by the lines through logs and through values in all strata.
 
     Raises
     ------
@@ -212,15 +213,31 @@ def weighted_mean(
         raise DesignError(message)
     pairs = list(zip(parts, weights, strict=True))
     mean = math.fsum(w * part.mean for part, w in pairs)
-    below = [w * (part.mean - part.low) for part, w in pairs if part.low is not None]
+    lows = [_low_end(pairs, "low_logs"), _low_end(pairs, "low_values", about="mean_values")]
     above = [w * (part.high - part.mean) for part, w in pairs if part.high is not None]
     return CensoredMean(
         parts[0].method,
         mean,
         math.hypot(*(w * part.standard_error for part, w in pairs)),
-        None if kind == "upper-limit" else mean - math.hypot(*below),
+        None if kind == "upper-limit" else min(lows),
         None if kind == "lower-limit" else mean + math.hypot(*above),
         sum(part.n for part in parts),
         sum(part.non_detects for part in parts),
         upper_bound=any(part.upper_bound for part in parts),
     )
+
+
+def _low_end(
+    pairs: Sequence[tuple[CensoredMean, float]], low: str, *, about: str = "mean"
+) -> float:
+    """Recover the low end from those of the parts, by one of the lines where there are two.
+
+    What the choice of a line shifts, it shifts in every stratum: such shifts add, so that each line
+    is taken through all strata before the lower end is.
+    """
+    centres = [(w, part.numbers.get(about, part.mean)) for part, w in pairs]
+    ends = [part.numbers.get(low, part.low or 0.0) for part, _ in pairs]
+    reach = math.hypot(
+        *(w * (centre - end) for (w, centre), end in zip(centres, ends, strict=True))
+    )
+    return math.fsum(w * centre for w, centre in centres) - reach

@@ -162,8 +162,8 @@ def _full_fit(
     detects: Sequence[float], limits: Sequence[float], model: Model
 ) -> tuple[tuple[float, float], float, tuple[float, float, float]]:
     """Give the top of the likelihood, the scale of its place, and its second derivatives."""
-    loss, *start = _loss(detects, limits, model)
-    a, b = _top(loss, *start, model)
+    loss, place, log_spread = _loss(detects, limits, model)
+    a, b = _top(loss, place, log_spread, model)
     h = 1e-3
     s = h * math.exp(b) if model == "normal" else h
     here = loss(a, b)

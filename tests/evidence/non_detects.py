@@ -127,7 +127,7 @@ def at_half(sample: Sample) -> CensoredMean:
 
 
 def answer(sample: Sample, method: str) -> CensoredMean:
-    """Answer by a method, or by the rule that chooses one (``by-share``, ``by-share:lognormal``)."""
+    """Answer by a method, or by the rule that chooses one: ``by-share``, ``by-share:gamma``."""
     from fieldplan.stats.censored_choice import choose_method
 
     if method == "bounds":
@@ -240,7 +240,11 @@ def cells(
 def tables() -> dict[str, list[Cell]]:
     """Give the cells of every table, by its title."""
     likelihood = "lognormal-likelihood"
+    large = ("lognormal, CV 1.5", "two lognormal parts", "normal, CV 0.3")
     return {
+        "order-statistics with many results": cells(
+            "order-statistics", large, (100, 200, 500), (0.4,)
+        ),
         "lognormal-likelihood on lognormal populations": [
             *cells(likelihood, LOGNORMALS, (20, 50), (0.2, 0.4, 0.6)),
             *cells(likelihood, LOGNORMALS, (50,), (0.75,), limits=(1,)),

@@ -253,7 +253,7 @@ def test_the_fit_is_that_of_a_free_search(model):
 
 @pytest.mark.parametrize("model", ["lognormal", "gamma", "normal"])
 def test_the_ends_lie_where_scipys_likelihood_has_fallen_by_the_drop(model):
-    """Other library: densities of scipy.stats, spread by scipy.optimize, at both ends and the top."""
+    """Other library: densities of scipy.stats, spread by scipy.optimize, at ends and top."""
 
     def best(mean):
         def loss(spread):
@@ -390,7 +390,7 @@ def test_even_intervals_combine_as_standard_errors_do():
     assert (whole.low, whole.high) == pytest.approx((12.5 - 2 * error, 12.5 + 2 * error))
 
 
-# --- the choice, and coverage ----------------------------------------------------------------------
+# --- the choice, and coverage -----------------------------------------------------------------
 
 
 @pytest.mark.parametrize(
@@ -403,6 +403,9 @@ def test_even_intervals_combine_as_standard_errors_do():
         (20, 13, "lognormal", "bounds"),
         (19, 2, "gamma", "bounds"),
         (40, 20, "gamma", "gamma-likelihood"),
+        (200, 40, None, "order-statistics"),
+        (201, 40, None, "bounds"),
+        (900, 500, "gamma", "gamma-likelihood"),
         (40, 20, "normal", "normal-likelihood"),
     ],
 )
@@ -411,6 +414,15 @@ def test_share_number_and_shape_choose_the_method(n, missing, shape, method):
     choice = choose_method(n, missing, shape=shape)
     assert choice.method == method
     assert f"{missing} of {n} results are non-detects" in choice.reason
+
+
+@pytest.mark.parametrize(
+    ("n", "together", "method"),
+    [(10, 30, "order-statistics"), (9, 40, "bounds"), (12, 24, "bounds"), (60, 240, "bounds")],
+)
+def test_strata_are_counted_together_with_a_least_number_each(n, together, method):
+    """Three strata of 10 are what was simulated."""
+    assert choose_method(n, 3, together=together).method == method
 
 
 def test_more_non_detects_than_results_are_refused():
