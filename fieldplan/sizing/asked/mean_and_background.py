@@ -56,7 +56,13 @@ def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
     """
     both = TwoPopulations(asked, _table(asked))
     least = with_unit(figure(both.smallest_difference(counts)), asked.question.unit)
-    extra = f" The smallest difference told with {typed_percent(1 - both.table.beta)} is {least}."
+    surely = typed_percent(1 - both.table.beta)
+    extra = f" The smallest difference told with {surely} is {least}."
+    if both.from_above:
+        extra = (
+            f" The smallest difference that means alike are shown to lie below with {surely} is "
+            f"{least}."
+        )
     return _finding(both, counts, _answer(both, counts) + extra, ())
 
 
@@ -98,19 +104,19 @@ def _finding(
         amounts=(
             Amount("site_results", "Site results", sum(counts), "results"),
             Amount("background_results", "Background results", both.background(counts), "results"),
-            Amount("power", "Chance to tell the difference", both.power(counts)),
+            Amount("power", _power_words(both), both.power(counts)),
             Amount("chance_enough", "Chance that these are enough", both.chance_enough(counts)),
             Amount(
                 "smallest_difference",
-                f"Smallest difference told with {typed_percent(1 - both.table.beta)}",
+                _smallest_words(both),
                 both.smallest_difference(counts),
                 unit,
             ),
         ),
-        columns=("true difference", "chance to tell it"),
+        columns=("true difference", _shown_words(both)),
         rows=tuple(
             (with_unit(figure(both.table.difference * f), unit),
-             percent(both.power(counts, both.table.difference * f)))
+             percent(both.shown(counts, both.table.difference * f)))
             for f in (0.0, 0.25, 0.5, 0.75, 1.0, 1.25, 1.5)
         ),
         steps=steps,
@@ -119,6 +125,27 @@ def _finding(
         sources=sources,
         picture=_picture(both, counts),
     )  # fmt: skip
+
+
+def _shown_words(both: TwoPopulations) -> str:
+    """Name what the table and the picture give the chance of."""
+    if both.from_above:
+        apart = with_unit(typed(both.table.difference), both.asked.question.unit)
+        return f"chance to show the site to lie less than {apart} above"
+    return "chance to tell it"
+
+
+def _power_words(both: TwoPopulations) -> str:
+    if both.from_above:
+        return "Chance to show the site to lie less than the difference above, means being alike"
+    return "Chance to tell the difference"
+
+
+def _smallest_words(both: TwoPopulations) -> str:
+    surely = typed_percent(1 - both.table.beta)
+    if both.from_above:
+        return f"Smallest difference that means alike are shown to lie below with {surely}"
+    return f"Smallest difference told with {surely}"
 
 
 def _sure(both: TwoPopulations, counts: tuple[int, ...], *, counting: bool) -> str:
@@ -194,16 +221,25 @@ def _warnings(both: TwoPopulations, asked: Asked) -> tuple[str, ...]:
 def _picture(both: TwoPopulations, counts: tuple[int, ...]) -> Picture:
     table, unit = both.table, both.asked.question.unit
     xs = [2 * table.difference * k / 20 for k in range(21)]
-    ys = [100 * both.power(counts, x) for x in xs]
+    ys = [100 * both.shown(counts, x) for x in xs]
+    words = _shown_words(both)
+    way, mark, caption = (
+        "rising",
+        "must not be missed",
+        ("Chance to tell site and background apart, by their true difference."),
+    )
+    if both.from_above:
+        way, mark = "falling", "claim untrue from here"
+        caption = f"{words[0].upper()}{words[1:]} the background, by the true difference."
     return Picture(
         kind="lines",
-        caption="Chance to tell site and background apart, by their true difference.",
-        alternative=f"A rising line from {ys[0]:.0f} % at no difference to {ys[-1]:.0f} % at "
+        caption=caption,
+        alternative=f"A {way} line from {ys[0]:.0f} % at no difference to {ys[-1]:.0f} % at "
         f"{with_unit(figure(xs[-1]), unit)}.",
         x_label=f"true difference, {unit}" if unit else "true difference",
-        y_label="chance to tell it, %",
+        y_label=f"{words}, %",
         series=(Series(f"{sum(counts)} and {both.background(counts)}", tuple(xs), tuple(ys)),),
-        marks=(("must not be missed", table.difference),),
+        marks=((mark, table.difference),),
         levels=(("wanted", 100 * (1 - table.beta)),),
     )
 

@@ -122,6 +122,24 @@ class TwoPopulations:
             sides=self.sides,
         )
 
+    @property
+    def from_above(self) -> bool:
+        """Whether the site is taken to lie above until results show otherwise."""
+        return self.table.assume == "above-background"
+
+    def shown(self, counts: tuple[int, ...], true: float) -> float:
+        """Give the chance that results leave the assumption, at a true difference.
+
+        Parameters
+        ----------
+        counts : tuple of int
+            Results by stratum of the site.
+        true : float
+            Site mean less background mean. Where the site is taken to lie above, the test starts
+            from the stated difference, so the distance from it counts, downwards.
+        """
+        return self.power(counts, self.table.difference - true if self.from_above else true)
+
     def _as_one_sample(self, counts: tuple[int, ...]) -> tuple[int, float]:
         """Give the simple sample that has the standard error and degrees of freedom of these."""
         precision = Precision(self.asked.question, factor=self.factor)

@@ -238,3 +238,32 @@ def test_what_cannot_be_compared_is_refused() -> None:
         count(both(parts=listed(14), difference=1.0))
     with pytest.raises(DesignError, match="more than 10000000 results"):
         count(both(difference=1e-4))
+
+
+def test_chances_by_true_difference_fall_where_the_site_is_taken_to_lie_above() -> None:
+    """Closed form: noncentral t of scipy, shifted by the true difference less the stated one."""
+    asked = both(parts=UNIT, difference=1.0, assume="above-background", variances="alike")
+    needed = count(asked).needed
+    n = sum(needed)
+    found = bought(asked, needed)
+    point = stats.t.ppf(0.05, 2 * n - 2)
+    for cells, times in zip(found.rows, (0, 0.25, 0.5, 0.75, 1, 1.25, 1.5), strict=True):
+        exact = stats.nct.cdf(point, 2 * n - 2, (times - 1.0) / math.sqrt(2 / n))
+        assert float(cells[1].removesuffix(" %")) == pytest.approx(100 * exact, abs=0.51)
+    assert found.picture is not None
+    ys = found.picture.series[0].y
+    assert list(ys) == sorted(ys, reverse=True)
+    assert ys[0] >= 80.0
+    assert ys[10] == pytest.approx(5.0)  # at the stated difference: alpha
+    assert "A falling line" in found.picture.alternative
+    assert "less than 1 mg/kg above" in found.columns[1]
+
+
+@pytest.mark.parametrize("words", [{"test": "ranks"}, {"background_sigma": 2.0}])
+def test_site_at_the_stated_difference_is_shown_below_it_with_alpha(words) -> None:
+    """Invariant: at the edge of the assumption the chance to leave it is alpha."""
+    asked = both(parts=UNIT, difference=1.0, assume="above-background", **words)
+    answered = count(asked)
+    chances = [cells[1] for cells in answered.finding.rows]
+    assert chances[4] == "5 %"
+    assert float(chances[0].removesuffix(" %")) >= 80
