@@ -96,8 +96,8 @@ def test_comparison_names_one_layout_and_measures_all_that_fit(run: Run) -> None
     printed, told = run(SOIL, "--compare")
     lines = printed.splitlines()
     assert "leaves the smallest gap" in lines[0]
-    assert [line.split()[0] for line in lines[-3:]] == [
-        "stratified", "square-grid", "triangular-grid",
+    assert [line.split()[0] for line in lines[-5:]] == [
+        "stratified", "square-grid", "triangular-grid", "compact-strata", "balanced-list",
     ]  # fmt: skip
     assert "no credit" in " ".join(told.split())
     found = json.loads(run(SOIL, "--compare", "--json")[0])
