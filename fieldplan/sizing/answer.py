@@ -1,5 +1,7 @@
 """From a question to the whole answer."""
 
+from collections.abc import Sequence
+
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.conditions import conditions
 from fieldplan.sizing.counting import Counts, assured_counts, control_counts, count, total_cost
@@ -9,7 +11,7 @@ from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Question
 from fieldplan.sizing.sentences import sentences
 from fieldplan.sizing.steps import steps
-from fieldplan.sizing.together import CHOOSING, face_value, joint_balance
+from fieldplan.sizing.together import CHOOSING, everyone, face_value, joint_balance
 from fieldplan.sizing.words import target_words
 from fieldplan.stats.allocation import unrounded_shares, unrounded_total
 from fieldplan.stats.intervals import t_quantile
@@ -101,9 +103,15 @@ def _assured(question: Question) -> tuple[AssuredSize, ...]:
         except DesignError:  # more than can be had; the chosen one has been counted before
             continue
         if counts is not None:
-            chance = Precision(question).chance(counts)
-            found.append(AssuredSize(assurance, sum(counts), chance))
+            found.append(AssuredSize(assurance, sum(counts), _least_chance(question, counts)))
     return tuple(found)
+
+
+def _least_chance(question: Question, counts: Sequence[int]) -> float | None:
+    """Give the chance that counts are enough; of several deciding analytes the least sure one's."""
+    chances = [Precision(member).chance(counts) for member in everyone(question)]
+    known = [chance for chance in chances if chance is not None]
+    return min(known) if known else None
 
 
 def _target_standard_error(question: Question, plain: tuple[int, ...]) -> float | None:

@@ -118,7 +118,7 @@ def plain_counts(question: Question) -> list[int]:
 
 
 def assured_counts(question: Question, assurance: float | None) -> list[int] | None:
-    """Count the results that meet the target with the stated chance.
+    """Count the results that meet the target with the stated chance, for each deciding analyte.
 
     Parameters
     ----------
@@ -135,7 +135,11 @@ def assured_counts(question: Question, assurance: float | None) -> list[int] | N
     if assurance is None or question.target == "budget":
         return None
     if weighs(question):
-        return weighed_counts(replace(question, assurance=assurance))
+        others = tuple(
+            other if other.pilots is None else replace(other, assurance=assurance)
+            for other in question.also
+        )
+        return weighed_counts(replace(question, assurance=assurance, also=others))
     known = question.pilots is None
     if known and question.target_half_width is None:
         return None

@@ -155,7 +155,11 @@ def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
     subject = f" for {question.analyte}" if question.also else ""
     opening = f"The chance that {needed} are enough{subject} is {percent(chance)} {condition}"
     if question.also:
-        return f"{opening}, sigma being known from {behind} only."
+        plain_chance = precision.chance(counts.plain) or 0.0
+        return (
+            f"{opening}, sigma being known from {behind} only; with every sigma at face value "
+            f"{plain} would do, enough for {question.analyte} in {percent(plain_chance)}."
+        )
     if needed != plain or question.assurance is not None:
         plain_chance = precision.chance(counts.plain) or 0.0
         return (

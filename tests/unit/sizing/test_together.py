@@ -346,3 +346,23 @@ def test_prices_by_stratum_stand_for_the_common_ones() -> None:
     aimed = 1  # the targeted place, at the common price
     by_hand = 400 + (meadow + aimed) * 75 + yard * 135 + controls * 45
     assert found.cost == pytest.approx(by_hand)
+
+
+def test_the_number_for_each_assurance_is_the_one_that_choosing_it_gives() -> None:
+    """Source: the same question with that assurance chosen for every analyte."""
+    known = {"results": (8, 8, 8)}
+    zinc = Question(
+        parts(ZINC, **known), "standard_error", 6.0, allocation="neyman", analyte="zinc",
+        assurance=0.8,
+    )  # fmt: skip
+    asked = Question(
+        parts(LEAD, **known), "standard_error", 6.0, allocation="neyman", analyte="lead",
+        assurance=0.8, also=(zinc,),
+    )  # fmt: skip
+    listed = answer(asked).assured
+    assert [entry.assurance for entry in listed] == [0.67, 0.8, 0.9]
+    for entry in listed:
+        others = (replace(zinc, assurance=entry.assurance),)
+        chosen = answer(replace(asked, assurance=entry.assurance, also=others))
+        assert chosen.needed == entry.n
+        assert (entry.chance or 0) >= entry.assurance
