@@ -5,11 +5,10 @@ from collections.abc import Sequence
 
 from fieldplan.packet.sheets.amounts import percent, rounded
 from fieldplan.packet.sheets.plan_words import every_unit
-from fieldplan.packet.sheets.sections import in_working
 from fieldplan.plan.model import Plan
 
-ROOM = 400
-"""Characters of four printed lines, the reference to the working left out."""
+ROOM = 420
+"""Characters of four printed lines."""
 
 
 _SENTENCE_END = re.compile(r"(?<!\bsec)(?<!\bsecs)(?<!\bch)(?<!\bed)\.\s+(?=[A-Z0-9])")
@@ -46,8 +45,7 @@ def shortened(conditions: Sequence[str], declared: Sequence[str] = ()) -> str:
         opening = _SENTENCE_END.split(line)[0].removesuffix(".") + "."
         if len(" ".join([*kept, opening])) <= ROOM:
             kept.append(opening)
-    where = in_working("The number in full")
-    return " ".join([*kept, f"All {len(every)} conditions with their figures: {where}."])
+    return " ".join(kept)
 
 
 def declared_lines(plan: Plan) -> list[str]:

@@ -87,10 +87,11 @@ def number_blocks(plan: Plan) -> list[Block]:
     blocks += finding_blocks(size.findings, answered=size.number_from == "question")
     if short := shortened(size.conditions, declared_lines(plan)):
         blocks += [Heading("Under what condition", level=2), Paragraph(short)]
-    where = (
-        f"Target, counts and every step: {in_working('The number in full')}. Numbers, tables and "
-        f"sources of what stands beside it: {in_working('Beside the number')}."
-    )
+    count, step = len(condition_lines(plan)), in_working("The number in full")
+    every = "" if count < 2 else f"All {count} conditions and every step: "
+    where = f"{every or 'Every step: '}{step}."
+    if size.findings:
+        where += f" Numbers, tables and sources of the rest: {in_working('Beside the number')}."
     return [*blocks, Paragraph(where, tone="note")]
 
 
@@ -192,11 +193,11 @@ def other_blocks(plan: Plan) -> list[Block]:
     table = Table(
         columns,
         tuple(other_row(plan, other) for other in others),
-        caption=f"What {counted(plan.size.needed, 'result')} buy beside {beside}",
+        caption="Other analytes and objectives: what "
+        f"{counted(plan.size.needed, 'result')} buy beside {beside}",
     )
-    heading = Heading("Other analytes and objectives", level=2)
     more = [o.sentence for o in others if o.falls_short or o.standard_error is None]
-    return [heading, table, *([Bullets(tuple(more))] if more else [])]
+    return [table, *([Bullets(tuple(more))] if more else [])]
 
 
 def other_row(plan: Plan, other: OtherPrecision) -> tuple[str, ...]:

@@ -9,7 +9,7 @@ from fieldplan.packet.sheets.methods import limits_blocks
 from fieldplan.packet.sheets.number_section import number_blocks, spread_blocks
 from fieldplan.packet.sheets.place_section import draw_blocks
 from fieldplan.packet.sheets.question_section import population_blocks, question_blocks
-from fieldplan.packet.sheets.rules import rules_blocks
+from fieldplan.packet.sheets.rules import recorded_blocks
 from fieldplan.packet.sheets.sections import SHEET
 from fieldplan.packet.sheets.words_used import explained
 from fieldplan.plan.model import Plan
@@ -35,7 +35,7 @@ def plan_sheet(plan: Plan) -> Document:
         number_blocks(plan),
         draw_blocks(plan),
         deviation_blocks(plan),
-        rules_blocks(plan.campaign.rules),
+        recorded_blocks(plan.campaign.rules),
         caution_blocks(plan),
         [sign_off(plan)],
     )

@@ -148,6 +148,18 @@ def stated(rules: Rules, *, first_day: date | None = None) -> str:
 
 def rules_blocks(rules: Rules) -> list[Block]:
     """Set the table, who fixed it and when, and how to check its fingerprint."""
+    return [*recorded_blocks(rules), Paragraph(RECIPE, tone="note")]
+
+
+RECIPE = (
+    "The fingerprint is the start of the SHA-256 of the [rules] table, written as lines “key = "
+    "value” in the order of the alphabet (fixed_by and fixed_on among them; what was not typed is "
+    "left empty) and joined by line feeds."
+)
+
+
+def recorded_blocks(rules: Rules) -> list[Block]:
+    """Set the table, and who fixed it when."""
     return [
         rules_table(rules),
         Facts(
@@ -158,10 +170,4 @@ def rules_blocks(rules: Rules) -> list[Block]:
             )
         ),
         Paragraph(UNVERIFIED),
-        Paragraph(
-            "The fingerprint is the start of the SHA-256 of the [rules] table, written as "
-            "lines “key = value” in the order of the alphabet (fixed_by and fixed_on among them; "
-            "what was not typed is left empty) and joined by line feeds.",
-            tone="note",
-        ),
     ]

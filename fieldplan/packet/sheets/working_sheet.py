@@ -12,7 +12,7 @@ from fieldplan.packet.sheets.place_section import location_blocks
 from fieldplan.packet.sheets.plan_sheet import numbered, plan_sheet, subtitle
 from fieldplan.packet.sheets.quality_section import quality_blocks
 from fieldplan.packet.sheets.question_section import population_detail
-from fieldplan.packet.sheets.rules import rules_fingerprint
+from fieldplan.packet.sheets.rules import RECIPE, rules_fingerprint
 from fieldplan.packet.sheets.sections import WORKING
 from fieldplan.packet.sheets.words_used import words_used
 from fieldplan.plan.model import Plan
@@ -72,6 +72,7 @@ def opening_blocks(plan: Plan) -> Sequence[Block]:
                 ("Fingerprint of the rules", rules_fingerprint(plan.campaign.rules)),
             )
         ),
+        Paragraph(RECIPE, tone="note"),
     )
 
 
