@@ -353,6 +353,11 @@ def _other_limit(decision: LevelDecision) -> str:
             f"{decision.table.test.replace('-', ' ')} test itself is not run by estimate."
         )
     question = decision.asked.question
+    if question.widened:
+        return (
+            f"These chances are of Student's t; [rules] fix {question.mean_interval}, whose ends "
+            "lie farther out on the side of a long tail: expect fewer claims there."
+        )
     alpha, _ = decision.risks
     kind = f"{_limit_name(decision)}-limit"
     if question.interval == "two-sided":

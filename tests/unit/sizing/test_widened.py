@@ -9,6 +9,7 @@ import pytest
 
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.answer import answer
+from fieldplan.sizing.asked.mean_and_level import count
 from fieldplan.sizing.beside import findings_beside
 from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.question import Part, Question
@@ -166,3 +167,12 @@ def test_misses_of_the_fixed_interval_are_simulated() -> None:
     found = misses(wide(), SiteShape("gamma with 30 % zeros", (shape,)), (20,))
     assert 0.93 < found.held < 1.0
     assert found.too_low + found.too_high == pytest.approx(1 - found.held)
+
+
+def test_a_test_against_a_level_says_that_its_chances_are_students() -> None:
+    """The number is by the t test; the limit that will be reported is another one."""
+    asked = asked_numbers(
+        question="mean-and-level", sigma=12.0, mean=15.0, area=5000.0, layout="simple-random",
+        level=30.0, keys=("assume=above-level", "gray_edge=20", "alpha=0.05", "beta=0.2", *KEYS),
+    )  # fmt: skip
+    assert any("[rules] fix skew-widened" in line for line in count(asked).finding.warnings)
