@@ -1,7 +1,7 @@
 """Coverage and bias of means with non-detects; regenerates the tables of docs/evidence.
 
-Run ``python -m tests.evidence.non_detects 2000 > tables.md`` (samples a cell; about 20 minutes on
-two cores). Fixed seeds: the same number gives the same tables.
+Run ``python -m tests.evidence.non_detects 1200`` (samples a cell; 20 minutes on two cores); with
+``every`` behind it each cell has its row. Fixed seeds: the same number gives the same tables.
 """
 
 import math
@@ -284,8 +284,46 @@ def tables() -> dict[str, list[Cell]]:
     }
 
 
-if __name__ == "__main__":
+SHORT = (
+    "| population | n | below | bias % | coverage % | refused % |\n"
+    "| --- | --- | --- | --- | --- | --- |"
+)
+
+
+def condensed(found: Sequence[Found]) -> list[str]:
+    """Write one row for each population and share: the range over n and limits."""
+    groups: dict[tuple[str, float], list[Found]] = {}
+    for one in found:
+        groups.setdefault((one.cell.population, one.cell.share), []).append(one)
+    rows = []
+    for (population, share), group in groups.items():
+        sizes = sorted({one.cell.n for one in group})
+        strata = f"{group[0].cell.strata} × " if group[0].cell.strata > 1 else ""
+        refused = [100 * one.refused for one in group]
+        rows.append(
+            f"| {population} | {strata}{', '.join(map(str, sizes))} | {share:.0%} | "
+            f"{span([100 * one.bias for one in group], '+.1f')} | "
+            f"{span([100 * one.coverage for one in group], '.1f')} | {span(refused, '.1f')} |"
+        )
+    return rows
+
+
+def span(values: Sequence[float], form: str) -> str:
+    """Write the smallest and the largest of some numbers."""
+    low, high = format(min(values), form), format(max(values), form)
+    return low if low == high else f"{low} to {high}"
+
+
+def main(repetitions: int, *, every: bool) -> None:
+    """Print all tables, condensed or with every cell."""
     for title, chosen in tables().items():
-        print(f"\n### {title}\n\n{HEAD}")
-        for result in run(chosen, int(sys.argv[1]) if len(sys.argv) > 1 else 2000):
-            print(row(result), flush=True)
+        print(f"\n### {title}\n\n{HEAD if every else SHORT}", flush=True)
+        if every:
+            for result in run(chosen, repetitions):
+                print(row(result), flush=True)
+        else:
+            print("\n".join(condensed(list(run(chosen, repetitions)))), flush=True)
+
+
+if __name__ == "__main__":
+    main(int(sys.argv[1]) if len(sys.argv) > 1 else 1200, every="every" in sys.argv[2:])
