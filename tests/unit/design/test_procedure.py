@@ -254,12 +254,12 @@ def test_words_for_a_census_say_that_nothing_is_drawn() -> None:
 
 
 def test_pseudocode_fits_a_page_and_a_terminal() -> None:
-    """The annex is set in a fixed-width face on A4."""
+    """The working is set in a fixed-width face on A4."""
     assert max(map(len, procedure_pseudocode().splitlines())) <= 88
 
 
 def test_documentation_holds_the_same_lines() -> None:
-    """A reviewer reads docs/drawing.md or the annex; both must be the procedure that was tested."""
+    """A reviewer reads docs/drawing.md or the working; both must be the procedure that was tested."""
     page = Path(__file__).parents[3] / "docs" / "drawing.md"
     assert f"```text\n{procedure_pseudocode()}```" in page.read_text(encoding="utf-8")
 
