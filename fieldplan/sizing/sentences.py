@@ -54,6 +54,7 @@ def sentences(
     lines += [
         expected_precision(question, counts),
         _floor(question, counts),
+        _ceiling(question, counts),
         money_words(question, counts),
     ]
     lines += _short_lists(question, counts)
@@ -242,6 +243,29 @@ def _floor(question: Question, counts: Counts) -> str:
     if extra <= 0:
         return ""
     return f"The floor of {question.floor} in every stratum costs {extra} more than {without}."
+
+
+def _ceiling(question: Question, counts: Counts) -> str:
+    """Say which strata are held at their most, and what that costs."""
+    held = [
+        f"{part.name} at {part.most}"
+        for part, planned in zip(question.parts, counts.planned, strict=True)
+        if part.most is not None and planned >= part.most
+    ]
+    if not held or question.census or question.locations is not None:
+        return ""
+    line = f"[design.most] holds {listed(held)} locations"
+    if question.target == "budget":
+        return f"{line}."
+
+    def free(one: Question) -> Question:
+        return replace(one, parts=tuple(replace(part, most=None) for part in one.parts))
+
+    without = sum(
+        needed_counts(replace(free(question), also=tuple(free(o) for o in question.also)))
+    )
+    extra = sum(counts.needed) - without
+    return f"{line}; without it {without} results would do." if extra > 0 else ""
 
 
 def _money_words(question: Question, amount: float) -> str:

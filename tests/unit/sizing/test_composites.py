@@ -228,7 +228,7 @@ def test_a_stated_chance_is_about_kept_by_simulated_pilots(increments: int, lowe
 
 
 def test_a_typed_analysis_leaves_the_pilot_of_the_whole_to_hold_the_chance():
-    """Source: simulation: pilots of 8 single samples, the analysis exact; at least the stated 80 %."""
+    """Source: simulation: pilots of 8 single samples, the analysis exact; 80 % or more."""
     rng = np.random.default_rng(8)
     between, analysis, k, target = 26.0, 5.0, 3, 3.0
     true = math.sqrt(between**2 / k + analysis**2)

@@ -366,3 +366,15 @@ def test_the_number_for_each_assurance_is_the_one_that_choosing_it_gives() -> No
         chosen = answer(replace(asked, assurance=entry.assurance, also=others))
         assert chosen.needed == entry.n
         assert (entry.chance or 0) >= entry.assurance
+
+
+def test_a_ceiling_that_costs_results_is_named_with_what_would_do_without() -> None:
+    """Source: by hand: a at 4, SE² = (0.5·30)²/4 + (0.5·10)²/n at most 60 asks for n = 7 in b."""
+    a, b = Part("a", 0.5, 30.0, most=4), Part("b", 0.5, 10.0)
+    bound = Question((a, b), "standard_error", 60.0**0.5, allocation="neyman")
+    free = replace(bound, parts=(replace(a, most=None), b))
+    found, without = answer(bound), answer(free).needed
+    assert [entry.needed for entry in found.strata] == [4, 7]
+    assert without < 11
+    line = f"[design.most] holds a at 4 locations; without it {without} results would do."
+    assert line in found.sentences

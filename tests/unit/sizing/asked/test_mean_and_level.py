@@ -326,7 +326,7 @@ def test_a_region_too_narrow_for_any_campaign_is_refused() -> None:
 @pytest.mark.parametrize("edge", [10.0, 30.0, 60.0, 100.0])
 @pytest.mark.parametrize("test", ["sign", "signed-rank"])
 def test_ranks_keep_beta_where_the_gray_region_is_wide(edge: float, test: str) -> None:
-    """t may need only 3 or 4 results, from which no rank test ever reaches alpha."""
+    """Student's t may need only 3 or 4 results, from which no rank test ever reaches alpha."""
     question = asked(gray_edge=edge, test=test)
     n = sum(count(question).needed)
     assert n >= 5
