@@ -45,12 +45,12 @@ def cells_of(name: str, group: list[Population], n: int, repetitions: int) -> Ce
         for block in drawn(population, n, repetitions=repetitions, seed=seed):
             for kind in KINDS:
                 for rule, level in [(name, c) for c in LEVELS] + [(r, 0.95) for r in OTHERS]:
-                    counted, width = held(population, rule, n, kind, found=block, confidence=level)
+                    kept, wide = held(population, rule, n, kind, found=block, confidence=level)
                     own = sums[rule, kind, level, n]
-                    own[0] += counted
-                    own[1] += width
-        for key, (counted, width) in sums.items():
-            found[key].append((counted / repetitions, width / repetitions))
+                    own[0] += kept
+                    own[1] += wide
+        for key, (kept_in_all, width) in sums.items():
+            found[key].append((kept_in_all / repetitions, width / repetitions))
     return found
 
 
@@ -124,7 +124,9 @@ def write_shipped(lines: list[str], counts: dict[str, int]) -> None:
     text += f"POPULATIONS = {counts!r}\n".replace("'", '"')
     text += '"""Simulated of each class."""\n\n'
     text += 'TABLE = """\\\n' + "\n".join(lines) + '\n"""\n'
-    text += '"""Class, kind, confidence, n; held in the worst population and the middle one, 10⁻⁴."""\n'
+    text += (
+        '"""Class, kind, confidence, n; held in the worst population and the middle one, 10⁻⁴."""\n'
+    )
     SHIPPED.write_text(text, encoding="utf-8")
 
 
