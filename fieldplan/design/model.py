@@ -194,13 +194,43 @@ class StartVariance:
 
 
 @dataclass(frozen=True)
+class SpreadVariance:
+    """How the variance of one stratum's mean came from places that were spread over it.
+
+    Parameters
+    ----------
+    stratum : str
+    rule : str
+        ``neighbours``, ``covariance``, or ``census`` where all units were visited.
+    variance : float
+        Of the stratum's mean.
+    degrees_of_freedom : float
+    local : float
+        Standard deviation of single results among their neighbours, or in the square that one
+        location stands for.
+    practical_range_m, nugget, sigma, inside : float
+        Averaged over the curves; 0 for neighbours.
+    """
+
+    stratum: str
+    rule: Literal["neighbours", "covariance", "census"]
+    variance: float
+    degrees_of_freedom: float
+    local: float
+    practical_range_m: float = 0.0
+    nugget: float = 0.0
+    sigma: float = 0.0
+    inside: float = 0.0
+
+
+@dataclass(frozen=True)
 class MeanEstimate:
     """The mean of the population by the recorded design.
 
     ``degrees_of_freedom`` is n − 1, or Satterthwaite's for strata; infinite for a census.
     ``method`` and ``caution`` are sentences for the sheet. ``cell_variances``, one a stratum, are
     there where the layout cut cells and its variance takes credit for them; ``start_variances``
-    where it has several random starts.
+    where it has several random starts, ``spread_variances`` where it spread the places.
     """
 
     n: int
@@ -212,6 +242,7 @@ class MeanEstimate:
     caution: str = ""
     cell_variances: tuple[CellVariance, ...] = ()
     start_variances: tuple[StartVariance, ...] = ()
+    spread_variances: tuple[SpreadVariance, ...] = ()
 
 
 class Layout(Protocol):

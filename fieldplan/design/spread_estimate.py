@@ -2,13 +2,18 @@
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import Literal
 
 import numpy as np
 
 from fieldplan.base.errors import DesignError
-from fieldplan.design.model import MeanEstimate, StratumEstimate, StratumValues
+from fieldplan.design.model import (
+    MeanEstimate,
+    SpreadVariance,
+    StratumEstimate,
+    StratumValues,
+)
 from fieldplan.design.strata import needs_spread, weighted_mean
 from fieldplan.stats.cell_variance import (
     can_weigh_curves,
@@ -41,6 +46,7 @@ WIDE = (
     "Neighbours differ by more than the mean can wander, so that this standard error is usually "
     "somewhat too large."
 )
+CAUTIONS = {"covariance": MODELLED, "neighbours": WIDE}
 LONE = (
     "A stratum kept a single result, so that no stratum gets credit for the layout: mean and "
     "interval are computed by the formula for random places."
@@ -49,15 +55,6 @@ NO_CREDIT = (
     "For comparison only, no credit for the layout: the formula for simple random places gives a "
     "standard error {times:.2f} times as large."
 )
-
-
-@dataclass(frozen=True)
-class _Found:
-    """Variance of one stratum's mean, what it knows, and whether it fell back to neighbours."""
-
-    variance: float
-    degrees_of_freedom: float
-    falls_back: bool
 
 
 def estimate_spread(
@@ -119,7 +116,8 @@ def estimate_spread(
         standard_error=error,
         degrees_of_freedom=freedom_of_small_parts(*zip(*parts, strict=True)),
         strata=entries,
-        caution=_caution(strata, found, rule, times=_ratio(plain.standard_error, error)),
+        spread_variances=tuple(found),
+        caution=_caution(found, rule, times=_ratio(plain.standard_error, error)),
     )
 
 
@@ -127,10 +125,10 @@ def _ratio(plain: float, error: float) -> float:
     return plain / error if error > 0 else 0.0
 
 
-def _stratum(stratum: StratumValues, rule: SpreadRule) -> _Found:
+def _stratum(stratum: StratumValues, rule: SpreadRule) -> SpreadVariance:
     n = stratum.values.size
     if stratum.population == n:
-        return _Found(0.0, math.inf, falls_back=False)
+        return SpreadVariance(stratum.stratum, "census", 0.0, math.inf, 0.0)
     if stratum.coordinates is None:
         message = (
             f"stratum '{stratum.stratum}' has no record of its places; use the record of the "
@@ -152,18 +150,33 @@ def _stratum(stratum: StratumValues, rule: SpreadRule) -> _Found:
             np.full(n, 1.0 / n),
             area=stratum.measure,
         )
-        return _Found(curves.variance, curves.degrees_of_freedom, falls_back=False)
+        return SpreadVariance(
+            stratum=stratum.stratum,
+            rule="covariance",
+            variance=curves.variance,
+            degrees_of_freedom=curves.degrees_of_freedom,
+            local=math.sqrt(curves.variance * n),
+            practical_range_m=curves.practical_range,
+            nugget=curves.nugget,
+            sigma=curves.sigma,
+            inside=curves.inside,
+        )
     near = neighbour_variance(stratum.values, stratum.coordinates)
     left = 1.0 if stratum.population is None else 1.0 - n / stratum.population
-    return _Found(near.variance * left, near.degrees_of_freedom, falls_back=rule == "covariance")
+    return SpreadVariance(
+        stratum=stratum.stratum,
+        rule="neighbours",
+        variance=near.variance * left,
+        degrees_of_freedom=near.degrees_of_freedom,
+        local=math.sqrt(near.variance * n),
+    )
 
 
-def _caution(
-    strata: Sequence[StratumValues], found: Sequence[_Found], rule: SpreadRule, *, times: float
-) -> str:
+def _caution(found: Sequence[SpreadVariance], rule: SpreadRule, *, times: float) -> str:
     """Say where the standard error is known to be off, what fell back, and the contrast."""
-    back = [f"'{s.stratum}'" for s, f in zip(strata, found, strict=True) if f.falls_back]
-    lines = [WIDE if rule == "neighbours" or len(back) == len(strata) else MODELLED]
+    took = {entry.rule for entry in found}
+    back = [f"'{f.stratum}'" for f in found if f.rule == "neighbours" and rule == "covariance"]
+    lines = [words for name, words in CAUTIONS.items() if name in took]
     if back:
         lines.append(
             "Curves can be weighed for an area with 20 to 400 results that differ; "

@@ -122,7 +122,7 @@ def difference_sentences(
     parts = split_difference(plan, mean, planned=planned)
     if parts is None:
         return tuple(line for line in lines if line)
-    by_layout = mean.cell_variances or mean.start_variances
+    by_layout = mean.cell_variances or mean.start_variances or mean.spread_variances
     rest = "what the layout made of it" if by_layout else "a spread borrowed or planned otherwise"
     lines.append(
         f"Achieved is {_times(parts.ratio)} times planned: {_times(parts.number)} from the number "

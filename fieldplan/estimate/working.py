@@ -7,6 +7,7 @@ from fieldplan.design.model import StratumEstimate, StratumValues
 from fieldplan.estimate.cell_steps import cell_error_steps, cell_freedom_step, cell_mean_step
 from fieldplan.estimate.means import Means
 from fieldplan.estimate.modelled_steps import modelled_steps
+from fieldplan.estimate.spread_steps import spread_freedom_step, spread_steps
 from fieldplan.estimate.start_steps import start_freedom_step, start_steps
 from fieldplan.estimate.widened import is_widened
 from fieldplan.estimate.widened_steps import widened_steps
@@ -55,6 +56,8 @@ def _error_steps(means: Means, unit: str) -> list[Step]:
     """Show the standard error by the rule of the layout."""
     if means.half.cell_variances:
         return cell_error_steps(means, unit)
+    if means.half.spread_variances:
+        return spread_steps(means, unit)
     between = bool(means.half.start_variances)
     return start_steps(means, unit) if between else [_standard_error(means, unit)]
 
@@ -208,6 +211,8 @@ def _interval_steps(means: Means, unit: str) -> list[Step]:
 
 def _freedom_step(means: Means, unit: str) -> Step:
     strata, known = means.half.strata, means.half.degrees_of_freedom
+    if means.half.spread_variances:
+        return spread_freedom_step(means)
     if means.half.start_variances:
         return start_freedom_step(means)
     if means.half.cell_variances:
