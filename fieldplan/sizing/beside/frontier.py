@@ -178,21 +178,17 @@ def _answer(compared: _Compared) -> str:
 
 
 def _one_kind(compared: _Compared) -> str:
-    """Say what a quarter less and a quarter more money would do."""
+    """Say what money within a quarter, less and more, would do."""
     (row,) = compared.rows.values()
-    known = {
-        word: most_precise(row, factor * compared.own.cost)
-        for word, factor in (("less", 0.75), ("more", 1.25))
-    }
+    known = [most_precise(row, factor * compared.own.cost) for factor in (0.75, 1.25)]
     lines = [
-        f"a quarter {word} money ({compared.money(design.cost)}) a "
-        f"{compared.precision(compared.wanted.of(design))}"
-        for word, design in known.items()
+        f"{compared.money(design.cost)} a {compared.precision(compared.wanted.of(design))}"
+        for design in known
         if design is not None
     ]
     reached = compared.precision(compared.wanted.of(compared.own))
     start = f"This plan buys a {reached} for {compared.money(compared.own.cost)}"
-    return ", ".join([start, *lines]) + "."
+    return f"{start}; {listed(lines)}." if lines else f"{start}."
 
 
 def _cheapest_words(compared: _Compared, best: PricedDesign | None) -> str:
@@ -343,5 +339,5 @@ def _picture(compared: _Compared) -> Picture:
             series("", best, "points"),
             series("this plan", [compared.own], "points"),
         ),
-        levels=((f"{with_unit(figure(wanted.value), compared.unit)} wanted", wanted.value),),
+        levels=((f"{with_unit(figure(wanted.value), compared.unit)}, this plan", wanted.value),),
     )

@@ -102,15 +102,15 @@ def test_the_picture_has_a_line_for_each_kind_and_one_point_for_the_plan() -> No
     assert len(inside) > 20
     for cost, error in inside:
         assert any(c <= cost and e <= error * (1 + 1e-9) for c, e in best)
-    assert picture.levels == (("9.00 wanted", 9.0),)
+    assert picture.levels == (("9.00, this plan", 9.0),)
 
 
 def test_one_kind_has_a_sentence_about_money_and_no_picture() -> None:
     """25 results cost 2600; for 0.75 and 1.25 times that 17 and 32 are had (traced numbers)."""
     finding = found(sigma=20.0, standard_error=4.0, keys=PRICES)
     assert finding is not None
-    assert finding.answer.startswith("This plan buys a standard error of 4.00 for 2600 EUR, ")
-    assert "a quarter less money (1864 EUR) a standard error of 4.85" in finding.answer
+    assert finding.answer.startswith("This plan buys a standard error of 4.00 for 2600 EUR; ")
+    assert "1864 EUR a standard error of 4.85" in finding.answer
     assert finding.picture is None
 
 
