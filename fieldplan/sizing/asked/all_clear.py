@@ -10,6 +10,7 @@ from fieldplan.sizing.asked.counting_claims import (
     WILKS,
     chance_noticed,
     claim_holds,
+    claimed_share,
     counting_assumptions,
     counts_that_notice,
     exceeding_units,
@@ -119,7 +120,8 @@ def _claimed(asked: Asked, counts: tuple[int, ...], confidence: float) -> str:
     """Say what so many results could claim at the stated confidence."""
     noticed = _smallest_noticed(asked, counts, confidence)
     if asked.population is None:
-        return f"less than {percent(noticed)} of {population_words(asked)} exceed it"
+        share = typed_percent(claimed_share(noticed, up=True))
+        return f"less than {share} of {population_words(asked)} exceed it"
     return f"no more than {round(noticed) - 1} of {population_words(asked)} exceed it"
 
 

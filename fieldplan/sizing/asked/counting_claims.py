@@ -27,6 +27,33 @@ def level_words(asked: Asked) -> str:
     )
 
 
+def claimed_share(share: float, *, up: bool) -> float:
+    """Round a share that is claimed, away from claiming more than was shown.
+
+    Parameters
+    ----------
+    share : float
+        In [0, 1].
+    up : bool
+        Upwards, for a share that may be above the level; downwards for one that lies below it.
+
+    Returns
+    -------
+    float
+        To a tenth of a percent, or to two digits of a share, or of its rest, below 1 %.
+
+    Examples
+    --------
+    >>> claimed_share(0.06441, up=True), claimed_share(0.91570, up=False)
+    (0.065, 0.915)
+    """
+    rest = min(share, 1 - share)
+    digits = 3 if rest >= 0.01 or rest <= 0 else 1 - math.floor(math.log10(rest))
+    scale = 10**digits
+    moved = math.ceil(share * scale - 1e-7) if up else math.floor(share * scale + 1e-7)
+    return moved / scale
+
+
 def exceeding_units(asked: Asked, share: float) -> int:
     """Count the units that a share of the list makes, the last one whole."""
     return max(1, math.ceil(share * (asked.population or 0) - 1e-9))

@@ -1,6 +1,7 @@
 """At least a stated share of the population does not exceed the level: counted, or bounded."""
 
 import math
+from dataclasses import replace
 
 from fieldplan.base.working import Quantity, Step
 from fieldplan.campaign.questions.upper_share import UpperShare
@@ -10,6 +11,7 @@ from fieldplan.sizing.asked.counting_claims import (
     WILKS,
     chance_noticed,
     claim_holds,
+    claimed_share,
     counting_assumptions,
     counts_that_notice,
     level_words,
@@ -60,7 +62,7 @@ def count(asked: Asked) -> Answered:
     if table.expected_above is not None:
         chance = _comes_out(asked, needed, table.expected_above, allowed)
         answer += (
-            f" If {typed_percent(table.expected_above)} exceed it, the claim comes out in "
+            f" If {_expected_words(asked, table)} exceed it, the claim comes out in "
             f"{percent(chance)} of such campaigns."
         )
     finding = _finding(asked, needed, allowed, answer, (_step(asked, table, total, allowed),))
@@ -84,24 +86,32 @@ def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
         return normal_bound.bought(asked, table, counts)
     total, sure = sum(counts), typed_percent(table.confidence)
     allowed = _permitted(asked, table, counts)
+    claimed = asked
     if takes_all(asked, counts):
         answer = (
             f"All {total} units of the list are looked at: no more than {allowed} of them may "
             f"exceed {level_words(asked)} for the claim to be true."
         )
     elif allowed is None:
-        share = _share_shown(asked, table, counts)
+        share = claimed_share(_share_shown(asked, table, counts), up=False)
+        claimed = _about(asked, table, share)
         answer = (
             f"{counted(total, 'result')} are too few for the claim: with none of them above "
-            f"{level_words(asked)} it can be claimed with {sure} confidence that at least "
-            f"{percent(share)} of {population_words(asked)} do not exceed it."
+            f"{level_words(asked)} it can be claimed with {sure} confidence that "
+            f"{_claim(claimed, _table(claimed))}."
         )
     else:
         answer = (
             f"{counted(total, 'result')}, {_allowed_words(allowed)} above {level_words(asked)}, "
             f"show with {sure} confidence that {_claim(asked, table)}."
         )
-    return _finding(asked, counts, allowed or 0, answer, ())
+    return _finding(claimed, counts, allowed or 0, answer, ())
+
+
+def _about(asked: Asked, table: UpperShare, share: float) -> Asked:
+    """Give the same question about the share that is left to claim."""
+    left = table.model_copy(update={"share": share})
+    return replace(asked, objective=asked.objective.model_copy(update={"upper_share": left}))
 
 
 def _allowed(asked: Asked, table: UpperShare) -> int:
@@ -116,7 +126,7 @@ def _allowed(asked: Asked, table: UpperShare) -> int:
         _spoiling(asked, table),
         table.confidence,
         units=asked.population,
-        expected=round(table.expected_above * asked.population),
+        expected=_units_above(asked, table.expected_above),
         power=table.power,
     )[1]
 
@@ -173,9 +183,26 @@ def _share_shown(asked: Asked, table: UpperShare, counts: tuple[int, ...]) -> fl
 
 def _comes_out(asked: Asked, counts: tuple[int, ...], above: float, allowed: int) -> float:
     """Give the chance that no more than the allowed exceed, where ``above`` truly do."""
-    if asked.population is not None and round(above * asked.population) <= allowed:
+    if not above:
         return 1.0
-    return 1 - chance_noticed(asked, counts, above, allowed=allowed) if above else 1.0
+    if asked.population is not None:
+        units = _units_above(asked, above)
+        if units <= allowed:
+            return 1.0
+        above = units / asked.population
+    return 1 - chance_noticed(asked, counts, above, allowed=allowed)
+
+
+def _units_above(asked: Asked, above: float) -> int:
+    """Count the units of a list that a share of it comes nearest to, one at least."""
+    return max(1, round(above * (asked.population or 0)))
+
+
+def _expected_words(asked: Asked, table: UpperShare) -> str:
+    """Name what may be expected above the level; of a list in whole units."""
+    if asked.population is None:
+        return typed_percent(_expected(table))
+    return f"{_units_above(asked, _expected(table))} of {asked.population}"
 
 
 def _allowed_words(allowed: int) -> str:
@@ -241,7 +268,7 @@ def _finding(
                 _comes_out(asked, counts, (1 - table.share) / 5, allowed),
             ),
         ),
-        columns=("may exceed", "results at least", *_chance_heads(table)),
+        columns=("may exceed", "results at least", *_chance_heads(asked, table)),
         rows=_rows(asked, table),
         steps=steps,
         assumptions=counting_assumptions(asked, allowed=allowed),
@@ -255,8 +282,8 @@ def _expected(table: UpperShare) -> float:
     return (1 - table.share) / 5 if table.expected_above is None else table.expected_above
 
 
-def _chance_heads(table: UpperShare) -> tuple[str]:
-    return (f"comes out if {typed_percent(_expected(table))} exceed",)
+def _chance_heads(asked: Asked, table: UpperShare) -> tuple[str]:
+    return (f"comes out if {_expected_words(asked, table)} exceed",)
 
 
 def _rows(asked: Asked, table: UpperShare) -> tuple[tuple[str, ...], ...]:
@@ -274,9 +301,10 @@ def _rows(asked: Asked, table: UpperShare) -> tuple[tuple[str, ...], ...]:
 def _warnings(asked: Asked, counts: tuple[int, ...], allowed: int) -> tuple[str, ...]:
     table = _table(asked)
     place = "place" if asked.population is None else "unit"
-    few = _expected(table)
-    chance = _comes_out(asked, counts, few, allowed)
+    chance = _comes_out(asked, counts, _expected(table), allowed)
     rest = typed_percent(1 - table.share)
+    if asked.population is not None:
+        rest = f"{_spoiling(asked, table) - 1} of {asked.population}"
     lines = [
         *limit_warning(asked),
         *uneven_warning(asked, counts, _near(asked, table, allowed)),
@@ -285,7 +313,7 @@ def _warnings(asked: Asked, counts: tuple[int, ...], allowed: int) -> tuple[str,
     ]
     if table.expected_above is None and chance < 0.8:
         lines.append(
-            f"Even where only {typed_percent(few)} exceed, the claim fails in "
+            f"Even where only {_expected_words(asked, table)} exceed, the claim fails in "
             f"{percent(1 - chance)} of such campaigns. Taking more results and allowing some of "
             "them above the level helps (expected_above with power)."
         )
@@ -296,19 +324,25 @@ def _picture(asked: Asked, counts: tuple[int, ...], allowed: int) -> Picture:
     table = _table(asked)
     top = min(2 * (1 - table.share), 0.999)
     xs = [top * k / 60 for k in range(61)]
+    if asked.population is not None:
+        xs = sorted({round(x * asked.population) / asked.population for x in xs})
     ys = [_comes_out(asked, counts, x, allowed) for x in xs]
-    total = sum(counts)
+    total, at = sum(counts), _spoils(asked, table)
+    edge = _comes_out(asked, counts, at, allowed)
+    spoils = typed_percent(1 - table.share)
+    if asked.population is not None:
+        spoils = f"{_spoiling(asked, table)} of {asked.population}"
     return Picture(
         kind="lines",
         caption="How often the claim comes out, by what is truly above the level.",
-        alternative=f"A falling line: 100 % where nothing exceeds, {percent(ys[30])} where just "
-        f"{typed_percent(1 - table.share)} exceed.",
+        alternative=f"A falling line: 100 % where nothing exceeds, {percent(edge)} where just "
+        f"{spoils} exceed.",
         x_label="truly above the level, %",
         y_label="chance that the claim comes out, %",
         series=(
             Series(f"{total} results", tuple(100 * x for x in xs), tuple(100 * y for y in ys)),
         ),
-        marks=(("claim untrue from here", 100 * (1 - table.share)),),
+        marks=(("claim untrue from here", 100 * at),),
         levels=(("1 − confidence", 100 * (1 - table.confidence)),),
     )
 

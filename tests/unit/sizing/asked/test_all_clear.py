@@ -2,6 +2,7 @@
 
 import itertools
 import math
+import re
 from dataclasses import replace
 
 import pytest
@@ -162,3 +163,15 @@ def test_what_cannot_be_counted_is_refused() -> None:
     bare = Objective(analyte="lead", question="all-clear")
     with pytest.raises(CampaignError, match=r"\[objective\.all_clear\] is missing"):
         count(Asked(whole.campaign, bare, whole.question))
+
+
+@pytest.mark.parametrize("n", [2, 20, 40, 45, 55, 58, 59, 300, 3000])
+def test_share_claimed_from_given_counts_has_the_confidence_it_states(n: int) -> None:
+    """Closed form: none of n above the level notices a share p with chance 1 − (1 − p)ⁿ."""
+    found = bought(asked_for("all-clear", share=0.05), (n,))
+    words = re.search(r"less than ([\d.]+) % of", found.answer)
+    assert words is not None
+    share = float(words[1]) / 100
+    assert 1 - (1 - share) ** n >= 0.95 - 1e-12
+    step = 0.001 if share >= 0.01 else 0.05 * share
+    assert 1 - (1 - share + 1.5 * step) ** n < 0.95

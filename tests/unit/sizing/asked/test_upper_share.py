@@ -1,6 +1,7 @@
 """A share at or below the level: by counting and by a normal bound."""
 
 import math
+import re
 
 import pytest
 from scipy import stats
@@ -98,7 +99,8 @@ def test_given_counts_say_how_many_may_exceed() -> None:
     assert "no more than 1 of them above 150 mg/kg" in found.answer
     few = bought(asked_for("upper-share", share=0.95), (40,))
     assert "40 results are too few for the claim" in few.answer
-    assert f"at least {100 * 0.05 ** (1 / 40):.0f} %" in few.answer
+    shown = math.floor(1000 * 0.05 ** (1 / 40)) / 10
+    assert f"at least {shown:.1f} %" in few.answer
 
 
 def test_whole_list_needs_no_confidence() -> None:
@@ -174,3 +176,29 @@ def test_more_allowed_than_a_list_could_hold_is_refused() -> None:
     """With 3 of 50 units spoiling the claim, 60 allowed ones would show nothing."""
     with pytest.raises(DesignError, match="looking at all of them would show nothing"):
         count(asked_for("upper-share", parts=listed(50), share=0.95, allowed=60))
+
+
+@pytest.mark.parametrize("n", [2, 20, 30, 34, 35, 45, 58])
+def test_claim_that_is_left_has_the_confidence_it_states(n: int) -> None:
+    """Closed form: n results below the level show a share p with confidence 1 − pⁿ."""
+    found = bought(asked_for("upper-share", share=0.95), (n,))
+    words = re.search(r"at least ([\d.]+) % of", found.answer)
+    assert words is not None
+    share = float(words[1]) / 100
+    assert 1 - share**n >= 0.95
+    assert 1 - (share + 0.0015) ** n < 0.95  # and no more is given away than the digit
+    assert amount(found, "confidence") == pytest.approx(1 - share**n)
+    assert f"up to {100 * (1 - share):.3g} % may, by any amount" in " ".join(found.warnings)
+
+
+def test_list_names_units_where_a_share_of_it_would_be_half_a_unit() -> None:
+    """Hypergeometric of scipy: 31 of 50 hold the one unit that exceeds with chance 31/50."""
+    answered = count(asked_for("upper-share", parts=listed(50), share=0.95))
+    unseen = stats.hypergeom.cdf(0, 50, 1, sum(answered.needed))
+    assert answered.finding.columns[-1] == "comes out if 1 of 50 exceed"
+    assert answered.finding.rows[0][-1] == f"{100 * unseen:.0f} %"
+    said = " ".join(answered.finding.warnings)
+    assert f"Even where only 1 of 50 exceed, the claim fails in {100 - 100 * unseen:.0f} %" in said
+    assert "up to 2 of 50 may" in said
+    assert answered.finding.picture is not None
+    assert all(x / 2 == round(x / 2) for x in answered.finding.picture.series[0].x)  # 2 % a unit
