@@ -1,8 +1,7 @@
 """Branches out of the lines of a file: joined, checked for loops and repeats, measured."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
-from itertools import combinations
+from dataclasses import dataclass, replace
 
 import numpy as np
 import shapely
@@ -20,6 +19,8 @@ MEET_M = 1.0
 
 NEAR_MISS_M = 50.0
 """An end that stops short of another branch by less than this is worth a note (house rule)."""
+
+SHOWN_GAPS = 8
 
 TWICE_M = 0.5
 LONGEST_TOGETHER_M = 10.0
@@ -191,7 +192,7 @@ def courses(pieces: Sequence[Piece]) -> tuple[tuple[Course, ...], list[str]]:
                 f"Branch {name!r} comes in {len(parts)} parts that do not follow one on another; "
                 "each is a branch with distances of its own."
             )
-    with_ends = tuple(_with_ends(course, found) for course in found)
+    with_ends = _with_ends(found)
     return with_ends, [*notes, *_gaps(with_ends)]
 
 
@@ -251,31 +252,43 @@ def spans_within(course: Course, ground: BaseGeometry) -> list[Interval]:
     ]
 
 
-def _with_ends(course: Course, every: Sequence[Course]) -> Course:
-    """Say which ends of a branch are free."""
-    others = [other.line for other in every if other is not course]
-    met = [
-        any(shapely.dwithin(other, end, MEET_M) for other in others) for end in _ends(course.line)
-    ]
-    return Course(course.name, course.line, course.pieces, (not met[0], not met[1]))
+def _with_ends(found: Sequence[Course]) -> tuple[Course, ...]:
+    """Say of every branch which of its ends are free."""
+    tree = shapely.STRtree([course.line for course in found])
+    return tuple(
+        replace(course, free=(_is_free(tree, at, ends[0]), _is_free(tree, at, ends[1])))
+        for at, course in enumerate(found)
+        for ends in [_ends(course.line)]
+    )
+
+
+def _is_free(tree: shapely.STRtree, own: int, end: shapely.Point) -> bool:
+    near = tree.query(end, predicate="dwithin", distance=MEET_M)
+    return all(int(other) == own for other in near)
 
 
 def _gaps(found: Sequence[Course]) -> list[str]:
     """Say where ends stop short of another branch, and into how many networks the lines fall."""
+    lines = [course.line for course in found]
+    tree = shapely.STRtree(lines)
     notes = []
-    for course in found:
-        others = [other for other in found if other is not course]
+    for at, course in enumerate(found):
         for end, free, which in zip(
             _ends(course.line), course.free, ("begins", "ends"), strict=True
         ):
-            away = [float(shapely.distance(other.line, end)) for other in others]
-            if free and away and min(away) <= NEAR_MISS_M:
+            if not free:
+                continue
+            near = tree.query(end, predicate="dwithin", distance=NEAR_MISS_M).tolist()
+            away = [(float(shapely.distance(lines[k], end)), k) for k in near if k != at]
+            if away:
+                metres, other = min(away)
                 notes.append(
-                    f"Branch {course.name!r} {which} {min(away):.1f} m from branch "
-                    f"{others[away.index(min(away))].name!r}: more than {MEET_M:g} m, so they do "
-                    "not meet."
+                    f"Branch {course.name!r} {which} {metres:.1f} m from branch "
+                    f"{found[other].name!r}: more than {MEET_M:g} m, so they do not meet."
                 )
-    count = _networks(found)
+    if len(notes) > SHOWN_GAPS:
+        notes = [*notes[:SHOWN_GAPS], f"… and {len(notes) - SHOWN_GAPS} more ends that stop short."]
+    count = _networks(lines, tree)
     if count > 1:
         notes.append(
             f"The lines form {count} networks that do not meet; together they are one population."
@@ -283,16 +296,17 @@ def _gaps(found: Sequence[Course]) -> list[str]:
     return notes
 
 
-def _networks(found: Sequence[Course]) -> int:
-    """Count the groups of branches that hang together."""
-    group = list(range(len(found)))
-    for a, b in combinations(range(len(found)), 2):
-        if _touch(found[a].line, found[b].line):
-            old, new = group[b], group[a]
-            group = [new if entry == old else entry for entry in group]
-    return len(set(group))
+def _networks(lines: Sequence[shapely.LineString], tree: shapely.STRtree) -> int:
+    """Count the groups of branches that hang together: that meet, or cross."""
+    group = list(range(len(lines)))
 
+    def root(at: int) -> int:
+        while group[at] != at:
+            group[at] = group[group[at]]
+            at = group[at]
+        return at
 
-def _touch(first: shapely.LineString, second: shapely.LineString) -> bool:
-    """Tell whether an end of one line meets the other, or they cross."""
-    return bool(shapely.dwithin(first, second, MEET_M))
+    first, second = tree.query(list(lines), predicate="dwithin", distance=MEET_M)
+    for a, b in zip(first.tolist(), second.tolist(), strict=True):
+        group[root(a)] = root(b)
+    return len({root(at) for at in range(len(lines))})
