@@ -188,7 +188,7 @@ def _spread_keys(design: Data, layout: str, i: int) -> Iterator[Problem]:
             "a formula of their own. Take it out."
         )
         yield Problem(("design", i, "variance"), text)
-    elif variance in {"pairs", "neighbours", "covariance"} and variance not in suited:
+    elif variance in ("pairs", "neighbours", "covariance") and variance not in suited:
         text = f"{layout} takes {' or '.join(map(shown, suited))} (got {shown(variance)})."
         yield Problem(("design", i, "variance"), text)
 
