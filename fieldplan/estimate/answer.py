@@ -36,6 +36,11 @@ CHANGEABLE = (
 )
 """Rules that may be changed after results, each with both answers printed."""
 
+ACHIEVED_AT_HALF = (
+    "Planned and achieved are compared with non-detects at half their limit, as planning has them; "
+    "the standard error of the answer is that of its method."
+)
+
 
 def estimate(
     plan: Plan,
@@ -130,7 +135,8 @@ def _basis(
 
 def _differences(plan: Plan, means: Means, planned: Planned) -> tuple[str, ...]:
     reach = recorded_reach(plan, means)
-    return difference_sentences(plan, means.half, planned=planned, reach=reach)
+    said = difference_sentences(plan, means.half, planned=planned, reach=reach)
+    return said if means.modelled is None else (*said, ACHIEVED_AT_HALF)
 
 
 def _steps(plan: Plan, means: Means, unit: str) -> tuple[Step, ...]:

@@ -144,6 +144,11 @@ def _dependence(level: float, means: Means) -> str:
     sides = {side_of(level, interval) for interval in all_three}
     if not means.as_bounds:
         own = side_of(level, means.interval)
-        apart = sides - {own}
-        return "; with non-detects at 0 or at their limit it would not" if apart else ""
+        ends = (("at 0", bracket.interval_low), ("at their limit", bracket.interval_high))
+        apart = [
+            f"with non-detects {at} it {place_words(level, interval)}"
+            for at, interval in ends
+            if side_of(level, interval) != own
+        ]
+        return f"; {' and '.join(apart)} it" if apart else ""
     return "; where the non-detects are put decides this" if len(sides) > 1 else ""

@@ -248,7 +248,8 @@ def reported_mean(half: MeanEstimate, found: Modelled | None) -> MeanEstimate:
     Returns
     -------
     MeanEstimate
-        Standard deviations of strata stay those at half, as planning has them.
+        Standard deviations of strata stay those at half, as planning has them; degrees of
+        freedom are those of Student's quantile in each stratum, summed.
     """
     if found is None:
         return half
@@ -258,6 +259,7 @@ def reported_mean(half: MeanEstimate, found: Modelled | None) -> MeanEstimate:
         half,
         mean=found.whole.mean,
         standard_error=found.whole.standard_error,
+        degrees_of_freedom=float(sum(part.n - 1 for part in found.parts)),
         strata=strata,
         method=METHOD_SENTENCES[found.method],
     )

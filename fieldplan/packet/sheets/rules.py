@@ -98,6 +98,14 @@ def rules_fingerprint(rules: Rules) -> str:
     return hashlib.sha256("\n".join(rule_lines(rules)).encode()).hexdigest()[:16]
 
 
+def _ends_set_by(rules: Rules) -> str:
+    """Say how the ends are set, which a method for non-detects does by itself."""
+    said = MEAN_INTERVALS[rules.mean_interval]
+    if rules.non_detects in ("bounds", "substitute-half"):
+        return said
+    return f"{said}; with non-detects, by the method that stands for them"
+
+
 def rules_table(rules: Rules) -> Table:
     """Set every rule with its recorded value and what it means."""
     return Table(
@@ -108,7 +116,7 @@ def rules_table(rules: Rules) -> Table:
             ("duplicates", rules.duplicates, DUPLICATES[rules.duplicates]),
             ("interval", rules.interval, INTERVALS[rules.interval]),
             ("confidence", f"{rules.confidence:g}", LONG_RUNS[rules.mean_interval]),
-            ("mean_interval", rules.mean_interval, MEAN_INTERVALS[rules.mean_interval]),
+            ("mean_interval", rules.mean_interval, _ends_set_by(rules)),
             ("promised_class", rules.promised_class or BLANK, CLASSES[rules.promised_class]),
             (
                 "promised_for",

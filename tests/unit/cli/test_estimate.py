@@ -211,6 +211,34 @@ def test_changed_rules_print_both_answers(folder: Path, unset: list[Path]) -> No
     assert outcome.stderr == ""
 
 
+def test_the_rule_for_non_detects_may_be_changed_with_both_answers(
+    folder: Path, unset: list[Path]
+) -> None:
+    """One of nine is below its limit: half by choice is the same mean, and no longer a bound."""
+    rows = lab_rows(folder)
+    write_lab(folder, [[*rows[0][:2], "<60", "mg/kg"], *rows[1:]])
+    recorded = json.loads(run("--json").stdout)
+    changed = json.loads(run("--non-detects", "substitute-half", "--json").stdout)
+    (change,) = changed["changes_after_results"]
+    assert (change["recorded"], change["used"]) == ("bounds", "substitute-half")
+    assert change["mean_recorded"] == recorded["mean"] == changed["mean"]
+    assert (recorded["non_detects_as_bounds"], changed["non_detects_as_bounds"]) == (True, False)
+    assert changed["bracket"]["mean_high"] > changed["mean"]
+
+
+def test_a_method_without_evidence_for_the_design_is_refused_with_the_way_out(
+    folder: Path, unset: list[Path]
+) -> None:
+    """Strata of 4 and 5 results by a method: the sentence names what is missing, exit code 1."""
+    rows = lab_rows(folder)
+    below = [[*row[:2], "<60" if k < 3 else row[2], "mg/kg"] for k, row in enumerate(rows)]
+    write_lab(folder, below)
+    said = " ".join(refused("--non-detects", "lognormal-likelihood"))
+    assert "needs 3" in said
+    assert "--non-detects bounds" in said
+    assert not unset
+
+
 def test_the_json_names_the_sheet_and_the_numbers(folder: Path, unset: list[Path]) -> None:
     """A script reads one object from stdout."""
     content = json.loads(run("--field", "field.csv", "--json").stdout)

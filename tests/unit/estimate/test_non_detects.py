@@ -133,7 +133,7 @@ def test_where_the_bounds_lie_on_another_side_of_the_level_it_is_said():
     plan = plan_with(Rules(non_detects="order-statistics"), analyte=(analyte,))
     said = estimate(plan, returned(results_of())).level_sentence
     assert "lies below the action level" in said
-    assert "with non-detects at 0 or at their limit it would not" in said
+    assert "; with non-detects at their limit it spans it" in said
 
 
 @pytest.mark.parametrize(
@@ -202,6 +202,14 @@ def test_a_value_that_is_no_method_is_refused_with_those_that_are():
     """One clear line."""
     with pytest.raises(DesignError, match=r"non_detects is bounds, substitute-half, kaplan-meier"):
         estimate(plan_with(Rules()), returned(results_of()), overrides={"non_detects": "guess"})
+
+
+def test_planned_and_achieved_are_compared_like_with_like():
+    """Planning has non-detects at half; the sheet says that the answer does not."""
+    answer = answered("order-statistics")
+    assert answer.achieved_standard_error == answered("bounds").achieved_standard_error
+    assert "with non-detects at half their limit, as planning has them" in answer.why_different[-1]
+    assert "as planning has them" not in " ".join(answered("bounds").why_different)
 
 
 # --- designs --------------------------------------------------------------------------------------
