@@ -210,13 +210,18 @@ def _interval_steps(means: Means, unit: str) -> list[Step]:
 
 
 def _freedom_step(means: Means, unit: str) -> Step:
-    strata, known = means.half.strata, means.half.degrees_of_freedom
+    """Show the degrees of freedom by the rule of the layout."""
     if means.half.spread_variances:
         return spread_freedom_step(means)
     if means.half.start_variances:
         return start_freedom_step(means)
     if means.half.cell_variances:
         return cell_freedom_step(means, unit)
+    return _strata_freedom_step(means, unit)
+
+
+def _strata_freedom_step(means: Means, unit: str) -> Step:
+    strata, known = means.half.strata, means.half.degrees_of_freedom
     if len(strata) == 1:
         inputs: tuple[Quantity, ...] = (Quantity("n", "results", strata[0].n),)
         return Step("df", "Degrees of freedom", "df = n − 1", inputs, known, known, "", _RANDOM)
