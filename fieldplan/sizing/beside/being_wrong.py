@@ -161,8 +161,9 @@ def _belief(asked: Asked) -> tuple[Belief | None, str]:
     if mean is None:
         return None, ""
     spread = _error_of_pilot(asked)
-    if spread is None:
-        return Belief(mean), f"exactly {with_unit(figure(mean), unit)}, the expected mean"
+    if not spread:
+        # A mean that is taken as certain leaves nothing to decide, and no sample would pay.
+        return None, ""
     words = f"about {with_unit(figure(mean), unit)}, give or take {figure(spread)} (the pilot)"
     return Belief(mean, spread), words
 
@@ -231,8 +232,6 @@ def _answer(stakes: _Stakes, size: Size, best: int, bills: dict[int, tuple[float
             f"; the two together would be least at {best} results ({stakes.money(together)}), "
             "which the plan does not follow."
         )
-    if stakes.belief.spread == 0:
-        return line
     act, bare = stakes.without()
     decided = "acting" if act else "leaving the site alone"
     return f"{line} Without any sample, {decided} would lose {stakes.money(bare)} on average."
@@ -261,17 +260,14 @@ def _amounts(
         Amount("cheapest_n", "Results at which both together cost least", best, "results"),
         Amount("cheapest_total", "Both together there", sum(bills[best]), money),
     ]  # fmt: skip
-    if stakes.belief.spread > 0:
-        bare = stakes.without()[1]
-        found.append(Amount("loss_without", "Loss on average without samples", bare, money))
+    bare = stakes.without()[1]
+    found.append(Amount("loss_without", "Loss on average without samples", bare, money))
     return tuple(found)
 
 
 def _rows(stakes: _Stakes, bills: dict[int, tuple[float, float]]) -> tuple[tuple[str, ...], ...]:
-    rows = []
-    if stakes.belief.spread > 0:
-        bare = stakes.without()[1]
-        rows.append(("0", "0", f"{bare:.0f}", f"{bare:.0f}"))
+    bare = stakes.without()[1]
+    rows = [("0", "0", f"{bare:.0f}", f"{bare:.0f}")]
     for n, (paid, loss) in sorted(bills.items()):
         rows.append((str(n), f"{paid:.0f}", f"{loss:.0f}", f"{paid + loss:.0f}"))
     return tuple(rows)

@@ -97,16 +97,12 @@ def test_the_table_adds_up_and_holds_the_plan_and_the_best() -> None:
     assert rows[0][0] == 0
 
 
-def test_a_single_expected_mean_is_taken_at_its_word() -> None:
-    """The stated true mean of 140 lies below 150: only acting can be wrong; nct for the chance."""
+def test_a_single_expected_mean_leaves_nothing_to_weigh() -> None:
+    """Were it certain, no sample would pay; so the range has to be said."""
     finding = found(*STAKES, mean=140.0, one_sided=True)
     assert finding is not None
-    numbers = amounts(finding)
-    chance = stats.nct.sf(-stats.t.ppf(0.95, 24), 24, -10 / 4)
-    assert numbers["chance_wrongly_acted"] == pytest.approx(chance, abs=1e-7)
-    assert numbers["chance_wrongly_left"] == 0
-    assert "loss_without" not in numbers
-    assert "exactly 140" in finding.assumptions[0]
+    assert finding.answer.endswith("Write mean_from and mean_to below [[objective]].")
+    assert finding.amounts == ()
 
 
 def test_a_pilot_says_where_the_mean_may_lie() -> None:
@@ -149,15 +145,16 @@ def test_harm_is_not_priced() -> None:
 
 @pytest.mark.parametrize(("assume", "sign"), [("above-level", 1), ("below-level", -1)])
 def test_a_test_against_the_level_decides_as_it_says(assume: str, sign: int) -> None:
-    """Chances at a stated mean of 140 by scipy's noncentral t, with the test's own alpha."""
+    """Chances at a mean of all but 140 by scipy's noncentral t, with the test's own alpha."""
     edge = 135 if assume == "above-level" else 165
     keys = (*STAKES, f"mean_and_level.assume={assume}", f"mean_and_level.gray_edge={edge}",
-            "mean_and_level.alpha=0.1", "mean_and_level.beta=0.2")  # fmt: skip
-    finding = found(*keys, question="mean-and-level", standard_error=None, mean=140.0)
+            "mean_and_level.alpha=0.1", "mean_and_level.beta=0.2",
+            "objective.mean_from=139.999", "objective.mean_to=140.001")  # fmt: skip
+    finding = found(*keys, question="mean-and-level", standard_error=None)
     assert finding is not None
     n = int(finding.answer.split("With the ")[1].split()[0])
     t = stats.t.ppf(0.9, n - 1)
     chance = stats.nct.sf(-sign * t, n - 1, -10 / (20 / n**0.5))
-    assert amounts(finding)["chance_wrongly_acted"] == pytest.approx(chance, abs=1e-7)
+    assert amounts(finding)["chance_wrongly_acted"] == pytest.approx(chance, abs=1e-6)
     name = "upper" if sign > 0 else "lower"
     assert f"the 90 % {name} limit of the mean" in " ".join(finding.assumptions)
