@@ -17,6 +17,7 @@ from fieldplan.sizing.non_detects import (
 from fieldplan.sizing.question import Question
 from fieldplan.sizing.visits import as_single
 from fieldplan.sizing.words import percent, typed, typed_percent, with_unit
+from fieldplan.stats.censored_choice import choose_method
 from fieldplan.stats.censored_fit import FEWEST_DETECTS
 from fieldplan.stats.censoring_forecast import (
     MOST_CENSORED,
@@ -83,7 +84,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
         columns=COLUMNS,
         rows=tuple(_row(counts, one) for one in forecasts),
         steps=_steps(question, counts, limit, forecasts),
-        assumptions=_assumptions(asked, limit),
+        assumptions=(*_assumptions(asked, limit), *_rule(asked, counts, forecasts)),
         warnings=_warnings(counts, forecasts, seen),
         sources=SOURCES,
     )
@@ -247,6 +248,32 @@ def _chance_step(total: int, share: float) -> Step:
         unrounded=chance,
         rounded=round(chance, 3),
         source=f"{SOURCES[2]}; 3 and 20 % are house rules",
+    )
+
+
+def _rule(asked: Asked, counts: Sequence[int], forecasts: Sequence[Forecast]) -> tuple[str, ...]:
+    """Say what the rules of the campaign make of so many non-detects, where not bounds."""
+    rules, total = asked.campaign.rules, sum(counts)
+    if rules.non_detects == "bounds":
+        return ()
+    if rules.non_detects != "by-share":
+        return (
+            f"The rules fix non_detects = {rules.non_detects} for the answer; times as wide is for "
+            "the bounds, which stand beside it.",
+        )
+    together = total if len(counts) > 1 else None
+    chosen = {
+        choose_method(
+            min(counts),
+            round(one.share * min(counts)),
+            shape=rules.declared_shape,
+            together=together,
+        ).method: None
+        for one in forecasts
+    }
+    return (
+        f"The rules choose by share: with so many results and the expected non-detects that comes "
+        f"to {' or '.join(chosen)}; times as wide is for the bounds.",
     )
 
 

@@ -150,3 +150,24 @@ def test_more_says_it_in_full_from_the_command_line() -> None:
     )
     assert wrong.exit_code == 2
     assert "reporting_limit" in wrong.stderr
+
+
+def test_what_the_rules_make_of_them_is_said_before_the_field() -> None:
+    """Of 30 results 60 % are expected below: without a shape by-share comes to the bounds."""
+    bare = found_for(9, sigma=8.0, mean=10.0, results=12, half_width=3.0)
+    assert not [line for line in bare.assumptions if line.startswith("The rules")]
+    told = {}
+    for rules in (("non_detects=by-share",), ("non_detects=by-share", "declared_shape=lognormal")):
+        keys = (
+            "analyte.reporting_limit=9",
+            *(f"rules.{rule}" for rule in rules),
+        )
+        asked = asked_mean(keys=keys, sigma=8.0, mean=10.0, results=12, half_width=3.0)
+        found = finding(asked, size_asked(asked))
+        told[len(rules)] = found.assumptions[-1]
+    assert "comes to bounds;" in told[1]
+    assert "lognormal-likelihood" in told[2]
+    fixed = (*keys[:1], "rules.non_detects=kaplan-meier")
+    asked = asked_mean(keys=fixed, sigma=8.0, mean=10.0, results=12, half_width=3.0)
+    said = finding(asked, size_asked(asked)).assumptions[-1]
+    assert said.startswith("The rules fix non_detects = kaplan-meier for the answer;")
