@@ -1,16 +1,19 @@
 """Bare numbers as a campaign without files: the same questions, keys and checks as in a file."""
 
 import json
-import tomllib
 from collections.abc import Mapping
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, get_args
 
 from fieldplan.cli.bare_composites import composites_of_numbers, with_splits
+from fieldplan.cli.option_words import in_options, key_in_options
+from fieldplan.cli.question_keys import misplaced, needed_keys, table_model
 from fieldplan.cli.size_options import BadOption
 from fieldplan.cli.typed_numbers import BareNumbers
+from fieldplan.cli.with_keys import place
 
 if TYPE_CHECKING:
     from fieldplan.campaign.model import Campaign
+    from fieldplan.campaign.problems import Problem
     from fieldplan.lab.model import Spread
     from fieldplan.sizing.asked.model import Asked
     from fieldplan.sizing.question import Part
@@ -70,6 +73,8 @@ def asked_of_numbers(typed: Mapping[str, Any]) -> "Asked":
 
 def _campaign(numbers: BareNumbers, parts: "tuple[Part, ...]") -> "Campaign":
     """Build the campaign that the numbers would make, with the keys of ``--with`` in it."""
+    from fieldplan.campaign.questions import table_of
+
     objective: dict[str, Any] = {"question": numbers.question}
     if numbers.question == "mean":
         kind, value = numbers.target()
@@ -101,8 +106,33 @@ def _campaign(numbers: BareNumbers, parts: "tuple[Part, ...]") -> "Campaign":
         "draw": {"seed": 0},
     }
     for text in numbers.with_keys:
-        _place(data, objective, text)
-    return _checked(data)
+        place(data, text, numbers.question)
+    if numbers.question != "mean" and table_of(numbers.question) not in objective:
+        given = [name for name, value in vars(numbers).items() if value]
+        given += ["sigma"] if numbers.stratum else []
+        raise BadOption(needed_keys(numbers.question, given))
+    if numbers.confidence is not None:
+        _own_confidence(objective, numbers.confidence)
+    return _checked(data, numbers.question)
+
+
+def _own_confidence(objective: dict[str, Any], confidence: float) -> None:
+    """Let ``--confidence`` set the key of a question that has one; refuse two that differ."""
+    from fieldplan.campaign.model import Objective
+    from fieldplan.campaign.questions import table_of
+
+    name = table_of(objective["question"])
+    kind = Objective.model_fields.get(name)
+    tables = [] if kind is None else [t for t in get_args(kind.annotation) if t is not type(None)]
+    if not any("confidence" in table.model_fields for table in tables):
+        return
+    own = objective.setdefault(name, {})
+    if isinstance(own, dict) and own.setdefault("confidence", confidence) != confidence:
+        message = (
+            f"--confidence {confidence:g} and --with confidence={own['confidence']}: both set "
+            f"objective.{name}.confidence; keep one."
+        )
+        raise BadOption(message)
 
 
 def _frame(numbers: BareNumbers, *, several: bool) -> dict[str, Any]:
@@ -124,64 +154,9 @@ def _sigma(part: "Part", *, several: bool) -> dict[str, Any]:
     return entry | ({"stratum": part.name} if several else {})
 
 
-def _place(data: dict[str, Any], objective: dict[str, Any], text: str) -> None:
-    """Put ``key=value`` where a campaign file has it."""
-    from fieldplan.campaign.questions import MODULES, table_of
-
-    key, equals, value = (piece.strip() for piece in text.partition("="))
-    if not (equals and key and value):
-        message = f"--with {text!r}: write a key and its value, such as share=0.05."
-        raise BadOption(message)
-    path = key.split(".")
-    if path[0] == "sigma" and path[1:] in (["sampling"], ["analysis"]):
-        data["sigma"].append({"part": path[1], "value": _value(value), "source": "typed"})
-        return
-    if path[0] == "sigma" and len(path) == 2 and len(data["sigma"]) > 1:
-        for entry in data["sigma"]:  # typed once, for every stratum
-            entry.setdefault(path[1], _value(value))
-        return
-    own = table_of(objective["question"])
-    tables = {table_of(question) for question in MODULES}
-    if len(path) == 1 and own in tables:
-        path = [own, *path]
-    elif len(path) == 1:
-        message = (
-            f"--with {text!r}: of which table is {key}? Write the table before it, such as "
-            "cost.per_location=28."
-        )
-        raise BadOption(message)
-    here: Any = objective if path[0] in tables else data
-    for step in path[:-1]:
-        if isinstance(here, dict):
-            here = here.setdefault(step, [{}] if here is data and _repeats(step) else {})
-        here = here[0] if isinstance(here, list) else here
-    if not isinstance(here, dict):
-        message = f"--with {text!r}: {'.'.join(path[:-1])} is no table."
-        raise BadOption(message)
-    here[path[-1]] = _value(value)
-
-
-def _repeats(table: str) -> bool:
-    """Tell whether a campaign file may have several tables of a name."""
-    from fieldplan.campaign.model import Campaign
-    from fieldplan.campaign.shape import shapes
-
-    shape = shapes(Campaign).get(table)
-    return shape is not None and shape.kind == "tables"
-
-
-def _value(text: str) -> Any:
-    """Read a value as a campaign file would; a bare word is taken as text."""
-    try:
-        return tomllib.loads(f"value = {text}")["value"]
-    except tomllib.TOMLDecodeError:
-        return text
-
-
-def _checked(data: dict[str, Any]) -> "Campaign":
-    """Run the checks of a campaign file; each problem is one line with the key's name."""
+def _checked(data: dict[str, Any], question: str) -> "Campaign":
+    """Run the checks of a campaign file; each problem is one line in the words of options."""
     from fieldplan.campaign.checks import check
-    from fieldplan.campaign.problems import key_name
     from fieldplan.campaign.read import validated
     from fieldplan.campaign.references import resolve
     from fieldplan.campaign.screen import screen
@@ -190,10 +165,31 @@ def _checked(data: dict[str, Any]) -> "Campaign":
     problems = [*screened.problems, *resolve(screened.data)]
     problems += [p for p in check(screened.data) if p.path[0] != "frame"]
     campaign, faults = validated(screened, problems)
-    told = [f"{key_name(p.path, screened.data)}: {p.text}" for p in (*problems, *faults)]
+    told = [_told(problem, screened.data, question) for problem in (*problems, *faults)]
     if told or campaign is None:
         raise BadOption("\n".join(dict.fromkeys(told)))
     return campaign
+
+
+def _told(problem: "Problem", data: dict[str, Any], question: str) -> str:
+    """Word one problem for somebody who typed options."""
+    from fieldplan.campaign.problems import key_name
+    from fieldplan.campaign.questions import MODULES, table_of
+
+    own = table_of(question)
+    name = key_in_options(key_name(problem.path, data), own)
+    table, key = problem.path[-2:] if len(problem.path) > 1 else ("", problem.path[-1])
+    text = in_options(problem.text)
+    if question in MODULES and table == own and key not in table_model(question).model_fields:
+        text = misplaced(question, str(key))
+    value: Any = data
+    for step in problem.path:
+        found = isinstance(value, dict) and step in value
+        found = found or (isinstance(value, list) and isinstance(step, int) and step < len(value))
+        value = value[step] if found else None
+    if isinstance(value, int | float) and 1 < value < 100 and "below 1 " in f"{text} ":
+        text += f" For {value:g} % type {value / 100:g}."
+    return f"{name}: {text}"
 
 
 def _spread(numbers: BareNumbers, parts: "tuple[Part, ...]") -> "Spread":

@@ -158,3 +158,31 @@ def test_bad_words_get_a_line(words: list[str], code: int, said: str) -> None:
     else:
         assert outcome.exit_code == code
         assert said in outcome.stderr
+
+
+@pytest.mark.parametrize(
+    ("words", "n"),
+    [
+        # Closed form, ln(1 - C)/ln(0.95) upwards; 1 - C(37, n)/C(40, n) for the list of 40.
+        (["all-clear", *keys("share=0.05")], 90),
+        (["upper-share", *keys("share=0.95")], 90),
+        (["all-clear", *keys("units=3"), "--population", "40"], 31),
+    ],
+)
+def test_confidence_option_counts_where_a_question_has_a_confidence_of_its_own(words, n) -> None:
+    """A planner who asks for 99 % gets what the key of the question gives, not 95 %."""
+    typed_once = run("--question", *words, "--confidence", "0.99")
+    assert typed_once.startswith(f"{n} results")
+    assert "95 % confidence" not in typed_once
+    assert run("--question", *words, *keys("confidence=0.99")).startswith(f"{n} results")
+    both = run("--question", *words, *keys("confidence=0.99"), "--confidence", "0.99")
+    assert both.startswith(f"{n} results")
+
+
+def test_two_confidences_that_differ_are_refused_by_the_name_of_the_key() -> None:
+    """Neither can be meant more than the other."""
+    words = ["all-clear", *keys("share=0.05", "confidence=0.9"), "--confidence", "0.99"]
+    outcome = command_runner().invoke(entry, ["size", "--question", *words])
+    assert outcome.exit_code != 0
+    told = str(outcome.exception) if outcome.exception is not None else ""
+    assert "objective.all_clear.confidence; keep one" in outcome.output + told
