@@ -11,7 +11,10 @@ from fieldplan.stats.tolerance import SLACK, chance_of_exceedances
 
 WILKS = "Wilks 1941, Annals of Mathematical Statistics 12:91 (from memory)"
 HOEFFDING = "Hoeffding 1956, Annals of Mathematical Statistics 27:713 (from memory)"
-HYPERGEOMETRIC = "hypergeometric distribution; Cochran 1977, Sampling Techniques, 3rd ed., sec. 3.6"
+HYPERGEOMETRIC = "hypergeometric distribution; Cochran 1977, Sampling Techniques, 3rd ed., sec. 3.5"
+
+EVEN = 0.9
+"""Evenness from which strata count as sampled in proportion: common practice, no source."""
 
 
 def table_missing(question: str) -> CampaignError:
@@ -187,7 +190,7 @@ def takes_all(asked: Asked, counts: tuple[int, ...]) -> bool:
 
 def uneven_warning(asked: Asked, counts: tuple[int, ...], even: int) -> tuple[str, ...]:
     """Say what strata out of proportion cost; ``even`` is the number without strata."""
-    if evenness(asked, counts) >= 0.9:
+    if evenness(asked, counts) >= EVEN:
         return ()
     return (
         "The strata are not sampled in proportion to their size, so the most thinly sampled one "

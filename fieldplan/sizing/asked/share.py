@@ -14,6 +14,7 @@ from fieldplan.sizing.asked.counting_claims import (
 )
 from fieldplan.sizing.asked.model import Answered, Asked
 from fieldplan.sizing.asked.share_comparison import compared, count_compared
+from fieldplan.sizing.asked.weighted_share import counts_worth, weighting_words, worth
 from fieldplan.sizing.model import Amount, Finding, Picture, Series
 from fieldplan.sizing.words import counted, figure, typed, typed_percent
 from fieldplan.stats.intervals import t_quantile
@@ -54,13 +55,14 @@ def count(asked: Asked) -> Answered:
     confidence, kind = asked.question.confidence, asked.question.interval
     counting = n_for_margin if table.method == "normal" else n_for_expected_reach
     total = counting(expected, margin, confidence=confidence, kind=kind, units=asked.population)
-    needed = asked.shared(total)
+    needed = counts_worth(asked, total)
+    reach = _reach(asked, table, needed)
     answer = (
         f"{counted(sum(needed), 'result')} pin down the share of {population_words(asked)} "
-        f"{_what(asked)}: {_reach_words(asked, margin)}, if the share is near "
+        f"{_what(asked)}: {_reach_words(asked, reach)}, if the share is near "
         f"{typed_percent(expected)}."
     )
-    finding = _finding(asked, table, needed, answer, _steps(asked, table, sum(needed)))
+    finding = _finding(asked, table, needed, answer, _steps(asked, table, needed))
     endless = unrounded_for_margin(expected, margin, confidence=confidence, kind=kind)
     target = f"a share to within {typed(100 * margin)} points"
     return Answered(needed, target, finding, endless)
@@ -84,7 +86,7 @@ def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
             f"{_what(asked)} is known but for the laboratory's error."
         )
         return _finding(asked, table, counts, answer, ())
-    reach = _reach(asked, table, sum(counts))
+    reach = _reach(asked, table, counts)
     answer = (
         f"{counted(sum(counts), 'result')} pin down the share of {population_words(asked)} "
         f"{_what(asked)}: {_reach_words(asked, reach)}, if the share is near "
@@ -110,9 +112,9 @@ def _reach_words(asked: Asked, reach: float) -> str:
     return f"the {sure} limit is expected {points} {side} the share"
 
 
-def _reach(asked: Asked, table: ShareTable, n: int) -> float:
+def _reach(asked: Asked, table: ShareTable, counts: tuple[int, ...]) -> float:
     """Give the width to expect: exact interval, or the normal formula the other way round."""
-    question, expected = asked.question, _expected(table)
+    question, expected, n = asked.question, _expected(table), worth(asked, counts)
     if table.method == "exact":
         return expected_reach(
             expected,
@@ -127,7 +129,7 @@ def _reach(asked: Asked, table: ShareTable, n: int) -> float:
     return z * math.sqrt(expected * (1 - expected) * left / n)
 
 
-def _steps(asked: Asked, table: ShareTable, n: int) -> tuple[Step, ...]:
+def _steps(asked: Asked, table: ShareTable, counts: tuple[int, ...]) -> tuple[Step, ...]:
     question, expected = asked.question, _expected(table)
     margin = table.margin or 0.0
     z = t_quantile(math.inf, confidence=question.confidence, kind=question.interval)
@@ -153,7 +155,7 @@ def _steps(asked: Asked, table: ShareTable, n: int) -> tuple[Step, ...]:
     if asked.population is not None:
         steps.append(_listed(first, asked.population))
     if table.method == "exact":
-        steps.append(_exact(asked, table, n))
+        steps.append(_exact(asked, table, counts))
     return tuple(steps)
 
 
@@ -174,7 +176,8 @@ def _listed(first: float, units: int) -> Step:
     )
 
 
-def _exact(asked: Asked, table: ShareTable, n: int) -> Step:
+def _exact(asked: Asked, table: ShareTable, counts: tuple[int, ...]) -> Step:
+    reach = _reach(asked, table, counts)
     listed = asked.population is not None
     return Step(
         symbol="d(n)",
@@ -184,7 +187,7 @@ def _exact(asked: Asked, table: ShareTable, n: int) -> Step:
         if asked.question.interval == "two-sided"
         else "d(n) = Σ P(X = x) · distance from p to the exact limit at x",
         inputs=(
-            Quantity("n", "results", n, "results"),
+            Quantity("n", "results, as of one simple sample", worth(asked, counts), "results"),
             Quantity("p", "share to expect", _expected(table)),
             *(
                 (Quantity("N", "units in the list", asked.population or 0, "units"),)
@@ -192,8 +195,8 @@ def _exact(asked: Asked, table: ShareTable, n: int) -> Step:
                 else ()
             ),
         ),
-        unrounded=_reach(asked, table, n),
-        rounded=_reach(asked, table, n),
+        unrounded=reach,
+        rounded=reach,
         source=HYPERGEOMETRIC if listed else CLOPPER,
     )
 
@@ -220,17 +223,19 @@ def _finding(
         answer=answer,
         amounts=(
             Amount("n", "Results", total, "results"),
-            Amount("expected_reach", "Expected reach of the interval", _reach(asked, table, total)),
+            Amount(
+                "expected_reach", "Expected reach of the interval", _reach(asked, table, counts)
+            ),
             Amount("n_normal", "Results by the normal formula", normal, "results"),
         ),
         columns=("if the share is", "expected reach at this n, points"),
         rows=tuple(
-            (typed_percent(p), figure(100 * _reach(asked, _at(table, p), total)))
+            (typed_percent(p), figure(100 * _reach(asked, _at(table, p), counts)))
             for p in sorted({0.02, 0.05, 0.1, 0.2, 0.5, expected})
         ),
         steps=steps,
         assumptions=assumptions(asked),
-        warnings=_warnings(asked, table),
+        warnings=(*weighting_words(asked, counts), *_warnings(asked, table)),
         sources=(COCHRAN, HYPERGEOMETRIC if asked.population is not None else CLOPPER),
         picture=None if takes_all(asked, counts) else _picture(asked, table, total),
     )
@@ -248,8 +253,8 @@ def assumptions(asked: Asked) -> tuple[str, ...]:
     ]
     if len(asked.question.parts) > 1:
         lines.append(
-            "Counted as one simple random sample: strata sampled in proportion do no worse; other "
-            "shares of the total can."
+            "Counted as one simple random sample: strata sampled in proportion do no worse. Out of "
+            "proportion, the share is taken to be alike in all strata."
         )
     return tuple(lines)
 
@@ -258,12 +263,8 @@ def _warnings(asked: Asked, table: ShareTable) -> tuple[str, ...]:
     lines = []
     if table.expected is None:
         lines.append("No share was expected, so 50 % was taken, which asks for the most results.")
-    low = min(_expected(table), 1 - _expected(table))
-    if table.margin is not None and table.margin > low:
-        lines.append(
-            f"The margin of {typed(100 * table.margin)} points is wider than the share expected: "
-            "the interval will run into 0 or 100 %."
-        )
+    if table.margin is not None and table.margin > _room(asked, table):
+        lines.append(_runs_out(asked, table.margin))
     if table.method == "normal" and table.margin is not None:
         question = asked.question
         exact = n_for_expected_reach(
@@ -280,11 +281,30 @@ def _warnings(asked: Asked, table: ShareTable) -> tuple[str, ...]:
     return tuple(lines)
 
 
+def _room(asked: Asked, table: ShareTable) -> float:
+    """Give how far the interval, or its one limit, can reach before it runs into an end."""
+    expected = _expected(table)
+    above, below = 1 - expected, expected
+    rooms = {"two-sided": min(above, below), "upper-limit": above, "lower-limit": below}
+    return rooms[asked.question.interval]
+
+
+def _runs_out(asked: Asked, margin: float) -> str:
+    points = f"The margin of {typed(100 * margin)} points"
+    if asked.question.interval == "upper-limit":
+        return f"{points} reaches beyond 100 % from the share expected: the limit will run into it."
+    if asked.question.interval == "lower-limit":
+        return f"{points} is wider than the share expected: the limit will run into 0 %."
+    return f"{points} is wider than the share expected: the interval will run into 0 or 100 %."
+
+
 def _picture(asked: Asked, table: ShareTable, n: int) -> Picture:
     steps = sorted({max(2, whole(n * (0.4 + 0.2 * k))) for k in range(9)} | {n})
     if asked.population is not None:
         steps = [m for m in steps if m <= asked.population]
-    ys = [100 * _reach(asked, table, m) for m in steps]
+    if len(asked.question.parts) > 1:
+        steps = [m for m in steps if sum(asked.shared(m)) == m]
+    ys = [100 * _reach(asked, table, asked.shared(m)) for m in steps]
     return Picture(
         kind="lines",
         caption="Expected reach of the interval about the share, by the number of results.",

@@ -1,9 +1,12 @@
 """A share told from a stated one: results, and the count among them that decides."""
 
+from fieldplan.base.errors import DesignError
 from fieldplan.base.working import Quantity, Step
 from fieldplan.campaign.questions.share import ShareTable
 from fieldplan.sizing.asked.counting_claims import (
+    EVEN,
     HYPERGEOMETRIC,
+    evenness,
     exceeding_units,
     level_words,
     population_words,
@@ -48,6 +51,12 @@ def count_compared(asked: Asked, table: ShareTable) -> Answered:
             power=power,
         )[0]
     needed = asked.shared(total)
+    if evenness(asked, needed) < EVEN:
+        message = (
+            "a count that decides gives every result the same say, and these strata are not "
+            'sampled in proportion to their size; write allocation = "proportional".'
+        )
+        raise DesignError(message)
     finding = compared(asked, table, needed, decides=True)
     side = "below" if _below(table) else "above"
     return Answered(needed, f"a share {side} {typed_percent(table.compare_with or 0.0)}", finding)
@@ -68,7 +77,7 @@ def compared(
         These counts are the answer, so that the working belongs beside it.
     """
     total = sum(counts)
-    stated, expected, _ = _turned(table)
+    expected = _turned(table)[1]
     allowed = _critical(asked, table, total)
     power = 0.0 if allowed is None else _at_most(asked, allowed, total, expected)
     return Finding(
@@ -81,8 +90,8 @@ def compared(
             Amount("power", "Chance to tell the expected share from the stated one", power),
             Amount(
                 "alpha",
-                "Chance to do so where the stated share is true",
-                0.0 if allowed is None else _at_most(asked, allowed, total, stated),
+                f"Chance to do so where {_null_words(asked, table)}",
+                0.0 if allowed is None else _at_most(asked, allowed, total, _null(asked, table)),
             ),
         ),
         steps=(_step(asked, table, total),) if decides else (),
@@ -92,7 +101,7 @@ def compared(
             "The count that decides follows from the number of results that come in: it is fixed "
             "by the table of the test, not chosen afterwards.",
         ),
-        warnings=_warnings(asked),
+        warnings=_warnings(asked, counts),
         sources=(BINOMIAL if asked.population is None else HYPERGEOMETRIC,),
         picture=_picture(asked, table, total, allowed),
     )
@@ -111,6 +120,33 @@ def _turned(table: ShareTable) -> tuple[float, float, float]:
     return stated, expected, 1 - (table.beta or 0.0)
 
 
+def _null(asked: Asked, table: ShareTable) -> float:
+    """Give the turned share where alpha is kept: as stated, of a list the next whole unit."""
+    stated = _turned(table)[0]
+    return stated if asked.population is None else exceeding_units(asked, stated) / asked.population
+
+
+def _null_units(asked: Asked, table: ShareTable) -> int:
+    """Count the units of a list that the stated share still allows: most, or fewest, of them."""
+    counted_from_here = exceeding_units(asked, _turned(table)[0])
+    units = asked.population or 0
+    return counted_from_here if _below(table) else units - counted_from_here
+
+
+def _expected_units(asked: Asked, table: ShareTable) -> int:
+    """Count the units of a list that the expected share comes nearest to."""
+    units = asked.population or 0
+    turned = round(_turned(table)[1] * units)
+    return turned if _below(table) else units - turned
+
+
+def _null_words(asked: Asked, table: ShareTable) -> str:
+    if asked.population is None:
+        return "the stated share is true"
+    bound = "no fewer than" if _below(table) else "no more than"
+    return f"{bound} {_null_units(asked, table)} of {asked.population} have it"
+
+
 def _at_most(asked: Asked, allowed: int, n: int, share: float) -> float:
     """Give P(X ≤ allowed) where just this share has what is counted."""
     if asked.population is None:
@@ -121,9 +157,7 @@ def _at_most(asked: Asked, allowed: int, n: int, share: float) -> float:
 
 def _critical(asked: Asked, table: ShareTable, n: int) -> int | None:
     """Give the largest count that still speaks against the stated share; None where none does."""
-    stated = _turned(table)[0]
-    if asked.population is not None:
-        stated = exceeding_units(asked, stated) / asked.population
+    stated = _null(asked, table)
 
     def too_many(count: int) -> bool:
         return _at_most(asked, count, n, stated) > (table.alpha or 0.0) + SLACK
@@ -150,10 +184,16 @@ def _answer(asked: Asked, table: ShareTable, n: int, allowed: int | None) -> str
     decides = _decides_at(table, n, allowed)
     how = f"no more than {decides}" if _below(table) else f"at least {decides}"
     power = _at_most(asked, allowed, n, _turned(table)[1])
+    shown, true = f"{side} {typed_percent(stated)}", f"it is {typed_percent(expected)}"
+    if asked.population is not None:
+        bound, units = "fewer" if _below(table) else "more", asked.population
+        shown += f", that is {bound} than {_null_units(asked, table)} of {units}"
+        having = "have it" if asked.level is None else "exceed it"
+        true = f"{_expected_units(asked, table)} of {units} {having}"
     return (
         f"{counted(n, 'result')}, {how} of them {what}, would show the share of "
-        f"{population_words(asked)} to be {side} {typed_percent(stated)}; if it is "
-        f"{typed_percent(expected)}, that happens in {percent(power)} of such campaigns."
+        f"{population_words(asked)} to be {shown}; if {true}, that happens in {percent(power)} of "
+        "such campaigns."
     )
 
 
@@ -182,12 +222,17 @@ def _step(asked: Asked, table: ShareTable, n: int) -> Step:
     )
 
 
-def _warnings(asked: Asked) -> tuple[str, ...]:
+def _warnings(asked: Asked, counts: tuple[int, ...]) -> tuple[str, ...]:
     lines = [
         "With a few results more the chance can fall a little before it rises, because counts are "
         "whole.",
     ]
-    if len(asked.question.parts) > 1:
+    if evenness(asked, counts) < EVEN:
+        lines.append(
+            "These strata are not sampled in proportion to their size: the count of all results "
+            "together decides nothing."
+        )
+    elif len(asked.question.parts) > 1:
         lines.append(
             "Counted as one simple random sample: sample the strata in proportion to their size."
         )
@@ -199,6 +244,10 @@ def _picture(asked: Asked, table: ShareTable, n: int, allowed: int | None) -> Pi
     low, high = sorted((stated, expected))
     spread = high - low
     xs = [min(max(low - spread + 3 * spread * k / 60, 0.0), 1.0) for k in range(61)]
+    if asked.population is not None:
+        xs = sorted({round(x * asked.population) / asked.population for x in xs})
+        stated = _null_units(asked, table) / asked.population
+        expected = _expected_units(asked, table) / asked.population
     turned = [x if _below(table) else 1 - x for x in xs]
     ys = [0.0 if allowed is None else _at_most(asked, allowed, n, x) for x in turned]
     side = "below" if _below(table) else "above"

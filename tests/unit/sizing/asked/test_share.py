@@ -2,11 +2,13 @@
 
 import math
 
+import numpy as np
 import pytest
 from scipy import stats
 
 from fieldplan.base.errors import DesignError
 from fieldplan.sizing.asked.share import bought, count
+from fieldplan.sizing.asked.weighted_share import worth
 from fieldplan.sizing.question import Part
 from fieldplan.stats.proportions import expected_reach
 from tests.unit.sizing.asked.asked_for import amount, asked_for, listed
@@ -133,3 +135,107 @@ def test_margins_out_of_reach_are_refused() -> None:
     )
     with pytest.raises(DesignError, match="cannot be told from one with 3"):
         count(near)
+
+
+UNEVEN = (Part("plain", 0.9, 1.0), Part("dump", 0.1, 1.0))
+
+
+def test_strata_out_of_proportion_keep_the_margin_once_weighted() -> None:
+    """Brute force: the weighted share of 40 000 made campaigns scatters as its margin says."""
+    even = asked_for("share", expected=0.2, margin=0.08, method="normal")
+    asked = asked_for("share", parts=UNEVEN, expected=0.2, margin=0.08, method="normal",
+                      allocation="equal-precision")  # fmt: skip
+    found = count(asked)
+    assert sum(found.needed) > 1.5 * sum(count(even).needed)
+    campaigns = 40_000
+    rng = np.random.default_rng(71)
+    weighted = sum(
+        part.weight * rng.binomial(n, 0.2, campaigns) / n
+        for part, n in zip(UNEVEN, found.needed, strict=True)
+    )
+    half_width = 1.959964 * float(np.std(weighted))
+    assert half_width == pytest.approx(
+        amount(found, "expected_reach"), rel=4 / math.sqrt(2 * campaigns) + 0.005
+    )
+    assert half_width <= 0.08 * (1 + 4 / math.sqrt(2 * campaigns))
+    assert f"counted together these {sum(found.needed)} mislead" in found.finding.warnings[0]
+
+
+def test_strata_in_proportion_are_worth_their_number_and_a_whole_list_all_of_it() -> None:
+    """Invariants: nothing is lost in proportion, and a list that is looked at is known."""
+    asked = asked_for("share", parts=UNEVEN, expected=0.2, margin=0.08)
+    assert sum(count(asked).needed) == 105
+    assert worth(asked, (90, 10)) == 100
+    strata = asked_for("share", parts=listed(60, 40), expected=0.2, margin=0.08)
+    assert worth(strata, (60, 40)) == 100
+    assert worth(strata, (30, 20)) == 50
+
+
+@pytest.mark.parametrize(
+    ("words", "reach"),
+    [
+        ({"expected": 0.2, "margin": 0.25}, 24.2),
+        ({"expected": 0.02, "margin": 0.03, "confidence": 0.9, "interval": "upper-limit"}, 2.98),
+    ],
+)
+def test_reach_that_is_expected_is_the_one_that_the_number_buys(words, reach) -> None:
+    """Sum over all counts of the exact limits by scipy's beta quantiles, not the margin asked."""
+    found = count(asked_for("share", **words))
+    (n,) = found.needed
+    tail = (1 - words.get("confidence", 0.95)) / (2 if "interval" not in words else 1)
+    k = np.arange(n + 1)
+    upper = np.where(k == n, 1.0, stats.beta.ppf(1 - tail, k + 1, np.maximum(n - k, 1)))
+    lower = np.where(k == 0, 0.0, stats.beta.ppf(tail, np.maximum(k, 1), n - k + 1))
+    chances = stats.binom.pmf(k, n, words["expected"])
+    width = (upper - lower) / 2 if "interval" not in words else upper - words["expected"]
+    assert 100 * float(chances @ width) == pytest.approx(reach, abs=0.05 if reach > 10 else 0.005)
+    assert f"{reach} points" in found.finding.answer
+
+
+def test_upper_limit_that_stays_between_the_ends_is_not_warned_about() -> None:
+    """An upper limit expected at 5 % runs into neither 0 nor 100 %; a lower one there would."""
+    words = {"expected": 0.02, "margin": 0.03, "confidence": 0.9}
+    said = count(asked_for("share", interval="upper-limit", **words)).finding.warnings
+    assert not any("run into" in line for line in said)
+    said = count(asked_for("share", expected=0.98, margin=0.03, interval="upper-limit")).finding
+    assert any("run into it" in line for line in said.warnings)
+
+
+@pytest.mark.parametrize(
+    ("stated", "expected", "units", "edge", "words"),
+    [
+        (0.02, 0.10, 90, 1, "above 2 %, that is more than 1 of 90; if 9 of 90 exceed it"),
+        (0.12, 0.02, 90, 11, "below 12 %, that is fewer than 11 of 90; if 2 of 90 exceed it"),
+    ],
+)
+def test_comparison_on_a_list_keeps_alpha_at_the_whole_unit_next_to_the_stated_share(
+    stated, expected, units, edge, words
+) -> None:
+    """Hypergeometric of scipy, where as many units have it as the stated share still allows."""
+    found = count(
+        asked_for("share", parts=listed(units), compare_with=stated, expected=expected,
+                  alpha=0.05, beta=0.1)
+    )  # fmt: skip
+    (n,) = found.needed
+    decides = amount(found, "decides_at")
+    if expected > stated:
+        wrong = stats.hypergeom.sf(decides - 1, units, edge, n)
+        right = stats.hypergeom.sf(decides - 1, units, round(expected * units), n)
+    else:
+        wrong = stats.hypergeom.cdf(decides, units, edge, n)
+        right = stats.hypergeom.cdf(decides, units, round(expected * units), n)
+    assert amount(found, "alpha") == pytest.approx(wrong, abs=1e-12)
+    assert amount(found, "alpha") <= 0.05
+    assert amount(found, "power") == pytest.approx(right)
+    assert words in found.finding.answer
+    assert found.finding.picture is not None
+    for x in found.finding.picture.series[0].x:
+        assert x * units / 100 == pytest.approx(round(x * units / 100))
+
+
+def test_comparison_with_strata_out_of_proportion_is_refused() -> None:
+    """A count of results says nothing of a share that has to be weighted."""
+    words = {"compare_with": 0.3, "expected": 0.15, "alpha": 0.05, "beta": 0.2}
+    asked = asked_for("share", parts=UNEVEN, allocation="equal-precision", **words)
+    with pytest.raises(DesignError, match='write allocation = "proportional"'):
+        count(asked)
