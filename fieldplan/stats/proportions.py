@@ -193,7 +193,7 @@ def listed_interval(
 
     Notes
     -----
-    Hypergeometric tails inverted: Cochran (1977), Sampling Techniques, 3rd ed., sec. 3.6.
+    Hypergeometric tails inverted: Cochran (1977), Sampling Techniques, 3rd ed., sec. 3.5.
 
     Examples
     --------

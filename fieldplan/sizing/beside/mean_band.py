@@ -164,13 +164,14 @@ def _hidden(asked: Asked, counts: Sequence[int]) -> tuple[str, ...]:
     for family, largest in wider:
         cv = min(largest, WIDEST * seen)
         held = misses(question, SiteShape(family, (Shape(family, cv),)), counts).held
-        found.append((held, cv, largest > cv))
-    held, cv, capped = min(found)
+        found.append((held, cv, largest > cv, family))
+    held, cv, capped, family = min(found)
     how = "which they do not rule out" if capped else "which about one such pilot in ten would hide"
     return (
         f"{question.parts[0].results} results cannot show a long tail: with a CV of "
-        f"{figure(cv, 2)} instead of {figure(seen, 2)}, {how}, the {interval_name(question)} "
-        f"would hold the mean in about {100 * held:.0f} of 100 campaigns.",
+        f"{figure(cv, 2)} ({family}) instead of {figure(seen, 2)}, {how}, the "
+        f"{interval_name(question)} would hold the mean in about {100 * held:.0f} of 100 "
+        "campaigns.",
     )
 
 

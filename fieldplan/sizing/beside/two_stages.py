@@ -22,6 +22,11 @@ SKEWED = (
     "where to look, before the first result is seen."
 )
 
+HEAVY = (
+    "The averages of two stages take single results as normal, not with the heavy tails declared; "
+    "with those they keep the half-width less often."
+)
+
 
 @dataclass(frozen=True)
 class _Target:
@@ -83,7 +88,7 @@ def _finding(
             Amount("resized_chance", "Chance that one re-size keeps the target", resized.chance),
             Amount("stein_results", "Results on average, Stein's two stages", stein.results),
         ),
-        columns=("How the number is found", "Results", "Keeps the half-width"),
+        columns=("How the number is found", "Results", "Keeps the half-width", "Sigma taken as"),
         rows=_rows(size, plain, resized, stein),
         steps=steps,
         assumptions=(
@@ -92,7 +97,7 @@ def _finding(
             "After a re-size the t interval takes all results. After Stein's rule it takes the "
             "first stage's standard deviation and degrees of freedom, with the mean of all.",
         ),
-        warnings=(SKEWED,),
+        warnings=(SKEWED, *((HEAVY,) if asked.question.heavy_tails else ())),
         sources=(STEIN, "re-size by predictive F, derived here; see docs/sizing/mean.md"),
     )
 
@@ -111,11 +116,12 @@ def _rows(size: Size, plain: int, resized: Outlook, stein: Outlook) -> tuple[tup
     def kept(chance: float | None) -> str:
         return "not known" if chance is None else percent(chance)
 
-    rows = [("plain formula, fixed", f"{plain}", kept(size.chance_plain))]
+    known, right = "known from a pilot", "exactly right"
+    rows = [("plain formula, fixed", f"{plain}", kept(size.chance_plain), known)]
     if size.needed != plain:
-        rows.append(("at the assurance, fixed", f"{size.needed}", kept(size.chance_needed)))
-    rows.append(("one re-size", f"{resized.results:.0f} on average", kept(resized.chance)))
-    rows.append(("Stein's two stages", f"{stein.results:.0f} on average", "100 %"))
+        rows.append(("at the assurance, fixed", f"{size.needed}", kept(size.chance_needed), known))
+    rows.append(("one re-size", f"{resized.results:.0f} on average", kept(resized.chance), right))
+    rows.append(("Stein's two stages", f"{stein.results:.0f} on average", "100 %", right))
     return tuple(rows)
 
 
