@@ -12,6 +12,7 @@ from fieldplan.cli.typed_numbers import BareNumbers
 from fieldplan.cli.with_keys import place
 
 if TYPE_CHECKING:
+    from fieldplan.campaign.lines import KeyPath
     from fieldplan.campaign.model import Campaign
     from fieldplan.campaign.problems import Problem
     from fieldplan.lab.model import Spread
@@ -45,7 +46,7 @@ def asked_of_numbers(typed: Mapping[str, Any]) -> "Asked":
     from fieldplan.lab.visits import with_visits
     from fieldplan.sizing.asked.model import Asked
     from fieldplan.sizing.asking import NO_TARGET
-    from fieldplan.sizing.campaign_question import ask
+    from fieldplan.sizing.campaign_question import ask, with_losses
     from fieldplan.sizing.visits import ABOUT_MEANS, as_visits
 
     numbers = BareNumbers(**typed)
@@ -62,6 +63,7 @@ def asked_of_numbers(typed: Mapping[str, Any]) -> "Asked":
     else:
         question = ask(campaign, NO_TARGET, parts=parts, mean=numbers.mean)
         question = replace(question, assurance=None, analyte="", unit=numbers.unit or "")
+    question = replace(question, parts=with_losses(question.parts, campaign.loss))
     spread = None
     if known:
         spread = with_splits(campaign, with_visits(campaign, _spread(numbers, parts)))
@@ -176,20 +178,29 @@ def _told(problem: "Problem", data: dict[str, Any], question: str) -> str:
     from fieldplan.campaign.problems import key_name
     from fieldplan.campaign.questions import MODULES, table_of
 
-    own = table_of(question)
-    name = key_in_options(key_name(problem.path, data), own)
-    table, key = problem.path[-2:] if len(problem.path) > 1 else ("", problem.path[-1])
+    path, own = problem.path, table_of(question)
+    name = key_in_options(key_name(path, data), own)
     text = in_options(problem.text)
-    if question in MODULES and table == own and key not in table_model(question).model_fields:
-        text = misplaced(question, str(key))
-    value: Any = data
-    for step in problem.path:
-        found = isinstance(value, dict) and step in value
-        found = found or (isinstance(value, list) and isinstance(step, int) and step < len(value))
-        value = value[step] if found else None
+    if question in MODULES and path[2:3] == (own,) and len(path) == 4:
+        if path[3] not in table_model(question).model_fields:
+            text = misplaced(question, str(path[3]))
+    part = _at((*path[:2], "part"), data) if path[0] == "sigma" else None
+    if part not in (None, "total"):
+        name = f"--with sigma.{part}"
+    value = _at(path, data)
     if isinstance(value, int | float) and 1 < value < 100 and "below 1 " in f"{text} ":
         text += f" For {value:g} % type {value / 100:g}."
     return f"{name}: {text}"
+
+
+def _at(path: "KeyPath", data: Any) -> Any:
+    """Return what stands at a path; None where nothing does."""
+    for step in path:
+        try:
+            data = data[step]
+        except (LookupError, TypeError):
+            return None
+    return data
 
 
 def _spread(numbers: BareNumbers, parts: "tuple[Part, ...]") -> "Spread":

@@ -282,6 +282,30 @@ def parts_of(
     return as_visits(parts, spread) if of_mean else parts
 
 
+def with_losses(parts: tuple[Part, ...], loss: "Loss") -> tuple[Part, ...]:
+    """Give parts the loss that is expected in each.
+
+    Parameters
+    ----------
+    parts : tuple of Part
+    loss : Loss
+
+    Raises
+    ------
+    CampaignError
+        A loss is typed for a stratum that is none of the parts.
+    """
+    names = [part.name for part in parts]
+    for name, share in loss.by_stratum.items():
+        if name not in names:
+            message = (
+                f"[loss] by_stratum has {typed(share)} for '{name}', which is no stratum "
+                f"({', '.join(names)}); correct it or leave it out."
+            )
+            raise CampaignError(message)
+    return tuple(replace(part, loss=loss.by_stratum.get(part.name, loss.share)) for part in parts)
+
+
 def _losses(campaign: "Campaign", names: list[str]) -> Mapping[str, float]:
     """Take the losses typed by stratum; a name that the frame does not have is refused."""
     losses = campaign.loss.by_stratum

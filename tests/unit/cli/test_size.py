@@ -367,3 +367,10 @@ def test_a_budget_buys_what_its_prices_allow():
     found = json.loads(outcome.stdout)
     assert (found["n"], found["cost"], found["number_from"]) == (12, 888.0, "budget")
     assert found["standard_error"] == pytest.approx(27 / 12**0.5)
+
+
+def test_a_loss_typed_beside_bare_numbers_adds_visits():
+    """By hand: 22 / (1 − 0.2) = 27.5, so 28 visits."""
+    outcome = run("--sigma", "27.57", "--standard-error", "6", "--json", "--with", "loss.share=0.2")
+    found = json.loads(outcome.stdout)
+    assert (found["n"], found["locations"]) == (22, 28)
