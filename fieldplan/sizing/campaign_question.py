@@ -13,7 +13,7 @@ from fieldplan.sizing.visits import as_visits
 from fieldplan.sizing.words import typed
 
 if TYPE_CHECKING:
-    from fieldplan.campaign.model import Campaign, Cost, Objective
+    from fieldplan.campaign.model import Campaign, Cost, Loss, Objective
     from fieldplan.frame.model import Frame
     from fieldplan.lab.model import Spread, StratumSpread
 
