@@ -31,8 +31,8 @@ PATIENCE_IN_CELLS = 500
 MOST_CANDIDATES = 20_000_000
 SPACING_NOTE = (
     "A minimum spacing of {spacing:g} m was kept within '{stratum}'. Places along the lines "
-    "between cells are then a little less likely than others; the mean and its interval are "
-    "computed as if all places of a cell were equally likely."
+    "between cells are then less likely than others, the more so the wider the spacing; the mean "
+    "and its interval are computed as if all places of a cell were equally likely."
 )
 
 

@@ -139,7 +139,7 @@ def test_a_minimum_spacing_holds_between_all_places_of_a_stratum() -> None:
         spots = np.array([(p.easting, p.northing) for p in locations.places if p.stratum == name])
         apart = np.hypot(*(spots[:, None] - spots[None]).transpose(2, 0, 1))
         assert apart[np.triu_indices(len(spots), 1)].min() >= 8.0
-    assert "a little less likely" in locations.notes[0]
+    assert "less likely than others, the more so the wider" in locations.notes[0]
 
 
 def test_a_spacing_that_leaves_no_room_is_refused_with_one_that_fits() -> None:
