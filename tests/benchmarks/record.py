@@ -3,6 +3,7 @@
 import sys
 from collections.abc import Callable, Iterator
 
+from tests.benchmarks.balanced import measured as measured_balanced
 from tests.benchmarks.commands import timed_commands
 from tests.benchmarks.correlation import measured as measured_correlation
 from tests.benchmarks.money import measured as measured_money
@@ -92,6 +93,17 @@ def strata() -> Iterator[str]:
         )
 
 
+def balanced() -> Iterator[str]:
+    """Yield the table of the section "Balanced lists"."""
+    yield "| work | aim | shortest | looking everywhere | ratio |"
+    yield "| --- | --- | --- | --- | --- |"
+    for row in measured_balanced():
+        aim = f"{row.aim_s:g} s" if row.aim_s else "—"
+        peer = f"{row.peer_s:.2f} s" if row.peer_s else "—"
+        ratio = f"{row.peer_s / row.seconds:.0f}" if row.peer_s else "—"
+        yield f"| {row.name} | {aim} | {row.seconds:.2f} s | {peer} | {ratio} |"
+
+
 SECTIONS: dict[str, Callable[[], Iterator[str]]] = {
     "placement": placement,
     "commands": commands,
@@ -100,6 +112,7 @@ SECTIONS: dict[str, Callable[[], Iterator[str]]] = {
     "money": money,
     "correlation": correlation,
     "strata": strata,
+    "balanced": balanced,
 }
 
 if __name__ == "__main__":
