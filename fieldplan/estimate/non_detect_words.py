@@ -14,6 +14,8 @@ from fieldplan.stats.censored_choice import (
     MOST_WITH_SHAPE,
     MOST_WITHOUT_SHAPE,
 )
+from fieldplan.stats.censored_fit import FEWEST_DETECTS
+from fieldplan.stats.censoring_forecast import MOST_CENSORED
 
 NAMES: dict[CensoredMethod, str] = {
     "kaplan-meier": "the product limit of Kaplan and Meier",
@@ -21,6 +23,11 @@ NAMES: dict[CensoredMethod, str] = {
     "lognormal-likelihood": "maximum likelihood of a lognormal shape",
     "gamma-likelihood": "maximum likelihood of a gamma shape",
     "normal-likelihood": "maximum likelihood of a normal shape",
+}
+
+UPPER_HELD: dict[CensoredMethod, str] = {
+    "order-statistics": "89 to 96 % from 30 results on, least where results are most skewed",
+    "kaplan-meier": "90 % or more from 30 results on",
 }
 
 
@@ -46,7 +53,8 @@ def method_sentence(means: Means) -> str:
         )
     found = means.modelled
     if found is None:
-        return f"Non-detects stand as bounds: {means.reason}." if means.reason else ""
+        why = f"Non-detects stand as bounds: {means.reason}." if means.reason else ""
+        return why or only_bounds(means)
     parts = [_by(found)]
     if found.whole.upper_bound:
         parts.append(
@@ -63,6 +71,23 @@ def method_sentence(means: Means) -> str:
             "detects, with half the limit in them."
         )
     return " ".join(parts)
+
+
+def only_bounds(means: Means) -> str:
+    """Say so where detects are too few for any mean, though the rule is to show bounds.
+
+    Parameters
+    ----------
+    means : Means
+        Under bounds, with non-detects.
+    """
+    n, detected = means.half.n, means.half.n - means.censored
+    if detected >= FEWEST_DETECTS and means.censored <= MOST_CENSORED * n:
+        return ""
+    return (
+        f"Detected without a non-detect behind them: {detected} of {n} values. No mean can be "
+        "claimed from so few, only that it lies within the bounds."
+    )
 
 
 def _by(found: Modelled) -> str:
@@ -108,7 +133,18 @@ def held_sentence(means: Means) -> str:
         if outside
         else ""
     )
-    return f"{METHOD_SENTENCES[found.method]} {held}{end}"
+    return f"{METHOD_SENTENCES[found.method]} {held}{_other_kinds(means)}{end}"
+
+
+def _other_kinds(means: Means) -> str:
+    """Say what limits on one side held, and what was not simulated."""
+    rules, found = means.rules, means.modelled
+    said = ""
+    if found is not None and rules.interval == "upper-limit":
+        said = f" A 95 % upper limit held it in {UPPER_HELD.get(found.method, 'about 94 to 95 %')}."
+    elif rules.interval == "lower-limit":
+        said = " Lower limits were not simulated by themselves."
+    return said if rules.confidence == 0.95 else f"{said} No other confidence was simulated."
 
 
 def _held(method: CensoredMethod) -> tuple[str, float, int]:

@@ -8,7 +8,7 @@ import math
 import sys
 from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import ProcessPoolExecutor
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import NamedTuple
 
 import numpy as np
@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.censored import CensoredMean, CensoredMethod, censored_mean, weighted_mean
-from fieldplan.stats.intervals import t_interval
+from fieldplan.stats.intervals import IntervalKind, t_interval
 
 Floats = NDArray[np.float64]
 Sampler = Callable[[np.random.Generator, int], Floats]
@@ -72,6 +72,7 @@ class Cell:
     limits: int
     method: str
     strata: int = 1
+    kind: IntervalKind = "two-sided"
 
 
 @dataclass(frozen=True)
@@ -126,7 +127,7 @@ def at_half(sample: Sample) -> CensoredMean:
     return CensoredMean("kaplan-meier", float(x.mean()), error, *ends, x.size, len(sample.limits))
 
 
-def answer(sample: Sample, method: str) -> CensoredMean:
+def answer(sample: Sample, method: str, kind: IntervalKind = "two-sided") -> CensoredMean:
     """Answer by a method, or by the rule that chooses one: ``by-share``, ``by-share:gamma``."""
     from fieldplan.stats.censored_choice import choose_method
 
@@ -142,7 +143,7 @@ def answer(sample: Sample, method: str) -> CensoredMean:
             return bounds(sample)
         return censored_mean(*sample, chosen)
     named: CensoredMethod = method  # type: ignore[assignment]
-    return censored_mean(*sample, named)
+    return censored_mean(*sample, named, kind=kind)
 
 
 def weights_and_scales(strata: int) -> list[tuple[float, float]]:
@@ -168,13 +169,18 @@ def simulate(cell: Cell, *, repetitions: int, seed: int = 20_261_201) -> Found:
                         rng,
                     ),
                     cell.method,
+                    cell.kind,
                 )
                 for _, scale in parts
             ]
         except DesignError:
             refused += 1
             continue
-        whole = found[0] if len(found) == 1 else weighted_mean(found, [w for w, _ in parts])
+        whole = (
+            found[0]
+            if len(found) == 1
+            else weighted_mean(found, [w for w, _ in parts], kind=cell.kind)
+        )
         low, high = whole.low or 0.0, whole.high or math.inf
         means.append(whole.mean)
         held += low <= 1.0 <= high
@@ -241,7 +247,19 @@ def tables() -> dict[str, list[Cell]]:
     """Give the cells of every table, by its title."""
     likelihood = "lognormal-likelihood"
     large = ("lognormal, CV 1.5", "two lognormal parts", "normal, CV 0.3")
+    uppers = {
+        f"upper limit of 95 % by {method}": [
+            replace(cell, kind="upper-limit")
+            for cell in cells(method, names, (20, 30, 50), (0.2, 0.4), limits=(1,))
+        ]
+        for method, names in (
+            ("order-statistics", ("lognormal, CV 1", "lognormal, CV 1.5", "gamma, CV 1")),
+            ("lognormal-likelihood", LOGNORMALS),
+            ("kaplan-meier", ("lognormal, CV 1", "gamma, CV 1")),
+        )
+    }
     return {
+        **uppers,
         "order-statistics with many results": cells(
             "order-statistics", large, (100, 200, 500), (0.4,)
         ),

@@ -334,3 +334,39 @@ def test_an_analyte_beside_says_its_non_detects_in_one_sentence():
     (line,) = brief_sentences(plan, estimate(plan, returned(results_of())))
     assert "with 12 non-detects, of which its own sheet tells" in line
     assert "widest" not in line
+
+
+def test_bounds_of_very_few_detects_claim_no_mean():
+    """Bounds are shown by that rule whatever was detected; that they are no mean is said."""
+    few = answered("bounds", returned(results_of((15.0, 16.0), (14.0,) * 10)))
+    assert "2 of 12 values. No mean can be claimed" in few.non_detect_sentence
+    assert few.non_detect_sentence in few.sentences
+    assert answered("bounds").non_detect_sentence == ""
+
+
+@pytest.mark.parametrize(
+    ("rules", "words"),
+    [
+        ({"interval": "upper-limit"}, "A 95 % upper limit held it in 89 to 96 %"),
+        ({"interval": "lower-limit"}, "Lower limits were not simulated by themselves."),
+        ({"confidence": 0.9}, "No other confidence was simulated."),
+    ],
+)
+def test_limits_and_confidences_are_told_what_was_simulated(rules, words):
+    """A limit meets the skewness alone; what was not simulated is not promised."""
+    assert words in answered("order-statistics", **rules).coverage_sentence
+    assert words not in answered("order-statistics").coverage_sentence
+
+
+def test_by_share_looks_at_the_stratum_with_most_non_detects():
+    """One stratum at 50 % leaves the bounds for all, and is named."""
+    plan = strata_plan({"a": 0.7, "b": 0.3}, {"a": 3, "b": 3}, {"a": 20, "b": 20})
+    results = [*results_of(DETECTS[:18], (14.0,) * 2, stratum="a"),
+               *results_of(DETECTS[:10], (14.0,) * 10, stratum="b")]  # fmt: skip
+    answer = estimate(plan_with(Rules(non_detects="by-share"), plan), returned(results))
+    assert answer.as_bounds
+    assert answer.non_detect_sentence.startswith("Non-detects stand as bounds: in b 10 of 20")
+    fewer = [*results_of(DETECTS[:18], (14.0,) * 2, stratum="a"),
+             *results_of(DETECTS[:16], (14.0,) * 4, stratum="b")]  # fmt: skip
+    other = estimate(plan_with(Rules(non_detects="by-share"), plan), returned(fewer))
+    assert "by regression on order statistics" in other.non_detect_sentence
