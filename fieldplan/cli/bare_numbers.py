@@ -181,9 +181,9 @@ def _told(problem: "Problem", data: dict[str, Any], question: str) -> str:
     path, own = problem.path, table_of(question)
     name = key_in_options(key_name(path, data), own)
     text = in_options(problem.text)
-    if question in MODULES and path[2:3] == (own,) and len(path) == 4:
-        if path[3] not in table_model(question).model_fields:
-            text = misplaced(question, str(path[3]))
+    of_own = question in MODULES and path[2:3] == (own,) and len(path) == 4
+    if of_own and path[3] not in table_model(question).model_fields:
+        text = misplaced(question, str(path[3]))
     part = _at((*path[:2], "part"), data) if path[0] == "sigma" else None
     if part not in (None, "total"):
         name = f"--with sigma.{part}"

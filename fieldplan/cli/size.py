@@ -6,6 +6,8 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
+from fieldplan.base.errors import FieldplanError
+from fieldplan.cli.option_words import answer_in_options, in_options
 from fieldplan.cli.options import (
     explain_option,
     json_option,
@@ -18,7 +20,7 @@ from fieldplan.cli.options import (
 )
 from fieldplan.cli.size_findings import print_finding, print_findings
 from fieldplan.cli.size_options import BadOption, bare_number_options, given_names
-from fieldplan.cli.typed_numbers import BareNumbers
+from fieldplan.cli.typed_numbers import BareNumbers, refuse_unknown_question
 
 if TYPE_CHECKING:
     from collections.abc import Collection
@@ -121,9 +123,16 @@ def _of_numbers(typed: dict[str, Any], wanted: Any, *, alone: bool) -> "Size":
         numbers.refuse_idle()
         return answer(numbers.as_question())
     from fieldplan.cli.bare_numbers import asked_of_numbers
+    from fieldplan.cli.with_keys import options_first
     from fieldplan.sizing import size_asked
 
-    return size_asked(asked_of_numbers(typed), beside=wanted)
+    refuse_unknown_question(typed["question"])
+    typed = options_first(typed, click.get_current_context().command.params)
+    try:
+        return answer_in_options(size_asked(asked_of_numbers(typed), beside=wanted))
+    except FieldplanError as fault:
+        lines = [in_options(line) for line in fault.problems]
+        raise type(fault)(*lines) from fault
 
 
 def print_answer(answer: "Size", *, explain: bool, more: tuple[str, ...] = ()) -> None:

@@ -20,7 +20,8 @@ TARGETS: "tuple[TargetKind, ...]" = (
 )
 
 
-def _refuse_unknown_question(question: str) -> None:
+def refuse_unknown_question(question: str) -> None:
+    """Refuse a question that there is not, naming the one that is near or all of them."""
     from difflib import get_close_matches
 
     from fieldplan.campaign.questions import MODULES
@@ -65,7 +66,7 @@ class BareNumbers:
         self._check()
         if self.question == "mean":
             return
-        _refuse_unknown_question(self.question)
+        refuse_unknown_question(self.question)
         for kind in (*TARGETS, "assurance"):
             if getattr(self, kind) is not None:
                 message = (
@@ -87,6 +88,11 @@ class BareNumbers:
                 if name != "mean":
                     purpose = "--question or --more"
                 message = f"{shown} serves {purpose} only; leave it out."
+                if name == "level":
+                    message = (
+                        f"{shown} does not change how precise a mean is; leave it out, or ask "
+                        "--question mean-and-level."
+                    )
                 raise BadOption(message)
 
     def parts(self) -> "tuple[Part, ...]":
@@ -147,6 +153,11 @@ class BareNumbers:
                 else "no target: give --standard-error, --half-width, --relative-half-width or "
                 "--budget."
             )
+            if not given and any(key.startswith("design.locations") for key in self.with_keys):
+                message = (
+                    "fixed locations are held against a target: add the one that you would like, "
+                    "such as --standard-error 6; the answer says what the locations reach."
+                )
             raise BadOption(message)
         kind, value = given[0]
         if kind == "relative_half_width" and self.mean is None:

@@ -140,7 +140,7 @@ def test_campaign_asks_the_question_or_says_it_beside_the_mean(tmp_path: Path, t
             2,
             "sigma",
         ),
-        (["change", *keys("difference=8", "correlation=0.5"), *RISKS], 2, "[[sigma]]"),
+        (["change", *keys("difference=8", "correlation=0.5"), *RISKS], 2, "--sigma"),
         (["change", *keys("difference=8", "sigma_of_differences=-3"), *RISKS], 2, "above 0"),
         (
             ["change", *keys("difference=8", "sigma_of_differences=3", "alpha=0.7", "beta=0.3")],
