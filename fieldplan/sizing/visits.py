@@ -5,7 +5,8 @@ from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
-from fieldplan.stats.time_series import planned_factor, results_behind_sigma, sigma_of_series
+from fieldplan.stats.planned_visits import planned_factor
+from fieldplan.stats.time_series import results_behind_sigma, sigma_of_series
 
 if TYPE_CHECKING:
     from fieldplan.lab.model import StratumSpread

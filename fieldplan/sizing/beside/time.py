@@ -23,8 +23,8 @@ from fieldplan.sizing.visit_series import series_of
 from fieldplan.sizing.visits import ABOUT_MEANS, unhidden_sigma
 from fieldplan.sizing.words import counted, figure
 from fieldplan.stats.period_mean import period_variance_share
+from fieldplan.stats.planned_visits import planned_factor
 from fieldplan.stats.time_series import (
-    planned_factor,
     rho_at,
     visits_by_inflation,
     visits_needed,

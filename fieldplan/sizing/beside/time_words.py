@@ -10,10 +10,9 @@ from fieldplan.sizing.model import Size
 from fieldplan.sizing.visits import unhidden_sigma
 from fieldplan.sizing.words import percent
 from fieldplan.stats.intervals import t_quantile
+from fieldplan.stats.planned_visits import planned_factor, share_held_as_independent
 from fieldplan.stats.time_series import (
     effective_number,
-    planned_factor,
-    share_held_as_independent,
 )
 
 if TYPE_CHECKING:

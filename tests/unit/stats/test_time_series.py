@@ -10,16 +10,15 @@ from numpy.typing import NDArray
 
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.intervals import t_quantile
+from fieldplan.stats.planned_visits import planned_factor, share_held_as_independent
 from fieldplan.stats.time_series import (
     effective_number,
     effective_number_at,
     effective_number_of_lags,
     inflation,
     mean_correlation,
-    planned_factor,
     results_behind_sigma,
     rho_at,
-    share_held_as_independent,
     sigma_of_series,
     visits_by_inflation,
     visits_needed,
