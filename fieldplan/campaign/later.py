@@ -6,7 +6,6 @@ _LATER_VALUES: dict[tuple[str, str], dict[str, str]] = {
         "time": "frames of time such as days of discharge",
     },
     ("design", "layout"): {
-        "spatially-balanced": "spatially balanced layouts",
         "ranked-set": "ranked set sampling",
         "transect": "transects",
         "cluster": "cluster layouts",

@@ -401,8 +401,8 @@ LATER = [
     (('"area"', '"volume"'), '12: frame.kind: "volume" (frames of volumes such as stockpiles'),
     (('"area"', '"time"'), '12: frame.kind: "time" (frames of time such as days of discharge)'),
     (
-        ('"simple-random"', '"spatially-balanced"'),
-        '16: design.layout: "spatially-balanced" (spatially balanced layouts) is not done yet.',
+        ('"simple-random"', '"ranked-set"'),
+        '16: design.layout: "ranked-set" (ranked set sampling) is not done yet.',
     ),
     (('"simple-random"', '"ranked-set"'), '16: design.layout: "ranked-set" (ranked set sampling'),
     (('"simple-random"', '"Transect"'), '16: design.layout: "Transect" (transects) is not done'),
