@@ -7,6 +7,7 @@ import shutil
 from pathlib import Path
 
 import pytest
+from scipy import stats
 
 from fieldplan.cli.demo import demo_folder
 from tests.e2e.conftest import Packed, run
@@ -46,15 +47,18 @@ def test_river_runs_from_check_to_estimate(packed: Packed, tmp_path: Path) -> No
     by_hand = answer_by_hand(site.packet, estimate)
     assert estimate["mean"] == pytest.approx(by_hand[0], rel=1e-9)
     assert estimate["standard_error"] == pytest.approx(by_hand[1], rel=1e-9)
+    ends = estimate["interval"]
+    reach = float(stats.t.ppf(0.975, by_hand[2])) * by_hand[1]
+    assert (ends["high"] - ends["low"]) / 2 == pytest.approx(reach, rel=1e-9)
 
 
-def answer_by_hand(packet: Path, estimate: dict) -> tuple[float, float]:
-    """Mean and standard error from the results as used and the starts of the record."""
+def answer_by_hand(packet: Path, estimate: dict) -> tuple[float, float, float]:
+    """Mean, standard error and degrees of freedom from the results used and the record's starts."""
     record = json.loads((packet / "office" / "record.json").read_text(encoding="utf-8"))
     start = {p["location_id"]: p["start"] for p in record["locations"]["places"]}
     weight = {s["name"]: s["weight"] for s in record["frame"]["strata"]}
     used = [r for r in estimate["returns"]["results"] if r["used"]]
-    mean = variance = 0.0
+    mean, parts = 0.0, []
     for name, share in weight.items():
         groups: dict[int, list[float]] = {}
         for r in used:
@@ -64,8 +68,10 @@ def answer_by_hand(packet: Path, estimate: dict) -> tuple[float, float]:
         centre = math.fsum(values) / len(values)
         squares = sum(len(g) * (math.fsum(g) / len(g) - centre) ** 2 for g in groups.values())
         mean += share * centre
-        variance += share**2 * squares / (len(values) * (len(groups) - 1))
-    return mean, math.sqrt(variance)
+        k = len(groups)
+        parts.append((share**2 * squares / (len(values) * (k - 1)), k - 1))
+    variance = sum(part for part, _ in parts)
+    return mean, math.sqrt(variance), variance**2 / sum(part**2 / f for part, f in parts)
 
 
 BAD = {

@@ -39,6 +39,7 @@ def half_width(results: Path, content: dict[str, object], analyte: str) -> float
     return float(stats.t.ppf(0.975, freedom)) * sum(parts) ** 0.5
 
 
+@pytest.mark.parametrize("packed", ["hobbin-ley", "quern-flat"], indirect=True)
 def test_the_verdict_on_the_target_is_that_of_an_independent_computation(
     packed: Packed, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
