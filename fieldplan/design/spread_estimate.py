@@ -6,6 +6,7 @@ from dataclasses import replace
 from typing import Literal
 
 import numpy as np
+from numpy.typing import NDArray
 
 from fieldplan.base.errors import DesignError
 from fieldplan.design.model import (
@@ -85,21 +86,8 @@ def estimate_spread(
         The layout does not spread its places, a stratum has no result, one result that the rule
         refuses, or no record of its places.
     """
-    if layout not in SPREAD_LAYOUTS:
-        message = (
-            f'the variance from {rule} needs places that were spread, and layout "{layout}" leaves '
-            "them to chance: the interval would be too narrow. Use the formula of that layout."
-        )
-        raise DesignError(message)
-    means = (
-        "the plain mean"
-        if len(strata) == 1
-        else "stratum means weighed by their shares of the population"
-    )
-    method = METHODS[rule].format(means=means)
-    if any(stratum.population is not None for stratum in strata):
-        method += " Each term is multiplied by (1 − n/N), since the list is finite."
-    plain = weighted_mean(strata, single_result=single_result, method=method)
+    _refuse_chance(layout, rule)
+    plain = weighted_mean(strata, single_result=single_result, method=_method(strata, rule))
     if any(needs_spread(stratum) for stratum in strata):
         return replace(plain, caution=f"{LONE} {plain.caution}".strip())
     found = [_stratum(values, rule) for values in strata]
@@ -119,6 +107,29 @@ def estimate_spread(
         spread_variances=tuple(found),
         caution=_caution(found, rule, times=_ratio(plain.standard_error, error)),
     )
+
+
+def _refuse_chance(layout: str, rule: SpreadRule) -> None:
+    """Refuse a layout that leaves its places to chance."""
+    if layout not in SPREAD_LAYOUTS:
+        message = (
+            f'the variance from {rule} needs places that were spread, and layout "{layout}" leaves '
+            "them to chance: the interval would be too narrow. Use the formula of that layout."
+        )
+        raise DesignError(message)
+
+
+def _method(strata: Sequence[StratumValues], rule: SpreadRule) -> str:
+    """Say how mean and variance come about, for the sheet."""
+    means = (
+        "the plain mean"
+        if len(strata) == 1
+        else "stratum means weighed by their shares of the population"
+    )
+    method = METHODS[rule].format(means=means)
+    if any(stratum.population is not None for stratum in strata):
+        method += " Each term is multiplied by (1 − n/N), since the list is finite."
+    return method
 
 
 def _ratio(plain: float, error: float) -> float:
@@ -143,24 +154,7 @@ def _stratum(stratum: StratumValues, rule: SpreadRule) -> SpreadVariance:
         raise DesignError(message)
     area = stratum.population is None
     if rule == "covariance" and area and can_weigh_curves(stratum.values):
-        curves = curve_variance(
-            stratum.values,
-            stratum.coordinates,
-            np.arange(n),
-            np.full(n, 1.0 / n),
-            area=stratum.measure,
-        )
-        return SpreadVariance(
-            stratum=stratum.stratum,
-            rule="covariance",
-            variance=curves.variance,
-            degrees_of_freedom=curves.degrees_of_freedom,
-            local=math.sqrt(curves.variance * n),
-            practical_range_m=curves.practical_range,
-            nugget=curves.nugget,
-            sigma=curves.sigma,
-            inside=curves.inside,
-        )
+        return _by_curves(stratum, stratum.coordinates)
     near = neighbour_variance(stratum.values, stratum.coordinates)
     left = 1.0 if stratum.population is None else 1.0 - n / stratum.population
     return SpreadVariance(
@@ -169,6 +163,23 @@ def _stratum(stratum: StratumValues, rule: SpreadRule) -> SpreadVariance:
         variance=near.variance * left,
         degrees_of_freedom=near.degrees_of_freedom,
         local=math.sqrt(near.variance * n),
+    )
+
+
+def _by_curves(stratum: StratumValues, places: NDArray[np.float64]) -> SpreadVariance:
+    n = stratum.values.size
+    each = np.full(n, 1.0 / n)
+    found = curve_variance(stratum.values, places, np.arange(n), each, area=stratum.measure)
+    return SpreadVariance(
+        stratum=stratum.stratum,
+        rule="covariance",
+        variance=found.variance,
+        degrees_of_freedom=found.degrees_of_freedom,
+        local=math.sqrt(found.variance * n),
+        practical_range_m=found.practical_range,
+        nugget=found.nugget,
+        sigma=found.sigma,
+        inside=found.inside,
     )
 
 
