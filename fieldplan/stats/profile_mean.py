@@ -105,7 +105,8 @@ def profile_of_mean(
     n = len(detects) + len(limits)
     t = t_quantile(n - 1, confidence=confidence, kind=kind)
     drop = n / 2 * math.log1p(t * t / (n - 1))
-    error = _error(loss, best, place, log_spread)
+    width = math.exp(log_spread) if model == "normal" else 1.0
+    error = _error(loss, best, (place, log_spread), width=width)
     low, high = (
         _end(loss, best, (place, log_spread), error=error, reach=sign * math.sqrt(2 * drop))
         for sign in (-1, 1)
@@ -348,13 +349,17 @@ def _lowest(function: Callable[[float], float], start: float, *, width: float = 
 
 
 def _error(
-    loss: Loss, best: Callable[[float, float], float], place: float, log_spread: float
+    loss: Loss,
+    best: Callable[[float, float], float],
+    top: tuple[float, float],
+    *,
+    width: float,
 ) -> float:
     """Give the standard error of the place from the curvature of the profile."""
-    scale = 1e-3 * max(1.0, abs(place)) if abs(place) > 1e3 else 1e-3
+    (place, log_spread), scale = top, 1e-3 * width
     sides = [place - scale, place + scale]
-    top = loss(place, log_spread)
-    rise = sum(loss(at, best(at, log_spread)) - top for at in sides)
+    least = loss(place, log_spread)
+    rise = sum(loss(at, best(at, log_spread)) - least for at in sides)
     return scale / math.sqrt(max(rise, 1e-12))
 
 

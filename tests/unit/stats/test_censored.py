@@ -22,7 +22,7 @@ from fieldplan.stats.censored_fit import fit_censored
 from fieldplan.stats.censoring_forecast import chance_of_few
 from fieldplan.stats.kaplan_meier import kaplan_meier, kaplan_meier_mean
 from fieldplan.stats.order_statistics import fill_in, order_statistics_mean, plotting_positions
-from fieldplan.stats.profile_mean import profile_mean, profile_of_mean
+from fieldplan.stats.profile_mean import jackknifed, profile_mean, profile_of_mean
 from tests.evidence.non_detects import Cell, simulate
 from tests.unit.stats import published
 
@@ -286,6 +286,27 @@ def test_a_normal_without_non_detects_has_exactly_students_interval():
     assert (found.low, found.high) == pytest.approx((expected.low, expected.high), rel=1e-7)
 
 
+def test_logs_without_non_detects_are_the_published_ones():
+    """Source: EPA OSWER 9285.6-10 (A08-004, -005): mean and SD of 31 logs, by the fit."""
+    inputs = published.row("A08-004").inputs
+    found = profile_of_mean(inputs["x"], [], "lognormal")
+    mu = math.log(found.mean) - found.spread**2 / 2
+    assert mu == pytest.approx(published.row("A08-004").exact, rel=1e-6)
+    sd = found.spread * math.sqrt(31 / 30)
+    assert sd == pytest.approx(published.row("A08-005").exact, rel=1e-5)
+
+
+@pytest.mark.parametrize("method", ["kaplan-meier", "order-statistics"])
+def test_mean_and_sd_without_non_detects_are_the_published_ones(method):
+    """Source: EPA OSWER 9285.6-10 (A08-001, -002); Berthouex & Brown, ex. 15.1 (A09-032)."""
+    for mean_row, sd_row in (("A08-001", "A08-002"), (None, "A09-032")):
+        row = published.row(sd_row)
+        found = censored_mean(row.inputs["x"], [], method)
+        assert found.standard_error * math.sqrt(found.n) == pytest.approx(row.exact, rel=1e-9)
+        if mean_row:
+            assert found.mean == pytest.approx(published.row(mean_row).exact, rel=1e-9)
+
+
 def test_a_lognormal_without_non_detects_has_the_textbook_mean():
     """Closed form: exp(mean of logs + half their variance of divisor n)."""
     logs = np.log(DETECTS)
@@ -293,16 +314,55 @@ def test_a_lognormal_without_non_detects_has_the_textbook_mean():
     assert found.mean == pytest.approx(math.exp(logs.mean() + logs.var() / 2), rel=1e-6)
 
 
+@pytest.mark.parametrize("model", ["lognormal", "gamma", "normal"])
+def test_the_jackknife_is_that_of_fits_to_all_but_one(model):
+    """Brute force: every result left out in turn, each fit from scratch; one lies far off."""
+    detects, limits = [*DETECTS, 90.0], LIMITS
+    n, fitted = len(detects) + len(limits), profile_of_mean(detects, limits, model).mean
+    fits = [
+        profile_of_mean(detects[:k] + detects[k + 1 :], limits, model).mean
+        for k in range(len(detects))
+    ]
+    fits += [
+        profile_of_mean(detects, limits[:k] + limits[k + 1 :], model).mean
+        for k in range(len(limits))
+    ]
+    expected = n * fitted - (n - 1) * float(np.mean(fits))
+    assert jackknifed(detects, limits, model, fitted=fitted) == pytest.approx(expected, rel=2e-4)
+
+
+@pytest.mark.parametrize("model", ["lognormal", "gamma", "normal"])
+def test_the_error_is_that_of_scipys_second_derivatives(model):
+    """Other route: the inverse of the observed information in mean and spread, by differences."""
+    found = profile_of_mean(DETECTS, LIMITS, model)
+
+    def loss(mean, spread):
+        law = {
+            "lognormal": lambda: stats.lognorm(spread, scale=mean * math.exp(-(spread**2) / 2)),
+            "gamma": lambda: stats.gamma(spread**-2, scale=mean * spread**2),
+            "normal": lambda: stats.norm(mean, spread),
+        }[model]()
+        return -float(law.logpdf(DETECTS).sum() + law.logcdf(LIMITS).sum())
+
+    m, s, a, b = found.mean, found.spread, 1e-3 * found.mean, 1e-3 * found.spread
+    mm = (loss(m + a, s) - 2 * loss(m, s) + loss(m - a, s)) / a**2
+    ss = (loss(m, s + b) - 2 * loss(m, s) + loss(m, s - b)) / b**2
+    corners = loss(m + a, s + b) - loss(m + a, s - b) - loss(m - a, s + b) + loss(m - a, s - b)
+    ms = corners / (4 * a * b)
+    assert found.standard_error == pytest.approx(math.sqrt(ss / (mm * ss - ms**2)), rel=1e-3)
+
+
 # --- what holds for all ---------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize("method", METHODS)
-def test_a_change_of_unit_changes_nothing_else(method):
+@pytest.mark.parametrize("times", [1000.0, 1e-6, 1e9])
+def test_a_change_of_unit_changes_nothing_else(method, times):
     """From mg/kg to µg/kg everything is a thousand times as large."""
     one = censored_mean(DETECTS, LIMITS, method)
-    many = censored_mean([1000 * x for x in DETECTS], [1000 * x for x in LIMITS], method)
+    many = censored_mean([times * x for x in DETECTS], [times * x for x in LIMITS], method)
     ours = (many.mean, many.standard_error, many.low, many.high)
-    expected = [1000 * x for x in (one.mean, one.standard_error, one.low, one.high)]
+    expected = [times * x for x in (one.mean, one.standard_error, one.low, one.high)]
     assert ours == pytest.approx(expected, rel=1e-4)
 
 
