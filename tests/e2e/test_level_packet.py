@@ -48,9 +48,9 @@ def packet(tmp_path_factory: pytest.TempPathFactory) -> Path:
 def test_the_plan_sheet_says_it_in_words_and_the_working_shows_how(packet: Path) -> None:
     """The sentence, who carries the doubt, the picture's caption, the formula."""
     sheet = (packet / "office" / "plan_sheet.html").read_text(encoding="utf-8")
-    assert "results show the mean to lie below 150 mg/kg in at least 80 % of campaigns" in sheet
+    assert "then comes out below 150 mg/kg in at least 80 % of campaigns" in sheet
     assert "the mean is taken to lie at 150 mg/kg or above" in sheet
-    assert "How often 21 results show the mean to lie below the level" in sheet
+    assert "How often 21 results lead to the wrong call, by the true mean" in sheet
     working = (packet / "office" / "working.html").read_text(encoding="utf-8")
     assert "noncentral with shift" in working
     assert "[rules] fixes another" not in sheet

@@ -62,6 +62,10 @@ def _drawn(picture: Picture, width: float) -> "Canvas":
         from fieldplan.packet.charts.frontier import frontier_drawing
 
         return frontier_drawing(picture, width)
+    if picture.kind == "wrong-calls":
+        from fieldplan.packet.charts.wrong_calls import wrong_calls_drawing
+
+        return wrong_calls_drawing(picture, width)
     return _drawing(picture, width)
 
 

@@ -1,15 +1,18 @@
-"""The picture of a decision: the chance to come out on the side, over the true mean."""
+"""The picture of a decision: the chance of the wrong call, off the gray region on either side."""
 
 import math
 from collections.abc import Sequence
 
 from fieldplan.sizing.asked.level_decision import LevelDecision
-from fieldplan.sizing.model import Picture, Series
-from fieldplan.sizing.words import counted, figure, percent, typed
+from fieldplan.sizing.asked.wrong_calls import Wing, wrong_calls
+from fieldplan.sizing.model import Picture
+from fieldplan.sizing.words import counted, figure, percent, typed, with_unit
 from fieldplan.stats.distributions import chi_square_quantile, normal_quantile, normal_share
 
 _CHANCES = (0.001, 0.01, 0.05, 0.25, 0.5, 0.8, 0.95, 0.999)
-_POINTS = 41
+_POINTS = 25
+_RARE = 0.005
+"""Wings run to where a wrong call is so rare, sigma being larger."""
 
 
 def lines_of(decision: LevelDecision, counts: Sequence[int]) -> tuple[tuple[str, str], ...]:
@@ -37,7 +40,7 @@ def lines_of(decision: LevelDecision, counts: Sequence[int]) -> tuple[tuple[str,
 
 
 def level_picture(decision: LevelDecision, counts: Sequence[int]) -> Picture | None:
-    """Draw the chance to come out on the side over the true mean.
+    """Draw how often the call is wrong, by the true mean: at the level and beyond, and at the edge.
 
     Parameters
     ----------
@@ -54,41 +57,77 @@ def level_picture(decision: LevelDecision, counts: Sequence[int]) -> Picture | N
     if not knots:
         return None
     times, words = _larger(decision, counts)
-    n, side = sum(counts), decision.side
-    furthest = max(knots[-1][0] * times, 1.3 * decision.width)
-    if side == "below":
-        furthest = min(furthest, decision.level)
-    span = [-0.3 * decision.width + k * (furthest + 0.3 * decision.width) / (_POINTS - 1)
-            for k in range(_POINTS)]  # fmt: skip
-    edge, level = decision.table.gray_edge, decision.level
-    return Picture(
-        kind="lines",
+    side, unit = decision.side, decision.asked.question.unit
+    at_level, at_edge = _wings(decision, knots, times)
+    alpha, beta = at_level.y[0], at_edge.y[0]
+    return wrong_calls(
+        (at_level, at_edge),
         caption=(
-            f"How often {counted(n, 'result')} show the mean to lie {side} the level, by the true "
-            f"mean; dashed: {words}."
+            f"How often {counted(sum(counts), 'result')} lead to the wrong call, by the true mean. "
+            "Shaded: the gray region, where no call counts as wrong. Ticks: the chances allowed; "
+            f"dashed: {words}."
         ),
         alternative=(
-            f"The share of campaigns that come out {side} the level of {typed(level)} rises from "
-            f"{percent(decision.power(counts, 0.0))} at the level to "
-            f"{percent(decision.power(counts, decision.width))} at {typed(edge)}."
+            f"Two lines fall away from the gray region: from {alpha:.0f} % at the level of "
+            f"{typed(decision.level)}, where a mean is wrongly taken to lie {side} it, and from "
+            f"{beta:.0f} % at {typed(decision.table.gray_edge)}, where it is not seen to."
         ),
-        x_label=f"True mean, {decision.asked.question.unit}".rstrip(", "),
-        y_label=f"Campaigns that come out {side}, %",
-        series=(
-            _series(decision, "sigma right", knots, span, 1.0),
-            _series(decision, "sigma larger", knots, span, times, dashed=True),
-        ),
-        marks=(("level", level), ("gray edge", edge)),
-        levels=(("8 of 10", 80.0),),
+        x_label=f"True mean, {unit}".rstrip(", "),
+        y_label="Wrong calls, % of campaigns",
     )
+
+
+def _wings(
+    decision: LevelDecision, knots: list[tuple[float, float]], times: float
+) -> tuple[Wing, Wing]:
+    """Give the wing beyond the level, then the one beyond the gray edge."""
+    side, unit, width = decision.side, decision.asked.question.unit, decision.width
+    alpha, beta = decision.risks
+    rare = normal_quantile(1 - _RARE)
+    behind = min(max(-_at(knots, -rare) * times, width / 2), 2 * width)
+    beyond = min(max(_at(knots, rare) * times - width, width / 2), 2 * width)
+    if side == "below":
+        beyond = min(beyond, decision.table.gray_edge)
+    else:
+        behind = min(behind, decision.level)
+    outward = [k / (_POINTS - 1) for k in range(_POINTS)]
+    level_side = [-behind * share for share in outward]
+    edge_side = [width + beyond * share for share in outward]
+
+    def shown(distance: float, factor: float = 1.0) -> float:
+        return 100 * normal_share(_straight(knots, distance / factor))
+
+    at_level = Wing(
+        name=f"level {with_unit(typed(decision.level), unit)}",
+        chance_name=f"alpha {percent(alpha)}",
+        chance=100 * alpha,
+        words=f"comes out {side} the level, though it is not {side} it",
+        x=tuple(decision.mean_at(distance) for distance in level_side),
+        y=tuple(shown(distance) for distance in level_side),
+        wider=tuple(shown(distance, times) for distance in level_side),
+    )
+    at_edge = Wing(
+        name=f"gray edge {with_unit(typed(decision.table.gray_edge), unit)}",
+        chance_name=f"beta {percent(beta)}",
+        chance=100 * beta,
+        words=f"does not come out {side} the level, though it is {side} it",
+        x=tuple(decision.mean_at(distance) for distance in edge_side),
+        y=tuple(100 - shown(distance) for distance in edge_side),
+        wider=tuple(100 - shown(distance, times) for distance in edge_side),
+    )
+    return at_level, at_edge
 
 
 def _knots(decision: LevelDecision, counts: Sequence[int]) -> list[tuple[float, float]]:
     """Give distances with the normal quantile of their chance; on that scale lines are straight."""
+    alpha, beta = decision.risks
+    middle = decision.reach(counts, 0.5)
+    if middle is None or middle == 0:
+        return []
     found = []
-    for chance in _CHANCES:
+    for chance in sorted({*_CHANCES, round(alpha, 9), round(1 - beta, 9)}):
         reach = decision.reach(counts, chance)
-        if reach is None or reach == 0:
+        if reach is None:
             return []
         found.append((reach, normal_quantile(chance)))
     return found
@@ -105,29 +144,13 @@ def _larger(decision: LevelDecision, counts: Sequence[int]) -> tuple[float, str]
     return times, "sigma at the end of its 80 % upper limit"
 
 
-def _series(
-    decision: LevelDecision,
-    label: str,
-    knots: list[tuple[float, float]],
-    span: Sequence[float],
-    times: float,
-    *,
-    dashed: bool = False,
-) -> Series:
-    points = sorted(
-        (decision.mean_at(distance), 100 * normal_share(_straight(knots, distance / times)))
-        for distance in span
-    )
-    return Series(
-        label,
-        tuple(mean for mean, _ in points),
-        tuple(share for _, share in points),
-        "dashes" if dashed else "line",
-    )
-
-
 def _straight(knots: list[tuple[float, float]], at: float) -> float:
     """Interpolate between knots; beyond the ends the last line goes on."""
     place = next((k for k in range(1, len(knots) - 1) if at <= knots[k][0]), len(knots) - 1)
     (left, low), (right, high) = knots[place - 1], knots[place]
     return low + (high - low) * (at - left) / (right - left)
+
+
+def _at(knots: list[tuple[float, float]], quantile: float) -> float:
+    """Give the distance at a normal quantile."""
+    return _straight([(high, reach) for reach, high in knots], quantile)

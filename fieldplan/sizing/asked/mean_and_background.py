@@ -3,6 +3,7 @@
 from fieldplan.base.errors import DesignError
 from fieldplan.base.working import Step
 from fieldplan.campaign.questions.mean_and_background import MeanAndBackground
+from fieldplan.sizing.asked.background_picture import background_picture
 from fieldplan.sizing.asked.background_steps import (
     POOLED,
     RANKS,
@@ -15,7 +16,7 @@ from fieldplan.sizing.asked.counting_claims import table_missing
 from fieldplan.sizing.asked.model import Answered, Asked
 from fieldplan.sizing.asked.sure_words import sure_words
 from fieldplan.sizing.asked.two_populations import OVERAGE, TwoPopulations
-from fieldplan.sizing.model import Amount, Finding, Picture, Series
+from fieldplan.sizing.model import Amount, Finding
 from fieldplan.sizing.words import counted, figure, percent, typed, typed_percent, with_unit
 
 TITLE = "Site mean and background mean"
@@ -123,7 +124,7 @@ def _finding(
         assumptions=_assumptions(both),
         warnings=(_sure(both, counts, counting=bool(steps)), *_warnings(both, asked)),
         sources=sources,
-        picture=_picture(both, counts),
+        picture=background_picture(both, counts),
     )  # fmt: skip
 
 
@@ -216,32 +217,6 @@ def _warnings(both: TwoPopulations, asked: Asked) -> tuple[str, ...]:
         "statement about any level."
     )
     return tuple(lines)
-
-
-def _picture(both: TwoPopulations, counts: tuple[int, ...]) -> Picture:
-    table, unit = both.table, both.asked.question.unit
-    xs = [2 * table.difference * k / 20 for k in range(21)]
-    ys = [100 * both.shown(counts, x) for x in xs]
-    words = _shown_words(both)
-    way, mark, caption = (
-        "rising",
-        "must not be missed",
-        ("Chance to tell site and background apart, by their true difference."),
-    )
-    if both.from_above:
-        way, mark = "falling", "claim untrue from here"
-        caption = f"{words[0].upper()}{words[1:]} the background, by the true difference."
-    return Picture(
-        kind="lines",
-        caption=caption,
-        alternative=f"A {way} line from {ys[0]:.0f} % at no difference to {ys[-1]:.0f} % at "
-        f"{with_unit(figure(xs[-1]), unit)}.",
-        x_label=f"true difference, {unit}" if unit else "true difference",
-        y_label=f"{words}, %",
-        series=(Series(f"{sum(counts)} and {both.background(counts)}", tuple(xs), tuple(ys)),),
-        marks=((mark, table.difference),),
-        levels=(("wanted", 100 * (1 - table.beta)),),
-    )
 
 
 def _table(asked: Asked) -> MeanAndBackground:

@@ -13,6 +13,7 @@ from fieldplan.sizing.asked.level_steps import (
     margin_of,
 )
 from fieldplan.sizing.asked.model import Answered, Asked
+from fieldplan.sizing.asked.sure_words import shape_words
 from fieldplan.sizing.model import Amount, Finding
 from fieldplan.sizing.words import counted, figure, percent, typed, typed_percent, with_unit
 from fieldplan.stats.intervals import IntervalKind
@@ -88,7 +89,7 @@ def _finding(
     return Finding(
         topic=TOPIC,
         title=TITLE,
-        answer=f"{opening} {_picture_words(decision, counts)}".strip(),
+        answer=f"{opening} {_limits_words(decision, counts)}".strip(),
         amounts=_amounts(decision, counts, plain),
         columns=(f"True mean, {decision.asked.question.unit}".rstrip(", "), _out(decision)),
         rows=lines_of(decision, counts),
@@ -125,59 +126,45 @@ def _needed_words(decision: LevelDecision, counts: Sequence[int]) -> str:
     level, edge = _as_typed(decision, decision.level), _as_typed(decision, table.gray_edge)
     beyond = "more" if side == "below" else "less"
     results = counted(sum(counts), "result")
+    verb = "is" if sum(counts) == 1 else "are"
     surely, wrongly = typed_percent(1 - table.beta), typed_percent(table.alpha)
     if table.decisions == 1:
         return (
-            f"{results} show the mean to lie {side} {level} in at least {surely} of campaigns if "
-            f"it truly lies at {edge}, and in at most {wrongly} if it lies at {level} or {beyond}."
+            f"{results} {verb} needed: a true mean of {edge} then comes out {side} {level} in at "
+            f"least {surely} of campaigns, and one of {level} or {beyond} in at most {wrongly}."
         )
     if table.together == "all-or-nothing":
         return (
-            f"{results} for each let one claim be made, that all {table.decisions} means lie "
-            f"{side} {level}, in at least {surely} of campaigns if all truly lie at {edge}, and in "
-            f"at most {wrongly} if any of them lies at {level} or {beyond}."
+            f"{results} {verb} needed for each: if all {table.decisions} true means are {edge}, "
+            f"all then come out {side} {level} in at least {surely} of campaigns, and if any is "
+            f"{level} or {beyond}, in at most {wrongly}."
         )
     return (
-        f"{results} for each show all {table.decisions} means to lie {side} {level} in at least "
-        f"{surely} of campaigns if they truly lie at {edge}; in at most {wrongly} any that lies at "
-        f"{level} or {beyond} is wrongly shown {side} it."
+        f"{results} {verb} needed for each: if all {table.decisions} true means are {edge}, all "
+        f"then come out {side} {level} in at least {surely} of campaigns, and any that is {level} "
+        f"or {beyond} in at most {wrongly}."
     )
 
 
 def _bought_words(decision: LevelDecision, counts: Sequence[int]) -> str:
     power = percent(decision.power(counts, decision.width))
+    edge, level = decision.table.gray_edge, decision.level
     return (
-        f"{counted(sum(counts), 'result')} show a mean of "
-        f"{_as_typed(decision, decision.table.gray_edge)} to lie {decision.side} "
-        f"{_as_typed(decision, decision.level)} in {power} of campaigns."
+        f"With {counted(sum(counts), 'result')}, a true mean of {_as_typed(decision, edge)} comes "
+        f"out {decision.side} {_as_typed(decision, level)} in {power} of campaigns."
     )
 
 
-def _picture_words(decision: LevelDecision, counts: Sequence[int]) -> str:
-    """Say what owners ask: the mean at which 8 of 10 campaigns come out on the side."""
+def _limits_words(decision: LevelDecision, counts: Sequence[int]) -> str:
+    """Say where so many results can show nothing, or leave no doubt; else nothing."""
     reach = decision.reach(counts, 0.8)
     if reach is None:
         return "So few results cannot show it, however far from the level the mean lies."
     if reach == 0:
         return "With every unit of the list analysed, its mean is known."
-    mean = decision.mean_at(reach)
-    if mean <= 0:
+    if decision.mean_at(reach) <= 0:
         return "8 of 10 campaigns would come out below the level only at a mean below 0."
-    who = "" if decision.table.decisions == 1 else "Looked at alone, a decision comes out so: "
-    line = (
-        f"{who}8 of 10 campaigns come out {decision.side} the level where the true mean is "
-        f"{_with_unit(decision, mean)}"
-    )
-    margin = margin_of(decision, counts) if decision.table.test == "t" else 0.0
-    if margin:
-        name = "upper" if decision.side == "below" else "lower"
-        side = "above" if decision.side == "below" else "below"
-        few = ", s coming out a little below sigma" if sum(counts) < 25 else ""
-        line += (
-            f"; the {name} limit then lies on average {_with_unit(decision, margin)} {side} the "
-            f"mean{few}"
-        )
-    return line + "."
+    return ""
 
 
 def _amounts(
@@ -194,6 +181,7 @@ def _amounts(
         found.append(Amount(name, words, mean, unit))
     if decision.table.test == "t":
         words = f"Expected distance from the mean to its {_limit_name(decision)} limit"
+        words += " (s comes out a little below sigma)" if sum(counts) < 25 else ""
         found.append(Amount("expected_margin", words, margin_of(decision, counts), unit))
     enough = decision.chance_enough(counts)
     found.append(Amount("chance_enough", "Chance that these results are enough", enough))
@@ -256,7 +244,7 @@ def _sure(decision: LevelDecision, counts: tuple[int, ...], plain: tuple[int, ..
     if chance is None:
         line = (
             "Nobody said how many results stand behind sigma, so no chance can be given that these "
-            "are enough; with sigma at face value they are in about half of campaigns."
+            "are enough; they are if the true sigma is no larger."
         )
         sure = decision.table.assurance
         if sure != "plain" and plain is not None:
@@ -267,8 +255,8 @@ def _sure(decision: LevelDecision, counts: tuple[int, ...], plain: tuple[int, ..
         surely = typed_percent(1 - decision.table.beta)
         purpose = f" to show it in {surely} of campaigns at the gray edge"
     line = (
-        f"The chance that {sum(counts)} are enough{purpose} is {percent(chance)} if single results "
-        f"are near normal, sigma being known from {_behind(decision)} only"
+        f"The chance that {sum(counts)} are enough{purpose} is {percent(chance)} "
+        f"{shape_words(decision.asked.question)}, sigma being known from {_behind(decision)} only"
     )
     if plain is None:
         return line + "."
@@ -298,7 +286,7 @@ def _skewed(decision: LevelDecision, counts: Sequence[int]) -> str:
     skewness = of_mean * math.sqrt(n)
     kind: IntervalKind = "upper-limit" if decision.side == "below" else "lower-limit"
     wrong = 1 - t_coverage(n, skewness, confidence=1 - alpha, kind=kind)
-    if wrong < alpha + 0.005:
+    if abs(wrong - alpha) < 0.005:
         return ""
     return (
         f"With a skewness of {figure(skewness, 2)}, as behind sigma, a mean at the level would "

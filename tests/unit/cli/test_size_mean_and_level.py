@@ -26,13 +26,16 @@ def numbers(*words: str) -> dict[str, object]:
 
 
 def test_the_answer_opens_the_output() -> None:
-    """11 by noncentral t; the sentence says both chances and where they hold."""
+    """11 by noncentral t; the count first, both chances and where they hold, the rest on request."""
     printed = " ".join(run(*ASKED).stdout.split())
     assert printed.startswith(
-        "11 results show the mean to lie below 150 mg/kg in at least 80 % of campaigns if it "
-        "truly lies at 110 mg/kg, and in at most 5 % if it lies at 150 mg/kg or more."
+        "11 results are needed: a true mean of 110 mg/kg then comes out below 150 mg/kg in at "
+        "least 80 % of campaigns, and one of 150 mg/kg or more in at most 5 %."
     )
-    assert "8 of 10 campaigns come out below the level where the true mean is 111 mg/kg" in printed
+    assert "s comes out" not in printed
+    more = " ".join(run(*ASKED, "--more", "mean-and-level").stdout.split())
+    assert "True mean at which 80 % of campaigns come out below: 111" in more
+    assert "s comes out a little below sigma" in more
 
 
 def test_json_holds_the_amounts() -> None:

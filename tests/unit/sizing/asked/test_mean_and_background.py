@@ -251,12 +251,25 @@ def test_chances_by_true_difference_fall_where_the_site_is_taken_to_lie_above() 
         exact = stats.nct.cdf(point, 2 * n - 2, (times - 1.0) / math.sqrt(2 / n))
         assert float(cells[1].removesuffix(" %")) == pytest.approx(100 * exact, abs=0.51)
     assert found.picture is not None
-    ys = found.picture.series[0].y
-    assert list(ys) == sorted(ys, reverse=True)
-    assert ys[0] >= 80.0
-    assert ys[10] == pytest.approx(5.0)  # at the stated difference: alpha
-    assert "A falling line" in found.picture.alternative
+    alike, apart = found.picture.series
+    assert alike.y[0] == pytest.approx(100 * stats.nct.sf(point, 2 * n - 2, -1 / math.sqrt(2 / n)))
+    assert apart.y[0] == pytest.approx(5.0)  # at the stated difference: alpha
+    for wing in (alike, apart):
+        assert list(wing.y) == sorted(wing.y, reverse=True)
     assert "less than 1 mg/kg above" in found.columns[1]
+
+
+@pytest.mark.parametrize("assume", ["at-background", "no-difference"])
+def test_the_picture_shows_wrong_calls_on_either_side_of_the_gray_region(assume: str) -> None:
+    """Alpha where the means are alike, beta at most at the difference, fewer beyond it."""
+    asked = both(parts=UNIT, difference=1.0, assume=assume, variances="alike")
+    picture = bought(asked, count(asked).needed).picture
+    assert picture is not None
+    alike, apart = picture.series
+    assert alike.y[0] == pytest.approx(5.0, abs=0.01)
+    assert max(alike.x) == 0.0
+    assert apart.y[0] <= picture.levels[1][1]
+    assert list(apart.y) == sorted(apart.y, reverse=True)
 
 
 @pytest.mark.parametrize("words", [{"test": "ranks"}, {"background_sigma": 2.0}])

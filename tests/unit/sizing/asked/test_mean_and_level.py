@@ -68,8 +68,8 @@ def test_both_directions_take_the_same_number_and_say_who_carries_the_doubt() ->
     assert below.needed == above.needed
     assert "taken to lie at 150 mg/kg or above" in below.finding.assumptions[0]
     assert "taken to lie at 150 mg/kg or below" in above.finding.assumptions[0]
-    assert "lie below 150 mg/kg" in below.finding.answer
-    assert "lie above 150 mg/kg" in above.finding.answer
+    assert "comes out below 150 mg/kg" in below.finding.answer
+    assert "comes out above 150 mg/kg" in above.finding.answer
     low, high = (amount(found, "mean_at_80_percent") for found in (below, above))
     assert low is not None
     assert high is not None
@@ -276,16 +276,34 @@ def test_the_working_holds_all_numbers_it_uses() -> None:
 
 
 @pytest.mark.parametrize("test", ["t", "sign", "signed-rank"])
-def test_the_picture_follows_the_power(test: str) -> None:
-    """Interpolated points must lie within a point of the power itself."""
+def test_the_picture_shows_the_chance_of_the_wrong_call(test: str) -> None:
+    """From the level on to claim the side, from the gray edge on not to; nothing between."""
     question = asked(test=test)
     found = count(question)
     decision = decision_of(question)
     picture = found.finding.picture
     assert picture is not None
-    right = picture.series[0]
-    for mean, percent in list(zip(right.x, right.y, strict=True))[::4]:
-        assert percent == pytest.approx(100 * decision.power(found.needed, 150 - mean), abs=1.0)
+    at_level, at_edge = (series for series in picture.series if series.style == "line")
+    for mean, percent in zip(at_level.x, at_level.y, strict=True):
+        shown = 100 * decision.power(found.needed, 150 - mean)
+        assert mean >= 150
+        assert percent == pytest.approx(shown, abs=1.0)
+    for mean, percent in zip(at_edge.x, at_edge.y, strict=True):
+        missed = 100 - 100 * decision.power(found.needed, 150 - mean)
+        assert mean <= 110
+        assert percent == pytest.approx(missed, abs=1.0)
+    assert [value for _, value in picture.marks] == [150, 110]
+    assert picture.levels == (("alpha 5 %", 5.0), ("beta 20 %", 20.0))
+
+
+@pytest.mark.parametrize(("assume", "edge"), [("above-level", 110.0), ("below-level", 170.0)])
+def test_wrong_calls_grow_rarer_away_from_the_gray_region(assume: str, edge: float) -> None:
+    """Power rises with the distance, whichever side carries the doubt; a mean stays above 0."""
+    picture = count(asked(assume=assume, gray_edge=edge)).finding.picture
+    assert picture is not None
+    for series in picture.series:
+        assert list(series.y) == sorted(series.y, reverse=True)
+        assert min(series.x) >= 0
 
 
 def test_lines_name_the_gray_edge_and_the_level() -> None:
