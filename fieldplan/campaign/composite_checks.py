@@ -67,8 +67,21 @@ def _composites(data: Data, design: Data, i: int) -> Iterator[Problem]:
                 "design.increments out, or ask for the mean."
             )
             yield Problem(("objective", k, "question"), text)
+        yield from _beside(objective, k)
     if increments == "choose":
         yield from _choosing(data, design, i)
+
+
+def _beside(objective: Data, k: int) -> Iterator[Problem]:
+    """Refuse the table of a question about single places below an objective that asks another."""
+    for question in OF_SINGLE_PLACES:
+        table = question.replace("-", "_")
+        if table in objective and question != objective.get("question", "mean"):
+            text = (
+                "asks about single places, and a composite averages them: one below the level "
+                "proves nothing of its increments. Take this table or design.increments out."
+            )
+            yield Problem(("objective", k, table), text)
 
 
 def _choosing(data: Data, design: Data, i: int) -> Iterator[Problem]:

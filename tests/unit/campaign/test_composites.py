@@ -83,6 +83,23 @@ def test_questions_about_single_places_take_no_composites(tmp_path: Path) -> Non
     assert [line for line in found if "asks about single places" in line], found
 
 
+@pytest.mark.parametrize(
+    ("table", "keys"),
+    [
+        ("all_clear", "share = 0.05"),
+        ("upper_share", "share = 0.95"),
+        ("share", "expected = 0.1\nmargin = 0.05"),
+        ("smallest_patch", "length_m = 30\nprobability = 0.9"),
+    ],
+)
+def test_nor_do_their_tables_beside_a_mean(tmp_path: Path, table: str, keys: str) -> None:
+    """Composites below a level prove nothing of their increments, whatever decides n."""
+    below = ("[draw]", f"[objective.{table}]\n{keys}\n[draw]")
+    found = problems(tmp_path, design("increments = 4"), below)
+    assert [line for line in found if f"objective.{table}: asks about single places" in line], found
+    assert not [line for line in problems(tmp_path, below) if "single places" in line]
+
+
 PARTS = [
     (
         f'{SIGMA}\n[[sigma]]\npart = "between-locations"\nvalue = 3.0\nsource = "x"',
