@@ -120,6 +120,8 @@ def sample_row(plan: Plan, place: Location, sample: Sample) -> tuple[str, ...]:
     if place.location_class == "alternate" and several_strata(plan):
         name += f"\n{place.stratum}"
     position = f"{place.latitude:.6f}, {place.longitude:.6f}"
+    if place.along_m is not None:
+        position += f"\n{place.branch}, {place.along_m:.0f} m from its start"
     return (name, sample.sample_id, position, "☐", *[""] * len(BY_HAND))
 
 

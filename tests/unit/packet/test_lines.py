@@ -22,6 +22,7 @@ from fieldplan.packet.exchange.points_csv import write_points_csv
 from fieldplan.packet.maps.distance_marks import distance_marks, round_step
 from fieldplan.packet.maps.ground import compound_path, grounds
 from fieldplan.packet.maps.screen import screen_map
+from fieldplan.packet.sheets.field_form import sample_row
 from fieldplan.packet.sheets.methods import drawn_sentence, patch_line, widest_stretch
 from fieldplan.packet.sheets.place_section import location_table, start_words
 from fieldplan.packet.sheets.question_section import measure_table
@@ -156,6 +157,9 @@ def test_the_sheet_speaks_of_lengths_and_stretches():
         plan.campaign.design[0].model_copy(update={"starts": 1})
     )
     assert site_figure(plan).narrow_svg
+    place = plan.locations.places[0]
+    row = sample_row(plan, place, plan.samples.at(place.location_id)[0])
+    assert f"{place.branch}, {place.along_m:.0f} m from its start" in row[2]
 
 
 def test_widest_stretch_is_the_largest_gap_of_any_reach():
