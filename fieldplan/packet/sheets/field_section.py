@@ -31,8 +31,8 @@ def field_blocks(plan: Plan) -> list[Block]:
 
 def deviation_blocks(plan: Plan) -> list[Block]:
     """Set the rule for the field, and say where its codes are."""
-    codes = f"Reason codes: the field form, and {in_working('In the field')}."
-    return [Bullets(deviation_rule(plan), numbered=True), Paragraph(codes, tone="note")]
+    codes = f"Reason codes are on the field form and in {in_working('In the field')}."
+    return [Bullets((*deviation_rule(plan), codes), numbered=True)]
 
 
 def deviation_rule(plan: Plan) -> tuple[str, ...]:
@@ -68,10 +68,9 @@ def caution_blocks(plan: Plan) -> list[Block]:
     """Set hold points one by one and the other topics as a table; none instructs, each defers."""
     blocks: list[Block] = [
         Paragraph(
-            "Raised by facts of the campaign. Each is open until a reference, its date and its "
-            "expiry are typed in the campaign file, and open again when it has expired. The "
-            "rules named are examples of where to ask; which of them apply is for the user and "
-            "the authority to say."
+            "Each is open until a reference, its date and its expiry are typed in the campaign "
+            "file, and again when it has expired. The rules named are examples of where to ask; "
+            "which of them apply is for the user and the authority to say."
         )
     ]
     blocks += [caution for caution in plan.cautions if caution.holds_work]

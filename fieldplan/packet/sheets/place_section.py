@@ -38,6 +38,8 @@ def draw_blocks(plan: Plan) -> list[Block]:
     if design.minimum_spacing_m:
         rows.append(("Minimum spacing", f"{number(design.minimum_spacing_m)} m"))
     rows += cell_rows(design)
+    if draw.asked != draw.realised:
+        rows.append(("Asked for and drawn", f"{draw.asked} and {draw.realised}"))
     rows += [
         ("Seed", f"{draw.seed}, with version {draw.version} of the drawing procedure"),
     ]

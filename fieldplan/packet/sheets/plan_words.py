@@ -84,7 +84,9 @@ def aim_sentence(plan: Plan) -> str:
     )
     aim = f"The aim is the {mean_of(plan.campaign)}{against}."
     if size.number_from == "question":
-        return f"The aim: {size.target}. {size.findings[0].answer}"
+        answer = size.findings[0].answer
+        said = answer in size.sentences
+        return f"The aim: {size.target}." if said else f"The aim: {size.target}. {answer}"
     if every_unit(plan):
         return aim
     return {
