@@ -7,6 +7,9 @@ from fieldplan.base.errors import DesignError
 LEAST_CHANCE = 1e-12
 """Chances nearer to 0 or 1 than this are lost in the last digits of the functions used."""
 
+MOST_ALPHA = 0.5
+"""A one-sided limit with a larger alpha lies beyond the mean, on the side it should bound."""
+
 
 def check_risks(alpha: float, beta: float) -> None:
     """Refuse chances of a wrong decision that no number of results can be worked out from.
@@ -15,7 +18,8 @@ def check_risks(alpha: float, beta: float) -> None:
     ----------
     alpha, beta : float
         Chance of deciding against the starting assumption when it is true, and of keeping it at
-        the far edge of the gray region. Each inside (0, 1), together below 1.
+        the far edge of the gray region. Each inside (0, 1), alpha at most
+        one half, together below 1.
 
     Examples
     --------
@@ -23,6 +27,12 @@ def check_risks(alpha: float, beta: float) -> None:
     """
     for name, chance in (("alpha", alpha), ("beta", beta)):
         _check_chance(name, chance)
+    if alpha > MOST_ALPHA:
+        message = (
+            f"alpha is {alpha:g}; it may be {MOST_ALPHA:g} at most, for beyond that the limit lies "
+            "on the wrong side of the mean. Write e.g. 0.05."
+        )
+        raise DesignError(message)
     if alpha + beta >= 1:
         message = (
             f"alpha {alpha:g} and beta {beta:g} sum to {alpha + beta:g}; together they must stay "

@@ -61,6 +61,7 @@ def problems(table: dict[str, Any], data: dict[str, Any]) -> Iterator[tuple[str,
 
 def _chances(table: dict[str, Any]) -> Iterator[tuple[str, str]]:
     alpha, beta = table.get("alpha"), table.get("beta")
+    yield from alpha_problems(alpha)
     if _is_number(alpha) and _is_number(beta) and alpha + beta >= 1:
         yield (
             "beta",
@@ -130,3 +131,13 @@ def _has_strata(data: dict[str, Any]) -> bool:
 
 def _is_number(value: object) -> TypeGuard[float]:
     return isinstance(value, int | float) and not isinstance(value, bool)
+
+
+def alpha_problems(alpha: object) -> Iterator[tuple[str, str]]:
+    """Refuse an alpha beyond which a limit lies on the wrong side of its mean."""
+    if isinstance(alpha, float) and 0.5 < alpha < 1:
+        yield (
+            "alpha",
+            f"may be 0.5 at most; beyond it a limit lies on the wrong side of the mean (got "
+            f"{alpha:g}). Write e.g. 0.05.",
+        )

@@ -3,7 +3,7 @@
 from collections.abc import Iterator
 from typing import Any, Literal
 
-from fieldplan.campaign.questions.mean_and_level import Chance
+from fieldplan.campaign.questions.mean_and_level import Chance, alpha_problems
 from fieldplan.campaign.table import OpenShare, Table
 
 MEANING = {
@@ -63,6 +63,7 @@ def _of_a_comparison(table: dict[str, Any]) -> Iterator[tuple[str, str]]:
 def risk_problems(table: dict[str, Any]) -> Iterator[tuple[str, str]]:
     """Refuse chances of a wrong decision that sum to 1 or more."""
     alpha, beta = table.get("alpha"), table.get("beta")
+    yield from alpha_problems(alpha)
     if isinstance(alpha, float) and isinstance(beta, float) and alpha + beta >= 1:
         yield (
             "beta",

@@ -85,8 +85,8 @@ BROKEN = [
     ),
     (
         "share",
-        "compare_with = 0.2\nexpected = 0.1\nalpha = 0.6\nbeta = 0.5",
-        "share.beta: alpha 0.6 and beta 0.5 sum to 1.1;",
+        "compare_with = 0.2\nexpected = 0.1\nalpha = 0.5\nbeta = 0.6",
+        "share.beta: alpha 0.5 and beta 0.6 sum to 1.1;",
     ),
     (
         "mean-and-background",
