@@ -60,7 +60,7 @@ def count(asked: Asked) -> Answered:
     finding = _finding(question, needed)
     sentence = (
         f"{_counted(question, needed)} {place_words(question)} hit {patch_words(question)}, "
-        f"with a chance of {typed_percent(question.table.probability)}{off_words(question)}: "
+        f"with a chance of {_reached(question, finding)}{off_words(question)}: "
         f"averaged {ground_words(question)}."
     )
     steps = (*_patch_steps(question), _endless_step(question, endless), *finding.steps)
@@ -95,6 +95,14 @@ def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
     if question.doubtful:
         return Finding("smallest-patch", TITLE, refusal(question), sources=SOURCES)
     return _finding(question, counts)
+
+
+def _reached(question: PatchQuestion, finding: Finding) -> str:
+    """Write the chance that the number reaches: never less than the one asked for."""
+    asked = question.table.probability
+    reached = max(float(finding.amounts[0].value or 0.0), asked)
+    shown = math.floor(1000 * reached + 1e-6) / 1000
+    return "over 99.9 %" if 1 > reached > 0.9995 else typed_percent(max(shown, asked))
 
 
 def _counted(question: PatchQuestion, counts: tuple[int, ...]) -> str:
