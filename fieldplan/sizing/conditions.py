@@ -110,8 +110,8 @@ def _origin(question: Question) -> str:
     assumed = any(part.assumed for part in question.parts)
     what = "was ASSUMED" if assumed else "was typed without the number of results behind it"
     return (
-        f"Sigma{where} {what}, so no chance can be given that the number is enough. With a "
-        "measured sigma the plain formula is enough in only about half of campaigns."
+        f"Sigma{where} {what}, so no chance can be given that the number is enough. The "
+        "plain formula takes sigma as exactly right; it falls short where the true one is larger."
     )
 
 

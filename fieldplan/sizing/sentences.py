@@ -167,10 +167,7 @@ def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
             f"{opening}, sigma being known from {behind} only; the plain formula ({plain}) would "
             f"be enough in {percent(plain_chance)} of campaigns."
         )
-    half = "the plain formula is enough in only about half of campaigns, and "
-    if question.widened and question.target_half_width is not None:
-        half = ""  # skewed reaches are not even about their mean
-    line = f"{opening}: {half}sigma is known from {behind} only. "
+    line = f"{opening}, sigma being known from {behind} only. "
     if not assured:
         return f"{line}Any chance above two in three takes every unit of the list."
     more = listed([str(entry.n) for entry in assured])
@@ -178,10 +175,24 @@ def _chance(question: Question, counts: Counts, assured: tuple[AssuredSize, ...]
     return f"{line}For a chance of {shares} it takes {more}."
 
 
+def _face_value(question: Question, counts: Counts) -> str:
+    """Say how a plain number does where sigma is exactly right, and where it is not."""
+    if question.target_half_width is None or question.widened:
+        return (
+            "the plain formula takes sigma as exactly right, and falls short where the true one is "
+            "larger"
+        )
+    kept = Precision(question).chance(counts.needed, sigma_known=True) or 0.0
+    return (
+        f"with sigma exactly right {percent(kept)} of campaigns keep the half-width, with a larger "
+        "one fewer"
+    )
+
+
 def _no_chance(question: Question, counts: Counts) -> str:
     line = (
         "Nobody said how many results stand behind sigma, so no chance can be given that this is "
-        "enough; the plain formula is enough in only about half of campaigns."
+        f"enough: {_face_value(question, counts)}."
     )
     if question.assurance is None or question.locations is not None:
         return line

@@ -2,6 +2,7 @@
 
 from dataclasses import dataclass, replace
 
+from fieldplan.sizing.asked.level_decision import decision_of
 from fieldplan.sizing.asked.model import Answered, Asked
 from fieldplan.sizing.closing_steps import closing_steps
 from fieldplan.sizing.conditions import conditions
@@ -21,6 +22,7 @@ from fieldplan.sizing.sentences import (
     money_words,
     visit_words,
 )
+from fieldplan.sizing.words import figure, typed_percent, with_unit
 
 
 def size_of(asked: Asked, answered: Answered) -> Size:
@@ -153,10 +155,35 @@ def _strata(asked: Asked, counts: Counts) -> tuple[StratumSize, ...]:
     return tuple(found)
 
 
+def _expected(asked: Asked, counts: Counts, finding: Finding) -> str:
+    """Say what standard error to expect, and of the limits on one side the one that decides."""
+    line = expected_precision(asked.question, counts)
+    margins = [a.value for a in finding.amounts if a.name == "expected_margin" and a.value]
+    if not margins or asked.question.interval == "two-sided":
+        return line
+    decision, unit = decision_of(asked), asked.question.unit
+    error = with_unit(figure(Precision(asked.question).standard_error(counts.needed)), unit)
+    sure = typed_percent(1 - float(f"{decision.risks[0]:.3g}"))
+    which, side = ("upper", "above") if decision.side == "below" else ("lower", "below")
+    return (
+        f"If sigma is right, expect a standard error of {error} and the {sure} {which} limit on "
+        f"average {with_unit(figure(float(margins[0])), unit)} {side} the mean."
+    )
+
+
 def _sentences(asked: Asked, counts: Counts, finding: Finding) -> tuple[str, ...]:
     lines = [finding.answer, increments_words(asked.question, counts)]
     lines += [visit_words(asked.question, counts), *finding.warnings]
     if asked.sigma_known:
-        lines.append(expected_precision(asked.question, counts))
+        lines.append(_whose_mean(asked, _expected(asked, counts, finding)))
     lines.append(money_words(asked.question, counts))
     return tuple(line for line in lines if line)
+
+
+def _whose_mean(asked: Asked, line: str) -> str:
+    """Say which mean a precision belongs to, where the question has an interval of its own."""
+    if asked.objective.question == "mean-and-level" or line.startswith("With every"):
+        return line
+    place = "list" if asked.population is not None else "site"
+    whose = "one round" if asked.objective.question == "change" else f"the {place}"
+    return f"For the mean of {whose}: {line[0].lower()}{line[1:]}"

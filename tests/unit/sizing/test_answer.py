@@ -1,6 +1,7 @@
 """The whole answer for questions of every kind."""
 
 import math
+from dataclasses import replace
 from itertools import pairwise
 
 import pytest
@@ -46,7 +47,8 @@ def test_typed_sigma_gives_no_chance_and_says_so() -> None:
     assert size.chance_needed is None
     assert size.assured == ()
     assert "no chance can be given" in size.sentences[1]
-    assert "about half of campaigns" in size.sentences[1]
+    assert "falls short where the true one is larger" in size.sentences[1]
+    assert "half of campaigns" not in " ".join([*size.sentences, *size.conditions])
     assert any("no chance can be given" in line for line in size.conditions)
 
 
@@ -413,3 +415,16 @@ def test_a_list_so_short_that_every_chance_takes_it_whole_is_said_to_be() -> Non
     size = answer(ask(whole(5.0, results=2, population=3), 3.0))
     assert (size.needed, size.assured) == (2, ())
     assert any("takes every unit of the list" in line for line in size.sentences)
+
+
+@pytest.mark.parametrize(("sigma", "width"), [(10.0, 100.0), (10.0, 10.0), (10.0, 2.0)])
+def test_half_width_of_a_typed_sigma_says_how_often_it_is_kept_if_sigma_is_right(sigma, width):
+    """Closed form with scipy: P(t s/√n ≤ h) by χ² on n − 1, s scattering about the true sigma."""
+    asked = replace(ask(whole(), 6.0), target="half_width", value=width)
+    asked = replace(asked, parts=(replace(asked.parts[0], sigma=sigma),))
+    size = answer(asked)
+    n = size.needed
+    point = stats.t.ppf(0.975, n - 1)
+    kept = stats.chi2.cdf((n - 1) * n * (width / (point * sigma)) ** 2, n - 1)
+    said = f"with sigma exactly right {100 * kept:.0f} % of campaigns keep the half-width"
+    assert said in " ".join(size.sentences)
