@@ -1,20 +1,17 @@
 """Bare numbers as a campaign without files: the same questions, keys and checks as in a file."""
 
-import json
 from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any, get_args
 
+from fieldplan.cli.bare_checks import checked
 from fieldplan.cli.bare_composites import composites_of_numbers, with_splits
-from fieldplan.cli.option_words import in_options, key_in_options
-from fieldplan.cli.question_keys import misplaced, needed_keys, table_model
+from fieldplan.cli.question_keys import needed_keys
 from fieldplan.cli.size_options import BadOption
 from fieldplan.cli.typed_numbers import BareNumbers
 from fieldplan.cli.with_keys import place
 
 if TYPE_CHECKING:
-    from fieldplan.campaign.lines import KeyPath
     from fieldplan.campaign.model import Campaign
-    from fieldplan.campaign.problems import Problem
     from fieldplan.lab.model import Spread
     from fieldplan.sizing.asked.model import Asked
     from fieldplan.sizing.question import Part
@@ -77,6 +74,20 @@ def _campaign(numbers: BareNumbers, parts: "tuple[Part, ...]") -> "Campaign":
     """Build the campaign that the numbers would make, with the keys of ``--with`` in it."""
     from fieldplan.campaign.questions import table_of
 
+    data = _tables(numbers, parts)
+    (objective,) = data["objective"]
+    for text in numbers.with_keys:
+        place(data, text, numbers.question)
+    if numbers.question != "mean" and table_of(numbers.question) not in objective:
+        given = [name for name, value in vars(numbers).items() if value]
+        given += ["sigma"] if numbers.stratum else []
+        raise BadOption(needed_keys(numbers.question, given))
+    _own_confidence(objective, numbers.confidence)
+    return checked(data, numbers.question)
+
+
+def _tables(numbers: BareNumbers, parts: "tuple[Part, ...]") -> dict[str, Any]:
+    """Write the tables of a campaign file that the options make by themselves."""
     objective: dict[str, Any] = {"question": numbers.question}
     if numbers.question == "mean":
         kind, value = numbers.target()
@@ -87,7 +98,7 @@ def _campaign(numbers: BareNumbers, parts: "tuple[Part, ...]") -> "Campaign":
     if numbers.level is not None:
         analyte |= {"action_level": numbers.level, "action_level_source": "typed"}
     several = len(parts) > 1
-    data: dict[str, Any] = {
+    return {
         "format": 1,
         "plan": {"id": "numbers", "title": "Bare numbers"},
         "analyte": [analyte],
@@ -107,18 +118,9 @@ def _campaign(numbers: BareNumbers, parts: "tuple[Part, ...]") -> "Campaign":
         },
         "draw": {"seed": 0},
     }
-    for text in numbers.with_keys:
-        place(data, text, numbers.question)
-    if numbers.question != "mean" and table_of(numbers.question) not in objective:
-        given = [name for name, value in vars(numbers).items() if value]
-        given += ["sigma"] if numbers.stratum else []
-        raise BadOption(needed_keys(numbers.question, given))
-    if numbers.confidence is not None:
-        _own_confidence(objective, numbers.confidence)
-    return _checked(data, numbers.question)
 
 
-def _own_confidence(objective: dict[str, Any], confidence: float) -> None:
+def _own_confidence(objective: dict[str, Any], confidence: float | None) -> None:
     """Let ``--confidence`` set the key of a question that has one; refuse two that differ."""
     from fieldplan.campaign.model import Objective
     from fieldplan.campaign.questions import table_of
@@ -126,7 +128,7 @@ def _own_confidence(objective: dict[str, Any], confidence: float) -> None:
     name = table_of(objective["question"])
     kind = Objective.model_fields.get(name)
     tables = [] if kind is None else [t for t in get_args(kind.annotation) if t is not type(None)]
-    if not any("confidence" in table.model_fields for table in tables):
+    if confidence is None or not any("confidence" in table.model_fields for table in tables):
         return
     own = objective.setdefault(name, {})
     if isinstance(own, dict) and own.setdefault("confidence", confidence) != confidence:
@@ -154,53 +156,6 @@ def _sigma(part: "Part", *, several: bool) -> dict[str, Any]:
     if part.excess_kurtosis is not None:
         entry["excess_kurtosis"] = part.excess_kurtosis
     return entry | ({"stratum": part.name} if several else {})
-
-
-def _checked(data: dict[str, Any], question: str) -> "Campaign":
-    """Run the checks of a campaign file; each problem is one line in the words of options."""
-    from fieldplan.campaign.checks import check
-    from fieldplan.campaign.read import validated
-    from fieldplan.campaign.references import resolve
-    from fieldplan.campaign.screen import screen
-
-    screened = screen(json.loads(json.dumps(data)))
-    problems = [*screened.problems, *resolve(screened.data)]
-    problems += [p for p in check(screened.data) if p.path[0] != "frame"]
-    campaign, faults = validated(screened, problems)
-    told = [_told(problem, screened.data, question) for problem in (*problems, *faults)]
-    if told or campaign is None:
-        raise BadOption("\n".join(dict.fromkeys(told)))
-    return campaign
-
-
-def _told(problem: "Problem", data: dict[str, Any], question: str) -> str:
-    """Word one problem for somebody who typed options."""
-    from fieldplan.campaign.problems import key_name
-    from fieldplan.campaign.questions import MODULES, table_of
-
-    path, own = problem.path, table_of(question)
-    name = key_in_options(key_name(path, data), own)
-    text = in_options(problem.text)
-    of_own = question in MODULES and path[2:3] == (own,) and len(path) == 4
-    if of_own and path[3] not in table_model(question).model_fields:
-        text = misplaced(question, str(path[3]))
-    part = _at((*path[:2], "part"), data) if path[0] == "sigma" else None
-    if part not in (None, "total"):
-        name = f"--with sigma.{part}"
-    value = _at(path, data)
-    if isinstance(value, int | float) and 1 < value < 100 and "below 1 " in f"{text} ":
-        text += f" For {value:g} % type {value / 100:g}."
-    return f"{name}: {text}"
-
-
-def _at(path: "KeyPath", data: Any) -> Any:
-    """Return what stands at a path; None where nothing does."""
-    for step in path:
-        try:
-            data = data[step]
-        except (LookupError, TypeError):
-            return None
-    return data
 
 
 def _spread(numbers: BareNumbers, parts: "tuple[Part, ...]") -> "Spread":
