@@ -113,6 +113,7 @@ def estimate(
         standing_sentence=standing,
         interval_sentence=widened_sentence(means),
         as_bounds=means.as_bounds,
+        upper_bound=means.upper_bound,
         non_detect_sentence=method_sentence(means),
         sentences=answer_sentences(
             plan, means, changes, level=level, population=population, rejected=rejected,

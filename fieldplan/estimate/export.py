@@ -43,6 +43,7 @@ def estimate_json(estimate: Estimate) -> dict[str, Any]:
         "interval": asdict(estimate.interval),
         "other_interval": asdict(estimate.other_interval),
         "non_detects_as_bounds": estimate.as_bounds,
+        "mean_is_upper_bound": estimate.upper_bound,
         "non_detects": estimate.non_detect_sentence,
         "bracket": asdict(estimate.bracket) if estimate.bracket else None,
         "strata": [asdict(stratum) for stratum in mean.strata],

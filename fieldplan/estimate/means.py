@@ -59,6 +59,11 @@ class Means:
         return reported_mean(self.half, self.modelled)
 
     @property
+    def upper_bound(self) -> bool:
+        """Whether the mean that is reported is the largest that non-detects leave open."""
+        return self.modelled is not None and self.modelled.whole.upper_bound
+
+    @property
     def as_bounds(self) -> bool:
         """Whether the answer at 0, half and the limit stand for each other."""
         return self.modelled is None and self.rules.non_detects != "substitute-half"

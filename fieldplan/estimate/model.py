@@ -80,6 +80,8 @@ class Estimate:
         non-detects, or half by declaration, is the answer and the bracket stands beside it.
     non_detect_sentence : str
         What was done with non-detects where they are no bounds, or why they are; may be empty.
+    upper_bound : bool
+        The mean is the largest that non-detects leave open, and no estimate.
     sentences : tuple of str
         The answer in words, most important first.
     rejected_sentence : str
@@ -111,6 +113,7 @@ class Estimate:
     interval_sentence: str = ""
     as_bounds: bool = True
     non_detect_sentence: str = ""
+    upper_bound: bool = False
 
 
 @dataclass(frozen=True)

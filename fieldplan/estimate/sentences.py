@@ -85,7 +85,7 @@ def answer_sentences(
     """
     unit = plan.campaign.analyte_called(means.analyte).unit
     mean = means.reported
-    error, most = mean.standard_error, means.modelled and means.modelled.whole.upper_bound
+    error, most = mean.standard_error, means.upper_bound
     answer = (
         f"The mean of {analyte_name(plan, means.analyte)} over {where(plan)} is "
         f"{'at most ' if most else ''}{significant(mean.mean)} {unit}, "

@@ -33,7 +33,8 @@ def results_paragraph(plan: Plan, estimate: Estimate) -> str:
         f"By plan {plan.revision_name}, {planned} {places_word(plan)} of {where(plan)} were to be "
         f"sampled for {analyte_name(plan, estimate.analyte)}; {mean.n} results are in the "
         f"mean{stand_ins}.",
-        f"The mean is {significant(mean.mean)} {unit} (standard error "
+        f"The mean is {'at most ' if estimate.upper_bound else ''}{significant(mean.mean)} {unit} "
+        "(standard error "
         f"{significant(mean.standard_error)} {unit}{freedom}; "
         f"{interval_in_words(estimate.interval, unit)}).",
         estimate.interval_sentence,

@@ -8,10 +8,8 @@ from dataclasses import dataclass
 from fieldplan.base.errors import DesignError
 from fieldplan.stats.censored import CensoredMean, CensoredMethod
 from fieldplan.stats.censored_fit import FEWEST_DETECTS, Model
+from fieldplan.stats.censored_likelihood import Loss, censored_loss
 from fieldplan.stats.intervals import IntervalKind, t_quantile
-
-Loss = Callable[[float, float], float]
-"""Minus the log likelihood, up to a constant, by place of the mean and log of the spread."""
 
 MODEL_OF: dict[CensoredMethod, Model] = {
     "lognormal-likelihood": "lognormal",
@@ -96,7 +94,7 @@ def profile_of_mean(
     (11.7, 6.2, 48.5)
     """
     _check(detects, limits, model)
-    loss, place, log_spread = _loss(detects, limits, model)
+    loss, place, log_spread = censored_loss(detects, limits, model)
     place, log_spread = _top(loss, place, log_spread, model)
 
     def best(at: float, start: float) -> float:
@@ -151,7 +149,7 @@ def jackknifed(
         for value, count in Counter(part).items():
             fewer = list(part)
             fewer.remove(value)
-            loss = _loss(detects if other else fewer, fewer if other else limits, model)[0]
+            loss = censored_loss(detects if other else fewer, fewer if other else limits, model)[0]
             place = _nearby_top(loss, top, scale=scale, bend=bend)
             if place is None:
                 place = _top(loss, *top, model)[0]
@@ -163,7 +161,7 @@ def _full_fit(
     detects: Sequence[float], limits: Sequence[float], model: Model
 ) -> tuple[tuple[float, float], float, tuple[float, float, float]]:
     """Give the top of the likelihood, the scale of its place, and its second derivatives."""
-    loss, place, log_spread = _loss(detects, limits, model)
+    loss, place, log_spread = censored_loss(detects, limits, model)
     a, b = _top(loss, place, log_spread, model)
     h = 1e-3
     s = h * math.exp(b) if model == "normal" else h
@@ -254,31 +252,6 @@ def _check(detects: Sequence[float], limits: Sequence[float], model: Model) -> N
         raise DesignError(message)
 
 
-def _loss(
-    detects: Sequence[float], limits: Sequence[float], model: Model
-) -> tuple[Loss, float, float]:
-    """Give the loss, and where to start: place of the mean and log of the spread.
-
-    The detects enter by sums alone and equal limits together, so that a call costs microseconds.
-    """
-    start = [*detects, *(limit / 2 for limit in limits)]
-    mean = math.fsum(start) / len(start)
-    sd = math.sqrt(math.fsum((x - mean) ** 2 for x in start) / len(start))
-    below = list(Counter(limits).items())
-    if model == "gamma":
-        return _gamma_loss(detects, below), math.log(mean), math.log(sd / mean)
-    if model == "normal":
-        return _normal_loss(detects, below), mean, math.log(sd)
-    normal = _normal_loss(
-        [math.log(x) for x in detects], [(math.log(x), count) for x, count in below]
-    )
-
-    def lognormal(place: float, log_spread: float) -> float:
-        return normal(place - math.exp(2 * log_spread) / 2, log_spread)
-
-    return lognormal, math.log(mean), math.log(math.sqrt(math.log1p((sd / mean) ** 2)))
-
-
 def _top(loss: Loss, place: float, log_spread: float, model: Model) -> tuple[float, float]:
     """Find the place of the mean and the log of the spread that lose least."""
 
@@ -288,47 +261,6 @@ def _top(loss: Loss, place: float, log_spread: float, model: Model) -> tuple[flo
     width = math.exp(log_spread) if model == "normal" else 1.0
     place = _lowest(lambda at: loss(at, best(at)), place, width=width)
     return place, best(place)
-
-
-def _normal_loss(values: Sequence[float], below: Sequence[tuple[float, int]]) -> Loss:
-    count, centre = len(values), math.fsum(values) / len(values)
-    squares = math.fsum((x - centre) ** 2 for x in values)
-
-    def loss(place: float, log_spread: float) -> float:
-        sigma = math.exp(log_spread)
-        total = count * log_spread + (squares + count * (centre - place) ** 2) / (2 * sigma**2)
-        for limit, number in below:
-            total -= number * _log_share_below((limit - place) / sigma)
-        return total
-
-    return loss
-
-
-def _log_share_below(z: float) -> float:
-    """Give the log of the normal share below z; erfc is fast and right down to 30 below."""
-    if z > -30:
-        return math.log(math.erfc(-z / math.sqrt(2)) / 2)
-    from scipy.special import log_ndtr
-
-    return float(log_ndtr(z))
-
-
-def _gamma_loss(values: Sequence[float], below: Sequence[tuple[float, int]]) -> Loss:
-    from scipy.special import gammainc
-
-    count, total = len(values), math.fsum(values)
-    logs = math.fsum(map(math.log, values))
-
-    def loss(place: float, log_spread: float) -> float:
-        k = math.exp(-2 * log_spread)
-        log_scale = place - math.log(k)
-        scale = math.exp(log_scale)
-        found = (k - 1) * logs - total / scale - count * (math.lgamma(k) + k * log_scale)
-        for limit, number in below:
-            found += number * math.log(max(float(gammainc(k, limit / scale)), 1e-300))
-        return -found
-
-    return loss
 
 
 def _lowest(function: Callable[[float], float], start: float, *, width: float = 1.0) -> float:

@@ -77,7 +77,11 @@ def _rows(estimate: Estimate) -> list[_Row]:
         return [("mean", estimate.mean.mean, estimate.interval)]
     if not estimate.as_bounds:
         return [
-            ("mean", estimate.mean.mean, estimate.interval),
+            (
+                "mean, at most" if estimate.upper_bound else "mean",
+                estimate.mean.mean,
+                estimate.interval,
+            ),
             ("non-detects at 0", bracket.mean_low, bracket.interval_low),
             ("non-detects at the limit", bracket.mean_high, bracket.interval_high),
         ]

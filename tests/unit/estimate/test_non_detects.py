@@ -103,6 +103,9 @@ def test_with_one_limit_kaplan_and_meier_say_at_most():
     answer = answered("kaplan-meier")
     assert " is at most " in answer.sentences[0]
     assert "no estimate" in answer.non_detect_sentence
+    assert "mean, at most: " in interval_figure(answer).alternative
+    assert estimate_json(answer)["mean_is_upper_bound"] is True
+    assert "The mean is at most " in results_paragraph(plan_with(Rules()), answer)
     open_below = returned(results_of((3.0, *DETECTS), LIMITS[1:]))
     assert " is at most " not in answered("kaplan-meier", open_below).sentences[0]
 
