@@ -37,7 +37,7 @@ MOST_ROWS = 40
 
 
 @click.command("locate")
-@campaign_argument
+@campaign_argument()
 @click.option("--count", type=click.IntRange(min=2), help="Draw this many, shared between strata.")
 @click.option("--layout", type=click.Choice(LAYOUT_NAMES), help="Draw this layout instead.")
 @click.option("--seed", type=click.IntRange(0, 2**63 - 1), help="Draw with this seed instead.")

@@ -14,9 +14,27 @@ from fieldplan.base.working import Step
 
 Function = TypeVar("Function", bound=Callable[..., Any])
 
-campaign_argument = click.argument(
-    "campaign_file", type=click.Path(path_type=Path, dir_okay=False), metavar="CAMPAIGN"
-)
+
+def _file_meant(_context: click.Context, _argument: click.Parameter, path: Path | None) -> Any:
+    """Take the campaign file of a folder where the folder is named."""
+    if path is None or not path.is_dir():
+        return path
+    from fieldplan.campaign.folder import campaign_in
+
+    return campaign_in(path)
+
+
+def campaign_argument(*, required: bool = True) -> Callable[[Function], Function]:
+    """Name the campaign file, or its folder."""
+    return click.argument(
+        "campaign_file",
+        type=click.Path(path_type=Path),
+        callback=_file_meant,
+        required=required,
+        metavar="CAMPAIGN" if required else "[CAMPAIGN]",
+    )
+
+
 packet_argument = click.argument(
     "packet", type=click.Path(path_type=Path, file_okay=False), metavar="PACKET"
 )
@@ -54,16 +72,17 @@ def print_steps(steps: Sequence[Step]) -> None:
     """Print numbered working: meaning, formula, inputs, value before and after rounding."""
     for number, step in enumerate(steps, start=1):
         click.echo(wrapped(f"{number}. {step.meaning}"))
-        click.echo(f"   {step.formula}")
+        click.echo(wrapped(step.formula, indent="   "))
         for quantity in step.inputs:
             unit = f" {quantity.unit}" if quantity.unit else ""
             meaning = wrapped(f"({quantity.meaning})", indent="       ")
-            click.echo(f"     {quantity.symbol} = {quantity.value:.6g}{unit}\n{meaning}")
+            value = wrapped(f"{quantity.symbol} = {quantity.value:.6g}{unit}", indent="     ")
+            click.echo(f"{value}\n{meaning}")
         unit = f" {step.unit}" if step.unit else ""
-        line = f"   {step.symbol} = {step.unrounded:.6g}"
+        line = f"{step.symbol} = {step.unrounded:.6g}"
         if step.rounded != step.unrounded:
             line += f", rounded {step.rounded:.6g}"
-        click.echo(line + unit)
+        click.echo(wrapped(line + unit, indent="   "))
         if step.source:
             click.echo(wrapped(f"Source: {step.source}", indent="   "))
 

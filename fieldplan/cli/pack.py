@@ -33,7 +33,7 @@ def day(on: datetime | None) -> date:
 
 
 @click.command("pack")
-@campaign_argument
+@campaign_argument()
 @click.option(
     "--out",
     type=click.Path(path_type=Path, file_okay=False),

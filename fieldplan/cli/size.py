@@ -9,6 +9,7 @@ import click
 from fieldplan.base.errors import FieldplanError
 from fieldplan.cli.option_words import answer_in_options, in_options
 from fieldplan.cli.options import (
+    campaign_argument,
     explain_option,
     json_option,
     print_json,
@@ -23,18 +24,13 @@ from fieldplan.cli.size_options import BadOption, bare_number_options, given_nam
 from fieldplan.cli.typed_numbers import BareNumbers, refuse_unknown_question
 
 if TYPE_CHECKING:
-    from collections.abc import Collection
+    from collections.abc import Callable, Collection
 
     from fieldplan.sizing.model import Size, StratumSize
 
 
 @click.command("size")
-@click.argument(
-    "campaign_file",
-    type=click.Path(path_type=Path, dir_okay=False),
-    required=False,
-    metavar="[CAMPAIGN]",
-)
+@campaign_argument(required=False)
 @bare_number_options
 @click.option(
     "--more", multiple=True, metavar="TOPIC", help="Say one topic in full; 'all' says every one."
@@ -61,13 +57,9 @@ def command(
       fieldplan size --question all-clear --with share=0.05
     """
     wanted = _wanted(more, everything=as_json or explain)
-    answer = (
-        _of_campaign(campaign_file, typed, wanted)
-        if campaign_file
-        else _of_numbers(typed, wanted, alone=not more)
-    )
+    answer = _answer(campaign_file, typed, wanted, alone=not more)
     if more:
-        _refuse_unknown(more, answer)
+        _refuse_unknown(more, answer, lambda: _answer(campaign_file, typed, "all", alone=False))
     if as_json:
         print_json(as_mapping(answer))
     elif quiet:
@@ -82,18 +74,27 @@ def _wanted(more: tuple[str, ...], *, everything: bool) -> "str | Collection[str
     return more or "quick"
 
 
-def _refuse_unknown(more: tuple[str, ...], answer: "Size") -> None:
-    """Refuse a topic that nobody knows, or that this campaign gives nothing to say about."""
+def _answer(path: Path | None, typed: dict[str, Any], wanted: Any, *, alone: bool) -> "Size":
+    """Size what was given: a campaign file, or numbers."""
+    return _of_campaign(path, typed, wanted) if path else _of_numbers(typed, wanted, alone=alone)
+
+
+def _refuse_unknown(more: tuple[str, ...], answer: "Size", whole: "Callable[[], Size]") -> None:
+    """Refuse a topic that nobody knows, or that this campaign gives nothing to say about.
+
+    ``whole`` sizes again with every topic, to name those that there are.
+    """
     from fieldplan.sizing.beside import QUICK, THOROUGH
 
     found = [finding.topic for finding in answer.findings]
     for topic in more:
         if topic in found or topic == "all":
             continue
-        if topic in (*QUICK, *THOROUGH):
-            message = f"--more {topic}: nothing given says anything about it."
-        else:
-            message = f"--more {topic} is no topic; there are {', '.join(found) or 'none'} here."
+        here = ", ".join(finding.topic for finding in whole().findings)
+        known = topic in (*QUICK, *THOROUGH)
+        fault = "nothing given says anything about it" if known else "is no topic"
+        start = f"--more {topic}: {fault}" if known else f"--more {topic} {fault}"
+        message = f"{start}; {f'there are {here}, and all' if here else 'there are none'} here."
         raise BadOption(message)
 
 
@@ -142,7 +143,7 @@ def print_answer(answer: "Size", *, explain: bool, more: tuple[str, ...] = ()) -
     print_sentences([*answer.sentences[1:], *(other.sentence for other in answer.others)])
     asked = [f for f in answer.findings if f.topic in more or "all" in more]
     beside = [f for f in answer.findings if f.answer not in answer.sentences or f in asked]
-    print_findings(beside, full=more)
+    print_findings(beside, full=more, said=answer.sentences)
     if not explain:
         say("\n--explain shows the working, and under what condition it holds.")
         return
@@ -152,7 +153,7 @@ def print_answer(answer: "Size", *, explain: bool, more: tuple[str, ...] = ()) -
     print_sentences(answer.conditions)
     for finding in answer.findings:
         if finding.topic not in more and "all" not in more:
-            print_finding(finding)
+            print_finding(finding, said=answer.sentences)
 
 
 def as_mapping(answer: "Size") -> dict[str, Any]:
