@@ -17,6 +17,7 @@ UNEXPECTED = (
     "This is a fault of fieldplan, not yours; nothing half-written was left. Run the command again "
     "with FIELDPLAN_TRACE=1 set and report what it prints"
 )
+STOPPED = "Stopped by Ctrl-C; nothing half-written was left."
 COMMANDS: dict[str, dict[str, str]] = {
     "Every day": {
         "new": "Answer a few questions and get a campaign file.",
@@ -97,7 +98,12 @@ def main() -> None:
     if not os.environ.get("SOURCE_DATE_EPOCH", "0").isdigit():
         del os.environ["SOURCE_DATE_EPOCH"]
     try:
-        entry.main(standalone_mode=True)
+        code = entry.main(standalone_mode=False)
+    except click.ClickException as fault:
+        fault.show()
+        sys.exit(fault.exit_code)
+    except (click.Abort, KeyboardInterrupt):
+        _leave([STOPPED], 1)
     except FieldplanError as fault:
         _leave(fault.problems, fault.exit_code)
     except OSError as fault:
@@ -107,6 +113,7 @@ def main() -> None:
         if os.environ.get("FIELDPLAN_TRACE"):
             raise
         _leave([f"{UNEXPECTED} ({type(fault).__name__}: {fault})."], 1)
+    sys.exit(code if isinstance(code, int) else 0)
 
 
 def _leave(problems: Iterable[str], code: int) -> NoReturn:
