@@ -7,8 +7,8 @@ from fieldplan.packet.sheets.amounts import percent, rounded
 from fieldplan.packet.sheets.plan_words import every_unit
 from fieldplan.plan.model import Plan
 
-ROOM = 420
-"""Characters of four printed lines."""
+ROOM = 340
+"""Characters of three printed lines; the fourth says where all conditions stand."""
 
 
 _SENTENCE_END = re.compile(r"(?<!\bsec)(?<!\bsecs)(?<!\bch)(?<!\bed)\.\s+(?=[A-Z0-9])")
@@ -20,7 +20,7 @@ def condition_lines(plan: Plan) -> tuple[str, ...]:
 
 
 def shortened(conditions: Sequence[str], declared: Sequence[str] = ()) -> str:
-    """Put conditions into four printed lines: all of them, or how the weightiest open.
+    """Put conditions into three printed lines: all of them, or how the weightiest open.
 
     Parameters
     ----------

@@ -113,7 +113,7 @@ def test_every_reference_leads_to_the_section_that_it_names() -> None:
     assert SHEET[4] == "How many"  # "section 5" there
 
 
-def test_conditions_take_four_lines_on_the_sheet_and_all_their_room_in_the_working() -> None:
+def test_conditions_take_few_lines_on_the_sheet_and_all_their_room_in_the_working() -> None:
     """Cut they may be, hidden not: the sheet counts them and says where they are."""
     plan = found()
     blocks = number_blocks(plan)
