@@ -51,8 +51,7 @@ def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
     """
     table = _table(asked)
     units, cap = sum(counts), _cap(asked, table)
-    size = best_pool(table.share, largest=cap)
-    tests = analyses_of_units(table.share, size, units)
+    size, tests = _best(table.share, cap, units)
     return Finding(
         topic=TOPIC,
         title="Which units exceed",
@@ -76,8 +75,15 @@ def bought(asked: Asked, counts: tuple[int, ...]) -> Finding:
         ),
         warnings=tuple(_warnings(asked, size, cap)),
         sources=(DORFMAN,),
-        picture=_picture(table.share, size, cap),
+        picture=_picture(table.share, size, cap) if size > 1 else None,
     )
+
+
+def _best(share: float, cap: int | None, units: int) -> tuple[int, float]:
+    """Give the best pool and its analyses; single analyses where it saves less than one of them."""
+    size = best_pool(share, largest=cap)
+    tests = analyses_of_units(share, size, units)
+    return (size, tests) if tests <= units - 1 else (1, float(units))
 
 
 def _table(asked: Asked) -> WhichExceed:
@@ -106,8 +112,8 @@ def _answer(asked: Asked, units: int, size: int, tests: float) -> str:
     share = typed_percent(_table(asked).share)
     if size == 1:
         return (
-            f"With {share} of units expected above {_level(asked)} no pool saves an analysis: "
-            f"all {units} are analysed one by one."
+            f"With {share} of units expected above {_level(asked)} no pool saves an analysis "
+            f"in {units}: all of them are analysed one by one."
         )
     line = (
         f"Pools of {size}, and single analyses where a pool shows something, tell which of "
@@ -160,7 +166,7 @@ def _steps(share: float, size: int, units: int, tests: float) -> tuple[Step, ...
 
 def _warnings(asked: Asked, size: int, cap: int | None) -> Iterator[str]:
     limit, level = asked.analyte.reporting_limit, asked.level
-    if level is not None and limit is not None:
+    if size > 1 and level is not None and limit is not None:
         reach = with_unit(figure(level / size), asked.question.unit)
         yield (
             f"In a pool of {size} a single unit at the level among units of nothing gives {reach}; "
@@ -170,9 +176,9 @@ def _warnings(asked: Asked, size: int, cap: int | None) -> Iterator[str]:
     elif size > 1:
         yield (
             "Dilution is not looked at: give the action level and the reporting limit, for a unit "
-            f"at the level gives a {size}th of it in a pool of {size}."
+            f"at the level gives 1/{size} of it in a pool of {size}."
         )
-    if cap is not None and best_pool(_table(asked).share) > size:
+    if cap is not None and best_pool(_table(asked).share) > cap:
         yield (
             f"Larger pools would need fewer analyses, but {cap} units are the most that one may "
             "hold."

@@ -91,3 +91,31 @@ def test_it_can_be_asked_on_the_command_line() -> None:
     )  # fmt: skip
     assert outcome.exit_code == 0, outcome.output
     assert "saves about 8709 EUR" in outcome.stdout
+
+
+@pytest.mark.parametrize("share", [0.3, 0.35])
+def test_pool_that_saves_less_than_one_analysis_is_not_proposed(share: float) -> None:
+    """Brute force over every pool size: 37 units at 30 % take 36.6 analyses at the best."""
+    best = min(
+        37 // m * (1 + m * (1 - (1 - share) ** m)) + (37 % m) for m in range(2, 37)
+    )  # what is left over, one by one
+    assert best > 36
+    found = sized(f"share={share}", "analyte.reporting_limit=2", population=37, level=10.0)
+    told = amounts(found)
+    assert (told["pool_size"], told["expected_analyses"]) == (1, 37)
+    finding = found.findings[0]
+    assert "one by one" in finding.answer
+    assert "Pools of" not in finding.answer
+    assert "pool of 1 " not in " ".join(finding.warnings)
+    assert finding.picture is None
+
+
+def test_pool_that_saves_more_than_one_analysis_is_proposed_at_any_share() -> None:
+    """Closed form: 1/3 + 1 − 0.7³ = 0.990 a unit, two analyses in 198."""
+    assert amounts(sized("share=0.3", population=198))["pool_size"] == 3
+
+
+def test_dilution_is_said_as_a_fraction() -> None:
+    """A pool of 32 at one in a thousand; the one unit in it counts 1/32."""
+    said = " ".join(sized("share=0.001", population=500).findings[0].warnings)
+    assert "1/32 of it in a pool of 32" in said
