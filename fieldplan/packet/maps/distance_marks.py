@@ -9,6 +9,7 @@ from shapely.geometry.base import BaseGeometry
 
 from fieldplan.frame.model import Branch, Frame
 from fieldplan.packet.drawing import INK, POINTS_PER_MM, text_width_mm
+from fieldplan.packet.exchange.plain_text import plain
 from fieldplan.packet.maps.names import Rectangle
 from fieldplan.packet.maps.tiles import PageSpec
 
@@ -18,6 +19,7 @@ if TYPE_CHECKING:
 _APART_MM = 24.0
 _TICK_MM = 1.1
 _POINTS = 5.6
+_LONGEST_NAME = 24
 _ON_SCREEN = 12
 """Marks on the longest branch of a screen map, at most."""
 
@@ -52,7 +54,7 @@ def distance_marks(frame: Frame, apart_m: float) -> tuple[DistanceMark, ...]:
     for branch in frame.branches:
         for number in range(int(branch.length_m // step) + 1):
             at = number * step
-            words = branch.name if number == 0 else _words(at)
+            words = _short(branch.name) if number == 0 else _words(at)
             marks.append(_mark(branch, at, words))
     return tuple(marks)
 
@@ -67,6 +69,12 @@ def round_step(apart_m: float) -> int:
     """
     power = int(10 ** max(math.floor(math.log10(max(apart_m, 1.0))), 0))
     return next(m * power for m in (1, 2, 5, 10) if m * power >= apart_m - 1e-9)
+
+
+def _short(name: str) -> str:
+    """Keep a name on one line of at most two dozen letters."""
+    name = plain(name)
+    return name if len(name) <= _LONGEST_NAME else name[: _LONGEST_NAME - 1] + "…"
 
 
 def _words(metres: float) -> str:

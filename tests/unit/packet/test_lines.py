@@ -130,6 +130,9 @@ def test_distance_marks_stand_where_the_distance_is():
         ("arm", 900.0), ("200 m", 700.0), ("400 m", 500.0),
     ]  # fmt: skip
     assert arm[1].across == pytest.approx((0.0, -1.0))
+    long = replace(line_plan().frame.branches[0], name="the long name\nof a branch of a river")
+    frame = replace(line_plan().frame, branches=(long,))
+    assert distance_marks(frame, 150.0)[0].words == "the long name of a bran…"
 
 
 def test_screen_map_draws_lines_without_fill():
