@@ -13,6 +13,7 @@ from fieldplan.packet.sheets.plan_words import (
     several_strata,
 )
 from fieldplan.packet.sheets.rules import NON_DETECTS, rules_fingerprint, stated
+from fieldplan.packet.sheets.told import not_told_of, questions_asked, told_of
 from fieldplan.packet.sheets.wording import number
 from fieldplan.plan.model import Plan
 from fieldplan.sizing.words import FEW, in_strata
@@ -34,8 +35,9 @@ def limits_blocks(plan: Plan) -> list[Block]:
 def can_tell(plan: Plan) -> tuple[str, ...]:
     """List what the design supports."""
     lines = [
+        *told_of(plan),
         f"The {mean_of(plan.campaign)} over the population of section 3, and how far from the "
-        "true mean it may lie."
+        "true mean it may lie.",
     ]
     if plan.campaign.deciding_analyte.action_level is not None:
         lines.append(
@@ -49,8 +51,8 @@ def can_tell(plan: Plan) -> tuple[str, ...]:
         lines.append(f"The mean of {words} from the same jars, as closely as section 5 says.")
     if _asks_for_a_share(plan):
         lines.append(
-            "What section 5 says of a share, once the results above the level are counted: the "
-            "results sheet reports means and does not count."
+            "Of a share, once the results above the level are counted: the results sheet reports "
+            "means and does not count."
         )
     if several_strata(plan):
         lines.append("A mean for each stratum, with a wider interval than the site's.")
@@ -70,6 +72,7 @@ def cannot_tell(plan: Plan) -> tuple[str, ...]:
         else "the share of the site above a level"
     )
     lines = [
+        *not_told_of(plan),
         f"The highest value, or {share}.",
         "Anything outside the population: "
         + listed(
@@ -104,6 +107,12 @@ def patch_line(plan: Plan) -> str:
             "branch have no location."
         )
     gap = widest_gap(plan)
+    if "smallest-patch" in questions_asked(plan):
+        return (
+            "What lies in the widest gap: the chance of section 5 is an average over where a patch "
+            f"may lie; as drawn, one spot is {rounded(gap)} m from its nearest location, and a "
+            f"round patch up to {rounded(2 * gap)} m across would be missed there."
+        )
     return (
         f"Where a small patch lies: as drawn, one spot is {rounded(gap)} m from its nearest "
         f"location, so that a round patch up to {rounded(2 * gap)} m across, or what of it lies in "
