@@ -260,8 +260,6 @@ def _design(answers: Answers) -> list[str]:
     layout, comment = "simple-random", f"or {others}"
     if answers.divided:
         layout = "stratified"
-    elif answers.list_file is None:
-        comment += "; with strata: stratified"
     return [
         "",
         "[[design]]",
