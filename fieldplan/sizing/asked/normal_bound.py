@@ -1,13 +1,18 @@
 """The bound mean + k s of normal results below the level: how many bring it there often enough."""
 
+import math
+
 from fieldplan.base.errors import DesignError
 from fieldplan.base.working import Quantity, Step
 from fieldplan.campaign.questions.upper_share import UpperShare
 from fieldplan.sizing.asked.counting_claims import level_words, population_words
 from fieldplan.sizing.asked.model import Answered, Asked
+from fieldplan.sizing.asked.sure_words import sure_words
 from fieldplan.sizing.model import Amount, Finding, Picture, Series
+from fieldplan.sizing.precision import Precision
 from fieldplan.sizing.words import counted, figure, percent, typed_percent
-from fieldplan.stats.distributions import normal_quantile
+from fieldplan.stats.assurance import chance_of_variance
+from fieldplan.stats.distributions import chi_square_quantile, normal_quantile
 from fieldplan.stats.precision import whole
 from fieldplan.stats.tolerance import n_by_counting
 from fieldplan.stats.tolerance_factors import (
@@ -78,6 +83,61 @@ def _factor(n: int, table: UpperShare) -> float:
 
 def _chance(n: int, margin: float, table: UpperShare) -> float:
     return chance_of_bound(n, margin, share=table.share, confidence=table.confidence)
+
+
+def chance_enough(asked: Asked, table: UpperShare, n: int) -> float | None:
+    """Give the chance that n results keep the power, sigma being an estimate and the mean known.
+
+    Parameters
+    ----------
+    asked : Asked
+    table : UpperShare
+    n : int
+
+    Returns
+    -------
+    float or None
+        None where nobody said how many results stand behind sigma.
+
+    Notes
+    -----
+    The power is kept from some distance m* between mean and level on, in true standard deviations:
+    P(χ² ≥ df (m*/m)²), m being the distance in pilot standard deviations.
+    """
+    pilot = Precision(asked.question).pilot_degrees_of_freedom((n,))
+    if pilot is None:
+        return None
+    low, high = 0.0, 1.0
+    while _chance(n, high, table) < (table.power or 0.0):
+        low, high = high, 2 * high
+    for _ in range(40):
+        middle = (low + high) / 2
+        enough = _chance(n, middle, table) >= (table.power or 0.0)
+        low, high = (low, middle) if enough else (middle, high)
+    return chance_of_variance((high / _margin(asked)) ** 2, 1.0, pilot)
+
+
+def _sure(asked: Asked, table: UpperShare, n: int, *, counting: bool) -> str:
+    """Say how sure the number is, sigma being an estimate."""
+    chance = chance_enough(asked, table, n)
+    if chance is None or not counting:
+        return sure_words(asked.question, chance)
+    pilot = Precision(asked.question).pilot_degrees_of_freedom((n,)) or 1.0
+    found = []
+    for assurance in (0.8, 0.9):
+        margin = _margin(asked) * math.sqrt(chi_square_quantile(1 - assurance, pilot) / pilot)
+        try:
+            more = n_for_bound(
+                margin, share=table.share, confidence=table.confidence, power=table.power or 0.0
+            )
+        except DesignError:
+            found.append("more than can be had")
+        else:
+            found.append(f"{more}")
+    more_words = f"for a chance of 80 % and 90 % it takes {found[0]} and {found[1]}"
+    if found[0] == found[1]:
+        more_words = f"for a chance of 80 % it takes {found[0]}"
+    return sure_words(asked.question, chance, f"the mean is taken as known; {more_words}")
 
 
 def _margin(asked: Asked) -> float:
@@ -174,6 +234,7 @@ def _finding(
             Amount("factor", "k of the bound mean + k s", _factor(n, table)),
             Amount("margin", "Expected mean to level, in standard deviations", margin),
             Amount("chance", "Chance that the bound comes out below", _chance(n, margin, table)),
+            Amount("chance_enough", "Chance that these are enough", chance_enough(asked, table, n)),
             Amount("chance_at_larger_sigma", "The same if sigma is a quarter larger", larger),
             Amount("n_by_counting", "Results by counting, none above", by_counting, "results"),
         ),
@@ -188,14 +249,17 @@ def _finding(
             "Mean and sigma are as expected; were they not, the claim stays honest but comes out "
             "more or less often.",
         ),
-        warnings=_warnings(asked, by_counting, larger),
+        warnings=_warnings(
+            asked, by_counting, larger, sure=_sure(asked, table, n, counting=bool(steps))
+        ),
         sources=(OWEN,),
         picture=_picture(asked, table, n),
     )
 
 
-def _warnings(asked: Asked, by_counting: int, larger: float) -> tuple[str, ...]:
+def _warnings(asked: Asked, by_counting: int, larger: float, *, sure: str) -> tuple[str, ...]:
     lines = [
+        sure,
         "The claim leans on the normal shape far out, where few results can show it. Counting "
         f"needs no shape: {by_counting} results, none of them above the level.",
         "It says nothing about the mean, nor that no place exceeds the level.",

@@ -3,6 +3,7 @@
 import math
 import re
 
+import numpy as np
 import pytest
 from scipy import stats
 
@@ -202,3 +203,43 @@ def test_list_names_units_where_a_share_of_it_would_be_half_a_unit() -> None:
     assert "up to 2 of 50 may" in said
     assert answered.finding.picture is not None
     assert all(x / 2 == round(x / 2) for x in answered.finding.picture.series[0].x)  # 2 % a unit
+
+
+def test_normal_bound_says_how_likely_its_number_is_enough() -> None:
+    """Simulation: true sigmas given a pilot of 6; the power of each by scipy's noncentral t."""
+    part = Part("site", 1.0, 20.0, results=6)
+    words = {"share": 0.95, "method": "normal", "power": 0.8, "mean": 90.0}
+    found = count(asked_for("upper-share", parts=(part,), **words))
+    (n,) = found.needed
+    tries = 2_000
+    sigmas = 20.0 / np.sqrt(stats.chi2.rvs(5, size=tries, random_state=11) / 5)
+    root = math.sqrt(n)
+    factor = stats.nct.ppf(0.95, n - 1, stats.norm.ppf(0.95) * root) / root
+    powers = stats.nct.sf(factor * root, n - 1, (150.0 - 90.0) / sigmas * root)
+    enough = float(np.mean(powers >= 0.8))
+    stated = amount(found, "chance_enough")
+    assert stated == pytest.approx(enough, abs=4 * math.sqrt(enough * (1 - enough) / tries))
+    said = found.finding.warnings[0]
+    assert f"The chance that these are enough is {100 * stated:.0f} %" in said
+    assert "the mean is taken as known" in said
+
+
+def test_number_for_a_chance_of_eighty_percent_keeps_it() -> None:
+    """Inverse: what the sentence names for 80 % has a chance of 80 %, one fewer has less."""
+    part = Part("site", 1.0, 20.0, results=12)
+    words = {"share": 0.95, "method": "normal", "power": 0.8, "mean": 60.0}
+    asked = asked_for("upper-share", parts=(part,), **words)
+    named = re.search(r"80 % and 90 % it takes (\d+) and (\d+)", count(asked).finding.warnings[0])
+    assert named is not None
+    for n, assurance in zip(map(int, named.groups()), (0.8, 0.9), strict=True):
+        assert amount(bought(asked, (n,)), "chance_enough") >= assurance - 1e-6
+        assert amount(bought(asked, (n - 1,)), "chance_enough") < assurance
+
+
+def test_normal_bound_of_a_typed_sigma_gives_no_chance() -> None:
+    """Nobody said how many results stand behind it."""
+    part = Part("site", 1.0, 20.0)
+    words = {"share": 0.95, "method": "normal", "power": 0.8, "mean": 90.0}
+    found = count(asked_for("upper-share", parts=(part,), **words))
+    assert amount(found, "chance_enough") is None
+    assert "Nobody said how many results stand behind sigma" in found.finding.warnings[0]
