@@ -85,7 +85,7 @@ def look_at_site(answers: Answers, folder: Path, *, drawn: bool) -> tuple[list[s
     strata : list of str
         Their names; empty where they could not be read.
     """
-    from fieldplan.base.units import area_in_words
+    from fieldplan.base.units import area_in_words, length_in_words
     from fieldplan.frame import read_frame
 
     # A list tells only when it is read whether it has strata; this layout takes both.
@@ -99,6 +99,8 @@ def look_at_site(answers: Answers, folder: Path, *, drawn: bool) -> tuple[list[s
     names = [stratum.name for stratum in frame.strata]
     if frame.kind == "list":
         held = f"a list of {frame.population.net:g}"
+    elif frame.kind == "line":
+        held = length_in_words(frame.population.net)
     else:
         held = area_in_words(frame.population.net)
     inside = f" in {len(names)} strata: {', '.join(names)}" if len(names) > 1 else ""

@@ -71,8 +71,9 @@ def next_steps(plan: Plan) -> tuple[str, ...]:
 def crew_files(plan: Plan) -> tuple[tuple[str, str], ...]:
     """Say what each of the crew's files is for."""
     name = plan.revision_name
+    drawn = "the lines as tracks" if plan.frame.kind == "line" else "the boundary as a track"
     return (
-        (f"{name}-points.gpx", "for a GPS receiver: all locations, and the boundary as a track"),
+        (f"{name}-points.gpx", f"for a GPS receiver: all locations, and {drawn}"),
         (f"{name}-points.kml", "for a phone or a globe viewer"),
         (f"{name}-points.csv", "all locations in degrees, degrees-minutes-seconds and UTM"),
         (f"{name}-map.html", "the map for phone or laptop; works without a signal"),
