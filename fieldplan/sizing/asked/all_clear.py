@@ -14,6 +14,7 @@ from fieldplan.sizing.asked.counting_claims import (
     counting_assumptions,
     counts_that_notice,
     exceeding_units,
+    level_warning,
     level_words,
     limit_warning,
     population_words,
@@ -100,6 +101,13 @@ def _answer(asked: Asked, counts: tuple[int, ...]) -> str:
             f"All {total} units of the list must be looked at to notice {_unnoticed(asked, table)} "
             f"above {level} with {typed_percent(table.confidence)} confidence."
         )
+    if asked.population is not None and exceeding_units(asked, _share(asked, table)) == 1:
+        left = counted(asked.population - total, "unit")
+        return (
+            f"{total} of the {asked.population} units of the list must be looked at to notice "
+            f"{_unnoticed(asked, table)} above {level} with {typed_percent(table.confidence)} "
+            f"confidence; of the {left} left nothing is known."
+        )
     return (
         f"{counted(total, 'result')}, none of them above {level}, would show with "
         f"{typed_percent(table.confidence)} confidence that {_claim(asked, table)}."
@@ -111,8 +119,6 @@ def _claim(asked: Asked, table: AllClear) -> str:
         share = typed_percent(_share(asked, table))
         return f"less than {share} of {population_words(asked)} exceed it"
     exceeding = exceeding_units(asked, _share(asked, table))
-    if exceeding == 1:
-        return f"none of {population_words(asked)} exceeds it"
     return f"fewer than {exceeding} of {population_words(asked)} exceed it"
 
 
@@ -122,7 +128,11 @@ def _claimed(asked: Asked, counts: tuple[int, ...], confidence: float) -> str:
     if asked.population is None:
         share = typed_percent(claimed_share(noticed, up=True))
         return f"less than {share} of {population_words(asked)} exceed it"
-    return f"no more than {round(noticed) - 1} of {population_words(asked)} exceed it"
+    most = round(noticed) - 1
+    if most == 0:
+        left = counted((asked.population or 0) - sum(counts), "unit")
+        return f"none of {population_words(asked)} exceeds it, though {left} stay unseen"
+    return f"no more than {most} of {population_words(asked)} exceed it"
 
 
 def _smallest_noticed(asked: Asked, counts: tuple[int, ...], confidence: float) -> float:
@@ -239,10 +249,8 @@ def _row_words(asked: Asked, share: float) -> str:
 
 
 def _warnings(asked: Asked, counts: tuple[int, ...], share: float) -> tuple[str, ...]:
-    lines = [*limit_warning(asked), "It says nothing about the mean."]
-    if not takes_all(asked, counts) and (
-        asked.population is None or exceeding_units(asked, share) > 1
-    ):
+    lines = [*level_warning(asked), *limit_warning(asked), "It says nothing about the mean."]
+    if not takes_all(asked, counts):
         few = share / 5 if asked.population is None else 1 / asked.population
         unseen = 1 - chance_noticed(asked, counts, few, allowed=0)
         lines[-1] = (

@@ -52,7 +52,7 @@ def claimed_share(share: float, *, up: bool) -> float:
     """
     rest = min(share, 1 - share)
     digits = 3 if rest >= 0.01 or rest <= 0 else 1 - math.floor(math.log10(rest))
-    scale = 10**digits
+    scale = 10.0**digits
     moved = math.ceil(share * scale - 1e-7) if up else math.floor(share * scale + 1e-7)
     return moved / scale
 
@@ -169,6 +169,27 @@ def counts_that_notice(
     # Whole shares ripple: a total may fail where the one before it did.
     ripple = 4 * len(asked.question.parts) if len(asked.question.parts) > 1 else 0
     return asked.shared(smallest(notices, min(low, most), most, back=ripple))
+
+
+def level_warning(asked: Asked) -> tuple[str, ...]:
+    """Warn where a campaign file does not say which level results are compared with."""
+    if asked.level is not None or asked.frame is None:
+        return ()
+    return (
+        f"The level of {asked.analyte.label} is not written down, so nobody can say what results "
+        "will be compared with. Write action_level and action_level_source in its [[analyte]] "
+        "before any result is seen.",
+    )
+
+
+def found_warning(asked: Asked) -> tuple[str, ...]:
+    """Say what counts where a campaign file names no level."""
+    if asked.level is not None or asked.frame is None:
+        return ()
+    return (
+        f"No level of {asked.analyte.label} is written down: what counts is that it is found at "
+        "all. Write action_level in its [[analyte]] if a level is meant.",
+    )
 
 
 def limit_warning(asked: Asked) -> tuple[str, ...]:

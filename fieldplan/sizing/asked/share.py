@@ -7,6 +7,7 @@ from fieldplan.base.working import Quantity, Step
 from fieldplan.campaign.questions.share import ShareTable
 from fieldplan.sizing.asked.counting_claims import (
     HYPERGEOMETRIC,
+    found_warning,
     level_words,
     population_words,
     table_missing,
@@ -100,7 +101,9 @@ def _expected(table: ShareTable) -> float:
 
 
 def _what(asked: Asked) -> str:
-    return "that have it" if asked.level is None else f"above {level_words(asked)}"
+    if asked.level is not None:
+        return f"above {level_words(asked)}"
+    return "that have it" if asked.frame is None else f"with {asked.analyte.label} found in them"
 
 
 def _reach_words(asked: Asked, reach: float) -> str:
@@ -260,7 +263,7 @@ def assumptions(asked: Asked) -> tuple[str, ...]:
 
 
 def _warnings(asked: Asked, table: ShareTable) -> tuple[str, ...]:
-    lines = []
+    lines = list(found_warning(asked))
     if table.expected is None:
         lines.append("No share was expected, so 50 % was taken, which asks for the most results.")
     if table.margin is not None and table.margin > _room(asked, table):

@@ -8,6 +8,7 @@ from fieldplan.sizing.asked.counting_claims import (
     HYPERGEOMETRIC,
     evenness,
     exceeding_units,
+    found_warning,
     level_words,
     population_words,
 )
@@ -101,7 +102,7 @@ def compared(
             "The count that decides follows from the number of results that come in: it is fixed "
             "by the table of the test, not chosen afterwards.",
         ),
-        warnings=_warnings(asked, counts),
+        warnings=(*found_warning(asked), *_warnings(asked, counts)),
         sources=(BINOMIAL if asked.population is None else HYPERGEOMETRIC,),
         picture=_picture(asked, table, total, allowed),
     )
@@ -174,7 +175,9 @@ def _decides_at(table: ShareTable, n: int, allowed: int | None) -> int | None:
 
 def _answer(asked: Asked, table: ShareTable, n: int, allowed: int | None) -> str:
     stated, expected = table.compare_with or 0.0, table.expected or 0.0
-    what = "having it" if asked.level is None else f"above {level_words(asked)}"
+    what = f"above {level_words(asked)}"
+    if asked.level is None:
+        what = "having it" if asked.frame is None else f"with {asked.analyte.label} found"
     side = "below" if _below(table) else "above"
     if allowed is None:
         return (

@@ -14,6 +14,7 @@ from fieldplan.sizing.asked.counting_claims import (
     claimed_share,
     counting_assumptions,
     counts_that_notice,
+    level_warning,
     level_words,
     limit_warning,
     population_words,
@@ -306,6 +307,7 @@ def _warnings(asked: Asked, counts: tuple[int, ...], allowed: int) -> tuple[str,
     if asked.population is not None:
         rest = f"{_spoiling(asked, table) - 1} of {asked.population}"
     lines = [
+        *level_warning(asked),
         *limit_warning(asked),
         *uneven_warning(asked, counts, _near(asked, table, allowed)),
         f"It says nothing about the mean, nor that no {place} exceeds {level_words(asked)}: up to "

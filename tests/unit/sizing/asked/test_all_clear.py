@@ -10,10 +10,12 @@ from scipy import stats
 
 from fieldplan.base.errors import CampaignError, DesignError
 from fieldplan.campaign.model import Objective
+from fieldplan.sizing import asked as questions
 from fieldplan.sizing.asked.all_clear import bought, count
 from fieldplan.sizing.asked.counting_claims import chance_noticed
 from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.question import Part
+from tests.factories import make_plan
 from tests.unit.sizing.asked.asked_for import amount, asked_for, listed
 from tests.unit.stats.published import row
 
@@ -62,7 +64,47 @@ def test_whole_list_is_looked_at_where_one_unit_must_not_stay_unseen() -> None:
     assert found.finding.answer.startswith("All 14 units of the list must be looked at")
     half = asked_for("all-clear", parts=listed(14), units=1, confidence=0.6)
     assert count(half).needed == (math.ceil(0.6 * 14),)
-    assert "none of the 14 units of the list exceeds it" in count(half).finding.answer
+    assert "9 of the 14 units of the list must be looked at" in count(half).finding.answer
+
+
+def test_one_unit_that_must_not_stay_unseen_is_no_proof_of_the_rest() -> None:
+    """Two of 40 wells that nobody looked at may exceed: chance 2/40 that the one is among them."""
+    asked = asked_for("all-clear", parts=listed(40), units=1)
+    answered = count(asked)
+    assert answered.needed == (38,)
+    assert answered.finding.answer.endswith("of the 2 units left nothing is known.")
+    assert "exceeds it" not in answered.finding.answer
+    said = " ".join(answered.finding.warnings)
+    assert "nor that no unit exceeds 150 mg/kg: 1 of 40 above it would stay unseen in 5 %" in said
+    assert "though 2 units stay unseen" in bought(asked, (38,)).answer
+
+
+@pytest.mark.parametrize(
+    ("question", "keys", "told"),
+    [
+        ("all-clear", {"share": 0.05}, "The level of Lead is not written down"),
+        ("upper-share", {"share": 0.95}, "The level of Lead is not written down"),
+        ("share", {"expected": 0.2, "margin": 0.1}, "what counts is that it is found at all"),
+        (
+            "share",
+            {"expected": 0.1, "compare_with": 0.3, "alpha": 0.05, "beta": 0.2},
+            "what counts is that it is found at all",
+        ),
+    ],
+)
+def test_a_claim_about_an_unnamed_level_says_so(
+    question: str, keys: dict[str, float], told: str
+) -> None:
+    """Nobody could check later which level was meant; with the level written it is named."""
+    named = asked_for(question, **keys)
+    frame = make_plan().frame
+    analyte = named.campaign.analyte[0].model_copy(update={"action_level": None})
+    campaign = named.campaign.model_copy(update={"analyte": (analyte,)})
+    unnamed = replace(named, campaign=campaign, frame=frame)
+    found = questions.count(unnamed).finding
+    assert told in " ".join(found.warnings)
+    assert "have it" not in found.answer
+    assert told not in " ".join(questions.count(replace(named, frame=frame)).finding.warnings)
 
 
 @pytest.mark.parametrize("parts", [HALVES, UNEVEN])
