@@ -62,12 +62,28 @@ def _widths(cells: Sequence[Sequence[str]]) -> list[int] | None:
     body = [max([len(text) for text in column[1:]] + [least])
             for column, least in zip(columns, words, strict=True)]  # fmt: skip
     widths = body if sum(body) <= room else words
-    if sum(widths) > room:
-        return None
-    while sum(widths) < room and widths != wide:  # give back what is left, narrowest share first
-        k = max(range(len(widths)), key=lambda j: wide[j] / widths[j])
-        widths[k] += 1
-    return widths
+    return None if sum(widths) > room else _given_back(columns, widths, room - sum(widths))
+
+
+def _given_back(columns: Sequence[Sequence[str]], widths: list[int], spare: int) -> list[int]:
+    """Widen the columns that break into most lines, as far as that saves a line."""
+    while True:
+        heights = [_height(column, width) for column, width in zip(columns, widths, strict=True)]
+        wider = [
+            (height, next(w for w in range(width, WIDTH + 1) if _height(column, w) < height), k)
+            for k, (column, width, height) in enumerate(zip(columns, widths, heights, strict=True))
+            if height > 1
+        ]
+        fitting = [(height, width, k) for height, width, k in wider if width - widths[k] <= spare]
+        if not fitting:
+            return widths
+        _, width, k = max(fitting)
+        spare -= width - widths[k]
+        widths[k] = width
+
+
+def _height(column: Sequence[str], width: int) -> int:
+    return max(len(_broken(text, width)) for text in column)
 
 
 def _longest_word(column: Sequence[str]) -> int:

@@ -29,7 +29,22 @@ if TYPE_CHECKING:
     from fieldplan.sizing.model import Size, StratumSize
 
 
-@click.command("size")
+EPILOG = """\b
+Questions (--question; one without its keys names them):
+  mean, all-clear, change, mean-and-background, mean-and-level, share,
+  smallest-patch, upper-share, which-exceed
+Layouts (--layout): simple-random, stratified, square-grid, triangular-grid,
+  compact-strata, balanced-list, even-spacing, census
+Topics (--more; a wrong one names those that have something to say):
+  deciding-analytes, two-phase, being-wrong, patch, composites, parts,
+  ranked-sets, near-normal, non-detects, time, bunched, strata, two-stages,
+  frontier, mean-band, space, and the question asked
+Keys (--with): docs/campaign-file.md. One page a question: docs/sizing.md.
+"""
+"""What stands below the options; typed here so that help loads nothing, and held by a test."""
+
+
+@click.command("size", epilog=EPILOG)
 @campaign_argument(required=False)
 @bare_number_options
 @click.option(
@@ -48,13 +63,16 @@ def command(
 ) -> None:
     """Say how many locations the target needs.
 
-    Give a campaign file, or bare numbers:
+    Give a campaign file (or its folder), or bare numbers:
 
     \b
       fieldplan size campaign.toml
+      fieldplan size campaign.toml --more frontier
       fieldplan size --sigma 27.57 --standard-error 6 --pilot-n 8
       fieldplan size --stratum 0.64,18 --stratum 0.36,45 --standard-error 6
+      fieldplan size --sigma 20 --standard-error 4 --with design.locations=12
       fieldplan size --question all-clear --with share=0.05
+      fieldplan size --question share --with expected=0.15 --with margin=0.05
     """
     wanted = _wanted(more, everything=as_json or explain)
     answer = _answer(campaign_file, typed, wanted, alone=not more)
@@ -139,8 +157,10 @@ def _of_numbers(typed: dict[str, Any], wanted: Any, *, alone: bool) -> "Size":
 def print_answer(answer: "Size", *, explain: bool, more: tuple[str, ...] = ()) -> None:
     """Print the answer in sentences; with ``explain`` the working and the conditions too."""
     click.echo(wrapped(answer.sentences[0]))
-    click.echo()
-    print_sentences([*answer.sentences[1:], *(other.sentence for other in answer.others)])
+    following = [*answer.sentences[1:], *(other.sentence for other in answer.others)]
+    if following:
+        click.echo()
+        print_sentences(following)
     asked = [f for f in answer.findings if f.topic in more or "all" in more]
     beside = [f for f in answer.findings if f.answer not in answer.sentences or f in asked]
     print_findings(beside, full=more, said=answer.sentences)

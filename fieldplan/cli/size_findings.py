@@ -75,7 +75,8 @@ def print_finding(finding: "Finding", *, said: Collection[str] = ()) -> None:
         click.echo(wrapped("Sources: " + "; ".join(finding.sources) + "."))
 
 
-_SHARES = ("chance", "share", "power", "confidence", "alpha", "beta")
+_SHARES = {"chance", "share", "shares", "held", "reach", "power", "confidence", "alpha", "beta"}
+_ALSO_SHARES = {"mean_above", "mean_below"}
 
 
 def amount_words(amount: "Amount") -> str:
@@ -93,7 +94,8 @@ def amount_words(amount: "Amount") -> str:
     if value is None:
         return "not known"
     words = {*amount.name.split("_"), *amount.meaning.lower().split()}
-    if isinstance(value, float) and not amount.unit and 0 <= value <= 1 and words & {*_SHARES}:
+    is_share = bool(words & _SHARES) or amount.name in _ALSO_SHARES
+    if isinstance(value, float) and not amount.unit and 0 <= value <= 1 and is_share:
         return _percent(value)
     return f"{value if isinstance(value, int) else _four_digits(value)} {amount.unit}".rstrip()
 

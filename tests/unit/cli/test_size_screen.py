@@ -2,11 +2,14 @@
 
 from collections.abc import Iterator
 from pathlib import Path
+from typing import get_args
 
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from fieldplan.campaign.model import DesignTable
+from fieldplan.campaign.questions import MODULES
 from fieldplan.cli import entry
 from fieldplan.cli.screen_table import WIDTH, table_lines
 from fieldplan.cli.size_findings import amount_words
@@ -95,6 +98,28 @@ def test_a_folder_without_a_campaign_file_is_refused_in_one_line(tmp_path: Path)
 def test_amounts_have_four_digits_that_count(amount: Amount, words: str) -> None:
     """More would be false; --json keeps them all."""
     assert amount_words(amount) == words
+
+
+def test_help_names_every_question_layout_and_topic_and_where_more_stands() -> None:
+    """Nobody should have to type a wrong word to learn the right ones."""
+    printed = run("--help")
+    said = set(printed.replace(",", " ").replace("(", " ").split())
+    layouts = get_args(DesignTable.model_fields["layout"].annotation)
+    assert {"mean", *MODULES, *layouts, *QUICK, *THOROUGH} <= said
+    for page in ("docs/campaign-file.md", "docs/sizing.md"):
+        assert page in printed
+        assert (DEMO_SITES.parent / page).is_file()
+
+
+def test_every_example_in_the_help_runs() -> None:
+    """An example that is refused is worse than none."""
+    assert max(map(len, run("--help").splitlines())) <= 80
+    examples = [line.split()[2:] for line in run("--help").splitlines()
+                if line.strip().startswith("fieldplan size")]  # fmt: skip
+    assert len(examples) >= 6
+    for words in examples:
+        real = [str(CAMPAIGNS[0]) if word == "campaign.toml" else word for word in words]
+        assert run(*real)
 
 
 @st.composite
