@@ -25,8 +25,7 @@ def worth(asked: Asked, counts: tuple[int, ...]) -> int:
     Notes
     -----
     The weighted share has variance p (1 − p) Σ W² / n, where the share p is the same in every
-    stratum; a list leaves the part (N − n) / (N − 1) of each. Cochran 1977, sec. 5.10 (from
-    memory).
+    stratum; a list leaves the part (N − n) / (N − 1) of each. Cochran 1977, ch. 5 (from memory).
     """
     if len(counts) == 1:
         return counts[0]
