@@ -5,7 +5,7 @@ from functools import cache
 from importlib import resources
 from typing import TYPE_CHECKING
 
-from fieldplan.base.document import Block, Document
+from fieldplan.base.document import Block, Document, Table
 from fieldplan.packet.sheets.wording import printable, step_lines
 
 if TYPE_CHECKING:
@@ -58,6 +58,8 @@ def _environment() -> "Environment":
     environment.finalize = lambda value: printable(value) if type(value) is str else value
     environment.filters["kind"] = _kind
     environment.filters["lines"] = step_lines
+    environment.filters["as_cards"] = _as_cards
+    environment.tests["words"] = _is_words
     environment.filters["as_image"] = _as_image
     return environment
 
@@ -65,6 +67,18 @@ def _environment() -> "Environment":
 def _kind(block: Block) -> str:
     """Name the type of a block."""
     return type(block).__name__
+
+
+def _as_cards(table: Table) -> bool:
+    """Tell whether a phone shows a table as cards: few rows, of many columns or of sentences."""
+    if len(table.rows) > 12 or len(table.columns) < 3:
+        return False
+    return len(table.columns) > 3 or any(len(cell) > 40 for row in table.rows for cell in row)
+
+
+def _is_words(cell: str) -> bool:
+    """Tell whether a cell holds words enough to need the whole width of a phone."""
+    return len(cell) > 24
 
 
 def _as_image(svg: str) -> str:

@@ -2,6 +2,7 @@
 
 import base64
 import re
+from dataclasses import replace
 
 import lxml.html
 import pytest
@@ -150,3 +151,15 @@ def test_an_empty_table_is_a_header_alone() -> None:
     """No targeted places: the table still says what it would hold."""
     document = Document("T", "", "QF", "QF-r01", "DRAFT", [Table(("a", "b"), ())])
     assert [h.text for h in page_of(document).iter("th")] == ["a", "b"]
+
+
+def test_short_tables_of_sentences_become_cards_on_a_phone():
+    """Three columns of words on 390 pixels are columns of single words."""
+    words = "the mean is shown for all three, with half in the middle"
+    long, short = (
+        set_html(replace(make_document(), blocks=[Table(("Rule", "Recorded", "Meaning"), (row,))]))
+        for row in (("non_detects", "bounds", words), ("16", "36 %", "the plain formula"))
+    )
+    assert '<table class="cards">' in long
+    assert f'<td class="words" data-label="Meaning">{words}</td>' in long
+    assert "<table>" in short
