@@ -177,11 +177,7 @@ def _finding(question: PatchQuestion, counts: tuple[int, ...]) -> Finding:
     factor = chances.smallest_scale(laid, question.table.probability) + 1 - question.reach
     factor = max(factor, question.least_scale)
     spacing = _spacing(question, laid)
-    answer = (
-        f"{_counted(question, counts)} {place_words(question)} hit {patch_words(question)}, "
-        f"with a chance of {percent(kept.chance)}{off_words(question)}; "
-        f"{asked_for(question)} was asked for."
-    )
+    answer = _bought_words(question, counts, kept=kept, factor=factor)
     curve = _curve(question, laid)
     return Finding(
         topic="smallest-patch",
@@ -198,6 +194,26 @@ def _finding(question: PatchQuestion, counts: tuple[int, ...]) -> Finding:
         warnings=warnings(question, spacing),
         sources=SOURCES,
         picture=_picture(question, curve, sum(counts)),
+    )
+
+
+def _bought_words(
+    question: PatchQuestion, counts: tuple[int, ...], *, kept: PatchChance, factor: float
+) -> str:
+    """Say first the smallest patch that is hit as surely as asked, then the one asked about."""
+    opening = f"{_counted(question, counts)} {place_words(question)} hit"
+    if not math.isfinite(factor):
+        return (
+            f"{opening} {patch_words(question)}, with a chance of {percent(kept.chance)}"
+            f"{off_words(question)}; {asked_for(question)} was asked for."
+        )
+    patch = question.patch.scaled(factor)
+    least = f"a round patch {figure(patch.length)} m across"
+    if patch.length > patch.width:
+        least = f"an oval patch of {figure(patch.length)} m by {figure(patch.width)} m"
+    return (
+        f"{opening} {least} or larger with a chance of {asked_for(question)}, and "
+        f"{patch_words(question)} with {percent(kept.chance)}{off_words(question)}."
     )
 
 

@@ -50,7 +50,7 @@ def test_campaign_says_the_chance_beside_the_number_of_its_mean(tmp_path: Path) 
     assert after.exit_code == 0
     assert after.stdout.startswith(before.stdout.split("\n")[0])
     said = " ".join(after.stdout.split())
-    assert "hit an oval patch of 60 m by 30 m, whichever way it points" in said
+    assert "or larger with a chance of 90 %, and an oval patch of 60 m by 30 m, whichever" in said
     assert "Chance with no location off" in said
     assert "centred outside" in said
 
@@ -73,3 +73,10 @@ def test_bad_options_get_a_clear_line(words: list[str], code: int, said: str) ->
     assert (fault.exit_code if isinstance(fault, FieldplanError) else outcome.exit_code) == code
     assert said in (str(fault) if isinstance(fault, FieldplanError) else outcome.stderr)
     assert outcome.stdout == ""
+
+
+def test_a_screen_of_one_sentence_has_no_empty_lines_behind_it() -> None:
+    """One blank line parts two things; two of them part nothing."""
+    words = [*ASKED, "--with", "probability=0.95", "--area", "12000", "--quiet"]
+    printed = command_runner().invoke(entry, words).stdout
+    assert "\n\n" not in printed

@@ -27,6 +27,7 @@ from fieldplan.stats.patches import (
 )
 from tests.factories import make_campaign, make_frame, make_list_frame, make_spread
 from tests.unit.design.sites import MEADOW_POLYGON, area_frame
+from tests.unit.sizing.askings import asked_numbers
 
 AREA = 12_000.0
 OVAL = {"length_m": 48.0, "width_m": 20.0, "probability": 0.8}
@@ -299,3 +300,15 @@ def test_objective_without_the_table_is_told_what_to_write() -> None:
     bare = asked.objective.model_copy(update={"smallest_patch": None})
     with pytest.raises(CampaignError, match="length_m and probability"):
         count(replace(asked, objective=bare))
+
+
+def test_fixed_locations_open_with_the_smallest_patch_that_they_hit() -> None:
+    """Endless square grid: a circle of diameter d covers a share π d²/(4 G²) while d ≤ G."""
+    keys = ("length_m=40", "probability=0.5", "design.locations=20")
+    asked = asked_numbers(question="smallest-patch", area=12_000.0, layout="square-grid", keys=keys)
+    answer = bought(asked, (20,)).answer
+    least = math.sqrt(0.5 * 4 / math.pi * 12_000 / 20)
+    assert answer.startswith(
+        f"20 locations on a square grid hit a round patch {least:.3g} m across or larger with a "
+        "chance of 50 %, and a round patch 40 m across with 100 %"
+    )
