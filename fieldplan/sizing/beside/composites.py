@@ -1,12 +1,16 @@
 """Composites: where a result's spread comes from, what it costs, and what one jar can hide."""
 
 from collections.abc import Iterator
+from dataclasses import replace
 
+from fieldplan.base.errors import DesignError
 from fieldplan.base.working import Quantity, Step
 from fieldplan.lab.model import SplitSpread
 from fieldplan.lab.parts import ANALYSIS, PLACES, SAMPLING, TOGETHER
 from fieldplan.sizing.asked.model import Asked
 from fieldplan.sizing.composites import error_parts
+from fieldplan.sizing.counting import count, total_cost
+from fieldplan.sizing.frontier_composites import single_results
 from fieldplan.sizing.model import Amount, Finding, Size
 from fieldplan.sizing.words import counted, figure, with_unit
 from fieldplan.stats.composites import composite_sigma, level_for_composite
@@ -43,7 +47,7 @@ def finding(asked: Asked, size: Size) -> Finding | None:
     return Finding(
         topic=TOPIC,
         title="What a composite keeps and hides",
-        answer=_answer(asked, known),
+        answer=_answer(asked, known) + _against_singles(asked, size),
         amounts=tuple(_amounts(asked)),
         columns=("Increments in each", "SD of one result", "Standard error"),
         rows=tuple(_rows(asked, size, known)),
@@ -76,6 +80,26 @@ def _answer(asked: Asked, splits: list[SplitSpread]) -> str:
     return (
         f"{line} Only a result below {below}, the level over {k}, leaves no room for a single "
         f"increment above {level}."
+    )
+
+
+def _against_singles(asked: Asked, size: Size) -> str:
+    """Say what single samples would take and cost for the same target, where prices are known."""
+    single = single_results(asked)
+    if single is None or size.cost is None or size.question != "mean" or single.target == "budget":
+        return ""
+    single = replace(single, locations=None)
+    try:
+        counts = count(single)
+    except DesignError:
+        return " No number of single samples that can be had meets the same target."
+    cost = total_cost(single, counts.planned)
+    if cost is None:
+        return ""
+    paid, instead = (f"{value:.0f} {size.currency}" for value in (cost, size.cost))
+    return (
+        f" Single samples would take {sum(counts.needed)} results for the same target and cost "
+        f"{paid}, against {instead} here."
     )
 
 

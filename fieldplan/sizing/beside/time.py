@@ -21,7 +21,7 @@ from fieldplan.sizing.beside.time_words import (
 from fieldplan.sizing.model import Amount, Finding, Picture, Series, Size
 from fieldplan.sizing.visit_series import series_of
 from fieldplan.sizing.visits import ABOUT_MEANS, unhidden_sigma
-from fieldplan.sizing.words import counted, figure
+from fieldplan.sizing.words import counted, figure, with_unit
 from fieldplan.stats.period_mean import period_variance_share
 from fieldplan.stats.planned_visits import planned_factor
 from fieldplan.stats.time_series import (
@@ -86,7 +86,7 @@ def _declared(asked: Asked, size: Size, seen: "SeriesCorrelation | None") -> Fin
         answer=(
             f"{counted(size.needed, 'visit')} tell as much of the long-run mean as "
             f"{figure(sum(worth.values()))} independent ones would: neighbouring visits resemble "
-            f"each other by {_rhos(asked)}."
+            f"each other by {_rhos(asked)}.{_period_words(asked, size)}"
         ),
         amounts=_amounts(asked, size, sum(worth.values())),
         columns=columns if rows else (),
@@ -164,6 +164,19 @@ def _asked_words(size: Size) -> str:
     if size.number_from == "target":
         return "Independent visits asked for"
     return "Independent visits that these are worth, by the factor"
+
+
+def _period_words(asked: Asked, size: Size) -> str:
+    """Say how near the same visits come to the mean of the very period; empty where unknown."""
+    found = _of_the_period(asked, size) if len(size.strata) == 1 else ()
+    if not found:
+        return ""
+    error = with_unit(figure(float(found[0].value or 0.0)), asked.question.unit)
+    long_run = with_unit(figure(size.standard_error or 0.0), asked.question.unit)
+    return (
+        " Spread evenly over the period they are taken in, they tell its own mean with a standard "
+        f"error of {error}, against {long_run} for the long run."
+    )
 
 
 def _of_the_period(asked: Asked, size: Size) -> tuple[Amount, ...]:

@@ -257,3 +257,15 @@ def test_the_mean_of_the_very_period_is_known_better() -> None:
         6 * math.sqrt(period_variance_share(75, 0.35))
     )
     assert (numbers["period_standard_error"] or 9) < 6 / math.sqrt(75)
+
+
+def test_the_answer_says_how_near_visits_come_to_the_mean_of_their_own_period() -> None:
+    """Who asks for the mean of this very year reads that number first, not the long run's."""
+    asked = asked_mean(sigma=0.9, standard_error=0.3, keys=(RHO,))
+    size = size_asked(asked)
+    found = finding(asked, size)
+    assert found is not None
+    error = amounts(found)["period_standard_error"]
+    assert f"its own mean with a standard error of {error:.3g}" in found.answer
+    assert error < (size.standard_error or 0.0)
+    assert f"against {size.standard_error:.3g}" in found.answer
