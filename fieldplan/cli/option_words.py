@@ -47,7 +47,10 @@ _PAIRS = (
     (r'Write (\w+) = "?([\w.-]+)"?(?=[.,])', r"Type --with \1=\2"),
     (r'; "FILL IN" while it is not known', ""),
     (r', or "FILL IN"', ""),
-    (r"Give frame\.strata its file, or take this out", "Type --stratum for each, or take this out"),
+    (r"no table \((got .*?)\)\. Write \[+[\w.]+\]+ on a line of its own",
+     r"a table of keys (\1). Type a point and one of its keys after it"),
+    (r"Give frame\.strata its file, or take this (?:key )?out",
+     "Type --stratum for each, or take this out"),
     (r"that is fair into \[\[sigma\]\] with its source", "that is fair as --sigma"),
     (r"\[design\.(\w+)\]", r"--with design.\1"),
     (r"\[loss\] by_stratum", "--with loss.by_stratum"),
@@ -89,6 +92,10 @@ def in_options(sentence: str) -> str:
     """
     for pattern, words in _PAIRS:
         sentence = re.sub(pattern, words, sentence)
+    homes = re.search(r"does not belong in .*?\. Write it below (.*)\.$", sentence)
+    if homes:
+        tables = homes[1].replace("[", "").replace("]", "")
+        return f"this key has another table: {tables}. Type that before it."
     return sentence
 
 

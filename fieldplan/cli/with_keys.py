@@ -38,6 +38,14 @@ READ = (
 )  # fmt: skip
 """Tables of a campaign file that bare numbers look at."""
 
+UNREAD = {
+    "sigma": ("analyte", "stratum", "part", "pilot", "columns"),
+    "objective": ("analyte", "design", "decides_n", "assurance_chosen_by"),
+    "design": ("id",),
+    "analyte": ("id",),
+}
+"""Keys of these tables that need a campaign file: they point to another table, or to a file."""
+
 
 @dataclass(frozen=True)
 class WithKey:
@@ -138,7 +146,7 @@ def read_key(text: str, question: str) -> WithKey:
     28
     """
     key, equals, value = (piece.strip() for piece in text.partition("="))
-    if not (equals and key and value):
+    if not (equals and value and all(step.strip() for step in key.split("."))):
         message = f"--with {text!r}: write a key and its value, such as share=0.05."
         raise BadOption(message)
     return WithKey(text, _path(key, text, question), value, _value(value, text))
@@ -207,7 +215,7 @@ def place(data: dict[str, Any], text: str, question: str) -> None:
     """
     key = read_key(text, question)
     path, sigmas = key.path, data["sigma"]
-    if path[0] not in READ:
+    if path[0] not in READ or path[1] in UNREAD.get(path[0], ()):
         _refuse_unread(key)
     if path[0] == "sigma" and path[1:] in (("sampling",), ("analysis",)):
         sigmas.append({"part": path[1], "value": key.value, "source": "typed"})
@@ -237,12 +245,16 @@ def _refuse_unread(key: WithKey) -> None:
 
     if key.path[0] in shapes(Campaign):
         message = (
-            f"--with {key.typed!r}: bare numbers do not look at {key.path[0]}; write it into a "
+            f"--with {key.typed!r}: bare numbers do not look at {_unread(key)}; write it into a "
             "campaign file."
         )
         raise BadOption(message)
     message = f"--with {key.typed!r}: there is no table {key.path[0]}; there are {', '.join(READ)}."
     raise BadOption(message)
+
+
+def _unread(key: WithKey) -> str:
+    return ".".join(key.path[: 2 if key.path[0] in READ else 1])
 
 
 def _repeats(table: str) -> bool:

@@ -63,6 +63,26 @@ def run(*words: str) -> Result:
             "file.",
         ),
         (
+            (*MEAN, "--with", "sigma.pilot=pilot.csv"),
+            "--with 'sigma.pilot=pilot.csv': bare numbers do not look at sigma.pilot; write it "
+            "into a campaign file.",
+        ),
+        (
+            (*MEAN, "--with", "cost..per_location=7"),
+            "--with 'cost..per_location=7': write a key and its value, such as share=0.05.",
+        ),
+        (
+            (*MEAN, "--with", "loss.share=0.2", "--with", "loss.expected=0.2"),
+            "--with loss.expected: this key has another table: objective.share. Type that before "
+            "it.",
+        ),
+        (
+            (*MEAN, "--with", "objective.all_clear=5"),
+            "--with objective.all_clear: a table of keys (got 5). Type a point and one of its keys "
+            "after it.\n--with objective.all_clear.share: needs exactly one of share and units "
+            "(got neither). Type one.",
+        ),
+        (
             (*CLEAR, "--with", "nope.seed=7"),
             "--with 'nope.seed=7': there is no table nope; there are objective, sigma, design, "
             "cost, loss, qc, field_reading, field, analyte, rules.",
