@@ -164,7 +164,7 @@ def _short_list(question: Question, needed: Sequence[int]) -> list[str]:
 
 
 def _signed(value: float) -> str:
-    return figure(value, 2).replace("-", "−")
+    return figure(round(value, 9) + 0.0, 2).replace("-", "−")  # symmetric results err by 1e-16
 
 
 def _ceiling(known: Sequence[Part]) -> list[str]:
