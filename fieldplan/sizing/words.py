@@ -74,7 +74,7 @@ def targeted_words(question: "Question", before: str) -> str:
 
     Examples
     --------
-    >>> from fieldplan.sizing.question import Part
+    >>> from fieldplan.sizing.question import Part, Question
     >>> asked = Question((Part("site", 1.0, 20.0),), "standard_error", 9.0, targeted=3)
     >>> targeted_words(asked, " and ")
     ' and 3 targeted places'
@@ -139,7 +139,7 @@ def target_words(question: "Question") -> str:
 
     Examples
     --------
-    >>> from fieldplan.sizing.question import Part
+    >>> from fieldplan.sizing.question import Part, Question
     >>> target_words(Question((Part("site", 1.0, 20.0),), "standard_error", 9.0, unit="mg/kg"))
     'standard error of the mean ≤ 9 mg/kg'
     """
