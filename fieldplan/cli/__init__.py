@@ -1,11 +1,13 @@
 """The command line: each command parses, calls one function and prints."""
 
 import os
+import signal
 import sys
 import textwrap
 from collections.abc import Iterable
 from contextlib import suppress
 from importlib import import_module
+from types import FrameType
 from typing import NoReturn
 
 import click
@@ -90,13 +92,8 @@ def entry() -> None:
 
 def main() -> None:
     """Run the command line; errors a person can mend become lines, never a traceback."""
-    for stream in (sys.stdout, sys.stderr):
-        reconfigure = getattr(stream, "reconfigure", None)
-        if reconfigure is not None:
-            reconfigure(encoding="utf-8", errors="replace")
-    os.environ["MPLBACKEND"] = "Agg"
-    if not os.environ.get("SOURCE_DATE_EPOCH", "0").isdigit():
-        del os.environ["SOURCE_DATE_EPOCH"]
+    _prepare()
+    stops = _noted_stops()
     try:
         code = entry.main(standalone_mode=False)
     except click.ClickException as fault:
@@ -110,10 +107,36 @@ def main() -> None:
         place = f"{fault.filename}: " if fault.filename else ""
         _leave([f"{place}{fault.strerror or fault}. What was written before stays as it is."], 1)
     except Exception as fault:
+        if stops:  # a library that was loading made another error of the key
+            _leave([STOPPED], 1)
         if os.environ.get("FIELDPLAN_TRACE"):
             raise
         _leave([f"{UNEXPECTED} ({type(fault).__name__}: {fault})."], 1)
     sys.exit(code if isinstance(code, int) else 0)
+
+
+def _prepare() -> None:
+    """Settle what a terminal or an environment may have set otherwise."""
+    for stream in (sys.stdout, sys.stderr):
+        reconfigure = getattr(stream, "reconfigure", None)
+        if reconfigure is not None:
+            reconfigure(encoding="utf-8", errors="replace")
+    os.environ["MPLBACKEND"] = "Agg"
+    if not os.environ.get("SOURCE_DATE_EPOCH", "0").isdigit():
+        del os.environ["SOURCE_DATE_EPOCH"]
+
+
+def _noted_stops() -> list[int]:
+    """Note every Ctrl-C before it is raised, in a list that grows."""
+    stops: list[int] = []
+
+    def note(number: int, frame: FrameType | None) -> None:
+        stops.append(number)
+        signal.default_int_handler(number, frame)
+
+    if signal.getsignal(signal.SIGINT) is signal.default_int_handler:
+        signal.signal(signal.SIGINT, note)
+    return stops
 
 
 def _leave(problems: Iterable[str], code: int) -> NoReturn:
