@@ -126,12 +126,17 @@ def _prepare() -> None:
         del os.environ["SOURCE_DATE_EPOCH"]
 
 
+def _no_trace(*_fault: object) -> None:
+    """Print nothing: what the key broke is answered in one line."""
+
+
 def _noted_stops() -> list[int]:
     """Note every Ctrl-C before it is raised, in a list that grows."""
     stops: list[int] = []
 
     def note(number: int, frame: FrameType | None) -> None:
         stops.append(number)
+        sys.excepthook = sys.unraisablehook = _no_trace  # of a module that was half loaded
         signal.default_int_handler(number, frame)
 
     if signal.getsignal(signal.SIGINT) is signal.default_int_handler:
