@@ -23,7 +23,8 @@ if TYPE_CHECKING:
     from matplotlib.figure import Figure as Canvas
 
 _HEIGHT_MM, _LEFT_MM, _RIGHT_MM, _BOTTOM_MM, _TOP_MM = 72.0, 18.0, 30.0, 11.0, 9.0
-_COLOURS = (BLUE, VERMILION, "#009E73", ORANGE, INK)
+_COLOURS = (BLUE, "#009E73", ORANGE, "#CC79A7", INK)
+"""Of lines; levels have a colour of their own."""
 
 
 def finding_picture(picture: Picture) -> Figure:
@@ -79,13 +80,10 @@ def _drawing(picture: Picture, width: float) -> "Canvas":
             1 - (_BOTTOM_MM + _TOP_MM) / _HEIGHT_MM,
         )
     )
-    _draw_series(axes, picture)
-    for words, value in picture.levels:
+    for _, value in picture.levels:
         axes.axhline(value, color=VERMILION, linewidth=1.0, linestyle=(0, (6, 2)))
-        axes.annotate(
-            words, (0.0, value), (3, 2), xycoords=("axes fraction", "data"),
-            textcoords="offset points", ha="left", va="bottom", color=VERMILION,
-        )  # fmt: skip
+    ends = _draw_series(axes, picture)
+    _name_lines(axes, [*ends, *((value, words, VERMILION) for words, value in picture.levels)])
     for words, value in picture.marks:
         axes.axvline(value, color=INK, linewidth=0.9)
         axes.annotate(
@@ -98,7 +96,8 @@ def _drawing(picture: Picture, width: float) -> "Canvas":
     return figure
 
 
-def _draw_series(axes: "Axes", picture: Picture) -> None:
+def _draw_series(axes: "Axes", picture: Picture) -> list[tuple[float, str, str]]:
+    """Draw lines, points and bands; give where each line ends, its name and its colour."""
     named: list[tuple[float, str, str]] = []
     bands: list[Series] = []
     for position, series in enumerate(picture.series):
@@ -111,7 +110,7 @@ def _draw_series(axes: "Axes", picture: Picture) -> None:
             named.append((series.y[-1], series.label, colour))
     for low, high in zip(bands[::2], bands[1::2], strict=False):
         axes.fill_between(low.x, low.y, high.y, color=BLUE, alpha=0.18, linewidth=0)
-    _name_lines(axes, named)
+    return named
 
 
 def _draw_one(axes: "Axes", series: Series, colour: str) -> None:

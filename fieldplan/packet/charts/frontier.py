@@ -20,7 +20,7 @@ if TYPE_CHECKING:
     from matplotlib.figure import Figure as Canvas
 
 _HEIGHT_MM, _LEFT_MM, _BOTTOM_MM, _TOP_MM, _EDGE_MM = 84.0, 17.0, 11.0, 4.0, 3.0
-_POINTS, _ROW_MM, _GAP_MM, _WIDE_MM = 8.0, 3.6, 1.8, 80.0
+_POINTS, _ROW_MM, _GAP_MM, _WIDE_MM = 8.0, 4.6, 1.8, 80.0
 _GREEN, _PURPLE, _SKY = "#009E73", "#CC79A7", "#56B4E9"
 _LINES: tuple[tuple[str, Any], ...] = (
     (BLUE, "-"),

@@ -18,7 +18,7 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure as Canvas
 
-_HEIGHT_MM, _LEFT_MM, _RIGHT_MM, _TOP_MM = 85.0, 33.0, 6.0, 8.0
+_HEIGHT_MM, _LEFT_MM, _RIGHT_MM, _TOP_MM = 85.0, 33.0, 18.0, 8.0
 _NARROW_LEFT_MM = 17.0
 _ROW_MM = 5.5
 _BELOW_MM = 27.0
@@ -78,8 +78,8 @@ def _draw_band(axes: "Axes", picture: Picture, lines: dict[str, list[Series]]) -
     for words, value in picture.levels:
         axes.axhline(value, color=VERMILION, linewidth=0.9)
         axes.annotate(
-            words, (1.0, value), (-3, 2), xycoords=("axes fraction", "data"),
-            textcoords="offset points", ha="right", va="bottom", color=VERMILION,
+            words, (1.0, value), (3, 0), xycoords=("axes fraction", "data"),
+            textcoords="offset points", ha="left", va="center", color=VERMILION,
         )  # fmt: skip
     for words, value in picture.marks:
         axes.axvline(value, color=INK, linewidth=0.9)

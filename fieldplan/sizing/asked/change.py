@@ -270,7 +270,7 @@ def _picture(pairs: PairedRounds, counts: tuple[int, ...]) -> Picture:
         y_label="chance to show it, %",
         series=(Series(f"{sum(counts)} locations", tuple(xs), tuple(ys)),),
         marks=(("must not be missed", pairs.difference),),
-        levels=(("wanted", 100 * (1 - pairs.risks[1])),),
+        levels=((f"wanted {typed_percent(1 - pairs.risks[1])}", 100 * (1 - pairs.risks[1])),),
     )
 
 
@@ -281,6 +281,7 @@ def _width_picture(pairs: PairedRounds, n: int) -> Picture:
     totals = [total for total in totals if total <= most]
     shares = [share_total(question.strata, t, allocation=question.allocation) for t in totals]
     ys = [precision.half_width(counts) for counts in shares]
+    reach = pairs.table.half_width or 0.0
     return Picture(
         kind="lines",
         caption="Expected half-width of the change, by locations visited in both rounds.",
@@ -290,5 +291,5 @@ def _width_picture(pairs: PairedRounds, n: int) -> Picture:
         y_label=f"half-width, {question.unit}" if question.unit else "half-width",
         series=(Series("expected half-width", tuple(float(t) for t in totals), tuple(ys)),),
         marks=((f"{n} locations", float(n)),),
-        levels=(("target", pairs.table.half_width or 0.0),),
+        levels=((f"target {with_unit(typed(reach), question.unit)}", reach),),
     )

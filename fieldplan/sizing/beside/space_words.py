@@ -157,5 +157,7 @@ def spread_picture(asked: Asked, size: Size, spread: "Predicted") -> Picture:
             Series("as planned", x, tuple(planned.tolist())),
             Series("compact parts", x, tuple(strata.tolist()), style="dashes"),
         ),
-        levels=(("target", spread.target),),
+        levels=(
+            (f"target {with_unit(figure(spread.target), asked.question.unit)}", spread.target),
+        ),
     )

@@ -49,6 +49,15 @@ def test_a_figure_that_would_just_not_fit_is_set_smaller(paper, lines: int) -> N
     assert len(page_boxes(set_pdf(far, paper=paper))) == 2
 
 
+@pytest.mark.parametrize(("lines", "pages"), [(26, 1), (30, 2)])
+def test_a_flat_chart_keeps_its_letters_or_is_turned_over(lines: int, pages: int) -> None:
+    """Of two charts on a page, one with far smaller letters reads as a footnote."""
+    flat = '<svg xmlns="http://www.w3.org/2000/svg" width="330" height="160"/>'
+    blocks = [Paragraph("One line.")] * lines + [Figure(flat, "Caption.", "A chart.")]
+    document = Document("T", "", "QF", "QF-r01", "DRAFT", blocks)
+    assert len(page_boxes(set_pdf(document, paper="A4"))) == pages
+
+
 def test_a_form_lies_and_its_empty_columns_take_the_room() -> None:
     """People write larger than printers; every page of the form lies, the first too."""
     table = Table(("Sample", "Note"), (("QF-1", ""),) * 30, by_hand=(("Note", 1.0),))

@@ -115,7 +115,7 @@ def test_half_width_has_its_own_words_and_picture() -> None:
     found = count(asked_for("change", half_width=5.0, sigma_of_differences=12.0)).finding
     assert found.answer.startswith("25 locations visited in both rounds pin down the change")
     assert found.picture is not None
-    assert found.picture.levels == (("target", 5.0),)
+    assert found.picture.levels == (("target 5 mg/kg", 5.0),)
     assert {entry.name for entry in found.amounts} == {
         "n", "standard_error", "chance_enough", "half_width"
     }  # fmt: skip
