@@ -122,8 +122,8 @@ def misplaced(question: str, key: str) -> str:
 
     Examples
     --------
-    >>> misplaced("share", "share").split("; ")[0]
-    'the question share has no such key; did you mean expected?'
+    >>> misplaced("share", "share").partition("? ")[0]
+    'the question share has no such key; did you mean expected'
     """
     from fieldplan.campaign.questions import MODULES
 

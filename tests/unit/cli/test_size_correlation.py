@@ -30,11 +30,11 @@ def amounts(text: str, topic: str) -> dict[str, float]:
 
 
 def test_options_raise_36_results_to_75_visits() -> None:
-    """36 × 1.35/0.65 = 74.8, in the answer and in JSON."""
+    """36 × 1.35/0.65 = 74.8, and 75 × 0.65/1.35 = 36.1; in the answer and in JSON."""
     code, out, _ = run(*PLAIN, *RHO)
     assert code == 0
     assert out.startswith("75 results are needed")
-    assert "75 visits tell as much of the long-run mean as 36.5 independent ones" in " ".join(
+    assert "75 visits tell as much of the long-run mean as 36.1 independent ones" in " ".join(
         out.split()
     )
     found = json.loads(run(*PLAIN, *RHO, "--json")[1])
