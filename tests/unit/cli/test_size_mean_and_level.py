@@ -26,7 +26,7 @@ def numbers(*words: str) -> dict[str, object]:
 
 
 def test_the_answer_opens_the_output() -> None:
-    """11 by noncentral t; the count first, both chances and where they hold, the rest on request."""
+    """11 by noncentral t; the count first, both chances, where they hold, the rest on request."""
     printed = " ".join(run(*ASKED).stdout.split())
     assert printed.startswith(
         "11 results are needed: a true mean of 110 mg/kg then comes out below 150 mg/kg in at "

@@ -84,7 +84,10 @@ def test_expected_loss_stands_beside_the_cost() -> None:
             [*keys("field_reading.correlation=1.5"), *NAME, *SOURCE],
             "field_reading.correlation",
         ),
-        (["--more", "frontier"], "--more frontier: nothing given says anything about it; there are none here."),
+        (
+            ["--more", "frontier"],
+            "--more frontier: nothing given says anything about it; there are none here.",
+        ),
     ],
     ids=["crew-days", "no source", "no level", "impossible correlation", "no prices"],
 )
