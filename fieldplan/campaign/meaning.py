@@ -113,8 +113,8 @@ MEANING: dict[str, str] = {
     "objective.mean_from": "the true mean lies above this with a chance of 95 %, as believed",
     "objective.mean_to": "the true mean lies below this with a chance of 95 %, as believed",
     "objective.first_stage": (
-        "results of a first stage, after which the number may be set anew; 60 % of the plain number "
-        "unless given"
+        "results of a first stage, after which the number may be set anew; 60 % of the plain "
+        "number unless given"
     ),
     **meanings(),
     # [[sigma]]
@@ -155,7 +155,9 @@ MEANING: dict[str, str] = {
     "cost.per_increment": "money for each increment of a composite, the walk to it included",
     "cost.per_ranking": "money for looking at one place to rank it",
     "cost.per_location_by_stratum": "money for a location by stratum, where it is not per_location",
-    "cost.per_analysis_by_stratum": "money for an analysis by stratum, where it is not per_analysis",
+    "cost.per_analysis_by_stratum": (
+        "money for an analysis by stratum, where it is not per_analysis"
+    ),
     "cost.per_crew_day": "money for each day of a crew in the field; a day begun counts whole",
     "cost.locations_per_day": "locations that a crew visits in a day",
     "cost.wrongly_acted": "money lost by acting although the true mean is not above the level",

@@ -100,8 +100,14 @@ _A_FILE = click.Path(path_type=Path, dir_okay=False)
     "--non-detects",
     type=click.Choice(
         [
-            "bounds", "substitute-half", "kaplan-meier", "order-statistics",
-            "lognormal-likelihood", "gamma-likelihood", "normal-likelihood", "by-share",
+            "bounds",
+            "substitute-half",
+            "kaplan-meier",
+            "order-statistics",
+            "lognormal-likelihood",
+            "gamma-likelihood",
+            "normal-likelihood",
+            "by-share",
         ]
     ),
     help="Change this rule after results.",

@@ -66,7 +66,7 @@ def opened(name: str) -> str:
     """Return the whole campaign with one key open."""
     table, _, key = name.rpartition(".")
     if table.startswith("objective."):  # a question's table stands where its objective ends
-        header = f"[{table}]\n{key} = \"FILL IN\"\n[[sigma]]"
+        header = f'[{table}]\n{key} = "FILL IN"\n[[sigma]]'
         return "format = 1\n" + WHOLE.replace("[[sigma]]", header, 1)
     lines, found = ["format = 1"], False
     for line in WHOLE.splitlines():
@@ -87,7 +87,8 @@ def test_one_open_value_leaves_the_rest_known(tmp_path, name):
     found = inspect_text(text, tmp_path / "campaign.toml")
     if found.problems:  # a rule between keys that holds for open values as well
         assert draft(found) is None
-        assert name.count(".") > 1 or name in {"objective.assurance", "objective.assurance_chosen_by", "sigma.value",
+        assert name.count(".") > 1 or name in {
+                        "objective.assurance", "objective.assurance_chosen_by", "sigma.value",
                         "objective.standard_error", "objective.half_width", "sigma.from_results",
                         "objective.relative_half_width", "qc.share", "frame.list_file",
                         "frame.line_file", "frame.branch_column",

@@ -259,7 +259,7 @@ def test_pseudocode_fits_a_page_and_a_terminal() -> None:
 
 
 def test_documentation_holds_the_same_lines() -> None:
-    """A reviewer reads docs/drawing.md or the working; both must be the procedure that was tested."""
+    """A reviewer reads docs/drawing.md or the working; both must be what was tested."""
     page = Path(__file__).parents[3] / "docs" / "drawing.md"
     assert f"```text\n{procedure_pseudocode()}```" in page.read_text(encoding="utf-8")
 

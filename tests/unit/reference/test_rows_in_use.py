@@ -28,8 +28,8 @@ def in_use() -> set[str]:
         if path != Path(__file__):
             found |= set(ROW.findall(path.read_text(encoding="utf-8")))
     run = subprocess.run(
-        [sys.executable, "-m", "pytest", "--collect-only", "-q", "-n", "0", "-p", "no:cacheprovider",
-         "tests/unit/stats", "tests/unit/sizing", "tests/unit/design"],
+        [sys.executable, "-m", "pytest", "--collect-only", "-q", "-n", "0",
+         "-p", "no:cacheprovider", "tests/unit/stats", "tests/unit/sizing", "tests/unit/design"],
         cwd=TESTS.parent, capture_output=True, text=True, check=False,
     )  # fmt: skip
     assert run.returncode == 0, run.stdout[-2000:]
