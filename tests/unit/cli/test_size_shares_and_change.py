@@ -185,4 +185,4 @@ def test_two_confidences_that_differ_are_refused_by_the_name_of_the_key() -> Non
     outcome = command_runner().invoke(entry, ["size", "--question", *words])
     assert outcome.exit_code != 0
     told = str(outcome.exception) if outcome.exception is not None else ""
-    assert "objective.all_clear.confidence; keep one" in outcome.output + told
+    assert "objective.all_clear.confidence; keep one" in outcome.stderr + told

@@ -11,7 +11,8 @@ from fieldplan.cli import STOPPED
 
 ROOT = Path(__file__).parents[3]
 WHILE_LOADING = """
-import sys
+import signal, sys
+signal.signal(signal.SIGINT, signal.default_int_handler)  # jobs in the background ignore it
 class Stop:
     def find_spec(self, name, path=None, target=None):
         if name == {name!r}:
@@ -26,7 +27,7 @@ main()
 PLAIN = "raise KeyboardInterrupt"
 SWALLOWED = """
             try:
-                import signal; signal.raise_signal(signal.SIGINT)
+                signal.raise_signal(signal.SIGINT)
             except KeyboardInterrupt:
                 raise ImportError("half loaded")
 """

@@ -88,7 +88,7 @@ def test_alpha_above_one_half_is_refused_in_one_line(question) -> None:
         entry, ["size", *question, "--with", "alpha=0.6", "--with", "beta=0.05"]
     )
     assert outcome.exit_code != 0
-    text = outcome.output + str(outcome.exception or "")
+    text = outcome.stderr + str(outcome.exception or "")
     assert "alpha" in text
     assert "0.5 at most" in text
     with pytest.raises(DesignError, match=r"0\.5 at most"):
