@@ -10,6 +10,7 @@ from tests.benchmarks.money import measured as measured_money
 from tests.benchmarks.near_normal import timed_findings
 from tests.benchmarks.patches import measured as measured_patches
 from tests.benchmarks.placement import COUNTS, VERTICES, measured
+from tests.benchmarks.sizings import measure as timed_sizings
 from tests.benchmarks.strata import measured as measured_strata
 
 
@@ -104,6 +105,14 @@ def balanced() -> Iterator[str]:
         yield f"| {row.name} | {aim} | {row.seconds:.2f} s | {peer} | {ratio} |"
 
 
+def sizings() -> Iterator[str]:
+    """Yield the table of the section "One answer of each question"."""
+    yield "| question | aim | shortest |"
+    yield "| --- | --- | --- |"
+    for row in timed_sizings():
+        yield f"| {row.question} | 20 ms | {1000 * row.shortest:.1f} ms |"
+
+
 SECTIONS: dict[str, Callable[[], Iterator[str]]] = {
     "placement": placement,
     "commands": commands,
@@ -113,6 +122,7 @@ SECTIONS: dict[str, Callable[[], Iterator[str]]] = {
     "correlation": correlation,
     "strata": strata,
     "balanced": balanced,
+    "sizings": sizings,
 }
 
 if __name__ == "__main__":
