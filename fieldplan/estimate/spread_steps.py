@@ -2,6 +2,7 @@
 
 from fieldplan.base.working import Quantity, Step
 from fieldplan.design.model import SpreadVariance, StratumEstimate
+from fieldplan.estimate.error_step import standard_error_step
 from fieldplan.estimate.means import Means
 
 _NEIGHBOURS = "Stevens and Olsen 2003, Environmetrics 14:593 (from memory)"
@@ -31,7 +32,9 @@ def spread_steps(means: Means, unit: str) -> list[Step]:
     ):
         mark, of = (f" {entry.stratum}", f" in {entry.stratum}") if several else ("", "")
         steps.append(_variance(entry, found, values.population, unit=unit, mark=mark, of=of))
-    return [*steps, _standard_error(means, unit)]
+    source = _STRATA if several else _NEIGHBOURS
+    entries = means.half.spread_variances
+    return [*steps, standard_error_step(means, entries, unit=unit, source=source)]
 
 
 def _variance(
@@ -70,27 +73,6 @@ def _variance(
         rounded=entry.variance,
         unit=f"({unit})²",
         source=source,
-    )
-
-
-def _standard_error(means: Means, unit: str) -> Step:
-    several = len(means.values) > 1
-    inputs = []
-    for entry, found in zip(means.half.spread_variances, means.half.strata, strict=True):
-        mark = f" {entry.stratum}" if several else ""
-        if several:
-            inputs.append(Quantity(f"W{mark}", "share of the population", found.weight))
-        inputs.append(Quantity(f"V{mark}", "variance of the mean", entry.variance, f"({unit})²"))
-    error = means.half.standard_error
-    return Step(
-        symbol="SE",
-        meaning="Standard error of the mean",
-        formula="SE = √(Σ W²·V)" if several else "SE = √V",
-        inputs=tuple(inputs),
-        unrounded=error,
-        rounded=error,
-        unit=unit,
-        source=_STRATA if several else _NEIGHBOURS,
     )
 
 

@@ -1,6 +1,7 @@
 """The arithmetic of a variance between random starts, step by step."""
 
 from fieldplan.base.working import Quantity, Step
+from fieldplan.estimate.error_step import standard_error_step
 from fieldplan.estimate.means import Means
 
 _STARTS = "Cochran 1977, Sampling Techniques, 3rd ed., sec. 8.11 (from memory)"
@@ -43,28 +44,8 @@ def start_steps(means: Means, unit: str) -> list[Step]:
                 source=_STARTS,
             )
         )
-    return [*steps, _standard_error(means, unit)]
-
-
-def _standard_error(means: Means, unit: str) -> Step:
-    several = len(means.values) > 1
-    inputs = []
-    for entry, found in zip(means.half.start_variances, means.half.strata, strict=True):
-        mark = f" {entry.stratum}" if several else ""
-        if several:
-            inputs.append(Quantity(f"W{mark}", "share of the population", found.weight))
-        inputs.append(Quantity(f"V{mark}", "variance of the mean", entry.variance, f"({unit})²"))
-    error = means.half.standard_error
-    return Step(
-        symbol="SE",
-        meaning="Standard error of the mean",
-        formula="SE = √(Σ W²·V)" if several else "SE = √V",
-        inputs=tuple(inputs),
-        unrounded=error,
-        rounded=error,
-        unit=unit,
-        source=_STARTS,
-    )
+    entries = means.half.start_variances
+    return [*steps, standard_error_step(means, entries, unit=unit, source=_STARTS)]
 
 
 def start_freedom_step(means: Means) -> Step:

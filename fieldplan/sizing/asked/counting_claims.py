@@ -10,7 +10,6 @@ from fieldplan.stats.precision import MOST, smallest
 from fieldplan.stats.tolerance import SLACK, chance_of_exceedances
 
 WILKS = "Wilks 1941, Annals of Mathematical Statistics 12:91 (from memory)"
-HOEFFDING = "Hoeffding 1956, Annals of Mathematical Statistics 27:713 (from memory)"
 HYPERGEOMETRIC = "hypergeometric distribution; Cochran 1977, Sampling Techniques, 3rd ed., sec. 3.5"
 
 EVEN = 0.9

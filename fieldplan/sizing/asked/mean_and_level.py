@@ -101,10 +101,6 @@ def _finding(
     )
 
 
-def _with_unit(decision: LevelDecision, value: float, *, digits: int = 3) -> str:
-    return with_unit(figure(value, digits), decision.asked.question.unit)
-
-
 def _as_typed(decision: LevelDecision, value: float) -> str:
     return with_unit(typed(value), decision.asked.question.unit)
 
